@@ -1,0 +1,155 @@
+"""The design of a machine as its file states it: strict, frozen, a unit in every name.
+
+Lengths in mm and angles in mechanical degrees here and only here; the modules that build
+outlines convert to SI. Limits of single values are declared on the fields; limits that depend on
+several values are the business of `checks`.
+"""
+
+from typing import Annotated, Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+Positive = Annotated[float, Field(gt=0.0)]
+NotNegative = Annotated[float, Field(ge=0.0)]
+
+
+class _Table(BaseModel):
+    model_config = ConfigDict(strict=True, extra="forbid", frozen=True, allow_inf_nan=False)
+
+
+class StatorDesign(_Table):
+    """The stator as it exists: semi-closed slots between teeth with parallel sides."""
+
+    outer_diameter_mm: Positive
+    bore_diameter_mm: Positive
+    stack_length_mm: Positive
+    slots: Annotated[int, Field(ge=6, le=144)]
+    tooth_width_mm: Positive
+    slot_depth_mm: Positive  # from the bore to the slot bottom
+    slot_opening_mm: Positive
+    opening_depth_mm: Positive  # straight mouth at the bore
+    wedge_angle_deg: Annotated[float, Field(ge=0.0, le=60.0)] = 30.0  # of the tooth tip's underside
+    wedge_depth_mm: NotNegative = 0.0  # radial depth kept free of copper under the tooth tip
+    slot_corner_radius_mm: NotNegative = 1.0  # at the slot bottom
+
+
+class WindingDesign(_Table):
+    """A distributed three-phase winding with a whole number of slots per pole and phase."""
+
+    layers: Literal[1, 2]
+    coil_span_slots: Annotated[int, Field(ge=1)]
+    turns_per_coil: Annotated[int, Field(ge=1)]
+    parallel_paths: Annotated[int, Field(ge=1)] = 1
+    conductor_area_mm2: Positive  # copper of one turn, all strands together
+    end_turn_length_mm: Positive  # one end turn, one side of the stack
+    end_permeance_coefficient: Annotated[float, Field(ge=0.0, le=1.0)] = 0.3
+    temperature_c: Annotated[float, Field(ge=-40.0, le=220.0)] = 100.0
+
+
+class BarrierDesign(_Table):
+    """One flux barrier; barriers are listed from the rim inward.
+
+    `end_angle_deg` is the angle from the q axis to the centre of the barrier's round end,
+    `depth_mm` the distance on the q axis from the rim to the barrier's outer edge,
+    `tangential_rib_mm` the iron left between the round end and the rim.
+    A straight barrier has a bottom across the q axis and two arms that make `arm_angle_deg`
+    with the q axis, joined by concentric bends of inner radius `bend_radius_mm`.
+    """
+
+    shape: Literal["arc", "straight"]
+    end_angle_deg: Positive
+    thickness_mm: Positive
+    depth_mm: Positive
+    tangential_rib_mm: Positive
+    radial_ribs: Annotated[int, Field(ge=0, le=2)] = 0
+    radial_rib_mm: Positive | None = None  # width of each radial rib; needed when there is one
+    radial_rib_offset_mm: Positive | None = None  # q axis to the middle of each of two ribs
+    fillet_mm: Positive = 0.5  # corners beside radial ribs
+    arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = (
+        None  # straight; default 90/pole_pairs
+    )
+    bend_radius_mm: Positive | None = None  # straight only; default the thickness
+
+
+class RotorDesign(_Table):
+    """The rotor lamination: a disc with a bore, and the barriers of one pole."""
+
+    poles: Annotated[int, Field(ge=2, le=24)]
+    gap_mm: Positive
+    shaft_diameter_mm: Positive
+    shaft_relative_permeability: Annotated[float, Field(ge=1.0)] = 1.0
+    sheet_thickness_mm: Positive
+    stacking_factor: Annotated[float, Field(gt=0.8, le=1.0)] = 0.97  # rotor and stator
+    barrier: Annotated[tuple[BarrierDesign, ...], Field(min_length=1, max_length=6)]
+
+
+class SteelChoice(_Table):
+    """Steel cards, as file names relative to the design file."""
+
+    rotor_card: str
+    stator_card: str
+
+
+class DutyDesign(_Table):
+    """What the machine is run at. Currents are peak values of a phase's terminal current."""
+
+    rated_current_a: Positive
+    rated_speed_rpm: Positive
+    maximum_speed_rpm: Positive
+    overspeed_factor: Annotated[float, Field(ge=1.0, le=2.0)] = 1.2
+    supply_voltage_v: Positive  # rms between lines, the most the supply gives
+
+
+class LimitsDesign(_Table):
+    """What `passes` is judged by."""
+
+    least_torque_nm: NotNegative
+    most_ripple_percent: Positive
+    least_saliency_ratio: Positive
+    least_yield_margin: Positive
+
+
+class MachineDesign(_Table):
+    """One design file, validated."""
+
+    name: str
+    note: str = ""
+    stator: StatorDesign
+    winding: WindingDesign
+    rotor: RotorDesign
+    steel: SteelChoice
+    duty: DutyDesign
+    limits: LimitsDesign
+
+    @property
+    def pole_pairs(self) -> int:
+        """Pole pairs of the rotor."""
+        return self.rotor.poles // 2
+
+
+class Sourced(_Table):
+    """A value of a steel card and where it is from."""
+
+    value: Positive
+    source: Annotated[str, Field(min_length=3)]
+
+
+class MagnetisationCurve(_Table):
+    """B-H points of a steel card, from low to high; (0, 0) is understood."""
+
+    b_t: Annotated[tuple[Positive, ...], Field(min_length=3)]
+    h_a_per_m: Annotated[tuple[Positive, ...], Field(min_length=3)]
+    source: Annotated[str, Field(min_length=3)]
+
+
+class SteelCard(_Table):
+    """One steel card: magnetic and mechanical data, each with its source."""
+
+    name: str
+    note: str = ""
+    density_kg_per_m3: Sourced
+    youngs_modulus_gpa: Sourced
+    poissons_ratio: Sourced
+    yield_strength_mpa: Sourced
+    tensile_strength_mpa: Sourced
+    magnetisation: MagnetisationCurve

@@ -1,0 +1,53 @@
+"""Errors of all rooms, and the findings a check returns.
+
+The text form is one line without a full stop: place, key, value, fault, remedy, as in
+`demo.toml:14: rotor.barrier[1].tangential_rib_mm = 0.1: thinner than the sheet; accepted 0.5 to 5`.
+"""
+
+from dataclasses import dataclass
+
+
+class LamwrightError(Exception):
+    """Any error that Lamwright reports to its user."""
+
+    exit_code = 2
+
+
+class DesignError(LamwrightError, ValueError):
+    """A design or steel file that cannot be used; its text has one line per fault."""
+
+
+class GeometryError(LamwrightError, ValueError):
+    """A shape that cannot be drawn from valid numbers; `findings` names the keys."""
+
+    def __init__(self, findings: "tuple[Finding, ...]") -> None:
+        """Join the findings' texts, one line each."""
+        super().__init__("\n".join(finding.text for finding in findings))
+        self.findings = findings
+
+
+class NotConverged(LamwrightError, RuntimeError):
+    """An iteration that ended without meeting its tolerance; carries the residual history."""
+
+    exit_code = 3
+
+    def __init__(self, text: str, history: tuple[float, ...] = ()) -> None:
+        """Keep the history beside the text."""
+        super().__init__(text)
+        self.history = history
+
+
+@dataclass(frozen=True, slots=True)
+class Finding:
+    """One fault of a design: stable code, key as written in the file, its value, what would fit."""
+
+    code: str
+    key: str
+    value: float
+    fault: str
+    remedy: str
+
+    @property
+    def text(self) -> str:
+        """The finding as one line without its place in the file."""
+        return f"{self.key} = {self.value:g}: {self.fault}; {self.remedy}"
