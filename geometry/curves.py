@@ -112,7 +112,7 @@ def turned(path: Path, angle: float) -> Path:
 
 
 def area(path: Path) -> float:
-    """Enclosed area in m^2, positive counter-clockwise: shoelace plus the arcs' segments (derived)."""
+    """Enclosed area in m^2, positive counter-clockwise: shoelace plus arc segments (derived)."""
     total = 0.0
     for edge in path.edges:
         total += 0.5 * (edge.start.conjugate() * edge.end).imag

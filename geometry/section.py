@@ -53,7 +53,8 @@ class CrossSection:
     Region names. Rotor: `rotor_iron`, `barrier_<k>` or, where radial ribs cut barrier k into
     cavities, `barrier_<k>_<letter>`; `shaft` (inside the bore); `gap_rotor` (rim to turning
     circle). Stator: `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air
-    between bore and copper), `slot_<s>_layer_<l>` (copper; layer 0 is at the slot bottom), `stator_iron`.
+    between bore and copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom),
+    `stator_iron`.
     """
 
     pole_pairs: int
