@@ -1,0 +1,128 @@
+"""Regions to a welded outline: each point and each edge once, loops as signed edge numbers.
+
+Axes: n_point welded points, n_edge edges.
+"""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+from scipy.sparse import coo_array
+from scipy.sparse.csgraph import connected_components
+from scipy.spatial import cKDTree
+
+from lamwright.geometry.curves import Edge, Path
+from lamwright.geometry.section import Region
+
+from .types import IntArray
+
+ComplexArray = npt.NDArray[np.complex128]
+WELD_TOL = 1e-9  # m; outlines are exact to rounding (1e-16), a punch to 1e-5
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Outline:
+    """The edges of a set of regions, each stored once.
+
+    `loops[region][loop]` lists signed edge numbers from 1, negative where the loop runs the edge
+    backwards; the outer loop is first.
+    """
+
+    points: ComplexArray  # (n_point,), m
+    edges: tuple[Edge, ...]  # between welded points
+    ends: IntArray  # (n_edge, 2), point numbers
+    loops: tuple[tuple[tuple[int, ...], ...], ...]
+
+    def regions_of_edge(self) -> list[list[int]]:
+        """The one or two regions beside each edge."""
+        beside: list[list[int]] = [[] for _ in self.edges]
+        for region, loops in enumerate(self.loops):
+            for loop in loops:
+                for signed in loop:
+                    if region not in beside[abs(signed) - 1]:
+                        beside[abs(signed) - 1].append(region)
+        return beside
+
+
+def weld(points: ComplexArray) -> tuple[ComplexArray, IntArray]:
+    """Points closer than WELD_TOL made one: the kept points and each point's number."""
+    pairs = cKDTree(np.column_stack([points.real, points.imag])).query_pairs(
+        WELD_TOL, output_type="ndarray"
+    )
+    graph = coo_array((np.ones(len(pairs)), (pairs[:, 0], pairs[:, 1])), shape=(points.size,) * 2)
+    _, label = connected_components(graph, directed=False)
+    # Numbered in order of first appearance, so that the result follows the input's order.
+    _, first, back = np.unique(label, return_index=True, return_inverse=True)
+    order = np.argsort(first, kind="stable")
+    rank = np.empty_like(order)
+    rank[order] = np.arange(order.size)
+    return points[first[order]], rank[back].astype(np.int64)
+
+
+def outline_of(regions: Sequence[Region]) -> Outline:
+    """The welded outline of `regions`, whose touching edges must be identical.
+
+    Raises:
+        ValueError: where a path is not closed.
+    """
+    paths = [
+        (k, path) for k, region in enumerate(regions) for path in (region.outer, *region.holes)
+    ]
+    edges = [edge for _, path in paths for edge in path.edges]
+    ends = np.array([p for edge in edges for p in (edge.start, edge.end)], dtype=np.complex128)
+    points, number = weld(ends)
+    number = number.reshape(-1, 2)
+    book = _EdgeBook(points)
+    loops: list[list[tuple[int, ...]]] = [[] for _ in regions]
+    at = 0
+    for k, path in paths:
+        here = number[at : at + len(path.edges)]
+        at += len(path.edges)
+        if np.any(here[:, 1] != np.roll(here[:, 0], -1)):
+            raise ValueError(f"region {regions[k].name}: a path is not closed")
+        signed = (book.add(e, int(a), int(b)) for e, (a, b) in zip(path.edges, here, strict=True))
+        loops[k].append(tuple(s for s in signed if s != 0))
+    return Outline(
+        points=points,
+        edges=tuple(book.edges),
+        ends=np.array(book.ends, dtype=np.int64).reshape(-1, 2),
+        loops=tuple(tuple(loop) for loop in loops),
+    )
+
+
+class _EdgeBook:
+    """Finds an edge again, run either way; two edges with the same ends differ by their rise."""
+
+    def __init__(self, points: ComplexArray) -> None:
+        self.points = points
+        self.edges: list[Edge] = []
+        self.ends: list[tuple[int, int]] = []
+        self._known: dict[tuple[int, int], list[tuple[float, int]]] = {}
+
+    def add(self, edge: Edge, a: int, b: int) -> int:
+        """Signed number (from 1) of the edge; 0 for one shorter than WELD_TOL."""
+        if a == b:
+            return 0
+        way = 1 if a < b else -1
+        rise = way * 0.5 * edge.bulge * abs(edge.end - edge.start)
+        known = self._known.setdefault((min(a, b), max(a, b)), [])
+        for other, signed in known:
+            if abs(other - rise) < WELD_TOL:
+                return way * signed
+        self.edges.append(Edge(complex(self.points[a]), complex(self.points[b]), edge.bulge))
+        self.ends.append((a, b))
+        known.append((rise, way * len(self.edges)))
+        return len(self.edges)
+
+
+def path_of(outline: Outline, loop: Sequence[int]) -> Path:
+    """A loop of the outline as a closed path."""
+    edges = []
+    for signed in loop:
+        edge = outline.edges[abs(signed) - 1]
+        edges.append(edge if signed > 0 else Edge(edge.end, edge.start, -edge.bulge))
+    return Path(tuple(edges))
+
+
+EdgeSize = Callable[[Edge], float]
