@@ -7,6 +7,7 @@ arcs, so that what is analysed is what is punched, to the last bit.
 
 import cmath
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 Point = complex
@@ -107,8 +108,7 @@ def reversed_path(path: Path) -> Path:
 
 def turned(path: Path, angle: float) -> Path:
     """The path turned about the origin by `angle` rad."""
-    turn = cmath.exp(1j * angle)
-    return Path(tuple(Edge(e.start * turn, e.end * turn, e.bulge) for e in path.edges))
+    return Path(tuple(turned_edge(edge, angle) for edge in path.edges))
 
 
 def area(path: Path) -> float:
@@ -124,3 +124,70 @@ def area(path: Path) -> float:
 def perimeter(path: Path) -> float:
     """Length of the closed path in m."""
     return sum(edge.length for edge in path.edges)
+
+
+def mirrored_edge(edge: Edge) -> Edge:
+    """The edge mirrored in the real axis, still run from its start to its end."""
+    return Edge(edge.start.conjugate(), edge.end.conjugate(), -edge.bulge)
+
+
+def turned_edge(edge: Edge, angle: float) -> Edge:
+    """The edge turned about the origin by `angle` rad."""
+    turn = cmath.exp(1j * angle)
+    return Edge(edge.start * turn, edge.end * turn, edge.bulge)
+
+
+def offset_edge(edge: Edge, distance: float) -> Edge:
+    """The parallel curve at `distance` m to the left of travel: same sweep, so same bulge.
+
+    Raises:
+        ValueError: if the distance reaches or passes the centre of the arc.
+    """
+    if edge.is_line:
+        shift = 1j * edge.direction(0.5) * distance
+        return Edge(edge.start + shift, edge.end + shift)
+    centre, radius = edge.centre, edge.radius
+    scale = 1.0 - math.copysign(1.0, edge.bulge) * distance / radius
+    if scale <= 0.0:
+        raise ValueError(f"an offset of {distance:g} m passes the centre, radius {radius:g} m")
+    return Edge(
+        centre + scale * (edge.start - centre), centre + scale * (edge.end - centre), edge.bulge
+    )
+
+
+def share_of(edge: Edge, point: Point) -> float:
+    """Where along the edge `point` lies: 0 at the start, 1 at the end, beyond outside.
+
+    The point is taken as its projection on the unbounded line or circle. On an arc the value is
+    counted from the arc's middle to half a turn either way.
+    """
+    if edge.is_line:
+        chord = edge.end - edge.start
+        return ((point - edge.start) * chord.conjugate()).real / abs(chord) ** 2
+    middle = edge.point(0.5)
+    centre = edge.centre
+    return 0.5 + cmath.phase((point - centre) / (middle - centre)) / edge.sweep
+
+
+def piece(edge: Edge, start: Point, end: Point) -> Edge:
+    """The part of the edge between two points on it, in the edge's sense of travel."""
+    if edge.is_line:
+        return Edge(start, end)
+    share = share_of(edge, end) - share_of(edge, start)
+    return Edge(start, end, math.tan(share * edge.sweep / 4.0))
+
+
+def chained(edges: Sequence[Edge]) -> tuple[Edge, ...]:
+    """The edges with each start set to the end before it, so that rounding leaves no gap."""
+    result: list[Edge] = []
+    for edge in edges:
+        start = result[-1].end if result else edge.start
+        result.append(Edge(start, edge.end, edge.bulge))
+    return tuple(result)
+
+
+def closed(edges: Sequence[Edge]) -> Path:
+    """The chain as a path whose last edge ends exactly where the first starts."""
+    chain = chained(edges)
+    last = chain[-1]
+    return Path((*chain[:-1], Edge(last.start, chain[0].start, last.bulge)))

@@ -1,0 +1,62 @@
+"""Exact distances between lines and arcs.
+
+The nearest points of two edges are a common point, or have an end of one edge among them, or lie
+on a common normal: the perpendicular from an arc's centre to a line, or the line through both
+centres of two arcs (derived: stationarity of the distance along both edges). Every candidate is a
+pair of points on the edges, so the least of them is the distance.
+"""
+
+from collections.abc import Iterable, Sequence
+
+from .corners import foot, intersections, is_within
+from .curves import Edge, Point
+
+
+def nearest(first: Edge, second: Edge) -> tuple[Point, Point]:
+    """The nearest points of two edges, on the first and on the second."""
+    for point in intersections(first, second):
+        return point, point
+    pairs = [(p, q) for p in (first.start, first.end) for q in (second.start, second.end)]
+    pairs += [(p, q) for p, q in _end_feet(first, second)]
+    pairs += [(p, q) for q, p in _end_feet(second, first)]
+    pairs += [
+        (p, q)
+        for p, q in _common_normals(first, second)
+        if is_within(first, p) and is_within(second, q)
+    ]
+    return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
+
+
+def distance(first: Iterable[Edge], second: Sequence[Edge]) -> float:
+    """Least distance in m between two chains of edges, 0 where they cross."""
+    gap = float("inf")
+    for a in first:
+        for b in second:
+            p, q = nearest(a, b)
+            gap = min(gap, abs(p - q))
+    return gap
+
+
+def _end_feet(first: Edge, second: Edge) -> list[tuple[Point, Point]]:
+    feet = [(end, foot(second, end)) for end in (first.start, first.end)]
+    return [(end, point) for end, point in feet if is_within(second, point)]
+
+
+def _common_normals(first: Edge, second: Edge) -> list[tuple[Point, Point]]:
+    if first.is_line and second.is_line:
+        return []
+    if first.is_line:
+        point = foot(first, second.centre)
+        return [(point, foot(second, point))]
+    if second.is_line:
+        point = foot(second, first.centre)
+        return [(foot(first, point), point)]
+    between = second.centre - first.centre
+    if between == 0.0:
+        return []
+    unit = between / abs(between)
+    return [
+        (first.centre + s * first.radius * unit, second.centre + t * second.radius * unit)
+        for s in (1.0, -1.0)
+        for t in (1.0, -1.0)
+    ]

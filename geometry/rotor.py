@@ -1,0 +1,158 @@
+"""The rotor of one pole: iron, cavities, shaft and the rotor's half of the air gap.
+
+Everything is drawn in the q axis's frame and turned by half a pole pitch into the rotor's frame,
+where the d axis lies at angle 0.
+"""
+
+import cmath
+import math
+from dataclasses import dataclass
+
+from .barriers import MidLine, RibCut, cavities, mid_line, rib_cuts
+from .curves import Edge, Path, Point, arc, line, reversed_edge, reversed_path, turned
+from .design import BarrierDesign, MachineDesign
+from .distances import nearest
+from .section import Region, Rib
+
+MM = 1e-3  # m
+LETTERS = "abc"
+HEIGHT_TOL = 1e-9  # m, far above rounding (1e-17 m) and far below any rib
+
+
+@dataclass(frozen=True, slots=True)
+class RotorFrame:
+    """Radii (m) and angles that the whole rotor shares."""
+
+    rotor_radius: float
+    shaft_radius: float
+    circle_radius: float
+    pole_pairs: int
+
+    @property
+    def q_axis(self) -> float:
+        """Angle of the q axis, half a pole pitch, in rad."""
+        return 0.5 * math.pi / self.pole_pairs
+
+
+def rotor_frame(design: MachineDesign) -> RotorFrame:
+    """Radii of the design's rotor in m; the turning circle lies in the middle of the gap."""
+    bore = 0.5 * MM * design.stator.bore_diameter_mm
+    rotor = bore - MM * design.rotor.gap_mm
+    return RotorFrame(
+        rotor_radius=rotor,
+        shaft_radius=0.5 * MM * design.rotor.shaft_diameter_mm,
+        # The same expression as CrossSection.circle_radius.
+        circle_radius=0.5 * (bore + rotor),
+        pole_pairs=design.pole_pairs,
+    )
+
+
+def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib, ...]]:
+    """Regions and ribs of one pole of the rotor, sector 0 to pi / pole_pairs, in m.
+
+    Returns:
+        Regions `rotor_iron`, each cavity, `shaft`, `gap_rotor`, tiling the sector; and the ribs.
+
+    Raises:
+        ValueError: for a shape that `checks.check_design` would have refused.
+    """
+    frame = rotor_frame(design)
+    air: list[Region] = []
+    ribs: list[Rib] = []
+    for number, barrier in enumerate(design.rotor.barrier, start=1):
+        paths, barrier_ribs = _barrier(number, barrier, frame)
+        names = cavity_names(number, len(paths))
+        air += [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
+        ribs += barrier_ribs
+    iron, shaft, gap = _sectors(frame)
+    holes = tuple(reversed_path(region.outer) for region in air)
+    return (
+        Region("rotor_iron", "rotor_steel", iron, holes),
+        *air,
+        Region("shaft", "shaft", shaft),
+        Region("gap_rotor", "air", gap),
+    ), tuple(ribs)
+
+
+def cavity_names(number: int, count: int) -> tuple[str, ...]:
+    """Names of the cavities of a barrier, counter-clockwise; one cavity has no letter."""
+    if count == 1:
+        return (f"barrier_{number}",)
+    return tuple(f"barrier_{number}_{letter}" for letter in LETTERS[:count])
+
+
+def _barrier(
+    number: int, barrier: BarrierDesign, frame: RotorFrame
+) -> tuple[list[Path], list[Rib]]:
+    mid = mid_line(barrier, frame.rotor_radius, frame.pole_pairs)
+    cuts = rib_cuts(barrier)
+    paths = cavities(mid, cuts)
+    ribs = _tangential_ribs(number, mid, frame) + _radial_ribs(number, paths, cuts)
+    turn = cmath.exp(1j * frame.q_axis)
+    placed = [Rib(r.name, r.kind, r.barrier, r.start * turn, r.end * turn) for r in ribs]
+    return [turned(path, frame.q_axis) for path in paths], placed
+
+
+def _tangential_ribs(number: int, mid: MidLine, frame: RotorFrame) -> list[Rib]:
+    cap = mid.cap_centre
+    out = cap / abs(cap)
+    start, end = cap + 0.5 * mid.thickness * out, frame.rotor_radius * out
+    return [
+        Rib(f"tangential_{number}_right", "tangential", number, start.conjugate(), end.conjugate()),
+        Rib(f"tangential_{number}_left", "tangential", number, start, end),
+    ]
+
+
+def _radial_ribs(number: int, paths: tuple[Path, ...], cuts: tuple[RibCut, ...]) -> list[Rib]:
+    ribs = []
+    for k, cut in enumerate(cuts):
+        start, end = _thinnest(paths[k], paths[k + 1], cut)
+        ribs.append(Rib(f"radial_{number}_{LETTERS[k]}", "radial", number, start, end))
+    return ribs
+
+
+def _thinnest(below: Path, above: Path, cut: RibCut) -> tuple[Point, Point]:
+    """Where a rib is thinnest: in the middle of its sides where they run side by side.
+
+    Between rounds without straight part, or sides that do not face each other, the nearest points.
+    """
+    lower = _rib_side(below, cut.middle - 0.5 * cut.width)
+    upper = _rib_side(above, cut.middle + 0.5 * cut.width)
+    straight = [sorted((e.start.real, e.end.real)) for e in (*lower, *upper) if e.is_line]
+    if len(straight) == 2:
+        first, last = max(x[0] for x in straight), min(x[1] for x in straight)
+        if first <= last:
+            middle = complex(0.5 * (first + last), cut.middle)
+            return middle - 0.5j * cut.width, middle + 0.5j * cut.width
+    pairs = [nearest(a, b) for a in lower for b in upper]
+    return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
+
+
+def _rib_side(path: Path, height: float) -> list[Edge]:
+    """The straight side of a rib and its fillets: what ends at that height."""
+    return [
+        edge
+        for edge in path.edges
+        if min(abs(edge.start.imag - height), abs(edge.end.imag - height)) < HEIGHT_TOL
+    ]
+
+
+def _sectors(frame: RotorFrame) -> tuple[Path, Path, Path]:
+    """Outer paths of iron, shaft and the rotor's half of the gap; shared edges are the same."""
+    side = cmath.exp(2j * frame.q_axis)
+    bore, rim, circle = (
+        _arc_about_shaft(radius, side)
+        for radius in (frame.shaft_radius, frame.rotor_radius, frame.circle_radius)
+    )
+    iron = Path(
+        (line(bore.start, rim.start), rim, line(rim.end, bore.end), reversed_edge(bore)),
+    )
+    shaft = Path((line(0j, bore.start), bore, line(bore.end, 0j)))
+    gap = Path(
+        (line(rim.start, circle.start), circle, line(circle.end, rim.end), reversed_edge(rim))
+    )
+    return iron, shaft, gap
+
+
+def _arc_about_shaft(radius: float, side: complex) -> Edge:
+    return arc(complex(radius), radius * side, 0j, ccw=True)
