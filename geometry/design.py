@@ -7,10 +7,17 @@ several values are the business of `checks`.
 
 from typing import Annotated, Literal
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
 
 Positive = Annotated[float, Field(gt=0.0)]
 NotNegative = Annotated[float, Field(ge=0.0)]
+
+
+def _whole(value: object) -> object:
+    """Refuse true and 1.0, which compare equal to a choice of 1."""
+    if isinstance(value, bool | float):
+        raise ValueError("not a whole number")
+    return value
 
 
 class _Table(BaseModel):
@@ -36,7 +43,7 @@ class StatorDesign(_Table):
 class WindingDesign(_Table):
     """A distributed three-phase winding with a whole number of slots per pole and phase."""
 
-    layers: Literal[1, 2]
+    layers: Annotated[Literal[1, 2], BeforeValidator(_whole)]
     coil_span_slots: Annotated[int, Field(ge=1)]
     turns_per_coil: Annotated[int, Field(ge=1)]
     parallel_paths: Annotated[int, Field(ge=1)] = 1
