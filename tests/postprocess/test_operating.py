@@ -1,0 +1,163 @@
+"""Operating points against the closed forms of the linear machine (checks A7)."""
+
+import math
+
+import numpy as np
+import pytest
+from lamwright.geometry.errors import LamwrightError, NotConverged
+from lamwright.postprocess.operating import (
+    AngleSettings,
+    best_angle,
+    copper_loss,
+    dq_currents,
+    mean_linkage_torque,
+    saliency_ratio,
+    search_positions,
+    terminal_state,
+)
+
+CURRENT = 10.0  # A
+L_Q = 0.01  # H
+OMEGA = 314.0  # rad/s
+# Table A7 of the closed forms: xi, greatest power factor, its angle, power factor at 45 el,
+# angle of most torque per flux. Betz et al. 1993 (from memory), re-derived.
+TABLE = [
+    (2.0, 0.333333, 54.7356, 0.316228, 63.4349),
+    (3.0, 0.500000, 60.0, 0.447214, 71.5651),
+    (5.0, 0.666667, 65.9052, 0.554700, 78.6901),
+    (7.0, 0.750000, 69.2952, 0.600000, 81.8699),
+    (8.0, 0.777778, 70.5288, 0.613941, 82.8750),
+    (10.0, 0.818182, 72.4516, 0.633238, 84.2894),
+    (15.0, 0.875000, 75.5225, 0.658505, 86.1859),
+]
+
+
+def linear(gamma: float, xi: float) -> tuple[float, float, float, float]:
+    """Currents and linkages of a linear machine of saliency xi."""
+    i_d, i_q = dq_currents(CURRENT, gamma)
+    return i_d, i_q, xi * L_Q * i_d, L_Q * i_q
+
+
+def power_factor(gamma: float, xi: float) -> float:
+    i_d, i_q, psi_d, psi_q = linear(gamma, xi)
+    return terminal_state(
+        i_d=i_d,
+        i_q=i_q,
+        psi_d=psi_d,
+        psi_q=psi_q,
+        omega_e=OMEGA,
+        resistance=0.0,
+        end_inductance=0.0,
+    ).power_factor
+
+
+@pytest.mark.parametrize(("xi", "best", "at_deg", "at_45", "_"), TABLE)
+def test_power_factor_of_a_linear_machine(xi, best, at_deg, at_45, _):
+    """A7: most is (xi-1)/(xi+1) at tan gamma = sqrt xi; values to the six digits printed."""
+    assert power_factor(math.radians(at_deg), xi) == pytest.approx(best, abs=6e-7)
+    assert power_factor(math.radians(45.0), xi) == pytest.approx(at_45, abs=6e-7)
+    around = [power_factor(math.radians(at_deg + d), xi) for d in (-0.5, 0.0, 0.5)]
+    assert max(around) == around[1]
+
+
+@pytest.mark.parametrize("xi", [row[0] for row in TABLE])
+def test_best_angle_of_a_linear_machine_is_45_degrees(xi):
+    """A7: T = T_45 sin 2 gamma; the interpolation is exact then, its grid is 0.01 degree."""
+
+    def torque(gamma: float) -> float:
+        i_d, i_q, psi_d, psi_q = linear(gamma, xi)
+        return mean_linkage_torque(2, i_d, i_q, [psi_d], [psi_q])
+
+    search = best_angle(torque)
+    assert math.degrees(search.gamma) == pytest.approx(45.0, abs=0.011)
+    t_45 = 1.5 * 2 * 0.5 * (xi - 1.0) * L_Q * CURRENT**2
+    for gamma, found in zip(search.tried, search.torques, strict=True):
+        assert found == pytest.approx(t_45 * math.sin(2.0 * gamma), rel=1e-12)
+
+
+def saturated(gamma: float) -> float:
+    """Torque of an invented machine with psi_d = a tanh(i_d / b), linear q axis."""
+    i_d, i_q = dq_currents(CURRENT, gamma)
+    return 3.0 * (0.45 * math.tanh(i_d / 4.0) * i_q - L_Q * i_q * i_d)
+
+
+def test_best_angle_of_a_saturated_machine():
+    """Against a dense scan (0.001 degree) of the same law; 0.05 is a quarter of the tolerance."""
+    scan = np.radians(np.arange(30.0, 85.0, 0.001))
+    exact = math.degrees(scan[np.argmax([saturated(g) for g in scan])])
+    search = best_angle(saturated)
+    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.05)
+    assert len(search.tried) <= 6
+
+
+def test_best_angle_far_from_the_first_angles():
+    """A peak at 25 degrees, outside of what is tried first: the search walks there."""
+    peak = math.radians(25.0)
+    search = best_angle(lambda g: 5.0 - 20.0 * (g - peak) ** 2)
+    assert math.degrees(search.gamma) == pytest.approx(25.0, abs=0.05)
+
+
+def test_no_saliency_is_said():
+    """Torque that is negative everywhere has no best angle; the user is told why."""
+    with pytest.raises(LamwrightError, match="no saliency along its d axis"):
+        best_angle(lambda g: -math.sin(2.0 * g))
+
+
+def test_search_that_does_not_settle_is_reported():
+    """Four angles of a saturated machine leave the prediction moving by more than 1e-9 rad."""
+    settings = AngleSettings(tolerance=1e-9, most_angles=4)
+    with pytest.raises(NotConverged, match="no current angle of most torque") as caught:
+        best_angle(saturated, settings)
+    assert len(caught.value.history) == 4
+
+
+def test_search_does_not_rest_at_a_bound():
+    """A torque that rises up to 90 degrees has its greatest value outside of the range."""
+    with pytest.raises(NotConverged, match="no current angle of most torque"):
+        best_angle(lambda g: 1.0 + g**2)
+
+
+@pytest.mark.parametrize("q", range(1, 7))
+def test_search_positions_cancel_the_slot_ripple(q):
+    """Orders 6 q k average to zero up to k = q (derived): a slot ripple of 1 leaves rounding."""
+    pole_pairs = 3
+    theta_e = pole_pairs * search_positions(pole_pairs, q)
+    for k in range(1, q + 1):
+        assert np.mean(np.cos(6 * q * k * theta_e + 0.4)) == pytest.approx(0.0, abs=1e-12)
+
+
+def test_saliency_of_a_linear_machine_is_xi():
+    """By definition, at any angle: exact."""
+    for gamma in (0.3, 0.8, 1.4):
+        i_d, i_q, psi_d, psi_q = linear(gamma, 7.0)
+        assert saliency_ratio(i_d, i_q, psi_d, psi_q) == pytest.approx(7.0, rel=1e-12)
+
+
+def test_power_balance_at_the_terminals():
+    """Input = shaft power + copper loss for any resistance and leakage; exact (derived)."""
+    i_d, i_q, psi_d, psi_q = linear(1.0, 6.0)
+    state = terminal_state(
+        i_d=i_d,
+        i_q=i_q,
+        psi_d=psi_d,
+        psi_q=psi_q,
+        omega_e=OMEGA,
+        resistance=0.9,
+        end_inductance=1.5e-3,
+    )
+    pole_pairs = 2
+    shaft = mean_linkage_torque(pole_pairs, i_d, i_q, [psi_d], [psi_q]) * OMEGA / pole_pairs
+    assert state.copper_loss == pytest.approx(1.5 * 0.9 * CURRENT**2, rel=1e-12)
+    assert state.input_power == pytest.approx(shaft + state.copper_loss, rel=1e-12)
+    apparent = math.sqrt(3.0) * state.line_voltage * CURRENT / math.sqrt(2.0)
+    assert state.power_factor == pytest.approx(state.input_power / apparent, rel=1e-12)
+
+
+def test_resistive_load_has_unit_power_factor():
+    """No flux: u = R i, power factor 1, line voltage sqrt(3/2) R I (derived); exact."""
+    state = terminal_state(
+        i_d=3.0, i_q=4.0, psi_d=0.0, psi_q=0.0, omega_e=OMEGA, resistance=2.0, end_inductance=0.0
+    )
+    assert state.power_factor == pytest.approx(1.0, rel=1e-12)
+    assert state.line_voltage == pytest.approx(math.sqrt(1.5) * 2.0 * 5.0, rel=1e-12)
+    assert copper_loss(5.0, 2.0) == pytest.approx(75.0, rel=1e-12)
