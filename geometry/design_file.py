@@ -11,6 +11,7 @@ import stat
 import tomllib
 from collections.abc import Iterator
 from dataclasses import dataclass
+from operator import itemgetter
 from pathlib import Path
 from typing import TypeVar
 
@@ -126,9 +127,8 @@ def _validated(path: Path, text: str, model: type[_Model]) -> _Model:
         except ValidationError as error:
             found = faults(error, model)
     lines = key_lines(text)
-    raise DesignError(
-        "\n".join(f"{_name(path)}:{line_of(lines, loc)}: {fault}" for loc, fault in found)
-    )
+    at_lines = sorted(((line_of(lines, loc), fault) for loc, fault in found), key=itemgetter(0))
+    raise DesignError("\n".join(f"{_name(path)}:{line}: {fault}" for line, fault in at_lines))
 
 
 def _beyond_toml(path: KeyPath, value: object) -> Iterator[tuple[KeyPath, str]]:
