@@ -1,0 +1,147 @@
+"""Worker processes: order, errors, death, sharing. Desks here are plain built-in objects."""
+
+import os
+import signal
+import subprocess
+import sys
+import time
+from functools import partial
+
+import pytest
+
+from lamwright.app.pool import SINGLE_THREADED, Worker, WorkerLost, share
+
+TIMEOUT = 20.0  # s, far above the 0.1 s a call takes here
+
+
+@pytest.fixture
+def hired():
+    """Start workers by their desk's maker; they are stopped at the end."""
+    workers = []
+
+    def hire(make_desk):
+        workers.append(Worker(make_desk))
+        return workers[-1]
+
+    yield hire
+    for worker in workers:
+        worker.stop()
+
+
+def test_calls_are_served_in_order_on_one_desk(hired):
+    """What is put on the desk stays there for later calls."""
+    worker = hired(list)
+    for item in "abc":
+        worker.submit(list.append, item)
+    assert worker.submit(list.copy).result(TIMEOUT) == ["a", "b", "c"]
+
+
+def test_calls_larger_than_a_pipe_do_not_block_the_sender(hired):
+    """A megabyte to a busy worker returns at once; a pipe alone holds 64 kB."""
+    worker = hired(partial(float, 1.0))
+    worker.submit(time.sleep)
+    began = time.perf_counter()
+    worker.submit(float.__eq__, b"x" * 1_000_000)
+    assert not worker.submit(float.__bool__).done()
+    assert time.perf_counter() - began < 1.0
+
+
+def test_results_larger_than_a_pipe_do_not_block_the_worker(hired):
+    """A megabyte back that nobody has asked for yet does not hold up the next call."""
+    worker = hired(partial(bytes, 1_000_000))
+    large = worker.submit(bytes.upper)
+    assert worker.submit(bytes.__len__).result(TIMEOUT) == 1_000_000
+    assert large.result(TIMEOUT) == bytes(1_000_000)
+
+
+def test_an_error_comes_back_as_itself(hired):
+    """Type and text of an error survive the way back, and the worker goes on."""
+    worker = hired(list)
+    with pytest.raises(ValueError, match="5 is not in list"):
+        worker.submit(list.index, 5).result(TIMEOUT)
+    assert worker.submit(list.__len__).result(TIMEOUT) == 0
+
+
+def test_a_result_that_cannot_be_sent_is_an_error_not_silence(hired):
+    """A view of memory cannot be pickled; the caller must not wait for ever."""
+    worker = hired(bytes)
+    with pytest.raises(TypeError, match="cannot pickle"):
+        worker.submit(memoryview).result(TIMEOUT)
+
+
+def test_death_of_a_worker_fails_what_is_open_and_what_follows(hired):
+    """A process that ends while serving: `WorkerLost`, for every call, at once."""
+    worker = hired(int)
+    with pytest.raises(WorkerLost, match="ended without an answer"):
+        worker.submit(os._exit).result(TIMEOUT)
+    with pytest.raises(WorkerLost, match="ended without an answer"):
+        worker.submit(int.__bool__).result(TIMEOUT)
+
+
+def test_worker_is_deaf_to_the_interrupt_key_from_birth(hired):
+    """The signal of the terminal goes to all processes; a starting worker must not print."""
+    worker = hired(int)
+    os.kill(worker.pid, signal.SIGINT)
+    assert worker.submit(int.__bool__).result(TIMEOUT) is False
+    os.kill(worker.pid, signal.SIGINT)
+    assert worker.submit(int.__bool__).result(TIMEOUT) is False
+
+
+def test_worker_ends_with_the_process_that_started_it():
+    """A caller that is killed leaves nobody behind, not even in the middle of a call."""
+    code = (
+        "import time; from functools import partial; from lamwright.app.pool import Worker\n"
+        "w = Worker(partial(float, 60)); w.submit(time.sleep)\n"
+        "print(w.pid, flush=True); time.sleep(60)"
+    )
+    with subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE) as caller:
+        pid = int(caller.stdout.readline())
+        caller.kill()
+    until = time.monotonic() + TIMEOUT
+    while _runs(pid) and time.monotonic() < until:
+        time.sleep(0.05)
+    assert not _runs(pid)
+
+
+def _runs(pid):
+    try:
+        os.kill(pid, 0)
+    except ProcessLookupError:
+        return False
+    return True
+
+
+def test_worker_holds_blas_to_one_thread(hired):
+    """The variables are set before numpy loads there, whatever the caller has loaded."""
+    worker = hired(partial(str, "OPENBLAS_NUM_THREADS"))
+    assert SINGLE_THREADED["OPENBLAS_NUM_THREADS"] == "1"
+    assert worker.submit(os.getenv).result(TIMEOUT) == "1"
+
+
+def test_shared_tasks_keep_their_order(hired):
+    """Results stand in the order of the tasks, whoever did them; each is counted once."""
+    counts = []
+    tasks = [partial(divmod, k) for k in range(40)]
+    results = share(tasks, 7, [hired(partial(int, 7))], counts.append)
+    assert results == [divmod(k, 7) for k in range(40)]
+    assert counts == sorted(counts)
+    assert counts[-1] == 40
+
+
+def test_both_processes_take_tasks(hired):
+    """The worker is given the first task, this process takes the second."""
+    worker = hired(os.getpid)
+    results = share([partial(max, 0)] * 2, os.getpid(), [worker], lambda done: None)
+    assert results == [worker.pid, os.getpid()]
+
+
+def test_share_without_workers():
+    """One core: this process does it all."""
+    assert share([partial(pow, 2)] * 3, 5, [], lambda done: None) == [32, 32, 32]
+
+
+def test_share_reports_a_failed_task(hired):
+    """A task that fails in the worker fails the whole, with its own error."""
+    tasks = [partial(divmod, 1)] * 4
+    with pytest.raises(ZeroDivisionError):
+        share(tasks, 1, [hired(int)], lambda done: None)
