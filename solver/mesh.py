@@ -2,64 +2,71 @@
 
 Idea: nodes on the edges are placed here, by a graded size function; gmsh only fills the polygons
 between them with triangles. The second-order nodes are added here too, on the true arcs.
-1. Weld the regions' edges (they share them by construction, so there is no boolean operation).
-2. Cut each edge into steps; gmsh gets each step as a straight line with two nodes.
-3. Triangulate, sizes inside extended from the boundary.
+1. Fold the sector where it is symmetric (mesh_fold), weld the edges of the regions (mesh_outline).
+   They share edges by construction, so there is no boolean operation.
+2. Cut each edge into steps (mesh_sizes, mesh_steps); gmsh gets each step as a line with two nodes.
+3. Triangulate, sizes inside extended from the boundary; the air gap is filled by rings (mesh_gap).
 4. Add mid-side nodes, on the arcs where a side is part of one. An element that this turns over
-   (a coarse arc beside a thin sliver) has its arcs cut finer and all is done again.
+   (a coarse arc beside a thin sliver) has its edges cut finer, and all is done again.
+5. Unfold.
 """
 
+import math
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from lamwright.geometry.curves import Edge
-from lamwright.geometry.section import Region
+from lamwright.geometry.section import CrossSection, Region
 
 from .mesh_checks import least_jacobian_share
+from .mesh_fold import fold, folded_points, unfold
+from .mesh_gap import Rings, fill_rings
 from .mesh_outline import ComplexArray, Outline, outline_of
-from .mesh_sizes import SizeSources, node_shares, points_at
-from .types import FloatArray, IntArray, PlanarMesh
+from .mesh_plan import (
+    MeshSettings,
+    circle_edges,
+    gap_of,
+    lamination_sizing,
+    section_sizing,
+    side_twins,
+)
+from .mesh_sizes import NO_SOURCES, SizeSources, Sizing, node_shares
+from .mesh_steps import Steps, read_only, second_order, steps_of
+from .types import FloatArray, IntArray, PlanarMesh, SectorMesh
 
 EdgeSizes = Callable[[Edge], float] | Mapping[Edge, float]
 MM = 1e3  # gmsh's absolute tolerances (1e-8) are made for numbers of the order of 1
 LEAST_JACOBIAN = 0.1  # of the mean; below it an element is taken for turned over
-MAX_ROUNDS = 6  # of halving the arcs beside bad elements
+MAX_ROUNDS = 6  # of halving the steps beside bad elements
+OCTAVE_PARTS = 4  # sizes of points inside are grouped by quarter octaves: one field per group
 
 
 @dataclass(frozen=True, slots=True)
 class RegionSettings:
     """How a set of regions is meshed."""
 
-    growth: float = 0.35  # change of edge length per distance
+    growth: float = 0.35  # change of side per distance
+    step_angle: float = math.pi / 12.0  # area of a full circle right to 1e-5, see tests
     algorithm: int = 6  # gmsh's number of the 2D method
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class _Steps:
-    """Straight steps between nodes on the edges: what gmsh gets."""
-
-    nodes: ComplexArray  # (n_node,), m
-    steps: IntArray  # (n_step, 2), node numbers
-    middles: ComplexArray  # (n_step,), the true middle on the edge
-    edge_of_step: IntArray  # (n_step,)
-    loops: tuple[tuple[tuple[int, ...], ...], ...]  # signed step numbers from 1
 
 
 def mesh_regions(
     regions: Sequence[Region],
     edge_sizes: EdgeSizes,
     settings: RegionSettings | None = None,
-    refine_at: SizeSources | None = None,
+    refine_at: SizeSources = NO_SOURCES,
+    turn_sides: float | None = None,
 ) -> PlanarMesh:
     """Mesh of any regions that share their touching edges.
 
     Args:
         regions: areas with identical edges (either way) where they touch.
         edge_sizes: wanted element side in m on each edge, as a function or a table of every edge.
-        settings: growth and method.
-        refine_at: more points with a wanted size, on edges or inside.
+        settings: growth, steps on arcs and method.
+        refine_at: points with a wanted side, on edges or inside.
+        turn_sides: angle in rad of a sector whose two sides are to get the same nodes, turned.
 
     Returns:
         Mesh with `region_of_elem` in the order of `regions`.
@@ -70,61 +77,165 @@ def mesh_regions(
     settings = settings or RegionSettings()
     outline = outline_of(regions)
     size_of = edge_sizes.__getitem__ if isinstance(edge_sizes, Mapping) else edge_sizes
-    sizes = np.array([size_of(edge) for edge in outline.edges], dtype=np.float64)
+    sizing = Sizing(
+        edge_sizes=np.array([size_of(edge) for edge in outline.edges], dtype=np.float64),
+        growth=settings.growth,
+        step_angle=settings.step_angle,
+        sources=refine_at,
+        twins=() if turn_sides is None else side_twins(outline, turn_sides),
+    )
     names = tuple(region.name for region in regions)
-    for _ in range(MAX_ROUNDS):
-        shares = node_shares(outline.edges, sizes, refine_at, settings.growth)
-        steps = _steps_of(outline, shares)
-        mesh = _second_order(steps, *_fill(steps, settings, refine_at), names)
-        bad = least_jacobian_share(mesh.nodes[mesh.elements]) < LEAST_JACOBIAN
-        if not np.any(bad):
-            return mesh
-        touched = np.isin(steps.steps, mesh.elements[bad][:, :3]).all(axis=1)
-        guilty = np.unique(steps.edge_of_step[touched])
-        sizes[guilty] = 0.5 * np.minimum(sizes[guilty], [_step(outline, shares, g) for g in guilty])
-    raise ValueError(f"{int(bad.sum())} elements stay turned over after {MAX_ROUNDS} refinements")
+    return read_only(_mesh(outline, sizing, names, refine_at, settings.algorithm))
 
 
-def _step(outline: Outline, shares: list[FloatArray], edge: int) -> float:
-    """Longest step on an edge in m."""
-    return float(np.diff(shares[edge]).max()) * outline.edges[edge].length
+def mesh_section(section: CrossSection, settings: MeshSettings | None = None) -> SectorMesh:
+    """Mesh of one pole for the magnetic field, rotor and stator apart.
 
+    Args:
+        section: the pole.
+        settings: sizes.
 
-def _steps_of(outline: Outline, shares: list[FloatArray]) -> _Steps:
-    """Number the nodes (points of the outline first) and the steps of all edges."""
-    nodes, steps, middles, edge_of_step = [outline.points], [], [], []
-    numbers: list[list[int]] = []  # steps of each edge, from 1
-    n_node, n_step = outline.points.size, 0
-    for k, (edge, share) in enumerate(zip(outline.edges, shares, strict=True)):
-        inner = np.arange(n_node, n_node + share.size - 2)
-        chain = np.concatenate([outline.ends[k, :1], inner, outline.ends[k, 1:]])
-        nodes.append(points_at(edge, share[1:-1]))
-        steps.append(np.column_stack([chain[:-1], chain[1:]]))
-        middles.append(points_at(edge, 0.5 * (share[1:] + share[:-1])))
-        edge_of_step.append(np.full(share.size - 1, k))
-        numbers.append(list(range(n_step + 1, n_step + share.size)))
-        n_node, n_step = n_node + inner.size, n_step + share.size - 1
+    Returns:
+        Both meshes in their own frames, with the same evenly spaced nodes on the turning circle.
 
-    def cut(loop: tuple[int, ...]) -> tuple[int, ...]:
-        return tuple(
-            n
-            for s in loop
-            for n in (numbers[s - 1] if s > 0 else [-n for n in reversed(numbers[-s - 1])])
-        )
-
-    return _Steps(
-        nodes=np.concatenate(nodes),
-        steps=np.concatenate(steps).astype(np.int64),
-        middles=np.concatenate(middles),
-        edge_of_step=np.concatenate(edge_of_step).astype(np.int64),
-        loops=tuple(tuple(cut(loop) for loop in loops) for loops in outline.loops),
+    Raises:
+        ValueError: where the mesh cannot be made valid.
+    """
+    settings = settings or MeshSettings()
+    n_circle = circle_edges(section, settings)
+    return SectorMesh(
+        rotor=_mesh_part(section, section.rotor, (2,), n_circle, settings),
+        stator=_mesh_part(
+            section, section.stator, (section.slots // section.pole_pairs, 2), n_circle, settings
+        ),
+        pole_pairs=section.pole_pairs,
+        circle_radius=section.circle_radius,
+        n_circle=n_circle,
     )
 
 
+def _mesh_part(
+    section: CrossSection,
+    regions: Sequence[Region],
+    copies: Sequence[int],
+    n_circle: int,
+    settings: MeshSettings,
+) -> PlanarMesh:
+    """Rotor or stator, by its finest fan."""
+    fan = fold(regions, math.pi / section.pole_pairs, [c for c in copies if n_circle % c == 0])
+    outline = outline_of(fan.regions)
+    sizing = section_sizing(section, fan, outline, n_circle, settings)
+    names = tuple(region.name for region in regions)
+    piece_names = tuple(region.name for region in fan.regions)
+    mesh = _mesh(outline, sizing, piece_names, NO_SOURCES, settings.algorithm, gap_of(fan))
+    return read_only(unfold(fan, mesh, names))
+
+
+def mesh_lamination(
+    section: CrossSection,
+    settings: MeshSettings | None = None,
+    refine_at: SizeSources = NO_SOURCES,
+) -> PlanarMesh:
+    """Mesh of one pole of the rotor lamination alone, for stress.
+
+    Args:
+        section: the pole.
+        settings: sizes; `scale` refines all of them.
+        refine_at: points with a wanted side, as an adaptive loop asks for.
+
+    Returns:
+        The iron only; nodes on the side at angle pi / pole_pairs are those at angle 0, turned.
+
+    Raises:
+        ValueError: where the mesh cannot be made valid.
+    """
+    settings = settings or MeshSettings()
+    iron = [region for region in section.rotor if region.name == "rotor_iron"]
+    fan = fold(iron, math.pi / section.pole_pairs, (2,))
+    refine = SizeSources(folded_points(fan, refine_at.points), refine_at.sizes)
+    outline = outline_of(fan.regions)
+    sizing = lamination_sizing(section, fan, outline, refine, settings)
+    names = tuple(region.name for region in iron)
+    mesh = _mesh(outline, sizing, names, refine, settings.algorithm)
+    return read_only(unfold(fan, mesh, names))
+
+
+def _mesh(
+    outline: Outline,
+    sizing: Sizing,
+    names: tuple[str, ...],
+    inside: SizeSources,
+    algorithm: int,
+    gap: int | None = None,
+) -> PlanarMesh:
+    """Mesh of an outline; region number `gap` is filled by rings."""
+    for _ in range(MAX_ROUNDS):
+        shares = node_shares(outline.edges, sizing)
+        steps = steps_of(outline, shares)
+        free = [k for k in range(len(outline.loops)) if k != gap]
+        loops = [[steps.loop(loop) for loop in outline.loops[k]] for k in free]
+        nodes, corners, count = _fill(steps, loops, inside, sizing.growth, algorithm)
+        region = np.repeat(free, count)
+        sides, middles = steps.steps, steps.middles
+        if gap is not None:
+            rings = _gap_rings(outline, steps, nodes, gap)
+            nodes = np.concatenate([nodes, rings.nodes])
+            corners = np.concatenate([corners, rings.corners])
+            region = np.concatenate([region, np.full(len(rings.corners), gap)])
+            sides = np.concatenate([sides, rings.steps])
+            middles = np.concatenate([middles, rings.middles])
+        mesh = second_order(nodes, corners, (sides, middles), region, names)
+        bad = least_jacobian_share(mesh.nodes[mesh.elements]) < LEAST_JACOBIAN
+        if not np.any(bad):
+            return mesh
+        # Corner numbers before unused nodes were dropped are those of `corners`.
+        touched = np.isin(steps.steps, corners[bad]).all(axis=1)
+        sizing = _finer(outline, sizing, np.unique(steps.edge_of_step[touched]), shares)
+    raise ValueError(f"{int(bad.sum())} elements stay turned over after {MAX_ROUNDS} refinements")
+
+
+def _finer(
+    outline: Outline, sizing: Sizing, guilty: IntArray, shares: Sequence[FloatArray]
+) -> Sizing:
+    """The sizing with steps of half the length on the guilty edges."""
+    sizes = sizing.edge_sizes.copy()
+    for k in guilty.tolist():
+        longest = float(np.diff(shares[k]).max()) * outline.edges[k].length
+        sizes[k] = 0.5 * min(sizes[k], longest)
+    return replace(sizing, edge_sizes=sizes)
+
+
+def _gap_rings(outline: Outline, steps: Steps, nodes: ComplexArray, gap: int) -> Rings:
+    """Rings between the two arcs of the gap region."""
+    arcs: dict[int, list[IntArray]] = {1: [], -1: []}
+    sides: list[IntArray] = []
+    for signed in outline.loops[gap][0]:
+        edge = outline.edges[abs(signed) - 1]
+        chain = steps.chain(signed)
+        if edge.is_line:
+            sides.append(chain if abs(nodes[chain[0]]) < abs(nodes[chain[-1]]) else chain[::-1])
+        else:
+            # The outer path runs counter-clockwise: forward on the outer arc, back on the inner.
+            arcs[1 if signed * edge.bulge > 0.0 else -1].append(chain)
+    sides.sort(key=lambda chain: float(np.angle(nodes[chain[0]])))
+
+    def ring(parts: list[IntArray]) -> IntArray:
+        return np.unique(np.concatenate(parts))
+
+    inner, outer = (
+        numbers[np.argsort(np.angle(nodes[numbers]))] for numbers in (ring(arcs[-1]), ring(arcs[1]))
+    )
+    return fill_rings(nodes, inner, outer, (sides[0], sides[1]))
+
+
 def _fill(
-    steps: _Steps, settings: RegionSettings, refine_at: SizeSources | None
-) -> tuple[ComplexArray, IntArray, IntArray]:
-    """Corner nodes (given nodes first), triangles (n_elem, 3) and their regions, by gmsh."""
+    steps: Steps,
+    loops: Sequence[Sequence[Sequence[int]]],
+    inside: SizeSources,
+    growth: float,
+    algorithm: int,
+) -> tuple[ComplexArray, IntArray, list[int]]:
+    """Corner nodes (given nodes first), triangles (n_elem, 3), number of triangles per region."""
     import gmsh
 
     if not gmsh.isInitialized():
@@ -134,7 +245,7 @@ def _fill(
         "General.Terminal": 0,
         "General.NumThreads": 1,
         "Mesh.RandomSeed": 1,
-        "Mesh.Algorithm": settings.algorithm,
+        "Mesh.Algorithm": algorithm,
         "Mesh.MeshSizeFromPoints": 0,
         "Mesh.MeshSizeFromCurvature": 0,
         "Mesh.MeshSizeExtendFromBoundary": 1,
@@ -145,81 +256,46 @@ def _fill(
         geo = gmsh.model.geo
         for z in (steps.nodes * MM).tolist():
             geo.addPoint(z.real, z.imag, 0.0)
-        for n, (a, b) in enumerate((steps.steps + 1).tolist(), start=1):
-            geo.addLine(a, b, n)
+        needed = {abs(n) for region in loops for loop in region for n in loop}
+        pairs = (steps.steps + 1).tolist()
+        for n in sorted(needed):
+            geo.addLine(*pairs[n - 1], n)
             geo.mesh.setTransfiniteCurve(n, 2)
-        for k, loops in enumerate(steps.loops):
-            geo.addPlaneSurface([geo.addCurveLoop(list(loop)) for loop in loops], k + 1)
+        for k, region in enumerate(loops):
+            geo.addPlaneSurface([geo.addCurveLoop(list(loop)) for loop in region], k + 1)
         geo.synchronize()
-        if refine_at is not None and refine_at.sizes.size:
-            _add_size_field(refine_at, settings.growth)
+        if inside.sizes.size:
+            _add_size_field(inside, growth)
         gmsh.model.mesh.generate(2)
         tags, coords, _ = gmsh.model.mesh.getNodes()
-        found = [gmsh.model.mesh.getElementsByType(2, k + 1)[1] for k in range(len(steps.loops))]
+        found = [gmsh.model.mesh.getElementsByType(2, k + 1)[1] for k in range(len(loops))]
     finally:
         gmsh.model.remove()
     xyz = coords.reshape(-1, 3)[np.argsort(tags)]
-    n_given = steps.nodes.size
     nodes = (xyz[:, 0] + 1j * xyz[:, 1]) / MM
-    assert np.allclose(nodes[:n_given], steps.nodes, rtol=0.0, atol=1e-12)  # gmsh keeps the order
-    nodes[:n_given] = steps.nodes
+    given = slice(steps.nodes.size)
+    assert np.allclose(nodes[given], steps.nodes, rtol=0.0, atol=1e-12)  # gmsh keeps the order
+    nodes[given] = steps.nodes
     corners = np.concatenate(found).reshape(-1, 3).astype(np.int64) - 1
-    region = np.repeat(np.arange(len(found)), [f.size // 3 for f in found])
-    used, back = np.unique(corners, return_inverse=True)  # points of size fields are no nodes
-    return nodes[used], back.reshape(-1, 3), region
+    return nodes, corners, [f.size // 3 for f in found]
 
 
-def _add_size_field(refine_at: SizeSources, growth: float) -> None:
+def _add_size_field(inside: SizeSources, growth: float) -> None:
     """Let sizes inside grow from the given points; one distance field per quarter octave."""
     import gmsh
 
     field = gmsh.model.mesh.field
-    octave = np.floor(4.0 * np.log2(refine_at.sizes)).astype(np.int64)
+    octave = np.floor(OCTAVE_PARTS * np.log2(inside.sizes)).astype(np.int64)
     grown = []
     for group in np.unique(octave):
         chosen = octave == group
-        points = [
-            gmsh.model.geo.addPoint(z.real, z.imag, 0.0) for z in refine_at.points[chosen] * MM
-        ]
+        points = [gmsh.model.geo.addPoint(z.real, z.imag, 0.0) for z in inside.points[chosen] * MM]
         gmsh.model.geo.synchronize()
         distance, law = field.add("Distance"), field.add("MathEval")
         field.setNumbers(distance, "PointsList", points)
-        size = float(refine_at.sizes[chosen].min()) * MM
+        size = float(inside.sizes[chosen].min()) * MM
         field.setString(law, "F", f"{size!r} + {growth!r} * F{distance}")
         grown.append(law)
     least = field.add("Min")
     field.setNumbers(least, "FieldsList", grown)
     field.setAsBackgroundMesh(least)
-
-
-def _second_order(
-    steps: _Steps, nodes: ComplexArray, corners: IntArray, region: IntArray, names: tuple[str, ...]
-) -> PlanarMesh:
-    """Add mid-side nodes, on the true edges where a side is a step of one."""
-    turned = _cross(nodes, corners) < 0.0
-    corners[turned] = corners[turned][:, [0, 2, 1]]
-    sides = np.sort(corners[:, [[0, 1], [1, 2], [0, 2]]].reshape(-1, 2), axis=1)
-    code, back = np.unique(sides[:, 0] * nodes.size + sides[:, 1], return_inverse=True)
-    low, high = np.divmod(code, nodes.size)
-    middles = 0.5 * (nodes[low] + nodes[high])
-    step = np.sort(steps.steps, axis=1)
-    middles[np.searchsorted(code, step[:, 0] * nodes.size + step[:, 1])] = steps.middles
-    every = np.concatenate([nodes, middles])
-    elements = np.concatenate([corners, nodes.size + back.reshape(-1, 3)], axis=1)
-    return _frozen(every, elements, region, names)
-
-
-def _cross(nodes: ComplexArray, corners: IntArray) -> FloatArray:
-    """Twice the signed areas of triangles, m^2."""
-    a, b, c = (nodes[corners[:, k]] for k in range(3))
-    return np.asarray(((b - a).conj() * (c - a)).imag)
-
-
-def _frozen(
-    nodes: ComplexArray, elements: IntArray, region: IntArray, names: tuple[str, ...]
-) -> PlanarMesh:
-    """The mesh with read-only arrays."""
-    xy = np.column_stack([nodes.real, nodes.imag])
-    for array in (xy, elements, region):
-        array.setflags(write=False)
-    return PlanarMesh(xy, elements, region, names)

@@ -3,7 +3,7 @@
 Axes: n_point welded points, n_edge edges.
 """
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -12,7 +12,7 @@ from scipy.sparse import coo_array
 from scipy.sparse.csgraph import connected_components
 from scipy.spatial import cKDTree
 
-from lamwright.geometry.curves import Edge, Path
+from lamwright.geometry.curves import Edge
 from lamwright.geometry.section import Region
 
 from .types import IntArray
@@ -73,7 +73,7 @@ def outline_of(regions: Sequence[Region]) -> Outline:
     ends = np.array([p for edge in edges for p in (edge.start, edge.end)], dtype=np.complex128)
     points, number = weld(ends)
     number = number.reshape(-1, 2)
-    book = _EdgeBook(points)
+    book = EdgeBook(points)
     loops: list[list[tuple[int, ...]]] = [[] for _ in regions]
     at = 0
     for k, path in paths:
@@ -91,10 +91,11 @@ def outline_of(regions: Sequence[Region]) -> Outline:
     )
 
 
-class _EdgeBook:
+class EdgeBook:
     """Finds an edge again, run either way; two edges with the same ends differ by their rise."""
 
     def __init__(self, points: ComplexArray) -> None:
+        """Start with no edge between `points`."""
         self.points = points
         self.edges: list[Edge] = []
         self.ends: list[tuple[int, int]] = []
@@ -114,15 +115,3 @@ class _EdgeBook:
         self.ends.append((a, b))
         known.append((rise, way * len(self.edges)))
         return len(self.edges)
-
-
-def path_of(outline: Outline, loop: Sequence[int]) -> Path:
-    """A loop of the outline as a closed path."""
-    edges = []
-    for signed in loop:
-        edge = outline.edges[abs(signed) - 1]
-        edges.append(edge if signed > 0 else Edge(edge.end, edge.start, -edge.bulge))
-    return Path(tuple(edges))
-
-
-EdgeSize = Callable[[Edge], float]

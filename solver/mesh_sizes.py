@@ -2,32 +2,56 @@
 
 A size at a place x is the least of h_k + growth |x - x_k| over all sources k (points with a
 wanted size; every edge is itself a row of sources). Each edge then gets nodes such that each
-step covers the same share of the integral of ds / h. Source: common practice, no source.
-Axes: n_source sources, n_sample samples on edges.
+step covers the same share of the integral of ds / h. Narrow places find themselves: a point on
+an edge wants the distance to the next edge across the same region, divided by the number of
+elements wanted across. Source: common practice, no source.
+Axes: n_source sources, n_sample samples on edges, n_edge edges.
 """
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
 
 import numpy as np
 
 from lamwright.geometry.curves import Edge
 
-from .mesh_outline import ComplexArray
-from .types import FloatArray
+from .mesh_outline import ComplexArray, Outline
+from .types import FloatArray, IntArray
 
-# Steps of a turn that an arc is cut into at the least: the area of a full circle is then right to
-# 1e-5 (derived: a parabola through three points of an arc of angle f misses r^2 f^5 / 960).
-STEP_ANGLE = np.pi / 12.0
 MAX_SAMPLES = 400  # per edge; finer would only cost time
+SOURCE_BLOCK = 512  # sources compared at once, which bounds the memory
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class SizeSources:
-    """Points with a wanted edge length."""
+    """Points with a wanted element side."""
 
     points: ComplexArray  # (n_source,), m
     sizes: FloatArray  # (n_source,), m
+
+
+NO_SOURCES = SizeSources(np.zeros(0, dtype=np.complex128), np.zeros(0))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Sizing:
+    """What the nodes on the edges of an outline follow."""
+
+    edge_sizes: FloatArray  # (n_edge,), m
+    growth: float  # change of size per distance
+    step_angle: float  # rad, most that one step may turn along an arc
+    sources: SizeSources = NO_SOURCES
+    fixed: Mapping[int, int] = field(default_factory=dict)  # edge number -> even steps
+    # Pairs of edges that get the same nodes, as those on a sector's two sides do, and whether the
+    # second runs the other way.
+    twins: tuple[tuple[int, int, bool], ...] = ()
+
+
+def joined(*sources: SizeSources) -> SizeSources:
+    """All sources in one."""
+    return SizeSources(
+        np.concatenate([s.points for s in sources]), np.concatenate([s.sizes for s in sources])
+    )
 
 
 def points_at(edge: Edge, shares: FloatArray) -> ComplexArray:
@@ -39,60 +63,98 @@ def points_at(edge: Edge, shares: FloatArray) -> ComplexArray:
     return np.asarray(points, dtype=np.complex128)
 
 
-def sample_shares(edges: Sequence[Edge], spacing: float) -> list[FloatArray]:
-    """Evenly spaced shares of each edge, about `spacing` m apart, at least nine."""
-    counts = [int(np.clip(np.ceil(edge.length / spacing), 8, MAX_SAMPLES)) for edge in edges]
-    return [np.linspace(0.0, 1.0, count + 1) for count in counts]
-
-
 def size_at(points: ComplexArray, sources: SizeSources, growth: float) -> FloatArray:
     """Size at each point: least of h_k + growth |x - x_k|."""
     best = np.full(points.size, np.inf)
-    for at in range(0, sources.points.size, 512):  # blocks bound the memory
-        block = slice(at, at + 512)
+    for at in range(0, sources.points.size, SOURCE_BLOCK):
+        block = slice(at, at + SOURCE_BLOCK)
         away = np.abs(points[:, None] - sources.points[None, block])
         best = np.minimum(best, np.min(sources.sizes[None, block] + growth * away, axis=1))
     return best
 
 
-def node_shares(
-    edges: Sequence[Edge], sizes: FloatArray, extra: SizeSources | None, growth: float
-) -> list[FloatArray]:
-    """Shares of length at which each edge gets its nodes, ends included.
-
-    Args:
-        edges: the edges.
-        sizes: (n_edge,) wanted step in m on each edge.
-        extra: more places with wanted sizes.
-        growth: change of size per distance.
-    """
-    least = float(np.min(sizes))
-    if extra is not None and extra.sizes.size:
-        least = min(least, float(np.min(extra.sizes)))
-    samples = sample_shares(edges, 2.0 * least)
+def node_shares(edges: Sequence[Edge], sizing: Sizing) -> list[FloatArray]:
+    """Shares of length at which each edge gets its nodes, ends included."""
+    least = min(sizing.edge_sizes.min(), sizing.sources.sizes.min(initial=np.inf))
+    samples = _sample_shares(edges, 2.0 * float(least))
     places = [points_at(edge, share) for edge, share in zip(edges, samples, strict=True)]
-    own = np.concatenate([np.full(p.size, h) for p, h in zip(places, sizes, strict=True)])
+    own = np.repeat(sizing.edge_sizes, [p.size for p in places])
     every = np.concatenate(places)
-    sources = SizeSources(every, own)
-    if extra is not None:
-        sources = SizeSources(
-            np.concatenate([every, extra.points]), np.concatenate([own, extra.sizes])
-        )
-    graded = np.minimum(own, size_at(every, sources, growth))
+    sources = joined(SizeSources(every, own), sizing.sources)
+    graded = np.minimum(own, size_at(every, sources, sizing.growth))
     parts = np.split(graded, np.cumsum([p.size for p in places])[:-1])
-    return [_spread(e, s, h) for e, s, h in zip(edges, samples, parts, strict=True)]
+    for a, b, is_reversed in sizing.twins:
+        parts[a] = np.minimum(parts[a], parts[b][::-1] if is_reversed else parts[b])
+    shares = []
+    for k, edge in enumerate(edges):
+        if k in sizing.fixed:
+            shares.append(np.linspace(0.0, 1.0, sizing.fixed[k] + 1))
+        else:
+            shares.append(_spread(edge, samples[k], parts[k], sizing.step_angle))
+    for a, b, is_reversed in sizing.twins:
+        shares[b] = 1.0 - shares[a][::-1] if is_reversed else shares[a]
+    return shares
 
 
-def _spread(edge: Edge, samples: FloatArray, sizes: FloatArray) -> FloatArray:
+def _sample_shares(edges: Sequence[Edge], spacing: float) -> list[FloatArray]:
+    """Evenly spaced shares of each edge, about `spacing` m apart, at least nine."""
+    counts = [int(np.clip(np.ceil(edge.length / spacing), 8, MAX_SAMPLES)) for edge in edges]
+    return [np.linspace(0.0, 1.0, count + 1) for count in counts]
+
+
+def _spread(edge: Edge, samples: FloatArray, sizes: FloatArray, angle: float) -> FloatArray:
     """Shares of the nodes of one edge from sizes at its samples."""
     step = np.diff(samples) * edge.length
-    # Trapezoid in 1/h; the running sum is made symmetric so that an edge with symmetric sizes
-    # gets symmetric nodes to the last bit but one.
-    forward = np.concatenate([[0.0], np.cumsum(step * 0.5 * (1 / sizes[1:] + 1 / sizes[:-1]))])
-    count = max(1, int(np.ceil(forward[-1] - 0.05)), int(np.ceil(abs(edge.sweep) / STEP_ANGLE)))
+    covered = np.concatenate([[0.0], np.cumsum(step * 0.5 * (1.0 / sizes[1:] + 1.0 / sizes[:-1]))])
+    # A twentieth of a step too long is no reason for one step more.
+    count = max(1, int(np.ceil(covered[-1] - 0.05)), int(np.ceil(abs(edge.sweep) / angle - 1e-9)))
     if np.ptp(sizes) <= 1e-9 * sizes[0]:
         return np.linspace(0.0, 1.0, count + 1)
-    wanted = np.linspace(0.0, forward[-1], count + 1)
-    shares = np.interp(wanted, forward, samples)
+    shares = np.interp(np.linspace(0.0, covered[-1], count + 1), covered, samples)
     shares[0], shares[-1] = 0.0, 1.0
     return np.asarray(shares, dtype=np.float64)
+
+
+def narrow_places(
+    outline: Outline, across: Sequence[float], spacing: float, doubled: Sequence[int] = ()
+) -> SizeSources:
+    """Sizes wanted where a region is narrow.
+
+    Args:
+        outline: the welded edges.
+        across: elements wanted across each region; 0 leaves a region out.
+        spacing: distance between samples on the edges in m.
+        doubled: edges on lines of symmetry, behind which the region goes on mirrored.
+
+    Returns:
+        Samples on the edges of all regions with the size that their narrowest region asks for.
+    """
+    samples = _sample_shares(outline.edges, spacing)
+    places = [points_at(e, s) for e, s in zip(outline.edges, samples, strict=True)]
+    found = [
+        _narrow_in(outline, places, region, count, doubled)
+        for region, count in enumerate(across)
+        if count > 0.0
+    ]
+    return joined(NO_SOURCES, *found)
+
+
+def _narrow_in(
+    outline: Outline,
+    places: list[ComplexArray],
+    region: int,
+    count: float,
+    doubled: Sequence[int],
+) -> SizeSources:
+    """Samples of one region's edges with their distance to the others over `count`."""
+    edges = sorted({abs(s) - 1 for loop in outline.loops[region] for s in loop})
+    points = np.concatenate([places[e] for e in edges])
+    edge_of: IntArray = np.repeat(np.arange(len(edges)), [places[e].size for e in edges])
+    ends = outline.ends[edges]
+    touching = np.any(ends[:, None, :, None] == ends[None, :, None, :], axis=(2, 3))
+    mirror = np.where(np.isin(edges, doubled), 2.0, 1.0)
+    away = np.abs(points[:, None] - points[None, :]) * mirror[edge_of][None, :]
+    away[touching[edge_of][:, edge_of]] = np.inf
+    width = away.min(axis=1)
+    near = np.isfinite(width)
+    return SizeSources(points[near], width[near] / count)

@@ -1,0 +1,166 @@
+"""How fine a machine's pole is meshed: settings, and the sizing of its edges.
+
+Axes: n_edge edges of the outline of one wedge.
+"""
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from lamwright.geometry.section import CrossSection, Material
+
+from .mesh_fold import Fan
+from .mesh_outline import WELD_TOL, ComplexArray, Outline
+from .mesh_sizes import SizeSources, Sizing, joined, narrow_places
+
+POSITIONS = 90  # circle edges per pole that put 30 positions in 60 el. degrees on vertices
+
+
+@dataclass(frozen=True, slots=True)
+class MeshSettings:
+    """How fine one pole is meshed; lengths relative, so that a machine may have any size."""
+
+    scale: float = 1.0  # all sizes; 0.5 = twice as fine
+    circle_edges: int = 180  # per pole on the turning circle, before rounding
+    gap_layers: int = 2  # of elements on each side of the turning circle
+    across_iron: float = 4.0  # elements across ribs, flux carriers and teeth
+    across_air: float = 2.5  # elements across a barrier
+    across_copper: float = 2.0  # elements across a slot: a quiet field
+    coarsest: float = 0.04  # largest side over pole pitch (arc of the turning circle)
+    corner: float = 0.25  # side at the corners of slot mouths over the air gap
+    growth: float = 0.35  # change of side per distance
+    step_angle: float = math.pi / 6.0  # most that one step may turn along an arc
+    algorithm: int = 6  # gmsh's number of the 2D method
+
+
+def circle_edges(section: CrossSection, settings: MeshSettings) -> int:
+    """Edges per pole on the turning circle.
+
+    A multiple of twice the slots per pole, so that half a slot pitch can be meshed and copied;
+    of 90 too where that is near (30 positions over 60 el. degrees are then whole steps).
+    """
+    wanted = settings.circle_edges / settings.scale
+    half_slots = section.slots // section.pole_pairs
+    common = math.lcm(POSITIONS, half_slots)
+    count = common * max(1, round(wanted / common))
+    if not 0.75 * wanted <= count <= 1.5 * wanted:
+        count = half_slots * max(1, round(wanted / half_slots))
+    return count
+
+
+def gap_of(fan: Fan) -> int:
+    """Number of the piece that is the air gap."""
+    return next(k for k, region in enumerate(fan.regions) if region.name.startswith("gap_"))
+
+
+def section_sizing(
+    section: CrossSection, fan: Fan, outline: Outline, n_circle: int, settings: MeshSettings
+) -> Sizing:
+    """Sizes for the magnetic field."""
+    gap = gap_of(fan)
+    circle = section.circle_radius
+    pitch = math.pi * circle / section.pole_pairs
+    step = pitch / n_circle
+    coarsest = settings.scale * settings.coarsest * pitch
+    sizes = np.full(len(outline.edges), coarsest)
+    fixed: dict[int, int] = {}
+    for signed in outline.loops[gap][0]:
+        k = abs(signed) - 1
+        edge = outline.edges[k]
+        if edge.is_line:
+            fixed[k] = settings.gap_layers
+        elif abs(abs(edge.start) - circle) < WELD_TOL:
+            fixed[k] = _whole(n_circle * abs(edge.sweep) * section.pole_pairs / math.pi)
+        else:
+            sizes[k] = step * edge.radius / circle
+    across = _across(fan, settings)
+    across[gap] = 0.0
+    rays = _ray_edges(fan, outline)
+    narrow = narrow_places(outline, across, 0.01 * pitch, rays)
+    least = settings.scale * settings.corner * section.gap
+    narrow = SizeSources(narrow.points, np.maximum(narrow.sizes, 0.5 * least))
+    corners = _gap_corners(outline, gap, rays)
+    return Sizing(
+        edge_sizes=sizes,
+        growth=settings.growth,
+        step_angle=settings.step_angle,
+        sources=joined(narrow, SizeSources(corners, np.full(corners.size, least))),
+        fixed=fixed,
+        twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
+    )
+
+
+def lamination_sizing(
+    section: CrossSection, fan: Fan, outline: Outline, refine: SizeSources, settings: MeshSettings
+) -> Sizing:
+    """Sizes for stress in the rotor lamination."""
+    pitch = math.pi * section.circle_radius / section.pole_pairs
+    across = [settings.across_iron / settings.scale] * len(outline.loops)
+    narrow = narrow_places(outline, across, 0.01 * pitch, _ray_edges(fan, outline))
+    return Sizing(
+        edge_sizes=np.full(len(outline.edges), settings.scale * settings.coarsest * pitch),
+        growth=settings.growth,
+        step_angle=settings.scale * settings.step_angle,
+        sources=joined(narrow, refine),
+        twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
+    )
+
+
+def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], ...]:
+    """Edges on the side at angle 0 with those on the side at `angle` that they match, turned.
+
+    Raises:
+        ValueError: where an edge has no match.
+    """
+    ends = outline.points[outline.ends]
+    back = ends * np.exp(-1j * angle)
+    lower = np.flatnonzero(np.all(np.abs(ends.imag) < WELD_TOL, axis=1)).tolist()
+    upper = np.flatnonzero(np.all(np.abs(back.imag) < WELD_TOL, axis=1)).tolist()
+    twins = [
+        (k, j, is_reversed)
+        for k in lower
+        for j in upper
+        for is_reversed in (False, True)
+        if np.all(np.abs(ends[k] - (back[j, ::-1] if is_reversed else back[j])) < 2.0 * WELD_TOL)
+    ]
+    if not len(twins) == len(lower) == len(upper):
+        raise ValueError("the two sides of the sector do not have the same edges")
+    return tuple(twins)
+
+
+def _across(fan: Fan, settings: MeshSettings) -> list[float]:
+    """Elements wanted across each piece."""
+    by_material: dict[Material, float] = {
+        "rotor_steel": settings.across_iron,
+        "stator_steel": settings.across_iron,
+        "air": settings.across_air,
+        "copper": settings.across_copper,
+        "shaft": 0.0,
+    }
+    return [by_material[region.material] / settings.scale for region in fan.regions]
+
+
+def _ray_edges(fan: Fan, outline: Outline) -> list[int]:
+    """Edges on the two sides of the wedge."""
+    ends = outline.points[outline.ends]
+    on_lower = np.all(np.abs(ends.imag) < WELD_TOL, axis=1)
+    on_upper = np.all(np.abs((ends * np.exp(-1j * fan.angle)).imag) < WELD_TOL, axis=1)
+    found: list[int] = np.flatnonzero(on_lower | on_upper).tolist()
+    return found
+
+
+def _gap_corners(outline: Outline, gap: int, rays: Sequence[int]) -> ComplexArray:
+    """Points where an edge leaves the gap's wall: slot mouths, open barriers."""
+    walls = {abs(s) - 1 for s in outline.loops[gap][0]}
+    wall_points = {int(p) for k in walls for p in outline.ends[k]}
+    others = [k for k in range(len(outline.edges)) if k not in walls and k not in rays]
+    leaving = {int(p) for k in others for p in outline.ends[k]} & wall_points
+    return outline.points[sorted(leaving)]
+
+
+def _whole(count: float) -> int:
+    if abs(count - round(count)) > 1e-6:
+        raise ValueError("an arc of the turning circle is not a whole number of steps")
+    return round(count)
