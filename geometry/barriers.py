@@ -33,6 +33,7 @@ from .curves import (
 from .design import BarrierDesign
 
 MM = 1e-3  # m
+FULL_ROUND_TOL = 1e-9  # m, a fillet so close to half the thickness is meant to be it
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,10 +48,14 @@ class MidLine:
         """Centre of the upper round end."""
         return self.edges[-1].end
 
-    @property
-    def bottom_radius(self) -> float:
-        """Distance from the shaft axis to the mid-line on the q axis."""
-        return abs(self.edges[0].start)
+
+@dataclass(frozen=True, slots=True)
+class StraightLegs:
+    """Bottom and arm of a straight barrier's mid-line, as far as the bend leaves them (m, rad)."""
+
+    turn: float  # of the bend
+    bottom_left: float  # half the straight bottom; negative where the bend does not fit
+    arm_left: float  # the straight arm; negative where the bend does not fit
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,14 +79,18 @@ def mid_line(barrier: BarrierDesign, rotor_radius: float, pole_pairs: int) -> Mi
         ValueError: if the barrier has no mid-line; `checks` says what would fit.
     """
     thickness = MM * barrier.thickness_mm
-    bottom = rotor_radius - MM * barrier.depth_mm - 0.5 * thickness
-    cap = cap_centre(barrier, rotor_radius)
+    bottom, cap = bottom_radius(barrier, rotor_radius), cap_centre(barrier, rotor_radius)
     if bottom <= 0.0 or cap.real <= bottom:
         raise ValueError("the barrier's end lies no further out than its bottom")
     if barrier.shape == "arc":
         return MidLine((_arc_half(bottom, cap),), thickness)
-    angle, bend = arm_angle(barrier, pole_pairs), bend_radius(barrier)
-    return MidLine(_straight_half(bottom, cap, angle, bend + 0.5 * thickness), thickness)
+    legs = straight_legs(barrier, rotor_radius, pole_pairs)
+    return MidLine(_straight_half(bottom, cap, legs), thickness)
+
+
+def bottom_radius(barrier: BarrierDesign, rotor_radius: float) -> float:
+    """Distance from the shaft axis to the mid-line on the q axis, in m."""
+    return rotor_radius - MM * (barrier.depth_mm + 0.5 * barrier.thickness_mm)
 
 
 def cap_centre(barrier: BarrierDesign, rotor_radius: float) -> Point:
@@ -103,6 +112,21 @@ def bend_radius(barrier: BarrierDesign) -> float:
     return MM * (barrier.thickness_mm if stated is None else stated)
 
 
+def straight_legs(barrier: BarrierDesign, rotor_radius: float, pole_pairs: int) -> StraightLegs:
+    """Where bottom and arm of a straight barrier's mid-line would meet, also if they do not fit.
+
+    A bend of turn phi and mid-line radius r uses up r tan(phi / 2) of bottom and arm.
+    """
+    bottom, cap = bottom_radius(barrier, rotor_radius), cap_centre(barrier, rotor_radius)
+    angle = arm_angle(barrier, pole_pairs)
+    out = cmath.rect(1.0, angle)
+    arm = (cap.real - bottom) / out.real
+    corner = cap - arm * out
+    turn = 0.5 * math.pi - angle
+    leg = (bend_radius(barrier) + 0.5 * MM * barrier.thickness_mm) * math.tan(0.5 * turn)
+    return StraightLegs(turn, bottom_left=corner.imag - leg, arm_left=arm - leg)
+
+
 def rib_cuts(barrier: BarrierDesign) -> tuple[RibCut, ...]:
     """The radial ribs of a barrier in counter-clockwise order.
 
@@ -114,6 +138,9 @@ def rib_cuts(barrier: BarrierDesign) -> tuple[RibCut, ...]:
     if barrier.radial_rib_mm is None:
         raise ValueError("radial ribs need radial_rib_mm")
     width, radius = MM * barrier.radial_rib_mm, MM * barrier.fillet_mm
+    full = 0.5 * MM * barrier.thickness_mm
+    if abs(radius - full) < FULL_ROUND_TOL:
+        radius = full
     if barrier.radial_ribs == 1:
         return (RibCut(0.0, width, radius),)
     if barrier.radial_rib_offset_mm is None:
@@ -155,18 +182,13 @@ def _arc_half(bottom: float, cap: Point) -> Edge:
     return Edge(complex(bottom), cap, -math.tan(0.25 * half_span))
 
 
-def _straight_half(bottom: float, cap: Point, angle: float, bend: float) -> tuple[Edge, ...]:
-    # `bend` is the radius of the mid-line in the bend; a bend of turn phi uses up
-    # bend tan(phi / 2) of either leg.
-    out = cmath.rect(1.0, angle)
-    arm = (cap.real - bottom) / out.real
-    corner = cap - arm * out
-    leg = bend * math.tan(0.5 * (0.5 * math.pi - angle))
-    if corner.imag <= leg or arm <= leg:
+def _straight_half(bottom: float, cap: Point, legs: StraightLegs) -> tuple[Edge, ...]:
+    if legs.bottom_left <= 0.0 or legs.arm_left <= 0.0:
         raise ValueError("the bend does not fit on the bottom and the arm")
-    first, second = corner - 1j * leg, corner + leg * out
-    turn = Edge(first, second, -math.tan(0.25 * (0.5 * math.pi - angle)))
-    return (line(complex(bottom), first), turn, line(second, cap))
+    first = complex(bottom, legs.bottom_left)
+    second = cap - cmath.rect(legs.arm_left, 0.5 * math.pi - legs.turn)
+    bend = Edge(first, second, -math.tan(0.25 * legs.turn))
+    return (line(complex(bottom), first), bend, line(second, cap))
 
 
 def _side(mid: MidLine, distance: float) -> tuple[Edge, ...]:

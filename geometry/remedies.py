@@ -1,0 +1,249 @@
+"""What would fit: the range of one key that mends a fault, found on the exact geometry.
+
+A fault says by how much something is missing and which keys may mend it, the most natural first.
+For each key in turn its whole domain is tried at a grid of values, finer where little is missing;
+next to the value as it stands, the run of values that mend the fault without making a new one is
+closed in by bisection and rounded inward. A range is only stated after its rounded ends have been
+tried. A run of values narrower than the finest grid (1/20000 of the domain) may be missed; then
+the next key is tried.
+
+Cost: some 100 to 200 checks of one barrier or of the slot per key, 20 to 80 ms.
+"""
+
+import math
+import re
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from .barriers import MM, arm_angle, bend_radius
+from .design import BarrierDesign, MachineDesign
+from .errors import Finding
+
+GRID = 60  # values tried over a key's whole domain
+REFINED = 20  # values tried between the neighbours of the one that lacks least
+REFINEMENTS = 2
+HALVINGS = 30  # of a grid step: to a part in 1e9 of it, beyond the digits shown
+MOST_DECIMALS = 9
+ROUNDING = 1e-4  # of the last decimal: an end found by halving is let reach its round number
+
+
+@dataclass(frozen=True, slots=True)
+class Fault:
+    """Something that does not fit, before the search for what would."""
+
+    code: str
+    keys: tuple[str, ...]  # keys that may mend it, the most natural first
+    text: str
+    lack: float  # how much is missing, in m or rad, positive
+    remedy: str | None = None  # where the range is known in closed form
+
+    @property
+    def identity(self) -> tuple[str, str]:
+        """What makes it the same fault when some value is changed."""
+        return self.code, self.keys[0]
+
+
+@dataclass(frozen=True, slots=True)
+class Domain:
+    """The values of a key that may be tried, in the key's own unit."""
+
+    low: float
+    high: float
+    is_low_accepted: bool = False  # otherwise the value must be above it
+    has_limit: bool = False  # whether `high` is a limit, not just where the search ends
+
+
+Faults = Callable[[MachineDesign, str], Sequence[Fault]]  # those that a key has a share in
+
+
+def finding(design: MachineDesign, fault: Fault, faults: Faults) -> Finding:
+    """The fault with the key that mends it and the range that fits.
+
+    Args:
+        design: the design with the fault.
+        fault: one of its faults.
+        faults: design and key -> all faults in which the key has a share.
+    """
+    key = fault.keys[0]
+    if fault.remedy is not None:
+        return Finding(fault.code, key, value_of(design, key), fault.text, fault.remedy)
+    for candidate in fault.keys:
+        accepted = _accepted(design, fault, candidate, faults)
+        if accepted is not None:
+            value = value_of(design, candidate)
+            return Finding(fault.code, candidate, value, fault.text, f"accepted {accepted}")
+    names = ", ".join(dict.fromkeys(name.rsplit(".", 1)[-1] for name in fault.keys))
+    remedy = f"no single value mends it, change several of {names}"
+    return Finding(fault.code, key, value_of(design, key), fault.text, remedy)
+
+
+def value_of(design: MachineDesign, key: str) -> float:
+    """The value at `key`; what a straight barrier takes by default where there is none."""
+    table, index, name = _parts(key)
+    if index is None:
+        return float(getattr(getattr(design, table), name))
+    barrier = design.rotor.barrier[index]
+    value = getattr(barrier, name)
+    return _default(barrier, name, design.pole_pairs) if value is None else float(value)
+
+
+def with_value(design: MachineDesign, key: str, value: float) -> MachineDesign:
+    """The design with another value at `key`, not validated again."""
+    table, index, name = _parts(key)
+    part = getattr(design, table)
+    if index is None:
+        return design.model_copy(update={table: part.model_copy(update={name: value})})
+    barriers = list(design.rotor.barrier)
+    barriers[index] = barriers[index].model_copy(update={name: value})
+    return design.model_copy(update={"rotor": part.model_copy(update={"barrier": tuple(barriers)})})
+
+
+def barrier_key(number: int, name: str) -> str:
+    """The key of barrier `number` (from 1 at the rim) as written in a message."""
+    return f"rotor.barrier[{number}].{name}"
+
+
+def barrier_number(key: str) -> int | None:
+    """Which barrier a key belongs to, from 1; None for keys of other tables."""
+    index = _parts(key)[1]
+    return None if index is None else index + 1
+
+
+def _parts(key: str) -> tuple[str, int | None, str]:
+    match = re.fullmatch(r"(\w+)(?:\.barrier\[(\d+)\])?\.(\w+)", key)
+    assert match is not None, key
+    return match[1], int(match[2]) - 1 if match[2] else None, match[3]
+
+
+def _default(barrier: BarrierDesign, name: str, pole_pairs: int) -> float:
+    if name == "arm_angle_deg":
+        return math.degrees(arm_angle(barrier, pole_pairs))
+    if name == "bend_radius_mm":
+        return bend_radius(barrier) / MM
+    return 0.0
+
+
+def _domain(design: MachineDesign, key: str) -> Domain:
+    _, index, name = _parts(key)
+    if name == "end_angle_deg":
+        return Domain(0.0, 90.0 / design.pole_pairs)
+    if name == "arm_angle_deg":
+        return Domain(0.0, 90.0 - 1e-6, is_low_accepted=True)
+    if name == "wedge_angle_deg":
+        return Domain(0.0, 60.0, is_low_accepted=True, has_limit=True)
+    if name in ("wedge_depth_mm", "slot_corner_radius_mm"):
+        return Domain(0.0, design.stator.outer_diameter_mm, is_low_accepted=True)
+    if index is None:
+        return Domain(0.0, 2.0 * design.stator.outer_diameter_mm)
+    return Domain(0.0, 0.5 * design.stator.bore_diameter_mm)
+
+
+class _Search:
+    """Trials of one key: what is missing of a fault, and of every fault not known before."""
+
+    def __init__(self, design: MachineDesign, key: str, faults: Faults) -> None:
+        self.domain = _domain(design, key)
+        self.value = value_of(design, key)
+        self._design, self._key, self._faults = design, key, faults
+        self._left: dict[float, Sequence[Fault]] = {}
+
+    def lack(self, value: float, known: frozenset[tuple[str, str]]) -> float:
+        """What is missing at `value`, apart from the known faults; 0 where it fits."""
+        if value not in self._left:
+            self._left[value] = self._faults(with_value(self._design, self._key, value), self._key)
+        return sum(one.lack for one in self._left[value] if one.identity not in known)
+
+    def accepted(self, known: frozenset[tuple[str, str]]) -> str | None:
+        """The range that fits, nearest to the value as it stands."""
+        values = _grid(self.domain)
+        for _ in range(REFINEMENTS):
+            lacks = [self.lack(value, known) for value in values]
+            if min(lacks) == 0.0:
+                break
+            values = _refined(values, lacks)
+        fitting = [k for k, value in enumerate(values) if self.lack(value, known) == 0.0]
+        if not fitting:
+            return None
+        first = last = min(fitting, key=lambda k: abs(values[k] - self.value))
+        while first - 1 in fitting:
+            first -= 1
+        while last + 1 in fitting:
+            last += 1
+        low = high = None
+        if first > 0:
+            low = self._end(values[first - 1], values[first], known)
+        if last < len(values) - 1:
+            high = self._end(values[last + 1], values[last], known)
+        return _range_text(self.domain, low, high, lambda end: self.lack(end, known) == 0.0)
+
+    def _end(self, outside: float, inside: float, known: frozenset[tuple[str, str]]) -> float:
+        """The last fitting value between one that does not fit and one that does."""
+        for _ in range(HALVINGS):
+            middle = 0.5 * (outside + inside)
+            if self.lack(middle, known) == 0.0:
+                inside = middle
+            else:
+                outside = middle
+        return inside
+
+
+def _accepted(design: MachineDesign, fault: Fault, key: str, faults: Faults) -> str | None:
+    """The range of `key` that mends the fault and makes no new one, as text.
+
+    If there is one, it also mends the other faults that look to this key first, so that all
+    findings on a key state the same range.
+    """
+    search = _Search(design, key, faults)
+    others = [one for one in faults(design, key) if one.identity != fault.identity]
+    elsewhere = frozenset(one.identity for one in others if one.keys[0] != key)
+    return search.accepted(elsewhere) or search.accepted(frozenset(o.identity for o in others))
+
+
+def _grid(domain: Domain) -> list[float]:
+    # Quadratic: small values, as ribs and fillets have, lie closer. The first point stands for
+    # the lower end of the domain.
+    least = 0.0 if domain.is_low_accepted else (1e-3 / GRID) ** 2
+    shares = [least] + [(k / GRID) ** 2 for k in range(1, GRID + 1)]
+    return [domain.low + share * (domain.high - domain.low) for share in shares]
+
+
+def _refined(values: list[float], lacks: list[float]) -> list[float]:
+    """The values with more of them about the one that lacks least."""
+    best = min(range(len(values)), key=lambda k: lacks[k])
+    first, last = max(best - 1, 0), min(best + 1, len(values) - 1)
+    step = (values[last] - values[first]) / REFINED
+    between = [values[first] + step * k for k in range(1, REFINED)]
+    return [*values[: first + 1], *between, *values[last:]]
+
+
+def _range_text(
+    domain: Domain, low: float | None, high: float | None, fits: Callable[[float], bool]
+) -> str | None:
+    """The range in as few decimals as keep nine tenths of it; None if rounding leaves nothing."""
+    if low is None and domain.is_low_accepted:
+        low = domain.low
+    if high is None and domain.has_limit:
+        high = domain.high
+    for decimals in range(2, MOST_DECIMALS + 1):
+        scale = 10.0**decimals
+        first = None if low is None else math.ceil(low * scale - ROUNDING) / scale
+        last = None if high is None else math.floor(high * scale + ROUNDING) / scale
+        if _width(first, last) < 0.9 * _width(low, high) < math.inf:
+            continue
+        if all(end is None or fits(end) for end in (first, last)):
+            return _text(first, last, decimals)
+    return None
+
+
+def _width(low: float | None, high: float | None) -> float:
+    return math.inf if low is None or high is None else high - low
+
+
+def _text(first: float | None, last: float | None, decimals: int) -> str:
+    low, high = (
+        None if end is None else f"{end:.{decimals}f}".rstrip("0").rstrip(".")
+        for end in (first, last)
+    )
+    if low is None:
+        return "any positive value" if high is None else f"up to {high}"
+    return f"{low} or more" if high is None else f"{low} to {high}"

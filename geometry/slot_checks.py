@@ -1,0 +1,134 @@
+"""Checks of the stator: whether its slots can be drawn, punched and wound.
+
+Least sizes of punched parts are common practice, no source: a web of iron or a slot opening is no
+narrower than the sheet is thick, a radius or a lip no smaller than half of it. Edges shorter than
+a tenth of the sheet's thickness are refused because no mesh could follow them.
+"""
+
+import math
+
+from .design import MachineDesign
+from .errors import Finding, GeometryError
+from .remedies import Fault
+from .stator import SlotDimensions, slot_copper_area, slot_dimensions, slot_outline
+
+MM = 1e-3  # m
+SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
+MOST_FILL = 0.75  # bare copper in the copper region; common practice, no source
+
+
+def stator_faults(design: MachineDesign) -> list[Fault]:
+    """What keeps the stator from being drawn or punched; lacks in m."""
+    dims = slot_dimensions(design)
+    faults = _single_sizes(design) + _slot_faults(design, dims) + _corner_faults(design, dims)
+    if faults or design.winding.layers == 1:
+        return faults
+    try:
+        slot_outline(design)
+    except GeometryError as error:
+        return [_fault(one.code, (one.key,), one.fault, 1.0) for one in error.findings]
+    return []
+
+
+def fill_finding(design: MachineDesign) -> tuple[Finding, ...]:
+    """Whether the conductors of a drawable slot go into its copper regions."""
+    winding = design.winding
+    room = MOST_FILL * slot_copper_area(design)  # m^2, of one coil side
+    side = 1e-6 * winding.turns_per_coil * winding.conductor_area_mm2
+    if side <= room:
+        return ()
+    turns = math.floor(1e6 * room / winding.conductor_area_mm2)
+    largest = math.floor(1e9 * room / winding.turns_per_coil) / 1e3
+    fault = (
+        f"{1e6 * side:.4g} mm2 of copper in a coil side; at a fill factor of {MOST_FILL:g} "
+        f"{1e6 * room:.4g} mm2 have room"
+    )
+    if turns >= 1:
+        remedy = f"accepted 1 to {turns} with conductors of {winding.conductor_area_mm2:g} mm2"
+        key = "winding.turns_per_coil"
+        return (Finding("slot_fill", key, winding.turns_per_coil, fault, remedy),)
+    remedy = f"accepted up to {largest:g} with {winding.turns_per_coil} turns"
+    key = "winding.conductor_area_mm2"
+    return (Finding("slot_fill", key, winding.conductor_area_mm2, fault, remedy),)
+
+
+def _fault(code: str, keys: tuple[str, ...], text: str, lack: float) -> Fault:
+    return Fault(code, tuple(f"stator.{key}" for key in keys), text, lack)
+
+
+def _single_sizes(design: MachineDesign) -> list[Fault]:
+    stator, sheet = design.stator, design.rotor.sheet_thickness_mm
+    least = (
+        ("tooth_thin", "tooth_width_mm", stator.tooth_width_mm, sheet),
+        ("opening_narrow", "slot_opening_mm", stator.slot_opening_mm, sheet),
+        ("lip_thin", "opening_depth_mm", stator.opening_depth_mm, 0.5 * sheet),
+    )
+    return [
+        _fault(code, (key,), f"under {limit:g} mm, too thin to punch", MM * (limit - value))
+        for code, key, value, limit in least
+        if MM * (limit - value) > SLACK
+    ]
+
+
+def _slot_faults(design: MachineDesign, dims: SlotDimensions) -> list[Fault]:
+    """Mouth, tooth tip, copper and yoke, from the bore outward."""
+    sheet = MM * design.rotor.sheet_thickness_mm
+    edge = 0.1 * sheet
+    bore = 0.5 * MM * design.stator.bore_diameter_mm
+    # Seen from the tooth's centre line, a corner of the mouth lies bore sin(half pitch - phi) off.
+    phi = math.asin(min(1.0, dims.opening_half_width / bore))
+    face = bore * math.sin(dims.half_pitch - phi)
+    depths = ("slot_depth_mm", "wedge_angle_deg", "wedge_depth_mm", "opening_depth_mm")
+    lacks = (
+        (
+            "opening_wide",
+            ("slot_opening_mm", "tooth_width_mm"),
+            "the mouth leaves no tooth tip beside it",
+            max(dims.opening_half_width + edge - dims.tip_half_width, 0.5 * sheet - face),
+        ),
+        (
+            "slot_shallow",
+            (*depths, "tooth_width_mm", "slot_corner_radius_mm"),
+            "between tooth tip and slot bottom there is no room for copper",
+            edge + _capped(dims.copper_height - dims.corner_height),
+        ),
+        (
+            "yoke_thin",
+            ("slot_depth_mm", "outer_diameter_mm", "bore_diameter_mm"),
+            "the yoke behind the slot is thinner than the sheet",
+            sheet - dims.yoke_depth,
+        ),
+    )
+    faults = [_fault(code, keys, text, lack) for code, keys, text, lack in lacks if lack > SLACK]
+    wedge = dims.copper_height - dims.mouth_height
+    if SLACK < wedge < edge - SLACK:
+        text = f"a wedge of {wedge / MM:.3g} mm is too thin to draw"
+        faults.append(
+            _fault("wedge_thin", ("wedge_depth_mm", "wedge_angle_deg"), text, edge - wedge)
+        )
+    return faults
+
+
+def _corner_faults(design: MachineDesign, dims: SlotDimensions) -> list[Fault]:
+    edge = 0.1 * MM * design.rotor.sheet_thickness_mm
+    radius = dims.corner_radius
+    key = ("slot_corner_radius_mm",)
+    if 0.0 < radius < edge - SLACK:
+        return [_fault("corner_small", key, "too small to punch; 0 is sharp", edge - radius)]
+    if dims.corner_radius_limit < edge:
+        text = "the slot has no width left at its bottom"
+        keys = ("tooth_width_mm", "slot_depth_mm")
+        return [_fault("slot_narrow", keys, text, edge - dims.corner_radius_limit)]
+    half_tooth = 0.5 * MM * design.stator.tooth_width_mm
+    reach = (half_tooth + radius) / max(dims.bottom_radius - radius, SLACK)
+    # Half the bottom's arc between its two fillets.
+    left = dims.bottom_radius * (dims.half_pitch - math.asin(min(1.0, reach)))
+    if left < 0.5 * edge - SLACK:
+        text = "the fillets leave no bottom between them"
+        return [_fault("corner_large", key, text, 0.5 * edge - left)]
+    return []
+
+
+def _capped(height: float) -> float:
+    """A height that may be infinite, made finite so that lacks can be compared."""
+    return min(height, 1e3)
