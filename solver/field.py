@@ -1,0 +1,206 @@
+"""The magnetic field at one operating point: currents and rotor position to `FieldSolution`.
+
+The rotor's position is exact at any angle: whole edges of the turning circle by renumbering, the
+rest by shearing the rotor's half of the gap (`gap.py`). What depends on the position only (linear
+matrix entries, pattern, gap geometry) is kept for the next current at the same position, the
+symbolic factor for all positions whose patterns agree.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.sparse import csc_matrix
+
+from .gap import RotorPlace, rotor_place, sheared
+from .integrals import dq_values, gap_torque, phase_currents, steel_energies
+from .kernel import (
+    FluxState,
+    element_residual,
+    flux_state,
+    packed_tangent,
+    quadrature,
+    quadrature_places,
+)
+from .linear import SparseSolver, analyse
+from .model import FieldSettings, MagneticModel, linear_tangent, magnetic_model
+from .newton import minimise
+from .pattern import node_values, summed, turn_gap, turned_numbering
+from .steel import NU_0
+from .types import FieldSolution, FloatArray, IntArray, Quadrature
+
+__all__ = [
+    "FieldSettings",
+    "MagneticModel",
+    "Position",
+    "at_position",
+    "magnetic_model",
+    "solve_point",
+]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Position:
+    """The linear part of the model for one rotor position."""
+
+    dof: IntArray  # (n_node,)
+    sign: FloatArray  # (n_node,)
+    values: FloatArray  # (n_slot,), all linear elements
+    lower: csc_matrix  # the same as a matrix
+    diagonal: FloatArray  # (n_dof,)
+    solver: SparseSolver
+    gap_elements: IntArray  # both halves of the gap
+    gap_quad: Quadrature
+    gap_places: FloatArray
+
+    def times(self, a: FloatArray) -> FloatArray:
+        """Linear part of the residual, (n_dof,) in A."""
+        product: FloatArray = self.lower @ a + self.lower.T @ a - self.diagonal * a
+        return product
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class PointEnergy:
+    """Energy of the field less that of the currents, by its derivatives."""
+
+    model: MagneticModel
+    position: Position
+    load: FloatArray  # (n_dof,), A
+
+    def residual(self, a: FloatArray) -> tuple[FloatArray, FluxState]:
+        """Residual (n_dof,) in A and the state of the steel."""
+        iron = self.model.iron
+        a_elem = iron.sign * np.append(a, 0.0)[iron.dof]
+        state = flux_state(iron.quad, a_elem, iron.law)
+        elements = element_residual(iron.quad, state)
+        r = summed(iron.residual_scatter, elements.T)
+        r += self.position.times(a)
+        r -= self.load
+        return r, state
+
+    def solve_tangent(self, state: FluxState, rhs: FloatArray) -> FloatArray:
+        """Solution of the tangent system for a right side (n_dof,)."""
+        iron, position = self.model.iron, self.position
+        values = summed(iron.scatter, packed_tangent(iron.quad, state))
+        values += position.values
+        position.solver.factorise(values)
+        return position.solver.solve(rhs)
+
+
+def solve_point(
+    model: MagneticModel,
+    i_d: float,
+    i_q: float,
+    position: float,
+    start: FieldSolution | None = None,
+) -> FieldSolution:
+    """The field with given dq currents at one rotor position.
+
+    Args:
+        model: the machine.
+        i_d: peak d-axis current in A.
+        i_q: peak q-axis current in A.
+        position: mechanical angle in rad of the rotor's d axis ahead of phase A's axis.
+        start: a neighbouring solution of the same model; its rotor part is carried with the rotor.
+
+    Raises:
+        NotConverged: when Newton's iteration fails, with its history.
+    """
+    theta_e = model.sector.pole_pairs * position
+    currents = phase_currents(i_d, i_q, theta_e)
+    place = at_position(model, position)
+    load = currents @ model.linkage
+    energy = PointEnergy(model, place, load)
+    a = np.zeros(load.size)
+    if start is not None:
+        a = np.concatenate([start.a_rotor, start.a_stator])[model.representative]
+    scale = float(np.linalg.norm(load))
+    if scale == 0.0:
+        a, scale = np.zeros(load.size), 1.0
+    a, state, report = minimise(energy, a, scale, model.settings.newton)
+
+    poles = 2 * model.sector.pole_pairs
+    per_machine = poles * model.stack_length
+    psi_abc = per_machine * (model.linkage @ a)
+    psi_d, psi_q = dq_values(psi_abc, theta_e)
+    a_node = node_values(place.dof, place.sign, a)
+    stored, costored = _energies(model, state)
+    linear = 0.5 * float(a @ place.times(a))
+    n_rotor = model.sector.rotor.nodes.shape[0]
+    torque = gap_torque(
+        place.gap_quad,
+        place.gap_places,
+        a_node[place.gap_elements],
+        model.bore_radius - model.rim_radius,
+    )
+    return FieldSolution(
+        i_d=i_d,
+        i_q=i_q,
+        position=position,
+        a_rotor=a_node[:n_rotor],
+        a_stator=a_node[n_rotor:],
+        psi_abc=psi_abc,
+        psi_d=psi_d,
+        psi_q=psi_q,
+        torque=per_machine * torque,
+        energy=per_machine * (stored + linear),
+        coenergy=per_machine * (costored + linear),
+        newton=report,
+    )
+
+
+def at_position(model: MagneticModel, position: float) -> Position:
+    """The model's linear part with the rotor at `position` rad ahead of phase A's axis."""
+    place = rotor_place(model.sector, model.axis_a + position)
+    period = 2 * model.sector.n_circle  # edges of two poles
+    key = (place.shift % period, place.rest)
+    return model.positions.get(key, lambda: _make_position(model, place))
+
+
+def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
+    numbering, gap, still = model.numbering, model.rotor_gap, model.stator_gap
+    dof, sign = turned_numbering(numbering, place.shift)
+    turned = turn_gap(model.pattern, numbering, gap.row, gap.column, place.shift)
+    nodes = sheared(gap.nodes, place.rest, model.rim_radius, model.sector.circle_radius)
+    quad = quadrature(nodes, gap.elements, 6)
+    packed = linear_tangent(quad, np.full(gap.elements.shape[0], NU_0))
+    values = model.fixed_values.copy()
+    values[turned.slot] += turned.sign * summed(gap.scatter, packed)
+    pattern = turned.pattern
+    n_dof = numbering.n_dof
+    # Turning by a whole pole changes signs but no partner.
+    solver = model.factors.get(
+        place.shift % model.sector.n_circle,
+        lambda: analyse(pattern.indptr, pattern.indices, model.settings.solver),
+    )
+    return Position(
+        dof=dof,
+        sign=sign,
+        values=values,
+        lower=csc_matrix((values, pattern.indices, pattern.indptr), shape=(n_dof, n_dof)),
+        diagonal=values[pattern.indptr[:-1]],
+        solver=solver,
+        gap_elements=np.concatenate([gap.node[gap.elements], still.elements]),
+        gap_quad=_joined(quad, still.quad),
+        gap_places=np.concatenate([quadrature_places(nodes, gap.elements, 6), still.places]),
+    )
+
+
+def _joined(first: Quadrature, second: Quadrature) -> Quadrature:
+    return Quadrature(
+        grad=np.concatenate([first.grad, second.grad]),
+        weight=np.concatenate([first.weight, second.weight]),
+    )
+
+
+def _energies(model: MagneticModel, state: FluxState) -> tuple[float, float]:
+    """Energy and coenergy of the steel, per pole and metre of stack, in J/m."""
+    iron = model.iron
+    total = np.zeros(2)
+    for part, law in (
+        (slice(None, iron.n_rotor), iron.rotor_law),
+        (slice(iron.n_rotor, None), iron.stator_law),
+    ):
+        quad = Quadrature(iron.quad.grad[part], iron.quad.weight[part])
+        own = FluxState(state.grad_a[part], state.nu[part], state.dnu[part])
+        total += steel_energies(quad, own, law)
+    return float(total[0]), float(total[1])

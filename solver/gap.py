@@ -1,0 +1,86 @@
+"""The sliding circle: how the rotor's mesh meets the stator's at any angle.
+
+The circle in the middle of the gap carries n_ring = 2 n_circle equally spaced nodes a pole
+(vertices even, middles odd), the same in both meshes. A rotor turned by a whole number of edges
+meets the stator node on node: the rotor's node j is the stator's node j + 2 shift, and each time
+it passes the end of the pole its potential changes sign (antiperiodicity). The rest of the angle,
+at most half an edge, is taken by shearing the elements between rim and circle, so that any angle
+is exact in its geometry and the meshes always conform.
+"""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from .types import FloatArray, IntArray, SectorMesh
+
+REST_TOL = 1e-9  # of an edge; smaller rests are rounding of the angle
+ON_CIRCLE_TOL = 1e-6  # of the radius, far below an element's height
+
+
+@dataclass(frozen=True, slots=True)
+class RotorPlace:
+    """Where the rotor stands: `shift` whole edges ahead, and `rest` rad beyond."""
+
+    shift: int
+    rest: float
+
+
+def rotor_place(sector: SectorMesh, angle: float) -> RotorPlace:
+    """The place of a rotor whose d axis stands at `angle` rad in the stator's frame."""
+    edge = math.pi / (sector.pole_pairs * sector.n_circle)
+    shift = round(angle / edge)
+    rest = angle - shift * edge
+    return RotorPlace(shift, 0.0 if abs(rest) < REST_TOL * edge else rest)
+
+
+def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntArray]:
+    """The mesh's nodes on the circle and their places on it.
+
+    Args:
+        nodes: (n_node, 2) of the rotor's or the stator's mesh, in its own frame.
+        sector: for radius, pole pairs and number of edges.
+
+    Returns:
+        indices of the nodes, and their numbers 0 .. n_ring along the circle.
+
+    Raises:
+        ValueError: when the nodes are not equally spaced as the sector says.
+    """
+    radius = np.hypot(nodes[:, 0], nodes[:, 1])
+    found = np.flatnonzero(np.abs(radius / sector.circle_radius - 1.0) < ON_CIRCLE_TOL)
+    n_ring = 2 * sector.n_circle
+    spacing = math.pi / (sector.pole_pairs * n_ring)
+    # Half a space ahead, so that neither side of a half-circle pole falls on the angle's jump.
+    ahead = np.arctan2(nodes[found, 1], nodes[found, 0]) + 0.5 * spacing
+    exact = np.mod(ahead, 2.0 * math.pi) / spacing - 0.5
+    number = np.rint(exact).astype(np.int64)
+    is_regular = np.array_equal(np.sort(number), np.arange(n_ring + 1))
+    if not is_regular or np.abs(exact - number).max() > 1e-4:
+        raise ValueError(f"circle: {found.size} nodes, expected {n_ring + 1} equally spaced")
+    return found, number
+
+
+def turned(number: IntArray, shift: int, n_ring: int) -> tuple[IntArray, FloatArray]:
+    """Stator's number of the rotor's circle nodes and the sign of their potential.
+
+    Args:
+        number: places along the rotor's circle, from its d axis.
+        shift: whole edges (two places each) by which the rotor stands ahead.
+        n_ring: places a pole.
+    """
+    lap, place = np.divmod(number + 2 * shift, n_ring)
+    return place, np.where(lap % 2 == 0, 1.0, -1.0)
+
+
+def sheared(nodes: FloatArray, rest: float, rim_radius: float, circle_radius: float) -> FloatArray:
+    """Rotor nodes, in the rotor's frame, when the circle stays behind by `rest` rad.
+
+    Nodes up to the rim stay; between rim and circle the angle falls linearly with the radius.
+    """
+    share = (np.hypot(nodes[:, 0], nodes[:, 1]) - rim_radius) / (circle_radius - rim_radius)
+    angle = -rest * np.clip(share, 0.0, 1.0)
+    cos, sin = np.cos(angle), np.sin(angle)
+    x, y = nodes.T
+    return np.stack([x * cos - y * sin, x * sin + y * cos], axis=-1)

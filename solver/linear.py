@@ -1,0 +1,133 @@
+"""Sparse symmetric positive definite systems: one interface of three methods, three libraries.
+
+`analyse` fixes the pattern, `factorise` takes new values of the same pattern, `solve` a right
+side. CHOLMOD (through cvxopt) is the default: on one pole its supernodal factorisation takes a
+third of SuperLU's time and the analysis is kept. qdldl comes next, then SuperLU, which SciPy
+always brings. Values are those of the lower triangle by columns, so that they can be written in
+place; qdldl does not notice a changed pattern (it returns garbage), which is why no solver here
+accepts anything but values.
+"""
+
+from typing import Literal, Protocol
+
+import numpy as np
+from scipy.sparse import csc_matrix
+
+from .types import FloatArray, IntArray
+
+Method = Literal["auto", "cholmod", "qdldl", "superlu"]
+
+
+class SparseSolver(Protocol):
+    """An analysed pattern."""
+
+    def factorise(self, values: FloatArray) -> None:
+        """Factorise the matrix with these values of its lower triangle by columns."""
+
+    def solve(self, rhs: FloatArray) -> FloatArray:
+        """Solution for one right side (n,) with the last factorised values."""
+
+
+def analyse(indptr: IntArray, indices: IntArray, method: Method = "auto") -> SparseSolver:
+    """Solver for a pattern.
+
+    Args:
+        indptr: (n + 1,) starts of the columns of the lower triangle.
+        indices: (n_entry,) rows, rising inside a column, the diagonal first.
+        method: which library; `auto` takes the first that loads.
+    """
+    if method in ("auto", "cholmod"):
+        try:
+            return CholmodSolver(indptr, indices)
+        except ImportError:
+            if method == "cholmod":
+                raise
+    if method in ("auto", "qdldl"):
+        try:
+            return QdldlSolver(indptr, indices)
+        except ImportError:
+            if method == "qdldl":
+                raise
+    return SuperLuSolver(indptr, indices)
+
+
+class CholmodSolver:
+    """Supernodal Cholesky of CHOLMOD (Chen, Davis, Hager & Rajamanickam 2008) through cvxopt."""
+
+    def __init__(self, indptr: IntArray, indices: IntArray) -> None:
+        """Analyse the pattern: fill-reducing ordering and elimination tree."""
+        from cvxopt import cholmod, matrix, spmatrix
+
+        n = indptr.size - 1
+        columns = np.repeat(np.arange(n), np.diff(indptr))
+        self._cholmod, self._as_matrix = cholmod, matrix
+        self._matrix = spmatrix(1.0, matrix(indices), matrix(columns), (n, n))
+        self._factor = cholmod.symbolic(self._matrix, uplo="L")
+
+    def factorise(self, values: FloatArray) -> None:
+        """Factorise the matrix with these values of its lower triangle by columns."""
+        self._matrix.V = self._as_matrix(values)
+        self._cholmod.numeric(self._matrix, self._factor)
+
+    def solve(self, rhs: FloatArray) -> FloatArray:
+        """Solution for one right side (n,) with the last factorised values."""
+        solution = self._as_matrix(rhs)
+        self._cholmod.solve(self._factor, solution)
+        return np.array(solution, dtype=np.float64).ravel()
+
+
+class QdldlSolver:
+    """LDL' of qdldl: simplicial, permissive licence, wheels everywhere."""
+
+    def __init__(self, indptr: IntArray, indices: IntArray) -> None:
+        """Turn the pattern to the upper triangle by columns, which qdldl wants."""
+        import qdldl
+
+        n = indptr.size - 1
+        numbered = csc_matrix((np.arange(indices.size) + 1, indices, indptr), shape=(n, n))
+        self._upper = csc_matrix(numbered.T, dtype=np.float64)
+        self._upper.sort_indices()
+        self._gather = np.asarray(self._upper.data - 1, dtype=np.int64)
+        self._qdldl = qdldl
+        self._solver: qdldl.Solver | None = None
+
+    def factorise(self, values: FloatArray) -> None:
+        """Factorise the matrix with these values of its lower triangle by columns."""
+        self._upper.data = values[self._gather]
+        if self._solver is None:  # the library has no analysis without values
+            self._solver = self._qdldl.Solver(self._upper, upper=True)
+        else:
+            self._solver.update(self._upper, upper=True)
+
+    def solve(self, rhs: FloatArray) -> FloatArray:
+        """Solution for one right side (n,) with the last factorised values."""
+        assert self._solver is not None, "factorise first"
+        return np.asarray(self._solver.solve(rhs), dtype=np.float64)
+
+
+class SuperLuSolver:
+    """LU of SuperLU in its symmetric mode: always there, no analysis kept."""
+
+    def __init__(self, indptr: IntArray, indices: IntArray) -> None:
+        """Prepare the gather from the lower triangle to the full matrix."""
+        n = indptr.size - 1
+        numbered = csc_matrix((np.arange(indices.size) + 1, indices, indptr), shape=(n, n))
+        diagonal = csc_matrix((numbered.diagonal(), (np.arange(n), np.arange(n))), shape=(n, n))
+        self._full = csc_matrix(numbered + numbered.T - diagonal, dtype=np.float64)
+        self._gather = np.asarray(self._full.data - 1, dtype=np.int64)
+
+    def factorise(self, values: FloatArray) -> None:
+        """Factorise the matrix with these values of its lower triangle by columns."""
+        from scipy.sparse.linalg import splu
+
+        self._full.data = values[self._gather]
+        self._factor = splu(
+            self._full,
+            permc_spec="MMD_AT_PLUS_A",
+            diag_pivot_thresh=0.0,
+            options={"SymmetricMode": True},
+        )
+
+    def solve(self, rhs: FloatArray) -> FloatArray:
+        """Solution for one right side (n,) with the last factorised values."""
+        return np.asarray(self._factor.solve(rhs), dtype=np.float64)
