@@ -1,0 +1,85 @@
+"""Operating points in a row, each started from the ones before.
+
+The rotor's part of a solution is carried with the rotor. Where three points lie evenly or unevenly
+on one straight line in (i_d, i_q, position), the start is the straight line through the last two
+solutions. Chains are independent of one another: give each worker its own.
+"""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from .field import MagneticModel, solve_point
+from .types import FieldSolution, FloatArray
+
+ON_LINE_TOL = 1e-6  # of the step between points
+LONGEST_REACH = 2.0  # times the last step; farther out the straight line is no better
+
+
+@dataclass(frozen=True, slots=True)
+class OperatingPoint:
+    """Peak dq currents in A and the rotor's position in rad (mechanical)."""
+
+    i_d: float
+    i_q: float
+    position: float
+
+
+def solve_chain(
+    model: MagneticModel,
+    points: Sequence[OperatingPoint],
+    on_done: Callable[[int, FieldSolution], None] | None = None,
+) -> tuple[FieldSolution, ...]:
+    """Fields of all points, in their order.
+
+    Args:
+        model: the machine.
+        points: neighbours should differ little; order them so.
+        on_done: called with the index and the solution of every point as it is done.
+
+    Raises:
+        NotConverged: when Newton's iteration fails at a point.
+    """
+    solutions: list[FieldSolution] = []
+    for k, point in enumerate(points):
+        start = _start(solutions, points[:k], point)
+        solution = solve_point(model, point.i_d, point.i_q, point.position, start)
+        solutions.append(solution)
+        if on_done is not None:
+            on_done(k, solution)
+    return tuple(solutions)
+
+
+def _start(
+    solutions: Sequence[FieldSolution], before: Sequence[OperatingPoint], point: OperatingPoint
+) -> FieldSolution | None:
+    if not solutions:
+        return None
+    last = solutions[-1]
+    if len(solutions) == 1:
+        return last
+    reach = _reach(_vector(before[-2]), _vector(before[-1]), _vector(point))
+    if reach == 0.0:
+        return last
+    first = solutions[-2]
+    return replace(
+        last,
+        a_rotor=last.a_rotor + reach * (last.a_rotor - first.a_rotor),
+        a_stator=last.a_stator + reach * (last.a_stator - first.a_stator),
+    )
+
+
+def _reach(first: FloatArray, last: FloatArray, point: FloatArray) -> float:
+    """How many of the last steps ahead the point lies on the same line; 0 if it does not."""
+    step, ahead = last - first, point - last
+    length = float(step @ step)
+    if length == 0.0:
+        return 0.0
+    reach = float(ahead @ step) / length
+    is_on_line = float(np.abs(ahead - reach * step).max()) <= ON_LINE_TOL * float(length**0.5)
+    return reach if is_on_line and 0.0 < reach <= LONGEST_REACH else 0.0
+
+
+def _vector(point: OperatingPoint) -> FloatArray:
+    return np.array([point.i_d, point.i_q, point.position])
