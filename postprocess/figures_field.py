@@ -1,0 +1,350 @@
+"""Flux density and flux lines over one pole, rotor and stator where they truly stand.
+
+The stator's sector is drawn in its own frame, upright. The rotor stands turned by its angle, so
+two copies of its pole fill the sector: the second with the potential's sign changed, which is
+what antiperiodicity means. Its gap is sheared as in the solution, so both meshes meet edge on edge
+on the turning circle and flux lines run through it unbroken.
+
+|B| is taken in each element for itself: it jumps where materials meet, and between elements by
+as much as the solution does. Cost measured: see `tests/postprocess/test_figures.py`.
+"""
+
+from __future__ import annotations
+
+import cmath
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from lamwright.geometry.section import CrossSection, Region
+from lamwright.geometry.winding import WindingTable
+from lamwright.solver.gap import rotor_place, sheared
+from lamwright.solver.isoparametric import NODE_PLACES, gradients_at
+from lamwright.solver.types import FieldSolution, FloatArray, IntArray, SectorMesh
+
+from .figures_labels import RULER_FOOT, draw_ruler, place_callouts
+from .figures_section import bare, pole_silhouette
+from .figures_style import (
+    MM,
+    ComplexArray,
+    Style,
+    draw_scale,
+    flux_colours,
+    inked,
+    sampled,
+    upright,
+    visible_edges,
+)
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+FEWEST_LINES = 22  # flux lines over the sector; the step is a round flux that gives at least these
+PHASES = "ABC"
+NO_CURRENT = 0.02  # of the largest ampere-conductors: a side with less is marked as idle
+# A second-order triangle as four: corners and middles in the order of `solver.types`.
+QUARTERS: IntArray = np.array([[0, 3, 5], [3, 1, 4], [5, 4, 2], [3, 4, 5]])
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Part:
+    """A mesh where it stands in the picture."""
+
+    nodes: FloatArray  # (n_node, 2), mm
+    elements: IntArray  # (n_elem, 6)
+    potential: FloatArray  # (n_node,), Wb/m
+    flux_density: FloatArray  # (n_elem, 3), T at the corners
+
+
+def draw_flux(
+    ax: Axes,
+    scale_ax: Axes,
+    section: CrossSection,
+    sector: SectorMesh,
+    solution: FieldSolution,
+    winding: WindingTable,
+    style: Style,
+) -> None:
+    """Draw |B| in T, flux lines and slot currents of one pole of the stator, and the scale.
+
+    Args:
+        ax: the drawing, equal axes in mm; the field is rasterised in a vector file.
+        scale_ax: the colour scale.
+        section: exact outlines.
+        sector: the meshes of the solution.
+        solution: one operating point at one position.
+        winding: conductors, and the axis of phase A.
+        style: sizes and colours.
+    """
+    angle = winding.axis_a + solution.position
+    parts = _parts(section, sector, solution, angle)
+    top = _round_up(max(float(part.flux_density.max()) for part in parts))
+    turn = upright(section)
+    place_callouts(ax, pole_silhouette(section), [], style, RULER_FOOT)
+    clip = _sector_clip(ax, section, turn)
+    _draw_density(ax, parts, top, clip)
+    _draw_lines(ax, parts, section, clip, style)
+    _draw_outlines(ax, section, turn, angle, clip, style)
+    _draw_currents(ax, section, solution, winding, turn, style)
+    _draw_rotor_axes(ax, section, turn, angle, style)
+    draw_ruler(ax, style)
+    _draw_note(ax, _notes(solution, line_step(parts, section.stack_length)), style)
+    bare(ax)
+    draw_scale(scale_ax, flux_colours(), (0.0, top), "flux density |B| in T", style)
+
+
+def _parts(
+    section: CrossSection, sector: SectorMesh, solution: FieldSolution, angle: float
+) -> list[_Part]:
+    """The stator and as many copies of the rotor's pole as the sector shows."""
+    pole = math.pi / section.pole_pairs
+    turn = upright(section)
+    place = rotor_place(sector, angle)
+    nodes = sheared(sector.rotor.nodes, place.rest, section.rotor_radius, section.circle_radius)
+    parts = [_part(sector.stator.nodes, sector.stator.elements, solution.a_stator, turn)]
+    first = math.floor(-angle / pole + 1e-9)
+    # Angles from the middle of the pole, where no node is near the cut of the complex plane.
+    lead = np.angle(_complex(nodes) * cmath.exp(-0.5j * pole))[sector.rotor.elements[:, :3]]
+    for copy in (first, first + 1):
+        start = angle + copy * pole
+        ahead = start + 0.5 * pole + lead
+        inside = (ahead.max(axis=1) > 0.0) & (ahead.min(axis=1) < pole)
+        if np.any(inside):
+            potential = -solution.a_rotor if copy % 2 else solution.a_rotor
+            shown = sector.rotor.elements[inside]
+            parts.append(_part(nodes, shown, potential, turn * cmath.exp(1j * start)))
+    return parts
+
+
+def _complex(nodes: FloatArray) -> ComplexArray:
+    return np.asarray(nodes[:, 0] + 1j * nodes[:, 1])
+
+
+def _part(nodes: FloatArray, elements: IntArray, potential: FloatArray, turn: complex) -> _Part:
+    grad, _ = gradients_at(nodes[elements], NODE_PLACES[:3])
+    slope = np.einsum("epdi,ei->epd", grad, potential[elements])  # B turned by 90 degrees, T
+    at = MM * turn * (_complex(nodes))
+    return _Part(
+        nodes=np.stack([at.real, at.imag], axis=1),
+        elements=elements,
+        potential=potential,
+        flux_density=np.hypot(slope[..., 0], slope[..., 1]),
+    )
+
+
+def _round_up(value: float) -> float:
+    """The next tenth, so that the scale ends on a number that can be read."""
+    return max(0.1, math.ceil(10.0 * value - 1e-9) / 10.0)
+
+
+def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> object:
+    from matplotlib.patches import PathPatch
+    from matplotlib.path import Path as InkPath
+
+    outer = 1.001 * MM * section.stator_outer_radius
+    pole = math.pi / section.pole_pairs
+    arc = outer * np.exp(1j * np.linspace(0.0, pole, 91)) * turn
+    points = np.concatenate([[0j], arc, [0j]])
+    patch = PathPatch(InkPath(np.stack([points.real, points.imag], axis=1)))
+    patch.set_transform(ax.transData)
+    return patch
+
+
+def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: object) -> None:
+    for part in parts:
+        corners = part.nodes[part.elements[:, :3]].reshape(-1, 2)
+        mesh = ax.tripcolor(
+            corners[:, 0],
+            corners[:, 1],
+            np.arange(len(corners)).reshape(-1, 3),
+            part.flux_density.ravel(),
+            shading="gouraud",
+            cmap=flux_colours(),
+            vmin=0.0,
+            vmax=top,
+            rasterized=True,
+            zorder=1,
+        )
+        mesh.set_clip_path(clip)
+
+
+def _draw_lines(
+    ax: Axes, parts: Sequence[_Part], section: CrossSection, clip: object, style: Style
+) -> None:
+    from matplotlib.tri import Triangulation
+
+    step = line_step(parts, section.stack_length) / section.stack_length
+    for part in parts:
+        quarters = part.elements[:, QUARTERS].reshape(-1, 3)
+        low, high = float(part.potential.min()), float(part.potential.max())
+        levels = step * (np.arange(math.floor(low / step), math.ceil(high / step) + 1) + 0.5)
+        lines = ax.tricontour(
+            Triangulation(part.nodes[:, 0], part.nodes[:, 1], quarters),
+            part.potential,
+            levels=levels,
+            colors=style.ink,
+            linewidths=style.hair,
+            linestyles="solid",
+            zorder=2,
+        )
+        lines.set_clip_path(clip)
+
+
+def line_step(parts: Sequence[_Part], stack_length: float) -> float:
+    """A round flux in Wb between two flux lines that gives `FEWEST_LINES` or up to 2.5 times."""
+    low = min(float(part.potential.min()) for part in parts)
+    high = max(float(part.potential.max()) for part in parts)
+    widest = max((high - low) * stack_length / FEWEST_LINES, 1e-12)
+    decade = 10.0 ** math.floor(math.log10(widest))
+    return max(step * decade for step in (1.0, 2.0, 5.0) if step * decade <= widest)
+
+
+def _draw_outlines(
+    ax: Axes, section: CrossSection, turn: complex, angle: float, clip: object, style: Style
+) -> None:
+    from matplotlib.patches import PathPatch
+
+    pole = math.pi / section.pole_pairs
+    poles = range(2 * section.pole_pairs)
+    turns = [turn * cmath.exp(1j * (angle + k * pole)) for k in poles]
+    for regions, at in ((section.stator, [turn]), (section.rotor, turns)):
+        lines = PathPatch(inked(visible_edges(regions, section), at, closed=False), fill=False)
+        lines.set(edgecolor=style.ink, linewidth=style.outline, zorder=3)
+        ax.add_patch(lines)
+        lines.set_clip_path(clip)
+
+
+def _draw_currents(
+    ax: Axes,
+    section: CrossSection,
+    solution: FieldSolution,
+    winding: WindingTable,
+    turn: complex,
+    style: Style,
+) -> None:
+    """Phase, and a dot (towards the reader) or cross (away) for the current of each coil side."""
+    from matplotlib.patheffects import Normal, Stroke
+
+    theta_e = section.pole_pairs * solution.position
+    lag = 2.0 * math.pi / 3.0 * np.arange(3)
+    i_abc = solution.i_d * np.cos(theta_e - lag) - solution.i_q * np.sin(theta_e - lag)
+    amperes = winding.conductors @ i_abc  # (slots, layers)
+    most = float(np.abs(amperes).max())
+    copper = [region for region in section.stator if region.material == "copper"]
+    per_point = float(np.ptp(ax.get_xlim())) / ax.get_window_extent().width
+    per_point *= ax.get_figure(root=True).dpi / 72.0
+    pitch = 2.0 * math.pi / section.slots
+    for region in copper:
+        _, slot, _, layer = region.name.split("_")
+        side = winding.conductors[int(slot), int(layer)]
+        phase = int(np.argmax(np.abs(side)))
+        sign = "+" if side[phase] > 0 else "\N{MINUS SIGN}"
+        value = float(amperes[int(slot), int(layer)])
+        middle, room = _slot_room(region, (int(slot) + 0.5) * pitch)
+        size = min(7.0, 0.42 * room / per_point)
+        apart = 0.62j * size * per_point
+        at = MM * middle * turn
+        _mark(ax, at - apart, value if abs(value) > NO_CURRENT * most else 0.0, size, style)
+        ax.text(
+            (at + apart).real,
+            (at + apart).imag,
+            sign + PHASES[phase],
+            fontsize=size,
+            color=style.ink,
+            ha="center",
+            va="center_baseline",
+            path_effects=[Stroke(linewidth=2.0, foreground=style.paper), Normal()],
+            zorder=6,
+        )
+
+
+def _slot_room(region: Region, angle: float) -> tuple[complex, float]:
+    """Middle in m of a copper region and its width in mm there, the slot's axis at `angle`."""
+    points = sampled(region.outer) * cmath.exp(-1j * angle)
+    middle = 0.5 * (points.real.min() + points.real.max())
+    width = 2.0 * MM * float(np.abs(points.imag).mean())
+    return complex(middle * cmath.exp(1j * angle)), width
+
+
+def _mark(ax: Axes, at: complex, value: float, size: float, style: Style) -> None:
+    ring = {
+        "markersize": size,
+        "markerfacecolor": style.paper,
+        "markeredgecolor": style.ink,
+        "markeredgewidth": 0.6,
+        "zorder": 5,
+    }
+    ax.plot([at.real], [at.imag], "o", **ring)
+    if value > 0.0:
+        ax.plot([at.real], [at.imag], "o", color=style.ink, markersize=0.32 * size, zorder=6)
+    elif value < 0.0:
+        ax.plot(
+            [at.real],
+            [at.imag],
+            "x",
+            color=style.ink,
+            markersize=0.55 * size,
+            markeredgewidth=0.8,
+            zorder=6,
+        )
+
+
+def _draw_rotor_axes(
+    ax: Axes, section: CrossSection, turn: complex, angle: float, style: Style
+) -> None:
+    """The rotor's d and q axes within the stator's sector, named beyond the stator."""
+    half = 0.5 * math.pi / section.pole_pairs
+    outer = MM * section.stator_outer_radius
+    spans = ((0.0, MM * section.rotor_radius, (9, 2.5, 1.5, 2.5)), (outer, 1.05 * outer, (1, 0)))
+    first = math.ceil(-angle / half - 1e-9)
+    last = math.floor(2.0 - angle / half + 1e-9)
+    for k in range(first, last + 1):
+        along = turn * cmath.exp(1j * (angle + k * half))
+        for start, end, dashes in spans:
+            ends = np.array([start, end]) * along
+            ax.plot(
+                ends.real,
+                ends.imag,
+                color=style.quiet,
+                linewidth=style.outline,
+                dashes=dashes,
+                zorder=4,
+            )
+        tip = 1.06 * outer * along
+        ax.text(
+            tip.real,
+            tip.imag,
+            "q axis" if k % 2 else "d axis",
+            fontsize=style.text,
+            fontstyle="italic",
+            color=style.quiet,
+            ha="center",
+            va="bottom",
+        )
+
+
+def _notes(solution: FieldSolution, step: float) -> list[str]:
+    position = math.degrees(solution.position)
+    return [
+        f"i_d {solution.i_d:.2f} A, i_q {solution.i_q:.2f} A, d axis {position:.2f}\N{DEGREE SIGN}"
+        " (mechanical) ahead of phase A's axis",
+        f"{1e3 * step:g} mWb between flux lines; current towards the reader: dot, away: cross",
+    ]
+
+
+def _draw_note(ax: Axes, lines: Sequence[str], style: Style) -> None:
+    """Remarks at the foot of the drawing, on the right."""
+    ax.text(
+        0.995,
+        0.005,
+        "\n".join(lines),
+        transform=ax.transAxes,
+        fontsize=style.small,
+        color=style.quiet,
+        ha="right",
+        va="bottom",
+        linespacing=1.35,
+    )

@@ -1,0 +1,292 @@
+"""The cross-section as a picture: one pole with the trade's names on it, and the whole lamination.
+
+Lines and arcs are those of `CrossSection`, not of a mesh. Rotor names stand on the right of the
+pole, stator names on the left; the right half is the mirror image of the left one, so nothing
+goes unnamed.
+"""
+
+from __future__ import annotations
+
+import cmath
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from lamwright.geometry.section import CrossSection, Material, Region, Rib
+
+from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
+from .figures_style import (
+    FILLS,
+    MATERIAL_NAMES,
+    MM,
+    ComplexArray,
+    Style,
+    inked,
+    region_ink,
+    sampled,
+    upright,
+    visible_edges,
+)
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+AXIS_OVERHANG = 1.05  # how far a d or q axis line reaches, over the stator's radius
+LETTER_ROOM = 1.13  # how far its letters reach
+
+
+def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
+    """Draw one pole, upright, equal axes in mm, with trade names on leader lines.
+
+    Sets the limits of `ax` so that the names find room beside the pole; the names stand for the
+    size that `ax` has at the call.
+
+    Raises:
+        ValueError: if the axes are too low for the number of names.
+    """
+    turn = upright(section)
+    draw_materials(ax, section, [turn], style)
+    draw_axes_lines(ax, section, turn, style)
+    callouts = section_callouts(section, turn)
+    place_callouts(ax, pole_silhouette(section), callouts, style, RULER_FOOT)
+    draw_ruler(ax, style)
+    bare(ax)
+
+
+def draw_lamination(ax: Axes, section: CrossSection, style: Style) -> None:
+    """Draw all poles of rotor and stator, equal axes in mm, without names."""
+    poles = 2 * section.pole_pairs
+    turns = [upright(section) * cmath.exp(2j * math.pi * k / poles) for k in range(poles)]
+    draw_materials(ax, section, turns, style, line_share=0.5)
+    rim = 1.02 * MM * section.stator_outer_radius * np.exp(1j * np.linspace(0, 2 * np.pi, 180))
+    place_callouts(ax, rim, [], style)
+    bare(ax)
+
+
+def draw_key(ax: Axes, section: CrossSection, style: Style) -> None:
+    """Write the main dimensions, and the materials beside a patch of their fill."""
+    from matplotlib.patches import Rectangle
+
+    ax.set_xlim(0.0, 1.0)
+    ax.set_ylim(0.0, 1.0)
+    ax.set_axis_off()
+    rows = _dimensions(section)
+    step = 1.0 / (len(rows) + len(FILLS) + 1)
+    for k, (name, value) in enumerate(rows):
+        y = 1.0 - (k + 0.5) * step
+        ax.text(0.0, y, name, fontsize=style.text, color=style.quiet, va="center")
+        ax.text(1.0, y, value, fontsize=style.text, color=style.ink, va="center", ha="right")
+    for k, (material, name) in enumerate(MATERIAL_NAMES.items()):
+        y = 1.0 - (len(rows) + 1.5 + k) * step
+        patch = Rectangle((0.0, y - 0.36 * step), 0.16, 0.72 * step, **_fill(material, style))
+        patch.set(edgecolor=style.ink, linewidth=style.hair)
+        ax.add_patch(patch)
+        ax.text(0.22, y, name, fontsize=style.text, color=style.ink, va="center")
+
+
+def draw_materials(
+    ax: Axes,
+    section: CrossSection,
+    turns: list[complex],
+    style: Style,
+    line_share: float = 1.0,
+) -> None:
+    """Fill the regions by material and ink every border between materials, once for each turn."""
+    from matplotlib.patches import PathPatch
+
+    regions = (*section.rotor, *section.stator)
+    for material in FILLS:
+        own = [region for region in regions if region.material == material]
+        if material == "air" or not own:
+            continue
+        patch = PathPatch(region_ink(own, turns), **_fill(material, style), zorder=1)
+        ax.add_patch(patch)
+    lines = PathPatch(inked(visible_edges(regions, section), turns, closed=False), fill=False)
+    lines.set(edgecolor=style.ink, linewidth=line_share * style.outline, zorder=3)
+    lines.set(joinstyle="round", capstyle="round")
+    ax.add_patch(lines)
+
+
+def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
+    """Draw both d axes and the q axis of a pole whose first d axis points along `turn`."""
+    half = math.pi / (2 * section.pole_pairs)
+    for name, angle in (("d axis", 0.0), ("q axis", half), ("d axis", 2 * half)):
+        along = turn * cmath.exp(1j * angle)
+        tip = AXIS_OVERHANG * MM * section.stator_outer_radius * along
+        ax.plot(
+            [0.0, tip.real],
+            [0.0, tip.imag],
+            color=style.quiet,
+            linewidth=style.outline,
+            dashes=(9, 2.5, 1.5, 2.5),
+            zorder=5,
+        )
+        at = tip * 1.012
+        ax.text(
+            at.real,
+            at.imag,
+            name,
+            fontsize=style.text,
+            fontstyle="italic",
+            color=style.quiet,
+            ha="center",
+            va="bottom",
+        )
+
+
+def pole_silhouette(section: CrossSection) -> ComplexArray:
+    """A line (n,) in mm around an upright pole and the letters of its axes."""
+    half = math.pi / (2 * section.pole_pairs)
+    outer = MM * section.stator_outer_radius
+    share = np.linspace(0.0, 1.0, 120)
+    arc = outer * np.exp(1j * (math.pi / 2 - half + 2 * half * share))
+    apex = -0.03j * outer
+    right, left = LETTER_ROOM * arc[0], LETTER_ROOM * arc[-1]
+    top = np.array([arc[60] * LETTER_ROOM])
+    return np.concatenate(
+        [apex + (right - apex) * share, arc, top, arc[60:], left + (apex - left) * share]
+    )
+
+
+def section_callouts(section: CrossSection, turn: complex) -> list[Callout]:
+    """Names of all parts of an upright pole, each with the point it names, in mm."""
+    found = _rotor_callouts(section, turn) + _stator_callouts(section, turn)
+    return [Callout(c.text, MM * c.anchor, c.side) for c in found]
+
+
+def _rotor_callouts(section: CrossSection, turn: complex) -> list[Callout]:
+    found: list[Callout] = []
+    anchors: list[complex] = []
+    outlines = _barrier_outlines(section, turn)
+    for number, outline in outlines.items():
+        anchors.append(_arm_point(outline))
+        found.append(Callout(f"flux barrier {number}", anchors[-1], "right"))
+    found.append(Callout("flux carrier", _carrier_point(section, turn, outlines, anchors), "right"))
+    for rib in _right_hand(section.ribs, turn):
+        text = f"{rib.kind} rib {rib.barrier}, {MM * rib.width:.2f} mm"
+        found.append(Callout(text, 0.5 * (rib.start + rib.end) * turn, "right"))
+    return found
+
+
+def _stator_callouts(section: CrossSection, turn: complex) -> list[Callout]:
+    per_pole = section.slots // (2 * section.pole_pairs)
+    pitch = 2.0 * math.pi / section.slots
+    copper = [region for region in section.stator if region.material == "copper"]
+    reach = [abs(sampled(region.outer)) for region in copper]
+    bottom, top = max(r.max() for r in reach), min(r.min() for r in reach)
+    slot = (2 * per_pole) // 3  # left of the middle, clear of the column of labels
+
+    def at(radius: float, pitches: float) -> complex:
+        return radius * cmath.exp(1j * pitch * pitches) * turn
+
+    beside = cmath.exp(0.2j * math.pi / section.pole_pairs)
+    parts = [
+        ("stator yoke", at(0.5 * (bottom + section.stator_outer_radius), slot + 0.6)),
+        ("tooth", at(0.5 * (bottom + top), slot + 1)),
+        ("slot opening", at(0.5 * (section.stator_bore_radius + top), slot + 0.5)),
+        (f"air gap, {MM * section.gap:.2f} mm", at(section.circle_radius, slot + 1.2)),
+        (f"shaft bore, {_diameter(section.shaft_radius)}", section.shaft_radius * 1j * beside),
+    ]
+    layers = sorted((r for r in copper if r.name.startswith(f"slot_{slot}_")), key=_layer)
+    names = ["slot"] if len(layers) == 1 else ["slot, bottom layer", "slot, top layer"]
+    for region, name in zip(layers, names, strict=True):
+        span = abs(sampled(region.outer))
+        parts.append((name, at(0.5 * (span.min() + span.max()), slot + 0.5)))
+    return [Callout(name, point, "left") for name, point in parts]
+
+
+def _diameter(radius: float) -> str:
+    return f"\N{LATIN CAPITAL LETTER O WITH STROKE} {2 * MM * radius:.2f} mm"
+
+
+def _layer(region: Region) -> int:
+    return int(region.name.rsplit("_", 1)[1])
+
+
+def _barrier_outlines(section: CrossSection, turn: complex) -> dict[int, list[ComplexArray]]:
+    """Turned outlines (n,) in m of the cavities of each barrier, by its number."""
+    outlines: dict[int, list[ComplexArray]] = {}
+    for region in section.rotor:
+        if region.name.startswith("barrier_"):
+            number = int(region.name.split("_")[1])
+            outlines.setdefault(number, []).append(sampled(region.outer) * turn)
+    return dict(sorted(outlines.items()))
+
+
+def _arm_point(outlines: list[ComplexArray]) -> complex:
+    """A point deep inside the right half of a barrier, two thirds of the way to its end."""
+    outline = max(outlines, key=lambda points: float(points.real.max()))
+    right = max(0.0, float(outline.real.min()))
+    wanted = right + 0.66 * (float(outline.real.max()) - right)
+    crossings = _crossings(outline, wanted)
+    return complex(wanted, 0.5 * float(crossings[-2] + crossings[-1]))
+
+
+def _crossings(outline: ComplexArray, x: float) -> FloatArray:
+    """Heights, rising, at which a closed outline (n,) meets the upright line at x."""
+    after = np.roll(outline, -1)
+    meets = (outline.real < x) != (after.real < x)
+    start, end = outline[meets], after[meets]
+    share = (x - start.real) / (end.real - start.real)
+    return np.sort(start.imag + share * (end.imag - start.imag))
+
+
+def _carrier_point(
+    section: CrossSection,
+    turn: complex,
+    outlines: dict[int, list[ComplexArray]],
+    anchors: list[complex],
+) -> complex:
+    """The middle of the carrier under barrier 1, or between it and the bore if it is alone."""
+    inner = anchors[0]
+    edge = np.concatenate(outlines[1])
+    if len(anchors) > 1:
+        near = np.concatenate(outlines[2])
+        inner = 0.5 * (anchors[0] + anchors[1])
+        a = edge[np.argmin(abs(edge - inner))]
+        b = near[np.argmin(abs(near - a))]
+        return complex(0.5 * (a + b))
+    a = edge[np.argmin(abs(edge))]
+    return complex(0.5 * (a + section.shaft_radius * a / abs(a)))
+
+
+def _right_hand(ribs: tuple[Rib, ...], turn: complex) -> list[Rib]:
+    """One rib of each kind and barrier: the one furthest to the right of the upright pole."""
+    best: dict[tuple[str, int], Rib] = {}
+    for rib in ribs:
+        key = (rib.kind, rib.barrier)
+        if key not in best or _x(rib, turn) > _x(best[key], turn):
+            best[key] = rib
+    return list(best.values())
+
+
+def _x(rib: Rib, turn: complex) -> float:
+    return ((rib.start + rib.end) * turn).real
+
+
+def _dimensions(section: CrossSection) -> list[tuple[str, str]]:
+    diameters = (
+        ("stator outer", section.stator_outer_radius),
+        ("stator bore", section.stator_bore_radius),
+        ("rotor", section.rotor_radius),
+        ("shaft bore", section.shaft_radius),
+    )
+    rows = [
+        ("poles, slots", f"{2 * section.pole_pairs}, {section.slots}"),
+        ("stack length", f"{MM * section.stack_length:.1f} mm"),
+    ]
+    return rows + [(name, _diameter(radius)) for name, radius in diameters]
+
+
+def _fill(material: Material, style: Style) -> dict[str, object]:
+    """Fill of a material; the edge in its own colour closes the seams between poles."""
+    return {"facecolor": FILLS[material], "edgecolor": FILLS[material], "linewidth": 0.3}
+
+
+def bare(ax: Axes) -> None:
+    """Take frame and ticks away: a drawing with a ruler needs none."""
+    for spine in ax.spines.values():
+        spine.set_visible(False)
+    ax.set_xticks([])
+    ax.set_yticks([])
