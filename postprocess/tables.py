@@ -1,0 +1,170 @@
+"""Results on disk: JSON and CSV with a unit in every key, whole files or none.
+
+A run's files are made in a hidden folder inside the asked one and moved out by rename, the verdict
+last: where a `verdict.json` stands, all files beside it belong to it.
+"""
+
+import csv
+import io
+import json
+import os
+import shutil
+import tempfile
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import contextmanager
+from pathlib import Path
+
+import numpy as np
+
+from lamwright.geometry.errors import LamwrightError
+from lamwright.solver.types import FieldSolution
+
+from .operating import mean_linkage_torque
+from .torque import TorqueSpectrum, TorqueWaveform, coenergy_torque, linkage_torque
+from .verdict import Outcome, Verdict, all_figures
+
+VERDICT_FILE = "verdict.json"
+DEGREE = np.pi / 180.0
+
+
+def write_text(path: Path, text: str) -> None:
+    """Write a file whole or not at all: temporary file beside it, then rename."""
+    temporary = path.with_name(f".{path.name}.{os.getpid()}.tmp")
+    try:
+        temporary.write_text(text, encoding="utf-8", newline="\n")
+        temporary.replace(path)
+    finally:
+        temporary.unlink(missing_ok=True)
+
+
+def json_text(record: Mapping[str, object]) -> str:
+    """The record as JSON.
+
+    Raises:
+        ValueError: a number is not finite; such a file is never written.
+    """
+    return json.dumps(record, indent=2, allow_nan=False, ensure_ascii=False) + "\n"
+
+
+def prepared_folder(folder: Path) -> Path:
+    """The folder, made where it is missing and tried by writing.
+
+    Raises:
+        LamwrightError: it is a file, or cannot be made or written.
+    """
+    if folder.exists() and not folder.is_dir():
+        raise LamwrightError(f"--out {folder}: is a file; accepted a folder, new or existing")
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryFile(dir=folder):
+            pass
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or str(error)
+        raise LamwrightError(f"--out {folder}: cannot be written: {reason.lower()}") from None
+    return folder
+
+
+@contextmanager
+def staged(folder: Path) -> Iterator[Path]:
+    """A hidden folder whose files move to `folder` when the block ends well, the verdict last."""
+    stage = Path(tempfile.mkdtemp(prefix=".unfinished-", dir=folder))
+    try:
+        yield stage
+        (folder / VERDICT_FILE).unlink(missing_ok=True)
+        for file in sorted(stage.iterdir(), key=lambda file: (file.name == VERDICT_FILE, file)):
+            file.replace(folder / file.name)
+    finally:
+        shutil.rmtree(stage, ignore_errors=True)
+
+
+def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, object]:
+    """The verdict as it stands in JSON: figures flat, then outcomes, harmonics and the run."""
+    figures = all_figures(verdict)
+    return {
+        "design": verdict.design_name,
+        "passes": verdict.passes,
+        **{key: figure.value for key, figure in figures.items()},
+        "limits": {outcome.key: outcome.limit for outcome in verdict.outcomes},
+        "outcomes": {outcome.key: _outcome_record(outcome) for outcome in verdict.outcomes},
+        "torque_harmonics": _spectrum_record(spectrum),
+        "estimates": [key for key, figure in figures.items() if figure.is_estimate],
+        "cautions": list(verdict.cautions),
+        "outline_dxf": verdict.outline_dxf,
+        "version": verdict.version,
+        "design_hash": verdict.design_hash,
+        "seconds": {time.phase: round(time.seconds, 3) for time in verdict.times},
+    }
+
+
+def _outcome_record(outcome: Outcome) -> dict[str, object]:
+    return {
+        "figure": outcome.figure.key,
+        "value": outcome.figure.value,
+        "limit": outcome.limit,
+        "holds": outcome.holds,
+    }
+
+
+def _spectrum_record(spectrum: TorqueSpectrum) -> list[dict[str, float]]:
+    return [
+        {"order_el": order, "amplitude_nm": float(amplitude), "phase_deg": float(phase / DEGREE)}
+        for order, amplitude, phase in zip(
+            spectrum.order, spectrum.amplitude, spectrum.phase, strict=True
+        )
+    ]
+
+
+def point_record(solution: FieldSolution, pole_pairs: int) -> dict[str, object]:
+    """One field solution as it stands in JSON."""
+    s = solution
+    psi_a, psi_b, psi_c = (float(psi) for psi in s.psi_abc)
+    return {
+        "i_d_a": s.i_d,
+        "i_q_a": s.i_q,
+        "angle_mech_deg": s.position / DEGREE,
+        "psi_d_vs": s.psi_d,
+        "psi_q_vs": s.psi_q,
+        "psi_a_vs": psi_a,
+        "psi_b_vs": psi_b,
+        "psi_c_vs": psi_c,
+        "torque_maxwell_nm": s.torque,
+        "torque_linkage_nm": mean_linkage_torque(pole_pairs, s.i_d, s.i_q, [s.psi_d], [s.psi_q]),
+        "energy_j": s.energy,
+        "coenergy_j": s.coenergy,
+        "newton_steps": s.newton.steps,
+        "newton_residual_relative": s.newton.history[-1],
+    }
+
+
+def waveform_csv(waveform: TorqueWaveform) -> str:
+    """One row for each rotor position over 60 electrical degrees."""
+    columns = {
+        "angle_el_deg": waveform.angle_el / DEGREE,
+        "angle_mech_deg": waveform.angle_el / DEGREE / waveform.pole_pairs,
+        "torque_nm": waveform.torque,
+        "torque_coenergy_nm": coenergy_torque(waveform),
+        "torque_linkage_nm": linkage_torque(waveform),
+        "psi_d_vs": waveform.psi_d,
+        "psi_q_vs": waveform.psi_q,
+        "coenergy_j": waveform.coenergy,
+    }
+    rows = np.column_stack(list(columns.values()))
+    return csv_text(list(columns), [[f"{value:.9g}" for value in row] for row in rows])
+
+
+def spectrum_csv(spectrum: TorqueSpectrum, mean_torque: float) -> str:
+    """One row for each electrical order; percent of the mean torque (N m)."""
+    rows = [
+        [str(order), f"{amplitude:.6g}", f"{100.0 * amplitude / mean_torque:.6g}"]
+        for order, amplitude in zip(spectrum.order, spectrum.amplitude, strict=True)
+    ]
+    return csv_text(["order_el", "amplitude_nm", "percent_of_mean"], rows)
+
+
+def csv_text(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    """Comma-separated values with a header row."""
+    stream = io.StringIO()
+    writer = csv.writer(stream, lineterminator="\n")
+    writer.writerow(header)
+    writer.writerows(rows)
+    return stream.getvalue()
