@@ -36,6 +36,11 @@ class FluxState:
     dnu: FloatArray  # (n_elem, n_qp), m/(H T^2)
 
 
+def quadrature_rule(n_qp: int) -> tuple[FloatArray, FloatArray]:
+    """Points (n_qp, 2) and weights (n_qp,) on the triangle (0,0) (1,0) (0,1)."""
+    return _POINTS[n_qp]
+
+
 def quadrature(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> Quadrature:
     """Gradients and weights of curved triangles.
 
