@@ -38,18 +38,14 @@ def steel(request: pytest.FixtureRequest) -> SteelLaw:
     return make[request.param]()
 
 
-@pytest.mark.parametrize(
-    ("b", "h"),
-    zip(
-        (0.1, 0.5, 1.0, 1.2, 1.4, 1.5, 1.6, 1.7, 1.8, 1.9, 2.0, 2.2),
-        (32.6149, 172.924, 430.681, 609.147, 911.485, 1167.24)
-        + (1584.32, 2395.81, 4651.72, 19857.2, 84241.1, 240353.0),
-        strict=True,
-    ),
-)
-def test_s19_function_is_met(b: float, h: float) -> None:
+S19_H = {0.1: 32.6149, 0.5: 172.924, 1.0: 430.681, 1.2: 609.147, 1.4: 911.485, 1.5: 1167.24}
+S19_H |= {1.6: 1584.32, 1.7: 2395.81, 1.8: 4651.72, 1.9: 19857.2, 2.0: 84241.1, 2.2: 240353.0}
+
+
+@pytest.mark.parametrize("b", S19_H)
+def test_s19_function_is_met(b: float) -> None:
     """Values of S19 computed to 6 digits by its formula; the table adds less than 1e-6."""
-    assert s19_exact().field_strength(np.array(b)) == pytest.approx(h, rel=6e-6)
+    assert s19_exact().field_strength(np.array(b)) == pytest.approx(S19_H[b], rel=6e-6)
 
 
 @pytest.mark.parametrize(
@@ -108,7 +104,8 @@ def test_differential_reluctivity_is_positive(steel: SteelLaw) -> None:
 def test_slope_of_nu_is_its_derivative(steel: SteelLaw) -> None:
     """Central differences in |B|^2, step 1e-5 T^2: error eps^2 nu''' / 6, and kinks of order eps.
 
-    The cubics meet with equal slopes but unequal curvature, hence 1e-3 of the largest slope; 1e-7 is rounding of nu / eps.
+    The cubics meet with equal slopes but unequal curvature, hence 1e-3 of the largest slope;
+    1e-7 is rounding of nu / eps.
     """
     b2 = np.linspace(0.02, 6.0, 1500)
     eps = 1e-5
