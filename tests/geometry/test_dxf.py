@@ -186,9 +186,9 @@ def test_square_with_round_sides_is_a_circle(tmp_path):
     assert contour.path.edges[2].centre == pytest.approx(0j, abs=1e-15)
 
 
-def slotted(pole_pairs: int) -> CrossSection:
+def slotted(pole_pairs: int, side: complex | None = None) -> CrossSection:
     """A rotor with a round hole on every d axis, half of it on either side of the sector."""
-    side = cmath.exp(1j * math.pi / pole_pairs)
+    side = cmath.exp(1j * math.pi / pole_pairs) if side is None else side
     bore, hole, rim = 5.0 * MM, 2.0 * MM, 30.0 * MM
     place = 20.0 * MM
     outer = (
@@ -208,11 +208,15 @@ def slotted(pole_pairs: int) -> CrossSection:
     )
 
 
-@pytest.mark.parametrize("pole_pairs", [1, 2, 3, 6])
-def test_holes_across_the_sector_sides_become_whole(pole_pairs, tmp_path):
+# The far side of one pole pair is the negative x axis, where a phase is pi or -pi.
+@pytest.mark.parametrize(
+    ("pole_pairs", "side"),
+    [(1, None), (1, complex(-1.0, 0.0)), (1, complex(-1.0, -0.0)), (2, None), (6, None)],
+)
+def test_holes_across_the_sector_sides_become_whole(pole_pairs, side, tmp_path):
     """Half holes of neighbouring poles join: 2p whole circles of 2 mm, 2p of 1 mm; rounding."""
     path = tmp_path / "slotted.dxf"
-    write_lamination(slotted(pole_pairs), path)
+    write_lamination(slotted(pole_pairs, side), path)
     contours = read_contours(path)
     assert [c.layer for c in contours[:2]] == ["OUTER_CONTOUR", "BORE"]
     holes = sorted(-area(c.path) for c in contours if c.layer == "BARRIERS")
