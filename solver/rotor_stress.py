@@ -30,6 +30,7 @@ from .isoparametric import boundary_edges
 from .mesh import mesh_lamination
 from .mesh_plan import MeshSettings
 from .refine import circles_of, refined
+from .rib_loads import rib_loads
 from .rib_zones import zone_of_node
 from .stiffness import supported
 from .stress_estimate import PeakEstimate, estimate_peaks
@@ -80,6 +81,7 @@ class _Round:
     moved: FloatArray
     stress: FloatArray
     estimate: PeakEstimate
+    rib_loads: FloatArray
 
 
 def elastic_material(card: SteelCard) -> ElasticMaterial:
@@ -151,9 +153,9 @@ def _solved(
     stress = recovered_stress(body, moved, edges, sides, strain)
     defect = stress_defect(body, moved, stress, strain)
     zone = zone_of_node(section, mesh)
-    return _Round(
-        mesh, sides, moved, stress, estimate_peaks(held, stress, defect, zone, edges, sides)
-    )
+    estimate = estimate_peaks(held, stress, defect, zone, edges, sides)
+    loads = rib_loads(body, moved, section.ribs, speed, strain)
+    return _Round(mesh, sides, moved, stress, estimate, loads)
 
 
 def _supports(
@@ -211,7 +213,7 @@ def _worst(estimate: PeakEstimate, error: FloatArray, settings: StressSettings) 
 def _solution(step: _Round, speed: float, error: float, count: int) -> StressSolution:
     level = von_mises(step.stress)
     peak = float(level.max())
-    for array in (step.moved, step.stress, level):
+    for array in (step.moved, step.stress, step.rib_loads, level):
         array.setflags(write=False)
     return StressSolution(
         mesh=step.mesh,
@@ -221,6 +223,7 @@ def _solution(step: _Round, speed: float, error: float, count: int) -> StressSol
         speed=speed,
         peak=peak,
         peak_error=error * peak,
+        rib_loads=step.rib_loads,
         refinements=count,
     )
 

@@ -98,4 +98,5 @@ class StressSolution:
     speed: float  # mechanical rad/s
     peak: float  # Pa, largest von Mises
     peak_error: float  # Pa, estimated absolute error of `peak`
+    rib_loads: FloatArray  # (n_rib, 3), N/m N/m N, force x, y and moment on each rib's section
     refinements: int
