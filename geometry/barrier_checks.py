@@ -31,6 +31,7 @@ from .remedies import Fault, barrier_key
 from .rotor import rotor_frame
 
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
+MOST_EXCESS = 0.05  # of a radial rib's stated width, before it is called another width
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,6 +154,8 @@ def _fillet_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Faul
     least, largest = pole.least_radius, full - 0.5 * pole.least_edge
     if abs(radius - full) <= FULL_ROUND_TOL or least - SLACK <= radius <= largest + SLACK:
         return []
+    if full < least:
+        return []  # the thickness is at fault, and is found elsewhere
     accepted = f"{full / MM:.9g} (full round)"
     if largest >= least:
         accepted = f"{least / MM:.9g} to {largest / MM:.9g}, or {accepted}"
@@ -251,22 +254,48 @@ def _rib_faults(pole: Pole, number: int, barrier: BarrierDesign, mid: MidLine) -
     if barrier.radial_ribs == 0 or barrier.radial_rib_mm is None:
         return []
     offset, radius = 0.0, MM * barrier.fillet_mm
-    keys: tuple[str, ...] = ("radial_rib_mm", "fillet_mm", "thickness_mm", "depth_mm")
+    keys = ["radial_rib_mm", "fillet_mm", "thickness_mm", "depth_mm", "end_angle_deg"]
+    if barrier.shape == "straight":
+        keys += ["arm_angle_deg", "bend_radius_mm"]
     if barrier.radial_ribs == 2:
         if barrier.radial_rib_offset_mm is None:
             return []
         offset = MM * barrier.radial_rib_offset_mm
-        keys = ("radial_rib_offset_mm", *keys)
+        keys.insert(0, "radial_rib_offset_mm")
     width = MM * barrier.radial_rib_mm
     outer = offset + 0.5 * width + radius
     text = "a radial rib and its fillets reach beyond the bottom of the barrier"
     lack = pole.least_edge - _bottom_beyond(mid, outer, radius)
-    faults = _short(number, "radial_rib_reach", keys, text, lack)
+    faults = _short(number, "radial_rib_reach", tuple(keys), text, lack)
     if barrier.radial_ribs == 2:
         text = "the radial ribs leave no cavity between them"
         lack = pole.least_edge - _bottom_between(mid, offset - 0.5 * width - radius, radius)
-        faults += _short(number, "radial_ribs_close", keys, text, lack)
+        faults += _short(number, "radial_ribs_close", tuple(keys), text, lack)
+        excess = _rib_excess(mid, offset, width, radius)
+        text = f"on the slope of the arc its rounds leave it {excess / MM:.3g} mm wider than stated"
+        slope_keys = ("fillet_mm", "radial_rib_offset_mm", "radial_rib_mm")
+        faults += _short(number, "radial_rib_slope", slope_keys, text, excess - MOST_EXCESS * width)
     return faults
+
+
+def _rib_excess(mid: MidLine, offset: float, width: float, radius: float) -> float:
+    """How much wider a rib beside the q axis is at its thinnest than stated, in m.
+
+    On the slope of an arc its two straight sides are shifted along each other. Where the fillets
+    leave too little of them to face each other, it is thinnest between two fillets.
+    """
+    bottom = mid.edges[0]
+    if bottom.is_line:
+        return 0.0
+    below, above = offset - 0.5 * width - radius, offset + 0.5 * width + radius
+    near, far = bottom.radius - 0.5 * mid.thickness + radius, bottom.radius + 0.5 * mid.thickness
+    # Centres of the fillets on the circles near and far - radius, depths below the arc's centre.
+    shift = _depth(near, below) - _depth(far - radius, above)
+    return math.hypot(max(shift, 0.0), above - below) - (above - below)
+
+
+def _depth(radius: float, height: float) -> float:
+    return math.sqrt(max((radius - height) * (radius + height), 0.0))
 
 
 def _bottom_beyond(mid: MidLine, height: float, radius: float) -> float:
@@ -300,10 +329,13 @@ def _pair_faults(pole: Pole, outer: int, barriers: tuple[BarrierDesign, ...]) ->
     inner = outer + 1
     deeper = MM * (second.depth_mm - first.depth_mm)
     wider = math.radians(second.end_angle_deg - first.end_angle_deg)
-    text = f"barriers are listed from the rim inward, and barrier {outer} lies further in"
-    faults = _short(inner, "barrier_order", ("depth_mm",), text, SLACK - deeper)
-    text = f"its ends lie no further from the q axis than those of barrier {outer}"
-    faults += _short(inner, "ends_order", ("end_angle_deg",), text, SLACK - wider)
+    text = f"barriers {outer} and {inner} are not in order from the rim inward"
+    keys = [barrier_key(k, "depth_mm") for k in (inner, outer)]
+    faults = [Fault("barrier_order", tuple(keys), text, SLACK - deeper)] if deeper <= 0.0 else []
+    text = f"barrier {inner} ends no further from the q axis than barrier {outer}"
+    keys = [barrier_key(k, "end_angle_deg") for k in (inner, outer)]
+    if wider <= 0.0:
+        faults.append(Fault("ends_order", tuple(keys), text, SLACK - wider))
     first_mid, second_mid = _mid_line(pole, first), _mid_line(pole, second)
     if faults or first_mid is None or second_mid is None:
         return faults

@@ -8,7 +8,7 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 from .barrier_checks import barrier_faults, rotor_faults
 from .design import MachineDesign
 from .errors import Finding
-from .remedies import Fault, barrier_number, finding
+from .remedies import Fault, barrier_number, findings
 from .slot_checks import fill_finding, stator_faults
 from .winding import winding_findings
 
@@ -21,12 +21,12 @@ LEAST_GAP_MM = 0.02
 
 def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     """All findings on the design, stator first; empty where `cross_section` will succeed."""
-    findings = [*_scale_findings(design), *_pole_findings(design)]
-    if not any(one.code == "scale" for one in findings):
-        findings += _shape_findings(design)
+    found = [*_scale_findings(design), *_pole_findings(design)]
+    if not any(one.code == "scale" for one in found):
+        found += _shape_findings(design)
     if design.rotor.poles % 2 == 0:
-        findings += winding_findings(design)
-    return (*findings, *_duty_findings(design))
+        found += winding_findings(design)
+    return (*found, *_duty_findings(design))
 
 
 def _scale_findings(design: MachineDesign) -> list[Finding]:
@@ -56,15 +56,14 @@ def _pole_findings(design: MachineDesign) -> list[Finding]:
 
 
 def _shape_findings(design: MachineDesign) -> list[Finding]:
-    in_stator = stator_faults(design)
-    findings = [finding(design, fault, _shared_faults) for fault in in_stator]
+    in_stator, in_disc = stator_faults(design), _disc_findings(design)
+    found = findings(design, in_stator, _shared_faults)
     if not in_stator:
-        findings += fill_finding(design)
-    in_disc = _disc_findings(design)
-    findings += in_disc
+        found += fill_finding(design)
+    found += in_disc
     if in_disc or design.rotor.poles % 2:
-        return findings  # without radii or a pole pitch nothing can be said of the barriers
-    return findings + [finding(design, fault, _shared_faults) for fault in rotor_faults(design)]
+        return found  # without radii or a pole pitch nothing can be said of the barriers
+    return found + findings(design, rotor_faults(design), _shared_faults)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:

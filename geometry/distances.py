@@ -6,7 +6,8 @@ centres of two arcs (derived: stationarity of the distance along both edges). Ev
 pair of points on the edges, so the least of them is the distance.
 """
 
-from collections.abc import Iterable, Sequence
+import math
+from collections.abc import Sequence
 
 from .corners import foot, intersections, is_within
 from .curves import Edge, Point
@@ -27,13 +28,22 @@ def nearest(first: Edge, second: Edge) -> tuple[Point, Point]:
     return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
 
 
-def distance(first: Iterable[Edge], second: Sequence[Edge]) -> float:
+def distance(first: Sequence[Edge], second: Sequence[Edge]) -> float:
     """Least distance in m between two chains of edges, 0 where they cross."""
-    gap = float("inf")
-    for a in first:
-        for b in second:
-            p, q = nearest(a, b)
-            gap = min(gap, abs(p - q))
+    # No point of an edge lies further than half its length from its middle: pairs that this
+    # bound keeps apart need no closer look, 5 of 9 for two straight barriers.
+    spots_1, spots_2 = ([(e.point(0.5), 0.5 * e.length, e) for e in es] for es in (first, second))
+    bounds = [
+        (abs(middle_1 - middle_2) - half_1 - half_2, edge_1, edge_2)
+        for middle_1, half_1, edge_1 in spots_1
+        for middle_2, half_2, edge_2 in spots_2
+    ]
+    gap = math.inf
+    for bound, edge_1, edge_2 in sorted(bounds, key=lambda pair: pair[0]):
+        if bound >= gap:
+            break
+        p, q = nearest(edge_1, edge_2)
+        gap = min(gap, abs(p - q))
     return gap
 
 

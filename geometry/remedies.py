@@ -4,10 +4,10 @@ A fault says by how much something is missing and which keys may mend it, the mo
 For each key in turn its whole domain is tried at a grid of values, finer where little is missing;
 next to the value as it stands, the run of values that mend the fault without making a new one is
 closed in by bisection and rounded inward. A range is only stated after its rounded ends have been
-tried. A run of values narrower than the finest grid (1/20000 of the domain) may be missed; then
+tried. A run of values narrower than the finest grid (1/8000 of the domain) may be missed; then
 the next key is tried.
 
-Cost: some 100 to 200 checks of one barrier or of the slot per key, 20 to 80 ms.
+Cost: some 90 to 150 checks of one barrier or of the slot per key, 10 to 80 ms.
 """
 
 import math
@@ -19,10 +19,10 @@ from .barriers import MM, arm_angle, bend_radius
 from .design import BarrierDesign, MachineDesign
 from .errors import Finding
 
-GRID = 60  # values tried over a key's whole domain
+GRID = 40  # values tried over a key's whole domain
 REFINED = 20  # values tried between the neighbours of the one that lacks least
 REFINEMENTS = 2
-HALVINGS = 30  # of a grid step: to a part in 1e9 of it, beyond the digits shown
+HALVINGS = 24  # of a grid step: to a part in 1e7 of it, beyond the digits shown
 MOST_DECIMALS = 9
 ROUNDING = 1e-4  # of the last decimal: an end found by halving is let reach its round number
 
@@ -56,25 +56,22 @@ class Domain:
 Faults = Callable[[MachineDesign, str], Sequence[Fault]]  # those that a key has a share in
 
 
-def finding(design: MachineDesign, fault: Fault, faults: Faults) -> Finding:
-    """The fault with the key that mends it and the range that fits.
+def findings(design: MachineDesign, found: Sequence[Fault], faults: Faults) -> list[Finding]:
+    """The faults, each with the key that mends it and the range that fits.
 
     Args:
-        design: the design with the fault.
-        fault: one of its faults.
+        design: the design with the faults.
+        found: some of its faults.
         faults: design and key -> all faults in which the key has a share.
     """
-    key = fault.keys[0]
-    if fault.remedy is not None:
-        return Finding(fault.code, key, value_of(design, key), fault.text, fault.remedy)
-    for candidate in fault.keys:
-        accepted = _accepted(design, fault, candidate, faults)
-        if accepted is not None:
-            value = value_of(design, candidate)
-            return Finding(fault.code, candidate, value, fault.text, f"accepted {accepted}")
-    names = ", ".join(dict.fromkeys(name.rsplit(".", 1)[-1] for name in fault.keys))
-    remedy = f"no single value mends it, change several of {names}"
-    return Finding(fault.code, key, value_of(design, key), fault.text, remedy)
+    searches: dict[str, _Search] = {}  # faults that look to the same key share its trials
+    result = []
+    for fault in found:
+        key, remedy = fault.keys[0], fault.remedy
+        if remedy is None:
+            key, remedy = _mended(design, fault, faults, searches)
+        result.append(Finding(fault.code, key, value_of(design, key), fault.text, remedy))
+    return result
 
 
 def value_of(design: MachineDesign, key: str) -> float:
@@ -144,13 +141,14 @@ class _Search:
     def __init__(self, design: MachineDesign, key: str, faults: Faults) -> None:
         self.domain = _domain(design, key)
         self.value = value_of(design, key)
-        self._design, self._key, self._faults = design, key, faults
+        self.key = key
+        self._design, self._faults = design, faults
         self._left: dict[float, Sequence[Fault]] = {}
 
     def lack(self, value: float, known: frozenset[tuple[str, str]]) -> float:
         """What is missing at `value`, apart from the known faults; 0 where it fits."""
         if value not in self._left:
-            self._left[value] = self._faults(with_value(self._design, self._key, value), self._key)
+            self._left[value] = self._faults(with_value(self._design, self.key, value), self.key)
         return sum(one.lack for one in self._left[value] if one.identity not in known)
 
     def accepted(self, known: frozenset[tuple[str, str]]) -> str | None:
@@ -187,15 +185,30 @@ class _Search:
         return inside
 
 
-def _accepted(design: MachineDesign, fault: Fault, key: str, faults: Faults) -> str | None:
-    """The range of `key` that mends the fault and makes no new one, as text.
+def _mended(
+    design: MachineDesign, fault: Fault, faults: Faults, searches: dict[str, _Search]
+) -> tuple[str, str]:
+    """The first key that mends the fault without making a new one, and what it may be."""
+    for key in fault.keys:
+        if key not in searches:
+            searches[key] = _Search(design, key, faults)
+        accepted = _accepted(searches[key], fault, faults(design, key))
+        if accepted is not None:
+            return key, f"accepted {accepted}"
+    names = list(dict.fromkeys(_parts(key)[2] for key in fault.keys))
+    if len(names) == 1:
+        return fault.keys[0], f"no {names[0]} alone mends it, change other values too"
+    return fault.keys[0], f"no single value mends it, change several of {', '.join(names)}"
+
+
+def _accepted(search: _Search, fault: Fault, now: Sequence[Fault]) -> str | None:
+    """The range of the key that mends the fault and makes no new one, as text.
 
     If there is one, it also mends the other faults that look to this key first, so that all
     findings on a key state the same range.
     """
-    search = _Search(design, key, faults)
-    others = [one for one in faults(design, key) if one.identity != fault.identity]
-    elsewhere = frozenset(one.identity for one in others if one.keys[0] != key)
+    others = [one for one in now if one.identity != fault.identity]
+    elsewhere = frozenset(one.identity for one in others if one.keys[0] != search.key)
     return search.accepted(elsewhere) or search.accepted(frozenset(o.identity for o in others))
 
 
