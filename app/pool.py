@@ -20,6 +20,7 @@ import signal
 import subprocess
 import sys
 import threading
+import traceback
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future
@@ -60,6 +61,7 @@ class Worker(Generic[Desk]):
                 command, stdin=subprocess.PIPE, stdout=subprocess.PIPE, env=environment
             )
         self._open: deque[Future[object]] = deque()
+        self._lost = False
         self._lock = threading.RLock()  # a failed future's callbacks may submit again
         self._send(make_desk)
         self._reader = threading.Thread(target=self._collect, daemon=True)
@@ -72,10 +74,12 @@ class Worker(Generic[Desk]):
         future: Future[R] = Future()
         with self._lock:
             self._open.append(future)  # type: ignore[arg-type]  # Future is invariant
-            try:
-                self._send((method, args, kwargs))
-            except OSError:
+            # Of a process that ends, the pipes close one after the other.
+            if self._lost:
                 self._fail_open()
+            else:
+                with contextlib.suppress(OSError):  # the collector is about to see the end too
+                    self._send((method, args, kwargs))
         return future
 
     @property
@@ -107,8 +111,9 @@ class Worker(Generic[Desk]):
                     future.set_result(result)
                 else:
                     future.set_exception(error)
-        except (EOFError, OSError, ValueError, pickle.UnpicklingError):
+        except Exception:  # the end of the process, or bytes that are no answer: nobody may wait
             with self._lock:
+                self._lost = True
                 self._fail_open()
 
     def _fail_open(self) -> None:
@@ -135,10 +140,14 @@ def serve() -> None:
 
 
 def _read_calls(stream: IO[bytes], calls: "queue.SimpleQueue[object]") -> None:
-    with contextlib.suppress(EOFError, OSError):
+    try:
         while True:
             calls.put(pickle.load(stream))
-    os._exit(0)
+    except (EOFError, OSError):
+        os._exit(0)
+    except BaseException:  # a call that does not exist here; the sender must not wait
+        traceback.print_exc()
+        os._exit(1)
 
 
 def _answer(
@@ -159,53 +168,103 @@ def _portable(error: Exception) -> Exception:
     try:
         pickle.loads(pickle.dumps(error))
     except Exception:
+        if isinstance(error, LamwrightError):
+            return LamwrightError(str(error))
         return RuntimeError(f"{type(error).__name__}: {error}")
     return error
 
 
-def share(
-    tasks: Sequence[Callable[[Desk], R]],
-    own: Desk,
-    workers: Sequence[Worker[Desk]],
-    on_done: Callable[[int], None],
-) -> list[R]:
-    """Results of all tasks in their order, from the workers and from this process's own desk.
+class Crew(Generic[Desk]):
+    """This process and its workers, each with a desk; the workers are gone at the end."""
 
-    Each takes the next task when it is free, so the order of work depends on the machine; the
-    results do not, as long as no task depends on another. Tasks must be picklable. `on_done` gets
-    the number of finished tasks, always in the caller's thread.
-    """
-    waiting = deque(enumerate(tasks))
-    results: list[Future[R]] = [Future() for _ in tasks]
+    def __init__(self, make_desk: Callable[[], Desk], workers: int) -> None:
+        """Start the workers and make this process's own desk."""
+        self.workers: list[Worker[Desk]] = []
+        try:
+            for _ in range(workers):
+                self.workers.append(Worker(make_desk))
+            self.own = make_desk()
+        except BaseException:
+            self._stop()
+            raise
 
-    def hand_out(worker: Worker[Desk]) -> None:
+    def __enter__(self) -> "Crew[Desk]":
+        """The crew itself."""
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        """End the workers, whatever they are doing."""
+        self._stop()
+
+    def start(
+        self, method: Callable[Concatenate[Desk, P], R], *args: P.args, **kwargs: P.kwargs
+    ) -> "Future[R]":
+        """Call a method at a worker's desk, or here and now where there is no worker."""
+        if self.workers:
+            return self.workers[-1].submit(method, *args, **kwargs)
+        future: Future[R] = Future()
+        future.set_result(method(self.own, *args, **kwargs))
+        return future
+
+    def everywhere(
+        self, method: Callable[Concatenate[Desk, P], R], *args: P.args, **kwargs: P.kwargs
+    ) -> None:
+        """Call a method at every desk."""
+        for worker in self.workers:
+            worker.submit(method, *args, **kwargs)
+        method(self.own, *args, **kwargs)
+
+    def share(
+        self, tasks: Sequence[Callable[[Desk], R]], on_done: Callable[[int], None]
+    ) -> list[R]:
+        """Results of all tasks in their order, from the workers and from this process.
+
+        Each takes the next task when it is free, so the order of work depends on the machine;
+        the results do not, as long as no task depends on another. Tasks must be picklable.
+        `on_done` gets the number of finished tasks, always in the caller's thread.
+        """
+        waiting = deque(enumerate(tasks))
+        results: list[Future[R]] = [Future() for _ in tasks]
+
+        def hand_out(worker: Worker[Desk]) -> None:
+            with contextlib.suppress(IndexError):
+                k, task = waiting.popleft()
+                worker.submit(_do, task).add_done_callback(lambda done: take_in(worker, k, done))
+
+        def take_in(worker: Worker[Desk], k: int, done: "Future[R]") -> None:
+            error = done.exception()
+            if error is not None:
+                results[k].set_exception(error)
+                return
+            hand_out(worker)
+            results[k].set_result(done.result())
+
+        for worker in self.workers:
+            hand_out(worker)
         with contextlib.suppress(IndexError):
-            k, task = waiting.popleft()
-            worker.submit(_do, task).add_done_callback(lambda done: taken_in(worker, k, done))
-
-    def taken_in(worker: Worker[Desk], k: int, done: "Future[R]") -> None:
-        error = done.exception()
-        if error is not None:
-            results[k].set_exception(error)
-            return
-        hand_out(worker)
-        results[k].set_result(done.result())
-
-    for worker in workers:
-        hand_out(worker)
-    with contextlib.suppress(IndexError):
-        while True:
-            k, task = waiting.popleft()
-            results[k].set_result(task(own))
+            while True:
+                k, task = waiting.popleft()
+                results[k].set_result(task(self.own))
+                on_done(sum(result.done() for result in results))
+        for result in results:
+            result.result()
             on_done(sum(result.done() for result in results))
-    for result in results:
-        result.result()
-        on_done(sum(result.done() for result in results))
-    return [result.result() for result in results]
+        return [result.result() for result in results]
+
+    def _stop(self) -> None:
+        for worker in self.workers:
+            worker.stop()
 
 
 def _do(desk: Desk, task: Callable[[Desk], R]) -> R:
     return task(desk)
+
+
+def spare_cores() -> int:
+    """Cores that this process may use beside the one it runs on."""
+    if hasattr(os, "sched_getaffinity"):  # Linux only
+        return len(os.sched_getaffinity(0)) - 1
+    return (os.cpu_count() or 1) - 1
 
 
 def _given(stream: IO[bytes] | None) -> IO[bytes]:

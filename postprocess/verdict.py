@@ -101,24 +101,28 @@ class TerminalFigures:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class StressFigures:
-    """Stress of the rotor lamination at overspeed."""
+    """Stress of the rotor lamination at overspeed; the margin is that of the whole lamination."""
 
     peak: float = field(metadata=_as("rib_stress_peak_mpa", "greatest rib stress", "MPa", 1e-6))
     peak_error: float = field(
         metadata=_as("rib_stress_peak_error_mpa", "its estimated error", "MPa", 1e-6)
     )
-    yield_margin: float = field(metadata=_as("yield_margin", "yield margin", ""))
+    tension: float = field(
+        metadata=_as("rib_tension_mean_mpa", "greatest mean tension of a rib", "MPa", 1e-6)
+    )
+    lamination_peak: float = field(
+        metadata=_as("lamination_stress_peak_mpa", "greatest stress anywhere", "MPa", 1e-6)
+    )
+    yield_margin: float = field(metadata=_as("yield_margin", "yield margin at overspeed", ""))
     yield_strength: float = field(
         metadata=_as("yield_strength_mpa", "yield strength of the rotor's steel", "MPa", 1e-6)
     )
     speed: float = field(metadata=_as("speed_overspeed_rpm", "overspeed", "1/min", RPM))
     yield_speed: float = field(
-        metadata=_as("speed_rib_yields_rpm", "first rib yields on average at", "1/min", RPM)
+        metadata=_as("speed_yield_begins_rpm", "yielding begins at", "1/min", RPM)
     )
-    growth: float = field(
-        metadata=_as("radial_growth_um", "greatest radial growth at overspeed", "um", 1e6)
-    )
-    gap_left: float = field(metadata=_as("gap_left_mm", "air gap left", "mm", 1e3))
+    growth: float = field(metadata=_as("radial_growth_um", "radial growth at overspeed", "um", 1e6))
+    gap_left: float = field(metadata=_as("gap_left_mm", "air gap left at overspeed", "mm", 1e3))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -1,16 +1,22 @@
 """Worker processes: order, errors, death, sharing. Desks here are plain built-in objects."""
 
+import copy
 import os
 import signal
 import subprocess
 import sys
 import time
 from functools import partial
+from pathlib import Path
 
 import pytest
 
-from lamwright.app.pool import SINGLE_THREADED, Worker, WorkerLost, share
+from lamwright.app.pool import SINGLE_THREADED, Crew, Worker, WorkerLost
+from lamwright.geometry.design_file import read_design
+from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.winding import winding_table
 
+DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 TIMEOUT = 20.0  # s, far above the 0.1 s a call takes here
 
 
@@ -118,30 +124,62 @@ def test_worker_holds_blas_to_one_thread(hired):
     assert worker.submit(os.getenv).result(TIMEOUT) == "1"
 
 
-def test_shared_tasks_keep_their_order(hired):
+def test_shared_tasks_keep_their_order():
     """Results stand in the order of the tasks, whoever did them; each is counted once."""
     counts = []
-    tasks = [partial(divmod, k) for k in range(40)]
-    results = share(tasks, 7, [hired(partial(int, 7))], counts.append)
+    with Crew(partial(int, 7), workers=1) as crew:
+        results = crew.share([partial(divmod, k) for k in range(40)], counts.append)
     assert results == [divmod(k, 7) for k in range(40)]
     assert counts == sorted(counts)
     assert counts[-1] == 40
 
 
-def test_both_processes_take_tasks(hired):
+def test_both_processes_take_tasks():
     """The worker is given the first task, this process takes the second."""
-    worker = hired(os.getpid)
-    results = share([partial(max, 0)] * 2, os.getpid(), [worker], lambda done: None)
-    assert results == [worker.pid, os.getpid()]
+    with Crew(os.getpid, workers=1) as crew:
+        results = crew.share([partial(max, 0)] * 2, lambda done: None)
+        assert results == [crew.workers[0].pid, os.getpid()]
 
 
-def test_share_without_workers():
-    """One core: this process does it all."""
-    assert share([partial(pow, 2)] * 3, 5, [], lambda done: None) == [32, 32, 32]
+def test_a_crew_without_workers_does_it_all():
+    """One core: shared tasks, single calls and calls to every desk all happen here."""
+    with Crew(list, workers=0) as crew:
+        crew.everywhere(list.append, 5)
+        assert crew.start(list.copy).result(0) == [5]
+        assert crew.share([list.copy] * 2, lambda done: None) == [[5], [5]]
 
 
-def test_share_reports_a_failed_task(hired):
-    """A task that fails in the worker fails the whole, with its own error."""
-    tasks = [partial(divmod, 1)] * 4
-    with pytest.raises(ZeroDivisionError):
-        share(tasks, 1, [hired(int)], lambda done: None)
+def test_every_desk_is_reached():
+    """What is called everywhere is done at the workers' desks and at the own one."""
+    with Crew(list, workers=2) as crew:
+        crew.everywhere(list.append, 5)
+        assert crew.own == [5]
+        assert [worker.submit(list.copy).result(TIMEOUT) for worker in crew.workers] == [[5], [5]]
+
+
+def test_a_failed_task_fails_the_whole():
+    """The error of a task is the caller's, also when the worker had it; nobody waits for ever."""
+    with Crew(int, workers=1) as crew, pytest.raises(ZeroDivisionError):
+        crew.share([partial(divmod, 1)] * 4, lambda done: None)
+
+
+def test_the_crew_is_gone_after_an_interruption():
+    """Whatever ends the block ends the workers, busy or not."""
+    with pytest.raises(KeyboardInterrupt):
+        _interrupted(pids := [])
+    assert not any(_runs(pid) for pid in pids)
+
+
+def _interrupted(pids):
+    with Crew(partial(float, 60.0), workers=2) as crew:
+        pids += [worker.pid for worker in crew.workers]
+        crew.start(time.sleep)
+        raise KeyboardInterrupt
+
+
+def test_an_error_that_cannot_be_sent_keeps_its_kind(hired):
+    """`GeometryError` is made from findings, not from its text: its base class comes back."""
+    design = read_design(DEMO)
+    odd = design.model_copy(update={"stator": design.stator.model_copy(update={"slots": 25})})
+    with pytest.raises(LamwrightError, match=r"stator\.slots = 25: slots per pole and phase"):
+        hired(partial(copy.copy, odd)).submit(winding_table).result(TIMEOUT)

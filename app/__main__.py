@@ -1,0 +1,5 @@
+"""`python -m lamwright.app` is the command `lamwright`."""
+
+from .cli import main
+
+main(prog_name="lamwright")

@@ -1,0 +1,101 @@
+"""The commands: each parses, calls one function, prints its result. No physics here.
+
+Heavy libraries are imported inside the commands, so that `--help` and `outline` stay quick.
+Exit codes: 0 every limit holds, 1 a limit is missed, 2 bad input, 3 not converged, 130 interrupted.
+"""
+
+import os
+from pathlib import Path
+from typing import NoReturn
+
+import click
+
+from lamwright.geometry.errors import LamwrightError
+
+from .pool import SINGLE_THREADED
+
+INTERRUPTED = 130  # as a shell reports a process ended by the interrupt key
+
+
+class _Front(click.Group):
+    """Turns errors into one line each and the exit code that they carry."""
+
+    def invoke(self, ctx: click.Context) -> object:
+        """Run the command of the context."""
+        try:
+            return super().invoke(ctx)
+        except LamwrightError as error:
+            self._end(ctx, str(error), error.exit_code)
+        except BrokenPipeError:
+            raise  # the reader of the output has gone: click ends quietly
+        except OSError as error:
+            self._end(ctx, f"{error.filename or 'file'}: {error.strerror or error}".lower(), 2)
+        except KeyboardInterrupt:
+            self._end(ctx, "interrupted, nothing was written", INTERRUPTED)
+
+    def _end(self, ctx: click.Context, text: str, code: int) -> NoReturn:
+        click.echo(text, err=True)
+        ctx.exit(code)
+
+
+_DESIGN = click.argument("design", type=click.Path(path_type=Path))
+_OUT = click.option(
+    "--out", required=True, type=click.Path(path_type=Path), help="Folder for the results."
+)
+
+
+@click.group(cls=_Front, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(package_name="lamwright", message="%(prog)s %(version)s")
+def main() -> None:
+    """Design synchronous reluctance rotors that can be built."""
+    # Before numpy is imported: the chains run side by side, BLAS threads would fight them.
+    for name, value in SINGLE_THREADED.items():
+        os.environ.setdefault(name, value)
+
+
+@main.command()
+@_DESIGN
+@_OUT
+@click.pass_context
+def assess(ctx: click.Context, design: Path, out: Path) -> None:
+    """Field, stress, verdict, pictures and punch outline of DESIGN.
+
+    Ends with 0 when every limit of the design holds, with 1 when one is missed.
+    """
+    from .run import assess as run
+    from .screen import print_verdict, shown_progress
+
+    with shown_progress() as progress:
+        verdict = run(design, out, progress)
+    print_verdict(verdict, str(out))
+    ctx.exit(0 if verdict.passes else 1)
+
+
+@main.command()
+@_DESIGN
+@_OUT
+def outline(design: Path, out: Path) -> None:
+    """Geometry, checks and punch outline (DXF) of DESIGN alone."""
+    from .outline import outline as run
+    from .screen import print_outline
+
+    print_outline(run(design, out))
+
+
+@main.command()
+@_DESIGN
+@click.option("--i-d", required=True, type=float, help="d-axis current, A peak.")
+@click.option("--i-q", required=True, type=float, help="q-axis current, A peak.")
+@click.option(
+    "--angle",
+    required=True,
+    type=float,
+    help="Rotor's d axis ahead of phase A's axis, mechanical degrees.",
+)
+def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
+    """One field solution of DESIGN at one rotor position, as JSON."""
+    from lamwright.postprocess.tables import json_text
+
+    from .point import point as run
+
+    click.echo(json_text(run(design, i_d=i_d, i_q=i_q, angle_deg=angle)), nl=False)

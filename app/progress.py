@@ -1,0 +1,60 @@
+"""What a run tells on its way, and where its time goes."""
+
+import time
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+
+from lamwright.postprocess.verdict import PhaseTime
+
+# Name of the phase and share of the whole run that is done (0 to 1); called from the run's thread.
+Progress = Callable[[str, float], None]
+
+# Share of the wall time by phase, in order, on two cores (measured on the demonstration designs).
+SHARES = {
+    "mesh": 0.1,
+    "magnetic model": 0.05,
+    "current angle": 0.3,
+    "torque waveform": 0.35,
+    "stress": 0.05,
+    "pictures": 0.1,
+    "files": 0.05,
+}
+
+
+def silent(phase: str, share: float) -> None:
+    """Progress that tells nobody."""
+
+
+class Stopwatch:
+    """Wall time by phase; each phase of `SHARES` at most once."""
+
+    def __init__(self, progress: Progress) -> None:
+        """Tell `progress` what begins and how far it is."""
+        self._progress = progress
+        self._began = time.perf_counter()
+        self._times: list[PhaseTime] = []
+        self._phase = ""
+
+    @contextmanager
+    def phase(self, name: str) -> Iterator[None]:
+        """Time the block as one phase."""
+        began = time.perf_counter()
+        self._phase = name
+        self.within(0.0)
+        yield
+        self._times.append(PhaseTime(name, time.perf_counter() - began))
+
+    def within(self, share: float) -> None:
+        """Tell how much of the present phase is done (0 to 1)."""
+        names = list(SHARES)
+        before = sum(SHARES[name] for name in names[: names.index(self._phase)])
+        self._progress(self._phase, before + share * SHARES[self._phase])
+
+    def meanwhile(self, name: str, seconds: float) -> None:
+        """Note what another process took at the same time."""
+        self._times.append(PhaseTime(f"meanwhile {name}", seconds))
+
+    @property
+    def times(self) -> tuple[PhaseTime, ...]:
+        """All phases so far and the total."""
+        return (*self._times, PhaseTime("total", time.perf_counter() - self._began))

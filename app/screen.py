@@ -1,0 +1,144 @@
+"""What stands on the terminal: the bar of a run, the table of a verdict, the list of an outline.
+
+Progress goes to stderr, results to stdout. Without a terminal the bar becomes one line a phase.
+"""
+
+import math
+import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
+
+import click
+from rich.console import Console
+from rich.table import Table
+from rich.text import Text
+
+from lamwright.postprocess.verdict import Figure, Outcome, Verdict, all_figures, figures_of
+
+from .outline import OutlineReport
+from .progress import Progress
+
+# Figures without a limit that a designer reads at a glance, in order.
+GLANCE = (
+    "current_a",
+    "current_angle_deg",
+    "psi_d_vs",
+    "psi_q_vs",
+    "power_factor",
+    "terminal_voltage_v",
+    "copper_loss_w",
+    "air_gap_power_w",
+    "rib_stress_peak_mpa",
+    "speed_overspeed_rpm",
+    "speed_yield_begins_rpm",
+    "radial_growth_um",
+)
+DIGITS = 4  # significant, on the terminal only
+MM = 1e3  # mm per m
+
+
+@contextmanager
+def shown_progress() -> Iterator[Progress]:
+    """Progress as a bar on a terminal, as a line for each phase elsewhere."""
+    if not sys.stderr.isatty():
+        yield _PlainLines()
+        return
+    from rich.progress import BarColumn, TextColumn, TimeElapsedColumn
+    from rich.progress import Progress as Bar
+
+    columns = (TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn())
+    with Bar(*columns, console=Console(stderr=True), transient=True) as bar:
+        task = bar.add_task("start", total=1.0)
+        yield lambda phase, share: bar.update(task, description=f"{phase:<22}", completed=share)
+
+
+class _PlainLines:
+    def __init__(self) -> None:
+        self._phase = ""
+
+    def __call__(self, phase: str, share: float) -> None:
+        if phase != self._phase:
+            self._phase = phase
+            click.echo(f"{100.0 * share:3.0f} %  {phase}", err=True)
+
+
+def print_verdict(verdict: Verdict, folder: str) -> None:
+    """The verdict as a table, then cautions, times and where the files are."""
+    console = Console(highlight=False)
+    console.print(_verdict_table(verdict))
+    console.print(_verdict_line(verdict))
+    for caution in verdict.cautions:
+        console.print(Text(f"- {caution}", style="dim"))
+    console.print(Text(f"~ estimate   files in {folder}", style="dim"))
+    console.print(_times(verdict))
+
+
+def print_outline(report: OutlineReport) -> None:
+    """The outline's figures and ribs, and where the DXF is."""
+    table = _table(report.design_name, "what", "value")
+    for figure in figures_of(report.figures):
+        table.add_row(figure.label, _valued(figure))
+    widths: dict[str, list[str]] = {}
+    for rib in report.ribs:
+        label = f"{rib.kind} ribs of barrier {rib.barrier}, one pole"
+        widths.setdefault(label, []).append(f"{rib.width * MM:.3f}")
+    for label, values in widths.items():
+        table.add_row(label, f"{', '.join(values)} mm")
+    console = Console(highlight=False)
+    console.print(table)
+    console.print(f"punch outline: {report.dxf}", soft_wrap=True)
+
+
+def number(value: float) -> str:
+    """A number with four significant digits, without exponent where it can be read so."""
+    if value == 0.0 or not 1e-4 <= abs(value) < 1e7:
+        return f"{value:.{DIGITS}g}"
+    decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
+    return f"{value:.{max(0, decimals)}f}"
+
+
+def _table(title: str, *columns: str) -> Table:
+    table = Table(title=title, title_justify="left", title_style="bold")
+    for column in columns:
+        table.add_column(column, justify="right" if column in ("value", "limit") else "left")
+    return table
+
+
+def _verdict_table(verdict: Verdict) -> Table:
+    table = _table(verdict.design_name, "what", "value", "limit", "verdict")
+    for outcome in verdict.outcomes:
+        mark = Text("holds", "green") if outcome.holds else Text("missed", "bold red")
+        table.add_row(outcome.figure.label, _valued(outcome.figure), _limit(outcome), mark)
+    table.add_section()
+    figures = all_figures(verdict)
+    supply = figures["supply_voltage_v"]
+    for key in GLANCE:
+        limit, mark = "", Text("")
+        if key == "terminal_voltage_v":
+            limit = f"<= {number(supply.value)} V"
+            over = figures[key].value > supply.value
+            mark = Text("over supply", "yellow") if over else Text("")
+        table.add_row(figures[key].label, _valued(figures[key]), limit, mark)
+    return table
+
+
+def _valued(figure: Figure) -> str:
+    about = "~ " if figure.is_estimate else ""
+    return f"{about}{number(figure.value)} {figure.unit}".rstrip()
+
+
+def _limit(outcome: Outcome) -> str:
+    sign = ">=" if outcome.is_least else "<="
+    return f"{sign} {number(outcome.limit)} {outcome.figure.unit}".rstrip()
+
+
+def _verdict_line(verdict: Verdict) -> Text:
+    missed = [outcome.figure.label for outcome in verdict.outcomes if not outcome.holds]
+    if not missed:
+        return Text("passes: every limit holds", "bold green")
+    return Text(f"fails: {', '.join(missed)}", "bold red")
+
+
+def _times(verdict: Verdict) -> Text:
+    parts = [f"{time.phase} {time.seconds:.1f}" for time in verdict.times]
+    return Text(f"seconds: {', '.join(parts)}", style="dim")
