@@ -23,7 +23,7 @@ def values_at(mesh: PlanarMesh, values: FloatArray, points: FloatArray) -> Float
         ValueError: where a point lies outside the mesh.
     """
     element, place = locate(mesh, points)
-    return np.einsum("pi,piv->pv", shape(place), values[mesh.elements[element]])
+    return np.asarray(np.einsum("pi,piv->pv", shape(place), values[mesh.elements[element]]))
 
 
 def locate(mesh: PlanarMesh, points: FloatArray) -> tuple[IntArray, FloatArray]:

@@ -50,16 +50,22 @@ def rib_loads(
         (n_rib, 3): force in x and y in N/m, moment about the line's middle in N.
     """
     stress = inner_stress(body, moved, free_strain)
-    return np.array([_rib_load(body, stress, rib, speed) for rib in ribs]).reshape(-1, 3)
+    share = (np.arange(SEEDS) + 0.5) / SEEDS
+    line = np.concatenate([rib.start + share * (rib.end - rib.start) for rib in ribs])
+    seeds = locate(body.mesh, np.column_stack([line.real, line.imag]))[0].reshape(-1, SEEDS)
+    loads = [_rib_load(body, stress, r, s, speed) for r, s in zip(ribs, seeds, strict=True)]
+    return np.array(loads)
 
 
-def _rib_load(body: ElasticBody, stress: FloatArray, rib: Rib, speed: float) -> FloatArray:
+def _rib_load(
+    body: ElasticBody, stress: FloatArray, rib: Rib, seeds: IntArray, speed: float
+) -> FloatArray:
     mesh = body.mesh
     middle = 0.5 * (rib.start + rib.end)
     normal = -1j * (rib.end - rib.start) / rib.width
     place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1] - middle
     behind = (place * np.conj(normal)).real < 0.0
-    x = _crossed(mesh, rib, behind)
+    x = _crossed(mesh, seeds, behind)
     q = behind[mesh.elements[x]].astype(np.float64)  # (n_x, 6)
     arm = place[mesh.elements[x]]  # (n_x, 6), m
     weight, grad = body.quad.weight[x], body.quad.grad[x]
@@ -87,20 +93,17 @@ def _moment(arm: np.ndarray, force: np.ndarray) -> FloatArray:
     return np.asarray((np.conj(arm) * force).imag)
 
 
-def _crossed(mesh: PlanarMesh, rib: Rib, behind: BoolArray) -> IntArray:
+def _crossed(mesh: PlanarMesh, seeds: IntArray, behind: BoolArray) -> IntArray:
     """The elements that the line between a rib's ends crosses.
 
-    The straight line crosses other iron too, beyond the air: so the search starts on the rib and
-    goes on to elements that share a node.
+    The straight line crosses other iron too, beyond the air: so the search starts from elements
+    on the rib, `seeds`, and goes on to elements that share a node.
     """
-    share = (np.arange(SEEDS) + 0.5) / SEEDS
-    line = rib.start + share * (rib.end - rib.start)
-    found, _ = locate(mesh, np.column_stack([line.real, line.imag]))
     sides = behind[mesh.elements]
     mixed = np.any(sides, axis=1) & ~np.all(sides, axis=1)
     candidates = np.flatnonzero(mixed)
     reached = np.zeros(len(mesh.nodes), dtype=np.bool_)
-    reached[mesh.elements[found]] = True
+    reached[mesh.elements[seeds]] = True
     count = -1
     near = candidates
     while count != len(near := candidates[np.any(reached[mesh.elements[candidates]], axis=1)]):

@@ -13,6 +13,7 @@ hand: 1 ms for 5 000 unknowns.
 Axes: n_node, n_elem, n_zone zones.
 """
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,7 +21,7 @@ import numpy as np
 from .elastic import ElasticBody, summed, von_mises
 from .stiffness import SupportedBody
 from .stress_recovery import recovered_stress, stress_defect
-from .supports import CoupledSides
+from .supports import BoolArray, CoupledSides
 from .types import FloatArray, IntArray
 
 
@@ -30,12 +31,8 @@ class PeakEstimate:
 
     node: IntArray  # (n_zone,), where it is
     peak: FloatArray  # (n_zone,), Pa
-    share: FloatArray  # (n_zone, n_elem), share of each element in the error, of the peak
-
-    @property
-    def error(self) -> FloatArray:
-        """Estimated relative errors (n_zone,)."""
-        return np.asarray(self.share.sum(axis=1))
+    error: FloatArray  # (n_zone,), of the peak
+    share: FloatArray  # (n_elem, n_zone), what each element adds to the error; 0 if carried over
 
 
 def estimate_peaks(
@@ -45,6 +42,7 @@ def estimate_peaks(
     zone: IntArray,
     free_edges: IntArray,
     sides: CoupledSides | None = None,
+    carried: Mapping[int, float] | None = None,
 ) -> PeakEstimate:
     """Peaks of all zones and what each element adds to their errors.
 
@@ -55,18 +53,28 @@ def estimate_peaks(
         zone: (n_node,), zone of each node, 0 to n_zone - 1, none of them empty.
         free_edges: as for `recovered_stress`.
         sides: coupled sides.
+        carried: zones whose errors are taken over from a coarser mesh.
     """
     level = von_mises(stress)
-    nodes, shares = [], []
-    for k in range(int(zone.max()) + 1):
-        members = np.flatnonzero(zone == k)
-        node = int(members[np.argmax(level[members])])
-        dual = held.displacement(_peak_load(held.body, node, stress[node]), held=False)
+    known = carried or {}
+    n_zone = int(zone.max()) + 1
+    node = np.array([_top(level, zone == k) for k in range(n_zone)])
+    share = np.zeros((len(defect), n_zone))
+    for k in range(n_zone):
+        if k in known:
+            continue
+        load = _peak_load(held.body, int(node[k]), stress[node[k]])
+        dual = held.displacement(load, held=False)
         recovered = recovered_stress(held.body, dual, free_edges, sides)
-        nodes.append(node)
-        shares.append(defect * stress_defect(held.body, dual, recovered) / level[node])
-    peak = np.array(nodes)
-    return PeakEstimate(node=peak, peak=level[peak], share=np.array(shares))
+        share[:, k] = defect * stress_defect(held.body, dual, recovered) / level[node[k]]
+    error = share.sum(axis=0)
+    error[list(known)] = list(known.values())
+    return PeakEstimate(node, level[node], error, share)
+
+
+def _top(level: FloatArray, members: BoolArray) -> int:
+    """The node with the largest level among the members."""
+    return int(np.argmax(np.where(members, level, -1.0)))
 
 
 def _peak_load(body: ElasticBody, node: int, stress: FloatArray) -> FloatArray:
