@@ -238,7 +238,9 @@ def _fill(
     """Corner nodes (given nodes first), triangles (n_elem, 3), number of triangles per region."""
     import gmsh
 
-    if not gmsh.isInitialized():
+    # Begun anew each time (1 ms): a second mesh of the same regions in one process was another.
+    is_ours = not gmsh.isInitialized()
+    if is_ours:
         # interruptible=False: no signal handler, so that it works in any thread.
         gmsh.initialize(readConfigFiles=False, interruptible=False)
     for option, value in {
@@ -271,6 +273,8 @@ def _fill(
         found = [gmsh.model.mesh.getElementsByType(2, k + 1)[1] for k in range(len(loops))]
     finally:
         gmsh.model.remove()
+        if is_ours:
+            gmsh.finalize()
     xyz = coords.reshape(-1, 3)[np.argsort(tags)]
     nodes = (xyz[:, 0] + 1j * xyz[:, 1]) / MM
     given = slice(steps.nodes.size)
