@@ -22,18 +22,21 @@ import numpy as np
 from lamwright.geometry.section import CrossSection, Region
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.gap import rotor_place, sheared
+from lamwright.solver.integrals import phase_currents
 from lamwright.solver.isoparametric import NODE_PLACES, gradients_at
 from lamwright.solver.types import FieldSolution, FloatArray, IntArray, SectorMesh
 
-from .figures_labels import RULER_FOOT, draw_ruler, place_callouts
-from .figures_section import bare, pole_silhouette
+from .figures_labels import RULER_FOOT, draw_note, draw_ruler, place_callouts
+from .figures_section import bare, draw_cut, pole_silhouette
 from .figures_style import (
     MM,
+    QUARTERS,
     ComplexArray,
     Style,
     draw_scale,
     flux_colours,
     inked,
+    mm_per_point,
     sampled,
     upright,
     visible_edges,
@@ -41,12 +44,11 @@ from .figures_style import (
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
+    from matplotlib.patches import PathPatch
 
 FEWEST_LINES = 22  # flux lines over the sector; the step is a round flux that gives at least these
 PHASES = "ABC"
 NO_CURRENT = 0.02  # of the largest ampere-conductors: a side with less is marked as idle
-# A second-order triangle as four: corners and middles in the order of `solver.types`.
-QUARTERS: IntArray = np.array([[0, 3, 5], [3, 1, 4], [5, 4, 2], [3, 4, 5]])
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -91,7 +93,7 @@ def draw_flux(
     _draw_currents(ax, section, solution, winding, turn, style)
     _draw_rotor_axes(ax, section, turn, angle, style)
     draw_ruler(ax, style)
-    _draw_note(ax, _notes(solution, line_step(parts, section.stack_length)), style)
+    draw_note(ax, _notes(solution, line_step(parts, section.stack_length)), style)
     bare(ax)
     draw_scale(scale_ax, flux_colours(), (0.0, top), "flux density |B| in T", style)
 
@@ -140,7 +142,7 @@ def _round_up(value: float) -> float:
     return max(0.1, math.ceil(10.0 * value - 1e-9) / 10.0)
 
 
-def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> object:
+def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> PathPatch:
     from matplotlib.patches import PathPatch
     from matplotlib.path import Path as InkPath
 
@@ -153,7 +155,7 @@ def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> object:
     return patch
 
 
-def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: object) -> None:
+def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: PathPatch) -> None:
     for part in parts:
         corners = part.nodes[part.elements[:, :3]].reshape(-1, 2)
         mesh = ax.tripcolor(
@@ -172,7 +174,7 @@ def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: object) ->
 
 
 def _draw_lines(
-    ax: Axes, parts: Sequence[_Part], section: CrossSection, clip: object, style: Style
+    ax: Axes, parts: Sequence[_Part], section: CrossSection, clip: PathPatch, style: Style
 ) -> None:
     from matplotlib.tri import Triangulation
 
@@ -203,7 +205,7 @@ def line_step(parts: Sequence[_Part], stack_length: float) -> float:
 
 
 def _draw_outlines(
-    ax: Axes, section: CrossSection, turn: complex, angle: float, clip: object, style: Style
+    ax: Axes, section: CrossSection, turn: complex, angle: float, clip: PathPatch, style: Style
 ) -> None:
     from matplotlib.patches import PathPatch
 
@@ -213,8 +215,9 @@ def _draw_outlines(
     for regions, at in ((section.stator, [turn]), (section.rotor, turns)):
         lines = PathPatch(inked(visible_edges(regions, section), at, closed=False), fill=False)
         lines.set(edgecolor=style.ink, linewidth=style.outline, zorder=3)
-        ax.add_patch(lines)
+        ax.add_artist(lines)
         lines.set_clip_path(clip)
+    draw_cut(ax, section, turn, (0.0, section.stator_outer_radius), style)
 
 
 def _draw_currents(
@@ -229,13 +232,11 @@ def _draw_currents(
     from matplotlib.patheffects import Normal, Stroke
 
     theta_e = section.pole_pairs * solution.position
-    lag = 2.0 * math.pi / 3.0 * np.arange(3)
-    i_abc = solution.i_d * np.cos(theta_e - lag) - solution.i_q * np.sin(theta_e - lag)
+    i_abc = phase_currents(solution.i_d, solution.i_q, theta_e)
     amperes = winding.conductors @ i_abc  # (slots, layers)
     most = float(np.abs(amperes).max())
     copper = [region for region in section.stator if region.material == "copper"]
-    per_point = float(np.ptp(ax.get_xlim())) / ax.get_window_extent().width
-    per_point *= ax.get_figure(root=True).dpi / 72.0
+    per_point = mm_per_point(ax)
     pitch = 2.0 * math.pi / section.slots
     for region in copper:
         _, slot, _, layer = region.name.split("_")
@@ -270,14 +271,16 @@ def _slot_room(region: Region, angle: float) -> tuple[complex, float]:
 
 
 def _mark(ax: Axes, at: complex, value: float, size: float, style: Style) -> None:
-    ring = {
-        "markersize": size,
-        "markerfacecolor": style.paper,
-        "markeredgecolor": style.ink,
-        "markeredgewidth": 0.6,
-        "zorder": 5,
-    }
-    ax.plot([at.real], [at.imag], "o", **ring)
+    ax.plot(
+        [at.real],
+        [at.imag],
+        "o",
+        markersize=size,
+        markerfacecolor=style.paper,
+        markeredgecolor=style.ink,
+        markeredgewidth=0.6,
+        zorder=5,
+    )
     if value > 0.0:
         ax.plot([at.real], [at.imag], "o", color=style.ink, markersize=0.32 * size, zorder=6)
     elif value < 0.0:
@@ -333,18 +336,3 @@ def _notes(solution: FieldSolution, step: float) -> list[str]:
         " (mechanical) ahead of phase A's axis",
         f"{1e3 * step:g} mWb between flux lines; current towards the reader: dot, away: cross",
     ]
-
-
-def _draw_note(ax: Axes, lines: Sequence[str], style: Style) -> None:
-    """Remarks at the foot of the drawing, on the right."""
-    ax.text(
-        0.995,
-        0.005,
-        "\n".join(lines),
-        transform=ax.transAxes,
-        fontsize=style.small,
-        color=style.quiet,
-        ha="right",
-        va="bottom",
-        linespacing=1.35,
-    )

@@ -18,7 +18,7 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 import numpy.typing as npt
 
-from .figures_style import ComplexArray, Style
+from .figures_style import ComplexArray, Style, mm_per_point, pixels_per_point
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -30,6 +30,7 @@ SIDES: tuple[Side, Side] = ("left", "right")
 LINE_PITCH = 1.5  # distance of label lines over the size of letters
 STUB = 9.0  # points, the level part of a leader beside its label
 CLEARANCE = 7.0  # points between the drawing and a column's leaders
+LEADER_CLEARANCE = 4.0  # points between a leader and where another one begins
 RULER_FOOT = 24.0  # points that a ruler takes along the lower edge
 HALO = 1.3  # points of paper left and right of a leader, so that it reads on dark fills
 
@@ -72,6 +73,13 @@ def _cross(a: complex, b: complex, c: complex, d: complex) -> bool:
         return ((q - p).conjugate() * (r - p)).imag
 
     return side(a, b, c) * side(a, b, d) < 0 and side(c, d, a) * side(c, d, b) < 0
+
+
+def _distance(points: ComplexArray, start: complex, end: complex) -> FloatArray:
+    """Distance (n,) of points (n,) from the line between two points."""
+    chord = end - start
+    share = np.clip(((points - start) * np.conj(chord)).real / abs(chord) ** 2, 0.0, 1.0)
+    return np.asarray(np.abs(points - start - share * chord))
 
 
 def uncrossed(anchors: Sequence[complex], heights: FloatArray, x: float) -> FloatArray:
@@ -118,13 +126,13 @@ def place_callouts(
     """
     texts = _text_widths(ax, callouts, style)
     frame = ax.get_window_extent()
-    per_inch = ax.get_figure(root=True).dpi
-    size = complex(frame.width, frame.height) * 72.0 / per_inch  # points
+    size = complex(frame.width, frame.height) / pixels_per_point(ax)  # points
     wide = np.ptp(silhouette.real) / size.real, np.ptp(silhouette.imag) / (size.imag - foot)
     per_point = float(max(wide))
     for _ in range(60):
         view = _view(size, per_point, silhouette, texts, foot)
-        if all(_fits(view, [c for c in callouts if c.side == s], s, style) for s in SIDES):
+        columns = [_placed(view, [c for c in callouts if c.side == s], s, style) for s in SIDES]
+        if None not in columns:
             break
         per_point *= 1.03
     else:
@@ -132,16 +140,16 @@ def place_callouts(
     ax.set_aspect("equal", adjustable="box")
     ax.set_xlim(view.centre.real - view.half_width, view.centre.real + view.half_width)
     ax.set_ylim(view.centre.imag - view.half_height, view.centre.imag + view.half_height)
-    for side in SIDES:
-        _place_column(ax, view, [c for c in callouts if c.side == side], side, style)
+    for column in columns:
+        for callout, knee in column or ():
+            _draw(ax, callout, knee, STUB * view.per_point, style)
 
 
 def draw_ruler(ax: Axes, style: Style) -> None:
     """Draw a scale in mm into the lower left corner of equal axes, `RULER_FOOT` points high."""
     left, right = ax.get_xlim()
     low = ax.get_ylim()[0]
-    per_point = (right - left) / ax.get_window_extent().width
-    per_point *= ax.get_figure(root=True).dpi / 72.0
+    per_point = mm_per_point(ax)
     decade = 10.0 ** math.floor(math.log10(0.2 * (right - left)))
     length = max(step * decade for step in (1, 2, 5) if step * decade <= 0.2 * (right - left))
     start, base, tick = left + 4.0 * per_point, low + 5.0 * per_point, 4.0 * per_point
@@ -149,9 +157,31 @@ def draw_ruler(ax: Axes, style: Style) -> None:
         x = start + length * k / 5
         ax.plot([x, x], [base, base + tick], color=style.quiet, linewidth=style.outline)
     ax.plot([start, start + length], [base, base], color=style.quiet, linewidth=style.outline)
-    ends = {"fontsize": style.small, "color": style.quiet, "va": "bottom", "ha": "center"}
-    ax.text(start, base + 1.4 * tick, "0", **ends)
-    ax.text(start + length, base + 1.4 * tick, f"{length:g} mm", **ends)
+    for x, text in ((start, "0"), (start + length, f"{length:g} mm")):
+        ax.text(
+            x,
+            base + 1.4 * tick,
+            text,
+            fontsize=style.small,
+            color=style.quiet,
+            va="bottom",
+            ha="center",
+        )
+
+
+def draw_note(ax: Axes, lines: Sequence[str], style: Style) -> None:
+    """Write remarks at the foot of the drawing, on the right; two lines fit beside a ruler."""
+    ax.text(
+        0.995,
+        0.005,
+        "\n".join(lines),
+        transform=ax.transAxes,
+        fontsize=style.small,
+        color=style.quiet,
+        ha="right",
+        va="bottom",
+        linespacing=1.35,
+    )
 
 
 def _text_widths(ax: Axes, callouts: Sequence[Callout], style: Style) -> dict[Side, float]:
@@ -159,7 +189,7 @@ def _text_widths(ax: Axes, callouts: Sequence[Callout], style: Style) -> dict[Si
     widest: dict[Side, float] = dict.fromkeys(SIDES, 0.0)
     for callout in callouts:
         ink = ax.text(0, 0, callout.text, fontsize=style.text)
-        width = ink.get_window_extent().width * 72.0 / ax.get_figure(root=True).dpi
+        width = ink.get_window_extent().width / pixels_per_point(ax)
         widest[callout.side] = max(widest[callout.side], width)
         ink.remove()
     return widest
@@ -184,7 +214,8 @@ def _view(
     )
     knees: dict[Side, float] = {}
     runs: dict[Side, list[tuple[float, float]]] = {}
-    for side, sign in (("left", -1.0), ("right", 1.0)):
+    for side in SIDES:
+        sign = -1.0 if side == "left" else 1.0
         room = half_width - per_point * (texts[side] + 1.4 * STUB)
         knees[side] = centre.real + sign * room
         inside = sign * (knees[side] - silhouette.real) > CLEARANCE * per_point
@@ -197,31 +228,42 @@ def _view(
     return _View(centre, per_point, half_width, half_height, knees, runs)
 
 
-def _fits(view: _View, column: Sequence[Callout], side: Side, style: Style) -> bool:
-    """Whether the free runs hold the labels and each anchor lies on the drawing's side of them."""
-    if not column:
-        return True
+def _placed(
+    view: _View, column: Sequence[Callout], side: Side, style: Style
+) -> list[tuple[Callout, complex]] | None:
+    """Labels of a column and where their leaders begin; None if they find no place.
+
+    An anchor may lie beyond the beginnings of the leaders, as long as no leader meets letters.
+    """
+    column = sorted(column, key=lambda c: c.anchor.imag)
     pitch = LINE_PITCH * style.text * view.per_point
+    runs, knee = view.runs[side], view.knees[side]
+    if sum(_places(run, pitch) for run in runs) < len(column):
+        return None
+    anchors = [callout.anchor for callout in column]
+    heights = _heights(np.array([a.imag for a in anchors]), runs, pitch)
+    heights = uncrossed(anchors, heights, knee)
     sign = -1.0 if side == "left" else 1.0
-    is_reached = all(sign * (view.knees[side] - c.anchor.real) > 0.0 for c in column)
-    return is_reached and sum(_places(run, pitch) for run in view.runs[side]) >= len(column)
+    start = sign * (knee + 0.8 * sign * STUB * view.per_point)
+    half = 0.6 * style.text * view.per_point
+    knees = knee + 1j * heights
+    for k, (anchor, height) in enumerate(zip(anchors, heights, strict=True)):
+        others = np.delete(knees, k)
+        if np.any(_distance(others, knees[k], anchor) < LEADER_CLEARANCE * view.per_point):
+            return None
+        beyond = sign * anchor.real - start
+        if beyond <= 0.0:
+            continue
+        # Where the leader passes the inner end of the letters; from there on it is among them.
+        entry = anchor.imag + (height - anchor.imag) * beyond / (sign * (anchor.real - knee))
+        low, high = min(entry, anchor.imag) - half, max(entry, anchor.imag) + half
+        if np.any((heights > low) & (heights < high)):
+            return None
+    return [(c, complex(knee, h)) for c, h in zip(column, heights, strict=True)]
 
 
 def _places(run: tuple[float, float], pitch: float) -> int:
     return max(0, math.floor((run[1] - run[0]) / pitch))
-
-
-def _place_column(
-    ax: Axes, view: _View, column: Sequence[Callout], side: Side, style: Style
-) -> None:
-    column = sorted(column, key=lambda c: c.anchor.imag)
-    anchors = [callout.anchor for callout in column]
-    pitch = LINE_PITCH * style.text * view.per_point
-    heights = _heights(np.array([a.imag for a in anchors]), view.runs[side], pitch)
-    heights = uncrossed(anchors, heights, view.knees[side])
-    out = STUB * view.per_point * (-1.0 if side == "left" else 1.0)
-    for callout, height in zip(column, heights, strict=True):
-        _draw(ax, callout, complex(view.knees[side], height), out, style)
 
 
 def _heights(wanted: FloatArray, runs: Sequence[tuple[float, float]], pitch: float) -> FloatArray:
@@ -240,9 +282,10 @@ def _heights(wanted: FloatArray, runs: Sequence[tuple[float, float]], pitch: flo
     return best
 
 
-def _draw(ax: Axes, callout: Callout, knee: complex, out: float, style: Style) -> None:
+def _draw(ax: Axes, callout: Callout, knee: complex, stub: float, style: Style) -> None:
     from matplotlib.patheffects import Normal, Stroke
 
+    out = -stub if callout.side == "left" else stub
     colour = style.accent if callout.is_accent else style.ink
     line = [knee + out, knee, callout.anchor]
     halo = [Stroke(linewidth=style.hair + 2.0 * HALO, foreground=style.paper, alpha=0.75), Normal()]

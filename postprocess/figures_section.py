@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, Material, Region, Rib
+from lamwright.geometry.section import CrossSection, Region, Rib
 
 from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
 from .figures_style import (
@@ -79,9 +79,9 @@ def draw_key(ax: Axes, section: CrossSection, style: Style) -> None:
         ax.text(1.0, y, value, fontsize=style.text, color=style.ink, va="center", ha="right")
     for k, (material, name) in enumerate(MATERIAL_NAMES.items()):
         y = 1.0 - (len(rows) + 1.5 + k) * step
-        patch = Rectangle((0.0, y - 0.36 * step), 0.16, 0.72 * step, **_fill(material, style))
-        patch.set(edgecolor=style.ink, linewidth=style.hair)
-        ax.add_patch(patch)
+        patch = Rectangle((0.0, y - 0.36 * step), 0.16, 0.72 * step)
+        patch.set(facecolor=FILLS[material], edgecolor=style.ink, linewidth=style.hair)
+        ax.add_artist(patch)
         ax.text(0.22, y, name, fontsize=style.text, color=style.ink, va="center")
 
 
@@ -100,12 +100,14 @@ def draw_materials(
         own = [region for region in regions if region.material == material]
         if material == "air" or not own:
             continue
-        patch = PathPatch(region_ink(own, turns), **_fill(material, style), zorder=1)
-        ax.add_patch(patch)
+        patch = PathPatch(region_ink(own, turns), zorder=1)
+        # An edge in the fill's own colour closes the seams between poles.
+        patch.set(facecolor=FILLS[material], edgecolor=FILLS[material], linewidth=0.3)
+        ax.add_artist(patch)
     lines = PathPatch(inked(visible_edges(regions, section), turns, closed=False), fill=False)
     lines.set(edgecolor=style.ink, linewidth=line_share * style.outline, zorder=3)
     lines.set(joinstyle="round", capstyle="round")
-    ax.add_patch(lines)
+    ax.add_artist(lines)
 
 
 def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
@@ -133,6 +135,15 @@ def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style
             ha="center",
             va="bottom",
         )
+
+
+def draw_cut(
+    ax: Axes, section: CrossSection, turn: complex, span: tuple[float, float], style: Style
+) -> None:
+    """Draw both sides of a pole from one radius to another (m), where the picture is cut."""
+    for angle in (0.0, math.pi / section.pole_pairs):
+        ends = MM * np.array(span) * turn * cmath.exp(1j * angle)
+        ax.plot(ends.real, ends.imag, color=style.quiet, linewidth=style.hair, zorder=3)
 
 
 def pole_silhouette(section: CrossSection) -> ComplexArray:
@@ -277,11 +288,6 @@ def _dimensions(section: CrossSection) -> list[tuple[str, str]]:
         ("stack length", f"{MM * section.stack_length:.1f} mm"),
     ]
     return rows + [(name, _diameter(radius)) for name, radius in diameters]
-
-
-def _fill(material: Material, style: Style) -> dict[str, object]:
-    """Fill of a material; the edge in its own colour closes the seams between poles."""
-    return {"facecolor": FILLS[material], "edgecolor": FILLS[material], "linewidth": 0.3}
 
 
 def bare(ax: Axes) -> None:

@@ -25,9 +25,12 @@ if TYPE_CHECKING:
     from matplotlib.path import Path as InkPath
 
 ComplexArray = npt.NDArray[np.complex128]
+IntArray = npt.NDArray[np.int64]
 
 MM = 1e3  # mm per m
 SIDE_TOL = 1e-9  # m, far below a punch's 1e-5: a point this near a line or circle is on it
+# A second-order triangle as four: corners and middles in the order of `solver.types`.
+QUARTERS: IntArray = np.array([[0, 3, 5], [3, 1, 4], [5, 4, 2], [3, 4, 5]])
 WIDEST_BEZIER = math.pi / 6  # rad, one cubic per 30 degrees: 4e-7 of the radius off a true arc
 
 
@@ -77,8 +80,11 @@ def stress_colours() -> LinearSegmentedColormap:
     """The scale of stress: paper through sage to deep blue, lightness falling all the way."""
     from matplotlib.colors import LinearSegmentedColormap
 
+    # Quick at its low end: a rib's peak sets the scale, carriers see a tenth of it.
     stops = ["#fbfcf8", "#d5e8cf", "#98cdb9", "#58a9b0", "#3a7ea6", "#3a5291", "#352a68"]
-    return LinearSegmentedColormap.from_list("lamwright_stress", stops, N=512)
+    at = [0.0, 0.06, 0.18, 0.36, 0.58, 0.8, 1.0]
+    paired = list(zip(at, stops, strict=True))
+    return LinearSegmentedColormap.from_list("lamwright_stress", paired, N=512)
 
 
 def upright(section: CrossSection) -> complex:
@@ -120,14 +126,14 @@ def inked(chains: Iterable[Sequence[Edge]], turns: Sequence[complex], closed: bo
     codes: list[int] = []
     for chain in chains:
         points.append(chain[0].start)
-        codes.append(InkPath.MOVETO)
+        codes.append(int(InkPath.MOVETO))
         for edge in chain:
             added, kind = _bezier(edge)
             points += added
-            codes += [InkPath.LINETO if kind == 1 else InkPath.CURVE4] * len(added)
+            codes += [int(InkPath.LINETO if kind == 1 else InkPath.CURVE4)] * len(added)
         if closed:
             points.append(chain[0].start)
-            codes.append(InkPath.CLOSEPOLY)
+            codes.append(int(InkPath.CLOSEPOLY))
     at = np.concatenate([MM * np.array(points) * turn for turn in turns])
     return InkPath(np.column_stack([at.real, at.imag]), np.tile(codes, len(turns)))
 
@@ -186,6 +192,19 @@ def _chained(edges: Sequence[Edge]) -> list[list[Edge]]:
         else:
             chains.append([edge])
     return chains
+
+
+def pixels_per_point(ax: Axes) -> float:
+    """Pixels of the figure that `ax` is part of, for 1/72 inch."""
+    figure = ax.get_figure(root=True)
+    assert figure is not None
+    return figure.dpi / 72.0
+
+
+def mm_per_point(ax: Axes) -> float:
+    """Data units of equal axes on 1/72 inch of paper."""
+    low, high = ax.get_xlim()
+    return (high - low) / ax.get_window_extent().width * pixels_per_point(ax)
 
 
 def draw_scale(

@@ -6,9 +6,10 @@ import math
 from typing import TYPE_CHECKING
 
 import numpy as np
+import numpy.typing as npt
 
 from .figures_labels import spread
-from .figures_style import Style
+from .figures_style import Style, pixels_per_point
 from .torque import (
     PERIOD_EL,
     TorqueWaveform,
@@ -44,7 +45,7 @@ def draw_torque(ax: Axes, waveform: TorqueWaveform, style: Style) -> None:
         label="Maxwell stress",
         zorder=3,
     )
-    ax.plot(angle, waveform.torque, "o", color=style.ink, markersize=2.6, zorder=4)
+    ax.plot(angle, waveform.torque, "o", color=style.ink, markersize=2.6, zorder=4, clip_on=False)
     ax.plot(
         angle,
         coenergy_torque(waveform),
@@ -56,6 +57,7 @@ def draw_torque(ax: Axes, waveform: TorqueWaveform, style: Style) -> None:
         markeredgewidth=0.8,
         label="linkages and coenergy",
         zorder=5,
+        clip_on=False,
     )
     ax.axhline(waveform.mean, color=style.second, linewidth=1.0, dashes=(6, 2), zorder=2)
     margin = HEADROOM * (max(high, waveform.mean) - min(low, waveform.mean) or abs(high) or 1.0)
@@ -65,31 +67,36 @@ def draw_torque(ax: Axes, waveform: TorqueWaveform, style: Style) -> None:
     ax.set_xlabel("rotor position in electrical degrees", fontsize=style.text)
     ax.set_ylabel("torque in N m", fontsize=style.text)
     _numbers(ax, waveform, (low, high), style)
-    legend = ax.legend(
+    _legend(ax, style)
+    _plain(ax, style)
+
+
+def _legend(ax: Axes, style: Style) -> None:
+    """Names of curves or bars in one line above the axes, where nothing can be under them."""
+    ax.legend(
         loc="lower left",
-        bbox_to_anchor=(0.0, 1.005),
+        bbox_to_anchor=(-0.01, 1.0),
         ncols=2,
         frameon=False,
         fontsize=style.text,
+        labelcolor=style.ink,
         borderaxespad=0.2,
         handletextpad=0.6,
     )
-    for text in legend.get_texts():
-        text.set_color(style.ink)
-    _plain(ax, style)
 
 
 def _numbers(ax: Axes, waveform: TorqueWaveform, crests: tuple[float, float], style: Style) -> None:
     """Max, mean, min beside the axes, pushed apart where they are near, and the ripple above."""
     low, high = crests
+    top = max(abs(low), abs(high))
     rows = [
-        (low, f"min {_newton_metres(low)}", style.ink),
-        (waveform.mean, f"mean {_newton_metres(waveform.mean)}", style.second),
-        (high, f"max {_newton_metres(high)}", style.ink),
+        (low, f"min {torque_text(low, top)}", style.ink),
+        (waveform.mean, f"mean {torque_text(waveform.mean, top)}", style.second),
+        (high, f"max {torque_text(high, top)}", style.ink),
     ]
     bottom, top = ax.get_ylim()
     per_point = (top - bottom) / ax.get_window_extent().height
-    per_point *= ax.get_figure(root=True).dpi / 72.0
+    per_point *= pixels_per_point(ax)
     wanted = np.array([value for value, _, _ in rows])
     heights = spread(wanted, NUMBER_PITCH * style.text * per_point, bottom, top)
     across = ax.get_yaxis_transform()
@@ -107,9 +114,9 @@ def _numbers(ax: Axes, waveform: TorqueWaveform, crests: tuple[float, float], st
         )
     ax.text(
         1.0,
-        1.02,
+        1.03,
         f"ripple {100.0 * ripple(waveform):.1f} % of mean, peak to peak;"
-        f" mean by linkages {_newton_metres(waveform.mean_linkage)}",
+        f" mean by linkages {torque_text(waveform.mean_linkage, top)}",
         transform=ax.transAxes,
         fontsize=style.text,
         color=style.ink,
@@ -160,7 +167,7 @@ def draw_spectrum(ax: Axes, waveform: TorqueWaveform, slots: int, style: Style) 
     ax.set_xticks(found.order)
     ax.set_xlabel("electrical order", fontsize=style.text)
     ax.set_ylabel("amplitude in N m", fontsize=style.text)
-    ax.legend(loc="upper right", frameon=False, fontsize=style.text, labelcolor=style.ink)
+    _legend(ax, style)
     _share_axis(ax, waveform, style)
     _plain(ax, style)
 
@@ -170,22 +177,31 @@ def _share_axis(ax: Axes, waveform: TorqueWaveform, style: Style) -> None:
     per_cent = 100.0 / abs(waveform.mean) if waveform.mean else math.nan
     if not math.isfinite(per_cent):
         return
-    twin = ax.secondary_yaxis(
-        "right", functions=(lambda a: a * per_cent, lambda share: share / per_cent)
-    )
+
+    def share(amplitude: npt.ArrayLike) -> npt.ArrayLike:
+        return np.multiply(amplitude, per_cent)
+
+    def amplitude(share: npt.ArrayLike) -> npt.ArrayLike:
+        return np.divide(share, per_cent)
+
+    twin = ax.secondary_yaxis("right", functions=(share, amplitude))
     twin.set_ylabel("amplitude in % of mean", fontsize=style.text, color=style.ink)
     twin.tick_params(labelsize=style.text, colors=style.ink, width=style.hair)
     twin.spines["right"].set(color=style.quiet, linewidth=style.hair)
 
 
-def _newton_metres(value: float) -> str:
-    return f"{value:#.4g} N m"
+def torque_text(value: float, top: float) -> str:
+    """A torque with its unit and as many places as give `top` four figures."""
+    return f"{value:.{_places(top, 4)}f} N m"
 
 
 def _number(value: float, top: float) -> str:
-    """Three figures of the largest bar, and no more places for the others."""
-    places = max(0, 2 - math.floor(math.log10(top)))
-    return f"{value:.{places}f}"
+    """As many places as give the largest bar three figures."""
+    return f"{value:.{_places(top, 3)}f}"
+
+
+def _places(top: float, figures: int) -> int:
+    return max(0, figures - 1 - math.floor(math.log10(top))) if top > 0.0 else 0
 
 
 def _plain(ax: Axes, style: Style) -> None:

@@ -1,0 +1,314 @@
+"""Von Mises stress of one rotor pole, each rib's peak with its value, and ribs close up.
+
+A rib half a millimetre wide is a few pixels of the whole pole, so the most stressed rib, and the
+most stressed one of the other kind where there is one, are drawn again at a scale that shows what
+happens in them. Stress is that recovered at the nodes; curved elements are drawn as four.
+"""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from lamwright.geometry.section import CrossSection, Rib
+from lamwright.solver.isoparametric import boundary_edges
+from lamwright.solver.types import IntArray, StressSolution
+
+from .figures_labels import RULER_FOOT, Callout, Side, draw_note, draw_ruler, place_callouts
+from .figures_section import bare, draw_cut
+from .figures_style import (
+    MM,
+    QUARTERS,
+    ComplexArray,
+    Style,
+    draw_scale,
+    inked,
+    stress_colours,
+    upright,
+    visible_edges,
+)
+from .ribs import RibReport, RibStress
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+MPA = 1e-6  # MPa per Pa
+RPM = 30.0 / math.pi  # 1/min per rad/s
+EXAGGERATION = 0.025  # largest drawn displacement over the rotor's radius
+CLOSE_UP = 2.6  # half the side of a close-up over the rib's width
+LEAST_CLOSE_UP = 1.0  # mm, half the side of a close-up at least
+LETTERS = "ab"
+
+
+def close_ups(report: RibReport) -> tuple[RibStress, ...]:
+    """The most stressed rib, and that of the other kind, else of another barrier, if any."""
+    ranked = sorted(report.ribs, key=lambda row: row.peak, reverse=True)
+    first = ranked[0].rib
+    kind = [row for row in ranked if row.rib.kind != first.kind]
+    barrier = [row for row in ranked if row.rib.barrier != first.barrier]
+    return (ranked[0], *(kind or barrier)[:1])
+
+
+def draw_stress(
+    ax: Axes,
+    scale_ax: Axes,
+    section: CrossSection,
+    solution: StressSolution,
+    report: RibReport,
+    style: Style,
+) -> None:
+    """Draw von Mises stress in MPa of one rotor pole with each rib's peak, and the scale.
+
+    Args:
+        ax: the drawing, equal axes in mm; the field is rasterised in a vector file.
+        scale_ax: the colour scale.
+        section: exact outlines.
+        solution: stress and displacement.
+        report: the ribs of that solution.
+        style: sizes and colours.
+    """
+    turn = upright(section)
+    place_callouts(ax, _rotor_silhouette(section), _rib_callouts(report, turn), style, RULER_FOOT)
+    shown = np.arange(len(solution.mesh.elements))
+    _draw_field(ax, solution, shown, turn, style)
+    _draw_outline(ax, section, turn, style)
+    factor = _draw_deformed(ax, section, solution, turn, style)
+    for row, letter in zip(close_ups(report), LETTERS, strict=False):
+        _draw_frame(ax, row.rib, letter, turn, style)
+    draw_ruler(ax, style)
+    notes = (
+        f"{RPM * report.speed:.0f} 1/min; peak {mpa(report.peak)}"
+        f" \N{PLUS-MINUS SIGN} {100.0 * report.peak_error / report.peak:.1f} %,"
+        f" yield strength {mpa(report.yield_strength)}",
+        f"red: deformed outline, displacement times {factor:g}",
+    )
+    draw_note(ax, notes, style)
+    bare(ax)
+    draw_scale(
+        scale_ax, stress_colours(), (0.0, stress_limit(solution)), "von Mises stress in MPa", style
+    )
+
+
+def draw_rib(
+    ax: Axes,
+    section: CrossSection,
+    solution: StressSolution,
+    row: RibStress,
+    letter: str,
+    style: Style,
+) -> None:
+    """Draw one rib close up: stress, width in mm, where its peak is; equal axes in mm."""
+    turn = upright(section)
+    middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
+    half = _half_side(row.rib)
+    ax.set_aspect("equal", adjustable="box")
+    ax.set_xlim(middle.real - half, middle.real + half)
+    ax.set_ylim(middle.imag - half, middle.imag + half)
+    at = MM * turn * _places(solution)[solution.mesh.elements]
+    near = np.abs(at - middle).min(axis=1) < 2.0 * half
+    _draw_field(ax, solution, np.flatnonzero(near), turn, style)
+    _draw_outline(ax, section, turn, style)
+    _draw_width(ax, row.rib, turn, style)
+    peak = MM * turn * row.peak_at
+    ax.plot(
+        [peak.real],
+        [peak.imag],
+        marker="o",
+        markersize=7.0,
+        markerfacecolor="none",
+        markeredgecolor=style.accent,
+        markeredgewidth=1.4,
+        zorder=9,
+    )
+    ax.set_title(
+        f"{letter}: {rib_name(row.rib)}, yield margin {row.yield_margin:.2f}\n"
+        f"peak {mpa(row.peak)}, mean tension {mpa(row.mean_tension)}",
+        fontsize=style.text,
+        color=style.ink,
+        loc="left",
+        pad=4.0,
+    )
+    ax.set_xticks([])
+    ax.set_yticks([])
+    for spine in ax.spines.values():
+        spine.set(color=style.ink, linewidth=style.outline)
+
+
+def stress_limit(solution: StressSolution) -> float:
+    """Upper end of the colour scale in MPa, a round number that covers the peak."""
+    peak = MPA * solution.peak
+    step = 10.0 ** math.floor(math.log10(peak)) / 10.0 if peak > 0.0 else 1.0
+    return step * math.ceil(peak / step - 1e-9)
+
+
+def mpa(stress: float) -> str:
+    """A stress in MPa as it stands on the figure: three figures, whole numbers above 100."""
+    value = MPA * stress
+    return f"{value:.0f} MPa" if abs(value) >= 99.95 else f"{value:#.3g} MPa"
+
+
+def rib_name(rib: Rib) -> str:
+    """A rib as the trade calls it, with its side where there are two."""
+    side = rib.name.rsplit("_", 1)[1]
+    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "")
+
+
+def _rotor_silhouette(section: CrossSection) -> ComplexArray:
+    """A line (n,) in mm around an upright rotor pole and its deformed outline."""
+    half = math.pi / (2 * section.pole_pairs)
+    share = np.linspace(0.0, 1.0, 90)
+    arc = np.exp(1j * (math.pi / 2 - half + 2 * half * share))
+    inner = MM * section.shaft_radius * arc
+    outer = (1.0 + EXAGGERATION) * MM * section.rotor_radius * arc
+    right = inner[0] + (outer[0] - inner[0]) * share
+    left = outer[-1] + (inner[-1] - outer[-1]) * share
+    return np.concatenate([right, outer, left, inner[::-1]])
+
+
+def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
+    """Each rib's peak on its own side; ribs on the q axis go where there is more room."""
+    most = max(row.peak for row in report.ribs)
+    rows = [(row, MM * turn * row.peak_at, row.rib) for row in report.ribs]
+    found: list[Callout] = []
+    middle = []
+    for row, anchor, rib in rows:
+        text = f"{rib.kind} rib {rib.barrier}: {mpa(row.peak)}"
+        at = (turn * (rib.start + rib.end)).real
+        if abs(at) < rib.width:
+            middle.append((text, anchor, row.peak == most))
+            continue
+        found.append(Callout(text, anchor, "right" if at > 0 else "left", row.peak == most))
+    for text, anchor, is_most in middle:
+        count = {side: sum(c.side == side for c in found) for side in ("left", "right")}
+        side: Side = "right" if count["right"] <= count["left"] else "left"
+        found.append(Callout(text, anchor, side, is_most))
+    return found
+
+
+def _places(solution: StressSolution) -> ComplexArray:
+    nodes = solution.mesh.nodes
+    return np.asarray(nodes[:, 0] + 1j * nodes[:, 1])
+
+
+def _draw_field(
+    ax: Axes, solution: StressSolution, shown: IntArray, turn: complex, style: Style
+) -> None:
+    at = MM * turn * _places(solution)
+    ax.tripcolor(
+        at.real,
+        at.imag,
+        solution.mesh.elements[shown][:, QUARTERS].reshape(-1, 3),
+        MPA * solution.von_mises,
+        shading="gouraud",
+        cmap=stress_colours(),
+        vmin=0.0,
+        vmax=stress_limit(solution),
+        rasterized=True,
+        zorder=1,
+    )
+
+
+def _draw_outline(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
+    from matplotlib.patches import PathPatch
+
+    chains = visible_edges(section.rotor, section)
+    lines = PathPatch(inked(chains, [turn], closed=False), fill=False)
+    lines.set(edgecolor=style.ink, linewidth=style.outline, zorder=3)
+    ax.add_artist(lines)
+    draw_cut(ax, section, turn, (section.shaft_radius, section.rotor_radius), style)
+
+
+def _draw_deformed(
+    ax: Axes, section: CrossSection, solution: StressSolution, turn: complex, style: Style
+) -> float:
+    """The free outline moved by a round multiple of the displacement, which is returned."""
+    moved = solution.displacement[:, 0] + 1j * solution.displacement[:, 1]
+    largest = float(np.abs(moved).max())
+    if largest == 0.0:
+        return 0.0
+    raw = EXAGGERATION * section.rotor_radius / largest
+    decade = 10.0 ** math.floor(math.log10(raw))
+    factor = max(step * decade for step in (1.0, 2.0, 5.0) if step * decade <= raw)
+    place = _places(solution)
+    edges = boundary_edges(solution.mesh)
+    lead = np.angle(place[edges[:, 2]])
+    pole = math.pi / section.pole_pairs
+    edges = edges[(lead > 1e-6) & (lead < pole - 1e-6)]
+    # The edge's own second-order curve at five places; nodes start, end, middle.
+    t = np.linspace(0.0, 1.0, 5)
+    shape = np.stack([(1 - t) * (1 - 2 * t), t * (2 * t - 1), 4 * t * (1 - t)])
+    at = MM * turn * (place + factor * moved)[edges] @ shape
+    at = np.concatenate([at, np.full((len(at), 1), np.nan)], axis=1).ravel()
+    ax.plot(at.real, at.imag, color=style.accent, linewidth=style.hair, zorder=4)
+    return factor
+
+
+def _half_side(rib: Rib) -> float:
+    """Half the side of a rib's close-up in mm."""
+    return max(CLOSE_UP * MM * rib.width, LEAST_CLOSE_UP)
+
+
+def _draw_frame(ax: Axes, rib: Rib, letter: str, turn: complex, style: Style) -> None:
+    from matplotlib.patches import Rectangle
+    from matplotlib.patheffects import Normal, Stroke
+
+    middle, half = MM * turn * 0.5 * (rib.start + rib.end), _half_side(rib)
+    corner = (middle.real - half, middle.imag - half)
+    frame = Rectangle(corner, 2 * half, 2 * half, fill=False, zorder=7)
+    frame.set(edgecolor=style.ink, linewidth=style.outline)
+    ax.add_artist(frame)
+    # Inside, in the lower corner towards the q axis: labels stand outside of the pole.
+    inward = -1.0 if middle.real > 0.0 else 1.0
+    ax.text(
+        middle.real + 0.85 * inward * half,
+        middle.imag - 0.85 * half,
+        letter,
+        fontsize=style.text,
+        fontweight="bold",
+        color=style.ink,
+        ha="right" if inward > 0.0 else "left",
+        va="bottom",
+        path_effects=[Stroke(linewidth=2.0, foreground=style.paper), Normal()],
+        zorder=9,
+    )
+
+
+def _draw_width(ax: Axes, rib: Rib, turn: complex, style: Style) -> None:
+    """The rib's width between two arrows that point at its faces from outside."""
+    from matplotlib.patheffects import Normal, Stroke
+
+    start, end = MM * turn * rib.start, MM * turn * rib.end
+    out = (end - start) / abs(end - start)
+    reach = 0.3 * _half_side(rib)
+    for face, tail in ((start, start - reach * out), (end, end + reach * out)):
+        ax.annotate(
+            "",
+            xy=(face.real, face.imag),
+            xytext=(tail.real, tail.imag),
+            arrowprops={
+                "arrowstyle": "-|>",
+                "color": style.ink,
+                "linewidth": style.outline,
+                "shrinkA": 0.0,
+                "shrinkB": 0.0,
+                "mutation_scale": 7.0,
+            },
+            zorder=8,
+        )
+    words = ax.text(
+        0.0,
+        0.0,
+        f"{MM * rib.width:.2f} mm",
+        fontsize=style.text,
+        color=style.ink,
+        ha="center",
+        va="center",
+        path_effects=[Stroke(linewidth=2.5, foreground=style.paper), Normal()],
+        zorder=9,
+    )
+    extent = words.get_window_extent().transformed(ax.transData.inverted())
+    room = 0.5 * (abs(out.real) * extent.width + abs(out.imag) * extent.height)
+    at = start - (reach + room + 0.05 * _half_side(rib)) * out
+    words.set_position((at.real, at.imag))
