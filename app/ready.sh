@@ -3,14 +3,17 @@
 #   bash app/ready.sh lamwright assess designs/demo_24s4p_arc.toml --out out/demo
 #   bash app/ready.sh pytest
 # Safe to repeat: with nothing to do it costs some hundredths of a second. PYTHON=/path/to/python3
-# chooses the interpreter of a new environment. Ends with the command's exit code, or with 4 where
-# the set-up failed. Written for bash 3.2, which macOS has.
+# chooses the interpreter of a new environment. It prints on standard error only, and ends with the command's exit code, or with 4 where
+# the set-up failed. Written for the
+# bash 3.2 of macOS.
+# shellcheck disable=SC2086  # lists of packages and file patterns are split on purpose
 set -eu
 
 root=$(cd "$(dirname "${BASH_SOURCE[0]}")/.." && pwd -P)
 venv=$root/.venv
 # What gmsh's library needs from the system, even where it opens no window.
-gmsh_packages="libglu1-mesa libgl1 libxft2 libxcursor1 libxfixes3 libxinerama1 libxrender1 libfontconfig1"
+gmsh_packages="libglu1-mesa libgl1 libxft2 libxcursor1 libxfixes3 libxinerama1 libxrender1"
+gmsh_packages="$gmsh_packages libfontconfig1 libgomp1"
 
 say() { printf 'ready: %s\n' "$*" >&2; }
 give_up() { say "$*"; exit 4; }
@@ -82,15 +85,22 @@ install_project() {
     else
         say "installing the tools for tests"
         # The second finite element library has no wheel for some systems; its tests then skip.
-        install --only-binary ngsolve,netgen-mesher,netgen-occt -e "$root[dev,independent]" ||
-            install -e "$root[dev]" || give_up "the installation failed"
+        install --only-binary ngsolve,netgen-mesher,netgen-occt -e "${root}[dev,independent]" ||
+            install -e "${root}[dev]" || give_up "the installation failed"
         printf '%s\n' "$state" >"$venv/ready-core"
     fi
     printf '%s\n' "$state" >"$stamp"
 }
 
-needs_gmsh_packages() {
-    [ "$(uname -s)" = Linux ] && ldd "$venv"/lib/libgmsh.so* 2>/dev/null | grep -q 'not found'
+lacks() { [ "$(uname -s)" = Linux ] && ldd $1 2>/dev/null | grep -q "$2.*not found"; }
+
+# Install the system packages named last, if the libraries in files `$1` lack one like `$2`.
+complete() {
+    lacks "$1" "$2" || return 0
+    local files=$1 missing=$2
+    shift 2
+    apt_install "$@"
+    if lacks "$files" "$missing"; then give_up "still missing: ldd $files | grep 'not found'"; fi
 }
 
 [ $# -gt 0 ] || give_up "usage: bash app/ready.sh COMMAND [ARGUMENT ...], such as lamwright or pytest"
@@ -100,10 +110,9 @@ case $1 in
     pytest | ruff | mypy) install_project dev ;;
     *) install_project core ;;
 esac
-if needs_gmsh_packages; then
-    # shellcheck disable=SC2086
-    apt_install $gmsh_packages
-    if needs_gmsh_packages; then give_up "gmsh still misses system libraries: ldd .venv/lib/libgmsh.so*"; fi
-fi
+cd "$venv"
+complete "lib/libgmsh.so*" "" $gmsh_packages
+complete "lib/python3*/site-packages/ngsolve_openblas/libgfortran.so*" libquadmath libquadmath0
+cd "$OLDPWD"
 export VIRTUAL_ENV=$venv PATH="$venv/bin:$PATH"
 exec "$@"
