@@ -11,7 +11,7 @@ import numpy as np
 
 from lamwright.geometry.section import CrossSection, Material
 
-from .mesh_fold import Fan
+from .mesh_fold import Fan, folded_points
 from .mesh_outline import WELD_TOL, ComplexArray, Outline
 from .mesh_sizes import SizeSources, Sizing, joined, narrow_places
 
@@ -23,15 +23,24 @@ class MeshSettings:
     """How fine one pole is meshed; lengths relative, so that a machine may have any size."""
 
     scale: float = 1.0  # all sizes; 0.5 = twice as fine
-    circle_edges: int = 180  # per pole on the turning circle, before rounding
-    gap_layers: int = 2  # of elements on each side of the turning circle
-    across_iron: float = 4.0  # elements across ribs, flux carriers and teeth
-    across_air: float = 2.5  # elements across a barrier
-    across_copper: float = 2.0  # elements across a slot: a quiet field
-    coarsest: float = 0.04  # largest side over pole pitch (arc of the turning circle)
+    # On the turning circle.
+    circle_step: float = 0.9  # side over the air gap
+    least_circle_edges: int = 90  # per pole
+    gap_layers: int = 2  # of elements on each side of the circle, at the least
+    # Magnetic field.
+    across_rib: float = 4.0  # elements across the thinnest place of a rib
+    across_iron: float = 1.5  # elements across flux carriers, teeth and tooth tips
+    across_air: float = 1.0  # elements across a barrier
+    across_copper: float = 1.0  # elements across a slot: a quiet field
+    coarsest: float = 0.08  # largest side over pole pitch (arc of the turning circle)
     corner: float = 0.25  # side at the corners of slot mouths over the air gap
-    growth: float = 0.35  # change of side per distance
+    growth: float = 0.7  # change of side per distance
     step_angle: float = math.pi / 6.0  # most that one step may turn along an arc
+    # Stress in the lamination; across_rib and scale hold too.
+    lamination_across: float = 4.0
+    lamination_coarsest: float = 0.04
+    lamination_growth: float = 0.35
+    lamination_step_angle: float = math.pi / 6.0  # times scale
     algorithm: int = 6  # gmsh's number of the 2D method
 
 
@@ -41,7 +50,9 @@ def circle_edges(section: CrossSection, settings: MeshSettings) -> int:
     A multiple of twice the slots per pole, so that half a slot pitch can be meshed and copied;
     of 90 too where that is near (30 positions over 60 el. degrees are then whole steps).
     """
-    wanted = settings.circle_edges / settings.scale
+    step = settings.circle_step * section.gap
+    pitch = math.pi * section.circle_radius / section.pole_pairs
+    wanted = max(pitch / step, settings.least_circle_edges) / settings.scale
     half_slots = section.slots // section.pole_pairs
     common = math.lcm(POSITIONS, half_slots)
     count = common * max(1, round(wanted / common))
@@ -70,7 +81,7 @@ def section_sizing(
         k = abs(signed) - 1
         edge = outline.edges[k]
         if edge.is_line:
-            fixed[k] = settings.gap_layers
+            fixed[k] = max(settings.gap_layers, round(settings.gap_layers / settings.scale))
         elif abs(abs(edge.start) - circle) < WELD_TOL:
             fixed[k] = _whole(n_circle * abs(edge.sweep) * section.pole_pairs / math.pi)
         else:
@@ -86,7 +97,11 @@ def section_sizing(
         edge_sizes=sizes,
         growth=settings.growth,
         step_angle=settings.step_angle,
-        sources=joined(narrow, SizeSources(corners, np.full(corners.size, least))),
+        sources=joined(
+            narrow,
+            SizeSources(corners, np.full(corners.size, least)),
+            _rib_sources(section, fan, settings),
+        ),
         fixed=fixed,
         twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
     )
@@ -97,13 +112,15 @@ def lamination_sizing(
 ) -> Sizing:
     """Sizes for stress in the rotor lamination."""
     pitch = math.pi * section.circle_radius / section.pole_pairs
-    across = [settings.across_iron / settings.scale] * len(outline.loops)
+    across = [settings.lamination_across / settings.scale] * len(outline.loops)
     narrow = narrow_places(outline, across, 0.01 * pitch, _ray_edges(fan, outline))
     return Sizing(
-        edge_sizes=np.full(len(outline.edges), settings.scale * settings.coarsest * pitch),
-        growth=settings.growth,
-        step_angle=settings.scale * settings.step_angle,
-        sources=joined(narrow, refine),
+        edge_sizes=np.full(
+            len(outline.edges), settings.scale * settings.lamination_coarsest * pitch
+        ),
+        growth=settings.lamination_growth,
+        step_angle=settings.scale * settings.lamination_step_angle,
+        sources=joined(narrow, _rib_sources(section, fan, settings), refine),
         twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
     )
 
@@ -140,6 +157,13 @@ def _across(fan: Fan, settings: MeshSettings) -> list[float]:
         "shaft": 0.0,
     }
     return [by_material[region.material] / settings.scale for region in fan.regions]
+
+
+def _rib_sources(section: CrossSection, fan: Fan, settings: MeshSettings) -> SizeSources:
+    """Sizes at both ends of each rib's thinnest place, which samples on edges would only near."""
+    ends = np.array([p for rib in section.ribs for p in (rib.start, rib.end)], dtype=np.complex128)
+    widths = np.repeat([rib.width for rib in section.ribs], 2)
+    return SizeSources(folded_points(fan, ends), settings.scale * widths / settings.across_rib)
 
 
 def _ray_edges(fan: Fan, outline: Outline) -> list[int]:
