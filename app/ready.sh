@@ -3,9 +3,8 @@
 #   bash app/ready.sh lamwright assess designs/demo_24s4p_arc.toml --out out/demo
 #   bash app/ready.sh pytest
 # Safe to repeat: with nothing to do it costs some hundredths of a second. PYTHON=/path/to/python3
-# chooses the interpreter of a new environment. It prints on standard error only, and ends with the command's exit code, or with 4 where
-# the set-up failed. Written for the
-# bash 3.2 of macOS.
+# chooses the interpreter of a new environment. It prints on standard error only, and ends with the
+# command's exit code, or with 4 where the set-up failed. Written for the bash 3.2 of macOS.
 # shellcheck disable=SC2086  # lists of packages and file patterns are split on purpose
 set -eu
 
