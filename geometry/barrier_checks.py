@@ -156,9 +156,9 @@ def _fillet_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Faul
         return []
     if full < least:
         return []  # the thickness is at fault, and is found elsewhere
-    accepted = f"{full / MM:.9g} (full round)"
+    accepted = f"{_mm(full)} (full round)"
     if largest >= least:
-        accepted = f"{least / MM:.9g} to {largest / MM:.9g}, or {accepted}"
+        accepted = f"{_mm(least)} to {_mm(largest)}, or {accepted}"
     code, text = "fillet_large", "more than half the thickness"
     if radius < least:
         code, text = "fillet_small", "too small to punch"
@@ -184,12 +184,11 @@ def _placement_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[F
         return [_fault(number, "end_beyond", ("end_angle_deg",), text, beyond + SLACK)]
     bottom = bottom_radius(barrier, pole.rotor_radius)
     rise = cap_centre(barrier, pole.rotor_radius).real - bottom
-    if rise < pole.least_edge:
-        text = "the round ends lie no further out than the bottom on the q axis"
-        keys = ("depth_mm", "end_angle_deg", "thickness_mm", "tangential_rib_mm")
-        return _short(number, "barrier_flat", keys, text, pole.least_edge - rise)
-    if barrier.shape == "arc":
-        return []
+    text = "the round ends lie no further out than the bottom on the q axis"
+    keys = ("depth_mm", "end_angle_deg", "thickness_mm", "tangential_rib_mm")
+    flat = _short(number, "barrier_flat", keys, text, pole.least_edge - rise)
+    if flat or barrier.shape == "arc":
+        return flat
     return _leg_faults(pole, number, barrier)
 
 
@@ -357,5 +356,10 @@ def _short(number: int, code: str, keys: tuple[str, ...], text: str, lack: float
     return [_fault(number, code, keys, text, lack)] if lack > SLACK else []
 
 
+def _mm(length: float) -> str:
+    """A length to a nanometre, which is what the checks let pass for rounding."""
+    return f"{length / MM:.6f}".rstrip("0").rstrip(".")
+
+
 def _left(iron: float) -> str:
-    return f"only {iron / MM:.3g} mm of iron" if iron > 0.0 else "no iron"
+    return f"only {iron / MM:.3g} mm of iron" if iron > SLACK else "no iron"

@@ -2,91 +2,80 @@
 
 Each finding names a key that mends it and the range of that key that fits while all other values
 stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for ranges in
-`remedies`; what is left here are limits known in closed form.
+`remedies`.
 """
 
-from .barrier_checks import barrier_faults, rotor_faults
+from .barrier_checks import SLACK, barrier_faults, rotor_faults
+from .barriers import MM
 from .design import MachineDesign
 from .errors import Finding
-from .remedies import Fault, barrier_number, findings
-from .slot_checks import fill_finding, stator_faults
+from .remedies import SCALES, Fault, barrier_number, findings, value_of
+from .slot_checks import stator_faults
 from .winding import winding_findings
-
-# Outside these the numbers are slips of the pen: beyond any machine built, and beyond what double
-# precision could draw to a nanometre. Common practice, no source.
-LEAST_OUTER_MM, MOST_OUTER_MM = 5.0, 20_000.0
-LEAST_SHEET_MM, MOST_SHEET_MM = 0.02, 5.0
-LEAST_GAP_MM = 0.02
 
 
 def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     """All findings on the design, stator first; empty where `cross_section` will succeed."""
-    found = [*_scale_findings(design), *_pole_findings(design)]
-    if not any(one.code == "scale" for one in found):
-        found += _shape_findings(design)
+    found = findings(design, _faults(design), _shared_faults)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
     return (*found, *_duty_findings(design))
 
 
-def _scale_findings(design: MachineDesign) -> list[Finding]:
-    stator, rotor = design.stator, design.rotor
-    limits = (
-        ("stator.outer_diameter_mm", stator.outer_diameter_mm, LEAST_OUTER_MM, MOST_OUTER_MM),
-        ("rotor.sheet_thickness_mm", rotor.sheet_thickness_mm, LEAST_SHEET_MM, MOST_SHEET_MM),
-        ("rotor.gap_mm", rotor.gap_mm, LEAST_GAP_MM, MOST_OUTER_MM),
-        ("stator.bore_diameter_mm", stator.bore_diameter_mm, 0.0, MOST_OUTER_MM),
-    )
-    text = "beyond any electrical machine"
-    return [
-        Finding("scale", key, value, text, f"accepted {least:g} to {most:g}")
-        for key, value, least, most in limits
-        if not least <= value <= most
-    ]
+def _faults(design: MachineDesign) -> list[Fault]:
+    """All faults of the shape, as far as each can be told with the others there."""
+    return [*_pole_faults(design), *(_scale_faults(design) or _shape_faults(design))]
 
 
-def _pole_findings(design: MachineDesign) -> list[Finding]:
-    poles = design.rotor.poles
-    if poles % 2 == 0:
-        return []
-    text = "poles come in pairs"
-    return [
-        Finding("poles_odd", "rotor.poles", poles, text, f"accepted {poles - 1} or {poles + 1}")
-    ]
+def _shape_faults(design: MachineDesign) -> list[Fault]:
+    return stator_faults(design) + _ring_faults(design)
 
 
-def _shape_findings(design: MachineDesign) -> list[Finding]:
-    in_stator, in_disc = stator_faults(design), _disc_findings(design)
-    found = findings(design, in_stator, _shared_faults)
-    if not in_stator:
-        found += fill_finding(design)
-    found += in_disc
-    if in_disc or design.rotor.poles % 2:
-        return found  # without radii or a pole pitch nothing can be said of the barriers
-    return found + findings(design, rotor_faults(design), _shared_faults)
+def _ring_faults(design: MachineDesign) -> list[Fault]:
+    """Faults of the rotor; without radii or a pole pitch nothing can be said of the barriers."""
+    disc = _disc_faults(design)
+    return disc if disc or design.rotor.poles % 2 else rotor_faults(design)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
+    """The faults in which a key has a share; sparing the others makes the search fast."""
+    scale = _scale_faults(design)
+    if scale:
+        return scale
     number = barrier_number(key)
-    return stator_faults(design) if number is None else barrier_faults(design, number)
+    if number is not None:
+        return barrier_faults(design, number)
+    if key in SCALES:
+        return _shape_faults(design)
+    return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)
 
 
-def _disc_findings(design: MachineDesign) -> list[Finding]:
-    """Whether rotor disc and shaft leave a ring of iron between them."""
-    rotor = design.rotor
-    bore, sheet = design.stator.bore_diameter_mm, rotor.sheet_thickness_mm
-    largest = bore - 2.0 * (rotor.gap_mm + sheet)  # shaft diameter
-    if rotor.shaft_diameter_mm <= largest:
+def _scale_faults(design: MachineDesign) -> list[Fault]:
+    faults = []
+    for key, (least, most) in SCALES.items():
+        lack = MM * max(least - value_of(design, key), value_of(design, key) - most)
+        if lack > 0.0:
+            faults.append(Fault("scale", (key,), "beyond any electrical machine", lack))
+    return faults
+
+
+def _pole_faults(design: MachineDesign) -> list[Fault]:
+    poles = design.rotor.poles
+    if poles % 2 == 0:
         return []
-    text = "the shaft leaves no rotor between it and the gap"
-    if largest > 0.0:
-        key, remedy = "rotor.shaft_diameter_mm", f"accepted up to {largest:.9g}"
-        return [Finding("shaft_thick", key, rotor.shaft_diameter_mm, text, remedy)]
-    widest = 0.5 * (bore - rotor.shaft_diameter_mm) - sheet
-    remedy = "no value mends it, take a larger bore"
-    if widest >= LEAST_GAP_MM:
-        remedy = f"accepted {LEAST_GAP_MM:g} to {widest:.9g}"
-    return [Finding("gap_wide", "rotor.gap_mm", rotor.gap_mm, text, remedy)]
+    remedy = f"accepted {poles - 1} or {poles + 1}"
+    return [Fault("poles_odd", ("rotor.poles",), "poles come in pairs", 1.0, remedy)]
+
+
+def _disc_faults(design: MachineDesign) -> list[Fault]:
+    """Whether rotor disc and shaft leave a ring of iron between them."""
+    rotor, bore = design.rotor, design.stator.bore_diameter_mm
+    disc = 0.5 * bore - rotor.gap_mm  # radius
+    lack = MM * (rotor.sheet_thickness_mm - (disc - 0.5 * rotor.shaft_diameter_mm))
+    if lack <= SLACK:
+        return []
+    keys = ("rotor.shaft_diameter_mm", "rotor.gap_mm", "stator.bore_diameter_mm")
+    return [Fault("ring_thin", keys, "no rotor is left between shaft and gap", lack)]
 
 
 def _duty_findings(design: MachineDesign) -> list[Finding]:

@@ -24,7 +24,20 @@ REFINED = 20  # values tried between the neighbours of the one that lacks least
 REFINEMENTS = 2
 HALVINGS = 24  # of a grid step: to a part in 1e7 of it, beyond the digits shown
 MOST_DECIMALS = 9
+NOT_ENOUGH = ", then other values must change too"
 ROUNDING = 1e-4  # of the last decimal: an end found by halving is let reach its round number
+
+
+Identity = tuple[str, str]  # code and first key of a fault
+
+# Key: least and most, mm. Outside, a number is a slip of the pen: beyond any machine built, and
+# beyond what double precision could draw to a nanometre. Common practice, no source.
+SCALES = {
+    "stator.outer_diameter_mm": (5.0, 20_000.0),
+    "stator.bore_diameter_mm": (2.0, 20_000.0),
+    "rotor.sheet_thickness_mm": (0.02, 5.0),
+    "rotor.gap_mm": (0.02, 100.0),
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,7 +51,7 @@ class Fault:
     remedy: str | None = None  # where the range is known in closed form
 
     @property
-    def identity(self) -> tuple[str, str]:
+    def identity(self) -> Identity:
         """What makes it the same fault when some value is changed."""
         return self.code, self.keys[0]
 
@@ -121,18 +134,24 @@ def _default(barrier: BarrierDesign, name: str, pole_pairs: int) -> float:
 
 
 def _domain(design: MachineDesign, key: str) -> Domain:
+    if key in SCALES:
+        low, high = SCALES[key]
+        return Domain(low, high, is_low_accepted=True, has_limit=True)
     _, index, name = _parts(key)
+    outer, sheet = design.stator.outer_diameter_mm, design.rotor.sheet_thickness_mm
     if name == "end_angle_deg":
         return Domain(0.0, 90.0 / design.pole_pairs)
     if name == "arm_angle_deg":
         return Domain(0.0, 90.0 - 1e-6, is_low_accepted=True)
     if name == "wedge_angle_deg":
         return Domain(0.0, 60.0, is_low_accepted=True, has_limit=True)
-    if name in ("wedge_depth_mm", "slot_corner_radius_mm"):
-        return Domain(0.0, design.stator.outer_diameter_mm, is_low_accepted=True)
-    if index is None:
-        return Domain(0.0, 2.0 * design.stator.outer_diameter_mm)
-    return Domain(0.0, 0.5 * design.stator.bore_diameter_mm)
+    if name == "slot_corner_radius_mm":
+        return Domain(0.1 * sheet, outer, is_low_accepted=True)  # 0 stands apart from the range
+    if name == "wedge_depth_mm":
+        # Under a flat tooth tip 0 stands apart from the range too.
+        low = 0.0 if design.stator.wedge_angle_deg else 0.1 * sheet
+        return Domain(low, outer, is_low_accepted=True)
+    return Domain(0.0, 2.0 * outer if index is None else 0.5 * design.stator.bore_diameter_mm)
 
 
 class _Search:
@@ -145,71 +164,96 @@ class _Search:
         self._design, self._faults = design, faults
         self._left: dict[float, Sequence[Fault]] = {}
 
-    def lack(self, value: float, known: frozenset[tuple[str, str]]) -> float:
-        """What is missing at `value`, apart from the known faults; 0 where it fits."""
-        if value not in self._left:
-            self._left[value] = self._faults(with_value(self._design, self.key, value), self.key)
-        return sum(one.lack for one in self._left[value] if one.identity not in known)
+    def accepted(self, known: frozenset[Identity], only: Identity | None = None) -> str | None:
+        """The range that fits, nearest to the value as it stands.
 
-    def accepted(self, known: frozenset[tuple[str, str]]) -> str | None:
-        """The range that fits, nearest to the value as it stands."""
-        values = _grid(self.domain)
+        Args:
+            known: faults that may remain.
+            only: the one fault that must go, whatever else appears.
+        """
+
+        def lack(value: float) -> float:
+            if value not in self._left:
+                changed = with_value(self._design, self.key, value)
+                self._left[value] = self._faults(changed, self.key)
+            return sum(
+                fault.lack
+                for fault in self._left[value]
+                if fault.identity not in known and only in (None, fault.identity)
+            )
+
+        values = sorted({*_grid(self.domain), self._value_within()})
         for _ in range(REFINEMENTS):
-            lacks = [self.lack(value, known) for value in values]
+            lacks = [lack(value) for value in values]
             if min(lacks) == 0.0:
                 break
             values = _refined(values, lacks)
-        fitting = [k for k, value in enumerate(values) if self.lack(value, known) == 0.0]
-        if not fitting:
+        fits = [lack(value) == 0.0 for value in values]
+        run = _run(values, fits, self.value)
+        if run is None:
             return None
-        first = last = min(fitting, key=lambda k: abs(values[k] - self.value))
-        while first - 1 in fitting:
-            first -= 1
-        while last + 1 in fitting:
-            last += 1
+        first, last = run
         low = high = None
         if first > 0:
-            low = self._end(values[first - 1], values[first], known)
+            low = _end(values[first - 1], values[first], lack)
         if last < len(values) - 1:
-            high = self._end(values[last + 1], values[last], known)
-        return _range_text(self.domain, low, high, lambda end: self.lack(end, known) == 0.0)
+            high = _end(values[last + 1], values[last], lack)
+        return _range_text(self.domain, low, high, lack)
 
-    def _end(self, outside: float, inside: float, known: frozenset[tuple[str, str]]) -> float:
-        """The last fitting value between one that does not fit and one that does."""
-        for _ in range(HALVINGS):
-            middle = 0.5 * (outside + inside)
-            if self.lack(middle, known) == 0.0:
-                inside = middle
-            else:
-                outside = middle
-        return inside
+    def _value_within(self) -> float:
+        """The value as it stands: known not to fit, whatever the grid beside it says."""
+        return min(max(self.value, self.domain.low), self.domain.high)
+
+
+def _run(values: list[float], fits: list[bool], value: float) -> tuple[int, int] | None:
+    """First and last index of the values that fit and lie together nearest to `value`."""
+    fitting = [k for k, one in enumerate(fits) if one]
+    if not fitting:
+        return None
+    first = last = min(fitting, key=lambda k: abs(values[k] - value))
+    while first > 0 and fits[first - 1]:
+        first -= 1
+    while last < len(fits) - 1 and fits[last + 1]:
+        last += 1
+    return first, last
+
+
+def _end(outside: float, inside: float, lack: Callable[[float], float]) -> float:
+    """The last fitting value between one that does not fit and one that does."""
+    for _ in range(HALVINGS):
+        middle = 0.5 * (outside + inside)
+        if lack(middle) == 0.0:
+            inside = middle
+        else:
+            outside = middle
+    return inside
 
 
 def _mended(
     design: MachineDesign, fault: Fault, faults: Faults, searches: dict[str, _Search]
 ) -> tuple[str, str]:
-    """The first key that mends the fault without making a new one, and what it may be."""
+    """The first key that mends the fault, and what it may be: best without making a new one."""
     for key in fault.keys:
         if key not in searches:
             searches[key] = _Search(design, key, faults)
-        accepted = _accepted(searches[key], fault, faults(design, key))
+        now = faults(design, key)
+        others = [one for one in now if one.identity != fault.identity]
+        # Best a range that mends all faults that look to this key first, so that all findings on
+        # a key state the same range.
+        elsewhere = frozenset(one.identity for one in others if one.keys[0] != key)
+        known = frozenset(one.identity for one in others)
+        accepted = searches[key].accepted(elsewhere)
         if accepted is not None:
             return key, f"accepted {accepted}"
+        accepted = searches[key].accepted(known) if elsewhere != known else None
+        if accepted is not None:
+            return key, f"accepted {accepted}{NOT_ENOUGH}"
+    for key in fault.keys:
+        accepted = searches[key].accepted(frozenset(), only=fault.identity)
+        if accepted is not None:
+            return key, f"accepted {accepted}{NOT_ENOUGH}"
     names = list(dict.fromkeys(_parts(key)[2] for key in fault.keys))
-    if len(names) == 1:
-        return fault.keys[0], f"no {names[0]} alone mends it, change other values too"
     return fault.keys[0], f"no single value mends it, change several of {', '.join(names)}"
-
-
-def _accepted(search: _Search, fault: Fault, now: Sequence[Fault]) -> str | None:
-    """The range of the key that mends the fault and makes no new one, as text.
-
-    If there is one, it also mends the other faults that look to this key first, so that all
-    findings on a key state the same range.
-    """
-    others = [one for one in now if one.identity != fault.identity]
-    elsewhere = frozenset(one.identity for one in others if one.keys[0] != search.key)
-    return search.accepted(elsewhere) or search.accepted(frozenset(o.identity for o in others))
 
 
 def _grid(domain: Domain) -> list[float]:
@@ -230,7 +274,7 @@ def _refined(values: list[float], lacks: list[float]) -> list[float]:
 
 
 def _range_text(
-    domain: Domain, low: float | None, high: float | None, fits: Callable[[float], bool]
+    domain: Domain, low: float | None, high: float | None, lack: Callable[[float], float]
 ) -> str | None:
     """The range in as few decimals as keep nine tenths of it; None if rounding leaves nothing."""
     if low is None and domain.is_low_accepted:
@@ -243,7 +287,7 @@ def _range_text(
         last = None if high is None else math.floor(high * scale + ROUNDING) / scale
         if _width(first, last) < 0.9 * _width(low, high) < math.inf:
             continue
-        if all(end is None or fits(end) for end in (first, last)):
+        if all(end is None or lack(end) == 0.0 for end in (first, last)):
             return _text(first, last, decimals)
     return None
 

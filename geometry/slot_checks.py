@@ -8,9 +8,9 @@ a tenth of the sheet's thickness are refused because no mesh could follow them.
 import math
 
 from .design import MachineDesign
-from .errors import Finding, GeometryError
+from .errors import GeometryError
 from .remedies import Fault
-from .stator import SlotDimensions, slot_copper_area, slot_dimensions, slot_outline
+from .stator import SlotDimensions, slot_copper_area, slot_dimensions
 
 MM = 1e-3  # m
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
@@ -18,38 +18,42 @@ MOST_FILL = 0.75  # bare copper in the copper region; common practice, no source
 
 
 def stator_faults(design: MachineDesign) -> list[Fault]:
-    """What keeps the stator from being drawn or punched; lacks in m."""
+    """What keeps the stator from being drawn, punched or wound; lacks in m (fill: m^2)."""
     dims = slot_dimensions(design)
     faults = _single_sizes(design) + _slot_faults(design, dims) + _corner_faults(design, dims)
-    if faults or design.winding.layers == 1:
+    if faults:
         return faults
     try:
-        slot_outline(design)
-    except GeometryError as error:
+        return _fill_faults(design)
+    except GeometryError as error:  # the layers cannot be parted
         return [_fault(one.code, (one.key,), one.fault, 1.0) for one in error.findings]
-    return []
 
 
-def fill_finding(design: MachineDesign) -> tuple[Finding, ...]:
-    """Whether the conductors of a drawable slot go into its copper regions."""
+def _fill_faults(design: MachineDesign) -> list[Fault]:
+    """Whether the conductors of a slot that can be drawn go into its copper regions."""
     winding = design.winding
     room = MOST_FILL * slot_copper_area(design)  # m^2, of one coil side
     side = 1e-6 * winding.turns_per_coil * winding.conductor_area_mm2
     if side <= room:
-        return ()
-    turns = math.floor(1e6 * room / winding.conductor_area_mm2)
-    largest = math.floor(1e9 * room / winding.turns_per_coil) / 1e3
-    fault = (
+        return []
+    text = (
         f"{1e6 * side:.4g} mm2 of copper in a coil side; at a fill factor of {MOST_FILL:g} "
         f"{1e6 * room:.4g} mm2 have room"
     )
-    if turns >= 1:
-        remedy = f"accepted 1 to {turns} with conductors of {winding.conductor_area_mm2:g} mm2"
-        key = "winding.turns_per_coil"
-        return (Finding("slot_fill", key, winding.turns_per_coil, fault, remedy),)
-    remedy = f"accepted up to {largest:g} with {winding.turns_per_coil} turns"
-    key = "winding.conductor_area_mm2"
-    return (Finding("slot_fill", key, winding.conductor_area_mm2, fault, remedy),)
+    turns = math.floor(1e6 * room / winding.conductor_area_mm2)
+    key = "winding.turns_per_coil"
+    remedy = f"accepted 1 to {turns} with conductors of {winding.conductor_area_mm2:g} mm2"
+    if turns < 1:
+        key = "winding.conductor_area_mm2"
+        largest = 1e6 * room / winding.turns_per_coil
+        remedy = f"accepted up to {_floored(largest):g} with {winding.turns_per_coil} turns"
+    return [Fault("slot_fill", (key,), text, side - room, remedy)]
+
+
+def _floored(value: float) -> float:
+    """The value rounded down to four digits."""
+    scale = 10.0 ** (3 - math.floor(math.log10(value)))
+    return math.floor(value * scale) / scale
 
 
 def _fault(code: str, keys: tuple[str, ...], text: str, lack: float) -> Fault:
