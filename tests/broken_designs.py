@@ -1,7 +1,9 @@
 """Design files that must be refused: small breaks of a shipped design, each with its clear line.
 
-`BROKEN` is read by the tests of the reader and of the command line, so that both refuse the same
-files with the same words. `line` is the error's text after the file's name.
+`READER` and `SHAPES` are read by the tests of the geometry room and of the command line, so that
+both refuse the same files with the same words. `line` is the start of one line of the error's
+text, after the file's name. Line numbers are counted here from the text around the break, not by
+the reader that is tested.
 """
 
 import shutil
@@ -14,7 +16,7 @@ DEMO = (DESIGNS / "demo_24s4p_arc.toml").read_text()
 
 @dataclass(frozen=True, slots=True)
 class Broken:
-    """One broken file: its bytes, and the part of the error's text that must be there."""
+    """One broken file: its bytes, and how a line of the error's text must begin."""
 
     name: str
     data: bytes
@@ -28,218 +30,233 @@ class Broken:
         return path
 
 
-def _swap(name: str, old: str, new: str, line: str) -> Broken:
-    """The demo with the first `old` replaced; `old` must be there."""
-    assert old in DEMO, old
-    return Broken(name, DEMO.replace(old, new, 1).encode(), line)
+def row_of(key: str, number: int = 1, text: str = DEMO) -> int:
+    """Line of the `number`th statement of `key`, or of that header where key is `[table]`."""
+    rows = text.splitlines()
+    return [k for k, row in enumerate(rows, 1) if row.split(" = ")[0] == key][number - 1]
 
 
-def _barriers(name: str, text: str, line: str) -> Broken:
-    """The demo with all its barriers replaced by `text`."""
-    return Broken(name, (_HEAD + text + _TAIL).encode(), line)
+def with_row(key: str, row: str, number: int = 1) -> str:
+    """The demo with the `number`th statement of `key` replaced by `row`, which may be several."""
+    rows = DEMO.splitlines()
+    rows[row_of(key, number) - 1] = row
+    return "\n".join(rows) + "\n"
+
+
+def _row(name: str, key: str, row: str, fault: str, down: int = 0) -> Broken:
+    """One statement replaced, the fault there, or `down` rows below."""
+    return Broken(name, with_row(key, row).encode(), f":{row_of(key) + down}: {fault}")
+
+
+def _value(name: str, table: str, key: str, value: str, fault: str, number: int = 1) -> Broken:
+    """One value replaced; the line names key, value and fault."""
+    text = with_row(key, f"{key} = {value}", number)
+    return Broken(name, text.encode(), f":{row_of(key, number)}: {table}{key} = {value}: {fault}")
+
+
+def _barriers(name: str, barriers: str, fault: str, down: int = 0) -> Broken:
+    """All barriers replaced, the fault at the first of them, or `down` rows below."""
+    line = row_of("[[rotor.barrier]]") + down
+    return Broken(name, (_HEAD + barriers + _TAIL).encode(), f":{line}: {fault}")
 
 
 _HEAD, _REST = DEMO.split("[[rotor.barrier]]", 1)
 _TAIL = _REST[_REST.index("[steel]") :]
 _ONE = "[[rotor.barrier]]" + _REST.split("[[rotor.barrier]]", 1)[0]
+_ABOVE_0 = "a number above 0"
+_ROWS = "accepted lines like [table] and key = 1.5"
 
 _KEYS = (
-    _swap(
-        "misspelt key",
-        "gap_mm = 0.4",
-        "gap_m = 0.4",
-        ":27: rotor.gap_m: unknown key; did you mean gap_mm?",
-    ),
-    _swap(
+    _row("misspelt key", "gap_mm", "gap_m = 1", "rotor.gap_m: unknown key; did you mean gap_mm?"),
+    _row(
         "misspelt key of a barrier",
-        "thickness_mm = 2.6",
+        "thickness_mm",
         "thicknes_mm = 2.6",
-        ":34: rotor.barrier[1].thicknes_mm: unknown key; did you mean thickness_mm?",
+        "rotor.barrier[1].thicknes_mm: unknown key; did you mean thickness_mm?",
     ),
-    _swap(
-        "misspelt table",
-        "[winding]",
-        "[windings]",
-        ":18: windings: unknown key; did you mean winding?",
+    _row(
+        "misspelt table", "[winding]", "[windings]", "windings: unknown key; did you mean winding?"
     ),
-    _swap(
+    _row(
         "key of another table",
-        "poles = 4",
+        "poles",
         "poles = 4\nslots = 24",
-        ":27: rotor.slots: unknown key; slots belongs in [stator]",
+        "rotor.slots: unknown key; slots belongs in [stator]",
+        down=1,
     ),
-    _swap(
+    _row(
         "unheard-of key",
-        "layers = 1",
+        "layers",
         "layers = 1\ncolour = 3",
-        ":20: winding.colour: unknown key; accepted layers, coil_span_slots, turns_per_coil",
+        "winding.colour: unknown key; accepted layers, coil_span_slots, turns_per_coil",
+        down=1,
     ),
-    _swap(
+    Broken(
         "missing key",
-        "gap_mm = 0.4\n",
-        "",
-        ":25: rotor.gap_mm: missing; accepted a number above 0",
+        with_row("gap_mm", "").encode(),
+        f":{row_of('[rotor]')}: rotor.gap_mm: missing; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _row(
         "key twice",
-        "gap_mm = 0.4",
+        "gap_mm",
         "gap_mm = 0.4\ngap_mm = 0.5",
-        ":28: column 13 of gap_mm = 0.5: not TOML, this key or table stands twice; "
+        "column 13 of gap_mm = 0.5: not TOML, this key or table stands twice; "
         "accepted each once, and [[table]] for each of several barriers",
+        down=1,
     ),
     Broken(
         "missing table",
         DEMO[: DEMO.index("[limits]")].encode(),
         ":1: limits: missing; accepted one table [limits]",
     ),
-    _swap(
+    _row(
         "table twice",
         "[duty]",
         "[duty]\n[duty]",
-        ":57: column 6 of [duty]: not TOML, this key or table stands twice",
+        "column 6 of [duty]: not TOML, this key or table stands twice",
+        down=1,
     ),
-    _swap(
+    _row(
         "array for a table",
         "[stator]",
         "[[stator]]",
-        ":5: stator: this is an array; accepted one table [stator]",
+        "stator: this is an array; accepted one table [stator]",
     ),
 )
 
+_WHOLE_SLOTS = "accepted a whole number from 6 to 144"
 _TYPES = (
-    _swap(
-        "text for a whole number",
-        "slots = 24",
-        'slots = "24"',
-        ':9: stator.slots = "24": this is text; accepted a whole number from 6 to 144',
-    ),
-    _swap(
+    _value("text for a whole number", "stator.", "slots", '"24"', f"this is text; {_WHOLE_SLOTS}"),
+    _value(
         "fraction for a whole number",
-        "slots = 24",
-        "slots = 24.5",
-        ":9: stator.slots = 24.5: this is a number with a decimal point; "
-        "accepted a whole number from 6 to 144",
+        "stator.",
+        "slots",
+        "24.5",
+        f"this is a number with a decimal point; {_WHOLE_SLOTS}",
     ),
-    _swap(
+    _value(
         "true for a whole number",
-        "poles = 4",
-        "poles = true",
-        ":26: rotor.poles = true: this is true or false; accepted a whole number from 2 to 24",
+        "rotor.",
+        "poles",
+        "true",
+        "this is true or false; accepted a whole number from 2 to 24",
     ),
-    _swap(
+    _value(
         "true for a choice",
-        "layers = 1",
-        "layers = true",
-        ":19: winding.layers = true: this is true or false; accepted 1 or 2",
+        "winding.",
+        "layers",
+        "true",
+        "this is true or false; accepted 1 or 2",
     ),
-    _swap(
+    _value(
         "false for a length",
-        "gap_mm = 0.4",
-        "gap_mm = false",
-        ":27: rotor.gap_mm = false: this is true or false; accepted a number above 0",
+        "rotor.",
+        "gap_mm",
+        "false",
+        f"this is true or false; accepted {_ABOVE_0}",
     ),
-    _swap(
-        "number for a name",
-        'name = "demo 24/4 arc"',
-        "name = 24",
-        ":2: name = 24: this is a whole number; accepted text in quotes",
+    _value(
+        "number for a name", "", "name", "24", "this is a whole number; accepted text in quotes"
     ),
-    _swap(
+    _row(
         "array for a length",
-        "gap_mm = 0.4",
+        "gap_mm",
         "gap_mm = [0.4, 0.5]",
-        ":27: rotor.gap_mm: this is an array; accepted a number above 0",
+        f"rotor.gap_mm: this is an array; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "date for a speed",
-        "maximum_speed_rpm = 6000.0",
-        "maximum_speed_rpm = 2026-01-31",
-        ":59: duty.maximum_speed_rpm = 2026-01-31: this is a date or time; "
-        "accepted a number above 0",
+        "duty.",
+        "maximum_speed_rpm",
+        "2026-01-31",
+        f"this is a date or time; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "unknown choice",
-        'shape = "arc"',
-        'shape = "arch"',
-        ':32: rotor.barrier[1].shape = "arch": not one of the choices; '
-        'accepted "arc" or "straight"',
+        "rotor.barrier[1].",
+        "shape",
+        '"arch"',
+        'not one of the choices; accepted "arc" or "straight"',
     ),
 )
 
 _VALUES = (
-    _swap(
-        "not a number",
-        "gap_mm = 0.4",
-        "gap_mm = nan",
-        ":27: rotor.gap_mm = nan: not a number; accepted a number above 0",
-    ),
-    _swap(
+    _value("not a number", "rotor.", "gap_mm", "nan", f"not a number; accepted {_ABOVE_0}"),
+    _value(
         "infinity",
-        "outer_diameter_mm = 140.0",
-        "outer_diameter_mm = inf",
-        ":6: stator.outer_diameter_mm = inf: not a finite number; accepted a number above 0",
+        "stator.",
+        "outer_diameter_mm",
+        "inf",
+        f"not a finite number; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "minus infinity",
-        "rated_current_a = 12.0",
-        "rated_current_a = -inf",
-        ":57: duty.rated_current_a = -inf: not a finite number; accepted a number above 0",
+        "duty.",
+        "rated_current_a",
+        "-inf",
+        f"not a finite number; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "negative length",
-        "stack_length_mm = 100.0",
-        "stack_length_mm = -100.0",
-        ":8: stator.stack_length_mm = -100.0: too small; accepted a number above 0",
+        "stator.",
+        "stack_length_mm",
+        "-100.0",
+        f"too small; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "rib of 0 mm",
-        "tangential_rib_mm = 0.6",
-        "tangential_rib_mm = 0",
-        ":36: rotor.barrier[1].tangential_rib_mm = 0: too small; accepted a number above 0",
+        "rotor.barrier[1].",
+        "tangential_rib_mm",
+        "0",
+        f"too small; accepted {_ABOVE_0}",
     ),
-    _swap(
+    _value(
         "angle beyond its range",
-        "wedge_angle_deg = 30.0",
-        "wedge_angle_deg = 60.5",
-        ":14: stator.wedge_angle_deg = 60.5: too large; accepted a number from 0 to 60",
+        "stator.",
+        "wedge_angle_deg",
+        "60.5",
+        "too large; accepted a number from 0 to 60",
     ),
-    _swap(
+    _value(
         "too many poles",
-        "poles = 4",
-        "poles = 400",
-        ":26: rotor.poles = 400: too large; accepted a whole number from 2 to 24",
+        "rotor.",
+        "poles",
+        "400",
+        "too large; accepted a whole number from 2 to 24",
     ),
-    _swap(
+    _value(
         "whole number beyond 64 bits",
-        "turns_per_coil = 34",
-        "turns_per_coil = 99999999999999999999",
-        ":21: winding.turns_per_coil = 99999999999999999999: too large; "
-        "accepted up to 9223372036854775807",
+        "winding.",
+        "turns_per_coil",
+        "99999999999999999999",
+        "too large; accepted up to 9223372036854775807",
     ),
     _barriers(
         "no barrier",
         "barrier = []\n",
-        ":31: rotor.barrier has 0: too few; accepted 1 to 6 tables [[rotor.barrier]]",
+        "rotor.barrier has 0: too few; accepted 1 to 6 tables [[rotor.barrier]]",
     ),
     _barriers(
         "7 barriers",
         _ONE * 7,
-        ":73: rotor.barrier has 7: too many; accepted 1 to 6 tables [[rotor.barrier]]",
+        "rotor.barrier has 7: too many; accepted 1 to 6 tables [[rotor.barrier]]",
+        down=6 * _ONE.count("\n"),
     ),
     _barriers(
         "single brackets",
         _ONE.replace("[[", "[").replace("]]", "]"),
-        ":31: rotor.barrier: this is a single table; accepted 1 to 6 tables [[rotor.barrier]]",
+        "rotor.barrier: this is a single table; accepted 1 to 6 tables [[rotor.barrier]]",
     ),
-    _swap(
+    _value(
         "no such steel card",
-        'rotor_card = "steel/demo_050.toml"',
-        'rotor_card = "steel/demo_50.toml"',
-        ':53: steel.rotor_card = "steel/demo_50.toml": no such file; '
-        'did you mean "steel/demo_050.toml"?',
+        "steel.",
+        "rotor_card",
+        '"steel/demo_50.toml"',
+        'no such file; did you mean "steel/demo_050.toml"?',
     ),
 )
 
+_CUT = DEMO.index("sheet_thickness_mm =") + len("sheet_thickness_mm =")
 _FILES = (
     Broken("empty file", b"", ": the file is empty; accepted a TOML file"),
     Broken(
@@ -249,16 +266,20 @@ _FILES = (
     ),
     Broken(
         "cut in a line",
-        DEMO[: DEMO.index("0.5\n\n[[rotor")].encode(),
-        ":29: column 22 of sheet_thickness_mm =: not TOML, invalid value; "
-        "accepted lines like [table] and key = 1.5",
+        DEMO[:_CUT].encode(),
+        f":{row_of('sheet_thickness_mm')}: column 21 of sheet_thickness_mm =: "
+        f"not TOML, invalid value; {_ROWS}",
     ),
     Broken(
         "cut between lines",
         DEMO[: DEMO.index("[steel]")].encode(),
         ":1: steel: missing; accepted one table [steel]",
     ),
-    Broken("Latin-1", DEMO.replace("invented: ", "inventé: ").encode("latin-1"), ":3: byte 0xe9"),
+    Broken(
+        "Latin-1",
+        with_row("note", 'note = "inventé"').encode("latin-1"),
+        f":{row_of('note')}: byte 0xe9 is not UTF-8; accepted UTF-8 text",
+    ),
     Broken("UTF-16", DEMO.encode("utf-16"), ":1: byte 0xff is not UTF-8; accepted UTF-8 text"),
     Broken(
         "a punch outline",
@@ -271,4 +292,76 @@ _FILES = (
 )
 
 READER = (*_KEYS, *_TYPES, *_VALUES, *_FILES)
-"""Files that the reader refuses."""
+"""Files that the reader refuses, with one line each; only 'cut between lines' has three."""
+
+SHAPES = (
+    _value(
+        "barriers that cross",
+        "rotor.barrier[2].",
+        "thickness_mm",
+        "30",
+        "barriers 2 and 3 run into each other; accepted ",
+        2,
+    ),
+    _value(
+        "barrier into the bore",
+        "rotor.barrier[3].",
+        "depth_mm",
+        "40",
+        "no iron to the bore; accepted ",
+        3,
+    ),
+    _value(
+        "arms that leave the pole",
+        "rotor.barrier[3].",
+        "end_angle_deg",
+        "50",
+        "not within half the pole pitch (45); accepted ",
+        3,
+    ),
+    _value(
+        "rib thinner than the sheet",
+        "rotor.barrier[1].",
+        "tangential_rib_mm",
+        "0.1",
+        "thinner than the sheet (0.5 mm); accepted 0.5 to ",
+    ),
+    _value("gap wider than the rotor", "rotor.", "gap_mm", "60", "no rotor is left between "),
+    _value("odd number of poles", "rotor.", "poles", "5", "poles come in pairs; accepted 4 or 6"),
+    _value(
+        "slots that suit no winding",
+        "stator.",
+        "slots",
+        "25",
+        "slots per pole and phase are not a whole number; accepted multiples of 12",
+    ),
+    _value(
+        "slot through the yoke",
+        "stator.",
+        "slot_depth_mm",
+        "40",
+        "the yoke behind the slot is thinner than the sheet; accepted ",
+    ),
+    _value(
+        "mouth wider than the slot",
+        "stator.",
+        "slot_opening_mm",
+        "9",
+        "the mouth leaves no tooth tip beside it; accepted ",
+    ),
+    _value(
+        "short coils in a single layer",
+        "winding.",
+        "coil_span_slots",
+        "5",
+        "a single-layer winding has full-pitch coils; accepted 6",
+    ),
+    _value(
+        "bigger than any machine",
+        "stator.",
+        "outer_diameter_mm",
+        "1e+308",
+        "beyond any electrical machine; accepted ",
+    ),
+)
+"""Files that the reader takes, whose shape or winding is impossible; some have several faults."""

@@ -1,11 +1,11 @@
 """Design files and steel cards: what is read, what is refused, and where the faults are placed."""
 
 import os
+import tomllib
 from pathlib import Path
 
 import pytest
 
-from broken_designs import DEMO, DESIGNS
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.design_file import (
     design_hash,
@@ -17,7 +17,9 @@ from lamwright.geometry.design_file import (
 from lamwright.geometry.errors import DesignError, Finding
 from lamwright.geometry.key_lines import key_lines, line_of
 from lamwright.geometry.steel_card import MU_0, curve_findings
+from tests.broken_designs import DEMO, DESIGNS, row_of, with_row
 
+DEMO_PATH = DESIGNS / "demo_24s4p_arc.toml"
 SHIPPED = sorted(DESIGNS.glob("*.toml"))
 CARD = (DESIGNS / "steel" / "demo_050.toml").read_text()
 
@@ -45,20 +47,25 @@ def test_shipped_designs_and_their_cards_are_valid(path):
 
 
 def test_values_are_the_files_values():
-    """Read by eye from the demo: whole numbers, lengths, nested barriers in order, defaults."""
-    design = read_design(DESIGNS / "demo_24s4p_arc.toml")
-    assert (design.stator.slots, design.rotor.poles, design.pole_pairs) == (24, 4, 2)
-    assert [barrier.end_angle_deg for barrier in design.rotor.barrier] == [14.5, 25.0, 36.0]
-    assert design.rotor.barrier[2].thickness_mm == 3.6
-    assert (design.winding.parallel_paths, design.duty.overspeed_factor) == (1, 1.2)
+    """Against the standard reader: whole numbers, lengths, barriers in order, then a default."""
+    design = read_design(DEMO_PATH)
+    raw = tomllib.loads(DEMO)
+    assert (design.stator.slots, design.rotor.poles) == (raw["stator"]["slots"], 4)
+    assert design.pole_pairs == 2
+    for barrier, values in zip(design.rotor.barrier, raw["rotor"]["barrier"], strict=True):
+        assert {key: getattr(barrier, key) for key in values} == values
+    assert "parallel_paths" not in raw["winding"]
+    assert design.winding.parallel_paths == 1
 
 
 def test_whole_numbers_serve_as_lengths(tmp_path):
     """`82` and `82.0` are the same length, and give the same hash."""
-    design = read_design(_written(tmp_path, DEMO.replace("= 82.0", "= 82")))
-    demo = read_design(DESIGNS / "demo_24s4p_arc.toml")
-    assert design == demo
-    assert design_hash(design, ()) == design_hash(demo, ())
+    whole, decimal = (
+        read_design(_written(tmp_path, with_row("bore_diameter_mm", f"bore_diameter_mm = {value}")))
+        for value in ("82", "82.0")
+    )
+    assert whole == decimal
+    assert design_hash(whole, ()) == design_hash(decimal, ())
 
 
 @pytest.mark.parametrize(
@@ -74,28 +81,33 @@ def test_whole_numbers_serve_as_lengths(tmp_path):
 def test_layout_does_not_matter(data, tmp_path):
     """TOML gives these the same meaning (TOML 1.0); editors write all of them."""
     path = _written(tmp_path, data)
-    assert read_design(path) == read_design(DESIGNS / "demo_24s4p_arc.toml")
+    assert read_design(path) == read_design(DEMO_PATH)
 
 
 def test_all_faults_come_at_once_in_the_files_words(tmp_path):
     """One round of corrections, not seven: four slips, four lines, each at its own line."""
-    text = (
-        DEMO.replace("bore_diameter_mm = 82.0", "bore_diameter_mm = -82.0")
-        .replace("gap_mm = 0.4", "gapp_mm = 0.4")
-        .replace("depth_mm = 10.2", 'depth_mm = "10.2"')
-        .replace("least_torque_nm = 9.0", "")
+    slips = (
+        ("bore_diameter_mm", "bore_diameter_mm = -82.0", 1),
+        ("gap_mm", "gapp_mm = 0.4", 1),
+        ("depth_mm", 'depth_mm = "10.2"', 2),
+        ("least_torque_nm", "", 1),
     )
-    assert _faults(read_design, _written(tmp_path, text)) == [
-        ":7: stator.bore_diameter_mm = -82.0: too small; accepted a number above 0",
-        ":27: rotor.gapp_mm: unknown key; did you mean gap_mm?",
-        ':42: rotor.barrier[2].depth_mm = "10.2": this is text; accepted a number above 0',
-        ":62: limits.least_torque_nm: missing; accepted a number from 0",
+    rows = DEMO.splitlines()
+    for key, row, number in slips:
+        rows[row_of(key, number) - 1] = row
+    assert _faults(read_design, _written(tmp_path, "\n".join(rows))) == [
+        f":{row_of('bore_diameter_mm')}: stator.bore_diameter_mm = -82.0: too small; "
+        "accepted a number above 0",
+        f":{row_of('gap_mm')}: rotor.gapp_mm: unknown key; did you mean gap_mm?",
+        f':{row_of("depth_mm", 2)}: rotor.barrier[2].depth_mm = "10.2": this is text; '
+        "accepted a number above 0",
+        f":{row_of('[limits]')}: limits.least_torque_nm: missing; accepted a number from 0",
     ]
 
 
 def test_hostile_text_stays_on_one_line(tmp_path):
     """Control characters and long values of a file must not reach a terminal."""
-    text = '"a\\u001b[31m\\nb" = 1\n' + DEMO.replace('"arc"', f'"{"x" * 500}\\u2028"', 1)
+    text = '"a\\u001b[31m\\nb" = 1\n' + with_row("shape", f'shape = "{"x" * 500}\\u2028"')
     faults = _faults(read_design, _written(tmp_path, text))
     assert len(faults) == 2
     assert all(fault.isprintable() and len(fault) < 250 for fault in faults)
@@ -135,7 +147,7 @@ def test_an_unreadable_file_says_why(tmp_path, monkeypatch):
 def test_cards_count_from_the_designs_folder(tmp_path, monkeypatch):
     """The same file means the same machine from any working directory."""
     monkeypatch.chdir(tmp_path)
-    assert read_machine(DESIGNS.resolve() / "demo_24s4p_arc.toml").rotor_steel.name
+    assert read_machine(DEMO_PATH.resolve()).rotor_steel.name
 
 
 def test_faults_of_cards_name_the_cards_file_once(tmp_path):
@@ -153,12 +165,12 @@ def test_faults_of_cards_name_the_cards_file_once(tmp_path):
 def test_hash_knows_values_not_layout(tmp_path):
     """Comments and order leave the hash alone; any value of design or card changes it."""
     card = read_steel_card(DESIGNS / "steel" / "demo_050.toml")
-    demo = read_design(DESIGNS / "demo_24s4p_arc.toml")
+    demo = read_design(DEMO_PATH)
     top, _, rest = DEMO.partition("[stator]")
     stator, rest = rest.split("\n\n", 1)
     moved = read_design(_written(tmp_path, f"{top}{rest}\n# moved\n[stator]{stator}\n"))
     assert design_hash(moved, (card,)) == design_hash(demo, (card,))
-    other = read_design(_written(tmp_path, DEMO.replace("depth_mm = 10.2", "depth_mm = 10.3")))
+    other = read_design(_written(tmp_path, with_row("depth_mm", "depth_mm = 99", 2)))
     softer = card.model_copy(update={"density_kg_per_m3": card.poissons_ratio})
     hashes = {
         design_hash(demo, (card,)),
@@ -177,9 +189,10 @@ def test_findings_get_file_and_line(tmp_path):
         Finding("a", "rotor.barrier[2].depth_mm", 10.2, "crosses barrier 1", "accepted 11 to 12"),
         Finding("b", "rotor.barrier[3].fillet_mm", 0.5, "too large", "accepted 0.1 to 0.3"),
     )
+    depth, third = row_of("depth_mm", 2), row_of("[[rotor.barrier]]", 3)
     assert str(placed(findings, path)).splitlines() == [
-        f"{path}:42: rotor.barrier[2].depth_mm = 10.2: crosses barrier 1; accepted 11 to 12",
-        f"{path}:45: rotor.barrier[3].fillet_mm = 0.5: too large; accepted 0.1 to 0.3",
+        f"{path}:{depth}: rotor.barrier[2].depth_mm = 10.2: crosses barrier 1; accepted 11 to 12",
+        f"{path}:{third}: rotor.barrier[3].fillet_mm = 0.5: too large; accepted 0.1 to 0.3",
     ]
 
 
