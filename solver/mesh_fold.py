@@ -148,8 +148,13 @@ def _folded(edge: Edge, j: int, wedge: float) -> Edge:
 def _cut(edge: Edge, wedge: float, copies: int) -> list[Edge]:
     """The edge cut where it crosses a ray between two wedges."""
     shares = {0.0: edge.start, 1.0: edge.end}
+    # The edge lies inside the circle about its chord's middle that also holds its rise.
+    middle = 0.5 * (edge.start + edge.end)
+    reach = 0.5 * abs(edge.end - edge.start) * max(1.0, abs(edge.bulge))
     for j in range(1, copies):
         turn = cmath.exp(1j * j * wedge)
+        if abs((middle / turn).imag) > reach:
+            continue
         for share, radius in _crossings(edge, turn):
             shares[share] = radius * turn
     at = sorted(shares)

@@ -13,9 +13,11 @@ from lamwright.geometry.section import CrossSection, Material
 
 from .mesh_fold import Fan, folded_points
 from .mesh_outline import WELD_TOL, ComplexArray, Outline
-from .mesh_sizes import SizeSources, Sizing, joined, narrow_places
+from .mesh_sizes import Across, SizeSources, Sizing, joined, narrow_places
 
 POSITIONS = 90  # circle edges per pole that put 30 positions in 60 el. degrees on vertices
+
+RIB_LIMIT = 1.2  # times the widest rib: rotor iron no wider than that is meshed as a rib
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,10 +88,10 @@ def section_sizing(
             fixed[k] = _whole(n_circle * abs(edge.sweep) * section.pole_pairs / math.pi)
         else:
             sizes[k] = step * edge.radius / circle
-    across = _across(fan, settings)
-    across[gap] = 0.0
+    across = _across(section, fan, settings)
+    across[gap] = None
     rays = _ray_edges(fan, outline)
-    narrow = narrow_places(outline, across, 0.01 * pitch, rays)
+    narrow = narrow_places(outline, across, _spacing(section), rays)
     least = settings.scale * settings.corner * section.gap
     narrow = SizeSources(narrow.points, np.maximum(narrow.sizes, 0.5 * least))
     corners = _gap_corners(outline, gap, rays)
@@ -112,12 +114,11 @@ def lamination_sizing(
 ) -> Sizing:
     """Sizes for stress in the rotor lamination."""
     pitch = math.pi * section.circle_radius / section.pole_pairs
-    across = [settings.lamination_across / settings.scale] * len(outline.loops)
-    narrow = narrow_places(outline, across, 0.01 * pitch, _ray_edges(fan, outline))
+    across = [Across(settings.lamination_across / settings.scale)] * len(outline.loops)
+    narrow = narrow_places(outline, across, _spacing(section), _ray_edges(fan, outline))
+    coarsest = settings.scale * settings.lamination_coarsest * pitch
     return Sizing(
-        edge_sizes=np.full(
-            len(outline.edges), settings.scale * settings.lamination_coarsest * pitch
-        ),
+        edge_sizes=np.full(len(outline.edges), coarsest),
         growth=settings.lamination_growth,
         step_angle=settings.scale * settings.lamination_step_angle,
         sources=joined(narrow, _rib_sources(section, fan, settings), refine),
@@ -147,16 +148,25 @@ def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], .
     return tuple(twins)
 
 
-def _across(fan: Fan, settings: MeshSettings) -> list[float]:
+def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Across | None]:
     """Elements wanted across each piece."""
-    by_material: dict[Material, float] = {
-        "rotor_steel": settings.across_iron,
-        "stator_steel": settings.across_iron,
-        "air": settings.across_air,
-        "copper": settings.across_copper,
-        "shaft": 0.0,
+    scale = settings.scale
+    limit = RIB_LIMIT * max((rib.width for rib in section.ribs), default=0.0)
+    iron = settings.across_iron / scale
+    by_material: dict[Material, Across | None] = {
+        "rotor_steel": Across(iron, settings.across_rib / scale, limit),
+        "stator_steel": Across(iron),
+        "air": Across(settings.across_air / scale),
+        "copper": Across(settings.across_copper / scale),
+        "shaft": None,
     }
-    return [by_material[region.material] / settings.scale for region in fan.regions]
+    return [by_material[region.material] for region in fan.regions]
+
+
+def _spacing(section: CrossSection) -> float:
+    """Distance in m between places on edges at which the width beside them is looked up."""
+    pitch = math.pi * section.circle_radius / section.pole_pairs
+    return min([0.01 * pitch, *(0.5 * rib.width for rib in section.ribs)])
 
 
 def _rib_sources(section: CrossSection, fan: Fan, settings: MeshSettings) -> SizeSources:

@@ -30,6 +30,15 @@ class SizeSources:
     sizes: FloatArray  # (n_source,), m
 
 
+@dataclass(frozen=True, slots=True)
+class Across:
+    """Elements wanted across a region: `narrow` of them where it is no wider than `limit`."""
+
+    wide: float
+    narrow: float = 0.0
+    limit: float = 0.0  # m
+
+
 NO_SOURCES = SizeSources(np.zeros(0, dtype=np.complex128), np.zeros(0))
 
 
@@ -116,13 +125,13 @@ def _spread(edge: Edge, samples: FloatArray, sizes: FloatArray, angle: float) ->
 
 
 def narrow_places(
-    outline: Outline, across: Sequence[float], spacing: float, doubled: Sequence[int] = ()
+    outline: Outline, across: Sequence[Across | None], spacing: float, doubled: Sequence[int] = ()
 ) -> SizeSources:
     """Sizes wanted where a region is narrow.
 
     Args:
         outline: the welded edges.
-        across: elements wanted across each region; 0 leaves a region out.
+        across: elements wanted across each region; None leaves a region out.
         spacing: distance between samples on the edges in m.
         doubled: edges on lines of symmetry, behind which the region goes on mirrored.
 
@@ -132,9 +141,9 @@ def narrow_places(
     samples = _sample_shares(outline.edges, spacing)
     places = [points_at(e, s) for e, s in zip(outline.edges, samples, strict=True)]
     found = [
-        _narrow_in(outline, places, region, count, doubled)
-        for region, count in enumerate(across)
-        if count > 0.0
+        _narrow_in(outline, places, region, wanted, doubled)
+        for region, wanted in enumerate(across)
+        if wanted is not None
     ]
     return joined(NO_SOURCES, *found)
 
@@ -143,10 +152,10 @@ def _narrow_in(
     outline: Outline,
     places: list[ComplexArray],
     region: int,
-    count: float,
+    across: Across,
     doubled: Sequence[int],
 ) -> SizeSources:
-    """Samples of one region's edges with their distance to the others over `count`."""
+    """Samples of one region's edges with their distance to the others over `across`."""
     edges = sorted({abs(s) - 1 for loop in outline.loops[region] for s in loop})
     points = np.concatenate([places[e] for e in edges])
     edge_of: IntArray = np.repeat(np.arange(len(edges)), [places[e].size for e in edges])
@@ -156,5 +165,6 @@ def _narrow_in(
     away = np.abs(points[:, None] - points[None, :]) * mirror[edge_of][None, :]
     away[touching[edge_of][:, edge_of]] = np.inf
     width = away.min(axis=1)
-    near = np.isfinite(width)
-    return SizeSources(points[near], width[near] / count)
+    points, width = points[np.isfinite(width)], width[np.isfinite(width)]
+    count = np.where(width <= across.limit, across.narrow, across.wide)
+    return SizeSources(points, width / count)
