@@ -14,7 +14,9 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.cautions import cautions
+from lamwright.postprocess.figures import FIGURES, Pictured
 from lamwright.postprocess.operating import (
     best_angle,
     dq_currents,
@@ -123,6 +125,8 @@ class _Run:
         with watch.phase("stress"):
             stress = stress_to_come.result()
         watch.meanwhile("stress", stress.seconds)
+        with watch.phase("pictures"):
+            self._draw(stage, model, waveform_fields, stress)
         fields = (*searched.fields, *waveform_fields)
         waveform = torque_waveform(waveform_fields, self.section.pole_pairs)
         return self._written(stage, model, waveform, fields, stress)
@@ -160,6 +164,28 @@ class _Run:
         tasks = [partial(_chain, chain, _nearest(searched.last, chain[0])) for chain in chains]
         done = self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
         return [field for chain in done for field in chain]
+
+    def _draw(
+        self,
+        stage: Path,
+        model: MagneticModel,
+        waveform_fields: Sequence[FieldSolution],
+        stress: StressWork,
+    ) -> None:
+        """Draw all figures, shared by the crew; the flux is that of the first position."""
+        design = self.machine.design
+        results = Pictured(
+            name=design.name,
+            section=self.section,
+            winding=winding_table(design),
+            sector=model.sector,
+            solution=waveform_fields[0],
+            waveform=torque_waveform(waveform_fields, self.section.pole_pairs),
+            stress=stress.solution,
+            ribs=stress.report,
+        )
+        tasks = [partial(_figure, name, results, stage) for name in FIGURES]
+        self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
 
     def _written(
         self,
@@ -205,6 +231,10 @@ def _chain(
     points: Sequence[OperatingPoint], start: FieldSolution, desk: Desk
 ) -> tuple[FieldSolution, ...]:
     return desk.chain(points, start)
+
+
+def _figure(name: str, results: Pictured, stage: Path, desk: Desk) -> None:
+    desk.figure(name, results, stage)
 
 
 def _nearest(fields: Sequence[FieldSolution], point: OperatingPoint) -> FieldSolution:

@@ -9,7 +9,7 @@ Cost measured: see `tests/postprocess/test_figures.py`.
 from __future__ import annotations
 
 import os
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -49,16 +49,22 @@ class Pictured:
     ribs: RibReport
 
 
-def write_figures(folder: Path, results: Pictured, style: Style | None = None) -> tuple[Path, ...]:
-    """Write all figures of a design into `folder`, each as PNG and SVG.
+def write_figures(
+    folder: Path,
+    results: Pictured,
+    style: Style | None = None,
+    names: Iterable[str] | None = None,
+) -> tuple[Path, ...]:
+    """Write figures of a design into `folder`, each as PNG and SVG.
 
     Args:
         folder: existing; files of the same names are replaced, each by one rename.
         results: what to draw.
         style: sizes and colours; the house's own by default.
+        names: which of `FIGURES`; all by default. Processes may share them out.
 
     Returns:
-        The files written: section, flux, stress and torque, PNG before SVG.
+        The files written, PNG before SVG.
     """
     import matplotlib
 
@@ -68,8 +74,8 @@ def write_figures(folder: Path, results: Pictured, style: Style | None = None) -
     with matplotlib.rc_context():
         matplotlib.rcdefaults()
         matplotlib.rcParams.update(SETTINGS)
-        for name, compose in FIGURES.items():
-            written += _save(compose(results, style), folder / name, style)
+        for name in FIGURES if names is None else names:
+            written += _save(FIGURES[name](results, style), folder / name, style)
     return tuple(written)
 
 
