@@ -17,7 +17,7 @@ from .mesh_sizes import Across, SizeSources, Sizing, joined, narrow_places
 
 POSITIONS = 90  # circle edges per pole that put 30 positions in 60 el. degrees on vertices
 
-RIB_LIMIT = 1.2  # times the widest rib: rotor iron no wider than that is meshed as a rib
+RIB_LIMIT = 1.2  # times the width of the nearest rib: iron no wider is meshed as part of it
 
 
 @dataclass(frozen=True, slots=True)
@@ -151,10 +151,12 @@ def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], .
 def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Across | None]:
     """Elements wanted across each piece."""
     scale = settings.scale
-    limit = RIB_LIMIT * max((rib.width for rib in section.ribs), default=0.0)
+    middles = np.array([0.5 * (r.start + r.end) for r in section.ribs], dtype=np.complex128)
+    limits = np.array([RIB_LIMIT * rib.width for rib in section.ribs])
+    ribs = SizeSources(folded_points(fan, middles), limits)
     iron = settings.across_iron / scale
     by_material: dict[Material, Across | None] = {
-        "rotor_steel": Across(iron, settings.across_rib / scale, limit),
+        "rotor_steel": Across(iron, settings.across_rib / scale, ribs),
         "stator_steel": Across(iron),
         "air": Across(settings.across_air / scale),
         "copper": Across(settings.across_copper / scale),

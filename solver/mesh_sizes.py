@@ -30,16 +30,19 @@ class SizeSources:
     sizes: FloatArray  # (n_source,), m
 
 
-@dataclass(frozen=True, slots=True)
+NO_SOURCES = SizeSources(np.zeros(0, dtype=np.complex128), np.zeros(0))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class Across:
-    """Elements wanted across a region: `narrow` of them where it is no wider than `limit`."""
+    """Elements wanted across a region: `narrow` of them where it is as narrow as a rib.
+
+    That is where it is no wider than the limit of the nearest of `ribs`, points with limits in m.
+    """
 
     wide: float
     narrow: float = 0.0
-    limit: float = 0.0  # m
-
-
-NO_SOURCES = SizeSources(np.zeros(0, dtype=np.complex128), np.zeros(0))
+    ribs: SizeSources = NO_SOURCES
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -166,5 +169,8 @@ def _narrow_in(
     away[touching[edge_of][:, edge_of]] = np.inf
     width = away.min(axis=1)
     points, width = points[np.isfinite(width)], width[np.isfinite(width)]
-    count = np.where(width <= across.limit, across.narrow, across.wide)
+    count = np.full(width.size, across.wide)
+    if across.ribs.sizes.size:
+        nearest = np.argmin(np.abs(points[:, None] - across.ribs.points[None, :]), axis=1)
+        count[width <= across.ribs.sizes[nearest]] = across.narrow
     return SizeSources(points, width / count)
