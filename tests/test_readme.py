@@ -1,0 +1,81 @@
+"""README says what is: its Python runs, its tables list the keys, its two commands can be found."""
+
+import re
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+from pydantic import BaseModel
+
+from lamwright.geometry.design import (
+    BarrierDesign,
+    DutyDesign,
+    LimitsDesign,
+    MachineDesign,
+    RotorDesign,
+    StatorDesign,
+    SteelCard,
+    SteelChoice,
+    WindingDesign,
+)
+
+ROOT = Path(__file__).parent.parent
+README = (ROOT / "README.md").read_text(encoding="utf-8")
+NUMBER = re.compile(r"-?\d+\.\d+")
+
+
+def _block(language: str) -> str:
+    found = re.search(rf"```{language}\n(.*?)```", README, re.DOTALL)
+    assert found
+    return found[1]
+
+
+def test_the_two_commands_are_where_ci_looks_for_them():
+    """`.ci/run` runs the lines that begin so: the main job, then the tests, and no third."""
+    lines = [line for line in README.splitlines() if line.startswith("bash app/ready.sh ")]
+    assert len(lines) == 2
+    assert lines == _block("sh").splitlines()
+    assert "lamwright assess designs/" in lines[0]
+    assert lines[1].split()[2:] == ["pytest"]
+
+
+def test_the_python_lines_print_what_is_printed_there():
+    """Run as a user would, from the checkout. 0.2 %: another version of the mesher may differ."""
+    line = [sys.executable, "-c", _block("python")]
+    run = subprocess.run(line, capture_output=True, text=True, check=True, cwd=ROOT)
+    told = _block("text")
+    assert NUMBER.sub("", run.stdout) == NUMBER.sub("", told)
+    numbers = [[float(number) for number in NUMBER.findall(text)] for text in (run.stdout, told)]
+    assert numbers[0] == pytest.approx(numbers[1], rel=2e-3)
+
+
+@pytest.mark.parametrize(
+    ("header", "model"),
+    [
+        ("`[stator]`", StatorDesign),
+        ("`[winding]`", WindingDesign),
+        ("`[rotor]`", RotorDesign),
+        ("`[[rotor.barrier]]`", BarrierDesign),
+        ("`[steel]`", SteelChoice),
+        ("`[duty]`", DutyDesign),
+        ("`[limits]`", LimitsDesign),
+    ],
+)
+def test_each_key_of_a_design_has_its_row(header: str, model: type[BaseModel]):
+    """Every key in its order, with its default where it has one."""
+    table = README[README.index(f"| {header}") :].split("\n\n", 1)[0]
+    rows = [row.split("|")[1:3] for row in table.splitlines()[2:]]
+    fields = {key: field for key, field in model.model_fields.items() if key != "barrier"}
+    assert [key.strip() for key, _ in rows] == [f"`{key}`" for key in fields]
+    for (_, told), field in zip(rows, fields.values(), strict=True):
+        if isinstance(field.default, int | float):
+            assert f"default {field.default:g}" in told
+
+
+def test_each_table_of_a_design_and_key_of_a_card_is_named():
+    """What is left: the tables themselves, and a steel card's keys in its paragraph."""
+    for key in MachineDesign.model_fields:
+        assert f"`{key}`" in README or f"`[{key}]`" in README
+    for key in SteelCard.model_fields:
+        assert f"`{key}`" in README
