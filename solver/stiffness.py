@@ -17,7 +17,7 @@ from scipy.sparse import csc_matrix
 
 from .elastic import ElasticBody, summed
 from .linear import SparseSolver, analyse
-from .supports import ComplexArray, Supports, scattered
+from .supports import ComplexArray, Supports, leaves_motion, scattered
 from .types import FloatArray, IntArray
 
 
@@ -76,6 +76,8 @@ def supported(body: ElasticBody, supports: Supports) -> SupportedBody:
         ValueError: where the supports leave a rigid motion free.
     """
     mesh = body.mesh
+    if leaves_motion(supports, mesh):
+        raise ValueError("the supports leave a rigid motion of the body free")
     stiffness = element_stiffness(body)
     frame = supports.frame[mesh.elements]  # (n_elem, 6)
     turned = np.flatnonzero(np.any(frame != 1.0, axis=1))
@@ -104,10 +106,7 @@ def _factor(dofs: IntArray, stiffness: FloatArray, n_unknown: int) -> SparseSolv
     lower = csc_matrix((stiffness[kept], (row[kept], column[kept])), shape=(n_unknown, n_unknown))
     lower.sort_indices()
     solver = analyse(lower.indptr.astype(np.int64), lower.indices.astype(np.int64))
-    try:
-        solver.factorise(lower.data)
-    except (ArithmeticError, RuntimeError) as error:
-        raise ValueError("the supports leave a rigid motion of the body free") from error
+    solver.factorise(lower.data)
     return solver
 
 

@@ -18,6 +18,7 @@ ComplexArray = npt.NDArray[np.complex128]
 BoolArray = npt.NDArray[np.bool_]
 
 SIDE_TOL = 1e-9  # m, far above rounding and far below any edge of a mesh
+LOOSE_TOL = 1e-9  # of a unit motion, far above rounding
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -125,6 +126,26 @@ def with_coupled_sides(supports: Supports, mesh: PlanarMesh, sides: CoupledSides
     for component in (0, 1):
         coupled = with_fixed(coupled, axis, component)
     return coupled
+
+
+def leaves_motion(supports: Supports, mesh: PlanarMesh) -> bool:
+    """Whether some rigid motion of the body breaks no support.
+
+    A factorisation alone does not tell: rounding gives a loose body a tiny pivot.
+    """
+    place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1]
+    reach = np.abs(place - place.mean()).max()
+    motions = np.stack([np.ones_like(place), np.full_like(place, 1j), 1j * (place / reach)], axis=1)
+    local = np.conj(supports.frame)[:, None] * motions
+    coupled = (local - local[supports.master])[supports.master != np.arange(len(place))]
+    breaks = [
+        coupled.real,
+        coupled.imag,
+        local.real[supports.fixed[:, 0]],
+        local.imag[supports.fixed[:, 1]],
+    ]
+    broken = np.concatenate(breaks)
+    return bool(np.linalg.matrix_rank(broken, tol=LOOSE_TOL * len(broken) ** 0.5) < 3)
 
 
 def scattered(

@@ -111,6 +111,17 @@ def spun(
 ) -> Field:
     """A sector of `angle` rad with coupled sides, spun and heated (nodes to free strain)."""
     mesh = mesh_regions([region], sizes, turn_sides=angle)
+    return spun_mesh(mesh, angle, speed, material, heat)
+
+
+def spun_mesh(
+    mesh: PlanarMesh,
+    angle: float,
+    speed: float = SPEED,
+    material: ElasticMaterial = STEEL,
+    heat: Callable[[FloatArray], FloatArray] | None = None,
+) -> Field:
+    """The same on a mesh at hand."""
     body = elastic_body(mesh, material)
     sides = coupled_sides(mesh, angle)
     supports = with_coupled_sides(unsupported(mesh), mesh, sides)
@@ -159,6 +170,14 @@ def pulled(
         free = free[~np.isin(free[:, 2], edges_on(mesh, where)[:, 2])]
     moved = displacement(body, force, supports)
     return Field(body, moved, recovered_stress(body, moved, free), supports)
+
+
+def balanced_supports(reach: float) -> list[tuple[Where, complex]]:
+    """Supports of three components at the places +-reach, which balanced loads leave unloaded."""
+    return [
+        (lambda z: np.abs(z + reach) < NODE_TOL, 1),
+        (lambda z: (np.abs(np.abs(z.real) - reach) < NODE_TOL) & (np.abs(z.imag) < NODE_TOL), 1j),
+    ]
 
 
 def with_roller_or_fixed(

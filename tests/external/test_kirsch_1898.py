@@ -18,8 +18,8 @@ from lamwright.solver.types import PlanarMesh
 from tests.plates import (
     MPA,
     Field,
-    Where,
     at_radius,
+    balanced_supports,
     fine_arcs,
     nodes_on,
     of_stress,
@@ -50,15 +50,7 @@ def holed_plate(stress) -> Field:
     """A ring round the hole, 48 elements along its edge, under the tractions of a field."""
     region = Region("plate", "rotor_steel", circle(0j, OUTER), (round_hole(0j, HOLE),))
     mesh = mesh_regions([region], fine_arcs(2 * math.pi * HOLE / 48, 0.8e-3, HOLE))
-    return pulled(mesh, balanced(OUTER), [(at_radius(OUTER), of_stress(stress))])
-
-
-def balanced(reach: float) -> list[tuple[Where, complex]]:
-    """Supports of three components at the places +-reach, which balanced loads leave unloaded."""
-    return [
-        (lambda z: np.abs(z + reach) < 1e-9, 1),
-        (lambda z: np.abs(np.abs(z.real) - reach) < 1e-9, 1j),
-    ]
+    return pulled(mesh, balanced_supports(OUTER), [(at_radius(OUTER), of_stress(stress))])
 
 
 def test_round_hole_under_tension():
@@ -145,5 +137,5 @@ def test_ellipse_across_the_pull():
     def on_outer(place: np.ndarray) -> np.ndarray:
         return np.isin(np.round(place, 12), np.round(z[outer], 12))
 
-    field = pulled(mesh, balanced(reach), [(on_outer, of_stress(stress))])
+    field = pulled(mesh, balanced_supports(reach), [(on_outer, of_stress(stress))])
     assert field.stress[field.node(size * (1 + m))][1] / PULL == pytest.approx(7.0, rel=5e-3)

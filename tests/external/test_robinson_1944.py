@@ -21,7 +21,17 @@ from lamwright.postprocess.ribs import section_stress
 from lamwright.solver.elastic import centrifugal_force, elastic_body, von_mises
 from lamwright.solver.mesh import mesh_regions
 from lamwright.solver.rib_loads import rib_loads
-from tests.plates import MPA, SPEED, STEEL, Field, Where, fine_arcs, pulled, sector, spun
+from tests.plates import (
+    MPA,
+    SPEED,
+    STEEL,
+    Field,
+    balanced_supports,
+    fine_arcs,
+    pulled,
+    sector,
+    spun,
+)
 
 QUARTER, YIELD, RIM = 0.5 * math.pi, 350.0 * MPA, 50e-3
 RPM = 30.0 / math.pi
@@ -38,11 +48,9 @@ def whole_disc() -> tuple[Field, Rib]:
     """A whole spun disc and its section along a diameter; three supports carry nothing."""
     mesh = mesh_regions([Region("disc", "rotor_steel", circle(0j, RIM))], lambda edge: 2.5e-3)
     spin = centrifugal_force(elastic_body(mesh, STEEL), SPEED)
-    held: list[tuple[Where, complex]] = [
-        (lambda z: np.abs(z + RIM) < 1e-9, 1),
-        (lambda z: np.abs(np.abs(z.real) - RIM) < 1e-9, 1j),
-    ]
-    return pulled(mesh, held, [], extra=spin), Rib("cut", "tangential", 1, -1j * RIM, 1j * RIM)
+    return pulled(mesh, balanced_supports(RIM), [], extra=spin), Rib(
+        "cut", "tangential", 1, -1j * RIM, 1j * RIM
+    )
 
 
 @pytest.mark.parametrize(
