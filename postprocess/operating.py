@@ -5,10 +5,11 @@ Linkages from the field hold no end winding; resistance and end-winding leakage 
 (`geometry.winding`), so voltage and power factor are estimates. The winding is taken as
 star-connected: the line voltage is sqrt(3) times the phase voltage. Iron loss is left out.
 
-Search for the angle. In a linear machine T = T_45 sin 2 gamma exactly (checks A7), so
-T / sin 2 gamma, smooth and slowly varying under saturation, is what is interpolated, by the
-polynomial through the nearest angles; its product with sin 2 gamma is maximised. A linear machine
-is met exactly, a saturated one to about 0.01 degree from four angles (tests/postprocess).
+Search for the angle. In a linear machine T = T_45 sin 2 gamma exactly (checks A7). With saturation
+psi_d ~ a i_d / (b + i_d), the usual hyperbola, and little psi_q, sin 2 gamma / T is a straight line
+in cos gamma. So that is what is interpolated, by the polynomial in cos gamma through the best
+angles, and sin 2 gamma over it is maximised: a linear machine is met exactly, saturated ones to
+some hundredths of a degree from four angles, five at most (tests/postprocess).
 """
 
 import cmath
@@ -17,6 +18,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+
 from lamwright.geometry.errors import LamwrightError, NotConverged
 from lamwright.solver.types import FloatArray
 
@@ -31,7 +33,8 @@ class AngleSettings:
     first: tuple[float, float, float] = (46.0 * DEGREE, 55.0 * DEGREE, 64.0 * DEGREE)
     least: float = 5.0 * DEGREE
     most: float = 88.0 * DEGREE
-    reach: float = 12.0 * DEGREE  # how far beyond the tried angles the interpolation is trusted
+    apart: float = 0.05 * DEGREE  # angles nearer to each other than this count once
+    reach: float = 8.0 * DEGREE  # how far beyond the tried angles the interpolation is trusted
     # 0.2 degree off the best angle costs 2 (0.2 deg)^2 = 2.4e-5 of the torque.
     tolerance: float = 0.2 * DEGREE
     most_angles: int = 10
@@ -91,15 +94,19 @@ def best_angle(
 
     Raises:
         NotConverged: the prediction still moves after `most_angles` angles, or rests at a bound.
-        LamwrightError: the torque is not positive: the rotor has no saliency along its d axis.
+        LamwrightError: no motoring torque: the rotor has no saliency along its d axis.
     """
     use = settings or AngleSettings()
     tried = list(use.first)
     torques = [torque_of(gamma) for gamma in tried]
+    if min(torques) <= 0.0:
+        tell = ", ".join(
+            f"{torque:.3g} N m at {gamma / DEGREE:.0f} el deg"
+            for gamma, torque in zip(tried, torques, strict=True)
+        )
+        raise LamwrightError(f"the rotor has no saliency along its d axis: torque {tell}")
     predicted = _predicted(tried, torques, use)
     while len(tried) < use.most_angles:
-        if max(torques) <= 0.0:
-            raise LamwrightError("no motoring torque: the rotor has no saliency along its d axis")
         tried.append(predicted)
         torques.append(torque_of(predicted))
         before, predicted = predicted, _predicted(tried, torques, use)
@@ -112,17 +119,21 @@ def best_angle(
 
 
 def _predicted(tried: Sequence[float], torques: Sequence[float], use: AngleSettings) -> float:
-    """Maximum of sin 2 gamma times the polynomial through the (at most four) best angles."""
-    order = np.argsort(torques)[::-1][:4]
-    gamma, torque = np.array(tried)[order], np.array(torques)[order]
-    centre = float(np.mean(gamma))
-    shape = np.polynomial.Polynomial.fit(
-        gamma - centre, torque / np.sin(2.0 * gamma), len(gamma) - 1
-    )
+    """Maximum of the interpolated torque through the (at most four) best angles."""
+    chosen: list[int] = []
+    for k in np.argsort(torques)[::-1].tolist():
+        # Of two angles side by side the slope between them would be their rounding's.
+        if all(abs(tried[k] - tried[n]) > use.apart for n in chosen):
+            chosen.append(k)
+    gamma = np.array([tried[k] for k in chosen[:4]])
+    inverse = np.sin(2.0 * gamma) / np.array([torques[k] for k in chosen[:4]])
+    law = np.polynomial.Polynomial.fit(np.cos(gamma), inverse, len(gamma) - 1)
     low = max(use.least, float(gamma.min()) - use.reach)
     high = min(use.most, float(gamma.max()) + use.reach)
     grid = np.arange(low, high, 0.01 * DEGREE)
-    return float(grid[np.argmax(np.sin(2.0 * grid) * shape(grid - centre))])
+    inverse_at = law(np.cos(grid))
+    grid, inverse_at = grid[inverse_at > 0.0], inverse_at[inverse_at > 0.0]
+    return float(grid[np.argmax(np.sin(2.0 * grid) / inverse_at)])
 
 
 def saliency_ratio(i_d: float, i_q: float, psi_d: float, psi_q: float) -> float:

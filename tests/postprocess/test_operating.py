@@ -4,6 +4,7 @@ import math
 
 import numpy as np
 import pytest
+
 from lamwright.geometry.errors import LamwrightError, NotConverged
 from lamwright.postprocess.operating import (
     AngleSettings,
@@ -75,26 +76,50 @@ def test_best_angle_of_a_linear_machine_is_45_degrees(xi):
         assert found == pytest.approx(t_45 * math.sin(2.0 * gamma), rel=1e-12)
 
 
-def saturated(gamma: float) -> float:
-    """Torque of an invented machine with psi_d = a tanh(i_d / b), linear q axis."""
+def saturated(gamma: float, knee: float = 4.0, cross: float = 0.0) -> float:
+    """Torque of an invented machine: psi_d = a tanh(i_d / knee) less cross-saturation."""
     i_d, i_q = dq_currents(CURRENT, gamma)
-    return 3.0 * (0.45 * math.tanh(i_d / 4.0) * i_q - L_Q * i_q * i_d)
+    psi_d = 0.45 * math.tanh(i_d / knee) * (1.0 - cross * (i_q / CURRENT) ** 2)
+    return 3.0 * (psi_d * i_q - L_Q * i_q * i_d)
 
 
-def test_best_angle_of_a_saturated_machine():
-    """Against a dense scan (0.001 degree) of the same law; 0.05 is a quarter of the tolerance."""
-    scan = np.radians(np.arange(30.0, 85.0, 0.001))
-    exact = math.degrees(scan[np.argmax([saturated(g) for g in scan])])
-    search = best_angle(saturated)
-    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.05)
-    assert len(search.tried) <= 6
+@pytest.mark.parametrize("cross", [0.0, 0.2])
+@pytest.mark.parametrize("knee", [1.5, 2.5, 4.0, 6.0, 10.0, 30.0])
+def test_best_angle_of_a_saturated_machine(knee, cross):
+    """Against a dense scan (0.01 degree) of the same law, from hardly to deeply saturated.
+
+    The search promises 0.2 degree; five angles at most unless the knee is at 0.15 I.
+    """
+    scan = np.radians(np.arange(30.0, 87.0, 0.01))
+    exact = math.degrees(scan[np.argmax([saturated(g, knee, cross) for g in scan])])
+    search = best_angle(lambda gamma: saturated(gamma, knee, cross))
+    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.2)
+    assert len(search.tried) <= (5 if knee > 2.0 else 6)
+
+
+@pytest.mark.parametrize("knee", [0.5, 2.0, 8.0])
+def test_best_angle_of_a_hyperbola_takes_four_angles(knee):
+    """Of psi_d = a i_d / (knee + i_d) and no psi_q, sin 2 gamma / T is linear in cos gamma."""
+
+    def torque(gamma: float) -> float:
+        i_d, i_q = dq_currents(CURRENT, gamma)
+        return 3.0 * 0.45 * i_d / (knee + i_d) * i_q
+
+    search = best_angle(torque)
+    scan = np.radians(np.arange(30.0, 87.0, 0.01))
+    exact = math.degrees(scan[np.argmax([torque(g) for g in scan])])
+    # The grids of scan and search are 0.01 degree each.
+    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.021)
+    assert len(search.tried) <= 5
 
 
 def test_best_angle_far_from_the_first_angles():
-    """A peak at 25 degrees, outside of what is tried first: the search walks there."""
-    peak = math.radians(25.0)
-    search = best_angle(lambda g: 5.0 - 20.0 * (g - peak) ** 2)
-    assert math.degrees(search.gamma) == pytest.approx(25.0, abs=0.05)
+    """Strong cross-saturation puts the peak below 35 degrees; the first angle tried is 46."""
+    scan = np.radians(np.arange(15.0, 60.0, 0.01))
+    exact = math.degrees(scan[np.argmax([saturated(g, 30.0, 0.25) for g in scan])])
+    assert exact < 35.0
+    search = best_angle(lambda gamma: saturated(gamma, 30.0, 0.25))
+    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.2)
 
 
 def test_no_saliency_is_said():
@@ -112,9 +137,9 @@ def test_search_that_does_not_settle_is_reported():
 
 
 def test_search_does_not_rest_at_a_bound():
-    """A torque that rises up to 90 degrees has its greatest value outside of the range."""
+    """Saturated at a thousandth of the current, it would be above 88 degrees: out of the range."""
     with pytest.raises(NotConverged, match="no current angle of most torque"):
-        best_angle(lambda g: 1.0 + g**2)
+        best_angle(lambda g: saturated(g, knee=0.01))
 
 
 @pytest.mark.parametrize("q", range(1, 7))
