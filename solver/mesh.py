@@ -290,7 +290,10 @@ def _run_gmsh(
         geo.synchronize()
         if inside.sizes.size:
             _add_size_field(inside, growth)
-        gmsh.model.mesh.generate(2)
+        try:
+            gmsh.model.mesh.generate(2)
+        except Exception as fault:  # gmsh raises no narrower kind
+            raise ValueError(f"no mesh between these edges: {fault}") from fault
         tags, coords, _ = gmsh.model.mesh.getNodes()
         found = [gmsh.model.mesh.getElementsByType(2, k + 1)[1] for k in range(len(loops))]
     finally:
