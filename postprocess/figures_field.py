@@ -52,7 +52,7 @@ NO_CURRENT = 0.02  # of the largest ampere-conductors: a side with less is marke
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Part:
+class PolePart:
     """A mesh where it stands in the picture."""
 
     nodes: FloatArray  # (n_node, 2), mm
@@ -82,7 +82,7 @@ def draw_flux(
         style: sizes and colours.
     """
     angle = winding.axis_a + solution.position
-    parts = _parts(section, sector, solution, angle)
+    parts = pole_parts(section, sector, solution, angle)
     top = _round_up(max(float(part.flux_density.max()) for part in parts))
     turn = upright(section)
     place_callouts(ax, pole_silhouette(section), [], style, RULER_FOOT)
@@ -98,9 +98,9 @@ def draw_flux(
     draw_scale(scale_ax, flux_colours(), (0.0, top), "flux density |B| in T", style)
 
 
-def _parts(
+def pole_parts(
     section: CrossSection, sector: SectorMesh, solution: FieldSolution, angle: float
-) -> list[_Part]:
+) -> list[PolePart]:
     """The stator and as many copies of the rotor's pole as the sector shows."""
     pole = math.pi / section.pole_pairs
     turn = upright(section)
@@ -125,11 +125,11 @@ def _complex(nodes: FloatArray) -> ComplexArray:
     return np.asarray(nodes[:, 0] + 1j * nodes[:, 1])
 
 
-def _part(nodes: FloatArray, elements: IntArray, potential: FloatArray, turn: complex) -> _Part:
+def _part(nodes: FloatArray, elements: IntArray, potential: FloatArray, turn: complex) -> PolePart:
     grad, _ = gradients_at(nodes[elements], NODE_PLACES[:3])
     slope = np.einsum("epdi,ei->epd", grad, potential[elements])  # B turned by 90 degrees, T
     at = MM * turn * (_complex(nodes))
-    return _Part(
+    return PolePart(
         nodes=np.stack([at.real, at.imag], axis=1),
         elements=elements,
         potential=potential,
@@ -155,7 +155,7 @@ def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> PathPatch:
     return patch
 
 
-def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: PathPatch) -> None:
+def _draw_density(ax: Axes, parts: Sequence[PolePart], top: float, clip: PathPatch) -> None:
     for part in parts:
         corners = part.nodes[part.elements[:, :3]].reshape(-1, 2)
         mesh = ax.tripcolor(
@@ -174,7 +174,7 @@ def _draw_density(ax: Axes, parts: Sequence[_Part], top: float, clip: PathPatch)
 
 
 def _draw_lines(
-    ax: Axes, parts: Sequence[_Part], section: CrossSection, clip: PathPatch, style: Style
+    ax: Axes, parts: Sequence[PolePart], section: CrossSection, clip: PathPatch, style: Style
 ) -> None:
     from matplotlib.tri import Triangulation
 
@@ -195,7 +195,7 @@ def _draw_lines(
         lines.set_clip_path(clip)
 
 
-def line_step(parts: Sequence[_Part], stack_length: float) -> float:
+def line_step(parts: Sequence[PolePart], stack_length: float) -> float:
     """A round flux in Wb between two flux lines that gives `FEWEST_LINES` or up to 2.5 times."""
     low = min(float(part.potential.min()) for part in parts)
     high = max(float(part.potential.max()) for part in parts)

@@ -188,7 +188,7 @@ def _text_widths(ax: Axes, callouts: Sequence[Callout], style: Style) -> dict[Si
     """Width of the widest label of each column in points."""
     widest: dict[Side, float] = dict.fromkeys(SIDES, 0.0)
     for callout in callouts:
-        ink = ax.text(0, 0, callout.text, fontsize=style.text)
+        ink = ax.text(0, 0, callout.text, fontsize=style.text, fontweight=_weight(callout))
         width = ink.get_window_extent().width / pixels_per_point(ax)
         widest[callout.side] = max(widest[callout.side], width)
         ink.remove()
@@ -313,8 +313,14 @@ def _draw(ax: Axes, callout: Callout, knee: complex, stub: float, style: Style) 
         knee.imag,
         callout.text,
         fontsize=style.text,
+        fontweight=_weight(callout),
         color=colour,
         ha="right" if callout.side == "left" else "left",
         va="center",
         zorder=10,
     )
+
+
+def _weight(callout: Callout) -> str:
+    """An accent is bold too, so that it is one in grey print."""
+    return "bold" if callout.is_accent else "normal"

@@ -82,7 +82,7 @@ def draw_stress(
         f"{RPM * report.speed:.0f} 1/min; peak {mpa(report.peak)}"
         f" \N{PLUS-MINUS SIGN} {100.0 * report.peak_error / report.peak:.1f} %,"
         f" yield strength {mpa(report.yield_strength)}",
-        f"red: deformed outline, displacement times {factor:g}",
+        f"thin red line: deformed outline, displacement times {factor:g}",
     )
     draw_note(ax, notes, style)
     bare(ax)
@@ -100,6 +100,8 @@ def draw_rib(
     style: Style,
 ) -> None:
     """Draw one rib close up: stress, width in mm, where its peak is; equal axes in mm."""
+    from matplotlib.patheffects import Normal, Stroke
+
     turn = upright(section)
     middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
     half = _half_side(row.rib)
@@ -120,6 +122,7 @@ def draw_rib(
         markerfacecolor="none",
         markeredgecolor=style.accent,
         markeredgewidth=1.4,
+        path_effects=[Stroke(linewidth=3.2, foreground=style.paper), Normal()],
         zorder=9,
     )
     ax.set_title(
@@ -240,9 +243,30 @@ def _draw_deformed(
     t = np.linspace(0.0, 1.0, 5)
     shape = np.stack([(1 - t) * (1 - 2 * t), t * (2 * t - 1), 4 * t * (1 - t)])
     at = MM * turn * (place + factor * moved)[edges] @ shape
-    at = np.concatenate([at, np.full((len(at), 1), np.nan)], axis=1).ravel()
-    ax.plot(at.real, at.imag, color=style.accent, linewidth=style.hair, zorder=4)
+    for chain in _chains(edges):
+        line = at[chain].ravel()
+        ax.plot(line.real, line.imag, color=style.accent, linewidth=style.hair, zorder=4)
     return factor
+
+
+def _chains(edges: IntArray) -> list[list[int]]:
+    """Rows of `edges` (n, 3) in runs in which each starts where the one before ends."""
+    row_from = {int(start): row for row, start in enumerate(edges[:, 0])}
+    ends = set(edges[:, 1].tolist())
+    heads = [row for row, start in enumerate(edges[:, 0]) if int(start) not in ends]
+    chains: list[list[int]] = []
+    left = set(range(len(edges)))
+    # Open runs from their heads first; what is left then are loops, to begin anywhere.
+    for head in (*heads, *range(len(edges))):
+        chain: list[int] = []
+        row: int | None = head
+        while row is not None and row in left:
+            left.remove(row)
+            chain.append(row)
+            row = row_from.get(int(edges[row, 1]))
+        if chain:
+            chains.append(chain)
+    return chains
 
 
 def _half_side(rib: Rib) -> float:
