@@ -156,16 +156,16 @@ def _fillet_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Faul
         return []
     if full < least:
         return []  # the thickness is at fault, and is found elsewhere
-    accepted = f"{_mm(full)} (full round)"
-    if largest >= least:
-        accepted = f"{_mm(least)} to {_mm(largest)}, or {accepted}"
-    code, text = "fillet_large", "more than half the thickness"
+    # The full round stands apart from the range, so it is named in the text.
+    code, text = "fillet_large", f"more than half the thickness; {_mm(full)} is a full round"
     if radius < least:
         code, text = "fillet_small", "too small to punch"
     elif radius < full:
-        text = f"leaves a straight end under {pole.least_edge / MM:g} mm beside it"
+        short = f"leaves a straight end under {_mm(pole.least_edge)} mm beside it"
+        text = f"{short}; {_mm(full)} is a full round"
+    remedy = f"accepted {_mm(full)} (full round)" if largest < least else None
     lack = max(least - radius, radius - largest)
-    return [_fault(number, code, ("fillet_mm",), text, lack, f"accepted {accepted}")]
+    return [_fault(number, code, ("fillet_mm",), text, lack, remedy)]
 
 
 def _bore_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
@@ -308,8 +308,6 @@ def _bottom_beyond(mid: MidLine, height: float, radius: float) -> float:
     # The fillet's centre lies on the circle inner + radius, at `height` above the q axis.
     reach = inner + radius
     left = inner * (min(-bottom.sweep, 0.5 * math.pi) - math.asin(min(1.0, height / reach)))
-    if -bottom.sweep > 0.5 * math.pi:  # the rib must pass below the ends that turn back
-        left = min(left, mid.cap_centre.imag - 0.5 * mid.thickness - height)
     return left - max(0.0, height - reach)
 
 

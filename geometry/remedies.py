@@ -4,10 +4,10 @@ A fault says by how much something is missing and which keys may mend it, the mo
 For each key in turn its whole domain is tried at a grid of values, finer where little is missing;
 next to the value as it stands, the run of values that mend the fault without making a new one is
 closed in by bisection and rounded inward. A range is only stated after its rounded ends have been
-tried. A run of values narrower than the finest grid (1/8000 of the domain) may be missed; then
+tried. A run of values narrower than the finest grid (1/2000 of the domain) may be missed; then
 the next key is tried.
 
-Cost: some 90 to 150 checks of one barrier or of the slot per key, 10 to 80 ms.
+Cost: some 90 to 150 checks of one barrier or of the slot per key, about 1 ms each.
 """
 
 import math

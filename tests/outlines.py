@@ -1,4 +1,4 @@
-"""Outlines as polygons, the demo design as read, and the reference rotor B1, for tests."""
+"""Outlines as polygons, a plain machine, and the reference rotor B1, for tests."""
 
 import cmath
 import math
@@ -8,16 +8,84 @@ import numpy as np
 import shapely
 
 from lamwright.geometry.curves import Path
-from lamwright.geometry.design import BarrierDesign, MachineDesign
-from lamwright.geometry.design_file import read_design
+from lamwright.geometry.design import (
+    BarrierDesign,
+    DutyDesign,
+    LimitsDesign,
+    MachineDesign,
+    RotorDesign,
+    StatorDesign,
+    SteelChoice,
+    WindingDesign,
+)
 
 DESIGNS = FilePath(__file__).parents[1] / "designs"
 SAG = 1e-7  # m, how far a polygon's chords may lie from their arcs
 
 
-def demo_design() -> MachineDesign:
-    """The arc demo as its file states it."""
-    return read_design(DESIGNS / "demo_24s4p_arc.toml")
+def plain_design() -> MachineDesign:
+    """An invented machine: 24 slots, 4 poles, three arc barriers without radial ribs.
+
+    Fixed here, so that tests of single numbers do not follow the shipped designs.
+    """
+    return MachineDesign(
+        name="plain",
+        note="invented for the tests",
+        stator=StatorDesign(
+            outer_diameter_mm=140.0,
+            bore_diameter_mm=82.0,
+            stack_length_mm=100.0,
+            slots=24,
+            tooth_width_mm=5.4,
+            slot_depth_mm=15.5,
+            slot_opening_mm=2.4,
+            opening_depth_mm=0.8,
+            wedge_angle_deg=30.0,
+            wedge_depth_mm=1.0,
+            slot_corner_radius_mm=1.5,
+        ),
+        winding=WindingDesign(
+            layers=1,
+            coil_span_slots=6,
+            turns_per_coil=34,
+            conductor_area_mm2=1.4,
+            end_turn_length_mm=110.0,
+        ),
+        rotor=RotorDesign(
+            poles=4,
+            gap_mm=0.4,
+            shaft_diameter_mm=26.0,
+            sheet_thickness_mm=0.5,
+            barrier=(
+                _arc(14.5, thickness=2.6, depth=3.6),
+                _arc(25.0, thickness=3.4, depth=10.2),
+                _arc(36.0, thickness=3.6, depth=18.0),
+            ),
+        ),
+        steel=SteelChoice(rotor_card="steel/demo_050.toml", stator_card="steel/demo_050.toml"),
+        duty=DutyDesign(
+            rated_current_a=12.0,
+            rated_speed_rpm=1500.0,
+            maximum_speed_rpm=6000.0,
+            supply_voltage_v=400.0,
+        ),
+        limits=LimitsDesign(
+            least_torque_nm=9.0,
+            most_ripple_percent=25.0,
+            least_saliency_ratio=3.0,
+            least_yield_margin=1.2,
+        ),
+    )
+
+
+def _arc(end: float, *, thickness: float, depth: float) -> BarrierDesign:
+    return BarrierDesign(
+        shape="arc",
+        end_angle_deg=end,
+        thickness_mm=thickness,
+        depth_mm=depth,
+        tangential_rib_mm=0.6,
+    )
 
 
 def polygon(path: Path, sag: float = SAG) -> shapely.Polygon:
@@ -60,10 +128,10 @@ def b1_barrier() -> BarrierDesign:
 
 
 def b1_design() -> MachineDesign:
-    """The demo's stator at a bore of 80 mm round the reference rotor B1; bore 24 mm, gap 0.5 mm."""
-    demo = demo_design()
-    rotor = demo.rotor.model_copy(
+    """The plain stator at a bore of 80 mm round the reference rotor B1; bore 24 mm, gap 0.5 mm."""
+    plain = plain_design()
+    rotor = plain.rotor.model_copy(
         update={"gap_mm": 0.5, "shaft_diameter_mm": 24.0, "barrier": (b1_barrier(),)}
     )
-    stator = demo.stator.model_copy(update={"bore_diameter_mm": 80.0})
-    return demo.model_copy(update={"rotor": rotor, "stator": stator})
+    stator = plain.stator.model_copy(update={"bore_diameter_mm": 80.0})
+    return plain.model_copy(update={"rotor": rotor, "stator": stator})

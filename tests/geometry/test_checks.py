@@ -14,7 +14,8 @@ from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.remedies import with_value
-from tests.outlines import DESIGNS, demo_design
+from tests.outlines import DESIGNS
+from tests.outlines import plain_design as plain
 from tests.random_designs import drawn_design, random_design
 
 BARRIER_KEYS = (
@@ -41,14 +42,14 @@ def changed(design, **changes):
 
 
 def ribbed(**changes):
-    """The demo with two radial ribs in its innermost barrier."""
+    """The plain machine with two radial ribs in its innermost barrier."""
     ribs = {"radial_ribs": 2, "radial_rib_mm": 0.8, "radial_rib_offset_mm": 4.0}
-    return changed(demo_design(), **{f"b3__{k}": v for k, v in {**ribs, **changes}.items()})
+    return changed(plain(), **{f"b3__{k}": v for k, v in {**ribs, **changes}.items()})
 
 
 def straight(**changes):
-    """The demo with its innermost barrier straight."""
-    return changed(demo_design(), b3__shape="straight", **changes)
+    """The plain machine with its innermost barrier straight."""
+    return changed(plain(), b3__shape="straight", **changes)
 
 
 def suggested(remedy):
@@ -61,45 +62,53 @@ def suggested(remedy):
 
 
 FAULTS = [
-    (changed(demo_design(), b2__depth_mm=5.0), "carrier_thin", "rotor.barrier[2].depth_mm"),
-    (changed(demo_design(), b2__depth_mm=6.4), "carrier_thin", "rotor.barrier[2].depth_mm"),
-    (changed(demo_design(), b2__depth_mm=3.0), "barrier_order", "rotor.barrier[2].depth_mm"),
+    (changed(plain(), b2__depth_mm=5.0), "carrier_thin", "rotor.barrier[2].depth_mm"),
+    (changed(plain(), b2__depth_mm=6.4), "carrier_thin", "rotor.barrier[2].depth_mm"),
+    (changed(plain(), b2__depth_mm=3.0), "barrier_order", "rotor.barrier[2].depth_mm"),
     (
-        changed(demo_design(), b2__end_angle_deg=14.0),
+        changed(plain(), b2__end_angle_deg=14.0),
         "ends_order",
         "rotor.barrier[2].end_angle_deg",
     ),
     (
-        changed(demo_design(), b1__tangential_rib_mm=0.4),
+        changed(plain(), b1__tangential_rib_mm=0.4),
         "tangential_rib_thin",
         "rotor.barrier[1].tangential_rib_mm",
     ),
     (
-        changed(demo_design(), b3__end_angle_deg=43.0),
+        changed(plain(), b3__end_angle_deg=43.0),
         "side_close",
         "rotor.barrier[3].end_angle_deg",
     ),
     (
-        changed(demo_design(), b3__end_angle_deg=50.0),
+        changed(plain(), b3__end_angle_deg=50.0),
         "end_beyond",
         "rotor.barrier[3].end_angle_deg",
     ),
-    (changed(demo_design(), b3__depth_mm=24.0), "bore_close", "rotor.barrier[3].depth_mm"),
+    (changed(plain(), b3__depth_mm=24.0), "bore_close", "rotor.barrier[3].depth_mm"),
     (
-        changed(demo_design(), b1__end_angle_deg=24.0),
+        changed(plain(), b1__end_angle_deg=24.0),
         "barrier_flat",
         "rotor.barrier[1].end_angle_deg",
     ),
-    (changed(demo_design(), b1__thickness_mm=0.3), "barrier_thin", "rotor.barrier[1].thickness_mm"),
-    (changed(demo_design(), b1__end_angle_deg=1.5), "ends_close", "rotor.barrier[1].end_angle_deg"),
-    (changed(demo_design(), b1__end_angle_deg=0.8), "arc_tight", "rotor.barrier[1].thickness_mm"),
     (
-        changed(demo_design(), b3__arm_angle_deg=30.0),
+        changed(plain(), b1__thickness_mm=0.3),
+        "barrier_thin",
+        "rotor.barrier[1].thickness_mm",
+    ),
+    (
+        changed(plain(), b1__end_angle_deg=1.5),
+        "ends_close",
+        "rotor.barrier[1].end_angle_deg",
+    ),
+    (changed(plain(), b1__end_angle_deg=0.8), "arc_tight", "rotor.barrier[1].thickness_mm"),
+    (
+        changed(plain(), b3__arm_angle_deg=30.0),
         "straight_only",
         "rotor.barrier[3].arm_angle_deg",
     ),
     (
-        changed(demo_design(), b3__bend_radius_mm=3.0),
+        changed(plain(), b3__bend_radius_mm=3.0),
         "straight_only",
         "rotor.barrier[3].bend_radius_mm",
     ),
@@ -127,46 +136,68 @@ FAULTS = [
         "radial_rib_slope",
         "rotor.barrier[3].fillet_mm",
     ),
-    (changed(demo_design(), rotor__shaft_diameter_mm=81.0), "ring_thin", "rotor.shaft_diameter_mm"),
-    (changed(demo_design(), rotor__gap_mm=45.0), "ring_thin", "rotor.gap_mm"),
-    (changed(demo_design(), rotor__sheet_thickness_mm=9.0), "scale", "rotor.sheet_thickness_mm"),
-    (changed(demo_design(), stator__tooth_width_mm=0.3), "tooth_thin", "stator.tooth_width_mm"),
-    (changed(demo_design(), stator__tooth_width_mm=10.9), "opening_wide", "stator.tooth_width_mm"),
-    (changed(demo_design(), stator__slot_opening_mm=6.0), "opening_wide", "stator.slot_opening_mm"),
     (
-        changed(demo_design(), stator__slot_opening_mm=0.2),
+        changed(plain(), rotor__shaft_diameter_mm=81.0),
+        "ring_thin",
+        "rotor.shaft_diameter_mm",
+    ),
+    (changed(plain(), rotor__gap_mm=45.0), "ring_thin", "rotor.gap_mm"),
+    (changed(plain(), rotor__sheet_thickness_mm=9.0), "scale", "rotor.sheet_thickness_mm"),
+    (changed(plain(), stator__tooth_width_mm=0.3), "tooth_thin", "stator.tooth_width_mm"),
+    (changed(plain(), stator__tooth_width_mm=10.9), "opening_wide", "stator.tooth_width_mm"),
+    (
+        changed(plain(), stator__slot_opening_mm=6.0),
+        "opening_wide",
+        "stator.slot_opening_mm",
+    ),
+    (
+        changed(
+            plain(),
+            stator__tooth_width_mm=0.5,
+            stator__opening_depth_mm=1.5,
+            stator__slot_opening_mm=10.4,  # leaves 0.15 mm of tooth tip at the bore
+        ),
+        "opening_wide",
+        "stator.slot_opening_mm",
+    ),
+    (
+        changed(plain(), stator__slot_opening_mm=0.2),
         "opening_narrow",
         "stator.slot_opening_mm",
     ),
-    (changed(demo_design(), stator__opening_depth_mm=0.1), "lip_thin", "stator.opening_depth_mm"),
-    (changed(demo_design(), stator__slot_depth_mm=28.9), "yoke_thin", "stator.slot_depth_mm"),
-    (changed(demo_design(), stator__slot_depth_mm=3.0), "slot_shallow", "stator.slot_depth_mm"),
+    (changed(plain(), stator__opening_depth_mm=0.1), "lip_thin", "stator.opening_depth_mm"),
+    (changed(plain(), stator__slot_depth_mm=28.9), "yoke_thin", "stator.slot_depth_mm"),
+    (changed(plain(), stator__slot_depth_mm=3.0), "slot_shallow", "stator.slot_depth_mm"),
     (
-        changed(demo_design(), stator__slot_corner_radius_mm=9.0),
+        changed(plain(), stator__slot_corner_radius_mm=9.0),
         "corner_large",
         "stator.slot_corner_radius_mm",
     ),
     (
-        changed(demo_design(), stator__slot_corner_radius_mm=0.01),
+        changed(plain(), stator__slot_corner_radius_mm=0.01),
         "corner_small",
         "stator.slot_corner_radius_mm",
     ),
     (
-        changed(demo_design(), stator__wedge_depth_mm=0.01, stator__wedge_angle_deg=0.0),
+        changed(plain(), stator__wedge_depth_mm=0.01, stator__wedge_angle_deg=0.0),
         "wedge_thin",
         "stator.wedge_depth_mm",
     ),
-    (changed(demo_design(), winding__turns_per_coil=60), "slot_fill", "winding.turns_per_coil"),
+    (changed(plain(), winding__turns_per_coil=60), "slot_fill", "winding.turns_per_coil"),
     (
-        changed(demo_design(), winding__conductor_area_mm2=90.0),
+        changed(plain(), winding__conductor_area_mm2=90.0),
         "slot_fill",
         "winding.conductor_area_mm2",
     ),
-    (changed(demo_design(), winding__coil_span_slots=5), "winding_span", "winding.coil_span_slots"),
-    (changed(demo_design(), stator__slots=30), "winding_slots", "stator.slots"),
-    (changed(demo_design(), rotor__poles=5), "poles_odd", "rotor.poles"),
     (
-        changed(demo_design(), duty__maximum_speed_rpm=1000.0),
+        changed(plain(), winding__coil_span_slots=5),
+        "winding_span",
+        "winding.coil_span_slots",
+    ),
+    (changed(plain(), stator__slots=30), "winding_slots", "stator.slots"),
+    (changed(plain(), rotor__poles=5), "poles_odd", "rotor.poles"),
+    (
+        changed(plain(), duty__maximum_speed_rpm=1000.0),
         "speed_order",
         "duty.maximum_speed_rpm",
     ),
@@ -192,7 +223,7 @@ def test_a_fault_is_found_on_its_key_and_mended_by_its_remedy(design, code, key)
 
 def test_a_fault_that_hides_others_says_so():
     """With two more faults behind it the range mends the first and says that it is not enough."""
-    design = changed(demo_design(), rotor__gap_mm=45.0, b1__tangential_rib_mm=0.1)
+    design = changed(plain(), rotor__gap_mm=45.0, b1__tangential_rib_mm=0.1)
     (finding,) = check_design(design)
     assert finding.remedy.endswith(", then other values must change too")
     for value in suggested(finding.remedy):
@@ -209,10 +240,10 @@ def test_shipped_designs_have_no_finding(path):
 def test_ranges_are_those_of_the_q_axis():
     """Where only the q axis binds, the range of a depth is a sum of stated values.
 
-    Barrier 2 of the demo lies between barrier 1, 3.6 + 2.6 mm deep, and barrier 3 at 18 mm, with
-    a sheet of 0.5 mm of iron either side of its own 3.4 mm: 6.7 to 14.1.
+    Barrier 2 of the plain machine lies between barrier 1, 3.6 + 2.6 mm deep, and barrier 3 at
+    18 mm, with a sheet of 0.5 mm of iron either side of its own 3.4 mm: 6.7 to 14.1.
     """
-    (finding,) = check_design(changed(demo_design(), b2__depth_mm=5.0))
+    (finding,) = check_design(changed(plain(), b2__depth_mm=5.0))
     assert finding.text == (
         "rotor.barrier[2].depth_mm = 5: barriers 1 and 2 run into each other; accepted 6.7 to 14.1"
     )
@@ -220,16 +251,16 @@ def test_ranges_are_those_of_the_q_axis():
 
 def test_ranges_of_radii_are_known_in_closed_form():
     """The shaft may reach to a sheet from barrier 3: 2 (40.6 - 18 - 3.6 - 0.5) = 37 mm."""
-    (finding,) = check_design(changed(demo_design(), rotor__shaft_diameter_mm=81.0))
+    (finding,) = check_design(changed(plain(), rotor__shaft_diameter_mm=81.0))
     assert finding.remedy == "accepted up to 37"
 
 
 def test_clearance_to_the_d_axis_is_that_of_the_round_end():
-    """Largest end angle of the demo's barrier 3: its round end of 1.8 mm a sheet off the d axis.
+    """Largest end angle of barrier 3: its round end of 1.8 mm stays a sheet off the d axis.
 
     The cap's centre lies r = 38.2 mm from the shaft axis: r sin(45 - e) = 1.8 + 0.5 mm.
     """
-    (finding,) = check_design(changed(demo_design(), b3__end_angle_deg=43.0))
+    (finding,) = check_design(changed(plain(), b3__end_angle_deg=43.0))
     largest = 45.0 - math.degrees(math.asin(2.3 / (40.6 - 0.6 - 1.8)))
     assert suggested(finding.remedy)[1] == pytest.approx(largest, abs=0.01)
     assert suggested(finding.remedy)[1] <= largest
@@ -239,7 +270,10 @@ def test_full_round_is_accepted_up_to_half_the_thickness():
     """A fillet of exactly half the thickness is a full round end, above it nothing fits."""
     assert check_design(ribbed(fillet_mm=1.8, radial_rib_offset_mm=2.5)) == ()
     (finding,) = check_design(ribbed(fillet_mm=1.81, radial_rib_offset_mm=2.5))
-    assert finding.remedy == "accepted 0.25 to 1.775, or 1.8 (full round)"
+    assert finding.text == (
+        "rotor.barrier[3].fillet_mm = 1.81: more than half the thickness; 1.8 is a full round; "
+        "accepted 0.25 to 1.77"
+    )
 
 
 @pytest.mark.parametrize("miss_mm", [-1e-7, 0.0, 1e-7])
@@ -256,7 +290,7 @@ def test_a_limit_met_to_rounding_hides_no_other(miss_mm):
 def test_all_faults_are_found_at_once():
     """Five faults in five tables' keys: five findings in one call."""
     design = changed(
-        demo_design(),
+        plain(),
         b1__tangential_rib_mm=0.3,
         b3__end_angle_deg=43.5,
         stator__slot_opening_mm=6.0,

@@ -15,7 +15,7 @@ from lamwright.geometry.curves import area, reversed_edge
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.remedies import with_value
-from tests.outlines import DESIGNS, b1_design, demo_design, polygon, turns
+from tests.outlines import DESIGNS, b1_design, plain_design, polygon, turns
 from tests.random_designs import drawn_design, random_design
 
 from .test_checks import shaken
@@ -63,8 +63,8 @@ def test_shipped_designs_tile_their_sectors(path):
 
 
 def test_radii_are_those_of_the_design():
-    """Demo: bore 82, gap 0.4, shaft 26, outer diameter 140, stack 100 mm; in m, to rounding."""
-    section = cross_section(demo_design())
+    """Bore 82, gap 0.4, shaft 26, outer diameter 140, stack 100 mm of the file, in m; rounding."""
+    section = cross_section(plain_design())
     assert section.rotor_radius == pytest.approx(0.0406, rel=1e-14)
     assert section.shaft_radius == pytest.approx(0.013, rel=1e-14)
     assert section.stator_bore_radius == pytest.approx(0.041, rel=1e-14)
@@ -76,7 +76,7 @@ def test_radii_are_those_of_the_design():
 
 def test_rotor_and_stator_meet_on_one_circle():
     """The turning circle of both parts and of the section's own property is the same number."""
-    for design in (demo_design(), b1_design()):
+    for design in (plain_design(), b1_design()):
         section = cross_section(design)
         for regions in (section.rotor, section.stator):
             (gap,) = [region for region in regions if region.name.startswith("gap")]
@@ -90,7 +90,7 @@ def _is_on(edge, section):
 
 def test_a_design_that_cannot_be_drawn_raises_all_findings():
     """The error carries each finding and its text one line each."""
-    design = with_value(demo_design(), "rotor.barrier[2].depth_mm", 5.0)
+    design = with_value(plain_design(), "rotor.barrier[2].depth_mm", 5.0)
     design = with_value(design, "stator.slot_opening_mm", 6.0)
     with pytest.raises(GeometryError, match="barriers 1 and 2 run into each other") as caught:
         cross_section(design)

@@ -1,5 +1,7 @@
 """Distances between edges against closed forms and a fine sampling."""
 
+import math
+
 import numpy as np
 import pytest
 
@@ -60,9 +62,21 @@ def test_distances_known_in_closed_form(first, second, expected):
 
 
 def test_distance_of_chains_is_the_least_of_their_edges():
-    """The bound that spares pairs never spares the nearest one: 60 chains of 3 random edges."""
+    """The bound that spares pairs never spares the nearest one: 200 chains of 4 random edges.
+
+    Edges of different lengths, so that the pair with the least bound often is not the nearest.
+    """
     rng = np.random.default_rng(23)
-    for _ in range(60):
-        first, second = ([random_edge(rng, 2.0) for _ in range(3)] for _ in range(2))
+    for _ in range(200):
+        first, second = (scattered(rng, 4) for _ in range(2))
         least = min(distance([a], [b]) for a in first for b in second)
         assert distance(first, second) == pytest.approx(least, abs=1e-12)
+
+
+def scattered(rng, count):
+    edges = []
+    for _ in range(count):
+        edge, place = random_edge(rng, 2.0), complex(*rng.normal(size=2) * 3.0)
+        scale = math.exp(rng.normal())
+        edges.append(Edge(place + scale * edge.start, place + scale * edge.end, edge.bulge))
+    return edges

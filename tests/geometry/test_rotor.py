@@ -9,7 +9,7 @@ import pytest
 from lamwright.geometry.curves import area, perimeter, reversed_edge
 from lamwright.geometry.design import BarrierDesign
 from lamwright.geometry.rotor import rotor_frame, rotor_regions
-from tests.outlines import b1_design, demo_design, polygon
+from tests.outlines import b1_design, plain_design, polygon
 
 MM = 1e-3
 RIBBED = BarrierDesign(
@@ -35,7 +35,7 @@ def with_barriers(*barriers):
 
 DESIGNS = {
     "b1": b1_design(),
-    "demo": demo_design(),
+    "plain": plain_design(),
     "two ribs": with_barriers(RIBBED),
     "one rib, full round": with_barriers(
         RIBBED.model_copy(update={"radial_ribs": 1, "fillet_mm": 2.5})
