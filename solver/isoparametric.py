@@ -61,8 +61,8 @@ def points_at(mesh: PlanarMesh, places: FloatArray) -> FloatArray:
 def gradients_at(corners: FloatArray, places: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Physical gradients of the shape functions and the determinant of the map.
 
-    In memory the elements come last, which makes every product a run of long loops: 2 ms for
-    2 000 elements at six places where batched small matrix products take 8 ms (measured).
+    In memory the elements come last, which makes every product a run of long loops: 1.4 ms for
+    2 000 elements at six places, a fifth of what batched small matrix products take (measured).
 
     Args:
         corners: (n_elem, 6, 2), positions of the elements' nodes in m.

@@ -7,7 +7,7 @@ coupled sides are halved together. An element is cut in two, three or four by it
 and blue refinement, from memory.
 1. Deviation: new middle nodes are placed by the parent's curved map, and on the true arc where
    the parent's edge lies on one, so that the outline gets more exact with the mesh.
-Cost measured: 4 ms for 3 000 elements.
+Cost measured: 8 ms for 2 000 elements, one in ten of them marked.
 Axes: n_node, n_elem, n_circle circles that arcs of the outline lie on.
 """
 

@@ -22,9 +22,10 @@ from lamwright.geometry.section import Rib
 from .elastic import ElasticBody, inner_stress
 from .isoparametric import shape, six_points
 from .locate import locate
-from .supports import BoolArray
+from .supports import BoolArray, ComplexArray
 from .types import FloatArray, IntArray, PlanarMesh
 
+RING: IntArray = np.array([0, 3, 1, 4, 2, 5])  # an element's nodes round its edge
 SEEDS = 9  # points on the line whose elements start the search for all that it crosses
 
 
@@ -78,19 +79,38 @@ def _rib_load(
     fy += np.einsum("eq,eqi->ei", weight * s[..., 1], by_y)
     inner = fx + 1j * fy
     load = -np.array([np.sum(q * inner), np.sum(q * _moment(arm, inner))])
-    # Centrifugal force at the quadrature points, and how far w is from the rigid step there.
+    # Centrifugal force at q, less that of all that lies behind the line.
     shapes = shape(six_points()[0])
-    at = arm @ shapes.T  # (n_x, n_qp), from the middle
-    pull = body.density[x, None] * speed**2 * (at + middle) * weight  # N/m
-    step = ((at * np.conj(normal)).real < 0.0).astype(np.float64)
-    load[0] += np.sum((q @ shapes.T - step) * pull)
-    load[1] += np.sum(_moment((q * arm) @ shapes.T - step * at, pull))
+    pull = speed**2 * body.density[x, None] * (arm @ shapes.T + middle) * weight  # N/m
+    load[0] += np.sum((q @ shapes.T) * pull)
+    load[1] += np.sum(_moment((q * arm) @ shapes.T, pull))
+    for k in range(len(x)):
+        area, first = _behind(arm[k, RING], normal)
+        density = speed**2 * body.density[x[k]]
+        load[0] -= density * (first + middle * area)
+        load[1] -= density * _moment(first, middle)
     return np.array([load[0].real, load[0].imag, load[1].real])
 
 
-def _moment(arm: np.ndarray, force: np.ndarray) -> FloatArray:
+def _behind(polygon: ComplexArray, normal: complex) -> tuple[float, complex]:
+    """Area in m^2 and first moment in m^3 of the part of a polygon (n,) behind a line through 0."""
+    level = (polygon * np.conj(normal)).real
+    kept: list[complex] = []
+    for k, (here, before) in enumerate(zip(level, np.roll(level, 1), strict=True)):
+        if (here < 0.0) != (before < 0.0):
+            share = before / (before - here)
+            kept.append(complex(polygon[k - 1] + share * (polygon[k] - polygon[k - 1])))
+        if here < 0.0:
+            kept.append(complex(polygon[k]))
+    z = np.array(kept, dtype=np.complex128)
+    after = np.roll(z, -1)
+    cross = (np.conj(z) * after).imag
+    return 0.5 * float(np.sum(cross)), complex(np.sum((z + after) * cross)) / 6.0
+
+
+def _moment(arm: ComplexArray | complex, force: ComplexArray | complex) -> FloatArray:
     """Moments of forces at arms, all complex."""
-    return np.asarray((np.conj(arm) * force).imag)
+    return np.asarray(np.imag(np.conj(arm) * force))
 
 
 def _crossed(mesh: PlanarMesh, seeds: IntArray, behind: BoolArray) -> IntArray:

@@ -2,11 +2,11 @@
 
     K_ij = int B_i^T D B_j dA  per metre of thickness
 
-The element matrices are batched matrix products; the test holds them to scikit-fem's plain form.
-Elements that touch a turned frame (a coupled side, a roller) are turned into it, and all unknowns
-that a support takes away are left out, so the matrix stays symmetric positive definite.
-Cost measured: 3 000 elements, 13 000 unknowns: element matrices 9 ms, lower triangle 35 ms,
-CHOLMOD 40 ms.
+The element matrices are sums over long rows of elements; a test holds them to scikit-fem's plain
+form. Elements that touch a turned frame (a coupled side, a roller) are turned into it, and all
+unknowns that a support takes away are left out, so the matrix stays symmetric positive definite.
+Cost measured, one core, 2 054 elements, 8 772 unknowns: element matrices 2.4 ms, lower triangle
+14 ms, CHOLMOD's analysis 8 ms and factor 8 ms, each solution 1.2 ms.
 Axes: n_node, n_elem, n_unknown, 12 displacements of an element (x and y of each node in turn).
 """
 

@@ -7,9 +7,9 @@ K w = dJ/du shows which elements matter: by Cauchy and Schwarz
     |J(u) - J(u_h)| <= sum_e |u - u_h|_e |w - w_h|_e,
 
 both energy norms estimated by recovered minus element stress. Source: Becker & Rannacher, Acta
-Numerica 10 (2001), from memory. The sum ignores signs, so it errs on the safe side: measured at
-a rotor with arc barriers 2 to 30 times the true error. One solve per zone with the factor at
-hand: 1 ms for 5 000 unknowns.
+Numerica 10 (2001), from memory. The sum ignores signs, so it errs on the safe side: measured on
+the reference rotor, 3.8 % for a true 1.0 %, 0.39 % for 0.06 %. A dual costs one solution with the
+factor at hand and one recovery: 6 ms for 9 000 unknowns.
 Axes: n_node, n_elem, n_zone zones.
 """
 

@@ -12,6 +12,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from lamwright.geometry.curves import Edge, Path, arc, circle, line, reversed_edge, reversed_path
+from lamwright.geometry.design import MagnetisationCurve, Sourced, SteelCard
 from lamwright.geometry.section import Region
 from lamwright.solver.elastic import (
     ElasticBody,
@@ -40,6 +41,26 @@ MPA = 1e6
 STEEL = ElasticMaterial(youngs_modulus=210e9, poissons_ratio=0.3, density=7650.0)
 SPEED = 18_000.0 * math.pi / 30.0  # rad/s
 NODE_TOL = 1e-9  # m, of a place that is a node
+
+
+def steel_card() -> SteelCard:
+    """The same steel as a card; the rest of it invented."""
+
+    def sourced(value: float) -> Sourced:
+        return Sourced(value=value, source="check values, group C")
+
+    return SteelCard(
+        name="check values",
+        density_kg_per_m3=sourced(STEEL.density),
+        youngs_modulus_gpa=sourced(1e-9 * STEEL.youngs_modulus),
+        poissons_ratio=sourced(STEEL.poissons_ratio),
+        yield_strength_mpa=sourced(350.0),
+        tensile_strength_mpa=sourced(480.0),
+        magnetisation=MagnetisationCurve(
+            b_t=(0.5, 1.0, 1.5), h_a_per_m=(80.0, 150.0, 1500.0), source="invented"
+        ),
+    )
+
 
 Where = Callable[[np.ndarray], np.ndarray]  # places -> truth
 Sizes = Callable[[Edge], float]

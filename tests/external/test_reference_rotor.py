@@ -12,26 +12,23 @@ import numpy as np
 import pytest
 
 from lamwright.geometry.cross_section import cross_section
-from lamwright.geometry.design_file import read_machine
 from lamwright.geometry.section import CrossSection
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.locate import values_at
 from lamwright.solver.rotor_stress import rotor_stress
 from lamwright.solver.stress_recovery import turned_stress
 from lamwright.solver.types import StressSolution
-from tests.outlines import DESIGNS, b1_design
-from tests.plates import MPA, SPEED
+from tests.outlines import b1_design
+from tests.plates import MPA, SPEED, steel_card
 
 Solved = tuple[CrossSection, StressSolution, RibReport]
 
 
 @pytest.fixture(scope="module")
 def solved() -> Solved:
-    """B1 at 18 000 rpm with the tool's own settings; the demo card has C10's elastic data."""
+    """B1 at 18 000 rpm with the tool's own settings."""
     section = cross_section(b1_design())
-    card = read_machine(DESIGNS / "demo_24s4p_arc.toml").rotor_steel
-    assert (card.youngs_modulus_gpa.value, card.poissons_ratio.value) == (210.0, 0.3)
-    assert card.density_kg_per_m3.value == 7650.0
+    card = steel_card()
     solution = rotor_stress(section, card, SPEED)
     return section, solution, rib_report(solution, section, 350.0 * MPA)
 
