@@ -22,28 +22,34 @@ RIB_LIMIT = 1.2  # times the width of the nearest rib: iron no wider is meshed a
 
 @dataclass(frozen=True, slots=True)
 class MeshSettings:
-    """How fine one pole is meshed; lengths relative, so that a machine may have any size."""
+    """How fine one pole is meshed; lengths relative, so that a machine may have any size.
+
+    Measured at rated current on three demo designs against scale 0.4, worst of four positions:
+    torque within 0.10 %, linkages within 0.02 %, with 7 400 to 10 900 triangles. The percentages
+    below are errors of the torque, worst position of the worst of the three.
+    """
 
     scale: float = 1.0  # all sizes; 0.5 = twice as fine
     # On the turning circle.
-    circle_step: float = 0.9  # side over the air gap
-    least_circle_edges: int = 90  # per pole
-    gap_layers: int = 2  # of elements on each side of the circle, at the least
+    circle_step: float = 0.9  # side over the air gap; 1.8: 0.50 %
+    least_circle_edges: int = 90  # per pole: 30 positions over 60 el. degrees are whole steps
+    gap_layers: int = 2  # of elements on each side of the circle, at the least; 1: 0.14 %
     # Magnetic field.
-    across_rib: float = 4.0  # elements across the thinnest place of a rib
+    across_rib: float = 4.0  # elements across a rib; 2: no other error, 5 to 12 % fewer triangles
+    # On the demo with 24 slots the next four changed the torque by less than 0.02 % from twice as
+    # fine (4, 2.5, 2, 0.04), at a third of the triangles.
     across_iron: float = 1.5  # elements across flux carriers, teeth and tooth tips
     across_air: float = 1.0  # elements across a barrier
     across_copper: float = 1.0  # elements across a slot: a quiet field
     coarsest: float = 0.08  # largest side over pole pitch (arc of the turning circle)
-    corner: float = 0.25  # side at the corners of slot mouths over the air gap
-    growth: float = 0.7  # change of side per distance
+    corner: float = 0.25  # side at the corners of slot mouths over the air gap; 0.5: 0.20 %
+    growth: float = 0.7  # change of side per distance; 0.35: same error within 0.01 %
     step_angle: float = math.pi / 6.0  # most that one step may turn along an arc
-    # Stress in the lamination; across_rib and scale hold too.
+    # Stress in the lamination (scale and across_rib hold too): where its adaptive loop begins.
     lamination_across: float = 4.0
     lamination_coarsest: float = 0.04
     lamination_growth: float = 0.35
     lamination_step_angle: float = math.pi / 6.0  # times scale
-    algorithm: int = 6  # gmsh's number of the 2D method
 
 
 def circle_edges(section: CrossSection, settings: MeshSettings) -> int:
