@@ -1,10 +1,12 @@
 """The commands: each parses, calls one function, prints its result. No physics here.
 
 Heavy libraries are imported inside the commands, so that `--help` and `outline` stay quick.
-Exit codes: 0 every limit holds, 1 a limit is missed, 2 bad input, 3 not converged, 130 interrupted.
+Exit codes: 0 every limit holds, 1 a limit is missed, 2 bad input, 3 not converged, 70 a fault of
+the program, 130 interrupted.
 """
 
 import os
+import traceback
 from pathlib import Path
 from typing import NoReturn
 
@@ -14,6 +16,7 @@ from lamwright.geometry.errors import LamwrightError
 
 from .pool import SINGLE_THREADED
 
+FAULT = 70  # "internal software error" of the usual list of exit codes
 INTERRUPTED = 130  # as a shell reports a process ended by the interrupt key
 
 
@@ -29,9 +32,16 @@ class _Front(click.Group):
         except BrokenPipeError:
             raise  # the reader of the output has gone: click ends quietly
         except OSError as error:
-            self._end(ctx, f"{error.filename or 'file'}: {error.strerror or error}".lower(), 2)
+            reason = (error.strerror or str(error)).lower()
+            self._end(ctx, f"{error.filename or 'file'}: {reason}", 2)
         except KeyboardInterrupt:
             self._end(ctx, "interrupted, nothing was written", INTERRUPTED)
+        except (click.exceptions.Exit, click.Abort, click.ClickException):
+            raise
+        except Exception:
+            # Python's own code for it would be 1: a limit missed.
+            traceback.print_exc()
+            self._end(ctx, "a fault of the program: please report it with the design", FAULT)
 
     def _end(self, ctx: click.Context, text: str, code: int) -> NoReturn:
         click.echo(text, err=True)

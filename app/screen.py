@@ -5,11 +5,13 @@ Progress goes to stderr, results to stdout. Without a terminal the bar becomes o
 
 import math
 import sys
+import textwrap
 from collections.abc import Iterator
 from contextlib import contextmanager
 
 import click
 from rich.console import Console
+from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
@@ -68,9 +70,9 @@ def print_verdict(verdict: Verdict, folder: str) -> None:
     console.print(_verdict_table(verdict))
     console.print(_verdict_line(verdict))
     for caution in verdict.cautions:
-        console.print(Text(f"- {caution}", style="dim"))
-    console.print(Text(f"~ estimate   files in {folder}", style="dim"))
-    console.print(_times(verdict))
+        _print_wrapped(console, f"- {caution}")
+    _print_wrapped(console, _times(verdict))
+    console.print(f"[dim]~ estimate by formula; files in[/dim] {escape(folder)}", soft_wrap=True)
 
 
 def print_outline(report: OutlineReport) -> None:
@@ -86,7 +88,7 @@ def print_outline(report: OutlineReport) -> None:
         table.add_row(label, f"{', '.join(values)} mm")
     console = Console(highlight=False)
     console.print(table)
-    console.print(f"punch outline: {report.dxf}", soft_wrap=True)
+    console.print(f"punch outline: {escape(str(report.dxf))}", soft_wrap=True)
 
 
 def number(value: float) -> str:
@@ -139,6 +141,11 @@ def _verdict_line(verdict: Verdict) -> Text:
     return Text(f"fails: {', '.join(missed)}", "bold red")
 
 
-def _times(verdict: Verdict) -> Text:
+def _times(verdict: Verdict) -> str:
     parts = [f"{time.phase} {time.seconds:.1f}" for time in verdict.times]
-    return Text(f"seconds: {', '.join(parts)}", style="dim")
+    return f"where the time goes, s: {', '.join(parts)}"
+
+
+def _print_wrapped(console: Console, text: str) -> None:
+    lines = textwrap.wrap(text, console.width, subsequent_indent="  ", break_on_hyphens=False)
+    console.print(Text("\n".join(lines), style="dim"))

@@ -16,6 +16,7 @@ import broken_designs
 from lamwright.app import run
 from lamwright.app.cli import main
 from lamwright.app.point import read_machine, solve
+from lamwright.geometry.design_file import read_design
 from lamwright.geometry.errors import NotConverged
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
@@ -25,6 +26,7 @@ COMMANDS = {
     "point": ("--i-d", "8", "--i-q", "4", "--angle", "2.5"),
 }
 POINT = ("point", str(DEMO), *COMMANDS["point"])
+BROKEN = [*broken_designs.READER, *broken_designs.SHAPES]
 TIMEOUT = 120.0  # s
 
 
@@ -44,7 +46,7 @@ def python(code, *args):
 
 
 @pytest.mark.parametrize("name", COMMANDS)
-@pytest.mark.parametrize("broken", broken_designs.READER, ids=lambda broken: broken.name)
+@pytest.mark.parametrize("broken", BROKEN, ids=lambda broken: broken.name)
 def test_broken_design_ends_with_2_and_one_clear_line_a_fault(broken, name, tmp_path):
     """Whatever is wrong with the file: exit 2, its place and fault on stderr, nothing else."""
     path = broken.write(tmp_path)
@@ -120,6 +122,31 @@ def test_failed_iteration_ends_with_3(tmp_path, monkeypatch):
     assert result.stderr == "residual 1e-2 after 60 steps\n"
 
 
+def test_a_full_disk_is_told_in_one_line(tmp_path, monkeypatch):
+    """An error of the system names the file as written and the reason."""
+
+    def fail(*_):
+        raise OSError(28, "No space left on device", "Results/torque.csv")
+
+    monkeypatch.setattr(run, "assess", fail)
+    result = command("assess", DEMO, tmp_path)
+    assert result.exit_code == 2
+    assert result.stderr == "Results/torque.csv: no space left on device\n"
+
+
+def test_a_fault_of_the_program_is_not_a_missed_limit(tmp_path, monkeypatch):
+    """An error that nobody expected keeps its traceback and ends with 70, not with 1."""
+
+    def fail(*_):
+        raise ZeroDivisionError("division by zero")
+
+    monkeypatch.setattr(run, "assess", fail)
+    result = command("assess", DEMO, tmp_path)
+    assert result.exit_code == 70
+    assert "ZeroDivisionError: division by zero" in result.stderr
+    assert result.stderr.endswith("a fault of the program: please report it with the design\n")
+
+
 def test_interrupt_key_ends_with_130_and_one_line(tmp_path):
     """Pressed in the middle of the work: the group gets the signal, as from a terminal.
 
@@ -178,7 +205,9 @@ def test_outline_reads_back_as_analysed(tmp_path):
     assert record["dxf_area_difference_relative"] < 1e-6
     assert record["dxf_perimeter_difference_relative"] < 1e-6
     assert record["dxf_vertex_difference_um"] < 1.0
-    assert [rib["width_mm"] for rib in record["ribs"]] == pytest.approx([0.6] * 6)
+    for rib in record["ribs"]:
+        barrier = read_design(DEMO).rotor.barrier[rib["barrier"] - 1]
+        assert rib["width_mm"] == pytest.approx(barrier.tangential_rib_mm, abs=1e-6)
 
 
 @pytest.fixture(scope="module")
