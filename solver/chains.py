@@ -1,8 +1,10 @@
 """Operating points in a row, each started from the ones before.
 
-The rotor's part of a solution is carried with the rotor. Where three points lie evenly or unevenly
-on one straight line in (i_d, i_q, position), the start is the straight line through the last two
-solutions. Chains are independent of one another: give each worker its own.
+The rotor's part of a solution is carried with the rotor. Where three points lie on one straight
+line in (i_d, i_q, position) the last two solutions are extrapolated: fully along a line of
+currents (44 instead of 48 steps for 12 points), by half where the rotor turns, as the teeth make
+the field waver (steps a point at 0.5 and 1 degree: none 3.2, 4.5; half 3.0, 4.1; full 3.3, 5.6,
+measured on 24 slots). Chains are independent of one another: give each worker its own.
 """
 
 from collections.abc import Callable, Sequence
@@ -15,6 +17,7 @@ from .types import FieldSolution, FloatArray
 
 ON_LINE_TOL = 1e-6  # of the step between points
 LONGEST_REACH = 2.0  # times the last step; farther out the straight line is no better
+TURNING_SHARE = 0.5  # of the extrapolation where the rotor turns, see above
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,14 +74,16 @@ def _start(
 
 
 def _reach(first: FloatArray, last: FloatArray, point: FloatArray) -> float:
-    """How many of the last steps ahead the point lies on the same line; 0 if it does not."""
+    """By how many of the last steps to extrapolate; 0 off the line."""
     step, ahead = last - first, point - last
     length = float(step @ step)
     if length == 0.0:
         return 0.0
     reach = float(ahead @ step) / length
     is_on_line = float(np.abs(ahead - reach * step).max()) <= ON_LINE_TOL * float(length**0.5)
-    return reach if is_on_line and 0.0 < reach <= LONGEST_REACH else 0.0
+    if not is_on_line or not 0.0 < reach <= LONGEST_REACH:
+        return 0.0
+    return reach if step[2] == 0.0 else TURNING_SHARE * reach
 
 
 def _vector(point: OperatingPoint) -> FloatArray:

@@ -20,17 +20,19 @@ from .types import FloatArray, NewtonReport
 
 State = TypeVar("State")
 MAX_TRIALS = 12  # of one line search; the worst seen is 5
-LONGEST_STEP = 4.0  # a step may be stretched where the energy turns softer along it
 
 
 @dataclass(frozen=True, slots=True)
 class NewtonSettings:
     """When to stop, and how exact the line search is."""
 
-    # Residual over the sources' norm. At 1e-6 the torque is within 2e-6 of the limit (measured).
-    tolerance: float = 1e-6
+    # Residual over the sources' norm. Convergence is quadratic by then: at 1e-4 torque and
+    # linkages are within 1e-6 of their limits, at 1e-3 within 1.3e-5 (measured, 28 points).
+    tolerance: float = 1e-4
     max_steps: int = 60
-    slope_share: float = 0.8  # of the first slope that a step may leave
+    # Share of the first slope that a step may leave. From zero to 5 x rated on three designs
+    # 0.3, 0.5, 0.8, 0.95 take 10.4, 10.4, 10.8, 14.1 steps in the mean.
+    slope_share: float = 0.5
 
 
 class Energy(Protocol[State]):
@@ -87,27 +89,31 @@ def minimise(
 def _search(
     energy: Energy[State], point: _Point[State], direction: FloatArray, slope_share: float
 ) -> _Point[State]:
-    """The point along `direction` where the energy's slope is small enough."""
+    """The point along `direction` where the energy's slope has fallen enough.
+
+    The whole step is taken where the energy still falls at its end. Else the slope's zero lies
+    between `low` and `high`.
+    """
     slope_0 = float(point.residual @ direction)
-    low, low_slope = 0.0, slope_0
-    high, high_slope = 0.0, 0.0
-    step = 1.0
-    trial = point
+    low, low_slope, high, high_slope = 0.0, slope_0, 0.0, 0.0
+    step, was_high = 1.0, False
     for _ in range(MAX_TRIALS):
         a = point.a + step * direction
         trial = _Point(a, *energy.residual(a))
         slope = float(trial.residual @ direction)
-        if abs(slope) <= slope_share * abs(slope_0):
+        if abs(slope) <= slope_share * abs(slope_0) or (step == 1.0 and slope <= 0.0):
             break
-        if slope > 0.0:
-            low_slope = 0.5 * low_slope if high_slope > 0.0 else low_slope
+        is_high = slope > 0.0
+        if is_high:
             high, high_slope = step, slope
-        elif high_slope == 0.0 and step >= LONGEST_STEP:
-            break
+            low_slope *= (
+                0.5 if was_high else 1.0
+            )  # the Illinois form: an end that stays counts half
         else:
-            high_slope = 0.5 * high_slope if low > 0.0 else high_slope
             low, low_slope = step, slope
-        step = 2.0 * step if high_slope == 0.0 else _zero(low, low_slope, high, high_slope)
+            high_slope *= 1.0 if was_high else 0.5
+        was_high = is_high
+        step = _zero(low, low_slope, high, high_slope)
     return trial
 
 
