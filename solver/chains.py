@@ -33,6 +33,7 @@ def solve_chain(
     model: MagneticModel,
     points: Sequence[OperatingPoint],
     on_done: Callable[[int, FieldSolution], None] | None = None,
+    start: FieldSolution | None = None,
 ) -> tuple[FieldSolution, ...]:
     """Fields of all points, in their order.
 
@@ -40,14 +41,15 @@ def solve_chain(
         model: the machine.
         points: neighbours should differ little; order them so.
         on_done: called with the index and the solution of every point as it is done.
+        start: a solution near the first point; without one the chain begins from zero.
 
     Raises:
         NotConverged: when Newton's iteration fails at a point.
     """
     solutions: list[FieldSolution] = []
     for k, point in enumerate(points):
-        start = _start(solutions, points[:k], point)
-        solution = solve_point(model, point.i_d, point.i_q, point.position, start)
+        near = _start(solutions, points[:k], point) if solutions else start
+        solution = solve_point(model, point.i_d, point.i_q, point.position, near)
         solutions.append(solution)
         if on_done is not None:
             on_done(k, solution)
@@ -56,9 +58,7 @@ def solve_chain(
 
 def _start(
     solutions: Sequence[FieldSolution], before: Sequence[OperatingPoint], point: OperatingPoint
-) -> FieldSolution | None:
-    if not solutions:
-        return None
+) -> FieldSolution:
     last = solutions[-1]
     if len(solutions) == 1:
         return last

@@ -106,9 +106,7 @@ def _search(
         is_high = slope > 0.0
         if is_high:
             high, high_slope = step, slope
-            low_slope *= (
-                0.5 if was_high else 1.0
-            )  # the Illinois form: an end that stays counts half
+            low_slope *= 0.5 if was_high else 1.0  # Illinois: an end that stays counts half
         else:
             low, low_slope = step, slope
             high_slope *= 1.0 if was_high else 0.5
