@@ -104,7 +104,7 @@ def outline(design: Path, out: Path) -> None:
 )
 def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
     """One field solution of DESIGN at one rotor position, as JSON."""
-    from lamwright.postprocess.tables import json_text
+    from lamwright.postprocess.files import json_text
 
     from .point import point as run
 

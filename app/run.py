@@ -17,6 +17,13 @@ from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.cautions import cautions
 from lamwright.postprocess.figures import FIGURES, Pictured
+from lamwright.postprocess.files import (
+    VERDICT_FILE,
+    json_text,
+    prepared_folder,
+    staged,
+    write_text,
+)
 from lamwright.postprocess.operating import (
     best_angle,
     dq_currents,
@@ -29,17 +36,7 @@ from lamwright.postprocess.summary import (
     stress_figures,
     terminal_figures,
 )
-from lamwright.postprocess.tables import (
-    VERDICT_FILE,
-    json_text,
-    prepared_folder,
-    ribs_csv,
-    spectrum_csv,
-    staged,
-    verdict_record,
-    waveform_csv,
-    write_text,
-)
+from lamwright.postprocess.tables import ribs_csv, spectrum_csv, verdict_record, waveform_csv
 from lamwright.postprocess.torque import (
     TorqueWaveform,
     spectrum,

@@ -15,7 +15,8 @@ from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
-from lamwright.postprocess.verdict import Figure, Outcome, Verdict, all_figures, figures_of
+from lamwright.postprocess.quantities import Figure, figures_of
+from lamwright.postprocess.verdict import Outcome, Verdict, all_figures
 
 from .outline import OutlineReport
 from .progress import Progress

@@ -1,71 +1,43 @@
 """The verdict: every figure of one design with its unit, the limits, and what to be wary of.
 
-A figure is declared once, as a field with its key, label, unit and factor from SI; tables, screen
-and report read them there. Keys end in the unit.
+The figures stand in groups by what they are of; see `quantities` for how a figure is declared.
 """
 
 import math
-from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, field, fields
+from dataclasses import dataclass, field
 
 from lamwright.geometry.design import LimitsDesign
 
+from .quantities import Figure, OutlineFigures, figures_of, shown_as, shown_estimate
+
 RPM = 30.0 / math.pi  # 1/min per rad/s
-
-
-@dataclass(frozen=True, slots=True)
-class Shown:
-    """How a field leaves the program: `value * scale` in `unit`."""
-
-    key: str
-    label: str
-    unit: str
-    scale: float = 1.0
-    is_estimate: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class Figure:
-    """One figure as shown: value in its unit."""
-
-    key: str
-    label: str
-    value: float
-    unit: str
-    is_estimate: bool
-
-
-def _as(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
-    return {"shown": Shown(key, label, unit, scale)}
-
-
-def _estimate(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
-    return {"shown": Shown(key, label, unit, scale, is_estimate=True)}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class MagneticFigures:
     """Field results at rated current and the angle of most torque, means over 60 el degrees."""
 
-    torque: float = field(metadata=_as("torque_nm", "torque, mean", "N m"))
-    ripple: float = field(metadata=_as("torque_ripple_percent", "torque ripple", "%", 100.0))
-    saliency: float = field(metadata=_as("saliency_ratio", "saliency ratio", ""))
+    torque: float = field(metadata=shown_as("torque_nm", "torque, mean", "N m"))
+    ripple: float = field(metadata=shown_as("torque_ripple_percent", "torque ripple", "%", 100.0))
+    saliency: float = field(metadata=shown_as("saliency_ratio", "saliency ratio", ""))
     gamma: float = field(
-        metadata=_as("current_angle_deg", "current angle of most torque", "el deg", 180.0 / math.pi)
+        metadata=shown_as(
+            "current_angle_deg", "current angle of most torque", "el deg", 180.0 / math.pi
+        )
     )
-    current: float = field(metadata=_as("current_a", "phase current, peak", "A"))
-    i_d: float = field(metadata=_as("i_d_a", "d-axis current", "A"))
-    i_q: float = field(metadata=_as("i_q_a", "q-axis current", "A"))
-    psi_d: float = field(metadata=_as("psi_d_vs", "d-axis flux linkage", "V s"))
-    psi_q: float = field(metadata=_as("psi_q_vs", "q-axis flux linkage", "V s"))
+    current: float = field(metadata=shown_as("current_a", "phase current, peak", "A"))
+    i_d: float = field(metadata=shown_as("i_d_a", "d-axis current", "A"))
+    i_q: float = field(metadata=shown_as("i_q_a", "q-axis current", "A"))
+    psi_d: float = field(metadata=shown_as("psi_d_vs", "d-axis flux linkage", "V s"))
+    psi_q: float = field(metadata=shown_as("psi_q_vs", "q-axis flux linkage", "V s"))
     torque_linkage: float = field(
-        metadata=_as("torque_linkage_nm", "torque by the linkages", "N m")
+        metadata=shown_as("torque_linkage_nm", "torque by the linkages", "N m")
     )
     torque_difference: float = field(
-        metadata=_as("torque_difference_percent", "difference of the two torques", "%", 100.0)
+        metadata=shown_as("torque_difference_percent", "difference of the two torques", "%", 100.0)
     )
     coenergy_difference: float = field(
-        metadata=_as(
+        metadata=shown_as(
             "torque_coenergy_difference_percent",
             "largest difference to the coenergy's torque",
             "%",
@@ -73,7 +45,9 @@ class MagneticFigures:
         )
     )
     ripple_of_samples: float = field(
-        metadata=_as("torque_ripple_samples_percent", "ripple of the samples alone", "%", 100.0)
+        metadata=shown_as(
+            "torque_ripple_samples_percent", "ripple of the samples alone", "%", 100.0
+        )
     )
 
 
@@ -81,21 +55,23 @@ class MagneticFigures:
 class TerminalFigures:
     """Quantities that hold resistance and end-winding leakage by formula: estimates."""
 
-    power_factor: float = field(metadata=_estimate("power_factor", "power factor", ""))
+    power_factor: float = field(metadata=shown_estimate("power_factor", "power factor", ""))
     line_voltage: float = field(
-        metadata=_estimate("terminal_voltage_v", "line voltage at rated speed, rms", "V")
+        metadata=shown_estimate("terminal_voltage_v", "line voltage at rated speed, rms", "V")
     )
-    supply_voltage: float = field(metadata=_as("supply_voltage_v", "supply voltage, rms", "V"))
-    speed: float = field(metadata=_as("speed_rated_rpm", "rated speed", "1/min", RPM))
+    supply_voltage: float = field(metadata=shown_as("supply_voltage_v", "supply voltage, rms", "V"))
+    speed: float = field(metadata=shown_as("speed_rated_rpm", "rated speed", "1/min", RPM))
     shaft_power: float = field(
-        metadata=_as("air_gap_power_w", "torque times speed at rated speed", "W")
+        metadata=shown_as("air_gap_power_w", "torque times speed at rated speed", "W")
     )
-    copper_loss: float = field(metadata=_estimate("copper_loss_w", "copper loss", "W"))
+    copper_loss: float = field(metadata=shown_estimate("copper_loss_w", "copper loss", "W"))
     resistance: float = field(
-        metadata=_estimate("phase_resistance_ohm", "resistance of a phase", "Ohm")
+        metadata=shown_estimate("phase_resistance_ohm", "resistance of a phase", "Ohm")
     )
     end_inductance: float = field(
-        metadata=_estimate("end_winding_inductance_mh", "end-winding leakage of a phase", "mH", 1e3)
+        metadata=shown_estimate(
+            "end_winding_inductance_mh", "end-winding leakage of a phase", "mH", 1e3
+        )
     )
 
 
@@ -103,64 +79,53 @@ class TerminalFigures:
 class StressFigures:
     """Stress of the rotor lamination at overspeed; the margin is that of the whole lamination."""
 
-    peak: float = field(metadata=_as("rib_stress_peak_mpa", "greatest rib stress", "MPa", 1e-6))
+    peak: float = field(
+        metadata=shown_as("rib_stress_peak_mpa", "greatest rib stress", "MPa", 1e-6)
+    )
     peak_error: float = field(
-        metadata=_as("rib_stress_peak_error_mpa", "its estimated error", "MPa", 1e-6)
+        metadata=shown_as("rib_stress_peak_error_mpa", "its estimated error", "MPa", 1e-6)
     )
     tension: float = field(
-        metadata=_as("rib_tension_mean_mpa", "greatest mean tension of a rib", "MPa", 1e-6)
+        metadata=shown_as("rib_tension_mean_mpa", "greatest mean tension of a rib", "MPa", 1e-6)
     )
     lamination_peak: float = field(
-        metadata=_as("lamination_stress_peak_mpa", "greatest stress anywhere", "MPa", 1e-6)
+        metadata=shown_as("lamination_stress_peak_mpa", "greatest stress anywhere", "MPa", 1e-6)
     )
-    yield_margin: float = field(metadata=_as("yield_margin", "yield margin at overspeed", ""))
+    yield_margin: float = field(metadata=shown_as("yield_margin", "yield margin at overspeed", ""))
     yield_strength: float = field(
-        metadata=_as("yield_strength_mpa", "yield strength of the rotor's steel", "MPa", 1e-6)
+        metadata=shown_as("yield_strength_mpa", "yield strength of the rotor's steel", "MPa", 1e-6)
     )
-    speed: float = field(metadata=_as("speed_overspeed_rpm", "overspeed", "1/min", RPM))
+    speed: float = field(metadata=shown_as("speed_overspeed_rpm", "overspeed", "1/min", RPM))
     yield_speed: float = field(
-        metadata=_as("speed_yield_begins_rpm", "yielding begins at", "1/min", RPM)
+        metadata=shown_as("speed_yield_begins_rpm", "yielding begins at", "1/min", RPM)
     )
-    growth: float = field(metadata=_as("radial_growth_um", "radial growth at overspeed", "um", 1e6))
-    gap_left: float = field(metadata=_as("gap_left_mm", "air gap left at overspeed", "mm", 1e3))
+    growth: float = field(
+        metadata=shown_as("radial_growth_um", "radial growth at overspeed", "um", 1e6)
+    )
+    gap_left: float = field(
+        metadata=shown_as("gap_left_mm", "air gap left at overspeed", "mm", 1e3)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class SolverFigures:
     """Size and course of the solutions."""
 
-    field_elements: int = field(metadata=_as("field_elements", "elements of the field", ""))
-    field_unknowns: int = field(metadata=_as("field_unknowns", "unknowns of the field", ""))
-    field_solutions: int = field(metadata=_as("field_solutions", "field solutions", ""))
-    newton_steps: int = field(metadata=_as("newton_steps", "Newton steps in all", ""))
-    newton_most: int = field(metadata=_as("newton_steps_most", "most steps of a solution", ""))
+    field_elements: int = field(metadata=shown_as("field_elements", "elements of the field", ""))
+    field_unknowns: int = field(metadata=shown_as("field_unknowns", "unknowns of the field", ""))
+    field_solutions: int = field(metadata=shown_as("field_solutions", "field solutions", ""))
+    newton_steps: int = field(metadata=shown_as("newton_steps", "Newton steps in all", ""))
+    newton_most: int = field(metadata=shown_as("newton_steps_most", "most steps of a solution", ""))
     residual: float = field(
-        metadata=_as("newton_residual_greatest", "greatest relative residual left", "")
+        metadata=shown_as("newton_residual_greatest", "greatest relative residual left", "")
     )
-    positions: int = field(metadata=_as("waveform_positions", "positions over 60 el degrees", ""))
-    stress_elements: int = field(metadata=_as("stress_elements", "elements of the stress", ""))
-    stress_unknowns: int = field(metadata=_as("stress_unknowns", "unknowns of the stress", ""))
+    positions: int = field(
+        metadata=shown_as("waveform_positions", "positions over 60 el degrees", "")
+    )
+    stress_elements: int = field(metadata=shown_as("stress_elements", "elements of the stress", ""))
+    stress_unknowns: int = field(metadata=shown_as("stress_unknowns", "unknowns of the stress", ""))
     stress_refinements: int = field(
-        metadata=_as("stress_refinements", "refinements of the stress mesh", "")
-    )
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class OutlineFigures:
-    """The punch outline as read back from the DXF, against the outline analysed."""
-
-    area: float = field(metadata=_as("lamination_area_mm2", "area of the lamination", "mm2", 1e6))
-    perimeter: float = field(
-        metadata=_as("lamination_perimeter_mm", "cut length of the lamination", "mm", 1e3)
-    )
-    area_difference: float = field(
-        metadata=_as("dxf_area_difference_relative", "area read back, relative difference", "")
-    )
-    perimeter_difference: float = field(
-        metadata=_as("dxf_perimeter_difference_relative", "cut length read back, difference", "")
-    )
-    vertex_difference: float = field(
-        metadata=_as("dxf_vertex_difference_um", "vertices read back, greatest distance", "um", 1e6)
+        metadata=shown_as("stress_refinements", "refinements of the stress mesh", "")
     )
 
 
@@ -211,28 +176,9 @@ class Verdict:
         return all(outcome.holds for outcome in self.outcomes)
 
 
-FigureGroup = MagneticFigures | TerminalFigures | StressFigures | OutlineFigures | SolverFigures
-
-
-def figures_of(group: FigureGroup) -> Iterator[Figure]:
-    """The figures of a group in their units, in order.
-
-    Raises:
-        ArithmeticError: a figure is not a finite number; such a figure is never passed on.
-    """
-    for item in fields(group):
-        shown: Shown = item.metadata["shown"]
-        value: float = getattr(group, item.name)
-        if not math.isfinite(value):
-            raise ArithmeticError(f"{shown.key} = {value}: not a finite number")
-        # Counts stay whole numbers.
-        scaled = value if shown.scale == 1.0 else value * shown.scale
-        yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate)
-
-
 def all_figures(verdict: Verdict) -> dict[str, Figure]:
     """Every figure of the verdict by its key, in order."""
-    groups: tuple[FigureGroup, ...] = (
+    groups = (
         verdict.magnetic,
         verdict.terminal,
         verdict.stress,

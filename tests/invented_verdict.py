@@ -3,9 +3,9 @@
 import dataclasses
 
 from lamwright.geometry.design import LimitsDesign
+from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.verdict import (
     MagneticFigures,
-    OutlineFigures,
     PhaseTime,
     SolverFigures,
     StressFigures,

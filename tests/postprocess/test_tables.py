@@ -1,4 +1,4 @@
-"""Files: whole or none, JSON without NaN, CSV that reads back."""
+"""Records and CSV: every key promised, units, and that they read back."""
 
 import csv
 import dataclasses
@@ -10,20 +10,15 @@ import invented_verdict as invented
 import numpy as np
 import pytest
 
-from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import Rib
+from lamwright.postprocess.files import json_text
 from lamwright.postprocess.ribs import RibReport, RibStress
 from lamwright.postprocess.tables import (
-    VERDICT_FILE,
-    json_text,
     point_record,
-    prepared_folder,
     ribs_csv,
     spectrum_csv,
-    staged,
     verdict_record,
     waveform_csv,
-    write_text,
 )
 from lamwright.postprocess.torque import TorqueSpectrum, TorqueWaveform
 from lamwright.solver.types import FieldSolution, NewtonReport
@@ -59,13 +54,6 @@ def test_verdict_reads_back_with_its_keys():
         "phase_deg": 90.0,
     }
     assert isinstance(record["field_elements"], int)
-
-
-@pytest.mark.parametrize("value", [math.nan, math.inf])
-def test_json_refuses_what_is_no_number(value):
-    """JSON has no NaN; a file with one is unreadable elsewhere, so it is never written."""
-    with pytest.raises(ValueError, match="not JSON compliant"):
-        json_text({"torque_nm": value})
 
 
 def test_point_record_is_the_solution():
@@ -149,62 +137,3 @@ def test_rib_table_reads_back():
     assert float(first["peak_y_mm"]) == pytest.approx(0.5)
     assert first["speed_mean_yield_rpm"] == ""
     assert float(second["speed_mean_yield_rpm"]) == pytest.approx(3000.0)
-
-
-def test_a_failed_write_leaves_the_old_file(tmp_path):
-    """Half of a text that cannot be encoded must not replace a good file."""
-    path = tmp_path / "a.json"
-    write_text(path, "old")
-    with pytest.raises(UnicodeEncodeError):
-        write_text(path, "x" * 100_000 + "\ud800")
-    assert path.read_text() == "old"
-    assert list(tmp_path.iterdir()) == [path]
-
-
-def test_staged_files_appear_together_at_the_end(tmp_path):
-    """While the block runs the folder shows nothing; afterwards the files, nothing else."""
-    with staged(tmp_path) as stage:
-        write_text(stage / VERDICT_FILE, "{}")
-        write_text(stage / "torque.csv", "1")
-        assert [path.name for path in tmp_path.iterdir() if not path.name.startswith(".")] == []
-    assert sorted(path.name for path in tmp_path.iterdir()) == ["torque.csv", VERDICT_FILE]
-
-
-@pytest.mark.parametrize("stop", [KeyboardInterrupt, OSError])
-def test_a_stopped_run_leaves_what_was_there(tmp_path, stop):
-    """Interrupted or failed before its end, a run changes nothing in the folder."""
-    write_text(tmp_path / VERDICT_FILE, "old")
-    with pytest.raises(stop):
-        _stopped_run(tmp_path, stop)
-    assert [path.name for path in tmp_path.iterdir()] == [VERDICT_FILE]
-
-
-def _stopped_run(folder, stop):
-    with staged(folder) as stage:
-        write_text(stage / "torque.csv", "1")
-        raise stop
-
-
-def test_an_old_verdict_goes_before_new_files_come(tmp_path):
-    """A verdict must never stand beside files of another run: none here, so it is gone."""
-    write_text(tmp_path / VERDICT_FILE, "old")
-    with staged(tmp_path) as stage:
-        write_text(stage / "lamination.dxf", "new")
-    assert [path.name for path in tmp_path.iterdir()] == ["lamination.dxf"]
-
-
-def test_folder_is_made_with_its_parents(tmp_path):
-    """A new path of several levels is a usual way to name results."""
-    folder = tmp_path / "a" / "b"
-    assert prepared_folder(folder) == folder
-    assert list(folder.iterdir()) == []
-
-
-def test_a_file_is_no_folder(tmp_path):
-    """One line that says what is wrong with --out, also where a parent is the file."""
-    file = tmp_path / "file"
-    file.write_text("")
-    with pytest.raises(LamwrightError, match="file: is a file; accepted a folder"):
-        prepared_folder(file)
-    with pytest.raises(LamwrightError, match="cannot be written: "):
-        prepared_folder(file / "below")

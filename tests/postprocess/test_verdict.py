@@ -8,7 +8,8 @@ import pytest
 
 from lamwright.geometry.design import SteelCard
 from lamwright.postprocess.cautions import STANDING, cautions
-from lamwright.postprocess.verdict import all_figures, figures_of, judged
+from lamwright.postprocess.quantities import figures_of
+from lamwright.postprocess.verdict import all_figures, judged
 
 # fmt: off
 UNITS_AT_THE_END = (

@@ -1,0 +1,78 @@
+"""Files of results: whole or none.
+
+A run's files are made in a hidden folder inside the asked one and moved out by rename, the verdict
+last: where a `verdict.json` stands, all files beside it belong to it.
+"""
+
+import csv
+import io
+import json
+import os
+import shutil
+import tempfile
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import contextmanager
+from pathlib import Path
+
+from lamwright.geometry.errors import LamwrightError
+
+VERDICT_FILE = "verdict.json"
+
+
+def write_text(path: Path, text: str) -> None:
+    """Write a file whole or not at all: temporary file beside it, then rename."""
+    temporary = path.with_name(f".{path.name}.{os.getpid()}.tmp")
+    try:
+        temporary.write_text(text, encoding="utf-8", newline="\n")
+        temporary.replace(path)
+    finally:
+        temporary.unlink(missing_ok=True)
+
+
+def json_text(record: Mapping[str, object]) -> str:
+    """The record as JSON.
+
+    Raises:
+        ValueError: a number is not finite; such a file is never written.
+    """
+    return json.dumps(record, indent=2, allow_nan=False, ensure_ascii=False) + "\n"
+
+
+def prepared_folder(folder: Path) -> Path:
+    """The folder, made where it is missing and tried by writing.
+
+    Raises:
+        LamwrightError: it is a file, or cannot be made or written.
+    """
+    if folder.exists() and not folder.is_dir():
+        raise LamwrightError(f"--out {folder}: is a file; accepted a folder, new or existing")
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryFile(dir=folder):
+            pass
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or str(error)
+        raise LamwrightError(f"--out {folder}: cannot be written: {reason.lower()}") from None
+    return folder
+
+
+@contextmanager
+def staged(folder: Path) -> Iterator[Path]:
+    """A hidden folder whose files move to `folder` when the block ends well, the verdict last."""
+    stage = Path(tempfile.mkdtemp(prefix=".unfinished-", dir=folder))
+    try:
+        yield stage
+        (folder / VERDICT_FILE).unlink(missing_ok=True)
+        for file in sorted(stage.iterdir(), key=lambda file: (file.name == VERDICT_FILE, file)):
+            file.replace(folder / file.name)
+    finally:
+        shutil.rmtree(stage, ignore_errors=True)
+
+
+def csv_text(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:
+    """Comma-separated values with a header row."""
+    stream = io.StringIO()
+    writer = csv.writer(stream, lineterminator="\n")
+    writer.writerow(header)
+    writer.writerows(rows)
+    return stream.getvalue()

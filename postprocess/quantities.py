@@ -1,0 +1,86 @@
+"""Figures: numbers that leave the program, with key, label, unit and factor from SI.
+
+A figure is declared once, as a field of a dataclass with this metadata; tables, screen and report
+read it there. Keys end in the unit.
+"""
+
+import math
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field, fields
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from _typeshed import DataclassInstance
+
+
+@dataclass(frozen=True, slots=True)
+class Shown:
+    """How a field leaves the program: `value * scale` in `unit`."""
+
+    key: str
+    label: str
+    unit: str
+    scale: float = 1.0
+    is_estimate: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Figure:
+    """One figure as shown: value in its unit."""
+
+    key: str
+    label: str
+    value: float
+    unit: str
+    is_estimate: bool
+
+
+def shown_as(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
+    """Metadata of a field that leaves the program as a figure."""
+    return {"shown": Shown(key, label, unit, scale)}
+
+
+def shown_estimate(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
+    """The same for a figure that rests on a formula instead of a field."""
+    return {"shown": Shown(key, label, unit, scale, is_estimate=True)}
+
+
+def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
+    """The figures of a group in their units, in order.
+
+    Raises:
+        ArithmeticError: a figure is not a finite number; such a figure is never passed on.
+    """
+    for item in fields(group):
+        shown: Shown = item.metadata["shown"]
+        value: float = getattr(group, item.name)
+        if not math.isfinite(value):
+            raise ArithmeticError(f"{shown.key} = {value}: not a finite number")
+        # Counts stay whole numbers.
+        scaled = value if shown.scale == 1.0 else value * shown.scale
+        yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class OutlineFigures:
+    """The punch outline as read back from the DXF, against the outline analysed."""
+
+    area: float = field(
+        metadata=shown_as("lamination_area_mm2", "area of the lamination", "mm2", 1e6)
+    )
+    perimeter: float = field(
+        metadata=shown_as("lamination_perimeter_mm", "cut length of the lamination", "mm", 1e3)
+    )
+    area_difference: float = field(
+        metadata=shown_as("dxf_area_difference_relative", "area read back, relative difference", "")
+    )
+    perimeter_difference: float = field(
+        metadata=shown_as(
+            "dxf_perimeter_difference_relative", "cut length read back, difference", ""
+        )
+    )
+    vertex_difference: float = field(
+        metadata=shown_as(
+            "dxf_vertex_difference_um", "vertices read back, greatest distance", "um", 1e6
+        )
+    )
