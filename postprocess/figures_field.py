@@ -23,7 +23,7 @@ from lamwright.geometry.section import CrossSection, Region
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.gap import rotor_place, sheared
 from lamwright.solver.integrals import phase_currents
-from lamwright.solver.isoparametric import NODE_PLACES, gradients_at
+from lamwright.solver.isoparametric import NODE_PLACES, gradients_at, shape
 from lamwright.solver.types import FieldSolution, FloatArray, IntArray, SectorMesh
 
 from .figures_labels import RULER_FOOT, draw_note, draw_ruler, place_callouts
@@ -47,6 +47,7 @@ if TYPE_CHECKING:
     from matplotlib.patches import PathPatch
 
 FEWEST_LINES = 22  # flux lines over the sector; the step is a round flux that gives at least these
+COARSE = 0.025  # of the stator's radius: a longer side would show as a bend in the lines
 PHASES = "ABC"
 NO_CURRENT = 0.02  # of the largest ampere-conductors: a side with less is marked as idle
 
@@ -178,14 +179,15 @@ def _draw_lines(
 ) -> None:
     from matplotlib.tri import Triangulation
 
+    coarse = COARSE * MM * section.stator_outer_radius
     step = line_step(parts, section.stack_length) / section.stack_length
     for part in parts:
-        quarters = part.elements[:, QUARTERS].reshape(-1, 3)
+        nodes, potential, triangles = contour_triangles(part, coarse)
         low, high = float(part.potential.min()), float(part.potential.max())
         levels = step * (np.arange(math.floor(low / step), math.ceil(high / step) + 1) + 0.5)
         lines = ax.tricontour(
-            Triangulation(part.nodes[:, 0], part.nodes[:, 1], quarters),
-            part.potential,
+            Triangulation(nodes[:, 0], nodes[:, 1], triangles),
+            potential,
             levels=levels,
             colors=style.ink,
             linewidths=style.hair,
@@ -193,6 +195,40 @@ def _draw_lines(
             zorder=2,
         )
         lines.set_clip_path(clip)
+
+
+def contour_triangles(part: PolePart, coarse: float) -> tuple[FloatArray, FloatArray, IntArray]:
+    """Straight triangles to draw flux lines in: 4 an element, 16 where one side is over `coarse`.
+
+    Returns:
+        nodes (n, 2) in mm; potential (n,) in Wb/m; triangles (m, 3).
+    """
+    corner = part.nodes[part.elements[:, :3]]
+    side = np.linalg.norm(corner - np.roll(corner, 1, axis=1), axis=2).max(axis=1)
+    large = part.elements[side > coarse]
+    places, pieces = lattice(4)
+    weights = shape(places)  # (n_place, 6)
+    nodes = (weights @ part.nodes[large]).reshape(-1, 2)
+    potential = (part.potential[large] @ weights.T).ravel()
+    offset = len(part.nodes) + len(places) * np.arange(len(large))
+    fine = (pieces + offset[:, None, None]).reshape(-1, 3)
+    quarters = part.elements[side <= coarse][:, QUARTERS].reshape(-1, 3)
+    return (
+        np.concatenate([part.nodes, nodes]),
+        np.concatenate([part.potential, potential]),
+        np.concatenate([quarters, fine]),
+    )
+
+
+def lattice(count: int) -> tuple[FloatArray, IntArray]:
+    """Places (n, 2) that part the sides of the reference triangle in `count`; triangles (m, 3)."""
+    row = [k * (count + 1) - k * (k - 1) // 2 for k in range(count + 1)]  # first place of a row
+    places = [(i / count, j / count) for j in range(count + 1) for i in range(count + 1 - j)]
+    upward = [(i, j) for j in range(count) for i in range(count - j)]
+    downward = [(i, j) for j in range(count - 1) for i in range(count - 1 - j)]
+    pieces = [(row[j] + i, row[j] + i + 1, row[j + 1] + i) for i, j in upward]
+    pieces += [(row[j] + i + 1, row[j + 1] + i + 1, row[j + 1] + i) for i, j in downward]
+    return np.array(places), np.array(pieces)
 
 
 def line_step(parts: Sequence[PolePart], stack_length: float) -> float:

@@ -39,6 +39,7 @@ RPM = 30.0 / math.pi  # 1/min per rad/s
 EXAGGERATION = 0.025  # largest drawn displacement over the rotor's radius
 CLOSE_UP = 2.6  # half the side of a close-up over the rib's width
 LEAST_CLOSE_UP = 1.0  # mm, half the side of a close-up at least
+PEAK_INSIDE = 1.25  # half the side of a close-up over the way from the rib's middle to its peak
 LETTERS = "ab"
 
 
@@ -76,7 +77,7 @@ def draw_stress(
     _draw_outline(ax, section, turn, style)
     factor = _draw_deformed(ax, section, solution, turn, style)
     for row, letter in zip(close_ups(report), LETTERS, strict=False):
-        _draw_frame(ax, row.rib, letter, turn, style)
+        _draw_frame(ax, row, letter, turn, style)
     draw_ruler(ax, style)
     notes = (
         f"{RPM * report.speed:.0f} 1/min; peak {mpa(report.peak)}"
@@ -104,7 +105,7 @@ def draw_rib(
 
     turn = upright(section)
     middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
-    half = _half_side(row.rib)
+    half = _half_side(row)
     ax.set_aspect("equal", adjustable="box")
     ax.set_xlim(middle.real - half, middle.real + half)
     ax.set_ylim(middle.imag - half, middle.imag + half)
@@ -112,7 +113,7 @@ def draw_rib(
     near = np.abs(at - middle).min(axis=1) < 2.0 * half
     _draw_field(ax, solution, np.flatnonzero(near), turn, style)
     _draw_outline(ax, section, turn, style)
-    _draw_width(ax, row.rib, turn, style)
+    _draw_width(ax, row, turn, style)
     peak = MM * turn * row.peak_at
     ax.plot(
         [peak.real],
@@ -269,43 +270,44 @@ def _chains(edges: IntArray) -> list[list[int]]:
     return chains
 
 
-def _half_side(rib: Rib) -> float:
-    """Half the side of a rib's close-up in mm."""
-    return max(CLOSE_UP * MM * rib.width, LEAST_CLOSE_UP)
+def _half_side(row: RibStress) -> float:
+    """Half the side of a rib's close-up in mm; the peak is always well inside."""
+    away = abs(row.peak_at - 0.5 * (row.rib.start + row.rib.end))
+    return max(CLOSE_UP * MM * row.rib.width, PEAK_INSIDE * MM * away, LEAST_CLOSE_UP)
 
 
-def _draw_frame(ax: Axes, rib: Rib, letter: str, turn: complex, style: Style) -> None:
+def _draw_frame(ax: Axes, row: RibStress, letter: str, turn: complex, style: Style) -> None:
     from matplotlib.patches import Rectangle
     from matplotlib.patheffects import Normal, Stroke
 
-    middle, half = MM * turn * 0.5 * (rib.start + rib.end), _half_side(rib)
+    middle, half = MM * turn * 0.5 * (row.rib.start + row.rib.end), _half_side(row)
     corner = (middle.real - half, middle.imag - half)
     frame = Rectangle(corner, 2 * half, 2 * half, fill=False, zorder=7)
     frame.set(edgecolor=style.ink, linewidth=style.outline)
     ax.add_artist(frame)
-    # Inside, in the lower corner towards the q axis: labels stand outside of the pole.
+    # Below, at the end towards the q axis: labels stand outside of the pole, peaks in the frame.
     inward = -1.0 if middle.real > 0.0 else 1.0
     ax.text(
-        middle.real + 0.85 * inward * half,
-        middle.imag - 0.85 * half,
+        middle.real + inward * half,
+        middle.imag - 1.15 * half,
         letter,
         fontsize=style.text,
         fontweight="bold",
         color=style.ink,
         ha="right" if inward > 0.0 else "left",
-        va="bottom",
+        va="top",
         path_effects=[Stroke(linewidth=2.0, foreground=style.paper), Normal()],
         zorder=9,
     )
 
 
-def _draw_width(ax: Axes, rib: Rib, turn: complex, style: Style) -> None:
+def _draw_width(ax: Axes, row: RibStress, turn: complex, style: Style) -> None:
     """The rib's width between two arrows that point at its faces from outside."""
     from matplotlib.patheffects import Normal, Stroke
 
-    start, end = MM * turn * rib.start, MM * turn * rib.end
+    start, end = MM * turn * row.rib.start, MM * turn * row.rib.end
     out = (end - start) / abs(end - start)
-    reach = 0.3 * _half_side(rib)
+    reach = 0.3 * _half_side(row)
     for face, tail in ((start, start - reach * out), (end, end + reach * out)):
         ax.annotate(
             "",
@@ -324,7 +326,7 @@ def _draw_width(ax: Axes, rib: Rib, turn: complex, style: Style) -> None:
     words = ax.text(
         0.0,
         0.0,
-        f"{MM * rib.width:.2f} mm",
+        f"{MM * row.rib.width:.2f} mm",
         fontsize=style.text,
         color=style.ink,
         ha="center",
@@ -334,5 +336,5 @@ def _draw_width(ax: Axes, rib: Rib, turn: complex, style: Style) -> None:
     )
     extent = words.get_window_extent().transformed(ax.transData.inverted())
     room = 0.5 * (abs(out.real) * extent.width + abs(out.imag) * extent.height)
-    at = start - (reach + room + 0.05 * _half_side(rib)) * out
+    at = start - (reach + room + 0.05 * _half_side(row)) * out
     words.set_position((at.real, at.imag))

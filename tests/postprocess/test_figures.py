@@ -16,7 +16,7 @@ from lamwright.geometry.design_file import read_machine
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess import figures
 from lamwright.postprocess.figures import FIGURES, Pictured, write_figures
-from lamwright.postprocess.figures_field import pole_parts
+from lamwright.postprocess.figures_field import PolePart, contour_triangles, lattice, pole_parts
 from lamwright.postprocess.figures_stress import close_ups, mpa, stress_limit
 from lamwright.postprocess.figures_style import (
     FILLS,
@@ -255,6 +255,21 @@ def test_flux_lines_run_through_the_turning_circle(results):
             met += len(pair)
         # Every node of the sector's arc, one node of each seam twice.
         assert met >= 2 * result.sector.n_circle + 1
+
+
+def test_flux_lines_are_drawn_in_all_of_the_potential():
+    """Pieces tile the element, finer in a large one, and carry its potential x^2 + y exactly."""
+    places, pieces = lattice(4)
+    corners = places[pieces]
+    a, b = corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]
+    assert 0.5 * (a[:, 0] * b[:, 1] - a[:, 1] * b[:, 0]) == pytest.approx(np.full(16, 1.0 / 32.0))
+    nodes = np.array([[0.0, 0.0], [2.0, 0.0], [0.0, 1.0], [1.0, 0.0], [1.0, 0.5], [0.0, 0.5]])
+    potential = nodes[:, 0] ** 2 + nodes[:, 1]
+    part = PolePart(nodes, np.arange(6)[None], potential, np.zeros((1, 3)))
+    for coarse, count in ((10.0, 4), (0.1, 16)):
+        at, values, triangles = contour_triangles(part, coarse)
+        assert len(triangles) == count
+        assert values == pytest.approx(at[:, 0] ** 2 + at[:, 1])
 
 
 def test_written_twice_the_bytes_are_the_same(results, tmp_path):
