@@ -5,11 +5,13 @@ Read from the sources with `ast`, so that a breach is found even in a line that 
 
 import ast
 import importlib
+import re
 import subprocess
 import sys
 from collections.abc import Iterator
 from dataclasses import dataclass
 from fnmatch import fnmatch
+from importlib.metadata import packages_distributions
 from pathlib import Path
 
 import pytest
@@ -85,6 +87,10 @@ CROSSING = [
 ]
 
 
+def _plain(distribution: str) -> str:
+    return re.sub(r"[-_.]+", "-", distribution).lower()
+
+
 def _dotted(path: Path) -> str:
     parts = path.relative_to(ROOT).with_suffix("").parts
     return ".".join(("lamwright", *parts[: -1 if parts[-1] == "__init__" else None]))
@@ -151,6 +157,19 @@ def test_heavy_libraries_stay_with_their_owner():
         if not is_owner or (is_early and item.library not in IMPORTED_AT_THE_TOP):
             stray.append(item.place)
     assert stray == []
+
+
+def test_every_library_is_pinned():
+    """What is imported is installed by README's commands, at a tested version, tests included."""
+    pinned = set(re.findall(r"^([\w-]+)==", (ROOT / "constraints.txt").read_text(), re.MULTILINE))
+    providers = packages_distributions()
+    unpinned = [
+        item.place
+        for path in SOURCES
+        for item in _imports(path)
+        if not {_plain(name) for name in providers.get(item.library, ())} <= pinned | {"lamwright"}
+    ]
+    assert unpinned == []
 
 
 @pytest.mark.parametrize("path", SOURCES, ids=lambda path: path.relative_to(ROOT).as_posix())
