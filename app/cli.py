@@ -5,7 +5,6 @@ Exit codes: 0 every limit holds, 1 a limit is missed, 2 bad input, 3 not converg
 the program, 130 interrupted.
 """
 
-import os
 import traceback
 from pathlib import Path
 from typing import NoReturn
@@ -14,7 +13,7 @@ import click
 
 from lamwright.geometry.errors import LamwrightError
 
-from .pool import SINGLE_THREADED
+from .threads import hold_threads
 
 FAULT = 70  # "internal software error" of the usual list of exit codes
 INTERRUPTED = 130  # as a shell reports a process ended by the interrupt key
@@ -58,9 +57,7 @@ _OUT = click.option(
 @click.version_option(package_name="lamwright", message="%(prog)s %(version)s")
 def main() -> None:
     """Design synchronous reluctance rotors that can be built."""
-    # Before numpy is imported: the chains run side by side, BLAS threads would fight them.
-    for name, value in SINGLE_THREADED.items():
-        os.environ.setdefault(name, value)
+    hold_threads()
 
 
 @main.command()
@@ -86,8 +83,8 @@ def assess(ctx: click.Context, design: Path, out: Path) -> None:
 @_OUT
 def outline(design: Path, out: Path) -> None:
     """Geometry, checks and punch outline (DXF) of DESIGN alone."""
+    from .lines import print_outline
     from .outline import outline as run
-    from .screen import print_outline
 
     print_outline(run(design, out))
 

@@ -28,17 +28,12 @@ from typing import IO, Concatenate, Generic, ParamSpec, TypeVar
 
 from lamwright.geometry.errors import LamwrightError
 
+from .threads import SINGLE_THREADED
+
 Desk = TypeVar("Desk")
 P = ParamSpec("P")
 R = TypeVar("R")
 
-# One thread for BLAS in every process: the chains are what runs side by side.
-SINGLE_THREADED = {
-    "OPENBLAS_NUM_THREADS": "1",
-    "OMP_NUM_THREADS": "1",
-    "MKL_NUM_THREADS": "1",
-    "VECLIB_MAXIMUM_THREADS": "1",
-}
 _SERVE = "from lamwright.app.pool import serve; serve()"
 
 

@@ -1,9 +1,8 @@
-"""What stands on the terminal: the bar of a run, the table of a verdict, the list of an outline.
+"""What `assess` shows on the terminal: a bar on its way, the verdict as a table at the end.
 
 Progress goes to stderr, results to stdout. Without a terminal the bar becomes one line a phase.
 """
 
-import math
 import sys
 import textwrap
 from collections.abc import Iterator
@@ -15,10 +14,9 @@ from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
-from lamwright.postprocess.quantities import Figure, figures_of
 from lamwright.postprocess.verdict import Outcome, Verdict, all_figures
 
-from .outline import OutlineReport
+from .lines import number, valued
 from .progress import Progress
 
 # Figures without a limit that a designer reads at a glance, in order.
@@ -36,8 +34,6 @@ GLANCE = (
     "speed_yield_begins_rpm",
     "radial_growth_um",
 )
-DIGITS = 4  # significant, on the terminal only
-MM = 1e3  # mm per m
 
 
 @contextmanager
@@ -76,30 +72,6 @@ def print_verdict(verdict: Verdict, folder: str) -> None:
     console.print(f"[dim]~ estimate by formula; files in[/dim] {escape(folder)}", soft_wrap=True)
 
 
-def print_outline(report: OutlineReport) -> None:
-    """The outline's figures and ribs, and where the DXF is."""
-    table = _table(report.design_name, "what", "value")
-    for figure in figures_of(report.figures):
-        table.add_row(figure.label, _valued(figure))
-    widths: dict[str, list[str]] = {}
-    for rib in report.ribs:
-        label = f"{rib.kind} ribs of barrier {rib.barrier}, one pole"
-        widths.setdefault(label, []).append(f"{rib.width * MM:.3f}")
-    for label, values in widths.items():
-        table.add_row(label, f"{', '.join(values)} mm")
-    console = Console(highlight=False)
-    console.print(table)
-    console.print(f"punch outline: {escape(str(report.dxf))}", soft_wrap=True)
-
-
-def number(value: float) -> str:
-    """A number with four significant digits, without exponent where it can be read so."""
-    if value == 0.0 or not 1e-4 <= abs(value) < 1e7:
-        return f"{value:.{DIGITS}g}"
-    decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
-    return f"{value:.{max(0, decimals)}f}"
-
-
 def _table(title: str, *columns: str) -> Table:
     table = Table(title=title, title_justify="left", title_style="bold")
     for column in columns:
@@ -111,7 +83,7 @@ def _verdict_table(verdict: Verdict) -> Table:
     table = _table(verdict.design_name, "what", "value", "limit", "verdict")
     for outcome in verdict.outcomes:
         mark = Text("holds", "green") if outcome.holds else Text("missed", "bold red")
-        table.add_row(outcome.figure.label, _valued(outcome.figure), _limit(outcome), mark)
+        table.add_row(outcome.figure.label, valued(outcome.figure), _limit(outcome), mark)
     table.add_section()
     figures = all_figures(verdict)
     supply = figures["supply_voltage_v"]
@@ -121,13 +93,8 @@ def _verdict_table(verdict: Verdict) -> Table:
             limit = f"<= {number(supply.value)} V"
             over = figures[key].value > supply.value
             mark = Text("over supply", "yellow") if over else Text("")
-        table.add_row(figures[key].label, _valued(figures[key]), limit, mark)
+        table.add_row(figures[key].label, valued(figures[key]), limit, mark)
     return table
-
-
-def _valued(figure: Figure) -> str:
-    about = "~ " if figure.is_estimate else ""
-    return f"{about}{number(figure.value)} {figure.unit}".rstrip()
 
 
 def _limit(outcome: Outcome) -> str:

@@ -189,7 +189,8 @@ def test_outline_loads_neither_mesh_nor_solver_nor_pictures(tmp_path):
     code = (
         "import sys; from lamwright.app.cli import main\n"
         "main(sys.argv[1:], standalone_mode=False)\n"
-        "print(sorted({'scipy', 'skfem', 'gmsh', 'matplotlib', 'cvxopt'} & set(sys.modules)))"
+        "heavy = {'scipy', 'skfem', 'gmsh', 'matplotlib', 'cvxopt', 'rich'}\n"
+        "print(sorted(heavy & set(sys.modules)))"
     )
     done = python(code, "outline", DEMO, "--out", tmp_path)
     assert done.returncode == 0, done.stderr

@@ -11,7 +11,8 @@ from pathlib import Path
 
 import pytest
 
-from lamwright.app.pool import SINGLE_THREADED, Crew, Worker, WorkerLost
+from lamwright.app.pool import Crew, Worker, WorkerLost
+from lamwright.app.threads import SINGLE_THREADED
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.winding import winding_table

@@ -5,7 +5,8 @@ import dataclasses
 import invented_verdict as invented
 import pytest
 
-from lamwright.app.screen import number, print_verdict
+from lamwright.app.lines import number
+from lamwright.app.screen import print_verdict
 
 
 @pytest.mark.parametrize(
