@@ -8,14 +8,14 @@ from importlib import import_module
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from .outline import outline as outline
+    from .lamination import outline as outline
     from .point import read_machine as read_machine
     from .point import solve as solve
     from .run import assess as assess
 
 _HOME_OF = {
     "assess": "run",
-    "outline": "outline",
+    "outline": "lamination",
     "read_machine": "point",
     "solve": "point",
 }

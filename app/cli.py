@@ -83,8 +83,8 @@ def assess(ctx: click.Context, design: Path, out: Path) -> None:
 @_OUT
 def outline(design: Path, out: Path) -> None:
     """Geometry, checks and punch outline (DXF) of DESIGN alone."""
+    from .lamination import outline as run
     from .lines import print_outline
-    from .outline import outline as run
 
     print_outline(run(design, out))
 

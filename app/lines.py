@@ -6,7 +6,7 @@ import click
 
 from lamwright.postprocess.quantities import Figure, figures_of
 
-from .outline import OutlineReport
+from .lamination import OutlineReport
 
 DIGITS = 4  # significant, on the terminal only
 MM = 1e3  # mm per m

@@ -21,7 +21,7 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.steel import reluctivity_law
 from lamwright.solver.types import FieldSolution, SectorMesh
 
-from .outline import section_of
+from .lamination import section_of
 
 DEGREE = math.pi / 180.0
 

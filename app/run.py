@@ -50,7 +50,7 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.types import FieldSolution
 
 from .desk import Desk, StressWork
-from .outline import DXF_FILE, section_of, write_outline
+from .lamination import DXF_FILE, section_of, write_outline
 from .point import model_of, read_machine
 from .pool import Crew, spare_cores
 from .progress import Progress, Stopwatch, silent

@@ -161,3 +161,12 @@ def test_figures_do_not_depend_on_who_does_the_work(record, tmp_path, monkeypatc
     for key in set(numbers) - rounding:
         assert alone[key] == pytest.approx(record[key], rel=1e-7, abs=1e-9), key
     assert alone["newton_steps"] == record["newton_steps"]
+
+
+def test_the_door_gives_functions_whatever_was_imported_before():
+    """A module named as a function of the door would take its place once it is loaded."""
+    import lamwright.app
+    import lamwright.app.run  # loads every module of the room that a run needs
+
+    for name in lamwright.app.__all__:
+        assert callable(getattr(lamwright.app, name)), name
