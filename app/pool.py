@@ -58,23 +58,25 @@ class Worker(Generic[Desk]):
         self._open: deque[Future[object]] = deque()
         self._lost = False
         self._lock = threading.RLock()  # a failed future's callbacks may submit again
-        self._send(make_desk)
-        self._reader = threading.Thread(target=self._collect, daemon=True)
-        self._reader.start()
+        self._outbox: queue.SimpleQueue[bytes | None] = queue.SimpleQueue()
+        self._outbox.put(pickle.dumps(make_desk, pickle.HIGHEST_PROTOCOL))
+        self._threads = [
+            threading.Thread(target=work, daemon=True) for work in (self._deliver, self._collect)
+        ]
+        for thread in self._threads:
+            thread.start()
 
     def submit(
         self, method: Callable[Concatenate[Desk, P], R], *args: P.args, **kwargs: P.kwargs
     ) -> "Future[R]":
         """Call a method of the desk there; the result comes as a future."""
         future: Future[R] = Future()
+        call = pickle.dumps((method, args, kwargs), pickle.HIGHEST_PROTOCOL)
         with self._lock:
             self._open.append(future)  # type: ignore[arg-type]  # Future is invariant
-            # Of a process that ends, the pipes close one after the other.
+            self._outbox.put(call)
             if self._lost:
                 self._fail_open()
-            else:
-                with contextlib.suppress(OSError):  # the collector is about to see the end too
-                    self._send((method, args, kwargs))
         return future
 
     @property
@@ -86,15 +88,20 @@ class Worker(Generic[Desk]):
         """End the process, whatever it is doing."""
         self._process.kill()
         self._process.wait()
-        self._reader.join()
+        self._outbox.put(None)
+        for thread in self._threads:
+            thread.join()
         for stream in (self._process.stdin, self._process.stdout):
             with contextlib.suppress(OSError):
                 _given(stream).close()
 
-    def _send(self, item: object) -> None:
+    def _deliver(self) -> None:
+        """Write the calls; in a thread, since a worker that still imports reads slowly."""
         stream = _given(self._process.stdin)
-        pickle.dump(item, stream, protocol=pickle.HIGHEST_PROTOCOL)
-        stream.flush()
+        with contextlib.suppress(OSError):  # the process has ended; the collector sees it too
+            while (call := self._outbox.get()) is not None:
+                stream.write(call)
+                stream.flush()
 
     def _collect(self) -> None:
         stream = _given(self._process.stdout)
