@@ -91,17 +91,20 @@ class Worker(Generic[Desk]):
         self._outbox.put(None)
         for thread in self._threads:
             thread.join()
-        for stream in (self._process.stdin, self._process.stdout):
-            with contextlib.suppress(OSError):
-                _given(stream).close()
+        _given(self._process.stdout).close()
 
     def _deliver(self) -> None:
         """Write the calls; in a thread, since a worker that still imports reads slowly."""
         stream = _given(self._process.stdin)
+        if hasattr(signal, "pthread_sigmask"):
+            # Where a library has reset it, a write to a process that ended would end this one.
+            signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGPIPE})
         with contextlib.suppress(OSError):  # the process has ended; the collector sees it too
             while (call := self._outbox.get()) is not None:
                 stream.write(call)
                 stream.flush()
+        with contextlib.suppress(OSError):  # what is left in the buffer goes nowhere
+            stream.close()
 
     def _collect(self) -> None:
         stream = _given(self._process.stdout)

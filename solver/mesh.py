@@ -12,9 +12,10 @@ between them with triangles. The second-order nodes are added here too, on the t
 """
 
 import math
+import signal
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from threading import Lock
+from threading import Lock, current_thread, main_thread
 
 import numpy as np
 
@@ -263,8 +264,7 @@ def _run_gmsh(
     # Begun anew each time (1 ms): a second mesh of the same regions in one process was another.
     is_ours = not gmsh.isInitialized()
     if is_ours:
-        # interruptible=False: no signal handler, so that it works in any thread.
-        gmsh.initialize(readConfigFiles=False, interruptible=False)
+        _initialise()
     for option, value in {
         "General.Terminal": 0,
         "General.NumThreads": 1,
@@ -301,6 +301,21 @@ def _run_gmsh(
         if is_ours:
             gmsh.finalize()
     return tags, coords, found
+
+
+def _initialise() -> None:
+    """Begin gmsh without its side effects on the process.
+
+    It makes SIGPIPE end the process without a word, where Python has the write fail: a reader of
+    our output, or a worker, that goes away would take us along.
+    """
+    import gmsh
+
+    at_pipe = signal.getsignal(signal.SIGPIPE) if hasattr(signal, "SIGPIPE") else None
+    # interruptible=False: no handler of the interrupt key, so that it works in any thread.
+    gmsh.initialize(readConfigFiles=False, interruptible=False)
+    if at_pipe is not None and current_thread() is main_thread():  # others may not set it
+        signal.signal(signal.SIGPIPE, at_pipe)
 
 
 def _add_size_field(inside: SizeSources, growth: float) -> None:

@@ -245,3 +245,16 @@ def test_point_meets_the_energy_identity(solution):
     """A8.5: W + W' = sum psi_k i_k = 3/2 (psi_d i_d + psi_q i_q), to Newton's tolerance."""
     work = 1.5 * (solution.psi_d * 8.0 + solution.psi_q * 4.0)
     assert solution.energy + solution.coenergy == pytest.approx(work, rel=1e-5)
+
+
+def test_a_broken_pipe_stays_an_error_after_meshing():
+    """The mesher's library makes it the end of the process; a program that calls us must live."""
+    code = (
+        "import os, sys; from lamwright.app.point import read_machine, solve\n"
+        "solve(read_machine(sys.argv[1]), i_d=8.0, i_q=4.0, angle_deg=2.5)\n"
+        "reader, writer = os.pipe(); os.close(reader)\n"
+        "try: os.write(writer, b'x')\n"
+        "except BrokenPipeError: print('alive')"
+    )
+    done = python(code, DEMO)
+    assert (done.returncode, done.stdout) == (0, "alive\n"), done.stderr

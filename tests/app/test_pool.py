@@ -85,6 +85,19 @@ def test_death_of_a_worker_fails_what_is_open_and_what_follows(hired):
         worker.submit(int.__bool__).result(TIMEOUT)
 
 
+def test_death_of_a_worker_does_not_end_this_process():
+    """Where a library has set SIGPIPE to its default, writing to the dead would kill the writer."""
+    code = (
+        "import os, signal; from lamwright.app.pool import Worker, WorkerLost\n"
+        "signal.signal(signal.SIGPIPE, signal.SIG_DFL)\n"
+        "w = Worker(int); os.kill(w.pid, signal.SIGKILL)\n"
+        "calls = [w.submit(int.__add__, 10**k) for k in range(4000)]\n"
+        "print(type(calls[-1].exception(20)).__name__); w.stop()"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True)
+    assert (done.returncode, done.stdout) == (0, "WorkerLost\n"), done.stderr
+
+
 def test_worker_is_deaf_to_the_interrupt_key_from_birth(hired):
     """The signal of the terminal goes to all processes; a starting worker must not print."""
     worker = hired(int)
