@@ -25,6 +25,7 @@ from .pattern import (
     Numbering,
     Pattern,
     SparseRows,
+    edge_ends,
     gap_slots,
     lower_pattern,
     number_unknowns,
@@ -131,6 +132,7 @@ class MagneticModel:
     settings: FieldSettings
     numbering: Numbering
     pattern: Pattern
+    ends: IntArray  # (n_dof, 2), see `edge_ends`
     iron: Iron
     fixed_values: FloatArray  # (n_slot,), linear elements outside the rotor's gap
     rotor_gap: RotorGap
@@ -164,8 +166,8 @@ def magnetic_model(
     """
     settings = settings or FieldSettings()
     numbering = number_unknowns(sector)
-    materials = _material_of_elem(sector, section)
-    nodes, elements = _joined(sector)
+    materials = material_of_elem(sector, section)
+    nodes, elements = joined_parts(sector)
     is_gap = np.zeros(materials.size, dtype=bool)
     is_gap[sector.rotor.elements_of("gap_rotor")] = True
     is_iron = np.isin(materials, ("rotor_steel", "stator_steel"))
@@ -187,6 +189,7 @@ def magnetic_model(
         settings=settings,
         numbering=numbering,
         pattern=pattern,
+        ends=edge_ends(numbering, elements),
         iron=Iron(
             dof=numbering.dof[elements[iron]],
             sign=numbering.sign[elements[iron]],
@@ -204,8 +207,8 @@ def magnetic_model(
             quad=quadrature(nodes, elements[stator_gap], 6),
             places=quadrature_places(nodes, elements[stator_gap], 6),
         ),
-        linkage=_linkage(sector, winding, numbering),
-        representative=_representatives(numbering, sector),
+        linkage=linkage_functional(sector, winding, numbering),
+        representative=representatives(numbering, sector),
         factors=Cache(capacity),
         positions=Cache(2 * capacity),
     )
@@ -219,7 +222,7 @@ def linear_tangent(quad: Quadrature, nu: FloatArray) -> FloatArray:
     return packed_tangent(quad, state)
 
 
-def _material_of_elem(sector: SectorMesh, section: CrossSection) -> npt.NDArray[np.str_]:
+def material_of_elem(sector: SectorMesh, section: CrossSection) -> npt.NDArray[np.str_]:
     """Material of every element, rotor first."""
     parts: tuple[tuple[PlanarMesh, tuple[Region, ...]], ...] = (
         (sector.rotor, section.rotor),
@@ -236,7 +239,7 @@ def _material_of_elem(sector: SectorMesh, section: CrossSection) -> npt.NDArray[
     return np.concatenate(materials)
 
 
-def _joined(sector: SectorMesh) -> tuple[FloatArray, IntArray]:
+def joined_parts(sector: SectorMesh) -> tuple[FloatArray, IntArray]:
     """Nodes and elements of both parts in the model's numbering."""
     n_rotor = sector.rotor.nodes.shape[0]
     nodes = np.concatenate([sector.rotor.nodes, sector.stator.nodes])
@@ -256,7 +259,9 @@ def _rotor_gap(rotor: PlanarMesh, gap: IntArray, entries: Entries, n_dof: int) -
     )
 
 
-def _linkage(sector: SectorMesh, winding: WindingTable, numbering: Numbering) -> FloatArray:
+def linkage_functional(
+    sector: SectorMesh, winding: WindingTable, numbering: Numbering
+) -> FloatArray:
     """Phase linkage (3, n_dof) of one pole per metre of stack, in turns: psi = linkage @ a.
 
     It is the right side of the field equation too, for 1 A in a phase (reciprocity).
@@ -288,7 +293,7 @@ def stator_functional(numbering: Numbering, sector: SectorMesh, nodal: FloatArra
     return np.array(rows)
 
 
-def _representatives(numbering: Numbering, sector: SectorMesh) -> IntArray:
+def representatives(numbering: Numbering, sector: SectorMesh) -> IntArray:
     """A node of every unknown; the circle's are the stator's."""
     candidates = np.flatnonzero(numbering.sign > 0.0)
     n_rotor = sector.rotor.nodes.shape[0]

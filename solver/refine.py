@@ -71,7 +71,7 @@ def refined(
     """
     elements = mesh.elements[np.arange(len(mesh.elements))[:, None], _TURNS[_longest(mesh)]]
     halved = _closure(mesh, elements, marked, sides)
-    on_circle = _circle_of_middle(mesh, circles)
+    on_circle = circle_of_middles(mesh, circles)
     corners, places, parent = _children(elements, halved)
     edges = np.stack([corners[:, [0, 1]], corners[:, [1, 2]], corners[:, [2, 0]]], axis=1)
     known, middle_places, parent_middle = _middles(elements[parent], places, halved)
@@ -85,7 +85,7 @@ def refined(
     new_nodes = np.einsum("ni,nid->nd", shapes, mesh.nodes[elements[parent[source]]])
     carrier = parent_middle[source, side]
     circle = np.where(carrier >= 0, on_circle[carrier], -1)
-    _put_on_circles(new_nodes, mesh.nodes[edges[source, side]], circle, circles)
+    put_on_circles(new_nodes, mesh.nodes[edges[source, side]], circle, circles)
     nodes = np.concatenate([mesh.nodes, new_nodes])
     middles = number[back].reshape(-1, 3)
     return PlanarMesh(
@@ -122,7 +122,7 @@ def _closure(
     return halved
 
 
-def _circle_of_middle(mesh: PlanarMesh, circles: Circles) -> IntArray:
+def circle_of_middles(mesh: PlanarMesh, circles: Circles) -> IntArray:
     """For each middle node of an edge of the outline, the circle its edge lies on, else -1."""
     edges = element_edges(mesh)
     region = np.repeat(mesh.region_of_elem, 3)
@@ -174,7 +174,7 @@ def _middles(
     return np.where(whole, carrier, -1), middle, carrier
 
 
-def _put_on_circles(
+def put_on_circles(
     points: FloatArray, ends: FloatArray, circle: IntArray, circles: Circles
 ) -> None:
     """Move `points` (n, 2) to the middle of the arc between `ends` (n, 2, 2), in place."""
