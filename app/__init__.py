@@ -7,11 +7,15 @@ In: a design file. Out: a folder with verdict, tables, pictures and punch outlin
 from importlib import import_module
 from typing import TYPE_CHECKING
 
+from .threads import hold_threads
+
 if TYPE_CHECKING:
     from .lamination import outline as outline
     from .point import read_machine as read_machine
     from .point import solve as solve
     from .run import assess as assess
+
+hold_threads()  # works only before numpy is imported, so it cannot wait for a name
 
 _HOME_OF = {
     "assess": "run",

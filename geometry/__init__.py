@@ -24,6 +24,7 @@ if TYPE_CHECKING:
     from .errors import Finding as Finding
     from .errors import GeometryError as GeometryError
     from .errors import LamwrightError as LamwrightError
+    from .errors import MeshError as MeshError
     from .errors import NotConverged as NotConverged
     from .section import CrossSection as CrossSection
     from .section import Region as Region
@@ -41,6 +42,7 @@ _HOME_OF = {
     "LamwrightError": "errors",
     "Machine": "design_file",
     "MachineDesign": "design",
+    "MeshError": "errors",
     "NotConverged": "errors",
     "Path": "curves",
     "Region": "section",

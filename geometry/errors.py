@@ -37,6 +37,12 @@ class NotConverged(LamwrightError, RuntimeError):
         self.history = history
 
 
+class MeshError(LamwrightError, ValueError):
+    """An outline that the mesher cannot fill with sound elements."""
+
+    exit_code = 3
+
+
 @dataclass(frozen=True, slots=True)
 class Finding:
     """One fault of a design: stable code, key as written in the file, its value, what would fit."""

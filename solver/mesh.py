@@ -20,6 +20,7 @@ from threading import Lock, current_thread, main_thread
 import numpy as np
 
 from lamwright.geometry.curves import Edge
+from lamwright.geometry.errors import MeshError
 from lamwright.geometry.section import CrossSection, Region
 
 from .mesh_checks import least_jacobian_share
@@ -79,7 +80,8 @@ def mesh_regions(
         Mesh with `region_of_elem` in the order of `regions`.
 
     Raises:
-        ValueError: where a path is open or the mesh cannot be made valid.
+        ValueError: where a path is open.
+        MeshError: where the mesh cannot be made valid.
     """
     settings = settings or RegionSettings()
     outline = outline_of(regions)
@@ -106,7 +108,7 @@ def mesh_section(section: CrossSection, settings: MeshSettings | None = None) ->
         Both meshes in their own frames, with the same evenly spaced nodes on the turning circle.
 
     Raises:
-        ValueError: where the mesh cannot be made valid.
+        MeshError: where the mesh cannot be made valid.
     """
     settings = settings or MeshSettings()
     n_circle = circle_edges(section, settings)
@@ -154,7 +156,7 @@ def mesh_lamination(
         The iron only; nodes on the side at angle pi / pole_pairs are those at angle 0, turned.
 
     Raises:
-        ValueError: where the mesh cannot be made valid.
+        MeshError: where the mesh cannot be made valid.
     """
     settings = settings or MeshSettings()
     iron = [region for region in section.rotor if region.name == "rotor_iron"]
@@ -197,7 +199,7 @@ def _mesh(
         # Corner numbers before unused nodes were dropped are those of `corners`.
         touched = np.isin(steps.steps, corners[bad]).all(axis=1)
         sizing = _finer(outline, sizing, np.unique(steps.edge_of_step[touched]), shares)
-    raise ValueError(f"{int(bad.sum())} elements stay turned over after {MAX_ROUNDS} refinements")
+    raise MeshError(f"{int(bad.sum())} elements stay turned over after {MAX_ROUNDS} refinements")
 
 
 def _finer(
@@ -293,7 +295,7 @@ def _run_gmsh(
         try:
             gmsh.model.mesh.generate(2)
         except Exception as fault:  # gmsh raises no narrower kind
-            raise ValueError(f"no mesh between these edges: {fault}") from fault
+            raise MeshError(f"no mesh between these edges: {fault}") from fault
         tags, coords, _ = gmsh.model.mesh.getNodes()
         found = [gmsh.model.mesh.getElementsByType(2, k + 1)[1] for k in range(len(loops))]
     finally:
