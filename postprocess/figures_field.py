@@ -6,7 +6,7 @@ what antiperiodicity means. Its gap is sheared as in the solution, so both meshe
 on the turning circle and flux lines run through it unbroken.
 
 |B| is taken in each element for itself: it jumps where materials meet, and between elements by
-as much as the solution does. Cost measured: see `tests/postprocess/test_figures.py`.
+as much as the solution does.
 """
 
 from __future__ import annotations
