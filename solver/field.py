@@ -24,7 +24,7 @@ from .kernel import (
 from .linear import SparseSolver, analyse
 from .model import FieldSettings, MagneticModel, linear_tangent, magnetic_model
 from .newton import minimise
-from .pattern import node_values, summed, turn_gap, turned_numbering
+from .pattern import node_values, summed, turn_gap, turned_ends, turned_numbering
 from .steel import NU_0
 from .types import FieldSolution, FloatArray, IntArray, Quadrature
 
@@ -170,7 +170,12 @@ def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
     # Turning by a whole pole changes signs but no partner.
     solver = model.factors.get(
         place.shift % model.sector.n_circle,
-        lambda: analyse(pattern.indptr, pattern.indices, model.settings.solver),
+        lambda: analyse(
+            pattern.indptr,
+            pattern.indices,
+            model.settings.solver,
+            turned_ends(numbering, model.ends, place.shift),
+        ),
     )
     return Position(
         dof=dof,

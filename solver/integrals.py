@@ -53,9 +53,10 @@ def gap_torque(quad: Quadrature, places: FloatArray, a_elem: FloatArray, thickne
 
 def steel_energies(quad: Quadrature, state: FluxState, law: SteelLaw) -> tuple[float, float]:
     """Energy and coenergy of elements of one steel, per metre of stack, in J/m."""
-    b2 = state.grad_a[..., 0] ** 2 + state.grad_a[..., 1] ** 2
+    b2 = np.sum(state.grad_a**2, axis=-1)
     energy = float(np.sum(quad.weight * law.energy_density(b2)))
-    return energy, float(np.sum(quad.weight * law.coenergy_density(b2)))
+    # int B dH = H B - int H dB, H B = nu |B|^2
+    return energy, float(np.sum(quad.weight * state.nu * b2)) - energy
 
 
 def flux_density(mesh: PlanarMesh, a: FloatArray) -> FloatArray:

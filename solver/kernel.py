@@ -72,7 +72,7 @@ def shape_integrals(nodes: FloatArray, elements: IntArray) -> FloatArray:
 
 def quadrature_places(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> FloatArray:
     """Positions of the quadrature points, (n_elem, n_qp, 2) in m."""
-    places: FloatArray = np.einsum("qi,eid->eqd", shape(_POINTS[n_qp][0]), nodes[elements])
+    places: FloatArray = shape(_POINTS[n_qp][0]) @ nodes[elements]
     return places
 
 

@@ -6,6 +6,12 @@ third of SuperLU's time and the analysis is kept. qdldl comes next, then SuperLU
 always brings. Values are those of the lower triangle by columns, so that they can be written in
 place; qdldl does not notice a changed pattern (it returns garbage), which is why no solver here
 accepts anything but values.
+
+CHOLMOD's order of elimination (minimum degree, Amestoy, Davis & Duff 1996) is found on the
+triangles' corners alone, a quarter of the unknowns; a mid-side unknown goes before the first of its
+two ends. Analysis 8 instead of 19 ms, factors as good (15 k unknowns, measured). Tried without
+gain there: circle last, which would serve all rotor positions with one analysis (factors 19 instead
+of 13 ms); linear regions condensed beforehand (19 instead of 16 ms).
 """
 
 from typing import Literal, Protocol
@@ -28,17 +34,24 @@ class SparseSolver(Protocol):
         """Solution for one right side (n,) with the last factorised values."""
 
 
-def analyse(indptr: IntArray, indices: IntArray, method: Method = "auto") -> SparseSolver:
+def analyse(
+    indptr: IntArray,
+    indices: IntArray,
+    method: Method = "auto",
+    ends: IntArray | None = None,
+) -> SparseSolver:
     """Solver for a pattern.
 
     Args:
         indptr: (n + 1,) starts of the columns of the lower triangle.
         indices: (n_entry,) rows, rising inside a column, the diagonal first.
         method: which library; `auto` takes the first that loads.
+        ends: (n, 2), the two corners of every mid-side unknown (n where held), a corner twice
+            itself; helps CHOLMOD to order.
     """
     if method in ("auto", "cholmod"):
         try:
-            return CholmodSolver(indptr, indices)
+            return CholmodSolver(indptr, indices, ends)
         except ImportError:
             if method == "cholmod":
                 raise
@@ -54,7 +67,7 @@ def analyse(indptr: IntArray, indices: IntArray, method: Method = "auto") -> Spa
 class CholmodSolver:
     """Supernodal Cholesky of CHOLMOD (Chen, Davis, Hager & Rajamanickam 2008) through cvxopt."""
 
-    def __init__(self, indptr: IntArray, indices: IntArray) -> None:
+    def __init__(self, indptr: IntArray, indices: IntArray, ends: IntArray | None = None) -> None:
         """Analyse the pattern: fill-reducing ordering and elimination tree."""
         from cvxopt import cholmod, matrix, spmatrix
 
@@ -62,7 +75,18 @@ class CholmodSolver:
         columns = np.repeat(np.arange(n), np.diff(indptr))
         self._cholmod, self._as_matrix = cholmod, matrix
         self._matrix = spmatrix(1.0, matrix(indices), matrix(columns), (n, n))
-        self._factor = cholmod.symbolic(self._matrix, uplo="L")
+        if ends is None:
+            self._factor = cholmod.symbolic(self._matrix, uplo="L")
+        else:
+            order = _order_by_corners(columns, indices, ends)
+            # Else CHOLMOD would try its own order too. The options belong to the whole process.
+            before = dict(cholmod.options)
+            cholmod.options["nmethods"] = 1
+            try:
+                self._factor = cholmod.symbolic(self._matrix, matrix(order), uplo="L")
+            finally:
+                cholmod.options.clear()
+                cholmod.options.update(before)
 
     def factorise(self, values: FloatArray) -> None:
         """Factorise the matrix with these values of its lower triangle by columns."""
@@ -74,6 +98,24 @@ class CholmodSolver:
         solution = self._as_matrix(rhs)
         self._cholmod.solve(self._factor, solution)
         return np.array(solution, dtype=np.float64).ravel()
+
+
+def _order_by_corners(columns: IntArray, rows: IntArray, ends: IntArray) -> IntArray:
+    """Elimination order (n,): minimum degree on the corners, middles before their first end."""
+    from cvxopt import amd, matrix, spmatrix
+
+    n = ends.shape[0]
+    is_corner = ends[:, 0] == np.arange(n)
+    corner = np.flatnonzero(is_corner)
+    number = np.cumsum(is_corner) - 1
+    kept = is_corner[rows] & is_corner[columns]
+    graph = spmatrix(
+        1.0, matrix(number[rows[kept]]), matrix(number[columns[kept]]), (corner.size, corner.size)
+    )
+    turn = np.full(n + 1, n, dtype=np.int64)  # when a corner is eliminated; held ones never
+    turn[corner[np.array(amd.order(graph, uplo="L")).ravel()]] = np.arange(corner.size)
+    key = 2 * turn[ends].min(axis=1) + is_corner
+    return np.argsort(key, kind="stable").astype(np.int64)
 
 
 class QdldlSolver:

@@ -128,6 +128,30 @@ def turned_numbering(numbering: Numbering, shift: int) -> tuple[IntArray, FloatA
     return dof, sign
 
 
+def edge_ends(numbering: Numbering, elements: IntArray) -> IntArray:
+    """The corners (n_dof, 2) between which every mid-side unknown lies; a corner twice itself.
+
+    Args:
+        numbering: at shift 0.
+        elements: (n_elem, 6), the rotor's first, so that the circle's are the stator's.
+    """
+    dof = numbering.dof[elements]
+    ends = np.tile(np.arange(numbering.n_dof + 1)[:, None], (1, 2))
+    for start, end, middle in ((0, 1, 3), (1, 2, 4), (0, 2, 5)):
+        ends[dof[:, middle]] = dof[:, [start, end]]
+    return ends[:-1]
+
+
+def turned_ends(numbering: Numbering, ends: IntArray, shift: int) -> IntArray:
+    """The same with the rotor `shift` edges ahead."""
+    rotor = slice(None, numbering.n_rotor)
+    on_ring = (ends[rotor] >= numbering.first_ring) & (ends[rotor] < numbering.n_dof)
+    moved = ends.copy()
+    number, _ = turned(ends[rotor] - numbering.first_ring, shift, numbering.n_ring)
+    moved[rotor] = np.where(on_ring, numbering.first_ring + number, ends[rotor])
+    return moved
+
+
 def node_values(dof: IntArray, sign: FloatArray, a: FloatArray) -> FloatArray:
     """Nodal potentials (n_node,) from the unknowns `a` (n_dof,)."""
     values: FloatArray = sign * np.append(a, 0.0)[dof]
