@@ -104,6 +104,7 @@ def solve_point(
 
     Raises:
         NotConverged: when Newton's iteration fails, with its history.
+        ValueError: when `start` is of another mesh.
     """
     theta_e = model.sector.pole_pairs * position
     currents = phase_currents(i_d, i_q, theta_e)
@@ -112,7 +113,7 @@ def solve_point(
     energy = PointEnergy(model, place, load)
     a = np.zeros(load.size)
     if start is not None:
-        a = np.concatenate([start.a_rotor, start.a_stator])[model.representative]
+        a = _unknowns(model, start)
     scale = float(np.linalg.norm(load))
     if scale == 0.0:
         a, scale = np.zeros(load.size), 1.0
@@ -123,6 +124,7 @@ def solve_point(
     psi_abc = per_machine * (model.linkage @ a)
     psi_d, psi_q = dq_values(psi_abc, theta_e)
     a_node = node_values(place.dof, place.sign, a)
+    a_node.flags.writeable = psi_abc.flags.writeable = False
     stored, costored = _energies(model, state)
     linear = 0.5 * float(a @ place.times(a))
     n_rotor = model.sector.rotor.nodes.shape[0]
@@ -146,6 +148,14 @@ def solve_point(
         coenergy=per_machine * (costored + linear),
         newton=report,
     )
+
+
+def _unknowns(model: MagneticModel, start: FieldSolution) -> FloatArray:
+    """Unknowns (n_dof,) of a solution of the same meshes."""
+    own = (model.sector.rotor.nodes.shape[0], model.sector.stator.nodes.shape[0])
+    if (start.a_rotor.size, start.a_stator.size) != own:
+        raise ValueError("start: a solution on another mesh")
+    return np.concatenate([start.a_rotor, start.a_stator])[model.representative]
 
 
 def at_position(model: MagneticModel, position: float) -> Position:

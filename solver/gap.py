@@ -15,7 +15,7 @@ import numpy as np
 
 from .types import FloatArray, IntArray, SectorMesh
 
-REST_TOL = 1e-9  # of an edge; smaller rests are rounding of the angle
+REST_DIGITS = 9  # of an edge; what lies below is rounding of the angle, and no other position
 ON_CIRCLE_TOL = 1e-6  # of the radius, far below an element's height
 
 
@@ -31,8 +31,8 @@ def rotor_place(sector: SectorMesh, angle: float) -> RotorPlace:
     """The place of a rotor whose d axis stands at `angle` rad in the stator's frame."""
     edge = math.pi / (sector.pole_pairs * sector.n_circle)
     shift = round(angle / edge)
-    rest = angle - shift * edge
-    return RotorPlace(shift, 0.0 if abs(rest) < REST_TOL * edge else rest)
+    share = round(angle / edge - shift, REST_DIGITS)
+    return RotorPlace(shift, share * edge)
 
 
 def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntArray]:

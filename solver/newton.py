@@ -6,6 +6,9 @@ Each step solves K da = -r and looks along da for a point where the slope of F, 
 has fallen enough: a zero of a rising function of s, so it is bracketed and found by the
 regula falsi (Illinois form, Dowell & Jarratt 1971). As F is convex the iteration cannot fail but
 by rounding. Near the solution s = 1 passes at once and convergence is quadratic.
+
+Tried without gain: steps with the last factor held (as many factors, 1.55 instead of 1.47 s for a
+chain of 10); a start from uniformly saturated steel (10.2 instead of 10.4 steps, and one solve).
 """
 
 import time

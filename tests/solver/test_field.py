@@ -242,6 +242,21 @@ def test_least_and_most_flux_lie_90_el_degrees_apart(linear: MagneticModel) -> N
     assert int(np.argmin(psi)) == 9
 
 
+def test_more_permeable_shaft_raises_the_coenergy(demo: Shipped, model: MagneticModel) -> None:
+    """More permeance anywhere never lowers the coenergy at given currents (variational)."""
+    settings = dataclasses.replace(model.settings, shaft_relative_permeability=500.0)
+    law = model.iron.rotor_law
+    other = magnetic_model(demo.sector, demo.section, demo.winding, law, law, settings)
+    assert solve_point(other, 12.0, 6.0, 0.0).coenergy > solve_point(model, 12.0, 6.0, 0.0).coenergy
+
+
+def test_start_on_another_mesh_is_refused(model: MagneticModel) -> None:
+    """Its numbers would be taken for this mesh's nodes."""
+    other = solve_point(shipped_model(DEMO), 1.0, 1.0, 0.0)
+    with pytest.raises(ValueError, match="start: a solution on another mesh"):
+        solve_point(model, 1.0, 1.0, 0.0, other)
+
+
 def test_zero_current_is_zero_field(model: MagneticModel, loaded: FieldSolution) -> None:
     """No source, no field: also from a warm start, without a Newton step."""
     solution = solve_point(model, 0.0, 0.0, 0.2, loaded)

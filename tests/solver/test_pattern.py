@@ -8,7 +8,7 @@ from lamwright.solver.field import at_position
 from lamwright.solver.gap import sheared
 from lamwright.solver.kernel import PACKED_COLUMNS, PACKED_ROWS, quadrature
 from lamwright.solver.model import MagneticModel, linear_tangent
-from lamwright.solver.pattern import node_values, number_unknowns, turned_numbering
+from lamwright.solver.pattern import node_values, number_unknowns, turned_ends, turned_numbering
 from lamwright.solver.steel import NU_0, linear_law
 from lamwright.solver.types import FloatArray
 
@@ -80,6 +80,21 @@ def test_rows_rise_with_the_diagonal_first(model: MagneticModel) -> None:
             rows = lower.indices[lower.indptr[k] : lower.indptr[k + 1]]
             assert rows[0] == k
             assert np.all(np.diff(rows) > 0)
+
+
+@pytest.mark.parametrize("shift", [0, 3, 5, 11])
+def test_middles_know_their_corners(model: MagneticModel, shift: int) -> None:
+    """A mid-side unknown is coupled to both its ends, wherever the rotor stands."""
+    ends = turned_ends(model.numbering, model.ends, shift)
+    lower = at_position(model, shift * EDGE).lower.copy()
+    lower.data = np.ones(lower.nnz)  # the pattern alone: steel's entries come with its state
+    coupled = (lower + lower.T).tocsr()
+    n_dof = model.numbering.n_dof
+    middles = np.flatnonzero(ends[:, 0] != np.arange(n_dof))
+    assert middles.size > n_dof / 2
+    pairs = [(k, end) for k in middles for end in ends[k] if end < n_dof]
+    rows, columns = np.array(pairs).T
+    assert np.all(np.asarray(coupled[rows, columns]) != 0.0)
 
 
 @pytest.mark.parametrize("machine", [MACHINE, COARSE])
