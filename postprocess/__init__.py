@@ -9,6 +9,7 @@ from importlib import import_module
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
+    from .figures import Pictured as Pictured
     from .figures import write_figures as write_figures
     from .ribs import RibReport as RibReport
     from .ribs import rib_report as rib_report
@@ -17,6 +18,7 @@ if TYPE_CHECKING:
     from .verdict import judged as judged
 
 _HOME_OF = {
+    "Pictured": "figures",
     "RibReport": "ribs",
     "TorqueWaveform": "torque",
     "Verdict": "verdict",
