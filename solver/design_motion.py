@@ -1,0 +1,161 @@
+"""How one pole's meshes and radii follow each length and angle of the design file.
+
+Outlines at a key a little smaller and a little larger are drawn exactly (no checks: 3 ms each) and
+compared edge by edge. Where the shape changes in kind on one side, as when a fillet just fits, the
+other side alone is taken.
+Axes: n_on nodes on the outline of a part, n_node nodes of its mesh.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+
+from lamwright.geometry.design import BarrierDesign, MachineDesign
+from lamwright.geometry.errors import GeometryError
+from lamwright.geometry.remedies import barrier_key, value_of, with_value
+from lamwright.geometry.rotor import rotor_frame, rotor_regions
+from lamwright.geometry.section import Region
+from lamwright.geometry.stator import stator_regions
+
+from .mesh_motion import (
+    EdgeTable,
+    MeshExtension,
+    OutlineNodes,
+    edge_table,
+    mesh_extension,
+    outline_nodes,
+    outline_velocity,
+    same_kind,
+)
+from .types import FloatArray, PlanarMesh
+
+MM = 1e-3  # m
+# mm or degrees: the outline's own curvature then errs by 1e-7 of a motion, rounding by 1e-9.
+KEY_STEP = 1e-3
+
+Draw = Callable[[MachineDesign], tuple[Region, ...]]
+
+
+@dataclass(frozen=True, slots=True)
+class SizeMotion:
+    """What the field's formulas take besides nodes: radii and stack, m per mm or degree."""
+
+    rim_radius: float
+    bore_radius: float
+    stack_length: float
+
+    @property
+    def circle_radius(self) -> float:
+        """Of the turning circle, half-way between rim and bore."""
+        return 0.5 * (self.rim_radius + self.bore_radius)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class PartMotion:
+    """One mesh (rotor, stator or lamination) tied to the regions it was made of."""
+
+    on: OutlineNodes
+    extension: MeshExtension
+    table: EdgeTable
+    draw: Draw
+
+    def velocity(self, design: MachineDesign, key: str) -> FloatArray:
+        """Motion (n_on, 2) of the outline's nodes in m per mm or degree of the key.
+
+        Raises:
+            ValueError: where the outline changes in kind on both sides of the key's value.
+        """
+        value = value_of(design, key)
+        below, above = (self._drawn(design, key, value + s) for s in (-KEY_STEP, KEY_STEP))
+        low, high = below or self.table, above or self.table
+        sides = (below is not None) + (above is not None)
+        if not sides:
+            raise ValueError(f"{key} = {value:g}: the outline is another one on both sides of it")
+        return outline_velocity(self.on, low, high, sides * KEY_STEP)
+
+    def _drawn(self, design: MachineDesign, key: str, value: float) -> EdgeTable | None:
+        """The outline with another value of a key; None where it is of another kind."""
+        if value < 0.0:  # no length or angle is
+            return None
+        try:
+            table = edge_table(self.draw(with_value(design, key, value)))
+        except (ValueError, GeometryError):
+            return None
+        return table if same_kind(table, self.table) else None
+
+
+def part_motion(mesh: PlanarMesh, design: MachineDesign, draw: Draw) -> PartMotion:
+    """Ties a mesh to the regions that `draw` makes of the design.
+
+    Raises:
+        ValueError: when the mesh is not one of these regions.
+    """
+    table = edge_table(draw(design))
+    on = outline_nodes(mesh, table)
+    return PartMotion(on, mesh_extension(mesh, on), table, draw)
+
+
+def draw_rotor(design: MachineDesign) -> tuple[Region, ...]:
+    """The rotor's regions."""
+    return rotor_regions(design)[0]
+
+
+def draw_lamination(design: MachineDesign) -> tuple[Region, ...]:
+    """The rotor's iron alone, as meshed for stress."""
+    return tuple(region for region in draw_rotor(design) if region.name == "rotor_iron")
+
+
+def draw_stator(design: MachineDesign) -> tuple[Region, ...]:
+    """The stator's regions."""
+    return stator_regions(design)
+
+
+def size_motion(design: MachineDesign, key: str) -> SizeMotion:
+    """Change of radii and stack in m per mm or degree of the key; they are linear in all keys."""
+    value = value_of(design, key)
+    low, high = (with_value(design, key, value + s) for s in (-KEY_STEP, KEY_STEP))
+
+    def slope(of: Callable[[MachineDesign], float]) -> float:
+        return (of(high) - of(low)) / (2.0 * KEY_STEP)
+
+    return SizeMotion(
+        rim_radius=slope(lambda d: rotor_frame(d).rotor_radius),
+        bore_radius=slope(lambda d: 0.5 * MM * d.stator.bore_diameter_mm),
+        stack_length=slope(lambda d: MM * d.stator.stack_length_mm),
+    )
+
+
+def shape_keys(design: MachineDesign) -> tuple[str, ...]:
+    """Every length and angle of stator, rotor and barriers, defaults that are in use included."""
+    keys = [
+        f"{table}.{name}"
+        for table in ("stator", "rotor")
+        for name in type(getattr(design, table)).model_fields
+        if _is_shape(name)
+    ]
+    for number, barrier in enumerate(design.rotor.barrier, start=1):
+        names = [name for name in type(barrier).model_fields if _is_used(barrier, name)]
+        keys += [barrier_key(number, name) for name in names]
+    return tuple(keys)
+
+
+def _is_shape(name: str) -> bool:
+    return name.endswith(("_mm", "_deg"))
+
+
+def _is_used(barrier: BarrierDesign, name: str) -> bool:
+    """Whether a barrier's key is stated, or acts by its default."""
+    if not _is_shape(name):
+        return False
+    if name in barrier.model_fields_set and getattr(barrier, name) is not None:
+        return True
+    if name == "fillet_mm":
+        return barrier.radial_ribs > 0
+    return name in ("arm_angle_deg", "bend_radius_mm") and barrier.shape == "straight"
+
+
+def moved_mesh(mesh: PlanarMesh, motion: FloatArray, amount: float) -> PlanarMesh:
+    """The mesh with its nodes moved by `amount` of a key at `motion` (n_node, 2) in m per unit."""
+    nodes: FloatArray = mesh.nodes + amount * motion
+    return PlanarMesh(np.asarray(nodes), mesh.elements, mesh.region_of_elem, mesh.region_names)
