@@ -6,6 +6,7 @@ The thresholds below are this project's own promises for its default meshes and 
 from collections.abc import Iterator, Sequence
 
 from lamwright.geometry.design import SteelCard
+from lamwright.geometry.steel_card import curve_findings
 
 from .verdict import MagneticFigures, StressFigures, TerminalFigures
 
@@ -16,6 +17,9 @@ MOST_STRESS_ERROR = 0.02  # of the peak
 MOST_GROWTH = 0.2  # of the air gap
 
 STANDING = (
+    "rotors burst: these results support, and never replace, a qualified engineer's judgement, the"
+    " supplier's material certificate, an overspeed test in containment, and local codes and"
+    " standards",
     "two-dimensional field: end effects in the iron are not in it",
     "sinusoidal phase currents; iron, friction and AC copper loss are in no figure",
     "figures marked as estimates hold DC resistance and end-winding leakage by formula"
@@ -88,3 +92,5 @@ def _of_steel(card: SteelCard) -> Iterator[str]:
         by_source.setdefault(source, []).append(name)
     told = "; ".join(f"{', '.join(names)}: {source}" for source, names in by_source.items())
     yield f"steel card {card.name!r}: {told}"
+    for finding in curve_findings(card):
+        yield f"steel card {card.name!r}: {finding.text}"

@@ -5,6 +5,7 @@ import math
 
 import invented_verdict as invented
 import pytest
+from plates import steel_card
 
 from lamwright.geometry.design import SteelCard
 from lamwright.postprocess.cautions import STANDING, cautions
@@ -128,3 +129,19 @@ def test_steel_is_named_with_the_source_of_each_value():
     assert len(found) == len(STANDING) + 1
     assert found[0].startswith("steel card 'sheet': density, Young's modulus, Poisson's ratio,")
     assert "yield strength: certificate; magnetisation: measured" in found[0]
+
+
+def test_a_curve_that_leaves_steel_is_told():
+    """Points with dB/dH below mu_0 are not used; the reader must know, the file may be a copy."""
+    card = steel_card()
+    points = card.magnetisation
+    beyond = points.model_copy(
+        update={
+            "b_t": (*points.b_t, points.b_t[-1] + 1e-4),
+            "h_a_per_m": (*points.h_a_per_m, points.h_a_per_m[-1] + 1e4),
+        }
+    )
+    worse = card.model_copy(update={"magnetisation": beyond})
+    fault = "replaced by a slope of mu_0"
+    assert [fault in line for line in told(cards=(worse,))].count(True) == 1
+    assert [fault in line for line in told(cards=(card,))].count(True) == 0
