@@ -1,0 +1,119 @@
+"""This project's side of every pair: the README's design, meshed at a scale, and its Newton step.
+
+The only module here that knows the inside of the solver room.
+"""
+
+import math
+import pickle
+from dataclasses import dataclass
+from functools import lru_cache
+from pathlib import Path
+from typing import Generic
+
+import numpy as np
+from scipy.sparse import csc_matrix
+
+from lamwright.app.lamination import section_of
+from lamwright.app.point import model_of, read_machine
+from lamwright.geometry.design_file import Machine
+from lamwright.geometry.section import CrossSection
+from lamwright.solver.field import MagneticModel, PointEnergy, at_position, solve_point
+from lamwright.solver.integrals import phase_currents
+from lamwright.solver.kernel import FluxState, packed_tangent
+from lamwright.solver.mesh import mesh_section
+from lamwright.solver.mesh_plan import MeshSettings
+from lamwright.solver.newton import Energy, State
+from lamwright.solver.pattern import summed
+from lamwright.solver.types import FieldSolution, FloatArray
+
+ROOT = Path(__file__).parents[2]
+DESIGN = ROOT / "designs/demo_24s4p_arc.toml"
+POSITION = 0.0  # rad; shift 0: the sides of rotor and stator meet, as the other library needs
+BEFORE = 0.9  # share of the current at which a Newton step begins
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Case:
+    """The design with its pole meshed and its model built."""
+
+    machine: Machine
+    section: CrossSection
+    model: MagneticModel
+
+    @property
+    def unknowns(self) -> int:
+        """Number of unknowns."""
+        return self.model.numbering.n_dof
+
+    def currents(self, gamma: float, share: float = 1.0) -> tuple[float, float]:
+        """(i_d, i_q) in A at `share` of rated current, `gamma` degrees from the d axis."""
+        peak = share * self.machine.design.duty.rated_current_a
+        angle = math.radians(gamma)
+        return peak * math.cos(angle), peak * math.sin(angle)
+
+
+@lru_cache(maxsize=1)
+def case(scale: float) -> Case:
+    """The README's design at a mesh scale; the last one is kept."""
+    machine = read_machine(DESIGN)
+    section = section_of(machine)
+    sector = mesh_section(section, MeshSettings(scale=scale))
+    return Case(machine, section, model_of(machine, section, sector))
+
+
+def emptied(model: MagneticModel) -> MagneticModel:
+    """The model without factors: as a worker process gets it."""
+    copy: MagneticModel = pickle.loads(pickle.dumps(model))
+    return copy
+
+
+def phase_currents_of(case: Case, gamma: float) -> FloatArray:
+    """Currents (3,) in A at rated current."""
+    i_d, i_q = case.currents(gamma)
+    return phase_currents(i_d, i_q, case.model.sector.pole_pairs * POSITION)
+
+
+def point(case: Case, gamma: float) -> FieldSolution:
+    """An operating point at rated current, from nothing."""
+    return solve_point(case.model, *case.currents(gamma), POSITION)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class NewtonStep(Generic[State]):
+    """One full Newton step of any `Energy`: assemble, factorise, solve, residual at its end."""
+
+    energy: Energy[State]
+    a: FloatArray
+    residual: FloatArray
+    state: State
+
+    def __call__(self) -> FloatArray:
+        """The residual after the step."""
+        direction = self.energy.solve_tangent(self.state, -self.residual)
+        after, _ = self.energy.residual(self.a + direction)
+        return after
+
+
+def newton_step(energy: Energy[State], a: FloatArray) -> NewtonStep[State]:
+    """The step that begins at `a`."""
+    return NewtonStep(energy, a, *energy.residual(a))
+
+
+def point_energy(case: Case, gamma: float) -> PointEnergy:
+    """The energy that `solve_point` minimises, at rated current."""
+    load = phase_currents_of(case, gamma) @ case.model.linkage
+    return PointEnergy(case.model, at_position(case.model, POSITION), load)
+
+
+def unknowns_before(case: Case, gamma: float) -> FloatArray:
+    """Unknowns (n_dof,) of the field at somewhat less current: where a step begins."""
+    field = solve_point(case.model, *case.currents(gamma, BEFORE), POSITION)
+    return np.concatenate([field.a_rotor, field.a_stator])[case.model.representative]
+
+
+def tangent_matrix(energy: PointEnergy, state: FluxState) -> csc_matrix:
+    """The matrix of a Newton step, lower triangle by columns."""
+    iron, place = energy.model.iron, energy.position
+    lower = place.lower.copy()
+    lower.data = place.values + summed(iron.scatter, packed_tangent(iron.quad, state))
+    return lower

@@ -1,0 +1,26 @@
+"""All benchmarks by name."""
+
+from collections.abc import Callable
+
+from .chains import growth_exponent_points, growth_exponent_unknowns, map_point_ms
+from .processes import core_efficiency, design_seconds, peak_memory_mib
+from .steps import newton_step_ratio, operating_point_ratio, step_over_factorisation
+from .timing import Notes
+from .workload import Workload
+
+Benchmark = Callable[[Workload, Notes], dict[str, float]]
+
+BENCHMARKS: dict[str, Benchmark] = {
+    work.__name__: work
+    for work in (
+        newton_step_ratio,
+        operating_point_ratio,
+        step_over_factorisation,
+        design_seconds,
+        map_point_ms,
+        growth_exponent_unknowns,
+        growth_exponent_points,
+        core_efficiency,
+        peak_memory_mib,
+    )
+}
