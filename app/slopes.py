@@ -1,0 +1,202 @@
+"""What every length and angle of a design is worth: one field and one stress, no sweep.
+
+The current angle is searched as for the verdict. At the angle found the adjoint gives the slopes
+of the linkages at each search position, and of the ribs' peak at overspeed; each key then costs a
+dot product with the motion of the outline. Measured on the demonstration designs: see
+`tests/app/test_slopes.py`.
+"""
+
+import math
+from dataclasses import replace
+from pathlib import Path
+
+import click
+
+from lamwright.geometry.design import MachineDesign
+from lamwright.geometry.design_file import Machine
+from lamwright.geometry.remedies import value_of
+from lamwright.geometry.section import CrossSection
+from lamwright.geometry.winding import winding_table
+from lamwright.postprocess.figures_slopes import write_slopes
+from lamwright.postprocess.files import json_text, prepared_folder, staged, write_text
+from lamwright.postprocess.operating import (
+    best_angle,
+    dq_currents,
+    mean_linkage_torque,
+    search_positions,
+)
+from lamwright.postprocess.slopes import (
+    SHAPE_FIGURES,
+    KeySlope,
+    SlopeTable,
+    key_slope,
+    ranked,
+    shape_figures,
+    slopes_csv,
+    slopes_record,
+)
+from lamwright.postprocess.verdict import RPM
+from lamwright.solver.adjoint_field import OutlineSlope, linkage_slopes, mean_of, on_outline
+from lamwright.solver.adjoint_stress import PeakSlope, peak_slope, spinning_pole
+from lamwright.solver.design_motion import (
+    PartMotion,
+    draw_lamination,
+    draw_rotor,
+    draw_stator,
+    part_motion,
+    shape_keys,
+    size_motion,
+)
+from lamwright.solver.field import MagneticModel, solve_point
+from lamwright.solver.mesh import mesh_section
+from lamwright.solver.newton import NewtonSettings
+from lamwright.solver.rotor_stress import elastic_material, rotor_stress
+from lamwright.solver.types import FieldSolution, FloatArray
+
+from .lamination import section_of
+from .point import model_of, read_machine
+
+JSON_FILE, CSV_FILE = "slopes.json", "slopes.csv"
+# Of the fields that are differentiated: an adjoint sees the residual that is left.
+TOLERANCE = 1e-8
+
+
+def slopes(path: str | Path, out: str | Path) -> SlopeTable:
+    """Slopes of the design in the file `path`; table and tornado go to the folder `out`.
+
+    Raises:
+        DesignError: the design cannot be read or drawn; one line for each fault.
+        LamwrightError: the folder cannot be written.
+        NotConverged: an iteration did not end; with its history.
+    """
+    machine = read_machine(path)
+    section = section_of(machine)
+    folder = prepared_folder(Path(out))
+    table = slopes_of(machine, section)
+    with staged(folder) as stage:
+        write_text(stage / CSV_FILE, slopes_csv(table))
+        write_text(stage / JSON_FILE, json_text(slopes_record(table)))
+        write_slopes(stage, table)
+    return table
+
+
+def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
+    """The table of a machine whose pole is drawn.
+
+    Raises:
+        NotConverged: an iteration did not end; with its history.
+    """
+    design = machine.design
+    sector = mesh_section(section)
+    model = model_of(machine, section, sector)
+    i_d, i_q, fields = searched(model, design)
+    rotor = part_motion(sector.rotor, design, draw_rotor)
+    stator = part_motion(sector.stator, design, draw_stator)
+    linkages = _linkages(model, section, design, fields, (rotor, stator))
+    lamination, peak, peak_on_outline = _peak(machine, section)
+    at = shape_figures(
+        design.pole_pairs,
+        i_d,
+        i_q,
+        psi_d=linkages[0].value,
+        psi_q=linkages[1].value,
+        rib_peak=peak.peak,
+    )
+    rows: list[KeySlope] = []
+    left_out: list[str] = []
+    for key in shape_keys(design):
+        try:
+            moves = [part.velocity(design, key) for part in (rotor, stator, lamination)]
+        except ValueError as reason:
+            left_out.append(str(reason))
+            continue
+        sizes = size_motion(design, key)
+        by_key = {
+            "psi_d": linkages[0].by_key(moves[0], moves[1], sizes),
+            "psi_q": linkages[1].by_key(moves[0], moves[1], sizes),
+            "rib_peak": float((peak_on_outline * moves[2]).sum()),
+        }
+        value = value_of(design, key)
+        rows.append(key_slope(key, value, design.pole_pairs, (i_d, i_q), at, by_key))
+    return SlopeTable(design.name, i_d, i_q, at, peak.bias, ranked(rows), tuple(left_out))
+
+
+def searched(
+    model: MagneticModel, design: MachineDesign
+) -> tuple[float, float, tuple[FieldSolution, ...]]:
+    """Currents of most torque at rated current, and fields there at the search positions."""
+    pole_pairs = design.pole_pairs
+    positions = search_positions(pole_pairs, design.stator.slots // (3 * design.rotor.poles))
+    last: list[FieldSolution] = []
+
+    def solved(gamma: float, model: MagneticModel) -> list[FieldSolution]:
+        i_d, i_q = dq_currents(design.duty.rated_current_a, gamma)
+        found: list[FieldSolution] = []
+        for k, position in enumerate(positions):
+            start = last[k] if last else found[-1] if found else None
+            found.append(solve_point(model, i_d, i_q, float(position), start))
+        return found
+
+    def torque_of(gamma: float) -> float:
+        last[:] = solved(gamma, model)
+        psi_d, psi_q = [f.psi_d for f in last], [f.psi_q for f in last]
+        return mean_linkage_torque(pole_pairs, last[0].i_d, last[0].i_q, psi_d, psi_q)
+
+    gamma = best_angle(torque_of).gamma
+    tight = replace(model.settings, newton=NewtonSettings(tolerance=TOLERANCE))
+    fields = solved(gamma, replace(model, settings=tight))
+    return fields[0].i_d, fields[0].i_q, tuple(fields)
+
+
+def _linkages(
+    model: MagneticModel,
+    section: CrossSection,
+    design: MachineDesign,
+    fields: tuple[FieldSolution, ...],
+    parts: tuple[PartMotion, PartMotion],
+) -> tuple[OutlineSlope, OutlineSlope]:
+    """Slopes of the mean psi_d and psi_q over the positions of the fields."""
+    winding = winding_table(design)
+    both = [linkage_slopes(model, section, winding, field) for field in fields]
+    d, q = (on_outline(mean_of([pair[axis] for pair in both]), *parts) for axis in (0, 1))
+    return d, q
+
+
+def _peak(machine: Machine, section: CrossSection) -> tuple[PartMotion, PeakSlope, FloatArray]:
+    """The lamination's motion, the ribs' peak at overspeed, and its slope on the outline.
+
+    The slope is scaled from the smoothed peak to the largest itself.
+    """
+    design, card = machine.design, machine.rotor_steel
+    speed = design.duty.overspeed_factor * design.duty.maximum_speed_rpm / RPM
+    solution = rotor_stress(section, card, speed)
+    pole = spinning_pole(section, solution.mesh, elastic_material(card), speed)
+    peak = peak_slope(pole, solution.displacement)
+    motion = part_motion(solution.mesh, design, draw_lamination)
+    return motion, peak, motion.extension.gathered(peak.slope) / (1.0 + peak.bias)
+
+
+def print_slopes(table: SlopeTable, folder: str) -> None:
+    """The table as plain text: values, then changes in percent, those of the torque ranked."""
+    names = [how.label for how in SHAPE_FIGURES.values()]
+    click.echo(table.design_name)
+    for name, (key, value) in zip(names, table.figures.shown().items(), strict=True):
+        click.echo(f"  {name:<22}  {value:.5g}  ({key})")
+    keys = [f"{row.key} = {row.value:g}" for row in table.rows]
+    left = max(map(len, keys), default=0)
+    click.echo(f"change in % per step  {'':<{max(0, left - 12)}}{'step':>8}" + _heads())
+    for key, row in zip(keys, table.rows, strict=True):
+        percents = [row.percent(name, table.figures) for name in SHAPE_FIGURES]
+        numbers = "".join(f"{_rounded(percent):>11}" for percent in percents)
+        click.echo(f"  {key:<{left}}  {row.step:>4g} {row.unit:<3}{numbers}")
+    for reason in table.left_out:
+        click.echo(f"left out: {reason}")
+    click.echo(f"at {table.i_d:.4g} A d and {table.i_q:.4g} A q, the angle held; files in {folder}")
+
+
+def _heads() -> str:
+    return "".join(f"{name:>11}" for name in ("torque", "saliency", "rib stress", "psi_d", "psi_q"))
+
+
+def _rounded(percent: float) -> str:
+    return "0" if percent == 0.0 or math.isclose(percent, 0.0, abs_tol=5e-6) else f"{percent:+.3g}"
