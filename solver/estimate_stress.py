@@ -22,7 +22,7 @@ from .types import FloatArray, StressSolution
 
 # Stress of second-order triangles converges with the square of the side at the least (textbook).
 BEYOND = 4.0 / 3.0
-# Of the worst rib's error, the least of any rib's: of 62 ribs one changed by a seventh of its error.
+# Of the worst rib's error, the least of any rib's: one of 62 changed by a seventh of its error.
 LEAST_SHARE = 0.25
 # Relative; below it peaks of two meshes differ by where their nodes are, not by their fields.
 LEAST_ERROR = 3e-5
@@ -53,4 +53,4 @@ def peak_errors(
     least = np.full(len(change), LEAST_ERROR)
     # The rest of the iron is not refined for its own sake; it tells nothing about the ribs.
     least[:-1] = max(LEAST_ERROR, LEAST_SHARE * BEYOND * float(change[:-1].max()))
-    return np.maximum(BEYOND * change, least)
+    return np.asarray(np.maximum(BEYOND * change, least))

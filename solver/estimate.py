@@ -1,0 +1,173 @@
+"""Error bars of torque, ripple and linkages from the solutions of one waveform.
+
+1. At a few positions the field is carried to a mesh four times as fine and corrected there
+   (`estimate_step`); the change of a figure times `BEYOND` is its error. BEYOND = 1/(1 - 2^-r)
+   with r = 4/3, the rate of energies at a right-angled corner of iron in air (singular exponent
+   2/3, textbook matter); smooth parts converge faster, down to a factor of 1.07 at r = 4.
+2. In the mean over a period torque is 3/2 p (psi_d i_q - psi_q i_d) exactly (derived: power
+   balance), so the mean torque by Maxwell's stress is off by its difference to that of the
+   linkages, known at all positions and free of cost, and by the linkages' own error.
+3. Ripple is off by the changes of torque at its highest and its lowest position.
+Independent parts are added: twice the standard error of the mean over the sampled positions, what
+conjugate gradients left (`KNOWN_TO`), a floor of Newton's iteration. What is not in it: the steel
+curve, the third dimension, the shape of the punched part. Linkages' and torque's claims against
+meshes of scale 0.25: tests/solver/test_estimate.py.
+Axes: n_sample sampled positions.
+"""
+
+import math
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from lamwright.geometry.section import CrossSection
+from lamwright.geometry.winding import WindingTable
+
+from .estimate_step import Change, changes, fine_level
+from .model import MagneticModel
+from .types import FieldSolution, FloatArray
+
+BEYOND = 1.0 / (1.0 - 2.0 ** (-4.0 / 3.0))  # 1.66, see above
+BEYOND_LEAST = 1.0 / (1.0 - 2.0**-4)  # 1.07
+KNOWN_TO = 0.1  # of a change: the tolerance of the last conjugate gradients
+NEWTON_FLOOR = 2e-6  # of a figure; at the residual allowed they are within 1e-6 (NewtonSettings)
+SAMPLES = 3  # evenly spaced positions for the linkages, whose errors waver little
+
+Figure = Callable[[float, float], float]  # psi_d, psi_q in V s -> a figure
+
+
+@dataclass(frozen=True, slots=True)
+class LinkageErrors:
+    """What is known of the error of the mean linkages in V s.
+
+    The truth is expected at psi + shift, within `doubt`.
+    """
+
+    shift_d: float
+    shift_q: float
+    doubt_d: float
+    doubt_q: float
+
+
+@dataclass(frozen=True, slots=True)
+class FieldErrors:
+    """Absolute errors of the means over a waveform, whole machine, SI."""
+
+    torque: float  # N m, of the mean by Maxwell's stress
+    torque_linkage: float  # N m, of the mean by the linkages
+    ripple: float  # of (max - min) / mean
+    psi_d: float  # V s
+    psi_q: float  # V s
+    linkages: LinkageErrors
+
+    def of(self, figure: Figure, psi_d: float, psi_q: float) -> float:
+        """Error of a figure that follows from the mean linkages in V s.
+
+        The shifts of both linkages act together, as they have the same cause and often cancel;
+        the doubts are added one by one.
+        """
+        own, known = figure(psi_d, psi_q), self.linkages
+        shifted = figure(psi_d + known.shift_d, psi_q + known.shift_q)
+        by_d = figure(psi_d + known.doubt_d, psi_q)
+        by_q = figure(psi_d, psi_q + known.doubt_q)
+        return abs(shifted - own) + abs(by_d - own) + abs(by_q - own)
+
+
+def field_errors(
+    model: MagneticModel,
+    section: CrossSection,
+    winding: WindingTable,
+    solutions: Sequence[FieldSolution],
+) -> FieldErrors:
+    """Error bars of a waveform, all in this process.
+
+    Args:
+        model: that the solutions are of.
+        section: the pole that the mesh is of.
+        winding: conductors of all slots.
+        solutions: equal currents, positions evenly spaced over 60 electrical degrees.
+    """
+    level = fine_level(model, section, winding)
+    sampled = {k: changes(level, solutions[k]) for k in sample_places(solutions)}
+    return errors_of(solutions, sampled, model.sector.pole_pairs)
+
+
+def sample_places(solutions: Sequence[FieldSolution]) -> tuple[int, ...]:
+    """The solutions to sample: evenly spaced, and those of most and least torque."""
+    count = len(solutions)
+    torque = np.array([s.torque for s in solutions])
+    even = {k * count // SAMPLES for k in range(min(SAMPLES, count))}
+    return tuple(sorted(even | {int(torque.argmax()), int(torque.argmin())}))
+
+
+def errors_of(
+    solutions: Sequence[FieldSolution], sampled: Mapping[int, Change], pole_pairs: int
+) -> FieldErrors:
+    """Error bars of a waveform from the changes at `sample_places`.
+
+    Args:
+        solutions: the whole waveform.
+        sampled: change of each sampled solution, by its place in `solutions`.
+        pole_pairs: of the machine.
+    """
+    i_d, i_q = solutions[0].i_d, solutions[0].i_q
+    torque = np.array([s.torque for s in solutions])
+    psi_d, psi_q = np.array([s.psi_d for s in solutions]), np.array([s.psi_q for s in solutions])
+    mean = float(torque.mean())
+    by_linkage = float(linkage_torque(pole_pairs, i_d, i_q, psi_d, psi_q).mean())
+    change_d = np.array([c.psi_d for c in sampled.values()])
+    change_q = np.array([c.psi_q for c in sampled.values()])
+    linkages = LinkageErrors(
+        shift_d=BEYOND * float(change_d.mean()),
+        shift_q=BEYOND * float(change_q.mean()),
+        doubt_d=_doubt(change_d, float(psi_d.mean())),
+        doubt_q=_doubt(change_q, float(psi_q.mean())),
+    )
+    change = linkage_torque(pole_pairs, i_d, i_q, change_d, change_q)
+    doubt = _doubt(change, by_linkage)
+    expected = float(change.mean())
+    torque_error = doubt + max(
+        abs(by_linkage - mean + share * expected) for share in (BEYOND_LEAST, BEYOND)
+    )
+    return FieldErrors(
+        torque=torque_error,
+        torque_linkage=BEYOND * abs(expected) + doubt,
+        ripple=_ripple_error(torque, sampled, torque_error),
+        psi_d=abs(linkages.shift_d) + linkages.doubt_d,
+        psi_q=abs(linkages.shift_q) + linkages.doubt_q,
+        linkages=linkages,
+    )
+
+
+def linkage_torque(
+    pole_pairs: int, i_d: float, i_q: float, psi_d: FloatArray, psi_q: FloatArray
+) -> FloatArray:
+    """Torque in N m of linkages in V s; in the mean over a period it is the torque."""
+    # T = 3/2 p (psi_d i_q - psi_q i_d), derived: power balance
+    return 1.5 * pole_pairs * (psi_d * i_q - psi_q * i_d)
+
+
+def angle_error(relative_torque_error: float, search_tolerance: float) -> float:
+    """Error in rad of the current angle of most torque.
+
+    Near it T = T_best (1 - 2 (gamma - gamma_best)^2), derived from sin 2 gamma. If the relative
+    error of T changes with gamma no faster than T itself does about 45 degrees (slope 2, an
+    assumption, not measured), it moves the best angle by a half of it.
+    """
+    return search_tolerance + 0.5 * abs(relative_torque_error)
+
+
+def _doubt(change: FloatArray, figure: float) -> float:
+    """What the changes (n_sample,) leave open of the error of a mean figure."""
+    scatter = 0.0
+    if len(change) > 1:
+        scatter = 2.0 * float(change.std(ddof=1)) / math.sqrt(len(change))
+    return scatter + KNOWN_TO * BEYOND * float(np.abs(change).mean()) + NEWTON_FLOOR * abs(figure)
+
+
+def _ripple_error(torque: FloatArray, sampled: Mapping[int, Change], torque_error: float) -> float:
+    mean = abs(float(torque.mean()))
+    high, low = (sampled[int(k)].torque for k in (torque.argmax(), torque.argmin()))
+    crests = BEYOND * (abs(high - low) + KNOWN_TO * (abs(high) + abs(low)))
+    return (crests + float(np.ptp(torque)) / mean * torque_error) / mean
