@@ -91,6 +91,17 @@ def outline(design: Path, out: Path) -> None:
 
 @main.command()
 @_DESIGN
+@_OUT
+def slopes(design: Path, out: Path) -> None:
+    """Change of torque, saliency and rib stress with each length and angle of DESIGN."""
+    from .slopes import print_slopes
+    from .slopes import slopes as run
+
+    print_slopes(run(design, out), str(out))
+
+
+@main.command()
+@_DESIGN
 @click.option("--i-d", required=True, type=float, help="d-axis current, A peak.")
 @click.option("--i-q", required=True, type=float, help="q-axis current, A peak.")
 @click.option(
