@@ -5,6 +5,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 import steel_s19
+from scipy.interpolate import CubicSpline
 from steel_s19 import s19_exact, s19_points, s19_tabulated
 
 from lamwright.geometry.design_file import read_steel_card
@@ -16,6 +17,7 @@ from lamwright.solver.steel import (
     law_from_function,
     law_from_points,
     linear_law,
+    natural_slopes,
     reluctivity_law,
 )
 
@@ -164,3 +166,13 @@ def test_points_in_wrong_units_are_refused() -> None:
     """H given in kA/m beside B in mT has a slope below mu0 from the start."""
     with pytest.raises(DesignError, match="check the units"):
         law_from_points(np.array([1e-7, 2e-7, 3e-7]), np.array([1.0, 2.0, 3.0]))
+
+
+@pytest.mark.parametrize("count", [2, 3, 4, 30])
+def test_slopes_are_those_of_the_natural_spline(count):
+    """Against SciPy's spline on uneven points; both solve the same system, so to rounding."""
+    rng = np.random.default_rng(count)
+    b = np.cumsum(rng.uniform(0.02, 0.3, count))
+    h = np.cumsum(1e4 * rng.uniform(0.01, 1.0, count) ** 4)
+    expected = CubicSpline(b, h, bc_type="natural")(b, 1)
+    assert natural_slopes(b, h) == pytest.approx(expected, rel=0.0, abs=1e-12 * expected.max())
