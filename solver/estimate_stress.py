@@ -17,7 +17,7 @@ from lamwright.geometry.section import CrossSection
 
 from .refine import refined
 from .rib_zones import zone_of_node
-from .rotor_stress import StressSettings, lamination_circles, peaks_on
+from .rotor_stress import StressSettings, lamination_circles, stress_on
 from .types import FloatArray, StressSolution
 
 # Stress of second-order triangles converges with the square of the side at the least (textbook).
@@ -28,13 +28,13 @@ LEAST_SHARE = 0.25
 LEAST_ERROR = 3e-5
 
 
-def peak_errors(
+def finer_stress(
     section: CrossSection,
     card: SteelCard,
     solution: StressSolution,
     settings: StressSettings | None = None,
-) -> FloatArray:
-    """Relative error (n_zone,) of the peak of each rib and of the rest of the iron.
+) -> StressSolution:
+    """The same load on the mesh with every triangle cut into four.
 
     Args:
         section: the pole.
@@ -42,15 +42,24 @@ def peak_errors(
         solution: from `rotor_stress`.
         settings: those of the solution.
     """
-    settings = settings or StressSettings()
-    zone = zone_of_node(section, solution.mesh)
-    peak = np.array([solution.von_mises[zone == k].max() for k in range(int(zone.max()) + 1)])
-    mesh = refined(
-        solution.mesh, np.arange(len(solution.mesh.elements)), lamination_circles(section)
-    )
-    fine = peaks_on(section, mesh, card, solution.speed, settings)
-    change: FloatArray = np.abs(fine / peak - 1.0)
+    every = np.arange(len(solution.mesh.elements))
+    mesh = refined(solution.mesh, every, lamination_circles(section))
+    return stress_on(section, mesh, card, solution.speed, settings or StressSettings())
+
+
+def peak_errors(
+    section: CrossSection, solution: StressSolution, finer: StressSolution
+) -> FloatArray:
+    """Relative error (n_zone,) of the peak of each rib and of the rest of the iron."""
+    coarse = zone_peaks(section, solution)
+    change = np.abs(zone_peaks(section, finer) / coarse - 1.0)
     least = np.full(len(change), LEAST_ERROR)
     # The rest of the iron is not refined for its own sake; it tells nothing about the ribs.
     least[:-1] = max(LEAST_ERROR, LEAST_SHARE * BEYOND * float(change[:-1].max()))
     return np.asarray(np.maximum(BEYOND * change, least))
+
+
+def zone_peaks(section: CrossSection, solution: StressSolution) -> FloatArray:
+    """Largest von Mises stress (n_zone,) in Pa of each rib and of the rest of the iron."""
+    zone = zone_of_node(section, solution.mesh)
+    return np.array([solution.von_mises[zone == k].max() for k in range(int(zone.max()) + 1)])

@@ -81,19 +81,20 @@ def lamination_circles(section: CrossSection) -> Circles:
     return circles_of(edge for path in (iron.outer, *iron.holes) for edge in path.edges)
 
 
-def peaks_on(
+def stress_on(
     section: CrossSection,
     mesh: PlanarMesh,
     card: SteelCard,
     speed: float,
     settings: StressSettings,
-) -> FloatArray:
-    """Largest von Mises stress (n_zone,) in Pa of each rib and of the rest, on a given mesh."""
+) -> StressSolution:
+    """Stress on a given mesh, as it is: its error is not estimated and stated as infinite."""
     n_zone = len(section.ribs) + 1
     # Errors of 0 are carried over, so no dual is solved.
     none = np.zeros(n_zone)
     known = PeakEstimate(none.astype(np.int64), none, none, np.zeros((0, n_zone)))
-    return _solved(section, mesh, elastic_material(card), speed, settings, known).estimate.peak
+    step = _solved(section, mesh, elastic_material(card), speed, settings, known)
+    return _solution(step, section, speed, math.inf, 0)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
