@@ -204,8 +204,8 @@ def natural_slopes(x: FloatArray, y: FloatArray) -> FloatArray:
     middle = 2.0 * np.concatenate([[1.0], width[:-1] + width[1:], [1.0]])
     matrix = np.diag(middle) + np.diag(before, -1) + np.diag(after, 1)
     inner = width[1:] * rise[:-1] + width[:-1] * rise[1:]
-    slopes: FloatArray = np.linalg.solve(matrix, 3.0 * np.concatenate([rise[:1], inner, rise[-1:]]))
-    return slopes
+    rhs = 3.0 * np.concatenate([rise[:1], inner, rise[-1:]])
+    return np.asarray(np.linalg.solve(matrix, rhs), dtype=np.float64)
 
 
 def _tail_length(b: FloatArray, secants: FloatArray) -> float:
