@@ -13,8 +13,9 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
-from lamwright.geometry.winding import winding_table
+from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
+from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
 from lamwright.postprocess.figures import FIGURES, Pictured
 from lamwright.postprocess.files import VERDICT_FILE, json_text, write_text
 from lamwright.postprocess.operating import (
@@ -38,6 +39,8 @@ from lamwright.postprocess.torque import (
 )
 from lamwright.postprocess.verdict import RPM, Verdict, judged
 from lamwright.solver.chains import OperatingPoint
+from lamwright.solver.estimate import FieldErrors, errors_of, sample_places
+from lamwright.solver.estimate_step import Change
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.types import FieldSolution
@@ -88,6 +91,8 @@ class Assessment:
             searched = self._searched()
         with watch.phase("torque waveform"):
             waveform_fields = self._waveform_fields(searched)
+        with watch.phase("error bars"):
+            field_errors = self._field_errors(waveform_fields)
         with watch.phase("stress"):
             stress = stress_to_come.result()
         watch.meanwhile("stress", stress.seconds)
@@ -95,7 +100,7 @@ class Assessment:
             self._draw(stage, model, waveform_fields, stress)
         fields = (*searched.fields, *waveform_fields)
         waveform = torque_waveform(waveform_fields, self.section.pole_pairs)
-        return self._written(stage, model, waveform, fields, stress)
+        return self._written(stage, model, waveform, field_errors, fields, stress)
 
     def _searched(self) -> _Searched:
         """Search the current angle with the linkages' mean over a few positions."""
@@ -131,6 +136,14 @@ class Assessment:
         done = self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
         return [field for chain in done for field in chain]
 
+    def _field_errors(self, fields: Sequence[FieldSolution]) -> FieldErrors:
+        """Error bars of the waveform from a few of its fields, shared by the crew."""
+        winding, places = winding_table(self.machine.design), sample_places(fields)
+        tasks = [partial(_change, self.section, winding, fields[k]) for k in places]
+        done = self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
+        changed = dict(zip(places, done, strict=True))
+        return errors_of(fields, changed, self.section.pole_pairs)
+
     def _draw(
         self,
         stage: Path,
@@ -158,6 +171,7 @@ class Assessment:
         stage: Path,
         model: MagneticModel,
         waveform: TorqueWaveform,
+        field_errors: FieldErrors,
         fields: Sequence[FieldSolution],
         stress: StressWork,
     ) -> Verdict:
@@ -172,6 +186,11 @@ class Assessment:
         cards = (machine.rotor_steel, machine.stator_steel)
         magnetic, rotor = magnetic_figures(waveform), stress_figures(stress.report)
         terminal = terminal_figures(machine.design, magnetic)
+        bars = {
+            **magnetic_errors(magnetic, field_errors),
+            **terminal_errors(machine.design, magnetic, terminal, field_errors),
+            **stress_errors(stress.report, stress.finer, stress.zone_errors),
+        }
         unknowns = model.numbering.n_dof
         verdict = Verdict(
             design_name=machine.design.name,
@@ -188,6 +207,7 @@ class Assessment:
             outcomes=judged(machine.design.limits, magnetic, rotor),
             cautions=cautions(magnetic, terminal, rotor, cards),
             times=watch.times,
+            errors=bars,
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
         return verdict
@@ -197,6 +217,12 @@ def _chain(
     points: Sequence[OperatingPoint], start: FieldSolution, desk: Desk
 ) -> tuple[FieldSolution, ...]:
     return desk.chain(points, start)
+
+
+def _change(
+    section: CrossSection, winding: WindingTable, solution: FieldSolution, desk: Desk
+) -> Change:
+    return desk.change(section, winding, solution)
 
 
 def _figure(name: str, results: Pictured, stage: Path, desk: Desk) -> None:

@@ -1,18 +1,26 @@
 """The work of one design that a process does by itself; every process has one desk."""
 
 import time
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
-from lamwright.postprocess.figures import Pictured, write_figures
+from lamwright.geometry.winding import WindingTable
+from lamwright.postprocess.figures import write_figure
+from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.ribs import RibReport, rib_report
-from lamwright.solver.chains import OperatingPoint, solve_chain
+from lamwright.solver.chains import OperatingPoint, linkage_slope, solve_chain
+from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
+from lamwright.solver.estimate_stress import finer_stress, peak_errors
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.rotor_stress import rotor_stress
-from lamwright.solver.types import FieldSolution, StressSolution
+from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
 
 
 @dataclass(frozen=True, slots=True)
@@ -21,6 +29,8 @@ class StressWork:
 
     solution: StressSolution
     report: RibReport
+    finer: RibReport  # the same on a mesh four times as fine
+    zone_errors: FloatArray  # (n_rib + 1,), relative errors of the peaks
     seconds: float
 
 
@@ -30,10 +40,11 @@ class Desk:
     def __init__(self) -> None:
         """An empty desk."""
         self._model: MagneticModel | None = None
+        self._level: FineLevel | None = None
 
     def take_model(self, model: MagneticModel) -> None:
         """Keep the model for the chains to come; its factors are made here."""
-        self._model = model
+        self._model, self._level = model, None
 
     def chain(
         self, points: Sequence[OperatingPoint], start: FieldSolution | None
@@ -42,13 +53,34 @@ class Desk:
         assert self._model is not None
         return solve_chain(self._model, points, start=start)
 
+    def change(
+        self, section: CrossSection, winding: WindingTable, solution: FieldSolution
+    ) -> Change:
+        """What a mesh four times as fine changes of a solution of the model."""
+        assert self._model is not None
+        if self._level is None:
+            self._level = fine_level(self._model, section, winding)
+        return changes(self._level, solution)
+
+    def slope(self, solution: FieldSolution, di_d: float, di_q: float) -> tuple[float, float]:
+        """Changes of both linkages for small changes of the currents at a solution."""
+        assert self._model is not None
+        return linkage_slope(self._model, solution, di_d, di_q)
+
     def stress(self, section: CrossSection, card: SteelCard, speed: float) -> StressWork:
         """Stress of the rotor lamination at `speed` in rad/s, and its ribs."""
         began = time.perf_counter()
         solution = rotor_stress(section, card, speed)
-        report = rib_report(solution, section, 1e6 * card.yield_strength_mpa.value)
-        return StressWork(solution, report, time.perf_counter() - began)
+        finer = finer_stress(section, card, solution)
+        strength = 1e6 * card.yield_strength_mpa.value
+        return StressWork(
+            solution=solution,
+            report=rib_report(solution, section, strength),
+            finer=rib_report(finer, section, strength),
+            zone_errors=peak_errors(section, solution, finer),
+            seconds=time.perf_counter() - began,
+        )
 
-    def figure(self, name: str, results: Pictured, folder: Path) -> None:
-        """Draw one of `figures.FIGURES` into the folder, twice: PNG and SVG."""
-        write_figures(folder, results, names=(name,))
+    def figure(self, folder: Path, name: str, compose: "Callable[[Style], Figure]") -> None:
+        """Draw a figure into the folder, twice: PNG and SVG."""
+        write_figure(folder, name, compose)

@@ -15,9 +15,10 @@ SHARES = {
     "mesh": 0.03,
     "magnetic model": 0.02,
     "current angle": 0.2,
-    "torque waveform": 0.3,
+    "torque waveform": 0.25,
+    "error bars": 0.1,
     "stress": 0.0,
-    "pictures": 0.25,
+    "pictures": 0.2,
     "files": 0.05,
 }
 

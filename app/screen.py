@@ -75,15 +75,16 @@ def print_verdict(verdict: Verdict, folder: str) -> None:
 def _table(title: str, *columns: str) -> Table:
     table = Table(title=title, title_justify="left", title_style="bold")
     for column in columns:
-        table.add_column(column, justify="right" if column in ("value", "limit") else "left")
+        table.add_column(column, justify="right" if column in ("value", "+-", "limit") else "left")
     return table
 
 
 def _verdict_table(verdict: Verdict) -> Table:
-    table = _table(verdict.design_name, "what", "value", "limit", "verdict")
+    table = _table(verdict.design_name, "what", "value", "+-", "limit", "verdict")
     for outcome in verdict.outcomes:
         mark = Text("holds", "green") if outcome.holds else Text("missed", "bold red")
-        table.add_row(outcome.figure.label, valued(outcome.figure), _limit(outcome), mark)
+        value, bar = valued(outcome.figure), _bar(verdict, outcome.figure.key)
+        table.add_row(outcome.figure.label, value, bar, _limit(outcome), mark)
     table.add_section()
     figures = all_figures(verdict)
     supply = figures["supply_voltage_v"]
@@ -93,8 +94,13 @@ def _verdict_table(verdict: Verdict) -> Table:
             limit = f"<= {number(supply.value)} V"
             over = figures[key].value > supply.value
             mark = Text("over supply", "yellow") if over else Text("")
-        table.add_row(figures[key].label, valued(figures[key]), limit, mark)
+        table.add_row(figures[key].label, valued(figures[key]), _bar(verdict, key), limit, mark)
     return table
+
+
+def _bar(verdict: Verdict, key: str) -> str:
+    """The figure's error by the meshes, two digits, in its unit; empty where there is none."""
+    return f"{verdict.errors[key]:.2g}" if key in verdict.errors else ""
 
 
 def _limit(outcome: Outcome) -> str:

@@ -61,6 +61,12 @@ def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
         yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate)
 
 
+def scaled_by_key(group: "DataclassInstance", values: Mapping[str, float]) -> dict[str, float]:
+    """Values in SI of some of the group's fields, by their figures' keys and in their units."""
+    shown: dict[str, Shown] = {item.name: item.metadata["shown"] for item in fields(group)}
+    return {shown[name].key: shown[name].scale * value for name, value in values.items()}
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class OutlineFigures:
     """The punch outline as read back from the DXF, against the outline analysed."""

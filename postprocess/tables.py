@@ -1,5 +1,7 @@
 """Results as records for JSON and as CSV, with a unit in every key: the only place for it."""
 
+from collections.abc import Mapping
+
 import numpy as np
 
 from lamwright.solver.types import FieldSolution
@@ -21,7 +23,7 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
     return {
         "design": verdict.design_name,
         "passes": verdict.passes,
-        **{key: figure.value for key, figure in figures.items()},
+        **_with_errors({key: figure.value for key, figure in figures.items()}, verdict.errors),
         "limits": {outcome.key: outcome.limit for outcome in verdict.outcomes},
         "outcomes": {outcome.key: _outcome_record(outcome) for outcome in verdict.outcomes},
         "torque_harmonics": _spectrum_record(spectrum),
@@ -32,6 +34,16 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
         "design_hash": verdict.design_hash,
         "seconds": {time.phase: round(time.seconds, 3) for time in verdict.times},
     }
+
+
+def _with_errors(values: dict[str, float], errors: Mapping[str, float]) -> dict[str, float]:
+    """Each value followed by its absolute error where there is one."""
+    record: dict[str, float] = {}
+    for key, value in values.items():
+        record[key] = value
+        if key in errors:
+            record[f"{key}_error"] = errors[key]
+    return record
 
 
 def _outcome_record(outcome: Outcome) -> dict[str, object]:

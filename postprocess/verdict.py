@@ -4,6 +4,7 @@ The figures stand in groups by what they are of; see `quantities` for how a figu
 """
 
 import math
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 from lamwright.geometry.design import LimitsDesign
@@ -169,6 +170,7 @@ class Verdict:
     outcomes: tuple[Outcome, ...]
     cautions: tuple[str, ...]
     times: tuple[PhaseTime, ...]
+    errors: Mapping[str, float] = field(default_factory=dict)  # by the figure's key, in its unit
 
     @property
     def passes(self) -> bool:
