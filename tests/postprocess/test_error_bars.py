@@ -1,0 +1,70 @@
+"""Errors of figures: of the right ones, in their units, as large as the figures really change."""
+
+import dataclasses
+
+import numpy as np
+import pytest
+
+from lamwright.geometry.design_file import read_machine
+from lamwright.postprocess.error_bars import magnetic_errors, terminal_errors
+from lamwright.postprocess.operating import saliency_ratio
+from lamwright.postprocess.summary import terminal_figures
+from lamwright.postprocess.tables import verdict_record
+from lamwright.postprocess.torque import TorqueSpectrum
+from lamwright.postprocess.verdict import all_figures
+from lamwright.solver.estimate import FieldErrors, LinkageErrors
+from tests.invented_verdict import MAGNETIC, verdict
+from tests.shipped import DESIGNS
+
+SHIFTS = LinkageErrors(shift_d=2e-3, shift_q=-1e-3, doubt_d=0.0, doubt_q=0.0)
+ERRORS = FieldErrors(0.05, 0.04, 0.003, 2e-3, 1e-3, SHIFTS)
+
+
+def test_errors_stand_in_the_units_of_their_figures():
+    """Ripple is kept as a share and shown in percent, so is its error: 0.003 is 0.3 %."""
+    found = magnetic_errors(MAGNETIC, ERRORS)
+    assert found["torque_nm"] == 0.05
+    assert found["torque_ripple_percent"] == pytest.approx(0.3)
+    assert found["psi_q_vs"] == 1e-3
+    # Prescribed, or differences themselves.
+    assert not {"current_a", "i_d_a", "torque_difference_percent"} & set(found)
+
+
+def test_saliency_errs_by_what_the_shifted_linkages_change():
+    """Without doubts the error is the figure's change for the expected true linkages, exactly."""
+    m = MAGNETIC
+    own = saliency_ratio(m.i_d, m.i_q, m.psi_d, m.psi_q)
+    shifted = saliency_ratio(m.i_d, m.i_q, m.psi_d + 2e-3, m.psi_q - 1e-3)
+    assert magnetic_errors(m, ERRORS)["saliency_ratio"] == pytest.approx(shifted - own, rel=1e-12)
+
+
+def test_terminal_errors_are_the_figures_changes():
+    """Voltage and power factor of a real design with shifted linkages, computed anew: equal."""
+    design = read_machine(DESIGNS[0]).design
+    other = dataclasses.replace(MAGNETIC, psi_d=MAGNETIC.psi_d + 2e-3, psi_q=MAGNETIC.psi_q - 1e-3)
+    own, shifted = (terminal_figures(design, m) for m in (MAGNETIC, other))
+    found = terminal_errors(design, MAGNETIC, own, ERRORS)
+    change = abs(shifted.line_voltage - own.line_voltage)
+    assert found["terminal_voltage_v"] == pytest.approx(change, rel=1e-9)
+    change = abs(shifted.power_factor - own.power_factor)
+    assert found["power_factor"] == pytest.approx(change, rel=1e-9)
+    # Formulas alone have no error by the meshes.
+    assert "copper_loss_w" not in found
+
+
+def test_an_infinite_error_is_refused():
+    """JSON knows no infinity, and a reader would not know what to make of it."""
+    with pytest.raises(ArithmeticError, match="torque_nm_error = inf: not a finite number"):
+        magnetic_errors(MAGNETIC, dataclasses.replace(ERRORS, torque=float("inf")))
+
+
+def test_the_record_holds_each_error_beside_its_figure():
+    """`<key>_error` follows `<key>`; figures without an error have none."""
+    made = verdict(errors={"torque_nm": 0.05})
+    none = TorqueSpectrum((), np.zeros(0), np.zeros(0))
+    record = verdict_record(made, none)
+    keys = list(record)
+    assert record["torque_nm_error"] == 0.05
+    assert keys.index("torque_nm_error") == keys.index("torque_nm") + 1
+    assert [key for key in keys if key.endswith("_error")] == ["torque_nm_error"]
+    assert set(all_figures(made)) < set(keys)
