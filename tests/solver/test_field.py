@@ -276,11 +276,15 @@ def test_start_does_not_change_the_answer(model: MagneticModel, loaded: FieldSol
 
 
 def test_model_crosses_a_process_border(model: MagneticModel, loaded: FieldSolution) -> None:
-    """Pickled and read back, without its factors: the same field to the last bit but rounding."""
+    """Pickled and read back, without its factors: the same field but for rounding.
+
+    BLAS rounds by where in memory an array begins, which a copy changes: 1e-12 was seen. A lost
+    part of the model would show in the first digits.
+    """
     at_position(model, loaded.position)
     copy = pickle.loads(pickle.dumps(model))
     solution = solve_point(copy, loaded.i_d, loaded.i_q, loaded.position)
-    assert solution.torque == pytest.approx(loaded.torque, rel=1e-12)
+    assert solution.torque == pytest.approx(loaded.torque, rel=1e-10)
 
 
 @pytest.mark.parametrize("method", ["qdldl", "superlu"])
