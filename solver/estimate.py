@@ -11,10 +11,10 @@
 Independent parts are added: twice the standard error of the mean over the sampled positions, what
 conjugate gradients left (`KNOWN_TO`), a floor of Newton's iteration. What is not in it: the steel
 curve, the third dimension, the shape of the punched part.
-Measured on 31 machines (three shipped, the others random, tests/solver/test_estimate.py) against
+Measured on 33 machines (three shipped, thirty random, tests/solver/test_estimate.py) against
 meshes of scale 0.25, 7 to 11 times the unknowns: claimed over true error, least, median, most and
 share within a third and five: torque 1.2, 1.6, 6.8, 97 %; psi_d 1.2, 1.7, 2.4, 100 %; psi_q 1.4,
-1.8, 58, 97 % (the 58 for a true error of 1e-6); saliency 1.4, 2.3, 68, 74 % (where both linkages
+1.8, 58, 94 % (the 58 for a true error of 1e-6); saliency 1.4, 2.3, 68, 76 % (where both linkages
 err alike, it hardly errs at all). Ripple on five of them: 1.5 to 15.
 Axes: n_sample sampled positions.
 """
