@@ -5,13 +5,13 @@ The only module here that knows the inside of the solver room.
 
 import math
 import pickle
+from collections.abc import Callable
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import lru_cache, partial
 from pathlib import Path
 from typing import Generic
 
 import numpy as np
-from scipy.sparse import csc_matrix
 
 from lamwright.app.lamination import section_of
 from lamwright.app.point import model_of, read_machine
@@ -20,6 +20,7 @@ from lamwright.geometry.section import CrossSection
 from lamwright.solver.field import MagneticModel, PointEnergy, at_position, solve_point
 from lamwright.solver.integrals import phase_currents
 from lamwright.solver.kernel import FluxState, packed_tangent
+from lamwright.solver.linear import CholmodSolver
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import Energy, State
@@ -111,9 +112,13 @@ def unknowns_before(case: Case, gamma: float) -> FloatArray:
     return np.concatenate([field.a_rotor, field.a_stator])[case.model.representative]
 
 
-def tangent_matrix(energy: PointEnergy, state: FluxState) -> csc_matrix:
-    """The matrix of a Newton step, lower triangle by columns."""
+def factorisation(energy: PointEnergy, state: FluxState) -> Callable[[], None]:
+    """CHOLMOD's numeric factorisation of a step's matrix in our order, and nothing else."""
+    from cvxopt import cholmod
+
     iron, place = energy.model.iron, energy.position
-    lower = place.lower.copy()
-    lower.data = place.values + summed(iron.scatter, packed_tangent(iron.quad, state))
-    return lower
+    solver = place.solver
+    assert isinstance(solver, CholmodSolver)
+    solver.factorise(place.values + summed(iron.scatter, packed_tangent(iron.quad, state)))
+    # Not `factorise`: that copies the values in too.
+    return partial(cholmod.numeric, solver._matrix, solver._factor)

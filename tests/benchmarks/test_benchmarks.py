@@ -10,10 +10,11 @@ from .timing import SILENT, growth_exponent
 from .workload import TINY
 
 NEED_PEER = ("newton_step_ratio", "operating_point_ratio")
+SLOW = (*NEED_PEER, "core_efficiency", "design_seconds")
+CASES = [pytest.param(n, marks=pytest.mark.slow) if n in SLOW else n for n in BENCHMARKS]
 
 
-@pytest.mark.slow
-@pytest.mark.parametrize("name", BENCHMARKS)
+@pytest.mark.parametrize("name", CASES)
 def test_a_benchmark_gives_finite_positive_figures_of_its_name(name: str) -> None:
     """Law: a ratio of times, a time, a size and a growth are numbers above zero.
 
