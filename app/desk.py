@@ -12,7 +12,7 @@ from lamwright.geometry.winding import WindingTable
 from lamwright.postprocess.figures import write_figure
 from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.ribs import RibReport, rib_report
-from lamwright.solver.chains import OperatingPoint, linkage_slope, solve_chain
+from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
 from lamwright.solver.estimate_stress import finer_stress, peak_errors
 from lamwright.solver.field import MagneticModel
@@ -61,11 +61,6 @@ class Desk:
         if self._level is None:
             self._level = fine_level(self._model, section, winding)
         return changes(self._level, solution)
-
-    def slope(self, solution: FieldSolution, di_d: float, di_q: float) -> tuple[float, float]:
-        """Changes of both linkages for small changes of the currents at a solution."""
-        assert self._model is not None
-        return linkage_slope(self._model, solution, di_d, di_q)
 
     def stress(self, section: CrossSection, card: SteelCard, speed: float) -> StressWork:
         """Stress of the rotor lamination at `speed` in rad/s, and its ribs."""

@@ -24,7 +24,8 @@ import traceback
 from collections import deque
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future
-from typing import IO, Concatenate, Generic, ParamSpec, TypeVar
+from functools import partial
+from typing import IO, Concatenate, Generic, ParamSpec, TypeVar, cast
 
 from lamwright.geometry.errors import LamwrightError
 
@@ -56,6 +57,7 @@ class Worker(Generic[Desk]):
                 command, stdin=subprocess.PIPE, stdout=subprocess.PIPE, env=environment
             )
         self._open: deque[Future[object]] = deque()
+        self._last: Future[object] | None = None
         self._lost = False
         self._lock = threading.RLock()  # a failed future's callbacks may submit again
         self._outbox: queue.SimpleQueue[bytes | None] = queue.SimpleQueue()
@@ -73,11 +75,24 @@ class Worker(Generic[Desk]):
         future: Future[R] = Future()
         call = pickle.dumps((method, args, kwargs), pickle.HIGHEST_PROTOCOL)
         with self._lock:
-            self._open.append(future)  # type: ignore[arg-type]  # Future is invariant
+            self._last = cast("Future[object]", future)  # Future is invariant
+            self._open.append(self._last)
             self._outbox.put(call)
             if self._lost:
                 self._fail_open()
         return future
+
+    @property
+    def waiting(self) -> int:
+        """Number of calls without an answer yet."""
+        return len(self._open)
+
+    def when_free(self, call: Callable[[], None]) -> None:
+        """Do `call` once all calls so far have their answers, at once where there are none."""
+        if self._last is None:
+            call()
+        else:
+            self._last.add_done_callback(lambda _: call())
 
     @property
     def pid(self) -> int:
@@ -204,9 +219,10 @@ class Crew(Generic[Desk]):
     def start(
         self, method: Callable[Concatenate[Desk, P], R], *args: P.args, **kwargs: P.kwargs
     ) -> "Future[R]":
-        """Call a method at a worker's desk, or here and now where there is no worker."""
+        """Call a method at the least busy desk of a worker, or here where there is no worker."""
         if self.workers:
-            return self.workers[-1].submit(method, *args, **kwargs)
+            least_busy = min(self.workers, key=lambda worker: worker.waiting)
+            return least_busy.submit(method, *args, **kwargs)
         future: Future[R] = Future()
         future.set_result(method(self.own, *args, **kwargs))
         return future
@@ -224,8 +240,9 @@ class Crew(Generic[Desk]):
     ) -> list[R]:
         """Results of all tasks in their order, from the workers and from this process.
 
-        Each takes the next task when it is free, so the order of work depends on the machine;
-        the results do not, as long as no task depends on another. Tasks must be picklable.
+        Each takes the next task when it is free (a worker when its calls so far are done), so the
+        order of work depends on the machine; the results do not, as long as no task depends on
+        another. Tasks must be picklable.
         `on_done` gets the number of finished tasks, always in the caller's thread.
         """
         waiting = deque(enumerate(tasks))
@@ -245,7 +262,7 @@ class Crew(Generic[Desk]):
             results[k].set_result(done.result())
 
         for worker in self.workers:
-            hand_out(worker)
+            worker.when_free(partial(hand_out, worker))
         with contextlib.suppress(IndexError):
             while True:
                 k, task = waiting.popleft()

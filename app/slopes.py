@@ -19,12 +19,6 @@ from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.figures_slopes import write_slopes
 from lamwright.postprocess.files import json_text, prepared_folder, staged, write_text
-from lamwright.postprocess.operating import (
-    best_angle,
-    dq_currents,
-    mean_linkage_torque,
-    search_positions,
-)
 from lamwright.postprocess.slopes import (
     SHAPE_FIGURES,
     KeySlope,
@@ -53,6 +47,7 @@ from lamwright.solver.newton import NewtonSettings
 from lamwright.solver.rotor_stress import elastic_material, rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray
 
+from .angle import most_torque
 from .lamination import section_of
 from .point import model_of, read_machine
 
@@ -125,27 +120,13 @@ def searched(
     model: MagneticModel, design: MachineDesign
 ) -> tuple[float, float, tuple[FieldSolution, ...]]:
     """Currents of most torque at rated current, and fields there at the search positions."""
-    pole_pairs = design.pole_pairs
-    positions = search_positions(pole_pairs, design.stator.slots // (3 * design.rotor.poles))
-    last: list[FieldSolution] = []
-
-    def solved(gamma: float, model: MagneticModel) -> list[FieldSolution]:
-        i_d, i_q = dq_currents(design.duty.rated_current_a, gamma)
-        found: list[FieldSolution] = []
-        for k, position in enumerate(positions):
-            start = last[k] if last else found[-1] if found else None
-            found.append(solve_point(model, i_d, i_q, float(position), start))
-        return found
-
-    def torque_of(gamma: float) -> float:
-        last[:] = solved(gamma, model)
-        psi_d, psi_q = [f.psi_d for f in last], [f.psi_q for f in last]
-        return mean_linkage_torque(pole_pairs, last[0].i_d, last[0].i_q, psi_d, psi_q)
-
-    gamma = best_angle(torque_of).gamma
+    found = most_torque(model, design, lambda share: None)
     tight = replace(model.settings, newton=NewtonSettings(tolerance=TOLERANCE))
-    fields = solved(gamma, replace(model, settings=tight))
-    return fields[0].i_d, fields[0].i_q, tuple(fields)
+    exact = replace(model, settings=tight)
+    fields = tuple(
+        solve_point(exact, found.i_d, found.i_q, start.position, start) for start in found.last
+    )
+    return found.i_d, found.i_q, fields
 
 
 def _linkages(

@@ -14,6 +14,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -68,79 +69,94 @@ def write_figures(
         folder: existing; files of the same names are replaced, each by one rename.
         results: what to draw.
         style: sizes and colours; the house's own by default.
-        names: which of `FIGURES`; all by default. Processes may share them out.
+        names: which of `FIGURES`; all by default.
 
     Returns:
         The files written, PNG before SVG.
     """
+    written: list[Path] = []
+    for name in FIGURES if names is None else names:
+        written += write_figure(folder, name, partial(FIGURES[name], results), style)
+    return tuple(written)
+
+
+def write_figure(
+    folder: Path, name: str, compose: Callable[[Style], Figure], style: Style | None = None
+) -> tuple[Path, Path]:
+    """Write one figure into `folder` as PNG and SVG; the files written.
+
+    Args:
+        folder: existing.
+        name: of the files, without ending.
+        compose: style -> the figure.
+        style: sizes and colours; the house's own by default.
+    """
     import matplotlib
 
     style = style or Style()
-    written: list[Path] = []
     # Users' settings must not change a figure, nor a figure theirs.
     with matplotlib.rc_context():
         matplotlib.rcdefaults()
         matplotlib.rcParams.update(SETTINGS)
-        for name in FIGURES if names is None else names:
-            written += _save(FIGURES[name](results, style), folder / name, style)
-    return tuple(written)
+        return _save(compose(style), folder / name, style)
 
 
-def section_figure(results: Pictured, style: Style) -> Figure:
+def section_figure(name: str, section: CrossSection, style: Style) -> Figure:
     """One pole with its trade names, the whole lamination, dimensions and materials."""
-    figure = _figure((11.0, 6.6), f"{results.name}: cross-section of one pole", style)
-    draw_section(figure.add_axes((0.01, 0.02, 0.74, 0.91)), results.section, style)
-    draw_lamination(figure.add_axes((0.77, 0.5, 0.22, 0.43)), results.section, style)
-    draw_key(figure.add_axes((0.785, 0.03, 0.195, 0.43)), results.section, style)
+    figure = _figure((11.0, 6.6), f"{name}: cross-section of one pole", style)
+    draw_section(figure.add_axes((0.01, 0.02, 0.74, 0.91)), section, style)
+    draw_lamination(figure.add_axes((0.77, 0.5, 0.22, 0.43)), section, style)
+    draw_key(figure.add_axes((0.785, 0.03, 0.195, 0.43)), section, style)
     return figure
 
 
-def flux_figure(results: Pictured, style: Style) -> Figure:
+def flux_figure(
+    name: str,
+    section: CrossSection,
+    winding: WindingTable,
+    sector: SectorMesh,
+    solution: FieldSolution,
+    style: Style,
+) -> Figure:
     """Flux density and flux lines of one pole."""
-    figure = _figure((9.0, 6.8), f"{results.name}: flux density and flux lines", style)
+    figure = _figure((9.0, 6.8), f"{name}: flux density and flux lines", style)
     ax = figure.add_axes((0.015, 0.02, 0.845, 0.91))
     scale_ax = figure.add_axes((0.885, 0.12, 0.024, 0.72))
-    draw_flux(
-        ax,
-        scale_ax,
-        results.section,
-        results.sector,
-        results.solution,
-        results.winding,
-        style,
-    )
+    draw_flux(ax, scale_ax, section, sector, solution, winding, style)
     return figure
 
 
-def stress_figure(results: Pictured, style: Style) -> Figure:
+def stress_figure(
+    name: str, section: CrossSection, stress: StressSolution, ribs: RibReport, style: Style
+) -> Figure:
     """Stress of one rotor pole, with the most stressed ribs close up."""
-    title = f"{results.name}: stress of the rotor lamination"
-    figure = _figure((11.0, 6.6), title, style)
+    figure = _figure((11.0, 6.6), f"{name}: stress of the rotor lamination", style)
     ax = figure.add_axes((0.01, 0.02, 0.62, 0.91))
     scale_ax = figure.add_axes((0.925, 0.12, 0.02, 0.72))
-    draw_stress(ax, scale_ax, results.section, results.stress, results.ribs, style)
-    rows = close_ups(results.ribs)
-    for k, (row, letter) in enumerate(zip(rows, LETTERS, strict=False)):
+    draw_stress(ax, scale_ax, section, stress, ribs, style)
+    for k, (row, letter) in enumerate(zip(close_ups(ribs), LETTERS, strict=False)):
         close = figure.add_axes((0.66, 0.505 - 0.475 * k, 0.225, 0.375))
-        draw_rib(close, results.section, results.stress, row, letter, style)
+        draw_rib(close, section, stress, row, letter, style)
     return figure
 
 
-def torque_figure(results: Pictured, style: Style) -> Figure:
+def torque_figure(
+    name: str, section: CrossSection, waveform: TorqueWaveform, style: Style
+) -> Figure:
     """Torque over 60 electrical degrees and its spectrum by order."""
-    figure = _figure((9.0, 6.4), f"{results.name}: torque over 60 electrical degrees", style)
-    draw_torque(figure.add_axes((0.08, 0.545, 0.765, 0.335)), results.waveform, style)
+    figure = _figure((9.0, 6.4), f"{name}: torque over 60 electrical degrees", style)
+    draw_torque(figure.add_axes((0.08, 0.545, 0.765, 0.335)), waveform, style)
     below = figure.add_axes((0.08, 0.08, 0.765, 0.335))
-    draw_spectrum(below, results.waveform, results.section.slots, style)
+    draw_spectrum(below, waveform, section.slots, style)
     return figure
 
 
-# File names without ending, and who composes them.
+# File names without ending, and who composes them. A run draws each as soon as it can.
 FIGURES: dict[str, Callable[[Pictured, Style], Figure]] = {
-    "section": section_figure,
-    "flux": flux_figure,
-    "stress": stress_figure,
-    "torque": torque_figure,
+    "section": lambda r, style: section_figure(r.name, r.section, style),
+    "flux": lambda r, style: flux_figure(r.name, r.section, r.winding, r.sector, r.solution, style),
+    "stress": lambda r, style: stress_figure(r.name, r.section, r.stress, r.ribs, style),
+    "torque": lambda r, style: torque_figure(r.name, r.section, r.waveform, style),
 }
 
 

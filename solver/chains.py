@@ -12,7 +12,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from .field import MagneticModel, solve_point
+from .field import MagneticModel, PointEnergy, at_position, solve_point
+from .integrals import dq_values, phase_currents
 from .types import FieldSolution, FloatArray
 
 ON_LINE_TOL = 1e-6  # of the step between points
@@ -54,6 +55,54 @@ def solve_chain(
         if on_done is not None:
             on_done(k, solution)
     return tuple(solutions)
+
+
+def linkage_slope(
+    model: MagneticModel, solution: FieldSolution, di_d: float, di_q: float
+) -> tuple[float, float]:
+    """Changes of psi_d and psi_q in V s for small changes of the currents at a fixed position.
+
+    Exact for the discrete field: one solve with the tangent at the solution. Source: derived,
+    K da = dload.
+
+    Args:
+        model: of the solution.
+        solution: converged.
+        di_d: change of i_d in A.
+        di_q: change of i_q in A.
+    """
+    theta_e = model.sector.pole_pairs * solution.position
+    currents = phase_currents(solution.i_d, solution.i_q, theta_e)
+    place = at_position(model, solution.position)
+    energy = PointEnergy(model, place, currents @ model.linkage)
+    nodal = np.concatenate([solution.a_rotor, solution.a_stator])
+    _, state = energy.residual(nodal[model.representative])
+    change = energy.solve_tangent(state, phase_currents(di_d, di_q, theta_e) @ model.linkage)
+    poles = 2 * model.sector.pole_pairs
+    return dq_values(poles * model.stack_length * (model.linkage @ change), theta_e)
+
+
+def fanned(
+    positions: Sequence[float], solved: Sequence[float]
+) -> tuple[tuple[int, tuple[int, ...]], ...]:
+    """Chains over positions that lead away from positions already solved, both ways.
+
+    Args:
+        positions: rising, rad.
+        solved: likewise.
+
+    Returns:
+        For each chain the number of the solved position that it starts from and the numbers of
+        its positions in order; the longest chain first.
+    """
+    at, known = np.asarray(positions), np.asarray(solved)
+    nearest = np.argmin(np.abs(at[:, None] - known), axis=1)
+    chains = []
+    for k, start in enumerate(known):
+        own = np.flatnonzero(nearest == k)
+        ahead, behind = own[at[own] >= start], own[at[own] < start][::-1]
+        chains += [(k, tuple(way.tolist())) for way in (ahead, behind) if way.size]
+    return tuple(sorted(chains, key=lambda chain: -len(chain[1])))
 
 
 def _start(

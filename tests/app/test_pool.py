@@ -155,6 +155,24 @@ def test_both_processes_take_tasks():
         assert results == [crew.workers[0].pid, os.getpid()]
 
 
+def test_a_worker_takes_shared_tasks_when_its_calls_are_done():
+    """While a worker sleeps (for as many seconds as its number), this process does all tasks."""
+    with Crew(os.getpid, 1) as crew:
+        asleep = crew.start(time.sleep)
+        assert crew.share([int] * 3, lambda done: None) == [os.getpid()] * 3
+        assert not asleep.done()
+
+
+def test_calls_go_to_the_least_busy_worker():
+    """Of two workers, one asleep, the other one answers every time."""
+    with Crew(os.getpid, 2) as crew:
+        asleep = crew.start(time.sleep)
+        answers = {crew.start(int).result(TIMEOUT) for _ in range(3)}
+        assert len(answers) == 1
+        assert answers < {worker.pid for worker in crew.workers}
+        assert not asleep.done()
+
+
 def test_a_crew_without_workers_does_it_all():
     """One core: shared tasks, single calls and calls to every desk all happen here."""
     with Crew(list, workers=0) as crew:

@@ -130,7 +130,7 @@ def test_names_of_any_machine_stand_apart(results, seed):
     """4 to 8 poles, 1 to 6 barriers with 0 to 2 radial ribs, up to 96 slots (40 were looked at)."""
     section = cross_section(random_design(np.random.default_rng(seed)))
     result = Pictured("random", section, *[getattr(results[0], f) for f in LATER_FIELDS])
-    assert clashes(composed(figures.section_figure, result)) == []
+    assert clashes(composed(FIGURES["section"], result)) == []
 
 
 LATER_FIELDS = ("winding", "sector", "solution", "waveform", "stress", "ribs")
@@ -290,7 +290,7 @@ def test_written_twice_the_bytes_are_the_same(results, tmp_path):
 
 def test_users_settings_neither_change_a_figure_nor_are_changed(results, tmp_path, monkeypatch):
     """The same bytes under a dark style and another font size, which are still set afterwards."""
-    monkeypatch.setattr(figures, "FIGURES", {"torque": figures.torque_figure})
+    monkeypatch.setattr(figures, "FIGURES", {"torque": FIGURES["torque"]})
     plain = [path.read_bytes() for path in write_figures(tmp_path, results[0])]
     odd = {"axes.facecolor": "black", "font.size": 23.0, "text.color": "red"}
     with matplotlib.rc_context(odd):
@@ -308,7 +308,7 @@ def test_a_figure_that_fails_leaves_the_old_file_whole(results, tmp_path, monkey
         raise OSError("disk full")
 
     monkeypatch.setattr(figures, "_write_png", half)
-    monkeypatch.setattr(figures, "FIGURES", {"torque": figures.torque_figure})
+    monkeypatch.setattr(figures, "FIGURES", {"torque": FIGURES["torque"]})
     with pytest.raises(OSError, match="disk full"):
         write_figures(tmp_path, results[0])
     assert [path.name for path in tmp_path.iterdir()] == ["torque.png"]
