@@ -5,8 +5,10 @@ is on the safe side, by how much differs from rotor to rotor (5 to 110 times, me
 This asks directly: every triangle is cut into four on the true arcs, and the peaks of all zones
 are compared. Errors of second order fall to a quarter, so the change is three quarters of the
 error. A rib's own change may be small by chance; so none is taken for better than a quarter of
-the worst of them, in Pa. Measured against 16 times the elements on ten rotors, 62 ribs: see
-tests/solver/test_estimate_stress.py. Cost: half the time of the stress itself.
+the worst of them, in Pa. Measured on thirty random rotors against 16 times the elements
+(tests/solver/test_estimate_stress.py), claimed over true error of the greatest rib stress: least
+0.8, median 1.3, 27 of 30 within a third and five, the others where the true error is below 0.01 %;
+of all ribs the least is 0.36. Cost: half the time of the stress itself.
 Axes: n_node nodes, n_zone zones: the ribs, then the rest of the iron.
 """
 

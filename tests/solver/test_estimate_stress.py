@@ -68,7 +68,8 @@ def test_claims_on_a_shipped_rotor_are_true(name: str):
 def test_claims_on_random_rotors_are_true():
     """Thirty rotors: greatest rib stress within a third and five on nine in ten, none below 1/5.
 
-    Errors under 0.01 % are as good as none: there a claim cannot be too high by being above.
+    Measured: 27 of 30, least 0.82, median 1.26; the three others claim 6 to 120 times errors that
+    are below 0.01 % of the stress. A few minutes on one core.
     """
     found = []
     for k in range(N_DESIGNS):
