@@ -1,13 +1,13 @@
 """How fine to mesh for a tolerance that is asked by name, and what each name promises.
 
 Promised is the largest error in percent against meshes so fine that they count as exact. Measured
-on the three shipped machines and eight random ones (field: scale 0.25, 7 to 11 times the unknowns
+on the three shipped machines and ten random ones (field: scale 0.25, 7 to 11 times the unknowns
 of `normal`; stress: 16 times the elements), worst of all:
 
     name     mean torque   linkages   greatest rib stress   unknowns of the field
-    coarse      0.43 %      0.16 %          0.64 %             6 500 to 11 600
+    coarse      0.53 %      0.16 %          0.64 %             6 500 to 11 600
     normal      0.11 %      0.065 %         0.38 %             9 000 to 28 000
-    fine        0.013 %     0.009 %         0.05 %            39 000 to 73 000
+    fine        0.015 %     0.009 %         0.05 %            39 000 to 73 000
 
 Twenty more random machines at `normal`, with 15 positions: mean torque 0.53 % (aliases of the slots
 at so few positions) and 0.29 %, all others under 0.2 %; linkages 0.14 %. Nothing is promised of
