@@ -1,9 +1,9 @@
 """What each length and angle of the design is worth: change of each figure per +0.1 mm or +1 deg.
 
-Torque is the mean by the linkages, T = 3/2 p (psi_d i_q - psi_q i_d), over the positions of the
-current angle's search (`operating.search_positions`): free of the slot ripple's first order. It
-is stated at the rated current and at the angle of most torque, where the angle's own change
-counts for nothing (dT/d gamma = 0). Saliency psi_d i_q / (psi_q i_d) is stated at that same angle
+Torque is the mean by the linkages, T = 3/2 p (psi_d i_q - psi_q i_d), over positions that cover
+60 electrical degrees; in the mean it equals that of the Maxwell stress (`torque`). It is stated
+at the rated current and at the angle of most torque, where the angle's own change counts for
+nothing (dT/d gamma = 0). Saliency psi_d i_q / (psi_q i_d) is stated at that same angle
 and changes with it; here the angle stays. The rib stress is the largest of all ribs, smoothed
 (`solver.adjoint_stress`) and scaled by the bias of the smoothing.
 Slopes are those of straight lines: 0.1 mm of a thin rib is far.

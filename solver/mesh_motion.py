@@ -26,7 +26,9 @@ from .mesh_outline import ComplexArray
 from .types import FloatArray, IntArray, PlanarMesh
 
 ON_EDGE_TOL = 5e-9  # m, above the outline's welding (1e-9) and far below an element
-STIFFENING = 1.0  # power of 1 / area; 0 to 1.5 gave slopes within 0.1 % of each other
+# Power of 1 / area; 1 to 2, at half and at 1.6 times the default mesh: slopes of the field within
+# 0.2 % of each other (measured on eight keys, those of the slot mouth 0.4 %).
+STIFFENING = 1.0
 
 
 @dataclass(frozen=True, slots=True, eq=False)
