@@ -27,6 +27,7 @@ from lamwright.postprocess.figures import (
 )
 from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.files import VERDICT_FILE, json_text, write_text
+from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.summary import (
     magnetic_figures,
     solver_figures,
@@ -77,6 +78,8 @@ class Assessment:
         overspeed = duty.overspeed_factor * duty.maximum_speed_rpm / RPM
         name, section, crew = self.machine.design.name, self.section, self.crew
         stress_to_come = crew.start(Desk.stress, section, self.machine.rotor_steel, overspeed)
+        with watch.phase("outline"):  # early, while there is work to share after it
+            outline = write_outline(section, stage / DXF_FILE)
         with watch.phase("mesh"):
             sector = mesh_section(section)
         with watch.phase("magnetic model"):
@@ -101,7 +104,7 @@ class Assessment:
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields)
         solved = (*found.fields, *fields)
-        return self._written(stage, model, waveform, field_errors, solved, stress, drawn)
+        return self._written(stage, model, outline, waveform, field_errors, solved, stress, drawn)
 
     def _waveform_fields(self, found: AngleFound) -> list[FieldSolution]:
         """Fields at all positions of the waveform, from chains shared by the crew."""
@@ -135,6 +138,7 @@ class Assessment:
         self,
         stage: Path,
         model: MagneticModel,
+        outline: OutlineFigures,
         waveform: TorqueWaveform,
         field_errors: FieldErrors,
         fields: Sequence[FieldSolution],
@@ -144,7 +148,6 @@ class Assessment:
         """Write everything; the verdict last, with the time that the rest has taken."""
         machine, watch = self.machine, self.watch
         with watch.phase("files"):
-            outline = write_outline(self.section, stage / DXF_FILE)
             write_text(stage / WAVEFORM_FILE, waveform_csv(waveform))
             orders = spectrum(waveform)
             write_text(stage / ORDERS_FILE, spectrum_csv(orders, waveform.mean))
