@@ -7,12 +7,11 @@ tables. Chains are fixed and each starts from the search, so the results do not 
 what.
 """
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from concurrent.futures import Future
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
@@ -20,12 +19,12 @@ from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
 from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
 from lamwright.postprocess.figures import (
+    Composer,
     flux_figure,
     section_figure,
     stress_figure,
     torque_figure,
 )
-from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.files import VERDICT_FILE, json_text, write_text
 from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.summary import (
@@ -56,9 +55,6 @@ from .point import model_of
 from .pool import Crew
 from .progress import Stopwatch
 from .version import version
-
-if TYPE_CHECKING:
-    from matplotlib.figure import Figure
 
 WAVEFORM_FILE, ORDERS_FILE, RIBS_FILE = "torque.csv", "torque_orders.csv", "ribs.csv"
 
@@ -128,9 +124,7 @@ class Assessment:
         changed = dict(zip(places, done, strict=True))
         return errors_of(fields, changed, self.section.pole_pairs)
 
-    def _drawn(
-        self, stage: Path, name: str, compose: "Callable[[Style], Figure]"
-    ) -> "Future[None]":
+    def _drawn(self, stage: Path, name: str, compose: Composer) -> "Future[None]":
         """A figure to come, drawn by a worker where there is one."""
         return self.crew.start(Desk.figure, stage, name, compose)
 

@@ -1,16 +1,14 @@
 """The work of one design that a process does by itself; every process has one desk."""
 
 import time
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
-from lamwright.postprocess.figures import write_figure
-from lamwright.postprocess.figures_style import Style
+from lamwright.postprocess.figures import Composer, write_figure
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
@@ -18,9 +16,6 @@ from lamwright.solver.estimate_stress import finer_stress, peak_errors
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.rotor_stress import rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
-
-if TYPE_CHECKING:
-    from matplotlib.figure import Figure
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +71,6 @@ class Desk:
             seconds=time.perf_counter() - began,
         )
 
-    def figure(self, folder: Path, name: str, compose: "Callable[[Style], Figure]") -> None:
+    def figure(self, folder: Path, name: str, compose: Composer) -> None:
         """Draw a figure into the folder, twice: PNG and SVG."""
         write_figure(folder, name, compose)

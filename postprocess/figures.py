@@ -42,6 +42,8 @@ SETTINGS = {
 }
 NO_METADATA = dict.fromkeys(("Creator", "Date", "Format", "Type"))
 
+Composer = Callable[[Style], "Figure"]  # a figure but for its style
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Pictured:
@@ -81,14 +83,14 @@ def write_figures(
 
 
 def write_figure(
-    folder: Path, name: str, compose: Callable[[Style], Figure], style: Style | None = None
+    folder: Path, name: str, compose: Composer, style: Style | None = None
 ) -> tuple[Path, Path]:
     """Write one figure into `folder` as PNG and SVG; the files written.
 
     Args:
         folder: existing.
         name: of the files, without ending.
-        compose: style -> the figure.
+        compose: draws the figure.
         style: sizes and colours; the house's own by default.
     """
     import matplotlib
