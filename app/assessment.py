@@ -46,6 +46,7 @@ from lamwright.solver.estimate import FieldErrors, errors_of, sample_places
 from lamwright.solver.estimate_step import Change
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.mesh import mesh_section
+from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 from lamwright.solver.types import FieldSolution
 
 from .angle import AngleFound, most_torque
@@ -67,17 +68,21 @@ class Assessment:
     section: CrossSection
     crew: Crew[Desk]
     watch: Stopwatch
+    tolerance: ToleranceName
 
     def written_to(self, stage: Path) -> Verdict:
         """The verdict; all results as files in `stage`, `verdict.json` last."""
         watch, duty = self.watch, self.machine.design.duty
         overspeed = duty.overspeed_factor * duty.maximum_speed_rpm / RPM
         name, section, crew = self.machine.design.name, self.section, self.crew
-        stress_to_come = crew.start(Desk.stress, section, self.machine.rotor_steel, overspeed)
+        mesh_settings, stress_settings, _ = tolerance_settings(self.tolerance)
+        stress_to_come = crew.start(
+            Desk.stress, section, self.machine.rotor_steel, overspeed, stress_settings
+        )
         with watch.phase("outline"):  # early, while there is work to share after it
             outline = write_outline(section, stage / DXF_FILE)
         with watch.phase("mesh"):
-            sector = mesh_section(section)
+            sector = mesh_section(section, mesh_settings)
         with watch.phase("magnetic model"):
             model = model_of(self.machine, section, sector)
             crew.everywhere(Desk.take_model, model)
@@ -163,6 +168,7 @@ class Assessment:
             design_hash=design_hash(machine.design, cards),
             version=version(),
             outline_dxf=DXF_FILE,
+            tolerance=self.tolerance,
             magnetic=magnetic,
             terminal=terminal,
             stress=rotor,

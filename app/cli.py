@@ -7,7 +7,7 @@ the program, 130 interrupted.
 
 import traceback
 from pathlib import Path
-from typing import NoReturn
+from typing import Literal, NoReturn
 
 import click
 
@@ -63,8 +63,17 @@ def main() -> None:
 @main.command()
 @_DESIGN
 @_OUT
+@click.option(
+    "--tolerance",
+    type=click.Choice(["coarse", "normal", "fine"]),
+    default="normal",
+    show_default=True,
+    help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
+)
 @click.pass_context
-def assess(ctx: click.Context, design: Path, out: Path) -> None:
+def assess(
+    ctx: click.Context, design: Path, out: Path, tolerance: Literal["coarse", "normal", "fine"]
+) -> None:
     """Field, stress, verdict, pictures and punch outline of DESIGN.
 
     Ends with 0 when every limit of the design holds, with 1 when one is missed.
@@ -73,7 +82,7 @@ def assess(ctx: click.Context, design: Path, out: Path) -> None:
     from .screen import print_verdict, shown_progress
 
     with shown_progress() as progress:
-        verdict = run(design, out, progress)
+        verdict = run(design, out, progress, tolerance)
     print_verdict(verdict, str(out))
     ctx.exit(0 if verdict.passes else 1)
 

@@ -16,19 +16,26 @@ from .progress import Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
     from lamwright.postprocess.verdict import Verdict
+    from lamwright.solver.tolerance import ToleranceName
 
     from .desk import Desk
 
 MOST_WORKERS = 3  # beside this process; a design has six chains to share
 
 
-def assess(path: str | Path, out: str | Path, progress: Progress = silent) -> "Verdict":
+def assess(
+    path: str | Path,
+    out: str | Path,
+    progress: Progress = silent,
+    tolerance: "ToleranceName" = "normal",
+) -> "Verdict":
     """Assess the design in the file `path`; all results go to the folder `out`.
 
     Args:
         path: design file.
         out: folder, made where it is missing.
         progress: called with the phase and the share done.
+        tolerance: how fine to mesh; `solver.tolerance` says what each name promises.
 
     Returns:
         The verdict, as written to `verdict.json`.
@@ -47,7 +54,7 @@ def assess(path: str | Path, out: str | Path, progress: Progress = silent) -> "V
     with crew, staged(folder) as stage:
         from .assessment import Assessment
 
-        return Assessment(machine, section, crew, watch).written_to(stage)
+        return Assessment(machine, section, crew, watch, tolerance).written_to(stage)
 
 
 def make_desk() -> "Desk":

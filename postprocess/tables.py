@@ -30,6 +30,7 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
         "estimates": [key for key, figure in figures.items() if figure.is_estimate],
         "cautions": list(verdict.cautions),
         "outline_dxf": verdict.outline_dxf,
+        "tolerance": verdict.tolerance,
         "version": verdict.version,
         "design_hash": verdict.design_hash,
         "seconds": {time.phase: round(time.seconds, 3) for time in verdict.times},

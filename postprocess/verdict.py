@@ -162,6 +162,7 @@ class Verdict:
     design_hash: str
     version: str
     outline_dxf: str  # file name in the folder of the verdict
+    tolerance: str  # name of the accuracy asked for, see `solver.tolerance`
     magnetic: MagneticFigures
     terminal: TerminalFigures
     stress: StressFigures

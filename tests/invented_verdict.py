@@ -87,6 +87,7 @@ def verdict(
         design_hash="0" * 64,
         version="0.0.0",
         outline_dxf="lamination.dxf",
+        tolerance="normal",
         magnetic=magnetic,
         terminal=TERMINAL,
         stress=stress,
