@@ -27,6 +27,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
+
 from lamwright.solver.types import FieldSolution, FloatArray
 
 PERIOD_EL = math.pi / 3.0  # rad, 60 electrical degrees

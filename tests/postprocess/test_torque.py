@@ -4,6 +4,7 @@ import math
 
 import numpy as np
 import pytest
+
 from lamwright.postprocess.torque import (
     TorqueWaveform,
     coenergy_difference,
