@@ -17,6 +17,7 @@ from dataclasses import dataclass
 
 from .barriers import MM, arm_angle, bend_radius
 from .design import BarrierDesign, MachineDesign
+from .design_keys import key_name, replaced, stated
 from .errors import Finding
 
 GRID = 40  # values tried over a key's whole domain
@@ -89,23 +90,18 @@ def findings(design: MachineDesign, found: Sequence[Fault], faults: Faults) -> l
 
 def value_of(design: MachineDesign, key: str) -> float:
     """The value at `key`; what a straight barrier takes by default where there is none."""
-    table, index, name = _parts(key)
-    if index is None:
-        return float(getattr(getattr(design, table), name))
-    barrier = design.rotor.barrier[index]
-    value = getattr(barrier, name)
-    return _default(barrier, name, design.pole_pairs) if value is None else float(value)
+    value = stated(design, key)
+    if isinstance(value, int | float):
+        return float(value)
+    number = barrier_number(key)
+    if number is None:
+        return 0.0
+    return _default(design.rotor.barrier[number - 1], key_name(key), design.pole_pairs)
 
 
 def with_value(design: MachineDesign, key: str, value: float) -> MachineDesign:
     """The design with another value at `key`, not validated again."""
-    table, index, name = _parts(key)
-    part = getattr(design, table)
-    if index is None:
-        return design.model_copy(update={table: part.model_copy(update={name: value})})
-    barriers = list(design.rotor.barrier)
-    barriers[index] = barriers[index].model_copy(update={name: value})
-    return design.model_copy(update={"rotor": part.model_copy(update={"barrier": tuple(barriers)})})
+    return replaced(design, key, value)
 
 
 def barrier_key(number: int, name: str) -> str:
@@ -115,14 +111,8 @@ def barrier_key(number: int, name: str) -> str:
 
 def barrier_number(key: str) -> int | None:
     """Which barrier a key belongs to, from 1; None for keys of other tables."""
-    index = _parts(key)[1]
-    return None if index is None else index + 1
-
-
-def _parts(key: str) -> tuple[str, int | None, str]:
-    match = re.fullmatch(r"(\w+)(?:\.barrier\[(\d+)\])?\.(\w+)", key)
-    assert match is not None, key
-    return match[1], int(match[2]) - 1 if match[2] else None, match[3]
+    match = re.match(r"rotor\.barrier\[(\d+)\]\.", key)
+    return int(match[1]) if match else None
 
 
 def _default(barrier: BarrierDesign, name: str, pole_pairs: int) -> float:
@@ -137,7 +127,7 @@ def _domain(design: MachineDesign, key: str) -> Domain:
     if key in SCALES:
         low, high = SCALES[key]
         return Domain(low, high, is_low_accepted=True, has_limit=True)
-    _, index, name = _parts(key)
+    name = key_name(key)
     outer, sheet = design.stator.outer_diameter_mm, design.rotor.sheet_thickness_mm
     if name == "end_angle_deg":
         return Domain(0.0, 90.0 / design.pole_pairs)
@@ -151,7 +141,8 @@ def _domain(design: MachineDesign, key: str) -> Domain:
         # Under a flat tooth tip 0 stands apart from the range too.
         low = 0.0 if design.stator.wedge_angle_deg else 0.1 * sheet
         return Domain(low, outer, is_low_accepted=True)
-    return Domain(0.0, 2.0 * outer if index is None else 0.5 * design.stator.bore_diameter_mm)
+    is_barrier = barrier_number(key) is not None
+    return Domain(0.0, 0.5 * design.stator.bore_diameter_mm if is_barrier else 2.0 * outer)
 
 
 class _Search:
@@ -252,7 +243,7 @@ def _mended(
         accepted = searches[key].accepted(frozenset(), only=fault.identity)
         if accepted is not None:
             return key, f"accepted {accepted}{NOT_ENOUGH}"
-    names = list(dict.fromkeys(_parts(key)[2] for key in fault.keys))
+    names = list(dict.fromkeys(key_name(key) for key in fault.keys))
     return fault.keys[0], f"no single value mends it, change several of {', '.join(names)}"
 
 
