@@ -14,17 +14,22 @@ from typing import Literal
 
 from .curves import Path, Point
 
-Material = Literal["rotor_steel", "stator_steel", "air", "copper", "shaft"]
+Material = Literal["rotor_steel", "stator_steel", "air", "copper", "shaft", "magnet"]
 
 
 @dataclass(frozen=True, slots=True)
 class Region:
-    """An area of one material: a counter-clockwise outer path and clockwise holes."""
+    """An area of one material: a counter-clockwise outer path and clockwise holes.
+
+    `magnetisation` is the unit vector along a magnet's remanence, x + iy, and 0 for all else; it
+    turns with the region, and changes sign from pole to pole.
+    """
 
     name: str
     material: Material
     outer: Path
     holes: tuple[Path, ...] = ()
+    magnetisation: complex = 0j
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,10 +56,10 @@ class CrossSection:
     """One pole of rotor and stator, ready for meshing, drawing and DXF (SI units).
 
     Region names. Rotor: `rotor_iron`, `barrier_<k>` or, where radial ribs cut barrier k into
-    cavities, `barrier_<k>_<letter>`; `shaft` (inside the bore); `gap_rotor` (rim to turning
-    circle). Stator: `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air
-    between bore and copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom),
-    `stator_iron`.
+    cavities, `barrier_<k>_<letter>`; `magnet_<k>` or, for a pair, `magnet_<k>_<letter>`, each a
+    hole of its cavity; `shaft` (inside the bore); `gap_rotor` (rim to turning circle). Stator:
+    `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air between bore and
+    copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom), `stator_iron`.
     """
 
     pole_pairs: int

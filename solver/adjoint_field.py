@@ -110,7 +110,12 @@ def linkage_slopes(
         section: the pole it was made of, for its materials.
         winding: its winding.
         solution: converged field of the model.
+
+    Raises:
+        ValueError: for a machine with magnets, whose load's slope is not there.
     """
+    if model.magnet.still_energy > 0.0:
+        raise ValueError("slopes of a machine with magnets are not there")
     theta_e = model.sector.pole_pairs * solution.position
     currents = phase_currents(solution.i_d, solution.i_q, theta_e)
     place = at_position(model, solution.position)

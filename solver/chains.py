@@ -74,7 +74,7 @@ def linkage_slope(
     theta_e = model.sector.pole_pairs * solution.position
     currents = phase_currents(solution.i_d, solution.i_q, theta_e)
     place = at_position(model, solution.position)
-    energy = PointEnergy(model, place, currents @ model.linkage)
+    energy = PointEnergy(model, place, currents @ model.linkage + model.magnet.load)
     nodal = np.concatenate([solution.a_rotor, solution.a_stator])
     _, state = energy.residual(nodal[model.representative])
     change = energy.solve_tangent(state, phase_currents(di_d, di_q, theta_e) @ model.linkage)

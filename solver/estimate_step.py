@@ -36,10 +36,12 @@ from .kernel import (
     quadrature,
     quadrature_places,
 )
+from .magnet import magnet_source
 from .model import (
     Cache,
     MagneticModel,
     joined_parts,
+    linear_reluctivity,
     linear_tangent,
     linkage_functional,
     material_of_elem,
@@ -70,6 +72,7 @@ class FineLevel:
     others: FloatArray  # (21, n_others), linear tangents
     stator_gap: IntArray  # (n_stator_gap,), elements
     linkage: FloatArray  # (3, n_dof)
+    magnet: FloatArray  # (n_dof,), load of the magnets
     representative: IntArray  # (n_dof,), a node with sign + for every unknown
     carry: SparseRows  # (n_dof, n_node of the coarse mesh)
     gaps: Cache = field(repr=False)
@@ -170,8 +173,7 @@ def fine_level(model: MagneticModel, section: CrossSection, winding: WindingTabl
     is_gap[sector.rotor.elements_of("gap_rotor")] = True
     is_iron = np.isin(materials, ("rotor_steel", "stator_steel"))
     iron, gap, others = (np.flatnonzero(g) for g in (is_iron, is_gap, ~is_iron & ~is_gap))
-    shaft = NU_0 / model.settings.shaft_relative_permeability
-    nu = np.where(materials[others] == "shaft", shaft, NU_0)
+    nu = linear_reluctivity(materials[others], model.settings)
     order = np.concatenate([iron, gap, others])
     stator_gap = sector.rotor.elements.shape[0] + sector.stator.elements_of("gap_stator")
     representative = representatives(numbering, sector)
@@ -189,6 +191,7 @@ def fine_level(model: MagneticModel, section: CrossSection, winding: WindingTabl
         others=linear_tangent(quadrature(nodes, elements[others]), nu),
         stator_gap=elements[stator_gap],
         linkage=linkage_functional(sector, winding, numbering),
+        magnet=magnet_source(sector.rotor, section.rotor, numbering, model.settings.magnet).load,
         representative=representative,
         carry=carry[representative],
         gaps=Cache(2),
@@ -209,7 +212,8 @@ def changes(level: FineLevel, solution: FieldSolution) -> Change:
     a_coarse = np.concatenate([solution.a_rotor, solution.a_stator])
     a = np.asarray(level.carry @ a_coarse)
     theta_e = model.sector.pole_pairs * solution.position
-    load = phase_currents(solution.i_d, solution.i_q, theta_e) @ level.linkage
+    currents = phase_currents(solution.i_d, solution.i_q, theta_e)
+    load = currents @ level.linkage + level.magnet
     equations = _equations(level, gap, dof, sign, load)
     coarse = _coarse_solver(level, solution)
     count = 0

@@ -109,7 +109,7 @@ def solve_point(
     theta_e = model.sector.pole_pairs * position
     currents = phase_currents(i_d, i_q, theta_e)
     place = at_position(model, position)
-    load = currents @ model.linkage
+    load = currents @ model.linkage + model.magnet.load
     energy = PointEnergy(model, place, load)
     a = np.zeros(load.size)
     if start is not None:
@@ -127,6 +127,8 @@ def solve_point(
     a_node.flags.writeable = psi_abc.flags.writeable = False
     stored, costored = _energies(model, state)
     linear = 0.5 * float(a @ place.times(a))
+    still = model.magnet.still_energy
+    released = float(a @ model.magnet.load)  # see `magnet`; both are 0 without magnets
     n_rotor = model.sector.rotor.nodes.shape[0]
     torque = gap_torque(
         place.gap_quad,
@@ -144,8 +146,8 @@ def solve_point(
         psi_d=psi_d,
         psi_q=psi_q,
         torque=per_machine * torque,
-        energy=per_machine * (stored + linear),
-        coenergy=per_machine * (costored + linear),
+        energy=per_machine * (stored + linear + still - released),
+        coenergy=per_machine * (costored + linear - still),
         newton=report,
     )
 

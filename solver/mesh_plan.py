@@ -165,6 +165,7 @@ def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Acr
         "rotor_steel": Across(iron, settings.across_rib / scale, ribs),
         "stator_steel": Across(iron),
         "air": Across(settings.across_air / scale),
+        "magnet": Across(iron),
         "copper": Across(settings.across_copper / scale),
         "shaft": None,
     }

@@ -19,6 +19,7 @@ from lamwright.geometry.winding import WindingTable
 
 from .kernel import FluxState, packed_tangent, quadrature, quadrature_places, shape_integrals
 from .linear import Method
+from .magnet import MagnetLaw, MagnetSource, magnet_source
 from .newton import NewtonSettings
 from .pattern import (
     Entries,
@@ -49,6 +50,7 @@ class FieldSettings:
     # Six points instead of three in the steel change torque and linkages by less than 0.01 %.
     iron_points: Literal[3, 6] = 3
     shaft_relative_permeability: float = 1.0
+    magnet: MagnetLaw | None = None  # of every magnet region; needed where there is one
     newton: NewtonSettings = field(default_factory=NewtonSettings)
     solver: Method = "auto"
 
@@ -138,6 +140,7 @@ class MagneticModel:
     rotor_gap: RotorGap
     stator_gap: StatorGap
     linkage: FloatArray  # (3, n_dof), phase linkage of one pole per metre of stack
+    magnet: MagnetSource  # in the rotor's numbering, so it turns with the rotor
     representative: IntArray  # (n_dof,), a node with sign + for every unknown
     factors: Cache = field(repr=False)
     positions: Cache = field(repr=False)
@@ -177,7 +180,7 @@ def magnetic_model(
     pattern = lower_pattern(n_dof, tuple(entries))
     iron, gap, others = groups
     quad = quadrature(nodes, elements[others])
-    nu = np.where(materials[others] == "shaft", NU_0 / settings.shaft_relative_permeability, NU_0)
+    nu = linear_reluctivity(materials[others], settings)
     stator_gap = sector.rotor.elements.shape[0] + sector.stator.elements_of("gap_stator")
     capacity = max(2, CACHED_UNKNOWNS // n_dof)
     return MagneticModel(
@@ -208,6 +211,7 @@ def magnetic_model(
             places=quadrature_places(nodes, elements[stator_gap], 6),
         ),
         linkage=linkage_functional(sector, winding, numbering),
+        magnet=magnet_source(sector.rotor, section.rotor, numbering, settings.magnet),
         representative=representatives(numbering, sector),
         factors=Cache(capacity),
         positions=Cache(2 * capacity),
@@ -220,6 +224,14 @@ def linear_tangent(quad: Quadrature, nu: FloatArray) -> FloatArray:
     still = np.zeros((*shape, 2))
     state = FluxState(still, np.broadcast_to(nu[:, None], shape), np.zeros(shape))
     return packed_tangent(quad, state)
+
+
+def linear_reluctivity(materials: npt.NDArray[np.str_], settings: FieldSettings) -> FloatArray:
+    """Reluctivity (n_elem,) in m/H of elements that are not steel."""
+    nu = np.where(materials == "shaft", NU_0 / settings.shaft_relative_permeability, NU_0)
+    if settings.magnet is not None:
+        nu[materials == "magnet"] = settings.magnet.reluctivity
+    return nu
 
 
 def material_of_elem(sector: SectorMesh, section: CrossSection) -> npt.NDArray[np.str_]:

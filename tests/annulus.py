@@ -17,6 +17,7 @@ from lamwright.solver.types import FloatArray, PlanarMesh, SectorMesh
 
 MATERIALS: dict[str, Material] = {
     "shaft": "shaft",
+    "magnet": "magnet",
     "rotor_iron": "rotor_steel",
     "gap_rotor": "air",
     "gap_stator": "air",
@@ -115,7 +116,8 @@ def ring_section(machine: RingMachine) -> CrossSection:
     """Names and materials of a ring machine; its outlines stay empty, the mesh is made by hand."""
 
     def region(name: str) -> Region:
-        return Region(name, MATERIALS[name], Path(()))
+        along = 1.0 + 0.0j if name == "magnet" else 0j  # parallel, along the d axis
+        return Region(name, MATERIALS[name], Path(()), (), along)
 
     return CrossSection(
         pole_pairs=machine.pole_pairs,
