@@ -13,8 +13,12 @@ import cmath
 import math
 from dataclasses import dataclass
 
-from .barriers import (
-    FULL_ROUND_TOL,
+from .barriers import FULL_ROUND_TOL
+from .corners import is_within
+from .curves import Edge
+from .design import BarrierDesign, MachineDesign
+from .distances import distance
+from .mid_lines import (
     MM,
     MidLine,
     bend_radius,
@@ -23,10 +27,6 @@ from .barriers import (
     mid_line,
     straight_legs,
 )
-from .corners import is_within
-from .curves import Edge
-from .design import BarrierDesign, MachineDesign
-from .distances import distance
 from .remedies import Fault, barrier_key
 from .rotor import rotor_frame
 

@@ -6,9 +6,9 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 """
 
 from .barrier_checks import SLACK, barrier_faults, rotor_faults
-from .barriers import MM
 from .design import MachineDesign
 from .errors import Finding
+from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
 from .slot_checks import stator_faults
 from .winding import winding_findings

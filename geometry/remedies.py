@@ -15,10 +15,10 @@ import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
-from .barriers import MM, arm_angle, bend_radius
 from .design import BarrierDesign, MachineDesign
 from .design_keys import key_name, replaced, stated
 from .errors import Finding
+from .mid_lines import MM, arm_angle, bend_radius
 
 GRID = 40  # values tried over a key's whole domain
 REFINED = 20  # values tried between the neighbours of the one that lacks least

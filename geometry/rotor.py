@@ -8,10 +8,11 @@ import cmath
 import math
 from dataclasses import dataclass
 
-from .barriers import MidLine, RibCut, cavities, mid_line, rib_cuts
+from .barriers import RibCut, cavities, rib_cuts
 from .curves import Edge, Path, Point, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
 from .distances import nearest
+from .half_barrier import HalfBarrier, half_barrier
 from .section import Region, Rib
 
 MM = 1e-3  # m
@@ -84,19 +85,17 @@ def cavity_names(number: int, count: int) -> tuple[str, ...]:
 def _barrier(
     number: int, barrier: BarrierDesign, frame: RotorFrame
 ) -> tuple[list[Path], list[Rib]]:
-    mid = mid_line(barrier, frame.rotor_radius, frame.pole_pairs)
+    half = half_barrier(barrier, frame.rotor_radius, frame.pole_pairs)
     cuts = rib_cuts(barrier)
-    paths = cavities(mid, cuts)
-    ribs = _tangential_ribs(number, mid, frame) + _radial_ribs(number, paths, cuts)
+    paths = cavities(half, cuts)
+    ribs = _tangential_ribs(number, half) + _radial_ribs(number, paths, cuts)
     turn = cmath.exp(1j * frame.q_axis)
     placed = [Rib(r.name, r.kind, r.barrier, r.start * turn, r.end * turn) for r in ribs]
     return [turned(path, frame.q_axis) for path in paths], placed
 
 
-def _tangential_ribs(number: int, mid: MidLine, frame: RotorFrame) -> list[Rib]:
-    cap = mid.cap_centre
-    out = cap / abs(cap)
-    start, end = cap + 0.5 * mid.thickness * out, frame.rotor_radius * out
+def _tangential_ribs(number: int, half: HalfBarrier) -> list[Rib]:
+    start, end = half.rib
     return [
         Rib(f"tangential_{number}_right", "tangential", number, start.conjugate(), end.conjugate()),
         Rib(f"tangential_{number}_left", "tangential", number, start, end),

@@ -9,9 +9,11 @@ import math
 
 import pytest
 
-from lamwright.geometry.barriers import MM, cavities, mid_line, rib_cuts
+from lamwright.geometry.barriers import cavities, rib_cuts
 from lamwright.geometry.curves import area, perimeter
 from lamwright.geometry.design import BarrierDesign
+from lamwright.geometry.half_barrier import half_barrier
+from lamwright.geometry.mid_lines import MM, mid_line
 from tests.outlines import b1_barrier, polygon, turns
 
 R = 39.5 * MM
@@ -31,7 +33,7 @@ DEFAULTS = STRAIGHT.model_copy(
 
 def outlines(barrier, **changes):
     barrier = barrier.model_copy(update=changes)
-    return cavities(mid_line(barrier, R, 2), rib_cuts(barrier))
+    return cavities(half_barrier(barrier, R, 2), rib_cuts(barrier))
 
 
 def two_ribs(fillet_mm):
