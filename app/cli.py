@@ -111,6 +111,19 @@ def slopes(design: Path, out: Path) -> None:
 
 @main.command()
 @_DESIGN
+@click.option(
+    "--csv", "table", type=click.Path(path_type=Path), help="Write the coil sides to this file."
+)
+def winding(design: Path, table: Path | None) -> None:
+    """Phase and sign of every coil side of DESIGN, and its winding factors."""
+    from .coils import print_winding
+    from .coils import winding as run
+
+    print_winding(run(design, table))
+
+
+@main.command()
+@_DESIGN
 @click.option("--i-d", required=True, type=float, help="d-axis current, A peak.")
 @click.option("--i-q", required=True, type=float, help="q-axis current, A peak.")
 @click.option(

@@ -2,9 +2,10 @@
 
 from .checks import check_design
 from .design import MachineDesign
-from .errors import GeometryError
+from .errors import Finding, GeometryError
 from .rotor import rotor_frame, rotor_regions
 from .section import CrossSection
+from .star_of_slots import is_balanced
 from .stator import stator_regions
 
 MM = 1e-3  # m
@@ -16,7 +17,7 @@ def cross_section(design: MachineDesign) -> CrossSection:
     Raises:
         GeometryError: with every finding, if the shape cannot be drawn or punched.
     """
-    findings = check_design(design)
+    findings = (*check_design(design), *_sector_findings(design))
     if findings:
         raise GeometryError(findings)
     frame = rotor_frame(design)
@@ -33,3 +34,13 @@ def cross_section(design: MachineDesign) -> CrossSection:
         stator=stator_regions(design),
         ribs=ribs,
     )
+
+
+def _sector_findings(design: MachineDesign) -> tuple[Finding, ...]:
+    """One pole can stand for all only where it has a whole number of slots."""
+    slots, poles = design.stator.slots, design.rotor.poles
+    if poles % 2 or slots % poles == 0 or not is_balanced(slots, poles):
+        return ()
+    fault = "the field of fractional slots per pole is not computed yet"
+    remedy = f"accepted multiples of {3 * poles}"
+    return (Finding("sector", "stator.slots", slots, fault, remedy),)

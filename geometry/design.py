@@ -30,7 +30,7 @@ class StatorDesign(_Table):
     outer_diameter_mm: Positive
     bore_diameter_mm: Positive
     stack_length_mm: Positive
-    slots: Annotated[int, Field(ge=6, le=144)]
+    slots: Annotated[int, Field(ge=3, le=144)]
     tooth_width_mm: Positive
     slot_depth_mm: Positive  # from the bore to the slot bottom
     slot_opening_mm: Positive
@@ -41,7 +41,7 @@ class StatorDesign(_Table):
 
 
 class WindingDesign(_Table):
-    """A distributed three-phase winding with a whole number of slots per pole and phase."""
+    """A balanced three-phase winding: distributed, fractional-slot or of tooth coils (span 1)."""
 
     layers: Annotated[Literal[1, 2], BeforeValidator(_whole)]
     coil_span_slots: Annotated[int, Field(ge=1)]

@@ -1,8 +1,9 @@
 r"""The winding: which conductors lie in which slot, its factors, resistance, end leakage.
 
-Distributed three-phase windings with a whole number q of slots per pole and phase, in 60 degree
-phase belts; counter-clockwise the belts follow as A -C B -A C -B, so that currents a, b, c in
-this order of time turn the field counter-clockwise.
+Balanced three-phase windings of like coils, whole or fractional q of slots per pole and phase,
+tooth coils included, in 60 degree phase belts of the star of slots (`star_of_slots`); counted in
+electrical degrees counter-clockwise the belts follow as A -C B -A C -B, so that currents a, b, c
+in this order of time turn the working field counter-clockwise.
 
 Signs (derived). A positive conductor carries a positive phase current along +z, out of the plane.
 Ampere's law round a counter-clockwise loop, out through the gap at theta_1 and back at theta_2,
@@ -22,6 +23,7 @@ Axes of arrays: slots, layers (0 at the slot bottom), 3 phases.
 """
 
 import math
+from collections.abc import Iterable
 from dataclasses import dataclass
 
 import numpy as np
@@ -29,6 +31,14 @@ import numpy.typing as npt
 
 from .design import MachineDesign
 from .errors import Finding, GeometryError
+from .star_of_slots import (
+    CoilStar,
+    coil_star,
+    is_balanced,
+    most_span,
+    nearest_poles,
+    nearest_slots,
+)
 
 MU_0 = 4e-7 * math.pi  # V s/(A m)
 RHO_COPPER = 0.017241e-6  # Ohm m at 20 C, IEC 60028:1925, 1/58
@@ -55,44 +65,19 @@ class WindingTable:
 
 def winding_findings(design: MachineDesign) -> tuple[Finding, ...]:
     """What keeps the winding of the design from being wound; empty where it can be."""
-    slots, poles, winding = design.stator.slots, design.rotor.poles, design.winding
-    if poles % 2 or slots % (3 * poles):
-        remedy = f"accepted multiples of {3 * poles} for {poles} poles (poles must be even)"
-        fault = "slots per pole and phase are not a whole number"
-        return (Finding("winding_slots", "stator.slots", slots, fault, remedy),)
-    findings = []
-    pitch, span = slots // poles, winding.coil_span_slots
-    if winding.layers == 1 and span != pitch:
-        fault = "a single-layer winding has full-pitch coils"
-        findings.append(
-            Finding("winding_span", "winding.coil_span_slots", span, fault, f"accepted {pitch}")
-        )
-    elif span >= 2 * pitch:
-        remedy = f"accepted 1 to {2 * pitch - 1}, full pitch is {pitch}"
-        fault = "the coil spans a whole period or more"
-        findings.append(Finding("winding_span", "winding.coil_span_slots", span, fault, remedy))
-    groups = poles * winding.layers // 2
-    if groups % winding.parallel_paths:
-        accepted = ", ".join(str(n) for n in range(1, groups + 1) if groups % n == 0)
-        fault = f"the {groups} coil groups of a phase cannot be shared out equally"
-        findings.append(
-            Finding(
-                "winding_paths",
-                "winding.parallel_paths",
-                winding.parallel_paths,
-                fault,
-                f"accepted {accepted}",
-            )
-        )
-    return tuple(findings)
+    pair = _pair_findings(design)
+    if pair:
+        return pair
+    return (*_span_findings(design), *_path_findings(design))
 
 
 def winding_table(design: MachineDesign) -> WindingTable:
     """The conductors of every coil side, and where phase A's axis lies.
 
     A coil goes from slot k (for two layers its layer 1, towards the bore) to slot k + span
-    (layer 0). Coils are placed so that axis_a is 0, or half a slot pitch where the sum of q and
-    span is odd. Lap and concentric end connections of a single layer give the same table.
+    (layer 0). Coils are placed so that axis_a is 0 where it can be (half a slot pitch where q is
+    whole and the sum of q and span odd). Lap and concentric end connections of a single layer
+    give the same table.
 
     Raises:
         GeometryError: for a winding that cannot be wound, with all findings.
@@ -101,36 +86,31 @@ def winding_table(design: MachineDesign) -> WindingTable:
     if findings:
         raise GeometryError(findings)
     slots, poles, winding = design.stator.slots, design.rotor.poles, design.winding
-    q, span = slots // (3 * poles), winding.coil_span_slots
-    # Axis of a group whose first coil starts in slot k: (k + (q + span) / 2) slot pitches.
-    first = -((q + span) // 2)
+    star = _star(design)
     conductors = np.zeros((slots, winding.layers, 3))
     share = winding.turns_per_coil / winding.parallel_paths
-    # One coil group per pole and phase; a single layer has room for one per pole pair only.
-    for group in range(0, poles, 3 - winding.layers):
-        sign = -1.0 if group % 2 else 1.0
-        for phase in range(3):
-            for k in range(q):
-                start = first + 3 * q * group + 2 * q * phase + k
-                conductors[start % slots, -1, phase] -= sign * share
-                conductors[(start + span) % slots, 0, phase] += sign * share
+    for coil in star.coils:
+        end = (coil.start + winding.coil_span_slots) % slots
+        conductors[coil.start, -1, coil.phase] -= coil.sign * share
+        conductors[end, 0, coil.phase] += coil.sign * share
     conductors.flags.writeable = False
     return WindingTable(
         slots=slots,
         poles=poles,
         layers=winding.layers,
         conductors=conductors,
-        axis_a=((q + span) % 2) * math.pi / slots,
+        axis_a=star.axis_a,
         turns_per_phase=0.5 * float(np.abs(conductors[..., 0]).sum()),
     )
 
 
-def winding_factor(table: WindingTable, order: int) -> float:
+def winding_factor(table: WindingTable, order: float) -> float:
     """Magnitude of the winding factor of phase A, from the star of slots.
 
     Args:
         table: the winding.
-        order: of the harmonic relative to the working one (electrical), as 1, 5, 7.
+        order: of the harmonic relative to the working one (electrical), as 1, 5, 7; fractional
+            windings have others too, every whole number over the pole pairs.
 
     Returns:
         |sum of the sides' phasors| / sum of their magnitudes, 0 to 1. Source: definition
@@ -164,10 +144,76 @@ def end_winding_inductance(design: MachineDesign) -> float:
     """Leakage inductance of the end winding of one phase in H: an estimate, +-30 %.
 
     L_w = (2/p) mu0 N^2 l_w lambda_w (Pyrhonen, Jokinen, Hrabovcova, 2nd ed. 2014, ch. 4, from
-    memory; forms differ by book), lambda_w 0.2 to 0.35 for distributed windings.
+    memory; forms differ by book), lambda_w 0.2 to 0.35 for distributed windings. It takes the
+    coils under a pole pair as one bundle. The ends of tooth coils do not overlap: there every one
+    of a phase's n_c coils is a bundle of its own, 2/n_c instead of 2/p (derived).
     """
     winding = design.winding
     n = winding_table(design).turns_per_phase
     l_w = 1e-3 * winding.end_turn_length_mm  # m
     lambda_w = winding.end_permeance_coefficient
-    return 2.0 / design.pole_pairs * MU_0 * n**2 * l_w * lambda_w
+    coils = design.stator.slots * winding.layers // 6  # of a phase
+    bundles = coils if winding.coil_span_slots == 1 else design.pole_pairs
+    return 2.0 / bundles * MU_0 * n**2 * l_w * lambda_w
+
+
+def _star(design: MachineDesign) -> CoilStar:
+    winding = design.winding
+    return coil_star(
+        design.stator.slots, design.rotor.poles, winding.layers, winding.coil_span_slots
+    )
+
+
+def _pair_findings(design: MachineDesign) -> tuple[Finding, ...]:
+    """Whether the slots can be shared out to three like phases."""
+    slots, poles, layers = design.stator.slots, design.rotor.poles, design.winding.layers
+    if poles % 2:
+        fault, remedy = "poles come in pairs", f"accepted {poles - 1} or {poles + 1}"
+        return (Finding("poles_odd", "rotor.poles", poles, fault, remedy),)
+    if is_balanced(slots, poles, layers):
+        return ()
+    if is_balanced(slots, poles):
+        fault = f"a single layer with {poles} poles needs an even number of slots"
+    else:
+        fault = f"{poles} poles give no three like phases"
+    remedy = f"accepted {_either(nearest_slots(slots, poles, layers))}"
+    others = nearest_poles(slots, poles, layers)
+    if others:
+        remedy += f", or {_either(others)} poles"
+    return (Finding("winding_slots", "stator.slots", slots, fault, remedy),)
+
+
+def _span_findings(design: MachineDesign) -> tuple[Finding, ...]:
+    slots, poles, winding = design.stator.slots, design.rotor.poles, design.winding
+    span, most, pitch = winding.coil_span_slots, most_span(slots, poles), slots / poles
+    is_single = winding.layers == 1
+    if is_single and slots % (3 * poles) == 0:
+        accepted = "" if span == pitch else f"{pitch:g}"
+        fault = "a single-layer winding has full-pitch coils"
+    elif span > most:
+        fault = "the coil spans a whole period or more"
+        accepted = f"1 to {most}, full pitch is {pitch:.4g}"
+        if is_single:
+            accepted = f"odd numbers {accepted}"
+    else:
+        fault = "a single layer with fractional slots per pole and phase has coils of odd span"
+        nearest = (n for n in (span - 1, span + 1) if n <= most)
+        accepted = _either(nearest) if is_single and span % 2 == 0 else ""
+    if not accepted:
+        return ()
+    key = "winding.coil_span_slots"
+    return (Finding("winding_span", key, span, fault, f"accepted {accepted}"),)
+
+
+def _path_findings(design: MachineDesign) -> tuple[Finding, ...]:
+    paths, groups = design.winding.parallel_paths, _star(design).alike
+    if groups % paths == 0:
+        return ()
+    accepted = ", ".join(str(n) for n in range(1, groups + 1) if groups % n == 0)
+    fault = f"the {groups} like coil groups of a phase cannot be shared out equally"
+    key = "winding.parallel_paths"
+    return (Finding("winding_paths", key, paths, fault, f"accepted {accepted}"),)
+
+
+def _either(numbers: Iterable[int]) -> str:
+    return " or ".join(str(n) for n in numbers)

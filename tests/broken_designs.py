@@ -333,7 +333,7 @@ SHAPES = (
         "stator.",
         "slots",
         "25",
-        "slots per pole and phase are not a whole number; accepted multiples of 12",
+        "4 poles give no three like phases; accepted 24 or 30",
     ),
     _value(
         "slot through the yoke",

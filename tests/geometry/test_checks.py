@@ -194,7 +194,11 @@ FAULTS = [
         "winding_span",
         "winding.coil_span_slots",
     ),
-    (changed(plain(), stator__slots=30), "winding_slots", "stator.slots"),
+    (
+        changed(plain(), stator__slots=28, winding__layers=2),
+        "winding_slots",
+        "stator.slots",
+    ),
     (changed(plain(), rotor__poles=5), "poles_odd", "rotor.poles"),
     (
         changed(plain(), duty__maximum_speed_rpm=1000.0),
