@@ -3,25 +3,38 @@
 from .checks import check_design
 from .design import MachineDesign
 from .errors import Finding, GeometryError
-from .rotor import rotor_frame, rotor_regions
-from .section import CrossSection
+from .rotor import rotor_frame, rotor_poles
+from .section import CrossSection, Region
+from .sectors import rotor_sector, smallest_sector
 from .star_of_slots import is_balanced
 from .stator import stator_regions
+from .winding import winding_table
 
 MM = 1e-3  # m
 
 
-def cross_section(design: MachineDesign) -> CrossSection:
-    """One pole of the design's machine as exact regions in SI units.
+def cross_section(design: MachineDesign, sector_poles: int | None = None) -> CrossSection:
+    """A sector of the design's machine as exact regions in SI units.
+
+    Args:
+        design: the machine.
+        sector_poles: of the sector, a multiple of the smallest that stands for the machine and
+            a divisor of the poles; the smallest itself if not given.
 
     Raises:
+        ValueError: for a sector that does not stand for the machine.
         GeometryError: with every finding, if the shape cannot be drawn or punched.
     """
     findings = (*check_design(design), *_sector_findings(design))
     if findings:
         raise GeometryError(findings)
     frame = rotor_frame(design)
-    rotor, ribs = rotor_regions(design)
+    poles = rotor_poles(design)
+    least = smallest_sector(winding_table(design), len(poles))
+    covered = least if sector_poles is None else sector_poles
+    if covered < 1 or covered % least or design.rotor.poles % covered:
+        raise ValueError(f"a sector of {covered} poles does not stand for this machine")
+    rotor, ribs = rotor_sector(poles, design.pole_pairs, covered)
     return CrossSection(
         pole_pairs=design.pole_pairs,
         stack_length=MM * design.stator.stack_length_mm,
@@ -31,8 +44,10 @@ def cross_section(design: MachineDesign) -> CrossSection:
         stator_outer_radius=0.5 * MM * design.stator.outer_diameter_mm,
         slots=design.stator.slots,
         rotor=rotor,
-        stator=stator_regions(design),
+        stator=stator_regions(design, covered),
         ribs=ribs,
+        sector_poles=covered,
+        rotor_period=len(poles),
     )
 
 
@@ -44,3 +59,24 @@ def _sector_findings(design: MachineDesign) -> tuple[Finding, ...]:
     fault = "the field of fractional slots per pole is not computed yet"
     remedy = f"accepted multiples of {3 * poles}"
     return (Finding("sector", "stator.slots", slots, fault, remedy),)
+
+
+def _least(design: MachineDesign, period: int) -> int:
+    return smallest_sector(winding_table(design), period)
+
+
+def drawn_rotor(design: MachineDesign) -> tuple[Region, ...]:
+    """The rotor's regions in the smallest sector, without any check."""
+    poles = rotor_poles(design)
+    return rotor_sector(poles, design.pole_pairs, _least(design, len(poles)))[0]
+
+
+def drawn_rotor_period(design: MachineDesign) -> tuple[Region, ...]:
+    """The regions of the rotor's own period, without any check."""
+    poles = rotor_poles(design)
+    return rotor_sector(poles, design.pole_pairs, len(poles))[0]
+
+
+def drawn_stator(design: MachineDesign) -> tuple[Region, ...]:
+    """The stator's regions in the smallest sector, without any check."""
+    return stator_regions(design, _least(design, len(rotor_poles(design))))

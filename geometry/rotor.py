@@ -48,6 +48,17 @@ def rotor_frame(design: MachineDesign) -> RotorFrame:
     )
 
 
+def rotor_poles(
+    design: MachineDesign,
+) -> tuple[tuple[tuple[Region, ...], tuple[Rib, ...]], ...]:
+    """Regions and ribs of each pole of the rotor's period, each drawn from its own d axis.
+
+    The far side of a pole has the same edges as the near side of the next one, the last pole's
+    as that of the first.
+    """
+    return (rotor_regions(design),)
+
+
 def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib, ...]]:
     """Regions and ribs of one pole of the rotor, sector 0 to pi / pole_pairs, in m.
 

@@ -186,41 +186,46 @@ def stator_ring(design: MachineDesign) -> StatorRing:
     )
 
 
-def stator_regions(design: MachineDesign) -> tuple[Region, ...]:
-    """The regions of the stator's pole, sector 0 to pi / pole_pairs, in m.
+def stator_regions(design: MachineDesign, sector_poles: int = 1) -> tuple[Region, ...]:
+    """The regions of the stator's sector, 0 to sector_poles * pi / pole_pairs, in m.
 
     The middle of a tooth lies at angle 0, the centre line of slot s at (s + 1/2) 2 pi / slots.
     """
-    return pole_regions(slot_outline(design), stator_ring(design))
+    return pole_regions(slot_outline(design), stator_ring(design), sector_poles)
 
 
-def pole_regions(slot: Slot, ring: StatorRing) -> tuple[Region, ...]:
-    """The regions of one pole of a stator with any slot that is symmetric about its centre line.
+def pole_regions(slot: Slot, ring: StatorRing, sector_poles: int = 1) -> tuple[Region, ...]:
+    """The regions of a sector of a stator with any slot that is symmetric about its centre line.
 
     Args:
         slot: outline in its own frame, in m.
-        ring: radii in m; slots per pole must be whole.
+        ring: radii in m.
+        sector_poles: poles of the sector; its slots must be a whole number. Of the whole circle,
+            the first edge that starts at angle 0 is the last one, run back.
 
     Returns:
         `gap_stator`, the compartments of each slot, `stator_iron`; edges shared exactly.
     """
-    per_pole = ring.slots // (2 * ring.pole_pairs)
-    turns = [cmath.exp(2j * math.pi * (s + 0.5) / ring.slots) for s in range(per_pole)]
-    side = cmath.exp(1j * math.pi / ring.pole_pairs)
+    count = sector_poles * ring.slots // (2 * ring.pole_pairs)
+    turns = [cmath.exp(2j * math.pi * (s + 0.5) / ring.slots) for s in range(count)]
+    # One arc a pole, so that none goes round the whole circle.
+    sides = [cmath.exp(1j * math.pi * k / ring.pole_pairs) for k in range(sector_poles + 1)]
+    side = sides[-1]
     bore = _bore_edges(slot, ring, turns, side)
     first, last = bore[0].start, bore[-1].end
     inner, outer = complex(ring.circle_radius), complex(ring.outer_radius)
 
-    circle = arc(inner * side, inner, 0.0, ccw=False)
-    gap = Path((line(inner, first), *bore, line(last, inner * side), circle))
-    iron = [line(first, outer), arc(outer, outer * side, 0.0, ccw=True)]
+    circle = [arc(inner * b, inner * a, 0.0, ccw=False) for a, b in pairwise(sides)]
+    gap = Path((line(inner, first), *bore, line(last, inner * side), *reversed(circle)))
+    iron = [line(first, outer)]
+    iron += [arc(outer * a, outer * b, 0.0, ccw=True) for a, b in pairwise(sides)]
     iron += [line(outer * side, last), reversed_edge(bore[-1])]
     walls = [edge for part in slot.compartments for edge in part.flank]
     contour = [*walls, slot.bottom, *_mirrored(walls)]
     slots = []
     for s, turn in enumerate(turns):
         slots += _slot_regions(slot, s, turn, reversed_edge(bore[2 * s + 1]))
-    for s in reversed(range(per_pole)):
+    for s in reversed(range(count)):
         iron += [_turned(edge, turns[s]) for edge in contour]
         iron.append(reversed_edge(bore[2 * s]))
     return (

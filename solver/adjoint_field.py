@@ -17,7 +17,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection
+from lamwright.geometry.section import CrossSection, base_name
 from lamwright.geometry.winding import WindingTable
 
 from .design_motion import PartMotion, SizeMotion
@@ -168,7 +168,7 @@ def _slope(
             total += float(conductors @ weight) * summed_slope(n_node, elements, slope)
     at_rest, rim, circle = _unsheared(model, rest, gap[:n_rotor])
     total[:n_rotor] += at_rest
-    per_machine = 2 * sector.pole_pairs * model.stack_length
+    per_machine = sector.sectors * model.stack_length
     return FieldSlope(
         value=dual.value,
         rotor=per_machine * total[:n_rotor],
@@ -211,7 +211,7 @@ def _groups(model: MagneticModel, section: CrossSection, rest: float) -> Iterato
 
 
 def _kind(name: str, material: str) -> str:
-    if name.startswith("gap_rotor"):
+    if base_name(name) == "gap_rotor":
         return "gap"
     if material in ("rotor_steel", "stator_steel"):
         return "iron"
@@ -232,7 +232,7 @@ def _coil_sides(
 ) -> Iterator[tuple[IntArray, FloatArray]]:
     """Elements of each coil side, numbered in the stator, and its conductors (3,)."""
     stator = model.sector.stator
-    for s in range(winding.slots // winding.poles):
+    for s in range(winding.slots // model.sector.sectors):
         for layer in range(winding.layers):
             side = stator.elements_of(f"slot_{s}_layer_{layer}")
             yield stator.elements[side], winding.conductors[s, layer]

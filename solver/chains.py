@@ -78,8 +78,8 @@ def linkage_slope(
     nodal = np.concatenate([solution.a_rotor, solution.a_stator])
     _, state = energy.residual(nodal[model.representative])
     change = energy.solve_tangent(state, phase_currents(di_d, di_q, theta_e) @ model.linkage)
-    poles = 2 * model.sector.pole_pairs
-    return dq_values(poles * model.stack_length * (model.linkage @ change), theta_e)
+    per_machine = model.sector.sectors * model.stack_length
+    return dq_values(per_machine * (model.linkage @ change), theta_e)
 
 
 def fanned(

@@ -72,7 +72,7 @@ def quartered(mesh: PlanarMesh, circles: Circles) -> Quartered:
 def quartered_sector(
     sector: SectorMesh, section: CrossSection
 ) -> tuple[SectorMesh, Quartered, Quartered]:
-    """Both parts of a pole quartered; the turning circle gets twice the edges.
+    """Both parts of a sector quartered; the turning circle gets twice the edges.
 
     Returns:
         The sector, and rotor and stator with their interpolations.
@@ -85,6 +85,7 @@ def quartered_sector(
         pole_pairs=sector.pole_pairs,
         circle_radius=sector.circle_radius,
         n_circle=2 * sector.n_circle,
+        sector_poles=sector.sector_poles,
     )
     return fine, rotor, stator
 

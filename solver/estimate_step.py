@@ -222,8 +222,7 @@ def changes(level: FineLevel, solution: FieldSolution) -> Change:
         step, steps = _solved(equations.tangent(state), coarse, -residual, tolerance)
         a += step
         count += steps
-    poles = 2 * model.sector.pole_pairs
-    per_machine = poles * model.stack_length
+    per_machine = model.sector.sectors * model.stack_length
     psi_d, psi_q = dq_values(per_machine * (level.linkage @ a), theta_e)
     a_node = node_values(dof, sign, a)
     thickness = model.bore_radius - model.rim_radius

@@ -119,8 +119,7 @@ def solve_point(
         a, scale = np.zeros(load.size), 1.0
     a, state, report = minimise(energy, a, scale, model.settings.newton)
 
-    poles = 2 * model.sector.pole_pairs
-    per_machine = poles * model.stack_length
+    per_machine = model.sector.sectors * model.stack_length
     psi_abc = per_machine * (model.linkage @ a)
     psi_d, psi_q = dq_values(psi_abc, theta_e)
     a_node = node_values(place.dof, place.sign, a)
@@ -163,7 +162,7 @@ def _unknowns(model: MagneticModel, start: FieldSolution) -> FloatArray:
 def at_position(model: MagneticModel, position: float) -> Position:
     """The model's linear part with the rotor at `position` rad ahead of phase A's axis."""
     place = rotor_place(model.sector, model.axis_a + position)
-    period = 2 * model.sector.n_circle  # edges of two poles
+    period = 2 * model.sector.n_circle  # edges of two sectors
     key = (place.shift % period, place.rest)
     return model.positions.get(key, lambda: _make_position(model, place))
 
@@ -179,7 +178,7 @@ def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
     values[turned.slot] += turned.sign * summed(gap.scatter, packed)
     pattern = turned.pattern
     n_dof = numbering.n_dof
-    # Turning by a whole pole changes signs but no partner.
+    # Turning by a whole sector changes signs but no partner.
     solver = model.factors.get(
         place.shift % model.sector.n_circle,
         lambda: analyse(
@@ -210,7 +209,7 @@ def _joined(first: Quadrature, second: Quadrature) -> Quadrature:
 
 
 def _energies(model: MagneticModel, state: FluxState) -> tuple[float, float]:
-    """Energy and coenergy of the steel, per pole and metre of stack, in J/m."""
+    """Energy and coenergy of the steel, per sector and metre of stack, in J/m."""
     iron = model.iron
     total = np.zeros(2)
     for part, law in (

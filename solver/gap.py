@@ -1,11 +1,11 @@
 """The sliding circle: how the rotor's mesh meets the stator's at any angle.
 
-The circle in the middle of the gap carries n_ring = 2 n_circle equally spaced nodes a pole
+The circle in the middle of the gap carries n_ring = 2 n_circle equally spaced nodes a sector
 (vertices even, middles odd), the same in both meshes. A rotor turned by a whole number of edges
 meets the stator node on node: the rotor's node j is the stator's node j + 2 shift, and each time
-it passes the end of the pole its potential changes sign (antiperiodicity). The rest of the angle,
-at most half an edge, is taken by shearing the elements between rim and circle, so that any angle
-is exact in its geometry and the meshes always conform.
+it passes the end of a sector with an odd number of poles its potential changes sign. The rest of
+the angle, at most half an edge, is taken by shearing the elements between rim and circle, so that
+any angle is exact in its geometry and the meshes always conform.
 """
 
 import math
@@ -29,7 +29,7 @@ class RotorPlace:
 
 def rotor_place(sector: SectorMesh, angle: float) -> RotorPlace:
     """The place of a rotor whose d axis stands at `angle` rad in the stator's frame."""
-    edge = math.pi / (sector.pole_pairs * sector.n_circle)
+    edge = sector.sector_angle / sector.n_circle
     shift = round(angle / edge)
     share = round(angle / edge - shift, REST_DIGITS)
     return RotorPlace(shift, share * edge)
@@ -43,7 +43,8 @@ def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntAr
         sector: for radius, pole pairs and number of edges.
 
     Returns:
-        indices of the nodes, and their numbers 0 .. n_ring along the circle.
+        indices of the nodes, and their numbers 0 .. n_ring along the circle; of a whole circle
+        0 .. n_ring - 1.
 
     Raises:
         ValueError: when the nodes are not equally spaced as the sector says.
@@ -51,27 +52,31 @@ def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntAr
     radius = np.hypot(nodes[:, 0], nodes[:, 1])
     found = np.flatnonzero(np.abs(radius / sector.circle_radius - 1.0) < ON_CIRCLE_TOL)
     n_ring = 2 * sector.n_circle
-    spacing = math.pi / (sector.pole_pairs * n_ring)
+    spacing = sector.sector_angle / n_ring
     # Half a space ahead, so that neither side of a half-circle pole falls on the angle's jump.
     ahead = np.arctan2(nodes[found, 1], nodes[found, 0]) + 0.5 * spacing
     exact = np.mod(ahead, 2.0 * math.pi) / spacing - 0.5
     number = np.rint(exact).astype(np.int64)
-    is_regular = np.array_equal(np.sort(number), np.arange(n_ring + 1))
+    count = n_ring if sector.is_full_circle else n_ring + 1
+    is_regular = np.array_equal(np.sort(number), np.arange(count))
     if not is_regular or np.abs(exact - number).max() > 1e-4:
-        raise ValueError(f"circle: {found.size} nodes, expected {n_ring + 1} equally spaced")
+        raise ValueError(f"circle: {found.size} nodes, expected {count} equally spaced")
     return found, number
 
 
-def turned(number: IntArray, shift: int, n_ring: int) -> tuple[IntArray, FloatArray]:
+def turned(
+    number: IntArray, shift: int, n_ring: int, side_sign: float = -1.0
+) -> tuple[IntArray, FloatArray]:
     """Stator's number of the rotor's circle nodes and the sign of their potential.
 
     Args:
         number: places along the rotor's circle, from its d axis.
         shift: whole edges (two places each) by which the rotor stands ahead.
-        n_ring: places a pole.
+        n_ring: places a sector.
+        side_sign: of the potential from one sector to the next.
     """
     lap, place = np.divmod(number + 2 * shift, n_ring)
-    return place, np.where(lap % 2 == 0, 1.0, -1.0)
+    return place, np.where(lap % 2 == 0, 1.0, side_sign)
 
 
 def sheared(nodes: FloatArray, rest: float, rim_radius: float, circle_radius: float) -> FloatArray:

@@ -1,7 +1,7 @@
 """What a field is worth at the terminals and at the shaft: linkages, torque, energies.
 
-All values are of the whole machine: a sector's integral times the number of poles times the
-stack length. Axes: n_elem elements, n_qp quadrature points, n_node nodes.
+All values are of the whole machine: a sector's integral times the number of sectors times
+the stack length. Axes: n_elem elements, n_qp quadrature points, n_node nodes.
 """
 
 import math
@@ -32,7 +32,7 @@ def dq_values(abc: FloatArray, theta_e: float) -> tuple[float, float]:
 
 
 def gap_torque(quad: Quadrature, places: FloatArray, a_elem: FloatArray, thickness: float) -> float:
-    """Torque of one pole per metre of stack, Maxwell's stress averaged over the gap, in N.
+    """Torque of a sector per metre of stack, Maxwell's stress averaged over the gap, in N.
 
     Source: Arkkio, Acta Polytechnica Scandinavica EE 59, 1987 (from memory; re-derived: the
     torque on any circle is r^2/mu0 int B_r B_theta d theta, averaged over the radius).

@@ -21,7 +21,7 @@ import numpy as np
 
 from lamwright.geometry.curves import Edge
 from lamwright.geometry.errors import MeshError
-from lamwright.geometry.section import CrossSection, Region
+from lamwright.geometry.section import CrossSection, Region, rotor_cell, rotor_iron
 
 from .mesh_checks import least_jacobian_share
 from .mesh_fold import fold, folded_points, unfold
@@ -30,7 +30,7 @@ from .mesh_outline import ComplexArray, Outline, outline_of
 from .mesh_plan import (
     MeshSettings,
     circle_edges,
-    gap_of,
+    gaps_of,
     lamination_sizing,
     section_sizing,
     side_twins,
@@ -98,10 +98,10 @@ def mesh_regions(
 
 
 def mesh_section(section: CrossSection, settings: MeshSettings | None = None) -> SectorMesh:
-    """Mesh of one pole for the magnetic field, rotor and stator apart.
+    """Mesh of a sector for the magnetic field, rotor and stator apart.
 
     Args:
-        section: the pole.
+        section: the sector.
         settings: sizes.
 
     Returns:
@@ -112,31 +112,40 @@ def mesh_section(section: CrossSection, settings: MeshSettings | None = None) ->
     """
     settings = settings or MeshSettings()
     n_circle = circle_edges(section, settings)
+    slots = section.sector_slots
+    rotor, stator = rotor_copies(section), ((2 * slots, 2), (slots,))
     return SectorMesh(
-        rotor=_mesh_part(section, section.rotor, (2,), n_circle, settings),
-        stator=_mesh_part(
-            section, section.stator, (section.slots // section.pole_pairs, 2), n_circle, settings
-        ),
+        rotor=_mesh_part(section, section.rotor, rotor, n_circle, settings),
+        stator=_mesh_part(section, section.stator, stator, n_circle, settings),
         pole_pairs=section.pole_pairs,
         circle_radius=section.circle_radius,
         n_circle=n_circle,
+        sector_poles=section.sector_poles,
     )
+
+
+def rotor_copies(section: CrossSection) -> tuple[tuple[int, ...], tuple[int, ...]]:
+    """Numbers of wedges that the rotor's sector may fold into: mirrored and turned ones."""
+    poles, periods = section.sector_poles, section.sector_poles // section.rotor_period
+    turned = {n for n in (poles, periods) if n > 1}
+    return tuple({2 * poles, 2 * periods}), tuple(turned)
 
 
 def _mesh_part(
     section: CrossSection,
     regions: Sequence[Region],
-    copies: Sequence[int],
+    copies: tuple[Sequence[int], Sequence[int]],
     n_circle: int,
     settings: MeshSettings,
 ) -> PlanarMesh:
     """Rotor or stator, by its finest fan."""
-    fan = fold(regions, math.pi / section.pole_pairs, [c for c in copies if n_circle % c == 0])
+    mirrored, turned = ([c for c in counts if n_circle % c == 0] for counts in copies)
+    fan = fold(regions, section.sector_angle, mirrored, turned)
     outline = outline_of(fan.regions)
     sizing = section_sizing(section, fan, outline, n_circle, settings)
     names = tuple(region.name for region in regions)
     piece_names = tuple(region.name for region in fan.regions)
-    mesh = _mesh(outline, sizing, piece_names, NO_SOURCES, gap_of(fan))
+    mesh = _mesh(outline, sizing, piece_names, NO_SOURCES, gaps_of(fan))
     return read_only(unfold(fan, mesh, names))
 
 
@@ -145,22 +154,23 @@ def mesh_lamination(
     settings: MeshSettings | None = None,
     refine_at: SizeSources = NO_SOURCES,
 ) -> PlanarMesh:
-    """Mesh of one pole of the rotor lamination alone, for stress.
+    """Mesh of the rotor lamination's own period alone, for stress: one pole where all are alike.
 
     Args:
-        section: the pole.
+        section: a sector.
         settings: sizes; `scale` refines all of them.
         refine_at: points with a wanted side, as an adaptive loop asks for.
 
     Returns:
-        The iron only; nodes on the side at angle pi / pole_pairs are those at angle 0, turned.
+        The iron only; nodes on the far side are those at angle 0, turned.
 
     Raises:
         MeshError: where the mesh cannot be made valid.
     """
     settings = settings or MeshSettings()
-    iron = [region for region in section.rotor if region.name == "rotor_iron"]
-    fan = fold(iron, math.pi / section.pole_pairs, (2,))
+    section = rotor_cell(section)
+    iron = rotor_iron(section)
+    fan = fold(iron, section.sector_angle, *rotor_copies(section))
     refine = SizeSources(folded_points(fan, refine_at.points), refine_at.sizes)
     outline = outline_of(fan.regions)
     sizing = lamination_sizing(section, fan, outline, refine, settings)
@@ -174,18 +184,18 @@ def _mesh(
     sizing: Sizing,
     names: tuple[str, ...],
     inside: SizeSources,
-    gap: int | None = None,
+    gaps: Sequence[int] = (),
 ) -> PlanarMesh:
-    """Mesh of an outline; region number `gap` is filled by rings."""
+    """Mesh of an outline; regions number `gaps` are filled by rings."""
     for _ in range(MAX_ROUNDS):
         shares = node_shares(outline.edges, sizing)
         steps = steps_of(outline, shares)
-        free = [k for k in range(len(outline.loops)) if k != gap]
+        free = [k for k in range(len(outline.loops)) if k not in gaps]
         loops = [[steps.loop(loop) for loop in outline.loops[k]] for k in free]
         nodes, corners, count = _fill(steps, loops, inside, sizing.growth)
         region = np.repeat(free, count)
         sides, middles = steps.steps, steps.middles
-        if gap is not None:
+        for gap in gaps:
             rings = _gap_rings(outline, steps, nodes, gap)
             nodes = np.concatenate([nodes, rings.nodes])
             corners = np.concatenate([corners, rings.corners])
@@ -214,7 +224,7 @@ def _finer(
 
 
 def _gap_rings(outline: Outline, steps: Steps, nodes: ComplexArray, gap: int) -> Rings:
-    """Rings between the two arcs of the gap region."""
+    """Rings between the two arcs of a gap region."""
     arcs: dict[int, list[IntArray]] = {1: [], -1: []}
     sides: list[IntArray] = []
     for signed in outline.loops[gap][0]:
@@ -225,15 +235,15 @@ def _gap_rings(outline: Outline, steps: Steps, nodes: ComplexArray, gap: int) ->
         else:
             # The outer path runs counter-clockwise: forward on the outer arc, back on the inner.
             arcs[1 if signed * edge.bulge > 0.0 else -1].append(chain)
-    sides.sort(key=lambda chain: float(np.angle(nodes[chain[0]])))
-
-    def ring(parts: list[IntArray]) -> IntArray:
-        return np.unique(np.concatenate(parts))
-
-    inner, outer = (
-        numbers[np.argsort(np.angle(nodes[numbers]))] for numbers in (ring(arcs[-1]), ring(arcs[1]))
-    )
-    return fill_rings(nodes, inner, outer, (sides[0], sides[1]))
+    inner, outer = (np.unique(np.concatenate(arcs[k])) for k in (-1, 1))
+    # A later pole's angles may jump within it: it is filled about the positive x axis.
+    middle = complex(nodes[outer].mean())
+    turn = middle.conjugate() / abs(middle) if np.any(np.angle(nodes[outer]) < 0.0) else 1.0 + 0.0j
+    at = nodes * turn
+    sides.sort(key=lambda chain: float(np.angle(at[chain[0]])))
+    inner, outer = (ring[np.argsort(np.angle(at[ring]))] for ring in (inner, outer))
+    rings = fill_rings(at, inner, outer, (sides[0], sides[1]))
+    return replace(rings, nodes=rings.nodes / turn, middles=rings.middles / turn)
 
 
 def _fill(

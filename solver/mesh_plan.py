@@ -1,4 +1,4 @@
-"""How fine a machine's pole is meshed: settings, and the sizing of its edges.
+"""How fine a machine's sector is meshed: settings, and the sizing of its edges.
 
 Axes: n_edge edges of the outline of one wedge.
 """
@@ -9,9 +9,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, Material
+from lamwright.geometry.section import CrossSection, Material, base_name, rotor_cell
 
-from .mesh_fold import Fan, folded_points
+from .mesh_fold import Fan, folded_points, on_ray
 from .mesh_outline import WELD_TOL, ComplexArray, Outline
 from .mesh_sizes import Across, SizeSources, Sizing, joined, narrow_places
 
@@ -53,54 +53,59 @@ class MeshSettings:
 
 
 def circle_edges(section: CrossSection, settings: MeshSettings) -> int:
-    """Edges per pole on the turning circle.
+    """Edges on the sector's part of the turning circle.
 
-    A multiple of twice the slots per pole, so that half a slot pitch can be meshed and copied;
-    of 90 too where that is near (30 positions over 60 el. degrees are then whole steps).
+    A multiple of twice the slots and of twice the poles, so that half a slot pitch and half a pole
+    can be meshed and copied; of 90 a pole too where that is near (30 positions over 60 el. degrees
+    are then whole steps).
     """
+    poles = section.sector_poles
     step = settings.circle_step * section.gap
     pitch = math.pi * section.circle_radius / section.pole_pairs
-    wanted = max(pitch / step, settings.least_circle_edges) / settings.scale
-    half_slots = section.slots // section.pole_pairs
-    common = math.lcm(POSITIONS, half_slots)
+    wanted = poles * (max(pitch / step, settings.least_circle_edges) / settings.scale)
+    halves = math.lcm(2 * section.sector_slots, 2 * poles)
+    common = math.lcm(POSITIONS * poles, halves)
     count = common * max(1, round(wanted / common))
     if not 0.75 * wanted <= count <= 1.5 * wanted:
-        count = half_slots * max(1, round(wanted / half_slots))
+        count = halves * max(1, round(wanted / halves))
     return count
 
 
-def gap_of(fan: Fan) -> int:
-    """Number of the piece that is the air gap."""
-    return next(k for k, region in enumerate(fan.regions) if region.name.startswith("gap_"))
+def gaps_of(fan: Fan) -> tuple[int, ...]:
+    """Numbers of the pieces that are the air gap."""
+    names = [base_name(region.name) for region in fan.regions]
+    return tuple(k for k, name in enumerate(names) if name.startswith("gap_"))
 
 
 def section_sizing(
     section: CrossSection, fan: Fan, outline: Outline, n_circle: int, settings: MeshSettings
 ) -> Sizing:
     """Sizes for the magnetic field."""
-    gap = gap_of(fan)
+    gaps = gaps_of(fan)
     circle = section.circle_radius
     pitch = math.pi * circle / section.pole_pairs
-    step = pitch / n_circle
+    step = section.sector_poles * pitch / n_circle
     coarsest = settings.scale * settings.coarsest * pitch
     sizes = np.full(len(outline.edges), coarsest)
     fixed: dict[int, int] = {}
-    for signed in outline.loops[gap][0]:
+    for signed in (signed for gap in gaps for signed in outline.loops[gap][0]):
         k = abs(signed) - 1
         edge = outline.edges[k]
         if edge.is_line:
             fixed[k] = max(settings.gap_layers, round(settings.gap_layers / settings.scale))
         elif abs(abs(edge.start) - circle) < WELD_TOL:
-            fixed[k] = _whole(n_circle * abs(edge.sweep) * section.pole_pairs / math.pi)
+            share = abs(edge.sweep) * section.pole_pairs / math.pi / section.sector_poles
+            fixed[k] = _whole(n_circle * share)
         else:
             sizes[k] = step * edge.radius / circle
     across = _across(section, fan, settings)
-    across[gap] = None
+    for gap in gaps:
+        across[gap] = None
     rays = _ray_edges(fan, outline)
     narrow = narrow_places(outline, across, _spacing(section), rays)
     least = settings.scale * settings.corner * section.gap
     narrow = SizeSources(narrow.points, np.maximum(narrow.sizes, 0.5 * least))
-    corners = _gap_corners(outline, gap, rays)
+    corners = _gap_corners(outline, gaps, rays)
     return Sizing(
         edge_sizes=sizes,
         growth=settings.growth,
@@ -111,7 +116,7 @@ def section_sizing(
             _rib_sources(section, fan, settings),
         ),
         fixed=fixed,
-        twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
+        twins=side_twins(outline, fan.angle) if fan.has_twin_sides else (),
     )
 
 
@@ -128,7 +133,7 @@ def lamination_sizing(
         growth=settings.lamination_growth,
         step_angle=settings.scale * settings.lamination_step_angle,
         sources=joined(narrow, _rib_sources(section, fan, settings), refine),
-        twins=side_twins(outline, fan.angle) if fan.copies == 1 else (),
+        twins=side_twins(outline, fan.angle) if fan.has_twin_sides else (),
     )
 
 
@@ -140,8 +145,8 @@ def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], .
     """
     ends = outline.points[outline.ends]
     back = ends * np.exp(-1j * angle)
-    lower = np.flatnonzero(np.all(np.abs(ends.imag) < WELD_TOL, axis=1)).tolist()
-    upper = np.flatnonzero(np.all(np.abs(back.imag) < WELD_TOL, axis=1)).tolist()
+    lower = np.flatnonzero(np.all(on_ray(ends, 0.0), axis=1)).tolist()
+    upper = np.flatnonzero(np.all(on_ray(ends, angle), axis=1)).tolist()
     twins = [
         (k, j, is_reversed)
         for k in lower
@@ -156,9 +161,9 @@ def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], .
 
 def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Across | None]:
     """Elements wanted across each piece."""
-    scale = settings.scale
-    middles = np.array([0.5 * (r.start + r.end) for r in section.ribs], dtype=np.complex128)
-    limits = np.array([RIB_LIMIT * rib.width for rib in section.ribs])
+    scale, own = settings.scale, rotor_cell(section).ribs
+    middles = np.array([0.5 * (r.start + r.end) for r in own], dtype=np.complex128)
+    limits = np.array([RIB_LIMIT * rib.width for rib in own])
     ribs = SizeSources(folded_points(fan, middles), limits)
     iron = settings.across_iron / scale
     by_material: dict[Material, Across | None] = {
@@ -180,23 +185,23 @@ def _spacing(section: CrossSection) -> float:
 
 def _rib_sources(section: CrossSection, fan: Fan, settings: MeshSettings) -> SizeSources:
     """Sizes at both ends of each rib's thinnest place, which samples on edges would only near."""
-    ends = np.array([p for rib in section.ribs for p in (rib.start, rib.end)], dtype=np.complex128)
-    widths = np.repeat([rib.width for rib in section.ribs], 2)
+    ribs = rotor_cell(section).ribs
+    ends = np.array([p for rib in ribs for p in (rib.start, rib.end)], dtype=np.complex128)
+    widths = np.repeat([rib.width for rib in ribs], 2)
     return SizeSources(folded_points(fan, ends), settings.scale * widths / settings.across_rib)
 
 
 def _ray_edges(fan: Fan, outline: Outline) -> list[int]:
     """Edges on the two sides of the wedge."""
     ends = outline.points[outline.ends]
-    on_lower = np.all(np.abs(ends.imag) < WELD_TOL, axis=1)
-    on_upper = np.all(np.abs((ends * np.exp(-1j * fan.angle)).imag) < WELD_TOL, axis=1)
+    on_lower, on_upper = (np.all(on_ray(ends, angle), axis=1) for angle in (0.0, fan.angle))
     found: list[int] = np.flatnonzero(on_lower | on_upper).tolist()
     return found
 
 
-def _gap_corners(outline: Outline, gap: int, rays: Sequence[int]) -> ComplexArray:
+def _gap_corners(outline: Outline, gaps: Sequence[int], rays: Sequence[int]) -> ComplexArray:
     """Points where an edge leaves the gap's wall: slot mouths, open barriers."""
-    walls = {abs(s) - 1 for s in outline.loops[gap][0]}
+    walls = {abs(s) - 1 for gap in gaps for s in outline.loops[gap][0]}
     wall_points = {int(p) for k in walls for p in outline.ends[k]}
     others = [k for k in range(len(outline.edges)) if k not in walls and k not in rays]
     leaving = {int(p) for k in others for p in outline.ends[k]} & wall_points

@@ -15,6 +15,7 @@ import numpy as np
 import numpy.typing as npt
 
 from lamwright.geometry.section import CrossSection, Region
+from lamwright.geometry.sectors import repeats
 from lamwright.geometry.winding import WindingTable
 
 from .kernel import FluxState, packed_tangent, quadrature, quadrature_places, shape_integrals
@@ -139,7 +140,7 @@ class MagneticModel:
     fixed_values: FloatArray  # (n_slot,), linear elements outside the rotor's gap
     rotor_gap: RotorGap
     stator_gap: StatorGap
-    linkage: FloatArray  # (3, n_dof), phase linkage of one pole per metre of stack
+    linkage: FloatArray  # (3, n_dof), phase linkage of the sector per metre of stack
     magnet: MagnetSource  # in the rotor's numbering, so it turns with the rotor
     representative: IntArray  # (n_dof,), a node with sign + for every unknown
     factors: Cache = field(repr=False)
@@ -157,8 +158,8 @@ def magnetic_model(
     """Everything of a machine that no operating point changes.
 
     Args:
-        sector: meshes of one pole.
-        section: the same pole's regions, for their materials.
+        sector: meshes of a sector.
+        section: the same sector's regions, for their materials.
         winding: conductors of all slots.
         rotor_law: law of the rotor's stack.
         stator_law: law of the stator's stack.
@@ -274,17 +275,15 @@ def _rotor_gap(rotor: PlanarMesh, gap: IntArray, entries: Entries, n_dof: int) -
 def linkage_functional(
     sector: SectorMesh, winding: WindingTable, numbering: Numbering
 ) -> FloatArray:
-    """Phase linkage (3, n_dof) of one pole per metre of stack, in turns: psi = linkage @ a.
+    """Phase linkage (3, n_dof) of the sector per metre of stack, in turns: psi = linkage @ a.
 
     It is the right side of the field equation too, for 1 A in a phase (reciprocity).
     """
-    per_pole = winding.slots // winding.poles
-    one, rest = winding.conductors[:per_pole], winding.conductors[per_pole:]
-    if rest.size and not np.allclose(rest[:per_pole], -one, atol=1e-9 * np.abs(one).max()):
-        raise ValueError("winding: the second pole's conductors are not those of the first, turned")
+    if not repeats(winding, sector.sector_poles):
+        raise ValueError("winding: the next sector's conductors are not those of the first, turned")
     stator = sector.stator
     nodal = np.zeros((3, stator.nodes.shape[0]))
-    for s in range(per_pole):
+    for s in range(winding.slots // sector.sectors):
         for layer in range(winding.layers):
             side = stator.elements_of(f"slot_{s}_layer_{layer}")
             if not side.size:
@@ -293,7 +292,7 @@ def linkage_functional(
             mean = np.bincount(
                 stator.elements[side].ravel(), integrals.ravel(), stator.nodes.shape[0]
             )
-            nodal += np.outer(one[s, layer], mean / integrals.sum())
+            nodal += np.outer(winding.conductors[s, layer], mean / integrals.sum())
     return stator_functional(numbering, sector, nodal)
 
 

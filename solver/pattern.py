@@ -1,8 +1,10 @@
-"""Unknowns of one pole, and the fixed sparse pattern into which element matrices are scattered.
+"""Unknowns of a sector, and the fixed sparse pattern into which element matrices are scattered.
 
-Unknowns are numbered rotor first, then stator, the turning circle last. The two sides of the pole
-are tied by elimination (a node on the far side is minus its partner), A = 0 on the stator's outer
-circle and in the shaft's centre, so that the matrix stays symmetric positive definite.
+Unknowns are numbered rotor first, then stator, the turning circle last. The two sides of the
+sector are tied by elimination: a node on the far side is its partner, with a minus where the
+sector has an odd number of poles; a whole circle has no sides. A = 0 on the stator's outer circle
+and, where the sides change the sign, in the shaft's centre, so that the matrix stays symmetric
+positive definite.
 
 Turning the rotor by whole edges changes only the rows of the couplings rotor - circle. As the
 circle's rows stand at the end of every column, their number in a column does not change, and all
@@ -43,6 +45,7 @@ class Numbering:
     n_ring: int  # unknowns of the circle
     rotor_circle: IntArray  # nodes of the rotor on the circle
     rotor_circle_number: IntArray  # their places on the circle, from the rotor's d axis
+    side_sign: float = -1.0  # of the potential from one sector to the next
 
     @property
     def n_dof(self) -> int:
@@ -95,8 +98,8 @@ def number_unknowns(sector: SectorMesh) -> Numbering:
     n_ring = 2 * sector.n_circle
     rotor_circle, rotor_number = circle_nodes(sector.rotor.nodes, sector)
     stator_circle, stator_number = circle_nodes(sector.stator.nodes, sector)
-    rotor = _number_part(sector.rotor, sector.pole_pairs, rotor_circle, hold_outside=False)
-    stator = _number_part(sector.stator, sector.pole_pairs, stator_circle, hold_outside=True)
+    rotor = _number_part(sector.rotor, sector, rotor_circle, hold_outside=False)
+    stator = _number_part(sector.stator, sector, stator_circle, hold_outside=True)
     n_rotor, n_stator = rotor[2], stator[2]
     n_dof = n_rotor + n_stator + n_ring
     parts = []
@@ -116,13 +119,16 @@ def number_unknowns(sector: SectorMesh) -> Numbering:
         n_ring=n_ring,
         rotor_circle=rotor_circle,
         rotor_circle_number=rotor_number,
+        side_sign=sector.side_sign,
     )
 
 
 def turned_numbering(numbering: Numbering, shift: int) -> tuple[IntArray, FloatArray]:
     """Unknown and sign (n_node,) of every node with the rotor `shift` edges ahead."""
     dof, sign = numbering.dof.copy(), numbering.sign.copy()
-    number, flip = turned(numbering.rotor_circle_number, shift, numbering.n_ring)
+    number, flip = turned(
+        numbering.rotor_circle_number, shift, numbering.n_ring, numbering.side_sign
+    )
     dof[numbering.rotor_circle] = numbering.first_ring + number
     sign[numbering.rotor_circle] = flip
     return dof, sign
@@ -248,13 +254,14 @@ def turn_gap(
 
 
 def _number_part(
-    mesh: PlanarMesh, pole_pairs: int, circle: IntArray, hold_outside: bool
+    mesh: PlanarMesh, sector: SectorMesh, circle: IntArray, hold_outside: bool
 ) -> tuple[IntArray, FloatArray, int]:
     """Own unknowns of a part, circle left out: dof, sign, and their number (= dof if held)."""
     radius = np.hypot(mesh.nodes[:, 0], mesh.nodes[:, 1])
     tol = SIDE_TOL * radius.max()
-    near, far = _side_partners(mesh.nodes, pole_pairs, tol)
-    held = radius < tol
+    near, far = _side_partners(mesh.nodes, sector, tol)
+    # A centre that is its own partner is 0 where the sides change the sign, free elsewhere.
+    held = (radius < tol) & (sector.side_sign < 0.0)
     if hold_outside:
         held |= radius > radius.max() - tol
     is_free = ~held
@@ -265,14 +272,17 @@ def _number_part(
     sign = np.ones(radius.size)
     tied = ~held[far] & ~np.isin(far, circle)
     dof[far[tied]] = dof[near[tied]]
-    sign[far] = -1.0
+    sign[far] = sector.side_sign
     return dof, sign, n_own
 
 
-def _side_partners(nodes: FloatArray, pole_pairs: int, tol: float) -> tuple[IntArray, IntArray]:
+def _side_partners(nodes: FloatArray, sector: SectorMesh, tol: float) -> tuple[IntArray, IntArray]:
     """Nodes on the side at angle 0 and their partners on the far side; the centre left out."""
+    if sector.is_full_circle:
+        none = np.zeros(0, dtype=np.int64)
+        return none, none
     radius = np.hypot(nodes[:, 0], nodes[:, 1])
-    end = np.pi / pole_pairs
+    end = sector.sector_angle
     away = radius > tol
     near = np.flatnonzero(away & (np.abs(nodes[:, 1]) < tol) & (nodes[:, 0] > 0.0))
     across = nodes[:, 1] * np.cos(end) - nodes[:, 0] * np.sin(end)
@@ -280,7 +290,7 @@ def _side_partners(nodes: FloatArray, pole_pairs: int, tol: float) -> tuple[IntA
     far = np.flatnonzero(away & (np.abs(across) < tol) & (along > 0.0))
     near, far = near[np.argsort(radius[near])], far[np.argsort(radius[far])]
     if near.size != far.size or np.abs(radius[near] - radius[far]).max(initial=0.0) > tol:
-        raise ValueError(f"sides of the pole: {near.size} and {far.size} nodes that do not match")
+        raise ValueError(f"sides of the sector: {near.size} and {far.size} nodes that do not match")
     return near, far
 
 
@@ -289,7 +299,8 @@ def _turn_unknowns(
 ) -> tuple[IntArray, FloatArray]:
     """Unknowns with those of the circle turned, and the sign that each takes."""
     on_ring = unknown >= numbering.first_ring
-    number, sign = turned(unknown - numbering.first_ring, shift, numbering.n_ring)
+    ring = numbering.n_ring, numbering.side_sign
+    number, sign = turned(unknown - numbering.first_ring, shift, *ring)
     return (
         np.where(on_ring, numbering.first_ring + number, unknown),
         np.where(on_ring, sign, 1.0),

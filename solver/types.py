@@ -4,11 +4,14 @@ Axes: n_node nodes, n_elem elements, n_qp quadrature points, 2 directions, 6 nod
 second-order triangle in the order corners 0 1 2, then middles of the edges 01, 12, 02.
 """
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
+
+from lamwright.geometry.section import base_name
 
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
@@ -35,25 +38,48 @@ class PlanarMesh:
     region_names: tuple[str, ...]
 
     def elements_of(self, prefix: str) -> IntArray:
-        """Indices of the elements whose region's name starts with `prefix`."""
-        wanted = [k for k, name in enumerate(self.region_names) if name.startswith(prefix)]
+        """Indices of the elements whose region's name, pole aside, starts with `prefix`."""
+        wanted = [
+            k for k, name in enumerate(self.region_names) if base_name(name).startswith(prefix)
+        ]
         return np.flatnonzero(np.isin(self.region_of_elem, wanted))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class SectorMesh:
-    """One pole, rotor and stator meshed once each, in their own frames.
+    """A sector of whole poles, rotor and stator meshed once each, in their own frames.
 
-    Both meshes have vertices on the turning circle at angles k * pi / (pole_pairs * n_circle),
+    Both meshes have vertices on the turning circle at angles k * sector_angle / n_circle,
     k = 0 .. n_circle, and mid-edge nodes half-way between. The nodes on the side at angle
-    pi / pole_pairs are those on the side at angle 0, turned.
+    sector_angle are those on the side at angle 0, turned; of a whole circle they are the same.
     """
 
     rotor: PlanarMesh
     stator: PlanarMesh
     pole_pairs: int
     circle_radius: float
-    n_circle: int  # edges on the turning circle per pole
+    n_circle: int  # edges on the sector's part of the turning circle
+    sector_poles: int = 1
+
+    @property
+    def sectors(self) -> int:
+        """Sectors of the whole machine."""
+        return 2 * self.pole_pairs // self.sector_poles
+
+    @property
+    def sector_angle(self) -> float:
+        """Angle of the sector in rad."""
+        return self.sector_poles * math.pi / self.pole_pairs
+
+    @property
+    def is_full_circle(self) -> bool:
+        """Whether the meshes go all the way round and have no sides."""
+        return self.sectors == 1
+
+    @property
+    def side_sign(self) -> float:
+        """What a potential is multiplied by from one sector to the next: 1 or -1."""
+        return -1.0 if self.sector_poles % 2 else 1.0
 
 
 @dataclass(frozen=True, slots=True)

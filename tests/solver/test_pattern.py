@@ -138,5 +138,5 @@ def test_sides_that_do_not_match_are_refused(model: MagneticModel) -> None:
         circle_radius=sector.circle_radius,
         n_circle=5,
     )
-    with pytest.raises(ValueError, match=r"sides of the pole: .* do not match"):
+    with pytest.raises(ValueError, match=r"sides of the sector: .* do not match"):
         number_unknowns(torn)
