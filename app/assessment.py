@@ -165,7 +165,7 @@ class Assessment:
         unknowns = model.numbering.n_dof
         verdict = Verdict(
             design_name=machine.design.name,
-            design_hash=design_hash(machine.design, cards),
+            design_hash=design_hash(machine.design, machine.cards),
             version=version(),
             outline_dxf=DXF_FILE,
             tolerance=self.tolerance,

@@ -100,5 +100,5 @@ def _record(machine: Machine, figures: OutlineFigures, ribs: tuple[Rib, ...]) ->
             for rib in ribs
         ],
         "version": version(),
-        "design_hash": design_hash(machine.design, (machine.rotor_steel, machine.stator_steel)),
+        "design_hash": design_hash(machine.design, machine.cards),
     }

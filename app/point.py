@@ -17,6 +17,7 @@ from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.tables import point_record
 from lamwright.solver.field import FieldSettings, MagneticModel, magnetic_model, solve_point
+from lamwright.solver.magnet import MagnetLaw, magnet_law
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.steel import reluctivity_law
 from lamwright.solver.types import FieldSolution, SectorMesh
@@ -43,9 +44,19 @@ def model_of(machine: Machine, section: CrossSection, sector: SectorMesh) -> Mag
     stator_law = rotor_law
     if machine.stator_steel != machine.rotor_steel:
         stator_law = reluctivity_law(machine.stator_steel, design.rotor.stacking_factor)
-    settings = FieldSettings(shaft_relative_permeability=design.rotor.shaft_relative_permeability)
+    settings = FieldSettings(
+        shaft_relative_permeability=design.rotor.shaft_relative_permeability,
+        magnet=magnet_of(machine),
+    )
     winding = winding_table(design)
     return magnetic_model(sector, section, winding, rotor_law, stator_law, settings)
+
+
+def magnet_of(machine: Machine) -> MagnetLaw | None:
+    """The machine's magnets at their temperature, None where it has none."""
+    if machine.magnet is None or machine.design.magnet is None:
+        return None
+    return magnet_law(machine.magnet, machine.design.magnet.temperature_c)
 
 
 def solve(machine: Machine, *, i_d: float, i_q: float, angle_deg: float) -> FieldSolution:

@@ -14,6 +14,7 @@ import click
 
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import Machine
+from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.remedies import value_of
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import winding_table
@@ -86,9 +87,12 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
     """The table of a machine whose pole is drawn.
 
     Raises:
+        LamwrightError: the machine has magnets.
         NotConverged: an iteration did not end; with its history.
     """
     design = machine.design
+    if machine.magnet is not None:
+        raise LamwrightError("slopes: a machine with magnets has none yet; remove [magnet]")
     sector = mesh_section(section)
     model = model_of(machine, section, sector)
     fields = loaded_fields(model, design)

@@ -8,6 +8,7 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 from .barrier_checks import SLACK, barrier_faults, rotor_faults
 from .design import MachineDesign
 from .errors import Finding
+from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
 from .slot_checks import stator_faults
@@ -19,7 +20,7 @@ def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     found = findings(design, _faults(design), _shared_faults)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
-    return (*found, *_duty_findings(design))
+    return (*found, *magnet_findings(design), *_duty_findings(design))
 
 
 def _faults(design: MachineDesign) -> list[Fault]:
@@ -34,7 +35,9 @@ def _shape_faults(design: MachineDesign) -> list[Fault]:
 def _ring_faults(design: MachineDesign) -> list[Fault]:
     """Faults of the rotor; without radii or a pole pitch nothing can be said of the barriers."""
     disc = _disc_faults(design)
-    return disc if disc or design.rotor.poles % 2 else rotor_faults(design)
+    if disc or design.rotor.poles % 2:
+        return disc
+    return rotor_faults(design) or magnet_faults(design)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
@@ -44,7 +47,7 @@ def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
         return scale
     number = barrier_number(key)
     if number is not None:
-        return barrier_faults(design, number)
+        return barrier_faults(design, number) or magnet_faults(design)
     if key in SCALES:
         return _shape_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

@@ -53,6 +53,20 @@ class WindingDesign(_Table):
     temperature_c: Annotated[float, Field(ge=-40.0, le=220.0)] = 100.0
 
 
+class BarrierMagnetDesign(_Table):
+    """A magnet block in a barrier, or two that mirror each other, magnetised across the barrier.
+
+    Inward means from rim to shaft, against the flux that a positive q-axis current makes: the
+    polarity that raises the torque of motoring currents i_d, i_q > 0.
+    """
+
+    width_mm: Positive  # along the barrier
+    thickness_mm: Positive | None = None  # across; default what the clearance leaves
+    clearance_mm: Annotated[float, Field(ge=0.02)] = 0.1  # least distance to every wall
+    offset_mm: NotNegative = 0.0  # q axis to the middle of each of a pair; 0: one on the q axis
+    polarity: Literal["inward", "outward"] = "inward"
+
+
 class BarrierDesign(_Table):
     """One flux barrier; barriers are listed from the rim inward.
 
@@ -76,6 +90,7 @@ class BarrierDesign(_Table):
         None  # straight; default 90/pole_pairs
     )
     bend_radius_mm: Positive | None = None  # straight only; default the thickness
+    magnet: BarrierMagnetDesign | None = None
 
 
 class RotorDesign(_Table):
@@ -97,6 +112,13 @@ class SteelChoice(_Table):
     stator_card: str
 
 
+class MagnetChoice(_Table):
+    """The magnet card, a file name relative to the design file, and what the magnets run at."""
+
+    card: str
+    temperature_c: Annotated[float, Field(ge=-60.0, le=250.0)]
+
+
 class DutyDesign(_Table):
     """What the machine is run at. Currents are peak values of a phase's terminal current."""
 
@@ -105,6 +127,7 @@ class DutyDesign(_Table):
     maximum_speed_rpm: Positive
     overspeed_factor: Annotated[float, Field(ge=1.0, le=2.0)] = 1.2
     supply_voltage_v: Positive  # rms between lines, the most the supply gives
+    demagnetising_current_a: Positive | None = None  # that magnets must bear; default the rated
 
 
 class LimitsDesign(_Table):
@@ -127,6 +150,7 @@ class MachineDesign(_Table):
     steel: SteelChoice
     duty: DutyDesign
     limits: LimitsDesign
+    magnet: MagnetChoice | None = None  # needed where a barrier holds a magnet
 
     @property
     def pole_pairs(self) -> int:
@@ -160,3 +184,27 @@ class SteelCard(_Table):
     yield_strength_mpa: Sourced
     tensile_strength_mpa: Sourced
     magnetisation: MagnetisationCurve
+
+
+class SourcedNumber(_Table):
+    """A value of a card that may be negative, and where it is from."""
+
+    value: float
+    source: Annotated[str, Field(min_length=3)]
+
+
+class MagnetCard(_Table):
+    """One magnet card at 20 C: a straight demagnetisation curve down to its knee.
+
+    The knee is the opposing field strength at which the straight part ends and the magnet begins
+    to lose magnetisation for good. Coefficients are changes in percent of the value at 20 C.
+    """
+
+    name: str
+    note: str = ""
+    remanence_t: Sourced
+    recoil_relative_permeability: Sourced
+    remanence_coefficient_percent_per_k: SourcedNumber
+    knee_field_ka_per_m: Sourced
+    knee_coefficient_percent_per_k: SourcedNumber
+    density_kg_per_m3: Sourced

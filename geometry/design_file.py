@@ -17,10 +17,11 @@ from typing import TypeVar
 
 from pydantic import BaseModel, ValidationError
 
-from .design import MachineDesign, SteelCard
+from .design import MachineDesign, MagnetCard, SteelCard
 from .design_faults import faults, key_text, shown
 from .errors import DesignError, Finding
 from .key_lines import KeyPath, key_lines, line_of
+from .magnet_card import magnet_card_findings, temperature_findings
 from .steel_card import card_findings
 
 _Model = TypeVar("_Model", bound=BaseModel)
@@ -31,12 +32,19 @@ _LARGEST_INTEGER = 2**63 - 1  # TOML promises whole numbers of 64 bits with sign
 
 @dataclass(frozen=True, slots=True)
 class Machine:
-    """A design with the steel cards it names; `path` is the design file."""
+    """A design with the cards it names; `path` is the design file."""
 
     design: MachineDesign
     rotor_steel: SteelCard
     stator_steel: SteelCard
     path: Path
+    magnet: MagnetCard | None = None  # where the design names one
+
+    @property
+    def cards(self) -> tuple[SteelCard | MagnetCard, ...]:
+        """All cards: rotor's and stator's steel, and the magnets' where there are any."""
+        steel = (self.rotor_steel, self.stator_steel)
+        return steel if self.magnet is None else (*steel, self.magnet)
 
 
 def read_design(path: Path) -> MachineDesign:
@@ -62,8 +70,22 @@ def read_steel_card(path: Path) -> SteelCard:
     return card
 
 
+def read_magnet_card(path: Path) -> MagnetCard:
+    """The validated magnet card in the TOML file `path`.
+
+    Raises:
+        DesignError: the file cannot be read or used; one line for each fault.
+    """
+    text = _text(path)
+    card = _validated(path, text, MagnetCard)
+    found = magnet_card_findings(card)
+    if found:
+        raise DesignError(_placed_text(found, path, text))
+    return card
+
+
 def read_machine(path: Path) -> Machine:
-    """The design in `path` and its steel cards, whose names count from the design's folder.
+    """The design in `path` and the cards it names; names count from the design's folder.
 
     Raises:
         DesignError: the design or a card cannot be read or used; one line for each fault.
@@ -75,16 +97,33 @@ def read_machine(path: Path) -> Machine:
     for key in ("rotor_card", "stator_card"):
         name = getattr(design.steel, key)
         try:
-            _raise_if_absent(path, text, key, name)
+            _raise_if_absent(path, text, ("steel", key), name)
             cards.append(read_steel_card(path.parent / name))
         except DesignError as error:
             problems[str(error)] = None
+    magnet: MagnetCard | None = None
+    try:
+        magnet = _magnet_card(path, text, design)
+    except DesignError as error:
+        problems[str(error)] = None
     if problems:
         raise DesignError("\n".join(problems))
-    return Machine(design, cards[0], cards[1], path)
+    return Machine(design, cards[0], cards[1], path, magnet)
 
 
-def design_hash(design: MachineDesign, cards: tuple[SteelCard, ...]) -> str:
+def _magnet_card(path: Path, text: str, design: MachineDesign) -> MagnetCard | None:
+    """The magnet card that the design names, able to bear its temperature."""
+    if design.magnet is None:
+        return None
+    _raise_if_absent(path, text, ("magnet", "card"), design.magnet.card)
+    card = read_magnet_card(path.parent / design.magnet.card)
+    found = temperature_findings(card, design.magnet.temperature_c)
+    if found:
+        raise DesignError(_placed_text(found, path, text))
+    return card
+
+
+def design_hash(design: MachineDesign, cards: tuple[SteelCard | MagnetCard, ...]) -> str:
     """SHA-256 in hex of everything the files state: the same for any layout of the same values."""
     values = [item.model_dump(mode="json") for item in (design, *cards)]
     canonical = json.dumps(values, sort_keys=True, separators=(",", ":"), allow_nan=False)
@@ -235,7 +274,7 @@ def _read_fault(path: Path) -> str:
         return "not a file name"
 
 
-def _raise_if_absent(path: Path, text: str, key: str, name: str) -> None:
+def _raise_if_absent(path: Path, text: str, key: tuple[str, str], name: str) -> None:
     """A card that is not there is a fault of the key that names it, not of the card."""
     try:
         if (path.parent / name).is_file():
@@ -246,6 +285,7 @@ def _raise_if_absent(path: Path, text: str, key: str, name: str) -> None:
         others = []
     near = difflib.get_close_matches(Path(name).name, others, n=1)
     hint = f"; did you mean {shown(str(Path(name).with_name(near[0]).as_posix()))}?" if near else ""
-    remedy = hint or "; accepted a steel card's file name, counted from the design's folder"
-    line = line_of(key_lines(text), ("steel", key))
-    raise DesignError(f"{_name(path)}:{line}: steel.{key} = {shown(name)}: no such file{remedy}")
+    remedy = hint or f"; accepted a {key[0]} card's file name, counted from the design's folder"
+    line = line_of(key_lines(text), key)
+    told = f"{key_text(key)} = {shown(name)}: no such file"
+    raise DesignError(f"{_name(path)}:{line}: {told}{remedy}")

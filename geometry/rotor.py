@@ -13,6 +13,7 @@ from .curves import Edge, Path, Point, arc, line, reversed_edge, reversed_path, 
 from .design import BarrierDesign, MachineDesign
 from .distances import nearest
 from .half_barrier import HalfBarrier, half_barrier
+from .magnets import with_magnets
 from .section import Region, Rib
 
 MM = 1e-3  # m
@@ -63,7 +64,8 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
     """Regions and ribs of one pole of the rotor, sector 0 to pi / pole_pairs, in m.
 
     Returns:
-        Regions `rotor_iron`, each cavity, `shaft`, `gap_rotor`, tiling the sector; and the ribs.
+        Regions `rotor_iron`, each cavity and its magnets, `shaft`, `gap_rotor`, tiling the sector;
+        and the ribs.
 
     Raises:
         ValueError: for a shape that `checks.check_design` would have refused.
@@ -74,10 +76,11 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
     for number, barrier in enumerate(design.rotor.barrier, start=1):
         paths, barrier_ribs = _barrier(number, barrier, frame)
         names = cavity_names(number, len(paths))
-        air += [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
+        own = [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
+        air += with_magnets(number, barrier.magnet, own, frame.q_axis)
         ribs += barrier_ribs
     iron, shaft, gap = _sectors(frame)
-    holes = tuple(reversed_path(region.outer) for region in air)
+    holes = tuple(reversed_path(region.outer) for region in air if region.material == "air")
     return (
         Region("rotor_iron", "rotor_steel", iron, holes),
         *air,

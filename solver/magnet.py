@@ -18,6 +18,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from lamwright.geometry.design import MagnetCard
+from lamwright.geometry.magnet_card import REFERENCE_C
 from lamwright.geometry.section import Region
 
 from .kernel import quadrature
@@ -51,6 +53,21 @@ class MagnetSource:
 
     load: FloatArray  # (n_dof,), A
     still_energy: float  # J/m, stored per metre of stack at B = 0
+
+
+def magnet_law(card: MagnetCard, temperature_c: float) -> MagnetLaw:
+    """The card's magnet at a temperature in C: remanence and knee change in proportion to it.
+
+    Source: common practice of magnet data sheets, no source; good for some 100 K about 20 C.
+    """
+    warmer = temperature_c - REFERENCE_C  # K
+    remanence = 1.0 + 0.01 * card.remanence_coefficient_percent_per_k.value * warmer
+    knee = 1.0 + 0.01 * card.knee_coefficient_percent_per_k.value * warmer
+    return MagnetLaw(
+        remanence=card.remanence_t.value * remanence,
+        recoil_permeability=card.recoil_relative_permeability.value,
+        knee_field=1e3 * card.knee_field_ka_per_m.value * knee,
+    )
 
 
 def magnet_source(

@@ -17,6 +17,7 @@ from .mesh_sizes import Across, SizeSources, Sizing, joined, narrow_places
 
 POSITIONS = 90  # circle edges per pole that put 30 positions in 60 el. degrees on vertices
 
+CLEARANCE_LIMIT = 0.15  # times a magnet's thickness: air no wider beside it is its clearance
 RIB_LIMIT = 1.2  # times the width of the nearest rib: iron no wider is meshed as part of it
 
 
@@ -40,6 +41,7 @@ class MeshSettings:
     # fine (4, 2.5, 2, 0.04), at a third of the triangles.
     across_iron: float = 1.5  # elements across flux carriers, teeth and tooth tips
     across_air: float = 1.0  # elements across a barrier
+    across_clearance: float = 0.4  # elements across a magnet's clearance; 1: same within 0.01 %
     across_copper: float = 1.0  # elements across a slot: a quiet field
     coarsest: float = 0.08  # largest side over pole pitch (arc of the turning circle)
     corner: float = 0.25  # side at the corners of slot mouths over the air gap; 0.5: 0.20 %
@@ -169,12 +171,29 @@ def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Acr
     by_material: dict[Material, Across | None] = {
         "rotor_steel": Across(iron, settings.across_rib / scale, ribs),
         "stator_steel": Across(iron),
-        "air": Across(settings.across_air / scale),
+        "air": Across(
+            settings.across_air / scale,
+            settings.across_clearance / scale,
+            _clearances(section, fan),
+        ),
         "magnet": Across(iron),
         "copper": Across(settings.across_copper / scale),
         "shaft": None,
     }
     return [by_material[region.material] for region in fan.regions]
+
+
+def _clearances(section: CrossSection, fan: Fan) -> SizeSources:
+    """Corners of the magnets, with the width up to which air beside them is their clearance."""
+    points: list[complex] = []
+    limits: list[float] = []
+    for region in section.rotor:
+        if region.material == "magnet":
+            points += [edge.start for edge in region.outer.edges]
+            thickness = min(edge.length for edge in region.outer.edges)
+            limits += [CLEARANCE_LIMIT * thickness] * len(region.outer.edges)
+    corners = np.array(points, dtype=np.complex128)
+    return SizeSources(folded_points(fan, corners), np.array(limits, dtype=np.float64))
 
 
 def _spacing(section: CrossSection) -> float:

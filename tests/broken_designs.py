@@ -24,7 +24,8 @@ class Broken:
 
     def write(self, folder: Path) -> Path:
         """Write it as demo.toml into `folder`, beside the steel cards it names."""
-        shutil.copytree(DESIGNS / "steel", folder / "steel", dirs_exist_ok=True)
+        for cards in ("steel", "magnet"):
+            shutil.copytree(DESIGNS / cards, folder / cards, dirs_exist_ok=True)
         path = folder / "demo.toml"
         path.write_bytes(self.data)
         return path

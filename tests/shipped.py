@@ -4,6 +4,7 @@ import functools
 from dataclasses import dataclass
 from pathlib import Path
 
+from lamwright.app.point import magnet_of
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import Machine, read_machine
 from lamwright.geometry.section import CrossSection
@@ -53,5 +54,6 @@ def shipped_model(name: str, scale: float = 1.0, tolerance: float = 1e-4) -> Mag
     settings = FieldSettings(
         shaft_relative_permeability=design.rotor.shaft_relative_permeability,
         newton=NewtonSettings(tolerance=tolerance),
+        magnet=magnet_of(one.machine),
     )
     return magnetic_model(one.sector, one.section, one.winding, law, stator_law, settings)

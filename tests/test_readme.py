@@ -10,9 +10,12 @@ from pydantic import BaseModel
 
 from lamwright.geometry.design import (
     BarrierDesign,
+    BarrierMagnetDesign,
     DutyDesign,
     LimitsDesign,
     MachineDesign,
+    MagnetCard,
+    MagnetChoice,
     RotorDesign,
     StatorDesign,
     SteelCard,
@@ -57,7 +60,9 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[winding]`", WindingDesign),
         ("`[rotor]`", RotorDesign),
         ("`[[rotor.barrier]]`", BarrierDesign),
+        ("`[rotor.barrier.magnet]`", BarrierMagnetDesign),
         ("`[steel]`", SteelChoice),
+        ("`[magnet]`", MagnetChoice),
         ("`[duty]`", DutyDesign),
         ("`[limits]`", LimitsDesign),
     ],
@@ -74,8 +79,8 @@ def test_each_key_of_a_design_has_its_row(header: str, model: type[BaseModel]):
 
 
 def test_each_table_of_a_design_and_key_of_a_card_is_named():
-    """What is left: the tables themselves, and a steel card's keys in its paragraph."""
+    """What is left: the tables themselves, and the keys of the cards in their paragraphs."""
     for key in MachineDesign.model_fields:
         assert f"`{key}`" in README or f"`[{key}]`" in README
-    for key in SteelCard.model_fields:
+    for key in (*SteelCard.model_fields, *MagnetCard.model_fields):
         assert f"`{key}`" in README
