@@ -7,21 +7,12 @@ several values are the business of `checks`.
 
 from typing import Annotated, Literal
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field
+from pydantic import BeforeValidator, Field
 
-Positive = Annotated[float, Field(gt=0.0)]
-NotNegative = Annotated[float, Field(ge=0.0)]
-
-
-def _whole(value: object) -> object:
-    """Refuse true and 1.0, which compare equal to a choice of 1."""
-    if isinstance(value, bool | float):
-        raise ValueError("not a whole number")
-    return value
-
-
-class _Table(BaseModel):
-    model_config = ConfigDict(strict=True, extra="forbid", frozen=True, allow_inf_nan=False)
+from .design_details import HoleDesign, KeywayDesign, NotchDesign
+from .design_table import NotNegative, Positive
+from .design_table import Table as _Table
+from .design_table import whole as _whole
 
 
 class StatorDesign(_Table):
@@ -103,6 +94,9 @@ class RotorDesign(_Table):
     sheet_thickness_mm: Positive
     stacking_factor: Annotated[float, Field(gt=0.8, le=1.0)] = 0.97  # rotor and stator
     barrier: Annotated[tuple[BarrierDesign, ...], Field(min_length=1, max_length=6)]
+    notch: Annotated[tuple[NotchDesign, ...], Field(max_length=12)] = ()
+    hole: Annotated[tuple[HoleDesign, ...], Field(max_length=12)] = ()
+    keyway: KeywayDesign | None = None
 
 
 class SteelChoice(_Table):

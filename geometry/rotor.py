@@ -6,6 +6,7 @@ where the d axis lies at angle 0.
 
 import cmath
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from .barriers import RibCut, cavities, rib_cuts
@@ -14,6 +15,7 @@ from .design import BarrierDesign, MachineDesign
 from .distances import nearest
 from .half_barrier import HalfBarrier, half_barrier
 from .magnets import with_magnets
+from .rotor_outline import RotorOutline, rotor_outline
 from .section import Region, Rib
 
 MM = 1e-3  # m
@@ -79,13 +81,14 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
         own = [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
         air += with_magnets(number, barrier.magnet, own, frame.q_axis)
         ribs += barrier_ribs
-    iron, shaft, gap = _sectors(frame)
+    pole = bare_pole(design)
     holes = tuple(reversed_path(region.outer) for region in air if region.material == "air")
     return (
-        Region("rotor_iron", "rotor_steel", iron, holes),
+        Region("rotor_iron", "rotor_steel", pole.iron, (*holes, *pole.iron_holes)),
         *air,
-        Region("shaft", "shaft", shaft),
-        Region("gap_rotor", "air", gap),
+        *(cut_out.region for cut_out in pole.cut_outs),
+        Region("shaft", "shaft", pole.shaft),
+        Region("gap_rotor", "air", _gap(frame, pole.gap_side)),
     ), tuple(ribs)
 
 
@@ -150,22 +153,26 @@ def _rib_side(path: Path, height: float) -> list[Edge]:
     ]
 
 
-def _sectors(frame: RotorFrame) -> tuple[Path, Path, Path]:
-    """Outer paths of iron, shaft and the rotor's half of the gap; shared edges are the same."""
+def bare_pole(design: MachineDesign) -> RotorOutline:
+    """One pole of the rotor with its details, before barriers are cut, in the rotor's frame."""
+    frame = rotor_frame(design)
+    rim = _arc_about_shaft(frame.rotor_radius, frame)
+    return rotor_outline(design, (rim,), frame.shaft_radius, 2.0 * frame.q_axis)
+
+
+def _gap(frame: RotorFrame, inside: Sequence[Edge]) -> Path:
+    """The rotor's half of the gap."""
+    circle = _arc_about_shaft(frame.circle_radius, frame)
+    return Path(
+        (
+            line(inside[0].start, circle.start),
+            circle,
+            line(circle.end, inside[-1].end),
+            *(reversed_edge(edge) for edge in reversed(inside)),
+        )
+    )
+
+
+def _arc_about_shaft(radius: float, frame: RotorFrame) -> Edge:
     side = cmath.exp(2j * frame.q_axis)
-    bore, rim, circle = (
-        _arc_about_shaft(radius, side)
-        for radius in (frame.shaft_radius, frame.rotor_radius, frame.circle_radius)
-    )
-    iron = Path(
-        (line(bore.start, rim.start), rim, line(rim.end, bore.end), reversed_edge(bore)),
-    )
-    shaft = Path((line(0j, bore.start), bore, line(bore.end, 0j)))
-    gap = Path(
-        (line(rim.start, circle.start), circle, line(circle.end, rim.end), reversed_edge(rim))
-    )
-    return iron, shaft, gap
-
-
-def _arc_about_shaft(radius: float, side: complex) -> Edge:
     return arc(complex(radius), radius * side, 0j, ccw=True)

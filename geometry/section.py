@@ -19,7 +19,9 @@ from typing import Literal
 
 from .curves import Path, Point
 
-Material = Literal["rotor_steel", "stator_steel", "air", "copper", "shaft", "magnet"]
+Material = Literal[
+    "rotor_steel", "stator_steel", "air", "copper", "shaft", "magnet", "rivet", "key"
+]
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,6 +37,8 @@ class Region:
     outer: Path
     holes: tuple[Path, ...] = ()
     magnetisation: complex = 0j
+    # Of materials that are neither steel sheet nor shaft.
+    relative_permeability: float = 1.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,10 +85,11 @@ class CrossSection:
 
     Region names. Rotor: `rotor_iron`, `barrier_<k>` or, where radial ribs cut barrier k into
     cavities, `barrier_<k>_<letter>`; `magnet_<k>` or, for a pair, `magnet_<k>_<letter>`, each a
-    hole of its cavity; `shaft` (inside the bore); `gap_rotor` (rim to turning circle); from the
-    second pole on with `p<pole>_` before them, ribs likewise. Stator:
-    `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air between bore and
-    copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom), `stator_iron`.
+    hole of its cavity; `notch_<k>`, `hole_<k>` and `key_<k>`, with `_right` and `_left` where
+    there are two in a pole or halves beside its sides; `shaft` (inside the bore); `gap_rotor`
+    (rim to turning circle); from the second pole on with `p<pole>_` before them, ribs likewise.
+    Stator: `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air between bore
+    and copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom), `stator_iron`.
     """
 
     pole_pairs: int
