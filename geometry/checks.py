@@ -7,6 +7,7 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 
 from .barrier_checks import SLACK, barrier_faults, rotor_faults
 from .design import MachineDesign
+from .detail_checks import detail_faults
 from .errors import Finding
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
@@ -37,7 +38,7 @@ def _ring_faults(design: MachineDesign) -> list[Fault]:
     disc = _disc_faults(design)
     if disc or design.rotor.poles % 2:
         return disc
-    return rotor_faults(design) or magnet_faults(design)
+    return rotor_faults(design) + detail_faults(design) or magnet_faults(design)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
@@ -47,7 +48,8 @@ def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
         return scale
     number = barrier_number(key)
     if number is not None:
-        return barrier_faults(design, number) or magnet_faults(design)
+        faults = barrier_faults(design, number) + detail_faults(design)
+        return faults or magnet_faults(design)
     if key in SCALES:
         return _shape_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

@@ -141,8 +141,12 @@ def _domain(design: MachineDesign, key: str) -> Domain:
         # Under a flat tooth tip 0 stands apart from the range too.
         low = 0.0 if design.stator.wedge_angle_deg else 0.1 * sheet
         return Domain(low, outer, is_low_accepted=True)
-    is_barrier = barrier_number(key) is not None
-    return Domain(0.0, 0.5 * design.stator.bore_diameter_mm if is_barrier else 2.0 * outer)
+    if name == "angle_deg":
+        return Domain(0.0, 90.0 / design.pole_pairs, is_low_accepted=True, has_limit=True)
+    if name == "span_deg":
+        return Domain(0.0, 180.0 / design.pole_pairs)
+    is_local = re.match(r"rotor\.(\w+(\[|\.))", key) is not None  # of a barrier or a detail
+    return Domain(0.0, 0.5 * design.stator.bore_diameter_mm if is_local else 2.0 * outer)
 
 
 class _Search:

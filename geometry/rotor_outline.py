@@ -52,6 +52,7 @@ class RotorOutline:
     iron_holes: tuple[Path, ...]
     shaft: Path
     gap_side: tuple[Edge, ...]  # rim with closed mouths, from side to side
+    shaft_side: tuple[Edge, ...]  # bore with closed mouths, from side to side
     rim: tuple[Edge, ...]  # the iron's, walls of notches included
     bore: tuple[Edge, ...]  # the iron's, walls of keyways included
     cut_outs: tuple[CutOut, ...]
@@ -91,6 +92,7 @@ def rotor_outline(
         ),
         shaft=closed(shaft),
         gap_side=tuple(outer.seen),
+        shaft_side=tuple(seen),
         rim=tuple(outer.iron),
         bore=tuple(inner.iron),
         cut_outs=(*notches, *holes, *keys),
@@ -136,8 +138,8 @@ class _Chain:
         # The rim ends on the middle line of a groove that a side cuts in two.
         middle = self._left[0].start if not has_lower else self._left[-1].end
         height = abs(middle) if top is None else top[1].real
-        lower = upper = ()
-        mouth: list[Edge] = []
+        lower: tuple[Edge, ...] = ()
+        upper: tuple[Edge, ...] = ()
         if has_lower:
             number, point = _found(across(local, -half))
             before, self._left = split(self._left, number, point * cmath.exp(1j * angle))

@@ -17,6 +17,7 @@ from lamwright.geometry.section import CrossSection, Region, Rib
 
 from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
 from .figures_style import (
+    DRAWN_AS,
     FILLS,
     MATERIAL_NAMES,
     MM,
@@ -72,15 +73,18 @@ def draw_key(ax: Axes, section: CrossSection, style: Style) -> None:
     ax.set_ylim(0.0, 1.0)
     ax.set_axis_off()
     rows = _dimensions(section)
-    step = 1.0 / (len(rows) + len(FILLS) + 1)
+    used = {region.material for region in (*section.rotor, *section.stator)}
+    names = [(material, name) for material, name in MATERIAL_NAMES.items() if material in used]
+    step = 1.0 / (len(rows) + len(names) + 1)
     for k, (name, value) in enumerate(rows):
         y = 1.0 - (k + 0.5) * step
         ax.text(0.0, y, name, fontsize=style.text, color=style.quiet, va="center")
         ax.text(1.0, y, value, fontsize=style.text, color=style.ink, va="center", ha="right")
-    for k, (material, name) in enumerate(MATERIAL_NAMES.items()):
+    for k, (material, name) in enumerate(names):
         y = 1.0 - (len(rows) + 1.5 + k) * step
         patch = Rectangle((0.0, y - 0.36 * step), 0.16, 0.72 * step)
-        patch.set(facecolor=FILLS[material], edgecolor=style.ink, linewidth=style.hair)
+        fill = FILLS[DRAWN_AS.get(material, material)]
+        patch.set(facecolor=fill, edgecolor=style.ink, linewidth=style.hair)
         ax.add_artist(patch)
         ax.text(0.22, y, name, fontsize=style.text, color=style.ink, va="center")
 
@@ -97,7 +101,7 @@ def draw_materials(
 
     regions = (*section.rotor, *section.stator)
     for material in FILLS:
-        own = [region for region in regions if region.material == material]
+        own = [r for r in regions if DRAWN_AS.get(r.material, r.material) == material]
         if material == "air" or not own:
             continue
         patch = PathPatch(region_ink(own, turns), zorder=1)

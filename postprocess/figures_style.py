@@ -59,12 +59,16 @@ FILLS: dict[Material, str] = {
     "copper": "#cb7a43",
     "shaft": "#5f6873",
 }
+# Solid metal in a bore or hole never lies beside another but the shaft, from which a line parts it.
+DRAWN_AS: dict[Material, Material] = {"key": "shaft", "rivet": "shaft"}
 MATERIAL_NAMES: dict[Material, str] = {
     "rotor_steel": "rotor steel",
     "stator_steel": "stator steel",
     "copper": "copper",
     "air": "air",
     "shaft": "shaft",
+    "key": "key",
+    "rivet": "rivet",
 }
 
 

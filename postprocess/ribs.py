@@ -15,6 +15,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from lamwright.geometry.cut_outs import across, turned_edges
 from lamwright.geometry.section import CrossSection, Rib
 from lamwright.solver.locate import values_at
 from lamwright.solver.rib_zones import zone_of_node
@@ -115,12 +116,25 @@ def section_stress(rib: Rib, load: FloatArray) -> tuple[float, float, float]:
 
 
 def rim_growth(solution: StressSolution, section: CrossSection) -> tuple[float, float, float]:
-    """Radial growth in m of the rim on the d axis, on the q axis, and the largest of all."""
+    """Radial growth in m of the rim on the d axis and on the q axis, and what the gap loses.
+
+    On an axis the outermost iron counts, the bottom of a notch where there is one. The gap loses
+    what the farthest point of the spinning rotor stands out beyond the rotor's radius at rest.
+    """
     radius = np.hypot(solution.mesh.nodes[:, 0], solution.mesh.nodes[:, 1])
     outward = np.sum(solution.displacement * solution.mesh.nodes, axis=1) / radius
-    rim = np.array([1.0, np.exp(0.5j * math.pi / section.pole_pairs)]) * section.rotor_radius
+    axes = (0.0, 0.5 * math.pi / section.pole_pairs)
+    rim = np.array([_outermost(section, angle) for angle in axes])
     on_axes = values_at(solution.mesh, outward[:, None], np.column_stack([rim.real, rim.imag]))[
         :, 0
     ]
-    at_rim = np.abs(radius - section.rotor_radius) < 1e-6 * section.rotor_radius
-    return float(on_axes[0]), float(on_axes[1]), float(outward[at_rim].max())
+    farthest = float((radius + outward).max())
+    return float(on_axes[0]), float(on_axes[1]), farthest - section.rotor_radius
+
+
+def _outermost(section: CrossSection, angle: float) -> complex:
+    """The rotor iron's farthest point in m on the ray at `angle` rad."""
+    iron = next(region for region in section.rotor if region.name == "rotor_iron")
+    found = across(turned_edges(iron.outer.edges, -angle), 0.0)
+    assert found is not None  # the iron reaches from side to side
+    return complex(found[1].real * np.exp(1j * angle))

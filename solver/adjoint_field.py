@@ -17,7 +17,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, base_name
+from lamwright.geometry.section import CrossSection, Region, base_name
 from lamwright.geometry.winding import WindingTable
 
 from .design_motion import PartMotion, SizeMotion
@@ -25,6 +25,7 @@ from .field import MagneticModel, PointEnergy, at_position
 from .form_slope import form_slope, mean_slope, summed_slope
 from .gap import rotor_place, sheared
 from .integrals import phase_currents
+from .model import region_reluctivity
 from .pattern import node_values
 from .steel import NU_0
 from .types import FieldSolution, FloatArray, IntArray, ReluctivityLaw
@@ -195,27 +196,27 @@ def _groups(model: MagneticModel, section: CrossSection, rest: float) -> Iterato
         (sector.rotor, section.rotor, 0, model.iron.rotor_law),
         (sector.stator, section.stator, n_rotor, model.iron.stator_law),
     ):
-        material = {region.name: region.material for region in regions}
-        kinds = np.array([_kind(name, material[name]) for name in mesh.region_names])
-        of_elem = kinds[mesh.region_of_elem]
-        shaft = NU_0 / model.settings.shaft_relative_permeability
-        for kind, n_qp, law in (
-            ("iron", iron_points, steel),
-            ("shaft", LINEAR_POINTS, constant_law(shaft)),
-            ("air", LINEAR_POINTS, constant_law(NU_0)),
-            ("gap", GAP_POINTS, constant_law(NU_0)),
-        ):
-            elements = mesh.elements[of_elem == kind] + first
+        by_name = {region.name: region for region in regions}
+        kinds = np.array([_kind(by_name[name]) for name in mesh.region_names])
+        nus = np.array([region_reluctivity(by_name[n], model.settings) for n in mesh.region_names])
+        nus[kinds != "linear"] = 0.0
+        laws: list[tuple[str, float, int, ReluctivityLaw]] = [("iron", 0.0, iron_points, steel)]
+        laws += [
+            ("linear", nu, LINEAR_POINTS, constant_law(nu))
+            for nu in np.unique(nus[kinds == "linear"]).tolist()
+        ]
+        laws.append(("gap", 0.0, GAP_POINTS, constant_law(NU_0)))
+        for kind, nu, n_qp, law in laws:
+            chosen = ((kinds == kind) & (nus == nu))[mesh.region_of_elem]
+            elements = mesh.elements[chosen] + first
             if elements.size:
                 yield _Group(turned if kind == "gap" else nodes, elements, n_qp, law, kind == "gap")
 
 
-def _kind(name: str, material: str) -> str:
-    if base_name(name) == "gap_rotor":
+def _kind(region: Region) -> str:
+    if base_name(region.name) == "gap_rotor":
         return "gap"
-    if material in ("rotor_steel", "stator_steel"):
-        return "iron"
-    return "shaft" if material == "shaft" else "air"
+    return "iron" if region.material in ("rotor_steel", "stator_steel") else "linear"
 
 
 def constant_law(nu: float) -> ReluctivityLaw:

@@ -173,7 +173,7 @@ def fine_level(model: MagneticModel, section: CrossSection, winding: WindingTabl
     is_gap[sector.rotor.elements_of("gap_rotor")] = True
     is_iron = np.isin(materials, ("rotor_steel", "stator_steel"))
     iron, gap, others = (np.flatnonzero(g) for g in (is_iron, is_gap, ~is_iron & ~is_gap))
-    nu = linear_reluctivity(materials[others], model.settings)
+    nu = np.repeat(linear_reluctivity(model.sector, section, model.settings), 4)[others]
     order = np.concatenate([iron, gap, others])
     stator_gap = sector.rotor.elements.shape[0] + sector.stator.elements_of("gap_stator")
     representative = representatives(numbering, sector)

@@ -179,6 +179,8 @@ def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Acr
         "magnet": Across(iron),
         "copper": Across(settings.across_copper / scale),
         "shaft": None,
+        "rivet": Across(settings.across_air / scale),
+        "key": Across(settings.across_air / scale),
     }
     return [by_material[region.material] for region in fan.regions]
 

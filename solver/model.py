@@ -181,7 +181,7 @@ def magnetic_model(
     pattern = lower_pattern(n_dof, tuple(entries))
     iron, gap, others = groups
     quad = quadrature(nodes, elements[others])
-    nu = linear_reluctivity(materials[others], settings)
+    nu = linear_reluctivity(sector, section, settings)[others]
     stator_gap = sector.rotor.elements.shape[0] + sector.stator.elements_of("gap_stator")
     capacity = max(2, CACHED_UNKNOWNS // n_dof)
     return MagneticModel(
@@ -227,12 +227,25 @@ def linear_tangent(quad: Quadrature, nu: FloatArray) -> FloatArray:
     return packed_tangent(quad, state)
 
 
-def linear_reluctivity(materials: npt.NDArray[np.str_], settings: FieldSettings) -> FloatArray:
-    """Reluctivity (n_elem,) in m/H of elements that are not steel."""
-    nu = np.where(materials == "shaft", NU_0 / settings.shaft_relative_permeability, NU_0)
-    if settings.magnet is not None:
-        nu[materials == "magnet"] = settings.magnet.reluctivity
-    return nu
+def linear_reluctivity(
+    sector: SectorMesh, section: CrossSection, settings: FieldSettings
+) -> FloatArray:
+    """Reluctivity (n_elem,) in m/H of every element, rotor first; of use where it is no steel."""
+    found = []
+    for mesh, regions in ((sector.rotor, section.rotor), (sector.stator, section.stator)):
+        of_name = {region.name: region_reluctivity(region, settings) for region in regions}
+        found.append(np.array([of_name[name] for name in mesh.region_names])[mesh.region_of_elem])
+    return np.concatenate(found)
+
+
+def region_reluctivity(region: Region, settings: FieldSettings) -> float:
+    """Reluctivity in m/H of a region that is no steel sheet."""
+    if region.material == "magnet" and settings.magnet is not None:
+        return settings.magnet.reluctivity
+    is_shaft = region.material == "shaft"
+    return NU_0 / (
+        settings.shaft_relative_permeability if is_shaft else region.relative_permeability
+    )
 
 
 def material_of_elem(sector: SectorMesh, section: CrossSection) -> npt.NDArray[np.str_]:
