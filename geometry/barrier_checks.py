@@ -13,7 +13,6 @@ import cmath
 import math
 from dataclasses import dataclass
 
-from .barriers import FULL_ROUND_TOL
 from .corners import is_within
 from .curves import Edge
 from .design import BarrierDesign, MachineDesign
@@ -31,7 +30,6 @@ from .remedies import Fault, barrier_key
 from .rotor import rotor_frame
 
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
-MOST_EXCESS = 0.05  # of a radial rib's stated width, before it is called another width
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,16 +55,16 @@ class Pole:
 def barrier_faults(design: MachineDesign, number: int) -> list[Fault]:
     """All faults in which barrier `number` (from 1 at the rim) has a share."""
     count = len(design.rotor.barrier)
-    faults = _own_faults(_pole(design), number, design.rotor.barrier[number - 1])
+    faults = _own_faults(pole_of(design), number, design.rotor.barrier[number - 1])
     for outer in (number - 1, number):
         if 1 <= outer < count:
-            faults += _pair_faults(_pole(design), outer, design.rotor.barrier)
+            faults += _pair_faults(pole_of(design), outer, design.rotor.barrier)
     return faults
 
 
 def rotor_faults(design: MachineDesign) -> list[Fault]:
     """All faults of all barriers, each once, from the rim inward."""
-    pole, barriers = _pole(design), design.rotor.barrier
+    pole, barriers = pole_of(design), design.rotor.barrier
     faults = []
     for number, barrier in enumerate(barriers, start=1):
         if number > 1:
@@ -75,7 +73,8 @@ def rotor_faults(design: MachineDesign) -> list[Fault]:
     return faults
 
 
-def _pole(design: MachineDesign) -> Pole:
+def pole_of(design: MachineDesign) -> Pole:
+    """What the design's barriers have to fit into."""
     frame = rotor_frame(design)
     return Pole(
         frame.rotor_radius,
@@ -92,11 +91,11 @@ def _fault(
 
 
 def _own_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
-    faults = _size_faults(pole, number, barrier) + _key_faults(pole, number, barrier)
+    faults = _size_faults(pole, number, barrier) + _key_faults(number, barrier)
     faults += _bore_faults(pole, number, barrier) + _placement_faults(pole, number, barrier)
     mid = _mid_line(pole, barrier)
     if mid is not None:
-        faults += _side_faults(pole, number, barrier, mid) + _rib_faults(pole, number, barrier, mid)
+        faults += _side_faults(pole, number, barrier, mid)
     return faults
 
 
@@ -116,8 +115,6 @@ def _size_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]
     ]
     if barrier.shape == "straight":
         least.append(("bend_tight", "bend_radius_mm", bend_radius(barrier) / MM, half))
-    if barrier.radial_ribs and barrier.radial_rib_mm is not None:
-        least.append(("radial_rib_thin", "radial_rib_mm", barrier.radial_rib_mm, sheet))
     faults = []
     for code, key, value, limit in least:
         if limit - MM * value > SLACK:
@@ -127,8 +124,8 @@ def _size_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]
     return faults
 
 
-def _key_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
-    """Keys that are missing, or that belong to another shape, and the fillet."""
+def _key_faults(number: int, barrier: BarrierDesign) -> list[Fault]:
+    """Keys that belong to another shape."""
     faults = []
     if barrier.shape == "arc":
         for key in ("arm_angle_deg", "bend_radius_mm"):
@@ -136,36 +133,7 @@ def _key_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
                 remedy = 'remove it, or set shape = "straight"'
                 text = "only a straight barrier has it"
                 faults.append(_fault(number, "straight_only", (key,), text, 1.0, remedy))
-    if barrier.radial_ribs and barrier.radial_rib_mm is None:
-        remedy = f"add radial_rib_mm, {pole.sheet / MM:g} or more"
-        text = "radial ribs need a width"
-        faults.append(_fault(number, "radial_rib_missing", ("radial_ribs",), text, 1.0, remedy))
-    if barrier.radial_ribs == 2 and barrier.radial_rib_offset_mm is None:
-        remedy = "add radial_rib_offset_mm, from the q axis to the middle of a rib"
-        text = "two radial ribs need their distance from the q axis"
-        faults.append(_fault(number, "radial_offset_missing", ("radial_ribs",), text, 1.0, remedy))
-    if barrier.radial_ribs:
-        faults += _fillet_faults(pole, number, barrier)
     return faults
-
-
-def _fillet_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
-    radius, full = MM * barrier.fillet_mm, 0.5 * MM * barrier.thickness_mm
-    least, largest = pole.least_radius, full - 0.5 * pole.least_edge
-    if abs(radius - full) <= FULL_ROUND_TOL or least - SLACK <= radius <= largest + SLACK:
-        return []
-    if full < least:
-        return []  # the thickness is at fault, and is found elsewhere
-    # The full round stands apart from the range, so it is named in the text.
-    code, text = "fillet_large", f"more than half the thickness; {_mm(full)} is a full round"
-    if radius < least:
-        code, text = "fillet_small", "too small to punch"
-    elif radius < full:
-        short = f"leaves a straight end under {_mm(pole.least_edge)} mm beside it"
-        text = f"{short}; {_mm(full)} is a full round"
-    remedy = f"accepted {_mm(full)} (full round)" if largest < least else None
-    lack = max(least - radius, radius - largest)
-    return [_fault(number, code, ("fillet_mm",), text, lack, remedy)]
 
 
 def _bore_faults(pole: Pole, number: int, barrier: BarrierDesign) -> list[Fault]:
@@ -248,78 +216,6 @@ def _clearance(edge: Edge, side: complex) -> float:
     return min((point.conjugate() * side).imag for point in points)
 
 
-def _rib_faults(pole: Pole, number: int, barrier: BarrierDesign, mid: MidLine) -> list[Fault]:
-    """Whether the radial ribs and their fillets stay on the bottom of the barrier."""
-    if barrier.radial_ribs == 0 or barrier.radial_rib_mm is None:
-        return []
-    offset, radius = 0.0, MM * barrier.fillet_mm
-    keys = ["radial_rib_mm", "fillet_mm", "thickness_mm", "depth_mm", "end_angle_deg"]
-    if barrier.shape == "straight":
-        keys += ["arm_angle_deg", "bend_radius_mm"]
-    if barrier.radial_ribs == 2:
-        if barrier.radial_rib_offset_mm is None:
-            return []
-        offset = MM * barrier.radial_rib_offset_mm
-        keys.insert(0, "radial_rib_offset_mm")
-    width = MM * barrier.radial_rib_mm
-    outer = offset + 0.5 * width + radius
-    text = "a radial rib and its fillets reach beyond the bottom of the barrier"
-    lack = pole.least_edge - _bottom_beyond(mid, outer, radius)
-    faults = _short(number, "radial_rib_reach", tuple(keys), text, lack)
-    if barrier.radial_ribs == 2:
-        text = "the radial ribs leave no cavity between them"
-        lack = pole.least_edge - _bottom_between(mid, offset - 0.5 * width - radius, radius)
-        faults += _short(number, "radial_ribs_close", tuple(keys), text, lack)
-        excess = _rib_excess(mid, offset, width, radius)
-        text = f"on the slope of the arc its rounds leave it {excess / MM:.3g} mm wider than stated"
-        slope_keys = ("fillet_mm", "radial_rib_offset_mm", "radial_rib_mm")
-        faults += _short(number, "radial_rib_slope", slope_keys, text, excess - MOST_EXCESS * width)
-    return faults
-
-
-def _rib_excess(mid: MidLine, offset: float, width: float, radius: float) -> float:
-    """How much wider a rib beside the q axis is at its thinnest than stated, in m.
-
-    On the slope of an arc its two straight sides are shifted along each other. Where the fillets
-    leave too little of them to face each other, it is thinnest between two fillets.
-    """
-    bottom = mid.edges[0]
-    if bottom.is_line:
-        return 0.0
-    below, above = offset - 0.5 * width - radius, offset + 0.5 * width + radius
-    near, far = bottom.radius - 0.5 * mid.thickness + radius, bottom.radius + 0.5 * mid.thickness
-    # Centres of the fillets on the circles near and far - radius, depths below the arc's centre.
-    shift = _depth(near, below) - _depth(far - radius, above)
-    return math.hypot(max(shift, 0.0), above - below) - (above - below)
-
-
-def _depth(radius: float, height: float) -> float:
-    return math.sqrt(max((radius - height) * (radius + height), 0.0))
-
-
-def _bottom_beyond(mid: MidLine, height: float, radius: float) -> float:
-    """What is left of the bottom's rim side beyond the centre of a fillet at `height`, in m."""
-    bottom = mid.edges[0]
-    if bottom.is_line:
-        return bottom.end.imag - height
-    inner = bottom.radius - 0.5 * mid.thickness
-    if inner <= 0.0:
-        return inner - height
-    # The fillet's centre lies on the circle inner + radius, at `height` above the q axis.
-    reach = inner + radius
-    left = inner * (min(-bottom.sweep, 0.5 * math.pi) - math.asin(min(1.0, height / reach)))
-    return left - max(0.0, height - reach)
-
-
-def _bottom_between(mid: MidLine, height: float, radius: float) -> float:
-    """What is left of the bottom's rim side between fillets with centres at +-`height`, in m."""
-    bottom = mid.edges[0]
-    inner = bottom.radius - 0.5 * mid.thickness
-    if bottom.is_line or inner <= 0.0 or height <= 0.0:
-        return 2.0 * height
-    return 2.0 * inner * math.asin(min(1.0, height / (inner + radius)))
-
-
 def _pair_faults(pole: Pole, outer: int, barriers: tuple[BarrierDesign, ...]) -> list[Fault]:
     """Iron between barrier `outer` (from 1) and the next one inward."""
     first, second = barriers[outer - 1], barriers[outer]
@@ -352,11 +248,6 @@ def _pair_faults(pole: Pole, outer: int, barriers: tuple[BarrierDesign, ...]) ->
 def _short(number: int, code: str, keys: tuple[str, ...], text: str, lack: float) -> list[Fault]:
     """The fault, if anything is missing."""
     return [_fault(number, code, keys, text, lack)] if lack > SLACK else []
-
-
-def _mm(length: float) -> str:
-    """A length to a nanometre, which is what the checks let pass for rounding."""
-    return f"{length / MM:.6f}".rstrip("0").rstrip(".")
 
 
 def _left(iron: float) -> str:

@@ -5,13 +5,14 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 `remedies`.
 """
 
-from .barrier_checks import SLACK, barrier_faults, rotor_faults
+from .barrier_checks import SLACK
 from .design import MachineDesign
 from .detail_checks import detail_faults
 from .errors import Finding
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
+from .rotor_checks import barrier_faults, rotor_faults
 from .slot_checks import stator_faults
 from .winding import winding_findings
 

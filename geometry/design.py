@@ -73,9 +73,13 @@ class BarrierDesign(_Table):
     thickness_mm: Positive
     depth_mm: Positive
     tangential_rib_mm: Positive
-    radial_ribs: Annotated[int, Field(ge=0, le=2)] = 0
+    radial_ribs: Annotated[int, Field(ge=0, le=4)] = 0
     radial_rib_mm: Positive | None = None  # width of each radial rib; needed when there is one
     radial_rib_offset_mm: Positive | None = None  # q axis to the middle of each of two ribs
+    # Heights of all ribs off the q axis, positive on the counter-clockwise half.
+    radial_rib_places_mm: Annotated[tuple[float, ...], Field(max_length=4)] | None = None
+    # Of ribs off the q axis against it, positive where the rim's end leans away from it.
+    radial_rib_tilt_deg: Annotated[float, Field(gt=-90.0, lt=90.0)] = 0.0
     fillet_mm: Positive = 0.5  # corners beside radial ribs
     arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = (
         None  # straight; default 90/pole_pairs

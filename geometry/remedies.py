@@ -128,6 +128,15 @@ def _domain(design: MachineDesign, key: str) -> Domain:
         low, high = SCALES[key]
         return Domain(low, high, is_low_accepted=True, has_limit=True)
     name = key_name(key)
+    if name == "radial_rib_tilt_deg":
+        return Domain(-90.0 + 1e-6, 90.0 - 1e-6, is_low_accepted=True)
+    if "radial_rib_places_mm[" in key:
+        half = 0.5 * design.stator.bore_diameter_mm
+        return (
+            Domain(0.0, half, is_low_accepted=True)
+            if value_of(design, key) >= 0.0
+            else Domain(-half, 0.0)
+        )
     outer, sheet = design.stator.outer_diameter_mm, design.rotor.sheet_thickness_mm
     if name == "end_angle_deg":
         return Domain(0.0, 90.0 / design.pole_pairs)

@@ -9,18 +9,18 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from .barriers import RibCut, cavities, rib_cuts
-from .curves import Edge, Path, Point, arc, line, reversed_edge, reversed_path, turned
+from .bands import band_of
+from .cavities import cut_barrier
+from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
-from .distances import nearest
 from .half_barrier import HalfBarrier, half_barrier
 from .magnets import with_magnets
+from .rib_cuts import rib_cuts
 from .rotor_outline import RotorOutline, rotor_outline
 from .section import Region, Rib
 
 MM = 1e-3  # m
-LETTERS = "abc"
-HEIGHT_TOL = 1e-9  # m, far above rounding (1e-17 m) and far below any rib
+LETTERS = "abcde"
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,53 +103,21 @@ def _barrier(
     number: int, barrier: BarrierDesign, frame: RotorFrame
 ) -> tuple[list[Path], list[Rib]]:
     half = half_barrier(barrier, frame.rotor_radius, frame.pole_pairs)
-    cuts = rib_cuts(barrier)
-    paths = cavities(half, cuts)
-    ribs = _tangential_ribs(number, half) + _radial_ribs(number, paths, cuts)
+    cut = cut_barrier(band_of(half, half), rib_cuts(barrier))
+    ribs = _tangential_ribs(number, half, half) + [
+        Rib(f"radial_{number}_{letter}", "radial", number, start, end)
+        for letter, (start, end) in zip(LETTERS, cut.ribs, strict=False)
+    ]
     turn = cmath.exp(1j * frame.q_axis)
     placed = [Rib(r.name, r.kind, r.barrier, r.start * turn, r.end * turn) for r in ribs]
-    return [turned(path, frame.q_axis) for path in paths], placed
+    return [turned(path, frame.q_axis) for path in cut.cavities], placed
 
 
-def _tangential_ribs(number: int, half: HalfBarrier) -> list[Rib]:
-    start, end = half.rib
+def _tangential_ribs(number: int, upper: HalfBarrier, lower: HalfBarrier) -> list[Rib]:
+    right, left = [point.conjugate() for point in lower.rib], upper.rib
     return [
-        Rib(f"tangential_{number}_right", "tangential", number, start.conjugate(), end.conjugate()),
-        Rib(f"tangential_{number}_left", "tangential", number, start, end),
-    ]
-
-
-def _radial_ribs(number: int, paths: tuple[Path, ...], cuts: tuple[RibCut, ...]) -> list[Rib]:
-    ribs = []
-    for k, cut in enumerate(cuts):
-        start, end = _thinnest(paths[k], paths[k + 1], cut)
-        ribs.append(Rib(f"radial_{number}_{LETTERS[k]}", "radial", number, start, end))
-    return ribs
-
-
-def _thinnest(below: Path, above: Path, cut: RibCut) -> tuple[Point, Point]:
-    """Where a rib is thinnest: in the middle of its sides where they run side by side.
-
-    Between rounds without straight part, or sides that do not face each other, the nearest points.
-    """
-    lower = _rib_side(below, cut.middle - 0.5 * cut.width)
-    upper = _rib_side(above, cut.middle + 0.5 * cut.width)
-    straight = [sorted((e.start.real, e.end.real)) for e in (*lower, *upper) if e.is_line]
-    if len(straight) == 2:
-        first, last = max(x[0] for x in straight), min(x[1] for x in straight)
-        if first <= last:
-            middle = complex(0.5 * (first + last), cut.middle)
-            return middle - 0.5j * cut.width, middle + 0.5j * cut.width
-    pairs = [nearest(a, b) for a in lower for b in upper]
-    return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
-
-
-def _rib_side(path: Path, height: float) -> list[Edge]:
-    """The straight side of a rib and its fillets: what ends at that height."""
-    return [
-        edge
-        for edge in path.edges
-        if min(abs(edge.start.imag - height), abs(edge.end.imag - height)) < HEIGHT_TOL
+        Rib(f"tangential_{number}_right", "tangential", number, right[0], right[1]),
+        Rib(f"tangential_{number}_left", "tangential", number, left[0], left[1]),
     ]
 
 

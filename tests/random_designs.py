@@ -7,7 +7,6 @@ away and the next one taken, so every design returned can be built.
 
 import numpy as np
 
-from lamwright.geometry.barrier_checks import rotor_faults
 from lamwright.geometry.checks import check_design
 from lamwright.geometry.design import (
     BarrierDesign,
@@ -19,6 +18,7 @@ from lamwright.geometry.design import (
     SteelChoice,
     WindingDesign,
 )
+from lamwright.geometry.rotor_checks import rotor_faults
 from lamwright.geometry.slot_checks import stator_faults
 from lamwright.geometry.stator import slot_copper_area
 

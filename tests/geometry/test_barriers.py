@@ -9,11 +9,13 @@ import math
 
 import pytest
 
-from lamwright.geometry.barriers import cavities, rib_cuts
+from lamwright.geometry.bands import band_of
+from lamwright.geometry.cavities import cut_barrier
 from lamwright.geometry.curves import area, perimeter
 from lamwright.geometry.design import BarrierDesign
 from lamwright.geometry.half_barrier import half_barrier
 from lamwright.geometry.mid_lines import MM, mid_line
+from lamwright.geometry.rib_cuts import rib_cuts
 from tests.outlines import b1_barrier, polygon, turns
 
 R = 39.5 * MM
@@ -33,7 +35,8 @@ DEFAULTS = STRAIGHT.model_copy(
 
 def outlines(barrier, **changes):
     barrier = barrier.model_copy(update=changes)
-    return cavities(half_barrier(barrier, R, 2), rib_cuts(barrier))
+    half = half_barrier(barrier, R, 2)
+    return cut_barrier(band_of(half, half), rib_cuts(barrier)).cavities
 
 
 def two_ribs(fillet_mm):
@@ -167,7 +170,7 @@ def test_a_barrier_without_mid_line_is_an_error(changes, text):
     ("changes", "text"),
     [
         ({"radial_ribs": 1}, "radial_rib_mm"),
-        ({"radial_ribs": 2, "radial_rib_mm": 1.0}, "radial_rib_offset_mm"),
+        ({"radial_ribs": 2, "radial_rib_mm": 1.0}, "places"),
     ],
 )
 def test_ribs_without_size_are_an_error(changes, text):

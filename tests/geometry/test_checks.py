@@ -8,12 +8,12 @@ import numpy as np
 import pytest
 from pydantic import ValidationError
 
-from lamwright.geometry.barrier_checks import rotor_faults
 from lamwright.geometry.checks import check_design
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.remedies import with_value
+from lamwright.geometry.rotor_checks import rotor_faults
 from tests.outlines import DESIGNS
 from tests.outlines import plain_design as plain
 from tests.random_designs import drawn_design, random_design
@@ -131,11 +131,6 @@ FAULTS = [
     (ribbed(fillet_mm=2.0), "fillet_large", "rotor.barrier[3].fillet_mm"),
     (ribbed(fillet_mm=1.79), "fillet_large", "rotor.barrier[3].fillet_mm"),
     (ribbed(fillet_mm=0.1), "fillet_small", "rotor.barrier[3].fillet_mm"),
-    (
-        ribbed(fillet_mm=1.8, radial_rib_offset_mm=11.0),
-        "radial_rib_slope",
-        "rotor.barrier[3].fillet_mm",
-    ),
     (
         changed(plain(), rotor__shaft_diameter_mm=81.0),
         "ring_thin",
@@ -324,13 +319,13 @@ def shaken(rng, design):
 
 
 def test_remedies_of_random_faults_mend_them():
-    """24 random designs with values shaken: each suggested range mends its finding.
+    """28 random designs with values shaken: each suggested range mends its finding.
 
     Both ends and the middle of the range are applied. A finding whose remedy is a choice of
     words (no single value mends it) suggests no number and is not counted.
     """
     rng, tried = np.random.default_rng(31), 0
-    for _ in range(24):
+    for _ in range(28):
         design = shaken(rng, drawn_design(rng))
         faults = rotor_faults(design)
         for finding in check_design(design):
