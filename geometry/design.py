@@ -78,7 +78,7 @@ class BarrierDesign(_Table):
     radial_rib_offset_mm: Positive | None = None  # q axis to the middle of each of two ribs
     # Heights of all ribs off the q axis, positive on the counter-clockwise half.
     radial_rib_places_mm: Annotated[tuple[float, ...], Field(max_length=4)] | None = None
-    # Of ribs off the q axis against it, positive where the rim's end leans away from it.
+    # Of ribs that do not stand on the q axis, positive where the rim's end leans away from it.
     radial_rib_tilt_deg: Annotated[float, Field(gt=-90.0, lt=90.0)] = 0.0
     fillet_mm: Positive = 0.5  # corners beside radial ribs
     arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = (

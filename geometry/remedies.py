@@ -104,6 +104,11 @@ def with_value(design: MachineDesign, key: str, value: float) -> MachineDesign:
     return replaced(design, key, value)
 
 
+def may_be_negative(key: str) -> bool:
+    """Whether a key has a sign: what lies on either side of the q axis, or leans either way."""
+    return "radial_rib_places_mm[" in key or key.endswith("radial_rib_tilt_deg")
+
+
 def barrier_key(number: int, name: str) -> str:
     """The key of barrier `number` (from 1 at the rim) as written in a message."""
     return f"rotor.barrier[{number}].{name}"

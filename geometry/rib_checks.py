@@ -65,8 +65,9 @@ def _key_faults(pole: Pole, table: str, barrier: BarrierDesign) -> list[Fault]:
         text = "only two radial ribs without radial_rib_places_mm have it"
         remedy = "remove it, or set radial_ribs = 2 without radial_rib_places_mm"
         found.append(("radial_offset_idle", "radial_rib_offset_mm", text, remedy))
-    upright = count == 0 or (count == 1 and places is None) or set(places or (1.0,)) == {0.0}
-    if barrier.radial_rib_tilt_deg and upright:
+    on_axis = 0.5 * (barrier.radial_rib_mm or 0.0)
+    off_axis = count == 2 if places is None else any(abs(place) > on_axis for place in places)
+    if barrier.radial_rib_tilt_deg and not off_axis and (places is not None or count < 2):
         text = "there is no radial rib off the q axis to incline"
         remedy = "remove it, or move a rib off the axis"
         found.append(("radial_tilt_idle", "radial_rib_tilt_deg", text, remedy))

@@ -2,9 +2,9 @@
 
 A rib's middle line goes through a pivot: the middle between the barrier's two sides at the stated
 height off the q axis, counted along a parallel to that axis. It is parallel to the q axis or
-turned about the pivot by the tilt; its two straight sides lie half a width to either side, and
-each of their corners with the barrier's sides is rounded. All of this holds for any chain of
-lines and arcs, so a rib may cross the bottom, a bend or an arm alike.
+turned about the pivot by the tilt, unless the rib stands on that axis; its two straight sides lie
+half a width to either side, and each of their corners with the barrier's sides is rounded. All of
+this holds for any chain of lines and arcs, so a rib may cross the bottom, a bend or an arm alike.
 
 Where the sides run side by side the rib has its stated width. On a slope they are shifted along
 each other; if the fillets leave no part of them face to face, the rib would be thinnest between
@@ -77,7 +77,7 @@ def rib_cuts(barrier: BarrierDesign) -> tuple[RibCut, ...]:
         RibCut(
             height,
             # Positive leans the rim's end away from the q axis, on both sides of it.
-            math.copysign(tilt, tilt * height) if height and tilt else 0.0,
+            tilt * math.copysign(1.0, height) if abs(height) > 0.5 * width else 0.0,
             width,
             full if is_full else radius,
             is_full,

@@ -13,7 +13,7 @@ import numpy as np
 
 from lamwright.geometry.design import BarrierDesign, MachineDesign
 from lamwright.geometry.errors import GeometryError
-from lamwright.geometry.remedies import barrier_key, value_of, with_value
+from lamwright.geometry.remedies import barrier_key, may_be_negative, value_of, with_value
 from lamwright.geometry.rotor import rotor_frame, rotor_regions
 from lamwright.geometry.section import Region
 from lamwright.geometry.stator import stator_regions
@@ -76,7 +76,7 @@ class PartMotion:
 
     def _drawn(self, design: MachineDesign, key: str, value: float) -> EdgeTable | None:
         """The outline with another value of a key; None where it is of another kind."""
-        if value < 0.0:  # no length or angle is
+        if value < 0.0 and not may_be_negative(key):
             return None
         try:
             table = edge_table(self.draw(with_value(design, key, value)))
@@ -136,8 +136,16 @@ def shape_keys(design: MachineDesign) -> tuple[str, ...]:
     ]
     for number, barrier in enumerate(design.rotor.barrier, start=1):
         names = [name for name in type(barrier).model_fields if _is_used(barrier, name)]
-        keys += [barrier_key(number, name) for name in names]
+        keys += [key for name in names for key in _each(barrier, number, name)]
     return tuple(keys)
+
+
+def _each(barrier: BarrierDesign, number: int, name: str) -> list[str]:
+    """The key of a value, or the keys of all values of a list, counted from 1."""
+    key, value = barrier_key(number, name), getattr(barrier, name)
+    if isinstance(value, tuple):
+        return [f"{key}[{k}]" for k in range(1, len(value) + 1)]
+    return [key]
 
 
 def _is_shape(name: str) -> bool:
