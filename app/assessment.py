@@ -15,6 +15,7 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
 from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
@@ -25,7 +26,7 @@ from lamwright.postprocess.figures import (
     stress_figure,
     torque_figure,
 )
-from lamwright.postprocess.files import VERDICT_FILE, json_text, write_text
+from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.summary import (
     magnetic_figures,
@@ -177,7 +178,7 @@ class Assessment:
                 model.sector, unknowns, fields, len(waveform.torque), stress.solution
             ),
             outcomes=judged(machine.design.limits, magnetic, rotor),
-            cautions=cautions(magnetic, terminal, rotor, cards),
+            cautions=cautions(magnetic, terminal, rotor, cards, bars),
             times=watch.times,
             errors=bars,
         )

@@ -13,7 +13,8 @@ from lamwright.geometry.design_file import Machine, design_hash, placed, read_ma
 from lamwright.geometry.dxf import read_contours, write_contours
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.section import CrossSection, Rib
-from lamwright.postprocess.files import json_text, prepared_folder, staged, write_text
+from lamwright.geometry.whole_file import write_text
+from lamwright.postprocess.files import json_text, prepared_folder, staged
 from lamwright.postprocess.quantities import OutlineFigures, figures_of
 
 from .version import version

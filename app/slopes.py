@@ -17,9 +17,10 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.remedies import value_of
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.figures_slopes import write_slopes
-from lamwright.postprocess.files import json_text, prepared_folder, staged, write_text
+from lamwright.postprocess.files import json_text, prepared_folder, staged
 from lamwright.postprocess.slopes import (
     SHAPE_FIGURES,
     KeySlope,

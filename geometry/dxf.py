@@ -11,7 +11,6 @@ ezdxf takes 0.35 s to import (measured) and is imported inside the functions.
 """
 
 import math
-import os
 import re
 import uuid
 from collections.abc import Sequence
@@ -23,6 +22,7 @@ from .contours import Contour, compare_contours, lamination_contours
 from .curves import Edge, Path, perimeter
 from .errors import DesignError
 from .section import CrossSection
+from .whole_file import write_text
 
 if TYPE_CHECKING:
     from ezdxf.document import Drawing
@@ -57,13 +57,7 @@ def write_lamination(section: CrossSection, path: FilePath) -> None:
 
 def write_contours(contours: Sequence[Contour], path: FilePath) -> None:
     """Write closed contours (m) as DXF in mm, each on its own layer."""
-    text = _dxf_text(contours)
-    temporary = path.with_name(f".{path.name}.{os.getpid()}.tmp")
-    try:
-        temporary.write_text(text, encoding="utf-8", newline="\n")
-        temporary.replace(path)
-    finally:
-        temporary.unlink(missing_ok=True)
+    write_text(path, _dxf_text(contours))
 
 
 def read_contours(path: FilePath) -> tuple[Contour, ...]:

@@ -3,7 +3,7 @@
 The thresholds below are this project's own promises for its default meshes and positions.
 """
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.steel_card import curve_findings
@@ -33,12 +33,21 @@ def cautions(
     terminal: TerminalFigures,
     stress: StressFigures,
     cards: Sequence[SteelCard],
+    errors: Mapping[str, float],
 ) -> tuple[str, ...]:
-    """All cautions, those of this design first, one line each."""
+    """All cautions, those of this design first, one line each.
+
+    Args:
+        magnetic: figures at rated current.
+        terminal: figures at rated speed.
+        stress: figures at overspeed.
+        cards: the steels.
+        errors: by the figure's key, in its unit, as in `Verdict.errors`.
+    """
     return (
         *_of_field(magnetic),
         *_of_supply(terminal),
-        *_of_stress(stress),
+        *_of_stress(stress, errors),
         *dict.fromkeys(line for card in cards for line in _of_steel(card)),
         *STANDING,
     )
@@ -67,10 +76,10 @@ def _of_supply(terminal: TerminalFigures) -> Iterator[str]:
         )
 
 
-def _of_stress(stress: StressFigures) -> Iterator[str]:
-    if stress.peak_error > MOST_STRESS_ERROR * stress.peak:
-        share = 100.0 * stress.peak_error / stress.peak
-        yield f"the greatest rib stress has not settled: estimated error {share:.1f} %"
+def _of_stress(stress: StressFigures, errors: Mapping[str, float]) -> Iterator[str]:
+    share = errors["rib_stress_peak_mpa"] / (1e-6 * stress.peak)
+    if share > MOST_STRESS_ERROR:
+        yield f"the greatest rib stress has not settled: estimated error {100.0 * share:.1f} %"
     if stress.yield_margin < 1.0:
         yield "the rotor yields below overspeed; linear stress ends there"
     if stress.growth > MOST_GROWTH * (stress.growth + stress.gap_left):

@@ -11,7 +11,6 @@ matplotlib.
 
 from __future__ import annotations
 
-import os
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from functools import partial
@@ -19,6 +18,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.whole_file import whole_file
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.types import FieldSolution, SectorMesh, StressSolution
 
@@ -184,18 +184,11 @@ def _figure(size: tuple[float, float], title: str, style: Style) -> Figure:
 def _save(figure: Figure, stem: Path, style: Style) -> tuple[Path, Path]:
     """Write one figure twice; each file appears whole, by a rename."""
     png, svg = stem.with_suffix(".png"), stem.with_suffix(".svg")
-    _whole(png, lambda path: _write_png(figure, path, style))
-    _whole(svg, lambda path: _write_svg(figure, path))
+    with whole_file(png) as path:
+        _write_png(figure, path, style)
+    with whole_file(svg) as path:
+        figure.savefig(path, format="svg", dpi=SVG_DPI, metadata=NO_METADATA)
     return png, svg
-
-
-def _whole(path: Path, write: Callable[[Path], None]) -> None:
-    temporary = path.with_name(f".{path.name}.{os.getpid()}.tmp")
-    try:
-        write(temporary)
-        temporary.replace(path)
-    finally:
-        temporary.unlink(missing_ok=True)
 
 
 def _write_png(figure: Figure, path: Path, style: Style) -> None:
@@ -209,7 +202,3 @@ def _write_png(figure: Figure, path: Path, style: Style) -> None:
     image = Image.frombuffer("RGBA", size, canvas.buffer_rgba(), "raw", "RGBA", 0, 1).convert("RGB")
     dots = (style.dpi, style.dpi)
     image.save(path, format="png", compress_level=PNG_EFFORT, dpi=dots)
-
-
-def _write_svg(figure: Figure, path: Path) -> None:
-    figure.savefig(path, format="svg", dpi=SVG_DPI, metadata=NO_METADATA)

@@ -7,7 +7,6 @@ last: where a `verdict.json` stands, all files beside it belong to it.
 import csv
 import io
 import json
-import os
 import shutil
 import tempfile
 from collections.abc import Iterator, Mapping, Sequence
@@ -17,16 +16,6 @@ from pathlib import Path
 from lamwright.geometry.errors import LamwrightError
 
 VERDICT_FILE = "verdict.json"
-
-
-def write_text(path: Path, text: str) -> None:
-    """Write a file whole or not at all: temporary file beside it, then rename."""
-    temporary = path.with_name(f".{path.name}.{os.getpid()}.tmp")
-    try:
-        temporary.write_text(text, encoding="utf-8", newline="\n")
-        temporary.replace(path)
-    finally:
-        temporary.unlink(missing_ok=True)
 
 
 def json_text(record: Mapping[str, object]) -> str:

@@ -65,7 +65,6 @@ def stress_figures(report: RibReport) -> StressFigures:
     """Figures of the rotor lamination; all stress grows with the square of the speed."""
     return StressFigures(
         peak=max(row.peak for row in report.ribs),
-        peak_error=report.peak_error / report.peak * max(row.peak for row in report.ribs),
         tension=max(row.mean_tension for row in report.ribs),
         lamination_peak=report.peak,
         yield_margin=report.yield_margin,

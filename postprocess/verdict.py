@@ -83,9 +83,6 @@ class StressFigures:
     peak: float = field(
         metadata=shown_as("rib_stress_peak_mpa", "greatest rib stress", "MPa", 1e-6)
     )
-    peak_error: float = field(
-        metadata=shown_as("rib_stress_peak_error_mpa", "its estimated error", "MPa", 1e-6)
-    )
     tension: float = field(
         metadata=shown_as("rib_tension_mean_mpa", "greatest mean tension of a rib", "MPa", 1e-6)
     )

@@ -47,7 +47,6 @@ TERMINAL = TerminalFigures(
 )
 STRESS = StressFigures(
     peak=250e6,
-    peak_error=3e6,
     tension=90e6,
     lamination_peak=250e6,
     yield_margin=1.52,

@@ -5,12 +5,12 @@ import math
 import pytest
 
 from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.files import (
     VERDICT_FILE,
     json_text,
     prepared_folder,
     staged,
-    write_text,
 )
 
 
@@ -19,16 +19,6 @@ def test_json_refuses_what_is_no_number(value):
     """JSON has no NaN; a file with one is unreadable elsewhere, so it is never written."""
     with pytest.raises(ValueError, match="not JSON compliant"):
         json_text({"torque_nm": value})
-
-
-def test_a_failed_write_leaves_the_old_file(tmp_path):
-    """Half of a text that cannot be encoded must not replace a good file."""
-    path = tmp_path / "a.json"
-    write_text(path, "old")
-    with pytest.raises(UnicodeEncodeError):
-        write_text(path, "x" * 100_000 + "\ud800")
-    assert path.read_text() == "old"
-    assert list(tmp_path.iterdir()) == [path]
 
 
 def test_staged_files_appear_together_at_the_end(tmp_path):
