@@ -1,24 +1,17 @@
-"""Operating points in a row, each started from the ones before.
+"""Operating points in a row, each started from the one before.
 
-The rotor's part of a solution is carried with the rotor. Where three points lie on one straight
-line in (i_d, i_q, position) the last two solutions are extrapolated: fully along a line of
-currents (44 instead of 48 steps for 12 points), by half where the rotor turns, as the teeth make
-the field waver (steps a point at 0.5 and 1 degree: none 3.2, 4.5; half 3.0, 4.1; full 3.3, 5.6,
-measured on 24 slots). Chains are independent of one another: give each worker its own.
+The rotor's part of a solution is carried with the rotor, and the change is foreseen by first-order
+elements (`field.solve_point`). Chains are independent of one another: give each worker its own.
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
 from .field import MagneticModel, PointEnergy, at_position, solve_point
 from .integrals import dq_values, phase_currents
-from .types import FieldSolution, FloatArray
-
-ON_LINE_TOL = 1e-6  # of the step between points
-LONGEST_REACH = 2.0  # times the last step; farther out the straight line is no better
-TURNING_SHARE = 0.5  # of the extrapolation where the rotor turns, see above
+from .types import FieldSolution
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,7 +42,7 @@ def solve_chain(
     """
     solutions: list[FieldSolution] = []
     for k, point in enumerate(points):
-        near = _start(solutions, points[:k], point) if solutions else start
+        near = solutions[-1] if solutions else start
         solution = solve_point(model, point.i_d, point.i_q, point.position, near)
         solutions.append(solution)
         if on_done is not None:
@@ -103,37 +96,3 @@ def fanned(
         ahead, behind = own[at[own] >= start], own[at[own] < start][::-1]
         chains += [(k, tuple(way.tolist())) for way in (ahead, behind) if way.size]
     return tuple(sorted(chains, key=lambda chain: -len(chain[1])))
-
-
-def _start(
-    solutions: Sequence[FieldSolution], before: Sequence[OperatingPoint], point: OperatingPoint
-) -> FieldSolution:
-    last = solutions[-1]
-    if len(solutions) == 1:
-        return last
-    reach = _reach(_vector(before[-2]), _vector(before[-1]), _vector(point))
-    if reach == 0.0:
-        return last
-    first = solutions[-2]
-    return replace(
-        last,
-        a_rotor=last.a_rotor + reach * (last.a_rotor - first.a_rotor),
-        a_stator=last.a_stator + reach * (last.a_stator - first.a_stator),
-    )
-
-
-def _reach(first: FloatArray, last: FloatArray, point: FloatArray) -> float:
-    """By how many of the last steps to extrapolate; 0 off the line."""
-    step, ahead = last - first, point - last
-    length = float(step @ step)
-    if length == 0.0:
-        return 0.0
-    reach = float(ahead @ step) / length
-    is_on_line = float(np.abs(ahead - reach * step).max()) <= ON_LINE_TOL * float(length**0.5)
-    if not is_on_line or not 0.0 < reach <= LONGEST_REACH:
-        return 0.0
-    return reach if step[2] == 0.0 else TURNING_SHARE * reach
-
-
-def _vector(point: OperatingPoint) -> FloatArray:
-    return np.array([point.i_d, point.i_q, point.position])

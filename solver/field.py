@@ -6,7 +6,7 @@ matrix entries, pattern, gap geometry) is kept for the next current at the same 
 symbolic factor for all positions whose patterns agree.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.sparse import csc_matrix
@@ -17,9 +17,11 @@ from .kernel import (
     FluxState,
     element_residual,
     flux_state,
+    looked_ahead,
     packed_tangent,
     quadrature,
     quadrature_places,
+    weighted,
 )
 from .linear import SparseSolver, analyse
 from .model import FieldSettings, MagneticModel, linear_tangent, magnetic_model
@@ -77,6 +79,15 @@ class PointEnergy:
         r -= self.load
         return r, state
 
+    def look_ahead(
+        self, linear: FluxState, state: FluxState, residual: FloatArray
+    ) -> tuple[FluxState, FloatArray]:
+        """Where to linearise the steel next, see `kernel.looked_ahead`."""
+        iron = self.model.iron
+        ahead, change = looked_ahead(linear, state, iron.law, iron.inverse)
+        elements = weighted(iron.quad, change)
+        return ahead, residual + summed(iron.residual_scatter, elements.T)
+
     def solve_tangent(self, state: FluxState, rhs: FloatArray) -> FloatArray:
         """Solution of the tangent system for a right side (n_dof,)."""
         iron, position = self.model.iron, self.position
@@ -84,6 +95,10 @@ class PointEnergy:
         values += position.values
         position.solver.factorise(values)
         return position.solver.solve(rhs)
+
+    def solve_held(self, rhs: FloatArray) -> FloatArray:
+        """Solution (n_dof,) of the tangent system factorised last."""
+        return self.position.solver.solve(rhs)
 
 
 def solve_point(
@@ -111,13 +126,9 @@ def solve_point(
     place = at_position(model, position)
     load = currents @ model.linkage + model.magnet.load
     energy = PointEnergy(model, place, load)
-    a = np.zeros(load.size)
-    if start is not None:
-        a = _unknowns(model, start)
     scale = float(np.linalg.norm(load))
-    if scale == 0.0:
-        a, scale = np.zeros(load.size), 1.0
-    a, state, report = minimise(energy, a, scale, model.settings.newton)
+    guess = _first_guess(model, currents, position, start) if scale else _Guess(np.zeros(load.size))
+    a, state, report = minimise(energy, guess.a, scale or 1.0, model.settings.newton, energy)
 
     per_machine = model.sector.sectors * model.stack_length
     psi_abc = per_machine * (model.linkage @ a)
@@ -147,16 +158,53 @@ def solve_point(
         torque=per_machine * torque,
         energy=per_machine * (stored + linear + still - released),
         coenergy=per_machine * (costored + linear - still),
-        newton=report,
+        newton=replace(report, coarse_steps=guess.steps),
+        corner_a=guess.corner_a,
     )
 
 
-def _unknowns(model: MagneticModel, start: FieldSolution) -> FloatArray:
-    """Unknowns (n_dof,) of a solution of the same meshes."""
+@dataclass(frozen=True, slots=True, eq=False)
+class _Guess:
+    a: FloatArray  # (n_dof,)
+    corner_a: FloatArray | None = None  # (n_corner,), of the first-order elements
+    steps: int = 0  # theirs
+
+
+def _first_guess(
+    model: MagneticModel, currents: FloatArray, position: float, start: FieldSolution | None
+) -> _Guess:
+    """The neighbour's field changed as that of first-order elements changes, or that itself."""
+    nodal = _no_field(model) if start is None else _nodal(model, start)
+    known = None if start is None else start.corner_a
+    if model.coarse is None or (start is not None and known is None):
+        return _Guess(nodal[model.representative])
+    coarse, lift = model.coarse.model, model.coarse.lift
+    place = at_position(coarse, position)
+    load = currents @ coarse.linkage + coarse.magnet.load
+    energy = PointEnergy(coarse, place, load)
+    first = np.zeros(load.size) if known is None else known[coarse.representative]
+    scale = float(np.linalg.norm(load))
+    if scale == 0.0:  # the load may sit on middles alone
+        return _Guess(nodal[model.representative])
+    settings = coarse.settings.newton
+    if known is None:  # what is left of a guess from zero would spoil the next points' too
+        settings = replace(settings, tolerance=0.1 * settings.tolerance)
+    a, _, report = minimise(energy, first, scale, settings)
+    corner_a = node_values(place.dof, place.sign, a)
+    nodal = nodal + lift(corner_a if known is None else corner_a - known)
+    return _Guess(nodal[model.representative], corner_a, report.steps)
+
+
+def _no_field(model: MagneticModel) -> FloatArray:
+    return np.zeros(model.sector.rotor.nodes.shape[0] + model.sector.stator.nodes.shape[0])
+
+
+def _nodal(model: MagneticModel, start: FieldSolution) -> FloatArray:
+    """Nodal potentials (n_node,) of a solution of the same meshes."""
     own = (model.sector.rotor.nodes.shape[0], model.sector.stator.nodes.shape[0])
     if (start.a_rotor.size, start.a_stator.size) != own:
         raise ValueError("start: a solution on another mesh")
-    return np.concatenate([start.a_rotor, start.a_stator])[model.representative]
+    return np.concatenate([start.a_rotor, start.a_stator])
 
 
 def at_position(model: MagneticModel, position: float) -> Position:

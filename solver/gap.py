@@ -35,6 +35,11 @@ def rotor_place(sector: SectorMesh, angle: float) -> RotorPlace:
     return RotorPlace(shift, share * edge)
 
 
+def places_per_edge(sector: SectorMesh) -> int:
+    """Nodes of the circle an edge: its first corner, and its middle where elements have one."""
+    return int(sector.rotor.elements.shape[1]) // 3
+
+
 def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntArray]:
     """The mesh's nodes on the circle and their places on it.
 
@@ -51,7 +56,7 @@ def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntAr
     """
     radius = np.hypot(nodes[:, 0], nodes[:, 1])
     found = np.flatnonzero(np.abs(radius / sector.circle_radius - 1.0) < ON_CIRCLE_TOL)
-    n_ring = 2 * sector.n_circle
+    n_ring = places_per_edge(sector) * sector.n_circle
     spacing = sector.sector_angle / n_ring
     # Half a space ahead, so that neither side of a half-circle pole falls on the angle's jump.
     ahead = np.arctan2(nodes[found, 1], nodes[found, 0]) + 0.5 * spacing
@@ -65,17 +70,17 @@ def circle_nodes(nodes: FloatArray, sector: SectorMesh) -> tuple[IntArray, IntAr
 
 
 def turned(
-    number: IntArray, shift: int, n_ring: int, side_sign: float = -1.0
+    number: IntArray, ahead: int, n_ring: int, side_sign: float = -1.0
 ) -> tuple[IntArray, FloatArray]:
     """Stator's number of the rotor's circle nodes and the sign of their potential.
 
     Args:
         number: places along the rotor's circle, from its d axis.
-        shift: whole edges (two places each) by which the rotor stands ahead.
+        ahead: places by which the rotor stands ahead.
         n_ring: places a sector.
         side_sign: of the potential from one sector to the next.
     """
-    lap, place = np.divmod(number + 2 * shift, n_ring)
+    lap, place = np.divmod(number + ahead, n_ring)
     return place, np.where(lap % 2 == 0, 1.0, side_sign)
 
 

@@ -53,6 +53,17 @@ def shape_slope(places: FloatArray) -> FloatArray:
     return np.stack([np.stack(by_first, axis=1), np.stack(by_second, axis=1)], axis=1)
 
 
+def linear_shape(places: FloatArray) -> FloatArray:
+    """First-order shape functions (n_point, 3) of the corners alone."""
+    l1, l2 = places[:, 0], places[:, 1]
+    return np.stack([1.0 - l1 - l2, l1, l2], axis=1)
+
+
+def linear_shape_slope(places: FloatArray) -> FloatArray:
+    """Their derivatives (n_point, 2, 3), the same at all places."""
+    return np.tile([[-1.0, 1.0, 0.0], [-1.0, 0.0, 1.0]], (places.shape[0], 1, 1))
+
+
 def points_at(mesh: PlanarMesh, places: FloatArray) -> FloatArray:
     """Positions (n_elem, n_point, 2) in m of reference places (n_point, 2) in each element."""
     return np.asarray(shape(places) @ mesh.nodes[mesh.elements])

@@ -14,17 +14,21 @@ matrix products take 2.0 ms (measured). Shapes in docstrings are the logical one
 """
 
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
-from .isoparametric import shape, shape_slope, six_points
-from .types import FloatArray, IntArray, Quadrature, ReluctivityLaw
+from .isoparametric import linear_shape, linear_shape_slope, shape, shape_slope, six_points
+from .types import FloatArray, IntArray, MagnetisationInverse, Quadrature, ReluctivityLaw
 
-# Lower triangle of a symmetric 6 x 6 matrix, row by row.
-PACKED_ROWS, PACKED_COLUMNS = np.tril_indices(6)
+TINY_H = 1e-30  # A/m, keeps 0/0 out
 
-# Three points are exact for degree 2 (Strang & Fix 1973), six for degree 4.
-_POINTS = {3: (np.array([[1, 1], [4, 1], [1, 4]]) / 6.0, np.full(3, 1.0 / 6.0)), 6: six_points()}
+# One point is exact for degree 1, three for degree 2 (Strang & Fix 1973), six for degree 4.
+_POINTS = {
+    1: (np.full((1, 2), 1.0 / 3.0), np.full(1, 0.5)),
+    3: (np.array([[1, 1], [4, 1], [1, 4]]) / 6.0, np.full(3, 1.0 / 6.0)),
+    6: six_points(),
+}
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -34,6 +38,16 @@ class FluxState:
     grad_a: FloatArray  # (n_elem, n_qp, 2), B turned by 90 degrees, T
     nu: FloatArray  # (n_elem, n_qp), m/H
     dnu: FloatArray  # (n_elem, n_qp), m/(H T^2)
+
+
+@cache
+def packed_indices(n_local: int) -> tuple[IntArray, IntArray]:
+    """Rows and columns of the lower triangle of an element matrix, row by row."""
+    rows, columns = np.tril_indices(n_local)
+    return rows, columns
+
+
+PACKED_ROWS, PACKED_COLUMNS = packed_indices(6)
 
 
 def quadrature_rule(n_qp: int) -> tuple[FloatArray, FloatArray]:
@@ -53,12 +67,14 @@ def quadrature(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> Quadratu
         `grad` (n_elem, n_qp, 2, 6) in 1/m and `weight` (n_elem, n_qp) in m^2.
     """
     points, share = _POINTS[n_qp]
-    dn = shape_slope(points)  # d N_i / d (xi, eta)
-    x, y = nodes[elements.T].transpose(2, 0, 1)  # (6, n_elem) each
+    n_local = elements.shape[1]
+    # d N_i / d (xi, eta)
+    dn = shape_slope(points) if n_local == 6 else linear_shape_slope(points)
+    x, y = nodes[elements.T].transpose(2, 0, 1)  # (n_local, n_elem) each
     (x_xi, x_eta), (y_xi, y_eta) = (np.einsum("qki,ie->kqe", dn, c) for c in (x, y))
     det = x_xi * y_eta - x_eta * y_xi  # (n_qp, n_elem), twice the local area
-    dn_xi, dn_eta = dn.transpose(1, 0, 2)[..., None]  # (n_qp, 6, 1) each
-    grad = np.empty((points.shape[0], 2, 6, elements.shape[0]))
+    dn_xi, dn_eta = dn.transpose(1, 0, 2)[..., None]  # (n_qp, n_local, 1) each
+    grad = np.empty((points.shape[0], 2, n_local, elements.shape[0]))
     grad[:, 0] = (dn_xi * y_eta[:, None] - dn_eta * y_xi[:, None]) / det[:, None]
     grad[:, 1] = (dn_eta * x_xi[:, None] - dn_xi * x_eta[:, None]) / det[:, None]
     return Quadrature(grad=grad.transpose(3, 0, 1, 2), weight=(share[:, None] * det).T)
@@ -66,14 +82,19 @@ def quadrature(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> Quadratu
 
 def shape_integrals(nodes: FloatArray, elements: IntArray) -> FloatArray:
     """Integrals of the shape functions over each element, (n_elem, 6) in m^2."""
-    integrals: FloatArray = quadrature(nodes, elements, 6).weight @ shape(_POINTS[6][0])
+    integrals: FloatArray = quadrature(nodes, elements, 6).weight @ _shape_of(elements, 6)
     return integrals
 
 
 def quadrature_places(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> FloatArray:
     """Positions of the quadrature points, (n_elem, n_qp, 2) in m."""
-    places: FloatArray = shape(_POINTS[n_qp][0]) @ nodes[elements]
+    places: FloatArray = _shape_of(elements, n_qp) @ nodes[elements]
     return places
+
+
+def _shape_of(elements: IntArray, n_qp: int) -> FloatArray:
+    points, _ = _POINTS[n_qp]
+    return shape(points) if elements.shape[1] == 6 else linear_shape(points)
 
 
 def flux_state(quad: Quadrature, a_elem: FloatArray, law: ReluctivityLaw) -> FluxState:
@@ -92,10 +113,60 @@ def flux_state(quad: Quadrature, a_elem: FloatArray, law: ReluctivityLaw) -> Flu
 
 def element_residual(quad: Quadrature, state: FluxState) -> FloatArray:
     """Element residuals, (n_elem, 6) in A."""
-    grad = quad.grad.transpose(1, 2, 3, 0)
-    h = (quad.weight * state.nu).T[:, None] * state.grad_a.transpose(1, 2, 0)  # A m
-    residual: FloatArray = np.einsum("qdie,qde->ie", grad, h).T
-    return residual
+    return weighted(quad, state.nu[..., None] * state.grad_a)
+
+
+def weighted(quad: Quadrature, h: FloatArray) -> FloatArray:
+    """Integrals of h . grad N_i over the elements, (n_elem, n_node) in A.
+
+    Args:
+        quad: of the elements.
+        h: (n_elem, n_qp, 2), field strength turned by 90 degrees in A/m.
+    """
+    h_weighted = quad.weight.T[:, None] * h.transpose(1, 2, 0)  # A m
+    integrals: FloatArray = np.einsum("qdie,qde->ie", quad.grad.transpose(1, 2, 3, 0), h_weighted).T
+    return integrals
+
+
+def looked_ahead(
+    linear: FluxState, state: FluxState, law: ReluctivityLaw, inverse: MagnetisationInverse
+) -> tuple[FluxState, FloatArray]:
+    """Where to linearise the steel next, and what that changes of H.
+
+    A Newton step from the linearisation at `linear` ends with the flux density B of `state`, and
+    with H_lin, what the linearised steel has of it there. In steel that its magnetomotive force
+    saturates H_lin is the better known of the two, in steel that carries a given flux B is. Half
+    way between B and B(H_lin) is a better point than either: from a first-order start 4 to 5
+    steps instead of 6 to 7; B(H_lin) alone does not converge (measured). Source: own.
+
+    Args:
+        linear: the linearisation point of the step just taken.
+        state: where it led.
+        law: |B|^2 in T^2 -> nu in m/H and nu' in m/(H T^2).
+        inverse: |H| in A/m -> |B| in T.
+
+    Returns:
+        The new linearisation point, and H (n_elem, n_qp, 2) in A/m, turned as `grad_a` is, of
+        the steel linearised there less H of the steel, both at the B of `state`.
+    """
+    old, new = (
+        linear.grad_a.transpose(1, 2, 0),
+        state.grad_a.transpose(1, 2, 0),
+    )  # (n_qp, 2, n_elem)
+    h = _linearised(linear, old, new)
+    size = np.sqrt(h[:, 0] ** 2 + h[:, 1] ** 2)
+    between = 0.5 * (new + h * (inverse(size) / np.maximum(size, TINY_H))[:, None])
+    nu, dnu = law(between[:, 0] ** 2 + between[:, 1] ** 2)
+    ahead = FluxState(between.transpose(2, 0, 1), nu.T, dnu.T)
+    change = _linearised(ahead, between, new) - state.nu.T[:, None] * new
+    return ahead, change.transpose(2, 0, 1)
+
+
+def _linearised(at: FluxState, old: FloatArray, new: FloatArray) -> FloatArray:
+    """H(old) + dH/dB (new - old) = nu new + 2 nu' (old . (new - old)) old, (n_qp, 2, n_elem)."""
+    along = old[:, 0] * (new[:, 0] - old[:, 0]) + old[:, 1] * (new[:, 1] - old[:, 1])
+    h: FloatArray = at.nu.T[:, None] * new + (2.0 * at.dnu.T * along)[:, None] * old
+    return h
 
 
 def packed_tangent(quad: Quadrature, state: FluxState) -> FloatArray:
@@ -110,8 +181,9 @@ def packed_tangent(quad: Quadrature, state: FluxState) -> FloatArray:
     stiff = np.empty(grad.shape)
     stiff[:, 0] = d_xx[:, None] * grad[:, 0] + d_xy[:, None] * grad[:, 1]
     stiff[:, 1] = d_xy[:, None] * grad[:, 0] + d_yy[:, None] * grad[:, 1]
-    packed = np.empty((21, grad.shape[-1]))
-    for i in range(6):
+    n_local = grad.shape[2]
+    packed = np.empty((n_local * (n_local + 1) // 2, grad.shape[-1]))
+    for i in range(n_local):
         row = packed[i * (i + 1) // 2 : (i + 1) * (i + 2) // 2]
         np.einsum("qde,qdje->je", stiff[:, :, i], grad[:, :, : i + 1], out=row)
     return packed
@@ -132,7 +204,9 @@ def residual_and_tangent(
     """
     state = flux_state(quad, a_elem, law)
     packed = packed_tangent(quad, state)
-    tangent = np.empty((a_elem.shape[0], 6, 6))
-    tangent[:, PACKED_ROWS, PACKED_COLUMNS] = packed.T
-    tangent[:, PACKED_COLUMNS, PACKED_ROWS] = packed.T
+    n_local = a_elem.shape[1]
+    rows, columns = packed_indices(n_local)
+    tangent = np.empty((a_elem.shape[0], n_local, n_local))
+    tangent[:, rows, columns] = packed.T
+    tangent[:, columns, rows] = packed.T
     return element_residual(quad, state), tangent

@@ -8,7 +8,7 @@ Axes: n_node nodes, n_dof unknowns, n_slot matrix entries, n_elem elements of a 
 
 from collections import OrderedDict
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Literal, TypeVar
 
 import numpy as np
@@ -18,6 +18,7 @@ from lamwright.geometry.section import CrossSection, Region
 from lamwright.geometry.sectors import repeats
 from lamwright.geometry.winding import WindingTable
 
+from .first_order import Lift, first_order
 from .kernel import FluxState, packed_tangent, quadrature, quadrature_places, shape_integrals
 from .linear import Method
 from .magnet import MagnetLaw, MagnetSource, magnet_source
@@ -39,6 +40,8 @@ from .pattern import (
 from .steel import NU_0, SteelLaw
 from .types import FloatArray, IntArray, PlanarMesh, Quadrature, SectorMesh
 
+# Of the sources' norm, where a first guess is good enough: see `first_order`.
+COARSE_TOLERANCE = 1e-1
 CACHED_UNKNOWNS = 400_000  # of all factors kept; 20 factors of 20 k unknowns hold 150 MB
 
 Kept = TypeVar("Kept")
@@ -49,7 +52,7 @@ class FieldSettings:
     """How fields are computed."""
 
     # Six points instead of three in the steel change torque and linkages by less than 0.01 %.
-    iron_points: Literal[3, 6] = 3
+    iron_points: Literal[1, 3, 6] = 3  # one is for first-order elements
     shaft_relative_permeability: float = 1.0
     magnet: MagnetLaw | None = None  # of every magnet region; needed where there is one
     newton: NewtonSettings = field(default_factory=NewtonSettings)
@@ -101,6 +104,22 @@ class Iron:
         nu, dnu = (np.concatenate(pair, axis=1) for pair in zip(rotor, stator, strict=True))
         return nu, dnu
 
+    def inverse(self, h: FloatArray) -> FloatArray:
+        """|B| in T for |H| in A/m of shape (n_qp, n_elem), near enough to linearise at."""
+        if self.rotor_law is self.stator_law:
+            return self.rotor_law.flux_density(h)
+        rotor = self.rotor_law.flux_density(h[:, : self.n_rotor])
+        stator = self.stator_law.flux_density(h[:, self.n_rotor :])
+        return np.concatenate([rotor, stator], axis=1)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FirstOrder:
+    """The same machine on first-order elements, for first guesses."""
+
+    model: "MagneticModel"
+    lift: Lift
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class RotorGap:
@@ -145,6 +164,7 @@ class MagneticModel:
     representative: IntArray  # (n_dof,), a node with sign + for every unknown
     factors: Cache = field(repr=False)
     positions: Cache = field(repr=False)
+    coarse: FirstOrder | None = None  # none on first-order elements themselves
 
 
 def magnetic_model(
@@ -169,6 +189,25 @@ def magnetic_model(
         ValueError: when meshes, regions and winding do not belong together.
     """
     settings = settings or FieldSettings()
+    coarse_sector, lift = first_order(sector)
+    coarse_settings = replace(
+        settings, iron_points=1, newton=replace(settings.newton, tolerance=COARSE_TOLERANCE)
+    )
+    laws = (rotor_law, stator_law)
+    coarse = _model(coarse_sector, section, winding, *laws, coarse_settings)
+    model = _model(sector, section, winding, *laws, settings)
+    return replace(model, coarse=FirstOrder(coarse, lift))
+
+
+def _model(
+    sector: SectorMesh,
+    section: CrossSection,
+    winding: WindingTable,
+    rotor_law: SteelLaw,
+    stator_law: SteelLaw,
+    settings: FieldSettings,
+) -> MagneticModel:
+    """The model without first guesses, on elements of either order."""
     numbering = number_unknowns(sector)
     materials = material_of_elem(sector, section)
     nodes, elements = joined_parts(sector)
@@ -277,7 +316,7 @@ def _rotor_gap(rotor: PlanarMesh, gap: IntArray, entries: Entries, n_dof: int) -
     row, column, matrix = gap_slots(entries, n_dof)
     return RotorGap(
         nodes=rotor.nodes[node],
-        elements=local.reshape(-1, 6).astype(np.int64),
+        elements=local.reshape(len(gap), -1).astype(np.int64),
         node=node,
         row=row,
         column=column,

@@ -22,8 +22,8 @@ from typing import TypeAlias
 import numpy as np
 from scipy.sparse import coo_matrix, csr_matrix
 
-from .gap import circle_nodes, turned
-from .kernel import PACKED_COLUMNS, PACKED_ROWS
+from .gap import circle_nodes, places_per_edge, turned
+from .kernel import packed_indices
 from .types import FloatArray, IntArray, PlanarMesh, SectorMesh
 
 SparseRows: TypeAlias = "csr_matrix[np.float64]"
@@ -45,7 +45,12 @@ class Numbering:
     n_ring: int  # unknowns of the circle
     rotor_circle: IntArray  # nodes of the rotor on the circle
     rotor_circle_number: IntArray  # their places on the circle, from the rotor's d axis
+    per_edge: int  # unknowns of the circle an edge
     side_sign: float = -1.0  # of the potential from one sector to the next
+
+    def turned(self, number: IntArray, shift: int) -> tuple[IntArray, FloatArray]:
+        """Places on the circle and signs with the rotor `shift` edges ahead."""
+        return turned(number, self.per_edge * shift, self.n_ring, self.side_sign)
 
     @property
     def n_dof(self) -> int:
@@ -95,7 +100,8 @@ def number_unknowns(sector: SectorMesh) -> Numbering:
     Raises:
         ValueError: when the sides of a part do not match, or the circle is not regular.
     """
-    n_ring = 2 * sector.n_circle
+    per_edge = places_per_edge(sector)
+    n_ring = per_edge * sector.n_circle
     rotor_circle, rotor_number = circle_nodes(sector.rotor.nodes, sector)
     stator_circle, stator_number = circle_nodes(sector.stator.nodes, sector)
     rotor = _number_part(sector.rotor, sector, rotor_circle, hold_outside=False)
@@ -119,6 +125,7 @@ def number_unknowns(sector: SectorMesh) -> Numbering:
         n_ring=n_ring,
         rotor_circle=rotor_circle,
         rotor_circle_number=rotor_number,
+        per_edge=per_edge,
         side_sign=sector.side_sign,
     )
 
@@ -126,9 +133,7 @@ def number_unknowns(sector: SectorMesh) -> Numbering:
 def turned_numbering(numbering: Numbering, shift: int) -> tuple[IntArray, FloatArray]:
     """Unknown and sign (n_node,) of every node with the rotor `shift` edges ahead."""
     dof, sign = numbering.dof.copy(), numbering.sign.copy()
-    number, flip = turned(
-        numbering.rotor_circle_number, shift, numbering.n_ring, numbering.side_sign
-    )
+    number, flip = numbering.turned(numbering.rotor_circle_number, shift)
     dof[numbering.rotor_circle] = numbering.first_ring + number
     sign[numbering.rotor_circle] = flip
     return dof, sign
@@ -143,8 +148,9 @@ def edge_ends(numbering: Numbering, elements: IntArray) -> IntArray:
     """
     dof = numbering.dof[elements]
     ends = np.tile(np.arange(numbering.n_dof + 1)[:, None], (1, 2))
-    for start, end, middle in ((0, 1, 3), (1, 2, 4), (0, 2, 5)):
-        ends[dof[:, middle]] = dof[:, [start, end]]
+    if numbering.per_edge == 2:
+        for start, end, middle in ((0, 1, 3), (1, 2, 4), (0, 2, 5)):
+            ends[dof[:, middle]] = dof[:, [start, end]]
     return ends[:-1]
 
 
@@ -153,7 +159,7 @@ def turned_ends(numbering: Numbering, ends: IntArray, shift: int) -> IntArray:
     rotor = slice(None, numbering.n_rotor)
     on_ring = (ends[rotor] >= numbering.first_ring) & (ends[rotor] < numbering.n_dof)
     moved = ends.copy()
-    number, _ = turned(ends[rotor] - numbering.first_ring, shift, numbering.n_ring)
+    number, _ = numbering.turned(ends[rotor] - numbering.first_ring, shift)
     moved[rotor] = np.where(on_ring, numbering.first_ring + number, ends[rotor])
     return moved
 
@@ -166,9 +172,10 @@ def node_values(dof: IntArray, sign: FloatArray, a: FloatArray) -> FloatArray:
 
 def packed_entries(dof: IntArray, sign: FloatArray, elements: IntArray, n_dof: int) -> Entries:
     """Destination of the packed tangents of `elements` (n_elem, 6)."""
-    i, j = dof[elements].T[PACKED_ROWS], dof[elements].T[PACKED_COLUMNS]  # (21, n_elem)
-    factor = sign[elements].T[PACKED_ROWS] * sign[elements].T[PACKED_COLUMNS]
-    doubled = (i == j) & (PACKED_ROWS != PACKED_COLUMNS)[:, None]
+    rows, columns = packed_indices(elements.shape[1])
+    i, j = dof[elements].T[rows], dof[elements].T[columns]  # (n_packed, n_elem)
+    factor = sign[elements].T[rows] * sign[elements].T[columns]
+    doubled = (i == j) & (rows != columns)[:, None]
     factor = np.where(doubled, 2.0 * factor, factor)
     row, column = np.maximum(i, j), np.minimum(i, j)
     return Entries(row.ravel(), column.ravel(), factor.ravel())
@@ -299,8 +306,7 @@ def _turn_unknowns(
 ) -> tuple[IntArray, FloatArray]:
     """Unknowns with those of the circle turned, and the sign that each takes."""
     on_ring = unknown >= numbering.first_ring
-    ring = numbering.n_ring, numbering.side_sign
-    number, sign = turned(unknown - numbering.first_ring, shift, *ring)
+    number, sign = numbering.turned(unknown - numbering.first_ring, shift)
     return (
         np.where(on_ring, numbering.first_ring + number, unknown),
         np.where(on_ring, sign, 1.0),

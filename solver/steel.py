@@ -31,6 +31,7 @@ TABLE_STEP = 2e-3  # T; the table adds less than 1e-6 of H to the error of the s
 TABLE_END = 4.0  # T; above it H goes on with the last slope
 SLOPE_LIMIT = 2.5  # times the smaller secant; 3 would allow dH/dB = 0 inside an interval
 TAIL_BOUNDS = (0.02, 0.2)  # T, decay length of dJ/dB beyond the last point
+INVERSE_POINTS = 2049
 TINY_B2 = 1e-24  # T^2, keeps nu(0) = dH/dB(0) without a branch
 
 # B in T -> H in A/m and dH/dB in m/H.
@@ -47,6 +48,7 @@ class SteelLaw:
     step: float  # T
     cubic: FloatArray  # (4, n_interval + 1), coefficients of 1, t, t^2, t^3 in A/m
     energy: FloatArray  # (n_interval + 1,), energy density at the interval's start, J/m^3
+    inverse: FloatArray  # (n_inverse,), B in T at H with equal steps of log(1 + H / 1 A/m)
 
     def __call__(self, b2: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Reluctivity and its slope.
@@ -69,6 +71,18 @@ class SteelLaw:
         """H in A/m at the flux density `b` in T (not negative)."""
         c0, c1, c2, c3, t = self._interval(b)
         return ((c3 * t + c2) * t + c1) * t + c0
+
+    def flux_density(self, h: FloatArray) -> FloatArray:
+        """B in T at the field strength `h` in A/m (not negative), to 1e-4 of it.
+
+        Near enough to choose where to linearise; `field_strength` is not its exact inverse.
+        """
+        beyond = np.maximum(h - self.cubic[0, -1], 0.0)
+        place = np.log1p(h - beyond) * ((self.inverse.size - 1) / np.log1p(self.cubic[0, -1]))
+        k = np.minimum(place, self.inverse.size - 2).astype(np.intp)
+        low, high = self.inverse.take(k), self.inverse.take(k + 1)
+        b: FloatArray = low + (place - k) * (high - low) + MU_0 * beyond
+        return b
 
     def energy_density(self, b2: FloatArray) -> FloatArray:
         """Stored energy int H dB in J/m^3 at |B|^2 = `b2` in T^2, exact for the table's H."""
@@ -167,7 +181,8 @@ def law_from_function(curve: MagnetisationFunction, stacking_factor: float = 1.0
     cubic[3, :-1] = m[:-1] + m[1:] - 2.0 * rise
     per_interval = TABLE_STEP * (cubic / np.array([[1.0], [2.0], [3.0], [4.0]])).sum(axis=0)
     energy = np.concatenate([[0.0], np.cumsum(per_interval[:-1])])
-    return SteelLaw(TABLE_STEP, cubic, energy)
+    at = np.expm1(np.linspace(0.0, np.log1p(h[-1]), INVERSE_POINTS))
+    return SteelLaw(TABLE_STEP, cubic, energy, np.interp(at, h, b))
 
 
 def linear_law(relative_permeability: float) -> SteelLaw:

@@ -18,6 +18,8 @@ IntArray = npt.NDArray[np.int64]
 
 # |B|^2 in T^2 -> nu in m/H and d nu / d |B|^2 in m/(H T^2), any shape.
 ReluctivityLaw = Callable[[FloatArray], tuple[FloatArray, FloatArray]]
+# |H| in A/m -> |B| in T, any shape.
+MagnetisationInverse = Callable[[FloatArray], FloatArray]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -86,9 +88,10 @@ class SectorMesh:
 class NewtonReport:
     """How a Newton iteration went."""
 
-    steps: int
+    steps: int  # tangents factorised
     history: tuple[float, ...]  # relative residual norms, one more than steps
     seconds: float
+    coarse_steps: int = 0  # of the first-order iteration that gave the first guess
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -111,6 +114,8 @@ class FieldSolution:
     energy: float
     coenergy: float
     newton: NewtonReport
+    # (n_corner,), A_z in Wb/m of the first-order elements at the same point, rotor first
+    corner_a: FloatArray | None = None
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -70,10 +70,10 @@ def test_turning_changes_sign_at_each_pole() -> None:
     """Antiperiodicity: a shift by one pole returns every place with a minus, by two with a plus."""
     number = np.arange(24)
     for poles, sign in ((1, -1.0), (2, 1.0), (-1, -1.0)):
-        place, flips = turned(number, 12 * poles, 24)
+        place, flips = turned(number, 24 * poles, 24)
         assert np.array_equal(place, number)
         assert np.all(flips == sign)
-    place, flips = turned(number, 1, 24)
+    place, flips = turned(number, 2, 24)
     assert np.array_equal(place, np.roll(number, -2))
     assert np.array_equal(flips, np.where(number < 22, 1.0, -1.0))
 
