@@ -57,3 +57,15 @@ class Finding:
     def text(self) -> str:
         """The finding as one line without its place in the file."""
         return f"{self.key} = {self.value:g}: {self.fault}; {self.remedy}"
+
+
+class OutlineError(LamwrightError, ValueError):
+    """A drawing in which no lamination is recognised; one line, with the place where there is one.
+
+    `place` is in m in the drawing's own coordinates.
+    """
+
+    def __init__(self, text: str, place: complex | None = None) -> None:
+        """Keep the place beside the text, for a picture that marks it."""
+        super().__init__(text)
+        self.place = place

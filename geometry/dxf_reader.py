@@ -1,0 +1,204 @@
+"""A user's DXF drawing as loose lines and arcs in m, with everything that was left out listed.
+
+What is read: all versions of the format from R12, text or binary; the model space; entities on
+layers that are shown, or on the layers stated. Left out and counted: notes and measures, centre
+lines (by their line type), layers that are off or frozen, pieces of no length.
+ezdxf takes 0.35 s to import and is imported inside the functions.
+"""
+
+import hashlib
+from collections import Counter
+from collections.abc import Sequence
+from dataclasses import dataclass
+from io import StringIO
+from itertools import islice
+from pathlib import Path as FilePath
+from typing import TYPE_CHECKING
+
+from .curves import Edge
+from .dxf_entities import MOST_ENTITIES, EntityError, edges_of, opened
+from .errors import OutlineError
+from .outline_places import place_text
+
+if TYPE_CHECKING:
+    from ezdxf.document import Drawing
+    from ezdxf.entities import DXFGraphic
+
+LARGEST_FILE = 30_000_000  # bytes; a lamination of 100 slots drawn loose has 0.5 MB
+LEAST_LENGTH = 1e-9  # m, a piece shorter than this is none
+# $INSUNITS: mm per unit. Codes by the DXF reference (0: none stated).
+UNITS_MM = {1: 25.4, 2: 304.8, 4: 1.0, 5: 10.0, 6: 1000.0, 9: 0.0254, 13: 0.001, 14: 100.0}
+UNIT_NAMES = {1: "inch", 2: "foot", 4: "mm", 5: "cm", 6: "m", 9: "mil", 13: "um", 14: "dm"}
+# Line types of centre lines in the usual sets, names of other languages among them.
+CENTRE_TYPES = (
+    "CENTER",
+    "CENTRE",
+    "DASHDOT",
+    "PHANTOM",
+    "ISO04",
+    "ISO08",
+    "ISO10",
+    "MITTE",
+    "STRICHPUNKT",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class DrawnPieces:
+    """What a drawing holds: its lines and arcs in m, and how it was read."""
+
+    edges: tuple[Edge, ...]
+    layers: tuple[str, ...]  # of each edge
+    unit_mm: float  # per drawing unit
+    unit_source: str
+    kinds: tuple[tuple[str, int], ...]  # entities read, by kind
+    left_out: tuple[tuple[str, int], ...]  # entities left out, by reason
+    sha256: str
+
+
+def read_pieces(
+    path: FilePath, unit_mm: float | None = None, layers: Sequence[str] = ()
+) -> DrawnPieces:
+    """The lines and arcs of a DXF drawing.
+
+    Args:
+        path: the file.
+        unit_mm: mm per drawing unit; None takes the file's own statement.
+        layers: names of the layers that hold the outline; none means all that are shown.
+
+    Raises:
+        OutlineError: one line, if the file cannot be read or states no unit, or holds nothing.
+    """
+    data = _bytes(path)
+    document = _document(data)
+    unit, source = _unit(document, unit_mm)
+    taken, left_out = _chosen(document, layers)
+    edges: list[Edge] = []
+    edge_layers: list[str] = []
+    kinds: Counter[str] = Counter()
+    for entity in taken:
+        found = _edges(entity, 1e-3 * unit)
+        if found is None:
+            left_out[f"{entity.dxftype()}, no outline"] += 1
+            continue
+        long = [edge for edge in found if edge.length > LEAST_LENGTH]
+        if not long:
+            left_out["no length"] += 1
+            continue
+        kinds[entity.dxftype()] += 1
+        edges += long
+        edge_layers += [str(entity.dxf.layer)] * len(long)
+    if not edges:
+        raise OutlineError("no line, arc or polyline in the drawing's model space")
+    return DrawnPieces(
+        tuple(edges),
+        tuple(edge_layers),
+        unit,
+        source,
+        tuple(sorted(kinds.items())),
+        tuple(sorted(left_out.items())),
+        hashlib.sha256(data).hexdigest(),
+    )
+
+
+def _bytes(path: FilePath) -> bytes:
+    try:
+        if not path.is_file():
+            raise OutlineError("no such file" if not path.exists() else "not a regular file")
+        with path.open("rb") as file:
+            data = file.read(LARGEST_FILE + 1)
+    except OSError as error:
+        reason = (error.strerror or "unknown reason").lower()
+        raise OutlineError(f"cannot be read, {reason}") from None
+    except ValueError:  # a null character in the name
+        raise OutlineError("not a file name") from None
+    if len(data) > LARGEST_FILE:
+        raise OutlineError(f"file too large; accepted up to {LARGEST_FILE // 1_000_000} MB")
+    if not data.strip():
+        raise OutlineError("the file is empty; accepted a DXF drawing")
+    return data
+
+
+def _document(data: bytes) -> "Drawing":
+    import ezdxf
+    from ezdxf.filemanagement import dxf_stream_info
+
+    try:
+        if data.startswith(b"AutoCAD Binary DXF"):
+            from ezdxf.lldxf.tagger import binary_tags_loader
+            from ezdxf.document import Drawing as Document
+
+            return Document.load(binary_tags_loader(data))
+        # newline=None: line ends of any system become one.
+        info = dxf_stream_info(StringIO(data.decode("latin-1"), newline=None))
+        text = data.decode(info.encoding, errors="surrogateescape")
+        if "SECTION" not in text:
+            raise ValueError("no section in the file")
+        return ezdxf.read(StringIO(text, newline=None))
+    # What the library may raise on damaged files is not a list to rely on (see `dxf`).
+    except Exception as error:
+        raise OutlineError(f"not a readable DXF file; {_one_line(error)}") from None
+
+
+def _one_line(error: Exception) -> str:
+    # The library quotes the file's own bytes, line ends and half characters among them.
+    text = str(error).encode("ascii", "backslashreplace").decode()
+    return f"{type(error).__name__}: {' '.join(text.split())}"[:200]
+
+
+def _unit(document: "Drawing", stated: float | None) -> tuple[float, str]:
+    code = document.header.get("$INSUNITS", 0)
+    if stated is not None:
+        told = f", the file says {UNIT_NAMES[code]}" if code in UNIT_NAMES else ""
+        return stated, f"{stated:g} mm as stated{told}"
+    if code in UNITS_MM:
+        return UNITS_MM[code], f"{UNIT_NAMES[code]}, from the file"
+    raise OutlineError(
+        "the file states no unit; state outline_unit_mm, as 1.0 for mm or 25.4 for inches"
+    )
+
+
+def _chosen(document: "Drawing", layers: Sequence[str]) -> "tuple[list[DXFGraphic], Counter[str]]":
+    left_out: Counter[str] = Counter()
+    known = {layer.dxf.name.casefold(): layer for layer in document.layers}
+    wanted = {name.casefold() for name in layers}
+    taken = []
+    try:
+        every = list(islice(opened(iter(document.modelspace())), MOST_ENTITIES + 1))
+    except EntityError as error:
+        raise OutlineError(str(error)) from None
+    except Exception as error:
+        raise OutlineError(f"a block that cannot be placed; {_one_line(error)}") from None
+    if len(every) > MOST_ENTITIES:
+        raise OutlineError(f"more than {MOST_ENTITIES} entities; accepted a lamination alone")
+    used = {str(entity.dxf.get("layer", "0")).casefold() for entity in every}
+    if wanted - used:
+        names = ", ".join(sorted(used))[:200]
+        raise OutlineError(f"nothing on layer {sorted(wanted - used)[0]}; the layers are {names}")
+    for entity in every:
+        name = str(entity.dxf.get("layer", "0")).casefold()
+        layer = known.get(name)
+        line_type = str(entity.dxf.get("linetype", "BYLAYER")).upper()
+        if line_type == "BYLAYER" and layer is not None:
+            line_type = str(layer.dxf.get("linetype", "")).upper()
+        if wanted and name not in wanted:
+            left_out["other layer"] += 1
+        elif name == "defpoints" or (layer and (layer.is_off() or layer.is_frozen())):
+            left_out["layer not shown"] += 1
+        elif any(part in line_type for part in CENTRE_TYPES):
+            left_out["centre line"] += 1
+        else:
+            taken.append(entity)
+    return taken, left_out
+
+
+def _edges(entity: "DXFGraphic", unit: float) -> list[Edge] | None:
+    where = f"on layer {entity.dxf.get('layer', '0')}"
+    try:
+        return edges_of(entity, unit)
+    except EntityError as error:
+        place = None if error.point is None else unit * error.point
+        at = "" if place is None else f" at {place_text(place)}"
+        raise OutlineError(f"{error} ({where}){at}", place) from None
+    except Exception as error:
+        raise OutlineError(f"{entity.dxftype()} {where} is damaged; {_one_line(error)}") from None
