@@ -13,6 +13,7 @@ import cmath
 import math
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -46,7 +47,7 @@ class Arrangement:
     faces: tuple[Face, ...]
     open_ends: tuple[Point, ...]  # where a piece ended in the open; it was taken off
     healed: float  # m, largest distance over which ends were joined
-    doubles: int  # pieces dropped because they were there already
+    doubles: tuple[int, ...]  # numbers, from 0, of pieces dropped as there already
 
     def path(self, loop: Sequence[int]) -> Path:
         """A loop as a path."""
@@ -85,7 +86,7 @@ def arrangement(pieces: Sequence[Edge], tolerance: float) -> Arrangement:
         tuple(graph.faces()),
         tuple(points[v] for v in open_ends),
         healed,
-        graph.doubles,
+        tuple(graph.doubles),
     )
 
 
@@ -191,7 +192,7 @@ class _Graph:
         self.edges: list[Edge] = []
         self.ends: list[tuple[int, int]] = []
         self.sources: list[int] = []
-        self.doubles = 0
+        self.doubles: list[int] = []
         self._between: dict[tuple[int, int], list[int]] = {}
 
     def add_cut(
@@ -201,12 +202,13 @@ class _Graph:
         inside = sorted(cut for cut in cuts if 0.0 < cut[0] < 1.0)
         stops = [(0.0, ends[0]), *inside, (1.0, ends[1])]
         is_double = True
-        for (low, a), (high, b) in zip(stops[:-1], stops[1:], strict=True):
+        for (low, a), (high, b) in pairwise(stops):
             if a == b:
                 continue
             bulge = math.tan((high - low) * curve.sweep / 4.0)
             is_double &= not self._add(Edge(self.points[a], self.points[b], bulge), (a, b), source)
-        self.doubles += is_double
+        if is_double:
+            self.doubles.append(source)
 
     def _add(self, edge: Edge, ends: tuple[int, int], source: int) -> bool:
         rivals = self._between.setdefault((min(ends), max(ends)), [])

@@ -5,17 +5,21 @@ outlines convert to SI. Limits of single values are declared on the fields; limi
 several values are the business of `checks`.
 """
 
-from typing import Annotated, Literal
+from typing import TYPE_CHECKING, Annotated, Literal, Self
 
-from pydantic import BeforeValidator, Field
+from pydantic import BeforeValidator, Field, PrivateAttr
 
 from .design_details import HoleDesign, KeywayDesign, NotchDesign
+from .design_drawing import OutlineKeys
 from .design_table import NotNegative, Positive
 from .design_table import Table as _Table
 from .design_table import whole as _whole
 
+if TYPE_CHECKING:
+    from .outline_report import StatorOutline
 
-class StatorDesign(_Table):
+
+class StatorDesign(OutlineKeys):
     """The stator as it exists: semi-closed slots between teeth with parallel sides."""
 
     outer_diameter_mm: Positive
@@ -29,6 +33,18 @@ class StatorDesign(_Table):
     wedge_angle_deg: Annotated[float, Field(ge=0.0, le=60.0)] = 30.0  # of the tooth tip's underside
     wedge_depth_mm: NotNegative = 0.0  # radial depth kept free of copper under the tooth tip
     slot_corner_radius_mm: NotNegative = 1.0  # at the slot bottom
+    _outline: "StatorOutline | None" = PrivateAttr(default=None)
+
+    @property
+    def outline(self) -> "StatorOutline | None":
+        """What was recognised in the drawing; its dimensions then stand in the keys."""
+        return self._outline
+
+    def drawn(self, outline: "StatorOutline") -> Self:
+        """The same table with the slots of a drawing."""
+        copy = self.model_copy()
+        copy._outline = outline
+        return copy
 
 
 class WindingDesign(_Table):

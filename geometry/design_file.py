@@ -9,7 +9,7 @@ import json
 import re
 import stat
 import tomllib
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from operator import itemgetter
 from pathlib import Path
@@ -19,7 +19,8 @@ from pydantic import BaseModel, ValidationError
 
 from .design import MachineDesign, MagnetCard, SteelCard
 from .design_faults import faults, key_text, shown
-from .errors import DesignError, Finding
+from .design_outlines import with_outlines
+from .errors import DesignError, DrawingError, Finding
 from .key_lines import KeyPath, key_lines, line_of
 from .magnet_card import magnet_card_findings, temperature_findings
 from .steel_card import card_findings
@@ -53,7 +54,7 @@ def read_design(path: Path) -> MachineDesign:
     Raises:
         DesignError: the file cannot be read or used; one line for each fault.
     """
-    return _validated(path, _text(path), MachineDesign)
+    return _design(path, _text(path))
 
 
 def read_steel_card(path: Path) -> SteelCard:
@@ -91,7 +92,7 @@ def read_machine(path: Path) -> Machine:
         DesignError: the design or a card cannot be read or used; one line for each fault.
     """
     text = _text(path)
-    design = _validated(path, text, MachineDesign)
+    design = _design(path, text)
     cards: list[SteelCard] = []
     problems: dict[str, None] = {}  # as an ordered set: both keys may name the same broken card
     for key in ("rotor_card", "stator_card"):
@@ -126,6 +127,9 @@ def _magnet_card(path: Path, text: str, design: MachineDesign) -> MagnetCard | N
 def design_hash(design: MachineDesign, cards: tuple[SteelCard | MagnetCard, ...]) -> str:
     """SHA-256 in hex of everything the files state: the same for any layout of the same values."""
     values = [item.model_dump(mode="json") for item in (design, *cards)]
+    drawings = [outline.source.sha256 for outline in (design.stator.outline,) if outline]
+    if drawings:
+        values.append({"drawings": drawings})
     canonical = json.dumps(values, sort_keys=True, separators=(",", ":"), allow_nan=False)
     return hashlib.sha256(canonical.encode()).hexdigest()
 
@@ -154,8 +158,23 @@ def _name(path: Path) -> str:
     return "".join(c if c.isprintable() else "?" for c in str(path))
 
 
-def _validated(path: Path, text: str, model: type[_Model]) -> _Model:
+def _design(path: Path, text: str) -> MachineDesign:
+    """The validated design with the drawings that it names."""
     data = _parsed(path, text)
+    if not data or any(_beyond_toml((), data)):
+        return _validated(path, text, MachineDesign)
+    filled = with_outlines(data, path.parent)
+    if filled.faults:
+        raise DrawingError(_lines_text(path, text, filled.faults), filled.marks)
+    return filled.outlines.put_into(_validated(path, text, MachineDesign, filled.data))
+
+
+def _validated(
+    path: Path, text: str, model: type[_Model], data: dict[str, object] | None = None
+) -> _Model:
+    """The text's values, or the `data` that stand for them, as the model holds them."""
+    if data is None:
+        data = _parsed(path, text)
     if not data:
         remedy = f"accepted the tables {', '.join(f'[{key}]' for key in _tables(model))}"
         raise DesignError(f"{_name(path)}: no key in the file; {remedy}")
@@ -165,9 +184,14 @@ def _validated(path: Path, text: str, model: type[_Model]) -> _Model:
             return model.model_validate(data)
         except ValidationError as error:
             found = faults(error, model)
+    raise DesignError(_lines_text(path, text, found))
+
+
+def _lines_text(path: Path, text: str, found: Sequence[tuple[KeyPath, str]]) -> str:
+    """Faults with their file and line, in the order of the lines."""
     lines = key_lines(text)
     at_lines = sorted(((line_of(lines, loc), fault) for loc, fault in found), key=itemgetter(0))
-    raise DesignError("\n".join(f"{_name(path)}:{line}: {fault}" for line, fault in at_lines))
+    return "\n".join(f"{_name(path)}:{line}: {fault}" for line, fault in at_lines)
 
 
 def _beyond_toml(path: KeyPath, value: object) -> Iterator[tuple[KeyPath, str]]:

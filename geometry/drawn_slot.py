@@ -140,14 +140,14 @@ def _border(whole: Arrangement, bore_radius: float) -> tuple[Edge | None, tuple[
     if not outside:
         raise OutlineError("a slot that encloses nothing")
     try:
-        loop = chained_loop(outside).edges
+        around = chained_loop(outside).edges
     except ValueError:
         raise OutlineError("a slot in two pieces", outside[0].start) from None
-    on_bore = [_is_on(edge, bore_radius) for edge in loop]
+    on_bore = [_is_on(edge, bore_radius) for edge in around]
     if not any(on_bore):
-        return None, loop
-    first = next(k for k in range(len(loop)) if on_bore[k - 1] and not on_bore[k])
-    turned = loop[first:] + loop[:first]
+        return None, around
+    first = next(k for k in range(len(around)) if on_bore[k - 1] and not on_bore[k])
+    turned = around[first:] + around[:first]
     wall = tuple(e for e in turned if not _is_on(e, bore_radius))
     if any(_is_on(e, bore_radius) for e in turned[: len(wall)]):
         raise OutlineError("a slot with two mouths", turned[0].start)

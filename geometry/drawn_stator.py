@@ -283,7 +283,7 @@ def _one_slot(
         axis=lamination.axis,
         turn=cmath.phase(turn),
         healed=whole.healed,
-        doubles=whole.doubles,
+        doubles=sum(k < len(lamination.pieces) for k in whole.doubles),
         unlikeness=unlikeness,
     )
 

@@ -14,15 +14,16 @@ MATERIALS: dict[str, Material] = {"opening": "air", "wedge": "air", "copper": "c
 
 
 def drawn_stator_regions(
-    drawing: StatorDrawing, layers: int, circle_radius: float, slots: int
+    drawing: StatorDrawing, layers: int, circle_radius: float, poles: int, sector_poles: int
 ) -> tuple[Region, ...]:
-    """The regions of the first `slots` slots: the middle of a tooth lies at angle 0.
+    """The regions of a sector of poles: the middle of a tooth lies at angle 0.
 
     Args:
         drawing: the stator recognised.
         layers: of the winding.
         circle_radius: of the turning circle, m.
-        slots: in the sector.
+        poles: of the machine.
+        sector_poles: of the sector; its slots must be a whole number.
 
     Returns:
         `gap_stator`, the parts of each slot, `stator_iron`, as `section.CrossSection` names them.
@@ -31,15 +32,18 @@ def drawn_stator_regions(
         OutlineError: where the drawing's coil sides do not suit the layers.
     """
     slot = layered(drawing.slot, layers)
+    slots = drawing.slots * sector_poles // poles
     turns = [cmath.exp(2j * math.pi * (s + 0.5) / drawing.slots) for s in range(slots)]
-    side = cmath.exp(2j * math.pi * slots / drawing.slots)
+    # One arc a pole, so that none goes round the whole circle.
+    sides = [cmath.exp(2j * math.pi * k / poles) for k in range(sector_poles + 1)]
+    side = sides[-1]
     bore = _bore(drawing, slot, turns, side)
     inner, outer = complex(circle_radius), complex(drawing.outer_radius)
     first, last = bore[0].start, bore[-1].end
-    circle = arc(inner * side, inner, 0j, ccw=False)
-    gap = Path((line(inner, first), *bore, line(last, inner * side), circle))
-    rim = arc(outer, outer * side, 0j, ccw=True)
-    iron = [line(first, outer), rim, line(outer * side, last), reversed_edge(bore[-1])]
+    circle = [arc(inner * b, inner * a, 0j, ccw=False) for a, b in pairwise(sides)]
+    gap = Path((line(inner, first), *bore, line(last, inner * side), *reversed(circle)))
+    rim = [arc(outer * a, outer * b, 0j, ccw=True) for a, b in pairwise(sides)]
+    iron = [line(first, outer), *rim, line(outer * side, last), reversed_edge(bore[-1])]
     holes: list[Path] = []
     for s in reversed(range(slots)):
         if slot.mouth is None:

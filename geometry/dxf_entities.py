@@ -32,8 +32,11 @@ MOST_ENTITIES = 50_000  # after the blocks are opened: bounds the time
 TILT_TOL = 1e-9  # of the extrusion's unit vector
 # Carry no outline: notes, measures, fillings, views.
 NOT_OUTLINE = frozenset(
-    "TEXT MTEXT DIMENSION ARC_DIMENSION LEADER MULTILEADER MLEADER HATCH POINT ATTDEF ATTRIB "
-    "VIEWPORT IMAGE WIPEOUT ACAD_TABLE TOLERANCE XLINE RAY SHAPE OLE2FRAME OLEFRAME MPOLYGON".split()
+    (
+        *("TEXT", "MTEXT", "DIMENSION", "ARC_DIMENSION", "LEADER", "MULTILEADER", "MLEADER"),
+        *("HATCH", "MPOLYGON", "POINT", "ATTDEF", "ATTRIB", "VIEWPORT", "IMAGE", "WIPEOUT"),
+        *("ACAD_TABLE", "TOLERANCE", "XLINE", "RAY", "SHAPE", "OLE2FRAME", "OLEFRAME"),
+    )
 )
 
 
@@ -114,8 +117,8 @@ def _line(entity: "DXFGraphic", unit: float) -> list[Edge]:
 
 def _arc(entity: "DXFGraphic", unit: float) -> list[Edge]:
     dxf, side = cast("Arc", entity).dxf, _mirror(entity)
-    centre = unit * complex(side * dxf.center.x, dxf.center.y)
-    radius = unit * abs(dxf.radius)
+    centre: Point = unit * complex(side * dxf.center.x, dxf.center.y)
+    radius = unit * abs(float(dxf.radius))
     low, high = math.radians(dxf.start_angle), math.radians(dxf.end_angle)
     sweep = (high - low) % (2.0 * math.pi) or 2.0 * math.pi
 
@@ -134,7 +137,7 @@ def _arc(entity: "DXFGraphic", unit: float) -> list[Edge]:
 def _circle(entity: "DXFGraphic", unit: float) -> list[Edge]:
     dxf, side = cast("Circle", entity).dxf, _mirror(entity)
     centre = unit * complex(side * dxf.center.x, dxf.center.y)
-    radius = unit * abs(dxf.radius)
+    radius = unit * abs(float(dxf.radius))
     return [
         Edge(centre + radius, centre - radius, 1.0),
         Edge(centre - radius, centre + radius, 1.0),

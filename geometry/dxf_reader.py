@@ -125,8 +125,8 @@ def _document(data: bytes) -> "Drawing":
 
     try:
         if data.startswith(b"AutoCAD Binary DXF"):
-            from ezdxf.lldxf.tagger import binary_tags_loader
             from ezdxf.document import Drawing as Document
+            from ezdxf.lldxf.tagger import binary_tags_loader
 
             return Document.load(binary_tags_loader(data))
         # newline=None: line ends of any system become one.

@@ -5,6 +5,7 @@ The text form is one line without a full stop: place, key, value, fault, remedy,
 """
 
 from dataclasses import dataclass
+from pathlib import Path
 
 
 class LamwrightError(Exception):
@@ -15,6 +16,26 @@ class LamwrightError(Exception):
 
 class DesignError(LamwrightError, ValueError):
     """A design or steel file that cannot be used; its text has one line per fault."""
+
+
+class DrawingError(DesignError):
+    """A drawing named by a design that cannot be used; where it fails, as far as it is known."""
+
+    def __init__(self, text: str, marks: "tuple[DrawingMark, ...]" = ()) -> None:
+        """Keep the places beside the text, for pictures that mark them."""
+        super().__init__(text)
+        self.marks = marks
+
+
+@dataclass(frozen=True, slots=True)
+class DrawingMark:
+    """A place in a drawing file: m in its own coordinates, with how the file was to be read."""
+
+    path: Path
+    place: complex
+    text: str
+    unit_mm: float | None
+    layers: tuple[str, ...]
 
 
 class GeometryError(LamwrightError, ValueError):

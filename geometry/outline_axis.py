@@ -9,6 +9,7 @@ import cmath
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
@@ -124,7 +125,7 @@ def _covered(edges: Sequence[Edge], tolerance: float) -> tuple[float, float]:
         if not parts:
             continue
         start = low = high = cmath.phase(parts[0])
-        for p, q in zip(parts[:-1], parts[1:], strict=True):
+        for p, q in pairwise(parts):
             start += cmath.phase(q / p)
             low, high = min(low, start), max(high, start)
         base = math.floor(low / FULL_TURN) * FULL_TURN

@@ -1,8 +1,8 @@
-"""Sets of edges of a drawing: joined where one curve was drawn in parts, compared, made symmetric."""
+"""Sets of drawn edges: parts of one curve joined, sets compared, made symmetric."""
 
 import cmath
 import math
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 
 from .corners import foot, is_within
 from .curves import Edge, Path, Point, reversed_edge
@@ -93,7 +93,8 @@ def made_symmetric(edges: Sequence[Edge], tolerance: float) -> list[Edge] | None
         ]
         if not found:
             return None
-        partners.append(min(found, key=lambda m, e=edge: abs(m.start - e.start)))
+        gaps = [abs(m.start - edge.start) for m in found]
+        partners.append(found[gaps.index(min(gaps))])
     mean: dict[Point, Point] = {}
     for edge, twin in zip(edges, partners, strict=True):
         for point, other in ((edge.start, twin.start), (edge.end, twin.end)):
@@ -103,11 +104,15 @@ def made_symmetric(edges: Sequence[Edge], tolerance: float) -> list[Edge] | None
     for point, value in mean.items():
         if point not in exact:
             exact[point] = value
-            twin_point = min(mean, key=lambda p, q=point.conjugate(): abs(p - q))
+            twin_point = _nearest(mean, point.conjugate())
             exact[twin_point] = value.conjugate()
             if twin_point == point:
                 exact[point] = complex(value.real, 0.0)
     return _rebuilt(edges, partners, exact)
+
+
+def _nearest(points: Iterable[Point], to: Point) -> Point:
+    return min(points, key=lambda point: abs(point - to))
 
 
 def _rebuilt(

@@ -8,7 +8,9 @@ a tenth of the sheet's thickness are refused because no mesh could follow them.
 import math
 
 from .design import MachineDesign
-from .errors import GeometryError
+from .drawn_slot import layered
+from .errors import GeometryError, OutlineError
+from .outline_report import StatorOutline
 from .remedies import Fault
 from .stator import SlotDimensions, slot_copper_area, slot_dimensions
 
@@ -19,20 +21,34 @@ MOST_FILL = 0.75  # bare copper in the copper region; common practice, no source
 
 def stator_faults(design: MachineDesign) -> list[Fault]:
     """What keeps the stator from being drawn, punched or wound; lacks in m (fill: m^2)."""
+    if design.stator.outline is not None:
+        return _drawn_faults(design, design.stator.outline)
     dims = slot_dimensions(design)
     faults = _single_sizes(design) + _slot_faults(design, dims) + _corner_faults(design, dims)
     if faults:
         return faults
     try:
-        return _fill_faults(design)
+        return _fill_faults(design, slot_copper_area(design))
     except GeometryError as error:  # the layers cannot be parted
         return [_fault(one.code, (one.key,), one.fault, 1.0) for one in error.findings]
 
 
-def _fill_faults(design: MachineDesign) -> list[Fault]:
+def _drawn_faults(design: MachineDesign, outline: StatorOutline) -> list[Fault]:
+    """Faults of a stator from a drawing, whose shape stands as it was recognised."""
+    try:
+        slot = layered(outline.drawing.slot, design.winding.layers)
+    except OutlineError as error:
+        key, text = "winding.layers", str(error)
+        count = len(outline.drawing.slot.copper)
+        remedy = f"accepted {count}" if count in (1, 2) else "draw one or two"
+        return [Fault("slot_layers", (key,), text, 1.0, remedy)]
+    return _fill_faults(design, min(part.area for part in slot.copper))
+
+
+def _fill_faults(design: MachineDesign, copper: float) -> list[Fault]:
     """Whether the conductors of a slot that can be drawn go into its copper regions."""
     winding = design.winding
-    room = MOST_FILL * slot_copper_area(design)  # m^2, of one coil side
+    room = MOST_FILL * copper  # m^2, of one coil side
     side = 1e-6 * winding.turns_per_coil * winding.conductor_area_mm2
     if side <= room:
         return []

@@ -9,6 +9,7 @@ The error falls with the cube of the length, so 2 um need few arcs; a circle is 
 import cmath
 import math
 from collections.abc import Callable, Sequence
+from itertools import pairwise
 
 from .curves import Edge, Point
 
@@ -30,10 +31,10 @@ def fitted_arcs(curve: Curve, breaks: Sequence[float], tolerance: float = FIT_TO
         tolerance: in m.
     """
     edges: list[Edge] = []
-    for low, high in zip(breaks[:-1], breaks[1:], strict=True):
+    for low, high in pairwise(breaks):
         # Parts short of half a turn: ends that coincide have no chord.
         parts = [low + (high - low) * k / 4 for k in range(5)]
-        for start, end in zip(parts[:-1], parts[1:], strict=True):
+        for start, end in pairwise(parts):
             edges += _interval(curve, start, end, tolerance, MOST_HALVINGS)
     return edges
 

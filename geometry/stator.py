@@ -17,6 +17,7 @@ from itertools import pairwise
 
 from .curves import Edge, Path, Point, arc, area, line, reversed_edge
 from .design import MachineDesign
+from .drawn_stator_regions import drawn_stator_regions
 from .errors import Finding, GeometryError
 from .section import Material, Region
 
@@ -191,6 +192,13 @@ def stator_regions(design: MachineDesign, sector_poles: int = 1) -> tuple[Region
 
     The middle of a tooth lies at angle 0, the centre line of slot s at (s + 1/2) 2 pi / slots.
     """
+    outline = design.stator.outline
+    if outline is not None:
+        ring, layers = stator_ring(design), design.winding.layers
+        poles = 2 * ring.pole_pairs
+        return drawn_stator_regions(
+            outline.drawing, layers, ring.circle_radius, poles, sector_poles
+        )
     return pole_regions(slot_outline(design), stator_ring(design), sector_poles)
 
 

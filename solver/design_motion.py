@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from lamwright.geometry.design import BarrierDesign, MachineDesign
+from lamwright.geometry.design_drawing import OutlineKeys
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.remedies import barrier_key, may_be_negative, value_of, with_value
 from lamwright.geometry.rotor import rotor_frame, rotor_regions
@@ -132,7 +133,7 @@ def shape_keys(design: MachineDesign) -> tuple[str, ...]:
         f"{table}.{name}"
         for table in ("stator", "rotor")
         for name in type(getattr(design, table)).model_fields
-        if _is_shape(name)
+        if _is_shape(name) and not _is_of_drawing(design, table, name)
     ]
     for number, barrier in enumerate(design.rotor.barrier, start=1):
         names = [name for name in type(barrier).model_fields if _is_used(barrier, name)]
@@ -150,6 +151,14 @@ def _each(barrier: BarrierDesign, number: int, name: str) -> list[str]:
 
 def _is_shape(name: str) -> bool:
     return name.endswith(("_mm", "_deg"))
+
+
+def _is_of_drawing(design: MachineDesign, table: str, name: str) -> bool:
+    """Whether the key says how a drawing is read, or what a drawing shows: none can be moved."""
+    if name in OutlineKeys.model_fields:
+        return True
+    is_drawn = table == "stator" and design.stator.outline is not None
+    return is_drawn and name != "stack_length_mm"
 
 
 def _is_used(barrier: BarrierDesign, name: str) -> bool:
