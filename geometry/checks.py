@@ -5,10 +5,10 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 `remedies`.
 """
 
-from .barrier_checks import SLACK
 from .design import MachineDesign
 from .detail_checks import detail_faults
 from .errors import Finding
+from .half_checks import SLACK
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of

@@ -41,7 +41,12 @@ def intersections(first: Edge, second: Edge) -> tuple[Point, ...]:
 
 def is_within(edge: Edge, point: Point) -> bool:
     """Whether a point of the unbounded curve lies on the edge itself, ends included."""
-    return -SHARE_TOL <= share_of(edge, point) <= 1.0 + SHARE_TOL
+    if edge.is_line:
+        return -SHARE_TOL <= share_of(edge, point) <= 1.0 + SHARE_TOL
+    # Seen from the centre the middle of the arc lies across the chord: half the cost of a share.
+    middle = math.copysign(1.0, edge.bulge) * -1j * (edge.end - edge.start)
+    off = abs(cmath.phase((point - edge.centre) * middle.conjugate()))
+    return off <= (0.5 + SHARE_TOL) * abs(edge.sweep)
 
 
 def foot(edge: Edge, point: Point) -> Point:

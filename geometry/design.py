@@ -77,18 +77,29 @@ class BarrierMagnetDesign(_Table):
 class BarrierDesign(_Table):
     """One flux barrier; barriers are listed from the rim inward.
 
-    `end_angle_deg` is the angle from the q axis to the centre of the barrier's round end,
-    `depth_mm` the distance on the q axis from the rim to the barrier's outer edge,
-    `tangential_rib_mm` the iron left between the round end and the rim.
-    A straight barrier has a bottom across the q axis and two arms that make `arm_angle_deg`
-    with the q axis, joined by concentric bends of inner radius `bend_radius_mm`.
+    `depth_mm` is the distance on the q axis from the rim to the barrier's outer edge,
+    `thickness_mm` its thickness there and `end_thickness_mm` that at its end,
+    `end_angle_deg` the angle from the q axis to the centre of its end: the middle of the end's
+    thickness, half of it inside the tangential rib, the iron left between barrier and rim.
+
+    Families: an `arc` has circular sides about points of the q axis; a `straight` one a bottom
+    across the q axis and two arms that make `arm_angle_deg` with it, joined by bends of inner
+    radius `bend_radius_mm`; a `vee` two arms and a nose of that inner radius; the sides of a
+    `hyperbolic` one are hyperbolas about the shaft axis, those of a `streamline` one flux lines of
+    a solid disc (`flux_lines`).
+
+    Ends: `round`; `flat`, along the rim; `square`, across the barrier; the last two with fillets.
     """
 
-    shape: Literal["arc", "straight"]
+    shape: Literal["arc", "straight", "vee", "hyperbolic", "streamline"]
     end_angle_deg: Positive
     thickness_mm: Positive
+    end_thickness_mm: Positive | None = None  # default the thickness
     depth_mm: Positive
     tangential_rib_mm: Positive
+    tangential_rib_inner_mm: Positive | None = None  # flat end: at the inner carrier's side
+    end_shape: Literal["round", "flat", "square"] = "round"
+    end_fillet_mm: Positive | None = None  # flat, square; default a quarter of the end's thickness
     radial_ribs: Annotated[int, Field(ge=0, le=4)] = 0
     radial_rib_mm: Positive | None = None  # width of each radial rib; needed when there is one
     radial_rib_offset_mm: Positive | None = None  # q axis to the middle of each of two ribs
@@ -100,7 +111,7 @@ class BarrierDesign(_Table):
     arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = (
         None  # straight; default 90/pole_pairs
     )
-    bend_radius_mm: Positive | None = None  # straight only; default the thickness
+    bend_radius_mm: Positive | None = None  # straight, vee; default the thickness
     magnet: BarrierMagnetDesign | None = None
 
 

@@ -18,7 +18,7 @@ from dataclasses import dataclass
 from .design import BarrierDesign, MachineDesign
 from .design_keys import key_name, replaced, stated
 from .errors import Finding
-from .mid_lines import MM, arm_angle, bend_radius
+from .mid_lines import MM, arm_angle, bend_radius, end_fillet_mm, end_thickness_mm
 
 GRID = 40  # values tried over a key's whole domain
 REFINED = 20  # values tried between the neighbours of the one that lacks least
@@ -89,7 +89,7 @@ def findings(design: MachineDesign, found: Sequence[Fault], faults: Faults) -> l
 
 
 def value_of(design: MachineDesign, key: str) -> float:
-    """The value at `key`; what a straight barrier takes by default where there is none."""
+    """The value at `key`; what a barrier takes by default where there is none."""
     value = stated(design, key)
     if isinstance(value, int | float):
         return float(value)
@@ -125,6 +125,12 @@ def _default(barrier: BarrierDesign, name: str, pole_pairs: int) -> float:
         return math.degrees(arm_angle(barrier, pole_pairs))
     if name == "bend_radius_mm":
         return bend_radius(barrier) / MM
+    if name == "end_thickness_mm":
+        return end_thickness_mm(barrier)
+    if name == "end_fillet_mm":
+        return end_fillet_mm(barrier)
+    if name == "tangential_rib_inner_mm":
+        return barrier.tangential_rib_mm
     return 0.0
 
 

@@ -12,11 +12,11 @@ from collections.abc import Sequence
 from itertools import pairwise
 
 from .bands import Band
-from .barrier_checks import SLACK, Pole
 from .cavities import are_symmetric, joined
 from .curves import Edge, Path
 from .design import BarrierDesign
 from .distances import distance
+from .half_checks import SLACK, Pole
 from .mid_lines import MM
 from .remedies import Fault
 from .rib_cuts import FULL_ROUND_TOL, RibCut, RibSide, mirrored_pair, rib_cuts, rib_sides

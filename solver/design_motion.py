@@ -169,7 +169,11 @@ def _is_used(barrier: BarrierDesign, name: str) -> bool:
         return True
     if name == "fillet_mm":
         return barrier.radial_ribs > 0
-    return name in ("arm_angle_deg", "bend_radius_mm") and barrier.shape == "straight"
+    if name == "end_fillet_mm":
+        return barrier.end_shape != "round"
+    if name == "bend_radius_mm":
+        return barrier.shape in ("straight", "vee")
+    return name == "arm_angle_deg" and barrier.shape == "straight"
 
 
 def moved_mesh(mesh: PlanarMesh, motion: FloatArray, amount: float) -> PlanarMesh:

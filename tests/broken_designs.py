@@ -300,7 +300,7 @@ SHAPES = (
         "barriers that cross",
         "rotor.barrier[2].",
         "thickness_mm",
-        "30",
+        "12",
         "barriers 2 and 3 run into each other; accepted ",
         2,
     ),

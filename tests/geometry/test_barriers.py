@@ -10,11 +10,12 @@ import math
 import pytest
 
 from lamwright.geometry.bands import band_of
+from lamwright.geometry.barrier_sides import TO_RIM, guide_line, seat_of
 from lamwright.geometry.cavities import cut_barrier
 from lamwright.geometry.curves import area, perimeter
 from lamwright.geometry.design import BarrierDesign
 from lamwright.geometry.half_barrier import half_barrier
-from lamwright.geometry.mid_lines import MM, mid_line
+from lamwright.geometry.mid_lines import MM
 from lamwright.geometry.rib_cuts import rib_cuts
 from tests.outlines import b1_barrier, polygon, turns
 
@@ -31,6 +32,11 @@ STRAIGHT = BarrierDesign(
 DEFAULTS = STRAIGHT.model_copy(
     update={"arm_angle_deg": None, "bend_radius_mm": None, "depth_mm": 9.0}
 )
+
+
+def guide(barrier):
+    """The mid-line of a barrier of one thickness."""
+    return guide_line(barrier, seat_of(barrier, R, 2), TO_RIM)
 
 
 def outlines(barrier, **changes):
@@ -60,7 +66,7 @@ def test_b1_has_its_area_and_perimeter():
 
 def test_b1_lies_where_its_definition_puts_it():
     """Cap centres at (33.0211, +-15.3156) mm, concentric sides of 25 and 30 mm; 4 decimals."""
-    cap = mid_line(b1_barrier(), R, 2).cap_centre / MM
+    cap = seat_of(b1_barrier(), R, 2).cap / MM
     assert cap == pytest.approx(33.0211 + 15.3156j, abs=8e-5)
     (path,) = outlines(b1_barrier())
     radii = sorted(edge.radius / MM for edge in path.edges)
@@ -73,7 +79,7 @@ def test_b1_lies_where_its_definition_puts_it():
 @pytest.mark.parametrize("barrier", [b1_barrier(), STRAIGHT, DEFAULTS], ids=["arc", "arms", "u"])
 def test_area_and_perimeter_follow_from_the_mid_line(barrier):
     """A = l t + pi t^2 / 4 and P = 2 l + pi t (Pappus), to rounding."""
-    length = 2.0 * sum(edge.length for edge in mid_line(barrier, R, 2).edges)
+    length = 2.0 * sum(edge.length for edge in guide(barrier))
     (path,) = outlines(barrier)
     t = barrier.thickness_mm * MM
     assert area(path) == pytest.approx(length * t + 0.25 * math.pi * t**2, rel=1e-12)
@@ -140,7 +146,7 @@ def test_farthest_point_leaves_the_tangential_rib(barrier):
 
 def test_arms_of_a_straight_barrier_are_parallel_to_the_d_axes_by_default():
     """The d axis lies at half a pole pitch, 45 degrees, from the q axis of a four-pole rotor."""
-    arm = mid_line(DEFAULTS, R, 2).edges[-1]
+    arm = guide(DEFAULTS)[-1]
     assert arm.is_line
     assert math.degrees(cmath.phase(arm.direction(0.5))) == pytest.approx(45.0, abs=1e-10)
 
@@ -156,7 +162,7 @@ def test_bends_have_the_stated_inner_radius():
     ("changes", "text"),
     [
         ({"depth_mm": 3.0}, "no further out than its bottom"),
-        ({"depth_mm": 60.0}, "no further out than its bottom"),
+        ({"depth_mm": 60.0}, "does not fit between the shaft axis and the rim"),
         ({"arm_angle_deg": 75.0}, "bend does not fit"),
     ],
 )
