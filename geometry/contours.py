@@ -1,6 +1,6 @@
-"""Closed contours of the whole rotor lamination, from the regions of one pole.
+"""Closed contours of the whole rotor lamination, from the poles of the rotor's own period.
 
-Idea: the edges of one pole's rotor iron that lie on the sector's sides are not cut. Without them
+Idea: the edges of one pole's rotor iron that lie on the pole's sides are not cut. Without them
 its outline falls apart into chains that run from side to side, and closed holes. Copies of all
 poles are joined, each chain's end to the start that lies there on the neighbouring pole. A contour
 made of arcs about the shaft axis that close on themselves becomes a full circle of two halves.
@@ -14,7 +14,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from .curves import Edge, Path, Point, area, circle, reversed_path, turned
-from .section import CrossSection, Region
+from .section import CrossSection, rotor_cell, rotor_iron
 
 WELD_TOL = 1e-9  # m, ends closer than this are one point; far below a punch's 1e-5 m
 SIDE_TOL = 1e-9  # rad, of a point's angle to a sector's side; turning errs by 1e-16
@@ -32,7 +32,7 @@ class Contour:
 
 @dataclass(frozen=True, slots=True)
 class _Chain:
-    """Edges from one of the sector's sides (0 or 1) to one of them, with no edge on a side."""
+    """Edges from one of the pole's sides (0 or 1) to one of them, with no edge on a side."""
 
     edges: tuple[Edge, ...]
     start_side: int
@@ -43,18 +43,22 @@ def lamination_contours(section: CrossSection) -> tuple[Contour, ...]:
     """All contours of the rotor lamination, all poles: outer, bore, then barriers pole by pole.
 
     Args:
-        section: one pole in SI units.
+        section: a sector in SI units.
 
     Returns:
         Closed contours in m, layers OUTER_CONTOUR, BORE and BARRIERS.
     """
-    iron = next(region for region in section.rotor if region.name == "rotor_iron")
-    pitch = math.pi / section.pole_pairs
-    poles = 2 * section.pole_pairs
-    chains, closed = _chains(iron, pitch)
-    loops = [_as_circle(loop) for loop in _joined(chains, poles, pitch)]
-    for pole in range(poles):
-        loops += [turned(path, pole * pitch) for path in closed]
+    pitch = section.pole_angle
+    # Each pole of the period in its own frame.
+    period = [
+        _chains(
+            [turned(path, -k * pitch) if k else path for path in (iron.outer, *iron.holes)], pitch
+        )
+        for k, iron in enumerate(rotor_iron(rotor_cell(section)))
+    ]
+    loops = [_as_circle(loop) for loop in _joined([c for c, _ in period], section.poles, pitch)]
+    for pole in range(section.poles):
+        loops += [turned(path, pole * pitch) for path in period[pole % len(period)][1]]
     contours = [Contour(_layer(loop), loop) for loop in loops]
     order = ("OUTER_CONTOUR", "BORE", "BARRIERS")
     return tuple(sorted(contours, key=lambda contour: order.index(contour.layer)))
@@ -87,11 +91,11 @@ def _side_of(point: Point, pitch: float) -> int | None:
     return 1 if abs(abs(angle) - pitch) < SIDE_TOL else None
 
 
-def _chains(iron: Region, pitch: float) -> tuple[list[_Chain], list[Path]]:
-    """Chains between the sides, and paths that touch no side, of one pole."""
+def _chains(paths: Iterable[Path], pitch: float) -> tuple[list[_Chain], list[Path]]:
+    """Chains between the sides, and paths that touch no side, of the iron of one pole."""
     chains: list[_Chain] = []
     closed: list[Path] = []
-    for path in (iron.outer, *iron.holes):
+    for path in paths:
         edges = path.edges
         on_side = [_lies_on_side(edge, pitch) for edge in edges]
         if not any(on_side):
@@ -122,9 +126,9 @@ def _chain(run: Iterable[Edge], pitch: float) -> _Chain:
     return _Chain(edges, start, end)
 
 
-def _joined(chains: Sequence[_Chain], poles: int, pitch: float) -> list[Path]:
-    """Closed paths of chains over all poles."""
-    todo = [(k, pole) for pole in range(poles) for k in range(len(chains))]
+def _joined(period: Sequence[Sequence[_Chain]], poles: int, pitch: float) -> list[Path]:
+    """Closed paths over all poles of the chains of each pole of the period."""
+    todo = [(k, pole) for pole in range(poles) for k in range(len(period[pole % len(period)]))]
     loops = []
     while todo:
         first = current = todo[0]
@@ -132,10 +136,11 @@ def _joined(chains: Sequence[_Chain], poles: int, pitch: float) -> list[Path]:
         while True:
             todo.remove(current)
             k, pole = current
-            edges += turned(Path(chains[k].edges), pole * pitch).edges
+            chain = period[pole % len(period)][k]
+            edges += turned(Path(chain.edges), pole * pitch).edges
             # Over side 1 into the next pole's side 0, over side 0 into the last one's side 1.
-            step = 1 if chains[k].end_side == 1 else -1
-            current = (_next_chain(chains, chains[k]), (pole + step) % poles)
+            onward = (pole + (1 if chain.end_side == 1 else -1)) % poles
+            current = (_next_chain(period[onward % len(period)], chain), onward)
             if current == first:
                 break
         loops.append(_closed(edges))

@@ -156,7 +156,9 @@ def mpa(stress: float) -> str:
 def rib_name(rib: Rib) -> str:
     """A rib as the trade calls it, with its side where there are two."""
     side = rib.name.rsplit("_", 1)[1]
-    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "")
+    pole = pole_of(rib.name)
+    of_pole = f", pole {pole}" if pole > 1 else ""
+    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "") + of_pole
 
 
 def _rotor_silhouette(section: CrossSection) -> ComplexArray:

@@ -16,7 +16,7 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from lamwright.geometry.cut_outs import across, turned_edges
-from lamwright.geometry.section import CrossSection, Rib
+from lamwright.geometry.section import CrossSection, Region, Rib, rotor_cell, rotor_iron
 from lamwright.solver.locate import values_at
 from lamwright.solver.rib_zones import zone_of_node
 from lamwright.solver.types import FloatArray, StressSolution
@@ -42,7 +42,10 @@ class RibStress:
 
 @dataclass(frozen=True, slots=True)
 class RibReport:
-    """All ribs of one pole, and the lamination as a whole, at one speed."""
+    """All ribs of the rotor's own period and the lamination as a whole, at one speed.
+
+    The period is one pole where all are alike.
+    """
 
     speed: float = field(metadata=_unit("speed", "rad/s"))
     yield_strength: float = field(metadata=_unit("yield strength", "Pa"))
@@ -59,6 +62,7 @@ class RibReport:
 
 def rib_report(solution: StressSolution, section: CrossSection, yield_strength: float) -> RibReport:
     """The ribs of `section` under the stress `solution`, against `yield_strength` in Pa."""
+    section = rotor_cell(section)
     zone = zone_of_node(section, solution.mesh)
     place = solution.mesh.nodes[:, 0] + 1j * solution.mesh.nodes[:, 1]
     ribs = []
@@ -118,23 +122,30 @@ def section_stress(rib: Rib, load: FloatArray) -> tuple[float, float, float]:
 def rim_growth(solution: StressSolution, section: CrossSection) -> tuple[float, float, float]:
     """Radial growth in m of the rim on the d axis and on the q axis, and what the gap loses.
 
-    On an axis the outermost iron counts, the bottom of a notch where there is one. The gap loses
-    what the farthest point of the spinning rotor stands out beyond the rotor's radius at rest.
+    On an axis the outermost iron counts, the bottom of a notch where there is one; of unlike poles
+    the largest of each axis. The gap loses what the farthest point of the spinning rotor stands out
+    beyond the rotor's radius at rest.
     """
+    section = rotor_cell(section)
     radius = np.hypot(solution.mesh.nodes[:, 0], solution.mesh.nodes[:, 1])
     outward = np.sum(solution.displacement * solution.mesh.nodes, axis=1) / radius
-    axes = (0.0, 0.5 * math.pi / section.pole_pairs)
-    rim = np.array([_outermost(section, angle) for angle in axes])
+    rim = np.array(
+        [
+            _outermost(iron, (k + share) * section.pole_angle)
+            for k, iron in enumerate(rotor_iron(section))
+            for share in (0.0, 0.5)
+        ]
+    )
     on_axes = values_at(solution.mesh, outward[:, None], np.column_stack([rim.real, rim.imag]))[
         :, 0
     ]
     farthest = float((radius + outward).max())
-    return float(on_axes[0]), float(on_axes[1]), farthest - section.rotor_radius
+    growth_d, growth_q = float(on_axes[::2].max()), float(on_axes[1::2].max())
+    return growth_d, growth_q, farthest - section.rotor_radius
 
 
-def _outermost(section: CrossSection, angle: float) -> complex:
+def _outermost(iron: Region, angle: float) -> complex:
     """The rotor iron's farthest point in m on the ray at `angle` rad."""
-    iron = next(region for region in section.rotor if region.name == "rotor_iron")
     found = across(turned_edges(iron.outer.edges, -angle), 0.0)
     assert found is not None  # the iron reaches from side to side
     return complex(found[1].real * np.exp(1j * angle))

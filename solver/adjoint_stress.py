@@ -15,22 +15,23 @@ Source: derived; adjoint method, textbook matter. Cost: one factorisation, one s
 Axes: n_node, n_elem, n_qp, n_edge free edges, 2 directions, 3 stresses xx yy xy, 6 nodes.
 """
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection
+from lamwright.geometry.section import CrossSection, rotor_cell
 
 from .elastic import ElasticBody, ElasticMaterial, elastic_body, stress_of_strain, summed, von_mises
 from .isoparametric import boundary_edges, points_at, shape, six_points
 from .rib_zones import zone_of_node
+from .rotor_stress import sides_of, spin_centre
 from .stiffness import SupportedBody, supported
-from .supports import coupled_sides, unsupported, with_coupled_sides, with_fixed
+from .supports import unsupported, with_coupled_sides, without_drift
 from .types import FloatArray, IntArray, PlanarMesh
 
 # p of the norm, between a smooth figure and a small bias: 1 % where 8 nodes share the peak.
 SHARPNESS = 200.0
+ON_AXIS_TOL = 1e-6  # of the rotor's radius: far above rounding and a mesh's own unbalance
 # Derivatives along an edge at its start, end and middle by its three nodes, per unit of place.
 EDGE_SLOPE: FloatArray = np.array([[-3.0, -1.0, 4.0], [1.0, 3.0, -4.0], [-1.0, 1.0, 0.0]])
 
@@ -70,15 +71,18 @@ def spinning_pole(
     """Ready to be solved: sides coupled, bore free, no turning about the axis.
 
     Args:
-        section: the pole, for its ribs.
-        mesh: of its iron alone, refined as far as the figure needs.
+        section: a sector, for the ribs.
+        mesh: of the iron of the rotor's period, refined as far as the figure needs.
         material: of the iron.
         speed: rad/s.
+
+    Raises:
+        ValueError: for a rotor without symmetry, which spins about a point that moves with it.
     """
-    sides = coupled_sides(mesh, math.pi / section.pole_pairs)
+    section = rotor_cell(section)
+    sides = sides_of(section, mesh)
     supports = with_coupled_sides(unsupported(mesh), mesh, sides)
-    # The loads have no moment about the axis, so this one support carries nothing.
-    supports = with_fixed(supports, sides.first[:1], 1)
+    supports = without_drift(supports, mesh, sides)
     on_side = np.zeros(len(mesh.nodes), dtype=np.bool_)
     on_side[sides.first] = on_side[sides.second] = True
     edges = boundary_edges(mesh)
@@ -86,7 +90,10 @@ def spinning_pole(
     in_rib = zone_of_node(section, mesh) < len(section.ribs)
     nodes = np.unique(edges)
     counts = nodes[in_rib[nodes] & ~on_side[nodes]]
-    return SpinningPole(supported(elastic_body(mesh, material), supports), edges, counts, speed)
+    body = elastic_body(mesh, material)
+    if abs(spin_centre(body, sides)) > ON_AXIS_TOL * section.rotor_radius:
+        raise ValueError("slopes of the stress of an unbalanced rotor are not computed")
+    return SpinningPole(supported(body, supports), edges, counts, speed)
 
 
 def smoothed_peak(pole: SpinningPole, moved: FloatArray) -> tuple[float, float]:

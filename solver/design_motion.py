@@ -1,4 +1,4 @@
-"""How one pole's meshes and radii follow each length and angle of the design file.
+"""How a sector's meshes and radii follow each length and angle of the design file.
 
 Outlines at a key a little smaller and a little larger are drawn exactly (no checks: 3 ms each) and
 compared edge by edge. Where the shape changes in kind on one side, as when a fillet just fits, the
@@ -11,13 +11,13 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from lamwright.geometry.cross_section import drawn_rotor, drawn_rotor_period, drawn_stator
 from lamwright.geometry.design import BarrierDesign, MachineDesign
 from lamwright.geometry.design_drawing import OutlineKeys
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.remedies import barrier_key, may_be_negative, value_of, with_value
-from lamwright.geometry.rotor import rotor_frame, rotor_regions
-from lamwright.geometry.section import Region
-from lamwright.geometry.stator import stator_regions
+from lamwright.geometry.rotor import rotor_frame
+from lamwright.geometry.section import Region, base_name
 
 from .mesh_motion import (
     EdgeTable,
@@ -98,18 +98,19 @@ def part_motion(mesh: PlanarMesh, design: MachineDesign, draw: Draw) -> PartMoti
 
 
 def draw_rotor(design: MachineDesign) -> tuple[Region, ...]:
-    """The rotor's regions."""
-    return rotor_regions(design)[0]
+    """The rotor's regions, as meshed for the field."""
+    return drawn_rotor(design)
 
 
 def draw_lamination(design: MachineDesign) -> tuple[Region, ...]:
     """The rotor's iron alone, as meshed for stress."""
-    return tuple(region for region in draw_rotor(design) if region.name == "rotor_iron")
+    period = drawn_rotor_period(design)
+    return tuple(region for region in period if base_name(region.name) == "rotor_iron")
 
 
 def draw_stator(design: MachineDesign) -> tuple[Region, ...]:
-    """The stator's regions."""
-    return stator_regions(design)
+    """The stator's regions, as meshed for the field."""
+    return drawn_stator(design)
 
 
 def size_motion(design: MachineDesign, key: str) -> SizeMotion:

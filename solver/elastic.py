@@ -67,13 +67,20 @@ def summed(nodes: IntArray, values: FloatArray, n_node: int) -> FloatArray:
     return out
 
 
-def centrifugal_force(body: ElasticBody, speed: float) -> FloatArray:
-    """Nodal forces (n_node, 2) in N/m of rho omega^2 r at `speed` in rad/s."""
+def centrifugal_force(body: ElasticBody, speed: float, centre: complex = 0j) -> FloatArray:
+    """Nodal forces (n_node, 2) in N/m of rho omega^2 r at `speed` in rad/s, r from `centre`."""
     places, _ = six_points()
-    radius = points_at(body.mesh, places)  # (n_elem, n_qp, 2), m
+    radius = points_at(body.mesh, places) - [centre.real, centre.imag]  # (n_elem, n_qp, 2), m
     pull = (body.density[:, None] * body.quad.weight)[..., None] * speed**2 * radius
     force = np.einsum("qi,eqd->eid", shape(places), pull)
     return summed(body.mesh.elements, force, len(body.mesh.nodes))
+
+
+def mass_centre(body: ElasticBody) -> complex:
+    """Centre of mass in m."""
+    mass = body.density[:, None] * body.quad.weight
+    x, y = np.einsum("eq,eqd->d", mass, points_at(body.mesh, six_points()[0])) / mass.sum()
+    return complex(x, y)
 
 
 def free_strain_force(body: ElasticBody, free_strain: FloatArray) -> FloatArray:

@@ -201,7 +201,7 @@ def _clearances(section: CrossSection, fan: Fan) -> SizeSources:
 def _spacing(section: CrossSection) -> float:
     """Distance in m between places on edges at which the width beside them is looked up."""
     pitch = math.pi * section.circle_radius / section.pole_pairs
-    return min([0.01 * pitch, *(0.5 * rib.width for rib in section.ribs)])
+    return min([0.01 * pitch, *(0.5 * rib.width for rib in rotor_cell(section).ribs)])
 
 
 def _rib_sources(section: CrossSection, fan: Fan, settings: MeshSettings) -> SizeSources:

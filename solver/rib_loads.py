@@ -35,6 +35,7 @@ def rib_loads(
     ribs: Sequence[Rib],
     speed: float,
     free_strain: FloatArray | None = None,
+    centre: complex = 0j,
 ) -> FloatArray:
     """What the iron before each rib's line exerts on the iron behind it, per metre of stack.
 
@@ -46,6 +47,7 @@ def rib_loads(
         ribs: the ribs.
         speed: rad/s.
         free_strain: (n_elem, 6), as in `elastic.free_strain_force`.
+        centre: of spinning, in m.
 
     Returns:
         (n_rib, 3): force in x and y in N/m, moment about the line's middle in N.
@@ -54,14 +56,15 @@ def rib_loads(
     share = (np.arange(SEEDS) + 0.5) / SEEDS
     line = np.concatenate([rib.start + share * (rib.end - rib.start) for rib in ribs])
     seeds = locate(body.mesh, np.column_stack([line.real, line.imag]))[0].reshape(-1, SEEDS)
-    loads = [_rib_load(body, stress, r, s, speed) for r, s in zip(ribs, seeds, strict=True)]
+    spin = speed, centre
+    loads = [_rib_load(body, stress, r, s, spin) for r, s in zip(ribs, seeds, strict=True)]
     return np.array(loads)
 
 
 def _rib_load(
-    body: ElasticBody, stress: FloatArray, rib: Rib, seeds: IntArray, speed: float
+    body: ElasticBody, stress: FloatArray, rib: Rib, seeds: IntArray, spin: tuple[float, complex]
 ) -> FloatArray:
-    mesh = body.mesh
+    mesh, (speed, centre) = body.mesh, spin
     middle = 0.5 * (rib.start + rib.end)
     normal = -1j * (rib.end - rib.start) / rib.width
     place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1] - middle
@@ -81,14 +84,14 @@ def _rib_load(
     load = -np.array([np.sum(q * inner), np.sum(q * _moment(arm, inner))])
     # Centrifugal force at q, less that of all that lies behind the line.
     shapes = shape(six_points()[0])
-    pull = speed**2 * body.density[x, None] * (arm @ shapes.T + middle) * weight  # N/m
+    pull = speed**2 * body.density[x, None] * (arm @ shapes.T + (middle - centre)) * weight  # N/m
     load[0] += np.sum((q @ shapes.T) * pull)
     load[1] += np.sum(_moment((q * arm) @ shapes.T, pull))
     for k in range(len(x)):
         area, first = _behind(arm[k, RING], normal)
         density = speed**2 * body.density[x[k]]
-        load[0] -= density * (first + middle * area)
-        load[1] -= density * _moment(first, middle)
+        load[0] -= density * (first + (middle - centre) * area)
+        load[1] -= density * _moment(first, middle - centre)
     return np.array([load[0].real, load[0].imag, load[1].real])
 
 

@@ -11,7 +11,7 @@ Axes: n_rib ribs, n_point points.
 import numpy as np
 
 from lamwright.geometry.curves import Edge, Path, Point
-from lamwright.geometry.section import CrossSection, Rib
+from lamwright.geometry.section import CrossSection, Rib, base_name, rotor_cell
 
 from .supports import ComplexArray
 from .types import FloatArray, IntArray, PlanarMesh
@@ -20,7 +20,11 @@ ON_EDGE_TOL = 1e-8  # m, far above rounding and far below any rib
 
 
 def zone_of_node(section: CrossSection, mesh: PlanarMesh) -> IntArray:
-    """Number (n_node,) of the rib in `section.ribs` that a node belongs to, n_rib for the rest."""
+    """Number (n_node,) of the rib that a node belongs to, n_rib for the rest of the iron.
+
+    Ribs are those of the rotor's own period, as `section.ribs` has them first.
+    """
+    section = rotor_cell(section)
     place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1]
     away = np.stack([distance_to(rib, place) for rib in section.ribs])
     nearest = np.argmin(away, axis=0)
@@ -38,7 +42,7 @@ def distance_to(rib: Rib, place: ComplexArray) -> FloatArray:
 
 def rib_reach(section: CrossSection, rib: Rib) -> float:
     """How far a rib's zone goes from the line between its ends, in m; at least its width."""
-    paths = [r.outer for r in section.rotor if r.name.startswith("barrier_")]
+    paths = [r.outer for r in section.rotor if base_name(r.name).startswith("barrier_")]
     ends = [_reach_on(path, point) for path in paths for point in (rib.start, rib.end)]
     return max(rib.width, *ends)
 

@@ -128,6 +128,23 @@ def with_coupled_sides(supports: Supports, mesh: PlanarMesh, sides: CoupledSides
     return coupled
 
 
+def without_drift(supports: Supports, mesh: PlanarMesh, sides: CoupledSides) -> Supports:
+    """The same held so that it neither turns about the axis nor, as a whole ring, moves aside.
+
+    Loads in equilibrium leave these supports without a force. Nodes of a bore moved outward
+    cannot move aside already.
+    """
+    if sides.first.size:
+        return with_fixed(supports, sides.first[:1], 1)
+    place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1]
+    one = np.argmin(np.abs(place), keepdims=True)
+    if supports.fixed[one, 0].all():
+        return with_fixed(supports, one, 1)
+    across = np.argmax((place / -place[one]).real * (np.abs(place) < 1.01 * abs(place[one])))
+    held = with_fixed(with_fixed(supports, one, 0), one, 1)
+    return with_roller(held, np.array([across]), complex(1j * (place[across] - place[one[0]])))
+
+
 def leaves_motion(supports: Supports, mesh: PlanarMesh) -> bool:
     """Whether some rigid motion of the body breaks no support.
 
