@@ -42,8 +42,7 @@ def most_torque(
         on_done: called with the share done, 0 to 1, after each field.
     """
     pole_pairs, current = design.pole_pairs, design.duty.rated_current_a
-    slots_per_pole_and_phase = design.stator.slots // (3 * design.rotor.poles)
-    positions = search_positions(pole_pairs, slots_per_pole_and_phase)
+    positions = search_positions(pole_pairs, design.stator.slots)
     fields: list[FieldSolution] = []
 
     def torque_of(gamma: float) -> tuple[float, float]:

@@ -2,11 +2,10 @@
 
 from .checks import check_design
 from .design import MachineDesign
-from .errors import Finding, GeometryError
+from .errors import GeometryError
 from .rotor import rotor_frame, rotor_poles
 from .section import CrossSection, Region
 from .sectors import rotor_sector, smallest_sector
-from .star_of_slots import is_balanced
 from .stator import stator_regions
 from .winding import winding_table
 
@@ -25,7 +24,7 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         ValueError: for a sector that does not stand for the machine.
         GeometryError: with every finding, if the shape cannot be drawn or punched.
     """
-    findings = (*check_design(design), *_sector_findings(design))
+    findings = check_design(design)
     if findings:
         raise GeometryError(findings)
     frame = rotor_frame(design)
@@ -49,16 +48,6 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         sector_poles=covered,
         rotor_period=len(poles),
     )
-
-
-def _sector_findings(design: MachineDesign) -> tuple[Finding, ...]:
-    """One pole can stand for all only where it has a whole number of slots."""
-    slots, poles = design.stator.slots, design.rotor.poles
-    if poles % 2 or slots % poles == 0 or not is_balanced(slots, poles):
-        return ()
-    fault = "the field of fractional slots per pole is not computed yet"
-    remedy = f"accepted multiples of {3 * poles}"
-    return (Finding("sector", "stator.slots", slots, fault, remedy),)
 
 
 def _least(design: MachineDesign, period: int) -> int:

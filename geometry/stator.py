@@ -216,9 +216,10 @@ def pole_regions(slot: Slot, ring: StatorRing, sector_poles: int = 1) -> tuple[R
     """
     count = sector_poles * ring.slots // (2 * ring.pole_pairs)
     turns = [cmath.exp(2j * math.pi * (s + 0.5) / ring.slots) for s in range(count)]
-    # One arc a pole, so that none goes round the whole circle.
-    sides = [cmath.exp(1j * math.pi * k / ring.pole_pairs) for k in range(sector_poles + 1)]
-    side = sides[-1]
+    side = cmath.exp(1j * math.pi * sector_poles / ring.pole_pairs)
+    # Of several poles one arc a slot, so that none goes round the whole circle.
+    inside = range(1, count) if sector_poles > 1 else ()
+    sides = [1.0, *(cmath.exp(2j * math.pi * k / ring.slots) for k in inside), side]
     bore = _bore_edges(slot, ring, turns, side)
     first, last = bore[0].start, bore[-1].end
     inner, outer = complex(ring.circle_radius), complex(ring.outer_radius)

@@ -104,8 +104,9 @@ def write_figure(
 
 
 def section_figure(name: str, section: CrossSection, style: Style) -> Figure:
-    """One pole with its trade names, the whole lamination, dimensions and materials."""
-    figure = _figure((11.0, 6.6), f"{name}: cross-section of one pole", style)
+    """The sector with its trade names, the whole lamination, dimensions and materials."""
+    part = "one pole" if section.sector_poles == 1 else f"{section.sector_poles} poles"
+    figure = _figure((11.0, 6.6), f"{name}: cross-section of {part}", style)
     draw_section(figure.add_axes((0.01, 0.02, 0.74, 0.91)), section, style)
     draw_lamination(figure.add_axes((0.77, 0.5, 0.22, 0.43)), section, style)
     draw_key(figure.add_axes((0.785, 0.03, 0.195, 0.43)), section, style)
@@ -120,7 +121,7 @@ def flux_figure(
     solution: FieldSolution,
     style: Style,
 ) -> Figure:
-    """Flux density and flux lines of one pole."""
+    """Flux density and flux lines of the sector."""
     figure = _figure((9.0, 6.8), f"{name}: flux density and flux lines", style)
     ax = figure.add_axes((0.015, 0.02, 0.845, 0.91))
     scale_ax = figure.add_axes((0.885, 0.12, 0.024, 0.72))
@@ -131,7 +132,7 @@ def flux_figure(
 def stress_figure(
     name: str, section: CrossSection, stress: StressSolution, ribs: RibReport, style: Style
 ) -> Figure:
-    """Stress of one rotor pole, with the most stressed ribs close up."""
+    """Stress of the rotor's own period, with the most stressed ribs close up."""
     figure = _figure((11.0, 6.6), f"{name}: stress of the rotor lamination", style)
     ax = figure.add_axes((0.01, 0.02, 0.62, 0.91))
     scale_ax = figure.add_axes((0.925, 0.12, 0.02, 0.72))

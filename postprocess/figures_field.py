@@ -1,9 +1,10 @@
-"""Flux density and flux lines over one pole, rotor and stator where they truly stand.
+"""Flux density and flux lines over a sector, rotor and stator where they truly stand.
 
 The stator's sector is drawn in its own frame, upright. The rotor stands turned by its angle, so
-two copies of its pole fill the sector: the second with the potential's sign changed, which is
-what antiperiodicity means. Its gap is sheared as in the solution, so both meshes meet edge on edge
-on the turning circle and flux lines run through it unbroken.
+two copies of its sector fill the stator's: the second with the potential's sign changed where the
+sector has an odd number of poles, which is what antiperiodicity means. Its gap is sheared as in the
+solution, so both meshes meet edge on edge on the turning circle and flux lines run through it
+unbroken.
 
 |B| is taken in each element for itself: it jumps where materials meet, and between elements by
 as much as the solution does.
@@ -71,7 +72,7 @@ def draw_flux(
     winding: WindingTable,
     style: Style,
 ) -> None:
-    """Draw |B| in T, flux lines and slot currents of one pole of the stator, and the scale.
+    """Draw |B| in T, flux lines and slot currents of a sector of the stator, and the scale.
 
     Args:
         ax: the drawing, equal axes in mm; the field is rasterised in a vector file.
@@ -102,21 +103,24 @@ def draw_flux(
 def pole_parts(
     section: CrossSection, sector: SectorMesh, solution: FieldSolution, angle: float
 ) -> list[PolePart]:
-    """The stator and as many copies of the rotor's pole as the sector shows."""
-    pole = math.pi / section.pole_pairs
+    """The stator and as many copies of the rotor's sector as the picture shows."""
+    pole = section.sector_angle
     turn = upright(section)
     place = rotor_place(sector, angle)
     nodes = sheared(sector.rotor.nodes, place.rest, section.rotor_radius, section.circle_radius)
     parts = [_part(sector.stator.nodes, sector.stator.elements, solution.a_stator, turn)]
+    if section.is_full_circle:
+        whole = _part(nodes, sector.rotor.elements, solution.a_rotor, turn * cmath.exp(1j * angle))
+        return [*parts, whole]
     first = math.floor(-angle / pole + 1e-9)
-    # Angles from the middle of the pole, where no node is near the cut of the complex plane.
+    # Angles from the middle of the sector, where no node is near the cut of the complex plane.
     lead = np.angle(_complex(nodes) * cmath.exp(-0.5j * pole))[sector.rotor.elements[:, :3]]
     for copy in (first, first + 1):
         start = angle + copy * pole
         ahead = start + 0.5 * pole + lead
         inside = (ahead.max(axis=1) > 0.0) & (ahead.min(axis=1) < pole)
         if np.any(inside):
-            potential = -solution.a_rotor if copy % 2 else solution.a_rotor
+            potential = (sector.side_sign if copy % 2 else 1.0) * solution.a_rotor
             shown = sector.rotor.elements[inside]
             parts.append(_part(nodes, shown, potential, turn * cmath.exp(1j * start)))
     return parts
@@ -148,8 +152,8 @@ def _sector_clip(ax: Axes, section: CrossSection, turn: complex) -> PathPatch:
     from matplotlib.path import Path as InkPath
 
     outer = 1.001 * MM * section.stator_outer_radius
-    pole = math.pi / section.pole_pairs
-    arc = outer * np.exp(1j * np.linspace(0.0, pole, 91)) * turn
+    pole = section.sector_angle
+    arc = outer * np.exp(1j * np.linspace(0.0, pole, 91 * section.sector_poles)) * turn
     points = np.concatenate([[0j], arc, [0j]])
     patch = PathPatch(InkPath(np.stack([points.real, points.imag], axis=1)))
     patch.set_transform(ax.transData)
@@ -245,9 +249,8 @@ def _draw_outlines(
 ) -> None:
     from matplotlib.patches import PathPatch
 
-    pole = math.pi / section.pole_pairs
-    poles = range(2 * section.pole_pairs)
-    turns = [turn * cmath.exp(1j * (angle + k * pole)) for k in poles]
+    pole = section.sector_angle
+    turns = [turn * cmath.exp(1j * (angle + k * pole)) for k in range(section.sectors)]
     for regions, at in ((section.stator, [turn]), (section.rotor, turns)):
         lines = PathPatch(inked(visible_edges(regions, section), at, closed=False), fill=False)
         lines.set(edgecolor=style.ink, linewidth=style.outline, zorder=3)
@@ -339,7 +342,9 @@ def _draw_rotor_axes(
     outer = MM * section.stator_outer_radius
     spans = ((0.0, MM * section.rotor_radius, (9, 2.5, 1.5, 2.5)), (outer, 1.05 * outer, (1, 0)))
     first = math.ceil(-angle / half - 1e-9)
-    last = math.floor(2.0 - angle / half + 1e-9)
+    last = math.floor(2.0 * section.sector_poles - angle / half + 1e-9)
+    if section.is_full_circle:  # the last is the first
+        last = first + 2 * section.poles - 1
     for k in range(first, last + 1):
         along = turn * cmath.exp(1j * (angle + k * half))
         for start, end, dashes in spans:

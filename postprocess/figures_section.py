@@ -1,8 +1,8 @@
-"""The cross-section as a picture: one pole with the trade's names on it, and the whole lamination.
+"""The cross-section as a picture: its sector with the trade's names, and the whole lamination.
 
 Lines and arcs are those of `CrossSection`, not of a mesh. Rotor names stand on the right of the
-pole, stator names on the left; the right half is the mirror image of the left one, so nothing
-goes unnamed.
+sector, stator names on the left. Each part of the rotor's own period is named once; of mirror
+images the right one.
 """
 
 from __future__ import annotations
@@ -13,7 +13,14 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, Region, Rib
+from lamwright.geometry.section import (
+    CrossSection,
+    Region,
+    Rib,
+    base_name,
+    pole_of,
+    rotor_cell,
+)
 
 from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
 from .figures_style import (
@@ -38,7 +45,7 @@ LETTER_ROOM = 1.13  # how far its letters reach
 
 
 def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
-    """Draw one pole, upright, equal axes in mm, with trade names on leader lines.
+    """Draw the sector, upright, equal axes in mm, with trade names on leader lines.
 
     Sets the limits of `ax` so that the names find room beside the pole; the names stand for the
     size that `ax` has at the call.
@@ -57,8 +64,8 @@ def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
 
 def draw_lamination(ax: Axes, section: CrossSection, style: Style) -> None:
     """Draw all poles of rotor and stator, equal axes in mm, without names."""
-    poles = 2 * section.pole_pairs
-    turns = [upright(section) * cmath.exp(2j * math.pi * k / poles) for k in range(poles)]
+    count = section.sectors
+    turns = [upright(section) * cmath.exp(2j * math.pi * k / count) for k in range(count)]
     draw_materials(ax, section, turns, style, line_share=0.5)
     rim = 1.02 * MM * section.stator_outer_radius * np.exp(1j * np.linspace(0, 2 * np.pi, 180))
     place_callouts(ax, rim, [], style)
@@ -115,10 +122,12 @@ def draw_materials(
 
 
 def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
-    """Draw both d axes and the q axis of a pole whose first d axis points along `turn`."""
+    """Draw all d and q axes of a sector whose first d axis points along `turn`."""
     half = math.pi / (2 * section.pole_pairs)
-    for name, angle in (("d axis", 0.0), ("q axis", half), ("d axis", 2 * half)):
-        along = turn * cmath.exp(1j * angle)
+    count = 2 * section.sector_poles + (not section.is_full_circle)
+    for k in range(count):
+        name = "q axis" if k % 2 else "d axis"
+        along = turn * cmath.exp(1j * k * half)
         tip = AXIS_OVERHANG * MM * section.stator_outer_radius * along
         ax.plot(
             [0.0, tip.real],
@@ -144,15 +153,15 @@ def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style
 def draw_cut(
     ax: Axes, section: CrossSection, turn: complex, span: tuple[float, float], style: Style
 ) -> None:
-    """Draw both sides of a pole from one radius to another (m), where the picture is cut."""
-    for angle in (0.0, math.pi / section.pole_pairs):
+    """Draw both sides of a sector from one radius to another (m), where the picture is cut."""
+    for angle in () if section.is_full_circle else (0.0, section.sector_angle):
         ends = MM * np.array(span) * turn * cmath.exp(1j * angle)
         ax.plot(ends.real, ends.imag, color=style.quiet, linewidth=style.hair, zorder=3)
 
 
 def pole_silhouette(section: CrossSection) -> ComplexArray:
-    """A line (n,) in mm around an upright pole and the letters of its axes."""
-    half = math.pi / (2 * section.pole_pairs)
+    """A line (n,) in mm around an upright sector and the letters of its axes."""
+    half = 0.5 * section.sector_angle
     outer = MM * section.stator_outer_radius
     share = np.linspace(0.0, 1.0, 120)
     arc = outer * np.exp(1j * (math.pi / 2 - half + 2 * half * share))
@@ -165,7 +174,7 @@ def pole_silhouette(section: CrossSection) -> ComplexArray:
 
 
 def section_callouts(section: CrossSection, turn: complex) -> list[Callout]:
-    """Names of all parts of an upright pole, each with the point it names, in mm."""
+    """Names of all parts of an upright sector, each with the point it names, in mm."""
     found = _rotor_callouts(section, turn) + _stator_callouts(section, turn)
     return [Callout(c.text, MM * c.anchor, c.side) for c in found]
 
@@ -173,24 +182,34 @@ def section_callouts(section: CrossSection, turn: complex) -> list[Callout]:
 def _rotor_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     found: list[Callout] = []
     anchors: list[complex] = []
-    outlines = _barrier_outlines(section, turn)
-    for number, outline in outlines.items():
+    cell = rotor_cell(section)
+    outlines = _barrier_outlines(cell, turn)
+    for (pole, number), outline in outlines.items():
         anchors.append(_arm_point(outline))
-        found.append(Callout(f"flux barrier {number}", anchors[-1], "right"))
-    found.append(Callout("flux carrier", _carrier_point(section, turn, outlines, anchors), "right"))
-    for rib in _right_hand(section.ribs, turn):
-        text = f"{rib.kind} rib {rib.barrier}, {MM * rib.width:.2f} mm"
+        text = f"flux barrier {number}{pole_words(pole)}"
+        found.append(Callout(text, anchors[-1], "right"))
+    first = {number: outline for (pole, number), outline in outlines.items() if pole == 1}
+    found.append(Callout("flux carrier", _carrier_point(section, turn, first, anchors), "right"))
+    for rib in _right_hand(cell.ribs, turn):
+        words = pole_words(pole_of(rib.name))
+        text = f"{rib.kind} rib {rib.barrier}{words}, {MM * rib.width:.2f} mm"
         found.append(Callout(text, 0.5 * (rib.start + rib.end) * turn, "right"))
     return found
 
 
+def pole_words(pole: int) -> str:
+    """What a name has after it in a pole that is not the first of the rotor's period."""
+    return f", pole {pole}" if pole > 1 else ""
+
+
 def _stator_callouts(section: CrossSection, turn: complex) -> list[Callout]:
-    per_pole = section.slots // (2 * section.pole_pairs)
+    count = section.sector_slots
     pitch = 2.0 * math.pi / section.slots
     copper = [region for region in section.stator if region.material == "copper"]
     reach = [abs(sampled(region.outer)) for region in copper]
     bottom, top = max(r.max() for r in reach), min(r.min() for r in reach)
-    slot = (2 * per_pole) // 3  # left of the middle, clear of the column of labels
+    # Left of the middle, clear of the column of labels.
+    slot = (2 * count) // 3 if section.sector_poles == 1 else count // 2
 
     def at(radius: float, pitches: float) -> complex:
         return radius * cmath.exp(1j * pitch * pitches) * turn
@@ -219,21 +238,25 @@ def _layer(region: Region) -> int:
     return int(region.name.rsplit("_", 1)[1])
 
 
-def _barrier_outlines(section: CrossSection, turn: complex) -> dict[int, list[ComplexArray]]:
-    """Turned outlines (n,) in m of the cavities of each barrier, by its number."""
-    outlines: dict[int, list[ComplexArray]] = {}
+def _barrier_outlines(
+    section: CrossSection, turn: complex
+) -> dict[tuple[int, int], list[ComplexArray]]:
+    """Turned outlines (n,) in m of the cavities of each barrier, by its pole and its number."""
+    outlines: dict[tuple[int, int], list[ComplexArray]] = {}
     for region in section.rotor:
-        if region.name.startswith("barrier_"):
-            number = int(region.name.split("_")[1])
-            outlines.setdefault(number, []).append(sampled(region.outer) * turn)
+        name = base_name(region.name)
+        if name.startswith("barrier_"):
+            key = pole_of(region.name), int(name.split("_")[1])
+            outlines.setdefault(key, []).append(sampled(region.outer) * turn)
     return dict(sorted(outlines.items()))
 
 
 def _arm_point(outlines: list[ComplexArray]) -> complex:
     """A point deep inside the right half of a barrier, two thirds of the way to its end."""
     outline = max(outlines, key=lambda points: float(points.real.max()))
-    right = max(0.0, float(outline.real.min()))
-    wanted = right + 0.66 * (float(outline.real.max()) - right)
+    low, high = float(outline.real.min()), float(outline.real.max())
+    right = max(0.0, low) if high > 0.0 else low
+    wanted = right + 0.66 * (high - right)
     crossings = _crossings(outline, wanted)
     return complex(wanted, 0.5 * float(crossings[-2] + crossings[-1]))
 
@@ -267,10 +290,10 @@ def _carrier_point(
 
 
 def _right_hand(ribs: tuple[Rib, ...], turn: complex) -> list[Rib]:
-    """One rib of each kind and barrier: the one furthest to the right of the upright pole."""
-    best: dict[tuple[str, int], Rib] = {}
+    """One rib of each kind, barrier and pole: the one furthest to the right."""
+    best: dict[tuple[str, int, int], Rib] = {}
     for rib in ribs:
-        key = (rib.kind, rib.barrier)
+        key = (rib.kind, rib.barrier, pole_of(rib.name))
         if key not in best or _x(rib, turn) > _x(best[key], turn):
             best[key] = rib
     return list(best.values())

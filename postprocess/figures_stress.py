@@ -1,4 +1,6 @@
-"""Von Mises stress of one rotor pole, each rib's peak with its value, and ribs close up.
+"""Von Mises stress of the rotor's own period, one pole where all are alike.
+
+Each rib's peak stands beside it with its value, and ribs are drawn close up.
 
 A rib half a millimetre wide is a few pixels of the whole pole, so the most stressed rib, and the
 most stressed one of the other kind where there is one, are drawn again at a scale that shows what
@@ -12,12 +14,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, Rib
+from lamwright.geometry.section import CrossSection, Rib, pole_of, rotor_cell
 from lamwright.solver.isoparametric import boundary_edges
 from lamwright.solver.types import IntArray, StressSolution
 
 from .figures_labels import RULER_FOOT, Callout, Side, draw_note, draw_ruler, place_callouts
-from .figures_section import bare, draw_cut
+from .figures_section import bare, draw_cut, pole_words
 from .figures_style import (
     MM,
     QUARTERS,
@@ -70,6 +72,7 @@ def draw_stress(
         report: the ribs of that solution.
         style: sizes and colours.
     """
+    section = rotor_cell(section)
     turn = upright(section)
     place_callouts(ax, _rotor_silhouette(section), _rib_callouts(report, turn), style, RULER_FOOT)
     shown = np.arange(len(solution.mesh.elements))
@@ -103,6 +106,7 @@ def draw_rib(
     """Draw one rib close up: stress, width in mm, where its peak is; equal axes in mm."""
     from matplotlib.patheffects import Normal, Stroke
 
+    section = rotor_cell(section)
     turn = upright(section)
     middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
     half = _half_side(row)
@@ -156,14 +160,13 @@ def mpa(stress: float) -> str:
 def rib_name(rib: Rib) -> str:
     """A rib as the trade calls it, with its side where there are two."""
     side = rib.name.rsplit("_", 1)[1]
-    pole = pole_of(rib.name)
-    of_pole = f", pole {pole}" if pole > 1 else ""
-    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "") + of_pole
+    words = pole_words(pole_of(rib.name))
+    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "") + words
 
 
 def _rotor_silhouette(section: CrossSection) -> ComplexArray:
-    """A line (n,) in mm around an upright rotor pole and its deformed outline."""
-    half = math.pi / (2 * section.pole_pairs)
+    """A line (n,) in mm around the upright rotor's sector and its deformed outline."""
+    half = 0.5 * section.sector_angle
     share = np.linspace(0.0, 1.0, 90)
     arc = np.exp(1j * (math.pi / 2 - half + 2 * half * share))
     inner = MM * section.shaft_radius * arc
@@ -180,7 +183,7 @@ def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
     found: list[Callout] = []
     middle = []
     for row, anchor, rib in rows:
-        text = f"{rib.kind} rib {rib.barrier}: {mpa(row.peak)}"
+        text = f"{rib.kind} rib {rib.barrier}{pole_words(pole_of(rib.name))}: {mpa(row.peak)}"
         at = (turn * (rib.start + rib.end)).real
         if abs(at) < rib.width:
             middle.append((text, anchor, row.peak == most))
@@ -239,9 +242,9 @@ def _draw_deformed(
     factor = max(step * decade for step in (1.0, 2.0, 5.0) if step * decade <= raw)
     place = _places(solution)
     edges = boundary_edges(solution.mesh)
-    lead = np.angle(place[edges[:, 2]])
-    pole = math.pi / section.pole_pairs
-    edges = edges[(lead > 1e-6) & (lead < pole - 1e-6)]
+    if not section.is_full_circle:  # the cut sides are no outline
+        lead = np.angle(place[edges[:, 2]])
+        edges = edges[(lead > 1e-6) & (lead < section.sector_angle - 1e-6)]
     # The edge's own second-order curve at five places; nodes start, end, middle.
     t = np.linspace(0.0, 1.0, 5)
     shape = np.stack([(1 - t) * (1 - 2 * t), t * (2 * t - 1), 4 * t * (1 - t)])

@@ -92,8 +92,8 @@ def stress_colours() -> LinearSegmentedColormap:
 
 
 def upright(section: CrossSection) -> complex:
-    """The turn (unit complex number) that makes the middle of the pole point up."""
-    return cmath.exp(1j * (math.pi / 2 - math.pi / (2 * section.pole_pairs)))
+    """The turn (unit complex number) that makes the middle of the sector point up."""
+    return cmath.exp(1j * (math.pi / 2 - 0.5 * section.sector_angle))
 
 
 def _bezier(edge: Edge) -> tuple[list[complex], int]:

@@ -10,6 +10,7 @@ import numpy.typing as npt
 
 from .figures_labels import spread
 from .figures_style import Style, pixels_per_point
+from .operating import slot_order
 from .torque import (
     PERIOD_EL,
     TorqueWaveform,
@@ -135,10 +136,10 @@ def draw_spectrum(ax: Axes, waveform: TorqueWaveform, slots: int, style: Style) 
         style: sizes and colours.
     """
     found = spectrum(waveform)
-    per_pole_pair = slots // waveform.pole_pairs
-    is_slot = [order % per_pole_pair == 0 for order in found.order]
+    first = slot_order(waveform.pole_pairs, slots)
+    is_slot = [order % first == 0 for order in found.order]
     for wanted, colour, name in (
-        (True, style.ink, f"slot harmonics (multiples of {per_pole_pair})"),
+        (True, style.ink, f"slot harmonics (multiples of {first})"),
         (False, "#b9c5ce", "others"),
     ):
         rows = [k for k, flag in enumerate(is_slot) if flag is wanted]

@@ -25,6 +25,7 @@ from lamwright.solver.types import FloatArray
 
 DEGREE = math.pi / 180.0
 GRID = 0.005 * DEGREE  # of the search for the maximum
+MOST_CANCELLED = 6  # slot harmonics that a mean must be free of
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,14 +77,27 @@ class TerminalState:
     copper_loss: float  # W, DC resistance
 
 
-def search_positions(pole_pairs: int, slots_per_pole_and_phase: int) -> FloatArray:
+def slot_order(pole_pairs: int, slots: int) -> int:
+    """Electrical order of the first slot harmonic of the torque, a multiple of 6.
+
+    The slots meet the rotor's poles alike lcm(slots, poles) times a turn; with q whole slots per
+    pole and phase that is 6 q a period. A multiple of 6 for every balanced winding, as slots then
+    hold 3 more often than pole pairs do. Source: derived.
+    """
+    return math.lcm(slots, 2 * pole_pairs) // pole_pairs
+
+
+def search_positions(pole_pairs: int, slots: int) -> FloatArray:
     """Mechanical positions in rad whose mean is free of the slot ripple, fewest that do it.
 
-    q + 1 positions over 60 electrical degrees (3 at least): the slot harmonics have orders 6 q k,
-    the mean of M positions lets through orders 6 M k, and q and q + 1 have no common divisor, so
-    the first slot harmonic that gets through is the (q + 1)th. Source: derived.
+    M = n + 1 positions over 60 electrical degrees (3 at least), n = `slot_order` / 6, the number q
+    of slots per pole and phase where that is whole: the slot harmonics have orders 6 n k, the mean
+    lets through orders 6 M k, and n and M have no common divisor, so the first slot harmonic that
+    gets through is the Mth. Where n is over 6, fewer do: the 7th or 8th is small enough. Source:
+    derived.
     """
-    count = max(3, slots_per_pole_and_phase + 1)
+    n = slot_order(pole_pairs, slots) // 6
+    count = max(3, n + 1) if n <= MOST_CANCELLED else 7 if n % 7 else 8
     return np.linspace(0.0, math.pi / 3.0 / pole_pairs, count, endpoint=False)
 
 

@@ -230,7 +230,9 @@ def _crossings(edge: Edge, turn: complex) -> list[tuple[float, float]]:
     start, end = edge.start / turn, edge.end / turn
     found = []
     if edge.is_line:
-        if start.imag * end.imag < 0.0:
+        # A line along the ray, as the side of a pole, is not crossed by its own rounding.
+        is_across = max(abs(start.imag), abs(end.imag)) > WELD_TOL
+        if is_across and start.imag * end.imag < 0.0:
             share = start.imag / (start.imag - end.imag)
             found.append((share, (start + share * (end - start)).real))
     else:

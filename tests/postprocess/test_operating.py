@@ -17,6 +17,7 @@ from lamwright.postprocess.operating import (
     mean_linkage_torque,
     saliency_ratio,
     search_positions,
+    slot_order,
     terminal_state,
 )
 
@@ -177,9 +178,23 @@ def test_torque_and_slope_of_linkages():
 def test_search_positions_cancel_the_slot_ripple(q):
     """Orders 6 q k average to zero up to k = q (derived): a slot ripple of 1 leaves rounding."""
     pole_pairs = 3
-    theta_e = pole_pairs * search_positions(pole_pairs, q)
+    assert slot_order(pole_pairs, 18 * q) == 6 * q
+    theta_e = pole_pairs * search_positions(pole_pairs, 18 * q)
     for k in range(1, q + 1):
         assert np.mean(np.cos(6 * q * k * theta_e + 0.4)) == pytest.approx(0.0, abs=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("slots", "poles", "order"),
+    [(9, 6, 6), (9, 8, 18), (12, 10, 12), (12, 8, 6), (27, 6, 18), (18, 4, 18), (75, 16, 150)],
+)
+def test_fractional_slots_ripple_at_the_common_multiple(slots, poles, order):
+    """lcm(slots, poles) times a turn (derived, the usual rule for cogging); six of them cancel."""
+    assert slot_order(poles // 2, slots) == order
+    theta_e = poles // 2 * search_positions(poles // 2, slots)
+    assert 3 <= theta_e.size <= 8
+    for k in range(1, min(order // 6, 6) + 1):
+        assert np.mean(np.cos(order * k * theta_e + 0.4)) == pytest.approx(0.0, abs=1e-11)
 
 
 def test_saliency_of_a_linear_machine_is_xi():

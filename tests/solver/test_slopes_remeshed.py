@@ -60,8 +60,8 @@ class Loaded:
         self.model = shipped_model(name, scale, 1e-8)
         self.scale = scale
         self.design = self.one.machine.design
-        per_pole_and_phase = self.design.stator.slots // (3 * self.design.rotor.poles)
-        self.positions = search_positions(self.design.pole_pairs, per_pole_and_phase)
+        slots = self.design.stator.slots
+        self.positions = search_positions(self.design.pole_pairs, slots)
         gamma = math.radians(GAMMA_DEG)
         self.currents = self.one.rated * math.cos(gamma), self.one.rated * math.sin(gamma)
 
