@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from lamwright.geometry.design import MachineDesign
+from lamwright.postprocess.magnet_angle import best_magnet_angle, motoring_base
 from lamwright.postprocess.operating import (
     TurnedLinkage,
     best_angle,
@@ -61,6 +62,10 @@ def most_torque(
         mean = TurnedLinkage(*np.mean(linkages, axis=0).tolist())
         return mean_linkage_slope(pole_pairs, current, gamma, mean)
 
-    gamma = best_angle(torque_of).gamma
+    if model.magnet.still_energy > 0.0:
+        bare = solve_point(model, 0.0, 0.0, float(positions[0]))
+        gamma = best_magnet_angle(torque_of, motoring_base(bare.psi_q)).gamma
+    else:
+        gamma = best_angle(torque_of).gamma
     i_d, i_q = dq_currents(current, gamma)
     return AngleFound(gamma, i_d, i_q, tuple(fields[-len(positions) :]), tuple(fields))

@@ -53,6 +53,7 @@ from lamwright.solver.types import FieldSolution
 from .angle import AngleFound, most_torque
 from .desk import Desk, StressWork
 from .lamination import DXF_FILE, write_outline
+from .magnet_work import MagnetWork, magnet_work
 from .point import model_of
 from .pool import Crew
 from .progress import Stopwatch
@@ -105,8 +106,18 @@ class Assessment:
             drawn.append(self._drawn(stage, "torque", torque))
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields)
-        solved = (*found.fields, *fields)
-        return self._written(stage, model, outline, waveform, field_errors, solved, stress, drawn)
+        magnets = self._magnets(model)
+        solved = (*found.fields, *fields, *(f for work in magnets for f in work.fields))
+        return self._written(
+            stage, model, outline, waveform, field_errors, solved, stress, magnets, drawn
+        )
+
+    def _magnets(self, model: MagneticModel) -> tuple[MagnetWork, ...]:
+        """What a machine with magnets needs besides; nothing for one without."""
+        if self.machine.magnet is None:
+            return ()
+        with self.watch.phase("magnets"):
+            return (magnet_work(self.machine, self.section, model, self.crew),)
 
     def _waveform_fields(self, found: AngleFound) -> list[FieldSolution]:
         """Fields at all positions of the waveform, from chains shared by the crew."""
@@ -143,6 +154,7 @@ class Assessment:
         field_errors: FieldErrors,
         fields: Sequence[FieldSolution],
         stress: StressWork,
+        magnets: Sequence[MagnetWork],
         drawn: "Sequence[Future[None]]",
     ) -> Verdict:
         """Write everything; the verdict last, with the time that the rest has taken."""
@@ -152,14 +164,17 @@ class Assessment:
             orders = spectrum(waveform)
             write_text(stage / ORDERS_FILE, spectrum_csv(orders, waveform.mean))
             write_text(stage / RIBS_FILE, ribs_csv(stress.report))
+            for work in magnets:
+                work.write(stage)
         with watch.phase("pictures"):
             for figure in drawn:
                 figure.result()
         cards = (machine.rotor_steel, machine.stator_steel)
-        magnetic, rotor = magnetic_figures(waveform), stress_figures(stress.report)
+        bare_psi_q = sum(work.record.psi_q for work in magnets)
+        magnetic, rotor = magnetic_figures(waveform, bare_psi_q), stress_figures(stress.report)
         terminal = terminal_figures(machine.design, magnetic)
         bars = {
-            **magnetic_errors(magnetic, field_errors),
+            **magnetic_errors(magnetic, field_errors, bare_psi_q),
             **terminal_errors(machine.design, magnetic, terminal, field_errors),
             **stress_errors(stress.report, stress.finer, stress.zone_errors),
         }
@@ -178,9 +193,17 @@ class Assessment:
                 model.sector, unknowns, fields, len(waveform.torque), stress.solution
             ),
             outcomes=judged(machine.design.limits, magnetic, rotor),
-            cautions=cautions(magnetic, terminal, rotor, cards, bars),
+            cautions=(
+                *(line for work in magnets for line in work.cautions(machine)),
+                *cautions(magnetic, terminal, rotor, cards, bars),
+            ),
             times=watch.times,
             errors=bars,
+            magnets=tuple(
+                work.figures(machine, self.section, model, waveform.i_d, waveform.i_q)
+                for work in magnets
+            ),
+            magnet_states=tuple(state for work in magnets for state in work.states),
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
         return verdict

@@ -19,6 +19,7 @@ SHARES = {
     "stress": 0.0,
     "torque waveform": 0.36,
     "error bars": 0.2,
+    "magnets": 0.0,  # only where there are any
     "files": 0.01,
     "pictures": 0.03,
 }

@@ -14,6 +14,7 @@ from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
+from lamwright.postprocess.quantities import Figure
 from lamwright.postprocess.verdict import Outcome, Verdict, all_figures
 
 from .lines import number, valued
@@ -33,6 +34,15 @@ GLANCE = (
     "speed_overspeed_rpm",
     "speed_yield_begins_rpm",
     "radial_growth_um",
+)
+MAGNET_GLANCE = (
+    "no_load_linkage_fundamental_vs",
+    "back_emf_v",
+    "cogging_torque_nm",
+    "magnet_torque_nm",
+    "magnet_mass_kg",
+    "demagnetising_current_a",
+    "magnet_below_knee_percent",
 )
 
 
@@ -88,7 +98,7 @@ def _verdict_table(verdict: Verdict) -> Table:
     table.add_section()
     figures = all_figures(verdict)
     supply = figures["supply_voltage_v"]
-    for key in GLANCE:
+    for key in _glance(figures):
         limit, mark = "", Text("")
         if key == "terminal_voltage_v":
             limit = f"<= {number(supply.value)} V"
@@ -96,6 +106,11 @@ def _verdict_table(verdict: Verdict) -> Table:
             mark = Text("over supply", "yellow") if over else Text("")
         table.add_row(figures[key].label, valued(figures[key]), _bar(verdict, key), limit, mark)
     return table
+
+
+def _glance(figures: dict[str, Figure]) -> list[str]:
+    """Keys of the figures to show; those of magnets only where there are any."""
+    return [*GLANCE, *(key for key in MAGNET_GLANCE if key in figures)]
 
 
 def _bar(verdict: Verdict, key: str) -> str:

@@ -28,12 +28,20 @@ if TYPE_CHECKING:
     from _typeshed import DataclassInstance
 
 
-def magnetic_errors(magnetic: MagneticFigures, errors: FieldErrors) -> dict[str, float]:
-    """Errors of the magnetic figures by their keys."""
+def magnetic_errors(
+    magnetic: MagneticFigures, errors: FieldErrors, magnet_psi_q: float = 0.0
+) -> dict[str, float]:
+    """Errors of the magnetic figures by their keys.
+
+    Args:
+        magnetic: figures at the operating point.
+        errors: of the waveform that they are of.
+        magnet_psi_q: mean psi_q at no load in V s, taken as true.
+    """
     m = magnetic
 
     def saliency(psi_d: float, psi_q: float) -> float:
-        return saliency_ratio(m.i_d, m.i_q, psi_d, psi_q)
+        return saliency_ratio(m.i_d, m.i_q, psi_d, psi_q - magnet_psi_q)
 
     return _by_key(
         m,

@@ -132,20 +132,27 @@ def mean_linkage_slope(
     return torque, 1.5 * pole_pairs * change
 
 
+# Angles tried in rad, torques and slopes there, settings -> angle of most torque.
+Predict = Callable[[Sequence[float], Sequence[tuple[float, float]], AngleSettings], float]
+
+
 def best_angle(
-    torque_of: Callable[[float], tuple[float, float]], settings: AngleSettings | None = None
+    torque_of: Callable[[float], tuple[float, float]],
+    settings: AngleSettings | None = None,
+    predict: Predict | None = None,
 ) -> AngleSearch:
     """The current angle of most torque at constant current.
 
     Args:
         torque_of: current angle in rad -> mean torque in N m and its slope in N m/rad.
         settings: first angle, bounds and tolerance.
+        predict: another prediction than that of the file's head.
 
     Raises:
         NotConverged: the prediction still moves after `most_angles` angles, or rests at a bound.
         LamwrightError: no motoring torque: the rotor has no saliency along its d axis.
     """
-    use = settings or AngleSettings()
+    use, forecast = settings or AngleSettings(), predict or _predicted
     tried: list[float] = []
     values: list[tuple[float, float]] = []
     predicted = use.first
@@ -156,7 +163,7 @@ def best_angle(
         if torque <= 0.0:
             tell = f"torque {torque:.3g} N m at {predicted / DEGREE:.0f} el deg"
             raise LamwrightError(f"the rotor has no saliency along its d axis: {tell}")
-        predicted = _predicted(tried, values, use)
+        predicted = forecast(tried, values, use)
         if len(tried) > 1 and abs(predicted - tried[-1]) < use.settled:
             if use.least + use.tolerance < predicted < use.most - use.tolerance:
                 torques, slopes = zip(*values, strict=True)
@@ -166,14 +173,21 @@ def best_angle(
     raise NotConverged(text, tuple(torque for torque, _ in values))
 
 
+def chosen_angles(
+    tried: Sequence[float], values: Sequence[tuple[float, float]], use: AngleSettings
+) -> list[int]:
+    """Numbers of the one or two best angles tried."""
+    best = sorted(range(len(tried)), key=lambda k: -values[k][0])
+    # Of two angles side by side the curvature between them would be their rounding's.
+    others = [k for k in best if abs(tried[k] - tried[best[0]]) > use.apart]
+    return [best[0], *others[:1]]
+
+
 def _predicted(
     tried: Sequence[float], values: Sequence[tuple[float, float]], use: AngleSettings
 ) -> float:
     """Maximum of the interpolated torque through the one or two best angles."""
-    best = sorted(range(len(tried)), key=lambda k: -values[k][0])
-    # Of two angles side by side the curvature between them would be their rounding's.
-    others = [k for k in best if abs(tried[k] - tried[best[0]]) > use.apart]
-    chosen = [best[0], *others[:1]]
+    chosen = chosen_angles(tried, values, use)
     gamma = np.array([tried[k] for k in chosen])
     torque, slope = np.array([values[k] for k in chosen]).T
     law = _inverse_law(gamma, torque, slope)

@@ -13,6 +13,9 @@ if TYPE_CHECKING:
     from _typeshed import DataclassInstance
 
 
+RPM = 30.0 / math.pi  # 1/min per rad/s
+
+
 @dataclass(frozen=True, slots=True)
 class Shown:
     """How a field leaves the program: `value * scale` in `unit`."""

@@ -15,14 +15,19 @@ from .torque import TorqueWaveform, coenergy_difference, ripple, ripple_of_sampl
 from .verdict import RPM, MagneticFigures, SolverFigures, StressFigures, TerminalFigures
 
 
-def magnetic_figures(waveform: TorqueWaveform) -> MagneticFigures:
-    """Figures of a waveform whose currents are those of the operating point."""
+def magnetic_figures(waveform: TorqueWaveform, magnet_psi_q: float = 0.0) -> MagneticFigures:
+    """Figures of a waveform whose currents are those of the operating point.
+
+    Args:
+        waveform: at the operating point.
+        magnet_psi_q: mean psi_q at no load in V s, which is left out of the saliency.
+    """
     w = waveform
     psi_d, psi_q = float(np.mean(w.psi_d)), float(np.mean(w.psi_q))
     return MagneticFigures(
         torque=w.mean,
         ripple=ripple(w),
-        saliency=saliency_ratio(w.i_d, w.i_q, psi_d, psi_q),
+        saliency=saliency_ratio(w.i_d, w.i_q, psi_d, psi_q - magnet_psi_q),
         gamma=math.atan2(w.i_q, w.i_d),
         current=math.hypot(w.i_d, w.i_q),
         i_d=w.i_d,

@@ -7,6 +7,7 @@ import numpy as np
 from lamwright.solver.types import FieldSolution
 
 from .files import csv_text
+from .no_load import LinkageSpectrum, NoLoad
 from .operating import mean_linkage_torque
 from .ribs import RibReport
 from .torque import TorqueSpectrum, TorqueWaveform, coenergy_torque, linkage_torque
@@ -27,6 +28,7 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
         "limits": {outcome.key: outcome.limit for outcome in verdict.outcomes},
         "outcomes": {outcome.key: _outcome_record(outcome) for outcome in verdict.outcomes},
         "torque_harmonics": _spectrum_record(spectrum),
+        **_magnet_records(verdict),
         "estimates": [key for key, figure in figures.items() if figure.is_estimate],
         "cautions": list(verdict.cautions),
         "outline_dxf": verdict.outline_dxf,
@@ -63,6 +65,42 @@ def _spectrum_record(spectrum: TorqueSpectrum) -> list[dict[str, float]]:
             spectrum.order, spectrum.amplitude, spectrum.phase, strict=True
         )
     ]
+
+
+def _magnet_records(verdict: Verdict) -> dict[str, object]:
+    """What each magnet has at the demagnetising current; nothing where there is no magnet."""
+    states = [
+        {
+            "magnet": state.name,
+            "area_mm2": state.area * MM**2,
+            "below_knee_percent": 100.0 * state.share_below,
+            "flux_density_low_t": state.flux_low,
+            "flux_density_mean_t": state.flux_mean,
+        }
+        for state in verdict.magnet_states
+    ]
+    return {"magnets": states} if states else {}
+
+
+def no_load_csv(record: NoLoad) -> str:
+    """Linkage of a phase over one electrical period, and torque where it was computed, no load."""
+    torques = [f"{value:.9g}" for value in record.cogging]
+    torques += [""] * (record.psi.size - len(torques))
+    rows = [
+        [f"{angle / DEGREE:.9g}", f"{psi:.9g}", torque]
+        for angle, psi, torque in zip(record.angle_el, record.psi, torques, strict=True)
+    ]
+    return csv_text(["angle_el_deg", "psi_phase_vs", "torque_nm"], rows)
+
+
+def linkage_orders_csv(spectrum: LinkageSpectrum) -> str:
+    """One row for each electrical order of a phase's linkage at no load."""
+    first = spectrum.amplitude[0]
+    rows = [
+        [str(order), f"{amplitude:.6g}", f"{100.0 * amplitude / first:.6g}"]
+        for order, amplitude in zip(spectrum.order, spectrum.amplitude, strict=True)
+    ]
+    return csv_text(["order_el", "psi_phase_vs", "percent_of_fundamental"], rows)
 
 
 def point_record(solution: FieldSolution, pole_pairs: int) -> dict[str, object]:

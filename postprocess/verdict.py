@@ -6,12 +6,17 @@ The figures stand in groups by what they are of; see `quantities` for how a figu
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design import LimitsDesign
 
+from .demagnetisation import MagnetState
+from .magnet_figures import MagnetFigures
+from .quantities import RPM as RPM
 from .quantities import Figure, OutlineFigures, figures_of, shown_as, shown_estimate
 
-RPM = 30.0 / math.pi  # 1/min per rad/s
+if TYPE_CHECKING:
+    from _typeshed import DataclassInstance
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -169,6 +174,8 @@ class Verdict:
     cautions: tuple[str, ...]
     times: tuple[PhaseTime, ...]
     errors: Mapping[str, float] = field(default_factory=dict)  # by the figure's key, in its unit
+    magnets: tuple[MagnetFigures, ...] = ()  # one where the machine has magnets
+    magnet_states: tuple[MagnetState, ...] = ()  # of each magnet at the demagnetising current
 
     @property
     def passes(self) -> bool:
@@ -178,12 +185,13 @@ class Verdict:
 
 def all_figures(verdict: Verdict) -> dict[str, Figure]:
     """Every figure of the verdict by its key, in order."""
-    groups = (
+    groups: tuple[DataclassInstance, ...] = (
         verdict.magnetic,
         verdict.terminal,
         verdict.stress,
         verdict.outline,
         verdict.solver,
+        *verdict.magnets,
     )
     return {figure.key: figure for group in groups for figure in figures_of(group)}
 

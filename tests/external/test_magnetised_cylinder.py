@@ -144,7 +144,7 @@ def test_demagnetisation_of_a_cylinder() -> None:
         solution = solve_point(model, current, 0.0, 0.2)
         (state,) = magnet_states(model.sector.rotor, regions, solution.a_rotor, LAW)
         assert state.share_below == share
-        assert state.flux_least == pytest.approx(own + slope * current, abs=1e-4 * own)
+        assert state.flux_low == pytest.approx(own + slope * current, abs=1e-4 * own)
         assert state.area == pytest.approx(0.5 * math.pi * a2, rel=1e-5)
 
 

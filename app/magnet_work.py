@@ -1,0 +1,107 @@
+"""The fields that only a machine with magnets needs: without current, and against the magnets."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import partial
+from pathlib import Path
+
+from lamwright.geometry.design_file import Machine
+from lamwright.geometry.section import CrossSection
+from lamwright.postprocess.demagnetisation import (
+    MagnetState,
+    magnet_states,
+    opposing_angle,
+    worst_states,
+)
+from lamwright.postprocess.files import write_text
+from lamwright.postprocess.magnet_cautions import magnet_cautions
+from lamwright.postprocess.magnet_figures import (
+    MagnetFigures,
+    demagnetising_current,
+    magnet_figures,
+)
+from lamwright.postprocess.no_load import NoLoad, linkage_spectrum, no_load, no_load_positions
+from lamwright.postprocess.operating import dq_currents
+from lamwright.postprocess.tables import linkage_orders_csv, no_load_csv
+from lamwright.solver.chains import OperatingPoint
+from lamwright.solver.field import MagneticModel
+from lamwright.solver.types import FieldSolution
+
+from .desk import Desk
+from .pool import Crew
+
+NO_LOAD_FILE, LINKAGE_ORDERS_FILE = "no_load.csv", "no_load_orders.csv"
+CHAINS = 3  # that positions are shared out in; fixed, so that results do not depend on the crew
+# Over 60 electrical degrees, every third of the no-load's: the worst of them counts.
+STRIDE = 3
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class MagnetWork:
+    """No load and demagnetisation of a machine with magnets."""
+
+    record: NoLoad
+    states: tuple[MagnetState, ...]  # of each magnet at its worst position
+    fields: tuple[FieldSolution, ...]
+
+    def write(self, folder: Path) -> None:
+        """Linkage over the period and its harmonics as CSV."""
+        write_text(folder / NO_LOAD_FILE, no_load_csv(self.record))
+        spectrum = linkage_spectrum(self.record)
+        write_text(folder / LINKAGE_ORDERS_FILE, linkage_orders_csv(spectrum))
+
+    def cautions(self, machine: Machine) -> tuple[str, ...]:
+        """What a reader should be wary of, for these magnets."""
+        assert machine.magnet is not None
+        return magnet_cautions(machine.magnet, self.states)
+
+    def figures(
+        self, machine: Machine, section: CrossSection, model: MagneticModel, i_d: float, i_q: float
+    ) -> MagnetFigures:
+        """Its figures; the magnet torque at the currents given (A)."""
+        law = model.settings.magnet
+        assert machine.magnet is not None
+        assert law is not None
+        return magnet_figures(
+            machine.design,
+            machine.magnet,
+            law,
+            self.record,
+            self.states,
+            section.sectors,
+            (i_d, i_q),
+        )
+
+
+def magnet_work(
+    machine: Machine, section: CrossSection, model: MagneticModel, crew: Crew[Desk]
+) -> MagnetWork:
+    """Fields of a machine with magnets, shared by the crew.
+
+    The demagnetising current flows along the axis that opposes the mean no-load linkage.
+    """
+    law = model.settings.magnet
+    assert law is not None
+    positions = no_load_positions(section.pole_pairs, section.rotor_period).tolist()
+    bare = _solved(crew, 0.0, 0.0, positions)
+    record = no_load(bare, section.rotor_period)
+    gamma = opposing_angle(record.psi_d, record.psi_q)
+    i_d, i_q = dq_currents(demagnetising_current(machine.design), gamma)
+    opposed = _solved(crew, i_d, i_q, positions[::STRIDE])
+    rotor = model.sector.rotor
+    states = [magnet_states(rotor, section.rotor, field.a_rotor, law) for field in opposed]
+    return MagnetWork(record, worst_states(states), (*bare, *opposed))
+
+
+def _solved(
+    crew: Crew[Desk], i_d: float, i_q: float, positions: Sequence[float]
+) -> list[FieldSolution]:
+    points = [OperatingPoint(i_d, i_q, position) for position in positions]
+    share = -(-len(points) // CHAINS)
+    tasks = [partial(_chain, points[at : at + share]) for at in range(0, len(points), share)]
+    done = crew.share(tasks, lambda count: None)
+    return [field for chain in done for field in chain]
+
+
+def _chain(points: Sequence[OperatingPoint], desk: Desk) -> tuple[FieldSolution, ...]:
+    return desk.chain(points, None)
