@@ -16,6 +16,7 @@ from rich.table import Table
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import placed, read_design
 from lamwright.geometry.errors import GeometryError
+from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import (
     WindingTable,
     end_winding_inductance,
@@ -23,7 +24,6 @@ from lamwright.geometry.winding import (
     winding_factor,
     winding_table,
 )
-from lamwright.postprocess.files import write_text
 
 PHASES = "ABC"
 LEAST_ORDER = 19  # shown at the least: the belt harmonics up to the third pair

@@ -7,13 +7,13 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.demagnetisation import (
     MagnetState,
     magnet_states,
     opposing_angle,
     worst_states,
 )
-from lamwright.postprocess.files import write_text
 from lamwright.postprocess.magnet_cautions import magnet_cautions
 from lamwright.postprocess.magnet_figures import (
     MagnetFigures,
