@@ -14,6 +14,7 @@ from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
 from .rotor_checks import barrier_faults, rotor_faults
 from .slot_checks import stator_faults
+from .unlike_poles import of_all_poles
 from .winding import winding_findings
 
 
@@ -39,7 +40,15 @@ def _ring_faults(design: MachineDesign) -> list[Fault]:
     disc = _disc_faults(design)
     if disc or design.rotor.poles % 2:
         return disc
-    return rotor_faults(design) + detail_faults(design) or magnet_faults(design)
+    return rotor_faults(design) + _detail_faults(design) or _magnet_faults(design)
+
+
+def _detail_faults(design: MachineDesign) -> list[Fault]:
+    return of_all_poles(design, detail_faults)
+
+
+def _magnet_faults(design: MachineDesign) -> list[Fault]:
+    return of_all_poles(design, magnet_faults)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
@@ -47,10 +56,8 @@ def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
     scale = _scale_faults(design)
     if scale:
         return scale
-    number = barrier_number(key)
-    if number is not None:
-        faults = barrier_faults(design, number) + detail_faults(design)
-        return faults or magnet_faults(design)
+    if barrier_number(key) is not None:
+        return barrier_faults(design, key) + _detail_faults(design) or _magnet_faults(design)
     if key in SCALES:
         return _shape_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

@@ -74,6 +74,15 @@ class BarrierMagnetDesign(_Table):
     polarity: Literal["inward", "outward"] = "inward"
 
 
+class OtherHalfDesign(_Table):
+    """What the clockwise half of a barrier has unlike the other one."""
+
+    end_angle_deg: Positive | None = None
+    tangential_rib_mm: Positive | None = None
+    arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = None
+    bend_radius_mm: Positive | None = None
+
+
 class BarrierDesign(_Table):
     """One flux barrier; barriers are listed from the rim inward.
 
@@ -113,6 +122,7 @@ class BarrierDesign(_Table):
     )
     bend_radius_mm: Positive | None = None  # straight, vee; default the thickness
     magnet: BarrierMagnetDesign | None = None
+    other_half: OtherHalfDesign | None = None  # default: the mirror image
 
 
 class RotorDesign(_Table):
@@ -125,6 +135,8 @@ class RotorDesign(_Table):
     sheet_thickness_mm: Positive
     stacking_factor: Annotated[float, Field(gt=0.8, le=1.0)] = 0.97  # rotor and stator
     barrier: Annotated[tuple[BarrierDesign, ...], Field(min_length=1, max_length=6)]
+    # Of every second pole; without them all poles are alike.
+    alternate_barrier: Annotated[tuple[BarrierDesign, ...], Field(max_length=6)] = ()
     notch: Annotated[tuple[NotchDesign, ...], Field(max_length=12)] = ()
     hole: Annotated[tuple[HoleDesign, ...], Field(max_length=12)] = ()
     keyway: KeywayDesign | None = None

@@ -29,6 +29,7 @@ NOT_ENOUGH = ", then other values must change too"
 ROUNDING = 1e-4  # of the last decimal: an end found by halving is let reach its round number
 
 
+_BARRIER = r"rotor\.(?:alternate_)?barrier\[(\d+)\]"
 Identity = tuple[str, str]  # code and first key of a fault
 
 # Key: least and most, mm. Outside, a number is a slip of the pen: beyond any machine built, and
@@ -93,10 +94,14 @@ def value_of(design: MachineDesign, key: str) -> float:
     value = stated(design, key)
     if isinstance(value, int | float):
         return float(value)
-    number = barrier_number(key)
-    if number is None:
+    table = re.match(_BARRIER, key)
+    barrier = stated(design, table[0]) if table else None
+    if not isinstance(barrier, BarrierDesign):
         return 0.0
-    return _default(design.rotor.barrier[number - 1], key_name(key), design.pole_pairs)
+    own = getattr(barrier, key_name(key), None)  # what an unlike half does not state
+    if isinstance(own, int | float):
+        return float(own)
+    return _default(barrier, key_name(key), design.pole_pairs)
 
 
 def with_value(design: MachineDesign, key: str, value: float) -> MachineDesign:
@@ -116,7 +121,7 @@ def barrier_key(number: int, name: str) -> str:
 
 def barrier_number(key: str) -> int | None:
     """Which barrier a key belongs to, from 1; None for keys of other tables."""
-    match = re.match(r"rotor\.barrier\[(\d+)\]\.", key)
+    match = re.match(_BARRIER, key)
     return int(match[1]) if match else None
 
 

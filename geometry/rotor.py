@@ -13,11 +13,12 @@ from .bands import band_of
 from .cavities import cut_barrier
 from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
-from .half_barrier import HalfBarrier, half_barrier
+from .half_barrier import HalfBarrier
 from .magnets import with_magnets
 from .rib_cuts import rib_cuts
 from .rotor_outline import RotorOutline, rotor_outline
 from .section import Region, Rib
+from .unlike_poles import alternate_pole, halves
 
 MM = 1e-3  # m
 LETTERS = "abcde"
@@ -59,7 +60,8 @@ def rotor_poles(
     The far side of a pole has the same edges as the near side of the next one, the last pole's
     as that of the first.
     """
-    return (rotor_regions(design),)
+    other = alternate_pole(design)
+    return tuple(rotor_regions(pole) for pole in (design, other) if pole is not None)
 
 
 def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib, ...]]:
@@ -102,9 +104,9 @@ def cavity_names(number: int, count: int) -> tuple[str, ...]:
 def _barrier(
     number: int, barrier: BarrierDesign, frame: RotorFrame
 ) -> tuple[list[Path], list[Rib]]:
-    half = half_barrier(barrier, frame.rotor_radius, frame.pole_pairs)
-    cut = cut_barrier(band_of(half, half), rib_cuts(barrier))
-    ribs = _tangential_ribs(number, half, half) + [
+    upper, lower = halves(barrier, frame.rotor_radius, frame.pole_pairs)
+    cut = cut_barrier(band_of(upper, lower), rib_cuts(barrier))
+    ribs = _tangential_ribs(number, upper, lower) + [
         Rib(f"radial_{number}_{letter}", "radial", number, start, end)
         for letter, (start, end) in zip(LETTERS, cut.ribs, strict=False)
     ]
