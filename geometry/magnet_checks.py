@@ -19,7 +19,20 @@ NO_PLACE = 1.0  # lack of a block without a place: more than any that has one
 
 def has_magnets(design: MachineDesign) -> bool:
     """Whether any barrier holds a magnet."""
-    return any(barrier.magnet is not None for barrier in design.rotor.barrier)
+    return _first_magnet(design) is not None
+
+
+def _first_magnet(design: MachineDesign) -> tuple[str, BarrierMagnetDesign] | None:
+    """The table and the first magnet of the pole, or else of every second pole."""
+    rotor = design.rotor
+    for name, barriers in (
+        ("barrier", rotor.barrier),
+        ("alternate_barrier", rotor.alternate_barrier),
+    ):
+        for number, barrier in enumerate(barriers, start=1):
+            if barrier.magnet is not None:
+                return f"rotor.{name}[{number}].magnet", barrier.magnet
+    return None
 
 
 def magnet_faults(design: MachineDesign) -> list[Fault]:
@@ -48,12 +61,12 @@ def magnet_faults(design: MachineDesign) -> list[Fault]:
 def magnet_findings(design: MachineDesign) -> list[Finding]:
     """Magnets without a card, a card without magnets, and keys that need them."""
     found = []
-    if has_magnets(design) and design.magnet is None:
-        number = next(k for k, b in enumerate(design.rotor.barrier, start=1) if b.magnet)
-        key, width = barrier_key(number, "magnet.width_mm"), _magnet(design, number).width_mm
+    first = _first_magnet(design)
+    if first is not None and design.magnet is None:
+        key, width = f"{first[0]}.width_mm", first[1].width_mm
         remedy = "add a table [magnet] with card and temperature_c"
         found.append(Finding("magnet_card_missing", key, width, "no magnet card", remedy))
-    if has_magnets(design):
+    if first is not None:
         return found
     if design.magnet is not None:
         remedy = "remove the table [magnet], or add [rotor.barrier.magnet] to a barrier"
@@ -65,12 +78,6 @@ def magnet_findings(design: MachineDesign) -> list[Finding]:
         key, text = "duty.demagnetising_current_a", "no barrier holds a magnet"
         found.append(Finding("magnet_unused", key, current, text, "remove it"))
     return found
-
-
-def _magnet(design: MachineDesign, number: int) -> BarrierMagnetDesign:
-    magnet = design.rotor.barrier[number - 1].magnet
-    assert magnet is not None
-    return magnet
 
 
 def _without_magnets(design: MachineDesign) -> MachineDesign:

@@ -12,10 +12,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from lamwright.geometry.cross_section import drawn_rotor, drawn_rotor_period, drawn_stator
-from lamwright.geometry.design import BarrierDesign, MachineDesign
+from lamwright.geometry.design import BarrierDesign, MachineDesign, OtherHalfDesign
 from lamwright.geometry.design_drawing import OutlineKeys
 from lamwright.geometry.errors import GeometryError
-from lamwright.geometry.remedies import barrier_key, may_be_negative, value_of, with_value
+from lamwright.geometry.remedies import may_be_negative, value_of, with_value
 from lamwright.geometry.rotor import rotor_frame
 from lamwright.geometry.section import Region, base_name
 
@@ -136,18 +136,23 @@ def shape_keys(design: MachineDesign) -> tuple[str, ...]:
         for name in type(getattr(design, table)).model_fields
         if _is_shape(name) and not _is_of_drawing(design, table, name)
     ]
-    for number, barrier in enumerate(design.rotor.barrier, start=1):
-        names = [name for name in type(barrier).model_fields if _is_used(barrier, name)]
-        keys += [key for name in names for key in _each(barrier, number, name)]
+    for table in ("barrier", "alternate_barrier"):
+        for number, barrier in enumerate(getattr(design.rotor, table), start=1):
+            keys += _barrier_keys(f"rotor.{table}[{number}]", barrier)
     return tuple(keys)
 
 
-def _each(barrier: BarrierDesign, number: int, name: str) -> list[str]:
-    """The key of a value, or the keys of all values of a list, counted from 1."""
-    key, value = barrier_key(number, name), getattr(barrier, name)
-    if isinstance(value, tuple):
-        return [f"{key}[{k}]" for k in range(1, len(value) + 1)]
-    return [key]
+def _barrier_keys(table: str, barrier: BarrierDesign) -> list[str]:
+    """Keys of one barrier; of a list of values each, counted from 1."""
+    keys: list[str] = []
+    for name in type(barrier).model_fields:
+        value = getattr(barrier, name)
+        if isinstance(value, OtherHalfDesign):
+            keys += [f"{table}.{name}.{own}" for own, one in value if one is not None]
+        elif _is_used(barrier, name):
+            count = len(value) if isinstance(value, tuple) else 0
+            keys += [f"{table}.{name}[{k}]" for k in range(1, count + 1)] or [f"{table}.{name}"]
+    return keys
 
 
 def _is_shape(name: str) -> bool:

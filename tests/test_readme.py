@@ -14,6 +14,7 @@ from lamwright.geometry.design import (
     DutyDesign,
     LimitsDesign,
     MachineDesign,
+    OtherHalfDesign,
     MagnetCard,
     MagnetChoice,
     RotorDesign,
@@ -60,6 +61,7 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[winding]`", WindingDesign),
         ("`[rotor]`", RotorDesign),
         ("`[[rotor.barrier]]`", BarrierDesign),
+        ("`[rotor.barrier.other_half]`", OtherHalfDesign),
         ("`[rotor.barrier.magnet]`", BarrierMagnetDesign),
         ("`[steel]`", SteelChoice),
         ("`[magnet]`", MagnetChoice),
@@ -71,7 +73,7 @@ def test_each_key_of_a_design_has_its_row(header: str, model: type[BaseModel]):
     """Every key in its order, with its default where it has one."""
     table = README[README.index(f"| {header}") :].split("\n\n", 1)[0]
     rows = [row.split("|")[1:3] for row in table.splitlines()[2:]]
-    fields = {key: field for key, field in model.model_fields.items() if key != "barrier"}
+    fields = {key: field for key, field in model.model_fields.items() if "barrier" not in key}
     assert [key.strip() for key, _ in rows] == [f"`{key}`" for key in fields]
     for (_, told), field in zip(rows, fields.values(), strict=True):
         if isinstance(field.default, int | float):
