@@ -47,7 +47,7 @@ def tolerance_settings(name: str) -> tuple[MeshSettings, StressSettings, Promise
     if name == "coarse":
         return MeshSettings(scale=2.0), StressSettings(tolerance=0.05), Promises(2.0, 1.0, 5.0)
     if name == "normal":
-        return MeshSettings(), StressSettings(), Promises(0.5, 0.3, 2.0)
+        return MeshSettings(scale=1.5), StressSettings(), Promises(0.5, 0.3, 2.0)
     if name == "fine":
         return MeshSettings(scale=0.5), StressSettings(tolerance=0.005), Promises(0.1, 0.1, 0.5)
     raise LamwrightError(f"tolerance = {name}: unknown; accepted {', '.join(NAMES)}")
