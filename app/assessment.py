@@ -71,6 +71,7 @@ class Assessment:
     crew: Crew[Desk]
     watch: Stopwatch
     tolerance: ToleranceName
+    pictures: bool
 
     def written_to(self, stage: Path) -> Verdict:
         """The verdict; all results as files in `stage`, `verdict.json` last."""
@@ -88,22 +89,22 @@ class Assessment:
         with watch.phase("magnetic model"):
             model = model_of(self.machine, section, sector)
             crew.everywhere(Desk.take_model, model)
-            drawn = [self._drawn(stage, "section", partial(section_figure, name, section))]
+            drawn = [*self._drawn(stage, "section", partial(section_figure, name, section))]
         with watch.phase("current angle"):
             found = most_torque(model, self.machine.design, watch.within)
-        with watch.phase("stress"):
-            stress = stress_to_come.result()
-            compose = partial(stress_figure, name, section, stress.solution, stress.report)
-            drawn.append(self._drawn(stage, "stress", compose))
-        watch.meanwhile("stress", stress.seconds)
         with watch.phase("torque waveform"):
             fields = self._waveform_fields(found)
             waveform = torque_waveform(fields, section.pole_pairs)
             winding = winding_table(self.machine.design)
             flux = partial(flux_figure, name, section, winding, sector, fields[0])
-            drawn.append(self._drawn(stage, "flux", flux))
+            drawn += self._drawn(stage, "flux", flux)
             torque = partial(torque_figure, name, section, waveform)
-            drawn.append(self._drawn(stage, "torque", torque))
+            drawn += self._drawn(stage, "torque", torque)
+        with watch.phase("stress"):
+            stress = stress_to_come.result()
+            compose = partial(stress_figure, name, section, stress.solution, stress.report)
+            drawn += self._drawn(stage, "stress", compose)
+        watch.meanwhile("stress", stress.seconds)
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields)
         magnets = self._magnets(model)
@@ -141,9 +142,9 @@ class Assessment:
         changed = dict(zip(places, done, strict=True))
         return errors_of(fields, changed, self.section.pole_pairs)
 
-    def _drawn(self, stage: Path, name: str, compose: Composer) -> "Future[None]":
-        """A figure to come, drawn by a worker where there is one."""
-        return self.crew.start(Desk.figure, stage, name, compose)
+    def _drawn(self, stage: Path, name: str, compose: Composer) -> "list[Future[None]]":
+        """A figure to come, drawn by a worker where there is one; nothing where none is wanted."""
+        return [self.crew.start(Desk.figure, stage, name, compose)] if self.pictures else []
 
     def _written(
         self,

@@ -70,9 +70,14 @@ def main() -> None:
     show_default=True,
     help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
 )
+@click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
 @click.pass_context
 def assess(
-    ctx: click.Context, design: Path, out: Path, tolerance: Literal["coarse", "normal", "fine"]
+    ctx: click.Context,
+    design: Path,
+    out: Path,
+    tolerance: Literal["coarse", "normal", "fine"],
+    pictures: bool,
 ) -> None:
     """Field, stress, verdict, pictures and punch outline of DESIGN.
 
@@ -82,7 +87,7 @@ def assess(
     from .screen import print_verdict, shown_progress
 
     with shown_progress() as progress:
-        verdict = run(design, out, progress, tolerance)
+        verdict = run(design, out, progress, tolerance, pictures)
     print_verdict(verdict, str(out))
     ctx.exit(0 if verdict.passes else 1)
 

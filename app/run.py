@@ -28,6 +28,7 @@ def assess(
     out: str | Path,
     progress: Progress = silent,
     tolerance: "ToleranceName" = "normal",
+    pictures: bool = True,
 ) -> "Verdict":
     """Assess the design in the file `path`; all results go to the folder `out`.
 
@@ -36,6 +37,7 @@ def assess(
         out: folder, made where it is missing.
         progress: called with the phase and the share done.
         tolerance: how fine to mesh; `solver.tolerance` says what each name promises.
+        pictures: whether to draw the figures, 40 % of the processors' time.
 
     Returns:
         The verdict, as written to `verdict.json`.
@@ -54,7 +56,7 @@ def assess(
     with crew, staged(folder) as stage:
         from .assessment import Assessment
 
-        return Assessment(machine, section, crew, watch, tolerance).written_to(stage)
+        return Assessment(machine, section, crew, watch, tolerance, pictures).written_to(stage)
 
 
 def make_desk() -> "Desk":

@@ -22,10 +22,10 @@ STEP_EL = math.radians(2.0)
 _WITHOUT_START = """
 import os, sys, time
 from lamwright.app.run import assess
-design, out = sys.argv[1:]
-assess(design, out)
+design, out, pictures = sys.argv[1:]
+assess(design, out, pictures=pictures == "pictures")
 began, used = time.perf_counter(), sum(os.times()[:4])
-assess(design, out)
+assess(design, out, pictures=pictures == "pictures")
 print(time.perf_counter() - began, sum(os.times()[:4]) - used)
 """
 
@@ -74,28 +74,31 @@ def peak_memory_mib(work: Workload, notes: Notes) -> dict[str, float]:
 def design_seconds(work: Workload, notes: Notes) -> dict[str, float]:
     """Wall time of the README's design in a warm process, and as a command from the shell.
 
-    Third the processor time that the first takes, all processes together: half of it is what two
-    idle cores cannot go below.
+    Both without pictures; the last figure is the first with them. Third the processor time that
+    the first takes, all processes together: half of it is what two idle cores cannot go below.
     """
     with tempfile.TemporaryDirectory() as folder:
         out = str(Path(folder) / "out")
         python = [sys.executable, "-P"]
         in_process = [*python, "-c", _WITHOUT_START, str(DESIGN), out]
         command = [*python, "-m", "lamwright.app", "assess", str(DESIGN), "--out", out]
-        warm, cold, processor = [], [], []
+        warm, cold, processor, drawn = [], [], [], []
         for _ in range(work.design_rounds):
-            wall, used = map(float, _output(in_process).split())
+            wall, used = map(float, _output([*in_process, "none"]).split())
             warm.append(wall)
             processor.append(used)
-            cold.append(seconds(lambda: _output(command), WALL))
+            cold.append(seconds(lambda: _output([*command, "--no-pictures"]), WALL))
+            drawn.append(float(_output([*in_process, "pictures"]).split()[0]))
     notes.tell("without start-up", warm, "s")
     notes.tell("with start-up", cold, "s")
+    notes.tell("without start-up, pictures drawn", drawn, "s")
     notes.tell("processors' time without start-up, workers' imports included", processor, "s")
     middle = work.design_rounds // 2
     return {
         "design_seconds": sorted(warm)[middle],
         "design_seconds_with_start": sorted(cold)[middle],
         "design_seconds_of_processors": sorted(processor)[middle],
+        "design_seconds_with_pictures": sorted(drawn)[middle],
     }
 
 

@@ -17,7 +17,7 @@ def model() -> MagneticModel:
 
 TURNING = [OperatingPoint(7.0, 10.0, math.radians(0.5 * k)) for k in range(6)]
 RISING = [OperatingPoint(2.0 * k, 3.0 * k, 0.1) for k in range(1, 7)]
-# Nothing a start could be extrapolated along: currents and angle jump, a point comes twice.
+# No neighbours: currents and angle jump, a point comes twice, currents are switched off.
 JUMPING = [OperatingPoint(12.0, 0.0, 0.0), OperatingPoint(0.0, 12.0, 0.7)]
 JUMPING += [OperatingPoint(0.0, 12.0, 0.7), OperatingPoint(0.0, 0.0, 0.7), RISING[3]]
 

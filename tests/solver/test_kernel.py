@@ -92,3 +92,31 @@ def test_shape_integrals_sum_to_the_curved_area() -> None:
     assert total == pytest.approx(
         kernel.quadrature(MESH.nodes, MESH.elements, 6).weight.sum(), rel=1e-13
     )
+
+
+def test_linear_material_is_linearised_where_it_is():
+    """B(H) is B there: nothing to choose, and nothing changes."""
+    quad = kernel.quadrature(MESH.nodes, MESH.elements)
+    rng = np.random.default_rng(5)
+
+    def linear(b2: FloatArray) -> tuple[FloatArray, FloatArray]:
+        return np.full_like(b2, NU_0), np.zeros_like(b2)
+
+    old, new = (
+        kernel.flux_state(quad, rng.normal(size=MESH.elements.shape), linear) for _ in range(2)
+    )
+    ahead, change = kernel.looked_ahead(old, new, linear, lambda h: h / NU_0)
+    assert ahead.grad_a == pytest.approx(new.grad_a, rel=1e-13)
+    assert np.abs(change).max() < 1e-12 * NU_0 * np.abs(new.grad_a).max()
+
+
+def test_look_ahead_by_hand():
+    """B = 1 to 2 T along x, H = 400 B + 90 B^3: H_lin = 490 + 670, B(1160) solved by hand."""
+    one = np.array([[[1.0, 0.0]]])
+    old, new = (kernel.FluxState(g, *law((g**2).sum(axis=2))) for g in (one, 2.0 * one))
+    b = float(np.roots([90.0, 0.0, 400.0, -1160.0])[-1].real)  # 1.6967 T
+    ahead, change = kernel.looked_ahead(old, new, law, lambda h: np.full_like(h, b))
+    middle = 0.5 * (2.0 + b)
+    assert ahead.grad_a[0, 0] == pytest.approx([middle, 0.0])
+    linear = 400.0 * middle + 90.0 * middle**3 + (400.0 + 270.0 * middle**2) * (2.0 - middle)
+    assert change[0, 0] == pytest.approx([linear - (800.0 + 720.0), 0.0])

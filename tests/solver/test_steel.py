@@ -176,3 +176,11 @@ def test_slopes_are_those_of_the_natural_spline(count):
     h = np.cumsum(1e4 * rng.uniform(0.01, 1.0, count) ** 4)
     expected = CubicSpline(b, h, bc_type="natural")(b, 1)
     assert natural_slopes(b, h) == pytest.approx(expected, rel=0.0, abs=1e-12 * expected.max())
+
+
+@pytest.mark.parametrize("b", [1e-3, 0.3, 1.1, 1.6, 2.0, 3.9, 7.0])
+def test_flux_density_is_near_the_inverse(b):
+    """Good to choose where to linearise: 2e-3, beyond the table's end too."""
+    law = s19_tabulated()
+    h = law.field_strength(np.array([b]))
+    assert law.flux_density(h) == pytest.approx(b, rel=2e-3)
