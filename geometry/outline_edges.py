@@ -4,8 +4,14 @@ import cmath
 import math
 from collections.abc import Iterable, Sequence
 
+import numpy as np
+import numpy.typing as npt
+
 from .corners import foot, is_within
 from .curves import Edge, Path, Point, reversed_edge
+
+FloatArray = npt.NDArray[np.float64]
+ComplexArray = npt.NDArray[np.complex128]
 
 SAME_CURVE = 2e-7  # m, parts that lie no further from one line or arc are one
 SAMPLES = 5  # of an edge, ends included, in a comparison
@@ -55,14 +61,27 @@ def distance_to(edge: Edge, point: Point) -> float:
 
 def difference(first: Sequence[Edge], second: Sequence[Edge]) -> tuple[float, Point]:
     """How far the first set of edges is from the second at most, in m, and where."""
-    worst, place = -1.0, first[0].start
-    for edge in first:
-        for k in range(SAMPLES):
-            point = edge.point(k / (SAMPLES - 1))
-            gap = min(distance_to(other, point) for other in second)
-            if gap > worst:
-                worst, place = gap, point
-    return worst, place
+    shares = np.linspace(0.0, 1.0, SAMPLES)
+    points = np.array([edge.point(float(s)) for edge in first for s in shares])
+    gaps = np.full(points.size, np.inf)
+    for edge in second:
+        gaps = np.minimum(gaps, _distances(edge, points))
+    worst = int(np.argmax(gaps))
+    return float(gaps[worst]), complex(points[worst])
+
+
+def _distances(edge: Edge, points: ComplexArray) -> FloatArray:
+    """Distance in m of each point from the edge; twin of `distance_to` for many points."""
+    ends = np.minimum(np.abs(points - edge.start), np.abs(points - edge.end))
+    if edge.is_line:
+        chord = edge.end - edge.start
+        along = ((points - edge.start) * chord.conjugate()).real / abs(chord) ** 2
+        gap = np.abs(((points - edge.start) * chord.conjugate()).imag) / abs(chord)
+    else:
+        middle, centre = edge.point(0.5), edge.centre
+        along = 0.5 + np.angle((points - centre) / (middle - centre)) / edge.sweep
+        gap = np.abs(np.abs(points - centre) - edge.radius)
+    return np.asarray(np.where((along >= 0.0) & (along <= 1.0), gap, ends))
 
 
 def turned_edges(edges: Sequence[Edge], angle: float) -> list[Edge]:
