@@ -97,12 +97,13 @@ def winds_about(path: Path, point: Point) -> bool:
         start, end = edge.start - point, edge.end - point
         if start == 0.0 or end == 0.0:
             return False
-        total += cmath.phase(end / start)
-        if not edge.is_line:
-            # Between chord and arc the arc passes on the other side of the point.
-            right = (start.conjugate() * end).imag * math.copysign(1.0, edge.bulge) < 0.0
-            if right and abs(point - edge.centre) < edge.radius:
-                total += math.copysign(2.0 * math.pi, edge.bulge)
+        turn = cmath.phase(end / start)
+        if not edge.is_line and abs(point - edge.centre) < edge.radius:
+            # Between chord and arc, or on the chord, the arc passes on the other side.
+            sense = math.copysign(1.0, edge.bulge)
+            if turn * sense < 0.0:
+                turn += 2.0 * math.pi * sense
+        total += turn
     return abs(total) > math.pi
 
 

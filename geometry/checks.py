@@ -38,7 +38,8 @@ def _shape_faults(design: MachineDesign) -> list[Fault]:
 def _ring_faults(design: MachineDesign) -> list[Fault]:
     """Faults of the rotor; without radii or a pole pitch nothing can be said of the barriers."""
     disc = _disc_faults(design)
-    if disc or design.rotor.poles % 2:
+    # A drawn rotor stands as it was recognised, ribs thinner than the sheet included.
+    if disc or design.rotor.poles % 2 or design.rotor.outline is not None:
         return disc
     return rotor_faults(design) + _detail_faults(design) or _magnet_faults(design)
 

@@ -16,7 +16,7 @@ from .design_table import Table as _Table
 from .design_table import whole as _whole
 
 if TYPE_CHECKING:
-    from .outline_report import StatorOutline
+    from .outline_report import RotorOutline, StatorOutline
 
 
 class StatorDesign(OutlineKeys):
@@ -125,9 +125,10 @@ class BarrierDesign(_Table):
     other_half: OtherHalfDesign | None = None  # default: the mirror image
 
 
-class RotorDesign(_Table):
+class RotorDesign(OutlineKeys):
     """The rotor lamination: a disc with a bore, and the barriers of one pole."""
 
+    q_axis_deg: float | None = None  # of a drawn rotor, in the drawing; found where not stated
     poles: Annotated[int, Field(ge=2, le=24)]
     gap_mm: Positive
     shaft_diameter_mm: Positive
@@ -140,6 +141,18 @@ class RotorDesign(_Table):
     notch: Annotated[tuple[NotchDesign, ...], Field(max_length=12)] = ()
     hole: Annotated[tuple[HoleDesign, ...], Field(max_length=12)] = ()
     keyway: KeywayDesign | None = None
+    _outline: "RotorOutline | None" = PrivateAttr(default=None)
+
+    @property
+    def outline(self) -> "RotorOutline | None":
+        """What was recognised in the drawing; there are no tables of barriers then."""
+        return self._outline
+
+    def drawn(self, outline: "RotorOutline") -> Self:
+        """The same table with the poles of a drawing."""
+        copy = self.model_copy(update={"barrier": ()})
+        copy._outline = outline
+        return copy
 
 
 class SteelChoice(_Table):

@@ -127,7 +127,8 @@ def _magnet_card(path: Path, text: str, design: MachineDesign) -> MagnetCard | N
 def design_hash(design: MachineDesign, cards: tuple[SteelCard | MagnetCard, ...]) -> str:
     """SHA-256 in hex of everything the files state: the same for any layout of the same values."""
     values = [item.model_dump(mode="json") for item in (design, *cards)]
-    drawings = [outline.source.sha256 for outline in (design.stator.outline,) if outline]
+    outlines = (design.stator.outline, design.rotor.outline)
+    drawings = [outline.source.sha256 for outline in outlines if outline is not None]
     if drawings:
         values.append({"drawings": drawings})
     canonical = json.dumps(values, sort_keys=True, separators=(",", ":"), allow_nan=False)

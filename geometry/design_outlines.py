@@ -5,26 +5,50 @@ tables are validated, so that every later step finds whole tables; a dimension t
 states all the same must be the drawing's.
 """
 
-from collections.abc import Mapping
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
-from .design import MachineDesign
+from .design import MachineDesign, RotorDesign, StatorDesign
 from .design_drawing import OutlineKeys
+from .drawn_rotor import recognised_rotor
 from .drawn_slot import SlotHints
 from .drawn_stator import recognised_stator
-from .dxf_reader import read_pieces
+from .dxf_reader import DrawnPieces, read_pieces
 from .errors import DrawingMark, OutlineError
 from .key_lines import KeyPath
-from .outline_report import StatorOutline, source_of, stator_measures
+from .outline_report import RotorOutline, StatorOutline, source_of, stator_measures
 
 MM = 1e-3  # m
 UM = 1e-6  # m
 STATED_TOL = 0.02  # mm, a stated dimension may miss the drawing's by this
 OUTLINE_KEYS = tuple(OutlineKeys.model_fields)
-# What a drawn stator's table may state beside the drawing.
+# What a drawn part's table may state beside the drawing.
 STATOR_KEYS = (*OUTLINE_KEYS, "stack_length_mm", "wedge_depth_mm", "opening_depth_mm")
-FILLER = 1.0  # where the keys are faulty and the design is about to be refused for it
+ROTOR_KEYS = (
+    *(*OUTLINE_KEYS, "q_axis_deg", "poles", "shaft_relative_permeability"),
+    *("sheet_thickness_mm", "stacking_factor"),
+)
+# Where a drawing is faulty, or its keys are, and the design is about to be refused for it.
+STATOR_FILLERS: "Data" = {
+    "outer_diameter_mm": 3.0,
+    "bore_diameter_mm": 2.0,
+    "slots": 12,
+    "tooth_width_mm": 1.0,
+    "slot_depth_mm": 1.0,
+    "slot_opening_mm": 1.0,
+    "opening_depth_mm": 1.0,
+}
+ROTOR_FILLERS: "Data" = {"gap_mm": 1.0, "shaft_diameter_mm": 1.0}
+# Holds the place of the tables of barriers that a drawn rotor has not; `drawn` takes it out.
+NO_BARRIER: "Data" = {
+    "shape": "arc",
+    "end_angle_deg": 1.0,
+    "thickness_mm": 1.0,
+    "depth_mm": 1.0,
+    "tangential_rib_mm": 1.0,
+}
 
 Data = dict[str, object]
 PlacedFault = tuple[KeyPath, str]
@@ -35,12 +59,16 @@ class Outlines:
     """What the drawings of a design hold."""
 
     stator: StatorOutline | None = None
+    rotor: RotorOutline | None = None
 
     def put_into(self, design: MachineDesign) -> MachineDesign:
         """The design with its drawn parts."""
         if self.stator is not None:
             stator = design.stator.drawn(self.stator)
             design = design.model_copy(update={"stator": stator})
+        if self.rotor is not None:
+            rotor = design.rotor.drawn(self.rotor)
+            design = design.model_copy(update={"rotor": rotor})
         return design
 
 
@@ -54,6 +82,16 @@ class Filled:
     marks: tuple[DrawingMark, ...]
 
 
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """One table after its drawing was read."""
+
+    table: object
+    outline: StatorOutline | RotorOutline | None = None
+    faults: tuple[PlacedFault, ...] = ()
+    marks: tuple[DrawingMark, ...] = ()
+
+
 def with_outlines(data: Data, folder: Path) -> Filled:
     """The data of a design file with every drawing it names read.
 
@@ -61,27 +99,84 @@ def with_outlines(data: Data, folder: Path) -> Filled:
         data: as parsed.
         folder: from which the drawings' names count.
     """
-    table = data.get("stator")
+    stator = _stator(data.get("stator"), folder)
+    rotor = _rotor(data.get("rotor"), stator.table, folder)
+    tables = {k: part.table for k, part in (("stator", stator), ("rotor", rotor)) if k in data}
+    outlines = Outlines(
+        stator.outline if isinstance(stator.outline, StatorOutline) else None,
+        rotor.outline if isinstance(rotor.outline, RotorOutline) else None,
+    )
+    faults = (*stator.faults, *rotor.faults)
+    return Filled({**data, **tables}, outlines, faults, (*stator.marks, *rotor.marks))
+
+
+def _stator(table: object, folder: Path) -> _Part:
     if not isinstance(table, dict):
-        return Filled(data, Outlines(), (), ())
+        return _Part(table)
     if table.get("outline_dxf") is None:
-        return Filled(data, Outlines(), _stray(table, "stator"), ())
+        return _Part(table, faults=_stray(table, "stator", OUTLINE_KEYS))
     keys = _outline_keys(table)
     if keys is None:
-        return Filled({**data, "stator": {**_fillers(), **table}}, Outlines(), (), ())
-    file = str(keys.outline_dxf)
+        return _Part({**STATOR_FILLERS, **table})
     try:
-        pieces = read_pieces(folder / file, keys.outline_unit_mm, keys.outline_layers)
+        pieces = _pieces(keys, folder)
         drawing = recognised_stator(pieces.edges, UM * keys.heal_um, _hints(table))
     except OutlineError as error:
-        fault = (("stator", "outline_dxf"), f'stator.outline_dxf = "{file}": {error}')
-        marks = _marks(folder / file, keys, error)
-        return Filled({**data, "stator": {**_fillers(), **table}}, Outlines(), (fault,), marks)
+        return _failed("stator", {**STATOR_FILLERS, **table}, keys, folder, error)
     measures = stator_measures(drawing)
-    faults = _unlike(table, measures)
+    faults = _unlike("stator", table, measures, STATOR_KEYS, set(StatorDesign.model_fields))
     filled = {**measures, **table, "slots": table.get("slots", drawing.slots)}
-    outline = StatorOutline(drawing, source_of(file, pieces))
-    return Filled({**data, "stator": filled}, Outlines(outline), faults, ())
+    outline = StatorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
+    return _Part(filled, outline, faults)
+
+
+def _rotor(table: object, stator: object, folder: Path) -> _Part:
+    if not isinstance(table, dict):
+        return _Part(table)
+    if table.get("outline_dxf") is None:
+        return _Part(table, faults=_stray(table, "rotor", (*OUTLINE_KEYS, "q_axis_deg")))
+    barrier = {"barrier": (NO_BARRIER,)}
+    keys, poles, q_axis = _outline_keys(table), table.get("poles"), table.get("q_axis_deg")
+    bore = stator.get("bore_diameter_mm") if isinstance(stator, dict) else None
+    is_even = isinstance(poles, int) and not isinstance(poles, bool) and poles in range(2, 25, 2)
+    if keys is None or not is_even or not _is_number(bore) or not _is_number(q_axis or 0.0):
+        return _Part({**ROTOR_FILLERS, **table, **barrier})
+    assert isinstance(poles, int)
+    try:
+        pieces = _pieces(keys, folder)
+        told = None if q_axis is None else math.radians(_float(q_axis))
+        drawing = recognised_rotor(pieces.edges, UM * keys.heal_um, poles, told)
+    except OutlineError as error:
+        return _failed("rotor", {**ROTOR_FILLERS, **table, **barrier}, keys, folder, error)
+    measures = {
+        "shaft_diameter_mm": 2.0 * drawing.shaft_radius / MM,
+        "gap_mm": 0.5 * _float(bore) - drawing.rotor_radius / MM,
+    }
+    faults = _unlike("rotor", table, measures, ROTOR_KEYS, set(RotorDesign.model_fields))
+    if measures["gap_mm"] <= 0.0:
+        text = (
+            f"rotor.outline_dxf: the rotor drawn has {2.0 * drawing.rotor_radius / MM:.6g} mm of "
+            f"diameter, the stator's bore {_float(bore):.6g}; accepted a smaller rotor"
+        )
+        faults = (*faults, (("rotor", "outline_dxf"), text))
+    outline = RotorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
+    return _Part({**table, **measures, **barrier}, outline, faults)
+
+
+def _pieces(keys: OutlineKeys, folder: Path) -> DrawnPieces:
+    path = folder / str(keys.outline_dxf)
+    return read_pieces(path, keys.outline_unit_mm, keys.outline_layers)
+
+
+def _failed(name: str, table: Data, keys: OutlineKeys, folder: Path, error: OutlineError) -> _Part:
+    """The table of a drawing in which nothing was recognised."""
+    fault = ((name, "outline_dxf"), f'{name}.outline_dxf = "{keys.outline_dxf}": {error}')
+    marks: tuple[DrawingMark, ...] = ()
+    if error.place is not None:
+        path = folder / str(keys.outline_dxf)
+        mark = DrawingMark(path, error.place, fault[1], keys.outline_unit_mm, keys.outline_layers)
+        marks = (mark,)
+    return _Part(table, None, (fault,), marks)
 
 
 def _outline_keys(table: Mapping[str, object]) -> OutlineKeys | None:
@@ -91,62 +186,48 @@ def _outline_keys(table: Mapping[str, object]) -> OutlineKeys | None:
         return None
 
 
-def _stray(table: Mapping[str, object], name: str) -> tuple[PlacedFault, ...]:
+def _stray(table: Mapping[str, object], name: str, keys: Sequence[str]) -> tuple[PlacedFault, ...]:
     return tuple(
         ((name, key), f"{name}.{key}: only with outline_dxf; leave it out")
-        for key in OUTLINE_KEYS
-        if key in table
+        for key in keys
+        if key in table and key != "outline_dxf"
     )
+
+
+def _is_number(value: object) -> bool:
+    is_number = isinstance(value, int | float) and not isinstance(value, bool)
+    return is_number and math.isfinite(_float(value))
+
+
+def _float(value: object) -> float:
+    assert isinstance(value, int | float)
+    return float(value)
 
 
 def _hints(table: Mapping[str, object]) -> SlotHints:
     def length(key: str) -> float | None:
         value = table.get(key)
-        is_number = isinstance(value, int | float) and not isinstance(value, bool)
-        return MM * float(value) if is_number and value >= 0 else None  # type: ignore[arg-type,operator]
+        return MM * _float(value) if _is_number(value) and _float(value) >= 0.0 else None
 
     return SlotHints(length("opening_depth_mm"), length("wedge_depth_mm") or 0.0)
 
 
-def _unlike(table: Mapping[str, object], measures: Mapping[str, float]) -> tuple[PlacedFault, ...]:
+def _unlike(
+    name: str,
+    table: Mapping[str, object],
+    measures: Mapping[str, float],
+    free: Sequence[str],
+    known: set[str],
+) -> tuple[PlacedFault, ...]:
     """Stated dimensions that are not the drawing's, and keys that the drawing stands for."""
     faults: list[PlacedFault] = []
     for key, value in table.items():
-        place = ("stator", key)
-        if key in STATOR_KEYS:
+        if key in free or key not in known:
             continue
         if key not in measures:
-            if key in _shape_keys():
-                text = f"stator.{key}: the drawing gives the slot; leave it out"
-                faults.append((place, text))
-            continue
-        is_number = isinstance(value, int | float) and not isinstance(value, bool)
-        if is_number and abs(value - measures[key]) > STATED_TOL:  # type: ignore[operator]
-            text = f"stator.{key} = {value}: the drawing has {measures[key]:.6g}; leave it out"
-            faults.append((place, text))
+            text = f"{name}.{key}: the drawing gives the {name}; leave it out"
+            faults.append(((name, key), text))
+        elif _is_number(value) and abs(_float(value) - measures[key]) > STATED_TOL:
+            text = f"{name}.{key} = {value}: the drawing has {measures[key]:.6g}; leave it out"
+            faults.append(((name, key), text))
     return tuple(faults)
-
-
-def _shape_keys() -> set[str]:
-    from .design import StatorDesign
-
-    return set(StatorDesign.model_fields)
-
-
-def _fillers() -> dict[str, object]:
-    return {
-        "outer_diameter_mm": 3.0,
-        "bore_diameter_mm": 2.0,
-        "slots": 12,
-        "tooth_width_mm": FILLER,
-        "slot_depth_mm": FILLER,
-        "slot_opening_mm": FILLER,
-        "opening_depth_mm": FILLER,
-    }
-
-
-def _marks(path: Path, keys: OutlineKeys, error: OutlineError) -> tuple[DrawingMark, ...]:
-    if error.place is None:
-        return ()
-    mark = DrawingMark(path, error.place, str(error), keys.outline_unit_mm, keys.outline_layers)
-    return (mark,)

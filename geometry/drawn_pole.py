@@ -15,6 +15,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from .arrangement import arrangement
+from .blunting import blunted
 from .corners import is_within
 from .curves import Edge, Path, Point, arc, reversed_edge
 from .distances import nearest
@@ -79,10 +80,10 @@ def drawn_poles(
     """
     frame = _Pole(rim, poles // 2, *tolerances)
     cut = [_cut_pole(turned_edges(edges, -(2 * k + 1) * frame.half), frame) for k in range(period)]
-    mirrored = [made_symmetric(pole, frame.tolerance) for pole in cut]
+    mirrored = [made_symmetric(pole, frame.alike) for pole in cut]
     is_symmetric = all(pole is not None for pole in mirrored)
     kept = [m if m is not None and is_symmetric else c for m, c in zip(mirrored, cut, strict=True)]
-    settled = _settled(kept, frame)
+    settled = [blunted(pole, rim) for pole in _settled(kept, frame)]
     return tuple(_named(pole, frame) for pole in settled), is_symmetric
 
 

@@ -25,12 +25,12 @@ from .drawn_pole import PoleDrawing, drawn_poles
 from .drawn_stator import DRAWN_TOL, bore_arcs, raise_if_open
 from .errors import OutlineError
 from .outline_axis import Lamination, is_about, whole_lamination
-from .outline_edges import ComplexArray, difference, turned_edges
+from .outline_edges import difference, turned_edges
 from .outline_places import place_text
 
 MM = 1e-3  # m
 SAMPLES = 8  # of an edge, in the moments
-NEAR_DEGREE = 2e-4  # degrees, a q axis this near a thousandth of a degree is on it
+NEAR_DEGREE = 1e-6  # degrees, a q axis this near a thousandth of a degree is on it
 MOST_UNLIKE = 2  # poles after which a rotor must repeat
 # m, by which poles that are meant alike may differ: the fine class of general tolerances for
 # lengths up to 6 mm (ISO 2768-1, from memory). A published rotor drawing has 37 um.

@@ -81,17 +81,27 @@ def shaft_axis(edges: Sequence[Edge], tolerance: float) -> Point:
     arcs = sorted((e for e in edges if not e.is_line), key=lambda e: -e.length)
     if not arcs:
         raise OutlineError("no arc in the drawing, so no axis; accepted arcs about the shaft axis")
-    best: list[Edge] = []
-    weight = 0.0
+    trials: list[tuple[float, list[Edge]]] = []
     for arc in arcs[:MOST_CENTRES]:
-        centre = arc.centre
-        sharing = [e for e in arcs if is_about(e, centre, tolerance)]
-        length = sum(e.length * abs(e.sweep) for e in sharing)
-        if length > weight:
-            best, weight = sharing, length
+        if any(arc in sharing for _, sharing in trials):
+            continue
+        sharing = [e for e in arcs if is_about(e, arc.centre, tolerance)]
+        trials.append((sum(e.length * abs(e.sweep) for e in sharing), sharing))
+    trials.sort(key=lambda trial: -trial[0])
+    # Barriers may share a centre of their own, but nothing lies beyond the rim.
+    farthest = [sharing for _, sharing in trials if _holds_all(sharing, edges, tolerance)]
+    best = farthest[0] if farthest else trials[0][1]
     centre = _common_centre(best)
     # A drawing made about its own origin stays as it is, to the last bit.
     return 0j if abs(centre) < tolerance else centre
+
+
+def _holds_all(arcs: Sequence[Edge], edges: Sequence[Edge], tolerance: float) -> bool:
+    """Whether no piece lies farther from the arcs' common centre than they do."""
+    centre = arcs[0].centre
+    reach = max(abs(e.start - centre) for e in arcs)
+    # A short arc tells its centre badly: ten times the tolerance will do to tell it apart.
+    return all(abs(e.point(0.5) - centre) < reach + 10.0 * tolerance for e in edges)
 
 
 def is_about(edge: Edge, centre: Point, tolerance: float) -> bool:

@@ -5,8 +5,9 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from .curves import Edge, Path, turned
+from .curves import Edge, Path, area, turned
 from .distances import distance
+from .drawn_rotor import RotorDrawing
 from .drawn_slot import DrawnSlot, slot_reach
 from .drawn_stator import StatorDrawing
 from .dxf_reader import DrawnPieces
@@ -35,6 +36,14 @@ class StatorOutline:
     """A stator from a drawing."""
 
     drawing: StatorDrawing
+    source: OutlineSource
+
+
+@dataclass(frozen=True, slots=True)
+class RotorOutline:
+    """A rotor from a drawing."""
+
+    drawing: RotorDrawing
     source: OutlineSource
 
 
@@ -80,6 +89,36 @@ def stator_lines(outline: StatorOutline) -> Lines:
         ("tooth", f"{measures['tooth_width_mm']:.4f} mm at its thinnest"),
         ("coil sides", f"{len(drawing.slot.copper)} drawn, {sides} mm2"),
     )
+
+
+def rotor_lines(outline: RotorOutline) -> Lines:
+    """What was recognised of a rotor, as it is listed."""
+    drawing = outline.drawing
+    period = len(drawing.poles)
+    alike = "all alike" if period == 1 else f"alike every {period}"
+    lines = [
+        *source_lines(outline.source),
+        ("drawn", _drawn_share(drawing.sectors)),
+        ("axis", place_text(drawing.axis)),
+        ("joined", f"gaps up to {drawing.healed / UM:.3g} um, {drawing.doubles} pieces twice"),
+        ("rotor diameter", f"{2.0 * drawing.rotor_radius / MM:.4f} mm"),
+        ("bore diameter", f"{2.0 * drawing.shaft_radius / MM:.4f} mm"),
+        ("poles", f"{alike}, to {drawing.unlikeness / UM:.3g} um"),
+        (
+            "q axis",
+            f"at {math.degrees(drawing.q_axis):.4f} degrees, the poles "
+            f"{'' if drawing.is_symmetric else 'not '}symmetric about theirs",
+        ),
+    ]
+    if drawing.left_out:
+        lines.append(("inside cavities", f"{drawing.left_out} contours, left out"))
+    for number, pole in enumerate(drawing.poles, start=1):
+        of_pole = f"pole {number}, " if period > 1 else ""
+        sizes = [f"{part.name} {area(part.outer) / MM**2:.4g}" for part in pole.air]
+        lines.append((f"{of_pole}cavities", f"{', '.join(sizes)} mm2"))
+        widths = [f"{rib.name} {rib.width / MM:.4f}" for rib in pole.ribs]
+        lines.append((f"{of_pole}ribs", f"{', '.join(widths)} mm" if widths else "none"))
+    return tuple(lines)
 
 
 def _drawn_share(sectors: int) -> str:

@@ -13,6 +13,7 @@ from .bands import band_of
 from .cavities import cut_barrier
 from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
+from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
 from .rib_cuts import rib_cuts
@@ -60,6 +61,10 @@ def rotor_poles(
     The far side of a pole has the same edges as the near side of the next one, the last pole's
     as that of the first.
     """
+    outline = design.rotor.outline
+    if outline is not None:
+        radius = rotor_frame(design).circle_radius
+        return drawn_rotor_regions(outline.drawing, radius, design.pole_pairs)
     other = alternate_pole(design)
     return tuple(rotor_regions(pole) for pole in (design, other) if pole is not None)
 

@@ -161,10 +161,14 @@ def _is_shape(name: str) -> bool:
 
 def _is_of_drawing(design: MachineDesign, table: str, name: str) -> bool:
     """Whether the key says how a drawing is read, or what a drawing shows: none can be moved."""
-    if name in OutlineKeys.model_fields:
+    if name in OutlineKeys.model_fields or name == "q_axis_deg":
         return True
-    is_drawn = table == "stator" and design.stator.outline is not None
-    return is_drawn and name != "stack_length_mm"
+    if name == "stack_length_mm":
+        return False
+    if table == "rotor" or name == "bore_diameter_mm":  # the rim moves with the bore
+        is_rotor_drawn = design.rotor.outline is not None
+        return is_rotor_drawn or (table == "stator" and design.stator.outline is not None)
+    return design.stator.outline is not None
 
 
 def _is_used(barrier: BarrierDesign, name: str) -> bool:
