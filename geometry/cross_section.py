@@ -47,6 +47,7 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         ribs=ribs,
         sector_poles=covered,
         rotor_period=len(poles),
+        ring_radius=None if design.rotor.contour is None else frame.ring_radius,
     )
 
 

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Annotated, Literal, Self
 
 from pydantic import BeforeValidator, Field, PrivateAttr
 
-from .design_details import HoleDesign, KeywayDesign, NotchDesign
+from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
 from .design_table import NotNegative, Positive
 from .design_table import Table as _Table
@@ -141,6 +141,7 @@ class RotorDesign(OutlineKeys):
     notch: Annotated[tuple[NotchDesign, ...], Field(max_length=12)] = ()
     hole: Annotated[tuple[HoleDesign, ...], Field(max_length=12)] = ()
     keyway: KeywayDesign | None = None
+    contour: ContourDesign | None = None
     _outline: "RotorOutline | None" = PrivateAttr(default=None)
 
     @property

@@ -17,6 +17,7 @@ from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
 from .rib_cuts import rib_cuts
+from .rotor_contour import RING_SHARE, contour, followed, ribs_to_rim
 from .rotor_outline import RotorOutline, rotor_outline
 from .section import Region, Rib
 from .unlike_poles import alternate_pole, halves
@@ -31,6 +32,7 @@ class RotorFrame:
 
     rotor_radius: float
     shaft_radius: float
+    ring_radius: float  # inner circle of the gap's turned half; the rotor's if that is round
     circle_radius: float
     pole_pairs: int
 
@@ -44,11 +46,13 @@ def rotor_frame(design: MachineDesign) -> RotorFrame:
     """Radii of the design's rotor in m; the turning circle lies in the middle of the gap."""
     bore = 0.5 * MM * design.stator.bore_diameter_mm
     rotor = bore - MM * design.rotor.gap_mm
+    ring = rotor if design.rotor.contour is None else rotor + RING_SHARE * (bore - rotor)
     return RotorFrame(
         rotor_radius=rotor,
         shaft_radius=0.5 * MM * design.rotor.shaft_diameter_mm,
+        ring_radius=ring,
         # The same expression as CrossSection.circle_radius.
-        circle_radius=0.5 * (bore + rotor),
+        circle_radius=0.5 * (bore + ring),
         pole_pairs=design.pole_pairs,
     )
 
@@ -80,6 +84,7 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
         ValueError: for a shape that `checks.check_design` would have refused.
     """
     frame = rotor_frame(design)
+    design = following(design)
     air: list[Region] = []
     ribs: list[Rib] = []
     for number, barrier in enumerate(design.rotor.barrier, start=1):
@@ -95,8 +100,8 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
         *air,
         *(cut_out.region for cut_out in pole.cut_outs),
         Region("shaft", "shaft", pole.shaft),
-        Region("gap_rotor", "air", _gap(frame, pole.gap_side)),
-    ), tuple(ribs)
+        *_gap(frame, pole.gap_side),
+    ), tuple(ribs_to_rim(ribs, air, rim_of(design)))
 
 
 def cavity_names(number: int, count: int) -> tuple[str, ...]:
@@ -131,18 +136,50 @@ def _tangential_ribs(number: int, upper: HalfBarrier, lower: HalfBarrier) -> lis
 def bare_pole(design: MachineDesign) -> RotorOutline:
     """One pole of the rotor with its details, before barriers are cut, in the rotor's frame."""
     frame = rotor_frame(design)
-    rim = _arc_about_shaft(frame.rotor_radius, frame)
-    return rotor_outline(design, (rim,), frame.shaft_radius, 2.0 * frame.q_axis)
+    return rotor_outline(design, _rim(design), frame.shaft_radius, 2.0 * frame.q_axis)
 
 
-def _gap(frame: RotorFrame, inside: Sequence[Edge]) -> Path:
-    """The rotor's half of the gap."""
+def following(design: MachineDesign) -> MachineDesign:
+    """The design with its barriers' ends moved to follow a rim that is no circle."""
+    rim = rim_of(design)
+    if rim is None:
+        return design
+    frame = rotor_frame(design)
+    return followed(design, frame.rotor_radius, turned(Path(rim), -frame.q_axis).edges)
+
+
+def rim_of(design: MachineDesign) -> tuple[Edge, ...] | None:
+    """The rim of one pole without notches; None for the circle of the rotor's radius."""
+    return None if design.rotor.contour is None else _rim(design)
+
+
+def _rim(design: MachineDesign) -> tuple[Edge, ...]:
+    frame, shape = rotor_frame(design), design.rotor.contour
+    if shape is None:
+        return (_arc_about_shaft(frame.rotor_radius, frame),)
+    gap = MM * design.rotor.gap_mm
+    return tuple(contour(shape, frame.rotor_radius, gap, 2.0 * frame.q_axis))
+
+
+def _gap(frame: RotorFrame, inside: Sequence[Edge]) -> list[Region]:
+    """The rotor's half of the gap, and the air between a rim that is no circle and its ring."""
     circle = _arc_about_shaft(frame.circle_radius, frame)
+    if frame.ring_radius == frame.rotor_radius:
+        return [Region("gap_rotor", "air", _between(inside, (circle,)))]
+    ring = (_arc_about_shaft(frame.ring_radius, frame),)
+    return [
+        Region("rim_air", "air", _between(inside, ring)),
+        Region("gap_rotor", "air", _between(ring, (circle,))),
+    ]
+
+
+def _between(inside: Sequence[Edge], outside: Sequence[Edge]) -> Path:
+    """The area between two chains that run from d axis to d axis."""
     return Path(
         (
-            line(inside[0].start, circle.start),
-            circle,
-            line(circle.end, inside[-1].end),
+            line(inside[0].start, outside[0].start),
+            *outside,
+            line(outside[-1].end, inside[-1].end),
             *(reversed_edge(edge) for edge in reversed(inside)),
         )
     )

@@ -87,9 +87,10 @@ class CrossSection:
     cavities, `barrier_<k>_<letter>`; `magnet_<k>` or, for a pair, `magnet_<k>_<letter>`, each a
     hole of its cavity; `notch_<k>`, `hole_<k>` and `key_<k>`, with `_right` and `_left` where
     there are two in a pole or halves beside its sides; `shaft` (inside the bore); `gap_rotor`
-    (rim to turning circle); from the second pole on with `p<pole>_` before them, ribs likewise.
-    Stator: `gap_stator` (turning circle to bore), `opening_<s>` and `wedge_<s>` (air between bore
-    and copper), `slot_<s>_layer_<l>` (copper; layer 0 at the slot bottom), `stator_iron`.
+    (rim to turning circle) and, where the rim is no circle, `rim_air` between the two; from the
+    second pole on with `p<pole>_` before them, ribs likewise. Stator: `gap_stator` (turning circle
+    to bore), `opening_<s>` and `wedge_<s>` (air between bore and copper), `slot_<s>_layer_<l>`
+    (copper; layer 0 at the slot bottom), `stator_iron`.
     """
 
     pole_pairs: int
@@ -104,6 +105,7 @@ class CrossSection:
     ribs: tuple[Rib, ...]
     sector_poles: int = 1  # that the regions cover
     rotor_period: int = 1  # poles after which the rotor repeats; sector_poles is a multiple
+    ring_radius: float | None = None  # inner circle of `gap_rotor` where the rim is no circle
 
     @property
     def poles(self) -> int:
@@ -141,9 +143,14 @@ class CrossSection:
         return self.stator_bore_radius - self.rotor_radius
 
     @property
+    def gap_ring_radius(self) -> float:
+        """Radius in m of the inner circle of `gap_rotor`: the rotor's own if that is round."""
+        return self.rotor_radius if self.ring_radius is None else self.ring_radius
+
+    @property
     def circle_radius(self) -> float:
-        """Radius of the turning circle, the middle of the gap, in m."""
-        return 0.5 * (self.stator_bore_radius + self.rotor_radius)
+        """Radius of the turning circle, the middle of the ring of even thickness, in m."""
+        return 0.5 * (self.stator_bore_radius + self.gap_ring_radius)
 
 
 def rotor_cell(section: CrossSection) -> CrossSection:

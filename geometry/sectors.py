@@ -9,6 +9,7 @@ as steel has no sign.
 import cmath
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -70,9 +71,9 @@ def rotor_sector(poles: Sequence[Pole], pole_pairs: int, sector_poles: int) -> P
 
 def _turned_region(region: Region, angle: float, pole: int) -> Region:
     way = cmath.exp(1j * angle) * (1 if pole % 2 else -1)  # magnets alternate from pole to pole
-    return Region(
+    return replace(
+        region,
         name=pole_name(region.name, pole),
-        material=region.material,
         outer=turned(region.outer, angle),
         holes=tuple(turned(path, angle) for path in region.holes),
         magnetisation=region.magnetisation * way,

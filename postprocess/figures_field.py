@@ -107,7 +107,7 @@ def pole_parts(
     pole = section.sector_angle
     turn = upright(section)
     place = rotor_place(sector, angle)
-    nodes = sheared(sector.rotor.nodes, place.rest, section.rotor_radius, section.circle_radius)
+    nodes = sheared(sector.rotor.nodes, place.rest, section.gap_ring_radius, section.circle_radius)
     parts = [_part(sector.stator.nodes, sector.stator.elements, solution.a_stator, turn)]
     if section.is_full_circle:
         whole = _part(nodes, sector.rotor.elements, solution.a_rotor, turn * cmath.exp(1j * angle))

@@ -122,7 +122,7 @@ def size_motion(design: MachineDesign, key: str) -> SizeMotion:
         return (of(high) - of(low)) / (2.0 * KEY_STEP)
 
     return SizeMotion(
-        rim_radius=slope(lambda d: rotor_frame(d).rotor_radius),
+        rim_radius=slope(lambda d: rotor_frame(d).ring_radius),
         bore_radius=slope(lambda d: 0.5 * MM * d.stator.bore_diameter_mm),
         stack_length=slope(lambda d: MM * d.stator.stack_length_mm),
     )

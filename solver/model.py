@@ -226,7 +226,7 @@ def _model(
     return MagneticModel(
         sector=sector,
         stack_length=section.stack_length,
-        rim_radius=section.rotor_radius,
+        rim_radius=section.gap_ring_radius,
         bore_radius=section.stator_bore_radius,
         axis_a=winding.axis_a,
         settings=settings,
