@@ -5,6 +5,7 @@ stay. Checks of shapes are in `slot_checks` and `barrier_checks`, the search for
 `remedies`.
 """
 
+from .contour_checks import contour_faults, rim_faults
 from .design import MachineDesign
 from .detail_checks import detail_faults
 from .errors import Finding
@@ -12,6 +13,7 @@ from .half_checks import SLACK
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
+from .rotor import following
 from .rotor_checks import barrier_faults, rotor_faults
 from .slot_checks import stator_faults
 from .unlike_poles import of_all_poles
@@ -41,15 +43,14 @@ def _ring_faults(design: MachineDesign) -> list[Fault]:
     # A drawn rotor stands as it was recognised, ribs thinner than the sheet included.
     if disc or design.rotor.poles % 2 or design.rotor.outline is not None:
         return disc
-    return rotor_faults(design) + _detail_faults(design) or _magnet_faults(design)
+    rim = contour_faults(design)
+    return rim or _pole_faults_with(design, rotor_faults(following(design)))
 
 
-def _detail_faults(design: MachineDesign) -> list[Fault]:
-    return of_all_poles(design, detail_faults)
-
-
-def _magnet_faults(design: MachineDesign) -> list[Fault]:
-    return of_all_poles(design, magnet_faults)
+def _pole_faults_with(design: MachineDesign, of_barriers: list[Fault]) -> list[Fault]:
+    """The faults of the barriers with those of what lies beside and in them."""
+    faults = of_barriers + of_all_poles(design, rim_faults) + of_all_poles(design, detail_faults)
+    return faults or of_all_poles(design, magnet_faults)
 
 
 def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
@@ -58,7 +59,8 @@ def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
     if scale:
         return scale
     if barrier_number(key) is not None:
-        return barrier_faults(design, key) + _detail_faults(design) or _magnet_faults(design)
+        rim = contour_faults(design)
+        return rim or _pole_faults_with(design, barrier_faults(following(design), key))
     if key in SCALES:
         return _shape_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

@@ -5,9 +5,7 @@ where the d axis lies at angle 0.
 """
 
 import cmath
-import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from .bands import band_of
 from .cavities import cut_barrier
@@ -17,44 +15,15 @@ from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
 from .rib_cuts import rib_cuts
-from .rotor_contour import RING_SHARE, contour, followed, ribs_to_rim
+from .rotor_contour import contour, followed, ribs_to_rim
+from .rotor_frame import RotorFrame
+from .rotor_frame import rotor_frame as rotor_frame
 from .rotor_outline import RotorOutline, rotor_outline
 from .section import Region, Rib
 from .unlike_poles import alternate_pole, halves
 
 MM = 1e-3  # m
 LETTERS = "abcde"
-
-
-@dataclass(frozen=True, slots=True)
-class RotorFrame:
-    """Radii (m) and angles that the whole rotor shares."""
-
-    rotor_radius: float
-    shaft_radius: float
-    ring_radius: float  # inner circle of the gap's turned half; the rotor's if that is round
-    circle_radius: float
-    pole_pairs: int
-
-    @property
-    def q_axis(self) -> float:
-        """Angle of the q axis, half a pole pitch, in rad."""
-        return 0.5 * math.pi / self.pole_pairs
-
-
-def rotor_frame(design: MachineDesign) -> RotorFrame:
-    """Radii of the design's rotor in m; the turning circle lies in the middle of the gap."""
-    bore = 0.5 * MM * design.stator.bore_diameter_mm
-    rotor = bore - MM * design.rotor.gap_mm
-    ring = rotor if design.rotor.contour is None else rotor + RING_SHARE * (bore - rotor)
-    return RotorFrame(
-        rotor_radius=rotor,
-        shaft_radius=0.5 * MM * design.rotor.shaft_diameter_mm,
-        ring_radius=ring,
-        # The same expression as CrossSection.circle_radius.
-        circle_radius=0.5 * (bore + ring),
-        pole_pairs=design.pole_pairs,
-    )
 
 
 def rotor_poles(

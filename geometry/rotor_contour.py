@@ -10,8 +10,6 @@ symmetric to the q axis and without a kink anywhere:
 
 A barrier's end moves inward along its own rule, as with a wider tangential rib, until its least
 distance to the rim is the width stated. Depths count from the circle of the rotor's radius.
-Between rim and gap lies air up to a ring a fixed share of the gap outside the rotor's radius, so
-that the part of the gap that is turned stays a ring of even thickness.
 Source of all formulas: derived, plane geometry.
 """
 
@@ -27,11 +25,12 @@ from .design_details import ContourDesign
 from .distances import nearest
 from .half_barrier import half_barrier
 from .section import Region, Rib
+from .unlike_poles import clockwise_half
 
 MM = 1e-3  # m
-RING_SHARE = 0.2  # of the least gap, from the rotor's radius to the ring that is turned
 FOLLOW_TOL = 1e-13  # m, of a followed rib's width
 MOST_STEPS = 40
+END_EDGES = 1  # beside the edge that a rib starts on, that may be nearer to another rim
 
 
 def contour(design: ContourDesign, rotor_radius: float, gap: float, pitch: float) -> list[Edge]:
@@ -125,14 +124,27 @@ def followed(design: MachineDesign, rotor_radius: float, rim: Sequence[Edge]) ->
     Returns:
         The design; a barrier that has no outline, or cannot follow, is left as it is.
     """
-    barriers = []
-    for barrier in design.rotor.barrier:
-        try:
-            barriers.append(_followed_barrier(barrier, rotor_radius, design.pole_pairs, rim))
-        except ValueError:
-            barriers.append(barrier)  # its own checks say why
-    rotor = design.rotor.model_copy(update={"barrier": tuple(barriers)})
+    own, other = (
+        tuple(_both_halves(barrier, rotor_radius, design.pole_pairs, rim) for barrier in barriers)
+        for barriers in (design.rotor.barrier, design.rotor.alternate_barrier)
+    )
+    rotor = design.rotor.model_copy(update={"barrier": own, "alternate_barrier": other})
     return design.model_copy(update={"rotor": rotor})
+
+
+def _both_halves(
+    barrier: BarrierDesign, rotor_radius: float, pole_pairs: int, rim: Sequence[Edge]
+) -> BarrierDesign:
+    """The barrier with the ribs of both halves following; as it is where one cannot."""
+    try:
+        moved = _followed_barrier(barrier, rotor_radius, pole_pairs, rim)
+        if barrier.other_half is None:
+            return moved
+        half = _followed_barrier(clockwise_half(barrier), rotor_radius, pole_pairs, rim)
+    except ValueError:
+        return barrier  # its own checks say why
+    width = {"tangential_rib_mm": half.tangential_rib_mm}
+    return moved.model_copy(update={"other_half": barrier.other_half.model_copy(update=width)})
 
 
 def _followed_barrier(
@@ -167,11 +179,17 @@ def ribs_to_rim(
 
 
 def _rib_to_rim(rib: Rib, cavities: Sequence[Region], rim: Sequence[Edge]) -> Rib:
-    """The rib from its barrier's end, the edge that it starts on, to the nearest point of the rim."""
-    edges = [edge for region in cavities for edge in region.outer.edges]
-    away = [abs(nearest(edge, line(rib.start, rib.end))[0] - rib.start) for edge in edges]
-    start, end = _nearest([edges[away.index(min(away))]], rim)
-    return replace(rib, start=start, end=end)
+    """The rib from its barrier's end, where it starts on the round rotor, to the rim."""
+    spot = line(rib.start, rib.end)
+    _, path, at = min(
+        (abs(nearest(edge, spot)[0] - rib.start), k, at)
+        for k, region in enumerate(cavities)
+        for at, edge in enumerate(region.outer.edges)
+    )
+    edges = cavities[path].outer.edges
+    end = [edges[(at + step) % len(edges)] for step in range(-END_EDGES, END_EDGES + 1)]
+    start, foot = _nearest(end, rim)
+    return replace(rib, start=start, end=foot)
 
 
 def _nearest(first: Sequence[Edge], second: Sequence[Edge]) -> tuple[Point, Point]:

@@ -19,6 +19,7 @@ from .curves import Edge, Path, Point, arc, area, line, reversed_edge
 from .design import MachineDesign
 from .drawn_stator_regions import drawn_stator_regions
 from .errors import Finding, GeometryError
+from .rotor_frame import rotor_frame
 from .section import Material, Region
 
 MM = 1e-3  # m
@@ -178,8 +179,7 @@ def stator_ring(design: MachineDesign) -> StatorRing:
     """The ring of the design's stator, in m."""
     bore = 0.5 * MM * design.stator.bore_diameter_mm
     return StatorRing(
-        # The same expression as CrossSection.circle_radius: bore and rotor radius averaged.
-        circle_radius=0.5 * (bore + (bore - MM * design.rotor.gap_mm)),
+        circle_radius=rotor_frame(design).circle_radius,
         bore_radius=bore,
         outer_radius=0.5 * MM * design.stator.outer_diameter_mm,
         slots=design.stator.slots,
