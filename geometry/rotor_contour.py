@@ -153,7 +153,7 @@ def _followed_barrier(
     stated = MM * barrier.tangential_rib_mm
     width = stated + rotor_radius - radius_at(rim, math.radians(barrier.end_angle_deg))
     for _ in range(MOST_STEPS):
-        moved = barrier.model_copy(update={"tangential_rib_mm": width / MM})
+        moved = _with_rib(barrier, width / MM)
         half = half_barrier(moved, rotor_radius, pole_pairs)
         # Towards the rim the distance falls by hardly less than the way: slope 1 is enough.
         lack = stated - _length(_nearest(half.end, rim))
@@ -161,6 +161,16 @@ def _followed_barrier(
             return moved
         width += lack
     raise ValueError("the barrier's end does not settle below the rim")
+
+
+def _with_rib(barrier: BarrierDesign, rib_mm: float) -> BarrierDesign:
+    """The barrier with another tangential rib, both ends of its profile wider by as much."""
+    inner = barrier.tangential_rib_inner_mm
+    if inner is not None:
+        inner += rib_mm - barrier.tangential_rib_mm
+    return barrier.model_copy(
+        update={"tangential_rib_mm": rib_mm, "tangential_rib_inner_mm": inner}
+    )
 
 
 def ribs_to_rim(
