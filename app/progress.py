@@ -16,8 +16,8 @@ SHARES = {
     "mesh": 0.03,
     "magnetic model": 0.02,
     "current angle": 0.2,
-    "stress": 0.0,
     "torque waveform": 0.36,
+    "stress": 0.0,
     "error bars": 0.2,
     "magnets": 0.0,  # only where there are any
     "files": 0.01,

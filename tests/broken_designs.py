@@ -125,7 +125,7 @@ _KEYS = (
     ),
 )
 
-_WHOLE_SLOTS = "accepted a whole number from 6 to 144"
+_WHOLE_SLOTS = "accepted a whole number from 3 to 144"
 _TYPES = (
     _value("text for a whole number", "stator.", "slots", '"24"', f"this is text; {_WHOLE_SLOTS}"),
     _value(
