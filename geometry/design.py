@@ -7,10 +7,12 @@ several values are the business of `checks`.
 
 from typing import TYPE_CHECKING, Annotated, Literal, Self
 
-from pydantic import BeforeValidator, Field, PrivateAttr
+from pydantic import BeforeValidator, Field, PrivateAttr, model_validator
+from pydantic_core import PydanticCustomError
 
 from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
+from .design_slots import KEYS_OF_SHAPE, slot_key_faults
 from .design_table import NotNegative, Positive
 from .design_table import Table as _Table
 from .design_table import whole as _whole
@@ -20,19 +22,27 @@ if TYPE_CHECKING:
 
 
 class StatorDesign(OutlineKeys):
-    """The stator as it exists: semi-closed slots between teeth with parallel sides."""
+    """The stator as it exists: slots all alike, symmetric about their centre lines.
+
+    Which keys a slot has is said by its sides, bottom and mouth, see `design_slots`.
+    """
 
     outer_diameter_mm: Positive
     bore_diameter_mm: Positive
     stack_length_mm: Positive
     slots: Annotated[int, Field(ge=3, le=144)]
-    tooth_width_mm: Positive
-    slot_depth_mm: Positive  # from the bore to the slot bottom
-    slot_opening_mm: Positive
-    opening_depth_mm: Positive  # straight mouth at the bore
+    slot_sides: Literal["parallel_tooth", "parallel_slot"] = "parallel_tooth"
+    slot_bottom: Literal["concentric", "flat", "round"] = "concentric"
+    slot_mouth: Literal["semi_closed", "open", "closed"] = "semi_closed"
+    tooth_width_mm: Positive | None = None  # teeth with parallel sides
+    slot_width_mm: Positive | None = None  # slots with parallel sides
+    slot_depth_mm: Positive  # from the bore to the slot bottom, on the centre line
+    slot_opening_mm: Positive | None = None  # semi-closed
+    opening_depth_mm: Positive | None = None  # semi-closed: straight mouth at the bore
+    bridge_mm: Positive | None = None  # closed: iron between bore and slot
     wedge_angle_deg: Annotated[float, Field(ge=0.0, le=60.0)] = 30.0  # of the tooth tip's underside
-    wedge_depth_mm: NotNegative = 0.0  # radial depth kept free of copper under the tooth tip
-    slot_corner_radius_mm: NotNegative = 1.0  # at the slot bottom
+    wedge_depth_mm: NotNegative = 0.0  # depth kept free of copper under tooth tip, bore or bridge
+    slot_corner_radius_mm: NotNegative = 1.0  # at a concentric or flat slot bottom
     _outline: "StatorOutline | None" = PrivateAttr(default=None)
 
     @property
@@ -45,6 +55,20 @@ class StatorDesign(OutlineKeys):
         copy = self.model_copy()
         copy._outline = outline
         return copy
+
+    @model_validator(mode="after")
+    def _keys_of_the_slot(self) -> Self:
+        fields = type(self).model_fields
+        stated = [key for key, field in fields.items() if getattr(self, key) != field.default]
+        found = slot_key_faults(self.slot_choices, stated)
+        if found:
+            raise PydanticCustomError(KEYS_OF_SHAPE, "keys of another shape", {"found": found})
+        return self
+
+    @property
+    def slot_choices(self) -> tuple[str, str, str]:
+        """Sides, bottom and mouth of the slots."""
+        return self.slot_sides, self.slot_bottom, self.slot_mouth
 
 
 class WindingDesign(_Table):

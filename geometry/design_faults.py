@@ -11,6 +11,7 @@ from typing import Any
 from pydantic import BaseModel, ValidationError
 from pydantic_core import ErrorDetails
 
+from .design_slots import KEYS_OF_SHAPE
 from .key_lines import KeyPath
 
 Schema = Mapping[str, Any]
@@ -31,7 +32,10 @@ def faults(error: ValidationError, model: type[BaseModel]) -> list[tuple[KeyPath
     found = []
     for detail in details:
         loc = detail["loc"]
-        if loc in unknown:
+        if detail["type"] == KEYS_OF_SHAPE:
+            for key, text in detail["ctx"]["found"]:
+                found.append(((*loc, key), f"{key_text((*loc, key))}: {text}"))
+        elif loc in unknown:
             found.append((loc, _unknown_text(root, detail, unknown[loc])))
         elif not (loc in missing and loc in replaced) and not _is_miscount(detail):
             found.append((_place(detail), _text(root, detail)))

@@ -164,7 +164,8 @@ def _domain(design: MachineDesign, key: str) -> Domain:
         return Domain(0.1 * sheet, outer, is_low_accepted=True)  # 0 stands apart from the range
     if name == "wedge_depth_mm":
         # Under a flat tooth tip 0 stands apart from the range too.
-        low = 0.0 if design.stator.wedge_angle_deg else 0.1 * sheet
+        is_tipped = design.stator.slot_mouth == "semi_closed" and design.stator.wedge_angle_deg
+        low = 0.0 if is_tipped else 0.1 * sheet
         return Domain(low, outer, is_low_accepted=True)
     if name == "angle_deg":
         return Domain(0.0, 90.0 / design.pole_pairs, is_low_accepted=True, has_limit=True)

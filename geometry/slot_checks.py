@@ -8,11 +8,13 @@ a tenth of the sheet's thickness are refused because no mesh could follow them.
 import math
 
 from .design import MachineDesign
+from .design_slots import idle_slot_keys
 from .drawn_slot import layered
 from .errors import GeometryError, OutlineError
 from .outline_report import StatorOutline
 from .remedies import Fault
-from .stator import SlotDimensions, slot_copper_area, slot_dimensions
+from .slot_dimensions import SlotDimensions, slot_dimensions
+from .slot_outline import slot_copper_area
 
 MM = 1e-3  # m
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
@@ -82,35 +84,40 @@ def _single_sizes(design: MachineDesign) -> list[Fault]:
         ("tooth_thin", "tooth_width_mm", stator.tooth_width_mm, sheet),
         ("opening_narrow", "slot_opening_mm", stator.slot_opening_mm, sheet),
         ("lip_thin", "opening_depth_mm", stator.opening_depth_mm, 0.5 * sheet),
+        ("bridge_thin", "bridge_mm", stator.bridge_mm, sheet),
     )
     return [
         _fault(code, (key,), f"under {limit:g} mm, too thin to punch", MM * (limit - value))
         for code, key, value, limit in least
-        if MM * (limit - value) > SLACK
+        if value is not None and MM * (limit - value) > SLACK
     ]
 
 
 def _slot_faults(design: MachineDesign, dims: SlotDimensions) -> list[Fault]:
-    """Mouth, tooth tip, copper and yoke, from the bore outward."""
+    """Mouth, tooth tip, tooth, copper and yoke, from the bore outward."""
     sheet = MM * design.rotor.sheet_thickness_mm
     edge = 0.1 * sheet
-    bore = 0.5 * MM * design.stator.bore_diameter_mm
-    # Seen from the tooth's centre line, a corner of the mouth lies bore sin(half pitch - phi) off.
-    phi = math.asin(min(1.0, dims.opening_half_width / bore))
-    face = bore * math.sin(dims.half_pitch - phi)
-    depths = ("slot_depth_mm", "wedge_angle_deg", "wedge_depth_mm", "opening_depth_mm")
+    room = edge + _capped(dims.copper_height - dims.corner_height)
+    if design.stator.slot_mouth != "semi_closed":
+        # The inner side bulges up to `mouth_height`.
+        room = max(room, edge + dims.mouth_height - dims.corner_height)
     lacks = (
-        (
-            "opening_wide",
-            ("slot_opening_mm", "tooth_width_mm"),
-            "the mouth leaves no tooth tip beside it",
-            max(dims.opening_half_width + edge - dims.tip_half_width, 0.5 * sheet - face),
-        ),
+        *_mouth_lacks(design, dims),
         (
             "slot_shallow",
-            (*depths, "tooth_width_mm", "slot_corner_radius_mm"),
-            "between tooth tip and slot bottom there is no room for copper",
-            edge + _capped(dims.copper_height - dims.corner_height),
+            _shape_keys(
+                design,
+                "slot_depth_mm",
+                "wedge_angle_deg",
+                "wedge_depth_mm",
+                "opening_depth_mm",
+                "bridge_mm",
+                "tooth_width_mm",
+                "slot_width_mm",
+                "slot_corner_radius_mm",
+            ),
+            "between the slot's inner end and its bottom there is no room for copper",
+            room,
         ),
         (
             "yoke_thin",
@@ -121,28 +128,76 @@ def _slot_faults(design: MachineDesign, dims: SlotDimensions) -> list[Fault]:
     )
     faults = [_fault(code, keys, text, lack) for code, keys, text, lack in lacks if lack > SLACK]
     wedge = dims.copper_height - dims.mouth_height
+    if design.stator.slot_mouth != "semi_closed" and design.stator.wedge_depth_mm == 0.0:
+        wedge = 0.0
     if SLACK < wedge < edge - SLACK:
         text = f"a wedge of {wedge / MM:.3g} mm is too thin to draw"
-        faults.append(
-            _fault("wedge_thin", ("wedge_depth_mm", "wedge_angle_deg"), text, edge - wedge)
-        )
+        keys = _shape_keys(design, "wedge_depth_mm", "wedge_angle_deg")
+        faults.append(_fault("wedge_thin", keys, text, edge - wedge))
     return faults
+
+
+def _mouth_lacks(
+    design: MachineDesign, dims: SlotDimensions
+) -> list[tuple[str, tuple[str, ...], str, float]]:
+    """What is missing at the slot's inner end, and of teeth that the slots leave."""
+    stator, sheet = design.stator, MM * design.rotor.sheet_thickness_mm
+    edge = 0.1 * sheet
+    lacks = []
+    if stator.slot_mouth == "semi_closed":
+        bore = 0.5 * MM * stator.bore_diameter_mm
+        # Seen from the tooth's centre line, a corner of the mouth lies bore sin(half pitch - phi)
+        # off.
+        phi = math.asin(min(1.0, dims.opening_half_width / bore))
+        face = bore * math.sin(dims.half_pitch - phi)
+        lacks.append(
+            (
+                "opening_wide",
+                _shape_keys(design, "slot_opening_mm", "tooth_width_mm", "slot_width_mm"),
+                "the mouth leaves no tooth tip beside it",
+                max(dims.opening_half_width + edge - dims.tip_half_width, 0.5 * sheet - face),
+            )
+        )
+    else:
+        lacks.append(
+            (
+                "slot_narrow",
+                _shape_keys(design, "tooth_width_mm", "slot_width_mm"),
+                "at its inner end the slot is narrower than the sheet is thick",
+                0.5 * sheet - dims.entry.imag,
+            )
+        )
+    if stator.slot_sides == "parallel_slot":
+        text = "the slots leave teeth thinner than the sheet"
+        lacks.append(("tooth_thin", ("slot_width_mm",), text, sheet - dims.tooth_width))
+    return lacks
+
+
+def _shape_keys(design: MachineDesign, *keys: str) -> tuple[str, ...]:
+    """Those of the keys that the slot's shape has."""
+    idle = idle_slot_keys(design.stator.slot_choices)
+    return tuple(key for key in keys if key not in idle)
 
 
 def _corner_faults(design: MachineDesign, dims: SlotDimensions) -> list[Fault]:
     edge = 0.1 * MM * design.rotor.sheet_thickness_mm
     radius = dims.corner_radius
     key = ("slot_corner_radius_mm",)
-    if 0.0 < radius < edge - SLACK:
+    is_round = design.stator.slot_bottom == "round"
+    if 0.0 < radius < edge - SLACK and not is_round:
         return [_fault("corner_small", key, "too small to punch; 0 is sharp", edge - radius)]
     if dims.corner_radius_limit < edge:
         text = "the slot has no width left at its bottom"
-        keys = ("tooth_width_mm", "slot_depth_mm")
+        keys = _shape_keys(design, "tooth_width_mm", "slot_width_mm", "slot_depth_mm")
         return [_fault("slot_narrow", keys, text, edge - dims.corner_radius_limit)]
-    half_tooth = 0.5 * MM * design.stator.tooth_width_mm
-    reach = (half_tooth + radius) / max(dims.bottom_radius - radius, SLACK)
-    # Half the bottom's arc between its two fillets.
-    left = dims.bottom_radius * (dims.half_pitch - math.asin(min(1.0, reach)))
+    if is_round:
+        return []
+    left = dims.bottom_end.imag  # of a flat bottom, half
+    if design.stator.slot_bottom == "concentric":
+        reach = (radius - dims.flank.level) / max(dims.bottom_radius - radius, SLACK)
+        # Half the bottom's arc between its two fillets.
+        turn = dims.flank.angle - math.asin(min(1.0, max(-1.0, reach)))
+        left = dims.bottom_radius * turn
     if left < 0.5 * edge - SLACK:
         text = "the fillets leave no bottom between them"
         return [_fault("corner_large", key, text, 0.5 * edge - left)]

@@ -14,6 +14,7 @@ import numpy as np
 from lamwright.geometry.cross_section import drawn_rotor, drawn_rotor_period, drawn_stator
 from lamwright.geometry.design import BarrierDesign, MachineDesign, OtherHalfDesign
 from lamwright.geometry.design_drawing import OutlineKeys
+from lamwright.geometry.design_slots import idle_slot_keys
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.remedies import may_be_negative, value_of, with_value
 from lamwright.geometry.rotor import rotor_frame
@@ -130,11 +131,12 @@ def size_motion(design: MachineDesign, key: str) -> SizeMotion:
 
 def shape_keys(design: MachineDesign) -> tuple[str, ...]:
     """Every length and angle of stator, rotor and barriers, defaults that are in use included."""
+    idle = idle_slot_keys(design.stator.slot_choices)
     keys = [
         f"{table}.{name}"
         for table in ("stator", "rotor")
         for name in type(getattr(design, table)).model_fields
-        if _is_shape(name) and not _is_of_drawing(design, table, name)
+        if _is_shape(name) and not _is_of_drawing(design, table, name) and name not in idle
     ]
     for table in ("barrier", "alternate_barrier"):
         for number, barrier in enumerate(getattr(design.rotor, table), start=1):

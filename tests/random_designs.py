@@ -20,7 +20,7 @@ from lamwright.geometry.design import (
 )
 from lamwright.geometry.rotor_checks import rotor_faults
 from lamwright.geometry.slot_checks import stator_faults
-from lamwright.geometry.stator import slot_copper_area
+from lamwright.geometry.slot_outline import slot_copper_area
 
 MOST_DRAWS = 500  # about half of the draws are valid: 527 of 1000
 

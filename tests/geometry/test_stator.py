@@ -14,17 +14,9 @@ from lamwright.geometry.curves import Edge, area, line
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.section import Region
-from lamwright.geometry.stator import (
-    Compartment,
-    Slot,
-    StatorRing,
-    pole_regions,
-    slot_copper_area,
-    slot_dimensions,
-    slot_outline,
-    stator_regions,
-    stator_ring,
-)
+from lamwright.geometry.slot_dimensions import slot_dimensions
+from lamwright.geometry.slot_outline import Compartment, Slot, slot_copper_area, slot_outline
+from lamwright.geometry.stator import StatorRing, pole_regions, stator_regions, stator_ring
 
 DEMO = FilePath(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 
