@@ -36,6 +36,7 @@ class WindingReport:
     """A winding with what `winding` shows of it."""
 
     design_name: str
+    span: int  # of a coil, slots
     table: WindingTable
     factors: tuple[tuple[int, float], ...]  # odd electrical orders
     below: tuple[tuple[int, float], ...]  # mechanical orders under the working one
@@ -66,6 +67,7 @@ def _report(design: MachineDesign) -> WindingReport:
     below = [(n, winding_factor(table, n / pole_pairs)) for n in range(1, pole_pairs)]
     return WindingReport(
         design_name=design.name,
+        span=design.winding.coil_span_slots,
         table=table,
         factors=tuple((n, winding_factor(table, n)) for n in range(1, last + 1, 2)),
         below=tuple((n, factor) for n, factor in below if factor > LEAST_FACTOR),
@@ -104,7 +106,7 @@ def print_winding(report: WindingReport) -> None:
         soft_wrap=True,
         markup=False,
     )
-    console.print(_slots_table(table))
+    console.print(_slots_table(report))
     console.print(_factor_table(report))
     if report.below:
         orders = ", ".join(f"{n}: {factor:.4f}" for n, factor in report.below)
@@ -118,12 +120,16 @@ def print_winding(report: WindingReport) -> None:
     console.print(f"end winding of a phase     ~ {report.end_inductance * MILLI:.4g} mH")
 
 
-def _slots_table(table: WindingTable) -> Table:
+def _slots_table(report: WindingReport) -> Table:
+    table = report.table
     shown = Table(title="coil sides, + towards the reader", title_justify="left")
     shown.add_column("slot", justify="right")
-    names = ("layer 0", "layer 1")
-    for layer, place in zip(range(table.layers), (" (bottom)", " (bore)"), strict=False):
-        shown.add_column(names[layer] + (place if table.layers == 2 else ""), justify="center")
+    places = ("bottom", "bore")
+    if report.span == 1:  # side by side, counted counter-clockwise
+        places = ("next to the tooth before", "next to the tooth after")
+    for layer in range(table.layers):
+        place = f", {places[layer]}" if table.layers == 2 else ""
+        shown.add_column(f"layer {layer}{place}", justify="center")
     cells: dict[int, list[str]] = {}
     for slot, _, phase, conductors in sides(table):
         cells.setdefault(slot, []).append(("+" if conductors > 0.0 else "-") + phase)

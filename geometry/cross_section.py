@@ -48,6 +48,7 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         sector_poles=covered,
         rotor_period=len(poles),
         ring_radius=None if design.rotor.contour is None else frame.ring_radius,
+        bridge=MM * (design.stator.bridge_mm or 0.0),
     )
 
 

@@ -90,7 +90,8 @@ class CrossSection:
     (rim to turning circle) and, where the rim is no circle, `rim_air` between the two; from the
     second pole on with `p<pole>_` before them, ribs likewise. Stator: `gap_stator` (turning circle
     to bore), `opening_<s>` and `wedge_<s>` (air between bore and copper), `slot_<s>_layer_<l>`
-    (copper; layer 0 at the slot bottom), `stator_iron`.
+    (copper; layer 0 at the slot bottom, of tooth coils the clockwise half of the slot),
+    `stator_iron`.
     """
 
     pole_pairs: int
@@ -106,6 +107,7 @@ class CrossSection:
     sector_poles: int = 1  # that the regions cover
     rotor_period: int = 1  # poles after which the rotor repeats; sector_poles is a multiple
     ring_radius: float | None = None  # inner circle of `gap_rotor` where the rim is no circle
+    bridge: float = 0.0  # iron between the bore and closed slots, m; 0 where slots have mouths
 
     @property
     def poles(self) -> int:

@@ -172,8 +172,11 @@ def _bottom(
         along = (bottom - radius) ** 2 - level**2
         if along < 0.0:
             return complex(-math.inf), complex(0.0), complex(bottom)
+        corner = complex(math.sqrt(along), flank.level) * turn
+        if radius == 0.0:
+            return corner, corner, corner
         end = complex(math.sqrt(along), level) * turn * bottom / (bottom - radius)
-        return complex(math.sqrt(along), flank.level) * turn, end * (1.0 - radius / bottom), end
+        return corner, end * (1.0 - radius / bottom), end
     height = bottom - radius
     if stator.slot_bottom == "round":
         centre = complex(height)

@@ -19,7 +19,8 @@ where the conductors are positive: psi_a = stack length * sum(conductors * mean 
 i_a > 0, and B_r > 0 at axis_a: flux leaves the rotor there.
 The axes of phases B and C lie 120 and 240 electrical degrees counter-clockwise of axis_a.
 
-Axes of arrays: slots, layers (0 at the slot bottom), 3 phases.
+Axes of arrays: slots, layers (0 at the slot bottom; of tooth coils in two layers, which lie side
+by side, the clockwise half of the slot), 3 phases.
 """
 
 import math
@@ -74,10 +75,10 @@ def winding_findings(design: MachineDesign) -> tuple[Finding, ...]:
 def winding_table(design: MachineDesign) -> WindingTable:
     """The conductors of every coil side, and where phase A's axis lies.
 
-    A coil goes from slot k (for two layers its layer 1, towards the bore) to slot k + span
-    (layer 0). Coils are placed so that axis_a is 0 where it can be (half a slot pitch where q is
-    whole and the sum of q and span odd). Lap and concentric end connections of a single layer
-    give the same table.
+    A coil goes from slot k (for two layers its layer 1, towards the bore, of tooth coils towards
+    their tooth) to slot k + span (layer 0). Coils are placed so that axis_a is 0 where it can be
+    (half a slot pitch where q is whole and the sum of q and span odd). Lap and concentric end
+    connections of a single layer give the same table.
 
     Raises:
         GeometryError: for a winding that cannot be wound, with all findings.

@@ -170,7 +170,7 @@ def _across(section: CrossSection, fan: Fan, settings: MeshSettings) -> list[Acr
     iron = settings.across_iron / scale
     by_material: dict[Material, Across | None] = {
         "rotor_steel": Across(iron, settings.across_rib / scale, ribs),
-        "stator_steel": Across(iron),
+        "stator_steel": Across(iron, settings.across_rib / scale, _bridges(section, fan)),
         "air": Across(
             settings.across_air / scale,
             settings.across_clearance / scale,
@@ -196,6 +196,14 @@ def _clearances(section: CrossSection, fan: Fan) -> SizeSources:
             limits += [CLEARANCE_LIMIT * thickness] * len(region.outer.edges)
     corners = np.array(points, dtype=np.complex128)
     return SizeSources(folded_points(fan, corners), np.array(limits, dtype=np.float64))
+
+
+def _bridges(section: CrossSection, fan: Fan) -> SizeSources:
+    """The iron between bore and closed slots, meshed as a rib is; none where slots have mouths."""
+    count = section.sector_slots if section.bridge else 0
+    turns = np.exp(2j * math.pi * (np.arange(count) + 0.5) / section.slots)
+    middles = (section.stator_bore_radius + 0.5 * section.bridge) * turns
+    return SizeSources(folded_points(fan, middles), np.full(count, RIB_LIMIT * section.bridge))
 
 
 def _spacing(section: CrossSection) -> float:

@@ -15,7 +15,8 @@ import numpy as np
 
 from lamwright.geometry.curves import Edge, arc
 from lamwright.geometry.design import MachineDesign
-from lamwright.geometry.stator import MM, slot_outline
+from lamwright.geometry.slot_outline import slot_outline
+from lamwright.geometry.stator import MM
 
 INCH = 25.4  # mm
 

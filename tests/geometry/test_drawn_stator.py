@@ -15,7 +15,7 @@ from lamwright.geometry.drawn_stator_regions import drawn_stator_regions
 from lamwright.geometry.dxf_reader import read_pieces
 from lamwright.geometry.outline_edges import difference
 from lamwright.geometry.outline_report import stator_measures
-from lamwright.geometry.stator import slot_copper_area
+from lamwright.geometry.slot_outline import slot_copper_area
 
 DEMO = Path(__file__).parent.parent.parent / "designs" / "demo_24s4p_arc.toml"
 HEAL = 1e-5  # m
