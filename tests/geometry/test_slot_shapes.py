@@ -46,8 +46,9 @@ def assert_tiles(design, sector_poles=1):
                 assert edge.end != edge.start
     assert max(count.values()) == 1
     lone = [key for key in count if (key[1], key[0], -key[2]) not in count]
-    # Two sides of gap and iron each; turning circle and outside once a pole.
-    assert len(lone) == 4 + 2 * sector_poles
+    # Two sides of gap and iron each; turning circle and outside, of several poles once a slot.
+    arcs = 1 if sector_poles == 1 else sector_poles * ring.slots // (2 * ring.pole_pairs)
+    assert len(lone) == 4 + 2 * arcs
 
 
 @each_shape
