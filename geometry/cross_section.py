@@ -2,10 +2,10 @@
 
 from .checks import check_design
 from .design import MachineDesign
-from .errors import GeometryError
+from .errors import Finding, GeometryError
 from .rotor import rotor_frame, rotor_poles
 from .section import CrossSection, Region
-from .sectors import rotor_sector, smallest_sector
+from .sectors import ripples_in_sixty_degrees, rotor_sector, smallest_sector
 from .stator import stator_regions
 from .winding import winding_table
 
@@ -29,6 +29,9 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         raise GeometryError(findings)
     frame = rotor_frame(design)
     poles = rotor_poles(design)
+    findings = _ripple_findings(design, len(poles))
+    if findings:
+        raise GeometryError(findings)
     least = smallest_sector(winding_table(design), len(poles))
     covered = least if sector_poles is None else sector_poles
     if covered < 1 or covered % least or design.rotor.poles % covered:
@@ -50,6 +53,16 @@ def cross_section(design: MachineDesign, sector_poles: int | None = None) -> Cro
         ring_radius=None if design.rotor.contour is None else frame.ring_radius,
         bridge=MM * (design.stator.bridge_mm or 0.0),
     )
+
+
+def _ripple_findings(design: MachineDesign, rotor_period: int) -> tuple[Finding, ...]:
+    """Waveforms over 60 electrical degrees must be whole ones."""
+    slots, poles = design.stator.slots, design.rotor.poles
+    if ripples_in_sixty_degrees(slots, poles, rotor_period):
+        return ()
+    fault = "with unlike poles the torque does not repeat every 60 electrical degrees"
+    remedy = f"accepted multiples of {3 * poles}"
+    return (Finding("unlike_poles", "stator.slots", slots, fault, remedy),)
 
 
 def _least(design: MachineDesign, period: int) -> int:

@@ -46,6 +46,19 @@ def repeats(winding: WindingTable, poles: int) -> bool:
     return bool(np.all(np.abs(onward - sign * winding.conductors) <= SAME * most))
 
 
+def ripples_in_sixty_degrees(slots: int, poles: int, rotor_period: int) -> bool:
+    """Whether torque and dq linkages repeat every 60 electrical degrees.
+
+    Slots and winding are themselves, phases exchanged or reversed, when turned by k slots if that
+    is a multiple of 60 electrical degrees; the rotor is itself when turned by its period j times.
+    Both together must make 60 degrees: k 360 / slots = (60 + 180 rotor_period j) / pole pairs,
+    mechanical. Always so for whole q, and for like poles. Source: derived.
+    """
+    return any(
+        slots * (1 + 3 * rotor_period * j) % (3 * poles) == 0 for j in range(poles // rotor_period)
+    )
+
+
 def rotor_sector(poles: Sequence[Pole], pole_pairs: int, sector_poles: int) -> Pole:
     """Regions and ribs of a sector from the poles of the rotor's period.
 

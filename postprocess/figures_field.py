@@ -28,7 +28,7 @@ from lamwright.solver.isoparametric import NODE_PLACES, gradients_at, shape
 from lamwright.solver.types import FieldSolution, FloatArray, IntArray, SectorMesh
 
 from .figures_labels import RULER_FOOT, draw_note, draw_ruler, place_callouts
-from .figures_section import bare, draw_cut, pole_silhouette
+from .figures_section import bare, draw_cut, pole_silhouette, write_axis_name
 from .figures_style import (
     MM,
     QUARTERS,
@@ -287,6 +287,8 @@ def _draw_currents(
         size = min(7.0, 0.42 * room / per_point)
         apart = 0.62j * size * per_point
         at = MM * middle * turn
+        if section.sector_poles > 1:  # slots stand at all angles: side by side across the slot
+            apart = 0.8j * size * per_point * at / abs(at)
         _mark(ax, at - apart, value if abs(value) > NO_CURRENT * most else 0.0, size, style)
         ax.text(
             (at + apart).real,
@@ -357,17 +359,8 @@ def _draw_rotor_axes(
                 dashes=dashes,
                 zorder=4,
             )
-        tip = 1.06 * outer * along
-        ax.text(
-            tip.real,
-            tip.imag,
-            "q axis" if k % 2 else "d axis",
-            fontsize=style.text,
-            fontstyle="italic",
-            color=style.quiet,
-            ha="center",
-            va="bottom",
-        )
+        name = "q axis" if k % 2 else "d axis"
+        write_axis_name(ax, 1.06 * outer * along, name, section, style)
 
 
 def _notes(solution: FieldSolution, step: float) -> list[str]:

@@ -137,17 +137,25 @@ def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style
             dashes=(9, 2.5, 1.5, 2.5),
             zorder=5,
         )
-        at = tip * 1.012
-        ax.text(
-            at.real,
-            at.imag,
-            name,
-            fontsize=style.text,
-            fontstyle="italic",
-            color=style.quiet,
-            ha="center",
-            va="bottom",
-        )
+        write_axis_name(ax, tip * 1.012, name, section, style)
+
+
+def write_axis_name(ax: Axes, at: complex, name: str, section: CrossSection, style: Style) -> None:
+    """Write the name of a d or q axis at its tip in mm, clear of the stator."""
+    along = at / abs(at)
+    is_above = section.sector_poles == 1 or along.imag > 0.5
+    level = "bottom" if is_above else "top" if along.imag < -0.5 else "center"
+    side = "center" if is_above or along.imag < -0.5 else "left" if along.real > 0.0 else "right"
+    ax.text(
+        at.real,
+        at.imag,
+        name,
+        fontsize=style.text,
+        fontstyle="italic",
+        color=style.quiet,
+        ha=side,
+        va=level,
+    )
 
 
 def draw_cut(

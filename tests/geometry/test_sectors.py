@@ -9,7 +9,7 @@ from outlines import plain_design
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import area
 from lamwright.geometry.section import Region, base_name, pole_of, rotor_cell, rotor_iron
-from lamwright.geometry.sectors import repeats, smallest_sector
+from lamwright.geometry.sectors import repeats, ripples_in_sixty_degrees, smallest_sector
 from lamwright.geometry.winding import WindingTable
 
 TILING = 1e-9  # of the sector's area: rounding of some hundred edges
@@ -55,6 +55,23 @@ def test_repeats_with_the_sign_of_the_poles() -> None:
     assert repeats(table, 5)
     assert repeats(table, 10)
     assert not any(repeats(table, poles) for poles in (1, 2, 3, 4, 6))
+
+
+def test_ripple_of_unlike_poles() -> None:
+    """Whole q: always. 12/10 reverses after 5 poles, which exchanges two kinds; 9/8 never does.
+
+    All balanced pairs with like poles (the usual claim).
+    """
+    for poles in range(2, 21, 2):
+        for slots in range(3, 73, 3):
+            if slots % (3 * math.gcd(slots, poles // 2)) == 0:
+                assert ripples_in_sixty_degrees(slots, poles, 1)
+    for period in (1, 2, 4):
+        assert ripples_in_sixty_degrees(24, 4, period)
+    assert ripples_in_sixty_degrees(12, 10, 2)
+    assert not ripples_in_sixty_degrees(12, 10, 10)
+    assert not ripples_in_sixty_degrees(9, 8, 2)
+    assert not ripples_in_sixty_degrees(18, 4, 2)
 
 
 def total(regions: tuple[Region, ...]) -> float:
