@@ -95,5 +95,4 @@ def _turned_region(region: Region, angle: float, pole: int) -> Region:
 
 def _turned_rib(rib: Rib, angle: float, pole: int) -> Rib:
     turn = cmath.exp(1j * angle)
-    name = pole_name(rib.name, pole)
-    return Rib(name, rib.kind, rib.barrier, rib.start * turn, rib.end * turn)
+    return replace(rib, name=pole_name(rib.name, pole), start=rib.start * turn, end=rib.end * turn)

@@ -83,6 +83,19 @@ def mass_centre(body: ElasticBody) -> complex:
     return complex(x, y)
 
 
+def without_rigid_motion(body: ElasticBody, moved: FloatArray) -> FloatArray:
+    """Displacement (n_node, 2) in m less its mean shift and turn, each weighted by mass."""
+    shapes = shape(six_points()[0])
+    mass = body.density[:, None] * body.quad.weight  # (n_elem, n_qp)
+    at = points_at(body.mesh, six_points()[0]) @ [1.0, 1.0j]  # (n_elem, n_qp)
+    u = np.einsum("qi,ei->eq", shapes, (moved @ [1.0, 1.0j])[body.mesh.elements])
+    centre, shift = (np.sum(mass * value) / mass.sum() for value in (at, u))
+    arm = at - centre
+    turn = np.sum(mass * (arm.conj() * u).imag) / np.sum(mass * np.abs(arm) ** 2)
+    left = (moved - 1j * turn * body.mesh.nodes) @ [1.0, 1.0j] - shift + 1j * turn * centre
+    return np.stack([left.real, left.imag], axis=1)
+
+
 def free_strain_force(body: ElasticBody, free_strain: FloatArray) -> FloatArray:
     """Nodal forces (n_node, 2) in N/m of an isotropic free strain (heat, or an oversize part).
 

@@ -28,6 +28,7 @@ from .elastic import (
     free_strain_force,
     mass_centre,
     von_mises,
+    without_rigid_motion,
 )
 from .isoparametric import boundary_edges
 from .mesh import mesh_lamination
@@ -180,6 +181,8 @@ def _solved(
         force += free_strain_force(body, strain)
     held = supported(body, _supports(section, mesh, sides, settings))
     moved = held.displacement(force)
+    if not sides.first.size and settings.bore_displacement is None:
+        moved = without_rigid_motion(body, moved)
     edges = _free_edges(section, mesh, sides, settings)
     stress = recovered_stress(body, moved, edges, sides, strain)
     defect = stress_defect(body, moved, stress, strain)
