@@ -70,7 +70,7 @@ def _pair_faults(pole: Pole, outer: int, barriers: tuple[BarrierDesign, ...]) ->
     )
     if faults or near is None or far is None:
         return faults
-    iron = distance((*near.to_shaft, *near.end), (*far.to_rim, *far.end))
+    iron = distance((*near.to_shaft, *near.end), (*far.to_rim, *far.end), pole.sheet)
     text = f"{left(iron)} between barriers {outer} and {inner}"
     if iron <= 0.0:
         text = f"barriers {outer} and {inner} run into each other"

@@ -24,7 +24,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Protocol
 
-from .arc_fit import FIT_TOL, fitted
+from .arc_fit import fitted
 from .corners import crossings, foot, is_within
 from .curves import Edge, Point, chained, circle, offset_edge, piece, share_of
 from .design import BarrierDesign
@@ -221,7 +221,7 @@ class FieldSide:
 
     def _fitted(self, last: float, touch: Point) -> tuple[Edge, ...]:
         fit = fitted(self.line.at, 0.0, last)
-        if fit.deviation > FIT_TOL:
+        if not fit.is_close:
             raise ValueError("no 24 arcs follow a side of the barrier to 2 um")
         end = fit.edges[-1]
         return (*fit.edges[:-1], Edge(end.start, touch, end.bulge))

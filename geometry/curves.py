@@ -34,7 +34,7 @@ class Edge:
     @property
     def radius(self) -> float:
         """Radius in m, infinite for a line."""
-        if self.is_line:
+        if self.bulge == 0.0:
             return math.inf
         return abs(self.end - self.start) * (1.0 + self.bulge**2) / (4.0 * abs(self.bulge))
 
@@ -45,7 +45,7 @@ class Edge:
         Raises:
             ValueError: for a line.
         """
-        if self.is_line:
+        if self.bulge == 0.0:
             raise ValueError("a line has no centre")
         # Half chord over tan(sweep / 2), left of the chord for a positive sweep.
         offset = (1.0 - self.bulge**2) / (4.0 * self.bulge)
@@ -55,7 +55,7 @@ class Edge:
     def length(self) -> float:
         """Length along the edge in m."""
         chord = abs(self.end - self.start)
-        return chord if self.is_line else self.radius * abs(self.sweep)
+        return chord if self.bulge == 0.0 else self.radius * abs(self.sweep)
 
     def point(self, share: float) -> Point:
         """The point at `share` (0 to 1) of the length."""

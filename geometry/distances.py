@@ -28,8 +28,15 @@ def nearest(first: Edge, second: Edge) -> tuple[Point, Point]:
     return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
 
 
-def distance(first: Sequence[Edge], second: Sequence[Edge]) -> float:
-    """Least distance in m between two chains of edges, 0 where they cross."""
+def distance(first: Sequence[Edge], second: Sequence[Edge], enough: float = math.inf) -> float:
+    """Least distance in m between two chains of edges, 0 where they cross.
+
+    Args:
+        first: one chain.
+        second: the other.
+        enough: a distance in m that need not be told from a larger one: the result is exact below
+            it and otherwise no less than it.
+    """
     # No point of an edge lies further than half its length from its middle: pairs that this
     # bound keeps apart need no closer look, 5 of 9 for two straight barriers.
     spots_1, spots_2 = ([(e.point(0.5), 0.5 * e.length, e) for e in es] for es in (first, second))
@@ -40,7 +47,7 @@ def distance(first: Sequence[Edge], second: Sequence[Edge]) -> float:
     ]
     gap = math.inf
     for bound, edge_1, edge_2 in sorted(bounds, key=lambda pair: pair[0]):
-        if bound >= gap:
+        if bound >= min(gap, enough):
             break
         p, q = nearest(edge_1, edge_2)
         gap = min(gap, abs(p - q))

@@ -10,14 +10,15 @@ With four poles and asymptotes on the d axes, b = a, it is the field line r^2 co
 of a rotor without shaft.
 
 Flux line of a solid disc: iron of infinite permeability magnetised along the d axes by a
-sinusoidal potential carries the field w(z) = z^p + sigma / z^p, z = x + iy measured from the
-q axis. The lines of constant flux are
+sinusoidal potential carries the field w(z) = z^p - sigma / z^p, z = x + iy. Its real part, the
+flux, is constant on the lines
     (r^p - sigma / r^p) cos p theta = const,
 straight d axes and a circle of radius sigma^(1/2p) among them: the flux runs around that circle.
-The potential (r^p + sigma / r^p) sin p theta has the radial slope p (r^p - sigma / r^p)
-sin(p theta) / r, zero on it: no flux enters. Where the circle is the shaft, the line is that of the
-solid rotor with its shaft; sigma = 0 is the rotor without shaft, negative sigma one whose middle
-draws the flux in. With u = (r / a)^p, a the vertex and tau = sigma / a^(2p),
+Its imaginary part, the potential (r^p + sigma / r^p) sin p theta, has the radial slope
+p (r^p - sigma / r^p) sin(p theta) / r, zero on the circle: no flux enters. Where the circle is the
+shaft, the line is that of the solid rotor with its shaft; sigma = 0 is the rotor without shaft,
+negative sigma one whose middle draws the flux in. With u = (r / a)^p, a the vertex and
+tau = sigma / a^(2p),
     (u - tau / u) cos p theta = 1 - tau,   -1 < tau < 1.
 
 A barrier states the vertex (`depth_mm`, `thickness_mm`) and the end; b or sigma follow, in closed

@@ -231,7 +231,7 @@ class _Check:
         edges = (*half.to_shaft, *half.to_rim, *half.end)
         keys = ["thickness_mm", "depth_mm", "end_angle_deg", *self._end_keys()]
         if not (faults or self._is_parallel()):
-            thin = distance(half.to_shaft, half.to_rim)
+            thin = distance(half.to_shaft, half.to_rim, self.pole.sheet)
             text = f"the barrier is only {thin / MM:.3g} mm thick at its thinnest"
             faults += self.short("barrier_pinched", keys, text, self.pole.sheet - thin)
         reach = max(farthest(edge) for edge in edges)

@@ -90,15 +90,18 @@ def _arc(end: float, *, thickness: float, depth: float) -> BarrierDesign:
 
 def polygon(path: Path, sag: float = SAG) -> shapely.Polygon:
     """The path as a polygon with its corners on the curve, chords within `sag` of it (m)."""
-    points = []
+    runs = []
     for edge in path.edges:
-        count = 1
-        if not edge.is_line:
-            # The sagitta of a chord over the angle phi is r (1 - cos(phi / 2)) < r phi^2 / 8.
-            step = math.sqrt(8.0 * sag / edge.radius)
-            count = max(1, math.ceil(abs(edge.sweep) / step))
-        points += [edge.point(k / count) for k in range(count)]
-    return shapely.Polygon(np.column_stack([np.real(points), np.imag(points)]))
+        if edge.is_line:
+            runs.append(np.array([edge.start]))
+            continue
+        # The sagitta of a chord over the angle phi is r (1 - cos(phi / 2)) < r phi^2 / 8.
+        step = math.sqrt(8.0 * sag / edge.radius)
+        count = max(1, math.ceil(abs(edge.sweep) / step))
+        turn = np.exp(1j * edge.sweep / count * np.arange(count))
+        runs.append(edge.centre + (edge.start - edge.centre) * turn)
+    points = np.concatenate(runs)
+    return shapely.Polygon(np.column_stack([points.real, points.imag]))
 
 
 def turns(path: Path) -> list[float]:
