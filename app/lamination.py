@@ -9,7 +9,7 @@ from pathlib import Path
 from lamwright.geometry.contours import Contour, compare_contours, lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import area, perimeter
-from lamwright.geometry.design_file import Machine, design_hash, placed, read_machine
+from lamwright.geometry.design_file import Machine, design_hash, placed
 from lamwright.geometry.dxf import read_contours, write_contours
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.section import CrossSection, Rib
@@ -17,6 +17,7 @@ from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.files import json_text, prepared_folder, staged
 from lamwright.postprocess.quantities import OutlineFigures, figures_of
 
+from .drawings import Recognised, read_marked, write_recognised
 from .version import version
 
 DXF_FILE = "lamination.dxf"
@@ -32,6 +33,7 @@ class OutlineReport:
     dxf: Path
     figures: OutlineFigures
     ribs: tuple[Rib, ...]
+    recognised: tuple[Recognised, ...] = ()  # of each part that is a drawing
 
 
 def outline(path: Path, out: Path) -> OutlineReport:
@@ -41,14 +43,16 @@ def outline(path: Path, out: Path) -> OutlineReport:
         DesignError: the design cannot be read or drawn; one line for each fault.
         LamwrightError: the folder cannot be written.
     """
-    machine = read_machine(path)
+    machine = read_marked(path, out)
     section = section_of(machine)
     folder = prepared_folder(out)
     with staged(folder) as stage:
+        recognised = write_recognised(machine, stage)
         figures = write_outline(section, stage / DXF_FILE)
         record = _record(machine, figures, section.ribs)
         write_text(stage / OUTLINE_FILE, json_text(record))
-    return OutlineReport(machine.design.name, folder / DXF_FILE, figures, section.ribs)
+    name = machine.design.name
+    return OutlineReport(name, folder / DXF_FILE, figures, section.ribs, recognised)
 
 
 def section_of(machine: Machine) -> CrossSection:

@@ -13,7 +13,12 @@ MM = 1e3  # mm per m
 
 
 def print_outline(report: OutlineReport) -> None:
-    """The outline's figures and ribs, and where the DXF is."""
+    """What was recognised in drawings, the outline's figures and ribs, and where the DXF is."""
+    for part in report.recognised:
+        click.echo(f"{part.part} recognised in {part.file}, drawn in {part.picture}")
+        left = max(len(label) for label, _ in part.lines)
+        for label, text in part.lines:
+            click.echo(f"  {label:<{left}}  {text}")
     rows = [(figure.label, valued(figure)) for figure in figures_of(report.figures)]
     widths: dict[str, list[str]] = {}
     for rib in report.ribs:

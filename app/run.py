@@ -7,9 +7,9 @@ refused at once; then the workers are started, and their imports run beside this
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from lamwright.geometry.design_file import read_machine
 from lamwright.postprocess.files import prepared_folder, staged
 
+from .drawings import read_marked
 from .lamination import section_of
 from .pool import Crew, spare_cores
 from .progress import Progress, Stopwatch, silent
@@ -48,7 +48,7 @@ def assess(
         NotConverged: an iteration did not end; with its history.
     """
     watch = Stopwatch(progress)
-    machine = read_machine(Path(path))
+    machine = read_marked(Path(path), Path(out))
     section = section_of(machine)
     folder = prepared_folder(Path(out))
     with watch.phase("start"):

@@ -71,9 +71,9 @@ def recognised_rotor(
     tolerance = heal + DRAWN_TOL
     lamination = whole_lamination(edges, tolerance)
     rim = _rim_radius(lamination, tolerance)
+    raise_if_open(arrangement(lamination.pieces, heal), lamination, heal)
     circle = bore_arcs(lamination.pieces, rim, tolerance)
     whole = arrangement([*lamination.pieces, *circle], heal)
-    raise_if_open(whole, lamination, heal)
     kinds = _kinds(whole, len(lamination.pieces), lamination, rim, tolerance)
     border, cavities = _borders(whole, kinds)
     found = _q_axis(whole, cavities, poles, rim)

@@ -57,9 +57,9 @@ def recognised_stator(edges: Sequence[Edge], heal: float, hints: SlotHints) -> S
     tolerance = heal + DRAWN_TOL
     lamination = whole_lamination(edges, tolerance)
     bore, outer = _radii(lamination, tolerance)
+    raise_if_open(arrangement(lamination.pieces, heal), lamination, heal)
     circle = bore_arcs(lamination.pieces, bore, tolerance)
     whole = arrangement([*lamination.pieces, *circle], heal)
-    raise_if_open(whole, lamination, heal)
     groups = _slot_groups(whole, lamination, bore, outer, tolerance)
     return _one_slot(whole, lamination, groups, (bore, outer), tolerance, hints)
 
@@ -117,6 +117,7 @@ def _radii(lamination: Lamination, tolerance: float) -> tuple[float, float]:
         raise OutlineError("no arc about the shaft axis in the drawing", lamination.axis)
     bore = _mean_radius(about, min, tolerance)
     outer = _mean_radius(about, max, tolerance)
+    _raise_if_partial(about, lamination, outer, tolerance)
     for piece in lamination.pieces:
         for share in (0.0, 0.5, 1.0):
             point = piece.point(share)
@@ -130,6 +131,28 @@ def _radii(lamination: Lamination, tolerance: float) -> tuple[float, float]:
     if outer - bore < 100.0 * tolerance:
         raise OutlineError("bore and outer circle are one", lamination.place(complex(outer)))
     return bore, outer
+
+
+def _raise_if_partial(
+    about: Sequence[Edge], lamination: Lamination, outer: float, tolerance: float
+) -> None:
+    """Refuse an outermost circle that is not drawn all round: it is some other arc."""
+    on_outer = [e for e in about if abs(abs(e.start) - outer) < 2.0 * tolerance]
+    spans = sorted(
+        (cmath.phase(e.start if e.bulge > 0.0 else e.end) % (2.0 * math.pi), abs(e.sweep))
+        for e in on_outer
+    )
+    reach = spans[0][0]
+    room = 4.0 * tolerance / outer
+    for start, sweep in [*spans, (spans[0][0] + 2.0 * math.pi, 0.0)]:
+        if start > reach + room:
+            place = lamination.place(outer * cmath.exp(1j * reach))
+            text = (
+                f"no closed outer circle: the outermost arcs, radius {outer / MM:.4f} mm, end at "
+                f"{place_text(place)}"
+            )
+            raise OutlineError(text, place)
+        reach = max(reach, start + sweep)
 
 
 def _mean_radius(
@@ -161,6 +184,10 @@ def _slot_groups(
             if face in inside and abs(abs(point) - outer) > 2.0 * tolerance:
                 place = lamination.place(point)
                 raise OutlineError(f"the outer contour is not round at {place_text(place)}", place)
+    if not _reaches_any(whole, iron, bore, tolerance):
+        place = lamination.place(complex(bore))
+        text = f"what is drawn innermost, at {place_text(place)}, is not the bore of the iron"
+        raise OutlineError(text + "; name the stator's layers by outline_layers", place)
     rest = [f for f in whole.faces if f not in iron and f is not disc]
     groups = _grouped(rest)
     if not groups:

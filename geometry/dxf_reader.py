@@ -102,21 +102,31 @@ def read_pieces(
 
 
 def _bytes(path: FilePath) -> bytes:
-    try:
-        if not path.is_file():
-            raise OutlineError("no such file" if not path.exists() else "not a regular file")
-        with path.open("rb") as file:
-            data = file.read(LARGEST_FILE + 1)
-    except OSError as error:
-        reason = (error.strerror or "unknown reason").lower()
-        raise OutlineError(f"cannot be read, {reason}") from None
-    except ValueError:  # a null character in the name
-        raise OutlineError("not a file name") from None
+    fault = _read_fault(path)
+    if fault:
+        raise OutlineError(fault)
+    with path.open("rb") as file:
+        data = file.read(LARGEST_FILE + 1)
     if len(data) > LARGEST_FILE:
         raise OutlineError(f"file too large; accepted up to {LARGEST_FILE // 1_000_000} MB")
     if not data.strip():
         raise OutlineError("the file is empty; accepted a DXF drawing")
     return data
+
+
+def _read_fault(path: FilePath) -> str:
+    """Why `path` cannot be read, empty where it can."""
+    try:
+        if not path.exists():
+            return "no such file; accepted a DXF drawing, counted from the design's folder"
+        if not path.is_file():
+            return "not a regular file"
+        with path.open("rb"):
+            return ""
+    except OSError as error:
+        return f"cannot be read, {(error.strerror or 'unknown reason').lower()}"
+    except ValueError:  # a null character in the name
+        return "not a file name"
 
 
 def _document(data: bytes) -> "Drawing":

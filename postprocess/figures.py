@@ -11,17 +11,19 @@ matplotlib.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from lamwright.geometry.curves import Edge
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.whole_file import whole_file
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.types import FieldSolution, SectorMesh, StressSolution
 
+from .figures_drawing import MARK_SHARE, draw_close_up, draw_lines, draw_mark, extent
 from .figures_field import draw_flux
 from .figures_section import draw_key, draw_lamination, draw_section
 from .figures_stress import LETTERS, close_ups, draw_rib, draw_stress
@@ -31,6 +33,7 @@ from .ribs import RibReport
 from .torque import TorqueWaveform
 
 if TYPE_CHECKING:
+    from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 SVG_DPI = 120.0  # of rasterised fields in an SVG, whose borders are lines: 0.2 s less than at 200
@@ -151,6 +154,28 @@ def torque_figure(
     draw_torque(figure.add_axes((0.08, 0.545, 0.765, 0.335)), waveform, style)
     below = figure.add_axes((0.08, 0.08, 0.765, 0.335))
     draw_spectrum(below, waveform, section.slots, style)
+    return figure
+
+
+def found_figure(
+    title: str, edges: Sequence[Edge], fill: Callable[[Axes, Style], None], style: Style
+) -> Figure:
+    """A user's drawing (m) with what was recognised in it filled by `fill`."""
+    figure = _figure((8.0, 8.2), title, style)
+    ax = figure.add_axes((0.07, 0.055, 0.91, 0.9))
+    draw_lines(ax, edges, style)
+    fill(ax, style)
+    return figure
+
+
+def fault_figure(title: str, edges: Sequence[Edge], place: complex, style: Style) -> Figure:
+    """A user's drawing (m) with the place marked where it fails, and its surroundings."""
+    figure = _figure((12.0, 6.4), title, style)
+    whole = figure.add_axes((0.045, 0.075, 0.44, 0.84))
+    draw_lines(whole, edges, style)
+    draw_mark(whole, place, MARK_SHARE * extent(edges)[1], style)
+    close = figure.add_axes((0.545, 0.075, 0.44, 0.84))
+    draw_close_up(close, edges, place, style)
     return figure
 
 
