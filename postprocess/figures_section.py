@@ -23,6 +23,7 @@ from lamwright.geometry.section import (
 )
 
 from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
+from .figures_magnets import draw_arrows, magnet_callouts
 from .figures_style import (
     DRAWN_AS,
     FILLS,
@@ -55,6 +56,7 @@ def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
     """
     turn = upright(section)
     draw_materials(ax, section, [turn], style)
+    draw_arrows(ax, section, [turn], style)
     draw_axes_lines(ax, section, turn, style)
     callouts = section_callouts(section, turn)
     place_callouts(ax, pole_silhouette(section), callouts, style, RULER_FOOT)
@@ -67,6 +69,7 @@ def draw_lamination(ax: Axes, section: CrossSection, style: Style) -> None:
     count = section.sectors
     turns = [upright(section) * cmath.exp(2j * math.pi * k / count) for k in range(count)]
     draw_materials(ax, section, turns, style, line_share=0.5)
+    draw_arrows(ax, section, turns, style)
     rim = 1.02 * MM * section.stator_outer_radius * np.exp(1j * np.linspace(0, 2 * np.pi, 180))
     place_callouts(ax, rim, [], style)
     bare(ax)
@@ -198,6 +201,7 @@ def _rotor_callouts(section: CrossSection, turn: complex) -> list[Callout]:
         found.append(Callout(text, anchors[-1], "right"))
     first = {number: outline for (pole, number), outline in outlines.items() if pole == 1}
     found.append(Callout("flux carrier", _carrier_point(section, turn, first, anchors), "right"))
+    found += magnet_callouts(cell, turn)
     for rib in _right_hand(cell.ribs, turn):
         words = pole_words(pole_of(rib.name))
         text = f"{rib.kind} rib {rib.barrier}{words}, {MM * rib.width:.2f} mm"

@@ -51,13 +51,15 @@ class Style:
     dpi: float = 200.0  # pixels per inch of a PNG and of the rasterised part of an SVG
 
 
-# Lightness (CIE L*) falls from air 100 through stator 88, rotor 75, copper 58 to shaft 43.
+# Lightness (CIE L*) falls from air 100 through stator 88, rotor 75, copper 58 and shaft 43 to
+# magnets 30.
 FILLS: dict[Material, str] = {
     "air": "#ffffff",
     "stator_steel": "#d6dee4",
     "rotor_steel": "#aebbc6",
     "copper": "#cb7a43",
     "shaft": "#5f6873",
+    "magnet": "#1f4e44",
 }
 # Solid metal in a bore or hole never lies beside another but the shaft, from which a line parts it.
 DRAWN_AS: dict[Material, Material] = {"key": "shaft", "rivet": "shaft"}
@@ -67,6 +69,7 @@ MATERIAL_NAMES: dict[Material, str] = {
     "copper": "copper",
     "air": "air",
     "shaft": "shaft",
+    "magnet": "magnet",
     "key": "key",
     "rivet": "rivet",
 }
