@@ -201,8 +201,7 @@ class Assessment:
             times=watch.times,
             errors=bars,
             magnets=tuple(
-                work.figures(machine, self.section, model, waveform.i_d, waveform.i_q)
-                for work in magnets
+                work.figures(machine, self.section, waveform.i_d, waveform.i_q) for work in magnets
             ),
             magnet_states=tuple(state for work in magnets for state in work.states),
         )

@@ -25,6 +25,8 @@ from lamwright.postprocess.operating import dq_currents
 from lamwright.postprocess.tables import linkage_orders_csv, no_load_csv
 from lamwright.solver.chains import OperatingPoint
 from lamwright.solver.field import MagneticModel
+from lamwright.solver.magnet import magnet_law
+from lamwright.solver.model import remagnetised
 from lamwright.solver.types import FieldSolution
 
 from .desk import Desk
@@ -56,16 +58,13 @@ class MagnetWork:
         return magnet_cautions(machine.magnet, self.states)
 
     def figures(
-        self, machine: Machine, section: CrossSection, model: MagneticModel, i_d: float, i_q: float
+        self, machine: Machine, section: CrossSection, i_d: float, i_q: float
     ) -> MagnetFigures:
         """Its figures; the magnet torque at the currents given (A)."""
-        law = model.settings.magnet
         assert machine.magnet is not None
-        assert law is not None
         return magnet_figures(
             machine.design,
             machine.magnet,
-            law,
             self.record,
             self.states,
             section.sectors,
@@ -78,15 +77,19 @@ def magnet_work(
 ) -> MagnetWork:
     """Fields of a machine with magnets, shared by the crew.
 
-    The demagnetising current flows along the axis that opposes the mean no-load linkage.
+    The demagnetising current flows along the axis that opposes the mean no-load linkage. The desks
+    keep the model at its temperature, so these are the last fields of a run.
     """
-    law = model.settings.magnet
-    assert law is not None
+    assert machine.magnet is not None
+    assert machine.design.magnet is not None
+    law = magnet_law(machine.magnet, machine.design.magnet.worst_temperature_c)
     positions = no_load_positions(section.pole_pairs, section.rotor_period).tolist()
     bare = _solved(crew, 0.0, 0.0, positions)
     record = no_load(bare, section.rotor_period)
     gamma = opposing_angle(record.psi_d, record.psi_q)
     i_d, i_q = dq_currents(demagnetising_current(machine.design), gamma)
+    if law != model.settings.magnet:
+        crew.everywhere(Desk.take_model, remagnetised(model, law))
     opposed = _solved(crew, i_d, i_q, positions[::STRIDE])
     rotor = model.sector.rotor
     states = [magnet_states(rotor, section.rotor, field.a_rotor, law) for field in opposed]

@@ -192,6 +192,14 @@ class MagnetChoice(_Table):
 
     card: str
     temperature_c: Annotated[float, Field(ge=-60.0, le=250.0)]
+    # At which they must bear the demagnetising current; default the same.
+    demagnetising_temperature_c: Annotated[float, Field(ge=-60.0, le=250.0)] | None = None
+
+    @property
+    def worst_temperature_c(self) -> float:
+        """Temperature of the demagnetisation check in C."""
+        stated = self.demagnetising_temperature_c
+        return self.temperature_c if stated is None else stated
 
 
 class DutyDesign(_Table):

@@ -118,7 +118,7 @@ def _magnet_card(path: Path, text: str, design: MachineDesign) -> MagnetCard | N
         return None
     _raise_if_absent(path, text, ("magnet", "card"), design.magnet.card)
     card = read_magnet_card(path.parent / design.magnet.card)
-    found = temperature_findings(card, design.magnet.temperature_c)
+    found = temperature_findings(card, design.magnet)
     if found:
         raise DesignError(_placed_text(found, path, text))
     return card

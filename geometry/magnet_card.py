@@ -1,9 +1,10 @@
 """Rules of a magnet card, and the temperatures that it is good for."""
 
-from .design import MagnetCard
+from .design import MagnetCard, MagnetChoice
 from .errors import Finding
 
 REFERENCE_C = 20.0  # of the card's values
+ANY_C = (-60.0, 250.0)  # C, what the design file takes
 LEAST_SHARE = 0.05  # of a value at 20 C that a temperature must leave, else the straight law ends
 
 # Bounds that no magnet passes but a wrong unit does (common practice, no source).
@@ -28,19 +29,25 @@ def magnet_card_findings(card: MagnetCard) -> tuple[Finding, ...]:
     return tuple(found)
 
 
-def temperature_findings(card: MagnetCard, temperature_c: float) -> tuple[Finding, ...]:
+def temperature_findings(card: MagnetCard, choice: MagnetChoice) -> tuple[Finding, ...]:
     """Whether the card's straight law in the temperature reaches as far as asked."""
     low, high = temperature_range(card)
-    if low <= temperature_c <= high:
-        return ()
     fault = f"the magnet card {card.name!r} leaves nothing of remanence or knee there"
     remedy = f"accepted {low:.0f} to {high:.0f}"
-    return (Finding("magnet-hot", "magnet.temperature_c", temperature_c, fault, remedy),)
+    asked = {
+        "magnet.temperature_c": choice.temperature_c,
+        "magnet.demagnetising_temperature_c": choice.demagnetising_temperature_c,
+    }
+    return tuple(
+        Finding("magnet-hot", key, value, fault, remedy)
+        for key, value in asked.items()
+        if value is not None and not low <= value <= high
+    )
 
 
 def temperature_range(card: MagnetCard) -> tuple[float, float]:
     """Temperatures in C between which `LEAST_SHARE` of remanence and knee is left."""
-    low, high = -273.0, 1000.0
+    low, high = ANY_C
     for key in ("remanence_coefficient_percent_per_k", "knee_coefficient_percent_per_k"):
         slope = 0.01 * getattr(card, key).value
         if slope:

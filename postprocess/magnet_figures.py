@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from lamwright.geometry.design import MachineDesign, MagnetCard
-from lamwright.solver.magnet import MagnetLaw
+from lamwright.solver.magnet import magnet_law
 
 from .demagnetisation import MagnetState
 from .no_load import NoLoad, cogging_torque, line_emf, linkage_spectrum, peak_linkage
@@ -54,12 +54,13 @@ class MagnetFigures:
     remanence: float = field(
         metadata=shown_as("magnet_remanence_t", "remanence at that temperature", "T")
     )
-    knee: float = field(
-        metadata=shown_as("magnet_knee_t", "flux density at the knee, likewise", "T")
-    )
     demagnetising_current: float = field(
         metadata=shown_as("demagnetising_current_a", "demagnetising current, peak", "A")
     )
+    demagnetising_temperature: float = field(
+        metadata=shown_as("demagnetising_temperature_c", "magnets' temperature against it", "C")
+    )
+    knee: float = field(metadata=shown_as("magnet_knee_t", "flux density at the knee there", "T"))
     below_knee: float = field(
         metadata=shown_as(
             "magnet_below_knee_percent", "area below the knee, worst magnet", "%", 100.0
@@ -75,7 +76,6 @@ class MagnetFigures:
 def magnet_figures(
     design: MachineDesign,
     card: MagnetCard,
-    law: MagnetLaw,
     record: NoLoad,
     states: Sequence[MagnetState],
     sectors: int,
@@ -86,13 +86,14 @@ def magnet_figures(
     Args:
         design: that the fields are of.
         card: of its magnets.
-        law: the card at the magnets' temperature.
         record: the machine without current.
         states: of each magnet of a sector at the demagnetising current, worst position.
         sectors: in the machine.
         currents: i_d and i_q of the rated point in A.
     """
     assert design.magnet is not None
+    worst = design.magnet.worst_temperature_c
+    law, law_worst = (magnet_law(card, t) for t in (design.magnet.temperature_c, worst))
     spectrum = linkage_spectrum(record)
     omega_e = design.pole_pairs * design.duty.rated_speed_rpm / RPM
     emf, fundamental = line_emf(spectrum, omega_e)
@@ -113,7 +114,8 @@ def magnet_figures(
         mass=card.density_kg_per_m3.value * volume,
         temperature=design.magnet.temperature_c,
         remanence=law.remanence,
-        knee=law.knee,
+        demagnetising_temperature=worst,
+        knee=law_worst.knee,
         demagnetising_current=demagnetising_current(design),
         below_knee=max(state.share_below for state in states),
         below_knee_all=sum(state.share_below * state.area for state in states) / area,

@@ -54,6 +54,10 @@ class MagnetSource:
     load: FloatArray  # (n_dof,), A
     still_energy: float  # J/m, stored per metre of stack at B = 0
 
+    def scaled(self, ratio: float) -> "MagnetSource":
+        """The source with `ratio` times the remanence."""
+        return MagnetSource(ratio * self.load, ratio**2 * self.still_energy)
+
 
 def magnet_law(card: MagnetCard, temperature_c: float) -> MagnetLaw:
     """The card's magnet at a temperature in C: remanence and knee change in proportion to it.

@@ -258,6 +258,28 @@ def _model(
     )
 
 
+def remagnetised(model: MagneticModel, law: MagnetLaw) -> MagneticModel:
+    """The model with its magnets at another temperature; factors and positions are shared.
+
+    Args:
+        model: with magnets.
+        law: of the same recoil permeability as the model's.
+
+    Raises:
+        ValueError: for another permeability, or a model without magnets.
+    """
+    own = model.settings.magnet
+    if own is None or own.recoil_permeability != law.recoil_permeability:
+        raise ValueError("only the remanence of a model's magnets can be changed")
+    coarse = model.coarse
+    return replace(
+        model,
+        settings=replace(model.settings, magnet=law),
+        magnet=model.magnet.scaled(law.remanence / own.remanence),
+        coarse=coarse and FirstOrder(remagnetised(coarse.model, law), coarse.lift),
+    )
+
+
 def linear_tangent(quad: Quadrature, nu: FloatArray) -> FloatArray:
     """Packed tangents (21, n_elem) of linear elements with reluctivity `nu` (n_elem,)."""
     shape = quad.weight.shape

@@ -191,10 +191,12 @@ def test_hot_rare_earth_is_refused(tmp_path: FilePath) -> None:
     for folder in ("steel", "magnet"):
         (tmp_path / folder).symlink_to(DESIGNS / folder)
     path = tmp_path / "demo.toml"
-    hot = text.replace("demo_ferrite", "demo_rare_earth").replace("= 80.0", "= 250.0")
+    hot = text.replace("demo_ferrite", "demo_rare_earth").replace("= -20.0", "= 250.0")
     path.write_text(hot)
     # 20 + 0.95 / 0.0055 = 192.7 C
-    with pytest.raises(DesignError, match=r"magnet.temperature_c = 250: .*; accepted -273 to 193"):
+    with pytest.raises(
+        DesignError, match=r"magnet.demagnetising_temperature_c = 250: .*; accepted -60 to 193"
+    ):
         read_machine(path)
 
 

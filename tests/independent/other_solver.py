@@ -1,9 +1,11 @@
 """Field and stress of a whole machine by a general-purpose finite element library (NGSolve).
 
-Nothing of the solver room is used: own mesh of the full circle from the exported rotor outline,
-order 3 on curved elements, no symmetry, the steel card's points through another interpolation.
+Nothing of the solver room is used but the numbers of a magnet: own mesh of the full circle from the
+exported rotor outline, order 3 on curved elements, no symmetry, the steel card's points through
+another interpolation.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path as FilePath
 from typing import Any
@@ -11,11 +13,12 @@ from typing import Any
 import numpy as np
 from scipy.interpolate import PchipInterpolator
 
-from lamwright.geometry.curves import circle, turned
+from lamwright.geometry.curves import Path, circle, turned
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.dxf import read_contours
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
+from lamwright.solver.magnet import MagnetLaw
 
 from .occ_faces import occ_face, stator_faces
 
@@ -31,6 +34,28 @@ class OtherField:
     elements: int
 
 
+@dataclass(frozen=True)
+class OtherMagnet:
+    """A block of the whole machine at its position, B = mu_0 mu_r H + B_r."""
+
+    path: Path
+    remanence: complex  # T, x + iy
+    permeability: float  # relative
+
+
+def other_magnets(section: CrossSection, law: MagnetLaw, angle: float) -> tuple[OtherMagnet, ...]:
+    """The blocks of all poles, the rotor's d axis at `angle`; neighbours are magnetised round."""
+    found = []
+    for pole in range(2 * section.pole_pairs):
+        turn = angle + pole * np.pi / section.pole_pairs
+        for region in section.rotor:
+            if region.material == "magnet":
+                along = region.magnetisation * np.exp(1j * turn) * (-1) ** pole
+                path = turned(region.outer, turn)
+                found.append(OtherMagnet(path, law.remanence * along, law.recoil_permeability))
+    return tuple(found)
+
+
 def magnetisation(card: SteelCard, stacking_factor: float) -> tuple[np.ndarray, np.ndarray]:
     """B (T, mean over iron and insulation) and H (A/m), dense, ending in slope mu0."""
     b_fe = np.array([0.0, *card.magnetisation.b_t])
@@ -42,7 +67,9 @@ def magnetisation(card: SteelCard, stacking_factor: float) -> tuple[np.ndarray, 
     return np.append(grid, beyond), np.append(h_grid, h[-1] + (beyond - b[-1]) / MU_0)
 
 
-def rotor_faces(dxf: FilePath, section: CrossSection, angle: float) -> list[Any]:
+def rotor_faces(
+    dxf: FilePath, section: CrossSection, angle: float, magnets: Sequence[OtherMagnet]
+) -> list[Any]:
     """Faces of the exported rotor lamination, turned by `angle`, its shaft and its half gap."""
     contours = [(c.layer, turned(c.path, angle)) for c in read_contours(dxf)]
     sizes = [abs(path.edges[0].start) for _, path in contours]
@@ -53,7 +80,8 @@ def rotor_faces(dxf: FilePath, section: CrossSection, angle: float) -> list[Any]
         ("rotor_iron", occ_face(rim, [bore, *barriers])),
         ("shaft", occ_face(bore)),
         ("gap_rotor", occ_face(circle(0.0, section.circle_radius), [rim])),
-        *(("barrier", occ_face(path)) for path in barriers),
+        *(("barrier", occ_face(path, [m.path for m in magnets])) for path in barriers),
+        *((f"magnet_{k}", occ_face(magnet.path)) for k, magnet in enumerate(magnets)),
     ]
     for name, face in named:
         face.faces.name = name
@@ -68,13 +96,16 @@ def solve_field(
     stacking_factor: float,
     i_abc: np.ndarray,
     position: float,
+    law: MagnetLaw | None = None,
 ) -> OtherField:
     """Torque and linkages at phase currents `i_abc` (A), rotor `position` (mechanical rad)."""
     import ngsolve as ngs
     from netgen.occ import Glue, OCCGeometry
 
     poles = 2 * section.pole_pairs
-    faces = rotor_faces(dxf, section, position + winding.axis_a)
+    at = position + winding.axis_a
+    magnets = () if law is None else other_magnets(section, law, at)
+    faces = rotor_faces(dxf, section, at, magnets)
     for pole in range(poles):
         faces += stator_faces(section.stator, pole, pole * np.pi / section.pole_pairs)
     for face in faces:
@@ -99,6 +130,12 @@ def solve_field(
     air = "shaft|gap_.*|barrier|opening_.*|wedge_.*|slot_.*"
     form += ngs.Variation(b_abs * b_abs / (2 * MU_0) * ngs.dx(air))
     load = ngs.LinearForm(space)
+    for k, magnet in enumerate(magnets):
+        nu = 1.0 / (MU_0 * magnet.permeability)
+        form += ngs.Variation(0.5 * nu * b_abs * b_abs * ngs.dx(f"magnet_{k}"))
+        b_x, b_y = magnet.remanence.real, magnet.remanence.imag
+        # int nu B_r . curl v, curl v = (dv/dy, -dv/dx), lengths in mm
+        load += 1e3 * nu * (b_x * ngs.grad(v)[1] - b_y * ngs.grad(v)[0]) * ngs.dx(f"magnet_{k}")
     sides = list(coil_sides(section, winding))
     for name, conductors in sides:
         area = ngs.Integrate(1.0, mesh, definedon=mesh.Materials(name))

@@ -12,6 +12,7 @@ from lamwright.solver.chains import OperatingPoint, linkage_slope, solve_chain
 from lamwright.solver.estimate_step import changes, fine_level
 from lamwright.solver.field import MagneticModel, magnetic_model, solve_point
 from lamwright.solver.magnet import magnet_source
+from lamwright.solver.model import remagnetised
 from lamwright.solver.types import FieldSolution
 from tests.shipped import shipped, shipped_model
 
@@ -128,6 +129,23 @@ def test_outward_magnets_mirror_the_currents(model: MagneticModel) -> None:
     first, second = solve_point(model, I_D, I_Q, 0.02), solve_point(other, -I_D, -I_Q, 0.02)
     assert second.psi_abc == pytest.approx(-first.psi_abc, abs=1e-6)
     assert second.torque == pytest.approx(first.torque, rel=1e-6)
+
+
+def test_remagnetised_is_the_model_made_anew(model: MagneticModel) -> None:
+    """Half the remanence by scaling the load, against a model of that law: 1e-6 of all figures."""
+    one, own = shipped(NAME), model.settings.magnet
+    assert own is not None
+    law = dataclasses.replace(own, remanence=0.5 * own.remanence)
+    settings = dataclasses.replace(model.settings, magnet=law)
+    laws = model.iron.rotor_law, model.iron.stator_law
+    anew = magnetic_model(one.sector, one.section, one.winding, *laws, settings)
+    first, second = (solve_point(m, I_D, I_Q, 0.02) for m in (remagnetised(model, law), anew))
+    assert first.psi_q == pytest.approx(second.psi_q, rel=1e-6)
+    assert first.torque == pytest.approx(second.torque, rel=1e-6)
+    assert first.energy == pytest.approx(second.energy, rel=1e-6)
+    harder = dataclasses.replace(law, recoil_permeability=2.0)
+    with pytest.raises(ValueError, match="only the remanence of a model's magnets can be changed"):
+        remagnetised(model, harder)
 
 
 def test_a_magnet_needs_its_law(model: MagneticModel) -> None:
