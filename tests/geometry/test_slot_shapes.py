@@ -3,6 +3,7 @@
 import cmath
 import json
 import math
+import re
 from collections import Counter
 
 import numpy as np
@@ -10,12 +11,13 @@ import pytest
 from pydantic import ValidationError
 from scipy.optimize import brentq
 from shapely import Point, Polygon, box
-from slot_shapes import SHAPES, WINDINGS, slotted, table_of
+from slot_shapes import DEMO, SHAPES, WINDINGS, slotted, table_of
 
 from lamwright.geometry.checks import check_design
 from lamwright.geometry.curves import area
 from lamwright.geometry.design import MachineDesign
-from lamwright.geometry.errors import GeometryError
+from lamwright.geometry.design_file import read_design
+from lamwright.geometry.errors import DesignError, GeometryError
 from lamwright.geometry.remedies import with_value
 from lamwright.geometry.slot_checks import stator_faults
 from lamwright.geometry.slot_dimensions import slot_dimensions
@@ -248,6 +250,27 @@ def test_a_key_that_the_shape_needs_is_asked_for(choice, key):
     assert caught.value.errors()[0]["ctx"]["found"] == (
         (key, "missing; accepted a number above 0"),
     )
+
+
+def test_the_reader_places_such_faults(tmp_path):
+    """File and line of a key that does nothing, of the table for one that is missing."""
+    text = DEMO.read_text(encoding="utf-8")
+    path = tmp_path / "design.toml"
+    idle = text.replace("[stator]\n", "[stator]\nbridge_mm = 0.5\n", 1)
+    path.write_text(idle, encoding="utf-8")
+    line = idle.splitlines().index("bridge_mm = 0.5") + 1
+    with pytest.raises(DesignError) as caught:
+        read_design(path)
+    assert str(caught.value) == (
+        f'{path}:{line}: stator.bridge_mm: does nothing; accepted only with slot_mouth = "closed"'
+    )
+    missing = re.sub(r"\ntooth_width_mm = [^\n]*", "", text)
+    path.write_text(missing, encoding="utf-8")
+    line = missing.splitlines().index("[stator]") + 1
+    with pytest.raises(DesignError) as caught:
+        read_design(path)
+    expected = f"{path}:{line}: stator.tooth_width_mm: missing; accepted a number above 0"
+    assert str(caught.value) == expected
 
 
 FAULTS = [

@@ -8,6 +8,10 @@ from slot_shapes import SHAPES, WINDINGS, slotted
 
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import area
+from lamwright.geometry.design_slots import idle_slot_keys
+from lamwright.geometry.remedies import value_of, with_value
+from lamwright.geometry.slot_outline import slot_copper_area
+from lamwright.solver.design_motion import draw_stator, moved_mesh, part_motion, shape_keys
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_checks import least_jacobian_share
 
@@ -58,6 +62,37 @@ def test_every_slot_can_be_meshed(shape, winding):
         missed = sum(missed_by(edge) for path in paths for edge in path.edges if not edge.is_line)
         found = sizes[mesh.region_of_elem == k].sum()
         assert found == pytest.approx(whole, abs=missed + 1e-12 * whole)
+
+
+@pytest.mark.parametrize("winding", [(2, 6), (2, 1)], ids=str)
+@pytest.mark.parametrize("shape", SHAPES[::5] + SHAPES[2::9], ids=" ".join)
+def test_meshes_follow_every_key_of_a_slot(shape, winding):
+    """Change of the copper's area in the mesh, as its nodes follow a key, and of the outline's.
+
+    Central differences of both, 1e-3 of the key's full effect: the mesh's arcs are parabolas.
+    """
+    design = slotted(shape, winding)
+    mesh = mesh_section(cross_section(design)).stator
+    part = part_motion(mesh, design, draw_stator)
+    keys = [key for key in shape_keys(design) if key.startswith("stator.")]
+    assert {key.removeprefix("stator.") for key in keys} == {
+        key
+        for key, value in design.stator.model_dump().items()
+        if key.endswith(("_mm", "_deg"))
+        and value is not None
+        and key not in idle_slot_keys(design.stator.slot_choices)
+        and not key.startswith("outline_")
+    }
+    number = mesh.region_names.index("slot_1_layer_0")
+    own = mesh.region_of_elem == number
+    for key in keys:
+        motion = part.extension.extended(part.velocity(design, key))
+        step = 1e-3
+        sizes = [sizes_of(moved_mesh(mesh, motion, s))[own].sum() for s in (-step, step)]
+        value = value_of(design, key)
+        sides = [slot_copper_area(with_value(design, key, value + s)) for s in (-step, step)]
+        scale = slot_copper_area(design) / 1e3 * step  # per mm, a thousandth of the area
+        assert sizes[1] - sizes[0] == pytest.approx(sides[1] - sides[0], rel=1e-3, abs=scale), key
 
 
 @pytest.mark.parametrize("bridge", [0.5, 0.8, 1.5])
