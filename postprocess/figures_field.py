@@ -307,8 +307,13 @@ def _slot_room(region: Region, angle: float) -> tuple[complex, float]:
     """Middle in m of a copper region and its width in mm there, the slot's axis at `angle`."""
     points = sampled(region.outer) * cmath.exp(-1j * angle)
     middle = 0.5 * (points.real.min() + points.real.max())
-    width = 2.0 * MM * float(np.abs(points.imag).mean())
-    return complex(middle * cmath.exp(1j * angle)), width
+    across = points.imag
+    # The sides of tooth coils lie beside the centre line.
+    off = 0.5 * float(across.min() + across.max())
+    if abs(off) < 0.05 * float(np.ptp(across)):
+        off = 0.0
+    width = 2.0 * MM * float(np.abs(across - off).mean())
+    return complex((middle + 1j * off) * cmath.exp(1j * angle)), width
 
 
 def _mark(ax: Axes, at: complex, value: float, size: float, style: Style) -> None:

@@ -43,6 +43,7 @@ if TYPE_CHECKING:
 
 AXIS_OVERHANG = 1.05  # how far a d or q axis line reaches, over the stator's radius
 LETTER_ROOM = 1.13  # how far its letters reach
+LEAST_OPENING = 1e-5  # m, less is no space worth a name
 
 
 def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
@@ -230,16 +231,41 @@ def _stator_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     parts = [
         ("stator yoke", at(0.5 * (bottom + section.stator_outer_radius), slot + 0.6)),
         ("tooth", at(0.5 * (bottom + top), slot + 1)),
-        ("slot opening", at(0.5 * (section.stator_bore_radius + top), slot + 0.5)),
+        *_mouth_parts(section, top, at(1.0, slot + 0.5)),
         (f"air gap, {MM * section.gap:.2f} mm", at(section.circle_radius, slot + 1.2)),
         (f"shaft bore, {_diameter(section.shaft_radius)}", section.shaft_radius * 1j * beside),
     ]
     layers = sorted((r for r in copper if r.name.startswith(f"slot_{slot}_")), key=_layer)
     names = ["slot"] if len(layers) == 1 else ["slot, bottom layer", "slot, top layer"]
     for region, name in zip(layers, names, strict=True):
-        span = abs(sampled(region.outer))
-        parts.append((name, at(0.5 * (span.min() + span.max()), slot + 0.5)))
+        outline = sampled(region.outer)
+        span, middle = abs(outline), at(1.0, slot + 0.5)
+        off = (outline * turn / middle).imag
+        centre = 0.5 * complex(span.min() + span.max(), off.min() + off.max())
+        if abs(centre.imag) > 0.05 * np.ptp(off):  # of the slot's other side
+            parts.append((f"coil side, layer {_layer(region)}", centre * middle))
+        else:
+            parts.append((name, 0.5 * (span.min() + span.max()) * middle))
     return [Callout(name, point, "left") for name, point in parts]
+
+
+def _mouth_parts(
+    section: CrossSection, copper: float, middle: complex
+) -> list[tuple[str, complex]]:
+    """What lies between the bore and the copper, on the slot's centre line; nothing if they touch.
+
+    Args:
+        section: the machine.
+        copper: radius in m at which copper begins.
+        middle: unit vector along the centre line.
+    """
+    bore = section.stator_bore_radius
+    if section.bridge > 0.0:
+        text = f"bridge, {MM * section.bridge:.2f} mm"
+        return [(text, (bore + 0.5 * section.bridge) * middle)]
+    if copper - bore < LEAST_OPENING:
+        return []
+    return [("slot opening", 0.5 * (bore + copper) * middle)]
 
 
 def _diameter(radius: float) -> str:
