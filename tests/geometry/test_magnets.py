@@ -1,9 +1,11 @@
 """Magnet blocks: closed forms of their places, exact tiling, and what is refused."""
 
 import cmath
+import itertools
 import math
 from pathlib import Path as FilePath
 
+import numpy as np
 import pytest
 
 from lamwright.geometry.checks import check_design
@@ -13,8 +15,10 @@ from lamwright.geometry.design import BarrierMagnetDesign, MachineDesign
 from lamwright.geometry.design_file import read_design, read_machine
 from lamwright.geometry.distances import distance
 from lamwright.geometry.errors import DesignError
+from lamwright.geometry.magnet_checks import magnet_faults
 from lamwright.geometry.rotor import rotor_regions
 from lamwright.geometry.section import Region
+from tests.random_designs import random_design
 
 DESIGNS = FilePath(__file__).parents[2] / "designs"
 MM = 1e-3  # m
@@ -214,3 +218,49 @@ def test_card_and_blocks_need_each_other(change: dict[str, object], key: str) ->
     change = {name: bare if name == "rotor" else value for name, value in change.items()}
     (finding,) = check_design(design.model_copy(update=change))
     assert finding.key == key
+
+
+def random_magnet(seed: int) -> tuple[MachineDesign, int, BarrierMagnetDesign]:
+    """A random rotor with a random block, or pair, in one of its barriers."""
+    rng = np.random.default_rng([7, seed])
+    design = random_design(rng)
+    number = int(rng.integers(1, len(design.rotor.barrier) + 1))
+    barriers = list(design.rotor.barrier)
+    thickness = barriers[number - 1].thickness_mm
+    magnet = BarrierMagnetDesign(
+        width_mm=float(thickness * rng.uniform(0.8, 5.0)),
+        thickness_mm=float(thickness * rng.uniform(0.5, 1.0)) if rng.random() < 0.4 else None,
+        clearance_mm=float(rng.uniform(0.02, 0.15)),
+        offset_mm=float(thickness * rng.uniform(0.5, 4.0)) if rng.random() < 0.5 else 0.0,
+    )
+    barriers[number - 1] = barriers[number - 1].model_copy(update={"magnet": magnet})
+    rotor = design.rotor.model_copy(update={"barrier": tuple(barriers)})
+    return design.model_copy(update={"rotor": rotor}), number, magnet
+
+
+def test_random_blocks_fit_or_are_refused() -> None:
+    """Random blocks in 40 random rotors: refused with a fault, or sound.
+
+    Sound: right angles to 1e-9, the clearance kept to a nanometre, areas that tile the sector to
+    1e-9. Both happen often, or the test would say nothing.
+    """
+    kept = 0
+    for seed in range(40):
+        design, number, magnet = random_magnet(seed)
+        faults = magnet_faults(design)
+        assert all(fault.lack > 0.0 and fault.text for fault in faults)
+        if faults:
+            continue
+        kept += 1
+        regions, _ = rotor_regions(design)
+        total = sum(area(r.outer) + sum(map(area, r.holes)) for r in regions)
+        radius = 0.5 * MM * (design.stator.bore_diameter_mm - design.rotor.gap_mm)
+        assert total == pytest.approx(0.5 * radius**2 * math.pi / design.pole_pairs, rel=1e-9)
+        cavities = [r for r in regions if r.name.startswith(f"barrier_{number}")]
+        for block in (r for r in regions if r.material == "magnet"):
+            sides = [edge.end - edge.start for edge in block.outer.edges]
+            for a, b in itertools.pairwise(sides):
+                assert abs((a.conjugate() * b).real) < 1e-9 * abs(a) * abs(b)
+            near = min(distance(block.outer.edges, cavity.outer.edges) for cavity in cavities)
+            assert near > MM * magnet.clearance_mm - 1e-9
+    assert 10 <= kept <= 34
