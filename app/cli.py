@@ -94,13 +94,26 @@ def assess(
 
 @main.command()
 @_DESIGN
-@_OUT
-def outline(design: Path, out: Path) -> None:
+@click.option("--out", type=click.Path(path_type=Path), help="Folder for the results.")
+@click.option(
+    "--ranges",
+    is_flag=True,
+    help="How far each length and angle may move before the outline breaks.",
+)
+def outline(design: Path, out: Path | None, ranges: bool) -> None:
     """Geometry, checks and punch outline (DXF) of DESIGN alone."""
     from .lamination import outline as run
     from .lines import print_outline
 
-    print_outline(run(design, out))
+    if out is None and not ranges:
+        raise click.MissingParameter(param_hint="'--out'", param_type="option")
+    if out is not None:
+        print_outline(run(design, out))
+    if ranges:
+        from .ranges import print_ranges
+        from .ranges import ranges as run_ranges
+
+        print_ranges(run_ranges(design, out))
 
 
 @main.command()

@@ -22,18 +22,18 @@ from .winding import winding_findings
 
 def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     """All findings on the design, stator first; empty where `cross_section` will succeed."""
-    found = findings(design, _faults(design), _shared_faults)
+    found = findings(design, shape_faults(design), shared_faults)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
     return (*found, *magnet_findings(design), *_duty_findings(design))
 
 
-def _faults(design: MachineDesign) -> list[Fault]:
+def shape_faults(design: MachineDesign) -> list[Fault]:
     """All faults of the shape, as far as each can be told with the others there."""
-    return [*_pole_faults(design), *(_scale_faults(design) or _shape_faults(design))]
+    return [*_pole_faults(design), *(_scale_faults(design) or _parts_faults(design))]
 
 
-def _shape_faults(design: MachineDesign) -> list[Fault]:
+def _parts_faults(design: MachineDesign) -> list[Fault]:
     return stator_faults(design) + _ring_faults(design)
 
 
@@ -53,7 +53,7 @@ def _pole_faults_with(design: MachineDesign, of_barriers: list[Fault]) -> list[F
     return faults or of_all_poles(design, magnet_faults)
 
 
-def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
+def shared_faults(design: MachineDesign, key: str) -> list[Fault]:
     """The faults in which a key has a share; sparing the others makes the search fast."""
     scale = _scale_faults(design)
     if scale:
@@ -62,7 +62,7 @@ def _shared_faults(design: MachineDesign, key: str) -> list[Fault]:
         rim = contour_faults(design)
         return rim or _pole_faults_with(design, barrier_faults(following(design), key))
     if key in SCALES:
-        return _shape_faults(design)
+        return _parts_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)
 
 

@@ -139,7 +139,8 @@ def _default(barrier: BarrierDesign, name: str, pole_pairs: int) -> float:
     return 0.0
 
 
-def _domain(design: MachineDesign, key: str) -> Domain:
+def domain_of(design: MachineDesign, key: str) -> Domain:
+    """The values of a key that may be tried at all."""
     if key in SCALES:
         low, high = SCALES[key]
         return Domain(low, high, is_low_accepted=True, has_limit=True)
@@ -179,7 +180,7 @@ class _Search:
     """Trials of one key: what is missing of a fault, and of every fault not known before."""
 
     def __init__(self, design: MachineDesign, key: str, faults: Faults) -> None:
-        self.domain = _domain(design, key)
+        self.domain = domain_of(design, key)
         self.value = value_of(design, key)
         self.key = key
         self._design, self._faults = design, faults

@@ -15,6 +15,7 @@ from lamwright.geometry.cross_section import drawn_rotor, drawn_rotor_period, dr
 from lamwright.geometry.design import BarrierDesign, MachineDesign, OtherHalfDesign
 from lamwright.geometry.design_drawing import OutlineKeys
 from lamwright.geometry.design_slots import idle_slot_keys
+from lamwright.geometry.detail_keys import detail_keys
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.remedies import may_be_negative, value_of, with_value
 from lamwright.geometry.rotor import rotor_frame
@@ -130,7 +131,7 @@ def size_motion(design: MachineDesign, key: str) -> SizeMotion:
 
 
 def shape_keys(design: MachineDesign) -> tuple[str, ...]:
-    """Every length and angle of stator, rotor and barriers, defaults that are in use included."""
+    """Every length and angle of stator, rotor, barriers and details, defaults in use included."""
     idle = idle_slot_keys(design.stator.slot_choices)
     keys = [
         f"{table}.{name}"
@@ -141,7 +142,7 @@ def shape_keys(design: MachineDesign) -> tuple[str, ...]:
     for table in ("barrier", "alternate_barrier"):
         for number, barrier in enumerate(getattr(design.rotor, table), start=1):
             keys += _barrier_keys(f"rotor.{table}[{number}]", barrier)
-    return tuple(keys)
+    return (*keys, *detail_keys(design))
 
 
 def _barrier_keys(table: str, barrier: BarrierDesign) -> list[str]:
