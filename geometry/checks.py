@@ -61,6 +61,8 @@ def shared_faults(design: MachineDesign, key: str) -> list[Fault]:
     if barrier_number(key) is not None:
         rim = contour_faults(design)
         return rim or _pole_faults_with(design, barrier_faults(following(design), key))
+    if key.startswith(("rotor.notch[", "rotor.hole[", "rotor.keyway.")):
+        return contour_faults(design) or of_all_poles(design, detail_faults)
     if key in SCALES:
         return _parts_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

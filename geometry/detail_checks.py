@@ -9,9 +9,11 @@ notch and a barrier the stated width of its tangential rib is kept: no notch mak
 import cmath
 import re
 from collections.abc import Iterator, Sequence
+from functools import lru_cache
 from itertools import combinations, pairwise
 
-from .curves import line
+from .corners import foot, is_within
+from .curves import Edge, line
 from .design import MachineDesign
 from .detail_sizes import (
     MM,
@@ -121,18 +123,18 @@ def _webs(
     for one in outline.cut_outs:
         kind = one.key.split(".")[1][:4]
         if one.region.name not in _on_sides(outline):
-            yield one, "side", "the d axis", distance(one.wall, sides), sheet
+            yield one, "side", "the d axis", _clear(one, sides, sheet), sheet
         if kind != "notc":
-            yield one, "rim", "the rim", distance(one.wall, outline.gap_side), sheet
+            yield one, "rim", "the rim", _clear(one, outline.gap_side, sheet), sheet
         if kind != "keyw":
-            yield one, "bore", "the bore", distance(one.wall, outline.shaft_side), sheet
+            yield one, "bore", "the bore", _clear(one, outline.shaft_side, sheet), sheet
         for number, region in cavities:
             rib = MM * design.rotor.barrier[number - 1].tangential_rib_mm
             least = max(sheet, rib) if kind == "notc" else sheet
-            web = _apart(one, region)
+            web = _apart(one, region, least)
             yield one, "barrier", f"barrier {number}", web, least
     for first, second in combinations(outline.cut_outs, 2):
-        web = _apart(second, first.region)
+        web = _apart(second, first.region, sheet)
         name = "its mirror image" if first.key == second.key else first.key
         yield second, "detail", name, web, sheet
 
@@ -147,24 +149,53 @@ def _on_sides(outline: RotorOutline) -> set[str]:
     }
 
 
-def _apart(one: CutOut, other: Region) -> float:
+def _apart(one: CutOut, other: Region, least: float) -> float:
     """Iron between a detail and another cut-out in m; 0 or less where one holds the other."""
-    web = distance(one.wall, other.outer.edges)
+    web = _clear(one, other.outer.edges, least)
     if web > 0.0 and (
         encloses(other.outer, one.wall[0].start)
         or encloses(one.region.outer, other.outer.edges[0].start)
     ):
-        return -web
+        return -least
     return web
 
 
-def _cavities(design: MachineDesign) -> Sequence[tuple[int, Region]]:
+def _clear(one: CutOut, edges: Sequence[Edge], least: float) -> float:
+    """Distance in m from a detail to a chain; not looked at closely where it is `least` or more.
+
+    Edges that stay clear of the circle about the detail by that much need no exact distance: most.
+    """
+    points = [point for edge in one.wall for point in (edge.start, edge.point(0.5), edge.end)]
+    centre = 0.5 * (
+        complex(min(p.real for p in points), min(p.imag for p in points))
+        + complex(max(p.real for p in points), max(p.imag for p in points))
+    )
+    # No point of an edge lies further than a quarter of its length from its ends and its middle.
+    reach = max(abs(point - centre) for point in points)
+    reach += 0.25 * max(edge.length for edge in one.wall) + least + SLACK
+    near = [edge for edge in edges if _to_point(edge, centre) <= reach]
+    return distance(one.wall, near) if near else least
+
+
+def _to_point(edge: Edge, point: complex) -> float:
+    """Distance in m from an edge to a point."""
+    away = min(abs(edge.start - point), abs(edge.end - point))
+    at = foot(edge, point)
+    return min(away, abs(at - point)) if is_within(edge, at) else away
+
+
+def _cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
     """Cavities with their barrier's number; none where the barriers cannot be drawn."""
     bare = {"notch": (), "hole": (), "keyway": None}
     rotor = design.rotor.model_copy(update=bare)
+    return _bare_cavities(design.model_copy(update={"rotor": rotor}))
+
+
+@lru_cache(maxsize=8)  # while a detail's key is tried, the barriers stay
+def _bare_cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
     try:
-        regions, _ = rotor_regions(design.model_copy(update={"rotor": rotor}))
+        regions, _ = rotor_regions(design)
     except ValueError:
         return ()  # the barriers' own checks say why
     found = ((re.match(r"barrier_(\d+)", region.name), region) for region in regions)
-    return [(int(match[1]), region) for match, region in found if match]
+    return tuple((int(match[1]), region) for match, region in found if match)

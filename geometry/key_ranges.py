@@ -2,9 +2,9 @@
 
 From the value as it stands the key walks outward in growing steps, no longer than a fortieth of
 the key's domain, until the exact checks find a fault; between the last value that fits and the
-first that does not the end is closed in by bisection and rounded inward. All checks are tried
-once more at the rounded ends. What fits again beyond a fault is not looked for, and a fault that
-only a stretch shorter than a step has may be stepped over.
+first that does not the end is closed in by bisection, sped up by what the faults say is missing,
+and rounded inward. All checks are tried once more at the rounded ends. What fits again beyond a
+fault is not looked for, and a fault that only a stretch shorter than a step has may be missed.
 
 Cost measured, one core: 0.7 s for 26 keys of a rotor with three arc barriers.
 """
@@ -22,6 +22,7 @@ GROWTH = 2.0
 STEPS = 40  # a walk's longest step is the domain over this
 RESOLUTION = 1e-7  # mm or degrees, of an end before it is rounded
 DECIMALS = 3
+MOST_TRIALS = 200  # of closing in on an end; a third of them halve it
 ROUNDING = 1e-3  # of the last decimal: an end so close to its round number reaches it
 
 Check = Callable[[float], Sequence[Fault]]
@@ -104,14 +105,44 @@ def _walk(
 def _closed_in(
     inside: float, outside: float, found: Sequence[Fault], check: Check
 ) -> tuple[float, Sequence[Fault]]:
-    """The last fitting value between one that fits and one that does not, and what stops it."""
-    while abs(outside - inside) > RESOLUTION:
-        middle = 0.5 * (inside + outside)
-        if faults := check(middle):
-            outside, found = middle, faults
+    """The last fitting value between one that fits and one that does not, and what stops it.
+
+    What is missing falls nearly straight towards the end: two values of the same fault tell where
+    it would be gone. Every third value halves what is left, whatever the fault does.
+    """
+    last = before = (outside, found[0])
+    for count in range(MOST_TRIALS):
+        if abs(outside - inside) <= RESOLUTION:
+            break
+        tried = _guessed(inside, outside, last, before, count)
+        if faults := check(tried):
+            before, last = last, (tried, faults[0])
+            outside, found = tried, faults
         else:
-            inside = middle
+            inside = tried
     return inside, found
+
+
+def _guessed(
+    inside: float,
+    outside: float,
+    last: tuple[float, Fault],
+    before: tuple[float, Fault],
+    count: int,
+) -> float:
+    """Where to look next: where the fault should be gone, else a step back from outside."""
+    way = math.copysign(RESOLUTION, inside - outside)
+    if count % 3 == 2:
+        return 0.5 * (inside + outside)
+    fall = before[1].lack - last[1].lack
+    if last[1].identity != before[1].identity or fall <= 0.0:
+        return outside + 0.25 * (inside - outside)
+    end = last[0] + (last[0] - before[0]) * last[1].lack / fall
+    if abs(end - inside) < 2.0 * RESOLUTION:
+        return inside - 0.9 * way  # found from inside: only to be confirmed
+    tried = end + 0.5 * way
+    is_between = min(inside, outside) < tried < max(inside, outside)
+    return tried if is_between else 0.5 * (inside + outside)
 
 
 def _rounded(value: float, end: float) -> float:
