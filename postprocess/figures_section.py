@@ -22,7 +22,7 @@ from lamwright.geometry.section import (
     rotor_cell,
 )
 
-from .figures_labels import RULER_FOOT, Callout, FloatArray, draw_ruler, place_callouts
+from .figures_labels import RULER_FOOT, Callout, FloatArray, Side, draw_ruler, place_callouts
 from .figures_magnets import draw_arrows, magnet_callouts
 from .figures_style import (
     DRAWN_AS,
@@ -199,15 +199,21 @@ def _rotor_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     for (pole, number), outline in outlines.items():
         anchors.append(_arm_point(outline))
         text = f"flux barrier {number}{pole_words(pole)}"
-        found.append(Callout(text, anchors[-1], "right"))
+        found.append(Callout(text, anchors[-1], _side(pole, anchors[-1])))
     first = {number: outline for (pole, number), outline in outlines.items() if pole == 1}
     found.append(Callout("flux carrier", _carrier_point(section, turn, first, anchors), "right"))
     found += magnet_callouts(cell, turn)
     for rib in _right_hand(cell.ribs, turn):
-        words = pole_words(pole_of(rib.name))
-        text = f"{rib.kind} rib {rib.barrier}{words}, {MM * rib.width:.2f} mm"
-        found.append(Callout(text, 0.5 * (rib.start + rib.end) * turn, "right"))
+        pole = pole_of(rib.name)
+        text = f"{rib.kind} rib {rib.barrier}{pole_words(pole)}, {MM * rib.width:.2f} mm"
+        middle = 0.5 * (rib.start + rib.end) * turn
+        found.append(Callout(text, middle, _side(pole, middle)))
     return found
+
+
+def _side(pole: int, anchor: complex) -> Side:
+    """Where a rotor's name stands: right, but on its own side for a later pole of the period."""
+    return "left" if pole > 1 and anchor.real < 0.0 else "right"
 
 
 def pole_words(pole: int) -> str:
