@@ -194,8 +194,10 @@ def magnetic_model(
         settings, iron_points=1, newton=replace(settings.newton, tolerance=COARSE_TOLERANCE)
     )
     laws = (rotor_law, stator_law)
-    coarse = _model(coarse_sector, section, winding, *laws, coarse_settings)
-    model = _model(sector, section, winding, *laws, settings)
+    # A node, tied or held, is an unknown at most; both orders keep the same positions.
+    kept = max(1, CACHED_UNKNOWNS // (sector.rotor.nodes.shape[0] + sector.stator.nodes.shape[0]))
+    coarse = _model(coarse_sector, section, winding, *laws, coarse_settings, kept)
+    model = _model(sector, section, winding, *laws, settings, kept)
     return replace(model, coarse=FirstOrder(coarse, lift))
 
 
@@ -206,8 +208,9 @@ def _model(
     rotor_law: SteelLaw,
     stator_law: SteelLaw,
     settings: FieldSettings,
+    kept: int,
 ) -> MagneticModel:
-    """The model without first guesses, on elements of either order."""
+    """The model without first guesses, on elements of either order; `kept` factors at most."""
     numbering = number_unknowns(sector)
     materials = material_of_elem(sector, section)
     nodes, elements = joined_parts(sector)
@@ -222,7 +225,6 @@ def _model(
     quad = quadrature(nodes, elements[others])
     nu = linear_reluctivity(sector, section, settings)[others]
     stator_gap = sector.rotor.elements.shape[0] + sector.stator.elements_of("gap_stator")
-    capacity = max(2, CACHED_UNKNOWNS // n_dof)
     return MagneticModel(
         sector=sector,
         stack_length=section.stack_length,
@@ -253,8 +255,8 @@ def _model(
         linkage=linkage_functional(sector, winding, numbering),
         magnet=magnet_source(sector.rotor, section.rotor, numbering, settings.magnet),
         representative=representatives(numbering, sector),
-        factors=Cache(capacity),
-        positions=Cache(2 * capacity),
+        factors=Cache(kept),
+        positions=Cache(2 * kept),
     )
 
 
