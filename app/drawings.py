@@ -1,9 +1,8 @@
 """A user's drawings: listed and drawn before use, or drawn with the place where they fail."""
 
-from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from lamwright.geometry.curves import Edge
 from lamwright.geometry.design_drawing import OutlineKeys
@@ -12,11 +11,6 @@ from lamwright.geometry.dxf_reader import read_pieces
 from lamwright.geometry.errors import DrawingError, DrawingMark, OutlineError
 from lamwright.geometry.outline_report import rotor_lines, stator_lines
 from lamwright.postprocess.files import prepared_folder
-
-if TYPE_CHECKING:
-    from matplotlib.axes import Axes
-
-    from lamwright.postprocess.figures_style import Style
 
 FAULT_NAME = "drawing_fault"  # of the picture, without ending
 LONGEST_TITLE = 150  # characters that a picture's head has room for
@@ -59,46 +53,29 @@ def write_recognised(machine: Machine, folder: Path) -> tuple[Recognised, ...]:
     stator, rotor = machine.design.stator, machine.design.rotor
     found = []
     if stator.outline is not None:
-        from lamwright.postprocess.figures_drawing import draw_found_stator
+        from lamwright.postprocess.figures import found_stator_figure, write_figure
 
-        drawn = stator.outline.drawing
-        name = _write_found(
-            "stator", machine, stator, folder, lambda ax, style: draw_found_stator(ax, drawn, style)
-        )
+        title, edges = _heading(machine, "stator", stator)
+        compose = partial(found_stator_figure, title, edges, stator.outline.drawing)
+        picture, _ = write_figure(folder, "stator_recognised", compose)
         lines = stator_lines(stator.outline)
-        found.append(Recognised("stator", str(stator.outline_dxf), lines, name))
+        found.append(Recognised("stator", str(stator.outline_dxf), lines, picture.name))
     if rotor.outline is not None:
-        from lamwright.postprocess.figures_drawing import draw_found_rotor
+        from lamwright.postprocess.figures import found_rotor_figure, write_figure
 
-        of_rotor, poles = rotor.outline.drawing, rotor.poles
-        name = _write_found(
-            "rotor",
-            machine,
-            rotor,
-            folder,
-            lambda ax, style: draw_found_rotor(ax, of_rotor, poles, style),
-        )
+        title, edges = _heading(machine, "rotor", rotor)
+        compose = partial(found_rotor_figure, title, edges, rotor.outline.drawing, rotor.poles)
+        picture, _ = write_figure(folder, "rotor_recognised", compose)
         lines = rotor_lines(rotor.outline)
-        found.append(Recognised("rotor", str(rotor.outline_dxf), lines, name))
+        found.append(Recognised("rotor", str(rotor.outline_dxf), lines, picture.name))
     return tuple(found)
 
 
-def _write_found(
-    part: str,
-    machine: Machine,
-    keys: OutlineKeys,
-    folder: Path,
-    fill: "Callable[[Axes, Style], None]",
-) -> str:
-    from lamwright.postprocess.figures import found_figure, write_figure
-
+def _heading(machine: Machine, part: str, keys: OutlineKeys) -> tuple[str, tuple[Edge, ...]]:
+    """The picture's title, and the drawing's pieces once more: the design does not keep them."""
     path = machine.path.parent / str(keys.outline_dxf)
     edges = _edges(path, keys.outline_unit_mm, keys.outline_layers)
-    title = f"{machine.design.name}: {part} recognised in {path.name}"
-    written = write_figure(
-        folder, f"{part}_recognised", lambda style: found_figure(title, edges, fill, style)
-    )
-    return written[0].name
+    return f"{machine.design.name}: {part} recognised in {path.name}", edges
 
 
 def _write_fault(mark: DrawingMark, folder: Path) -> Path | None:

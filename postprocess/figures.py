@@ -18,12 +18,22 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from lamwright.geometry.curves import Edge
+from lamwright.geometry.drawn_rotor import RotorDrawing
+from lamwright.geometry.drawn_stator import StatorDrawing
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.whole_file import whole_file
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.types import FieldSolution, SectorMesh, StressSolution
 
-from .figures_drawing import MARK_SHARE, draw_close_up, draw_lines, draw_mark, extent
+from .figures_drawing import (
+    MARK_SHARE,
+    draw_close_up,
+    draw_found_rotor,
+    draw_found_stator,
+    draw_lines,
+    draw_mark,
+    extent,
+)
 from .figures_field import draw_flux
 from .figures_section import draw_key, draw_lamination, draw_section
 from .figures_stress import LETTERS, close_ups, draw_rib, draw_stress
@@ -33,7 +43,6 @@ from .ribs import RibReport
 from .torque import TorqueWaveform
 
 if TYPE_CHECKING:
-    from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
 SVG_DPI = 120.0  # of rasterised fields in an SVG, whose borders are lines: 0.2 s less than at 200
@@ -157,14 +166,25 @@ def torque_figure(
     return figure
 
 
-def found_figure(
-    title: str, edges: Sequence[Edge], fill: Callable[[Axes, Style], None], style: Style
+def found_stator_figure(
+    title: str, edges: Sequence[Edge], drawing: StatorDrawing, style: Style
 ) -> Figure:
-    """A user's drawing (m) with what was recognised in it filled by `fill`."""
+    """A user's drawing (m) over the stator that was recognised in it."""
     figure = _figure((8.0, 8.2), title, style)
     ax = figure.add_axes((0.07, 0.055, 0.91, 0.9))
     draw_lines(ax, edges, style)
-    fill(ax, style)
+    draw_found_stator(ax, drawing, style)
+    return figure
+
+
+def found_rotor_figure(
+    title: str, edges: Sequence[Edge], drawing: RotorDrawing, poles: int, style: Style
+) -> Figure:
+    """A user's drawing (m) over the rotor that was recognised in it."""
+    figure = _figure((8.0, 8.2), title, style)
+    ax = figure.add_axes((0.07, 0.055, 0.91, 0.9))
+    draw_lines(ax, edges, style)
+    draw_found_rotor(ax, drawing, poles, style)
     return figure
 
 

@@ -4,7 +4,7 @@ import warnings
 from pathlib import Path
 
 import pytest
-from damaged_drawings import DAMAGES
+from damages import DAMAGES
 from draughting import design_text, sheet
 
 from lamwright.app.drawings import read_marked
