@@ -23,13 +23,15 @@ Edges = tuple[Edge, ...]
 class Compartment:
     """One area of a slot; `flank` is its upper side in the slot's frame, run outward.
 
-    Where `lower` is given the centre line parts the area, and this names the lower half.
+    Where `lower` is given the centre line parts the area, and this names the lower half. `bow` is
+    the bulge of its inner side, run downward, if that is not the first of the slot.
     """
 
     name: str  # with {s} for the slot's number
     material: Material
     flank: Edges
     lower: str = ""
+    bow: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,7 +63,7 @@ class Slot:
         if k == 0:
             across = arc(start, start.conjugate(), 0.0, ccw=False)
         else:
-            across = line(start, start.conjugate())
+            across = Edge(start, start.conjugate(), self.compartments[k].bow)
         return _halves(across) if self.compartments[k].lower else (across,)
 
     def far(self, k: int) -> Edges:
@@ -116,12 +118,12 @@ def slot_outline(design: MachineDesign) -> Slot:
     single = Slot((*parts, whole), bottom, is_closed)
     inner = _inner_area(single, copper)
     try:
-        flanks = parted_flank(dims, straight, fillet, inner)
+        nearer, further, bow = parted_flank(dims, straight, fillet, inner)
     except ValueError as error:
         raise GeometryError((_layers_finding(design, str(error)),)) from None
     layers = (
-        Compartment("slot_{s}_layer_1", "copper", (*start, *flanks[0])),
-        Compartment("slot_{s}_layer_0", "copper", flanks[1]),
+        Compartment("slot_{s}_layer_1", "copper", (*start, *nearer)),
+        Compartment("slot_{s}_layer_0", "copper", further, bow=bow),
     )
     return Slot((*parts, *layers), bottom, is_closed)
 

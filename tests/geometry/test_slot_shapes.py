@@ -25,6 +25,7 @@ from lamwright.geometry.slot_outline import slot_copper_area, slot_outline
 from lamwright.geometry.stator import stator_regions, stator_ring
 
 MM = 1e-3
+JOINT = 2.3721052  # mm, by bisection of where the line ends
 each_shape = pytest.mark.parametrize("shape", SHAPES, ids=" ".join)
 each_winding = pytest.mark.parametrize("winding", WINDINGS, ids=str)
 each_wedge = pytest.mark.parametrize("wedge", [0.0, 1.0])
@@ -192,6 +193,24 @@ def test_layers_are_parted_on_the_fillet(sides, bottom):
     sizes = [area(r.outer) for r in stator_regions(design) if r.name.startswith("slot_")]
     assert sizes == pytest.approx([sizes[0]] * 12, rel=1e-12)
     assert_tiles(design)
+
+
+@pytest.mark.parametrize("off", [-0.02, -1e-3, 0.0, 1e-3, 0.02])
+def test_a_line_that_ends_at_the_joint_is_bowed(off):
+    """Corner radius, mm, that puts the line within 20 um of the joint: no short piece, like areas.
+
+    The arc's area is a series to b^5; b < 0.01 leaves 1e-14. The joint is met at JOINT.
+    """
+    keys = {"slot_depth_mm": 7.0, "wedge_depth_mm": 1.0}
+    design = slotted(
+        ("parallel_slot", "flat", "semi_closed"), (2, 6), slot_corner_radius_mm=JOINT + off, **keys
+    )
+    inner, outer = slot_outline(design).compartments[-2:]
+    assert len(inner.flank) == len(outer.flank) == 1
+    assert abs(outer.bow) < 0.01
+    assert_tiles(design)
+    sizes = [area(r.outer) for r in stator_regions(design) if r.name.startswith("slot_")]
+    assert sizes == pytest.approx([sizes[0]] * 12, rel=1e-9)
 
 
 def test_layers_of_tooth_coils_lie_beside_their_teeth():

@@ -64,6 +64,19 @@ def test_every_slot_can_be_meshed(shape, winding):
         assert found == pytest.approx(whole, abs=missed + 1e-12 * whole)
 
 
+@pytest.mark.parametrize("off", [-0.06, -0.02, -1e-5, 1e-5, 0.02, 0.06])
+def test_layers_parted_beside_a_joint_make_no_needles(off):
+    """The line ends within 50 um of where flank and fillet meet: every angle over 10 degrees."""
+    keys = {"slot_depth_mm": 7.0, "slot_corner_radius_mm": 2.3721052 + off, "wedge_depth_mm": 1.0}
+    design = slotted(("parallel_slot", "flat", "semi_closed"), (2, 6), **keys)
+    few = design.winding.model_copy(update={"turns_per_coil": 4})
+    section = cross_section(design.model_copy(update={"winding": few}))
+    z = corners_of(mesh_section(section).stator)
+    sides = np.roll(z, -1, axis=1) - z
+    angles = np.abs(np.angle(-np.roll(sides, 1, axis=1) / sides))
+    assert math.degrees(angles.min()) > 10.0
+
+
 @pytest.mark.parametrize("winding", [(2, 6), (2, 1)], ids=str)
 @pytest.mark.parametrize("shape", SHAPES[::5] + SHAPES[2::9], ids=" ".join)
 def test_meshes_follow_every_key_of_a_slot(shape, winding):
