@@ -102,7 +102,10 @@ class OtherHalfDesign(_Table):
     """What the clockwise half of a barrier has unlike the other one."""
 
     end_angle_deg: Positive | None = None
+    end_thickness_mm: Positive | None = None
     tangential_rib_mm: Positive | None = None
+    tangential_rib_inner_mm: Positive | None = None
+    end_fillet_mm: Positive | None = None
     arm_angle_deg: Annotated[float, Field(ge=0.0, lt=90.0)] | None = None
     bend_radius_mm: Positive | None = None
 

@@ -93,6 +93,8 @@ def _fillet_faults(pole: Pole, table: str, barrier: BarrierDesign) -> list[Fault
         return []
     if full < least:
         return []  # the thickness is at fault, and is found elsewhere
+    if radius > largest and not _is_even(barrier):
+        return []  # what fits is known where the rib is drawn
     # The full round stands apart from the range, so it is named in the text.
     code, text = "fillet_large", f"more than half the thickness; {_mm(full)} is a full round"
     if radius < least:
@@ -103,6 +105,15 @@ def _fillet_faults(pole: Pole, table: str, barrier: BarrierDesign) -> list[Fault
     remedy = f"accepted {_mm(full)} (full round)" if largest < least else None
     lack = max(least - radius, radius - largest)
     return [Fault(code, (f"{table}.fillet_mm",), text, lack, remedy)]
+
+
+def _is_even(barrier: BarrierDesign) -> bool:
+    """Whether the barrier is as thick all along."""
+    other = barrier.other_half
+    ends = (barrier.end_thickness_mm, None if other is None else other.end_thickness_mm)
+    if any(end not in (None, barrier.thickness_mm) for end in ends):
+        return False
+    return barrier.shape not in ("hyperbolic", "streamline")
 
 
 def _place_faults(
@@ -118,7 +129,7 @@ def _place_faults(
         keys = tuple(f"{table}.{name}" for name in _with_place(names, barrier, number))
         try:
             pair = rib_sides(band, cut)
-        except ValueError:
+        except ValueError:  # across no side of the barrier, or a fillet beyond it
             lack = _overreach(pole, band, cut)
         else:
             sides.append(pair)
@@ -165,7 +176,7 @@ def _own_keys(barrier: BarrierDesign) -> tuple[str, ...]:
 def _shape_keys(barrier: BarrierDesign) -> tuple[str, ...]:
     if barrier.shape == "straight":
         return (*SIDE_KEYS, "arm_angle_deg", "bend_radius_mm")
-    return SIDE_KEYS
+    return (*SIDE_KEYS, "bend_radius_mm") if barrier.shape == "vee" else SIDE_KEYS
 
 
 def _with_place(names: tuple[str, ...], barrier: BarrierDesign, number: int) -> tuple[str, ...]:

@@ -6,12 +6,13 @@ between neighbouring barriers whole outlines are measured besides.
 """
 
 from .bands import Band, band_of
-from .barrier_checks import SLACK, pole_of
 from .barrier_checks import barrier_faults as shape_faults_of
+from .barrier_checks import pole_of
 from .barrier_checks import rotor_faults as shape_faults
 from .curves import Edge
 from .design import MachineDesign
 from .distances import distance
+from .half_checks import SLACK
 from .mid_lines import MM
 from .remedies import Fault, barrier_key, barrier_number
 from .rib_checks import rib_faults

@@ -53,19 +53,34 @@ def ribs(*places, width=0.8, fillet=0.5, tilt=0.0):
 
 
 def ribbed_designs(count, seed):
-    """Valid random designs whose barriers have 1 to 4 ribs at random places and tilts."""
+    """Valid random designs of all families with 0 to 4 ribs a barrier at random places and tilts."""
     rng = np.random.default_rng(seed)
     found = []
     for _ in range(MOST_DRAWS):
         if len(found) == count:
             return found
         design = drawn_design(rng)
-        barriers = [ribbed(rng, barrier) for barrier in design.rotor.barrier]
+        barriers = [ribbed(rng, barrier) for barrier in reshaped(rng, design.rotor.barrier)]
         rotor = design.rotor.model_copy(update={"barrier": tuple(barriers)})
         design = design.model_copy(update={"rotor": rotor})
         if any(barrier.radial_ribs for barrier in barriers) and not rotor_faults(design):
             found.append(design)
     raise AssertionError(f"only {len(found)} valid designs in {MOST_DRAWS} draws")
+
+
+def reshaped(rng, barriers):
+    """The barriers in one of the families, maybe thicker or thinner at their ends."""
+    shape = str(rng.choice([barriers[0].shape, "vee", "hyperbolic", "streamline"]))
+    if shape == barriers[0].shape:
+        return barriers
+    changes = {"shape": shape, "arm_angle_deg": None, "bend_radius_mm": None}
+    ends = [barrier.thickness_mm * float(rng.uniform(0.7, 1.4)) for barrier in barriers]
+    if shape == "vee":
+        ends = [None] * len(ends)
+    return [
+        barrier.model_copy(update={**changes, "end_thickness_mm": end})
+        for barrier, end in zip(barriers, ends, strict=True)
+    ]
 
 
 def ribbed(rng, barrier):
