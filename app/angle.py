@@ -6,6 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from lamwright.geometry.design import MachineDesign
+from lamwright.geometry.skew import skew_offsets
 from lamwright.postprocess.magnet_angle import best_magnet_angle, motoring_base
 from lamwright.postprocess.operating import (
     TurnedLinkage,
@@ -14,7 +15,8 @@ from lamwright.postprocess.operating import (
     mean_linkage_slope,
     search_positions,
 )
-from lamwright.solver.chains import linkage_slope
+from lamwright.postprocess.skew import step_point, turned_back
+from lamwright.solver.chains import OperatingPoint, linkage_slope
 from lamwright.solver.field import MagneticModel, solve_point
 from lamwright.solver.types import FieldSolution
 
@@ -28,7 +30,8 @@ class AngleFound:
     gamma: float  # rad
     i_d: float  # A
     i_q: float
-    last: tuple[FieldSolution, ...]  # at the last angle tried, one for each search position
+    # At the last angle tried: for each step of the rotor, one for each search position.
+    last: tuple[tuple[FieldSolution, ...], ...]
     fields: tuple[FieldSolution, ...]
 
 
@@ -43,29 +46,41 @@ def most_torque(
         on_done: called with the share done, 0 to 1, after each field.
     """
     pole_pairs, current = design.pole_pairs, design.duty.rated_current_a
-    positions = search_positions(pole_pairs, design.stator.slots)
+    offsets = skew_offsets(design)
+    # Of each step all positions, then those of the next.
+    places = [
+        (float(position), offset)
+        for offset in offsets
+        for position in search_positions(pole_pairs, design.stator.slots)
+    ]
     fields: list[FieldSolution] = []
 
     def torque_of(gamma: float) -> tuple[float, float]:
         i_d, i_q = dq_currents(current, gamma)
-        before = fields[-len(positions) :]
+        before = fields[-len(places) :]
         linkages = []
-        for k, position in enumerate(positions):
+        for k, (position, offset) in enumerate(places):
+            point = step_point(OperatingPoint(i_d, i_q, position), offset, pole_pairs)
             # Started at the same position with the currents before; at first beside it.
             start = before[k] if before else fields[-1] if fields else None
-            field = solve_point(model, i_d, i_q, float(position), start)
+            field = solve_point(model, point.i_d, point.i_q, point.position, start)
             # d i_d/d gamma = -i_q, d i_q/d gamma = i_d at constant current
-            slopes = linkage_slope(model, field, -i_q, i_d)
-            linkages.append((field.psi_d, field.psi_q, *slopes))
+            slopes = linkage_slope(model, field, -point.i_q, point.i_d)
+            back = -pole_pairs * offset
+            linkages.append(
+                (*turned_back(field.psi_d, field.psi_q, back), *turned_back(*slopes, back))
+            )
             fields.append(field)
-            on_done(min(1.0, len(fields) / (USUAL_ANGLES * len(positions))))
+            on_done(min(1.0, len(fields) / (USUAL_ANGLES * len(places))))
         mean = TurnedLinkage(*np.mean(linkages, axis=0).tolist())
         return mean_linkage_slope(pole_pairs, current, gamma, mean)
 
     if model.magnet.still_energy > 0.0:
-        bare = solve_point(model, 0.0, 0.0, float(positions[0]))
+        bare = solve_point(model, 0.0, 0.0, places[0][0])
         gamma = best_magnet_angle(torque_of, motoring_base(bare.psi_q)).gamma
     else:
         gamma = best_angle(torque_of).gamma
     i_d, i_q = dq_currents(current, gamma)
-    return AngleFound(gamma, i_d, i_q, tuple(fields[-len(positions) :]), tuple(fields))
+    last, count = fields[-len(places) :], len(places) // len(offsets)
+    by_step = tuple(tuple(last[at : at + count]) for at in range(0, len(last), count))
+    return AngleFound(gamma, i_d, i_q, by_step, tuple(fields))

@@ -15,6 +15,7 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
@@ -28,6 +29,7 @@ from lamwright.postprocess.figures import (
 )
 from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
+from lamwright.postprocess.skew import mean_change, mean_solution, step_point
 from lamwright.postprocess.summary import (
     magnetic_figures,
     solver_figures,
@@ -93,10 +95,13 @@ class Assessment:
         with watch.phase("current angle"):
             found = most_torque(model, self.machine.design, watch.within)
         with watch.phase("torque waveform"):
-            fields = self._waveform_fields(found)
+            by_step = self._waveform_fields(found)
+            fields = self._means(found, by_step)
             waveform = torque_waveform(fields, section.pole_pairs)
             winding = winding_table(self.machine.design)
-            flux = partial(flux_figure, name, section, winding, sector, fields[0])
+            middle = len(by_step) // 2
+            shown = name if len(by_step) == 1 else f"{name}, step {middle + 1} of {len(by_step)}"
+            flux = partial(flux_figure, shown, section, winding, sector, by_step[middle][0])
             drawn += self._drawn(stage, "flux", flux)
             torque = partial(torque_figure, name, section, waveform)
             drawn += self._drawn(stage, "torque", torque)
@@ -106,9 +111,10 @@ class Assessment:
             drawn += self._drawn(stage, "stress", compose)
         watch.meanwhile("stress", stress.seconds)
         with watch.phase("error bars"):
-            field_errors = self._field_errors(fields)
+            field_errors = self._field_errors(fields, by_step)
         magnets = self._magnets(model)
-        solved = (*found.fields, *fields, *(f for work in magnets for f in work.fields))
+        waves = (field for step in by_step for field in step)
+        solved = (*found.fields, *waves, *(f for work in magnets for f in work.fields))
         return self._written(
             stage, model, outline, waveform, field_errors, solved, stress, magnets, drawn
         )
@@ -120,27 +126,59 @@ class Assessment:
         with self.watch.phase("magnets"):
             return (magnet_work(self.machine, self.section, model, self.crew),)
 
-    def _waveform_fields(self, found: AngleFound) -> list[FieldSolution]:
-        """Fields at all positions of the waveform, from chains shared by the crew."""
-        positions = waveform_positions(self.section.pole_pairs).tolist()
-        points = [OperatingPoint(found.i_d, found.i_q, position) for position in positions]
-        chains = fanned(positions, [field.position for field in found.last])
+    def _waveform_fields(self, found: AngleFound) -> list[list[FieldSolution]]:
+        """Fields of each step at all positions of the waveform, from chains shared by the crew."""
+        steps = [
+            (points, last, fanned([p.position for p in points], [field.position for field in last]))
+            for points, last in zip(self._step_points(found), found.last, strict=True)
+        ]
         tasks = [
-            partial(_chain, [points[k] for k in chain], found.last[start])
+            partial(_chain, [points[k] for k in chain], last[start])
+            for points, last, chains in steps
             for start, chain in chains
         ]
-        done = self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
-        numbers = [k for _, chain in chains for k in chain]
-        solved = dict(zip(numbers, (field for chain in done for field in chain), strict=True))
-        return [solved[k] for k in range(len(points))]
+        done = iter(self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks))))
+        solved = []
+        for points, _, chains in steps:
+            at = {k: f for _, chain in chains for k, f in zip(chain, next(done), strict=True)}
+            solved.append([at[k] for k in range(len(points))])
+        return solved
 
-    def _field_errors(self, fields: Sequence[FieldSolution]) -> FieldErrors:
+    def _rotor_points(self, found: AngleFound) -> list[OperatingPoint]:
+        positions = waveform_positions(self.section.pole_pairs).tolist()
+        return [OperatingPoint(found.i_d, found.i_q, position) for position in positions]
+
+    def _step_points(self, found: AngleFound) -> list[list[OperatingPoint]]:
+        """Where each step of the rotor stands while the rotor goes through the waveform."""
+        pole_pairs, points = self.section.pole_pairs, self._rotor_points(found)
+        return [
+            [step_point(point, offset, pole_pairs) for point in points]
+            for offset in skew_offsets(self.machine.design)
+        ]
+
+    def _means(
+        self, found: AngleFound, by_step: Sequence[Sequence[FieldSolution]]
+    ) -> list[FieldSolution]:
+        """The whole machine at all positions of the waveform."""
+        offsets, pole_pairs = skew_offsets(self.machine.design), self.section.pole_pairs
+        together = zip(zip(*by_step, strict=True), self._rotor_points(found), strict=True)
+        return [mean_solution(steps, offsets, point, pole_pairs) for steps, point in together]
+
+    def _field_errors(
+        self, fields: Sequence[FieldSolution], by_step: Sequence[Sequence[FieldSolution]]
+    ) -> FieldErrors:
         """Error bars of the waveform from a few of its fields, shared by the crew."""
         winding, places = winding_table(self.machine.design), sample_places(fields)
-        tasks = [partial(_change, self.section, winding, fields[k]) for k in places]
+        offsets, pole_pairs = skew_offsets(self.machine.design), self.section.pole_pairs
+        samples = [step[k] for k in places for step in by_step]
+        tasks = [partial(_change, self.section, winding, sample) for sample in samples]
         done = self.crew.share(tasks, lambda count: self.watch.within(count / len(tasks)))
-        changed = dict(zip(places, done, strict=True))
-        return errors_of(fields, changed, self.section.pole_pairs)
+        count = len(by_step)
+        changed = {
+            place: mean_change(done[at * count : (at + 1) * count], offsets, pole_pairs)
+            for at, place in enumerate(places)
+        }
+        return errors_of(fields, changed, pole_pairs)
 
     def _drawn(self, stage: Path, name: str, compose: Composer) -> "list[Future[None]]":
         """A figure to come, drawn by a worker where there is one; nothing where none is wanted."""

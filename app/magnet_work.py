@@ -7,6 +7,7 @@ from pathlib import Path
 
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.demagnetisation import (
     MagnetState,
@@ -22,6 +23,7 @@ from lamwright.postprocess.magnet_figures import (
 )
 from lamwright.postprocess.no_load import NoLoad, linkage_spectrum, no_load, no_load_positions
 from lamwright.postprocess.operating import dq_currents
+from lamwright.postprocess.skew import mean_solution, step_point
 from lamwright.postprocess.tables import linkage_orders_csv, no_load_csv
 from lamwright.solver.chains import OperatingPoint
 from lamwright.solver.field import MagneticModel
@@ -84,26 +86,41 @@ def magnet_work(
     assert machine.design.magnet is not None
     law = magnet_law(machine.magnet, machine.design.magnet.worst_temperature_c)
     positions = no_load_positions(section.pole_pairs, section.rotor_period).tolist()
-    bare = _solved(crew, 0.0, 0.0, positions)
-    record = no_load(bare, section.rotor_period)
+    offsets, pole_pairs = skew_offsets(machine.design), section.pole_pairs
+    still = [OperatingPoint(0.0, 0.0, position) for position in positions]
+    bare = _solved(crew, still, offsets, pole_pairs)
+    whole = [
+        mean_solution(steps, offsets, point, pole_pairs)
+        for steps, point in zip(bare, still, strict=True)
+    ]
+    record = no_load(whole, section.rotor_period)
     gamma = opposing_angle(record.psi_d, record.psi_q)
     i_d, i_q = dq_currents(demagnetising_current(machine.design), gamma)
     if law != model.settings.magnet:
         crew.everywhere(Desk.take_model, remagnetised(model, law))
-    opposed = _solved(crew, i_d, i_q, positions[::STRIDE])
+    against = [OperatingPoint(i_d, i_q, position) for position in positions[::STRIDE]]
+    opposed = _solved(crew, against, offsets, pole_pairs)
     rotor = model.sector.rotor
-    states = [magnet_states(rotor, section.rotor, field.a_rotor, law) for field in opposed]
-    return MagnetWork(record, worst_states(states), (*bare, *opposed))
+    loaded = [field for steps in opposed for field in steps]
+    states = [magnet_states(rotor, section.rotor, field.a_rotor, law) for field in loaded]
+    unloaded = [field for steps in bare for field in steps]
+    return MagnetWork(record, worst_states(states), (*unloaded, *loaded))
 
 
 def _solved(
-    crew: Crew[Desk], i_d: float, i_q: float, positions: Sequence[float]
-) -> list[FieldSolution]:
-    points = [OperatingPoint(i_d, i_q, position) for position in positions]
+    crew: Crew[Desk], points: Sequence[OperatingPoint], offsets: Sequence[float], pole_pairs: int
+) -> list[tuple[FieldSolution, ...]]:
+    """Fields of all steps of the rotor at each of its points."""
     share = -(-len(points) // CHAINS)
-    tasks = [partial(_chain, points[at : at + share]) for at in range(0, len(points), share)]
+    tasks = [
+        partial(_chain, [step_point(p, offset, pole_pairs) for p in points[at : at + share]])
+        for offset in offsets
+        for at in range(0, len(points), share)
+    ]
     done = crew.share(tasks, lambda count: None)
-    return [field for chain in done for field in chain]
+    fields = [field for chain in done for field in chain]
+    by_step = [fields[at : at + len(points)] for at in range(0, len(fields), len(points))]
+    return list(zip(*by_step, strict=True))
 
 
 def _chain(points: Sequence[OperatingPoint], desk: Desk) -> tuple[FieldSolution, ...]:

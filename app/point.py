@@ -14,9 +14,12 @@ from lamwright.geometry import design_file
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.winding import winding_table
+from lamwright.postprocess.skew import mean_solution, step_point
 from lamwright.postprocess.tables import point_record
-from lamwright.solver.field import FieldSettings, MagneticModel, magnetic_model, solve_point
+from lamwright.solver.chains import OperatingPoint, solve_chain
+from lamwright.solver.field import FieldSettings, MagneticModel, magnetic_model
 from lamwright.solver.magnet import MagnetLaw, magnet_law
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.steel import reluctivity_law
@@ -77,7 +80,10 @@ def solve(machine: Machine, *, i_d: float, i_q: float, angle_deg: float) -> Fiel
             raise LamwrightError(f"{name} = {value}: not a finite number; accepted any finite one")
     section = section_of(machine)
     model = model_of(machine, section, mesh_section(section))
-    return solve_point(model, i_d, i_q, angle_deg * DEGREE)
+    rotor = OperatingPoint(i_d, i_q, angle_deg * DEGREE)
+    offsets, pole_pairs = skew_offsets(machine.design), section.pole_pairs
+    points = [step_point(rotor, offset, pole_pairs) for offset in offsets]
+    return mean_solution(solve_chain(model, points), offsets, rotor, pole_pairs)
 
 
 def point(path: Path, *, i_d: float, i_q: float, angle_deg: float) -> dict[str, object]:

@@ -94,6 +94,8 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
     design = machine.design
     if machine.magnet is not None:
         raise LamwrightError("slopes: a machine with magnets has none yet; remove [magnet]")
+    if design.rotor.skew_steps > 1:
+        raise LamwrightError("slopes: a skewed rotor has none yet; remove skew_steps")
     sector = mesh_section(section)
     model = model_of(machine, section, sector)
     fields = loaded_fields(model, design)
@@ -135,7 +137,7 @@ def loaded_fields(model: MagneticModel, design: MachineDesign) -> tuple[FieldSol
     tight = replace(model.settings, newton=NewtonSettings(tolerance=TOLERANCE))
     positions = waveform_positions(design.pole_pairs, POSITIONS)
     points = [OperatingPoint(found.i_d, found.i_q, float(position)) for position in positions]
-    return solve_chain(replace(model, settings=tight), points, start=found.last[0])
+    return solve_chain(replace(model, settings=tight), points, start=found.last[0][0])
 
 
 def _linkages(

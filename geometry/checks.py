@@ -15,6 +15,7 @@ from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
 from .rotor import following
 from .rotor_checks import barrier_faults, rotor_faults
+from .skew import skew_findings
 from .slot_checks import stator_faults
 from .unlike_poles import of_all_poles
 from .winding import winding_findings
@@ -25,7 +26,7 @@ def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     found = findings(design, shape_faults(design), shared_faults)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
-    return (*found, *magnet_findings(design), *_duty_findings(design))
+    return (*found, *magnet_findings(design), *skew_findings(design), *_duty_findings(design))
 
 
 def shape_faults(design: MachineDesign) -> list[Fault]:

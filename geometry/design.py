@@ -162,6 +162,10 @@ class RotorDesign(OutlineKeys):
     shaft_relative_permeability: Annotated[float, Field(ge=1.0)] = 1.0
     sheet_thickness_mm: Positive
     stacking_factor: Annotated[float, Field(gt=0.8, le=1.0)] = 0.97  # rotor and stator
+    skew_steps: Annotated[int, Field(ge=1, le=12)] = 1  # equal parts of the stack
+    # Of the continuous skew that the steps stand for, mechanical: each step is turned by the
+    # angle over the number of steps against the one before.
+    skew_angle_deg: NotNegative = 0.0
     barrier: Annotated[tuple[BarrierDesign, ...], Field(min_length=1, max_length=6)]
     # Of every second pole; without them all poles are alike.
     alternate_barrier: Annotated[tuple[BarrierDesign, ...], Field(max_length=6)] = ()
