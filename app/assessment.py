@@ -29,7 +29,7 @@ from lamwright.postprocess.figures import (
 )
 from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
-from lamwright.postprocess.skew import mean_change, mean_solution, step_point
+from lamwright.postprocess.skew import mean_change, mean_solution, skew_cautions, step_point
 from lamwright.postprocess.summary import (
     magnetic_figures,
     solver_figures,
@@ -234,6 +234,7 @@ class Assessment:
             outcomes=judged(machine.design.limits, magnetic, rotor),
             cautions=(
                 *(line for work in magnets for line in work.cautions(machine)),
+                *skew_cautions(machine.design.rotor.skew_steps),
                 *cautions(magnetic, terminal, rotor, cards, bars),
             ),
             times=watch.times,

@@ -44,6 +44,7 @@ if TYPE_CHECKING:
 AXIS_OVERHANG = 1.05  # how far a d or q axis line reaches, over the stator's radius
 LETTER_ROOM = 1.13  # how far its letters reach
 LEAST_OPENING = 1e-5  # m, less is no space worth a name
+SAME_WIDTH = 1e-6  # m, ribs this near in width are told once
 
 
 def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
@@ -334,10 +335,11 @@ def _carrier_point(
 
 
 def _right_hand(ribs: tuple[Rib, ...], turn: complex) -> list[Rib]:
-    """One rib of each kind, barrier and pole: the one furthest to the right."""
-    best: dict[tuple[str, int, int], Rib] = {}
+    """One rib of each kind, barrier, pole and width: the one furthest to the right."""
+    best: dict[tuple[str, int, int, int], Rib] = {}
     for rib in ribs:
-        key = (rib.kind, rib.barrier, pole_of(rib.name))
+        width = round(rib.width / SAME_WIDTH)  # halves may be unlike
+        key = (rib.kind, rib.barrier, pole_of(rib.name), width)
         if key not in best or _x(rib, turn) > _x(best[key], turn):
             best[key] = rib
     return list(best.values())

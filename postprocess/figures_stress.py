@@ -10,6 +10,7 @@ happens in them. Stress is that recovered at the nodes; curved elements are draw
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -131,7 +132,7 @@ def draw_rib(
         zorder=9,
     )
     ax.set_title(
-        f"{letter}: {rib_name(row.rib)}, yield margin {row.yield_margin:.2f}\n"
+        f"{letter}: {rib_name(row.rib, section.ribs)}, yield margin {row.yield_margin:.2f}\n"
         f"peak {mpa(row.peak)}, mean tension {mpa(row.mean_tension)}",
         fontsize=style.text,
         color=style.ink,
@@ -157,11 +158,19 @@ def mpa(stress: float) -> str:
     return f"{value:.0f} MPa" if abs(value) >= 99.95 else f"{value:#.3g} MPa"
 
 
-def rib_name(rib: Rib) -> str:
-    """A rib as the trade calls it, with its side where there are two."""
+def rib_name(rib: Rib, ribs: Sequence[Rib]) -> str:
+    """A rib as the trade calls it, with its side where there are two, its letter among several."""
     side = rib.name.rsplit("_", 1)[1]
     words = pole_words(pole_of(rib.name))
-    return f"{rib.kind} rib {rib.barrier}" + (f", {side}" if len(side) > 1 else "") + words
+    return _numbered(rib, ribs) + (f", {side}" if len(side) > 1 else "") + words
+
+
+def _numbered(rib: Rib, ribs: Sequence[Rib]) -> str:
+    """Kind and barrier of a rib; radial ribs of one barrier are told apart by their letters."""
+    stem, letter = rib.name.rsplit("_", 1)
+    is_one_of_many = sum(other.name.startswith(f"{stem}_") for other in ribs) > 1
+    mark = letter if rib.kind == "radial" and is_one_of_many else ""
+    return f"{rib.kind} rib {rib.barrier}{mark}"
 
 
 def _rotor_silhouette(section: CrossSection) -> ComplexArray:
@@ -180,10 +189,12 @@ def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
     """Each rib's peak on its own side; ribs on the q axis go where there is more room."""
     most = max(row.peak for row in report.ribs)
     rows = [(row, MM * turn * row.peak_at, row.rib) for row in report.ribs]
+    ribs = [row.rib for row in report.ribs]
     found: list[Callout] = []
     middle = []
     for row, anchor, rib in rows:
-        text = f"{rib.kind} rib {rib.barrier}{pole_words(pole_of(rib.name))}: {mpa(row.peak)}"
+        words = pole_words(pole_of(rib.name))
+        text = f"{_numbered(rib, ribs)}{words}: {mpa(row.peak)}"
         at = (turn * (rib.start + rib.end)).real
         if abs(at) < rib.width:
             middle.append((text, anchor, row.peak == most))

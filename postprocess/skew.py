@@ -23,6 +23,15 @@ from lamwright.solver.estimate_step import Change
 from lamwright.solver.types import FieldSolution
 
 
+def skew_cautions(steps: int) -> tuple[str, ...]:
+    """What a reader should be wary of where the rotor has several steps."""
+    if steps == 1:
+        return ()
+    return (
+        f"{steps} steps of skew, each with a two-dimensional field: flux between them is left out",
+    )
+
+
 def turned_back(d: float, q: float, angle_el: float) -> tuple[float, float]:
     """A dq vector as seen from a frame `angle_el` rad ahead."""
     seen = complex(d, q) * cmath.exp(-1j * angle_el) if angle_el else complex(d, q)

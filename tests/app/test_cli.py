@@ -114,7 +114,9 @@ def test_exit_code_tells_whether_every_limit_holds(ripple, code, tmp_path, monke
 def test_tolerance_reaches_the_assessment(name, tmp_path, monkeypatch):
     """The name asked for is the one assessed with; another is bad input that lists the three."""
     asked = []
-    monkeypatch.setattr(run, "assess", lambda *given: asked.append(given[-2:]) or invented.verdict())
+    monkeypatch.setattr(
+        run, "assess", lambda *given: asked.append(given[-2:]) or invented.verdict()
+    )
     assert invoke("assess", DEMO, "--out", tmp_path, "--tolerance", name).exit_code == 0
     without = invoke("assess", DEMO, "--out", tmp_path, "--tolerance", name, "--no-pictures")
     assert without.exit_code == 0

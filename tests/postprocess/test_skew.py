@@ -109,11 +109,11 @@ def test_phase_linkages_and_power_balance_of_a_machine_s_own_fields():
     """36/4 machine, two steps: dq of the mean phase linkages is the mean in the rotor's frame.
 
     Linear in both, so to rounding. Torque and linkages balance over 60 degrees: 0.5 %, as without
-    skew (test_field), from 6 positions on a coarse mesh.
+    skew (test_field), from 10 positions on a coarse mesh.
     """
     model = shipped_model("demo_36s4p_straight", 1.6)
     pole_pairs, offsets = model.sector.pole_pairs, (-0.5 * SLOT_PITCH, 0.5 * SLOT_PITCH)
-    positions = np.linspace(0.0, math.pi / 3.0 / pole_pairs, 6, endpoint=False)
+    positions = np.linspace(0.0, math.pi / 3.0 / pole_pairs, 10, endpoint=False)
     rotor = [OperatingPoint(*CURRENT, float(position)) for position in positions]
     by_step = [
         solve_chain(model, [step_point(p, offset, pole_pairs) for p in rotor]) for offset in offsets
