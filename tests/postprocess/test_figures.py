@@ -192,10 +192,14 @@ def test_labels_tell_the_numbers_of_the_reports(results, sheets):
     for result, sheet in zip(results, sheets, strict=True):
         section = [text for text, _ in words(sheet["section"])]
         stress = [text for text, _ in words(sheet["stress"])]
+        names = [row.rib.name for row in result.ribs.ribs]
         for row in result.ribs.ribs:
             name = f"{row.rib.kind} rib {row.rib.barrier}"
             assert f"{name}, {1e3 * row.rib.width:.2f} mm" in section
-            assert f"{name}: {mpa(row.peak)}" in stress
+            # Radial ribs of one barrier are told apart by their letters.
+            many = f"radial_{row.rib.barrier}_b" in names and row.rib.kind == "radial"
+            letter = row.rib.name[-1] if many else ""
+            assert f"{name}{letter}: {mpa(row.peak)}" in stress
             assert float(mpa(row.peak).removesuffix(" MPa")) == pytest.approx(
                 1e-6 * row.peak, rel=5e-3
             )
