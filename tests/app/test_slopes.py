@@ -73,3 +73,11 @@ def test_a_broken_design_ends_with_2(tmp_path):
     assert result.exit_code == 2
     assert "gap_mm" in result.stderr
     assert not (tmp_path / "out").exists()
+
+
+def test_magnets_have_no_slopes_yet(tmp_path):
+    """Refused in one line: the slope of the remanence's load is not there."""
+    design = DEMO.parent / "demo_36s4p_magnet.toml"
+    result = CliRunner().invoke(main, ["slopes", str(design), "--out", str(tmp_path / "out")])
+    assert result.exit_code == 2
+    assert "slopes: a machine with magnets has none yet" in result.stderr

@@ -6,12 +6,14 @@ import math
 import numpy as np
 import pytest
 
+from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.section import CrossSection
 from lamwright.postprocess.torque import torque_waveform, waveform_positions
 from lamwright.solver.chains import OperatingPoint, linkage_slope, solve_chain
 from lamwright.solver.estimate_step import changes, fine_level
 from lamwright.solver.field import MagneticModel, magnetic_model, solve_point
 from lamwright.solver.magnet import magnet_source
+from lamwright.solver.mesh import mesh_section
 from lamwright.solver.model import remagnetised
 from lamwright.solver.types import FieldSolution
 from tests.shipped import shipped, shipped_model
@@ -152,3 +154,19 @@ def test_a_magnet_needs_its_law(model: MagneticModel) -> None:
     one = shipped(NAME)
     with pytest.raises(ValueError, match="magnet_1: a magnet needs a magnet law"):
         magnet_source(one.sector.rotor, one.section.rotor, model.numbering, None)
+
+
+def test_two_poles_are_one_and_its_opposite(model: MagneticModel) -> None:
+    """A sector of two poles, the second magnetised round: all figures of one pole's, 1e-5."""
+    one = shipped(NAME)
+    section = cross_section(one.machine.design, sector_poles=2)
+    names = [r.name for r in section.rotor if r.material == "magnet"]
+    assert len(names) == 10
+    laws = model.iron.rotor_law, model.iron.stator_law
+    double = magnetic_model(mesh_section(section), section, one.winding, *laws, model.settings)
+    for i_d, i_q in ((0.0, 0.0), (I_D, I_Q)):
+        first, second = (solve_point(m, i_d, i_q, 0.02) for m in (model, double))
+        scale = np.abs(first.psi_abc).max()
+        assert second.psi_abc == pytest.approx(first.psi_abc, abs=1e-5 * scale)
+        assert second.torque == pytest.approx(first.torque, abs=1e-5 * 56.0)
+        assert second.energy == pytest.approx(first.energy, rel=1e-5)
