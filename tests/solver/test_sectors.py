@@ -45,8 +45,13 @@ def wound(slots: int, span: int, poles: int = 4) -> MachineDesign:
     )
     rotor = plain.rotor
     if poles != 4:
+        angle, thickness, depth = (55.0, 4.0, 19.0) if poles == 2 else (12.0, 2.5, 4.0)
         one = BarrierDesign(
-            shape="arc", end_angle_deg=12.0, thickness_mm=2.5, depth_mm=4.0, tangential_rib_mm=0.6
+            shape="arc",
+            end_angle_deg=angle,
+            thickness_mm=thickness,
+            depth_mm=depth,
+            tangential_rib_mm=0.6,
         )
         rotor = rotor.model_copy(update={"poles": poles, "barrier": (one,)})
     return plain.model_copy(update={"stator": stator, "winding": winding, "rotor": rotor})
@@ -72,6 +77,7 @@ def figures(solution: FieldSolution) -> FloatArray:
 
 MACHINES = {
     "24 slots, 4 poles": (wound(24, 6), (1, 2, 4)),
+    "12 slots, 2 poles": (wound(12, 6, 2), (1, 2)),
     "18 slots, 4 poles": (wound(18, 4), (2, 4)),
     "9 slots, 6 poles": (wound(9, 1, 6), (2, 6)),
     "12 slots, 10 poles": (wound(12, 1, 10), (5, 10)),
