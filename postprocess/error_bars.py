@@ -48,7 +48,7 @@ def magnetic_errors(
         {
             "torque": errors.torque,
             "ripple": errors.ripple,
-            "saliency": errors.of(saliency, m.psi_d, m.psi_q),
+            "saliency": errors.linkages.of(saliency, m.psi_d, m.psi_q),
             "gamma": angle_error(errors.torque / m.torque, AngleSettings().tolerance),
             "psi_d": errors.psi_d,
             "psi_q": errors.psi_q,
@@ -62,7 +62,7 @@ def terminal_errors(
     design: MachineDesign, magnetic: MagneticFigures, terminal: TerminalFigures, errors: FieldErrors
 ) -> dict[str, float]:
     """Errors of the terminal figures that rest on the field, by their keys."""
-    m, speed = magnetic, design.duty.rated_speed_rpm / RPM
+    m, known, speed = magnetic, errors.linkages, design.duty.rated_speed_rpm / RPM
     resistance, end_inductance = phase_resistance(design), end_winding_inductance(design)
 
     def state(psi_d: float, psi_q: float) -> TerminalState:
@@ -79,8 +79,8 @@ def terminal_errors(
     return _by_key(
         terminal,
         {
-            "power_factor": errors.of(lambda d, q: state(d, q).power_factor, m.psi_d, m.psi_q),
-            "line_voltage": errors.of(lambda d, q: state(d, q).line_voltage, m.psi_d, m.psi_q),
+            "power_factor": known.of(lambda d, q: state(d, q).power_factor, m.psi_d, m.psi_q),
+            "line_voltage": known.of(lambda d, q: state(d, q).line_voltage, m.psi_d, m.psi_q),
             "shaft_power": errors.torque * speed,
         },
     )

@@ -7,7 +7,10 @@
 2. In the mean over a period torque is 3/2 p (psi_d i_q - psi_q i_d) exactly (derived: power
    balance), so the mean torque by Maxwell's stress is off by its difference to that of the
    linkages, known at all positions and free of cost, and by the linkages' own error.
-3. Ripple is off by the changes of torque at its highest and its lowest position.
+3. Ripple is off by the changes of torque at its highest and its lowest position, less its share
+   of what the mean torque is off by, which moves all positions alike.
+4. A figure of both linkages changes from sample to sample as a whole: what the two have in common
+   cancels where the figure lets it.
 Independent parts are added: twice the standard error of the mean over the sampled positions, what
 conjugate gradients left (`KNOWN_TO`), a floor of Newton's iteration. What is not in it: the steel
 curve, the third dimension, the shape of the punched part.
@@ -43,15 +46,22 @@ Figure = Callable[[float, float], float]  # psi_d, psi_q in V s -> a figure
 
 @dataclass(frozen=True, slots=True)
 class LinkageErrors:
-    """What is known of the error of the mean linkages in V s.
+    """What is known of the error of the mean linkages: their changes on the finer mesh in V s."""
 
-    The truth is expected at psi + shift, within `doubt`.
-    """
+    change_d: FloatArray  # (n_sample,)
+    change_q: FloatArray
 
-    shift_d: float
-    shift_q: float
-    doubt_d: float
-    doubt_q: float
+    def of(self, figure: Figure, psi_d: float, psi_q: float) -> float:
+        """Error of a figure that follows from the mean linkages in V s.
+
+        Both linkages change together, as their errors have the same cause and often cancel.
+        """
+        own = figure(psi_d, psi_q)
+        pairs = zip(self.change_d, self.change_q, strict=True)
+        change = np.array([figure(psi_d + d, psi_q + q) - own for d, q in pairs])
+        floor = abs(figure(psi_d * (1.0 + NEWTON_FLOOR), psi_q) - own)
+        floor += abs(figure(psi_d, psi_q * (1.0 + NEWTON_FLOOR)) - own)
+        return BEYOND * abs(float(change.mean())) + _doubt(change) + floor
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,18 +74,6 @@ class FieldErrors:
     psi_d: float  # V s
     psi_q: float  # V s
     linkages: LinkageErrors
-
-    def of(self, figure: Figure, psi_d: float, psi_q: float) -> float:
-        """Error of a figure that follows from the mean linkages in V s.
-
-        The shifts of both linkages act together, as they have the same cause and often cancel;
-        the doubts are added one by one.
-        """
-        own, known = figure(psi_d, psi_q), self.linkages
-        shifted = figure(psi_d + known.shift_d, psi_q + known.shift_q)
-        by_d = figure(psi_d + known.doubt_d, psi_q)
-        by_q = figure(psi_d, psi_q + known.doubt_q)
-        return abs(shifted - own) + abs(by_d - own) + abs(by_q - own)
 
 
 def field_errors(
@@ -122,14 +120,10 @@ def errors_of(
     by_linkage = float(linkage_torque(pole_pairs, i_d, i_q, psi_d, psi_q).mean())
     change_d = np.array([c.psi_d for c in sampled.values()])
     change_q = np.array([c.psi_q for c in sampled.values()])
-    linkages = LinkageErrors(
-        shift_d=BEYOND * float(change_d.mean()),
-        shift_q=BEYOND * float(change_q.mean()),
-        doubt_d=_doubt(change_d, float(psi_d.mean())),
-        doubt_q=_doubt(change_q, float(psi_q.mean())),
-    )
+    linkages = LinkageErrors(change_d, change_q)
+    middle = float(psi_d.mean()), float(psi_q.mean())
     change = linkage_torque(pole_pairs, i_d, i_q, change_d, change_q)
-    doubt = _doubt(change, by_linkage)
+    doubt = _doubt(change) + NEWTON_FLOOR * abs(by_linkage)
     expected = float(change.mean())
     torque_error = doubt + max(
         abs(by_linkage - mean + share * expected) for share in (BEYOND_LEAST, BEYOND)
@@ -137,9 +131,9 @@ def errors_of(
     return FieldErrors(
         torque=torque_error,
         torque_linkage=BEYOND * abs(expected) + doubt,
-        ripple=_ripple_error(torque, sampled, torque_error),
-        psi_d=abs(linkages.shift_d) + linkages.doubt_d,
-        psi_q=abs(linkages.shift_q) + linkages.doubt_q,
+        ripple=_ripple_error(torque, sampled, by_linkage - mean + BEYOND * expected, doubt),
+        psi_d=linkages.of(lambda d, q: d, *middle),
+        psi_q=linkages.of(lambda d, q: q, *middle),
         linkages=linkages,
     )
 
@@ -162,16 +156,20 @@ def angle_error(relative_torque_error: float, search_tolerance: float) -> float:
     return search_tolerance + 0.5 * abs(relative_torque_error)
 
 
-def _doubt(change: FloatArray, figure: float) -> float:
+def _doubt(change: FloatArray) -> float:
     """What the changes (n_sample,) leave open of the error of a mean figure."""
     scatter = 0.0
     if len(change) > 1:
         scatter = 2.0 * float(change.std(ddof=1)) / math.sqrt(len(change))
-    return scatter + KNOWN_TO * BEYOND * float(np.abs(change).mean()) + NEWTON_FLOOR * abs(figure)
+    return scatter + KNOWN_TO * BEYOND * float(np.abs(change).mean())
 
 
-def _ripple_error(torque: FloatArray, sampled: Mapping[int, Change], torque_error: float) -> float:
+def _ripple_error(
+    torque: FloatArray, sampled: Mapping[int, Change], shift: float, doubt: float
+) -> float:
+    """Error of (max - min) / mean where the mean is off by `shift`, within `doubt`, in N m."""
     mean = abs(float(torque.mean()))
     high, low = (sampled[int(k)].torque for k in (torque.argmax(), torque.argmin()))
-    crests = BEYOND * (abs(high - low) + KNOWN_TO * (abs(high) + abs(low)))
-    return (crests + float(np.ptp(torque)) / mean * torque_error) / mean
+    ripple = float(np.ptp(torque)) / mean
+    change = BEYOND * (high - low) - ripple * shift * math.copysign(1.0, float(torque.mean()))
+    return (abs(change) + BEYOND * KNOWN_TO * (abs(high) + abs(low)) + ripple * doubt) / mean

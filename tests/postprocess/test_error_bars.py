@@ -12,12 +12,14 @@ from lamwright.postprocess.summary import terminal_figures
 from lamwright.postprocess.tables import verdict_record
 from lamwright.postprocess.torque import TorqueSpectrum
 from lamwright.postprocess.verdict import all_figures
-from lamwright.solver.estimate import FieldErrors, LinkageErrors
+from lamwright.solver.estimate import BEYOND, KNOWN_TO, FieldErrors, LinkageErrors
 from tests.invented_verdict import MAGNETIC, verdict
 from tests.shipped import DESIGNS
 
-SHIFTS = LinkageErrors(shift_d=2e-3, shift_q=-1e-3, doubt_d=0.0, doubt_q=0.0)
-ERRORS = FieldErrors(0.05, 0.04, 0.003, 2e-3, 1e-3, SHIFTS)
+CHANGES = LinkageErrors(change_d=np.array([2e-3]), change_q=np.array([-1e-3]))
+ERRORS = FieldErrors(0.05, 0.04, 0.003, 2e-3, 1e-3, CHANGES)
+SHARE = BEYOND * (1.0 + KNOWN_TO)  # of one sample's change
+FLOOR = 5e-3  # of the errors here, that of Newton's iteration at the most
 
 
 def test_errors_stand_in_the_units_of_their_figures():
@@ -30,24 +32,25 @@ def test_errors_stand_in_the_units_of_their_figures():
     assert not {"current_a", "i_d_a", "torque_difference_percent"} & set(found)
 
 
-def test_saliency_errs_by_what_the_shifted_linkages_change():
-    """Without doubts the error is the figure's change for the expected true linkages, exactly."""
+def test_saliency_errs_by_what_the_changed_linkages_change():
+    """One sample: the figure's change times what lies beyond it and what is left open."""
     m = MAGNETIC
     own = saliency_ratio(m.i_d, m.i_q, m.psi_d, m.psi_q)
     shifted = saliency_ratio(m.i_d, m.i_q, m.psi_d + 2e-3, m.psi_q - 1e-3)
-    assert magnetic_errors(m, ERRORS)["saliency_ratio"] == pytest.approx(shifted - own, rel=1e-12)
+    expected = SHARE * abs(shifted - own)
+    found = magnetic_errors(m, ERRORS)["saliency_ratio"]
+    assert expected < found < (1.0 + FLOOR) * expected
 
 
 def test_terminal_errors_are_the_figures_changes():
-    """Voltage and power factor of a real design with shifted linkages, computed anew: equal."""
+    """Voltage and power factor of a real design with changed linkages, computed anew."""
     design = read_machine(DESIGNS[0]).design
     other = dataclasses.replace(MAGNETIC, psi_d=MAGNETIC.psi_d + 2e-3, psi_q=MAGNETIC.psi_q - 1e-3)
     own, shifted = (terminal_figures(design, m) for m in (MAGNETIC, other))
     found = terminal_errors(design, MAGNETIC, own, ERRORS)
-    change = abs(shifted.line_voltage - own.line_voltage)
-    assert found["terminal_voltage_v"] == pytest.approx(change, rel=1e-9)
-    change = abs(shifted.power_factor - own.power_factor)
-    assert found["power_factor"] == pytest.approx(change, rel=1e-9)
+    for key, name in (("terminal_voltage_v", "line_voltage"), ("power_factor", "power_factor")):
+        expected = SHARE * abs(getattr(shifted, name) - getattr(own, name))
+        assert expected < found[key] < (1.0 + FLOOR) * expected
     # Formulas alone have no error by the meshes.
     assert "copper_loss_w" not in found
 

@@ -15,7 +15,8 @@ from lamwright.geometry.winding import winding_table
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate import (
     BEYOND,
-    FieldErrors,
+    KNOWN_TO,
+    NEWTON_FLOOR,
     LinkageErrors,
     angle_error,
     errors_of,
@@ -30,6 +31,7 @@ from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import NewtonSettings
 from lamwright.solver.steel import reluctivity_law
 from lamwright.solver.types import FieldSolution
+from tests.finer_field import Sixteenfold
 from tests.random_designs import random_design
 from tests.shipped import DESIGNS, NAMES, shipped
 
@@ -84,12 +86,37 @@ def test_samples_hold_the_crests():
 
 def test_a_figure_of_both_linkages_sees_what_cancels():
     """A ratio keeps its value when both parts rise by one share; a sum does not."""
-    known = LinkageErrors(shift_d=5e-3, shift_q=1e-3, doubt_d=0.0, doubt_q=0.0)
-    errors = FieldErrors(0.0, 0.0, 0.0, 5e-3, 1e-3, known)
-    assert errors.of(lambda d, q: d / q, 0.5, 0.1) == pytest.approx(0.0, abs=1e-12)
-    assert errors.of(lambda d, q: d + q, 0.5, 0.1) == pytest.approx(6e-3)
-    doubtful = replace(errors, linkages=replace(known, doubt_d=1e-3, doubt_q=2e-3))
-    assert doubtful.of(lambda d, q: d - q, 0.5, 0.1) == pytest.approx(4e-3 + 3e-3)
+    even = LinkageErrors(change_d=np.array([5e-3]), change_q=np.array([1e-3]))
+    floor = 2.0 * NEWTON_FLOOR * 5.0  # of the ratio, by either linkage
+    assert even.of(lambda d, q: d / q, 0.5, 0.1) == pytest.approx(floor, rel=1e-5)
+    share = BEYOND * (1.0 + KNOWN_TO)
+    floor = NEWTON_FLOOR * 0.6
+    assert even.of(lambda d, q: d + q, 0.5, 0.1) == pytest.approx(share * 6e-3 + floor)
+
+
+def test_scatter_that_cancels_is_no_doubt():
+    """Samples whose linkages waver by one share leave the ratio certain, not the sum."""
+    waver = np.array([-2e-2, 0.0, 2e-2])
+    alike = LinkageErrors(change_d=0.5 * waver, change_q=0.1 * waver)
+    assert alike.of(lambda d, q: d / q, 0.5, 0.1) < 1e-4 * 5.0
+    scatter = 2.0 * 0.6 * 2e-2 / math.sqrt(3.0)
+    assert alike.of(lambda d, q: d + q, 0.5, 0.1) > scatter
+
+
+@pytest.mark.parametrize("sign", [1.0, -1.0])
+def test_ripple_is_certain_where_all_torques_are_off_by_one_share(sign: float):
+    """(max - min) / mean does not change then: what is left is the doubt about the changes."""
+    mean = float(linkage_torque(2, 6.0, 8.0, np.array([0.5]), np.array([0.1]))[0])
+    linkages = {"psi_d": sign * 0.5, "psi_q": sign * 0.1}
+    torques = (sign * mean * np.array([0.8, 1.0, 1.2, 1.0])).tolist()
+    solutions = [replace(one, **linkages) for one in waveform_of(torques)]
+    share = {key: 0.01 * value for key, value in linkages.items()}
+    places = sample_places(solutions)
+    changed = {k: Change(torque=0.01 * torques[k], steps=1, **share) for k in places}
+    crests = BEYOND * KNOWN_TO * 0.01 * (1.2 + 0.8)
+    doubt = 0.4 * BEYOND * KNOWN_TO * 0.01
+    found = errors_of(solutions, changed, 2).ripple
+    assert found == pytest.approx(crests + doubt, abs=0.4 * NEWTON_FLOOR * 1.01)
 
 
 def test_best_angle_errs_by_half_the_relative_torque_error():
@@ -128,19 +155,19 @@ class Case:
 
 
 def effectivity(case: Case, scale: float) -> dict[str, float]:
-    """Stated over true error, the truth being a mesh four times as fine in both directions.
+    """Stated over true error, the truth being a mesh of 16 times the elements.
 
     In the mean torque is that of the linkages, so its true error is its difference to the coarse
     linkages' mean at all positions, which is exact, and their own error at `COMPARED`.
     """
-    model = case.model(scale, 1e-4)
+    model, winding = case.model(scale, 1e-4), winding_table(case.design)
     solutions = solve_chain(model, case.points(range(POSITIONS)))
-    errors = field_errors(model, case.section, winding_table(case.design), solutions)
-    fine = solve_chain(case.model(scale / 4.0, 1e-4), case.points(COMPARED))
+    errors = field_errors(model, case.section, winding, solutions)
+    finer = Sixteenfold(model, case.section, winding)
+    pairs = [(solutions[k], finer.solved(solutions[k])) for k in COMPARED]
 
     def missed(key: str) -> float:
-        pairs = zip(fine, (solutions[k] for k in COMPARED), strict=True)
-        return float(np.mean([getattr(f, key) - getattr(c, key) for f, c in pairs]))
+        return float(np.mean([getattr(f, key) - getattr(c, key) for c, f in pairs]))
 
     def torque_of(psi_d: np.ndarray, psi_q: np.ndarray) -> float:
         first = solutions[0]
