@@ -30,6 +30,7 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import NewtonSettings
 from lamwright.solver.steel import reluctivity_law
+from lamwright.solver.tolerance import tolerance_settings
 from lamwright.solver.types import FieldSolution
 from tests.finer_field import Sixteenfold
 from tests.random_designs import random_design
@@ -39,6 +40,7 @@ N_DESIGNS = 30
 POSITIONS = 15  # over 60 electrical degrees
 COMPARED = (0, 5, 10)  # solved on the finer mesh too
 KEYS = ("torque", "torque_linkage", "psi_d", "psi_q")
+VISIBLE = {"saliency": 1e-4, "ripple": 1e-3}  # relative; of the mean torque
 
 
 @functools.cache
@@ -154,36 +156,60 @@ class Case:
         return [OperatingPoint(i_d, i_q, k * step / self.design.pole_pairs) for k in places]
 
 
-def effectivity(case: Case, scale: float) -> dict[str, float]:
-    """Stated over true error, the truth being a mesh of 16 times the elements.
+@dataclass(frozen=True, slots=True)
+class Bar:
+    """An error as it is stated and as it is."""
+
+    stated: float
+    true: float
+
+    @property
+    def ratio(self) -> float:
+        """Stated over true."""
+        return self.stated / abs(self.true)
+
+
+def error_bars(case: Case, scale: float) -> dict[str, Bar]:
+    """Errors of all figures, the truth being a mesh of 16 times the elements.
 
     In the mean torque is that of the linkages, so its true error is its difference to the coarse
-    linkages' mean at all positions, which is exact, and their own error at `COMPARED`.
+    linkages' mean at all positions, which is exact, and their own error at `COMPARED`. Ripple is
+    compared at the coarse waveform's crests.
     """
     model, winding = case.model(scale, 1e-4), winding_table(case.design)
-    solutions = solve_chain(model, case.points(range(POSITIONS)))
-    errors = field_errors(model, case.section, winding, solutions)
+    coarse = solve_chain(model, case.points(range(POSITIONS)))
+    errors = field_errors(model, case.section, winding, coarse)
+    torque = np.array([s.torque for s in coarse])
+    high, low = int(torque.argmax()), int(torque.argmin())
     finer = Sixteenfold(model, case.section, winding)
-    pairs = [(solutions[k], finer.solved(solutions[k])) for k in COMPARED]
+    fine = {k: finer.solved(coarse[k]) for k in sorted({*COMPARED, high, low})}
 
     def missed(key: str) -> float:
-        return float(np.mean([getattr(f, key) - getattr(c, key) for c, f in pairs]))
+        return float(np.mean([getattr(fine[k], key) - getattr(coarse[k], key) for k in COMPARED]))
 
     def torque_of(psi_d: np.ndarray, psi_q: np.ndarray) -> float:
-        first = solutions[0]
-        pairs = case.design.pole_pairs
-        return float(linkage_torque(pairs, first.i_d, first.i_q, psi_d, psi_q).mean())
+        i_d, i_q = coarse[0].i_d, coarse[0].i_q
+        return float(linkage_torque(case.design.pole_pairs, i_d, i_q, psi_d, psi_q).mean())
 
-    by_linkage = torque_of(*(np.array([getattr(s, k) for s in solutions]) for k in KEYS[2:]))
-    of_linkages = torque_of(*(np.array([missed(k)]) for k in KEYS[2:]))
-    by_stress = float(np.mean([s.torque for s in solutions]))
-    true = {
-        "torque": by_linkage - by_stress + of_linkages,
-        "torque_linkage": of_linkages,
-        "psi_d": missed("psi_d"),
-        "psi_q": missed("psi_q"),
+    psi = [np.array([getattr(s, key) for s in coarse]) for key in ("psi_d", "psi_q")]
+    off = [missed("psi_d"), missed("psi_q")]
+    of_linkages = torque_of(*(np.array([change]) for change in off))
+    true_torque = torque_of(*psi) + of_linkages
+    ripple = float(np.ptp(torque) / torque.mean())
+    middle = [float(values.mean()) for values in psi]
+    ratio = middle[0] / middle[1]
+    return {
+        "torque": Bar(errors.torque, true_torque - float(torque.mean())),
+        "torque_linkage": Bar(errors.torque_linkage, of_linkages),
+        "psi_d": Bar(errors.psi_d, off[0]),
+        "psi_q": Bar(errors.psi_q, off[1]),
+        "ripple": Bar(errors.ripple, (fine[high].torque - fine[low].torque) / true_torque - ripple),
+        # Relative, and without the currents, which are exact.
+        "saliency": Bar(
+            errors.linkages.of(lambda d, q: d / q, *middle) / ratio,
+            (middle[0] + off[0]) / (middle[1] + off[1]) / ratio - 1.0,
+        ),
     }
-    return {key: getattr(errors, key) / abs(true[key]) for key in KEYS}
 
 
 def random_case(number: int) -> Case:
@@ -198,18 +224,22 @@ def test_errors_of_a_coarse_mesh_are_true(name: str):
     """Between a third and five times the error against 16 times the elements, issue's own bound."""
     one = shipped(name)
     case = Case(one.machine.design, one.section, math.radians(55.0))
-    found = effectivity(case, 2.0)
-    assert all(1.0 / 3.0 < value < 5.0 for value in found.values()), found
+    found = error_bars(case, 2.0)
+    assert all(1.0 / 3.0 < found[key].ratio < 5.0 for key in KEYS), found
 
 
 @pytest.mark.slow
 def test_errors_of_random_machines_are_true():
     """Thirty machines at `normal`: nine in ten within a third and five, none below a fifth.
 
-    True is the mesh of scale 0.25. About 25 minutes on one core.
+    Saliency and ripple, ratios in which errors cancel, may be exact by chance: only where they
+    are off by more than `VISIBLE`, an overstated error is one. About 8 minutes on one core.
     """
-    found = [effectivity(random_case(k), 1.0) for k in range(N_DESIGNS)]
-    for key in KEYS:
-        values = np.array([one[key] for one in found])
-        assert values.min() > 0.2, (key, values)
-        assert np.mean((values > 1.0 / 3.0) & (values < 5.0)) >= 0.9, (key, values)
+    scale = tolerance_settings("normal")[0].scale
+    found = [error_bars(random_case(k), scale) for k in range(N_DESIGNS)]
+    for key in found[0]:
+        bars = [one[key] for one in found]
+        assert min(bar.ratio for bar in bars) > 0.2, (key, bars)
+        counted = [bar for bar in bars if abs(bar.true) > VISIBLE.get(key, 0.0)]
+        within = [1.0 / 3.0 < bar.ratio < 5.0 for bar in counted]
+        assert np.mean(within) >= 0.9, (key, bars)
