@@ -175,9 +175,9 @@ def test_two_poles_are_one_and_its_opposite(model: MagneticModel) -> None:
 def test_mirrored_currents_turn_the_torque_round(model: MagneticModel) -> None:
     """T(-i_d, i_q) = -T(i_d, i_q) with magnets along q, as the search for the angle takes it.
 
-    The mirror image exchanges the layers of the chorded winding, so not exactly: measured 6e-4 of
-    the torque, 2e-3 allowed.
+    The mirror image exchanges the layers of the chorded winding, so not exactly: measured 7e-4 of
+    the torque and of psi_d, 2e-3 allowed.
     """
     first, second = (solve_point(model, i_d, I_Q, 0.0) for i_d in (I_D, -I_D))
     assert second.torque == pytest.approx(-first.torque, rel=2e-3)
-    assert second.psi_q == pytest.approx(first.psi_q, rel=2e-3)
+    assert second.psi_q == pytest.approx(first.psi_q, abs=2e-3 * abs(first.psi_d))
