@@ -1,5 +1,6 @@
 """Rotors recognised in drawings: a rotor drawn from a design is that design's rotor again."""
 
+import cmath
 import math
 from pathlib import Path
 
@@ -7,9 +8,10 @@ import ezdxf
 import pytest
 from draughting import add_edge, moved, new_drawing, scaled
 
+from lamwright.geometry.blunting import blunted
 from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.cross_section import cross_section
-from lamwright.geometry.curves import area
+from lamwright.geometry.curves import arc, area
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.drawn_rotor import recognised_rotor
 from lamwright.geometry.drawn_rotor_regions import drawn_rotor_regions
@@ -114,3 +116,23 @@ def test_a_rotor_in_pieces_is_refused(tmp_path):
     pieces = read_pieces(tmp_path / "rotor.dxf")
     with pytest.raises(OutlineError, match="no q axis"):
         recognised_rotor(pieces.edges, HEAL, 4)
+
+
+def test_a_rounding_that_runs_into_the_rim_gets_a_corner():
+    """Within 1e-5 m: a chord of a rounding r rises c^2 / 8r, depth c^2 / 2r' (derived, small c).
+
+    With r' = r R / (R - r) the rise is less than a quarter of the depth. The air's corner is open
+    by half the sweep of the arc that the chord replaces, less the rim's: over 3 degrees here.
+    """
+    rim, radius = 0.084, 0.003
+    centre = rim - radius
+    start, end = complex(rim), complex(centre, radius)
+    rounding = arc(start, end, complex(centre), ccw=True)
+    along = arc(start, rim * cmath.exp(0.1j), 0j, ccw=True)
+    before = arc(rim * cmath.exp(-0.1j), start, 0j, ccw=True)
+    edges = blunted([rounding, along, before], rim)
+    assert len(edges) == 4
+    chord = next(e for e in edges if e.is_line)
+    assert chord.start == start
+    assert difference([rounding], edges)[0] < 1e-5
+    assert cmath.phase(chord.direction(0.0) / along.direction(0.0)) > math.radians(3.0)
