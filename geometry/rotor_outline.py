@@ -197,7 +197,9 @@ def _keyways(design: MachineDesign, bore: _Chain, pitch: float) -> list[CutOut]:
         mouth, wall = bore.cut(place, 0.5 * MM * keyway.width_mm, _key_wall(keyway))
         path = _between(wall, mouth)
         mu = _key_permeability(design, keyway)
-        made.append(CutOut(Region(name, material, path, (), mu), "rotor.keyway", wall))
+        made.append(
+            CutOut(Region(name, material, path, relative_permeability=mu), "rotor.keyway", wall)
+        )
     return made
 
 
@@ -247,7 +249,7 @@ def _holes(design: MachineDesign, pitch: float) -> list[CutOut]:
 
 def _hole_region(name: str, hole: HoleDesign, path: Path) -> Region:
     mu = hole.relative_permeability or 1.0 if hole.material == "rivet" else 1.0
-    return Region(name, hole.material, path, (), mu)
+    return Region(name, hole.material, path, relative_permeability=mu)
 
 
 def _sides(

@@ -85,6 +85,24 @@ def test_areas_of_plain_details_are_closed_forms():
     assert abs(tiled(section)) < 1e-12
 
 
+def test_rivets_and_keys_carry_their_permeability():
+    """As stated, a key's by default the shaft's; nothing else of the region is touched."""
+    rivet = HoleDesign(
+        place_radius_mm=25.0,
+        angle_deg=45.0,
+        diameter_mm=4.0,
+        material="rivet",
+        relative_permeability=300.0,
+    )
+    key = KeywayDesign(count=4, width_mm=4.0, depth_mm=2.0)
+    section = cross_section(detailed(hole=(rivet,), keyway=key, shaft_relative_permeability=500.0))
+    found = {
+        r.name: r.relative_permeability for r in section.rotor if r.material in ("rivet", "key")
+    }
+    assert found == {"hole_1_right": 300.0, "hole_1_left": 300.0, "key_1": 500.0}
+    assert all(region.magnetisation == 0j for region in section.rotor)
+
+
 @pytest.mark.parametrize("depth", [0.6, 1.5, 3.0])
 def test_round_notch_is_as_deep_and_wide_as_stated(depth):
     """Shallow (one arc) and deep (half circle and walls): depth on the axis, width at the mouth."""
