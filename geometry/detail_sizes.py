@@ -80,7 +80,7 @@ def notch_faults(pole: DetailPole, number: int, notch: NotchDesign) -> list[Faul
         keys = ("width_mm", "depth_mm", "corner_radius_mm")
     table.least("notch_corner", keys, radius, pole.least_radius, "a corner too small to punch")
     _no_stub(table, "notch_corner", keys, 2.0 * (half - radius))
-    _no_stub(table, "notch_wall", ("corner_radius_mm", "depth_mm"), wall - radius, is_needed=True)
+    _no_stub(table, "notch_wall", ("corner_radius_mm", "depth_mm"), wall - radius)
     return table.faults
 
 
@@ -149,7 +149,7 @@ def _plain(table: "Sizes", keyway: KeywayDesign) -> float:
         table.unwanted(getattr(keyway, name), name, "kind", "dog_bone")
     _no_stub(table, "key_corner", ("corner_radius_mm", "width_mm"), 2.0 * (half - radius))
     wall = MM * keyway.depth_mm + _sagitta(table.pole.shaft_radius, half) - radius
-    _no_stub(table, "key_wall", ("depth_mm", "corner_radius_mm"), wall, is_needed=True)
+    _no_stub(table, "key_wall", ("depth_mm", "corner_radius_mm"), wall)
     return half
 
 
@@ -168,7 +168,7 @@ def _head(table: "Sizes", keyway: KeywayDesign) -> float:
     _no_stub(table, "head_flat", keys, head - 2.0 * radius)
     neck = MM * keyway.depth_mm - head - radius + _sagitta(table.pole.shaft_radius, half)
     keys = ("depth_mm", "head_depth_mm", "corner_radius_mm")
-    _no_stub(table, "key_wall", keys, neck, is_needed=True)
+    _no_stub(table, "key_wall", keys, neck)
     return wide
 
 
@@ -180,14 +180,10 @@ def _count_fault(table: "Sizes", keyway: KeywayDesign) -> None:
     table.short("key_count", ("count",), text, 1.0, f"accepted {poles}, one a pole")
 
 
-def _no_stub(
-    table: "Sizes", code: str, keys: tuple[str, ...], length: float, *, is_needed: bool = False
-) -> None:
-    """An edge that has to be there, or may be gone altogether, but not be a stub."""
+def _no_stub(table: "Sizes", code: str, keys: tuple[str, ...], length: float) -> None:
+    """A straight edge that has to be there: a round that just fits would leave none to move."""
     least = table.pole.least_edge
-    if not is_needed and abs(length) <= SLACK:
-        return
-    if length < 0.0:
+    if length <= 0.0:
         table.short(code, keys, "the round does not fit", least - length)
     else:
         text = f"leaves a straight edge of only {length / MM:.3g} mm"
