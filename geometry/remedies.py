@@ -149,11 +149,7 @@ def domain_of(design: MachineDesign, key: str) -> Domain:
         return Domain(-90.0 + 1e-6, 90.0 - 1e-6, is_low_accepted=True)
     if "radial_rib_places_mm[" in key:
         half = 0.5 * design.stator.bore_diameter_mm
-        return (
-            Domain(0.0, half, is_low_accepted=True)
-            if value_of(design, key) >= 0.0
-            else Domain(-half, 0.0)
-        )
+        return Domain(-half, half)
     outer, sheet = design.stator.outer_diameter_mm, design.rotor.sheet_thickness_mm
     if name == "end_angle_deg":
         return Domain(0.0, 90.0 / design.pole_pairs)

@@ -159,7 +159,8 @@ def _barrier_keys(table: str, barrier: BarrierDesign) -> list[str]:
 
 
 def _is_shape(name: str) -> bool:
-    return name.endswith(("_mm", "_deg"))
+    # The skew turns whole steps; no outline follows it.
+    return name.endswith(("_mm", "_deg")) and name != "skew_angle_deg"
 
 
 def _is_of_drawing(design: MachineDesign, table: str, name: str) -> bool:
