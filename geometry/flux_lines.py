@@ -87,7 +87,11 @@ class Hyperbola:
 
 @dataclass(frozen=True, slots=True)
 class DiscLine:
-    """The flux line (u - tau / u) cos p theta = 1 - tau with u = (r / a)^p; parameter theta."""
+    """The flux line (u - tau / u) cos p theta = 1 - tau with u = (r / a)^p.
+
+    Its parameter is the potential s = (u + tau / u) sin p theta: with v = (z / a)^p the line is
+    v - tau / v = 1 - tau + i s, which is solved for v.
+    """
 
     a: float  # m
     tau: float
@@ -100,21 +104,22 @@ class DiscLine:
         return math.copysign(self.a * size, self.tau)
 
     def at(self, parameter: float) -> tuple[Point, complex]:
-        """Point and unit tangent at the angle theta in rad."""
-        angle = self.pole_pairs * parameter
-        level = (1.0 - self.tau) / math.cos(angle)
-        u = 0.5 * (level + math.sqrt(level**2 + 4.0 * self.tau))
-        point = cmath.rect(self.a * u ** (1.0 / self.pole_pairs), parameter)
-        return point, 1j * self._normal(u, parameter)
+        """Point and unit tangent at s."""
+        level = complex(1.0 - self.tau, parameter)
+        v = 0.5 * (level + cmath.sqrt(level**2 + 4.0 * self.tau))
+        u, theta = abs(v), cmath.phase(v) / self.pole_pairs
+        point = cmath.rect(self.a * u ** (1.0 / self.pole_pairs), theta)
+        return point, 1j * self._normal(u, theta)
 
     def normal(self, point: Point) -> complex:
         """Unit normal towards the rim: the gradient of the flux function."""
         return self._normal((abs(point) / self.a) ** self.pole_pairs, cmath.phase(point))
 
     def at_radius(self, radius: float) -> float:
-        """Theta from cos p theta = (1 - tau) / (u - tau / u)."""
+        """Parameter from cos p theta = (1 - tau) / (u - tau / u)."""
         u = (radius / self.a) ** self.pole_pairs
-        return math.acos((1.0 - self.tau) / (u - self.tau / u)) / self.pole_pairs
+        cosine = (1.0 - self.tau) / (u - self.tau / u)
+        return (u + self.tau / u) * math.sqrt((1.0 - cosine) * (1.0 + cosine))
 
     def _normal(self, u: float, theta: float) -> complex:
         angle = self.pole_pairs * theta
@@ -151,6 +156,23 @@ def disc_line(pole_pairs: int) -> Family:
         return DiscLine(vertex, (1.0 - u * c) / (1.0 - c / u), pole_pairs)
 
     return through
+
+
+def natural_vertex(pole_pairs: int, circle_radius: float, point: Point) -> float:
+    """Where the flux line through a point crosses the q axis, in m from the shaft axis.
+
+    Args:
+        pole_pairs: of the rotor.
+        circle_radius: of the circle that the flux runs around in m: the shaft's, or 0.
+        point: in m, between q and d axis.
+    """
+    r, theta = abs(point), cmath.phase(point)
+    sigma = circle_radius ** (2 * pole_pairs)
+    level = (r**pole_pairs - sigma / r**pole_pairs) * math.cos(pole_pairs * theta)
+    # a^p - sigma / a^p = level
+    power = 0.5 * (level + math.sqrt(level**2 + 4.0 * sigma))
+    vertex: float = power ** (1.0 / pole_pairs)
+    return vertex
 
 
 def touching(

@@ -6,7 +6,7 @@ import math
 import numpy as np
 import pytest
 
-from lamwright.geometry.flux_lines import disc_line, hyperbola, touching
+from lamwright.geometry.flux_lines import disc_line, hyperbola, natural_vertex, touching
 
 END = cmath.rect(38e-3, math.radians(24.0))
 VERTEX = 29e-3
@@ -21,14 +21,14 @@ def test_a_disc_line_has_one_flux_and_crosses_the_potential_lines(pairs):
     end = cmath.rect(38e-3, math.radians(50.0 / pairs))
     line = disc_line(pairs)(0.9 * abs(end) * math.cos(math.radians(50.0)) ** (1 / pairs), end)
     sigma = line.tau * line.a ** (2 * pairs)
-    for parameter in np.linspace(0.0, cmath.phase(end), 9):
+    for parameter in np.linspace(0.0, line.at_radius(abs(end)), 9):
         z, tangent = line.at(parameter)
         flux = (z**pairs - sigma / z**pairs).real
         assert flux == pytest.approx(line.a**pairs * (1.0 - line.tau), rel=1e-12)
         slope = pairs * (z ** (pairs - 1) + sigma / z ** (pairs + 1))  # dw/dz
         # Along the line dw is imaginary: the flux rests, the potential grows.
         assert cmath.phase(slope * tangent) == pytest.approx(0.5 * math.pi, abs=1e-10)
-    assert line.at(cmath.phase(end))[0] == pytest.approx(end, rel=1e-12)
+    assert line.at(line.at_radius(abs(end)))[0] == pytest.approx(end, rel=1e-12)
 
 
 @pytest.mark.parametrize("pairs", [1, 2, 4])
@@ -56,6 +56,14 @@ def test_no_flux_enters_the_circle_that_it_runs_around(pairs):
         slope = potential(circle + step, theta) - potential(circle - step, theta)
         there = potential(2.0 * circle + step, theta) - potential(2.0 * circle - step, theta)
         assert abs(slope) < 1e-6 * abs(there)
+
+
+@pytest.mark.parametrize("pairs", [1, 2, 4])
+def test_from_its_natural_vertex_a_line_runs_round_the_shaft(pairs):
+    """The line through the vertex that belongs to a circle runs around that circle; to rounding."""
+    end = cmath.rect(38e-3, math.radians(55.0 / pairs))
+    line = disc_line(pairs)(natural_vertex(pairs, 12e-3, end), end)
+    assert line.circle_radius == pytest.approx(12e-3, rel=1e-8)
 
 
 def test_a_hyperbola_obeys_its_equation_and_its_asymptotes():
