@@ -126,6 +126,8 @@ def _stator(table: object, folder: Path) -> _Part:
     measures = stator_measures(drawing)
     faults = _unlike("stator", table, measures, STATOR_KEYS, set(StatorDesign.model_fields))
     filled = {**measures, **table, "slots": table.get("slots", drawing.slots)}
+    if drawing.slot.mouth is None:
+        filled["slot_mouth"] = "closed"
     outline = StatorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
     return _Part(filled, outline, faults)
 

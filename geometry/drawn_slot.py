@@ -239,7 +239,8 @@ def _bounds(
                 "or state opening_depth_mm"
             )
             raise OutlineError(text, mouth.point(0.5))
-        return [low + hints.opening_depth + hints.wedge_depth]
+        # On the centre line from the bore, as depths are stated.
+        return [bore_radius + hints.opening_depth + hints.wedge_depth]
     mouth_end = _settled(
         heights[next(k for k, w in enumerate(widths) if w > WIDER * at_bore)], corners, step
     )

@@ -87,7 +87,7 @@ def read_pieces(
             continue
         kinds[entity.dxftype()] += 1
         edges += long
-        edge_layers += [str(entity.dxf.layer)] * len(long)
+        edge_layers += [_layer_of(entity)] * len(long)
     if not edges:
         raise OutlineError("no line, arc or polyline in the drawing's model space")
     return DrawnPieces(
@@ -181,14 +181,14 @@ def _chosen(document: "Drawing", layers: Sequence[str]) -> "tuple[list[DXFGraphi
         raise OutlineError(f"a block that cannot be placed; {_one_line(error)}") from None
     if len(every) > MOST_ENTITIES:
         raise OutlineError(f"more than {MOST_ENTITIES} entities; accepted a lamination alone")
-    used = {str(entity.dxf.get("layer", "0")).casefold() for entity in every}
+    used = {_layer_of(entity).casefold() for entity in every}
     if wanted - used:
         names = ", ".join(sorted(used))[:200]
         raise OutlineError(f"nothing on layer {sorted(wanted - used)[0]}; the layers are {names}")
     for entity in every:
-        name = str(entity.dxf.get("layer", "0")).casefold()
+        name = _layer_of(entity).casefold()
         layer = known.get(name)
-        line_type = str(entity.dxf.get("linetype", "BYLAYER")).upper()
+        line_type = _attribute(entity, "linetype", "BYLAYER").upper()
         if line_type == "BYLAYER" and layer is not None:
             line_type = str(layer.dxf.get("linetype", "")).upper()
         if wanted and name not in wanted:
@@ -202,8 +202,18 @@ def _chosen(document: "Drawing", layers: Sequence[str]) -> "tuple[list[DXFGraphi
     return taken, left_out
 
 
+def _layer_of(entity: "DXFGraphic") -> str:
+    return _attribute(entity, "layer", "0")
+
+
+def _attribute(entity: "DXFGraphic", name: str, default: str) -> str:
+    """An attribute's text; entities of no known kind have none at all."""
+    value = entity.dxf.get(name, default) if entity.dxf.is_supported(name) else default
+    return "".join(c if c.isprintable() else "?" for c in str(value))
+
+
 def _edges(entity: "DXFGraphic", unit: float) -> list[Edge] | None:
-    where = f"on layer {entity.dxf.get('layer', '0')}"
+    where = f"on layer {_layer_of(entity)}"
     try:
         return edges_of(entity, unit)
     except EntityError as error:

@@ -86,7 +86,10 @@ def shaft_axis(edges: Sequence[Edge], tolerance: float) -> Point:
         if any(arc in sharing for _, sharing in trials):
             continue
         sharing = [e for e in arcs if is_about(e, arc.centre, tolerance)]
-        trials.append((sum(e.length * abs(e.sweep) for e in sharing), sharing))
+        if sharing:
+            trials.append((sum(e.length * abs(e.sweep) for e in sharing), sharing))
+    if not trials:
+        raise OutlineError("no arc in the drawing that a shaft axis could be told by")
     trials.sort(key=lambda trial: -trial[0])
     # Barriers may share a centre of their own, but nothing lies beyond the rim.
     farthest = [sharing for _, sharing in trials if _holds_all(sharing, edges, tolerance)]
@@ -133,7 +136,7 @@ def _covered(edges: Sequence[Edge], tolerance: float) -> tuple[float, float]:
         parts = [edge.point(k / 4) for k in range(5)]
         parts = [p for p in parts if abs(p) > 100.0 * tolerance]
         if not parts:
-            continue
+            continue  # on the axis, where there is no angle
         start = low = high = cmath.phase(parts[0])
         for p, q in pairwise(parts):
             start += cmath.phase(q / p)
@@ -143,6 +146,8 @@ def _covered(edges: Sequence[Edge], tolerance: float) -> tuple[float, float]:
     # Spans that pass the angle 0 are cut there.
     cut = [(low, min(high, FULL_TURN)) for low, high in spans]
     cut += [(0.0, high - FULL_TURN) for _, high in spans if high > FULL_TURN]
+    if not cut:
+        raise OutlineError("nothing is drawn round the shaft axis")
     cut.sort()
     widest, after, reach = 0.0, 0.0, cut[0][1]
     for low, high in cut[1:]:

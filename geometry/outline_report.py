@@ -81,7 +81,7 @@ def stator_lines(outline: StatorOutline) -> Lines:
         ("first slot", f"at {math.degrees(drawing.turn) % (360.0 / drawing.slots):.4f} degrees"),
         (
             "slot",
-            "closed"
+            f"closed by {measures['bridge_mm']:.4f} mm of iron"
             if drawing.slot.mouth is None
             else f"mouth {measures['slot_opening_mm']:.4f} mm wide at the bore",
         ),
@@ -131,12 +131,19 @@ def stator_measures(drawing: StatorDrawing) -> dict[str, float]:
     opening = 0.0 if slot.mouth is None else abs(slot.mouth.end - slot.mouth.start)
     depths = [e.point(1.0).real for p in slot.parts if p.kind == "opening" for e in p.outer.edges]
     bore = drawing.bore_radius
+    if slot.mouth is None:
+        nearest = min(abs(e.point(k / 4)) for e in slot.wall for k in range(4))
+        mouth = {"bridge_mm": (nearest - bore) / MM}
+    else:
+        mouth = {
+            "slot_opening_mm": opening / MM,
+            "opening_depth_mm": (max(depths, default=bore) - bore) / MM,
+        }
     return {
         "outer_diameter_mm": 2.0 * drawing.outer_radius / MM,
         "bore_diameter_mm": 2.0 * bore / MM,
         "slots": float(drawing.slots),
-        "slot_opening_mm": opening / MM,
-        "opening_depth_mm": (max(depths, default=bore) - bore) / MM,
+        **mouth,
         "slot_depth_mm": (slot_reach(slot) - bore) / MM,
         "tooth_width_mm": tooth_width(slot, drawing.slots) / MM,
     }

@@ -4,7 +4,7 @@ import math
 from pathlib import Path
 
 import pytest
-from draughting import FORMS, sheet, write_form
+from draughting import FORMS, add_edge, new_drawing, scaled, sheet, write_form
 
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import area
@@ -61,6 +61,49 @@ def test_regions_tile_the_sector(layers, design, tmp_path):
     assert total == pytest.approx(math.pi / 4 * (0.07**2 - 0.0408**2), rel=1e-12)
     sides = [part.area for part in layered(drawing.slot, layers).copper]
     assert sides == pytest.approx([slot_copper_area(design) / layers] * layers, rel=1e-9)
+
+
+SHAPES = {
+    "round": {"slot_sides": "parallel_slot", "slot_bottom": "round", "slot_width_mm": 5.0},
+    "flat": {"slot_bottom": "flat", "slot_corner_radius_mm": 0.8},
+    "closed": {"slot_mouth": "closed", "bridge_mm": 0.7, "wedge_depth_mm": 0.0},
+    "open": {"slot_mouth": "open", "slot_sides": "parallel_slot", "slot_width_mm": 5.0},
+}
+
+
+@pytest.mark.parametrize("shape", SHAPES)
+def test_slot_shapes_come_back_from_a_sector(shape, design, tmp_path):
+    """One pole's iron alone, as a closed contour with its sides: same iron, same copper.
+
+    Edges to 1 nm (rounding); copper to 1e-6, as the wedge's end is stated, not drawn.
+    """
+    keys = {"slot_opening_mm": 2.4, "opening_depth_mm": 0.8, "tooth_width_mm": 5.4}
+    if SHAPES[shape].get("slot_mouth"):
+        keys = {"tooth_width_mm": 5.4}
+    if SHAPES[shape].get("slot_sides"):
+        del keys["tooth_width_mm"]
+    idle = ("slot_opening_mm", "opening_depth_mm", "tooth_width_mm", "slot_corner_radius_mm")
+    bare = {k: v for k, v in design.stator.model_dump().items() if k not in idle}
+    stator = type(design.stator)(**{**bare, **keys, **SHAPES[shape]})
+    winding = design.winding.model_copy(update={"turns_per_coil": 20})
+    original = design.model_copy(update={"stator": stator, "winding": winding})
+    section = cross_section(original)
+    iron = next(r for r in section.stator if r.name == "stator_iron")
+    drawing = new_drawing()
+    for edge in edges_of([iron]):
+        add_edge(drawing.modelspace(), scaled(edge))
+    drawing.saveas(tmp_path / "stator.dxf")
+    depth = 1e-3 * stator.wedge_depth_mm
+    hints = SlotHints(0.0, depth) if shape == "open" else SlotHints(None, depth)
+    found = recognised_stator(read_pieces(tmp_path / "stator.dxf").edges, HEAL, hints)
+    assert found.sectors == 4
+    assert (found.slot.mouth is None) == (shape == "closed")
+    regions = drawn_stator_regions(found, 1, section.circle_radius, 4, 1)
+    drawn_iron = next(r for r in regions if r.name == "stator_iron")
+    assert difference(edges_of([drawn_iron]), edges_of([iron]))[0] < 1e-9
+    assert difference(edges_of([iron]), edges_of([drawn_iron]))[0] < 1e-9
+    copper = layered(found.slot, 1).copper[0].area
+    assert copper == pytest.approx(slot_copper_area(original), rel=1e-6)
 
 
 def test_measures_are_the_dimensions_drawn(design, tmp_path):
