@@ -1,8 +1,7 @@
 """Keys of the lengths and angles of notches, holes, keyway and contour that can be moved alone."""
 
-from pydantic import BaseModel
-
 from .design import MachineDesign
+from .design_table import Table
 
 ON_AXIS_DEG = 1e-7  # of an angle that is meant to be that of an axis
 
@@ -20,7 +19,7 @@ def detail_keys(design: MachineDesign) -> list[str]:
     return keys
 
 
-def _keys(design: MachineDesign, table: str, part: BaseModel) -> list[str]:
+def _keys(design: MachineDesign, table: str, part: Table) -> list[str]:
     names = [name for name in type(part).model_fields if name.endswith(("_mm", "_deg"))]
     return [
         f"{table}.{name}"

@@ -23,6 +23,12 @@ from lamwright.geometry.design import (
     SteelChoice,
     WindingDesign,
 )
+from lamwright.geometry.design_details import (
+    ContourDesign,
+    HoleDesign,
+    KeywayDesign,
+    NotchDesign,
+)
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -63,6 +69,10 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[[rotor.barrier]]`", BarrierDesign),
         ("`[rotor.barrier.other_half]`", OtherHalfDesign),
         ("`[rotor.barrier.magnet]`", BarrierMagnetDesign),
+        ("`[[rotor.notch]]`", NotchDesign),
+        ("`[[rotor.hole]]`", HoleDesign),
+        ("`[rotor.keyway]`", KeywayDesign),
+        ("`[rotor.contour]`", ContourDesign),
         ("`[steel]`", SteelChoice),
         ("`[magnet]`", MagnetChoice),
         ("`[duty]`", DutyDesign),
