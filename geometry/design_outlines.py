@@ -125,6 +125,9 @@ def _stator(table: object, folder: Path) -> _Part:
         return _failed("stator", {**STATOR_FILLERS, **table}, keys, folder, error)
     measures = stator_measures(drawing)
     faults = _unlike("stator", table, measures, STATOR_KEYS, set(StatorDesign.model_fields))
+    if drawing.slot.is_parted and table.get("wedge_depth_mm"):
+        text = "stator.wedge_depth_mm: the drawing shows where copper begins; leave it out"
+        faults = (*faults, (("stator", "wedge_depth_mm"), text))
     filled = {**measures, **table, "slots": table.get("slots", drawing.slots)}
     if drawing.slot.mouth is None:
         filled["slot_mouth"] = "closed"

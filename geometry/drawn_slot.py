@@ -8,7 +8,7 @@ it no longer widens faster than its own flanks (rules of our own).
 
 import math
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import pairwise
 
 from .arrangement import Arrangement, arrangement, winds_about
@@ -53,6 +53,7 @@ class DrawnSlot:
     mouth: Edge | None
     wall: tuple[Edge, ...]
     bore_radius: float
+    is_parted: bool  # whether the drawing itself shows where copper begins
 
     @property
     def copper(self) -> tuple[SlotPart, ...]:
@@ -83,7 +84,8 @@ def drawn_slot(edges: Sequence[Edge], bore_radius: float, hints: SlotHints) -> D
     mouth, wall = _border(whole, bore_radius)
     faces = _faces(whole)
     bodies = [face for face in faces if not _touches(face, mouth)]
-    if not bodies:
+    is_parted = bool(bodies)
+    if not is_parted:
         bounds = _bounds(wall, bore_radius, mouth, hints)
         cuts = [_across(wall, height) for height in bounds]
         whole = arrangement([*edges, *cuts], WELD_TOL)
@@ -92,7 +94,7 @@ def drawn_slot(edges: Sequence[Edge], bore_radius: float, hints: SlotHints) -> D
         bodies = [face for face in faces if not _touches(face, mouth)]
         bodies = [face for face in bodies if _mean(face).real > bounds[-1]]
     parts = tuple(_named(_with_mouth(face, mouth), bodies, mouth) for face in faces)
-    return DrawnSlot(_ordered(parts), mouth, wall, bore_radius)
+    return DrawnSlot(_ordered(parts), mouth, wall, bore_radius, is_parted)
 
 
 def layered(slot: DrawnSlot, layers: int) -> DrawnSlot:
@@ -126,7 +128,7 @@ def width_at(wall: Sequence[Edge], height: float) -> tuple[float, float]:
 
 
 def _with(slot: DrawnSlot, parts: Sequence[SlotPart]) -> DrawnSlot:
-    return DrawnSlot(_ordered(tuple(parts)), slot.mouth, slot.wall, slot.bore_radius)
+    return replace(slot, parts=_ordered(tuple(parts)))
 
 
 def _border(whole: Arrangement, bore_radius: float) -> tuple[Edge | None, tuple[Edge, ...]]:

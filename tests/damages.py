@@ -198,4 +198,10 @@ DAMAGES = (
         r"stator\.slot_corner_radius_mm: the drawing gives",
         keys=STACK + "slot_corner_radius_mm = 1.0\n",
     ),
+    Damage(
+        "idle_wedge",
+        _saved(with_more),
+        "the drawing shows where copper begins; leave it out",
+        keys=STACK + "wedge_depth_mm = 1.0\n",
+    ),
 )
