@@ -50,7 +50,7 @@ def _ring_faults(design: MachineDesign) -> list[Fault]:
 
 def _pole_faults_with(design: MachineDesign, of_barriers: list[Fault]) -> list[Fault]:
     """The faults of the barriers with those of what lies beside and in them."""
-    faults = of_barriers + of_all_poles(design, rim_faults) + of_all_poles(design, detail_faults)
+    faults = of_barriers + of_all_poles(design, rim_faults) + detail_faults(design)
     return faults or of_all_poles(design, magnet_faults)
 
 
@@ -63,7 +63,7 @@ def shared_faults(design: MachineDesign, key: str) -> list[Fault]:
         rim = contour_faults(design)
         return rim or _pole_faults_with(design, barrier_faults(following(design), key))
     if key.startswith(("rotor.notch[", "rotor.hole[", "rotor.keyway.")):
-        return contour_faults(design) or of_all_poles(design, detail_faults)
+        return contour_faults(design) or detail_faults(design)
     if key in SCALES:
         return _parts_faults(design)
     return stator_faults(design) if key.startswith("stator.") else _ring_faults(design)

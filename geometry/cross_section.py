@@ -60,9 +60,19 @@ def _ripple_findings(design: MachineDesign, rotor_period: int) -> tuple[Finding,
     slots, poles = design.stator.slots, design.rotor.poles
     if ripples_in_sixty_degrees(slots, poles, rotor_period):
         return ()
-    fault = "with unlike poles the torque does not repeat every 60 electrical degrees"
+    keyway, fault = design.rotor.keyway, "the torque does not repeat every 60 electrical degrees"
+    if keyway is not None and not design.rotor.alternate_barrier and design.rotor.outline is None:
+        counts = [n for n in range(1, poles + 1) if _repeats_with(design, n)]
+        remedy = "accepted " + " or ".join(str(count) for count in counts)
+        text = f"with keyways in some poles only {fault}"
+        return (Finding("unlike_poles", "rotor.keyway.count", keyway.count, text, remedy),)
     remedy = f"accepted multiples of {3 * poles}"
-    return (Finding("unlike_poles", "stator.slots", slots, fault, remedy),)
+    return (Finding("unlike_poles", "stator.slots", slots, f"with unlike poles {fault}", remedy),)
+
+
+def _repeats_with(design: MachineDesign, keyways: int) -> bool:
+    slots, poles = design.stator.slots, design.rotor.poles
+    return poles % keyways == 0 and ripples_in_sixty_degrees(slots, poles, poles // keyways)
 
 
 def _least(design: MachineDesign, period: int) -> int:

@@ -44,6 +44,8 @@ class HoleDesign(Table):
 class KeywayDesign(Table):
     """Grooves in the bore, `count` of them evenly spaced; `angle_deg` is not mirrored.
 
+    The count divides the poles; the first groove belongs to the first pole.
+
     A dog-bone key has a neck of `width_mm` and a wider head, `head_width_mm` by `head_depth_mm`,
     at the bottom of its groove.
     """

@@ -10,11 +10,12 @@ import cmath
 import re
 from collections.abc import Iterator, Sequence
 from functools import lru_cache
-from itertools import combinations, pairwise
+from itertools import chain, combinations, pairwise
 
 from .corners import foot, is_within
 from .curves import Edge, line
 from .design import MachineDesign
+from .detail_places import places, poles_apart
 from .detail_sizes import (
     MM,
     SLACK,
@@ -29,8 +30,9 @@ from .distances import distance
 from .enclosure import encloses
 from .remedies import Fault
 from .rotor import bare_pole, rotor_regions
-from .rotor_outline import CutOut, RotorOutline, places
+from .rotor_outline import CutOut, RotorOutline
 from .section import Region
+from .unlike_poles import of_all_poles
 
 # Keys that move a detail's webs, the most natural first.
 WEB_KEYS = {
@@ -50,6 +52,14 @@ def detail_faults(design: MachineDesign) -> list[Fault]:
     """All faults of notches, holes and keyway; none without a walk where there are none."""
     if not has_details(design):
         return []
+    return of_all_poles(
+        design,
+        lambda pole: _faults_of(pole, poles_apart(design, is_alternate=pole is not design)),
+    )
+
+
+def _faults_of(design: MachineDesign, numbers: Sequence[int]) -> list[Fault]:
+    """Faults of the poles `numbers`, all with the barriers of the design, unlike in keyways."""
     pole, rotor = detail_pole(design), design.rotor
     faults = []
     for number, notch in enumerate(rotor.notch, start=1):
@@ -58,7 +68,7 @@ def detail_faults(design: MachineDesign) -> list[Fault]:
         faults += hole_faults(pole, number, hole)
     if rotor.keyway is not None:
         faults += keyway_faults(pole, rotor.keyway)
-    return faults or _notch_order(design, pole) or _web_faults(design, pole)
+    return faults or _notch_order(design, pole) or _web_faults(design, pole, numbers)
 
 
 def _notch_order(design: MachineDesign, pole: DetailPole) -> list[Fault]:
@@ -79,11 +89,11 @@ def _notch_order(design: MachineDesign, pole: DetailPole) -> list[Fault]:
     return list(worst.values())
 
 
-def _web_faults(design: MachineDesign, pole: DetailPole) -> list[Fault]:
+def _web_faults(design: MachineDesign, pole: DetailPole, numbers: Sequence[int]) -> list[Fault]:
     """The thinnest web of each detail towards each kind of neighbour, where it is too thin."""
-    outline = bare_pole(design)
     worst: dict[tuple[str, str], Fault] = {}
-    for cut_out, kind, name, web, least in _webs(design, pole, outline):
+    webs = (_webs(design, pole, bare_pole(design, number)) for number in numbers)
+    for cut_out, kind, name, web, least in chain.from_iterable(webs):
         if least - web <= SLACK:
             continue
         names = _names(design, cut_out.key)

@@ -10,9 +10,9 @@ from dataclasses import dataclass
 from .cut_outs import notch_corner
 from .design import MachineDesign
 from .design_details import HoleDesign, KeywayDesign, NotchDesign
+from .detail_places import ON_AXIS_TOL
 from .remedies import Fault
 from .rotor import rotor_frame
-from .rotor_outline import ON_AXIS_TOL
 
 MM = 1e-3  # m
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
@@ -174,10 +174,11 @@ def _head(table: "Sizes", keyway: KeywayDesign) -> float:
 
 def _count_fault(table: "Sizes", keyway: KeywayDesign) -> None:
     poles = table.pole.poles
-    if keyway.count == poles:
+    if poles % keyway.count == 0:
         return
-    text = f"{keyway.count} keys do not stand alike on {poles} poles"
-    table.short("key_count", ("count",), text, 1.0, f"accepted {poles}, one a pole")
+    text = f"{keyway.count} keyways do not stand alike on {poles} poles"
+    fits = [str(count) for count in range(1, poles + 1) if poles % count == 0]
+    table.short("key_count", ("count",), text, 1.0, f"accepted {', '.join(fits[:-1])} or {poles}")
 
 
 def _no_stub(table: "Sizes", code: str, keys: tuple[str, ...], length: float) -> None:

@@ -11,6 +11,7 @@ from .bands import band_of
 from .cavities import cut_barrier
 from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
+from .detail_places import key_places, rotor_period
 from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
@@ -38,12 +39,20 @@ def rotor_poles(
     if outline is not None:
         radius = rotor_frame(design).circle_radius
         return drawn_rotor_regions(outline.drawing, radius, design.pole_pairs)
-    other = alternate_pole(design)
-    return tuple(rotor_regions(pole) for pole in (design, other) if pole is not None)
+    other = alternate_pole(design) or design
+    return tuple(
+        rotor_regions(other if pole % 2 else design, pole) for pole in range(rotor_period(design))
+    )
 
 
-def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib, ...]]:
+def rotor_regions(
+    design: MachineDesign, number: int = 0
+) -> tuple[tuple[Region, ...], tuple[Rib, ...]]:
     """Regions and ribs of one pole of the rotor, sector 0 to pi / pole_pairs, in m.
+
+    Args:
+        design: with the barriers of this pole.
+        number: of the pole, from 0; not every one holds a keyway.
 
     Returns:
         Regions `rotor_iron`, each cavity and its magnets, `shaft`, `gap_rotor`, tiling the sector;
@@ -56,13 +65,13 @@ def rotor_regions(design: MachineDesign) -> tuple[tuple[Region, ...], tuple[Rib,
     design = following(design)
     air: list[Region] = []
     ribs: list[Rib] = []
-    for number, barrier in enumerate(design.rotor.barrier, start=1):
-        paths, barrier_ribs = _barrier(number, barrier, frame)
-        names = cavity_names(number, len(paths))
+    for place, barrier in enumerate(design.rotor.barrier, start=1):
+        paths, barrier_ribs = _barrier(place, barrier, frame)
+        names = cavity_names(place, len(paths))
         own = [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
-        air += with_magnets(number, barrier.magnet, own, frame.q_axis)
+        air += with_magnets(place, barrier.magnet, own, frame.q_axis)
         ribs += barrier_ribs
-    pole = bare_pole(design)
+    pole = bare_pole(design, number)
     holes = tuple(reversed_path(region.outer) for region in air if region.material == "air")
     return (
         Region("rotor_iron", "rotor_steel", pole.iron, (*holes, *pole.iron_holes)),
@@ -102,10 +111,10 @@ def _tangential_ribs(number: int, upper: HalfBarrier, lower: HalfBarrier) -> lis
     ]
 
 
-def bare_pole(design: MachineDesign) -> RotorOutline:
-    """One pole of the rotor with its details, before barriers are cut, in the rotor's frame."""
-    frame = rotor_frame(design)
-    return rotor_outline(design, _rim(design), frame.shaft_radius, 2.0 * frame.q_axis)
+def bare_pole(design: MachineDesign, number: int = 0) -> RotorOutline:
+    """Pole `number`, from 0, with its details, before barriers are cut, in the rotor's frame."""
+    frame, keys = rotor_frame(design), key_places(design, number)
+    return rotor_outline(design, _rim(design), frame.shaft_radius, 2.0 * frame.q_axis, keys)
 
 
 def following(design: MachineDesign) -> MachineDesign:

@@ -27,10 +27,10 @@ from .cut_outs import (
 )
 from .design import MachineDesign
 from .design_details import HoleDesign, KeywayDesign, NotchDesign
+from .detail_places import ON_AXIS_TOL, Places, places
 from .section import Material, Region
 
 MM = 1e-3  # m
-ON_AXIS_TOL = 1e-9  # rad, of an angle that is meant to be that of an axis
 
 Wall = Callable[[float, Point], tuple[Edge, ...]]  # middle of the mouth, its end -> upper half
 
@@ -59,7 +59,11 @@ class RotorOutline:
 
 
 def rotor_outline(
-    design: MachineDesign, rim: Sequence[Edge], bore_radius: float, pitch: float
+    design: MachineDesign,
+    rim: Sequence[Edge],
+    bore_radius: float,
+    pitch: float,
+    keys: Places,
 ) -> RotorOutline:
     """Outline of one pole's iron and shaft from a bare rim and the details of the design.
 
@@ -68,6 +72,7 @@ def rotor_outline(
         rim: chain from angle 0 to `pitch`.
         bore_radius: in m.
         pitch: pole pitch in rad.
+        keys: keyways of this pole.
 
     Raises:
         ValueError: where a detail does not fit; `detail_checks` says what would.
@@ -76,7 +81,7 @@ def rotor_outline(
     outer = _Chain(rim, pitch)
     inner = _Chain(bore, pitch)
     notches = _notches(design, outer, pitch)
-    keys = _keyways(design, inner, pitch)
+    key_cuts = _keyways(design, inner, keys)
     holes = _holes(design, pitch)
     whole = [one for one in holes if one.region.outer.edges == one.wall]
     halves = [one for one in holes if one.region.outer.edges != one.wall]
@@ -95,20 +100,8 @@ def rotor_outline(
         shaft_side=tuple(seen),
         rim=tuple(outer.iron),
         bore=tuple(inner.iron),
-        cut_outs=(*notches, *holes, *keys),
+        cut_outs=(*notches, *holes, *key_cuts),
     )
-
-
-def places(angle: float, half_pitch: float) -> tuple[tuple[str, float], ...]:
-    """Ends of name and angles in the sector of a detail at `angle` rad from the q axis.
-
-    Names: none on the q axis, else `_right` and `_left`, as seen with the q axis upright.
-    """
-    if abs(angle) < ON_AXIS_TOL:
-        return (("", half_pitch),)
-    if abs(angle - half_pitch) < ON_AXIS_TOL:
-        return (("_right", 0.0), ("_left", 2.0 * half_pitch))
-    return (("_right", half_pitch - angle), ("_left", half_pitch + angle))
 
 
 class _Chain:
@@ -182,24 +175,18 @@ def _notch_wall(notch: NotchDesign) -> Wall:
     return lambda top, end: notch_floor(notch, top, end)
 
 
-def _keyways(design: MachineDesign, bore: _Chain, pitch: float) -> list[CutOut]:
+def _keyways(design: MachineDesign, bore: _Chain, keys: Places) -> list[CutOut]:
     keyway = design.rotor.keyway
     if keyway is None:
         return []
-    angle = math.radians(keyway.angle_deg)
-    on_axes = places(angle, 0.5 * pitch)
-    # Not mirrored: of a pair beside the q axis only the one ahead of it.
-    chosen = on_axes if abs(angle - 0.5 * pitch) < ON_AXIS_TOL else on_axes[-1:]
     material: Material = "air" if keyway.key == "air" else "key"
+    mu = _key_permeability(design, keyway)
     made = []
-    for suffix, place in chosen:
-        name = f"key_1{suffix}" if len(chosen) > 1 else "key_1"
-        mouth, wall = bore.cut(place, 0.5 * MM * keyway.width_mm, _key_wall(keyway))
+    for suffix, angle in keys:
+        mouth, wall = bore.cut(angle, 0.5 * MM * keyway.width_mm, _key_wall(keyway))
         path = _between(wall, mouth)
-        mu = _key_permeability(design, keyway)
-        made.append(
-            CutOut(Region(name, material, path, relative_permeability=mu), "rotor.keyway", wall)
-        )
+        region = Region(f"key_1{suffix}", material, path, relative_permeability=mu)
+        made.append(CutOut(region, "rotor.keyway", wall))
     return made
 
 

@@ -85,6 +85,64 @@ def test_areas_of_plain_details_are_closed_forms():
     assert abs(tiled(section)) < 1e-12
 
 
+@pytest.mark.parametrize("angle_deg", [0.0, 12.0, 45.0])
+@pytest.mark.parametrize("count", [1, 2, 4])
+def test_the_whole_bore_has_as_many_keyways_as_stated(count, angle_deg):
+    """Area within the bore of the whole lamination: circle and `count` grooves, by hand as above.
+
+    On the q axis, beside it and on the d axis, where two poles share a groove.
+    """
+    key = KeywayDesign(count=count, angle_deg=angle_deg, width_mm=4.0, depth_mm=2.0)
+    section = cross_section(detailed(keyway=key))
+    assert (section.rotor_period, section.sector_poles) == (4 // count, 4 // count)
+    (bore,) = [c.path for c in lamination_contours(section) if c.layer == "BORE"]
+    chord = math.sqrt(13.0**2 - 2.0**2)
+    segment = 13.0**2 * math.asin(2.0 / 13.0) - 2.0 * chord
+    groove = 4.0 * (15.0 - chord) - segment - 2.0 * (1.0 - math.pi / 4.0) * 0.5**2
+    assert -area(bore) / MM**2 == pytest.approx(math.pi * 13.0**2 + count * groove, rel=1e-12)
+    assert abs(tiled(section)) < 1e-12
+
+
+def test_a_keyway_is_checked_in_the_poles_that_hold_it():
+    """Every second pole's barriers leave no room for a groove that stands in the first pole only.
+
+    Refused where they are in the first pole or where each pole has a groove.
+    """
+    deep = DESIGN.rotor.barrier[2].model_copy(update={"depth_mm": 22.0})
+    others = (*DESIGN.rotor.barrier[:2], deep)
+    key = KeywayDesign(count=2, width_mm=4.0, depth_mm=2.0)
+    assert not shape_faults(detailed(alternate_barrier=others, keyway=key))
+    for changes in ({"count": 4}, {"count": 2, "angle_deg": 0.0}):
+        own, other = DESIGN.rotor.barrier, others
+        if changes["count"] == 2:
+            own, other = other, own
+        design = detailed(
+            barrier=own, alternate_barrier=other, keyway=key.model_copy(update=changes)
+        )
+        assert {fault.code for fault in shape_faults(design)} == {"web_barrier"}
+
+
+def test_keyways_that_leave_no_whole_waveform_are_refused():
+    """27 slots on 6 poles, one keyway: no turn of rotor and slots together makes 60 el. degrees.
+
+    By hand: k 360 / 27 = (60 + 180 * 6 j) / 3 has no whole k; with period 3 it has, j = 1.
+    """
+    design = read_design(Path("designs/demo_36s6p_arc.toml"))
+    stator = design.stator.model_copy(update={"slots": 27})
+    winding = design.winding.model_copy(update={"coil_span_slots": 4, "layers": 2})
+    base = design.model_copy(update={"stator": stator, "winding": winding})
+
+    def keyed(count):
+        key = KeywayDesign(count=count, width_mm=4.0, depth_mm=2.0)
+        return base.model_copy(
+            update={"rotor": base.rotor.model_copy(update={"keyway": key})},
+        )
+
+    with pytest.raises(GeometryError, match=r"keyway\.count = 1: .*; accepted 2 or 6"):
+        cross_section(keyed(1))
+    assert cross_section(keyed(2)).sector_poles == 6
+
+
 def test_rivets_and_keys_carry_their_permeability():
     """As stated, a key's by default the shaft's; nothing else of the region is touched."""
     rivet = HoleDesign(

@@ -1,4 +1,4 @@
-"""A rotor of two unlike poles in the field: where they are alike, one pole says the same."""
+"""Unlike poles, and keyways in some poles only: where they are alike, one pole says the same."""
 
 from dataclasses import replace
 
@@ -6,8 +6,10 @@ import pytest
 
 from lamwright.app.point import model_of
 from lamwright.geometry.cross_section import cross_section
+from lamwright.geometry.design_details import KeywayDesign
 from lamwright.solver.field import solve_point
 from lamwright.solver.mesh import mesh_section
+from lamwright.solver.rotor_stress import rotor_stress
 from tests.shipped import shipped
 
 FIGURES = ("psi_d", "psi_q", "torque", "coenergy")
@@ -32,3 +34,26 @@ def test_every_second_pole_stated_alike_changes_nothing():
     for name in FIGURES:
         one, two = (getattr(field, name) for field in fields)
         assert two == pytest.approx(one, rel=1e-6)
+
+
+def test_one_keyway_in_the_bore_is_nearly_one_in_each_pole():
+    """24/4 demo, a steel key in one pole or in all four: the shaft's flux is small.
+
+    So is what the groove does to ribs far outside: 1 % asked, measured 3e-5 of the field's
+    figures and 0.5 % of the peak stress, whose own error is estimated at 2 % and 1 %.
+    """
+    machine = shipped("demo_24s4p_arc").machine
+    fields, peaks = [], []
+    for count in (4, 1):
+        key = KeywayDesign(count=count, width_mm=4.0, depth_mm=2.0, key_relative_permeability=500.0)
+        rotor = machine.design.rotor.model_copy(update={"keyway": key})
+        own = replace(machine, design=machine.design.model_copy(update={"rotor": rotor}))
+        section = cross_section(own.design)
+        assert section.sector_poles == section.rotor_period == 4 // count
+        fields.append(solve_point(model_of(own, section, mesh_section(section)), 8.0, 8.0, 0.03))
+        peaks.append(rotor_stress(section, own.rotor_steel, 750.0).peak)
+    for name in FIGURES:
+        one, four = (getattr(field, name) for field in reversed(fields))
+        assert one == pytest.approx(four, rel=0.01)
+        assert one != four
+    assert peaks[1] == pytest.approx(peaks[0], rel=0.01)
