@@ -4,6 +4,7 @@ Idea: the edges of one pole's rotor iron that lie on the pole's sides are not cu
 its outline falls apart into chains that run from side to side, and closed holes. Copies of all
 poles are joined, each chain's end to the start that lies there on the neighbouring pole. A contour
 made of arcs about the shaft axis that close on themselves becomes a full circle of two halves.
+A contour that bounds a region called hole is one, any other that is neither rim nor bore a barrier.
 The sheet lies to the left of every contour: the outer one runs counter-clockwise, holes clockwise.
 """
 
@@ -11,15 +12,16 @@ import cmath
 import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
-from typing import Literal
+from typing import Literal, get_args
 
 from .curves import Edge, Path, Point, area, circle, reversed_path, turned
-from .section import CrossSection, rotor_cell, rotor_iron
+from .section import CrossSection, base_name, pole_of, rotor_cell, rotor_iron
 
 WELD_TOL = 1e-9  # m, ends closer than this are one point; far below a punch's 1e-5 m
 SIDE_TOL = 1e-9  # rad, of a point's angle to a sector's side; turning errs by 1e-16
 
-Layer = Literal["OUTER_CONTOUR", "BORE", "BARRIERS"]
+Layer = Literal["OUTER_CONTOUR", "BORE", "BARRIERS", "HOLES"]
+LAYERS: tuple[Layer, ...] = get_args(Layer)  # in the order of the file
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,27 +42,35 @@ class _Chain:
 
 
 def lamination_contours(section: CrossSection) -> tuple[Contour, ...]:
-    """All contours of the rotor lamination, all poles: outer, bore, then barriers pole by pole.
+    """All contours of the lamination, all poles: outer, bore, barriers pole by pole, then holes.
 
     Args:
         section: a sector in SI units.
 
     Returns:
-        Closed contours in m, layers OUTER_CONTOUR, BORE and BARRIERS.
+        Closed contours in m, layers OUTER_CONTOUR, BORE, BARRIERS and HOLES.
     """
-    pitch = section.pole_angle
+    pitch, cell = section.pole_angle, rotor_cell(section)
+    holes = [_hole_middles(cell, k) for k in range(cell.sector_poles)]
     # Each pole of the period in its own frame.
     period = [
         _chains(
             [turned(path, -k * pitch) if k else path for path in (iron.outer, *iron.holes)], pitch
         )
-        for k, iron in enumerate(rotor_iron(rotor_cell(section)))
+        for k, iron in enumerate(rotor_iron(cell))
     ]
-    loops = [_as_circle(loop) for loop in _joined([c for c, _ in period], section.poles, pitch)]
+    loops = [
+        (pole, _as_circle(loop))
+        for pole, loop in _joined([c for c, _ in period], section.poles, pitch)
+    ]
     for pole in range(section.poles):
-        loops += [turned(path, pole * pitch) for path in period[pole % len(period)][1]]
-    contours = [Contour(_layer(loop), loop) for loop in loops]
-    order = ("OUTER_CONTOUR", "BORE", "BARRIERS")
+        loops += [(pole, turned(path, pole * pitch)) for path in period[pole % len(period)][1]]
+    contours = []
+    for pole, loop in loops:
+        middle = loop.edges[0].point(0.5) * cmath.exp(-1j * pole * pitch)
+        is_hole = any(abs(middle - one) < WELD_TOL for one in holes[pole % len(period)])
+        contours.append(Contour("HOLES" if is_hole else _layer(loop), loop))
+    order: list[str] = list(LAYERS)
     return tuple(sorted(contours, key=lambda contour: order.index(contour.layer)))
 
 
@@ -81,6 +91,17 @@ def compare_contours(a: Sequence[Contour], b: Sequence[Contour]) -> float:
         left.remove(match)
         worst = max(worst, _deviation(contour.path, match.path))
     return math.inf if left else worst
+
+
+def _hole_middles(cell: CrossSection, pole: int) -> list[Point]:
+    """Middles of all edges of holes in pole number `pole`, from 0, in that pole's own frame."""
+    turn = cmath.exp(-1j * pole * cell.pole_angle)
+    return [
+        edge.point(0.5) * turn
+        for region in cell.rotor
+        if pole_of(region.name) == pole + 1 and base_name(region.name).startswith("hole_")
+        for edge in region.outer.edges
+    ]
 
 
 def _side_of(point: Point, pitch: float) -> int | None:
@@ -126,8 +147,12 @@ def _chain(run: Iterable[Edge], pitch: float) -> _Chain:
     return _Chain(edges, start, end)
 
 
-def _joined(period: Sequence[Sequence[_Chain]], poles: int, pitch: float) -> list[Path]:
-    """Closed paths over all poles of the chains of each pole of the period."""
+def _joined(period: Sequence[Sequence[_Chain]], poles: int, pitch: float) -> list[tuple[int, Path]]:
+    """Closed paths over all poles of the chains of each pole of the period.
+
+    Returns:
+        Each path with the pole that its first edge lies in.
+    """
     todo = [(k, pole) for pole in range(poles) for k in range(len(period[pole % len(period)]))]
     loops = []
     while todo:
@@ -143,7 +168,7 @@ def _joined(period: Sequence[Sequence[_Chain]], poles: int, pitch: float) -> lis
             current = (_next_chain(period[onward % len(period)], chain), onward)
             if current == first:
                 break
-        loops.append(_closed(edges))
+        loops.append((first[1], _closed(edges)))
     return loops
 
 

@@ -38,7 +38,8 @@ __all__ = [
 ]
 
 MM = 1e-3  # m
-COLOURS = {"OUTER_CONTOUR": 7, "BORE": 1, "BARRIERS": 5}  # colour index: black or white, red, blue
+# Colour index: black or white, red, blue, green.
+COLOURS = {"OUTER_CONTOUR": 7, "BORE": 1, "BARRIERS": 5, "HOLES": 3}
 IDENTIFIER_SPACE = uuid.UUID("6a3f0c52-5d0e-5b0f-9a58-2f5a8d1c7e44")  # any fixed value of our own
 _STAMPS = re.compile(r"  9\n\$TDU?(?:CREATE|UPDATE)\n 40\n.*\n")
 _IDENTIFIERS = re.compile(r"(\$(?:FINGERPRINT|VERSION)GUID\n  2\n).*(?=\n)")

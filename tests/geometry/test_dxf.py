@@ -24,6 +24,8 @@ from lamwright.geometry.curves import (
     turned,
 )
 from lamwright.geometry.design import MachineDesign
+from lamwright.geometry.design_details import HoleDesign, KeywayDesign
+from lamwright.geometry.design_file import read_design
 from lamwright.geometry.dxf import (
     Contour,
     compare_contours,
@@ -224,6 +226,31 @@ def test_holes_across_the_sector_sides_become_whole(pole_pairs, side, tmp_path):
     assert holes == pytest.approx(small + large, rel=1e-12)
     assert area(contours[0].path) == pytest.approx(math.pi * 900e-6, rel=1e-12)
     assert area(contours[1].path) == pytest.approx(-math.pi * 25e-6, rel=1e-12)
+
+
+def test_holes_have_a_layer_of_their_own(tmp_path):
+    """Holes inside the pole, on its q axis and across its sides; keyways stay with the bore.
+
+    Areas are the circles'; what is read back is what was written.
+    """
+    holes = (
+        HoleDesign(place_radius_mm=25.0, angle_deg=45.0, diameter_mm=4.0, material="rivet"),
+        HoleDesign(place_radius_mm=17.0, angle_deg=20.0, diameter_mm=3.0),
+        HoleDesign(place_radius_mm=32.5, angle_deg=0.0, diameter_mm=2.0),
+    )
+    key = KeywayDesign(count=2, width_mm=4.0, depth_mm=2.0)
+    design = read_design(DEMO)
+    rotor = design.rotor.model_copy(update={"hole": holes, "keyway": key})
+    section = cross_section(design.model_copy(update={"rotor": rotor}))
+    path = tmp_path / "holes.dxf"
+    write_lamination(section, path)
+    contours = read_contours(path)
+    layers = [contour.layer for contour in contours]
+    assert layers == ["OUTER_CONTOUR", "BORE"] + 12 * ["BARRIERS"] + 16 * ["HOLES"]
+    areas = sorted(-area(c.path) / MM**2 for c in contours if c.layer == "HOLES")
+    circles = [4 * [math.pi], 8 * [2.25 * math.pi], 4 * [4.0 * math.pi]]
+    assert areas == pytest.approx([one for same in circles for one in same], rel=1e-12)
+    assert compare_contours(lamination_contours(section), contours) < 1e-15
 
 
 def test_an_outline_that_does_not_close_is_an_error():
