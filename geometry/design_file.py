@@ -9,7 +9,7 @@ import json
 import re
 import stat
 import tomllib
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from operator import itemgetter
 from pathlib import Path
@@ -55,6 +55,28 @@ def read_design(path: Path) -> MachineDesign:
         DesignError: the file cannot be read or used; one line for each fault.
     """
     return _design(path, _text(path))
+
+
+def read_filled(
+    path: Path, fillers: Mapping[str, object], tables: Sequence[str]
+) -> tuple[MachineDesign, dict[str, object]]:
+    """The design of some tables of a file with others in place of all the rest.
+
+    Args:
+        path: TOML file.
+        fillers: a whole design's data, for what the file has not got.
+        tables: that are taken from the file where it has them.
+
+    Returns:
+        The design, and the file's own data.
+
+    Raises:
+        DesignError: the file cannot be read or used; one line for each fault.
+    """
+    text = _text(path)
+    data = _parsed(path, text)
+    own = {name: data[name] for name in tables if name in data}
+    return _design_of(path, text, {**fillers, **own}), data
 
 
 def read_steel_card(path: Path) -> SteelCard:
@@ -164,6 +186,10 @@ def _design(path: Path, text: str) -> MachineDesign:
     data = _parsed(path, text)
     if not data or any(_beyond_toml((), data)):
         return _validated(path, text, MachineDesign)
+    return _design_of(path, text, data)
+
+
+def _design_of(path: Path, text: str, data: dict[str, object]) -> MachineDesign:
     filled = with_outlines(data, path.parent)
     if filled.faults:
         raise DrawingError(_lines_text(path, text, filled.faults), filled.marks)
