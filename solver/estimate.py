@@ -14,11 +14,12 @@
 Independent parts are added: twice the standard error of the mean over the sampled positions, what
 conjugate gradients left (`KNOWN_TO`), a floor of Newton's iteration. What is not in it: the steel
 curve, the third dimension, the shape of the punched part.
-Measured on 33 machines (three shipped, thirty random, tests/solver/test_estimate.py) against
-meshes of scale 0.25, 7 to 11 times the unknowns: claimed over true error, least, median, most and
-share within a third and five: torque 1.2, 1.6, 6.8, 97 %; psi_d 1.2, 1.7, 2.4, 100 %; psi_q 1.4,
-1.8, 58, 94 % (the 58 for a true error of 1e-6); saliency 1.4, 2.3, 68, 76 % (where both linkages
-err alike, it hardly errs at all). Ripple on five of them: 1.5 to 15.
+Measured on thirty random machines at `normal` against 16 times the elements
+(tests/solver/test_estimate.py): stated over true error, least, median, most, and share within a
+third and five: torque 1.2, 1.6, 5.2, 97 %; torque by linkages 1.3, 1.7, 11, 93 %; psi_d 1.3, 1.6,
+3.0, 100 %; psi_q 1.3, 1.6, 13, 97 % (the 13 for a true error of 7e-6); saliency 1.4, 1.8, 65, 83 %;
+ripple 1.2, 1.8, 8.8, 87 %. Ratios may be exact by chance: where saliency is off by more than 1e-4
+or ripple by more than 1e-3, the most is 2.5 and 3.7.
 Axes: n_sample sampled positions.
 """
 
