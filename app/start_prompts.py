@@ -64,7 +64,7 @@ def _poles_of_file(stator: object) -> int | None:
 
 def print_start(report: StartReport, taken: Sequence[str]) -> None:
     """What was laid out, which defaults were taken, and what to do next."""
-    design, rotor = report.first.design, report.first.rotor
+    design, rotor = report.first.design, report.first.rotor.taken
     if taken:
         click.echo(f"taken by default: {'; '.join(taken)}")
     ends = ", ".join(f"{one.table.end_angle_deg:g}" for one in rotor.barriers)
@@ -73,6 +73,7 @@ def print_start(report: StartReport, taken: Sequence[str]) -> None:
     rows = (
         ("barriers of a pole", f"{rotor.spread.barriers}, ends at {ends} deg from the q axis"),
         ("barrier ends", f"on {rotor.spread.places} places a pole pair, against {slots:g} slots"),
+        ("ripple", f"about {100.0 * rotor.estimate.ripple:.0f} % by a linear model, mostly less"),
         ("ribs", f"{ribs} mm"),
         ("yield margin at overspeed", f"{report.yield_margin:.2f} by the stress solution"),
         (

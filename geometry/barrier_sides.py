@@ -45,6 +45,7 @@ TO_SHAFT, TO_RIM = 1.0, -1.0  # sides: to the left and right of a barrier's outw
 FITTED = ("hyperbolic", "streamline")
 SCAN = 6  # steps back along a field line to where a fillet lies within its guide
 MOST_STEPS = 60
+LEAST_RISE = 1e-9  # m, of an end above the bottom: flatter arcs are lost in rounding
 ROOT_TOL = 2e-15  # of the bracket's larger end: rounding
 
 
@@ -254,7 +255,7 @@ def guide_line(barrier: BarrierDesign, seat: Seat, side: float) -> tuple[Edge, .
         ValueError: if there is none.
     """
     bottom, cap = guide_bottom(barrier, seat, side), seat.cap
-    if bottom <= 0.0 or cap.real <= bottom:
+    if bottom <= 0.0 or cap.real - bottom <= LEAST_RISE:
         raise ValueError("the barrier's end lies no further out than its bottom")
     if barrier.shape == "arc":
         return (arc_half(bottom, cap),)

@@ -7,14 +7,23 @@ together, checked, and written down with the reason for every number.
 
 import math
 from dataclasses import dataclass
+from fractions import Fraction
 
 from .checks import check_design
 from .design import MachineDesign, StatorDesign, SteelCard
 from .drawn_slot import layered
 from .errors import DesignError
 from .first_barriers import shares
-from .first_rotor import FirstBarrier, FirstRotor, RotorNeeds, first_rotor, pole_room
-from .first_spread import even_spread
+from .first_rotor import (
+    ANGLE,
+    Candidate,
+    FirstBarrier,
+    FirstRotor,
+    RotorNeeds,
+    first_rotor,
+    pole_room,
+)
+from .first_spread import AVOIDED, BEST_DISTANCE
 from .first_text import Data, DesignTable, Line, design_data
 from .first_winding import (
     CURRENT_DENSITY,
@@ -32,7 +41,6 @@ from .winding import winding_factor, winding_table
 RPM = 30.0 / math.pi  # 1/min per rad/s
 OVERSPEED = 1.2
 AIMED_MARGIN = 1.3  # yield over the stress by the rib law, which errs
-ANGLE = math.radians(55.0)  # current angle of most torque, assumed
 SATURATION = 1.5  # of the gap by slots and steel, assumed
 TORQUE_SHARE = 0.5  # of the estimated torque that the limit asks for
 
@@ -99,9 +107,10 @@ def first_design(wishes: Wishes) -> FirstDesign:
         least_rib=wishes.rib_factor * wishes.sheet,
         barriers=wishes.barriers,
     )
-    rotor = first_rotor(design, needs)
-    if isinstance(rotor, tuple):
-        raise DesignError(_none_found(wishes, rotor))
+    try:
+        rotor = first_rotor(design, needs)
+    except DesignError as error:
+        raise DesignError(_none_found(wishes, str(error))) from None
     barriers = _barrier_tables(design, wishes, needs, rotor)
     whole = (*tables, *barriers, *rest, _limits_table(wishes, design))
     design = _machine(wishes, whole)
@@ -125,9 +134,8 @@ def _raise_if_unbalanced(wishes: Wishes) -> None:
     )
 
 
-def _none_found(wishes: Wishes, refused: tuple[str, ...]) -> str:
+def _none_found(wishes: Wishes, why: str) -> str:
     wished = "" if wishes.barriers is None else f" with {wishes.barriers} barriers"
-    why = refused[0] if refused else "no even spread of so many ends avoids the slots"
     remedy = "fewer barriers, a lower maximum speed, a smaller shaft or stronger steel"
     speed = round(RPM * wishes.maximum_speed, 1)
     return f"no rotor found for {wishes.poles} poles at {speed:g} rpm{wished}: {why}; try {remedy}"
@@ -324,11 +332,12 @@ def _barrier_tables(
     design: MachineDesign, wishes: Wishes, needs: RotorNeeds, rotor: FirstRotor
 ) -> tuple[DesignTable, ...]:
     """The tables of the barriers with the reasons of their numbers."""
-    share = shares(rotor.spread.ends)
+    taken = rotor.taken
+    share = shares(taken.spread.ends)
     tables = []
-    for k, one in enumerate(rotor.barriers):
+    for k, one in enumerate(taken.barriers):
         why = {
-            "end_angle_deg": f"{math.degrees(rotor.spread.ends[k]):.2f} el deg / "
+            "end_angle_deg": f"{math.degrees(taken.spread.ends[k]):.2f} el deg / "
             f"{design.pole_pairs} pole pairs.",
             "thickness_mm": f"{share.barriers[k]:.3f} of the air, its share of the q-axis mmf "
             "drop.",
@@ -357,19 +366,34 @@ def _rib_reason(wishes: Wishes, needs: RotorNeeds, one: FirstBarrier) -> str:
 
 
 def _spread_reason(design: MachineDesign, rotor: FirstRotor) -> str:
-    spread, room = rotor.spread, pole_room(design)
-    slots = design.stator.slots / design.pole_pairs
-    air = sum(1e-3 * one.table.thickness_mm for one in rotor.barriers)
-    even = even_spread(spread.barriers)
+    taken, room = rotor.taken, pole_room(design)
+    slots = Fraction(design.stator.slots, design.pole_pairs)
+    air = sum(1e-3 * one.table.thickness_mm for one in taken.barriers)
     lines = [
-        f"Barriers. Ends stand on n_r = {spread.places} places equally spaced round a pole pair, "
-        f"against n_s = {slots:g} slots: n_r should be n_s +-4 and must not be n_s or n_s +-2 "
-        "(Vagati, Pastorelli, Franceschini, Petrache 1998, from memory). Evenly over the pole "
-        f"alone would be {even.places}.",
-        f"Insulation ratio {rotor.insulation:g} of the depth that barriers and carriers share, "
+        f"Barriers. Ends stand on n_r = {taken.spread.places} places equally spaced round a pole "
+        f"pair, against n_s = {float(slots):g} slots. The published rule: n_r not n_s nor "
+        f"n_s +-{AVOIDED[1]}, best n_s +-{BEST_DISTANCE} (Vagati, Pastorelli, Franceschini, "
+        "Petrache 1998, from memory). Among all such spreads of 2 to 5 barriers this one has the "
+        f"least ripple by a linear mmf model, {_percent(taken)} (derived, like Bianchi, Bolognani, Bon, "
+        "Dai Pre 2009; geometry/first_ripple.py). It ranks rotors; real ripple is mostly lower.",
+        *(f"Not taken: {_candidate_text(other)}." for other in rotor.others[:3]),
+        f"Insulation ratio {taken.insulation:g} of the depth that barriers and carriers share, "
         f"{air / room.depth:.3f} of rim to shaft; usual 0.3 to 0.5 (common practice).",
         "Carriers: widths as the d axis's flux through them, cos e_k - cos e_(k+1); thicknesses as "
         "the q axis's mmf drop between them (derived; Vagati et al. 1992, from memory).",
     ]
-    lines += [f"Not taken: {text}." for text in rotor.refused[:3]]
+    if taken.is_avoided:
+        lines.insert(
+            1, "The rule is against this n_r: all others have over 1.6 times its estimated ripple."
+        )
     return "\n".join(lines)
+
+
+def _candidate_text(one: Candidate) -> str:
+    ends = ", ".join(f"{math.degrees(end):.1f}" for end in one.spread.ends)
+    rule = ", against the rule" if one.is_avoided else ""
+    return f"{one.spread.places} places, ends at {ends} el deg: {_percent(one)}{rule}"
+
+
+def _percent(one: Candidate) -> str:
+    return f"{100.0 * one.estimate.ripple:.0f} %"

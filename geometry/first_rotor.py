@@ -1,23 +1,33 @@
-"""The rotor of a first design: spreads of barrier ends tried in their order until one can be built.
+"""The rotor of a first design: the spread of barrier ends with the least ripple that can be built.
+
+Spreads that the published rule advises against are taken only where the estimate says that all
+others have far more ripple. Torque counts too: what is lost of it is charged to the ripple.
 
 Each spread is laid out with less and less air. Ribs and barriers depend on each other (a thicker
 rib moves the barrier's end inward, which changes the load) and are found in turns.
 """
 
 import math
+from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
-from .checks import shape_faults
 from .design import BarrierDesign, MachineDesign, RotorDesign
+from .errors import DesignError
 from .first_barriers import PlacedBarrier, PoleRoom, placed_barriers
 from .first_ribs import RibLaw, RibLoad, RibWidths, rib_loads, rib_stresses, rib_widths
-from .first_spread import Spread, spreads
+from .first_ripple import TorqueEstimate, estimated_torque_of, gap_model
+from .first_spread import Spread, is_avoided, spreads
+from .rotor_checks import rotor_faults
 
 INSULATIONS = (0.40, 0.36, 0.32, 0.28)  # tried in this order
-MOST_TRIED = 16  # spreads
-TURNS = 4  # of ribs and barriers
+ANGLE = math.radians(55.0)  # current angle from the d axis of most torque, assumed
+# Merits; common practice, no source.
+AGAINST_RULE = 1.6  # times the ripple of a spread that the published rule is against
+TORQUE_POWER = 2.0  # of the torque lost to the best
+PER_BARRIER = 0.1  # of the ripple for each barrier more or fewer than usual
+TURNS = 6  # of ribs and barriers
 THINNEST = 1.5  # sheets, of a barrier or carrier on the q axis; common practice, no source
 DEPTH_OF_BARRIER = 7e-3  # m of pole depth for each barrier; common practice, no source
 
@@ -44,48 +54,87 @@ class FirstBarrier:
 
 
 @dataclass(frozen=True, slots=True)
-class FirstRotor:
-    """The barriers of a pole, and what they follow from."""
+class Candidate:
+    """A spread laid out."""
 
     spread: Spread
     insulation: float
     barriers: tuple[FirstBarrier, ...]
-    refused: tuple[str, ...]  # spreads tried before, with why they were not taken
+    estimate: TorqueEstimate
+    is_avoided: bool  # by the published rule
 
 
-def first_rotor(design: MachineDesign, needs: RotorNeeds) -> FirstRotor | tuple[str, ...]:
-    """The first rotor that passes every check of shape, or why none does.
+@dataclass(frozen=True, slots=True)
+class FirstRotor:
+    """The candidate taken, and the best others."""
+
+    taken: Candidate
+    others: tuple[Candidate, ...]  # from the best
+
+
+def first_rotor(design: MachineDesign, needs: RotorNeeds) -> FirstRotor:
+    """The best rotor that passes every check of shape.
 
     Args:
         design: the machine, whose barriers are replaced.
         needs: speed, steel and ribs.
+
+    Raises:
+        DesignError: there is none; the text says why the first spread cannot be.
     """
     slots = Fraction(design.stator.slots, design.pole_pairs)
-    choices = spreads(slots, wished_barriers(design, needs))[:MOST_TRIED]
+    best, counts = wished_barriers(design, needs)
+    gap = gap_model(design)
+    found: list[Candidate] = []
     refused: list[str] = []
-    for spread in choices:
-        why = ""
-        for insulation in INSULATIONS:
-            laid = laid_out(design, needs, spread, insulation)
-            if not isinstance(laid, str):
-                return FirstRotor(spread, insulation, laid, tuple(refused))
-            why = why or laid
-        ends = ", ".join(f"{math.degrees(e):.1f}" for e in spread.ends)
-        refused.append(f"ends at {ends} el deg: {why}")
-    return tuple(refused)
+    for spread in spreads(counts):
+        laid = first_that_fits(design, needs, spread)
+        if isinstance(laid, str):
+            refused.append(laid)
+            continue
+        insulation, barriers = laid
+        tables = [one.table for one in barriers]
+        estimate = estimated_torque_of(gap, design, tables, ANGLE)
+        avoided = is_avoided(spread, slots)
+        found.append(Candidate(spread, insulation, barriers, estimate, avoided))
+    if not found:
+        raise DesignError(Counter(refused).most_common(1)[0][0] if refused else "no room for ends")
+    most = max(one.estimate.mean for one in found)
+    ranked = sorted(found, key=lambda one: _demerit(one, most, best))
+    return FirstRotor(ranked[0], tuple(ranked[1:]))
 
 
-def wished_barriers(design: MachineDesign, needs: RotorNeeds) -> tuple[int, ...]:
-    """Numbers of barriers to choose from, the most welcome first."""
-    if needs.barriers is not None:
-        return (needs.barriers,)
+def first_that_fits(
+    design: MachineDesign, needs: RotorNeeds, spread: Spread
+) -> tuple[float, tuple[FirstBarrier, ...]] | str:
+    """The most air with which a spread passes the checks of shape, or why none does."""
+    why = ""
+    for insulation in INSULATIONS:
+        laid = laid_out(design, needs, spread, insulation)
+        if not isinstance(laid, str):
+            return insulation, laid
+        why = why or laid
+    return why
+
+
+def _demerit(one: Candidate, most_torque: float, usual: int) -> float:
+    """Ripple, with torque lost, unusual numbers of barriers and the published rule charged."""
+    ripple = one.estimate.ripple * (AGAINST_RULE if one.is_avoided else 1.0)
+    if one.estimate.mean <= 0.0:
+        return math.inf
+    lost = math.pow(most_torque / one.estimate.mean, TORQUE_POWER)
+    return ripple * lost * (1.0 + PER_BARRIER * abs(one.spread.barriers - usual))
+
+
+def wished_barriers(design: MachineDesign, needs: RotorNeeds) -> tuple[int, tuple[int, ...]]:
+    """The usual number of barriers, and the numbers to choose from."""
     room = pole_room(design)
     reach = math.pi / (2.0 * room.pole_pairs)
     usable = room.depth
     if room.pole_pairs > 1:  # an arc square to the rim at the d axis goes no deeper
         usable = min(usable, room.rotor_radius * (1.0 - (1.0 - math.sin(reach)) / math.cos(reach)))
-    best = min(4, max(2, round(usable / DEPTH_OF_BARRIER)))
-    return tuple(sorted((2, 3, 4, 5), key=lambda count: abs(count - best)))
+    usual = min(4, max(2, round(usable / DEPTH_OF_BARRIER)))
+    return usual, (2, 3, 4, 5) if needs.barriers is None else (needs.barriers,)
 
 
 def pole_room(design: MachineDesign) -> PoleRoom:
@@ -101,47 +150,52 @@ def laid_out(
     """Barriers and ribs for one spread, or why they cannot be."""
     room, law = pole_room(design), RibLaw()
     widths = [RibWidths(needs.least_rib, 0.0)] * spread.barriers
-    tables: tuple[BarrierDesign, ...] = ()
     for _ in range(TURNS):
-        sides = [width.tangential for width in widths]
-        placed = placed_barriers(room, spread.ends, insulation, sides)
-        if not placed:
-            return "arcs to these ends do not fit between rim and shaft"
-        thin = _thin(design, room, placed)
-        if thin:
-            return thin
-        sheet = 1e-3 * design.rotor.sheet_thickness_mm
-        tables = tuple(
-            barrier_table(one, width, sheet) for one, width in zip(placed, widths, strict=True)
-        )
-        try:
-            loads = rib_loads(
-                tables, room.rotor_radius, room.pole_pairs, needs.density, needs.speed
-            )
-        except ValueError as error:
-            return str(error)
+        tables = _tables(design, spread, insulation, widths)
+        if isinstance(tables, str):
+            return tables
+        loads = rib_loads(tables, room.rotor_radius, room.pole_pairs, needs.density, needs.speed)
         found = [rib_widths(load, needs.least_rib, needs.most_stress, law) for load in loads]
-        if None in found:
-            k = found.index(None) + 1
-            return f"no rib of usual width holds barrier {k} at overspeed"
+        sound = [one for one in found if one is not None]
+        if len(sound) < len(found):
+            return f"no rib of usual width holds barrier {found.index(None) + 1} at overspeed"
         # Wider of both turns, so that it comes to an end.
-        widths = [
+        wider = [
             RibWidths(max(old.tangential, new.tangential), max(old.radial, new.radial))
-            for old, new in zip(widths, (w for w in found if w is not None), strict=True)
+            for old, new in zip(widths, sound, strict=True)
         ]
-    tables = tuple(
-        barrier_table(one, width, sheet) for one, width in zip(placed, widths, strict=True)
-    )
-    rotor = with_barriers(design.rotor, tables)
-    faults = shape_faults(design.model_copy(update={"rotor": rotor}))
-    if faults:
-        return f"{faults[0].keys[0]}: {faults[0].text}"
+        if wider == widths:
+            break
+        widths = wider
+    else:
+        return "ribs and barriers do not settle"
     stresses = [
         rib_stresses(load, width.tangential, width.radial, law).greatest
         for load, width in zip(loads, widths, strict=True)
     ]
     rows = zip(tables, loads, widths, stresses, strict=True)
     return tuple(FirstBarrier(*row) for row in rows)
+
+
+def _tables(
+    design: MachineDesign, spread: Spread, insulation: float, widths: Sequence[RibWidths]
+) -> tuple[BarrierDesign, ...] | str:
+    """Barriers with ribs of given widths, checked, or the first reason why they cannot be."""
+    room = pole_room(design)
+    sides = [width.tangential for width in widths]
+    placed = placed_barriers(room, spread.ends, insulation, sides)
+    if not placed:
+        return "arcs to these ends do not fit between rim and shaft"
+    thin = _thin(design, room, placed)
+    if thin:
+        return thin
+    sheet = 1e-3 * design.rotor.sheet_thickness_mm
+    tables = tuple(
+        barrier_table(one, width, sheet) for one, width in zip(placed, widths, strict=True)
+    )
+    rotor = with_barriers(design.rotor, tables)
+    faults = rotor_faults(design.model_copy(update={"rotor": rotor}))
+    return f"{faults[0].keys[0]}: {faults[0].text}" if faults else tables
 
 
 def with_barriers(rotor: RotorDesign, barriers: Sequence[BarrierDesign]) -> RotorDesign:

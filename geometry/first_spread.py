@@ -15,8 +15,9 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from fractions import Fraction
 
-BEST_DISTANCE = 4  # of n_r from n_s, published
-MOST_ORDER = 3  # k and j up to which orders that meet are counted; common practice, no source
+AVOIDED = (0, 2)  # distances of n_r from n_s, published
+BEST_DISTANCE = 4  # likewise
+FEWEST, MOST = -2, 12  # of n_r over 4 times the barriers: up to three idle places a half pole
 LAST_END = math.radians(84.0)  # an end nearer to the d axis would choke the innermost carrier
 FIRST_END = math.radians(10.0)  # before it there is no room for a barrier
 
@@ -52,41 +53,20 @@ def even_spread(barriers: int) -> Spread:
     return Spread(barriers, 4 * barriers, is_half=True)
 
 
-def spreads(
-    slots_per_pole_pair: Fraction, barriers: Iterable[int], last_end: float = LAST_END
-) -> tuple[Spread, ...]:
-    """All spreads that come into question, the best first.
+def spreads(barriers: Iterable[int]) -> tuple[Spread, ...]:
+    """All spreads of so many barriers a pole, whatever the slots."""
+    found = [
+        Spread(count, places, is_half)
+        for count in barriers
+        for places in range(max(2, 4 * count + FEWEST), 4 * count + MOST + 1, 2)
+        for is_half in (False, True)
+    ]
+    return tuple(s for s in found if s.ends[0] >= FIRST_END and s.ends[-1] <= LAST_END)
 
-    Args:
-        slots_per_pole_pair: of the stator, n_s; not whole where slots are fractional.
-        barriers: of a pole, numbers to choose from, the most welcome first.
-        last_end: electrical angle from the q axis beyond which no barrier can end, rad.
+
+def is_avoided(spread: Spread, slots_per_pole_pair: Fraction) -> bool:
+    """Whether the published rule is against a spread: n_r is n_s or n_s +- 2.
+
+    n_s need not be whole where slots are fractional; an odd one is met by no even n_r.
     """
-    found = []
-    for rank, count in enumerate(barriers):
-        for places in range(4 * count - 2, 4 * count + 13, 2):
-            for is_half in (False, True):
-                spread = Spread(count, places, is_half)
-                if spread.ends[0] >= FIRST_END and spread.ends[-1] <= last_end:
-                    found.append((_merit(spread, slots_per_pole_pair, rank), spread))
-    return tuple(spread for _, spread in sorted(found, key=lambda pair: pair[0]))
-
-
-def meeting(places: int, slots_per_pole_pair: Fraction) -> Fraction:
-    """How much mmf orders of rotor and slots meet: the sum of 1 / (k j)^2 over those that do.
-
-    k n_r +- 1 = j n_s +- 1, so k n_r - j n_s is 0 or +-2. Amplitudes of a staircase fall as 1 over
-    their order, and so 1 / (k j) twice: derived, an estimate.
-    """
-    total = Fraction(0)
-    for k in range(1, MOST_ORDER + 1):
-        for j in range(1, MOST_ORDER + 1):
-            if k * places - j * slots_per_pole_pair in (-2, 0, 2):
-                total += Fraction(1, (k * j) ** 2)
-    return total
-
-
-def _merit(spread: Spread, slots: Fraction, rank: int) -> tuple[Fraction, int, int, int]:
-    """Sorts spreads: orders that meet, the published distance, idle places, barriers wished."""
-    distance = abs(abs(spread.places - slots) - BEST_DISTANCE)
-    return (meeting(spread.places, slots), math.ceil(distance), spread.idle, rank)
+    return abs(spread.places - slots_per_pole_pair) in AVOIDED

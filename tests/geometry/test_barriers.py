@@ -183,3 +183,12 @@ def test_ribs_without_size_are_an_error(changes, text):
     """A missing key is named."""
     with pytest.raises(ValueError, match=text):
         outlines(STRAIGHT, **changes)
+
+
+def test_an_arc_flat_to_rounding_is_an_error():
+    """End and bottom of one height to 1e-17 m: no arc, and no division by zero in the checks."""
+    barrier = BarrierDesign(
+        shape="arc", end_angle_deg=60.0, thickness_mm=2.08, depth_mm=9.63, tangential_rib_mm=0.6
+    )
+    with pytest.raises(ValueError, match="no further out than its bottom"):
+        half_barrier(barrier, 19.7 * MM, 1)
