@@ -9,11 +9,12 @@ notch and a barrier the stated width of its tangential rib is kept: no notch mak
 import cmath
 import re
 from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 from functools import lru_cache
 from itertools import chain, combinations, pairwise
 
 from .corners import foot, is_within
-from .curves import Edge, line
+from .curves import Edge, Point, line
 from .design import MachineDesign
 from .detail_places import places, poles_apart
 from .detail_sizes import (
@@ -29,7 +30,7 @@ from .detail_sizes import (
 from .distances import distance
 from .enclosure import encloses
 from .remedies import Fault
-from .rotor import bare_pole, rotor_regions
+from .rotor import bare_pole, cavities, following
 from .rotor_outline import CutOut, RotorOutline
 from .section import Region
 from .unlike_poles import of_all_poles
@@ -122,29 +123,53 @@ def _has_span(design: MachineDesign, table: str) -> bool:
     return match is not None and design.rotor.hole[int(match[1]) - 1].span_deg is not None
 
 
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """A chain of edges with a circle about it, and one about each edge, for a quick look."""
+
+    edges: tuple[Edge, ...]
+    centre: Point
+    reach: float  # m
+    spots: tuple[tuple[Point, float], ...]  # middle of each edge, half its length
+
+
+def _part(edges: Sequence[Edge]) -> _Part:
+    points = [point for edge in edges for point in (edge.start, edge.point(0.5))]
+    points.append(edges[-1].end)
+    xs, ys = [point.real for point in points], [point.imag for point in points]
+    centre = 0.5 * complex(min(xs) + max(xs), min(ys) + max(ys))
+    spots = tuple((edge.point(0.5), 0.5 * edge.length) for edge in edges)
+    # No point of an edge lies further than a quarter of its length from its ends and its middle.
+    reach = max(abs(point - centre) for point in points) + 0.5 * max(half for _, half in spots)
+    return _Part(tuple(edges), centre, reach, spots)
+
+
 def _webs(
     design: MachineDesign, pole: DetailPole, outline: RotorOutline
 ) -> Iterator[tuple[CutOut, str, str, float, float]]:
     """Each web beside a detail: detail, kind and name of the neighbour, width, least width."""
-    sheet = pole.sheet
+    sheet, on_sides = pole.sheet, _on_sides(outline)
     turn = cmath.exp(2j * pole.half_pitch)
-    sides = (line(0j, 2.0 * pole.rotor_radius), line(0j, 2.0 * pole.rotor_radius * turn))
-    cavities = _cavities(design)
-    for one in outline.cut_outs:
+    sides = _part((line(2.0 * pole.rotor_radius * turn, 0j), line(0j, 2.0 * pole.rotor_radius)))
+    rim, bore = _part(outline.gap_side), _part(outline.shaft_side)
+    cavities, parts = _cavities(design), [_part(one.wall) for one in outline.cut_outs]
+    for one, part in zip(outline.cut_outs, parts, strict=True):
         kind = one.key.split(".")[1][:4]
-        if one.region.name not in _on_sides(outline):
-            yield one, "side", "the d axis", _clear(one, sides, sheet), sheet
+        if one.region.name not in on_sides:
+            yield one, "side", "the d axis", _clear(part, sides, sheet), sheet
         if kind != "notc":
-            yield one, "rim", "the rim", _clear(one, outline.gap_side, sheet), sheet
+            yield one, "rim", "the rim", _clear(part, rim, sheet), sheet
         if kind != "keyw":
-            yield one, "bore", "the bore", _clear(one, outline.shaft_side, sheet), sheet
-        for number, region in cavities:
+            yield one, "bore", "the bore", _clear(part, bore, sheet), sheet
+        for number, region, cavity in cavities:
             rib = MM * design.rotor.barrier[number - 1].tangential_rib_mm
             least = max(sheet, rib) if kind == "notc" else sheet
-            web = _apart(one, region, least)
+            web = _apart((part, one.region), (cavity, region), least)
             yield one, "barrier", f"barrier {number}", web, least
-    for first, second in combinations(outline.cut_outs, 2):
-        web = _apart(second, first.region, sheet)
+    for (first, part), (second, other) in combinations(
+        zip(outline.cut_outs, parts, strict=True), 2
+    ):
+        web = _apart((other, second.region), (part, first.region), sheet)
         name = "its mirror image" if first.key == second.key else first.key
         yield second, "detail", name, web, sheet
 
@@ -159,42 +184,50 @@ def _on_sides(outline: RotorOutline) -> set[str]:
     }
 
 
-def _apart(one: CutOut, other: Region, least: float) -> float:
-    """Iron between a detail and another cut-out in m; 0 or less where one holds the other."""
-    web = _clear(one, other.outer.edges, least)
-    if web > 0.0 and (
-        encloses(other.outer, one.wall[0].start)
-        or encloses(one.region.outer, other.outer.edges[0].start)
-    ):
+def _apart(one: tuple[_Part, Region], other: tuple[_Part, Region], least: float) -> float:
+    """Iron between two cut-outs in m; 0 or less where one holds the other."""
+    if _far(one[0], other[0], least):
+        return least
+    web = _clear(one[0], other[0], least)
+    if web > 0.0 and (_holds(one, other[0]) or _holds(other, one[0])):
         return -least
     return web
 
 
-def _clear(one: CutOut, edges: Sequence[Edge], least: float) -> float:
-    """Distance in m from a detail to a chain; not looked at closely where it is `least` or more.
+def _holds(outer: tuple[_Part, Region], inner: _Part) -> bool:
+    point = inner.edges[0].start
+    is_near = abs(point - outer[0].centre) <= outer[0].reach
+    return is_near and encloses(outer[1].outer, point)
 
-    Edges that stay clear of the circle about the detail by that much need no exact distance: most.
+
+def _far(one: _Part, other: _Part, least: float) -> bool:
+    return abs(one.centre - other.centre) >= one.reach + other.reach + least + SLACK
+
+
+def _clear(one: _Part, other: _Part, least: float) -> float:
+    """Distance in m between two parts; not looked at closely where it is `least` or more.
+
+    Edges that stay clear of the circle about the first need no exact distance: most.
     """
-    points = [point for edge in one.wall for point in (edge.start, edge.point(0.5), edge.end)]
-    centre = 0.5 * (
-        complex(min(p.real for p in points), min(p.imag for p in points))
-        + complex(max(p.real for p in points), max(p.imag for p in points))
-    )
-    # No point of an edge lies further than a quarter of its length from its ends and its middle.
-    reach = max(abs(point - centre) for point in points)
-    reach += 0.25 * max(edge.length for edge in one.wall) + least + SLACK
-    near = [edge for edge in edges if _to_point(edge, centre) <= reach]
-    return distance(one.wall, near) if near else least
+    if _far(one, other, least):
+        return least
+    room = one.reach + least + SLACK
+    near = [
+        edge
+        for edge, (middle, half) in zip(other.edges, other.spots, strict=True)
+        if abs(middle - one.centre) - half <= room and _to_point(edge, one.centre) <= room
+    ]
+    return distance(one.edges, near, least + SLACK) if near else least
 
 
-def _to_point(edge: Edge, point: complex) -> float:
+def _to_point(edge: Edge, point: Point) -> float:
     """Distance in m from an edge to a point."""
     away = min(abs(edge.start - point), abs(edge.end - point))
     at = foot(edge, point)
     return min(away, abs(at - point)) if is_within(edge, at) else away
 
 
-def _cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
+def _cavities(design: MachineDesign) -> tuple[tuple[int, Region, _Part], ...]:
     """Cavities with their barrier's number; none where the barriers cannot be drawn."""
     bare = {"notch": (), "hole": (), "keyway": None}
     rotor = design.rotor.model_copy(update=bare)
@@ -202,10 +235,9 @@ def _cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
 
 
 @lru_cache(maxsize=8)  # while a detail's key is tried, the barriers stay
-def _bare_cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
+def _bare_cavities(design: MachineDesign) -> tuple[tuple[int, Region, _Part], ...]:
     try:
-        regions, _ = rotor_regions(design)
+        found = cavities(following(design))
     except ValueError:
         return ()  # the barriers' own checks say why
-    found = ((re.match(r"barrier_(\d+)", region.name), region) for region in regions)
-    return tuple((int(match[1]), region) for match, region in found if match)
+    return tuple((number, region, _part(region.outer.edges)) for number, region in found)

@@ -6,7 +6,8 @@ first that does not the end is closed in by bisection, sped up by what the fault
 and rounded inward. All checks are tried once more at the rounded ends. What fits again beyond a
 fault is not looked for, and a fault that only a stretch shorter than a step has may be missed.
 
-Cost measured, one core: 0.7 s for 26 keys of a rotor with three arc barriers.
+Cost measured, one core: 0.7 s for 26 keys of a rotor with three arc barriers, 9 s for 39 keys of
+one with notches, holes, keyways and an eccentric rim besides.
 """
 
 import math

@@ -6,12 +6,13 @@ where the d axis lies at angle 0.
 
 import cmath
 from collections.abc import Sequence
+from functools import lru_cache
 
 from .bands import band_of
 from .cavities import cut_barrier
 from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
-from .detail_places import key_places, rotor_period
+from .detail_places import Places, key_places, rotor_period
 from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
@@ -65,12 +66,11 @@ def rotor_regions(
     design = following(design)
     air: list[Region] = []
     ribs: list[Rib] = []
+    bare = cavities(design)
     for place, barrier in enumerate(design.rotor.barrier, start=1):
-        paths, barrier_ribs = _barrier(place, barrier, frame)
-        names = cavity_names(place, len(paths))
-        own = [Region(name, "air", path) for name, path in zip(names, paths, strict=True)]
+        own = [region for at, region in bare if at == place]
         air += with_magnets(place, barrier.magnet, own, frame.q_axis)
-        ribs += barrier_ribs
+        ribs += _barrier(place, barrier, frame)[1]
     pole = bare_pole(design, number)
     holes = tuple(reversed_path(region.outer) for region in air if region.material == "air")
     return (
@@ -82,6 +82,26 @@ def rotor_regions(
     ), tuple(ribs_to_rim(ribs, air, rim_of(design)))
 
 
+def cavities(design: MachineDesign) -> tuple[tuple[int, Region], ...]:
+    """Cavities of one pole with their barrier's number, from 1, as without magnets.
+
+    Args:
+        design: as `following` gives it.
+
+    Raises:
+        ValueError: for a barrier that cannot be drawn.
+    """
+    frame = rotor_frame(design)
+    found = []
+    for place, barrier in enumerate(design.rotor.barrier, start=1):
+        paths, _ = _barrier(place, barrier, frame)
+        names = cavity_names(place, len(paths))
+        found += [
+            (place, Region(name, "air", path)) for name, path in zip(names, paths, strict=True)
+        ]
+    return tuple(found)
+
+
 def cavity_names(number: int, count: int) -> tuple[str, ...]:
     """Names of the cavities of a barrier, counter-clockwise; one cavity has no letter."""
     if count == 1:
@@ -89,9 +109,10 @@ def cavity_names(number: int, count: int) -> tuple[str, ...]:
     return tuple(f"barrier_{number}_{letter}" for letter in LETTERS[:count])
 
 
+@lru_cache(maxsize=64)  # while one key is tried, most barriers stay
 def _barrier(
     number: int, barrier: BarrierDesign, frame: RotorFrame
-) -> tuple[list[Path], list[Rib]]:
+) -> tuple[tuple[Path, ...], tuple[Rib, ...]]:
     upper, lower = halves(barrier, frame.rotor_radius, frame.pole_pairs)
     cut = cut_barrier(band_of(upper, lower), rib_cuts(barrier))
     ribs = _tangential_ribs(number, upper, lower) + [
@@ -99,8 +120,8 @@ def _barrier(
         for letter, (start, end) in zip(LETTERS, cut.ribs, strict=False)
     ]
     turn = cmath.exp(1j * frame.q_axis)
-    placed = [Rib(r.name, r.kind, r.barrier, r.start * turn, r.end * turn) for r in ribs]
-    return [turned(path, frame.q_axis) for path in cut.cavities], placed
+    placed = tuple(Rib(r.name, r.kind, r.barrier, r.start * turn, r.end * turn) for r in ribs)
+    return tuple(turned(path, frame.q_axis) for path in cut.cavities), placed
 
 
 def _tangential_ribs(number: int, upper: HalfBarrier, lower: HalfBarrier) -> list[Rib]:
@@ -113,7 +134,14 @@ def _tangential_ribs(number: int, upper: HalfBarrier, lower: HalfBarrier) -> lis
 
 def bare_pole(design: MachineDesign, number: int = 0) -> RotorOutline:
     """Pole `number`, from 0, with its details, before barriers are cut, in the rotor's frame."""
-    frame, keys = rotor_frame(design), key_places(design, number)
+    rotor = design.rotor.model_copy(update={"barrier": (), "alternate_barrier": ()})
+    keys = key_places(design, number)
+    return _bare_pole(design.model_copy(update={"rotor": rotor}), keys)
+
+
+@lru_cache(maxsize=8)  # while a barrier's key is tried, what is round it stays
+def _bare_pole(design: MachineDesign, keys: Places) -> RotorOutline:
+    frame = rotor_frame(design)
     return rotor_outline(design, _rim(design), frame.shaft_radius, 2.0 * frame.q_axis, keys)
 
 

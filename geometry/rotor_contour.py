@@ -17,6 +17,7 @@ import cmath
 import math
 from collections.abc import Sequence
 from dataclasses import replace
+from functools import lru_cache
 
 from .curves import Edge, Point, arc, line, mirrored_edge, reversed_edge, turned_edge
 from .cut_outs import across, turned_edges
@@ -124,16 +125,18 @@ def followed(design: MachineDesign, rotor_radius: float, rim: Sequence[Edge]) ->
     Returns:
         The design; a barrier that has no outline, or cannot follow, is left as it is.
     """
+    shape = tuple(rim)
     own, other = (
-        tuple(_both_halves(barrier, rotor_radius, design.pole_pairs, rim) for barrier in barriers)
+        tuple(_both_halves(barrier, rotor_radius, design.pole_pairs, shape) for barrier in barriers)
         for barriers in (design.rotor.barrier, design.rotor.alternate_barrier)
     )
     rotor = design.rotor.model_copy(update={"barrier": own, "alternate_barrier": other})
     return design.model_copy(update={"rotor": rotor})
 
 
+@lru_cache(maxsize=64)  # while one key is tried, most barriers and the rim stay
 def _both_halves(
-    barrier: BarrierDesign, rotor_radius: float, pole_pairs: int, rim: Sequence[Edge]
+    barrier: BarrierDesign, rotor_radius: float, pole_pairs: int, rim: tuple[Edge, ...]
 ) -> BarrierDesign:
     """The barrier with the ribs of both halves following; as it is where one cannot."""
     try:
