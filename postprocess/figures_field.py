@@ -28,7 +28,8 @@ from lamwright.solver.isoparametric import NODE_PLACES, gradients_at, shape
 from lamwright.solver.types import FieldSolution, FloatArray, IntArray, SectorMesh
 
 from .figures_labels import RULER_FOOT, draw_note, draw_ruler, place_callouts
-from .figures_section import bare, draw_cut, pole_silhouette, write_axis_name
+from .figures_section import bare
+from .figures_sector import draw_cut, pole_silhouette, write_axis_name
 from .figures_style import (
     MM,
     QUARTERS,

@@ -24,6 +24,7 @@ from lamwright.geometry.section import (
 
 from .figures_labels import RULER_FOOT, Callout, FloatArray, Side, draw_ruler, place_callouts
 from .figures_magnets import draw_arrows, magnet_callouts
+from .figures_sector import break_off, break_radius, draw_axes_lines, pole_silhouette
 from .figures_style import (
     DRAWN_AS,
     FILLS,
@@ -41,8 +42,6 @@ from .figures_style import (
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
-AXIS_OVERHANG = 1.05  # how far a d or q axis line reaches, over the stator's radius
-LETTER_ROOM = 1.13  # how far its letters reach
 LEAST_OPENING = 1e-5  # m, less is no space worth a name
 SAME_WIDTH = 1e-6  # m, ribs this near in width are told once
 
@@ -59,9 +58,10 @@ def draw_section(ax: Axes, section: CrossSection, style: Style) -> None:
     turn = upright(section)
     draw_materials(ax, section, [turn], style)
     draw_arrows(ax, section, [turn], style)
+    break_off(ax, section, style)
     draw_axes_lines(ax, section, turn, style)
     callouts = section_callouts(section, turn)
-    place_callouts(ax, pole_silhouette(section), callouts, style, RULER_FOOT)
+    place_callouts(ax, pole_silhouette(section, break_radius(section)), callouts, style, RULER_FOOT)
     draw_ruler(ax, style)
     bare(ax)
 
@@ -126,66 +126,6 @@ def draw_materials(
     ax.add_artist(lines)
 
 
-def draw_axes_lines(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
-    """Draw all d and q axes of a sector whose first d axis points along `turn`."""
-    half = math.pi / (2 * section.pole_pairs)
-    count = 2 * section.sector_poles + (not section.is_full_circle)
-    for k in range(count):
-        name = "q axis" if k % 2 else "d axis"
-        along = turn * cmath.exp(1j * k * half)
-        tip = AXIS_OVERHANG * MM * section.stator_outer_radius * along
-        ax.plot(
-            [0.0, tip.real],
-            [0.0, tip.imag],
-            color=style.quiet,
-            linewidth=style.outline,
-            dashes=(9, 2.5, 1.5, 2.5),
-            zorder=5,
-        )
-        write_axis_name(ax, tip * 1.012, name, section, style)
-
-
-def write_axis_name(ax: Axes, at: complex, name: str, section: CrossSection, style: Style) -> None:
-    """Write the name of a d or q axis at its tip in mm, clear of the stator."""
-    along = at / abs(at)
-    is_above = section.sector_poles == 1 or along.imag > 0.5
-    level = "bottom" if is_above else "top" if along.imag < -0.5 else "center"
-    side = "center" if is_above or along.imag < -0.5 else "left" if along.real > 0.0 else "right"
-    ax.text(
-        at.real,
-        at.imag,
-        name,
-        fontsize=style.text,
-        fontstyle="italic",
-        color=style.quiet,
-        ha=side,
-        va=level,
-    )
-
-
-def draw_cut(
-    ax: Axes, section: CrossSection, turn: complex, span: tuple[float, float], style: Style
-) -> None:
-    """Draw both sides of a sector from one radius to another (m), where the picture is cut."""
-    for angle in () if section.is_full_circle else (0.0, section.sector_angle):
-        ends = MM * np.array(span) * turn * cmath.exp(1j * angle)
-        ax.plot(ends.real, ends.imag, color=style.quiet, linewidth=style.hair, zorder=3)
-
-
-def pole_silhouette(section: CrossSection) -> ComplexArray:
-    """A line (n,) in mm around an upright sector and the letters of its axes."""
-    half = 0.5 * section.sector_angle
-    outer = MM * section.stator_outer_radius
-    share = np.linspace(0.0, 1.0, 120)
-    arc = outer * np.exp(1j * (math.pi / 2 - half + 2 * half * share))
-    apex = -0.03j * outer
-    right, left = LETTER_ROOM * arc[0], LETTER_ROOM * arc[-1]
-    top = np.array([arc[60] * LETTER_ROOM])
-    return np.concatenate(
-        [apex + (right - apex) * share, arc, top, arc[60:], left + (apex - left) * share]
-    )
-
-
 def section_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     """Names of all parts of an upright sector, each with the point it names, in mm."""
     found = _rotor_callouts(section, turn) + _stator_callouts(section, turn)
@@ -230,6 +170,7 @@ def _stator_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     bottom, top = max(r.max() for r in reach), min(r.min() for r in reach)
     # Left of the middle, clear of the column of labels.
     slot = (2 * count) // 3 if section.sector_poles == 1 else count // 2
+    slot = min(slot, count - 2)  # tooth and gap are named one slot further, inside the sector
 
     def at(radius: float, pitches: float) -> complex:
         return radius * cmath.exp(1j * pitch * pitches) * turn

@@ -20,7 +20,8 @@ from lamwright.solver.isoparametric import boundary_edges
 from lamwright.solver.types import IntArray, StressSolution
 
 from .figures_labels import RULER_FOOT, Callout, Side, draw_note, draw_ruler, place_callouts
-from .figures_section import bare, draw_cut, pole_words
+from .figures_section import bare, pole_words
+from .figures_sector import draw_cut
 from .figures_style import (
     MM,
     QUARTERS,
