@@ -11,13 +11,7 @@ from pathlib import Path
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import read_steel_card
 from lamwright.geometry.errors import DesignError, LamwrightError
-from lamwright.geometry.first_design import (
-    FirstDesign,
-    Wishes,
-    first_design,
-    usual_gap,
-    usual_shaft,
-)
+from lamwright.geometry.first_design import FirstDesign, first_design
 from lamwright.geometry.first_notes import checked_tables
 from lamwright.geometry.first_source import (
     StatorSource,
@@ -28,10 +22,10 @@ from lamwright.geometry.first_source import (
 )
 from lamwright.geometry.first_stator import MainSizes
 from lamwright.geometry.first_text import design_text
+from lamwright.geometry.first_wishes import RPM, Wishes, usual_gap, usual_shaft
 from lamwright.geometry.whole_file import write_text
 
 MM = 1e-3  # m
-RPM = 9.549296585513721  # 1/min per rad/s
 STACKING = 0.97
 WANTED_MARGIN = 1.2  # of the stress solution at overspeed
 MOST_ROUNDS = 4

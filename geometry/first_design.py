@@ -7,23 +7,18 @@ together, checked, and written down with the reason for every number.
 
 import math
 from dataclasses import dataclass
-from fractions import Fraction
 
 from .checks import check_design
-from .design import MachineDesign, StatorDesign, SteelCard
+from .design import MachineDesign
 from .drawn_slot import layered
 from .errors import DesignError
-from .first_barriers import shares
+from .first_notes import barrier_tables
 from .first_rotor import (
     ANGLE,
-    Candidate,
-    FirstBarrier,
     FirstRotor,
     RotorNeeds,
     first_rotor,
-    pole_room,
 )
-from .first_spread import AVOIDED, BEST_DISTANCE
 from .first_text import Data, DesignTable, Line, design_data
 from .first_winding import (
     CURRENT_DENSITY,
@@ -34,37 +29,14 @@ from .first_winding import (
     rated_current,
     winding_table_of,
 )
+from .first_wishes import RPM, Wishes
 from .slot_outline import slot_copper_area
 from .star_of_slots import is_balanced, nearest_poles, nearest_slots
 from .winding import winding_factor, winding_table
 
-RPM = 30.0 / math.pi  # 1/min per rad/s
 OVERSPEED = 1.2
-AIMED_MARGIN = 1.3  # yield over the stress by the rib law, which errs
 SATURATION = 1.5  # of the gap by slots and steel, assumed
 TORQUE_SHARE = 0.5  # of the estimated torque that the limit asks for
-
-
-@dataclass(frozen=True, slots=True)
-class Wishes:
-    """What a first design is made from; lengths in m, speeds in rad/s."""
-
-    name: str
-    stator: StatorDesign
-    stator_table: DesignTable  # as it will be written
-    winding_table: DesignTable | None  # likewise; None to make one
-    poles: int
-    maximum_speed: float
-    rated_speed: float
-    supply_voltage: float  # rms between lines
-    barriers: int | None
-    gap: float
-    shaft_diameter: float
-    sheet: float
-    rib_factor: float  # least rib over the sheet's thickness
-    steel: SteelCard
-    steel_file: str  # as written in the design file
-    rib_margin: float = AIMED_MARGIN  # yield over the stress by the rib law
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,17 +46,6 @@ class FirstDesign:
     design: MachineDesign
     tables: tuple[DesignTable, ...]
     rotor: FirstRotor
-
-
-def usual_gap(bore: float) -> float:
-    """A radial air gap in m for a bore in m: common practice, no source."""
-    return 5e-5 * round(max(2.5e-4, 2.0e-4 + 2.7e-3 * bore) / 5e-5)
-
-
-def usual_shaft(bore: float, poles: int) -> float:
-    """A shaft diameter in m for a bore in m: common practice, no source."""
-    share = 0.22 if poles == 2 else 0.32
-    return 5e-4 * round(share * bore / 5e-4)
 
 
 def first_design(wishes: Wishes) -> FirstDesign:
@@ -100,24 +61,29 @@ def first_design(wishes: Wishes) -> FirstDesign:
     placeholder = DesignTable("rotor.barrier", _barrier_lines(_DRAFT_BARRIER))
     rest = [_steel_table(wishes), _duty_table(wishes, winding)]
     design = _machine(wishes, [*tables, placeholder, *rest, _LIMITS])
-    needs = RotorNeeds(
-        speed=OVERSPEED * wishes.maximum_speed,
-        density=wishes.steel.density_kg_per_m3.value,
-        most_stress=1e6 * wishes.steel.yield_strength_mpa.value / wishes.rib_margin,
-        least_rib=wishes.rib_factor * wishes.sheet,
-        barriers=wishes.barriers,
-    )
+    needs = rotor_needs(wishes)
     try:
         rotor = first_rotor(design, needs)
     except DesignError as error:
         raise DesignError(_none_found(wishes, str(error))) from None
-    barriers = _barrier_tables(design, wishes, needs, rotor)
+    barriers = barrier_tables(design, wishes, needs, rotor)
     whole = (*tables, *barriers, *rest, _limits_table(wishes, design))
     design = _machine(wishes, whole)
     findings = check_design(design)
     if findings:
         raise DesignError("\n".join(finding.text for finding in findings))
     return FirstDesign(design, whole, rotor)
+
+
+def rotor_needs(wishes: Wishes) -> RotorNeeds:
+    """What the barriers and ribs follow from."""
+    return RotorNeeds(
+        speed=OVERSPEED * wishes.maximum_speed,
+        density=wishes.steel.density_kg_per_m3.value,
+        most_stress=1e6 * wishes.steel.yield_strength_mpa.value / wishes.rib_margin,
+        least_rib=wishes.rib_factor * wishes.sheet,
+        barriers=wishes.barriers,
+    )
 
 
 def _raise_if_unbalanced(wishes: Wishes) -> None:
@@ -326,74 +292,3 @@ def _barrier_lines(values: Data) -> tuple[Line, ...]:
         assert isinstance(value, str | int | float)
         lines.append(Line(key, value))
     return tuple(lines)
-
-
-def _barrier_tables(
-    design: MachineDesign, wishes: Wishes, needs: RotorNeeds, rotor: FirstRotor
-) -> tuple[DesignTable, ...]:
-    """The tables of the barriers with the reasons of their numbers."""
-    taken = rotor.taken
-    share = shares(taken.spread.ends)
-    tables = []
-    for k, one in enumerate(taken.barriers):
-        why = {
-            "end_angle_deg": f"{math.degrees(taken.spread.ends[k]):.2f} el deg / "
-            f"{design.pole_pairs} pole pairs.",
-            "thickness_mm": f"{share.barriers[k]:.3f} of the air, its share of the q-axis mmf "
-            "drop.",
-            "depth_mm": f"The carrier outside has {share.carriers[k]:.3f} of the iron, its share "
-            "of the d axis's flux, and more where the arc would lie flatter to the rim than 45 "
-            "degrees.",
-            "end_thickness_mm": "At most half the places at the rim, so that flux gets in between.",
-            "tangential_rib_mm": _rib_reason(wishes, needs, one),
-            "radial_ribs": "Tangential ribs alone would be too thick: one on the q axis.",
-            "fillet_mm": "A third of the thickness, or a full round.",
-        }
-        values = one.table.model_dump(exclude_unset=True)
-        lines = tuple(Line(key, value, why.get(key, "")) for key, value in values.items())
-        about = _spread_reason(design, rotor) if k == 0 else ""
-        tables.append(DesignTable("rotor.barrier", lines, about))
-    return tuple(tables)
-
-
-def _rib_reason(wishes: Wishes, needs: RotorNeeds, one: FirstBarrier) -> str:
-    return (
-        f"At {RPM * needs.speed:.0f} rpm {1e-3 * one.load.force:.4g} N per mm of stack hang "
-        f"outside; stress by formula {1e-6 * one.stress:.0f} MPa, allowed "
-        f"{1e-6 * needs.most_stress:.0f} MPa = yield / {wishes.rib_margin:.2f}; not under "
-        f"{wishes.rib_factor:g} x sheet (derived, see geometry/first_ribs.py)."
-    )
-
-
-def _spread_reason(design: MachineDesign, rotor: FirstRotor) -> str:
-    taken, room = rotor.taken, pole_room(design)
-    slots = Fraction(design.stator.slots, design.pole_pairs)
-    air = sum(1e-3 * one.table.thickness_mm for one in taken.barriers)
-    lines = [
-        f"Barriers. Ends stand on n_r = {taken.spread.places} places equally spaced round a pole "
-        f"pair, against n_s = {float(slots):g} slots. The published rule: n_r not n_s nor "
-        f"n_s +-{AVOIDED[1]}, best n_s +-{BEST_DISTANCE} (Vagati, Pastorelli, Franceschini, "
-        "Petrache 1998, from memory). Among all such spreads of 2 to 5 barriers this one has the "
-        f"least ripple by a linear mmf model, {_percent(taken)} (derived, like Bianchi, Bolognani, Bon, "
-        "Dai Pre 2009; geometry/first_ripple.py). It ranks rotors; real ripple is mostly lower.",
-        *(f"Not taken: {_candidate_text(other)}." for other in rotor.others[:3]),
-        f"Insulation ratio {taken.insulation:g} of the depth that barriers and carriers share, "
-        f"{air / room.depth:.3f} of rim to shaft; usual 0.3 to 0.5 (common practice).",
-        "Carriers: widths as the d axis's flux through them, cos e_k - cos e_(k+1); thicknesses as "
-        "the q axis's mmf drop between them (derived; Vagati et al. 1992, from memory).",
-    ]
-    if taken.is_avoided:
-        lines.insert(
-            1, "The rule is against this n_r: all others have over 1.6 times its estimated ripple."
-        )
-    return "\n".join(lines)
-
-
-def _candidate_text(one: Candidate) -> str:
-    ends = ", ".join(f"{math.degrees(end):.1f}" for end in one.spread.ends)
-    rule = ", against the rule" if one.is_avoided else ""
-    return f"{one.spread.places} places, ends at {ends} el deg: {_percent(one)}{rule}"
-
-
-def _percent(one: Candidate) -> str:
-    return f"{100.0 * one.estimate.ripple:.0f} %"
