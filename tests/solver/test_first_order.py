@@ -15,14 +15,18 @@ from lamwright.solver.pattern import node_values
 
 
 def test_a_linear_function_is_carried_exactly():
-    """Corners and the middles of straight edges; a curved edge's middle is off by its sagitta."""
+    """Corners and the middles of straight edges.
+
+    A curved edge's middle is off by its sagitta, 0.15 of the chord at most (in the shaft).
+    """
     sector = shipped("demo_24s4p_arc", 1.6).sector
     corners, lift = first_order(sector)
     values = np.concatenate([corners.rotor.nodes, corners.stator.nodes])
     nodes, _ = joined_parts(sector)
     miss = np.hypot(*(np.stack([lift(v) for v in values.T], axis=1) - nodes).T)
-    assert np.median(miss) < 1e-12
-    assert miss.max() < 2e-5  # m, of edges a millimetre long
+    start, end = values[lift.parents].transpose(1, 0, 2)
+    assert np.median(miss) < 1e-12  # m
+    assert np.all(miss <= 0.2 * np.hypot(*(end - start).T))
 
 
 def test_the_first_guess_is_a_field_of_the_same_machine():
