@@ -15,6 +15,7 @@ import numpy as np
 
 from lamwright.geometry.section import (
     CrossSection,
+    Material,
     Region,
     Rib,
     base_name,
@@ -22,6 +23,7 @@ from lamwright.geometry.section import (
     rotor_cell,
 )
 
+from .figures_details import detail_callouts, unlike_poles
 from .figures_labels import RULER_FOOT, Callout, FloatArray, Side, draw_ruler, place_callouts
 from .figures_magnets import draw_arrows, magnet_callouts
 from .figures_sector import break_off, break_radius, draw_axes_lines, pole_silhouette
@@ -86,7 +88,11 @@ def draw_key(ax: Axes, section: CrossSection, style: Style) -> None:
     ax.set_axis_off()
     rows = _dimensions(section)
     used = {region.material for region in (*section.rotor, *section.stator)}
-    names = [(material, name) for material, name in MATERIAL_NAMES.items() if material in used]
+    alike: dict[Material, list[str]] = {}
+    for material, name in MATERIAL_NAMES.items():
+        if material in used:
+            alike.setdefault(DRAWN_AS.get(material, material), []).append(name)
+    names = [(material, ", ".join(words)) for material, words in alike.items()]
     step = 1.0 / (len(rows) + len(names) + 1)
     for k, (name, value) in enumerate(rows):
         y = 1.0 - (k + 0.5) * step
@@ -95,8 +101,7 @@ def draw_key(ax: Axes, section: CrossSection, style: Style) -> None:
     for k, (material, name) in enumerate(names):
         y = 1.0 - (len(rows) + 1.5 + k) * step
         patch = Rectangle((0.0, y - 0.36 * step), 0.16, 0.72 * step)
-        fill = FILLS[DRAWN_AS.get(material, material)]
-        patch.set(facecolor=fill, edgecolor=style.ink, linewidth=style.hair)
+        patch.set(facecolor=FILLS[material], edgecolor=style.ink, linewidth=style.hair)
         ax.add_artist(patch)
         ax.text(0.22, y, name, fontsize=style.text, color=style.ink, va="center")
 
@@ -136,15 +141,18 @@ def _rotor_callouts(section: CrossSection, turn: complex) -> list[Callout]:
     found: list[Callout] = []
     anchors: list[complex] = []
     cell = rotor_cell(section)
-    outlines = _barrier_outlines(cell, turn)
+    named = unlike_poles(cell)
+    outlines = {
+        key: outline for key, outline in _barrier_outlines(cell, turn).items() if key[0] in named
+    }
     for (pole, number), outline in outlines.items():
         anchors.append(_arm_point(outline))
         text = f"flux barrier {number}{pole_words(pole)}"
         found.append(Callout(text, anchors[-1], _side(pole, anchors[-1])))
     first = {number: outline for (pole, number), outline in outlines.items() if pole == 1}
     found.append(Callout("flux carrier", _carrier_point(section, turn, first, anchors), "right"))
-    found += magnet_callouts(cell, turn)
-    for rib in _right_hand(cell.ribs, turn):
+    found += magnet_callouts(cell, turn) + detail_callouts(cell, turn)
+    for rib in _right_hand(tuple(rib for rib in cell.ribs if pole_of(rib.name) in named), turn):
         pole = pole_of(rib.name)
         text = f"{rib.kind} rib {rib.barrier}{pole_words(pole)}, {MM * rib.width:.2f} mm"
         middle = 0.5 * (rib.start + rib.end) * turn

@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lamwright.geometry.section import CrossSection, Rib, pole_of, rotor_cell
+from lamwright.geometry.section import CrossSection, Rib, base_name, pole_of, rotor_cell
 from lamwright.solver.isoparametric import boundary_edges
 from lamwright.solver.types import IntArray, StressSolution
 
@@ -41,6 +41,7 @@ if TYPE_CHECKING:
 MPA = 1e-6  # MPa per Pa
 RPM = 30.0 / math.pi  # 1/min per rad/s
 EXAGGERATION = 0.025  # largest drawn displacement over the rotor's radius
+MOST_NAMED = 24  # ribs of a rotor that all have their names beside them
 CLOSE_UP = 2.6  # half the side of a close-up over the rib's width
 LEAST_CLOSE_UP = 1.0  # mm, half the side of a close-up at least
 PEAK_INSIDE = 1.25  # half the side of a close-up over the way from the rib's middle to its peak
@@ -189,7 +190,7 @@ def _rotor_silhouette(section: CrossSection) -> ComplexArray:
 def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
     """Each rib's peak on its own side; ribs on the q axis go where there is more room."""
     most = max(row.peak for row in report.ribs)
-    rows = [(row, MM * turn * row.peak_at, row.rib) for row in report.ribs]
+    rows = [(row, MM * turn * row.peak_at, row.rib) for row in _named(report.ribs)]
     ribs = [row.rib for row in report.ribs]
     found: list[Callout] = []
     middle = []
@@ -206,6 +207,18 @@ def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
         side: Side = "right" if count["right"] <= count["left"] else "left"
         found.append(Callout(text, anchor, side, is_most))
     return found
+
+
+def _named(rows: Sequence[RibStress]) -> list[RibStress]:
+    """All ribs, or of each rib of a pole the most stressed in any, where names would not fit."""
+    if len(rows) <= MOST_NAMED:
+        return list(rows)
+    best: dict[str, RibStress] = {}
+    for row in rows:
+        name = base_name(row.rib.name)
+        if name not in best or row.peak > best[name].peak:
+            best[name] = row
+    return list(best.values())
 
 
 def _places(solution: StressSolution) -> ComplexArray:

@@ -14,6 +14,7 @@ from lamwright.geometry.section import CrossSection, Material, base_name, rotor_
 from .mesh_fold import Fan, folded_points, on_ray
 from .mesh_outline import WELD_TOL, ComplexArray, Outline
 from .mesh_sizes import Across, SizeSources, Sizing, joined, narrow_places
+from .types import IntArray
 
 POSITIONS = 90  # circle edges per pole that put 30 positions in 60 el. degrees on vertices
 
@@ -147,8 +148,7 @@ def side_twins(outline: Outline, angle: float) -> tuple[tuple[int, int, bool], .
     """
     ends = outline.points[outline.ends]
     back = ends * np.exp(-1j * angle)
-    lower = np.flatnonzero(np.all(on_ray(ends, 0.0), axis=1)).tolist()
-    upper = np.flatnonzero(np.all(on_ray(ends, angle), axis=1)).tolist()
+    lower, upper = (_along_ray(outline, ray).tolist() for ray in (0.0, angle))
     twins = [
         (k, j, is_reversed)
         for k in lower
@@ -222,10 +222,14 @@ def _rib_sources(section: CrossSection, fan: Fan, settings: MeshSettings) -> Siz
 
 def _ray_edges(fan: Fan, outline: Outline) -> list[int]:
     """Edges on the two sides of the wedge."""
+    return sorted({*_along_ray(outline, 0.0).tolist(), *_along_ray(outline, fan.angle).tolist()})
+
+
+def _along_ray(outline: Outline, angle: float) -> IntArray:
+    """Numbers of the edges on the side at `angle`; half a hole there only has its ends on it."""
     ends = outline.points[outline.ends]
-    on_lower, on_upper = (np.all(on_ray(ends, angle), axis=1) for angle in (0.0, fan.angle))
-    found: list[int] = np.flatnonzero(on_lower | on_upper).tolist()
-    return found
+    lines = np.array([edge.is_line for edge in outline.edges])
+    return np.flatnonzero(lines & np.all(on_ray(ends, angle), axis=1))
 
 
 def _gap_corners(outline: Outline, gaps: Sequence[int], rays: Sequence[int]) -> ComplexArray:

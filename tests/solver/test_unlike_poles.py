@@ -2,11 +2,12 @@
 
 from dataclasses import replace
 
+import numpy as np
 import pytest
 
 from lamwright.app.point import model_of
 from lamwright.geometry.cross_section import cross_section
-from lamwright.geometry.design_details import KeywayDesign
+from lamwright.geometry.design_details import HoleDesign, KeywayDesign
 from lamwright.solver.field import solve_point
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.rotor_stress import rotor_stress
@@ -57,3 +58,24 @@ def test_one_keyway_in_the_bore_is_nearly_one_in_each_pole():
         assert one == pytest.approx(four, rel=0.01)
         assert one != four
     assert peaks[1] == pytest.approx(peaks[0], rel=0.01)
+
+
+def test_half_a_hole_on_either_side_of_two_unlike_poles_is_meshed():
+    """Nodes of both sides match one to one; the arc of half a hole is no part of a side.
+
+    Two poles with a key in the first; their sides are one line through the shaft, so the nodes'
+    radii are compared. In stress all ribs of both poles are there.
+    """
+    machine = shipped("demo_24s4p_arc").machine
+    key = KeywayDesign(count=2, width_mm=4.0, depth_mm=2.0)
+    hole = HoleDesign(place_radius_mm=25.0, angle_deg=45.0, diameter_mm=4.0)
+    rotor = machine.design.rotor.model_copy(update={"keyway": key, "hole": (hole,)})
+    section = cross_section(machine.design.model_copy(update={"rotor": rotor}))
+    mesh = mesh_section(section).rotor
+    places = mesh.nodes @ np.array([1.0, 1.0j])
+    right = np.sort(places[(abs(places.imag) < 1e-9) & (places.real > 1e-9)].real)
+    left = np.sort(-places[(abs(places.imag) < 1e-9) & (places.real < -1e-9)].real)
+    assert right.size > 30
+    assert right == pytest.approx(left, abs=1e-9)
+    stress = rotor_stress(section, machine.rotor_steel, 750.0)
+    assert stress.rib_loads.shape == (12, 3)
