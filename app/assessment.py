@@ -19,6 +19,7 @@ from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
+from lamwright.postprocess.detail_cautions import detail_cautions
 from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
 from lamwright.postprocess.figures import (
     Composer,
@@ -235,6 +236,7 @@ class Assessment:
             cautions=(
                 *(line for work in magnets for line in work.cautions(machine)),
                 *skew_cautions(machine.design.rotor.skew_steps),
+                *detail_cautions(self.section, machine.rotor_steel, stress.solution.speed),
                 *cautions(magnetic, terminal, rotor, cards, bars),
             ),
             times=watch.times,
