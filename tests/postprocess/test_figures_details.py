@@ -8,11 +8,14 @@ from matplotlib.figure import Figure
 
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
-from lamwright.geometry.design_file import read_design
+from lamwright.geometry.design_file import read_design, read_machine
 from lamwright.geometry.section import CrossSection, base_name
+from lamwright.postprocess.figures import stress_figure
 from lamwright.postprocess.figures_details import detail_callouts, unlike_poles
 from lamwright.postprocess.figures_section import draw_section
 from lamwright.postprocess.figures_style import Style, sampled, upright
+from lamwright.postprocess.ribs import rib_report
+from lamwright.solver.rotor_stress import rotor_stress
 
 DESIGN = read_design(Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml")
 DETAILS = {
@@ -98,3 +101,24 @@ def test_no_name_lies_upon_another_or_upon_the_letters_of_an_axis(count: int) ->
     assert len(boxes) > 20
     met = [(a, b) for k, a in enumerate(boxes) for b in boxes[:k] if a.overlaps(b)]
     assert not met
+
+
+def test_thirty_ribs_of_six_poles_are_named_by_the_most_stressed_of_each() -> None:
+    """One keyway in six poles: all names would not fit; five ribs of a pole, the greatest in red.
+
+    The report holds all thirty, and the value written is the greatest of them.
+    """
+    machine = read_machine(Path(__file__).parents[2] / "designs" / "demo_36s6p_arc.toml")
+    rotor = machine.design.rotor.model_copy(update={"keyway": KeywayDesign(count=1, **KEY)})
+    section = cross_section(machine.design.model_copy(update={"rotor": rotor}))
+    solution = rotor_stress(section, machine.rotor_steel, 600.0)
+    report = rib_report(solution, section, 350e6)
+    assert len(report.ribs) == 30
+    texts = stress_figure("", section, solution, report, Style()).axes[0].texts
+    names = [text.get_text() for text in texts if " rib " in text.get_text()]
+    assert len(names) == 5
+    most = max(row.peak for row in report.ribs) / 1e6
+    (red,) = [
+        t.get_text() for t in texts if t.get_fontweight() == "bold" and " rib " in t.get_text()
+    ]
+    assert red.endswith(f"{most:.1f} MPa")
