@@ -3,6 +3,9 @@
 Between two rings of nodes at any angles runs one layer of triangles, zipped from side to side by
 the shorter diagonal. The rings between are staggered by half a step: triangles are then nearly
 isosceles, with twice the least angle of right ones, and stay good when the gap is sheared.
+Where the inner arc is much finer than the outer one (a thin rib beside a wide gap), the rings
+between have steps between theirs, in like ratios from ring to ring: a jump by 7 at once left
+angles of 7 degrees.
 Source: derived.
 Axes: n_ring nodes of a ring, by growing angle.
 """
@@ -14,6 +17,8 @@ import numpy as np
 
 from .mesh_outline import ComplexArray
 from .types import FloatArray, IntArray
+
+MOST_JUMP = 4.0  # ratio of steps that one layer takes with angles over 12 degrees
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -40,12 +45,13 @@ def fill_rings(
     """
     first, last = sides
     angles = np.angle(points[outer])
+    jumps = _jumps(np.angle(points[inner]), angles)
     rings, fresh = [inner], []
     free = points.size
     for layer in range(1, first.size - 1):
         radius = abs(points[first[layer]])
-        stagger = layer % 2 == 1
-        between = 0.5 * (angles[1:] + angles[:-1]) if stagger else angles[1:-1]
+        parts = _parts(jumps, 1.0 - layer / (first.size - 1))
+        between = _between(angles, parts, stagger=layer % 2 == 1)
         fresh.append(radius * np.exp(1j * between))
         inside = np.arange(free, free + between.size)
         rings.append(np.concatenate([first[layer : layer + 1], inside, last[layer : layer + 1]]))
@@ -62,6 +68,33 @@ def fill_rings(
     chord = 0.5 * (every[steps[:, 0]] + every[steps[:, 1]])
     middles = chord / np.abs(chord) * np.abs(every[steps[:, 0]])
     return Rings(new, corners, steps, middles)
+
+
+def _jumps(inner: FloatArray, outer: FloatArray) -> FloatArray:
+    """Each step (n_ring - 1,) of the outer arc over the finest one that it has inside."""
+    first = np.clip(np.searchsorted(inner, outer[:-1], "right") - 1, 0, inner.size - 2)
+    last = np.clip(np.searchsorted(inner, outer[1:], "left"), 1, inner.size - 1)
+    steps = np.diff(inner)
+    finest = [steps[a:b].min() for a, b in zip(first.tolist(), last.tolist(), strict=True)]
+    return np.asarray(np.diff(outer) / np.array(finest))
+
+
+def _parts(jumps: FloatArray, share: float) -> IntArray:
+    """Into how many parts a ring between takes each step of the outer arc.
+
+    Args:
+        jumps: see `_jumps`.
+        share: of the way from the outer arc (0) to the inner one (1).
+    """
+    parts = np.where(jumps < MOST_JUMP, 1.0, np.round(jumps**share))
+    return np.asarray(parts, dtype=np.int64)
+
+
+def _between(outer: FloatArray, parts: IntArray, *, stagger: bool) -> FloatArray:
+    """Angles of a ring's nodes, sides left out: at the parts' middles, or at their ends."""
+    begin, step = np.repeat(outer[:-1], parts), np.repeat(np.diff(outer) / parts, parts)
+    number = np.arange(begin.size) - np.repeat(np.cumsum(parts) - parts, parts)
+    return np.asarray(begin + (number + 0.5) * step if stagger else (begin + number * step)[1:])
 
 
 def _zip(low: FloatArray, high: FloatArray, a: IntArray, b: IntArray) -> IntArray:
