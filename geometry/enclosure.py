@@ -26,12 +26,15 @@ def _halves(edge: Edge) -> tuple[Edge, ...]:
 
 
 def _seen(edge: Edge, point: Point) -> float:
-    first, last = edge.start - point, edge.end - point
-    angle = cmath.phase(last / first)
+    product = (edge.start - point).conjugate() * (edge.end - point)
+    angle = cmath.phase(product)
     if edge.is_line or abs(point - edge.centre) >= edge.radius:
         return angle
-    # Positive to the right of the chord, where a counter-clockwise arc bulges.
-    right = ((edge.end - edge.start).conjugate() * (edge.start - point)).imag
-    if right * edge.bulge > 0.0:
+    # Angle and side by one product: on the chord itself, whichever side rounding takes it for,
+    # the arc is seen under half a turn. Negative to the right of the chord, where a
+    # counter-clockwise arc bulges.
+    if product.imag == 0.0:
+        return math.copysign(math.pi, edge.bulge)
+    if product.imag * edge.bulge < 0.0:
         return angle + math.copysign(2.0 * math.pi, edge.bulge)
     return angle
