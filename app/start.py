@@ -22,13 +22,14 @@ from lamwright.geometry.first_source import (
 )
 from lamwright.geometry.first_stator import MainSizes
 from lamwright.geometry.first_text import design_text
-from lamwright.geometry.first_wishes import RPM, Wishes, usual_gap, usual_shaft
+from lamwright.geometry.first_wishes import AIMED_MARGIN, RPM, Wishes, usual_gap, usual_shaft
 from lamwright.geometry.whole_file import write_text
 
 MM = 1e-3  # m
 STACKING = 0.97
-WANTED_MARGIN = 1.2  # of the stress solution at overspeed
 MOST_ROUNDS = 4
+LEAST_MARGIN = 1.0  # of the stress solution
+ROUND_UP = 1.02  # on the ribs' next margin, so that rounds come to an end
 STRESS_TOLERANCE = 0.05  # of the peak, relative
 DEMO_CARD = Path(__file__).resolve().parent.parent / "designs" / "steel" / "demo_050.toml"
 
@@ -89,23 +90,35 @@ def start(choices: StartChoices) -> StartReport:
 
 
 def laid_out(wishes: Wishes) -> tuple[FirstDesign, float, int]:
-    """The first design whose ribs have the wanted margin, that margin, and how many were tried.
+    """The first design whose ribs have the aimed margin, that margin, and the rounds it took.
+
+    Where no layout has it, the one with the largest margin above one.
 
     Raises:
         DesignError: no rotor is found.
     """
+    best: tuple[FirstDesign, float, int] | None = None
     for count in range(1, MOST_ROUNDS + 1):
-        first = first_design(wishes)
+        try:
+            first = first_design(wishes)
+        except DesignError:
+            if best is None:
+                raise
+            break  # no thicker ribs can be laid out
         margin = yield_margin(first, wishes)
-        if margin >= WANTED_MARGIN:
-            return first, margin, count
-        more = 1.02 * wishes.rib_margin * WANTED_MARGIN / margin
+        if best is None or margin > best[1]:
+            best = (first, margin, count)
+        if margin >= AIMED_MARGIN:
+            break
+        more = ROUND_UP * wishes.rib_margin * AIMED_MARGIN / margin
         wishes = replace(wishes, rib_margin=more)
-    if margin >= 1.0:
-        return first, margin, MOST_ROUNDS
+    assert best is not None
+    if best[1] >= LEAST_MARGIN:
+        return best
     raise DesignError(
-        f"no rotor found that holds {RPM * wishes.maximum_speed:.0f} rpm: the ribs of "
-        f"{MOST_ROUNDS} layouts would yield; try a lower maximum speed or stronger steel"
+        f"no rotor found for {wishes.poles} poles at {RPM * wishes.maximum_speed:g} rpm: by the "
+        f"stress solution the strongest ribs laid out have a yield margin of {best[1]:.2f} at "
+        "overspeed; try a lower maximum speed or stronger steel"
     )
 
 

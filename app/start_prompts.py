@@ -69,10 +69,11 @@ def print_start(report: StartReport, taken: Sequence[str]) -> None:
         click.echo(f"taken by default: {'; '.join(taken)}")
     ends = ", ".join(f"{one.table.end_angle_deg:g}" for one in rotor.barriers)
     slots = design.stator.slots / design.pole_pairs
+    rule = ", which the published rule is against" if rotor.is_avoided else ""
     ribs = ", ".join(_ribs(one.table) for one in rotor.barriers)
     rows = (
         ("barriers of a pole", f"{rotor.spread.barriers}, ends at {ends} deg from the q axis"),
-        ("barrier ends", f"on {rotor.spread.places} places a pole pair, against {slots:g} slots"),
+        ("barrier ends", f"on {rotor.spread.places} places a pole pair, {slots:g} slots{rule}"),
         ("ripple", f"about {100.0 * rotor.estimate.ripple:.0f} % by a linear model, mostly less"),
         ("ribs", f"{ribs} mm"),
         ("yield margin at overspeed", f"{report.yield_margin:.2f} by the stress solution"),

@@ -142,7 +142,7 @@ class RibWidths:
 
 
 STEP = 5e-5  # m, of the widths tried
-THICKEST = 1.6  # of the least width; thicker tangential ribs short the barrier: no source
+THICKEST = 1.35  # of the least width; thicker tangential ribs blunt the ends: no source
 WIDEST = 10.0  # of the least width: radial rib
 
 

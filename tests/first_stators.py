@@ -78,26 +78,37 @@ def evenly_spread(first: FirstDesign, wishes: Wishes) -> MachineDesign | None:
 
     Evenly is at k 90/(n+1) electrical degrees from the q axis, n + 1 like parts from q to d axis;
     where the first design lies there itself or these cannot be drawn, at (k - 1/2) 90/n, the
-    middles of n like parts. Only the ends are moved; where that cannot be drawn, barriers and ribs
-    are laid out anew by the same rules. None where neither can be drawn.
+    middles of n like parts. None where neither can be drawn.
+    """
+    taken = first.rotor.taken.spread
+    n = taken.barriers
+    for spread in (Spread(n, 4 * n + 4, is_half=False), Spread(n, 4 * n, is_half=True)):
+        if not np.allclose(spread.ends, taken.ends):
+            even = even_design(first, wishes, spread)
+            if even is not None:
+                return even
+    return None
+
+
+def even_design(first: FirstDesign, wishes: Wishes, spread: Spread) -> MachineDesign | None:
+    """The first design with other ends; None where that cannot be drawn.
+
+    Only the ends are moved; where that cannot be drawn, barriers and ribs are laid out anew by the
+    same rules.
     """
     taken, design = first.rotor.taken, first.design
-    n = taken.spread.barriers
-    for spread in (Spread(n, 4 * n + 4, is_half=False), Spread(n, 4 * n, is_half=True)):
-        if np.allclose(spread.ends, taken.spread.ends):
-            continue
-        moved = [
-            one.table.model_copy(update={"end_angle_deg": np.degrees(end) / design.pole_pairs})
-            for one, end in zip(taken.barriers, spread.ends, strict=True)
-        ]
-        even = design.model_copy(update={"rotor": with_barriers(design.rotor, moved)})
-        if not rotor_faults(even):
-            return even
-        laid = rotor_laid_out(design, rotor_needs(wishes), spread, taken.insulation)
-        if not isinstance(laid, str):
-            tables = [one.table for one in laid]
-            return design.model_copy(update={"rotor": with_barriers(design.rotor, tables)})
-    return None
+    moved = [
+        one.table.model_copy(update={"end_angle_deg": float(np.degrees(end)) / design.pole_pairs})
+        for one, end in zip(taken.barriers, spread.ends, strict=True)
+    ]
+    even = design.model_copy(update={"rotor": with_barriers(design.rotor, moved)})
+    if not rotor_faults(even):
+        return even
+    laid = rotor_laid_out(design, rotor_needs(wishes), spread, taken.insulation)
+    if isinstance(laid, str):
+        return None
+    tables = [one.table for one in laid]
+    return design.model_copy(update={"rotor": with_barriers(design.rotor, tables)})
 
 
 def ripples(wishes: Wishes, designs: list[MachineDesign]) -> list[float]:
