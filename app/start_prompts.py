@@ -74,7 +74,7 @@ def print_start(report: StartReport, taken: Sequence[str]) -> None:
     rows = (
         ("barriers of a pole", f"{rotor.spread.barriers}, ends at {ends} deg from the q axis"),
         ("barrier ends", f"on {rotor.spread.places} places a pole pair, {slots:g} slots{rule}"),
-        ("ripple", f"about {100.0 * rotor.estimate.ripple:.0f} % by a linear model, mostly less"),
+        ("ripple", f"{100.0 * rotor.estimate.ripple:.0f} % by a linear model that only ranks"),
         ("ribs", f"{ribs} mm"),
         ("yield margin at overspeed", f"{report.yield_margin:.2f} by the stress solution"),
         (

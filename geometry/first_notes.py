@@ -62,8 +62,8 @@ def _spread_reason(design: MachineDesign, rotor: FirstRotor) -> str:
         f"n_s +-{AVOIDED[1]}, best n_s +-{BEST_DISTANCE} (Vagati, Pastorelli, Franceschini, "
         "Petrache 1998, from memory). Of all such spreads this one has the least "
         f"ripple by a linear mmf model, {_percent(taken)} (derived, like Bianchi, Bolognani, Bon, "
-        "Dai Pre 2009; geometry/first_ripple.py), torque counted in. The model ranks rotors; the "
-        "field's ripple is mostly lower.",
+        "Dai Pre 2009; geometry/first_ripple.py), torque counted in. The model only ranks "
+        "rotors: assess tells the ripple.",
         *(f"Not taken: {_candidate_text(other)}." for other in rotor.others[:SHOWN_OTHERS]),
         f"Insulation ratio {taken.insulation:g} of the depth that barriers and carriers share, "
         f"{air / room.depth:.3f} of rim to shaft; usual 0.3 to 0.5 (common practice).",

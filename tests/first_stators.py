@@ -1,5 +1,7 @@
 """Stators for first designs: main sizes of invented machines from 40 to 300 mm of bore."""
 
+from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import NamedTuple
 
@@ -12,8 +14,8 @@ from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.first_design import FirstDesign, rotor_needs
+from lamwright.geometry.first_rotor import FirstBarrier, with_barriers
 from lamwright.geometry.first_rotor import laid_out as rotor_laid_out
-from lamwright.geometry.first_rotor import with_barriers
 from lamwright.geometry.first_spread import Spread
 from lamwright.geometry.first_wishes import Wishes
 from lamwright.geometry.rotor_checks import rotor_faults
@@ -66,9 +68,9 @@ STATORS = {
 }
 
 
-def first_of(stator: Stator) -> tuple[FirstDesign, Wishes]:
+def first_of(stator: Stator, barriers: int | None = None) -> tuple[FirstDesign, Wishes]:
     """The first design of a stator, as `start` lays it out."""
-    wishes = wishes_of(stator.choices)
+    wishes = replace(wishes_of(stator.choices), barriers=barriers)
     first, _, _ = laid_out(wishes)
     return first, wishes
 
@@ -107,7 +109,12 @@ def even_design(first: FirstDesign, wishes: Wishes, spread: Spread) -> MachineDe
     laid = rotor_laid_out(design, rotor_needs(wishes), spread, taken.insulation)
     if isinstance(laid, str):
         return None
-    tables = [one.table for one in laid]
+    return with_tables(design, laid)
+
+
+def with_tables(design: MachineDesign, barriers: Sequence[FirstBarrier]) -> MachineDesign:
+    """The design with barriers that were laid out."""
+    tables = [one.table for one in barriers]
     return design.model_copy(update={"rotor": with_barriers(design.rotor, tables)})
 
 
