@@ -72,7 +72,8 @@ def _spread_reason(design: MachineDesign, rotor: FirstRotor) -> str:
     ]
     if taken.is_avoided:
         lines.insert(
-            1, "The rule is against this n_r: all others have over 1.6 times its estimated ripple."
+            1,
+            "The rule is against this n_r: by the model all others are far worse in all.",
         )
     return "\n".join(lines)
 

@@ -14,6 +14,7 @@ GAP_DENSITY = 0.80  # T, peak of the fundamental in the gap
 TOOTH_DENSITY = 1.60  # T
 YOKE_DENSITIES = (1.40, 1.55, 1.70)  # T, the first that leaves slots deep enough
 LEAST_DEPTH = 0.7  # slot depth over slot pitch at the bore
+MOST_OPEN = 0.7  # of the slot's width at the bore that the mouth takes
 SHALLOWEST = 4e-3  # m
 
 
@@ -54,7 +55,7 @@ def stator_table(sizes: MainSizes, poles: int, sheet: float, stacking: float) ->
             f"poles and slots; accepted {math.ceil(wanted):g} mm or more with this bore"
         )
     depth = _down(ring - yoke)
-    opening = min(max(0.22 * pitch, 2.0 * sheet), 4e-3)
+    opening = max(min(max(0.22 * pitch, 2.0 * sheet), 4e-3, MOST_OPEN * (pitch - tooth)), sheet)
     lip = max(0.08 * pitch, sheet)
     radius = min(1.5e-3, 0.1 * pitch)
     wedge = min(1e-3, 0.06 * depth)

@@ -80,7 +80,9 @@ def winding_table_of(needs: WindingNeeds, plan: CoilPlan) -> DesignTable:
     series = linkage / (factor * flux)  # N
     coils = len(star.coils) // 3
     paths = _paths(series / coils, star.alike)
-    turns = max(1, math.floor(series * paths / coils))
+    allowed = series * paths / coils
+    turns = max(1, math.floor(allowed))
+    beyond = "" if allowed >= 1.0 else " One turn is more: rated speed is out of its reach."
     area = FILL * needs.copper_area / turns
     across = math.pi * (needs.bore + needs.slot_depth) * plan.span / needs.slots
     return DesignTable(
@@ -95,7 +97,7 @@ def winding_table_of(needs: WindingNeeds, plan: CoilPlan) -> DesignTable:
                 f"x sqrt(2/3) = {peak:.4g} V peak at {_rpm(needs.rated_speed):g} rpm allow "
                 f"{linkage:.4g} V s along d with psi_q / psi_d = {Q_SHARE:g} (assumed). With "
                 f"B = {GAP_DENSITY:g} T (assumed) psi_d = k_w N B D L / p, k_w = {factor:.4f}: "
-                f"N = {series:.4g} in series, {coils} coils a phase.",
+                f"N = {series:.4g} in series, {coils} coils a phase.{beyond}",
             ),
             Line("parallel_paths", paths),
             Line(
