@@ -58,6 +58,14 @@ class Arrangement:
         edge = self.edges[abs(signed) - 1]
         return edge if signed > 0 else reversed_edge(edge)
 
+    def reaches(self, face: Face, radius: float, tolerance: float) -> bool:
+        """Whether an edge of the face lies on the circle of `radius` in m about the origin."""
+        for number in face.numbers:
+            edge = self.edges[number - 1]
+            if all(abs(abs(p) - radius) < 2.0 * tolerance for p in (edge.start, edge.point(0.5))):
+                return True
+        return False
+
 
 def arrangement(pieces: Sequence[Edge], tolerance: float) -> Arrangement:
     """The plane graph of the pieces.

@@ -9,7 +9,7 @@ import json
 import re
 import stat
 import tomllib
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from operator import itemgetter
 from pathlib import Path
@@ -85,12 +85,7 @@ def read_steel_card(path: Path) -> SteelCard:
     Raises:
         DesignError: the file cannot be read or used; one line for each fault.
     """
-    text = _text(path)
-    card = _validated(path, text, SteelCard)
-    findings = card_findings(card)
-    if findings:
-        raise DesignError(_placed_text(findings, path, text))
-    return card
+    return _checked_card(path, SteelCard, card_findings)
 
 
 def read_magnet_card(path: Path) -> MagnetCard:
@@ -99,12 +94,7 @@ def read_magnet_card(path: Path) -> MagnetCard:
     Raises:
         DesignError: the file cannot be read or used; one line for each fault.
     """
-    text = _text(path)
-    card = _validated(path, text, MagnetCard)
-    found = magnet_card_findings(card)
-    if found:
-        raise DesignError(_placed_text(found, path, text))
-    return card
+    return _checked_card(path, MagnetCard, magnet_card_findings)
 
 
 def read_machine(path: Path) -> Machine:
@@ -194,6 +184,17 @@ def _design_of(path: Path, text: str, data: dict[str, object]) -> MachineDesign:
     if filled.faults:
         raise DrawingError(_lines_text(path, text, filled.faults), filled.marks)
     return filled.outlines.put_into(_validated(path, text, MachineDesign, filled.data))
+
+
+def _checked_card(
+    path: Path, model: type[_Model], check: Callable[[_Model], tuple[Finding, ...]]
+) -> _Model:
+    text = _text(path)
+    card = _validated(path, text, model)
+    findings = check(card)
+    if findings:
+        raise DesignError(_placed_text(findings, path, text))
+    return card
 
 
 def _validated(

@@ -11,6 +11,7 @@ from .cut_outs import notch_corner
 from .design import MachineDesign
 from .design_details import HoleDesign, KeywayDesign, NotchDesign
 from .detail_places import ON_AXIS_TOL
+from .punch_sizes import PunchSizes
 from .remedies import Fault
 from .rotor import rotor_frame
 
@@ -20,7 +21,7 @@ MOST_OPENING = 0.9  # of the diameter of rim or bore, of a groove's width
 
 
 @dataclass(frozen=True, slots=True)
-class DetailPole:
+class DetailPole(PunchSizes):
     """What a detail has to fit into, and the least sizes, in m and rad."""
 
     rotor_radius: float
@@ -28,16 +29,6 @@ class DetailPole:
     half_pitch: float
     poles: int
     sheet: float
-
-    @property
-    def least_radius(self) -> float:
-        """Least radius of a punch's corner."""
-        return 0.5 * self.sheet
-
-    @property
-    def least_edge(self) -> float:
-        """Least length of an edge of an outline."""
-        return 0.1 * self.sheet
 
 
 def detail_pole(design: MachineDesign) -> DetailPole:

@@ -137,7 +137,7 @@ def _kinds(
         for number in whole.faces[face].numbers:
             changes = whole.sources[number - 1] < drawn
             todo += [(other, is_steel != changes) for other in beside[number] if other != face]
-    at_rim = {k for k, face in enumerate(whole.faces) if _is_at(whole, face, rim, tolerance)}
+    at_rim = {k for k, face in enumerate(whole.faces) if whole.reaches(face, rim, tolerance)}
     iron = [k for k in at_rim if steel.get(k, False)]
     if len(iron) != 1:
         fault = (
@@ -176,14 +176,6 @@ def _beside(whole: Arrangement) -> dict[int, list[int]]:
         for number in face.numbers:
             beside.setdefault(number, []).append(k)
     return beside
-
-
-def _is_at(whole: Arrangement, face: Face, radius: float, tolerance: float) -> bool:
-    for number in face.numbers:
-        edge = whole.edges[number - 1]
-        if all(abs(abs(p) - radius) < 2.0 * tolerance for p in (edge.start, edge.point(0.5))):
-            return True
-    return False
 
 
 def _inside(whole: Arrangement, face: Face) -> Point:

@@ -171,7 +171,7 @@ def _slot_groups(
 ) -> list[list[Face]]:
     """Touching faces of each slot, counter-clockwise."""
     inside = [f for f in whole.faces if winds_about(whole.path(f.loops[0]), 0j)]
-    iron = [f for f in whole.faces if _reaches(whole, f, outer, tolerance)]
+    iron = [f for f in whole.faces if whole.reaches(f, outer, tolerance)]
     if not iron:
         place = lamination.place(complex(outer))
         raise OutlineError(f"the outer contour is not closed, radius {outer / MM:.4f} mm", place)
@@ -207,18 +207,10 @@ def _slot_groups(
     return sorted(slots, key=lambda group: cmath.phase(_middle(whole, group)))
 
 
-def _reaches(whole: Arrangement, face: Face, radius: float, tolerance: float) -> bool:
-    for number in face.numbers:
-        edge = whole.edges[number - 1]
-        if all(abs(abs(p) - radius) < 2.0 * tolerance for p in (edge.start, edge.point(0.5))):
-            return True
-    return False
-
-
 def _reaches_any(
     whole: Arrangement, faces: Iterable[Face], radius: float, tolerance: float
 ) -> bool:
-    return any(_reaches(whole, face, radius, tolerance) for face in faces)
+    return any(whole.reaches(face, radius, tolerance) for face in faces)
 
 
 def _grouped(faces: Sequence[Face]) -> list[list[Face]]:

@@ -32,6 +32,7 @@ from .mid_lines import (
     end_thickness_mm,
     legs_between,
 )
+from .punch_sizes import PunchSizes
 from .remedies import Fault
 
 SLACK = 1e-9  # m, a size is let miss its limit by rounding; far below a punch's 1e-5 m
@@ -41,23 +42,13 @@ ARC_TIGHT = "the arc's inner side is too tight to punch"
 
 
 @dataclass(frozen=True, slots=True)
-class Pole:
+class Pole(PunchSizes):
     """What a barrier has to fit into, and the least sizes, in m."""
 
     rotor_radius: float
     shaft_radius: float
     pole_pairs: int
     sheet: float
-
-    @property
-    def least_radius(self) -> float:
-        """Least radius of a punch's corner."""
-        return 0.5 * self.sheet
-
-    @property
-    def least_edge(self) -> float:
-        """Least length of an edge of an outline."""
-        return 0.1 * self.sheet
 
 
 @dataclass(frozen=True, slots=True)

@@ -71,10 +71,7 @@ def stator_lines(outline: StatorOutline) -> Lines:
     sides = ", ".join(f"{part.area / MM**2:.4g}" for part in drawing.slot.copper)
     symmetric = "about its centre line" if drawing.is_symmetric else "not symmetric"
     return (
-        *source_lines(outline.source),
-        ("drawn", _drawn_share(drawing.sectors)),
-        ("axis", place_text(drawing.axis)),
-        ("joined", f"gaps up to {drawing.healed / UM:.3g} um, {drawing.doubles} pieces twice"),
+        *_drawing_lines(outline),
         ("outer diameter", f"{measures['outer_diameter_mm']:.4f} mm"),
         ("bore diameter", f"{measures['bore_diameter_mm']:.4f} mm"),
         ("slots", f"{drawing.slots}, {symmetric}, alike to {drawing.unlikeness / UM:.3g} um"),
@@ -97,10 +94,7 @@ def rotor_lines(outline: RotorOutline) -> Lines:
     period = len(drawing.poles)
     alike = "all alike" if period == 1 else f"alike every {period}"
     lines = [
-        *source_lines(outline.source),
-        ("drawn", _drawn_share(drawing.sectors)),
-        ("axis", place_text(drawing.axis)),
-        ("joined", f"gaps up to {drawing.healed / UM:.3g} um, {drawing.doubles} pieces twice"),
+        *_drawing_lines(outline),
         ("rotor diameter", f"{2.0 * drawing.rotor_radius / MM:.4f} mm"),
         ("bore diameter", f"{2.0 * drawing.shaft_radius / MM:.4f} mm"),
         ("poles", f"{alike}, to {drawing.unlikeness / UM:.3g} um"),
@@ -121,8 +115,16 @@ def rotor_lines(outline: RotorOutline) -> Lines:
     return tuple(lines)
 
 
-def _drawn_share(sectors: int) -> str:
-    return "the whole lamination" if sectors == 1 else f"one of {sectors} equal sectors"
+def _drawing_lines(outline: StatorOutline | RotorOutline) -> Lines:
+    """What is listed first of any lamination's drawing."""
+    drawing, sectors = outline.drawing, outline.drawing.sectors
+    share = "the whole lamination" if sectors == 1 else f"one of {sectors} equal sectors"
+    return (
+        *source_lines(outline.source),
+        ("drawn", share),
+        ("axis", place_text(drawing.axis)),
+        ("joined", f"gaps up to {drawing.healed / UM:.3g} um, {drawing.doubles} pieces twice"),
+    )
 
 
 def stator_measures(drawing: StatorDrawing) -> dict[str, float]:

@@ -88,7 +88,7 @@ class SectorMesh:
 class NewtonReport:
     """How a Newton iteration went."""
 
-    steps: int  # tangents factorised
+    steps: int  # each one tangent, or two where Newton's own was needed after all
     history: tuple[float, ...]  # relative residual norms, one more than steps
     seconds: float
     coarse_steps: int = 0  # of the first-order iteration that gave the first guess
