@@ -10,6 +10,7 @@ from .design import MachineDesign
 from .detail_checks import detail_faults
 from .errors import Finding
 from .half_checks import SLACK
+from .loss_checks import strand_findings
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
 from .remedies import SCALES, Fault, barrier_number, findings, value_of
@@ -26,6 +27,7 @@ def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     found = findings(design, shape_faults(design), shared_faults)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
+    found += tuple(strand_findings(design.winding))
     return (*found, *magnet_findings(design), *skew_findings(design), *_duty_findings(design))
 
 

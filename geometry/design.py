@@ -12,6 +12,7 @@ from pydantic_core import PydanticCustomError
 
 from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
+from .design_loss import LossesDesign, LossPoints, StrandDesign
 from .design_slots import KEYS_OF_SHAPE, slot_key_faults
 from .design_table import NotNegative, Positive
 from .design_table import Table as _Table
@@ -82,6 +83,7 @@ class WindingDesign(_Table):
     end_turn_length_mm: Positive  # one end turn, one side of the stack
     end_permeance_coefficient: Annotated[float, Field(ge=0.0, le=1.0)] = 0.3
     temperature_c: Annotated[float, Field(ge=-40.0, le=220.0)] = 100.0
+    strands: StrandDesign | None = None  # needed for the AC copper loss
 
 
 class BarrierMagnetDesign(_Table):
@@ -241,6 +243,7 @@ class MachineDesign(_Table):
     duty: DutyDesign
     limits: LimitsDesign
     magnet: MagnetChoice | None = None  # needed where a barrier holds a magnet
+    losses: LossesDesign = LossesDesign()
 
     @property
     def pole_pairs(self) -> int:
@@ -274,6 +277,7 @@ class SteelCard(_Table):
     yield_strength_mpa: Sourced
     tensile_strength_mpa: Sourced
     magnetisation: MagnetisationCurve
+    loss: LossPoints | None = None  # needed for the iron loss
 
 
 class SourcedNumber(_Table):

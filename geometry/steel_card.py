@@ -4,6 +4,7 @@ import math
 
 from .design import SteelCard
 from .errors import Finding
+from .loss_checks import loss_findings
 
 MU_0 = 4e-7 * math.pi  # H/m, permeability of free space
 
@@ -22,7 +23,8 @@ def card_findings(card: SteelCard) -> tuple[Finding, ...]:
 
     The curve must be B(H) with both rising; the strengths and moduli must be possible.
     """
-    return (*_mechanical_faults(card), *_curve_faults(card))
+    loss = () if card.loss is None else loss_findings(card.loss)
+    return (*_mechanical_faults(card), *_curve_faults(card), *loss)
 
 
 def curve_findings(card: SteelCard) -> tuple[Finding, ...]:

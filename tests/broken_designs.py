@@ -357,6 +357,15 @@ SHAPES = (
         "5",
         "a single-layer winding has full-pitch coils; accepted 6",
     ),
+    Broken(
+        "strands of another area",
+        with_row(
+            "end_turn_length_mm",
+            "end_turn_length_mm = 110.0\n[winding.strands]\nround_diameter_mm = 1.0",
+        ).encode(),
+        f":{row_of('conductor_area_mm2')}: winding.conductor_area_mm2 = 1.4: not the strands'"
+        " copper, 1 of 0.7854 mm2; accepted 0.7854 within 2 %",
+    ),
     _value(
         "bigger than any machine",
         "stator.",

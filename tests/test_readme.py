@@ -29,6 +29,7 @@ from lamwright.geometry.design_details import (
     KeywayDesign,
     NotchDesign,
 )
+from lamwright.geometry.design_loss import LossesDesign, StrandDesign
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -65,6 +66,7 @@ def test_the_python_lines_print_what_is_printed_there():
     [
         ("`[stator]`", StatorDesign),
         ("`[winding]`", WindingDesign),
+        ("`[winding.strands]`", StrandDesign),
         ("`[rotor]`", RotorDesign),
         ("`[[rotor.barrier]]`", BarrierDesign),
         ("`[rotor.barrier.other_half]`", OtherHalfDesign),
@@ -76,6 +78,7 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[steel]`", SteelChoice),
         ("`[magnet]`", MagnetChoice),
         ("`[duty]`", DutyDesign),
+        ("`[losses]`", LossesDesign),
         ("`[limits]`", LimitsDesign),
     ],
 )
