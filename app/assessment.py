@@ -1,10 +1,10 @@
 """The assessment of one design: the rooms in order, shared by a crew.
 
-Two lines of work run side by side. A worker solves the stress and draws what needs no field while
-this process meshes, builds the model and searches the current angle. Then all take chains of rotor
-positions until the waveform is whole; the last figure is drawn while this process writes the
-tables. Chains are fixed and each starts from the search, so the results do not depend on who did
-what.
+Two lines of work run side by side. A worker solves the stress, writes the outline and draws what
+needs no field while this process meshes, builds the model and searches the current angle. Then all
+take chains of rotor positions until the waveform is whole; the last figure is drawn while this
+process writes the tables. Chains are fixed and each starts from the search, so the results do not
+depend on who did what.
 """
 
 from collections.abc import Sequence
@@ -55,7 +55,7 @@ from lamwright.solver.types import FieldSolution
 
 from .angle import AngleFound, most_torque
 from .desk import Desk, StressWork
-from .lamination import DXF_FILE, write_outline
+from .lamination import DXF_FILE
 from .magnet_work import MagnetWork, magnet_work
 from .point import model_of
 from .pool import Crew
@@ -85,8 +85,7 @@ class Assessment:
         stress_to_come = crew.start(
             Desk.stress, section, self.machine.rotor_steel, overspeed, stress_settings
         )
-        with watch.phase("outline"):  # early, while there is work to share after it
-            outline = write_outline(section, stage / DXF_FILE)
+        outline_to_come = crew.start(Desk.outline, section, stage / DXF_FILE)
         with watch.phase("mesh"):
             sector = mesh_section(section, mesh_settings)
         with watch.phase("magnetic model"):
@@ -111,13 +110,15 @@ class Assessment:
             compose = partial(stress_figure, name, section, stress.solution, stress.report)
             drawn += self._drawn(stage, "stress", compose)
         watch.meanwhile("stress", stress.seconds)
+        outline = outline_to_come.result()
+        watch.meanwhile("outline", outline.seconds)
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields, by_step)
         magnets = self._magnets(model)
         waves = (field for step in by_step for field in step)
         solved = (*found.fields, *waves, *(f for work in magnets for f in work.fields))
         return self._written(
-            stage, model, outline, waveform, field_errors, solved, stress, magnets, drawn
+            stage, model, outline.figures, waveform, field_errors, solved, stress, magnets, drawn
         )
 
     def _magnets(self, model: MagneticModel) -> tuple[MagnetWork, ...]:

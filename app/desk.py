@@ -9,6 +9,7 @@ from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
 from lamwright.postprocess.figures import Composer, write_figure
+from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
@@ -16,6 +17,8 @@ from lamwright.solver.estimate_stress import finer_stress, peak_errors, zone_pea
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.rotor_stress import StressSettings, rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
+
+from .lamination import write_outline
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,6 +29,14 @@ class StressWork:
     report: RibReport
     finer: RibReport  # the same on a mesh four times as fine
     zone_errors: FloatArray  # (n_rib + 1,), relative errors of the peaks
+    seconds: float
+
+
+@dataclass(frozen=True, slots=True)
+class OutlineWork:
+    """How true the written outline is, and the wall time it took."""
+
+    figures: OutlineFigures
     seconds: float
 
 
@@ -76,6 +87,12 @@ class Desk:
             zone_errors=zone_errors,
             seconds=time.perf_counter() - began,
         )
+
+    def outline(self, section: CrossSection, path: Path) -> OutlineWork:
+        """Write the lamination as DXF."""
+        began = time.perf_counter()
+        figures = write_outline(section, path)
+        return OutlineWork(figures, time.perf_counter() - began)
 
     def figure(self, folder: Path, name: str, compose: Composer) -> None:
         """Draw a figure into the folder, twice: PNG and SVG."""

@@ -1,15 +1,13 @@
 """Worker processes for one design, and the sharing of its chains between them and this process.
 
-A worker is this interpreter started anew with pickled calls on its input and pickled results on
-its output. Against `multiprocessing` with spawn, which imports the caller's main module again,
-it needs no guard in a user's script and works from a notebook; and its environment is its own, so
-BLAS is held to one thread even where the caller has loaded numpy already. It owns one desk, an
-object made once, on which the calls are methods: what is built there (meshes, factorisations)
-stays there.
+A worker is a process (`process.py`) with pickled calls on its input and pickled results on its
+output. It owns one desk, an object made once, on which the calls are methods: what is built there
+(meshes, factorisations) stays there.
 
 A worker ignores the interrupt key, also while it starts: the process that asked for it decides.
 It ends when its input closes, which happens by itself when that process dies.
-Cost: 0.1 s until the first call is served, then 0.1 ms a call (measured, without imports).
+Cost: 0.1 s until the first call is served (0.01 s by a copy of this process), then 0.1 ms a call
+(measured, without imports).
 """
 
 import contextlib
@@ -17,25 +15,24 @@ import os
 import pickle
 import queue
 import signal
-import subprocess
 import sys
 import threading
 import traceback
 from collections import deque
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Sequence
 from concurrent.futures import Future
 from functools import partial
-from typing import IO, Concatenate, Generic, ParamSpec, TypeVar, cast
+from typing import IO, Concatenate, Generic, NoReturn, ParamSpec, TypeVar, cast
 
 from lamwright.geometry.errors import LamwrightError
 
-from .threads import SINGLE_THREADED
+from .process import Copy, Process, anew, may_fork
 
 Desk = TypeVar("Desk")
 P = ParamSpec("P")
 R = TypeVar("R")
 
-_SERVE = "from lamwright.app.pool import serve; serve()"
+_SERVE = "from lamwright.app.pool import serve_anew; serve_anew()"
 
 
 class WorkerLost(LamwrightError, RuntimeError):
@@ -47,15 +44,9 @@ class WorkerLost(LamwrightError, RuntimeError):
 class Worker(Generic[Desk]):
     """A process with a desk of its own; calls are served in the order given."""
 
-    def __init__(self, make_desk: Callable[[], Desk]) -> None:
-        """Start the process; it imports what `make_desk` needs at once."""
-        environment = {**os.environ, **SINGLE_THREADED}
-        # -P: a file named numpy.py where the user works must not be imported.
-        command = [sys.executable, "-P", "-c", _SERVE]
-        with _interrupt_ignored():
-            self._process = subprocess.Popen(
-                command, stdin=subprocess.PIPE, stdout=subprocess.PIPE, env=environment
-            )
+    def __init__(self, make_desk: Callable[[], Desk], process: Process | None = None) -> None:
+        """Have the desk made by a process that runs `serve`, by default one started anew."""
+        self._process = process or anew(_SERVE)
         self._open: deque[Future[object]] = deque()
         self._last: Future[object] | None = None
         self._lost = False
@@ -142,17 +133,22 @@ class Worker(Generic[Desk]):
             self._open.popleft().set_exception(lost)
 
 
-def serve() -> None:
-    """What a worker runs: make the desk, then serve calls until the input closes."""
+def serve_anew() -> NoReturn:
+    """What a worker that is started anew runs."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     # Libraries print to descriptor 1; the results have a copy of it that nobody else knows.
     results = os.fdopen(os.dup(1), "wb")
     os.dup2(2, 1)
+    serve(sys.stdin.buffer, results)
+
+
+def serve(stream: IO[bytes], results: IO[bytes]) -> NoReturn:
+    """Make the desk, then serve the calls in `stream` until it closes, which ends the process."""
     calls: queue.SimpleQueue[tuple[Callable[..., object], tuple[object, ...], dict[str, object]]]
     calls = queue.SimpleQueue()
-    make_desk = pickle.load(sys.stdin.buffer)
+    make_desk = pickle.load(stream)
     # Reading in a thread keeps the sender from waiting, and notices its end at once.
-    threading.Thread(target=_read_calls, args=(sys.stdin.buffer, calls), daemon=True).start()
+    threading.Thread(target=_read_calls, args=(stream, calls), daemon=True).start()
     desk = make_desk()
     while True:
         results.write(_answer(desk, *calls.get()))
@@ -201,12 +197,20 @@ class Crew(Generic[Desk]):
         """Start the workers and make this process's own desk."""
         self.workers: list[Worker[Desk]] = []
         try:
-            for _ in range(workers):
-                self.workers.append(Worker(make_desk))
-            self.own = make_desk()
+            if may_fork():
+                self.own = make_desk()  # first: the copies have what is imported for it
+                self._hire(make_desk, workers)
+            else:
+                self._hire(make_desk, workers)  # first: their imports run beside the own ones
+                self.own = make_desk()
         except BaseException:
             self._stop()
             raise
+
+    def _hire(self, make_desk: Callable[[], Desk], workers: int) -> None:
+        # All copies are made before a worker starts threads here.
+        copies = [Copy(serve) if may_fork() else None for _ in range(workers)]
+        self.workers += [Worker(make_desk, copy) for copy in copies]
 
     def __enter__(self) -> "Crew[Desk]":
         """The crew itself."""
@@ -292,16 +296,3 @@ def spare_cores() -> int:
 def _given(stream: IO[bytes] | None) -> IO[bytes]:
     assert stream is not None  # both ends are pipes
     return stream
-
-
-@contextlib.contextmanager
-def _interrupt_ignored() -> Iterator[None]:
-    """A process started in this block is born deaf to the interrupt key."""
-    if threading.current_thread() is not threading.main_thread():
-        yield  # only the main thread may touch handlers
-        return
-    before = signal.signal(signal.SIGINT, signal.SIG_IGN)
-    try:
-        yield
-    finally:
-        signal.signal(signal.SIGINT, before)

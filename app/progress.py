@@ -12,7 +12,6 @@ Progress = Callable[[str, float], None]
 # Share of the wall time by phase, in order, on two cores (measured on the demonstration designs).
 SHARES = {
     "start": 0.1,
-    "outline": 0.05,
     "mesh": 0.03,
     "magnetic model": 0.02,
     "current angle": 0.2,

@@ -1,7 +1,8 @@
 """One design to one folder, on as many cores as there are: `assess`.
 
 Nothing heavy is imported at the top: the design is read and drawn first, so that a broken one is
-refused at once; then the workers are started, and their imports run beside this process's own.
+refused at once. Then the workers are started: as copies of this process once it has imported what
+all need, or, where that is not safe, anew, their imports beside its own.
 """
 
 from pathlib import Path
@@ -60,7 +61,8 @@ def assess(
 
 
 def make_desk() -> "Desk":
-    """An empty desk; what it needs is imported where it is made."""
+    """An empty desk; what it and an assessment need is imported where it is made."""
+    from . import assessment  # noqa: F401
     from .desk import Desk
 
     return Desk()

@@ -56,9 +56,18 @@ def shown_progress() -> Iterator[Progress]:
     from rich.progress import Progress as Bar
 
     columns = (TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn())
-    with Bar(*columns, console=Console(stderr=True), transient=True) as bar:
-        task = bar.add_task("start", total=1.0)
-        yield lambda phase, share: bar.update(task, description=f"{phase:<22}", completed=share)
+    bar = Bar(*columns, console=Console(stderr=True), transient=True)
+    task = bar.add_task("start", total=1.0)
+
+    def show(phase: str, share: float) -> None:
+        bar.update(task, description=f"{phase:<22}", completed=share)
+        if phase != "start":  # the bar has a thread, and workers are copies of a single one
+            bar.start()
+
+    try:
+        yield show
+    finally:
+        bar.stop()
 
 
 class _PlainLines:

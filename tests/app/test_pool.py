@@ -20,6 +20,10 @@ from lamwright.geometry.winding import winding_table
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 TIMEOUT = 20.0  # s, far above the 0.1 s a call takes here
 
+needs_copies = pytest.mark.skipif(
+    not Path("/proc/self/task").exists(), reason="this system does not tell a process's threads"
+)
+
 
 @pytest.fixture
 def hired():
@@ -114,13 +118,7 @@ def test_worker_ends_with_the_process_that_started_it():
         "w = Worker(partial(float, 60)); w.submit(time.sleep)\n"
         "print(w.pid, flush=True); time.sleep(60)"
     )
-    with subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE) as caller:
-        pid = int(caller.stdout.readline())
-        caller.kill()
-    until = time.monotonic() + TIMEOUT
-    while _runs(pid) and time.monotonic() < until:
-        time.sleep(0.05)
-    assert not _runs(pid)
+    assert not any(_runs(pid) for pid in _left_by_killed(code))
 
 
 def _runs(pid):
@@ -215,3 +213,58 @@ def test_an_error_that_cannot_be_sent_keeps_its_kind(hired):
     odd = design.model_copy(update={"stator": design.stator.model_copy(update={"slots": 25})})
     with pytest.raises(LamwrightError, match=r"stator\.slots = 25: 4 poles give no three"):
         hired(partial(copy.copy, odd)).submit(winding_table).result(TIMEOUT)
+
+
+# The desk is the module `sys`, on which the process that hires has put something.
+KNOWN = """
+import os, sys, threading, time
+from functools import partial
+from lamwright.app.pool import Crew
+sys.told = "here"
+{first}
+with Crew(partial(__import__, "sys"), 2) as crew:
+    print(*[worker.submit(hasattr, "told").result(20) for worker in crew.workers])
+    print(type(crew.workers[1].submit(getattr, "untold").exception(20)).__name__)
+    print(len({{os.getpid(), *(worker.pid for worker in crew.workers)}}))
+"""
+
+
+@needs_copies
+def test_workers_are_copies_of_a_process_with_one_thread():
+    """They know what it alone has been told, serve on their own, and their errors come back."""
+    assert _printed(KNOWN.format(first="")) == ["True True", "AttributeError", "3"]
+
+
+def test_workers_start_anew_beside_threads():
+    """A thread that sleeps is enough: a lock that it held would stay locked in a copy."""
+    first = "threading.Thread(target=time.sleep, args=(60,), daemon=True).start()"
+    assert _printed(KNOWN.format(first=first)) == ["False False", "AttributeError", "3"]
+
+
+@needs_copies
+def test_copies_end_with_the_process_that_made_them():
+    """Killed in the middle of calls it leaves nobody, though the last holds the pipes of all."""
+    code = (
+        "import time; from functools import partial; from lamwright.app.pool import Crew\n"
+        "crew = Crew(partial(float, 60), 2)\n"
+        "for worker in crew.workers: worker.submit(time.sleep)\n"
+        "print(*[worker.pid for worker in crew.workers], flush=True); time.sleep(60)"
+    )
+    assert not any(_runs(pid) for pid in _left_by_killed(code))
+
+
+def _printed(code):
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True)
+    assert done.returncode == 0, done.stderr
+    return done.stdout.splitlines()
+
+
+def _left_by_killed(code):
+    """Processes whose numbers a caller printed, some time after it was killed."""
+    with subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE) as caller:
+        pids = [int(pid) for pid in caller.stdout.readline().split()]
+        caller.kill()
+    until = time.monotonic() + TIMEOUT
+    while any(_runs(pid) for pid in pids) and time.monotonic() < until:
+        time.sleep(0.05)
+    return pids

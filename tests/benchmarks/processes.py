@@ -19,8 +19,10 @@ STEP_EL = math.radians(2.0)
 
 # One assessment to import everything and make all files once, then the one that is timed: wall,
 # and processor time of this process and of its workers, which have ended and been waited for.
+# A worker writes the DXF; its library is imported here so that the worker, a copy, has it too.
 _WITHOUT_START = """
 import os, sys, time
+import ezdxf
 from lamwright.app.run import assess
 design, out, pictures = sys.argv[1:]
 assess(design, out, pictures=pictures == "pictures")
