@@ -129,6 +129,57 @@ def slopes(design: Path, out: Path) -> None:
 
 @main.command()
 @_DESIGN
+@_OUT
+@click.option("--currents", required=True, help="Direct currents, A, as 15,25,35.")
+@click.option(
+    "--feed",
+    type=click.Choice(["one-and-two", "two-in-series"]),
+    default="one-and-two",
+    show_default=True,
+    help="Into A and half out of B and C each; or into A and out of B, C open.",
+)
+@click.option(
+    "--step-deg", type=float, help="Most between angles, mechanical.  [default: 2 electrical]"
+)
+@click.option(
+    "--measured", type=click.Path(path_type=Path), help="Table (CSV) with measured values."
+)
+@click.option(
+    "--zero-deg",
+    type=float,
+    default=0.0,
+    show_default=True,
+    help="Its angles' reading where the rotor rests, d axis on the current's.",
+)
+@click.option(
+    "--tolerance",
+    type=click.Choice(["coarse", "normal", "fine"]),
+    default="normal",
+    show_default=True,
+    help="How fine to mesh, as of assess.",
+)
+def locked(
+    design: Path,
+    out: Path,
+    currents: str,
+    feed: str,
+    step_deg: float | None,
+    measured: Path | None,
+    zero_deg: float,
+    tolerance: Literal["coarse", "normal", "fine"],
+) -> None:
+    """Torque and terminal inductance of DESIGN over the angle of a locked rotor fed with d.c."""
+    from .locked import locked as run
+    from .locked import print_locked
+    from .screen import shown_progress
+
+    with shown_progress() as progress:
+        found = run(design, out, currents, feed, step_deg, measured, zero_deg, progress, tolerance)
+    print_locked(found, str(out))
+
+
+@main.command()
+@_DESIGN
 @click.option(
     "--csv", "table", type=click.Path(path_type=Path), help="Write the coil sides to this file."
 )
