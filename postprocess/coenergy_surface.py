@@ -26,7 +26,7 @@ from functools import partial
 import numpy as np
 from scipy.interpolate import BSpline, NdBSpline
 from scipy.linalg import null_space
-from scipy.sparse import bmat, csc_matrix, kron, vstack
+from scipy.sparse import csc_matrix, hstack, kron, vstack
 from scipy.sparse.linalg import splu
 
 from lamwright.solver.types import FloatArray
@@ -71,12 +71,12 @@ def coenergy_surface(flux_map: FluxMap) -> CoenergySurface:
     wanted = np.concatenate([value.ravel() for _, _, value in rows])
     taken = csc_matrix(vstack([kron(d, q) for d, q, _ in rows]))
     g_d, g_q = [axis_d.gram(k) for k in range(4)], [axis_q.gram(k) for k in range(4)]
-    bend = sum(
-        (weight * kron(g_d[k], g_q[3 - k]) for k, weight in enumerate((1.0, 3.0, 3.0, 1.0))),
-        start=csc_matrix((taken.shape[1],) * 2),
-    )
+    bend = csc_matrix((taken.shape[1], taken.shape[1]))
+    for k, weight in enumerate((1.0, 3.0, 3.0, 1.0)):
+        bend = bend + weight * csc_matrix(kron(g_d[k], g_q[3 - k]))
     # Least bend under the conditions: bend c + taken' m = 0, taken c = wanted.
-    system = csc_matrix(bmat([[bend, taken.T], [taken, None]]))
+    nothing = csc_matrix((wanted.size, wanted.size))
+    system = csc_matrix(vstack([hstack([bend, taken.T]), hstack([taken, nothing])]))
     right = np.concatenate([np.zeros(taken.shape[1]), wanted])
     factor = splu(system)
     solution = factor.solve(right)
