@@ -100,10 +100,13 @@ def _disc_faults(design: MachineDesign) -> list[Fault]:
 
 
 def _duty_findings(design: MachineDesign) -> list[Finding]:
-    duty = design.duty
-    if duty.maximum_speed_rpm >= duty.rated_speed_rpm:
-        return []
-    key = "duty.maximum_speed_rpm"
-    text = "below the rated speed"
-    remedy = f"accepted {duty.rated_speed_rpm:g} or more"
-    return [Finding("speed_order", key, duty.maximum_speed_rpm, text, remedy)]
+    duty, found = design.duty, []
+    if duty.maximum_speed_rpm < duty.rated_speed_rpm:
+        key, text = "duty.maximum_speed_rpm", "below the rated speed"
+        remedy = f"accepted {duty.rated_speed_rpm:g} or more"
+        found.append(Finding("speed_order", key, duty.maximum_speed_rpm, text, remedy))
+    if duty.most_current_a < duty.rated_current_a:
+        key, text = "duty.maximum_current_a", "below the rated current"
+        remedy = f"accepted {duty.rated_current_a:g} or more"
+        found.append(Finding("current_order", key, duty.most_current_a, text, remedy))
+    return found

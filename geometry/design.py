@@ -219,7 +219,14 @@ class DutyDesign(_Table):
     maximum_speed_rpm: Positive
     overspeed_factor: Annotated[float, Field(ge=1.0, le=2.0)] = 1.2
     supply_voltage_v: Positive  # rms between lines, the most the supply gives
+    maximum_current_a: Positive | None = None  # that the supply gives; default the rated
     demagnetising_current_a: Positive | None = None  # that magnets must bear; default the rated
+
+    @property
+    def most_current_a(self) -> float:
+        """The most current that the supply gives, A peak."""
+        stated = self.maximum_current_a
+        return self.rated_current_a if stated is None else stated
 
 
 class LimitsDesign(_Table):

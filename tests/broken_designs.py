@@ -327,6 +327,13 @@ SHAPES = (
         "0.1",
         "thinner than the sheet (0.5 mm); accepted 0.5 to ",
     ),
+    _row(
+        "supply of less than the rated current",
+        "rated_current_a",
+        "rated_current_a = 12.0\nmaximum_current_a = 5.0",
+        "duty.maximum_current_a = 5: below the rated current; accepted 12 or more",
+        down=1,
+    ),
     _value("gap wider than the rotor", "rotor.", "gap_mm", "60", "no rotor is left between "),
     _value("odd number of poles", "rotor.", "poles", "5", "poles come in pairs; accepted 4 or 6"),
     _value(

@@ -1,0 +1,46 @@
+"""What every chapter of `map` is given, and what it gives back."""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from lamwright.geometry.design_file import Machine
+from lamwright.geometry.section import CrossSection
+from lamwright.postprocess.coenergy_surface import CoenergySurface
+from lamwright.postprocess.flux_map import FluxMap
+from lamwright.solver.field import MagneticModel
+
+from .desk import Desk
+from .pool import Crew
+from .progress import Stopwatch
+
+if TYPE_CHECKING:
+    from _typeshed import DataclassInstance
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Mapped:
+    """A machine whose flux map is known."""
+
+    machine: Machine
+    section: CrossSection
+    model: MagneticModel
+    flux_map: FluxMap
+    surface: CoenergySurface
+    losses: str  # why iron loss is not given
+    crew: Crew[Desk]  # every desk has the model
+    watch: Stopwatch
+
+
+@dataclass(frozen=True, slots=True)
+class Chapter:
+    """What a chapter adds to `map.json`; its tables and pictures it has written itself."""
+
+    figures: "tuple[DataclassInstance, ...]"  # groups with fields made by `quantities.shown_as`
+    cautions: tuple[str, ...] = ()
+    not_given: tuple[str, ...] = ()  # figures that lack an input, each with what is missing
+
+
+# The machine and the hidden folder whose files move to the results when all chapters are done.
+ChapterMaker = Callable[[Mapped, Path], Chapter]
