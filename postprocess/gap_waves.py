@@ -121,21 +121,32 @@ def gap_waves(
         whole_period(whole_circle(reader, np.array(values)), turn, slots)
         for values in ([f.potential for f in fields], [f.reaction for f in fields])
     )
-    n_all = potential.shape[1]
-    kept = slice(1, orders_kept(n_all) + 1)
-    order = np.arange(n_all)[kept]
-    a = np.fft.fft(potential, axis=1)[:, kept] / n_all
-    # mu0 R H_n / n with H_n = sum R_j e^(-j n theta_j) / (2 pi R)
-    h = MU_0 * np.fft.fft(reaction, axis=1)[:, kept] / (2.0 * math.pi * order)
+    outer, inner = born_waves(potential, reaction)
     return GapWaves(
         pole_pairs=section.pole_pairs,
         slots=slots,
         radius=reader.radius,
         stack_length=section.stack_length,
         sixths=turn.sixths,
-        stator_born=np.fft.ifft(0.5 * (a - h), axis=0),
-        rotor_born=np.fft.ifft(0.5 * (a + h), axis=0),
+        stator_born=np.fft.ifft(outer, axis=0),
+        rotor_born=np.fft.ifft(inner, axis=0),
     )
+
+
+def born_waves(potential: FloatArray, reaction: FloatArray) -> tuple[ComplexArray, ComplexArray]:
+    """Amplitudes (..., n_space) in Wb/m of the waves born in the stator and in the rotor.
+
+    Args:
+        potential: (..., n_all) round the whole circle, in Wb/m.
+        reaction: (..., n_all), int H_theta N dl in A.
+    """
+    n_all = potential.shape[-1]
+    kept = slice(1, orders_kept(n_all) + 1)
+    order = np.arange(n_all)[kept]
+    a = np.fft.fft(potential, axis=-1)[..., kept] / n_all
+    # mu0 R H_n / n with H_n = sum R_j e^(-j n theta_j) / (2 pi R)
+    h = MU_0 * np.fft.fft(reaction, axis=-1)[..., kept] / (2.0 * math.pi * order)
+    return 0.5 * (a - h), 0.5 * (a + h)
 
 
 def whole_period(values: FloatArray, turn: SixthTurn, slots: int) -> FloatArray:

@@ -50,6 +50,8 @@ def ring_mesh(inner: float, rings: Sequence[Ring], sweep: float, n_theta: int) -
     all_radii = np.interp(np.arange(2 * len(radii) - 1) / 2.0, np.arange(len(radii)), corner_radii)
     theta = np.linspace(0.0, sweep, 2 * n_theta + 1)
     number = np.arange(all_radii.size * theta.size).reshape(all_radii.size, theta.size)
+    if math.isclose(sweep, 2.0 * math.pi):  # a whole circle has no sides
+        number[:, -1] = number[:, 0]
     if inner == 0.0:
         number[0] = 0
     z = all_radii[:, None] * np.exp(1j * theta)
@@ -86,6 +88,7 @@ class RingMachine:
     gap_layers: int = 4
     n_circle: int = 64
     inner: float = 0.0
+    sector_poles: int = 1
 
     @property
     def rim(self) -> float:
@@ -99,8 +102,8 @@ class RingMachine:
 
 
 def ring_sector(machine: RingMachine) -> SectorMesh:
-    """One pole of a ring machine."""
-    sweep = math.pi / machine.pole_pairs
+    """A sector of a ring machine, one pole or more."""
+    sweep = machine.sector_poles * math.pi / machine.pole_pairs
     rotor = (*machine.rotor, Ring("gap_rotor", machine.circle, machine.gap_layers))
     stator = (Ring("gap_stator", machine.bore, machine.gap_layers), *machine.stator)
     return SectorMesh(
@@ -109,6 +112,7 @@ def ring_sector(machine: RingMachine) -> SectorMesh:
         pole_pairs=machine.pole_pairs,
         circle_radius=machine.circle,
         n_circle=machine.n_circle,
+        sector_poles=machine.sector_poles,
     )
 
 
@@ -130,6 +134,7 @@ def ring_section(machine: RingMachine) -> CrossSection:
         rotor=tuple(region(n) for n in (*(r.region for r in machine.rotor), "gap_rotor")),
         stator=tuple(region(n) for n in ("gap_stator", *(r.region for r in machine.stator))),
         ribs=(),
+        sector_poles=machine.sector_poles,
     )
 
 
@@ -153,11 +158,13 @@ def sheet_model(
 
 
 def sheet_functional(sector: SectorMesh, bore: float, turns: float) -> FloatArray:
-    """Phase linkages (3, n_node of stator) of one pole: int (turns/2) sin(p theta - ..) A."""
+    """Phase linkages (3, n_node of stator) of a sector: int (turns/2) sin(p theta - ..) A."""
     nodes = sector.stator.nodes
     found = np.flatnonzero(np.abs(np.hypot(*nodes.T) - bore) < 1e-9 * bore)
     theta = np.mod(np.arctan2(nodes[found, 1], nodes[found, 0]) + 1e-6, 2.0 * np.pi) - 1e-6
     found, theta = found[np.argsort(theta)], np.sort(theta)
+    if sector.is_full_circle:
+        found, theta = np.append(found, found[0]), np.append(theta, theta[0] + 2.0 * np.pi)
     x, weight = np.polynomial.legendre.leggauss(5)
     shape = np.stack([x * (x - 1.0) / 2.0, 1.0 - x**2, x * (x + 1.0) / 2.0])  # on -1 .. 1
     nodal = np.zeros((3, nodes.shape[0]))
