@@ -37,6 +37,19 @@ def skew_factor(order: int, steps: int, angle_el: float) -> float:
     return math.sin(steps * half) / (steps * math.sin(half))
 
 
+def continuous_skew_factor(order: int, angle_el: float) -> float:
+    """Share of a harmonic that a continuous skew leaves: sin(nu a/2) / (nu a/2).
+
+    Args:
+        order: electrical order.
+        angle_el: from end to end in electrical rad.
+
+    Source: derived, mean of a cosine over the angle.
+    """
+    half = 0.5 * order * angle_el
+    return math.sin(half) / half if half else 1.0
+
+
 def skew_findings(design: MachineDesign) -> list[Finding]:
     """Keys of the skew that do nothing, and a skew by a pole pitch or more."""
     rotor, found = design.rotor, []

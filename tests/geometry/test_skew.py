@@ -5,7 +5,7 @@ import math
 import pytest
 
 from lamwright.geometry.checks import check_design
-from lamwright.geometry.skew import skew_factor, skew_offsets
+from lamwright.geometry.skew import continuous_skew_factor, skew_factor, skew_offsets
 from tests.outlines import plain_design
 
 
@@ -31,6 +31,23 @@ def test_many_steps_are_a_continuous_skew(slots, order, factor):
     """Check value B3, sin(nu a/2) / (nu a/2); n steps differ by (nu a / n)^2 / 24 (derived)."""
     angle = 4.0 * math.pi / slots
     assert abs(skew_factor(order, 4000, angle)) == pytest.approx(factor, rel=1e-5)
+
+
+B3 = {  # slots of a four-pole machine: order and factor of a skew by one slot pitch
+    24: {1: 0.988616, 11: 0.0898742, 13: 0.0760474},
+    36: {1: 0.994931, 17: 0.058525, 19: 0.052365},
+    48: {1: 0.997147, 23: 0.043354, 25: 0.039886},
+}
+
+
+@pytest.mark.parametrize("slots", B3)
+def test_continuous_skew_by_one_slot_pitch(slots):
+    """All of check values B3, to the digits given; the slot order itself is gone: exactly 0."""
+    angle = 4.0 * math.pi / slots
+    for order, factor in B3[slots].items():
+        assert abs(continuous_skew_factor(order, angle)) == pytest.approx(factor, rel=1e-5)
+    assert continuous_skew_factor(slots // 2, angle) == pytest.approx(0.0, abs=1e-15)
+    assert continuous_skew_factor(6, 0.0) == 1.0
 
 
 @pytest.mark.parametrize("steps", [1, 2, 3, 5])
