@@ -171,13 +171,28 @@ def _linearised(at: FluxState, old: FloatArray, new: FloatArray) -> FloatArray:
 
 def packed_tangent(quad: Quadrature, state: FluxState) -> FloatArray:
     """Lower triangles of the element tangents, (21, n_elem) in m/H, row by row."""
-    grad = quad.grad.transpose(1, 2, 3, 0)
-    weight = quad.weight.T
     g_x, g_y = state.grad_a.transpose(2, 1, 0)
     # dH/dB = nu I + 2 nu' g g^T; nu' < 0 at low B in real steel, yet it stays positive definite
     # because nu + 2 nu' |B|^2 = d|H|/d|B| > 0.
+    weight = quad.weight.T
     iso, aniso = weight * state.nu.T, 2.0 * weight * state.dnu.T
-    d_xx, d_xy, d_yy = iso + aniso * g_x * g_x, aniso * g_x * g_y, iso + aniso * g_y * g_y
+    return packed_products(
+        quad, iso + aniso * g_x * g_x, aniso * g_x * g_y, iso + aniso * g_y * g_y
+    )
+
+
+def packed_products(
+    quad: Quadrature, d_xx: FloatArray, d_xy: FloatArray, d_yy: FloatArray
+) -> FloatArray:
+    """Lower triangles (21, n_elem) of the sums over points of grad N_i . D grad N_j, row by row.
+
+    Args:
+        quad: of the elements.
+        d_xx: (n_qp, n_elem), entry of the symmetric D, the point's weight in it; as the others.
+        d_xy: see d_xx.
+        d_yy: see d_xx.
+    """
+    grad = quad.grad.transpose(1, 2, 3, 0)
     stiff = np.empty(grad.shape)
     stiff[:, 0] = d_xx[:, None] * grad[:, 0] + d_xy[:, None] * grad[:, 1]
     stiff[:, 1] = d_xy[:, None] * grad[:, 0] + d_yy[:, None] * grad[:, 1]
