@@ -86,6 +86,7 @@ class Cache:
 class Iron:
     """The nonlinear elements: the rotor's, then the stator's."""
 
+    element: IntArray  # (n_elem,), numbers among all elements, the rotor's first
     dof: IntArray  # (n_elem, 6), n_dof where A = 0
     sign: FloatArray  # (n_elem, 6)
     quad: Quadrature
@@ -236,6 +237,7 @@ def _model(
         pattern=pattern,
         ends=edge_ends(numbering, elements),
         iron=Iron(
+            element=iron,
             dof=numbering.dof[elements[iron]],
             sign=numbering.sign[elements[iron]],
             quad=quadrature(nodes, elements[iron], settings.iron_points),

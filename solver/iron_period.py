@@ -1,0 +1,156 @@
+"""Flux density in the steel, and its whole period from rotor positions over 60 electrical degrees.
+
+Derived. At constant i_d, i_q the field 60 electrical degrees on is the same field, turned. Slots
+and winding are themselves, phases exchanged or reversed, when turned by k slots; the rotor is
+itself when turned by its period of P poles, every second pole reversed. Where k slots are as far as
+60 electrical degrees and P j poles together (`geometry.sectors.ripples_in_sixty_degrees`), at
+alpha = 2 pi k / slots,
+
+    B(x, theta + 60) = (-1)^(P j) R(alpha) B(R(-alpha) x, theta)
+
+in the stator's frame, and with P j poles instead of alpha in the rotor's; for whole q and like
+poles j = 0 and k = q: the stator's field moves on by q slots and a point of the rotor sees all
+there is in 60 degrees. What lies outside the sector is brought back by whole sectors. The meshes
+repeat in themselves (`mesh_fold`), so quadrature points fall on quadrature points.
+
+Flux densities are complex here, B_x + i B_y. Axes: n_point quadrature points of a part's steel.
+"""
+
+import cmath
+import math
+from dataclasses import dataclass
+from functools import reduce
+
+import numpy as np
+import numpy.typing as npt
+
+from lamwright.geometry.errors import LamwrightError
+
+from .kernel import quadrature_places
+from .model import MagneticModel, joined_parts
+from .types import FieldSolution, FloatArray, IntArray
+
+ComplexArray = npt.NDArray[np.complex128]
+
+SAME_PLACE = 1e-7  # m; far under any element, far above rounding
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class PeriodStep:
+    """How the flux density of a part 60 electrical degrees on follows from what it is.
+
+    B(theta + 60 el) = turn * B(theta)[source]; after `steps` of them it is itself again.
+    """
+
+    source: IntArray  # (n_point,)
+    turn: ComplexArray  # (n_point,), of magnitude 1
+    steps: int
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class SteelPoints:
+    """Quadrature points of one part's steel in the sector."""
+
+    place: ComplexArray  # (n_point,), x + i y in m
+    area: FloatArray  # (n_point,), m^2 of the sector
+    step: PeriodStep
+
+
+def steel_points(
+    model: MagneticModel, slots: int, rotor_period: int
+) -> tuple[SteelPoints, SteelPoints]:
+    """The steel's points of rotor and stator.
+
+    Args:
+        model: of the machine.
+        slots: of the whole stator.
+        rotor_period: poles after which the rotor repeats.
+
+    Raises:
+        LamwrightError: the mesh does not repeat in itself, or nothing repeats after 60 degrees.
+    """
+    nodes, elements = joined_parts(model.sector)
+    iron = model.iron
+    places = quadrature_places(nodes, elements[iron.element], iron.quad.weight.shape[1])
+    z = places[..., 0] + 1j * places[..., 1]
+    pole = math.pi / model.sector.pole_pairs
+    j = _poles_between(slots, 2 * model.sector.pole_pairs, rotor_period)
+    sign = -1.0 if rotor_period * j % 2 else 1.0
+    back = rotor_period * j * pole  # by which the rotor's field turns in the rotor
+    steps = math.lcm(6, 3 * rotor_period)
+    parts = []
+    for part, angle in ((slice(None, iron.n_rotor), back), (slice(iron.n_rotor, None), None)):
+        z_part = z[part].ravel()
+        own = back + pole / 3.0 if angle is None else angle
+        source, turn = _turned(model, z_part, own, sign)
+        is_still = angle is not None and j == 0
+        step = PeriodStep(source, turn, 1 if is_still else steps)
+        parts.append(SteelPoints(z_part, iron.quad.weight[part].ravel(), step))
+    return parts[0], parts[1]
+
+
+def steel_flux(model: MagneticModel, solution: FieldSolution) -> tuple[ComplexArray, ComplexArray]:
+    """Flux density at the points of `steel_points`, B_x + i B_y in T, rotor and stator."""
+    iron = model.iron
+    _, elements = joined_parts(model.sector)
+    a = np.concatenate([solution.a_rotor, solution.a_stator])[elements[iron.element]]
+    grad = np.einsum("eqdi,ei->qde", iron.quad.grad, a)
+    b = (grad[:, 1] - 1j * grad[:, 0]).T  # B = (dA/dy, -dA/dx)
+    return b[: iron.n_rotor].ravel(), b[iron.n_rotor :].ravel()
+
+
+def whole_period(step: PeriodStep, waves: ComplexArray) -> ComplexArray:
+    """Flux density over the whole period of a part.
+
+    Args:
+        step: of the part.
+        waves: (n_pos, n_point), at positions equally spaced over 60 electrical degrees.
+
+    Returns:
+        (steps n_pos, n_point).
+    """
+    found = [waves]
+    for _ in range(step.steps - 1):
+        found.append(step.turn * found[-1][:, step.source])
+    return np.concatenate(found)
+
+
+def like_points(step: PeriodStep) -> IntArray:
+    """Number of the first point (n_point,) whose flux density is that of each, shifted in time."""
+    first = np.arange(step.source.size)
+    at = step.source
+    for _ in range(step.steps):
+        first = np.minimum(first, at)
+        at = step.source[at]
+    # Chains longer than the period meet their least number by repeating.
+    return reduce(lambda f, _: np.minimum(f, f[step.source]), range(step.steps), first)
+
+
+def _poles_between(slots: int, poles: int, rotor_period: int) -> int:
+    """The j of the file's head."""
+    for j in range(poles // rotor_period):
+        if slots * (1 + 3 * rotor_period * j) % (3 * poles) == 0:
+            return j
+    raise LamwrightError("the field does not repeat after 60 electrical degrees")
+
+
+def _turned(
+    model: MagneticModel, z: ComplexArray, angle: float, sign: float
+) -> tuple[IntArray, ComplexArray]:
+    """Where each point was `angle` before, and what its flux density there is turned by."""
+    from scipy.spatial import cKDTree
+
+    sector = model.sector
+    back = z * cmath.exp(-1j * angle)
+    # From the sector's middle, so that points near its sides are not lost to rounding.
+    lead = np.angle(back * cmath.exp(-0.5j * sector.sector_angle))
+    whole = np.round(lead / sector.sector_angle)
+    inside = back * np.exp(-1j * whole * sector.sector_angle)
+    tree = cKDTree(np.column_stack([z.real, z.imag]))
+    found = tree.query(np.column_stack([inside.real, inside.imag]))
+    distance, source = np.asarray(found[0]), np.asarray(found[1], dtype=np.int64)
+    if distance.max(initial=0.0) > SAME_PLACE:
+        raise LamwrightError("the mesh does not repeat from slot to slot or pole to pole")
+    signs = sign * sector.side_sign**whole
+    turn = signs * np.exp(1j * (angle + whole * sector.sector_angle))
+    return source, turn
