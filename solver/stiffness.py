@@ -63,7 +63,7 @@ class SupportedBody:
         """
         local = (force[:, 0] + 1j * force[:, 1]) * np.conj(self.supports.frame)
         parts = np.stack([local.real, local.imag], axis=1)
-        load = _on_unknowns(self.number, parts, len(self.held_load))
+        load = on_unknowns(self.number, parts, len(self.held_load))
         if held:
             load += self.held_load
         return scattered(self.supports, self.number, self.solver.solve(load), held=held)
@@ -81,7 +81,7 @@ def supported(body: ElasticBody, supports: Supports) -> SupportedBody:
     stiffness = element_stiffness(body)
     frame = supports.frame[mesh.elements]  # (n_elem, 6)
     turned = np.flatnonzero(np.any(frame != 1.0, axis=1))
-    turn = _frame_matrices(frame[turned])
+    turn = frame_matrices(frame[turned])
     stiffness[turned] = turn.transpose(0, 2, 1) @ stiffness[turned] @ turn
     number = supports.unknowns
     dofs = number[mesh.elements].reshape(-1, 12)
@@ -90,7 +90,7 @@ def supported(body: ElasticBody, supports: Supports) -> SupportedBody:
     held = np.where(number < 0, supports.value[supports.master], 0.0)
     if np.any(held):
         reaction = np.einsum("eij,ej->ei", stiffness, held[mesh.elements].reshape(-1, 12))
-        load -= _on_unknowns(dofs, reaction, n_unknown)
+        load -= on_unknowns(dofs, reaction, n_unknown)
     return SupportedBody(body, supports, number, load, _factor(dofs, stiffness, n_unknown))
 
 
@@ -110,7 +110,7 @@ def _factor(dofs: IntArray, stiffness: FloatArray, n_unknown: int) -> SparseSolv
     return solver
 
 
-def _frame_matrices(frame: ComplexArray) -> FloatArray:
+def frame_matrices(frame: ComplexArray) -> FloatArray:
     """Block-diagonal (n, 12, 12) from frame components to x and y, for `frame` (n, 6)."""
     turn = np.zeros((len(frame), 12, 12))
     for k in range(6):
@@ -120,7 +120,7 @@ def _frame_matrices(frame: ComplexArray) -> FloatArray:
     return turn
 
 
-def _on_unknowns(number: IntArray, values: FloatArray, n_unknown: int) -> FloatArray:
+def on_unknowns(number: IntArray, values: FloatArray, n_unknown: int) -> FloatArray:
     """Sums (n_unknown,) of `values` by their unknowns, those without one left out."""
     kept = number >= 0
     return np.asarray(np.bincount(number[kept], values[kept], n_unknown), dtype=np.float64)
