@@ -1,6 +1,7 @@
 """The chapters of `map`, in the order of its results: one line for each."""
 
 from .mapped import ChapterMaker
+from .yardstick_chapter import yardstick_chapter
 
 # Name of the phase that is shown and timed, and who writes it.
-CHAPTERS: tuple[tuple[str, ChapterMaker], ...] = ()
+CHAPTERS: tuple[tuple[str, ChapterMaker], ...] = (("yardsticks", yardstick_chapter),)
