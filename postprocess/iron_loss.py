@@ -33,10 +33,9 @@ import numpy as np
 
 from lamwright.solver.iron_period import (
     ComplexArray,
-    PeriodStep,
-    SteelPoints,
+    PeriodPoints,
+    flux_at,
     like_points,
-    steel_flux,
     steel_points,
 )
 from lamwright.solver.model import MagneticModel
@@ -53,7 +52,7 @@ class IronPart:
     """Steel of rotor or stator: its points, and what they weigh in the whole machine."""
 
     surface: LossSurface
-    step: PeriodStep
+    points: PeriodPoints
     first: IntArray  # (n_point,), see `like_points`
     chosen: IntArray  # (n_rep,), points unlike each other
     mass: FloatArray  # (n_rep,), kg of all points like each
@@ -104,13 +103,15 @@ def iron_laws(
     return IronLaws(parts[0], parts[1], stacking_factor, points[1].step.steps)
 
 
-def _part(points: SteelPoints, surface: LossSurface, length: float, number: FloatArray) -> IronPart:
+def _part(
+    points: PeriodPoints, surface: LossSurface, length: float, number: FloatArray
+) -> IronPart:
     first = like_points(points.step)
     chosen = np.unique(first)
     volume = length * np.bincount(first, points.area, first.size)[chosen].astype(np.float64)
     return IronPart(
         surface=surface,
-        step=points.step,
+        points=points,
         first=first,
         chosen=chosen,
         mass=surface.density * volume,
@@ -169,11 +170,10 @@ def flux_harmonics(
     model: MagneticModel, fields: Sequence[FieldSolution], laws: IronLaws
 ) -> tuple[FluxHarmonics, FluxHarmonics]:
     """Flux density of rotor and stator by electrical order, `fields` as above."""
-    flux = [steel_flux(model, field) for field in fields]
     found = []
-    for k, part in enumerate((laws.rotor, laws.stator)):
-        waves = np.stack([both[k] for both in flux]) / laws.stacking_factor
-        found.append(harmonics(_chosen_period(part, waves), 6.0 / part.step.steps))
+    for part in (laws.rotor, laws.stator):
+        waves = flux_at(model, part.points, fields) / laws.stacking_factor
+        found.append(harmonics(_chosen_period(part, waves), 6.0 / part.points.step.steps))
     return found[0], found[1]
 
 
@@ -181,9 +181,9 @@ def _chosen_period(part: IronPart, waves: ComplexArray) -> ComplexArray:
     """The whole period (n_sample, n_rep) of the chosen points alone."""
     source, turn = part.chosen, np.ones(part.chosen.size, dtype=np.complex128)
     found = [waves[:, source]]
-    for _ in range(part.step.steps - 1):
-        turn = turn * part.step.turn[source]
-        source = part.step.source[source]
+    for _ in range(part.points.step.steps - 1):
+        turn = turn * part.points.step.turn[source]
+        source = part.points.step.source[source]
         found.append(turn * waves[:, source])
     return np.concatenate(found)
 

@@ -26,7 +26,7 @@ class IronLossMap:
 
     i_d: tuple[float, float]  # A peak, least and greatest
     i_q: tuple[float, float]  # A peak
-    mirrored: tuple[bool, bool]  # whether the loss is the same for -i_d, for -i_q
+    mirrored: tuple[bool, bool]  # whether the loss is the same for -i_d, for -i_q, else for both
     knots: tuple[FloatArray, FloatArray]  # A
     degrees: tuple[int, int]
     splines: FloatArray  # (n_d', n_q', 3, n_order, 4), coefficients of the B-splines
@@ -92,6 +92,9 @@ def iron_loss(
 
     d, q, omega = np.broadcast_arrays(*(np.asarray(v, float) for v in (i_d, i_q, omega_e)))
     m = loss_map
+    if not m.mirrored[0] and m.i_d[0] >= 0.0:
+        # The reversal of both currents changes the sign of every field, and no loss.
+        d, q = np.abs(d), np.where(d < 0.0, -q, q)
     on_d = _inside("i_d", d.ravel(), m.i_d, m.mirrored[0])
     on_q = _inside("i_q", q.ravel(), m.i_q, m.mirrored[1])
     spline = NdBSpline(m.knots, m.splines, m.degrees)

@@ -18,6 +18,7 @@ Flux densities are complex here, B_x + i B_y. Axes: n_point quadrature points of
 
 import cmath
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import reduce
 
@@ -26,7 +27,7 @@ import numpy.typing as npt
 
 from lamwright.geometry.errors import LamwrightError
 
-from .kernel import quadrature_places
+from .kernel import quadrature, quadrature_places
 from .model import MagneticModel, joined_parts
 from .types import FieldSolution, FloatArray, IntArray
 
@@ -48,9 +49,10 @@ class PeriodStep:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class SteelPoints:
-    """Quadrature points of one part's steel in the sector."""
+class PeriodPoints:
+    """Quadrature points of some elements of one part in the sector."""
 
+    element: IntArray  # (n_elem,), numbers among all elements, the rotor's first
     place: ComplexArray  # (n_point,), x + i y in m
     area: FloatArray  # (n_point,), m^2 of the sector
     step: PeriodStep
@@ -58,7 +60,7 @@ class SteelPoints:
 
 def steel_points(
     model: MagneticModel, slots: int, rotor_period: int
-) -> tuple[SteelPoints, SteelPoints]:
+) -> tuple[PeriodPoints, PeriodPoints]:
     """The steel's points of rotor and stator.
 
     Args:
@@ -69,34 +71,49 @@ def steel_points(
     Raises:
         LamwrightError: the mesh does not repeat in itself, or nothing repeats after 60 degrees.
     """
+    iron, n_rotor = model.iron, model.iron.n_rotor
+    return (
+        _points(model, iron.element[:n_rotor], slots, rotor_period, is_rotor=True),
+        _points(model, iron.element[n_rotor:], slots, rotor_period, is_rotor=False),
+    )
+
+
+def copper_points(model: MagneticModel, slots: int, rotor_period: int) -> PeriodPoints:
+    """The points of all coil sides; arguments and errors as of `steel_points`."""
+    sector = model.sector
+    sides = sector.stator.elements_of("slot_") + sector.rotor.elements.shape[0]
+    return _points(model, sides, slots, rotor_period, is_rotor=False)
+
+
+def _points(
+    model: MagneticModel, numbers: IntArray, slots: int, rotor_period: int, *, is_rotor: bool
+) -> PeriodPoints:
     nodes, elements = joined_parts(model.sector)
-    iron = model.iron
-    places = quadrature_places(nodes, elements[iron.element], iron.quad.weight.shape[1])
-    z = places[..., 0] + 1j * places[..., 1]
+    places = quadrature_places(nodes, elements[numbers], 3)
+    z = (places[..., 0] + 1j * places[..., 1]).ravel()
     pole = math.pi / model.sector.pole_pairs
     j = _poles_between(slots, 2 * model.sector.pole_pairs, rotor_period)
     sign = -1.0 if rotor_period * j % 2 else 1.0
     back = rotor_period * j * pole  # by which the rotor's field turns in the rotor
-    steps = math.lcm(6, 3 * rotor_period)
-    parts = []
-    for part, angle in ((slice(None, iron.n_rotor), back), (slice(iron.n_rotor, None), None)):
-        z_part = z[part].ravel()
-        own = back + pole / 3.0 if angle is None else angle
-        source, turn = _turned(model, z_part, own, sign)
-        is_still = angle is not None and j == 0
-        step = PeriodStep(source, turn, 1 if is_still else steps)
-        parts.append(SteelPoints(z_part, iron.quad.weight[part].ravel(), step))
-    return parts[0], parts[1]
+    source, turn = _turned(model, z, back if is_rotor else back + pole / 3.0, sign)
+    steps = 1 if is_rotor and j == 0 else math.lcm(6, 3 * rotor_period)
+    weight = quadrature(nodes, elements[numbers], 3).weight.ravel()
+    return PeriodPoints(numbers, z, weight, PeriodStep(source, turn, steps))
 
 
-def steel_flux(model: MagneticModel, solution: FieldSolution) -> tuple[ComplexArray, ComplexArray]:
-    """Flux density at the points of `steel_points`, B_x + i B_y in T, rotor and stator."""
-    iron = model.iron
-    _, elements = joined_parts(model.sector)
-    a = np.concatenate([solution.a_rotor, solution.a_stator])[elements[iron.element]]
-    grad = np.einsum("eqdi,ei->qde", iron.quad.grad, a)
-    b = (grad[:, 1] - 1j * grad[:, 0]).T  # B = (dA/dy, -dA/dx)
-    return b[: iron.n_rotor].ravel(), b[iron.n_rotor :].ravel()
+def flux_at(
+    model: MagneticModel, points: PeriodPoints, solutions: Sequence[FieldSolution]
+) -> ComplexArray:
+    """Flux density at some points in each solution, B_x + i B_y in T, (n_solution, n_point)."""
+    nodes, elements = joined_parts(model.sector)
+    own = elements[points.element]
+    grad = quadrature(nodes, own, 3).grad
+    rows = []
+    for solution in solutions:
+        a = np.concatenate([solution.a_rotor, solution.a_stator])[own]
+        slope = np.einsum("eqdi,ei->eqd", grad, a)
+        rows.append((slope[..., 1] - 1j * slope[..., 0]).ravel())  # B = (dA/dy, -dA/dx)
+    return np.stack(rows)
 
 
 def whole_period(step: PeriodStep, waves: ComplexArray) -> ComplexArray:
