@@ -14,6 +14,7 @@ from .torque_causes import OrderCause, Slotting, pair_text, wave_text
 from .torque_pairs import WavePair
 
 DEGREE = math.pi / 180.0
+ROUNDING = 1e-12  # below it a number is none
 
 
 def ripple_csv(
@@ -40,7 +41,7 @@ def ripple_csv(
     header += [
         *("winding_order_below", "winding_factor_below", "rotor_order_below"),
         *("winding_order_above", "winding_factor_above", "rotor_order_above"),
-        *("is_slot_order", "may_be_of_barrier_ends", "largest_pair"),
+        *("is_slot_order", "may_be_of_barrier_ends", "strongest_pair"),
     ]
     rows = []
     for k, order in enumerate(spectrum.order):
@@ -53,9 +54,14 @@ def ripple_csv(
         row += [str(-cause.below), *_numbers(cause.factor_below), str(cause.below)]
         row += [str(cause.above), *_numbers(cause.factor_above), str(cause.above)]
         row += [_yes(cause.is_slot), _yes(cause.is_ends)]
-        row.append(pair_text(pairs[k][0], by) if pairs[k] else "")
+        row.append(pair_text(strongest(pairs[k]), by) if pairs[k] else "")
         rows.append(row)
     return csv_text(header, rows)
+
+
+def strongest(pairs: Sequence[WavePair]) -> WavePair:
+    """The pair of the greatest share of its order: most of it in phase with the whole."""
+    return max(pairs, key=lambda pair: pair.share)
 
 
 def pairs_csv(pairs: Sequence[Sequence[WavePair]], by: Slotting) -> str:
@@ -130,7 +136,7 @@ def skew_name(skew: SkewedTorque) -> str:
 
 
 def _numbers(*values: float) -> list[str]:
-    return [f"{value:.6g}" for value in values]
+    return [f"{value:.6g}" if abs(value) > ROUNDING else "0" for value in values]
 
 
 def _yes(flag: bool) -> str:
