@@ -92,6 +92,44 @@ def assess(
     ctx.exit(0 if verdict.passes else 1)
 
 
+@main.command("map")
+@_DESIGN
+@_OUT
+@click.option("--points", help="Currents of each axis, as 15x15.  [default: 15x15]")
+@click.option("--i-d", help="d-axis currents, A peak, as 0,2,5,9.  [default: to 1.25 x maximum]")
+@click.option("--i-q", help="q-axis currents, likewise.")
+@click.option("--positions", type=int, help="Over 60 electrical degrees.  [default: 12 or more]")
+@click.option(
+    "--tolerance",
+    type=click.Choice(["coarse", "normal", "fine"]),
+    default="normal",
+    show_default=True,
+    help="Largest error of torque and linkage: 2, 1 %; 0.5, 0.3 %; 0.1, 0.1 %.",
+)
+@click.option("--workers", type=int, help="Processes that solve.  [default: one for each core]")
+def flux_map(
+    design: Path,
+    out: Path,
+    tolerance: Literal["coarse", "normal", "fine"],
+    workers: int | None,
+    **wishes: str | int | None,
+) -> None:
+    """Flux map of DESIGN over i_d and i_q, and what the machine does with it.
+
+    Points are kept in the folder as they finish: a run that was stopped goes on where it was.
+    """
+    from .map_run import map_design
+    from .map_screen import print_map, wishes_of
+    from .screen import shown_progress
+
+    wanted = wishes_of(wishes)
+    with shown_progress() as progress:
+        report = map_design(
+            design, out, wanted, tolerance=tolerance, workers=workers, progress=progress
+        )
+    print_map(report, str(out))
+
+
 @main.command()
 @_DESIGN
 @click.option("--out", type=click.Path(path_type=Path), help="Folder for the results.")

@@ -15,10 +15,13 @@ from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
 from lamwright.solver.estimate_stress import finer_stress, peak_errors, zone_peaks
 from lamwright.solver.field import MagneticModel
+from lamwright.solver.foreseen import Node
 from lamwright.solver.rotor_stress import StressSettings, rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
 
 from .lamination import write_outline
+from .map_point import MapDesk, MapTask, map_desk, solved_point
+from .map_store import PointRecord
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +50,7 @@ class Desk:
         """An empty desk."""
         self._model: MagneticModel | None = None
         self._level: FineLevel | None = None
+        self._map: MapDesk | None = None
 
     def take_model(self, model: MagneticModel) -> None:
         """Keep the model for the chains to come; its factors are made here."""
@@ -58,6 +62,20 @@ class Desk:
         """Fields at the points one after the other, the first from `start`."""
         assert self._model is not None
         return solve_chain(self._model, points, start=start)
+
+    def take_map(self, task: MapTask) -> None:
+        """Begin the points of a map of the model."""
+        assert self._model is not None
+        self._map = map_desk(self._model, task)
+
+    def end_map(self) -> None:
+        """Let go of a map's factors and fields."""
+        self._map = None
+
+    def map_point(self, band: int, node: Node) -> PointRecord:
+        """A point of the map."""
+        assert self._map is not None
+        return solved_point(self._map, band, node)
 
     def change(
         self, section: CrossSection, winding: WindingTable, solution: FieldSolution

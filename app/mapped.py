@@ -9,6 +9,7 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
 from lamwright.postprocess.coenergy_surface import CoenergySurface
 from lamwright.postprocess.flux_map import FluxMap
+from lamwright.postprocess.iron_loss_map import IronLossMap
 from lamwright.solver.field import MagneticModel
 
 from .desk import Desk
@@ -28,7 +29,7 @@ class Mapped:
     model: MagneticModel
     flux_map: FluxMap
     surface: CoenergySurface
-    losses: str  # why iron loss is not given
+    losses: IronLossMap | str  # or why iron loss is not given
     crew: Crew[Desk]  # every desk has the model
     watch: Stopwatch
 

@@ -1,7 +1,7 @@
 """What a run tells on its way, and where its time goes."""
 
 import time
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
 
 from lamwright.postprocess.verdict import PhaseTime
@@ -29,10 +29,11 @@ def silent(phase: str, share: float) -> None:
 
 
 class Stopwatch:
-    """Wall time by phase; each phase of `SHARES` at most once."""
+    """Wall time by phase; each phase of the shares at most once."""
 
-    def __init__(self, progress: Progress) -> None:
-        """Tell `progress` what begins and how far it is."""
+    def __init__(self, progress: Progress, shares: Mapping[str, float] = SHARES) -> None:
+        """Tell `progress` what begins and how far it is; `shares` of the wall time in order."""
+        self._shares = shares
         self._progress = progress
         self._began = time.perf_counter()
         self._times: list[PhaseTime] = []
@@ -49,9 +50,9 @@ class Stopwatch:
 
     def within(self, share: float) -> None:
         """Tell how much of the present phase is done (0 to 1)."""
-        names = list(SHARES)
-        before = sum(SHARES[name] for name in names[: names.index(self._phase)])
-        self._progress(self._phase, before + share * SHARES[self._phase])
+        names = list(self._shares)
+        before = sum(self._shares[name] for name in names[: names.index(self._phase)])
+        self._progress(self._phase, before + share * self._shares[self._phase])
 
     def meanwhile(self, name: str, seconds: float) -> None:
         """Note what another process took at the same time."""

@@ -46,13 +46,13 @@ def prepared_folder(folder: Path) -> Path:
 
 
 @contextmanager
-def staged(folder: Path) -> Iterator[Path]:
-    """A hidden folder whose files move to `folder` when the block ends well, the verdict last."""
+def staged(folder: Path, last: str = VERDICT_FILE) -> Iterator[Path]:
+    """A hidden folder whose files move to `folder` when the block ends well, `last` as the last."""
     stage = Path(tempfile.mkdtemp(prefix=".unfinished-", dir=folder))
     try:
         yield stage
-        (folder / VERDICT_FILE).unlink(missing_ok=True)
-        for file in sorted(stage.iterdir(), key=lambda file: (file.name == VERDICT_FILE, file)):
+        (folder / last).unlink(missing_ok=True)
+        for file in sorted(stage.iterdir(), key=lambda file: (file.name == last, file)):
             file.replace(folder / file.name)
     finally:
         shutil.rmtree(stage, ignore_errors=True)

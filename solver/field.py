@@ -6,6 +6,7 @@ matrix entries, pattern, gap geometry) is kept for the next current at the same 
 symbolic factor for all positions whose patterns agree.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -36,7 +37,9 @@ __all__ = [
     "Position",
     "at_position",
     "magnetic_model",
+    "solve_foreseen",
     "solve_point",
+    "unknowns",
 ]
 
 
@@ -121,14 +124,62 @@ def solve_point(
         NotConverged: when Newton's iteration fails, with its history.
         ValueError: when `start` is of another mesh.
     """
-    theta_e = model.sector.pole_pairs * position
-    currents = phase_currents(i_d, i_q, theta_e)
-    place = at_position(model, position)
+    currents = phase_currents(i_d, i_q, model.sector.pole_pairs * position)
     load = currents @ model.linkage + model.magnet.load
+    if not load.any():
+        guess = _Guess(np.zeros(load.size))
+    else:
+        guess = _first_guess(model, currents, position, start)
+    return _solution(model, i_d, i_q, position, load, guess)
+
+
+def solve_foreseen(
+    model: MagneticModel,
+    i_d: float,
+    i_q: float,
+    position: float,
+    guesses: Sequence[FloatArray],
+) -> FieldSolution:
+    """The field with given dq currents at one rotor position, from guesses of its unknowns.
+
+    Args:
+        model: the machine.
+        i_d: peak d-axis current in A.
+        i_q: peak q-axis current in A.
+        position: mechanical angle in rad of the rotor's d axis ahead of phase A's axis.
+        guesses: (n_dof,) each, as `foreseen` makes them; the one of least residual is taken.
+
+    Raises:
+        NotConverged: when Newton's iteration fails, with its history.
+    """
+    currents = phase_currents(i_d, i_q, model.sector.pole_pairs * position)
+    load = currents @ model.linkage + model.magnet.load
+    best = guesses[0] if load.any() else np.zeros(load.size)
+    if load.any() and len(guesses) > 1:
+        energy = PointEnergy(model, at_position(model, position), load)
+        best = min(guesses, key=lambda a: float(np.linalg.norm(energy.residual(a)[0])))
+    return _solution(model, i_d, i_q, position, load, _Guess(best))
+
+
+def unknowns(model: MagneticModel, solution: FieldSolution) -> FloatArray:
+    """The unknowns (n_dof,) of a solution of the model."""
+    return _nodal(model, solution)[model.representative]
+
+
+def _solution(
+    model: MagneticModel,
+    i_d: float,
+    i_q: float,
+    position: float,
+    load: FloatArray,
+    guess: "_Guess",
+) -> FieldSolution:
+    """The field with a load (n_dof,) in A from a first guess."""
+    theta_e = model.sector.pole_pairs * position
+    place = at_position(model, position)
     energy = PointEnergy(model, place, load)
-    scale = float(np.linalg.norm(load))
-    guess = _first_guess(model, currents, position, start) if scale else _Guess(np.zeros(load.size))
-    a, state, report = minimise(energy, guess.a, scale or 1.0, model.settings.newton, energy)
+    scale = float(np.linalg.norm(load)) or 1.0
+    a, state, report = minimise(energy, guess.a, scale, model.settings.newton, energy)
 
     per_machine = model.sector.sectors * model.stack_length
     psi_abc = per_machine * (model.linkage @ a)

@@ -1,0 +1,84 @@
+"""One design's flux map to one folder, and what the chapters make of it: `map`.
+
+The points go to a store in the folder as they finish; a run that was stopped, however, goes on
+there. Nothing heavy is imported at the top, so that a broken design is refused at once.
+"""
+
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from lamwright.geometry.errors import LamwrightError
+from lamwright.postprocess.files import prepared_folder, staged
+
+from .drawings import read_marked
+from .lamination import section_of
+from .pool import Crew, spare_cores
+from .progress import Progress, Stopwatch, silent
+
+if TYPE_CHECKING:
+    from lamwright.solver.tolerance import ToleranceName
+
+    from .desk import Desk
+    from .map_grid import GridWishes
+    from .mapping import MapReport
+
+MOST_WORKERS = 64
+# Of the wall time on two cores (measured on demo_24s4p_arc); each chapter as much as the last.
+SHARES = {"start": 0.03, "mesh": 0.02, "flux map": 0.7, "error bars": 0.12, "files": 0.03}
+CHAPTER_SHARE = 0.02
+
+
+def map_design(
+    path: str | Path,
+    out: str | Path,
+    wishes: "GridWishes | None" = None,
+    *,
+    tolerance: "ToleranceName" = "normal",
+    workers: int | None = None,
+    pictures: bool = True,
+    progress: Progress = silent,
+) -> "MapReport":
+    """Compute the flux map of the design in `path`, and all that follows from it, into `out`.
+
+    Args:
+        path: design file.
+        out: folder, made where it is missing; points of the same map that it holds are kept.
+        wishes: what is asked of the grid.
+        tolerance: how fine to mesh.
+        workers: processes that solve; by default one for each core.
+        pictures: whether to draw the map's figures.
+        progress: called with the phase and the share done.
+
+    Raises:
+        DesignError: the design cannot be read or drawn; one line for each fault.
+        LamwrightError: a grid that cannot be, a folder that cannot be written, or one that holds
+            the points of another map.
+        NotConverged: an iteration did not end; what is committed stays.
+    """
+    if workers is not None and not 1 <= workers <= MOST_WORKERS:
+        raise LamwrightError(f"--workers {workers}: accepted 1 to {MOST_WORKERS}")
+    machine = read_marked(Path(path), Path(out))
+    section = section_of(machine)
+    folder = prepared_folder(Path(out))
+    from .map_chapters import CHAPTERS
+    from .map_grid import GridWishes, map_grid
+    from .map_store import PointStore
+    from .mapping import MAP_FILE, mapped_machine, run_of, write_results
+
+    grid = map_grid(machine, section, wishes or GridWishes())
+    watch = Stopwatch(progress, {**SHARES, **{name: CHAPTER_SHARE for name, _ in CHAPTERS}})
+    with PointStore(folder, run_of(machine, grid, tolerance)) as store:
+        with watch.phase("start"):
+            crew = Crew(make_desk, workers or spare_cores() + 1)
+        with crew:
+            mapped, solved = mapped_machine(machine, section, grid, store, crew, watch, tolerance)
+            with staged(folder, MAP_FILE) as stage:
+                return write_results(mapped, solved, grid, stage, tolerance, pictures)
+
+
+def make_desk() -> "Desk":
+    """An empty desk; what it and a map need is imported where it is made."""
+    from . import mapping  # noqa: F401
+    from .desk import Desk
+
+    return Desk()
