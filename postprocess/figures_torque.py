@@ -72,12 +72,12 @@ def draw_torque(ax: Axes, waveform: TorqueWaveform, style: Style) -> None:
     _plain(ax, style)
 
 
-def _legend(ax: Axes, style: Style) -> None:
+def _legend(ax: Axes, style: Style, columns: int = 2) -> None:
     """Names of curves or bars in one line above the axes, where nothing can be under them."""
     ax.legend(
         loc="lower left",
         bbox_to_anchor=(-0.01, 1.0),
-        ncols=2,
+        ncols=columns,
         frameon=False,
         fontsize=style.text,
         labelcolor=style.ink,

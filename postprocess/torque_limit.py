@@ -51,18 +51,19 @@ class TorqueLimit:
 def torque_limit(lines: TorqueLines, omega_e: FloatArray) -> TorqueLimit:
     """The greatest torque at speeds in electrical rad/s (n_speed,), 0 and above."""
     drive = lines.drive
-    on_circle = _most_on_circle(drive, omega_e)
-    per_volt, i_d, i_q = _most_per_volt(lines, omega_e)
-    is_free = np.hypot(i_d, i_q) <= drive.current_limit * (1.0 + NEAR)
-    torque = np.where(is_free, per_volt, shaft_torque(drive, *map(number, on_circle)))
-    torque = np.where(is_free | np.isfinite(on_circle[0]), torque, np.nan)
-    return TorqueLimit(
-        omega_e,
-        torque,
-        np.where(is_free, i_d, on_circle[0]),
-        np.where(is_free, i_q, on_circle[1]),
-        is_free,
-    )
+    i_d, i_q = _most_on_circle(drive, omega_e)
+    torque = np.where(np.isfinite(i_d), shaft_torque(drive, number(i_d), number(i_q)), np.nan)
+    is_per_volt = np.zeros(omega_e.shape, dtype=np.bool_)
+    # At and below base speed nothing gives more than most torque per ampere.
+    best = most_per_ampere(drive, np.array([drive.current_limit])).torque[0]
+    beyond = np.flatnonzero(~(torque >= best * (1.0 - NEAR)))
+    if beyond.size:
+        per_volt, by_d, by_q = _most_per_volt(lines, omega_e[beyond])
+        is_free = np.hypot(by_d, by_q) <= drive.current_limit * (1.0 + NEAR)
+        for values, free in ((torque, per_volt), (i_d, by_d), (i_q, by_q)):
+            values[beyond[is_free]] = free[is_free]
+        is_per_volt[beyond] = is_free
+    return TorqueLimit(omega_e, torque, i_d, i_q, is_per_volt)
 
 
 def _most_on_circle(drive: Terminals, omega_e: FloatArray) -> tuple[FloatArray, FloatArray]:

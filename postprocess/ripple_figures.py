@@ -1,0 +1,127 @@
+"""Figures of ripple, forces and pull, as they leave the program."""
+
+import math
+from dataclasses import dataclass, field
+
+from .quantities import shown_as, shown_estimate
+
+MM = 1e3  # mm per m
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RippleFigures:
+    """Torque ripple at rated current, by order."""
+
+    i_d: float = field(metadata=shown_as("ripple_i_d_a", "d-axis current of the ripple", "A"))
+    i_q: float = field(metadata=shown_as("ripple_i_q_a", "q-axis current of the ripple", "A"))
+    mean: float = field(metadata=shown_as("ripple_mean_torque_nm", "mean torque, no skew", "N m"))
+    order: int = field(metadata=shown_as("ripple_largest_order_el", "largest order of torque", ""))
+    largest: float = field(
+        metadata=shown_as("ripple_largest_percent", "largest order, no skew", "% of mean", 100.0)
+    )
+    slot_order: int = field(
+        metadata=shown_as("ripple_slot_order_el", "first slot order of torque", "")
+    )
+    slot: float = field(
+        metadata=shown_as("ripple_slot_order_percent", "slot order, no skew", "% of mean", 100.0)
+    )
+    slot_skewed: float = field(
+        metadata=shown_as(
+            "ripple_slot_order_skewed_percent", "slot order, this rotor's skew", "% of mean", 100.0
+        )
+    )
+    slot_pitch: float = field(
+        metadata=shown_as(
+            "ripple_slot_order_slot_pitch_percent",
+            "slot order, one slot pitch of continuous skew",
+            "% of mean",
+            100.0,
+        )
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ForceFigures:
+    """Forces of the gap's field on the stator at rated current."""
+
+    mean: float = field(
+        metadata=shown_as("radial_stress_mean_kpa", "mean radial stress on the bore", "kPa", 1e-3)
+    )
+    space: int = field(
+        metadata=shown_as(
+            "force_lowest_space_order", "lowest space order above 0 that alternates", ""
+        )
+    )
+    lowest: float = field(
+        metadata=shown_as(
+            "force_lowest_order_kpa", "its largest radial stress, amplitude", "kPa", 1e-3
+        )
+    )
+    frequency: float = field(
+        metadata=shown_as("force_lowest_order_hz", "its frequency at rated speed", "Hz")
+    )
+    frequency_at_most: float = field(
+        metadata=shown_as("force_lowest_order_maximum_hz", "its frequency at maximum speed", "Hz")
+    )
+    tooth_pull: float = field(
+        metadata=shown_as("tooth_pull_mean_n", "mean pull on a tooth, whole stack", "N")
+    )
+    tooth_most: float = field(
+        metadata=shown_as("tooth_pull_most_n", "greatest pull on a tooth", "N")
+    )
+    tooth_sideways: float = field(
+        metadata=shown_as("tooth_sideways_most_n", "greatest sideways force on a tooth", "N")
+    )
+    pull: float = field(
+        metadata=shown_as("centred_pull_most_n", "pull on the centred rotor, greatest", "N")
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PullFigures:
+    """A rotor beside the stator's axis, at rated current."""
+
+    offset: float = field(
+        metadata=shown_as("eccentricity_mm", "rotor's axis beside the stator's", "mm", MM)
+    )
+    share: float = field(
+        metadata=shown_as("eccentricity_percent", "the same over the gap", "%", 100.0)
+    )
+    along: float = field(
+        metadata=shown_as("eccentric_pull_n", "mean pull towards the narrow side", "N")
+    )
+    across: float = field(metadata=shown_as("eccentric_pull_across_n", "mean pull across it", "N"))
+    most: float = field(
+        metadata=shown_as("eccentric_pull_most_n", "greatest pull over the positions", "N")
+    )
+    stiffness: float = field(
+        metadata=shown_as("eccentric_pull_n_per_mm", "pull over offset", "N/mm", 1.0 / MM)
+    )
+    smooth: float = field(
+        metadata=shown_estimate(
+            "eccentric_pull_smooth_n", "pull of a smooth unsaturated gap, by formula", "N"
+        )
+    )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CoggingFigures:
+    """Torque of the magnets without current."""
+
+    per_turn: int = field(
+        metadata=shown_as("cogging_periods_per_turn", "periods of cogging in a turn", "")
+    )
+    peak_to_peak: float = field(
+        metadata=shown_as("cogging_peak_to_peak_nm", "cogging torque, peak to peak", "N m")
+    )
+    first: float = field(
+        metadata=shown_as("cogging_first_order_nm", "cogging torque, first order", "N m")
+    )
+
+
+def cautions_of_pull(smooth: float, along: float) -> tuple[str, ...]:
+    """What a reader of the pull should be wary of."""
+    lines = ["pull: no currents between parallel paths, which would lower it; rotor not bent"]
+    if along > smooth and math.isfinite(smooth):
+        lines.append("pull: above that of a smooth gap; harmonics of the field take part")
+    return tuple(lines)
