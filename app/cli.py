@@ -107,11 +107,13 @@ def assess(
     help="Largest error of torque and linkage: 2, 1 %; 0.5, 0.3 %; 0.1, 0.1 %.",
 )
 @click.option("--workers", type=int, help="Processes that solve.  [default: one for each core]")
+@click.option("--eccentricity-mm", type=float, help="Of the rotor.  [default: a tenth of the gap]")
 def flux_map(
     design: Path,
     out: Path,
     tolerance: Literal["coarse", "normal", "fine"],
     workers: int | None,
+    eccentricity_mm: float | None,
     **wishes: str | int | None,
 ) -> None:
     """Flux map of DESIGN over i_d and i_q, and what the machine does with it.
@@ -125,7 +127,13 @@ def flux_map(
     wanted = wishes_of(wishes)
     with shown_progress() as progress:
         report = map_design(
-            design, out, wanted, tolerance=tolerance, workers=workers, progress=progress
+            design,
+            out,
+            wanted,
+            tolerance=tolerance,
+            workers=workers,
+            progress=progress,
+            eccentricity_mm=eccentricity_mm,
         )
     print_map(report, str(out))
 

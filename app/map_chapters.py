@@ -1,7 +1,11 @@
 """The chapters of `map`, in the order of its results: one line for each."""
 
 from .mapped import ChapterMaker
+from .ripple_chapter import ripple_chapter
 from .yardstick_chapter import yardstick_chapter
 
 # Name of the phase that is shown and timed, and who writes it.
-CHAPTERS: tuple[tuple[str, ChapterMaker], ...] = (("yardsticks", yardstick_chapter),)
+CHAPTERS: tuple[tuple[str, ChapterMaker], ...] = (
+    ("ripple and forces", ripple_chapter),
+    ("yardsticks", yardstick_chapter),
+)

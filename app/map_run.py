@@ -4,6 +4,7 @@ The points go to a store in the folder as they finish; a run that was stopped, h
 there. Nothing heavy is imported at the top, so that a broken design is refused at once.
 """
 
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -16,6 +17,7 @@ from .pool import Crew, spare_cores
 from .progress import Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
+    from lamwright.geometry.section import CrossSection
     from lamwright.solver.tolerance import ToleranceName
 
     from .desk import Desk
@@ -23,6 +25,7 @@ if TYPE_CHECKING:
     from .mapping import MapReport
 
 MOST_WORKERS = 64
+MOST_SHARE = 0.4  # of the gap, that the rotor may stand beside the axis: see `solver.eccentric`
 # Of the wall time on two cores (measured on demo_24s4p_arc); each chapter as much as the last.
 SHARES = {"start": 0.03, "mesh": 0.02, "flux map": 0.7, "error bars": 0.12, "files": 0.03}
 CHAPTER_SHARE = 0.02
@@ -37,6 +40,7 @@ def map_design(
     workers: int | None = None,
     pictures: bool = True,
     progress: Progress = silent,
+    eccentricity_mm: float | None = None,
 ) -> "MapReport":
     """Compute the flux map of the design in `path`, and all that follows from it, into `out`.
 
@@ -48,6 +52,8 @@ def map_design(
         workers: processes that solve; by default one for each core.
         pictures: whether to draw the map's figures.
         progress: called with the phase and the share done.
+        eccentricity_mm: of the rotor's axis beside the stator's, for the pull; by default a tenth
+            of the gap.
 
     Raises:
         DesignError: the design cannot be read or drawn; one line for each fault.
@@ -59,6 +65,7 @@ def map_design(
         raise LamwrightError(f"--workers {workers}: accepted 1 to {MOST_WORKERS}")
     machine = read_marked(Path(path), Path(out))
     section = section_of(machine)
+    eccentricity = _eccentricity(eccentricity_mm, section)
     folder = prepared_folder(Path(out))
     from .map_chapters import CHAPTERS
     from .map_grid import GridWishes, map_grid
@@ -72,8 +79,20 @@ def map_design(
             crew = Crew(make_desk, workers or spare_cores() + 1)
         with crew:
             mapped, solved = mapped_machine(machine, section, grid, store, crew, watch, tolerance)
+            mapped = replace(mapped, eccentricity=eccentricity)
             with staged(folder, MAP_FILE) as stage:
                 return write_results(mapped, solved, grid, stage, tolerance, pictures)
+
+
+def _eccentricity(wish_mm: float | None, section: "CrossSection") -> float | None:
+    """The offset asked for in m, checked before anything is solved."""
+    if wish_mm is None:
+        return None
+    most = 1e3 * MOST_SHARE * section.gap
+    if not 0.0 < wish_mm <= most:
+        remedy = f"accepted above 0 to {most:.4g}, {MOST_SHARE:g} of the gap"
+        raise LamwrightError(f"--eccentricity-mm {wish_mm:g}: the rotor would touch; {remedy}")
+    return 1e-3 * wish_mm
 
 
 def make_desk() -> "Desk":

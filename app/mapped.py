@@ -32,6 +32,7 @@ class Mapped:
     losses: IronLossMap | str  # or why iron loss is not given
     crew: Crew[Desk]  # every desk has the model
     watch: Stopwatch
+    eccentricity: float | None = None  # m, of the rotor's axis beside the stator's; if asked for
 
 
 @dataclass(frozen=True, slots=True)

@@ -78,7 +78,7 @@ def ripple_chapter(mapped: Mapped, stage: Path) -> Chapter:
         mapped.model,
         mapped.crew,
         currents,
-        DEFAULT_SHARE * section.gap,
+        mapped.eccentricity or DEFAULT_SHARE * section.gap,
         mapped.watch.within,
     )
     return written(machine, section, work, stage)

@@ -109,13 +109,14 @@ def ripple_work(
     Args:
         machine: the design with its cards.
         section: its sector.
-        model: of the sector; every desk of the crew has it.
+        model: of the sector; every desk gets it, whatever chapter used the desks before.
         crew: who solves.
         currents: i_d and i_q in A.
         offset: of the rotor's axis from the stator's in m, towards the middle of a tooth.
         on_done: called with the share done, 0 to 1.
     """
     pole_pairs = section.pole_pairs
+    crew.everywhere(Desk.take_model, model)
     moved_to_come = crew.start(pulled, machine, currents, offset)
     reader = circle_reader(model)
     positions = waveform_positions(

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
+import numpy.typing as npt
 
 from .figures import _figure
 from .figures_style import Style
@@ -190,9 +191,14 @@ def draw_force_orders(ax: Axes, shown: ForcesPictured, style: Style) -> None:
     ax.axhline(0.0, color=style.quiet, linewidth=style.hair)
     ax.set_xlabel("space order: waves round the bore", fontsize=style.text)
     ax.set_ylabel("time order, electrical; below 0 against the rotor", fontsize=style.text)
-    twin = ax.secondary_yaxis(
-        "right", functions=(lambda k: k * shown.frequency, lambda f: f / shown.frequency)
-    )
+
+    def hertz(order: npt.ArrayLike) -> npt.ArrayLike:
+        return np.multiply(order, shown.frequency)
+
+    def order(hertz: npt.ArrayLike) -> npt.ArrayLike:
+        return np.divide(hertz, shown.frequency)
+
+    twin = ax.secondary_yaxis("right", functions=(hertz, order))
     twin.set_ylabel("frequency at rated speed in Hz", fontsize=style.text, color=style.ink)
     twin.tick_params(labelsize=style.text, colors=style.ink, width=style.hair)
     twin.spines["right"].set(color=style.quiet, linewidth=style.hair)
