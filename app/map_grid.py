@@ -30,8 +30,9 @@ POSITIONS = 12
 BEYOND = 1.25  # times the supply's most current
 LEAST_CURRENTS, MOST_CURRENTS = 3, 200  # of an axis
 LEAST_POSITIONS, MOST_POSITIONS = 6, 360
-CLEAR = 4  # first slot harmonic that a mean over default positions may let through
-HEARD = 3  # below it, a mean says little: a caution
+# First slot harmonic that a mean may let through. On demo_24s4p_arc Maxwell's mean torque is off by
+# 2 % of the greatest where the third comes through, by 0.2 % (the mesh's) where the sixth does.
+CLEAR = 4
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -100,7 +101,7 @@ def positions_for(pole_pairs: int, slots: int) -> int:
 def _cautions(pole_pairs: int, slots: int, count: int) -> tuple[str, ...]:
     n = slot_order(pole_pairs, slots) // 6
     first = count // math.gcd(count, n)
-    if first >= HEARD:
+    if first >= CLEAR:
         return ()
     better = positions_for(pole_pairs, slots)
     return (

@@ -38,7 +38,6 @@ def map_design(
     *,
     tolerance: "ToleranceName" = "normal",
     workers: int | None = None,
-    pictures: bool = True,
     progress: Progress = silent,
     eccentricity_mm: float | None = None,
 ) -> "MapReport":
@@ -50,7 +49,6 @@ def map_design(
         wishes: what is asked of the grid.
         tolerance: how fine to mesh.
         workers: processes that solve; by default one for each core.
-        pictures: whether to draw the map's figures.
         progress: called with the phase and the share done.
         eccentricity_mm: of the rotor's axis beside the stator's, for the pull; by default a tenth
             of the gap.
@@ -81,7 +79,7 @@ def map_design(
             mapped, solved = mapped_machine(machine, section, grid, store, crew, watch, tolerance)
             mapped = replace(mapped, eccentricity=eccentricity)
             with staged(folder, MAP_FILE) as stage:
-                return write_results(mapped, solved, grid, stage, tolerance, pictures)
+                return write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
 
 
 def _eccentricity(wish_mm: float | None, section: "CrossSection") -> float | None:

@@ -1,5 +1,6 @@
 """The work of `map`: the points by the crew, then files and chapters."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -19,7 +20,6 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 
 from .desk import Desk
-from .map_chapters import CHAPTERS
 from .map_errors import map_errors
 from .map_grid import MapGrid
 from .map_losses import harvest_of, laws_of, loss_map_of
@@ -94,16 +94,16 @@ def write_results(
     grid: MapGrid,
     stage: Path,
     tolerance: ToleranceName,
-    pictures: bool,
+    makers: Sequence[tuple[str, ChapterMaker]],
 ) -> MapReport:
-    """All files of a map into `stage`; returns what `map.json` says too."""
+    """All files of a map into `stage`, with those of the chapters; returns what `map.json` says."""
     machine, watch, flux_map = mapped.machine, mapped.watch, mapped.flux_map
     figures = map_figures(flux_map, mapped.surface, machine.design.duty.rated_current_a)
     with watch.phase("error bars"):
         errors = map_errors(mapped, (figures.i_d, figures.i_q), watch.within)
     with watch.phase("files"):
         write_map(stage, flux_map, mapped.surface, _attributes(machine, tolerance))
-    chapters = [_chapter(mapped, stage, name, write) for name, write in CHAPTERS]
+    chapters = [_chapter(mapped, stage, name, write) for name, write in makers]
     groups: list[DataclassInstance] = [
         _counts(flux_map, solved),
         figures,
