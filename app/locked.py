@@ -216,8 +216,9 @@ def print_locked(found: LockedRotor, folder: str) -> None:
     for one in found.comparisons:
         name, unit, factor = MEASURED[one.measured.column]
         worst = float(one.difference[one.worst]) / factor
+        at = f" at {one.measured.current:g} A" if one.measured.current else ""
         click.echo(
-            f"measured {name} at {one.measured.current:g} A, {len(one.measured.value)} values:"
+            f"measured {name}{at}, {len(one.measured.value)} values:"
             f" {number(one.rms / factor)} {unit} rms off, {worst:+.4g} {unit} at most, at"
             f" {one.measured.angle[one.worst] / DEGREE:.4g} deg"
         )

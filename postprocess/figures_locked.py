@@ -13,7 +13,7 @@ from lamwright.solver.types import FloatArray
 from .figures import SETTINGS, _figure, _save
 from .figures_style import Style, stress_colours
 from .locked import DEGREE, MM, LockedCurves, at_angles
-from .locked_measured import Comparison
+from .locked_measured import NO_CURRENT, Comparison
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -24,7 +24,11 @@ Dashes = str | tuple[float, tuple[float, ...]]
 FINE = 721  # points of a drawn curve: 4 an electrical degree at most
 PALEST = 0.3  # of the colour scale, for the least current
 HEADROOM = 0.08  # share of the range left free above and below
-MEASURED_LABEL = {"o": "measured", "D": "measured, incremental"}  # by mark
+MEASURED_LABEL = {
+    "o": "measured",
+    "D": "measured, incremental",
+    "s": "measured without current",
+}  # by mark
 TORQUE, APPARENT, INCREMENTAL = (
     "measured_torque_nm",
     "measured_inductance_apparent_mh",
@@ -82,6 +86,7 @@ def draw_locked_inductance(
         _draw_measured(ax, curves, comparisons, INCREMENTAL, float(current), colour, "D", MM)
     bare = MM * (curves.bare_slope + end)
     _draw_curve(ax, curves, bare, style.accent, (0, (1, 1.5)), "without current")
+    _draw_measured(ax, curves, comparisons, NO_CURRENT, 0.0, style.accent, "s", MM)
     _dress(ax, curves, "terminal inductance in mH", style)
     ax.text(
         1.0,

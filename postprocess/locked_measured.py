@@ -24,7 +24,9 @@ MEASURED = {
     "measured_torque_nm": ("torque", "N m", 1.0),
     "measured_inductance_apparent_mh": ("apparent inductance", "mH", 1.0 / MM),
     "measured_inductance_incremental_mh": ("incremental inductance", "mH", 1.0 / MM),
+    "measured_inductance_no_current_mh": ("inductance without current", "mH", 1.0 / MM),
 }
+NO_CURRENT = "measured_inductance_no_current_mh"  # an a.c. bridge's; its rows need no current_a
 SAME_CURRENT = 5e-3  # relative: a clamp's reading this near to a computed current is that
 
 
@@ -33,7 +35,7 @@ class Measured:
     """Measured values of one kind at one current."""
 
     column: str
-    current: float  # A, one of the computed ones
+    current: float  # A, one of the computed ones; 0 without direct current
     angle: FloatArray  # (n,) mechanical rad, d axis ahead of the feed's axis
     value: FloatArray  # (n,) SI
 
@@ -90,7 +92,9 @@ def read_measured(path: Path, curves: LockedCurves, zero_deg: float = 0.0) -> tu
         for column in columns:
             if (row[column] or "").strip():
                 place = f"--measured {path}:{reader.line_num}"
-                current = _known_current(place, _number(place, row, CURRENT), curves)
+                current = 0.0
+                if column != NO_CURRENT:
+                    current = _known_current(place, _number(place, row, CURRENT), curves)
                 angle = DEGREE * (_number(place, row, ANGLE) - zero_deg)
                 value = MEASURED[column][2] * _number(place, row, column)
                 found.setdefault((column, current), []).append((angle, value))
@@ -116,6 +120,10 @@ def predicted(curves: LockedCurves, column: str) -> FloatArray:
     """What a measured column holds if the computed machine is right, (n_cur, n_pos)."""
     if column == "measured_torque_nm":
         return curves.torque
+    if column == NO_CURRENT:
+        return (
+            np.tile(curves.bare_slope, (curves.currents.size, 1)) + curves.terminal_end_inductance
+        )
     field = curves.apparent if "apparent" in column else curves.slope
     return field + curves.terminal_end_inductance
 

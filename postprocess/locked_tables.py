@@ -13,7 +13,7 @@ from .locked import (
     locked_cautions,
     locked_figures,
 )
-from .locked_measured import ANGLE, CURRENT, MEASURED, Comparison
+from .locked_measured import ANGLE, CURRENT, MEASURED, NO_CURRENT, Comparison
 from .quantities import figures_of
 
 SAME_ANGLE = 1e-6  # rad: a measured value this near to a row's angle stands in that row
@@ -54,7 +54,12 @@ def locked_csv(curves: LockedCurves, comparisons: Sequence[Comparison]) -> str:
                 MM * curves.terminal_end_inductance,
                 coenergy[j],
             )
-            measured = [_measured_at(comparisons, name, current, angle) for name in MEASURED]
+            # What was measured without current stands beside the first one only.
+            owners = [0.0 if name == NO_CURRENT and k == 0 else current for name in MEASURED]
+            measured = [
+                _measured_at(comparisons, name, owner, angle)
+                for name, owner in zip(MEASURED, owners, strict=True)
+            ]
             rows.append([f"{number:.7g}" for number in numbers] + measured)
     # fmt: off
     header = [

@@ -22,6 +22,7 @@ from lamwright.postprocess.locked import (
 )
 from lamwright.postprocess.locked_measured import (
     MEASURED,
+    NO_CURRENT,
     compared,
     has_measured,
     read_measured,
@@ -184,6 +185,20 @@ def test_table_can_be_filled_in_and_read_again(tmp_path: Path) -> None:
     assert read_measured(beside, curves)[0].value == pytest.approx([-2.5])
     record = locked_record(curves, comparisons, "0", "hash")
     assert record["comparisons"][0]["difference_rms_nm"] == pytest.approx(comparisons[0].rms)
+
+
+def test_bridge_values_need_no_current(tmp_path: Path) -> None:
+    """They are held to the curve without current, and stand in the table once."""
+    curves, path = linear_curves(), tmp_path / "bridge.csv"
+    path.write_text("current_a,angle_mech_deg,measured_inductance_no_current_mh\n,0,185\n,45,43\n")
+    (measured,) = read_measured(path, curves)
+    found = compared(curves, measured)
+    assert found.measured.current == 0.0
+    # 2 (90 + 2) = 184 and 2 (20 + 2) = 44 mH
+    assert found.difference == pytest.approx([1e-3, -1e-3], abs=1e-9)
+    text = locked_csv(curves, [found])
+    rows = [row[NO_CURRENT] for row in csv.DictReader(text.splitlines()) if row[NO_CURRENT]]
+    assert rows == ["185", "43"]
 
 
 @pytest.mark.parametrize(
