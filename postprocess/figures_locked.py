@@ -26,7 +26,7 @@ PALEST = 0.3  # of the colour scale, for the least current
 HEADROOM = 0.08  # share of the range left free above and below
 MEASURED_LABEL = {
     "o": "measured",
-    "D": "measured, incremental",
+    "D": "measured incremental",
     "s": "measured without current",
 }  # by mark
 TORQUE, APPARENT, INCREMENTAL = (
@@ -52,9 +52,18 @@ def write_locked(
         matplotlib.rcParams.update(SETTINGS)
         title = f"{curves.design_name}: locked rotor, direct current, feed {curves.feed.name}"
         figure = _figure((9.0, 7.4), title, style)
-        draw_locked_torque(
-            figure.add_axes((0.085, 0.565, 0.885, 0.325)), curves, comparisons, style
+        end = MM * curves.terminal_end_inductance
+        figure.text(
+            0.985,
+            0.982,
+            f"~{end:.3g} mH of every inductance by formula, for the end winding",
+            fontsize=style.text,
+            color=style.quiet,
+            ha="right",
+            va="top",
         )
+        above = figure.add_axes((0.085, 0.57, 0.885, 0.34))
+        draw_locked_torque(above, curves, comparisons, style)
         below = figure.add_axes((0.085, 0.075, 0.885, 0.39))
         draw_locked_inductance(below, curves, comparisons, style)
         return _save(figure, folder / "locked", style)
@@ -79,7 +88,7 @@ def draw_locked_inductance(
     end, colours = curves.terminal_end_inductance, _colours(curves)
     for k, (current, colour) in enumerate(zip(curves.currents, colours, strict=True)):
         is_last = k == len(colours) - 1
-        names = ("apparent, psi / I", "incremental, d psi / d I") if is_last else (None, None)
+        names = ("apparent", "incremental") if is_last else (None, None)
         _draw_curve(ax, curves, MM * (curves.apparent[k] + end), colour, "-", names[0])
         _draw_curve(ax, curves, MM * (curves.slope[k] + end), colour, (0, (5, 2)), names[1])
         _draw_measured(ax, curves, comparisons, APPARENT, float(current), colour, "o", MM)
@@ -88,16 +97,6 @@ def draw_locked_inductance(
     _draw_curve(ax, curves, bare, style.accent, (0, (1, 1.5)), "without current")
     _draw_measured(ax, curves, comparisons, NO_CURRENT, 0.0, style.accent, "s", MM)
     _dress(ax, curves, "terminal inductance in mH", style)
-    ax.text(
-        1.0,
-        1.03,
-        f"~{MM * end:.3g} mH of them by formula, for the end winding",
-        transform=ax.transAxes,
-        fontsize=style.text,
-        color=style.quiet,
-        ha="right",
-        va="bottom",
-    )
     ax.set_ylim(0.0, None)
     ax.set_xlabel("d axis ahead of the current's axis in mechanical degrees", fontsize=style.text)
     ax.xaxis.label.set_color(style.ink)
