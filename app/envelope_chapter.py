@@ -1,0 +1,218 @@
+"""The envelope, the efficiency and a run in time of a mapped machine: tables, pictures, figures."""
+
+import math
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.whole_file import write_text
+from lamwright.geometry.winding import end_winding_inductance, phase_resistance
+from lamwright.postprocess.efficiency import KnownLosses, LoadPoints, at_currents, load_points
+from lamwright.postprocess.envelope import Envelope, Region, envelope
+from lamwright.postprocess.envelope_tables import efficiency_csv, envelope_csv, voltage_run_csv
+from lamwright.postprocess.figures_envelope import (
+    EfficiencySheet,
+    write_efficiency,
+    write_envelope,
+)
+from lamwright.postprocess.landmarks import landmarks
+from lamwright.postprocess.quantities import RPM, shown_as
+from lamwright.postprocess.terminals import Terminals, terminals
+from lamwright.postprocess.voltage_run import (
+    Feed,
+    VoltageRun,
+    energy_gap,
+    small_swings,
+    steady_voltages,
+    voltage_run,
+)
+from lamwright.solver.types import FloatArray
+
+from .mapped import Chapter, Mapped
+
+if TYPE_CHECKING:
+    pass
+
+SPEEDS = 81  # of the envelope, from 0 to the maximum speed
+TABLE_SPEEDS, TABLE_TORQUES = 24, 20  # of the efficiency's table
+SHEET_SPEEDS, SHEET_SHARES = 45, 32  # of its picture: shares of the most torque at each speed
+LEAST_SHARE, MOST_SHARE = 0.01, 0.998
+RAMP, MOST_PERIODS, DAMPINGS = 20.0, 80.0, 7.0  # of the run; e^-7 = 1e-3 is left of a swing
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class EfficiencyFigures:
+    """The best efficiency of the map, and that at rated speed on the envelope."""
+
+    best: float = field(
+        metadata=shown_as("best_efficiency_percent", "best efficiency, of losses given", "%", 100.0)
+    )
+    torque: float = field(metadata=shown_as("best_efficiency_torque_nm", "at shaft torque", "N m"))
+    speed: float = field(metadata=shown_as("best_efficiency_speed_rpm", "at speed", "1/min", RPM))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RunFigures:
+    """A run in time on constant voltage, from zero current to a point of the envelope."""
+
+    speed: float = field(metadata=shown_as("voltage_run_speed_rpm", "voltage run at", "1/min", RPM))
+    current_difference: float = field(
+        metadata=shown_as(
+            "voltage_run_current_difference_percent", "its end off the table, current", "%", 100.0
+        )
+    )
+    torque_difference: float = field(
+        metadata=shown_as(
+            "voltage_run_torque_difference_percent", "its end off the table, torque", "%", 100.0
+        )
+    )
+    energy_gap: float = field(
+        metadata=shown_as(
+            "voltage_run_energy_gap_percent", "its energies' balance, what lacks", "%", 100.0
+        )
+    )
+    damping: float = field(
+        metadata=shown_as("voltage_run_damping_time_ms", "its swings die down to 1/e in", "ms", 1e3)
+    )
+
+
+def envelope_chapter(mapped: Mapped, stage: Path) -> Chapter:
+    """Envelope, efficiency and voltage run; their files in `stage`."""
+    design = mapped.machine.design
+    top, rated = (rpm / RPM for rpm in (design.duty.maximum_speed_rpm, design.duty.rated_speed_rpm))
+    try:
+        drive = drive_of(mapped)
+    except LamwrightError as error:
+        return Chapter(figures=(), not_given=(f"envelope, efficiency, voltage run: {error}",))
+    found = envelope(drive, np.linspace(0.0, top, SPEEDS))
+    marks = landmarks(drive, found, rated)
+    if marks.corner is not None and marks.corner.speed < top:
+        # With the corner itself, so that the curves bend where they should.
+        found = envelope(drive, np.union1d(found.speed, [marks.corner.speed]))
+    write_text(stage / "envelope.csv", envelope_csv(found))
+    generating = envelope(drive, found.speed, is_generating=True)
+    write_text(stage / "envelope_generating.csv", envelope_csv(generating))
+    write_envelope(stage, design.name, found, marks.corner, drive.voltage_limit)
+    figures, lines = [*marks.figures], [*marks.lines]
+    losses = known_losses(mapped)
+    efficiency = _efficiency(stage, mapped, drive, losses, top)
+    run = _run(stage, drive, rated)
+    for made, name in ((efficiency, "efficiency"), (run, "voltage run")):
+        if isinstance(made, str):
+            lines.append(f"{name}: {made}")
+        else:
+            figures.append(made)
+    return Chapter(tuple(figures), (), (*lines, *losses.missing))
+
+
+def drive_of(mapped: Mapped) -> Terminals:
+    """The machine behind its terminals, with the limits of its duty.
+
+    Raises:
+        LamwrightError: no current within the limit motors.
+    """
+    design = mapped.machine.design
+    return terminals(
+        mapped.surface,
+        resistance=phase_resistance(design),
+        end_inductance=end_winding_inductance(design),
+        current_limit=design.duty.most_current_a,
+        line_voltage=design.duty.supply_voltage_v,
+    )
+
+
+def known_losses(mapped: Mapped) -> KnownLosses:
+    """What is known of the machine's losses beside the DC copper's."""
+    return KnownLosses(
+        iron=None,
+        copper_factor=None,
+        friction=None,
+        missing=(
+            "iron loss of stator and rotor",
+            "AC copper loss",
+            "friction and windage",
+        ),
+    )
+
+
+def _efficiency(
+    stage: Path, mapped: Mapped, drive: Terminals, losses: KnownLosses, top: float
+) -> EfficiencyFigures | str:
+    """Table and picture of the efficiency; a line where no torque is reached."""
+    sheet_speed = top * np.linspace(LEAST_SHARE, 1.0, SHEET_SPEEDS)
+    most = _most_shaft_torque(drive, losses, sheet_speed)
+    if not np.any(most > 0.0):
+        return "no torque is left at the shaft at any speed"
+    share = np.linspace(LEAST_SHARE, MOST_SHARE, SHEET_SHARES)
+    torque = np.where(most > 0.0, most, np.nan)[:, None] * share
+    points = _points(drive, losses, np.repeat(sheet_speed, SHEET_SHARES), torque.ravel())
+    has_iron = losses.iron is not None
+    sheet = EfficiencySheet(sheet_speed, torque, points, losses.missing, has_iron)
+    write_efficiency(stage, mapped.machine.design.name, sheet)
+    greatest = float(np.nanmax(torque))
+    speed, asked = (
+        axis.ravel()
+        for axis in np.meshgrid(
+            np.linspace(0.0, top, TABLE_SPEEDS + 1)[1:],
+            np.linspace(0.0, greatest, TABLE_TORQUES + 1)[1:],
+            indexing="ij",
+        )
+    )
+    table = load_points(drive, losses, speed, asked)
+    thrifty = load_points(drive, losses, speed, asked, "current")
+    write_text(stage / "efficiency.csv", efficiency_csv(speed, asked, table, thrifty, losses))
+    if not has_iron:
+        return "its best point is not given without iron loss"
+    best = int(np.nanargmax(points.efficiency))
+    return EfficiencyFigures(
+        best=float(points.efficiency[best]),
+        torque=float(points.torque[best]),
+        speed=float(points.speed[best]),
+    )
+
+
+def _most_shaft_torque(drive: Terminals, losses: KnownLosses, speed: FloatArray) -> FloatArray:
+    """The envelope's torque (n,) in N m less the drag, NaN where nothing is reached."""
+    found = envelope(drive, speed)
+    return at_currents(drive, losses, speed, found.i_d, found.i_q).torque
+
+
+def _points(
+    drive: Terminals, losses: KnownLosses, speed: FloatArray, torque: FloatArray
+) -> LoadPoints:
+    """Points of least loss, NaN where the torque is."""
+    is_asked = np.isfinite(torque)
+    found = load_points(drive, losses, speed, np.where(is_asked, torque, 1.0))
+    i_d, i_q = (np.where(is_asked, i, np.nan) for i in (found.i_d, found.i_q))
+    return at_currents(drive, losses, speed, i_d, i_q)
+
+
+def _run(stage: Path, drive: Terminals, rated: float) -> RunFigures | str:
+    """A run from zero current to the envelope's point at rated speed; a line where it cannot be."""
+    table: Envelope = envelope(drive, np.array([rated]))
+    if table.region[0] == Region.NONE:
+        return f"no torque is reached at rated speed, {RPM * rated:.0f}/min"
+    i_d, i_q = float(table.i_d[0]), float(table.i_q[0])
+    omega_e = drive.surface.pole_pairs * rated
+    u_d, u_q = steady_voltages(drive, i_d, i_q, omega_e)
+    from_d, from_q = steady_voltages(drive, 0.0, 0.0, omega_e)
+    period = 2.0 * math.pi / omega_e
+    damping = -1.0 / small_swings(drive, i_d, i_q, omega_e)[0].real
+    duration = RAMP * period + min(DAMPINGS * damping, MOST_PERIODS * period)
+    feed = Feed(u_d, u_q, omega_e, RAMP * period, from_d, from_q)
+    try:
+        run: VoltageRun = voltage_run(drive, feed, (0.0, 0.0), duration)
+    except LamwrightError as error:
+        return str(error)
+    write_text(stage / "voltage_run.csv", voltage_run_csv(run, drive.surface.pole_pairs))
+    off = math.hypot(run.i_d[-1] - i_d, run.i_q[-1] - i_q) / math.hypot(i_d, i_q)
+    return RunFigures(
+        speed=rated,
+        current_difference=off,
+        torque_difference=float(run.torque[-1] / table.torque[0]) - 1.0,
+        energy_gap=energy_gap(run, duration - period),
+        damping=damping,
+    )
