@@ -1,6 +1,7 @@
 """The chapters of `map`, in the order of its results: one line for each."""
 
 from .envelope_chapter import envelope_chapter
+from .loss_chapter import loss_chapter
 from .mapped import ChapterMaker
 from .ripple_chapter import ripple_chapter
 from .yardstick_chapter import yardstick_chapter
@@ -9,5 +10,6 @@ from .yardstick_chapter import yardstick_chapter
 CHAPTERS: tuple[tuple[str, ChapterMaker], ...] = (
     ("envelope and efficiency", envelope_chapter),
     ("ripple and forces", ripple_chapter),
+    ("losses", loss_chapter),
     ("yardsticks", yardstick_chapter),
 )

@@ -69,6 +69,12 @@ def strand_findings(winding: WindingDesign) -> Iterator[Finding]:
         remedy = "accepted round_diameter_mm alone, or width_mm, height_mm and layers"
         yield Finding("strand-shape", key, strands.round_diameter_mm or 0.0, fault, remedy)
         return
+    in_slot = winding.layers * winding.turns_per_coil * strands.in_hand
+    if strands.layers is not None and in_slot % strands.layers:
+        fault = f"{in_slot} strands in a slot do not fill so many layers"
+        fitting = (n for n in range(1, in_slot + 1) if in_slot % n == 0)
+        remedy = f"accepted {', '.join(str(n) for n in fitting)}"
+        yield Finding("strand-layers", "winding.strands.layers", strands.layers, fault, remedy)
     total, stated = strands.in_hand * area, winding.conductor_area_mm2
     if abs(total - stated) > MOST_AREA_DIFFERENCE * stated:
         fault = f"not the strands' copper, {strands.in_hand} of {area:.4g} mm2"

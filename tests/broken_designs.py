@@ -366,12 +366,15 @@ SHAPES = (
     ),
     Broken(
         "strands of another area",
-        with_row(
-            "end_turn_length_mm",
-            "end_turn_length_mm = 110.0\n[winding.strands]\nround_diameter_mm = 1.0",
-        ).encode(),
+        with_row("strands", "strands = { round_diameter_mm = 1.0, in_hand = 2 }").encode(),
         f":{row_of('conductor_area_mm2')}: winding.conductor_area_mm2 = 1.4: not the strands'"
-        " copper, 1 of 0.7854 mm2; accepted 0.7854 within 2 %",
+        " copper, 2 of 0.7854 mm2; accepted 1.571 within 2 %",
+    ),
+    _row(
+        "strands of two shapes",
+        "strands",
+        "strands = { round_diameter_mm = 0.944, height_mm = 0.5 }",
+        "winding.strands.round_diameter_mm = 0.944: a strand is either round or rectangular, and",
     ),
     _value(
         "bigger than any machine",
