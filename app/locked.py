@@ -100,14 +100,16 @@ def locked(
     values = parsed_currents(currents)
     machine = read_machine(path)
     section = section_of(machine)
-    period = 2 if machine.magnet is not None else section.rotor_period
+    # Magnets change sign from pole to pole.
+    period = section.rotor_period if machine.magnet is None else math.lcm(2, section.rotor_period)
     angles = locked_angles(section.pole_pairs, period, step_deg)
     if not math.isfinite(zero_deg):
         raise LamwrightError(f"--zero-deg {zero_deg}: not a finite number; accepted any finite one")
+    # A bad table is told before the minutes that the fields take.
+    found = () if measured is None else read_measured(measured, values, zero_deg)
     folder = prepared_folder(Path(out))
     _refuse_to_lose(folder / CSV_FILE, measured)
     curves = locked_curves(machine, section, feed_of(feed), angles, values, progress, tolerance)
-    found = () if measured is None else read_measured(measured, curves, zero_deg)
     comparisons = tuple(compared(curves, one) for one in found)
     with staged(folder) as stage:
         from lamwright.postprocess.figures_locked import write_locked
@@ -171,6 +173,7 @@ def locked_curves(
         bare_slope=slope[0],
         coenergy=coenergy[1:],
         end_inductance=end_winding_inductance(machine.design),
+        skew_steps=len(offsets),
         seconds=time.perf_counter() - began,
     )
 

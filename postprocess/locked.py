@@ -30,6 +30,7 @@ from lamwright.geometry.errors import LamwrightError
 from lamwright.solver.types import FloatArray
 
 from .quantities import shown_as, shown_estimate
+from .skew import skew_cautions
 
 DEGREE = math.pi / 180.0
 MM = 1e3  # mH per H
@@ -78,7 +79,7 @@ class LockedCurves:
     design_name: str
     feed: Feed
     pole_pairs: int
-    poles_in_period: int  # 1 or 2
+    poles_in_period: int
     currents: FloatArray  # (n_cur,) A
     angle: FloatArray  # (n_pos,) mechanical rad
     torque: FloatArray  # (n_cur, n_pos) N m
@@ -87,6 +88,7 @@ class LockedCurves:
     bare_slope: FloatArray  # (n_pos,) H, the same without current
     coenergy: FloatArray  # (n_cur, n_pos) J
     end_inductance: float  # H, of a phase, by formula
+    skew_steps: int
     seconds: float
 
     @property
@@ -158,7 +160,7 @@ def locked_cautions(curves: LockedCurves) -> tuple[str, ...]:
         "magnetising at rest leaves remanence in steel, which the curves have not: measure after"
         " several reversals of the current, and take the mean of both directions",
     ]
-    return tuple(lines)
+    return (*lines, *skew_cautions(curves.skew_steps))
 
 
 def parsed_currents(text: str) -> tuple[float, ...]:
@@ -194,7 +196,7 @@ def locked_angles(
 
     Args:
         pole_pairs: of the machine.
-        poles_in_period: 1 or 2.
+        poles_in_period: after which the rotor, magnets in it, is itself again.
         step_deg: most that two neighbours may be apart, mechanical degrees; by default 2
             electrical ones.
 

@@ -7,7 +7,7 @@ compared with the field's value and the end winding's estimate together.
 
 import csv
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -63,12 +63,14 @@ class Comparison:
         return int(np.argmax(np.abs(self.difference)))
 
 
-def read_measured(path: Path, curves: LockedCurves, zero_deg: float = 0.0) -> tuple[Measured, ...]:
+def read_measured(
+    path: Path, currents: Sequence[float], zero_deg: float = 0.0
+) -> tuple[Measured, ...]:
     """The measured values in the file `path`.
 
     Args:
         path: CSV with a header row; columns `current_a`, `angle_mech_deg` and any of `MEASURED`.
-        curves: to whose currents the values must belong.
+        currents: A, the computed ones, to which the values must belong.
         zero_deg: reading of the file's angles with the d axis on the feed's axis.
 
     Raises:
@@ -94,7 +96,7 @@ def read_measured(path: Path, curves: LockedCurves, zero_deg: float = 0.0) -> tu
                 place = f"--measured {path}:{reader.line_num}"
                 current = 0.0
                 if column != NO_CURRENT:
-                    current = _known_current(place, _number(place, row, CURRENT), curves)
+                    current = _known_current(place, _number(place, row, CURRENT), currents)
                 angle = DEGREE * (_number(place, row, ANGLE) - zero_deg)
                 value = MEASURED[column][2] * _number(place, row, column)
                 found.setdefault((column, current), []).append((angle, value))
@@ -148,10 +150,10 @@ def _number(place: str, row: Mapping[str, str | None], column: str) -> float:
     return value
 
 
-def _known_current(place: str, current: float, curves: LockedCurves) -> float:
-    nearest = float(curves.currents[np.argmin(np.abs(curves.currents - current))])
+def _known_current(place: str, current: float, currents: Sequence[float]) -> float:
+    nearest = min(currents, key=lambda known: abs(known - current))
     if abs(current - nearest) > SAME_CURRENT * nearest:
-        computed = ", ".join(f"{value:g}" for value in curves.currents)
+        computed = ", ".join(f"{value:g}" for value in currents)
         raise LamwrightError(
             f"{place}: {CURRENT} = {current:g}: not computed; accepted {computed}, or add it to"
             " --currents"

@@ -142,6 +142,7 @@ def test_filled_table_is_not_written_over(written) -> None:
         (("--currents", ""), "no current"),
         (("--step-deg", "90"), "--step-deg 90: not between"),
         (("--zero-deg", "nan"), "--zero-deg nan: not a finite number"),
+        (("--measured", "absent.csv"), "--measured absent.csv: cannot be read: no such file"),
     ],
 )
 def test_bad_options_end_with_one_line(tmp_path, option: tuple[str, str], fault: str) -> None:

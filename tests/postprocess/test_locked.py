@@ -32,11 +32,12 @@ from lamwright.solver.integrals import phase_currents
 
 L_D, L_Q, END = 0.090, 0.020, 0.002  # H, of a phase
 DEGREE = math.pi / 180.0
+CURRENTS = (5.0, 8.0)
 
 
 def linear_curves(feed: str = "two-in-series") -> LockedCurves:
     """A linear machine of four poles: psi_t = (mean + half sin) I, T = 1/2 I^2 dL/d theta."""
-    how, currents = feed_of(feed), np.array([5.0, 8.0])
+    how, currents = feed_of(feed), np.array(CURRENTS)
     angle = np.array(locked_angles(2, 1, 5.0))
     mean, half = 0.5 * (L_D + L_Q), 0.5 * (L_D - L_Q)
     inductance = how.terminal_factor * (mean + half * np.cos(4.0 * angle))
@@ -54,6 +55,7 @@ def linear_curves(feed: str = "two-in-series") -> LockedCurves:
         bare_slope=inductance,
         coenergy=0.5 * np.outer(currents**2, inductance),
         end_inductance=END,
+        skew_steps=1,
         seconds=0.0,
     )
 
@@ -156,7 +158,7 @@ def test_measured_values_are_compared_where_they_stand(tmp_path: Path) -> None:
     rows = [(8.0, a + 10.0, f"{torque(a) + 0.1}", f"{inductance(a)}") for a in (-7.0, 3.3, 100.0)]
     rows.append((8.01, 30.0, f"{torque(20.0) - 0.3}", " "))
     path = filled(tmp_path / "bench.csv", rows)
-    torques, inductances = (compared(curves, one) for one in read_measured(path, curves, 10.0))
+    torques, inductances = (compared(curves, one) for one in read_measured(path, CURRENTS, 10.0))
     assert torques.difference == pytest.approx([0.1, 0.1, -0.3, 0.1], abs=1e-9)
     assert torques.rms == pytest.approx(math.sqrt(0.12 / 4), rel=1e-9)
     assert torques.measured.angle[torques.worst] == pytest.approx(20.0 * DEGREE)
@@ -172,17 +174,17 @@ def test_table_can_be_filled_in_and_read_again(tmp_path: Path) -> None:
     assert all(row[name] == "" for row in rows for name in MEASURED)
     assert not has_measured(path)
     with pytest.raises(LamwrightError, match="no row has a measured value; fill in measured_"):
-        read_measured(path, curves)
+        read_measured(path, CURRENTS)
     rows[3]["measured_torque_nm"] = "-2.5"
     path.write_text(csv_text(list(rows[0]), [list(row.values()) for row in rows]))
     assert has_measured(path)
-    comparisons = [compared(curves, one) for one in read_measured(path, curves)]
+    comparisons = [compared(curves, one) for one in read_measured(path, CURRENTS)]
     again = list(csv.DictReader(locked_csv(curves, comparisons).splitlines()))
     assert [row["measured_torque_nm"] for row in again if row["measured_torque_nm"]] == ["-2.5"]
     assert again[3]["measured_torque_nm"] == "-2.5"
     beside = tmp_path / "locked_comparison.csv"
     beside.write_text(comparison_csv(curves, comparisons))
-    assert read_measured(beside, curves)[0].value == pytest.approx([-2.5])
+    assert read_measured(beside, CURRENTS)[0].value == pytest.approx([-2.5])
     record = locked_record(curves, comparisons, "0", "hash")
     assert record["comparisons"][0]["difference_rms_nm"] == pytest.approx(comparisons[0].rms)
 
@@ -191,7 +193,7 @@ def test_bridge_values_need_no_current(tmp_path: Path) -> None:
     """They are held to the curve without current, and stand in the table once."""
     curves, path = linear_curves(), tmp_path / "bridge.csv"
     path.write_text("current_a,angle_mech_deg,measured_inductance_no_current_mh\n,0,185\n,45,43\n")
-    (measured,) = read_measured(path, curves)
+    (measured,) = read_measured(path, CURRENTS)
     found = compared(curves, measured)
     assert found.measured.current == 0.0
     # 2 (90 + 2) = 184 and 2 (20 + 2) = 44 mH
@@ -218,7 +220,7 @@ def test_bad_tables_are_refused_in_one_line(tmp_path: Path, text: str, fault: st
     path = tmp_path / "bench.csv"
     path.write_text(text)
     with pytest.raises(LamwrightError) as caught:
-        read_measured(path, linear_curves())
+        read_measured(path, CURRENTS)
     assert fault in str(caught.value)
     assert "\n" not in str(caught.value)
 
@@ -226,17 +228,17 @@ def test_bad_tables_are_refused_in_one_line(tmp_path: Path, text: str, fault: st
 def test_absent_and_binary_tables_are_refused(tmp_path: Path) -> None:
     """One line with the path each."""
     with pytest.raises(LamwrightError, match=r"absent\.csv: cannot be read: no such file"):
-        read_measured(tmp_path / "absent.csv", linear_curves())
+        read_measured(tmp_path / "absent.csv", CURRENTS)
     (tmp_path / "binary.csv").write_bytes(b"\xff\xfe\x00\x80")
     with pytest.raises(LamwrightError, match=r"binary\.csv: cannot be read: is no text"):
-        read_measured(tmp_path / "binary.csv", linear_curves())
+        read_measured(tmp_path / "binary.csv", CURRENTS)
 
 
 def test_picture_shows_measured_values_too(tmp_path: Path) -> None:
     """Both files are whole, the SVG names marks once and every current."""
     curves = linear_curves()
     rows = [(c, a, "1.0", "90.0") for c in (5.0, 8.0) for a in (10.0, 50.0)]
-    found = read_measured(filled(tmp_path / "bench.csv", rows), curves)
+    found = read_measured(filled(tmp_path / "bench.csv", rows), CURRENTS)
     write_locked(tmp_path, curves, [compared(curves, one) for one in found])
     text = (tmp_path / "locked.svg").read_text()
     assert text.count(">measured<") == 2  # torque and inductance
