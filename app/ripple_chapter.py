@@ -38,7 +38,7 @@ from lamwright.postprocess.ripple_figures import (
     ForceFigures,
     PullFigures,
     RippleFigures,
-    cautions_of_pull,
+    force_cautions,
 )
 from lamwright.postprocess.ripple_tables import (
     cogging_csv,
@@ -132,9 +132,7 @@ def written(machine: Machine, section: CrossSection, work: RippleWork, stage: Pa
                 first=float(record.amplitude[0]),
             )
         )
-    return Chapter(
-        figures=tuple(figures), cautions=cautions_of_pull(work.pull.smooth, work.pull.along)
-    )
+    return Chapter(tuple(figures), force_cautions(design.rotor.skew_steps))
 
 
 def skews_shown(machine: Machine, work: RippleWork) -> tuple[SkewedTorque, ...]:

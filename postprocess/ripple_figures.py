@@ -1,6 +1,5 @@
 """Figures of ripple, forces and pull, as they leave the program."""
 
-import math
 from dataclasses import dataclass, field
 
 from .quantities import shown_as, shown_estimate
@@ -54,14 +53,16 @@ class ForceFigures:
     )
     lowest: float = field(
         metadata=shown_as(
-            "force_lowest_order_kpa", "its largest radial stress, amplitude", "kPa", 1e-3
+            "force_lowest_order_kpa", "largest radial stress of the lowest space order", "kPa", 1e-3
         )
     )
     frequency: float = field(
-        metadata=shown_as("force_lowest_order_hz", "its frequency at rated speed", "Hz")
+        metadata=shown_as("force_lowest_order_hz", "frequency of that at rated speed", "Hz")
     )
     frequency_at_most: float = field(
-        metadata=shown_as("force_lowest_order_maximum_hz", "its frequency at maximum speed", "Hz")
+        metadata=shown_as(
+            "force_lowest_order_maximum_hz", "frequency of that at maximum speed", "Hz"
+        )
     )
     tooth_pull: float = field(
         metadata=shown_as("tooth_pull_mean_n", "mean pull on a tooth, whole stack", "N")
@@ -85,17 +86,21 @@ class PullFigures:
         metadata=shown_as("eccentricity_mm", "rotor's axis beside the stator's", "mm", MM)
     )
     share: float = field(
-        metadata=shown_as("eccentricity_percent", "the same over the gap", "%", 100.0)
+        metadata=shown_as("eccentricity_percent", "that offset over the gap", "%", 100.0)
     )
     along: float = field(
         metadata=shown_as("eccentric_pull_n", "mean pull towards the narrow side", "N")
     )
-    across: float = field(metadata=shown_as("eccentric_pull_across_n", "mean pull across it", "N"))
+    across: float = field(
+        metadata=shown_as("eccentric_pull_across_n", "mean pull across that", "N")
+    )
     most: float = field(
         metadata=shown_as("eccentric_pull_most_n", "greatest pull over the positions", "N")
     )
     stiffness: float = field(
-        metadata=shown_as("eccentric_pull_n_per_mm", "pull over offset", "N/mm", 1.0 / MM)
+        metadata=shown_as(
+            "eccentric_pull_n_per_mm", "pull over the rotor's offset", "N/mm", 1.0 / MM
+        )
     )
     smooth: float = field(
         metadata=shown_estimate(
@@ -119,9 +124,9 @@ class CoggingFigures:
     )
 
 
-def cautions_of_pull(smooth: float, along: float) -> tuple[str, ...]:
-    """What a reader of the pull should be wary of."""
-    lines = ["pull: no currents between parallel paths, which would lower it; rotor not bent"]
-    if along > smooth and math.isfinite(smooth):
-        lines.append("pull: above that of a smooth gap; harmonics of the field take part")
+def force_cautions(skew_steps: int) -> tuple[str, ...]:
+    """What a reader of forces and pull should be wary of."""
+    lines = ["pull: currents between parallel paths would lower it; the shaft is not bent"]
+    if skew_steps > 1:
+        lines.append("forces and pull: of the whole stack as if it were not skewed")
     return tuple(lines)

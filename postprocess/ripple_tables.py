@@ -30,14 +30,16 @@ def ripple_csv(
     Args:
         spectrum: without skew.
         mean: torque in N m without skew.
-        skews: other rotors, a pair of columns each: amplitude, and by the skew factor alone.
+        skews: the design's own first, a pair of columns each: amplitude, and what the skew factor
+            alone would leave.
         causes: of each order.
         pairs: of each order, largest first.
         by: slots and places.
     """
     header = ["order_el", "amplitude_nm", "percent_of_mean", "phase_deg"]
-    for skew in skews:
-        header += [f"{skew_name(skew)}_nm", f"{skew_name(skew)}_by_factor_nm"]
+    for k, skew in enumerate(skews):
+        name = skew_name(skew) if k else "this_rotor"
+        header += [f"{name}_nm", f"{name}_by_factor_nm"]
     header += [
         *("winding_order_below", "winding_factor_below", "rotor_order_below"),
         *("winding_order_above", "winding_factor_above", "rotor_order_above"),
@@ -131,8 +133,7 @@ def cogging_csv(record: Cogging) -> str:
 def skew_name(skew: SkewedTorque) -> str:
     """A skew as part of a key: `skew_15_deg_el_3_steps`."""
     angle = f"{skew.angle_el / DEGREE:.4g}".replace(".", "p")
-    steps = f"{skew.steps}_steps" if skew.steps else "continuous"
-    return "no_skew" if skew.steps == 1 else f"skew_{angle}_deg_el_{steps}"
+    return f"skew_{angle}_deg_el_" + (f"{skew.steps}_steps" if skew.steps else "continuous")
 
 
 def _numbers(*values: float) -> list[str]:
