@@ -53,7 +53,7 @@ from .point import model_of
 from .pool import Crew
 
 SLOT_ORDERS = 3  # multiples of the slot order that are resolved
-MOST_ORDER = 150  # and no more than this
+MOST_ORDER = 150  # and no more than this, but for the first slot order itself
 CHAINS = 3  # of a waveform; fixed, so that results do not depend on the crew
 # The pull on a mesh 2.5 times as coarse as usual is within 0.4 % (24/4 demo, tests).
 WHOLE_MESH = MeshSettings(scale=2.0)
@@ -84,7 +84,8 @@ class Read:
 def highest_order(pole_pairs: int, slots: int) -> int:
     """Highest torque order resolved: three slot orders, that of the usual waveform at least."""
     usual = 6 * DEFAULT_POSITIONS // SAMPLES_PER_PERIOD
-    return min(MOST_ORDER, max(usual, SLOT_ORDERS * slot_order(pole_pairs, slots)))
+    first = slot_order(pole_pairs, slots)
+    return max(usual, first, min(MOST_ORDER, SLOT_ORDERS * first))
 
 
 def widest_skew(machine: Machine) -> float:

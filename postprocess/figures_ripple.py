@@ -29,6 +29,7 @@ PAIRS_TOLD = 2  # of each
 BUBBLE = 620.0  # points^2, area of the largest circle
 NUMBERED = 12  # circles with their stress beside them
 MOST_TICKS = 14  # space orders, for a tick at each
+HALO = 1.6  # points of paper round a number, so that it reads on circles and lines
 PALE = "#b9c5ce"
 
 
@@ -80,8 +81,10 @@ def draw_skewed(ax: Axes, shown: RipplePictured, style: Style) -> None:
         name = f"this rotor: {own.angle_el / DEGREE:.3g} el. degrees in {own.steps} steps"
         rows.append((own.amplitude, style.accent, name))
     three = next(s for s in shown.skews[1:] if s.steps == 3)
-    rows.append((three.amplitude, style.second, f"a slot pitch, {pitch} el. degrees, in 3 steps"))
-    rows.append((continuous.amplitude, PALE, "the same, continuous"))
+    if (own.steps, own.angle_el) != (three.steps, three.angle_el):
+        name = f"a slot pitch, {pitch} el. degrees, in 3 steps"
+        rows.append((three.amplitude, style.second, name))
+    rows.append((continuous.amplitude, PALE, f"{pitch} el. degrees, continuous"))
     width = BAR / len(rows)
     for k, (amplitude, colour, name) in enumerate(rows):
         ax.bar(
@@ -148,6 +151,8 @@ def draw_force_orders(ax: Axes, shown: ForcesPictured, style: Style) -> None:
     The mean is left out; the area is the amplitude. The scale on the right is the frequency at
     rated speed.
     """
+    from matplotlib.patheffects import withStroke
+
     waves = [order for order in shown.orders if (order.space, order.time) != (0, 0.0)]
     top = max((wave.radial for wave in waves), default=1.0)
     for sense, colour, name in (
@@ -179,7 +184,7 @@ def draw_force_orders(ax: Axes, shown: ForcesPictured, style: Style) -> None:
             color=style.ink,
             va="center",
             zorder=4,
-            bbox={"facecolor": style.paper, "edgecolor": "none", "pad": 0.6, "alpha": 0.75},
+            path_effects=[withStroke(linewidth=HALO, foreground=style.paper)],
         )
     reach = 1.12 * max((abs(wave.time) for wave in waves), default=1.0)
     ax.set_ylim(-reach, reach)

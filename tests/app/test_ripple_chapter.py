@@ -37,10 +37,11 @@ def test_rated_currents_of_a_linear_machine() -> None:
 
 
 def test_orders_resolved_hold_three_slot_orders() -> None:
-    """24/4: 60, the usual waveform's; 48/4: 72; 144 slots and 4 poles: no more than 150."""
+    """24/4: 60, the usual waveform's; 48/4: 72; 132/4: no more than 150; 141/4: its first, 282."""
     assert highest_order(2, 24) == 60
     assert highest_order(2, 48) == 72
-    assert highest_order(2, 144) == 150
+    assert highest_order(2, 132) == 150
+    assert highest_order(2, 141) == 282
 
 
 def test_widest_skew_is_a_slot_pitch() -> None:
