@@ -27,7 +27,14 @@ if TYPE_CHECKING:
 MOST_WORKERS = 64
 MOST_SHARE = 0.4  # of the gap, that the rotor may stand beside the axis: see `solver.eccentric`
 # Of the wall time on two cores (measured on demo_24s4p_arc); each chapter as much as the last.
-SHARES = {"start": 0.03, "mesh": 0.02, "flux map": 0.7, "error bars": 0.12, "files": 0.03}
+SHARES = {
+    "start": 0.03,
+    "mesh": 0.02,
+    "flux map": 0.7,
+    "error bars": 0.1,
+    "files": 0.02,
+    "pictures": 0.03,
+}
 CHAPTER_SHARE = 0.02
 
 

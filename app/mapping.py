@@ -10,6 +10,7 @@ from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.coenergy_surface import coenergy_surface
+from lamwright.postprocess.figures_map import DrawnMap, write_map_figure
 from lamwright.postprocess.files import json_text
 from lamwright.postprocess.flux_map import FluxMap
 from lamwright.postprocess.map_figures import MapCounts, map_checks, map_figures
@@ -103,6 +104,10 @@ def write_results(
         errors = map_errors(mapped, (figures.i_d, figures.i_q), watch.within)
     with watch.phase("files"):
         write_map(stage, flux_map, mapped.surface, _attributes(machine, tolerance))
+    with watch.phase("pictures"):
+        most = machine.design.duty.most_current_a
+        name = machine.design.name
+        write_map_figure(stage, DrawnMap(name, flux_map, mapped.surface, figures, most))
     chapters = [_chapter(mapped, stage, name, write) for name, write in makers]
     groups: list[DataclassInstance] = [
         _counts(flux_map, solved),

@@ -61,7 +61,15 @@ def test_folder_holds_whole_files_and_the_store(mapped):
     """Everything promised, nothing hidden or half done; the JSON says what was returned."""
     report, folder, _ = mapped
     names = {path.name for path in folder.iterdir()}
-    assert {"map.nc", "map.csv", "map_means.csv", "map.mat", "map.json", STORE_FILE} <= names
+    assert {
+        "map.nc",
+        "map.csv",
+        "map_means.csv",
+        "map.mat",
+        "map.json",
+        "map.png",
+        STORE_FILE,
+    } <= names
     assert not [name for name in names if name.startswith(".")]
     record = json.loads((folder / "map.json").read_text())
     assert record["map_points_solved"] == 16
@@ -123,7 +131,7 @@ def test_a_number_of_workers_that_cannot_be_is_refused(tmp_path):
 
 def command(folder):
     code = "from lamwright.app import map_chapters, cli; map_chapters.CHAPTERS = (); cli.main()"
-    options = ["--points", "8x6", "--positions", "6", "--tolerance", "coarse"]
+    options = ["--points", "6x6", "--positions", "6", "--tolerance", "coarse"]
     return [sys.executable, "-c", code, "map", str(DEMO), "--out", str(folder), *options]
 
 
@@ -142,8 +150,10 @@ def test_killed_at_any_moment_it_goes_on(tmp_path, without_chapters):
         run = subprocess.Popen(
             command(tmp_path), env=environment, start_new_session=True, stderr=subprocess.PIPE
         )
+        _wait_for_store(run, tmp_path)
         try:
-            _, said = run.communicate(timeout=3.0 + 4.0 * chance.random())
+            # More patience after each kill, so that it ends on a busy machine too.
+            _, said = run.communicate(timeout=(4.0 + 2.0 * kills) * chance.random())
         except subprocess.TimeoutExpired:
             os.killpg(run.pid, signal.SIGKILL)
             run.communicate()
@@ -159,11 +169,11 @@ def test_killed_at_any_moment_it_goes_on(tmp_path, without_chapters):
     record = json.loads((tmp_path / "map.json").read_text())
     assert kills > 0
     assert record["map_points_kept"] == kept
-    assert record["map_points_solved"] == 48 - kept
+    assert record["map_points_solved"] == 36 - kept
     whole = map_design(
-        DEMO, tmp_path / "whole", GridWishes((8, 6), positions=6), tolerance="coarse"
+        DEMO, tmp_path / "whole", GridWishes((6, 6), positions=6), tolerance="coarse"
     )
-    assert figure(whole, "map_points_solved") == 48
+    assert figure(whole, "map_points_solved") == 36
     broken = read_flux_map(tmp_path / "map.nc")
     unbroken = read_flux_map(tmp_path / "whole" / "map.nc")
     most = np.abs(unbroken.psi_d).max()
@@ -178,9 +188,7 @@ def test_the_interrupt_key_ends_it_cleanly(tmp_path):
     run = subprocess.Popen(
         command(tmp_path), env=environment, start_new_session=True, stderr=subprocess.PIPE
     )
-    while not (tmp_path / f"{STORE_FILE}-wal").exists():
-        assert run.poll() is None
-        time.sleep(0.1)
+    _wait_for_store(run, tmp_path)
     time.sleep(4.0)
     os.killpg(run.pid, signal.SIGINT)
     _, said = run.communicate(timeout=30.0)
@@ -189,7 +197,15 @@ def test_the_interrupt_key_ends_it_cleanly(tmp_path):
     assert b"interrupted" in said
     with pytest.raises(ProcessLookupError):
         os.killpg(run.pid, 0)
-    assert 0 <= _kept(tmp_path) < 48
+    assert 0 <= _kept(tmp_path) < 36
+
+
+def _wait_for_store(run, folder):
+    """Until this run has opened the store: its lock makes a new log of it."""
+    log = folder / f"{STORE_FILE}-wal"
+    began = time.time()
+    while run.poll() is None and not (log.exists() and log.stat().st_mtime >= began - 1.0):
+        time.sleep(0.05)
 
 
 def _kept(folder):

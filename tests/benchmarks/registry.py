@@ -3,6 +3,7 @@
 from collections.abc import Callable
 
 from .chains import growth_exponent_points, growth_exponent_unknowns, map_point_ms
+from .maps import map_seconds
 from .processes import core_efficiency, design_seconds, peak_memory_mib
 from .steps import newton_step_ratio, operating_point_ratio, step_over_factorisation
 from .timing import Notes
@@ -18,6 +19,7 @@ BENCHMARKS: dict[str, Benchmark] = {
         step_over_factorisation,
         design_seconds,
         map_point_ms,
+        map_seconds,
         growth_exponent_unknowns,
         growth_exponent_points,
         core_efficiency,
