@@ -31,6 +31,7 @@ from lamwright.postprocess.voltage_run import (
 )
 from lamwright.solver.types import FloatArray
 
+from .known_losses import known_losses
 from .mapped import Chapter, Mapped
 
 if TYPE_CHECKING:
@@ -121,20 +122,6 @@ def drive_of(mapped: Mapped) -> Terminals:
         end_inductance=end_winding_inductance(design),
         current_limit=design.duty.most_current_a,
         line_voltage=design.duty.supply_voltage_v,
-    )
-
-
-def known_losses(mapped: Mapped) -> KnownLosses:
-    """What is known of the machine's losses beside the DC copper's."""
-    return KnownLosses(
-        iron=None,
-        copper_factor=None,
-        friction=None,
-        missing=(
-            "iron loss of stator and rotor",
-            "AC copper loss",
-            "friction and windage",
-        ),
     )
 
 

@@ -50,11 +50,12 @@ from lamwright.postprocess.operating import copper_loss, dq_currents
 from lamwright.postprocess.quantities import RPM
 from lamwright.postprocess.skew import step_point
 from lamwright.postprocess.torque import waveform_positions
-from lamwright.postprocess.windage import Turning, bearing_loss, windage_loss
+from lamwright.postprocess.windage import bearing_loss, windage_loss
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.model import joined_parts
 from lamwright.solver.types import FieldSolution, FloatArray
 
+from .known_losses import turning_of
 from .map_losses import laws_of
 from .mapped import Chapter, Mapped
 
@@ -181,13 +182,6 @@ def _losses(
         of_iron = np.array(
             [loss_of_orders(iron.coefficients, iron.laws, w)[1].sum(axis=(1, 2)) for w in omegas]
         ).T
-    turning = Turning(
-        radius=section.rotor_radius,
-        gap=section.stator_bore_radius - section.rotor_radius,
-        length=section.stack_length,
-        shaft_radius=section.shaft_radius,
-        air_temperature_c=design.losses.air_temperature_c,
-    )
     friction = design.losses.bearing_friction_nm
     bearings = None if friction is None else bearing_loss(friction, speeds)
     rotor, teeth, yoke = (None, None, None) if of_iron is None else of_iron
@@ -199,7 +193,7 @@ def _losses(
             ("iron_teeth_w", "iron, teeth", teeth),
             ("iron_yoke_w", "iron, yoke", yoke),
             ("iron_rotor_w", "iron, rotor", rotor),
-            ("windage_w", "windage", windage_loss(turning, speeds)),
+            ("windage_w", "windage", windage_loss(turning_of(mapped), speeds)),
             ("bearings_w", "bearings", bearings),
         )
     )
