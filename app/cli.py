@@ -108,23 +108,32 @@ def assess(
 )
 @click.option("--workers", type=int, help="Processes that solve.  [default: one for each core]")
 @click.option("--eccentricity-mm", type=float, help="Of the rotor.  [default: a tenth of the gap]")
+@click.option(
+    "--table-size", default="16x16", show_default=True, help="Drive's tables, torques x speeds."
+)
+@click.option(
+    "--c-format", default="float", show_default=True, help="Of the C header: float, or q7 to q31."
+)
 def flux_map(
     design: Path,
     out: Path,
     tolerance: Literal["coarse", "normal", "fine"],
     workers: int | None,
     eccentricity_mm: float | None,
+    table_size: str,
+    c_format: str,
     **wishes: str | int | None,
 ) -> None:
     """Flux map of DESIGN over i_d and i_q, and what the machine does with it.
 
     Points are kept in the folder as they finish: a run that was stopped goes on where it was.
     """
+    from .control_wishes import control_wishes
     from .map_run import map_design
     from .map_screen import print_map, wishes_of
     from .screen import shown_progress
 
-    wanted = wishes_of(wishes)
+    wanted, control = wishes_of(wishes), control_wishes(table_size, c_format)
     with shown_progress() as progress:
         report = map_design(
             design,
@@ -134,6 +143,7 @@ def flux_map(
             workers=workers,
             progress=progress,
             eccentricity_mm=eccentricity_mm,
+            control=control,
         )
     print_map(report, str(out))
 

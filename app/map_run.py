@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from lamwright.geometry.section import CrossSection
     from lamwright.solver.tolerance import ToleranceName
 
+    from .control_wishes import ControlWishes
     from .desk import Desk
     from .map_grid import GridWishes
     from .mapping import MapReport
@@ -47,6 +48,7 @@ def map_design(
     workers: int | None = None,
     progress: Progress = silent,
     eccentricity_mm: float | None = None,
+    control: "ControlWishes | None" = None,
 ) -> "MapReport":
     """Compute the flux map of the design in `path`, and all that follows from it, into `out`.
 
@@ -59,6 +61,7 @@ def map_design(
         progress: called with the phase and the share done.
         eccentricity_mm: of the rotor's axis beside the stator's, for the pull; by default a tenth
             of the gap.
+        control: size and number format of the drive's tables.
 
     Raises:
         DesignError: the design cannot be read or drawn; one line for each fault.
@@ -84,7 +87,7 @@ def map_design(
             crew = Crew(make_desk, workers or spare_cores() + 1)
         with crew:
             mapped, solved = mapped_machine(machine, section, grid, store, crew, watch, tolerance)
-            mapped = replace(mapped, eccentricity=eccentricity)
+            mapped = replace(mapped, eccentricity=eccentricity, control=control or mapped.control)
             with staged(folder, MAP_FILE) as stage:
                 return write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
 

@@ -1,7 +1,7 @@
 """What every chapter of `map` is given, and what it gives back."""
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -12,6 +12,7 @@ from lamwright.postprocess.flux_map import FluxMap
 from lamwright.postprocess.iron_loss_map import IronLossMap
 from lamwright.solver.field import MagneticModel
 
+from .control_wishes import ControlWishes
 from .desk import Desk
 from .pool import Crew
 from .progress import Stopwatch
@@ -33,6 +34,7 @@ class Mapped:
     crew: Crew[Desk]  # every desk has the model
     watch: Stopwatch
     eccentricity: float | None = None  # m, of the rotor's axis beside the stator's; if asked for
+    control: ControlWishes = field(default_factory=ControlWishes)
 
 
 @dataclass(frozen=True, slots=True)
