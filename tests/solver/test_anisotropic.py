@@ -1,4 +1,7 @@
-"""Fields with a rotor of sheets along curves: closed form, plain form, limits, derivatives."""
+"""Fields with a rotor of sheets along curves: plain form, limits, derivatives, directions.
+
+The closed form of a slotless stator: tests/external/test_hague_1929.py.
+"""
 
 import cmath
 import math
@@ -51,29 +54,6 @@ def ring_model(
         n_circle=8 * fineness,
     )
     return sheet_model(machine, law, OPEN_STATOR, 100, FieldSettings(newton=TIGHT))
-
-
-@pytest.mark.parametrize(
-    ("radii", "l_d", "l_q", "torque"),
-    [
-        ((0.030, 0.040), 5.27283e-3, 2.42007e-3, 0.213957),
-        ((0.040, 0.0405), 0.111691, 3.60485e-3, 8.10645),
-    ],
-)
-def test_slotless_saliency_is_the_closed_form(radii, l_d: float, l_q: float, torque: float) -> None:
-    """Checks A1.1 and A1.2 (Hague 1929): a cylinder of sheets, mu 2000, 40 % gaps, p = 1.
-
-    Saliency 2.17879 and 30.9835; asked is 1 %, held here within 2e-4 at any angle.
-    """
-    steel = linear_law(2000.0)
-    laminated = laminated_model(ring_model(1, radii, steel, 6), Laminate(steel, 0.4), 0.0)
-    current = 10.0 / math.sqrt(2.0)
-    for angle in (0.0, 37.0, 123.4):
-        point = solve_laminated(laminated, current, current, math.radians(angle))
-        assert point.psi_d / current == pytest.approx(l_d, rel=2e-4)
-        assert point.psi_q / current == pytest.approx(l_q, rel=2e-4)
-        assert point.psi_d / point.psi_q == pytest.approx(l_d / l_q, rel=2e-4)
-        assert point.torque == pytest.approx(torque, rel=4e-4)
 
 
 def test_sheets_without_gaps_are_the_solid_rotor() -> None:
