@@ -2,6 +2,7 @@
 
 import math
 from dataclasses import dataclass, field
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -10,7 +11,13 @@ import numpy as np
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import end_winding_inductance, phase_resistance
-from lamwright.postprocess.efficiency import KnownLosses, LoadPoints, at_currents, load_points
+from lamwright.postprocess.efficiency import (
+    IronLosses,
+    KnownLosses,
+    LoadPoints,
+    at_currents,
+    load_points,
+)
 from lamwright.postprocess.envelope import Envelope, Region, envelope
 from lamwright.postprocess.envelope_tables import efficiency_csv, envelope_csv, voltage_run_csv
 from lamwright.postprocess.figures_envelope import (
@@ -41,6 +48,10 @@ SPEEDS = 81  # of the envelope, from 0 to the maximum speed
 TABLE_SPEEDS, TABLE_TORQUES = 24, 20  # of the efficiency's table
 SHEET_SPEEDS, SHEET_SHARES = 45, 32  # of its picture: shares of the most torque at each speed
 LEAST_SHARE, MOST_SHARE = 0.01, 0.998
+CAUTIONS = (
+    "envelope and efficiency: voltage and copper loss rest on resistance and end-winding leakage by"
+    " formula; iron loss is not in the envelope; sinusoidal supply: a converter adds losses",
+)
 RAMP, MOST_PERIODS, DAMPINGS = 20.0, 80.0, 7.0  # of the run; e^-7 = 1e-3 is left of a swing
 
 
@@ -51,32 +62,46 @@ class EfficiencyFigures:
     best: float = field(
         metadata=shown_as("best_efficiency_percent", "best efficiency, of losses given", "%", 100.0)
     )
-    torque: float = field(metadata=shown_as("best_efficiency_torque_nm", "at shaft torque", "N m"))
-    speed: float = field(metadata=shown_as("best_efficiency_speed_rpm", "at speed", "1/min", RPM))
+    torque: float = field(
+        metadata=shown_as("best_efficiency_torque_nm", "best efficiency, shaft torque", "N m")
+    )
+    speed: float = field(
+        metadata=shown_as("best_efficiency_speed_rpm", "best efficiency, speed", "1/min", RPM)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class RunFigures:
     """A run in time on constant voltage, from zero current to a point of the envelope."""
 
-    speed: float = field(metadata=shown_as("voltage_run_speed_rpm", "voltage run at", "1/min", RPM))
+    speed: float = field(
+        metadata=shown_as("voltage_run_speed_rpm", "voltage run, speed", "1/min", RPM)
+    )
     current_difference: float = field(
         metadata=shown_as(
-            "voltage_run_current_difference_percent", "its end off the table, current", "%", 100.0
+            "voltage_run_current_difference_percent",
+            "voltage run, end off the table: current",
+            "%",
+            100.0,
         )
     )
     torque_difference: float = field(
         metadata=shown_as(
-            "voltage_run_torque_difference_percent", "its end off the table, torque", "%", 100.0
+            "voltage_run_torque_difference_percent",
+            "voltage run, end off the table: torque",
+            "%",
+            100.0,
         )
     )
     energy_gap: float = field(
         metadata=shown_as(
-            "voltage_run_energy_gap_percent", "its energies' balance, what lacks", "%", 100.0
+            "voltage_run_energy_gap_percent", "voltage run, what its energies lack", "%", 100.0
         )
     )
     damping: float = field(
-        metadata=shown_as("voltage_run_damping_time_ms", "its swings die down to 1/e in", "ms", 1e3)
+        metadata=shown_as(
+            "voltage_run_damping_time_ms", "voltage run, swings die down to 1/e in", "ms", 1e3
+        )
     )
 
 
@@ -100,13 +125,14 @@ def envelope_chapter(mapped: Mapped, stage: Path) -> Chapter:
     figures, lines = [*marks.figures], [*marks.lines]
     losses = known_losses(mapped)
     efficiency = _efficiency(stage, mapped, drive, losses, top)
-    run = _run(stage, drive, rated)
+    run = _run(stage, drive, losses, rated)
     for made, name in ((efficiency, "efficiency"), (run, "voltage run")):
         if isinstance(made, str):
             lines.append(f"{name}: {made}")
         else:
             figures.append(made)
-    return Chapter(tuple(figures), (), (*lines, *losses.missing))
+    lines += [f"{name}: left out of the efficiency" for name in losses.missing]
+    return Chapter(tuple(figures), CAUTIONS, tuple(lines))
 
 
 def drive_of(mapped: Mapped) -> Terminals:
@@ -177,21 +203,25 @@ def _points(
     return at_currents(drive, losses, speed, i_d, i_q)
 
 
-def _run(stage: Path, drive: Terminals, rated: float) -> RunFigures | str:
-    """A run from zero current to the envelope's point at rated speed; a line where it cannot be."""
+def _run(stage: Path, drive: Terminals, losses: KnownLosses, rated: float) -> RunFigures | str:
+    """A run from zero current to the envelope's point at rated speed; a line where it cannot be.
+
+    The stator's iron loss is in where it is given, by a branch beside the emf.
+    """
     table: Envelope = envelope(drive, np.array([rated]))
     if table.region[0] == Region.NONE:
         return f"no torque is reached at rated speed, {RPM * rated:.0f}/min"
     i_d, i_q = float(table.i_d[0]), float(table.i_q[0])
     omega_e = drive.surface.pole_pairs * rated
-    u_d, u_q = steady_voltages(drive, i_d, i_q, omega_e)
-    from_d, from_q = steady_voltages(drive, 0.0, 0.0, omega_e)
+    iron = None if losses.iron is None else partial(_stator_loss, losses.iron)
+    u_d, u_q = steady_voltages(drive, i_d, i_q, omega_e, iron)
+    from_d, from_q = steady_voltages(drive, 0.0, 0.0, omega_e, iron)
     period = 2.0 * math.pi / omega_e
     damping = -1.0 / small_swings(drive, i_d, i_q, omega_e)[0].real
     duration = RAMP * period + min(DAMPINGS * damping, MOST_PERIODS * period)
     feed = Feed(u_d, u_q, omega_e, RAMP * period, from_d, from_q)
     try:
-        run: VoltageRun = voltage_run(drive, feed, (0.0, 0.0), duration)
+        run: VoltageRun = voltage_run(drive, feed, (0.0, 0.0), duration, iron)
     except LamwrightError as error:
         return str(error)
     write_text(stage / "voltage_run.csv", voltage_run_csv(run, drive.surface.pole_pairs))
@@ -203,3 +233,8 @@ def _run(stage: Path, drive: Terminals, rated: float) -> RunFigures | str:
         energy_gap=energy_gap(run, duration - period),
         damping=damping,
     )
+
+
+def _stator_loss(losses: IronLosses, i_d: float, i_q: float, omega_e: float) -> float:
+    """Iron loss of the stator in W."""
+    return float(losses(np.array(i_d), np.array(i_q), np.array(omega_e))[0])

@@ -44,7 +44,7 @@ class CurrentFigures:
         )
     )
     power_factor_gamma: float = field(
-        metadata=shown_as("most_power_factor_angle_deg", "at current angle", "deg", 1.0 / DEGREE)
+        metadata=shown_as("most_power_factor_angle_deg", "its current angle", "deg", 1.0 / DEGREE)
     )
 
 
@@ -58,7 +58,9 @@ class CornerFigures:
     )
     power: float = field(metadata=shown_as("corner_power_w", "power at base speed", "W"))
     gamma: float = field(
-        metadata=shown_as("base_current_angle_deg", "current angle there", "deg", 1.0 / DEGREE)
+        metadata=shown_as(
+            "base_current_angle_deg", "current angle up to base speed", "deg", 1.0 / DEGREE
+        )
     )
 
 
@@ -104,16 +106,18 @@ class RatedFigures:
         metadata=shown_as("envelope_torque_rated_speed_nm", "most torque at rated speed", "N m")
     )
     power: float = field(
-        metadata=shown_as("envelope_power_rated_speed_w", "power there, of the field", "W")
+        metadata=shown_as("envelope_power_rated_speed_w", "power at rated speed, of the field", "W")
     )
     current: float = field(
-        metadata=shown_as("envelope_current_rated_speed_a", "current there, peak", "A")
+        metadata=shown_as("envelope_current_rated_speed_a", "current at rated speed, peak", "A")
     )
     line_voltage: float = field(
-        metadata=shown_as("envelope_voltage_rated_speed_v", "voltage there, rms between lines", "V")
+        metadata=shown_as(
+            "envelope_voltage_rated_speed_v", "voltage at rated speed, rms between lines", "V"
+        )
     )
     power_factor: float = field(
-        metadata=shown_as("envelope_power_factor_rated_speed", "power factor there", "")
+        metadata=shown_as("envelope_power_factor_rated_speed", "power factor at rated speed", "")
     )
 
 
@@ -125,7 +129,9 @@ class TopFigures:
         metadata=shown_as("envelope_torque_maximum_speed_nm", "most torque at maximum speed", "N m")
     )
     power: float = field(
-        metadata=shown_as("envelope_power_maximum_speed_w", "power there, of the field", "W")
+        metadata=shown_as(
+            "envelope_power_maximum_speed_w", "power at maximum speed, of the field", "W"
+        )
     )
 
 
