@@ -53,14 +53,14 @@ from lamwright.postprocess.torque_causes import order_cause, slotting
 from lamwright.postprocess.torque_pairs import largest_pairs
 
 from .mapped import Chapter, Mapped
-from .ripple_work import DEFAULT_SHARE, RippleWork, highest_order, ripple_work
+from .ripple_work import DEFAULT_SHARE, RippleWork, highest_order, ripple_work, slot_skew
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance
 
 RIPPLE_FILE, PAIRS_FILE, COGGING_FILE = "ripple.csv", "ripple_pairs.csv", "cogging.csv"
 FORCES_FILE, TOOTH_FILE = "forces.csv", "tooth_forces.csv"
-SLOT_PITCH_STEPS = (2, 3, 4, 0)  # of the skews by one slot pitch in the table; 0: continuous
+SLOT_SKEW_STEPS = (2, 3, 4, 0)  # of the skews by the slot order's period; 0: continuous
 TURN = 2.0 * math.pi  # rad
 ANGLES = 1801  # of the search for most torque
 FORCE_SPACE_SLOTS = 1  # times the slots: space orders of forces listed
@@ -136,12 +136,12 @@ def written(machine: Machine, section: CrossSection, work: RippleWork, stage: Pa
 
 
 def skews_shown(machine: Machine, work: RippleWork) -> tuple[SkewedTorque, ...]:
-    """The design's own skew (or none), then one slot pitch in steps and continuous."""
+    """The design's own skew (or none), then the slot order's period in steps and continuous."""
     design = machine.design
     pole_pairs, highest = design.pole_pairs, highest_order(design.pole_pairs, design.stator.slots)
     own = pole_pairs * math.radians(design.rotor.skew_angle_deg)
-    pitch = 2.0 * math.pi * pole_pairs / design.stator.slots
-    cases = [(design.rotor.skew_steps, own), *((steps, pitch) for steps in SLOT_PITCH_STEPS)]
+    period = slot_skew(pole_pairs, design.stator.slots)
+    cases = [(design.rotor.skew_steps, own), *((steps, period) for steps in SLOT_SKEW_STEPS)]
     return tuple(skewed(work.turned, steps, angle, highest) for steps, angle in cases)
 
 
@@ -162,7 +162,8 @@ def _ripple_figures(
         slot_order=slot,
         slot=float(found.amplitude[at]) / mean,
         slot_skewed=float(own.amplitude[at]) / abs(own.mean),
-        slot_pitch=float(continuous.amplitude[at]) / abs(continuous.mean),
+        slot_period=float(continuous.amplitude[at]) / abs(continuous.mean),
+        mean_period=continuous.mean,
     )
 
 

@@ -6,6 +6,7 @@ and solved by one of them while the others go through the positions.
 """
 
 import cmath
+import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import partial
@@ -88,12 +89,20 @@ def highest_order(pole_pairs: int, slots: int) -> int:
     return max(usual, first, min(MOST_ORDER, SLOT_ORDERS * first))
 
 
+def slot_skew(pole_pairs: int, slots: int) -> float:
+    """Skew in rad el over which the first slot order has a mean of zero: its period.
+
+    A slot pitch where the slots of a pole pair are a multiple of 6; a fraction of it elsewhere.
+    """
+    return 2.0 * math.pi / slot_order(pole_pairs, slots)
+
+
 def widest_skew(machine: Machine) -> float:
-    """Widest skew of interest in rad el: one slot pitch, or the design's own where it is wider."""
+    """Widest skew of interest in rad el: `slot_skew`, or the design's own where it is wider."""
     design = machine.design
-    pitch = 2.0 * np.pi / design.stator.slots
     own = np.radians(design.rotor.skew_angle_deg) if len(skew_offsets(design)) > 1 else 0.0
-    return float(design.pole_pairs * max(pitch, own))
+    period = slot_skew(design.pole_pairs, design.stator.slots)
+    return max(period, float(design.pole_pairs * own))
 
 
 def ripple_work(

@@ -56,7 +56,7 @@ class ForcesPictured:
 
 
 def ripple_figure(shown: RipplePictured, style: Style) -> Figure:
-    """Torque orders without skew, with the design's and with one slot pitch; what makes them."""
+    """Torque orders without skew, with the design's and with the slot order's period; causes."""
     figure = _figure((11.0, 6.8), f"{shown.name}: torque by order, and what makes it", style)
     draw_skewed(figure.add_axes((0.065, 0.5, 0.87, 0.39)), shown, style)
     draw_causes(figure.add_axes((0.065, 0.02, 0.87, 0.385)), shown, style)
@@ -72,19 +72,19 @@ def forces_figure(shown: ForcesPictured, style: Style) -> Figure:
 
 
 def draw_skewed(ax: Axes, shown: RipplePictured, style: Style) -> None:
-    """Draw the orders' amplitudes as bars side by side: no skew, the design's, one slot pitch."""
+    """Draw the orders' amplitudes as bars side by side: no skew, the design's, the slots'."""
     orders = np.array(shown.spectrum.order)
     own, continuous = shown.skews[0], shown.skews[-1]
-    pitch = f"{continuous.angle_el / DEGREE:.3g}"
+    skew = f"{continuous.angle_el / DEGREE:.3g}"
     rows = [(shown.spectrum.amplitude, style.ink, "no skew")]
     if own.steps > 1:
         name = f"this rotor: {own.angle_el / DEGREE:.3g} el. degrees in {own.steps} steps"
         rows.append((own.amplitude, style.accent, name))
     three = next(s for s in shown.skews[1:] if s.steps == 3)
     if (own.steps, own.angle_el) != (three.steps, three.angle_el):
-        name = f"a slot pitch, {pitch} el. degrees, in 3 steps"
+        name = f"slot order's period, {skew} el. degrees, in 3 steps"
         rows.append((three.amplitude, style.second, name))
-    rows.append((continuous.amplitude, PALE, f"{pitch} el. degrees, continuous"))
+    rows.append((continuous.amplitude, PALE, f"{skew} el. degrees, continuous"))
     width = BAR / len(rows)
     for k, (amplitude, colour, name) in enumerate(rows):
         ax.bar(

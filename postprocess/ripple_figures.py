@@ -29,13 +29,16 @@ class RippleFigures:
             "ripple_slot_order_skewed_percent", "slot order, this rotor's skew", "% of mean", 100.0
         )
     )
-    slot_pitch: float = field(
+    slot_period: float = field(
         metadata=shown_as(
-            "ripple_slot_order_slot_pitch_percent",
-            "slot order, one slot pitch of continuous skew",
+            "ripple_slot_order_slot_skew_percent",
+            "slot order, continuous skew by its own period",
             "% of mean",
             100.0,
         )
+    )
+    mean_period: float = field(
+        metadata=shown_as("ripple_mean_slot_skew_nm", "mean torque with that skew", "N m")
     )
 
 

@@ -25,7 +25,7 @@ def ripple_csv(
     pairs: Sequence[Sequence[WavePair]],
     by: Slotting,
 ) -> str:
-    """One row for each electrical order of the torque at rated current.
+    """One row for each electrical order of the torque at rated current; order 0 is the mean.
 
     Args:
         spectrum: without skew.
@@ -45,7 +45,10 @@ def ripple_csv(
         *("winding_order_above", "winding_factor_above", "rotor_order_above"),
         *("is_slot_order", "may_be_of_barrier_ends", "strongest_pair"),
     ]
-    rows = []
+    rows = [["0", *_numbers(mean, 100.0, 0.0)]]
+    for skew in skews:
+        rows[0] += [*_numbers(skew.mean), ""]
+    rows[0] += [""] * (len(header) - len(rows[0]))
     for k, order in enumerate(spectrum.order):
         amplitude, cause = float(spectrum.amplitude[k]), causes[k]
         row = [str(order), *_numbers(amplitude, 100.0 * amplitude / abs(mean))]

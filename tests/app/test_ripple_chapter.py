@@ -11,7 +11,7 @@ from shipped import DESIGNS, shipped, shipped_model
 from lamwright.app.map_run import make_desk, map_design
 from lamwright.app.pool import Crew
 from lamwright.app.ripple_chapter import rated_currents, written
-from lamwright.app.ripple_work import highest_order, ripple_work, widest_skew
+from lamwright.app.ripple_work import highest_order, ripple_work, slot_skew, widest_skew
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.coenergy_surface import coenergy_surface
 from lamwright.postprocess.flux_map import FluxMap
@@ -44,8 +44,9 @@ def test_orders_resolved_hold_three_slot_orders() -> None:
     assert highest_order(2, 141) == 282
 
 
-def test_widest_skew_is_a_slot_pitch() -> None:
-    """24 slots, 4 poles, no skew of its own: 30 electrical degrees."""
+def test_widest_skew_is_the_slot_orders_period() -> None:
+    """24 slots, 4 poles: a slot pitch, 30 el. degrees; 12 and 10: 30 of a slot pitch of 150."""
+    assert slot_skew(5, 12) == pytest.approx(math.pi / 6.0)
     assert widest_skew(shipped("demo_24s4p_arc", 2.5).machine) == pytest.approx(math.pi / 6.0)
 
 
@@ -73,11 +74,12 @@ def test_chapter_of_the_demo(tmp_path) -> None:
     values = {f.key: f.value for group in chapter.figures for f in figures_of(group)}
     assert values["ripple_slot_order_el"] == 12
     rows = list(csv.DictReader(io.StringIO((tmp_path / "ripple.csv").read_text())))
-    assert [row["order_el"] for row in rows] == [str(6 * k) for k in range(1, 11)]
-    slot = float(rows[1]["percent_of_mean"])
+    assert [row["order_el"] for row in rows] == [str(6 * k) for k in range(11)]
+    assert float(rows[0]["amplitude_nm"]) == pytest.approx(work.waveform.mean, rel=1e-5)
+    slot = float(rows[2]["percent_of_mean"])
     assert slot == pytest.approx(values["ripple_slot_order_percent"], rel=1e-5)
-    assert rows[1]["is_slot_order"] == "yes"
-    assert values["ripple_slot_order_slot_pitch_percent"] < 0.5 * slot
+    assert rows[2]["is_slot_order"] == "yes"
+    assert values["ripple_slot_order_slot_skew_percent"] < 0.5 * slot
     # The pull of a saturated, slotted machine is below that of a smooth gap, and no other sign.
     assert 0.0 < values["eccentric_pull_n"] < values["eccentric_pull_smooth_n"]
     assert values["eccentric_pull_n_per_mm"] == pytest.approx(values["eccentric_pull_n"] / 0.04)
