@@ -3,10 +3,13 @@
 A copy (fork) has all that this process has imported, which spares it more than a second. It is
 safe only where this process has a single thread: a lock that another one holds at that moment
 would stay locked in the copy for ever. Libraries' threads count too, so the system is asked for
-their number (`/proc`, Linux). Elsewhere, and where there are more, the interpreter is started anew:
-against `multiprocessing` with spawn, which imports the caller's main module again, that needs no
-guard in a user's script and works from a notebook; and its environment is its own, so BLAS is held
-to one thread even where the caller has loaded numpy already.
+their number (`/proc`, Linux). What is open here is open in the copy too, which never touches it
+and is ended without clearing up.
+
+Elsewhere, and where there are more threads, the interpreter is started anew: against
+`multiprocessing` with spawn, which imports the caller's main module again, that needs no guard in a
+user's script and works from a notebook; and its environment is its own, so BLAS is held to one
+thread even where the caller has loaded numpy already.
 
 Either is born deaf to the interrupt key: the process that asked for it decides.
 """
