@@ -174,6 +174,7 @@ def locked_curves(
         coenergy=coenergy[1:],
         end_inductance=end_winding_inductance(machine.design),
         skew_steps=len(offsets),
+        rated_current=machine.design.duty.rated_current_a,
         seconds=time.perf_counter() - began,
     )
 

@@ -89,6 +89,7 @@ class LockedCurves:
     coenergy: FloatArray  # (n_cur, n_pos) J
     end_inductance: float  # H, of a phase, by formula
     skew_steps: int
+    rated_current: float  # A peak
     seconds: float
 
     @property
@@ -150,7 +151,7 @@ def locked_figures(curves: LockedCurves) -> tuple[LockedFigures, ...]:
 
 def locked_cautions(curves: LockedCurves) -> tuple[str, ...]:
     """What can hurt people or the machine on the bench, and what the curves leave out."""
-    top = float(np.abs(curves.torque).max())
+    top = max(figures.torque for figures in locked_figures(curves))
     lines = [
         f"the rotor turns by itself with up to {top:.3g} N m when the current is switched on or"
         " the clamp slips: clamp it for more than that, and keep hands off",
@@ -160,6 +161,12 @@ def locked_cautions(curves: LockedCurves) -> tuple[str, ...]:
         "magnetising at rest leaves remanence in steel, which the curves have not: measure after"
         " several reversals of the current, and take the mean of both directions",
     ]
+    most = float(curves.currents[-1])
+    if most > curves.rated_current:
+        lines.append(
+            f"{most:g} A is {most / curves.rated_current:.2g} times the design's rated peak"
+            " current: no winding is judged for it here"
+        )
     return (*lines, *skew_cautions(curves.skew_steps))
 
 

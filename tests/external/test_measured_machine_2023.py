@@ -100,7 +100,7 @@ def test_locked_rotor_reads_the_measured_inductance(machine, tmp_path):
     """All 72 measured positions against `locked`, two phases in series, as between two terminals.
 
     The current is not stated; the curve without current, that of a bridge, lies nearest: found
-    L_d 3.6 % high, L_q 0.1 % low, 3.9 % of the greatest inductance rms. Held to 8 % as issued, and
+    L_d 3.4 % high, L_q 0.2 % low, 3.9 % of the greatest inductance rms. Held to 8 % as issued, and
     to 5 % rms: the end winding's length is assumed, and initial permeability is a card's first
     point. With 7.5 A the apparent L_d is 14 % high: the measured one is not that of rated flux.
     """

@@ -17,6 +17,7 @@ from lamwright.postprocess.locked import (
     at_angles,
     feed_of,
     locked_angles,
+    locked_cautions,
     locked_figures,
     parsed_currents,
 )
@@ -56,6 +57,7 @@ def linear_curves(feed: str = "two-in-series") -> LockedCurves:
         coenergy=0.5 * np.outer(currents**2, inductance),
         end_inductance=END,
         skew_steps=1,
+        rated_current=10.0,
         seconds=0.0,
     )
 
@@ -135,6 +137,17 @@ def test_bad_steps_are_refused_in_one_line(step: float) -> None:
     """Of four poles 0.05 to 5 mechanical degrees are accepted."""
     with pytest.raises(LamwrightError, match=r"--step-deg .*accepted 0\.05 to 5 \(mechanical\)$"):
         locked_angles(2, 1, step)
+
+
+def test_cautions_name_torque_skew_and_too_much_current() -> None:
+    """Three quarters of 4 (L_d - L_q) I^2 a phase: 8.96 N m; 8 A is below 10, not 4."""
+    curves = linear_curves()
+    plain = locked_cautions(curves)
+    assert "up to 8.96 N m" in plain[0]
+    assert not any("rated" in line or "skew" in line for line in plain)
+    hard = locked_cautions(dataclasses.replace(curves, rated_current=4.0, skew_steps=3))
+    assert any(line.startswith("8 A is 2 times the design's rated peak current") for line in hard)
+    assert any("3 steps of skew" in line for line in hard)
 
 
 def filled(path: Path, rows: list[tuple[float, float, str, str]]) -> Path:
