@@ -58,8 +58,8 @@ class ForcesPictured:
 def ripple_figure(shown: RipplePictured, style: Style) -> Figure:
     """Torque orders without skew, with the design's and with the slot order's period; causes."""
     figure = _figure((11.0, 6.8), f"{shown.name}: torque by order, and what makes it", style)
-    draw_skewed(figure.add_axes((0.065, 0.5, 0.87, 0.39)), shown, style)
-    draw_causes(figure.add_axes((0.065, 0.02, 0.87, 0.385)), shown, style)
+    draw_skewed(figure.add_axes((0.075, 0.5, 0.91, 0.39)), shown, style)
+    draw_causes(figure.add_axes((0.075, 0.02, 0.91, 0.385)), shown, style)
     return figure
 
 
@@ -100,18 +100,9 @@ def draw_skewed(ax: Axes, shown: RipplePictured, style: Style) -> None:
     ax.set_xlim(orders[0] - 4.5, orders[-1] + 4.5)
     ax.margins(y=0.08)
     ax.set_xlabel("electrical order", fontsize=style.text)
-    ax.set_ylabel("amplitude in % of the mean torque", fontsize=style.text)
+    mean = f"{shown.mean:.4g} N m"
+    ax.set_ylabel(f"amplitude in % of the mean torque\nwithout skew, {mean}", fontsize=style.text)
     _legend(ax, style, len(rows))
-    ax.text(
-        1.0,
-        1.03,
-        f"mean without skew {shown.mean:.4g} N m",
-        transform=ax.transAxes,
-        fontsize=style.text,
-        color=style.ink,
-        ha="right",
-        va="bottom",
-    )
     _plain(ax, style)
 
 

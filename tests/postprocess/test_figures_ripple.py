@@ -42,6 +42,9 @@ def test_a_bar_for_each_order_and_rotor(steps, rows):
     assert len(bars.containers) == rows
     heights = [bar.get_height() for bar in bars.containers[0]]
     assert heights == pytest.approx(100.0 * AMPLITUDE / 10.0)
+    figure.draw_without_rendering()
+    legend = bars.get_legend().get_window_extent()
+    assert legend.x1 <= figure.bbox.width  # in one line, beside nothing else
     told = " ".join(text.get_text() for text in texts.texts)
     assert "order 12:" in told
     assert "winding order -11 (slots) with rotor order 11" in told
