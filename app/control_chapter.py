@@ -142,5 +142,6 @@ def _header_text(mapped: Mapped, control: Control, cautions: tuple[str, ...]) ->
         f" rms; current {error.current_most:.3g} A at most, {error.current_rms:.3g} A rms from the"
         f" least current; voltage up to {error.voltage_over * LINE_RMS:.3g} V rms over the limit"
         f" between lines; {beyond:.2g} % of the places ask for more than the true limit.",
-        *(f"Caution: {line}." for line in cautions),
+        # Pull-out does not stand in the header.
+        *(f"Caution: {line}." for line in cautions if not line.startswith("pull-out")),
     )

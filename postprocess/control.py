@@ -30,12 +30,13 @@ class Control:
     drive: Terminals
     per_ampere: ControlCurve
     per_volt: ControlCurve  # least flux linkage, resistance left out
-    per_volt_top: ControlCurve  # least voltage at the greatest speed, resistance in
     inverse: InverseMap
     planning: ControlTable
     reading: ControlTable  # the drive's table
     error: ReadingError  # of the drive's table as rounded to its format
     form: NumberFormat
+    current_base: float  # A, of the header in fixed point
+    torque_base: float  # N m, likewise
     pull_out: PullOutCurve
 
 
@@ -59,26 +60,30 @@ def control_of(
     planning = planning_table(lines, pull_out, limit, size[0])
     reading = drive_table(lines, pull_out, limit, size[0])
     points, inverse = reading.points, inverse_map(drive, INVERSE_POINTS)
+    steps = np.arange(1, VOLT_POINTS + 1) / VOLT_POINTS
+    torques = float(per_ampere.torque[-1]) * steps**2  # about equal steps of current
+    per_volt = volt_curve(lines, torques, None)
     # All currents of the header share one base, and so do its torques.
-    current = base_of(form, points.i_d, points.i_q, per_ampere.amplitude, inverse.i_d, inverse.i_q)
-    torque = base_of(form, reading.limit.torque, per_ampere.torque)
+    currents = [points.i_d, points.i_q, inverse.i_d, inverse.i_q, per_ampere.amplitude]
+    current_base = base_of(form, *currents, per_volt.i_d, per_volt.i_q)
+    torque_base = base_of(form, reading.limit.torque, per_ampere.torque, per_volt.torque)
     error = reading_error(
         lines,
         reading,
-        limit=held(form, reading.limit.torque, torque),
-        i_d=held(form, points.i_d, current),
-        i_q=held(form, points.i_q, current),
+        limit=held(form, reading.limit.torque, torque_base),
+        i_d=held(form, points.i_d, current_base),
+        i_q=held(form, points.i_q, current_base),
     )
-    torques = float(per_ampere.torque[-1]) * np.arange(1, VOLT_POINTS + 1) / VOLT_POINTS
     return Control(
         drive,
         per_ampere,
-        volt_curve(lines, torques, None),
-        volt_curve(lines, torques, most_speed),
+        per_volt,
         inverse,
         planning,
         reading,
         error,
         form,
+        current_base,
+        torque_base,
         pull_out,
     )

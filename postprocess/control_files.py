@@ -148,8 +148,22 @@ def _curves(control: Control) -> Sequence[tuple[str, str, ControlCurve]]:
     )
 
 
+def _volt_arrays(control: Control) -> list[CArray]:
+    """Most torque per volt; none where the map holds no point of it, as C has no empty arrays."""
+    volt = control.per_volt
+    if not volt.i_d.size:
+        return []
+    linkage = np.hypot(volt.psi_d, volt.psi_q)
+    return [
+        CArray("volt_psi", "flux", linkage, "most torque per volt: stator flux linkage"),
+        CArray("volt_i_d", "current", volt.i_d, "most torque per volt: d-axis current"),
+        CArray("volt_i_q", "current", volt.i_q, "most torque per volt: q-axis current"),
+        CArray("volt_torque", "torque", volt.torque, "most torque per volt: torque"),
+    ]
+
+
 def drive_header(control: Control, design_name: str, text: Sequence[str]) -> CHeader:
-    """The drive's table, the curve of most torque per ampere and the inverse map for C.
+    """The drive's table, both curves and the inverse map for C.
 
     Args:
         control: of the drive.
@@ -157,13 +171,15 @@ def drive_header(control: Control, design_name: str, text: Sequence[str]) -> CHe
         text: paragraphs of the comment at the head.
     """
     table, curve, inverse = control.reading, control.per_ampere, control.inverse
+    volt = control.per_volt
     pole_pairs = control.drive.surface.pole_pairs
     n_torque, n_speed = table.points.torque.shape
     constants = (
         ("POLE_PAIRS", str(pole_pairs), "pole pairs"),
         ("TORQUE_NODES", str(n_torque), "rows of the table"),
         ("SPEED_NODES", str(n_speed), "columns of the table"),
-        ("CURVE_NODES", str(curve.i_d.size), "points of the curve"),
+        ("AMPERE_NODES", str(curve.i_d.size), "points of most torque per ampere"),
+        ("VOLT_NODES", str(volt.i_d.size), "points of most torque per volt"),
         ("PSI_D_NODES", str(inverse.psi_d.size), "rows of the inverse map"),
         ("PSI_Q_NODES", str(inverse.psi_q.size), "columns of the inverse map"),
         ("CURRENT_LIMIT_A", f"{control.drive.current_limit:.6e}", "A, peak"),
@@ -184,10 +200,11 @@ def drive_header(control: Control, design_name: str, text: Sequence[str]) -> CHe
         CArray("i_d", "current", table.points.i_d, f"d-axis current {where}"),
         CArray("i_q", "current", table.points.i_q, f"q-axis current {where}"),
         CArray("psi", "flux", table.values.linkage, f"amount of stator flux linkage {where}"),
-        CArray("curve_current", "current", curve.amplitude, "most torque per ampere: amplitude"),
-        CArray("curve_i_d", "current", curve.i_d, "most torque per ampere: d-axis current"),
-        CArray("curve_i_q", "current", curve.i_q, "most torque per ampere: q-axis current"),
-        CArray("curve_torque", "torque", curve.torque, "most torque per ampere: torque"),
+        CArray("ampere_current", "current", curve.amplitude, "most torque per ampere: amplitude"),
+        CArray("ampere_i_d", "current", curve.i_d, "most torque per ampere: d-axis current"),
+        CArray("ampere_i_q", "current", curve.i_q, "most torque per ampere: q-axis current"),
+        CArray("ampere_torque", "torque", curve.torque, "most torque per ampere: torque"),
+        *_volt_arrays(control),
         CArray("psi_d", "flux", inverse.psi_d, "d-axis linkages of the inverse map"),
         CArray("psi_q", "flux", inverse.psi_q, "q-axis linkages of the inverse map"),
         CArray("inverse_i_d", "current", inverse.i_d, "d-axis current [psi_d][psi_q]"),

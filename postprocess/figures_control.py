@@ -26,6 +26,7 @@ GRID = 241  # points of each axis that contours are drawn through
 BELOW = 0.45  # of the current limit that is shown below i_q = 0, where magnets make it differ
 TORQUE_LINES = 8
 SPEED_RATIOS = (1.0, 1.5, 2.0, 3.0, 5.0, 8.0)  # of base speed, whose voltage limits are drawn
+LAST_APART = 1.15  # over the last of them: from there on the greatest speed is drawn too
 
 
 def write_control(
@@ -160,9 +161,11 @@ def _draw_voltage(
     drive = control.drive
     i_d, i_q = window
     base = base_speed(control)
-    speeds = [ratio * base for ratio in SPEED_RATIOS if ratio * base <= most_omega_e]
+    speeds = [ratio * base for ratio in SPEED_RATIOS if 0.0 < ratio * base <= most_omega_e]
+    if not speeds or most_omega_e > LAST_APART * speeds[-1]:
+        speeds.append(most_omega_e)
     kept_off = _kept_off(control, i_d, i_q)
-    for omega_e in speeds or [most_omega_e]:
+    for omega_e in speeds:
         share = square_voltage(drive, i_d, i_q[:, None], omega_e) / drive.voltage_limit**2
         contours = ax.contour(
             i_d, i_q, share, [1.0], colors=style.second, linewidths=1.0, linestyles="dashed"
@@ -218,7 +221,7 @@ def _kept_off(control: Control, i_d: FloatArray, i_q: FloatArray) -> FloatArray:
     curves = (control.per_ampere, control.per_volt)
     lines = [np.stack([curve.i_d, curve.i_q], -1) for curve in curves]
     circle = np.stack([limit * np.cos(angle), abs(limit) * np.sin(angle)], -1)
-    return np.concatenate([frame, *lines, circle]).astype(np.float64)
+    return np.concatenate([frame, *lines, circle])
 
 
 def _levels(top: float) -> FloatArray:
@@ -226,4 +229,5 @@ def _levels(top: float) -> FloatArray:
     rough = top / TORQUE_LINES
     power = 10.0 ** math.floor(math.log10(rough))
     step = next(power * k for k in (1.0, 2.0, 2.5, 5.0, 10.0) if power * k >= rough)
-    return np.arange(1, math.floor(top / step) + 1) * step
+    levels: FloatArray = step * np.arange(1.0, math.floor(top / step) + 1.0)
+    return levels

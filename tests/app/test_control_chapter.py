@@ -18,9 +18,14 @@ from lamwright.app.lamination import section_of
 from lamwright.app.mapped import Mapped
 from lamwright.app.progress import Stopwatch, silent
 from lamwright.geometry.design_file import read_machine
+from lamwright.postprocess.c_header import quantity_bases
+from lamwright.postprocess.c_numbers import number_format
 from lamwright.postprocess.coenergy_surface import coenergy_surface
+from lamwright.postprocess.control import control_of
+from lamwright.postprocess.control_files import drive_header
 from lamwright.postprocess.netcdf import read_netcdf
 from lamwright.postprocess.quantities import figures_of
+from lamwright.postprocess.terminals import terminals
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 L_D, L_Q = 0.12, 0.02  # invented, H
@@ -135,6 +140,22 @@ def test_header_compiles_and_holds_the_torque(written, tmp_path):
     text = (stage / "control.h").read_text()
     for said in ("demo 24/4 arc", "invented", "Caution", "N m rms", "12 A peak", "400 V rms"):
         assert said in text
+
+
+def test_errors_are_stated_of_the_numbers_that_are_written():
+    """The bases that the reading error is computed with are those of the header."""
+    whole = mapped()
+    drive = terminals(
+        whole.surface,
+        resistance=0.9,
+        end_inductance=0.001,
+        current_limit=12.0,
+        line_voltage=400.0,
+    )
+    control = control_of(drive, 1000.0, (3, 3), number_format("q15"))
+    bases = quantity_bases(drive_header(control, "demo", ()), control.form)
+    assert bases["current"] == control.current_base
+    assert bases["torque"] == control.torque_base
 
 
 def test_a_current_limit_beyond_the_map_is_not_given(tmp_path):
