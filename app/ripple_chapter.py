@@ -117,9 +117,10 @@ def written(machine: Machine, section: CrossSection, work: RippleWork, stage: Pa
     write_figure(stage, "ripple", partial(ripple_figure, pictured))
     seen = ForcesPictured(design.name, forces, teeth, section.pole_pairs * speeds[0] / TURN)
     write_figure(stage, "forces", partial(forces_figure, seen))
+    on_stator = _force_figures(section, work, forces, teeth, speeds)
     figures: list[DataclassInstance] = [
         _ripple_figures(section, work, skews),
-        _force_figures(section, work, forces, teeth, speeds),
+        on_stator,
         _pull_figures(work),
     ]
     if work.record is not None:
@@ -132,7 +133,7 @@ def written(machine: Machine, section: CrossSection, work: RippleWork, stage: Pa
                 first=float(record.amplitude[0]),
             )
         )
-    return Chapter(tuple(figures), force_cautions(design.rotor.skew_steps))
+    return Chapter(tuple(figures), force_cautions(design.rotor.skew_steps, on_stator.pull))
 
 
 def skews_shown(machine: Machine, work: RippleWork) -> tuple[SkewedTorque, ...]:

@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 from .quantities import shown_as, shown_estimate
 
 MM = 1e3  # mm per m
+NOTABLE_PULL = 1.0  # N, far above what rounding leaves where nothing pulls
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -127,9 +128,17 @@ class CoggingFigures:
     )
 
 
-def force_cautions(skew_steps: int) -> tuple[str, ...]:
-    """What a reader of forces and pull should be wary of."""
+def force_cautions(skew_steps: int, centred_pull: float) -> tuple[str, ...]:
+    """What a reader of forces and pull should be wary of.
+
+    Args:
+        skew_steps: of the rotor.
+        centred_pull: greatest, in N.
+    """
     lines = ["pull: currents between parallel paths would lower it; the shaft is not bent"]
     if skew_steps > 1:
         lines.append("forces and pull: of the whole stack as if it were not skewed")
+    if centred_pull > NOTABLE_PULL:
+        text = f"a centred rotor too is pulled, by up to {centred_pull:.0f} N that go round"
+        lines.append(f"{text}: bearings and frame must bear it")
     return tuple(lines)
