@@ -139,11 +139,16 @@ def drive_of(mapped: Mapped) -> Terminals:
     """The machine behind its terminals, with the limits of its duty.
 
     Raises:
-        LamwrightError: no current within the limit motors.
+        LamwrightError: no current within the limit motors, or the map does not hold them all.
     """
-    design = mapped.machine.design
+    design, surface = mapped.machine.design, mapped.surface
+    for name, (low, _) in (("i_d", surface.i_d_range), ("i_q", surface.i_q_range)):
+        if low > 0.0:
+            raise LamwrightError(
+                f"the flux map begins at {name} = {low:g} A; accepted grids that begin at 0 A"
+            )
     return terminals(
-        mapped.surface,
+        surface,
         resistance=phase_resistance(design),
         end_inductance=end_winding_inductance(design),
         current_limit=design.duty.most_current_a,
