@@ -15,7 +15,7 @@ swings at about omega_e, and slowly dies down where the resistance is small; a v
 switched on at once would swing the linkage to twice its end. Hence the voltage rises over a ramp.
 With the speed free it may not settle at all: `small_swings` tells.
 
-Integrated by the explicit rule of order 8 by Dormand and Prince (SciPy's DOP853) with its step
+Integrated by the explicit rule of order 8 of Prince & Dormand (1981; SciPy's DOP853) with its step
 chosen for `TOLERANCE`; work and losses are integrated along as states.
 Axes: n times.
 """
