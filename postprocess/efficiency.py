@@ -191,7 +191,7 @@ def _field_losses(
         psi_d, psi_q = terminal_linkages(drive, i_d, i_q)
         emf_d, emf_q = -omega * psi_q, omega * psi_d
         square = emf_d**2 + emf_q**2
-        g = np.divide(stator, 1.5 * square, out=np.zeros_like(square), where=square > 0.0)
-        t_d, t_q = i_d + g * emf_d, i_q + g * emf_q
+        g_iron = np.divide(stator, 1.5 * square, out=np.zeros_like(square), where=square > 0.0)
+        t_d, t_q = i_d + g_iron * emf_d, i_q + g_iron * emf_q
     factor = losses.copper_factor(omega_e) if losses.copper_factor else 1.0
     return 1.5 * drive.resistance * factor * (t_d**2 + t_q**2), stator, rotor

@@ -1,9 +1,9 @@
 """A run in time on given voltages: the map as a machine, to hold the steady tables against.
 
-    u = R i_t + e,   e = d psi/dt + j omega_e psi,   i_t = i + g e      dq of the rotor, peak values
+    u = R i_t + e,   e = d psi/dt + j omega_e psi,   i_t = i + G e      dq of the rotor, peak values
 
 psi = psi(i) + L_w i with end winding. The state is the current that makes the field; its slope is
-(incremental inductances + L_w)^-1 d psi/dt, the same equation without an inverse map. g is the
+(incremental inductances + L_w)^-1 d psi/dt, the same equation without an inverse map. G is the
 conductance of the iron loss beside the machine's emf, P_iron / (3/2 omega_e^2 |psi|^2): common
 practice, no source; 0 without iron loss. The rotor turns at a constant speed, or by its inertia
 under a constant load, p/J (T - T_load) = d omega_e/dt, while the supply's voltage turns at omega_s:
@@ -78,8 +78,8 @@ def steady_voltages(
     """u_d and u_q in V that hold currents in A steady at a speed in rad/s, iron loss counted in."""
     psi = _full_linkage(drive, i_d, i_q)
     emf = 1j * omega_e * psi
-    g = _conductance(iron_loss, i_d, i_q, omega_e, psi)
-    u = drive.resistance * (complex(i_d, i_q) + g * emf) + emf
+    g_iron = _conductance(iron_loss, i_d, i_q, omega_e, psi)
+    u = drive.resistance * (complex(i_d, i_q) + g_iron * emf) + emf
     return u.real, u.imag
 
 
@@ -194,12 +194,12 @@ def _rates(
         psi_d, psi_q, l_dd, l_dq, l_qq = at(i_d, i_q)
         i = complex(i_d, i_q)
         psi = complex(psi_d, psi_q) + l_w * i
-        g = _conductance(iron_loss, i_d, i_q, omega_e, psi)
-        emf = (u - r * i) / (1.0 + r * g)
+        g_iron = _conductance(iron_loss, i_d, i_q, omega_e, psi)
+        emf = (u - r * i) / (1.0 + r * g_iron)
         turned = emf - 1j * omega_e * psi  # d psi/dt
         l_dd, l_qq = l_dd + l_w, l_qq + l_w
         det = l_dd * l_qq - l_dq**2
-        terminal = i + g * emf
+        terminal = i + g_iron * emf
         made = 1.5 * pole_pairs * (psi.conjugate() * i).imag
         return np.array(
             [
@@ -209,7 +209,7 @@ def _rates(
                 feed.omega_e - omega_e,
                 1.5 * (u * terminal.conjugate()).real,
                 1.5 * r * abs(terminal) ** 2,
-                1.5 * g * abs(emf) ** 2,
+                1.5 * g_iron * abs(emf) ** 2,
                 made * omega_e / pole_pairs,
             ]
         )
