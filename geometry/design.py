@@ -12,6 +12,7 @@ from pydantic_core import PydanticCustomError
 
 from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
+from .design_hardening import HardeningCurve
 from .design_loss import LossesDesign, LossPoints, StrandDesign
 from .design_slots import KEYS_OF_SHAPE, slot_key_faults
 from .design_table import NotNegative, Positive
@@ -285,6 +286,7 @@ class SteelCard(_Table):
     tensile_strength_mpa: Sourced
     magnetisation: MagnetisationCurve
     loss: LossPoints | None = None  # needed for the iron loss
+    hardening: HardeningCurve | None = None  # perfectly plastic at the yield strength without
 
 
 class SourcedNumber(_Table):

@@ -4,6 +4,7 @@ import math
 
 from .design import SteelCard
 from .errors import Finding
+from .hardening_checks import hardening_findings
 from .loss_checks import loss_findings
 
 MU_0 = 4e-7 * math.pi  # H/m, permeability of free space
@@ -24,7 +25,8 @@ def card_findings(card: SteelCard) -> tuple[Finding, ...]:
     The curve must be B(H) with both rising; the strengths and moduli must be possible.
     """
     loss = () if card.loss is None else loss_findings(card.loss)
-    return (*_mechanical_faults(card), *_curve_faults(card), *loss)
+    hardening = () if card.hardening is None else hardening_findings(card, card.hardening)
+    return (*_mechanical_faults(card), *_curve_faults(card), *loss, *hardening)
 
 
 def curve_findings(card: SteelCard) -> tuple[Finding, ...]:

@@ -35,10 +35,12 @@ from .figures_drawing import (
     extent,
 )
 from .figures_field import draw_flux
+from .figures_plastic import draw_plastic, draw_plastic_rib, worst_ribs
 from .figures_section import draw_key, draw_lamination, draw_section
 from .figures_stress import LETTERS, close_ups, draw_rib, draw_stress
 from .figures_style import Style
 from .figures_torque import draw_spectrum, draw_torque
+from .plastic_ribs import PlasticStudy
 from .ribs import RibReport
 from .torque import TorqueWaveform
 
@@ -152,6 +154,18 @@ def stress_figure(
     for k, (row, letter) in enumerate(zip(close_ups(ribs), LETTERS, strict=False)):
         close = figure.add_axes((0.66, 0.505 - 0.475 * k, 0.225, 0.375))
         draw_rib(close, section, stress, row, letter, style)
+    return figure
+
+
+def plastic_figure(name: str, section: CrossSection, study: PlasticStudy, style: Style) -> Figure:
+    """Plastic zones after an overspeed test, with the ribs that yielded most close up."""
+    figure = _figure((11.0, 6.6), f"{name}: plastic zones of the rotor lamination", style)
+    ax = figure.add_axes((0.01, 0.02, 0.62, 0.91))
+    scale_ax = figure.add_axes((0.925, 0.12, 0.02, 0.72))
+    draw_plastic(ax, scale_ax, section, study, style)
+    for k, (row, letter) in enumerate(zip(worst_ribs(study.report), LETTERS, strict=False)):
+        close = figure.add_axes((0.66, 0.505 - 0.475 * k, 0.225, 0.375))
+        draw_plastic_rib(close, section, study, row, letter, style)
     return figure
 
 

@@ -77,10 +77,10 @@ def draw_stress(
     """
     section = rotor_cell(section)
     turn = upright(section)
-    place_callouts(ax, _rotor_silhouette(section), _rib_callouts(report, turn), style, RULER_FOOT)
+    place_callouts(ax, rotor_silhouette(section), _rib_callouts(report, turn), style, RULER_FOOT)
     shown = np.arange(len(solution.mesh.elements))
     _draw_field(ax, solution, shown, turn, style)
-    _draw_outline(ax, section, turn, style)
+    draw_outline(ax, section, turn, style)
     factor = _draw_deformed(ax, section, solution, turn, style)
     for row, letter in zip(close_ups(report), LETTERS, strict=False):
         _draw_frame(ax, row, letter, turn, style)
@@ -119,7 +119,7 @@ def draw_rib(
     at = MM * turn * _places(solution)[solution.mesh.elements]
     near = np.abs(at - middle).min(axis=1) < 2.0 * half
     _draw_field(ax, solution, np.flatnonzero(near), turn, style)
-    _draw_outline(ax, section, turn, style)
+    draw_outline(ax, section, turn, style)
     _draw_width(ax, row, turn, style)
     peak = MM * turn * row.peak_at
     ax.plot(
@@ -164,10 +164,10 @@ def rib_name(rib: Rib, ribs: Sequence[Rib]) -> str:
     """A rib as the trade calls it, with its side where there are two, its letter among several."""
     side = rib.name.rsplit("_", 1)[1]
     words = pole_words(pole_of(rib.name))
-    return _numbered(rib, ribs) + (f", {side}" if len(side) > 1 else "") + words
+    return numbered_rib(rib, ribs) + (f", {side}" if len(side) > 1 else "") + words
 
 
-def _numbered(rib: Rib, ribs: Sequence[Rib]) -> str:
+def numbered_rib(rib: Rib, ribs: Sequence[Rib]) -> str:
     """Kind and barrier of a rib; radial ribs of one barrier are told apart by their letters."""
     stem, letter = rib.name.rsplit("_", 1)
     is_one_of_many = sum(other.name.startswith(f"{stem}_") for other in ribs) > 1
@@ -175,7 +175,7 @@ def _numbered(rib: Rib, ribs: Sequence[Rib]) -> str:
     return f"{rib.kind} rib {rib.barrier}{mark}"
 
 
-def _rotor_silhouette(section: CrossSection) -> ComplexArray:
+def rotor_silhouette(section: CrossSection) -> ComplexArray:
     """A line (n,) in mm around the upright rotor's sector and its deformed outline."""
     half = 0.5 * section.sector_angle
     share = np.linspace(0.0, 1.0, 90)
@@ -196,7 +196,7 @@ def _rib_callouts(report: RibReport, turn: complex) -> list[Callout]:
     middle = []
     for row, anchor, rib in rows:
         words = pole_words(pole_of(rib.name))
-        text = f"{_numbered(rib, ribs)}{words}: {mpa(row.peak)}"
+        text = f"{numbered_rib(rib, ribs)}{words}: {mpa(row.peak)}"
         at = (turn * (rib.start + rib.end)).real
         if abs(at) < rib.width:
             middle.append((text, anchor, row.peak == most))
@@ -244,7 +244,8 @@ def _draw_field(
     )
 
 
-def _draw_outline(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
+def draw_outline(ax: Axes, section: CrossSection, turn: complex, style: Style) -> None:
+    """Draw the rotor's exact outline, turned upright."""
     from matplotlib.patches import PathPatch
 
     chains = visible_edges(section.rotor, section)

@@ -46,6 +46,14 @@ class SpinningBody:
         return moved
 
 
+def yield_curve(card: SteelCard) -> YieldCurve:
+    """The card's hardening curve in SI; perfectly plastic at its yield strength without one."""
+    if card.hardening is None:
+        return perfectly_plastic(1e6 * card.yield_strength_mpa.value)
+    curve = card.hardening
+    return YieldCurve(np.array(curve.plastic_strain), 1e6 * np.array(curve.true_stress_mpa))
+
+
 def spinning_body(
     section: CrossSection,
     mesh: PlanarMesh,

@@ -24,8 +24,12 @@ def zone_of_node(section: CrossSection, mesh: PlanarMesh) -> IntArray:
 
     Ribs are those of the rotor's own period, as `section.ribs` has them first.
     """
+    return zone_of_place(section, mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1])
+
+
+def zone_of_place(section: CrossSection, place: ComplexArray) -> IntArray:
+    """The same for places (n_point,) in m in the iron."""
     section = rotor_cell(section)
-    place = mesh.nodes[:, 0] + 1j * mesh.nodes[:, 1]
     away = np.stack([distance_to(rib, place) for rib in section.ribs])
     nearest = np.argmin(away, axis=0)
     reach = np.array([rib_reach(section, rib) for rib in section.ribs])
