@@ -102,8 +102,8 @@ def loss_chapter(mapped: Mapped, stage: Path) -> Chapter:
     figures: list[DataclassInstance] = [
         PointFigures(current=current, gamma=gamma, speed=rated),
         CopperFigures(
-            slots=losses.columns[0][2][-1],  # type: ignore[index]  # always given
-            ends=losses.columns[1][2][-1],  # type: ignore[index]
+            slots=float(losses.columns[0][2][-1]),  # type: ignore[index]  # always given
+            ends=float(losses.columns[1][2][-1]),  # type: ignore[index]
         ),
     ]
     ac: AcCopperFigures | None = None

@@ -227,7 +227,8 @@ def draw_orders(ax: Axes, order: FloatArray, of_order: FloatArray, style: Style)
 
 
 def _pitch(order: FloatArray) -> float:
-    return float(np.diff(order).min(initial=2.0)) if order.size > 1 else 1.0
+    """Least distance of orders, but enough for a bar to be seen."""
+    return max(0.6, float(np.diff(order).min(initial=2.0)))
 
 
 def _plain(ax: Axes, style: Style) -> None:

@@ -26,6 +26,7 @@ Axes: n_point points, n_rep points unlike others, n_sample samples of a period, 
 3 parts (`PARTS`), 4 coefficients.
 """
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -66,7 +67,7 @@ class IronLaws:
     rotor: IronPart
     stator: IronPart
     stacking_factor: float
-    steps: int  # of 60 electrical degrees in the longest period
+    steps: int  # of 60 electrical degrees, in which both parts have whole periods
 
 
 def iron_laws(
@@ -100,7 +101,8 @@ def iron_laws(
         _part(points[0], rotor, length, 0.0 * np.abs(points[0].place)),
         _part(points[1], stator, length, np.where(np.abs(points[1].place) > bottom, 2.0, 1.0)),
     ]
-    return IronLaws(parts[0], parts[1], stacking_factor, points[1].step.steps)
+    steps = math.lcm(points[0].step.steps, points[1].step.steps)
+    return IronLaws(parts[0], parts[1], stacking_factor, steps)
 
 
 def _part(

@@ -33,6 +33,8 @@ from .types import FieldSolution, FloatArray, IntArray
 
 ComplexArray = npt.NDArray[np.complex128]
 
+MOST_STEPS = 432  # of 60 electrical degrees: six turns of 12 pole pairs
+SAME_TURN = 1e-6  # of a turn's magnitude, far above rounding
 SAME_PLACE = 1e-7  # m; far under any element, far above rounding
 
 
@@ -96,9 +98,8 @@ def _points(
     sign = -1.0 if rotor_period * j % 2 else 1.0
     back = rotor_period * j * pole  # by which the rotor's field turns in the rotor
     source, turn = _turned(model, z, back if is_rotor else back + pole / 3.0, sign)
-    steps = 1 if is_rotor and j == 0 else math.lcm(6, 3 * rotor_period)
     weight = quadrature(nodes, elements[numbers], 3).weight.ravel()
-    return PeriodPoints(numbers, z, weight, PeriodStep(source, turn, steps))
+    return PeriodPoints(numbers, z, weight, PeriodStep(source, turn, _steps(source, turn)))
 
 
 def flux_at(
@@ -141,6 +142,21 @@ def like_points(step: PeriodStep) -> IntArray:
         at = step.source[at]
     # Chains longer than the period meet their least number by repeating.
     return reduce(lambda f, _: np.minimum(f, f[step.source]), range(step.steps), first)
+
+
+def _steps(source: IntArray, turn: ComplexArray) -> int:
+    """Steps of 60 electrical degrees after which the flux density of every point is itself.
+
+    One in a rotor that sees all in 60 degrees; where j is not 0 its points must come round to their
+    own places, as they see waves that are slower than the fundamental.
+    """
+    at, turned = source, turn
+    for number in range(1, MOST_STEPS + 1):
+        if np.array_equal(at, np.arange(at.size)) and np.abs(turned - 1.0).max() < SAME_TURN:
+            return number
+        turned = turned * turn[at]
+        at = source[at]
+    raise LamwrightError("the flux density in the steel does not repeat")
 
 
 def _poles_between(slots: int, poles: int, rotor_period: int) -> int:
