@@ -33,8 +33,8 @@ class _Front(click.Group):
         except OSError as error:
             reason = (error.strerror or str(error)).lower()
             self._end(ctx, f"{error.filename or 'file'}: {reason}", 2)
-        except KeyboardInterrupt:
-            self._end(ctx, "interrupted, nothing was written", INTERRUPTED)
+        except KeyboardInterrupt as error:
+            self._end(ctx, str(error) or "interrupted, nothing was written", INTERRUPTED)
         except (click.exceptions.Exit, click.Abort, click.ClickException):
             raise
         except Exception:

@@ -56,11 +56,14 @@ def print_map(report: MapReport, folder: str) -> None:
     for column in ("what", "value", "+-"):
         table.add_column(column, justify="left" if column == "what" else "right")
     counts = {figure.key: figure for figure in report.figures if isinstance(figure.value, int)}
-    for figure in report.figures:
-        if figure.key in counts:
-            continue
-        bar = report.errors.get(figure.key, math.nan)
-        table.add_row(figure.label, valued(figure), "" if math.isnan(bar) else f"{bar:.2g}")
+    for name, figures in report.sections:
+        table.add_section()
+        table.add_row(f"[bold]{escape(name)}[/bold]")
+        for figure in figures:
+            bar = report.errors.get(figure.key, math.nan)
+            if figure.key not in counts:
+                shown = "" if math.isnan(bar) else f"{bar:.2g}"
+                table.add_row(figure.label, valued(figure), shown)
     console.print(table)
     if counts:
         told = ", ".join(f"{figure.label} {figure.value}" for figure in counts.values())

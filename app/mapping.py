@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine, design_hash
+from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
@@ -44,11 +45,16 @@ class MapReport:
     """What `map` has found."""
 
     design_name: str
-    figures: tuple[Figure, ...]
+    sections: tuple[tuple[str, tuple[Figure, ...]], ...]  # the map's, then each chapter's
     errors: dict[str, float]  # by the figures' keys, in their units
     cautions: tuple[str, ...]
     not_given: tuple[str, ...]
     seconds: dict[str, float]  # wall time by phase
+
+    @property
+    def figures(self) -> tuple[Figure, ...]:
+        """All figures in their order."""
+        return tuple(figure for _, figures in self.sections for figure in figures)
 
 
 def run_of(machine: Machine, grid: MapGrid, tolerance: ToleranceName) -> dict[str, object]:
@@ -109,11 +115,14 @@ def write_results(
         name = machine.design.name
         write_map_figure(stage, DrawnMap(name, flux_map, mapped.surface, figures, most))
     chapters = [_chapter(mapped, stage, name, write) for name, write in makers]
-    groups: list[DataclassInstance] = [
+    own: list[DataclassInstance] = [
         _counts(flux_map, solved),
         figures,
         map_checks(flux_map, mapped.surface, errors.linkage, errors.torque),
-        *(group for chapter in chapters for group in chapter.figures),
+    ]
+    groups = [
+        ("map", own),
+        *((name, chapter.figures) for (name, _), chapter in zip(makers, chapters, strict=True)),
     ]
     # Of the surface at rated current: the mesh's alone, as the current angle is the surface's own.
     bars = {
@@ -123,7 +132,10 @@ def write_results(
     }
     report = MapReport(
         design_name=machine.design.name,
-        figures=tuple(figure for group in groups for figure in figures_of(group)),
+        sections=tuple(
+            (name, tuple(figure for group in chapter for figure in figures_of(group)))
+            for name, chapter in groups
+        ),
         errors=scaled_by_key(figures, bars),
         cautions=(
             *grid.cautions,
@@ -141,8 +153,12 @@ def write_results(
 
 
 def _chapter(mapped: Mapped, stage: Path, name: str, write: ChapterMaker) -> Chapter:
+    """What a chapter adds; one that cannot be is told as not given, the others stand."""
     with mapped.watch.phase(name):
-        return write(mapped, stage)
+        try:
+            return write(mapped, stage)
+        except LamwrightError as error:
+            return Chapter((), (), (f"{name}: {error}",))
 
 
 def _counts(flux_map: FluxMap, solved: int) -> MapCounts:
@@ -173,6 +189,7 @@ def _attributes(machine: Machine, tolerance: ToleranceName) -> dict[str, str | f
 def _record(report: MapReport, machine: Machine, tolerance: ToleranceName) -> dict[str, object]:
     values: dict[str, float] = {}
     for figure in report.figures:
+        assert figure.key not in values, f"two figures named {figure.key}"
         values[figure.key] = figure.value
         if figure.key in report.errors:
             values[f"{figure.key}_error"] = report.errors[figure.key]
