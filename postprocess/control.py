@@ -20,6 +20,7 @@ from .terminals import Terminals
 from .torque_lines import torque_lines
 
 VOLT_POINTS = 40
+VOLT_FIRST = 0.1  # root of the least torque over the greatest of most torque per volt
 INVERSE_POINTS = 25  # of each axis of the inverse map
 
 
@@ -60,8 +61,8 @@ def control_of(
     planning = planning_table(lines, pull_out, limit, size[0])
     reading = drive_table(lines, pull_out, limit, size[0])
     points, inverse = reading.points, inverse_map(drive, INVERSE_POINTS)
-    steps = np.arange(1, VOLT_POINTS + 1) / VOLT_POINTS
-    torques = float(per_ampere.torque[-1]) * steps**2  # about equal steps of current
+    # About equal steps of current, from where the map's nodes tell the linkage's bend.
+    torques = float(per_ampere.torque[-1]) * np.linspace(VOLT_FIRST, 1.0, VOLT_POINTS) ** 2
     per_volt = volt_curve(lines, torques, None)
     # All currents of the header share one base, and so do its torques.
     currents = [points.i_d, points.i_q, inverse.i_d, inverse.i_q, per_ampere.amplitude]

@@ -186,7 +186,7 @@ def drive_header(control: Control, design_name: str, text: Sequence[str]) -> CHe
         ("VOLTAGE_LIMIT_V", f"{control.drive.voltage_limit:.6e}", "V, peak of a phase"),
     )
     units = {
-        "share": "1",
+        "share": "no unit",
         "speed": "rad/s mechanical",
         "torque": "N m",
         "current": "A peak",
