@@ -210,7 +210,9 @@ def draw_orders(ax: Axes, order: FloatArray, of_order: FloatArray, style: Style)
             label=name,
             zorder=2,
         )
-    ax.xaxis.set_major_locator(MultipleLocator(6.0))
+    last = float(order[kept].max(initial=1.0))
+    ax.xaxis.set_major_locator(MultipleLocator(6.0 if last > 24.0 else 2.0))
+    ax.set_xlim(0.0, last + 1.0)
     ax.set_ylim(low, 3.0 * float(total.max(initial=1.0)))
     ax.set_xlabel("electrical order", fontsize=style.text, color=style.ink)
     ax.set_ylabel("iron loss in W", fontsize=style.text, color=style.ink)
