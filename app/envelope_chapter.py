@@ -164,7 +164,8 @@ def _efficiency(
     most = _most_shaft_torque(drive, losses, sheet_speed)
     if not np.any(most > 0.0):
         return "no torque is left at the shaft at any speed"
-    share = np.linspace(LEAST_SHARE, MOST_SHARE, SHEET_SHARES)
+    # Closer towards no torque, where the efficiency falls.
+    share = LEAST_SHARE + (MOST_SHARE - LEAST_SHARE) * np.linspace(0.0, 1.0, SHEET_SHARES) ** 1.6
     torque = np.where(most > 0.0, most, np.nan)[:, None] * share
     points = _points(drive, losses, np.repeat(sheet_speed, SHEET_SHARES), torque.ravel())
     has_iron = losses.iron is not None

@@ -30,6 +30,7 @@ BANDS = {Region.CURRENT: "#ffffff", Region.BOTH: "#eef3f6", Region.VOLTAGE: "#f7
 # In percent: closer towards the top, where a designer looks.
 LEVELS = (50.0, 60.0, 70.0, 75.0, 80.0, 84.0, 86.0, 88.0, 90.0, 91.0, 92.0, 93.0, 94.0, 95.0)
 TOP_LEVELS = (96.0, 97.0, 98.0, 99.0)
+EDGE = 0.98  # of the last speed
 NAMED_LEVELS = 9  # highest ones, with numbers; the others crowd at low speed
 
 
@@ -173,7 +174,11 @@ def draw_efficiency(ax: Axes, scale_ax: Axes, sheet: EfficiencySheet, style: Sty
     lines = ax.contour(
         speed, sheet.torque, known, levels=levels, colors=style.ink, linewidths=style.hair
     )
-    ax.clabel(lines, levels=levels[-NAMED_LEVELS:], fmt="%g", fontsize=style.small)
+    named = ax.clabel(lines, levels=levels[-NAMED_LEVELS:], fmt="%g", fontsize=style.small)
+    for text in named:
+        # A number at the last speed would be cut by the frame.
+        if text.get_position()[0] > EDGE * speed.max():
+            text.remove()
     ax.plot(RPM * sheet.speed, sheet.torque[:, -1], color=style.ink, linewidth=1.4)
     if sheet.has_best:
         at = np.unravel_index(np.nanargmax(percent), percent.shape)
