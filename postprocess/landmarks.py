@@ -25,7 +25,7 @@ DEGREE = math.pi / 180.0
 LINE = math.sqrt(1.5)  # rms between lines over the peak of a phase, in star
 PIECES = 4  # that a step between speeds is cut in when a landmark is looked for
 ROUNDS = 8  # of cutting: to 4^-8 = 2e-5 of the step
-AT_CORNER = 1e-6  # relative, below the corner's power: the corner itself counts as above
+AT_CORNER = 1e-5  # relative, below the corner's power: the corner itself counts as above
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -190,8 +190,9 @@ def landmarks(drive: Terminals, found: Envelope, rated_speed: float) -> Landmark
 def last_speed(
     drive: Terminals, found: Envelope, holds: Callable[[Envelope], npt.NDArray[np.bool_]]
 ) -> float:
-    """The last speed in rad/s at which something holds that holds at one of the envelope's."""
-    last = int(np.flatnonzero(holds(found))[-1])
+    """The last speed in rad/s at which something holds; the envelope's first if at none of them."""
+    held = np.flatnonzero(holds(found))
+    last = int(held[-1]) if held.size else 0
     low = float(found.speed[last])
     if last == found.speed.size - 1:
         return low
