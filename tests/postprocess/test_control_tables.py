@@ -75,6 +75,7 @@ def test_every_node_of_the_drives_table_is_reachable():
     assert table.points.torque[-1] == pytest.approx(LIMIT.torque)
 
 
+@pytest.mark.slow
 def test_reading_errs_less_on_finer_tables():
     """Bilinear reading: half the step takes a smooth error to a quarter; kinks leave about half.
 
@@ -93,6 +94,19 @@ def test_reading_errs_less_on_finer_tables():
     assert 0.0 < fine.current_rms < coarse.current_rms
     assert fine.voltage_over < coarse.voltage_over
     assert wrong.torque_rms > coarse.torque_rms + 0.01 * LIMIT.torque.max()
+
+
+def test_reading_a_coarse_table_errs():
+    """Three shares by three speeds: far off in torque, and over the voltage between the nodes."""
+    limit = speed_limits(LAW, 1400.0, 3)
+    table = drive_table(LAW, PULL_OUT, limit, 3)
+    error = reading_error(
+        LAW, table, limit=limit.torque, i_d=table.points.i_d, i_q=table.points.i_q
+    )
+    assert error.places == 6**2
+    assert 0.3 < error.torque_rms < error.torque_most
+    assert 0.3 < error.current_rms < error.current_most
+    assert error.voltage_over > 1.0
 
 
 def test_speeds_that_magnets_forbid_end_the_drives_table():

@@ -36,7 +36,9 @@ def test_base_speed_of_the_linear_machine():
     assert base_speed(control(resistance=0.0)) == pytest.approx(volts / linkage)
 
 
-@pytest.mark.parametrize("psi_m", [0.0, -0.05], ids=["no magnets", "outward magnets"])
+@pytest.mark.parametrize(
+    "psi_m", [0.0, pytest.param(-0.05, marks=pytest.mark.slow)], ids=["no magnets", "outward"]
+)
 def test_plane(psi_m):
     """Units on both axes, both limits and curves named, no two names of lines in one place."""
     figure = control_figure("demo", control(psi_m), 1500.0, Style())
