@@ -10,8 +10,9 @@ amplitude at its own frequency: minor loops are counted, their bias is not.
 
 The steel between the insulation carries B / k, k the stacking factor; its mass is that of k of the
 volume. With n positions the orders seen go to 3 n; what the field holds above folds back on lower
-orders and counts there. Punching, stresses, burrs and circulating bar currents are in no figure;
-common practice adds 1.2 to 2 for them.
+orders and counts there. demo_24s4p_arc at rated current: 12 positions see 98 % of the loss that 36
+see, 92 % of the rotor's; 24 see 99.5 and 99.7 %. Punching, stress, burrs and currents from sheet to
+sheet are in no figure; common practice multiplies by 1.2 to 2 for them.
 
 For one grid point everything is kept that is needed at any frequency: per part (rotor, teeth,
 yoke) and order sums over the points of h, x, e and e mu^2, so that with f_n the order's frequency
