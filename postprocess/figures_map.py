@@ -22,7 +22,7 @@ if TYPE_CHECKING:
 LINES = 5  # of a fan, evenly over the other current
 FINE = 241  # points of a line
 SHADES = ("#9fb3c1", "#17212b")  # of the first and the last line of a fan
-MOST_RIPPLE = 60.0  # %; beyond it, beside the axes, torque is small and ripple says little
+MOST_RIPPLE = 45.0  # %; beyond it, beside the axes, torque is small and ripple says little
 RIPPLE_LEVELS = (2.0, 5.0, 10.0, 20.0, 40.0)  # %
 
 
@@ -130,7 +130,7 @@ def draw_torque_plane(ax: Axes, drawn: DrawnMap, style: Style) -> None:
         negative_linestyles="dashed",
     )
     ax.clabel(lines, fontsize=style.small, fmt="%g")
-    _circles(ax, drawn, style)
+    _circles(ax, drawn, style, are_named=True)
     f = drawn.figures
     ax.plot([f.i_d], [f.i_q], "o", color=style.accent, markersize=4.0)
     ax.annotate(
@@ -161,7 +161,7 @@ def draw_ripple_plane(ax: Axes, drawn: DrawnMap, style: Style) -> None:
         linewidths=style.outline,
     )
     ax.clabel(lines, fontsize=style.small, fmt="%g")
-    _circles(ax, drawn, style)
+    _circles(ax, drawn, style, are_named=False)
     ax.plot([drawn.figures.i_d], [drawn.figures.i_q], "o", color=style.accent, markersize=4.0)
     title = "torque ripple, (greatest - least) / mean in %"
     ax.set_title(title, fontsize=style.text, color=style.ink, loc="left")
@@ -187,14 +187,15 @@ def _plane(flux_map: FluxMap) -> tuple[FloatArray, FloatArray]:
     return i_d, i_q
 
 
-def _circles(ax: Axes, drawn: DrawnMap, style: Style) -> None:
-    """Circles of the rated and of the supply's most current, named at the d axis."""
+def _circles(ax: Axes, drawn: DrawnMap, style: Style, *, are_named: bool) -> None:
+    """Circles of the rated and of the supply's most current, if wanted named at the d axis."""
     low, high = drawn.flux_map.i_q[0], drawn.flux_map.i_q[-1]
     angle = np.linspace(-0.5 * np.pi if low < 0.0 else 0.0, 0.5 * np.pi, FINE)
+    angles = (0.14, 0.05)  # rad, of their names: one above the other
     named = {drawn.figures.current: "rated", drawn.most_current: "most"}
     if drawn.figures.current == drawn.most_current:
         named = {drawn.most_current: "rated and most"}
-    for current, name in named.items():
+    for k, (current, name) in enumerate(named.items()):
         ax.plot(
             current * np.cos(angle),
             current * np.sin(angle),
@@ -202,9 +203,11 @@ def _circles(ax: Axes, drawn: DrawnMap, style: Style) -> None:
             linewidth=style.outline,
             linestyle=(0, (4, 2)),
         )
+        if not are_named:
+            continue
         ax.annotate(
             f"{name}, {current:.3g} A",
-            (current * np.cos(0.14), current * np.sin(0.14)),
+            (current * np.cos(angles[k]), current * np.sin(angles[k])),
             xytext=(-3.0, 0.0),
             textcoords="offset points",
             fontsize=style.small,
