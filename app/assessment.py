@@ -30,6 +30,7 @@ from lamwright.postprocess.figures import (
 )
 from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
+from lamwright.postprocess.rib_tables import elastic_figures, rib_rows, ribs_csv
 from lamwright.postprocess.skew import mean_change, mean_solution, skew_cautions, step_point
 from lamwright.postprocess.summary import (
     magnetic_figures,
@@ -37,7 +38,7 @@ from lamwright.postprocess.summary import (
     stress_figures,
     terminal_figures,
 )
-from lamwright.postprocess.tables import ribs_csv, spectrum_csv, verdict_record, waveform_csv
+from lamwright.postprocess.tables import spectrum_csv, verdict_record, waveform_csv
 from lamwright.postprocess.torque import (
     TorqueWaveform,
     spectrum,
@@ -204,7 +205,9 @@ class Assessment:
             write_text(stage / WAVEFORM_FILE, waveform_csv(waveform))
             orders = spectrum(waveform)
             write_text(stage / ORDERS_FILE, spectrum_csv(orders, waveform.mean))
-            write_text(stage / RIBS_FILE, ribs_csv(stress.report))
+            elastic = elastic_figures(self.section, stress.report, stress.zone_errors)
+            rows = rib_rows(self.section, stress.report, elastic)
+            write_text(stage / RIBS_FILE, ribs_csv(rows))
             for work in magnets:
                 work.write(stage)
         with watch.phase("pictures"):

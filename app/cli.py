@@ -186,6 +186,54 @@ def slopes(design: Path, out: Path) -> None:
 @main.command()
 @_DESIGN
 @_OUT
+@click.option(
+    "--tolerance",
+    type=click.Choice(["coarse", "normal", "fine"]),
+    default="normal",
+    show_default=True,
+    help="Largest error of rib stress: 5; 2; 0.5 %.",
+)
+@click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
+@click.option(
+    "--overspeed-share",
+    type=float,
+    default=0.0,
+    show_default=True,
+    help="Of the starts, that go up to overspeed, for the life.",
+)
+@click.pass_context
+def ribs(
+    ctx: click.Context,
+    design: Path,
+    out: Path,
+    tolerance: Literal["coarse", "normal", "fine"],
+    pictures: bool,
+    overspeed_share: float,
+) -> None:
+    """Ribs of DESIGN: stress, plastic reserve, burst speed and life.
+
+    Ends with 0 when the yield margin asked for holds, with 1 when it is missed.
+    """
+    from .rib_run import ribs_design
+    from .rib_screen import print_ribs
+    from .screen import shown_progress
+
+    with shown_progress() as progress:
+        report = ribs_design(
+            design,
+            out,
+            tolerance=tolerance,
+            pictures=pictures,
+            overspeed_share=overspeed_share,
+            progress=progress,
+        )
+    print_ribs(report, str(out))
+    ctx.exit(0 if report.passes else 1)
+
+
+@main.command()
+@_DESIGN
+@_OUT
 @click.option("--currents", required=True, help="Direct currents, A, as 15,25,35.")
 @click.option(
     "--feed",

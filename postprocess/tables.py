@@ -9,13 +9,11 @@ from lamwright.solver.types import FieldSolution
 from .files import csv_text
 from .no_load import LinkageSpectrum, NoLoad
 from .operating import mean_linkage_torque
-from .ribs import RibReport
 from .torque import TorqueSpectrum, TorqueWaveform, coenergy_torque, linkage_torque
-from .verdict import RPM, Outcome, Verdict, all_figures
+from .verdict import Outcome, Verdict, all_figures
 
 DEGREE = np.pi / 180.0
 MM = 1e3  # mm per m
-MPA = 1e-6  # MPa per Pa
 
 
 def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, object]:
@@ -148,32 +146,3 @@ def spectrum_csv(spectrum: TorqueSpectrum, mean_torque: float) -> str:
         for order, amplitude in zip(spectrum.order, spectrum.amplitude, strict=True)
     ]
     return csv_text(["order_el", "amplitude_nm", "percent_of_mean"], rows)
-
-
-def ribs_csv(report: RibReport) -> str:
-    """One row for each rib of one pole; places in the rotor's frame, d axis along x.
-
-    The speed at which the rib yields on average is empty where the rib is pressed.
-    """
-    # fmt: off
-    header = [
-        "rib", "kind", "barrier", "width_mm", "tension_mean_mpa", "shear_mean_mpa", "bending_mpa",
-        "peak_mpa", "peak_x_mm", "peak_y_mm", "yield_margin", "speed_mean_yield_rpm",
-    ]
-    # fmt: on
-    rows = []
-    for row in report.ribs:
-        values = (
-            row.rib.width * MM,
-            row.mean_tension * MPA,
-            row.mean_shear * MPA,
-            row.bending * MPA,
-            row.peak * MPA,
-            row.peak_at.real * MM,
-            row.peak_at.imag * MM,
-            row.yield_margin,
-            row.mean_yield_speed * RPM,
-        )
-        texts = [f"{value:.6g}" if np.isfinite(value) else "" for value in values]
-        rows.append([row.rib.name, row.rib.kind, str(row.rib.barrier), *texts])
-    return csv_text(header, rows)

@@ -1,7 +1,6 @@
 """Records and CSV: every key promised, units, and that they read back."""
 
 import csv
-import dataclasses
 import io
 import json
 import math
@@ -10,12 +9,9 @@ import invented_verdict as invented
 import numpy as np
 import pytest
 
-from lamwright.geometry.section import Rib
 from lamwright.postprocess.files import json_text
-from lamwright.postprocess.ribs import RibReport, RibStress
 from lamwright.postprocess.tables import (
     point_record,
-    ribs_csv,
     spectrum_csv,
     verdict_record,
     waveform_csv,
@@ -101,39 +97,3 @@ def test_spectrum_table_has_percent_of_the_mean():
     """0.8 of 8 N m is 10 %."""
     rows = list(csv.DictReader(io.StringIO(spectrum_csv(SPECTRUM, 8.0))))
     assert rows[1] == {"order_el": "12", "amplitude_nm": "0.8", "percent_of_mean": "10"}
-
-
-def test_rib_table_reads_back():
-    """Units converted by hand; a rib under pressure never yields in tension: empty, not inf."""
-    rib = Rib("radial_1", "radial", 1, 0.030 + 0.0j, 0.030 + 0.001j)
-    row = RibStress(
-        rib=rib,
-        mean_tension=-5e6,
-        mean_shear=1e6,
-        bending=2e6,
-        peak=80e6,
-        peak_at=0.030 + 0.0005j,
-        yield_margin=4.75,
-        mean_yield_speed=math.inf,
-    )
-    report = RibReport(
-        speed=100.0,
-        yield_strength=380e6,
-        ribs=(row, dataclasses.replace(row, mean_yield_speed=100.0 * math.pi)),
-        peak=80e6,
-        peak_error=1e5,
-        peak_at=row.peak_at,
-        yield_margin=4.75,
-        growth_d=1e-6,
-        growth_q=2e-6,
-        growth_max=2e-6,
-        gap_left=0.398e-3,
-    )
-    first, second = csv.DictReader(io.StringIO(ribs_csv(report)))
-    assert first["rib"] == "radial_1"
-    assert float(first["width_mm"]) == pytest.approx(1.0)
-    assert float(first["tension_mean_mpa"]) == pytest.approx(-5.0)
-    assert float(first["peak_x_mm"]) == pytest.approx(30.0)
-    assert float(first["peak_y_mm"]) == pytest.approx(0.5)
-    assert first["speed_mean_yield_rpm"] == ""
-    assert float(second["speed_mean_yield_rpm"]) == pytest.approx(3000.0)

@@ -1,0 +1,35 @@
+"""The elastic ribs at overspeed: figures, rows and the picture of the stress."""
+
+from functools import partial
+from pathlib import Path
+
+from lamwright.postprocess.error_bars import stress_errors
+from lamwright.postprocess.quantities import scaled_by_key
+from lamwright.postprocess.rib_figures import mean_yield, rotor_errors, rotor_figures
+from lamwright.postprocess.rib_tables import elastic_figures
+from lamwright.postprocess.summary import stress_figures
+
+from .ribbed import Ribbed, RibChapter
+
+
+def elastic_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
+    """Figures at overspeed with their error bars, a row for each rib, and the picture."""
+    stress, section = ribbed.stress, ribbed.section
+    rotor = rotor_figures(section, stress.report)
+    if ribbed.pictures:
+        from lamwright.postprocess.figures import stress_figure, write_figure
+
+        name = ribbed.machine.design.name
+        compose = partial(stress_figure, name, section, stress.solution, stress.report)
+        write_figure(stage, "stress", compose)
+    return RibChapter(
+        figures=(stress_figures(stress.report), rotor, *mean_yield(stress.report)),
+        not_given=(
+            "air gap left hot: needs the temperatures of rotor and stator, which no key states",
+        ),
+        of_ribs=elastic_figures(section, stress.report, stress.zone_errors),
+        errors={
+            **stress_errors(stress.report, stress.finer, stress.zone_errors),
+            **scaled_by_key(rotor, rotor_errors(stress.report, stress.finer)),
+        },
+    )

@@ -1,0 +1,11 @@
+"""The chapters of `ribs`, in the order of its results: one line for each."""
+
+from .elastic_chapter import elastic_chapter
+from .plastic_chapter import plastic_chapter
+from .ribbed import RibChapterMaker
+
+# Name of the phase that is shown and timed, and who writes it.
+CHAPTERS: tuple[tuple[str, RibChapterMaker], ...] = (
+    ("elastic", elastic_chapter),
+    ("plastic", plastic_chapter),
+)

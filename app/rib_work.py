@@ -1,0 +1,140 @@
+"""The work of `ribs`: the elastic stress, then chapters and files."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+from lamwright.geometry.design_file import Machine, design_hash
+from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.section import CrossSection
+from lamwright.geometry.whole_file import write_text
+from lamwright.postprocess.files import json_text
+from lamwright.postprocess.quantities import Figure, figures_of
+from lamwright.postprocess.rib_cautions import rib_cautions
+from lamwright.postprocess.rib_tables import RibRow, rib_rows, ribs_csv
+from lamwright.postprocess.verdict import RPM
+from lamwright.solver.tolerance import ToleranceName, tolerance_settings
+
+from .desk import Desk
+from .mapped import Chapter
+from .progress import Stopwatch
+from .ribbed import Ribbed, RibChapter, RibChapterMaker, RibWishes
+from .version import version
+
+RIBS_FILE, TABLE_FILE = "ribs.json", "ribs.csv"
+
+
+@dataclass(frozen=True, slots=True)
+class RibsReport:
+    """What `ribs` has found."""
+
+    design_name: str
+    sections: tuple[tuple[str, tuple[Figure, ...]], ...]  # of each chapter
+    ribs: tuple[RibRow, ...]  # of the rotor's own period
+    errors: Mapping[str, float]  # by the figures' keys, in their units
+    facts: Mapping[str, str | bool]  # by key, what is no number
+    least_margin: float  # yield margin asked for
+    cautions: tuple[str, ...]
+    not_given: tuple[str, ...]
+    seconds: Mapping[str, float]  # wall time by phase
+
+    @property
+    def figures(self) -> dict[str, Figure]:
+        """All figures by key in their order."""
+        return {figure.key: figure for _, figures in self.sections for figure in figures}
+
+    @property
+    def passes(self) -> bool:
+        """Whether the design's limit of the yield margin holds; being equal meets it."""
+        return self.figures["yield_margin"].value >= self.least_margin
+
+
+def ribbed_machine(
+    machine: Machine,
+    section: CrossSection,
+    watch: Stopwatch,
+    tolerance: ToleranceName,
+    wishes: RibWishes,
+    pictures: bool,
+) -> Ribbed:
+    """The machine with its elastic stress at overspeed.
+
+    Raises:
+        NotConverged: the peaks did not settle.
+    """
+    _, settings, _ = tolerance_settings(tolerance)
+    duty = machine.design.duty
+    with watch.phase("stress"):
+        stress = Desk().stress(
+            section,
+            machine.rotor_steel,
+            duty.overspeed_factor * duty.maximum_speed_rpm / RPM,
+            settings,
+        )
+    return Ribbed(machine, section, stress, settings, watch, wishes, pictures)
+
+
+def write_results(
+    ribbed: Ribbed,
+    stage: Path,
+    tolerance: ToleranceName,
+    makers: Sequence[tuple[str, RibChapterMaker]],
+) -> RibsReport:
+    """All files into `stage`, with those of the chapters; returns what `ribs.json` says."""
+    machine, watch = ribbed.machine, ribbed.watch
+    chapters = [_chapter(ribbed, stage, name, write) for name, write in makers]
+    whole = [chapter for chapter in chapters if isinstance(chapter, RibChapter)]
+    groups = [chapter.of_ribs for chapter in whole if chapter.of_ribs]
+    report = RibsReport(
+        design_name=machine.design.name,
+        sections=tuple(
+            (name, tuple(figure for group in chapter.figures for figure in figures_of(group)))
+            for (name, _), chapter in zip(makers, chapters, strict=True)
+        ),
+        ribs=rib_rows(ribbed.section, ribbed.stress.report, *groups),
+        errors={key: error for chapter in whole for key, error in chapter.errors.items()},
+        facts={key: fact for chapter in whole for key, fact in chapter.facts.items()},
+        least_margin=machine.design.limits.least_yield_margin,
+        cautions=(
+            *dict.fromkeys(line for chapter in chapters for line in chapter.cautions),
+            *rib_cautions(machine.rotor_steel),
+        ),
+        not_given=tuple(line for chapter in chapters for line in chapter.not_given),
+        seconds={time.phase: round(time.seconds, 3) for time in watch.times},
+    )
+    write_text(stage / TABLE_FILE, ribs_csv(report.ribs))
+    write_text(stage / RIBS_FILE, json_text(_record(report, machine, tolerance)))
+    return report
+
+
+def _chapter(ribbed: Ribbed, stage: Path, name: str, write: RibChapterMaker) -> Chapter:
+    """What a chapter adds; one that cannot be is told as not given, the others stand."""
+    with ribbed.watch.phase(name):
+        try:
+            return write(ribbed, stage)
+        except LamwrightError as error:
+            return Chapter((), (), (f"{name}: {error}",))
+
+
+def _record(report: RibsReport, machine: Machine, tolerance: ToleranceName) -> dict[str, object]:
+    values: dict[str, float] = {}
+    for key, figure in report.figures.items():
+        values[key] = figure.value
+        if key in report.errors:
+            values[f"{key}_error"] = report.errors[key]
+    assert len(report.figures) == sum(len(figures) for _, figures in report.sections)
+    return {
+        "design": report.design_name,
+        "passes": report.passes,
+        "least_yield_margin": report.least_margin,
+        **values,
+        **report.facts,
+        "ribs": [row.record for row in report.ribs],
+        "estimates": [key for key, figure in report.figures.items() if figure.is_estimate],
+        "not_given": list(report.not_given),
+        "cautions": list(report.cautions),
+        "tolerance": tolerance,
+        "version": version(),
+        "design_hash": design_hash(machine.design, machine.cards),
+        "seconds": dict(report.seconds),
+    }

@@ -1,0 +1,107 @@
+"""`ribs` on the coarse demo: whole files, figures that hang together, cautions, bad input."""
+
+import csv
+import json
+from pathlib import Path
+
+import pytest
+from click.testing import CliRunner
+
+from lamwright.app.cli import main
+from lamwright.app.rib_run import ribs_design
+from lamwright.geometry.errors import LamwrightError
+
+DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
+pytestmark = pytest.mark.xdist_group("ribs")  # the fixture is worth several seconds
+# Issue point 8, by a word of each.
+CAUTIONS = ("burst", "containment", "certificate", "licensed", "local codes")
+
+
+@pytest.fixture(scope="module")
+def ran(tmp_path_factory):
+    """The command on the demo without pictures: what it printed and its folder."""
+    folder = tmp_path_factory.mktemp("ribs")
+    line = ["ribs", str(DEMO), "--out", str(folder), "--tolerance", "coarse", "--no-pictures"]
+    return CliRunner().invoke(main, line), folder
+
+
+@pytest.fixture(scope="module")
+def record(ran):
+    """What `ribs.json` holds."""
+    return json.loads((ran[1] / "ribs.json").read_text())
+
+
+def test_the_command_ends_well_and_leaves_whole_files(ran):
+    """Margin 2.2 against 1.2 asked: exit 0; nothing hidden or half done is left."""
+    result, folder = ran
+    assert result.exit_code == 0, result.output
+    assert {path.name for path in folder.iterdir()} == {"ribs.json", "ribs.csv"}
+
+
+def test_figures_hang_together(ran, record):
+    """Margin = yield / peak; first yield at speed x sqrt(margin); the table's rows are the JSON's.
+
+    Burst by limit load is above first yield, its bounds 0.5 % apart; overspeed 1.2 x 6000.
+    """
+    assert record["speed_overspeed_rpm"] == pytest.approx(7200.0)
+    assert record["yield_margin"] == pytest.approx(
+        record["yield_strength_mpa"] / record["lamination_stress_peak_mpa"]
+    )
+    assert record["speed_yield_begins_rpm"] == pytest.approx(7200.0 * record["yield_margin"] ** 0.5)
+    peaks = [rib["peak_mpa"] for rib in record["ribs"]]
+    assert max(peaks) == pytest.approx(record["rib_stress_peak_mpa"])
+    assert 0.0 < record["rib_stress_peak_mpa_error"] < 0.05 * max(peaks)
+    assert record["gap_left_mm"] == pytest.approx(
+        record["gap_cold_mm"] - 1e-3 * record["radial_growth_um"]
+    )
+    low, high = record["speed_burst_low_rpm"], record["speed_burst_high_rpm"]
+    assert record["speed_yield_begins_rpm"] < low <= high < 1.005 * low
+    assert record["start_stop"] == "elastic"
+    assert record["growth_left_um"] == 0.0
+    with (ran[1] / "ribs.csv").open() as file:
+        rows = list(csv.DictReader(file))
+    assert [row["rib"] for row in rows] == [rib["rib"] for rib in record["ribs"]]
+    assert [float(row["peak_mpa"]) for row in rows] == pytest.approx(peaks, rel=1e-5)
+    for rib in record["ribs"]:
+        assert rib["stress_concentration"] == pytest.approx(
+            rib["peak_mpa"] / rib["tension_mean_mpa"]
+        )
+        assert rib["speed_mean_yield_rpm"] > rib["speed_first_yield_rpm"]
+        assert rib["peak_on"].startswith(f"barrier {rib['barrier']}, arc of ")
+
+
+def test_cautions_stand_on_the_terminal_and_in_the_file(ran, record):
+    """Issue point 8: burst, containment, certificate, licensed practice, local codes."""
+    for word in CAUTIONS:
+        assert word in ran[0].output
+        assert any(word in line for line in record["cautions"])
+
+
+def test_what_is_missing_is_named(ran, record):
+    """Said in both places, and each starts with the figure that is missing."""
+    assert record["not_given"]
+    for line in record["not_given"]:
+        assert line in ran[0].output
+
+
+@pytest.mark.parametrize("share", [-0.1, 1.5, float("nan")])
+def test_an_impossible_share_is_refused(share, tmp_path):
+    """One line, before anything is solved or written."""
+    with pytest.raises(LamwrightError, match=r"^--overspeed-share \S+: accepted 0 to 1$"):
+        ribs_design(DEMO, tmp_path / "out", overspeed_share=share)
+    assert not (tmp_path / "out").exists()
+
+
+def test_a_missed_margin_ends_with_1(tmp_path):
+    """The limit raised above what the demo has."""
+    text = DEMO.read_text().replace('"steel/', f'"{DEMO.parent}/steel/')
+    rows = [
+        "least_yield_margin = 5.0" if row.startswith("least_yield_margin") else row
+        for row in text.splitlines()
+    ]
+    path = tmp_path / "design.toml"
+    path.write_text("\n".join(rows))
+    line = ["ribs", str(path), "--out", str(tmp_path / "o"), "--tolerance", "coarse"]
+    result = CliRunner().invoke(main, [*line, "--no-pictures"])
+    assert result.exit_code == 1, result.output
+    assert "missed: yield margin" in result.output
