@@ -4,12 +4,14 @@ import math
 
 from lamwright.geometry.section import CrossSection
 
+from .cautions import MOST_GROWTH
 from .files import csv_text
 from .plastic_ribs import PlasticReport, PlasticRib
 from .verdict import RPM
 
 MM, UM, MPA, PERCENT = 1e3, 1e6, 1e-6, 100.0
 LEAST_RESERVE = 1.05  # of burst over test: less than the sum of what is not in the model
+MOST_STRAIN = 0.05  # plastic; punched sheet may tear beyond (common practice, no source)
 
 PLASTIC_STANDING = (
     "burst by limit load is an estimate in plane stress, small displacements, a free bore: it"
@@ -74,6 +76,14 @@ def plastic_cautions(report: PlasticReport, section: CrossSection) -> tuple[str,
         found.append(
             f"burst by limit load is only {reserve:.1f} % above the test speed: less than"
             " mesh, sheet and strength may scatter"
+        )
+    if math.isfinite(report.growth_max) and report.growth_max > MOST_GROWTH * section.gap:
+        taken = PERCENT * report.growth_max / section.gap
+        found.append(f"the growth left takes {taken:.0f} % of the air gap")
+    if math.isfinite(report.largest_strain) and report.largest_strain > MOST_STRAIN:
+        found.append(
+            f"plastic strain of {PERCENT * report.largest_strain:.2g} %: the sheet may tear, and"
+            " small displacements no longer describe it"
         )
     if report.regime in ("alternating", "ratcheting", "unsettled"):
         words = {

@@ -10,7 +10,7 @@ Cost measured, one core, 2 513 elements: a residual 8 ms, a tangent with its fac
 Axes: n_elem, n_qp = 6, n_node, n_unknown, 12 displacements of an element, 3 strains xx yy xy.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -254,13 +254,10 @@ def _moduli(body: ElasticBody, points: IntArray) -> tuple[FloatArray, FloatArray
 
 def _elastic_law(body: ElasticBody, elements: IntArray) -> FloatArray:
     """Plane stress law (n, 3, 3) in Pa of some elements."""
-    unit = np.eye(3)[None]  # three strains, one a point
-    chosen = ElasticBody(
-        mesh=body.mesh,
-        quad=body.quad,
-        node_grad=body.node_grad,
+    chosen = replace(
+        body,
         youngs_modulus=body.youngs_modulus[elements],
         poissons_ratio=body.poissons_ratio[elements],
-        density=body.density[elements],
     )
-    return stress_of_strain(chosen, np.repeat(unit, len(elements), axis=0))
+    unit = np.broadcast_to(np.eye(3), (len(elements), 3, 3))  # three strains, one a point
+    return stress_of_strain(chosen, unit)

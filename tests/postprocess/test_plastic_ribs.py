@@ -2,11 +2,13 @@
 
 import functools
 import math
+from pathlib import Path
 
 import numpy as np
 import pytest
 
 from lamwright.geometry.cross_section import cross_section
+from lamwright.geometry.design_file import read_machine
 from lamwright.geometry.design_hardening import HardeningCurve
 from lamwright.geometry.section import CrossSection
 from lamwright.postprocess.figures import plastic_figure
@@ -15,6 +17,8 @@ from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.mean_hoop import MISES_FACTOR, mean_hoop_speed
 from lamwright.postprocess.plastic_ribs import PlasticReport, PlasticStudy, plastic_study
 from lamwright.postprocess.ribs import rib_report
+from lamwright.solver.limit_load import limit_load
+from lamwright.solver.plastic_rotor import spinning_body
 from lamwright.solver.refine import refined
 from lamwright.solver.rotor_stress import (
     StressSettings,
@@ -181,3 +185,29 @@ def test_burst_on_four_times_the_elements(name):
     fine = plastic_study(section, again, CARD, 0.01 * SPEED, 0.01 * SPEED).report
     assert fine.burst_low <= 1.002 * burst(name)
     assert fine.burst_low == pytest.approx(burst(name), rel=1e-2)
+
+
+DESIGNS = sorted((Path(__file__).parents[2] / "designs").glob("**/*.toml"))
+MACHINES = [path for path in DESIGNS if path.parent.name in ("designs", "gallery")]
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("path", MACHINES, ids=lambda path: path.stem)
+def test_burst_of_every_shipped_rotor_is_found(path):
+    """Bounds close on all; first yield below, whole cuts through the axis above (both rigorous).
+
+    0.5 % of the load between the bounds is 0.25 % of the speed, so the middle is within 0.5 %.
+    """
+    machine = read_machine(path)
+    section, card = cross_section(machine.design), machine.rotor_steel
+    duty = machine.design.duty
+    speed = duty.overspeed_factor * duty.maximum_speed_rpm * math.pi / 30.0
+    solution = rotor_stress(section, card, speed, StressSettings(tolerance=0.05))
+    spinning = spinning_body(section, solution.mesh, card, speed)
+    found = limit_load(spinning.plastic, spinning.force)
+    assert found.first_yield < found.lower <= found.upper <= 1.005 * found.lower
+    strength = 1e6 * card.yield_strength_mpa.value
+    density = card.density_kg_per_m3.value
+    period = spinning.section.sector_angle
+    whole = mean_hoop_speed(solution.mesh, period, density, strength)
+    assert spinning.speed(found.lower) < math.sqrt(MISES_FACTOR) * whole

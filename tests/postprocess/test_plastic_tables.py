@@ -86,6 +86,8 @@ def test_collapse_is_null_and_forbidden():
     ("change", "words"),
     [
         ({"test_speed": 1390.0}, "only 0.7 % above the test speed"),
+        ({"growth_max": 0.25 * SECTION.gap}, "takes 25 % of the air gap"),
+        ({"largest_strain": 0.08}, "plastic strain of 8 %: the sheet may tear"),
         ({"regime": "alternating"}, "low-cycle fatigue"),
         ({"regime": "ratcheting"}, "grows with every start"),
         ({"regime": "unsettled", "cycles": 12}, "did not settle in 12 cycles"),
