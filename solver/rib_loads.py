@@ -52,6 +52,8 @@ def rib_loads(
     Returns:
         (n_rib, 3): force in x and y in N/m, moment about the line's middle in N.
     """
+    if not ribs:
+        return np.zeros((0, 3))
     stress = inner_stress(body, moved, free_strain)
     share = (np.arange(SEEDS) + 0.5) / SEEDS
     line = np.concatenate([rib.start + share * (rib.end - rib.start) for rib in ribs])
