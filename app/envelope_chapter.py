@@ -131,7 +131,6 @@ def envelope_chapter(mapped: Mapped, stage: Path) -> Chapter:
             lines.append(f"{name}: {made}")
         else:
             figures.append(made)
-    lines += [f"{name}: left out of the efficiency" for name in losses.missing]
     return Chapter(tuple(figures), CAUTIONS, tuple(lines))
 
 

@@ -126,11 +126,16 @@ def loss_chapter(mapped: Mapped, stage: Path) -> Chapter:
     table = [(key, None if v is None else v[:-1]) for key, _, v in losses.columns]
     write_text(stage / "losses.csv", losses_csv(speeds[:-1], table))
     write_loss_figures(stage, _picture(mapped, steps, current, gamma, rated, iron, losses))
-    not_given = []
+    not_given = []  # also on behalf of the efficiency, so that each is told once
     if strands is None:
-        not_given.append("AC copper loss: the design has no table winding.strands")
+        not_given.append(
+            "AC copper loss, the efficiency is without it: the design has no table winding.strands"
+        )
     if bearings is None:
-        not_given.append("friction of bearings: the design states no losses.bearing_friction_nm")
+        not_given.append(
+            "friction of bearings, the efficiency is without it: "
+            "the design states no losses.bearing_friction_nm"
+        )
     if isinstance(laws, str) and not isinstance(mapped.losses, str):
         not_given.append(laws)  # else the map tells it
     return Chapter(tuple(figures), loss_cautions(of_iron, ac, POSITIONS), tuple(not_given))

@@ -24,7 +24,7 @@ from lamwright.postprocess.cogging import (
     cogging_per_turn,
     cogging_positions,
 )
-from lamwright.postprocess.gap_waves import GapWaves, gap_waves
+from lamwright.postprocess.gap_waves import ComplexArray, GapWaves, gap_waves
 from lamwright.postprocess.magnetic_pull import (
     EccentricPull,
     eccentric_pull,
@@ -165,7 +165,7 @@ def ripple_work(
 
 def pulled(
     desk: Desk, machine: Machine, currents: tuple[float, float], offset: float
-) -> tuple[FloatArray, float]:
+) -> tuple[ComplexArray, float]:
     """Pull F_x + j F_y in N at each position, and the centred working field's crest in T.
 
     The whole circle is meshed for it; the desk's own model is left alone.

@@ -1,5 +1,7 @@
 """The coenergy surface against a linear machine, a published law, and its own invariants."""
 
+import pickle
+
 import numpy as np
 import pytest
 from flux_laws import F1_POLE_PAIRS, F1_RATED, f1_linkages, f1_map, linear_map
@@ -107,3 +109,11 @@ def test_bad_axes_are_refused():
     for axis in ([0.0, 5.0], [0.0, 5.0, 4.0]):
         with pytest.raises(ValueError, match="i_d: not 3 or more rising currents"):
             coenergy_surface(linear_map(2, 0.05, 0.01, axis, GRID))
+
+
+def test_a_surface_goes_to_another_process():
+    """With the spline it holds: the same values to the last bit."""
+    i_d, i_q = places(20, F1_RATED)
+    other = pickle.loads(pickle.dumps(SURFACE))
+    for own, sent in zip(linkages(SURFACE, i_d, i_q), linkages(other, i_d, i_q), strict=True):
+        assert np.array_equal(own, sent)
