@@ -1,32 +1,32 @@
-"""What `ribs` shows on the terminal: the ribs, the rotor's figures, what is missing, cautions."""
+"""What `ribs` shows on the terminal: the ribs, the rotor's figures, what is missing, cautions.
+
+Places of the peaks, and what has no room here, are in `ribs.csv`.
+"""
 
 import math
-from collections.abc import Sequence
 
 from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
 from rich.text import Text
 
-from lamwright.postprocess.rib_tables import RibRow
+from lamwright.postprocess.rib_tables import shown_ribs
 
 from .lines import number, valued
 from .rib_work import RibsReport
 
 MOST_SHOWN = 16  # ribs; all are in ribs.csv
-OTHER_SIDE = {"left": "right", "right": "left"}
-ALIKE = 5e-3  # of the peak: the two of a mirrored pair differ by their meshes
 # Column heads of a rib's figures by key, stress in MPa; a key that no chapter gave has none.
 COLUMNS = {
     "width_mm": "mm",
     "tension_mean_mpa": "mean",
-    "bending_mpa": "bending",
+    "bending_mpa": "bend",
     "peak_mpa": "peak",
     "stress_concentration": "peak/\nmean",
     "yield_margin": "margin",
-    "yielded_section_percent": "plastic %",
-    "life_least_cycles": "life",
+    "life_2_3_percent_cycles": "starts\nto 2.3 %",
 }
+LIFE = "life_2_3_percent_cycles"
 
 
 def print_ribs(report: RibsReport, folder: str) -> None:
@@ -34,7 +34,8 @@ def print_ribs(report: RibsReport, folder: str) -> None:
     console = Console(highlight=False)
     console.print(_ribs_table(report))
     more = len(shown_ribs(report.ribs)) - MOST_SHOWN
-    console.print(f"[dim]{f'{more} more ribs, ' if more > 0 else ''}places in ribs.csv[/dim]")
+    if more > 0:
+        console.print(f"[dim]{more} more ribs in ribs.csv[/dim]")
     console.print(_figures_table(report))
     for key, fact in report.facts.items():
         told = fact if isinstance(fact, str) else ("yes" if fact else "no")
@@ -56,37 +57,22 @@ def _ribs_table(report: RibsReport) -> Table:
         title_style="bold",
     )
     known = {key: head for key, head in COLUMNS.items() if key in report.ribs[0].values}
-    table.add_column("rib", no_wrap=True)
+    table.add_column("rib")
     for head in known.values():
-        table.add_column(head, justify="right")
+        table.add_column(head, justify="right", no_wrap=True)
     for name, row in shown_ribs(report.ribs)[:MOST_SHOWN]:
-        table.add_row(name, *(_cell(row.values[key]) for key in known))
+        table.add_row(name, *(_cell(report, key, row.values[key]) for key in known))
     return table
 
 
-def shown_ribs(rows: Sequence[RibRow]) -> list[tuple[str, RibRow]]:
-    """Ribs by falling peak, each with its name; of a mirrored pair the more stressed for both."""
-    found: list[tuple[str, RibRow]] = []
-    names = {row.rib.name: row for row in rows}
-    for row in sorted(rows, key=_peak, reverse=True):
-        stem, _, side = row.rib.name.rpartition("_")
-        other = names.get(f"{stem}_{OTHER_SIDE[side]}") if side in OTHER_SIDE else None
-        is_pair = other is not None and _peak(row) - _peak(other) <= ALIKE * _peak(row)
-        if is_pair and any(shown.rib.name == f"{stem}_{OTHER_SIDE[side]}" for _, shown in found):
-            continue
-        words = stem if is_pair else row.rib.name
-        found.append((f"{words.replace('_', ' ')}{', both' if is_pair else ''}", row))
-    return found
-
-
-def _peak(row: RibRow) -> float:
-    peak = row.values["peak_mpa"]
-    assert peak is not None
-    return peak
-
-
-def _cell(value: float | None) -> str:
-    return "" if value is None else number(value)
+def _cell(report: RibsReport, key: str, value: float | None) -> str:
+    """Three digits; a life beyond what the card's line was tested to is told as more than that."""
+    if value is None:
+        return ""
+    if key != LIFE:
+        return f"{value:.3g}"
+    most = report.figures["life_line_tested_to_cycles"].value
+    return f"{value:.2g}" if value <= most else f"> {most:.2g}"
 
 
 def _figures_table(report: RibsReport) -> Table:

@@ -96,12 +96,25 @@ def write_results(
         facts={key: fact for chapter in whole for key, fact in chapter.facts.items()},
         least_margin=machine.design.limits.least_yield_margin,
         cautions=(
-            *dict.fromkeys(line for chapter in chapters for line in chapter.cautions),
             *rib_cautions(machine.rotor_steel),
+            *dict.fromkeys(line for chapter in chapters for line in chapter.cautions),
         ),
         not_given=tuple(line for chapter in chapters for line in chapter.not_given),
         seconds={time.phase: round(time.seconds, 3) for time in watch.times},
     )
+    if ribbed.pictures:
+        from lamwright.postprocess.figures_ribs import RibsPicture, write_ribs_figure
+
+        tested = report.figures.get("life_line_tested_to_cycles")
+        write_ribs_figure(
+            stage,
+            RibsPicture(
+                report.design_name,
+                report.ribs,
+                report.least_margin,
+                None if tested is None else tested.value,
+            ),
+        )
     write_text(stage / TABLE_FILE, ribs_csv(report.ribs))
     write_text(stage / RIBS_FILE, json_text(_record(report, machine, tolerance)))
     return report

@@ -12,6 +12,7 @@ from pydantic_core import PydanticCustomError
 
 from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
+from .design_fatigue import FatigueData
 from .design_hardening import HardeningCurve
 from .design_loss import LossesDesign, LossPoints, StrandDesign
 from .design_slots import KEYS_OF_SHAPE, slot_key_faults
@@ -287,6 +288,7 @@ class SteelCard(_Table):
     magnetisation: MagnetisationCurve
     loss: LossPoints | None = None  # needed for the iron loss
     hardening: HardeningCurve | None = None  # perfectly plastic at the yield strength without
+    fatigue: FatigueData | None = None  # needed for the life
 
 
 class SourcedNumber(_Table):

@@ -4,6 +4,7 @@ import math
 
 from .design import SteelCard
 from .errors import Finding
+from .fatigue_checks import fatigue_findings
 from .hardening_checks import hardening_findings
 from .loss_checks import loss_findings
 
@@ -26,7 +27,8 @@ def card_findings(card: SteelCard) -> tuple[Finding, ...]:
     """
     loss = () if card.loss is None else loss_findings(card.loss)
     hardening = () if card.hardening is None else hardening_findings(card, card.hardening)
-    return (*_mechanical_faults(card), *_curve_faults(card), *loss, *hardening)
+    fatigue = () if card.fatigue is None else fatigue_findings(card, card.fatigue)
+    return (*_mechanical_faults(card), *_curve_faults(card), *loss, *hardening, *fatigue)
 
 
 def curve_findings(card: SteelCard) -> tuple[Finding, ...]:

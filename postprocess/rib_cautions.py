@@ -17,7 +17,7 @@ def rib_cautions(card: SteelCard) -> tuple[str, ...]:
     """The standing cautions, and where the card's strengths are from."""
     yielding, tensile = card.yield_strength_mpa, card.tensile_strength_mpa
     return (
+        *RIB_STANDING,
         f"steel card {card.name!r}: yield strength {yielding.value:g} MPa, {yielding.source};"
         f" tensile strength {tensile.value:g} MPa, {tensile.source}",
-        *RIB_STANDING,
     )

@@ -26,6 +26,8 @@ if TYPE_CHECKING:
 
 ON_OUTLINE = 1e-6  # m, far above rounding and below any element
 BARE = ("rotor_iron", "shaft", "gap_rotor", "rim_air")  # regions that cut nothing out of the iron
+OTHER_SIDE = {"left": "right", "right": "left"}
+ALIKE = 5e-3  # of the peak: the two of a mirrored pair differ by their meshes
 MM, MPA, DEGREE = 1e3, 1e-6, math.pi / 180.0
 
 
@@ -181,3 +183,24 @@ def _shape(edge: Edge) -> str:
 def _words(region: Region) -> str:
     kind, *rest = base_name(region.name).split("_")
     return " ".join([kind, "".join(rest) if len(rest) < 3 else " ".join(rest)])
+
+
+def shown_ribs(rows: Sequence[RibRow]) -> list[tuple[str, RibRow]]:
+    """Ribs by falling peak, each with its name; of a mirrored pair the more stressed for both."""
+    found: list[tuple[str, RibRow]] = []
+    names = {row.rib.name: row for row in rows}
+    for row in sorted(rows, key=_peak, reverse=True):
+        stem, _, side = row.rib.name.rpartition("_")
+        other = names.get(f"{stem}_{OTHER_SIDE.get(side)}")
+        is_pair = other is not None and abs(_peak(row) - _peak(other)) <= ALIKE * _peak(row)
+        if is_pair and any(shown is other for _, shown in found):
+            continue
+        words = f"{stem}, both" if is_pair else row.rib.name
+        found.append((words.replace("_", " "), row))
+    return found
+
+
+def _peak(row: RibRow) -> float:
+    peak = row.values["peak_mpa"]
+    assert peak is not None
+    return peak

@@ -29,6 +29,7 @@ from lamwright.geometry.design_details import (
     KeywayDesign,
     NotchDesign,
 )
+from lamwright.geometry.design_fatigue import FatigueData
 from lamwright.geometry.design_loss import LossesDesign, StrandDesign
 
 ROOT = Path(__file__).parent.parent
@@ -79,6 +80,7 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[magnet]`", MagnetChoice),
         ("`[duty]`", DutyDesign),
         ("`[losses]`", LossesDesign),
+        ("`[fatigue]`", FatigueData),
         ("`[limits]`", LimitsDesign),
     ],
 )
