@@ -10,6 +10,7 @@ from .design import MachineDesign
 from .detail_checks import detail_faults
 from .errors import Finding
 from .half_checks import SLACK
+from .hot_steel import fit_findings
 from .loss_checks import strand_findings
 from .magnet_checks import magnet_faults, magnet_findings
 from .mid_lines import MM
@@ -28,6 +29,7 @@ def check_design(design: MachineDesign) -> tuple[Finding, ...]:
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
     found += tuple(strand_findings(design.winding))
+    found += fit_findings(design)
     return (*found, *magnet_findings(design), *skew_findings(design), *_duty_findings(design))
 
 

@@ -13,6 +13,7 @@ from pydantic_core import PydanticCustomError
 from .design_details import ContourDesign, HoleDesign, KeywayDesign, NotchDesign
 from .design_drawing import OutlineKeys
 from .design_fatigue import FatigueData
+from .design_fit import FitDesign, HotDesign, HotSteel
 from .design_hardening import HardeningCurve
 from .design_loss import LossesDesign, LossPoints, StrandDesign
 from .design_slots import KEYS_OF_SHAPE, slot_key_faults
@@ -177,6 +178,7 @@ class RotorDesign(OutlineKeys):
     hole: Annotated[tuple[HoleDesign, ...], Field(max_length=12)] = ()
     keyway: KeywayDesign | None = None
     contour: ContourDesign | None = None
+    fit: FitDesign | None = None  # of the shaft; without it the bore is free
     _outline: "RotorOutline | None" = PrivateAttr(default=None)
 
     @property
@@ -253,6 +255,7 @@ class MachineDesign(_Table):
     limits: LimitsDesign
     magnet: MagnetChoice | None = None  # needed where a barrier holds a magnet
     losses: LossesDesign = LossesDesign()
+    hot: HotDesign | None = None  # without it all parts are as cold as the drawing
 
     @property
     def pole_pairs(self) -> int:
@@ -287,6 +290,8 @@ class SteelCard(_Table):
     tensile_strength_mpa: Sourced
     magnetisation: MagnetisationCurve
     loss: LossPoints | None = None  # needed for the iron loss
+    expansion_um_per_m_k: Sourced | None = None  # needed where temperatures are stated
+    hot: HotSteel | None = None  # without it strength and stiffness stay
     hardening: HardeningCurve | None = None  # perfectly plastic at the yield strength without
     fatigue: FatigueData | None = None  # needed for the life
 

@@ -21,6 +21,7 @@ from .design import MachineDesign, MagnetCard, SteelCard
 from .design_faults import faults, key_text, shown
 from .design_outlines import with_outlines
 from .errors import DesignError, DrawingError, Finding
+from .hot_steel import hot_findings
 from .key_lines import KeyPath, key_lines, line_of
 from .magnet_card import magnet_card_findings, temperature_findings
 from .steel_card import card_findings
@@ -119,6 +120,8 @@ def read_machine(path: Path) -> Machine:
         magnet = _magnet_card(path, text, design)
     except DesignError as error:
         problems[str(error)] = None
+    if not problems and (found := hot_findings(design, cards[0])):
+        problems[_placed_text(found, path, text)] = None
     if problems:
         raise DesignError("\n".join(problems))
     return Machine(design, cards[0], cards[1], path, magnet)

@@ -6,6 +6,7 @@ from .design import SteelCard
 from .errors import Finding
 from .fatigue_checks import fatigue_findings
 from .hardening_checks import hardening_findings
+from .hot_steel import hot_card_findings
 from .loss_checks import loss_findings
 
 MU_0 = 4e-7 * math.pi  # H/m, permeability of free space
@@ -28,7 +29,9 @@ def card_findings(card: SteelCard) -> tuple[Finding, ...]:
     loss = () if card.loss is None else loss_findings(card.loss)
     hardening = () if card.hardening is None else hardening_findings(card, card.hardening)
     fatigue = () if card.fatigue is None else fatigue_findings(card, card.fatigue)
-    return (*_mechanical_faults(card), *_curve_faults(card), *loss, *hardening, *fatigue)
+    hot = () if card.hot is None else hot_card_findings(card.hot)
+    more = (*loss, *hardening, *fatigue, *hot)
+    return (*_mechanical_faults(card), *_curve_faults(card), *more)
 
 
 def curve_findings(card: SteelCard) -> tuple[Finding, ...]:

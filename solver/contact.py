@@ -6,11 +6,12 @@ w are the gaps, f the forces that close them, g the gaps without forces, C the c
 sides together, q rigid motions that nothing but the contacts holds and b what the forces must
 balance in them. Contacts are pairs of nodes of second-order meshes that fit each other, f nodal
 forces: consistent, and a constant pressure makes all of them positive (1/6, 2/3, 1/6 of an edge).
-Without loads that no forces can balance there is one solution, the least of the energy
-1/2 f.C f + g.f. The primal-dual active set finds it (Hintermueller, Ito & Kunisch, SIAM J.
-Optimization 13, 2002, from memory) in a few steps, as a rule; where it does not, non-negative
-least squares do (Lawson & Hanson 1974, from memory), which end after a finite number of steps.
-Whatever method found it, the solution is checked.
+Forces and gaps are unique where forces can balance the loads at all: those of the least energy
+1/2 f.C f + g.f; a motion may stay free, as of a block that rocks on one node. The primal-dual
+active set finds them (Hintermueller, Ito & Kunisch, SIAM J. Optimization 13, 2002, from memory) in
+a few steps, as a rule; where it does not, non-negative least squares do (Lawson & Hanson 1974, from
+memory), which end after a finite number of steps. Whatever method found it, the solution is
+checked.
 Axes: n contacts, k rigid motions.
 """
 
@@ -79,7 +80,7 @@ def _active_set(problem: ContactProblem) -> ContactState | None:
         state = _with_closed(problem, closed, history)
         if state is None:
             return None
-        if _is_solution(state):
+        if _is_solution(problem, state):
             return state
         after = state.force - stiffness * state.gap > 0.0
         history.append(float(np.count_nonzero(after != closed)))
@@ -107,7 +108,7 @@ def _least_squares(problem: ContactProblem) -> ContactState | None:
     except (np.linalg.LinAlgError, RuntimeError):
         return None
     state = _with_closed(problem, force > 0.0, [float(len(scale))])
-    return state if state is not None and _is_solution(state) else None
+    return state if state is not None and _is_solution(problem, state) else None
 
 
 def _with_closed(
@@ -123,10 +124,12 @@ def _with_closed(
     border = size * border / reach
     matrix = np.block([[problem.compliance[np.ix_(at, at)], border], [border.T, np.zeros((k, k))]])
     right = np.concatenate([-problem.gap[at], size * problem.load / reach])
-    if k and np.linalg.matrix_rank(border) < k:
-        return None
     try:
-        found = np.linalg.solve(matrix, right)
+        if k and np.linalg.matrix_rank(border) < k:
+            # Too few contacts to tell all motions, as a block that rocks on one: the least turn.
+            found = np.linalg.lstsq(matrix, right, rcond=None)[0]
+        else:
+            found = np.linalg.solve(matrix, right)
     except np.linalg.LinAlgError:
         return None
     force = np.zeros(n)
@@ -137,13 +140,17 @@ def _with_closed(
     return ContactState(force, gap, motion, closed.copy(), tuple(history))
 
 
-def _is_solution(state: ContactState) -> bool:
-    """Whether no force pulls and no gap overlaps, to rounding."""
+def _is_solution(problem: ContactProblem, state: ContactState) -> bool:
+    """Whether no force pulls, no gap overlaps and all loads are balanced, to rounding."""
     least_force = -SIGN_TOL * np.abs(state.force).max(initial=0.0)
+    balance = np.abs(problem.motion.T @ state.force - problem.load)
+    reach = np.abs(problem.motion).max(axis=0, initial=0.0)
+    scale = reach * ((problem.motion != 0.0).T @ np.abs(state.force)) + np.abs(problem.load)
     least_gap = -SIGN_TOL * np.abs(state.gap).max(initial=0.0)
     values = np.concatenate([state.force, state.gap, state.motion])
     return bool(
         np.all(np.isfinite(values))
         and np.all(state.force >= least_force)
         and np.all(state.gap >= least_gap)
+        and np.all(balance <= SIGN_TOL * scale)
     )

@@ -334,6 +334,14 @@ SHAPES = (
         "duty.maximum_current_a = 5: below the rated current; accepted 12 or more",
         down=1,
     ),
+    _row(
+        "shaft of nothing but its bore",
+        "sheet_thickness_mm",
+        "sheet_thickness_mm = 0.5\nfit = { radial_interference_um = 10.0,"
+        " shaft_bore_diameter_mm = 50.0 }",
+        "rotor.fit.shaft_bore_diameter_mm = 50: nothing is left of the shaft; accepted from 0,",
+        down=1,
+    ),
     _value("gap wider than the rotor", "rotor.", "gap_mm", "60", "no rotor is left between "),
     _value("odd number of poles", "rotor.", "poles", "5", "poles come in pairs; accepted 4 or 6"),
     _value(

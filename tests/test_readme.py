@@ -30,6 +30,7 @@ from lamwright.geometry.design_details import (
     NotchDesign,
 )
 from lamwright.geometry.design_fatigue import FatigueData
+from lamwright.geometry.design_fit import FitDesign, HotDesign
 from lamwright.geometry.design_loss import LossesDesign, StrandDesign
 
 ROOT = Path(__file__).parent.parent
@@ -81,6 +82,8 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[duty]`", DutyDesign),
         ("`[losses]`", LossesDesign),
         ("`[fatigue]`", FatigueData),
+        ("`[rotor.fit]`", FitDesign),
+        ("`[hot]`", HotDesign),
         ("`[limits]`", LimitsDesign),
     ],
 )
