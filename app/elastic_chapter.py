@@ -3,7 +3,9 @@
 from functools import partial
 from pathlib import Path
 
+from lamwright.postprocess.detail_cautions import detail_cautions
 from lamwright.postprocess.error_bars import stress_errors
+from lamwright.postprocess.magnet_cautions import LOAD_LEFT_OUT
 from lamwright.postprocess.quantities import scaled_by_key
 from lamwright.postprocess.rib_figures import mean_yield, rotor_errors, rotor_figures
 from lamwright.postprocess.rib_tables import elastic_figures
@@ -24,6 +26,10 @@ def elastic_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
         write_figure(stage, "stress", compose)
     return RibChapter(
         figures=(stress_figures(stress.report), rotor, *mean_yield(stress.report)),
+        cautions=(
+            *(() if ribbed.machine.magnet is None else (LOAD_LEFT_OUT,)),
+            *detail_cautions(section, ribbed.machine.rotor_steel, ribbed.overspeed),
+        ),
         not_given=(
             "air gap left hot: needs the temperatures of rotor and stator, which no key states",
         ),

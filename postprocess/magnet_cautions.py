@@ -8,9 +8,12 @@ from .demagnetisation import MagnetState
 
 LEAST_SHARE = 1e-4  # of a magnet's area below the knee that is told
 
-STANDING = (
+LOAD_LEFT_OUT = (
     "the load of the magnets is not in the stress: ribs carry more than is stated here, and the"
-    " yield margin is that of the lamination alone",
+    " yield margin is that of the lamination alone"
+)
+STANDING = (
+    LOAD_LEFT_OUT,
     "saliency is taken without the no-load linkage: psi_d i_q / ((psi_q - psi_q at no load) i_d)",
     "magnets are straight recoil lines, all at one temperature: beyond the knee, and after a loss,"
     " the field is not followed; eddy currents in magnets are in no figure",
