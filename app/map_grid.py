@@ -4,6 +4,8 @@ Without magnets a rotor whose poles mirror in their q axis has W' even in both c
 quadrant tells all. Magnets, or poles that do not mirror, ask for both signs of i_q; i_d from 0 is
 enough, since the rest follows by the mirror (magnets) or by the reversal of both currents.
 
+With the magnets' own flux the ribs are saturated at any current, and steps are equal in i_q.
+
 A point is the mean over positions equally spaced over 60 electrical degrees. The first slot ripple
 has n = `slot_order` / 6 periods in them (q, where the slots per pole and phase are whole), so M
 positions hold whole periods of it, and the first of its harmonics that the mean lets through is
@@ -28,6 +30,10 @@ from lamwright.solver.types import FloatArray
 POINTS = (15, 15)
 POSITIONS = 12
 BEYOND = 1.25  # times the supply's most current
+# Denser towards zero: ribs saturate within the first ampere or so, where equal steps see psi_q
+# bend between two nodes alone. On demo_24s4p_arc the angle of most torque at 2.5 % of the most
+# current is 55 degrees on this grid, 46 on equal steps, and the curve above it runs smooth.
+GRADING_D, GRADING_Q = 1.2, 1.6
 LEAST_CURRENTS, MOST_CURRENTS = 3, 200  # of an axis
 LEAST_POSITIONS, MOST_POSITIONS = 6, 360
 # First slot harmonic that a mean may let through. On demo_24s4p_arc Maxwell's mean torque is off by
@@ -72,8 +78,10 @@ def map_grid(machine: Machine, section: CrossSection, wishes: GridWishes) -> Map
     # An even number of currents of both signs would leave zero out.
     count_q += 1 - count_q % 2 if not is_even_q else 0
     top = BEYOND * most
-    i_d = np.linspace(0.0, top, count_d)
-    i_q = np.linspace(0.0 if is_even_q else -top, top, count_q)
+    i_d = top * np.linspace(0.0, 1.0, count_d) ** GRADING_D
+    i_q = top * np.linspace(0.0, 1.0, count_q) ** GRADING_Q
+    if not is_even_q:
+        i_q = np.linspace(-top, top, count_q)
     if wishes.i_d is not None:
         i_d = _checked("--i-d", wishes.i_d, most, may_begin_below=False)
     if wishes.i_q is not None:
