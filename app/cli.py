@@ -201,6 +201,14 @@ def slopes(design: Path, out: Path) -> None:
     show_default=True,
     help="Of the starts, that go up to overspeed, for the life.",
 )
+@click.option("--thin", is_flag=True, help="Find the thinnest ribs that hold the yield margin.")
+@click.option(
+    "--rib-factor",
+    type=float,
+    default=1.2,
+    show_default=True,
+    help="Supplier's least rib over the sheet's thickness, for --thin.",
+)
 @click.pass_context
 def ribs(
     ctx: click.Context,
@@ -209,6 +217,8 @@ def ribs(
     tolerance: Literal["coarse", "normal", "fine"],
     pictures: bool,
     overspeed_share: float,
+    thin: bool,
+    rib_factor: float,
 ) -> None:
     """Ribs of DESIGN: stress, plastic reserve, burst speed and life.
 
@@ -225,6 +235,7 @@ def ribs(
             tolerance=tolerance,
             pictures=pictures,
             overspeed_share=overspeed_share,
+            rib_factor=rib_factor if thin else None,
             progress=progress,
         )
     print_ribs(report, str(out))

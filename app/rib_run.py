@@ -3,6 +3,7 @@
 Nothing heavy is imported at the top, so that a broken design is refused at once.
 """
 
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -20,6 +21,8 @@ if TYPE_CHECKING:
 
 CHAPTER_SHARE = 0.2  # of the wall time, measured on demo_24s4p_arc
 SHARES = {"start": 0.1, "stress": 0.3}
+SEARCH, PRICE = "thinnest ribs", "price of ribs"
+SEARCH_TIME, PRICE_TIME = 0.5, 1.6  # times all the rest, measured on demo_36s6p_arc
 
 
 def ribs_design(
@@ -29,6 +32,7 @@ def ribs_design(
     tolerance: "ToleranceName" = "normal",
     pictures: bool = True,
     overspeed_share: float = 0.0,
+    rib_factor: float | None = None,
     progress: Progress = silent,
 ) -> "RibsReport":
     """Everything about the ribs of the design in `path` into the folder `out`.
@@ -39,10 +43,12 @@ def ribs_design(
         tolerance: how fine to mesh.
         pictures: whether to draw.
         overspeed_share: of the starts, that go up to overspeed.
+        rib_factor: least rib width over the sheet's thickness, to find the thinnest ribs too.
         progress: called with the phase and the share done.
 
     Raises:
-        DesignError: the design cannot be read or drawn; one line for each fault.
+        DesignError: the design cannot be read or drawn; one line for each fault. Or the thinnest
+            ribs are asked for and no widths hold.
         LamwrightError: the folder cannot be written, or an option cannot be.
         NotConverged: the elastic stress did not settle.
     """
@@ -53,12 +59,26 @@ def ribs_design(
     folder = prepared_folder(Path(out))
     from .rib_chapters import CHAPTERS
 
-    watch = Stopwatch(progress, {**SHARES, **{name: CHAPTER_SHARE for name, _ in CHAPTERS}})
+    chapters = CHAPTERS
+    own = {name: CHAPTER_SHARE for name, _ in CHAPTERS}
+    shares = {**SHARES, **own}
+    if rib_factor is not None:
+        shares = {**SHARES, SEARCH: SEARCH_TIME, **own, PRICE: PRICE_TIME}
+        whole = sum(shares.values())
+        shares = {name: share / whole for name, share in shares.items()}
+    watch = Stopwatch(progress, shares)
     with watch.phase("start"):
         from .rib_work import RIBS_FILE, ribbed_machine, write_results
         from .ribbed import RibWishes
     ribbed = ribbed_machine(
         machine, section, watch, tolerance, RibWishes(overspeed_share), pictures
     )
+    if rib_factor is not None:
+        from .thin import thin_chapter, thinned_ribs
+
+        # Before the chapters and no chapter itself: a refusal ends the run.
+        with watch.phase(SEARCH):
+            thinned = thinned_ribs(ribbed, rib_factor)
+        chapters = (*chapters, (PRICE, partial(thin_chapter, thinned, tolerance)))
     with staged(folder, RIBS_FILE) as stage:
-        return write_results(ribbed, stage, tolerance, CHAPTERS)
+        return write_results(ribbed, stage, tolerance, chapters)

@@ -14,6 +14,7 @@ from lamwright.postprocess.rib_tables import shown_ribs
 
 from .lines import number, valued
 from .rib_work import RibsReport
+from .thin_screen import THIN_TABLE, thin_screen
 
 MOST_SHOWN = 16  # ribs; all are in ribs.csv
 # Column heads of a rib's figures by key, stress in MPa; a key that no chapter gave has none.
@@ -36,6 +37,8 @@ def print_ribs(report: RibsReport, folder: str) -> None:
     more = len(shown_ribs(report.ribs)) - MOST_SHOWN
     if more > 0:
         console.print(f"[dim]{more} more ribs in ribs.csv[/dim]")
+    if THIN_TABLE in report.tables:
+        console.print(thin_screen(report.tables[THIN_TABLE]))
     console.print(_figures_table(report))
     for key, fact in report.facts.items():
         told = fact if isinstance(fact, str) else ("yes" if fact else "no")

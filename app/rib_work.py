@@ -18,7 +18,7 @@ from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 from .desk import Desk
 from .mapped import Chapter
 from .progress import Stopwatch
-from .ribbed import Ribbed, RibChapter, RibChapterMaker, RibWishes
+from .ribbed import Ribbed, RibChapter, RibChapterMaker, RibWishes, Rows
 from .version import version
 
 RIBS_FILE, TABLE_FILE = "ribs.json", "ribs.csv"
@@ -33,6 +33,7 @@ class RibsReport:
     ribs: tuple[RibRow, ...]  # of the rotor's own period
     errors: Mapping[str, float]  # by the figures' keys, in their units
     facts: Mapping[str, str | bool]  # by key, what is no number
+    tables: Mapping[str, Rows]  # by key
     least_margin: float  # yield margin asked for
     cautions: tuple[str, ...]
     not_given: tuple[str, ...]
@@ -94,6 +95,7 @@ def write_results(
         ribs=rib_rows(ribbed.section, ribbed.stress.report, *groups),
         errors={key: error for chapter in whole for key, error in chapter.errors.items()},
         facts={key: fact for chapter in whole for key, fact in chapter.facts.items()},
+        tables={key: rows for chapter in whole for key, rows in chapter.tables.items()},
         least_margin=machine.design.limits.least_yield_margin,
         cautions=(
             *rib_cautions(machine.rotor_steel),
@@ -143,6 +145,7 @@ def _record(report: RibsReport, machine: Machine, tolerance: ToleranceName) -> d
         **values,
         **report.facts,
         "ribs": [row.record for row in report.ribs],
+        **{key: list(rows) for key, rows in report.tables.items()},
         "estimates": [key for key, figure in report.figures.items() if figure.is_estimate],
         "not_given": list(report.not_given),
         "cautions": list(report.cautions),

@@ -18,6 +18,9 @@ if TYPE_CHECKING:
     from _typeshed import DataclassInstance
 
 
+Rows = tuple[Mapping[str, object], ...]
+
+
 @dataclass(frozen=True, slots=True)
 class RibWishes:
     """What is asked of `ribs` beside the design."""
@@ -57,6 +60,7 @@ class RibChapter(Chapter):
     of_ribs: "tuple[DataclassInstance, ...]" = ()
     errors: Mapping[str, float] = field(default_factory=dict)  # by the figures' keys, their units
     facts: Mapping[str, str | bool] = field(default_factory=dict)  # by key: what is no number
+    tables: Mapping[str, Rows] = field(default_factory=dict)  # by key, of `ribs.json` as they are
 
 
 # The machine and the hidden folder whose files move to the results when all chapters are done.
