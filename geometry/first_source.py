@@ -85,6 +85,6 @@ def _stator(parts: StatorParts, path: Path, folder: Path) -> DesignTable:
 def _table(header: str, values: Mapping[str, object], about: str) -> DesignTable:
     lines = []
     for key, value in values.items():
-        assert isinstance(value, str | int | float | tuple)
+        assert isinstance(value, str | int | float | tuple | Mapping)
         lines.append(Line(key, value))
     return DesignTable(header, tuple(lines), about)

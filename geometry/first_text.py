@@ -2,12 +2,13 @@
 
 import json
 import textwrap
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
 WIDTH = 96  # of a comment's lines
 
-Value = str | int | float | tuple[str, ...] | tuple[float, ...]
+Single = str | int | float
+Value = Single | tuple[str, ...] | tuple[float, ...] | Mapping[str, Single]
 Data = dict[str, object]
 
 
@@ -78,6 +79,8 @@ def toml_value(value: Value) -> str:
     """A value as TOML writes it."""
     if isinstance(value, tuple):
         return f"[{', '.join(toml_value(item) for item in value)}]"
+    if isinstance(value, Mapping):
+        return f"{{ {', '.join(f'{key} = {toml_value(item)}' for key, item in value.items())} }}"
     if isinstance(value, str):
         return json.dumps(value)  # TOML's basic strings have the same escapes
     return repr(value)
