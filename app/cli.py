@@ -51,6 +51,13 @@ _DESIGN = click.argument("design", type=click.Path(path_type=Path))
 _OUT = click.option(
     "--out", required=True, type=click.Path(path_type=Path), help="Folder for the results."
 )
+_FINENESS = click.option(
+    "--tolerance",
+    type=click.Choice(["coarse", "normal", "fine"]),
+    default="normal",
+    show_default=True,
+    help="How fine to mesh, as of assess.",
+)
 
 
 @click.group(cls=_Front, context_settings={"help_option_names": ["-h", "--help"]})
@@ -245,6 +252,35 @@ def ribs(
 @main.command()
 @_DESIGN
 @_OUT
+@click.option("--samples", default=5000, show_default=True, help="Random machines by the model.")
+@click.option("--solve", default=12, show_default=True, help="Of random machines solved in full.")
+@click.option("--seed", default=1, show_default=True, help="Of the random numbers.")
+@_FINENESS
+@click.option("--workers", type=int, help="Processes that solve.  [default: one for each core]")
+def spread(
+    design: Path,
+    out: Path,
+    samples: int,
+    solve: int,
+    seed: int,
+    tolerance: Literal["coarse", "normal", "fine"],
+    workers: int | None,
+) -> None:
+    """What the tolerances of making do to DESIGN, and how many rotors hold its limits."""
+    from .screen import shown_progress
+    from .spread import SpreadWishes
+    from .spread import spread as run
+    from .spread_screen import print_spread
+
+    wishes = SpreadWishes(samples, solve, seed, tolerance, workers)
+    with shown_progress() as progress:
+        report = run(design, out, wishes, progress)
+    print_spread(report, str(out))
+
+
+@main.command()
+@_DESIGN
+@_OUT
 @click.option("--currents", required=True, help="Direct currents, A, as 15,25,35.")
 @click.option(
     "--feed",
@@ -266,13 +302,7 @@ def ribs(
     show_default=True,
     help="Its angles' reading where the rotor rests, d axis on the current's.",
 )
-@click.option(
-    "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
-    default="normal",
-    show_default=True,
-    help="How fine to mesh, as of assess.",
-)
+@_FINENESS
 def locked(
     design: Path,
     out: Path,

@@ -19,6 +19,7 @@ from .rotor import following
 from .rotor_checks import barrier_faults, rotor_faults
 from .skew import skew_findings
 from .slot_checks import stator_faults
+from .tolerance_checks import tolerance_findings
 from .unlike_poles import of_all_poles
 from .winding import winding_findings
 
@@ -30,6 +31,7 @@ def check_design(design: MachineDesign) -> tuple[Finding, ...]:
         found += winding_findings(design)
     found += tuple(strand_findings(design.winding))
     found += fit_findings(design)
+    found += tuple(tolerance_findings(design))
     return (*found, *magnet_findings(design), *skew_findings(design), *_duty_findings(design))
 
 

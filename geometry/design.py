@@ -20,6 +20,7 @@ from .design_slots import KEYS_OF_SHAPE, slot_key_faults
 from .design_table import NotNegative, Positive
 from .design_table import Table as _Table
 from .design_table import whole as _whole
+from .design_tolerance import ToleranceDesign
 
 if TYPE_CHECKING:
     from .outline_report import RotorOutline, StatorOutline
@@ -256,6 +257,7 @@ class MachineDesign(_Table):
     magnet: MagnetChoice | None = None  # needed where a barrier holds a magnet
     losses: LossesDesign = LossesDesign()
     hot: HotDesign | None = None  # without it all parts are as cold as the drawing
+    tolerance: ToleranceDesign = ToleranceDesign()
 
     @property
     def pole_pairs(self) -> int:

@@ -32,6 +32,7 @@ from lamwright.geometry.design_details import (
 from lamwright.geometry.design_fatigue import FatigueData
 from lamwright.geometry.design_fit import FitDesign, HotDesign
 from lamwright.geometry.design_loss import LossesDesign, StrandDesign
+from lamwright.geometry.design_tolerance import KeyTolerance, ToleranceDesign
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -84,6 +85,8 @@ def test_the_python_lines_print_what_is_printed_there():
         ("`[fatigue]`", FatigueData),
         ("`[rotor.fit]`", FitDesign),
         ("`[hot]`", HotDesign),
+        ("`[tolerance]`", ToleranceDesign),
+        ("`[[tolerance.key]]`", KeyTolerance),
         ("`[limits]`", LimitsDesign),
     ],
 )
