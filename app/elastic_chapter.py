@@ -30,9 +30,6 @@ def elastic_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
             *(() if ribbed.machine.magnet is None else (LOAD_LEFT_OUT,)),
             *detail_cautions(section, ribbed.machine.rotor_steel, ribbed.overspeed),
         ),
-        not_given=(
-            "air gap left hot: needs the temperatures of rotor and stator, which no key states",
-        ),
         of_ribs=elastic_figures(section, stress.report, stress.zone_errors),
         errors={
             **stress_errors(stress.report, stress.finer, stress.zone_errors),

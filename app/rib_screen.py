@@ -96,7 +96,7 @@ def _figures_table(report: RibsReport) -> Table:
 
 
 def _verdict_line(report: RibsReport) -> Text:
-    margin = number(report.figures["yield_margin"].value)
+    margin = number(report.margin)
     asked = number(report.least_margin)
     if report.passes:
         return Text(f"holds: yield margin {margin}, asked {asked}", "bold green")

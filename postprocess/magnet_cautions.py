@@ -9,8 +9,8 @@ from .demagnetisation import MagnetState
 LEAST_SHARE = 1e-4  # of a magnet's area below the knee that is told
 
 LOAD_LEFT_OUT = (
-    "the load of the magnets is not in the stress: ribs carry more than is stated here, and the"
-    " yield margin is that of the lamination alone"
+    "the load of the magnets is not in the stress of the spin alone, nor in its yield margin: the"
+    " ribs carry more; `ribs` tells stress and margin with it"
 )
 STANDING = (
     LOAD_LEFT_OUT,

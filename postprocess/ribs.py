@@ -79,7 +79,7 @@ def rib_report(solution: StressSolution, section: CrossSection, yield_strength: 
         peak=solution.peak,
         peak_error=solution.peak_error,
         peak_at=complex(place[top]),
-        yield_margin=yield_strength / solution.peak,
+        yield_margin=_margin(yield_strength, solution.peak),
         growth_d=growth_d,
         growth_q=growth_q,
         growth_max=growth_max,
@@ -100,9 +100,14 @@ def _rib_stress(
         bending=bending,
         peak=peak,
         peak_at=complex(*solution.mesh.nodes[node]),
-        yield_margin=yield_strength / peak,
+        yield_margin=_margin(yield_strength, peak),
         mean_yield_speed=speed,
     )
+
+
+def _margin(yield_strength: float, peak: float) -> float:
+    """Yield strength over the peak; infinite where nothing is loaded."""
+    return yield_strength / peak if peak > 0.0 else math.inf
 
 
 def section_stress(rib: Rib, load: FloatArray) -> tuple[float, float, float]:

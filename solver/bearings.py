@@ -95,16 +95,19 @@ def _seat(mesh: PlanarMesh, edges: IntArray, magnet: Region, density: float) -> 
     wall = _wall(edges, z, face, half_width)
     nodes = np.unique(wall)
     nodes = nodes[np.abs(z[nodes].imag) <= half_width + ON_TOL]
+    pull = density * area(magnet.outer) * middle
+    push, slide = (pull / across).real, (pull / across).imag
+    if len(nodes) < 2 or not push > 0.0:
+        raise NotConverged(
+            f"{magnet.name}: no wall toward the rim bears it: its load is in no figure"
+        )
     share = np.zeros(len(mesh.nodes))
     np.add.at(share, wall, edge_lengths(mesh, wall)[:, None] * EDGE_SHARES)
-    mass = density * area(magnet.outer)  # kg/m
-    pull = mass * middle
-    push, slide = (pull / across).real, (pull / across).imag
     shear = slide * share[nodes] / share[nodes].sum()
     height, place = z[nodes].real, z[nodes].imag
     # Moments about the centre of mass; the shear acts on the wall, beyond the face.
     turn = float(shear @ height)
-    if len(nodes) < 2 or not place.min() < turn / push < place.max():
+    if not place.min() < turn / push < place.max():
         raise NotConverged(
             f"{magnet.name}: its centrifugal load passes beside the wall that it bears on, so it"
             " would tip over: its load is in no figure"

@@ -37,6 +37,7 @@ class PressedStress:
     closed: BoolArray  # (n_bore,)
     mean_pressure: float  # Pa over the whole bore, keyways left out
     bearing: FloatArray  # (n_seat,), N/m, what the magnets press their walls with
+    resolved: BoolArray  # (n_node,); under a magnet the mesh does not tell the stress
     history: tuple[float, ...]
 
 
@@ -94,6 +95,7 @@ def stress_at(item: Pressed, speed: float) -> PressedStress:
         closed=state.closed[:n],
         mean_pressure=float(state.force[:n].sum()) / length if length else 0.0,
         bearing=np.array(bearing),
+        resolved=_resolved(item),
         history=state.history,
     )
 
@@ -216,6 +218,15 @@ def _free_edges(item: Pressed) -> np.ndarray:
     loaded[item.sides.first] = loaded[item.sides.second] = True
     loaded[item.nodes[item.n_bore :]] = True
     return np.asarray(edges[~loaded[edges[:, 2]]])
+
+
+def _resolved(item: Pressed) -> BoolArray:
+    """Which nodes (n_node,) share no element with a node that a magnet may press."""
+    elements = item.body.mesh.elements
+    near = np.any(np.isin(elements, item.nodes[item.n_bore :]), axis=1)
+    resolved = np.ones(len(item.body.mesh.nodes), dtype=np.bool_)
+    resolved[elements[near]] = False
+    return resolved
 
 
 def _pressure(item: Pressed, force: FloatArray, closed: BoolArray) -> FloatArray:

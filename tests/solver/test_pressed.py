@@ -17,7 +17,7 @@ from lamwright.solver.elastic import ElasticMaterial
 from lamwright.solver.mesh import mesh_lamination
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.pressed import Fit, Heat, Pressed, contacts_at, pressed, with_fine_bore
-from lamwright.solver.pressed_stress import loosening, stress_at
+from lamwright.solver.pressed_stress import Loosening, loosening, stress_at
 from lamwright.solver.rotor_stress import StressSettings, stress_on
 from lamwright.solver.shaft import Shaft
 from lamwright.solver.types import PlanarMesh
@@ -184,18 +184,22 @@ def test_contact_converges_on_five_hundred_random_cases():
     for section in sections:
         mesh = mesh_lamination(section, MeshSettings(scale=3.0))
         magnets = [region for region in section.rotor if region.material == "magnet"]
-        for _ in range(10):
+        for case in range(10):
             bore = float(rng.choice([0.0, 0.6])) * section.shaft_radius
             alloy = ElasticMaterial(rng.uniform(70e9, 210e9), 0.3, rng.uniform(2700.0, 7850.0))
             fit = Fit(
                 Shaft(alloy, bore, rng.uniform(9e-6, 24e-6)),
-                rng.uniform(-0.2e-3, 1.2e-3) * section.shaft_radius,
+                rng.uniform(-0.1e-3, 0.5e-3) * section.shaft_radius,
             )
             heat = Heat(12e-6, *rng.uniform(-30.0, 120.0, 3).tolist())
             item = pressed(section, mesh, STEEL, fit, heat, (magnets, MAGNET_DENSITY))
             speed = SPEED * 0.04 / section.rotor_radius * rng.uniform(0.0, 2.0)
             cases += 1
             try:
+                # Every second one between first and last contact, where there is such a speed.
+                lost = loosening(item) if case % 2 else Loosening(0.0, 0.0)
+                if math.isfinite(lost.everywhere) and lost.first < lost.everywhere:
+                    speed = rng.uniform(lost.first, lost.everywhere)
                 state = contacts_at(item, speed)
             except NotConverged:
                 continue
