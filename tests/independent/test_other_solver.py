@@ -75,13 +75,22 @@ def test_magnet_machine_agrees_with_another_solver(tmp_path: Path, i_d: float, i
 
 
 @pytest.mark.parametrize(
-    "name", ["demo_24s4p_arc", pytest.param("demo_36s4p_straight", marks=pytest.mark.slow)]
+    "name",
+    [
+        "demo_24s4p_arc",
+        *(
+            pytest.param(name, marks=pytest.mark.slow)
+            for name in ("demo_36s4p_straight", "gallery/fan_12s4p", "gallery/servo_12s10p")
+        ),
+    ],
 )
 def test_rib_stress_agrees_with_another_solver(tmp_path: Path, name: str) -> None:
     """Peak von Mises within 3 %, largest growth of the rim within 1 %, at overspeed.
 
     Source: plane stress of the whole disc by NGSolve, order 4, three multipliers for the rigid
-    movements. 3 % allows 2 % for our refinement and 1 % for the other mesh.
+    movements. 3 % allows 2 % for our refinement and 1 % for the other mesh. Barriers round, with
+    radial ribs, with flat ends, as vees. Measured: 0.07 % on the first, 0.51 % on the third, whose
+    own error against 16 times the elements is 0.24 %.
     """
     machine = read_machine(ROOT / f"designs/{name}.toml")
     section, duty = cross_section(machine.design), machine.design.duty
