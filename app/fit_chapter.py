@@ -40,6 +40,10 @@ def fit_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
         return RibChapter((), not_given=(*lacking, f"stress with fit, heat and magnets: {error}"))
     if design.hot is not None and isinstance(why := hot_gap(study, machine), str):
         lacking.append(why)
+    if ribbed.pictures and design.rotor.fit is not None:
+        from lamwright.postprocess.figures_fit import write_fit
+
+        write_fit(stage, design.name, study)
     return RibChapter(
         figures=fit_figures(study, machine),
         cautions=tuple(fit_cautions(study, machine, ribbed.overspeed)),

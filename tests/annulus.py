@@ -175,3 +175,21 @@ def sheet_functional(sector: SectorMesh, bore: float, turns: float) -> FloatArra
             density = 0.5 * turns * np.sin(sector.pole_pairs * at - 2.0 * np.pi / 3.0 * phase)
             nodal[phase, found[k : k + 3]] += half * shape @ (weight * density)
     return nodal
+
+
+def ring_on_shaft(inner: float, outer: float, poles: int = 1) -> CrossSection:
+    """The rotor of a 4-pole machine without anything in it, `poles` of it; outlines stay empty."""
+    return CrossSection(
+        pole_pairs=2,
+        stack_length=0.1,
+        rotor_radius=outer,
+        shaft_radius=inner,
+        stator_bore_radius=outer + 0.5e-3,
+        stator_outer_radius=outer + 30e-3,
+        slots=24,
+        rotor=(),
+        stator=(),
+        ribs=(),
+        sector_poles=poles,
+        rotor_period=poles,
+    )

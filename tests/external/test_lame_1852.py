@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from lamwright.geometry.curves import Path, arc, line, reversed_edge
-from lamwright.geometry.section import CrossSection, Region
+from lamwright.geometry.section import Region
 from lamwright.solver.elastic import (
     ElasticMaterial,
     centrifugal_force,
@@ -33,7 +33,7 @@ from lamwright.solver.supports import (
     with_fixed,
     with_radial,
 )
-from tests.annulus import Ring, ring_mesh
+from tests.annulus import Ring, ring_mesh, ring_on_shaft
 from tests.plates import MPA, NODE_TOL, SPEED, STEEL, sector
 
 SHAFT, HUB, FIT = 15e-3, 50e-3, 10e-6
@@ -121,19 +121,7 @@ def in_contact(shaft: Shaft, fit: float = FIT, heat: Heat | None = None) -> Pres
     """A quarter of the hub on a shaft, layers finer towards the bore."""
     rings = [Ring("hub", 1.2 * SHAFT, 3), Ring("hub", 25e-3, 4), Ring("hub", HUB, 6)]
     mesh = ring_mesh(SHAFT, rings, math.pi / 2.0, 30)
-    section = CrossSection(
-        pole_pairs=2,
-        stack_length=0.1,
-        rotor_radius=HUB,
-        shaft_radius=SHAFT,
-        stator_bore_radius=HUB + 0.5e-3,
-        stator_outer_radius=0.08,
-        slots=24,
-        rotor=(),
-        stator=(),
-        ribs=(),
-    )
-    return pressed(section, mesh, STEEL, Fit(shaft, fit), heat)
+    return pressed(ring_on_shaft(SHAFT, HUB), mesh, STEEL, Fit(shaft, fit), heat)
 
 
 def test_contact_of_the_same_parts():

@@ -16,7 +16,10 @@ import pytest
 from lamwright.geometry.section import Region, Rib
 from lamwright.solver.elastic import centrifugal_force, elastic_body
 from lamwright.solver.mesh import mesh_regions
+from lamwright.solver.pressed import Heat, pressed
+from lamwright.solver.pressed_stress import stress_at
 from lamwright.solver.rib_loads import rib_loads
+from tests.annulus import Ring, ring_mesh, ring_on_shaft
 from tests.plates import (
     MPA,
     SPEED,
@@ -216,3 +219,27 @@ def test_hotter_rim_is_pressed():
     centre = field.stress[field.node(0j)] / MPA
     assert centre[:2] == pytest.approx([31.5, 31.5], rel=STRESS_TOL)
     assert field.polar(b)[1] / MPA == pytest.approx(-63.0, rel=STRESS_TOL)
+
+
+def test_ring_whose_rim_is_hotter_than_its_bore():
+    """The rotor's own heat, free bore: hoop stress of a ring under T(r); 0.5 %.
+
+    sigma_t = E alpha / r^2 ((r^2 + a^2)/(b^2 - a^2) int_a^b T r dr + int_a^r T r dr - T r^2),
+    T = dT (r^2 - a^2)/(b^2 - a^2), whose integrals are polynomials.
+    """
+    a, b, rise, expansion = 15e-3, 50e-3, 40.0, 12e-6
+    rings = [Ring("hub", 20e-3, 4), Ring("hub", 30e-3, 5), Ring("hub", b, 7)]
+    mesh = ring_mesh(a, rings, QUARTER, 24)
+    item = pressed(ring_on_shaft(a, b), mesh, STEEL, None, Heat(expansion, rim_over_bore=rise))
+    stress = stress_at(item, 0.0).solution.stress
+
+    def heat(r: float) -> float:
+        """Int_a^r T r dr."""
+        return rise / (b**2 - a**2) * ((r**4 - a**4) / 4.0 - a**2 * (r**2 - a**2) / 2.0)
+
+    for r in (a, b):
+        at = rise * (r**2 - a**2) / (b**2 - a**2)
+        want = (r**2 + a**2) / (b**2 - a**2) * heat(b) + heat(r) - at * r**2
+        node = int(np.argmin(np.abs(mesh.nodes @ [1.0, 1.0j] - r)))
+        hoop = STEEL.youngs_modulus * expansion / r**2 * want
+        assert stress[node, 1] == pytest.approx(hoop, rel=STRESS_TOL)
