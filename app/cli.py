@@ -13,7 +13,6 @@ import click
 
 from lamwright.geometry.errors import LamwrightError
 
-from .cli_start import start
 from .threads import hold_threads
 
 FAULT = 70  # "internal software error" of the usual list of exit codes
@@ -202,13 +201,8 @@ def slopes(design: Path, out: Path) -> None:
     help="Largest error of rib stress: 5; 2; 0.5 %.",
 )
 @click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
-@click.option(
-    "--overspeed-share",
-    type=float,
-    default=0.0,
-    show_default=True,
-    help="Of the starts, that go up to overspeed, for the life.",
-)
+@click.option("--overspeed-share", default=0.0, help="Share of starts to overspeed.  [default: 0]")
+@click.option("--teeth-mass-factor", type=float, help="Wound over bare stator teeth, by mass.")
 @click.option("--thin", is_flag=True, help="Find the thinnest ribs that hold the yield margin.")
 @click.option(
     "--rib-factor",
@@ -225,6 +219,7 @@ def ribs(
     tolerance: Literal["coarse", "normal", "fine"],
     pictures: bool,
     overspeed_share: float,
+    teeth_mass_factor: float | None,
     thin: bool,
     rib_factor: float,
 ) -> None:
@@ -244,6 +239,7 @@ def ribs(
             pictures=pictures,
             overspeed_share=overspeed_share,
             rib_factor=rib_factor if thin else None,
+            teeth_mass_factor=teeth_mass_factor,
             progress=progress,
         )
     print_ribs(report, str(out))
@@ -356,4 +352,45 @@ def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
     click.echo(json_text(run(design, i_d=i_d, i_q=i_q, angle_deg=angle)), nl=False)
 
 
-main.add_command(start)
+@main.command()
+@click.option("--out", required=True, type=click.Path(path_type=Path), help="Design file to write.")
+@click.option(
+    "--stator", type=click.Path(path_type=Path), help="Design file (TOML) or drawing (DXF) with it."
+)
+@click.option("--outer-diameter", "outer_diameter_mm", type=float, help="Of the stator, mm.")
+@click.option("--bore", "bore_mm", type=float, help="Of the stator, mm.")
+@click.option("--length", "length_mm", type=float, help="Of the stack, mm.")
+@click.option("--slots", type=int, help="Of the stator, 3 to 144.")
+@click.option("--unit-mm", type=float, help="mm per unit of a drawing that states none.")
+@click.option("--poles", type=int, help="2 to 24, even.")
+@click.option("--max-speed", "maximum_speed_rpm", type=float, help="In service, rpm.")
+@click.option("--rated-speed", "rated_speed_rpm", type=float, help="rpm.  [default: half]")
+@click.option("--voltage", "voltage_v", type=float, help="Between lines, V rms.  [default: 400]")
+@click.option("--barriers", type=int, help="Of a pole, 1 to 6.  [default: choose]")
+@click.option("--gap", "gap_mm", type=float, help="Radial air gap, mm.  [default: by the bore]")
+@click.option("--shaft", "shaft_mm", type=float, help="Diameter, mm.  [default: by the bore]")
+@click.option(
+    "--sheet", "sheet_mm", type=float, default=0.5, show_default=True, help="Thickness, mm."
+)
+@click.option(
+    "--rib-factor",
+    type=float,
+    default=1.2,
+    show_default=True,
+    help="Supplier's least rib over the sheet's thickness.",
+)
+@click.option("--steel", type=click.Path(path_type=Path), help="Steel card.  [default: demo card]")
+@click.option("--name", help="Of the design.  [default: the file's]")
+@click.option("--yes", "assume_yes", is_flag=True, help="Ask nothing, take defaults.")
+@click.option("--replace", "is_replacing", is_flag=True, help="Write over a file that is there.")
+def start(assume_yes: bool, **values: object) -> None:
+    """Write a first design for a stator, by published rules, with the reason of every number.
+
+    What is not given is asked for on a terminal, and taken by default elsewhere.
+    """
+    from .start import choices_of
+    from .start import start as run
+    from .start_prompts import completed, is_asking, print_start
+
+    whole, taken = completed(values, is_asking(assume_yes))
+    print_start(run(choices_of(whole)), taken)

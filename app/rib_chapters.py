@@ -3,6 +3,7 @@
 from .elastic_chapter import elastic_chapter
 from .fit_chapter import fit_chapter
 from .life_chapter import life_chapter
+from .modal_chapter import modal_chapter
 from .plastic_chapter import plastic_chapter
 from .ribbed import RibChapterMaker
 
@@ -12,4 +13,5 @@ CHAPTERS: tuple[tuple[str, RibChapterMaker], ...] = (
     ("fit", fit_chapter),
     ("plastic", plastic_chapter),
     ("life", life_chapter),
+    ("modes", modal_chapter),
 )

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
 
 CHAPTER_SHARE = 0.2  # of the wall time, measured on demo_24s4p_arc
 SHARES = {"start": 0.1, "stress": 0.3}
+MOST_TEETH_MASS = 10.0  # a slot full of copper beside a thin tooth has about 4
 SEARCH, PRICE = "thinnest ribs", "price of ribs"
 SEARCH_TIME, PRICE_TIME = 0.5, 1.6  # times all the rest, measured on demo_36s6p_arc
 
@@ -33,6 +34,7 @@ def ribs_design(
     pictures: bool = True,
     overspeed_share: float = 0.0,
     rib_factor: float | None = None,
+    teeth_mass_factor: float | None = None,
     progress: Progress = silent,
 ) -> "RibsReport":
     """Everything about the ribs of the design in `path` into the folder `out`.
@@ -44,6 +46,7 @@ def ribs_design(
         pictures: whether to draw.
         overspeed_share: of the starts, that go up to overspeed.
         rib_factor: least rib width over the sheet's thickness, to find the thinnest ribs too.
+        teeth_mass_factor: mass of the stator's teeth with winding over the bare ones, for modes.
         progress: called with the phase and the share done.
 
     Raises:
@@ -54,6 +57,10 @@ def ribs_design(
     """
     if not 0.0 <= overspeed_share <= 1.0:
         raise LamwrightError(f"--overspeed-share {overspeed_share:g}: accepted 0 to 1")
+    if teeth_mass_factor is not None and not 1.0 <= teeth_mass_factor <= MOST_TEETH_MASS:
+        raise LamwrightError(
+            f"--teeth-mass-factor {teeth_mass_factor:g}: accepted 1 to {MOST_TEETH_MASS:g}"
+        )
     machine = read_marked(Path(path), Path(out))
     section = section_of(machine)
     folder = prepared_folder(Path(out))
@@ -70,9 +77,8 @@ def ribs_design(
     with watch.phase("start"):
         from .rib_work import RIBS_FILE, ribbed_machine, write_results
         from .ribbed import RibWishes
-    ribbed = ribbed_machine(
-        machine, section, watch, tolerance, RibWishes(overspeed_share), pictures
-    )
+    wishes = RibWishes(overspeed_share, teeth_mass_factor)
+    ribbed = ribbed_machine(machine, section, watch, tolerance, wishes, pictures)
     if rib_factor is not None:
         from .thin import thin_chapter, thinned_ribs
 

@@ -26,6 +26,7 @@ class RibWishes:
     """What is asked of `ribs` beside the design."""
 
     overspeed_share: float = 0.0  # of the starts, that go up to overspeed
+    teeth_mass_factor: float | None = None  # stator teeth with winding over bare ones, for modes
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -89,12 +89,13 @@ def lowest_modes(period: Period, count: int) -> tuple[Mode, ...]:
     """
     matrices = _matrices(period)
     found = [
-        mode
+        (square, index, form)
         for index in range(period.periods // 2 + 1)
-        for mode in _modes(matrices, index, count + RIGID_MOTIONS)
-        if not mode.is_rigid
+        for square, form in _solutions(matrices, index, count + RIGID_MOTIONS)
+        if square >= RIGID * matrices.scale
     ]
-    return tuple(sorted(found, key=lambda mode: mode.frequency)[:count])
+    lowest = sorted(found, key=lambda one: one[:2])[:count]
+    return tuple(_mode(matrices, index, square, form) for square, index, form in lowest)
 
 
 def index_modes(period: Period, index: int, count: int) -> tuple[Mode, ...]:
@@ -105,7 +106,9 @@ def index_modes(period: Period, index: int, count: int) -> tuple[Mode, ...]:
     """
     if not 0 <= index <= period.periods // 2:
         raise ValueError(f"cyclic index {index} of {period.periods} periods")
-    return _modes(_matrices(period), index, count)
+    matrices = _matrices(period)
+    solved = _solutions(matrices, index, count)
+    return tuple(_mode(matrices, index, square, form) for square, form in solved)
 
 
 def element_mass(body: ElasticBody) -> FloatArray:
@@ -157,19 +160,16 @@ def _expansion(period: Period, index: int) -> csr_matrix:
     return coo_matrix((value[kept], (rows[kept], columns[kept])), shape=shape_of).tocsr()
 
 
-def _modes(matrices: _Matrices, index: int, count: int) -> tuple[Mode, ...]:
+def _solutions(matrices: _Matrices, index: int, count: int) -> list[tuple[float, ComplexArray]]:
+    """Squares of angular frequency in 1/s^2, rising, and shapes (n_node, 2) of unit mass."""
     period = matrices.period
     expansion = _expansion(period, index)
     adjoint = expansion.conj().T
     stiffness = csc_matrix(adjoint @ matrices.stiffness @ expansion)
     mass = csc_matrix(adjoint @ matrices.mass @ expansion)
     squares, vectors = _lowest(stiffness, mass, SHIFT * matrices.scale, count)
-    # x and y of all nodes; of unit mass over all periods.
-    shapes = (expansion @ vectors).T.reshape(len(squares), -1, 2) / math.sqrt(period.periods)
-    return tuple(
-        _mode(matrices, index, float(square), np.asarray(form, dtype=np.complex128))
-        for square, form in zip(squares, shapes, strict=True)
-    )
+    shapes = (expansion @ vectors).T.reshape(count, -1, 2) / math.sqrt(period.periods)
+    return list(zip(squares.tolist(), np.asarray(shapes, dtype=np.complex128), strict=True))
 
 
 def _lowest(
