@@ -23,6 +23,7 @@ from .types import FloatArray, StressSolution
 
 SPEED_TOL = 1e-7  # of the squared speed at which a contact opens, where it is searched for
 FAR = 1e4  # times the squared speed at which a free bore would lose the shaft: never, beyond
+FAINT = 1e-4  # of the squared speed: a contact that opens below a hundredth of the speed opens at 0
 # (start, end, middle) of an edge, of its length: int N_i N_j ds of second-order edges.
 EDGE_MASS = np.array([[4.0, -1.0, 2.0], [-1.0, 4.0, 2.0], [2.0, 2.0, 16.0]]) / 30.0
 
@@ -204,8 +205,8 @@ def _crossing(value: Callable[[float], float], start: float) -> float:
         low, high = high, 2.0 * high
         if high > FAR * start:
             return math.inf
-    # At rest magnets bear on nothing: 0 is not asked for.
-    low = max(low, 1e-6 * high)
+    # At rest magnets bear on nothing, and on a curved wall faint loads drown in its own gap.
+    low = max(low, FAINT * high)
     if value(low) >= 0.0:
         return 0.0
     return math.sqrt(float(brentq(value, low, high, xtol=SPEED_TOL * high, rtol=SPEED_TOL)))
