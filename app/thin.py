@@ -89,6 +89,11 @@ def thin_chapter(
     ribs = thin_table(thinned, prices)
     write_text(stage / CSV_FILE, thin_csv(ribs))
     write_text(stage / DESIGN_FILE, thinned_text(machine, thinned, stage.parent))
+    if ribbed.pictures:
+        from lamwright.postprocess.figures_thin import write_thin_figure
+
+        asked = machine.design.limits.least_yield_margin
+        write_thin_figure(stage, machine.design.name, ribs, asked)
     figures = ThinFigures(steps=thinned.steps, yield_margin=min(rib.margin for rib in ribs))
     return RibChapter(
         (figures, *torques), (CAUTION,), not_given, tables={THIN_TABLE: tuple(thin_rows(ribs))}
