@@ -22,7 +22,7 @@ from lamwright.solver.tolerance import tolerance_settings
 
 DESIGNS = Path(__file__).parents[2] / "designs"
 DEMO = DESIGNS / "demo_36s6p_arc.toml"
-# Of the gallery, without magnets and skew. Their own speeds put many ribs at the floor, so half
+# Of the gallery, without magnets and skew. Their own speeds put many ribs at the floor, so some
 # of them are run faster than they are stated, by the factor beside the name.
 GALLERY = (
     ("blower_36s2p", 1.0),
@@ -34,9 +34,9 @@ GALLERY = (
     ("lift_27s6p", 3.0),
     ("mill_48s4p", 1.0),
     ("pump_36s4p", 1.5),
-    ("retrofit_48s4p", 1.5),
+    ("retrofit_48s4p", 1.0),
     ("spindle_24s2p", 1.15),
-    ("winder_72s12p", 3.0),
+    ("winder_72s12p", 1.0),
 )
 ONE_PERCENT = 0.01  # of the margin asked for
 WIDTH_TOL = 1e-9  # m
