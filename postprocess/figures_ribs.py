@@ -19,6 +19,7 @@ MOST_DRAWN = 24  # ribs, most stressed first: more are named in the table alone
 BAR = 0.6  # of a row
 ROOM = 0.28  # inches of a row
 FOOT, HEAD = 0.6, 0.6  # inches below and above all rows
+FARTHEST = 100.0  # of the cycles that were tested, that the axis goes to
 LIFE = ("life_2_3_percent_cycles", "life_50_percent_cycles", "life_97_7_percent_cycles")
 
 
@@ -80,15 +81,29 @@ def draw_lives(
 ) -> None:
     """Draw for each rib the starts until 2.3, 50 and 97.7 % are cracked, and where data end."""
     ax.set_xscale("log")
+    spans = [tuple(row.values[key] for key in LIFE) for _, row in named]
+    # Far beyond what was tested a place on the axis would say more than is known.
+    last = FARTHEST * tested_to
     ends = [tested_to]
-    for at, (_, row) in zip(_places(len(named)), named, strict=True):
-        low, median, high = (row.values[key] for key in LIFE)
-        if not low or median is None or high is None:
-            continue  # endless, or no life at all
-        ends += [low, high]
+    for at, (low, median, high) in zip(_places(len(named)), spans, strict=True):
+        if low is None or median is None or high is None or min(low / tested_to, high / last) > 1:
+            ax.annotate(
+                f"more than {tested_to:.2g}",
+                (0.98, at),
+                xycoords=("axes fraction", "data"),
+                fontsize=style.text,
+                fontstyle="italic",
+                color=style.quiet,
+                ha="right",
+                va="center",
+            )
+            continue
+        if low == 0.0:
+            continue  # it bears no cycle: the caution says so
+        ends.append(low)
         ax.plot([low, high], [at, at], color=style.second, linewidth=3.0, solid_capstyle="butt")
         ax.plot([median], [at], marker="o", markersize=5.0, color=style.ink, zorder=3)
-    first, last = min(ends) / 3.0, 3.0 * max(ends)
+    first = min(ends) / 3.0
     ax.axvspan(tested_to, last, color="#eef0f1", zorder=0)
     ax.set_xlim(first, last)
     _line(ax, tested_to, f"line tested to {tested_to:.2g}", style)

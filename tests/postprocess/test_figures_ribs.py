@@ -38,11 +38,12 @@ def test_bars_are_the_margins_and_lines_the_limits():
 
 
 def test_spans_are_the_lives_and_an_endless_one_has_none():
-    """From 2.3 to 97.7 % with a dot at half, logarithmic."""
+    """From 2.3 to 97.7 % with a dot at half, logarithmic; what is far beyond the tests in words."""
     ax = Figure().subplots()
     draw_lives(ax, shown_ribs(rows((LIFE, ENDLESS))), 1e7, Style())
     drawn = [list(line.get_xdata()) for line in ax.get_lines()]
     assert drawn == [[3e4, 3e5], [1e5], [1e7, 1e7]]
+    assert [text.get_text() for text in ax.texts] == ["more than 1e+07", "line tested to 1e+07"]
     assert ax.get_xscale() == "log"
     assert "97.7 %" in ax.get_xlabel()
 
