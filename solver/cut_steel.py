@@ -8,7 +8,9 @@ all exact derivatives of one another (derived). A share below 1 stands for a cha
 density and for steel that cutting has spoilt: mu is lower by 1 - s at every H. Beyond saturation
 the curve then ends in the slope s mu0 instead of mu0: 1 % of B at 0.1 T of mu0 H and s = 0.8.
 Along the cut edge the spoilt depth is an even layer; an element counts by the part of its area
-that lies within it, since a mesh that followed the layer would change with the depth.
+that lies within it, since a mesh that followed the layer would change with the depth. Change of
+the torque by 30 % less permeability, 0.1, 0.2 and 0.4 mm deep (24/4 demo, one position): coarse
+mesh 0.30, 0.78, 2.46 %; normal 0.35, 0.87, 2.42 %; half as fine again 0.41, 0.89, 2.40 %.
 Axes: n_elem steel elements, n_qp quadrature points.
 """
 
