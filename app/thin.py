@@ -96,8 +96,20 @@ def thin_chapter(
         write_thin_figure(stage, machine.design.name, ribs, asked)
     figures = ThinFigures(steps=thinned.steps, yield_margin=min(rib.margin for rib in ribs))
     return RibChapter(
-        (figures, *torques), (CAUTION,), not_given, tables={THIN_TABLE: tuple(thin_rows(ribs))}
+        (figures, *torques),
+        cautions_of(machine.design),
+        not_given,
+        tables={THIN_TABLE: tuple(thin_rows(ribs))},
     )
+
+
+def cautions_of(design: MachineDesign) -> tuple[str, ...]:
+    """What a reader of the thinnest ribs should be wary of."""
+    stated = [key for key, part in (("rotor.fit", design.rotor.fit), ("hot", design.hot)) if part]
+    if not stated:
+        return (CAUTION,)
+    text = f"the thinnest ribs hold spin alone, with a free, cold bore: what {' and '.join(stated)}"
+    return (CAUTION, f"{text} add is not in their margin; run ribs on {DESIGN_FILE} and see")
 
 
 def thin_table(thinned: Thinned, prices: dict[str, float]) -> tuple[ThinRib, ...]:

@@ -9,10 +9,11 @@ import pytest
 from click.testing import CliRunner
 
 from lamwright.app.cli import main
-from lamwright.app.thin import priced
+from lamwright.app.thin import cautions_of, priced
 from lamwright.app.thin_search import Thinned, thinnest
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import Machine, read_machine
+from lamwright.geometry.design_fit import FitDesign
 from lamwright.geometry.errors import DesignError
 from lamwright.geometry.rib_groups import members, rib_groups, with_least
 from lamwright.postprocess.quantities import RPM
@@ -144,3 +145,21 @@ def test_gallery(name, factor):
         torque, _ = priced(machine, (), mesh)
         thinner, _ = priced(replace(machine, design=found.after.design), (), mesh)
         assert thinner >= torque * (1.0 - 1e-4)  # the angle's search and rounding of equal designs
+
+
+def test_fit_and_heat_are_told_to_be_outside_the_margin():
+    """A design that states a fit is cautioned, one that does not is not."""
+    design = read_machine(DEMO).design
+    fit = FitDesign.model_construct(interference_um=10.0)
+    rotor = design.rotor.model_copy(update={"fit": fit})
+    assert len(cautions_of(design)) == 1
+    told = cautions_of(design.model_copy(update={"rotor": rotor}))
+    assert "rotor.fit add is not in their margin" in told[1]
+
+
+@pytest.mark.slow
+def test_refused_where_iron_outside_the_ribs_yields_first():
+    """At three times its speed the winder's carriers miss the margin; the place is told."""
+    machine = faster(read_machine(DESIGNS / "gallery" / "winder_72s12p.toml"), 3.0)
+    with pytest.raises(DesignError, match=r"outside the ribs, at \([\d.]+, [\d.]+\) mm, it is 1"):
+        thinnest(machine, 1.2, StressSettings())
