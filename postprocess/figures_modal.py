@@ -27,6 +27,9 @@ SHAPES = 4  # lowest modes of each lamination
 GROWN = 0.07  # of the outer radius, the largest displacement drawn
 ROOM = 1.13  # half the side of a drawing over the outer radius
 LINES = 5  # modes of each lamination in the chart of frequencies
+HEADROOM = 1.16  # of the chart over its highest mode, for two rows of numbers
+MANY_EDGES = 4000  # beyond, lines of full width run together
+RAISED = 0.85  # of the size of letters, that a mode's name stands above its line
 PITCH = 1.35  # least distance of labels over the size of letters
 DRIVEN: dict[Driver, str] = {
     "field": "modes that the gap's field can shake",
@@ -62,9 +65,10 @@ def draw_mode(ax: Axes, lamination: Lamination, mode: Mode, style: Style) -> Non
     from matplotlib.collections import LineCollection
 
     at_rest, moved = mode_lines(lamination.period, mode)
+    thin = 0.5 if len(moved) > MANY_EDGES else 1.0
     for lines, colour, width in (
         (at_rest, style.quiet, 0.6 * style.hair),
-        (moved, style.accent, style.outline),
+        (moved, style.accent, thin * style.outline),
     ):
         pairs = np.stack([lines.real, lines.imag], axis=-1)
         ax.add_collection(
@@ -124,7 +128,7 @@ def draw_frequencies(
     Orders have their names beside the axes if `is_named`.
     """
     modes = lamination.modes[:LINES]
-    top = 1e-3 * 1.08 * max(mode.frequency for mode in modes)
+    top = 1e-3 * HEADROOM * max(mode.frequency for mode in modes)
     end = RPM * speeds.overspeed
     ax.set_xlim(0.0, end)
     ax.set_ylim(0.0, top)
@@ -155,7 +159,7 @@ def draw_frequencies(
                 "o",
                 color=colours[driver(meeting.mode, lamination.sectors)],
                 markersize=3.2,
-                zorder=5,
+                zorder=7,
             )
     if is_named:
         _name_orders(ax, lamination, top, end, style)
@@ -180,18 +184,19 @@ def _name_orders(ax: Axes, lamination: Lamination, top: float, end: float, style
     heights = _spread(ax, np.array([height for _, height in beside]), style)
     for (order, height), at in zip(beside, heights, strict=True):
         _leader(ax, f"{order.times}: {order.name}", height, float(at), style)
-    for order, height in rays:
-        if height > top:  # leaves through the top: its number just inside
-            ax.text(
-                end * top / height,
-                0.985 * top,
-                f"{order.times} ",
-                fontsize=style.small,
-                color=style.quiet,
-                ha="right",
-                va="top",
-                zorder=6,
-            )
+    above = [(order, end * top / height) for order, height in rays if height > top]
+    for k, (order, x) in enumerate(above):  # their numbers just inside, in two rows
+        at = (0.985 - 0.045 * (k % 2)) * top
+        ax.text(
+            x * at / top,
+            at,
+            f"{order.times} ",
+            fontsize=style.small,
+            color=style.quiet,
+            ha="right",
+            va="top",
+            zorder=6,
+        )
 
 
 def _leader(ax: Axes, text: str, height: float, at: float, style: Style) -> None:
@@ -204,8 +209,14 @@ def _leader(ax: Axes, text: str, height: float, at: float, style: Style) -> None
 
 
 def _name_modes(ax: Axes, lamination: Lamination, modes: Sequence[Mode], style: Style) -> None:
-    """Waves of each mode inside, at the left, pushed apart where they are near."""
-    heights = _spread(ax, np.array([1e-3 * mode.frequency for mode in modes]), style)
+    """Waves of each mode inside, at the left above its line, pushed apart where they are near.
+
+    Above it, as meetings at low speeds lie on the line.
+    """
+    low, high = ax.get_ylim()
+    per_point = (high - low) / ax.get_window_extent().height * pixels_per_point(ax)
+    lines = np.array([1e-3 * mode.frequency for mode in modes])
+    heights = _spread(ax, lines + RAISED * style.small * per_point, style)
     for mode, at in zip(modes, heights, strict=True):
         ax.text(
             0.02 * ax.get_xlim()[1],
@@ -215,7 +226,7 @@ def _name_modes(ax: Axes, lamination: Lamination, modes: Sequence[Mode], style: 
             color=_colours(style)[driver(mode, lamination.sectors)],
             va="center",
             zorder=6,
-            bbox={"facecolor": style.paper, "edgecolor": "none", "pad": 0.6},
+            bbox={"facecolor": style.paper, "edgecolor": "none", "pad": 0.0},
         )
 
 

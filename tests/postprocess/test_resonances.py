@@ -8,7 +8,8 @@ import numpy as np
 import pytest
 
 from lamwright.geometry.cross_section import cross_section
-from lamwright.postprocess.figures_modal import GROWN, mode_lines
+from lamwright.postprocess.figures_modal import GROWN, modal_figure, mode_lines
+from lamwright.postprocess.figures_style import Style
 from lamwright.postprocess.modal_tables import (
     Speeds,
     driven_meetings,
@@ -147,3 +148,25 @@ def test_a_mode_is_drawn_all_round(period):
     rest, moved = mode_lines(period, one)
     outer = np.abs(rest).max()
     assert np.abs(moved - rest).max() == pytest.approx(GROWN * outer)
+
+
+@pytest.mark.slow
+def test_all_words_of_the_picture_are_on_its_sheet(period):
+    """Names of orders stand beside the axes: none is cut off at the edge of the figure."""
+    one = Lamination(
+        "stator",
+        "stator",
+        period,
+        lowest_modes(period, 6),
+        orders_of(cross_section(plain_design()), is_stator=True),
+        4,
+    )
+    figure = modal_figure("plain", (one, one, one), SPEEDS, Style())
+    figure.canvas.draw()
+    sheet = figure.bbox
+    words = [*figure.texts, *(text for ax in figure.axes for text in (*ax.texts, ax.title))]
+    assert len(words) > 50
+    for text in words:
+        box = text.get_window_extent()
+        assert sheet.x0 <= box.x0 < box.x1 <= sheet.x1, text.get_text()
+        assert sheet.y0 <= box.y0 < box.y1 <= sheet.y1, text.get_text()
