@@ -19,6 +19,7 @@ def test_share_is_that_of_300_machines_solved_in_full(tmp_path):
     Limits lie within the spread, so that about half of the machines hold all of them. Both draw
     from streams of their own, so neither knows the other's machines. Coarse meshes and four
     positions are the same for both; the ripple of four positions is judged by both alike.
+    Measured: 42.4 % by the model, 127 of 300 in full (36.7 to 48.1 %), 299 of 300 judged alike.
     """
     text = (DESIGNS / "demo_24s4p_arc.toml").read_text()
     text = text.replace('"steel/', f'"{DESIGNS.as_posix()}/steel/')
