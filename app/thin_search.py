@@ -23,7 +23,7 @@ from lamwright.geometry.section import CrossSection, rotor_cell
 from lamwright.postprocess.quantities import RPM
 from lamwright.postprocess.thin_ribs import LONGEST_STEP, limited, misfits, next_step
 from lamwright.solver.design_motion import draw_lamination, moved_mesh, part_motion
-from lamwright.solver.rib_zones import zone_of_node
+from lamwright.solver.rib_zones import distance_to, zone_of_node
 from lamwright.solver.rotor_stress import StressSettings, rotor_stress, stress_on
 from lamwright.solver.types import FloatArray, StressSolution
 
@@ -238,14 +238,18 @@ class _Search:
         )
 
     def refused_elsewhere(self, state: Stressed) -> DesignError:
-        """The iron outside the ribs yields first."""
+        """The iron just beyond the ribs' zones has less margin than the ribs."""
         x, y = state.rest_at.real / MM, state.rest_at.imag / MM
-        k = int(np.argmin(state.margin))
+        design, ribs = self.machine.design, state.section.ribs
+        away = np.array([distance_to(rib, np.array([state.rest_at]))[0] for rib in ribs])
+        near = [away[list(members(design, group, ribs))].min() for group in self.groups]
+        k = int(np.argmin(near))
         return self._placed(
             self.groups[k].keys[0],
             state.width[k] / MM,
-            f"no widths hold the yield margin {self.asked:g} at {RPM * self.speed:.0f} rpm: "
-            f"outside the ribs, at ({x:.2f}, {y:.2f}) mm, it is {state.rest_margin:.3f}",
+            f"ribs that just hold the yield margin {self.asked:g} at {RPM * self.speed:.0f} rpm "
+            f"leave {state.rest_margin:.3f} outside them, at ({x:.2f}, {y:.2f}) mm, nearest to "
+            f"the {self.groups[k].label} rib",
             state.rest_margin,
         )
 
