@@ -15,6 +15,9 @@ def life_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
     if data is None:
         lost = f"life: steel card {card.name!r} has no table fatigue"
         return RibChapter((), (), (lost,))
+    if ribbed.machine.magnet is not None:
+        lost = "life: the magnets' load is not in the local stress of a start, which is too low"
+        return RibChapter((), (), (lost,))
     share = ribbed.wishes.overspeed_share
     factor = (ribbed.maximum_speed / ribbed.overspeed) ** 2
     pulled = zone_stress(ribbed.section, stress.solution)
@@ -25,7 +28,7 @@ def life_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
     steep = float(stress.zone_errors[least]) / abs(data.strength_exponent)
     return RibChapter(
         figures=(figures,),
-        cautions=life_cautions(lives, card, data),
+        cautions=(*_of_spin_alone(ribbed), *life_cautions(lives, card, data)),
         of_ribs=lives[:-1],
         errors={
             key: steep * value
@@ -40,3 +43,13 @@ def life_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
             "life_local_stress": local_rule(pulled, factor, card, data),
         },
     )
+
+
+def _of_spin_alone(ribbed: Ribbed) -> tuple[str, ...]:
+    """What is stated of the rotor, but not in its life."""
+    design = ribbed.machine.design
+    parts = {"shaft fit": design.rotor.fit, "heat": design.hot}
+    stated = " and ".join(name for name, part in parts.items() if part is not None)
+    if not stated:
+        return ()
+    return (f"life is that of the spin alone: {stated} shifts mean stress, and has its own cycles",)

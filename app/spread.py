@@ -107,6 +107,8 @@ def spread(
     machine = read_machine(path)
     section = section_of(machine)
     _refuse(machine)
+    if not spread_sources(machine.design):
+        raise LamwrightError("spread: every tolerance is 0; state one above 0 in [tolerance]")
     folder = prepared_folder(Path(out))
     spare = spare_cores() if wishes.workers is None else wishes.workers - 1
     watch = Stopwatch(progress, SHARES)

@@ -4,8 +4,9 @@ import textwrap
 from collections.abc import Sequence
 
 import click
+import numpy as np
 
-from lamwright.postprocess.spread import moments, variance_shares, worst_case
+from lamwright.postprocess.spread import holds, moments, variance_shares, worst_case
 from lamwright.postprocess.spread_tables import NOT_GIVEN, SpreadReport, cautions_of
 
 WIDTH = 100
@@ -39,6 +40,8 @@ def _print_figures(report: SpreadReport) -> None:
     least, most = worst_case(model)
     _, deviation = moments(model)
     _row("", ("as drawn", "sigma", "worst low", "worst high", "limit", "hold, %"))
+    ends_hold = np.all(holds(model.figures, np.stack([least, most])), axis=0).tolist()
+    missing: list[str] = []
     for k, figure in enumerate(model.figures):
         name = f"{figure.label}, {figure.unit}" if figure.unit else figure.label
         numbers = (model.nominal[k], deviation[k], least[k], most[k])
@@ -46,7 +49,11 @@ def _print_figures(report: SpreadReport) -> None:
         if figure.limit is not None:
             limit = f"{'>=' if figure.is_least else '<='} {figure.limit:g}"
             share = f"{100.0 * report.shares[k].value:.2f}"
+            if not ends_hold[k]:
+                missing.append(figure.label)
         _row(name, (*(f"{number:.4g}" for number in numbers), limit, share))
+    told = f"misses {', '.join(missing)}" if missing else "holds every limit"
+    click.echo(f"  the worst case, every source at the worse of its limits, {told}")
     _row(
         f"model against {len(report.solved)} full solutions", ("rms miss", "largest", "correlated")
     )
@@ -66,7 +73,7 @@ def _print_sources(report: SpreadReport) -> None:
 
 
 def _row(name: str, cells: Sequence[str]) -> None:
-    click.echo(f"  {name:<38}" + "".join(f"{cell:>11}" for cell in cells))
+    click.echo(f"  {name:<44}" + "".join(f"{cell:>11}" for cell in cells))
 
 
 def _wrapped(text: str) -> str:

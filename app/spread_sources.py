@@ -1,6 +1,7 @@
 """The sources of spread that a design states, and one made machine of their deviations."""
 
 import difflib
+import re
 from collections.abc import Sequence
 
 from lamwright.geometry.design import MachineDesign
@@ -53,7 +54,7 @@ def spread_sources(design: MachineDesign) -> tuple[SpreadSource, ...]:
     ]
     for one in tolerance.key:
         unit = "deg" if one.name.endswith("_deg") else "mm"
-        found.append(SpreadSource(one.name, one.name, one.limit, unit))
+        found.append(SpreadSource(one.name, key_told(one.name), one.limit, unit))
     others = (
         ("stacking_factor", "stacking factor", ""),
         ("b_h_percent", "flux density of the steel", "%"),
@@ -66,6 +67,12 @@ def spread_sources(design: MachineDesign) -> tuple[SpreadSource, ...]:
         key = "edge_depth_scatter_percent"
         found.append(SpreadSource(key, "depth of the spoilt edge", scatter, "%"))
     return tuple(source for source in found if source.limit > 0.0)
+
+
+def key_told(key: str) -> str:
+    """A key in plain words: `barrier 2 end thickness`."""
+    plain = re.sub(r"^(rotor|stator)\.|_(mm|deg)(?=\[|$)", "", key)
+    return re.sub(r"[\[\]._]+", " ", plain).strip()
 
 
 def deviation_of(

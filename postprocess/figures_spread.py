@@ -167,11 +167,7 @@ def _order(report: SpreadReport) -> list[int]:
 
 def _told(report: SpreadReport, number: int) -> str:
     source = report.model.effects[number].source
-    label = source.label
-    if "." in label:  # a key of the design: its last table and name
-        label = label.removeprefix("rotor.").removeprefix("stator.").rpartition("_")[0]
-        label = label.replace("].", "] ").replace("_", " ")
-    return f"{label}\n+-{source.limit:g} {source.unit}".rstrip()
+    return f"{source.label}\n+-{source.limit:g} {source.unit}".rstrip()
 
 
 def _plain(ax: Axes, style: Style, kept: tuple[str, ...]) -> None:

@@ -134,6 +134,7 @@ def _figure_records(report: SpreadReport) -> list[dict[str, object]]:
     model = report.model
     least, most = worst_case(model)
     mean, deviation = moments(model)
+    worst_holds = np.all(holds(model.figures, np.stack([least, most])), axis=0).tolist()
     return [
         {
             "key": figure.key,
@@ -142,6 +143,7 @@ def _figure_records(report: SpreadReport) -> list[dict[str, object]]:
             "limit": figure.limit,
             "worst_least": float(least[k]),
             "worst_most": float(most[k]),
+            "worst_holds": None if figure.limit is None else worst_holds[k],
             "mean": float(mean[k]),
             "standard_deviation": float(deviation[k]),
             "share_holding_percent": (

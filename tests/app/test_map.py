@@ -97,11 +97,24 @@ def test_torque_of_the_map_is_maxwells(mapped):
     assert mean.max() > 15.0
 
 
-def test_a_second_run_solves_nothing(mapped):
+@pytest.fixture(scope="module")
+def again(mapped):
+    """A second run into the folder, with a chapter that cannot be; the map before it."""
+
+    def unable(mapped, stage):
+        raise LamwrightError("the supply reaches no torque")
+
+    before = read_flux_map(mapped[1] / "map.nc")
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(map_chapters, "CHAPTERS", (("drive", unable),))
+        report = map_design(DEMO, mapped[1], SMALL, tolerance="coarse", workers=1)
+    return report, before
+
+
+def test_a_second_run_solves_nothing(mapped, again):
     """All points are in the store; the map is the same to the last bit."""
     report, folder, _ = mapped
-    before = read_flux_map(folder / "map.nc")
-    again = map_design(DEMO, folder, SMALL, tolerance="coarse", workers=1)
+    again, before = again
     assert figure(again, "map_points_solved") == 0
     assert figure(again, "map_points_kept") == 16
     after = read_flux_map(folder / "map.nc")
@@ -116,14 +129,9 @@ def test_another_grid_in_the_folder_is_refused(mapped):
     assert (mapped[1] / "map.json").exists()
 
 
-def test_a_chapter_that_cannot_be_is_named(mapped, monkeypatch):
+def test_a_chapter_that_cannot_be_is_named(again):
     """The map and the other chapters stand; the reason is told as not given."""
-
-    def unable(mapped, stage):
-        raise LamwrightError("the supply reaches no torque")
-
-    monkeypatch.setattr(map_chapters, "CHAPTERS", (("drive", unable),))
-    report = map_design(DEMO, mapped[1], SMALL, tolerance="coarse", workers=1)
+    report, _ = again
     assert report.not_given[-1] == "drive: the supply reaches no torque"
     assert figure(report, "rated_torque_nm") > 10.0
 

@@ -13,6 +13,7 @@ from lamwright.app.rib_work import RIBS_FILE, ribbed_machine, write_results
 from lamwright.app.ribbed import Ribbed, RibWishes
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import read_machine, read_steel_card
+from lamwright.geometry.design_fit import HotDesign
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.quantities import figures_of
 
@@ -102,6 +103,20 @@ def test_a_chapter_that_cannot_be_leaves_the_others(slow_rotor, tmp_path):
     report = write_results(slow_rotor, tmp_path, "coarse", makers)
     assert "absent: nothing to say" in report.not_given
     assert report.figures["rib_stress_peak_mpa"].value > 0.0
+
+
+def test_what_is_not_in_the_life_is_told(slow_rotor, tmp_path):
+    """Magnets pull at the ribs in every start: no life. Fit and heat shift it: said beside it."""
+    magnet = read_machine(DESIGNS / "demo_36s4p_magnet.toml").magnet
+    machine = dataclasses.replace(slow_rotor.machine, magnet=magnet)
+    chapter = life_chapter(dataclasses.replace(slow_rotor, machine=machine), tmp_path)
+    assert chapter.figures == chapter.of_ribs == ()
+    assert chapter.not_given[0].startswith("life: the magnets' load")
+    hot = slow_rotor.machine.design.model_copy(update={"hot": HotDesign(rotor_temperature_c=90.0)})
+    machine = dataclasses.replace(slow_rotor.machine, design=hot)
+    chapter = life_chapter(dataclasses.replace(slow_rotor, machine=machine), tmp_path)
+    assert chapter.cautions[0].startswith("life is that of the spin alone: heat shifts")
+    assert chapter.figures
 
 
 def test_magnets_load_is_told_to_be_missing(slow_rotor, tmp_path):

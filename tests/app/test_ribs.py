@@ -71,6 +71,17 @@ def test_figures_hang_together(ran, record):
         assert rib["peak_on"].startswith(f"barrier {rib['barrier']}, arc of ")
 
 
+def test_the_terminal_shows_the_ribs(ran):
+    """Most stressed first, mirrored ones once; a life beyond the card's tested cycles as more."""
+    lines = ran[0].output.splitlines()
+    ribs = [line for line in lines if "tangential" in line]
+    assert [line.split("│")[1].strip() for line in ribs] == [
+        f"tangential {k}, both" for k in (3, 2, 1)
+    ]
+    assert all("> 1e+07" in line for line in ribs)
+    assert "holds: yield margin 2.2" in ran[0].output
+
+
 def test_cautions_stand_on_the_terminal_and_in_the_file(ran, record):
     """Issue point 8: burst, containment, certificate, licensed practice, local codes."""
     for word in CAUTIONS:

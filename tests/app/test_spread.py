@@ -9,6 +9,7 @@ from click.testing import CliRunner
 
 from lamwright.app.cli import main
 from lamwright.app.spread import SpreadWishes, spread
+from lamwright.app.spread_sources import key_told
 from lamwright.geometry.errors import LamwrightError
 
 DESIGNS = Path(__file__).parents[2] / "designs"
@@ -121,6 +122,12 @@ def test_workers_do_not_change_results_and_seeds_do(run, tmp_path):
             (),
             "tolerance.key[1].name = 'rotor.gap': no length or angle of this design; did you mean",
         ),
+        (
+            "[tolerance]\ncut_mm = 0\ngap_mm = 0\nbore_eccentricity_mm = 0\nstacking_factor = 0\n"
+            "b_h_percent = 0\nyield_percent = 0\n",
+            (),
+            "spread: every tolerance is 0; state one above 0 in [tolerance]",
+        ),
         ("", ("--samples", "3"), "--samples 3: accepted 100 to 1000000"),
         ("", ("--solve", "1"), "--solve 1: accepted 2 to 10000"),
     ],
@@ -149,3 +156,16 @@ def test_what_has_no_spread_is_refused(tmp_path, kind):
     with pytest.raises(LamwrightError, match="has none yet"):
         spread(path, tmp_path / "out", quick(1))
     assert not (tmp_path / "out").exists()
+
+
+@pytest.mark.parametrize(
+    ("key", "told"),
+    [
+        ("rotor.alternate_barrier[2].end_thickness_mm", "alternate barrier 2 end thickness"),
+        ("rotor.barrier[1].radial_rib_places_mm[2]", "barrier 1 radial rib places 2"),
+        ("stator.wedge_angle_deg", "wedge angle"),
+    ],
+)
+def test_keys_are_told_in_plain_words(key, told):
+    """Table and number, then the name, without unit."""
+    assert key_told(key) == told

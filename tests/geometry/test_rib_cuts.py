@@ -106,13 +106,14 @@ def ribbed(rng, barrier):
     )
 
 
-def test_random_ribs_measure_what_is_stated_and_tile_the_pole():
-    """12 random valid designs: cavities simple, smooth, apart by just the ribs' width.
+@pytest.mark.parametrize("count", [5, pytest.param(12, marks=pytest.mark.slow)])
+def test_random_ribs_measure_what_is_stated_and_tile_the_pole(count):
+    """Random valid designs: cavities simple, smooth, apart by just the ribs' width.
 
     Each rib by the distance of two polygons, to 2 SAG; corners turn by under 1e-9 rad; the areas
     of all regions make up the sector pi r^2 / (2 p) to 1e-9 of it.
     """
-    for design in ribbed_designs(12, seed=5):
+    for design in ribbed_designs(count, seed=5):
         regions, found = rotor_regions(design)
         for number, barrier in enumerate(design.rotor.barrier, start=1):
             own = [r.outer for r in regions if r.name.split("_")[:2] == ["barrier", f"{number}"]]

@@ -1,8 +1,8 @@
 """Field and stress of a whole machine by a general-purpose finite element library (NGSolve).
 
 Nothing of the solver room is used but the numbers of a magnet: own mesh of the full circle from the
-exported rotor outline, order 3 on curved elements, no symmetry, the steel card's points through
-another interpolation.
+exported rotor outline, order 2 or 3 on curved elements, no symmetry, the steel card's points
+through another interpolation.
 """
 
 from collections.abc import Sequence
@@ -97,6 +97,7 @@ def solve_field(
     i_abc: np.ndarray,
     position: float,
     law: MagnetLaw | None = None,
+    order: int = 3,
 ) -> OtherField:
     """Torque and linkages at phase currents `i_abc` (A), rotor `position` (mechanical rad)."""
     import ngsolve as ngs
@@ -117,9 +118,9 @@ def solve_field(
         if edge_on(edge, outer):
             edge.name = "outer"
     mesh = ngs.Mesh(OCCGeometry(shape, dim=2).GenerateMesh(maxh=5.0, grading=0.4))
-    mesh.Curve(3)
+    mesh.Curve(order)
 
-    space = ngs.H1(mesh, order=3, dirichlet="outer")
+    space = ngs.H1(mesh, order=order, dirichlet="outer")
     a, v = space.TnT()
     b_abs = ngs.sqrt(1e-12 + 1e6 * (ngs.grad(a) * ngs.grad(a)))  # coordinates in mm
     form = ngs.BilinearForm(space, symmetric=True)

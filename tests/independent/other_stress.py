@@ -15,6 +15,8 @@ from lamwright.geometry.dxf import read_contours
 
 from .occ_faces import occ_face
 
+INSIDE = 1e-7  # m
+
 
 @dataclass(frozen=True)
 class OtherStress:
@@ -78,8 +80,13 @@ def solve_stress(dxf: FilePath, card: SteelCard, speed: float, fine: float) -> O
 
 
 def edge_points(path: Path) -> np.ndarray:
-    """Points along all edges of a closed path, 200 an edge (m)."""
-    return np.array([e.point(s) for e in path.edges for s in np.linspace(0.0, 1.0, 200)])
+    """Points along all edges of a closed path, 200 an edge (m).
+
+    0.1 um inside the iron, which is left of its contours: 1e-4 of a peak's stress at a fillet of
+    1 mm, and no point is lost beside the mesh.
+    """
+    share = np.linspace(0.0, 1.0, 200)
+    return np.array([e.point(s) + INSIDE * 1j * e.direction(s) for e in path.edges for s in share])
 
 
 def at_places(mesh: Any, function: Any, places: np.ndarray) -> np.ndarray:

@@ -24,12 +24,13 @@ from .other_stress import solve_stress
 ROOT = Path(__file__).parents[2]
 
 
-def test_one_position_agrees_with_another_solver(tmp_path: Path) -> None:
+@pytest.mark.parametrize("order", [2, pytest.param(3, marks=pytest.mark.slow)])
+def test_one_position_agrees_with_another_solver(tmp_path: Path, order: int) -> None:
     """Torque within 1 %, linkages within 0.5 % of the largest, on the README's design.
 
-    Source: the same laws solved by NGSolve (order 3, 14 000 curved elements, full circle, the
-    steel card through its own interpolation). Measured: 2e-5 in both; the tolerance is what the
-    discretisation of the normal mesh may cost.
+    Source: the same laws solved by NGSolve (14 000 curved elements, full circle, the steel
+    card through its own interpolation). Measured at order 3: 2e-5 in both; the tolerance is what
+    the discretisation of the normal mesh may cost.
     """
     machine = read_machine(ROOT / "designs/demo_24s4p_arc.toml")
     section, winding = cross_section(machine.design), winding_table(machine.design)
@@ -40,7 +41,7 @@ def test_one_position_agrees_with_another_solver(tmp_path: Path) -> None:
     i_abc = i_d * np.cos(theta_e) - i_q * np.sin(theta_e)
     stacking = machine.design.rotor.stacking_factor
     cards = (machine.rotor_steel, machine.stator_steel)
-    other = solve_field(outline, section, winding, cards, stacking, i_abc, position)
+    other = solve_field(outline, section, winding, cards, stacking, i_abc, position, order=order)
 
     laws = [reluctivity_law(card, stacking) for card in cards]
     model = magnetic_model(mesh_section(section), section, winding, *laws)
@@ -75,13 +76,22 @@ def test_magnet_machine_agrees_with_another_solver(tmp_path: Path, i_d: float, i
 
 
 @pytest.mark.parametrize(
-    "name", ["demo_24s4p_arc", pytest.param("demo_36s4p_straight", marks=pytest.mark.slow)]
+    "name",
+    [
+        "demo_24s4p_arc",
+        *(
+            pytest.param(name, marks=pytest.mark.slow)
+            for name in ("demo_36s4p_straight", "gallery/fan_12s4p", "gallery/servo_12s10p")
+        ),
+    ],
 )
 def test_rib_stress_agrees_with_another_solver(tmp_path: Path, name: str) -> None:
     """Peak von Mises within 3 %, largest growth of the rim within 1 %, at overspeed.
 
     Source: plane stress of the whole disc by NGSolve, order 4, three multipliers for the rigid
-    movements. 3 % allows 2 % for our refinement and 1 % for the other mesh.
+    movements. 3 % allows 2 % for our refinement and 1 % for the other mesh. Barriers round, with
+    radial ribs, with flat ends, as vees. Measured: 0.07 % on the first, 0.51 % on the third, whose
+    own error against 16 times the elements is 0.24 %.
     """
     machine = read_machine(ROOT / f"designs/{name}.toml")
     section, duty = cross_section(machine.design), machine.design.duty

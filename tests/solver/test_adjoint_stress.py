@@ -55,7 +55,7 @@ class Spinning:
         return smoothed_peak(pole, moved)[0]
 
 
-@pytest.mark.parametrize("name", TWO)
+@pytest.mark.parametrize("name", [TWO[0], pytest.param(TWO[1], marks=pytest.mark.slow)])
 def test_slopes_are_those_of_the_frozen_mesh(name):
     """Every key of the rotor, steps of 0.5 and 1 um or 0.001 degree: 1e-5.
 

@@ -27,8 +27,8 @@ ASIDE = (-0.05, 0.05)  # cuts beside a rib's thinnest place, where no row of nod
 
 
 def test_a_part_of_the_random_rotors_meshes_well():
-    """The first 12 of the long run; see there."""
-    _run(12)
+    """The first 6 of the long run; see there."""
+    _run(6)
 
 
 @pytest.mark.slow
