@@ -7,11 +7,12 @@ process writes the tables. Chains are fixed and each starts from the search, so 
 depend on who did what.
 """
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from concurrent.futures import Future
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
@@ -63,6 +64,9 @@ from .pool import Crew
 from .progress import Stopwatch
 from .version import version
 
+if TYPE_CHECKING:
+    from .rib_work import RibsReport
+
 WAVEFORM_FILE, ORDERS_FILE, RIBS_FILE = "torque.csv", "torque_orders.csv", "ribs.csv"
 
 
@@ -76,6 +80,7 @@ class Assessment:
     watch: Stopwatch
     tolerance: ToleranceName
     pictures: bool
+    on_ribs: "Callable[[RibsReport], None] | None" = None  # who wants all about the ribs too
 
     def written_to(self, stage: Path) -> Verdict:
         """The verdict; all results as files in `stage`, `verdict.json` last."""
@@ -213,6 +218,8 @@ class Assessment:
         with watch.phase("pictures"):
             for figure in drawn:
                 figure.result()
+        if self.on_ribs is not None:
+            self.on_ribs(self._ribs(stage, stress))
         cards = (machine.rotor_steel, machine.stator_steel)
         bare_psi_q = sum(work.record.psi_q for work in magnets)
         magnetic, rotor = magnetic_figures(waveform, bare_psi_q), stress_figures(stress.report)
@@ -252,6 +259,19 @@ class Assessment:
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
         return verdict
+
+    def _ribs(self, stage: Path, stress: StressWork) -> "RibsReport":
+        """What `ribs` says, from the stress that is known already."""
+        from .rib_chapters import CHAPTERS
+        from .rib_work import write_results
+        from .ribbed import Ribbed, RibWishes
+
+        _, settings, _ = tolerance_settings(self.tolerance)
+        wishes = RibWishes()
+        ribbed = Ribbed(
+            self.machine, self.section, stress, settings, self.watch, wishes, self.pictures
+        )
+        return write_results(ribbed, stage, self.tolerance, CHAPTERS)
 
 
 def _chain(

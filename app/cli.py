@@ -7,7 +7,7 @@ the program, 130 interrupted.
 
 import traceback
 from pathlib import Path
-from typing import Literal, NoReturn
+from typing import TYPE_CHECKING, Literal, NoReturn
 
 import click
 
@@ -15,6 +15,9 @@ from lamwright.geometry.errors import LamwrightError
 
 from .cli_start import start
 from .threads import hold_threads
+
+if TYPE_CHECKING:
+    from .rib_work import RibsReport
 
 FAULT = 70  # "internal software error" of the usual list of exit codes
 INTERRUPTED = 130  # as a shell reports a process ended by the interrupt key
@@ -79,6 +82,7 @@ def main() -> None:
     help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
 )
 @click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
+@click.option("--ribs", "with_ribs", is_flag=True, help="All that the command ribs tells, too.")
 @click.pass_context
 def assess(
     ctx: click.Context,
@@ -86,6 +90,7 @@ def assess(
     out: Path,
     tolerance: Literal["coarse", "normal", "fine"],
     pictures: bool,
+    with_ribs: bool,
 ) -> None:
     """Field, stress, verdict, pictures and punch outline of DESIGN.
 
@@ -94,10 +99,16 @@ def assess(
     from .run import assess as run
     from .screen import print_verdict, shown_progress
 
+    reports: list[RibsReport] = []
+    on_ribs = reports.append if with_ribs else None
     with shown_progress() as progress:
-        verdict = run(design, out, progress, tolerance, pictures)
+        verdict = run(design, out, progress, tolerance, pictures, on_ribs)
     print_verdict(verdict, str(out))
-    ctx.exit(0 if verdict.passes else 1)
+    for report in reports:
+        from .rib_screen import print_ribs
+
+        print_ribs(report, str(out))
+    ctx.exit(0 if verdict.passes and all(report.passes for report in reports) else 1)
 
 
 @main.command("map")

@@ -5,6 +5,7 @@ refused at once. Then the workers are started: as copies of this process once it
 all need, or, where that is not safe, anew, their imports beside its own.
 """
 
+from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -13,15 +14,17 @@ from lamwright.postprocess.files import prepared_folder, staged
 from .drawings import read_marked
 from .lamination import section_of
 from .pool import Crew, spare_cores
-from .progress import Progress, Stopwatch, silent
+from .progress import SHARES, Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
     from lamwright.postprocess.verdict import Verdict
     from lamwright.solver.tolerance import ToleranceName
 
     from .desk import Desk
+    from .rib_work import RibsReport
 
 MOST_WORKERS = 3  # beside this process; a design has six chains to share
+SHARE_BEFORE_RIBS = 0.4  # of the wall time, measured on demo_24s4p_arc
 
 
 def assess(
@@ -30,6 +33,7 @@ def assess(
     progress: Progress = silent,
     tolerance: "ToleranceName" = "normal",
     pictures: bool = True,
+    on_ribs: "Callable[[RibsReport], None] | None" = None,
 ) -> "Verdict":
     """Assess the design in the file `path`; all results go to the folder `out`.
 
@@ -39,6 +43,8 @@ def assess(
         progress: called with the phase and the share done.
         tolerance: how fine to mesh; `solver.tolerance` says what each name promises.
         pictures: whether to draw the figures, 40 % of the processors' time.
+        on_ribs: called with what `ribs` would say, whose files then go to the folder too; without
+            it they are not made.
 
     Returns:
         The verdict, as written to `verdict.json`.
@@ -48,7 +54,7 @@ def assess(
         LamwrightError: the folder cannot be written.
         NotConverged: an iteration did not end; with its history.
     """
-    watch = Stopwatch(progress)
+    watch = Stopwatch(progress, SHARES if on_ribs is None else _shares_with_ribs())
     machine = read_marked(Path(path), Path(out))
     section = section_of(machine)
     folder = prepared_folder(Path(out))
@@ -57,7 +63,15 @@ def assess(
     with crew, staged(folder) as stage:
         from .assessment import Assessment
 
-        return Assessment(machine, section, crew, watch, tolerance, pictures).written_to(stage)
+        work = Assessment(machine, section, crew, watch, tolerance, pictures, on_ribs)
+        return work.written_to(stage)
+
+
+def _shares_with_ribs() -> dict[str, float]:
+    from .rib_chapters import CHAPTERS
+
+    own = {phase: (1.0 - SHARE_BEFORE_RIBS) / len(CHAPTERS) for phase, _ in CHAPTERS}
+    return {phase: SHARE_BEFORE_RIBS * share for phase, share in SHARES.items()} | own
 
 
 def make_desk() -> "Desk":

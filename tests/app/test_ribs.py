@@ -96,6 +96,22 @@ def test_what_is_missing_is_named(ran, record):
         assert line in ran[0].output
 
 
+def test_assess_tells_the_same_when_asked(record, tmp_path):
+    """`assess --ribs` adds the files of `ribs`, with the same figures, to its own.
+
+    Plastic and modal figures come from iterations on the same stress, hence no tolerance at all.
+    """
+    line = ["assess", str(DEMO), "--out", str(tmp_path), "--tolerance", "coarse", "--no-pictures"]
+    result = CliRunner().invoke(main, [*line, "--ribs"])
+    assert result.exit_code == 0, result.output
+    assert "burst by limit load" in result.output
+    own = json.loads((tmp_path / "ribs.json").read_text())
+    assert {**own, "seconds": {}} == {**record, "seconds": {}}
+    verdict = json.loads((tmp_path / "verdict.json").read_text())
+    assert verdict["yield_margin"] == own["yield_margin"]
+    assert (tmp_path / "modes.csv").exists()
+
+
 @pytest.mark.parametrize("share", [-0.1, 1.5, float("nan")])
 def test_an_impossible_share_is_refused(share, tmp_path):
     """One line, before anything is solved or written."""
