@@ -104,13 +104,17 @@ def test_model_meets_full_solutions(run):
         assert report.checks[k].rms < 0.1 * report.checks[k].spread
 
 
-def test_workers_do_not_change_results_and_seeds_do(run, tmp_path):
-    """Two processes: the same numbers to the last bit; another seed: other machines."""
+def test_workers_do_not_change_results(run, tmp_path):
+    """Two processes: the same machines and the same numbers, to rounding.
+
+    A process with a history may round its stress otherwise than a new worker: 6e-13 was seen in the
+    whole suite, nothing in processes that are both new. Another start of Newton's makes 1e-6.
+    """
     first, _ = run
     path = written(tmp_path, TOLERANCE)
     second = spread(path, tmp_path / "out", quick(2))
-    assert np.array_equal(first.values, second.values)
-    assert np.array_equal(first.solved, second.solved)
+    assert second.values == pytest.approx(first.values, rel=1e-10)
+    assert second.solved == pytest.approx(first.solved, rel=1e-10)
 
 
 @pytest.mark.parametrize(

@@ -235,23 +235,23 @@ def test_lines_of_keys_in_every_form_toml_has():
         (
             "b_t = [0.1, 0.2, 0.3",
             "b_t = [0.1, 0.2, 0.2",
-            ":26: magnetisation.b_t[3] = 0.2: not above the value before it (0.2)",
+            ":36: magnetisation.b_t[3] = 0.2: not above the value before it (0.2)",
         ),
         (
             "h_a_per_m = [34.0, 47.0",
             "h_a_per_m = [34.0, 30.0",
-            ":27: magnetisation.h_a_per_m[2] = 30: not above the value before it (34)",
+            ":37: magnetisation.h_a_per_m[2] = 30: not above the value before it (34)",
         ),
         (
             "h_a_per_m = [34.0, ",
             "h_a_per_m = [",
-            ":27: magnetisation.h_a_per_m = 28: number of points, but b_t has 29; "
+            ":37: magnetisation.h_a_per_m = 28: number of points, but b_t has 29; "
             "accepted one H for each B",
         ),
         (
             "2.05, 2.1]",
             "2.05, 2100.0]",
-            ":26: magnetisation.b_t[29] = 2100: beyond any sheet steel; accepted tesla, up to 10",
+            ":36: magnetisation.b_t[29] = 2100: beyond any sheet steel; accepted tesla, up to 10",
         ),
         (
             "value = 0.3",
@@ -268,7 +268,7 @@ def test_lines_of_keys_in_every_form_toml_has():
         (
             "b_t = [0.1,",
             "b_t = [-0.1,",
-            ":26: magnetisation.b_t[1] = -0.1: too small; accepted a number above 0",
+            ":36: magnetisation.b_t[1] = -0.1: too small; accepted a number above 0",
         ),
         (
             'source = "invented, plausible"',
