@@ -37,6 +37,7 @@ SHARES = {
     "pictures": 0.03,
 }
 CHAPTER_SHARE = 0.02
+INTERRUPTED = "interrupted; the points so far are kept: the same command goes on from there"
 
 
 def map_design(
@@ -68,6 +69,7 @@ def map_design(
         LamwrightError: a grid that cannot be, a folder that cannot be written, or one that holds
             the points of another map.
         NotConverged: an iteration did not end; what is committed stays.
+        KeyboardInterrupt: with a line for the user; what is committed stays.
     """
     if workers is not None and not 1 <= workers <= MOST_WORKERS:
         raise LamwrightError(f"--workers {workers}: accepted 1 to {MOST_WORKERS}")
@@ -85,11 +87,18 @@ def map_design(
     with PointStore(folder, run_of(machine, grid, tolerance)) as store:
         with watch.phase("start"):
             crew = Crew(make_desk, workers or spare_cores() + 1)
-        with crew:
-            mapped, solved = mapped_machine(machine, section, grid, store, crew, watch, tolerance)
-            mapped = replace(mapped, eccentricity=eccentricity, control=control or mapped.control)
-            with staged(folder, MAP_FILE) as stage:
-                return write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
+        try:
+            with crew:
+                mapped, solved = mapped_machine(
+                    machine, section, grid, store, crew, watch, tolerance
+                )
+                mapped = replace(
+                    mapped, eccentricity=eccentricity, control=control or mapped.control
+                )
+                with staged(folder, MAP_FILE) as stage:
+                    return write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
+        except KeyboardInterrupt:
+            raise KeyboardInterrupt(INTERRUPTED) from None
 
 
 def _eccentricity(wish_mm: float | None, section: "CrossSection") -> float | None:
