@@ -116,10 +116,10 @@ class Assessment:
             compose = partial(stress_figure, name, section, stress.solution, stress.report)
             drawn += self._drawn(stage, "stress", compose)
         watch.meanwhile("stress", stress.seconds)
-        outline = outline_to_come.result()
-        watch.meanwhile("outline", outline.seconds)
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields, by_step)
+            outline = outline_to_come.result()  # only now: there was work to share before
+        watch.meanwhile("outline", outline.seconds)
         magnets = self._magnets(model)
         waves = (field for step in by_step for field in step)
         solved = (*found.fields, *waves, *(f for work in magnets for f in work.fields))

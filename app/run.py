@@ -60,9 +60,8 @@ def assess(
     folder = prepared_folder(Path(out))
     with watch.phase("start"):
         crew = Crew(make_desk, min(spare_cores(), MOST_WORKERS))
-    with crew, staged(folder) as stage:
         from .assessment import Assessment
-
+    with crew, staged(folder) as stage:
         work = Assessment(machine, section, crew, watch, tolerance, pictures, on_ribs)
         return work.written_to(stage)
 

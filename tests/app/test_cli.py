@@ -115,7 +115,7 @@ def test_tolerance_reaches_the_assessment(name, tmp_path, monkeypatch):
     """The name asked for is the one assessed with; another is bad input that lists the three."""
     asked = []
     monkeypatch.setattr(
-        run, "assess", lambda *given: asked.append(given[-2:]) or invented.verdict()
+        run, "assess", lambda *given: asked.append(given[3:5]) or invented.verdict()
     )
     assert invoke("assess", DEMO, "--out", tmp_path, "--tolerance", name).exit_code == 0
     without = invoke("assess", DEMO, "--out", tmp_path, "--tolerance", name, "--no-pictures")
