@@ -63,6 +63,10 @@ _FINENESS = click.option(
     help="How fine to mesh, as of assess.",
 )
 
+_PICTURES = click.option(
+    "--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]"
+)
+
 
 @click.group(cls=_Front, context_settings={"help_option_names": ["-h", "--help"]})
 @click.version_option(package_name="lamwright", message="%(prog)s %(version)s")
@@ -81,7 +85,7 @@ def main() -> None:
     show_default=True,
     help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
 )
-@click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
+@_PICTURES
 @click.option("--ribs", "with_ribs", is_flag=True, help="All that the command ribs tells, too.")
 @click.pass_context
 def assess(
@@ -212,7 +216,7 @@ def slopes(design: Path, out: Path) -> None:
     show_default=True,
     help="Largest error of rib stress: 5; 2; 0.5 %.",
 )
-@click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
+@_PICTURES
 @click.option("--overspeed-share", default=0.0, help="Share of starts to overspeed.  [default: 0]")
 @click.option("--teeth-mass-factor", type=float, help="Wound over bare stator teeth, by mass.")
 @click.option("--thin", is_flag=True, help="Find the thinnest ribs that hold the yield margin.")

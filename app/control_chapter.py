@@ -30,7 +30,8 @@ from lamwright.postprocess.netcdf import write_netcdf
 from lamwright.postprocess.quantities import RPM
 from lamwright.postprocess.terminals import terminals
 
-from .mapped import Chapter, Mapped
+from .chapter import Chapter
+from .mapped import Mapped
 from .version import version
 
 TABLE_FILE, INVERSE_FILE = "control_table.csv", "inverse_map.csv"

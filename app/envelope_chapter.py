@@ -38,8 +38,9 @@ from lamwright.postprocess.voltage_run import (
 )
 from lamwright.solver.types import FloatArray
 
+from .chapter import Chapter
 from .known_losses import known_losses
-from .mapped import Chapter, Mapped
+from .mapped import Mapped
 
 if TYPE_CHECKING:
     pass

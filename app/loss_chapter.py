@@ -55,9 +55,10 @@ from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.model import joined_parts
 from lamwright.solver.types import FieldSolution, FloatArray
 
+from .chapter import Chapter
 from .known_losses import turning_of
 from .map_losses import laws_of
-from .mapped import Chapter, Mapped
+from .mapped import Mapped
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance

@@ -13,6 +13,7 @@ from lamwright.geometry.errors import LamwrightError
 from .lines import valued
 from .map_grid import GridWishes
 from .mapping import MapReport
+from .report_screen import print_ending
 
 MOST_LISTED = 10_000  # characters of a list of currents
 
@@ -68,10 +69,4 @@ def print_map(report: MapReport, folder: str) -> None:
     if counts:
         told = ", ".join(f"{figure.label} {figure.value}" for figure in counts.values())
         console.print(f"[dim]{told}[/dim]", soft_wrap=True)
-    for line in report.not_given:
-        console.print(f"[yellow]not given:[/yellow] {escape(line)}", soft_wrap=True)
-    for line in report.cautions:
-        console.print(f"[dim]- {escape(line)}[/dim]", soft_wrap=True)
-    times = ", ".join(f"{phase} {seconds:.1f}" for phase, seconds in report.seconds.items())
-    console.print(f"[dim]where the time goes, s: {times}[/dim]", soft_wrap=True)
-    console.print(f"[dim]~ estimate by formula; files in[/dim] {escape(folder)}", soft_wrap=True)
+    print_ending(console, report.not_given, report.cautions, report.seconds, folder)

@@ -1,9 +1,8 @@
-"""What every chapter of `map` is given, and what it gives back."""
+"""What every chapter of `map` is given."""
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
@@ -12,13 +11,11 @@ from lamwright.postprocess.flux_map import FluxMap
 from lamwright.postprocess.iron_loss_map import IronLossMap
 from lamwright.solver.field import MagneticModel
 
+from .chapter import Chapter
 from .control_wishes import ControlWishes
 from .desk import Desk
 from .pool import Crew
 from .progress import Stopwatch
-
-if TYPE_CHECKING:
-    from _typeshed import DataclassInstance
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -35,15 +32,6 @@ class Mapped:
     watch: Stopwatch
     eccentricity: float | None = None  # m, of the rotor's axis beside the stator's; if asked for
     control: ControlWishes = field(default_factory=ControlWishes)
-
-
-@dataclass(frozen=True, slots=True)
-class Chapter:
-    """What a chapter adds to `map.json`; its tables and pictures it has written itself."""
-
-    figures: "tuple[DataclassInstance, ...]"  # groups with fields made by `quantities.shown_as`
-    cautions: tuple[str, ...] = ()
-    not_given: tuple[str, ...] = ()  # figures that lack an input, each with what is missing
 
 
 # The machine and the hidden folder whose files move to the results when all chapters are done.

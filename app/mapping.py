@@ -2,11 +2,11 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine, design_hash
-from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
@@ -21,6 +21,7 @@ from lamwright.postprocess.skew import skew_cautions
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 
+from .chapter import made_chapter
 from .desk import Desk
 from .map_errors import map_errors
 from .map_grid import MapGrid
@@ -28,7 +29,7 @@ from .map_losses import harvest_of, laws_of, loss_map_of
 from .map_point import MapTask
 from .map_store import PointStore
 from .map_work import compute_points, flux_map_of, harvests_of
-from .mapped import Chapter, ChapterMaker, Mapped
+from .mapped import ChapterMaker, Mapped
 from .point import model_of
 from .pool import Crew
 from .progress import Stopwatch
@@ -114,7 +115,9 @@ def write_results(
         most = machine.design.duty.most_current_a
         name = machine.design.name
         write_map_figure(stage, DrawnMap(name, flux_map, mapped.surface, figures, most))
-    chapters = [_chapter(mapped, stage, name, write) for name, write in makers]
+    chapters = [
+        made_chapter(mapped.watch, name, partial(write, mapped, stage)) for name, write in makers
+    ]
     own: list[DataclassInstance] = [
         _counts(flux_map, solved),
         figures,
@@ -150,15 +153,6 @@ def write_results(
     )
     write_text(stage / MAP_FILE, json_text(_record(report, machine, tolerance)))
     return report
-
-
-def _chapter(mapped: Mapped, stage: Path, name: str, write: ChapterMaker) -> Chapter:
-    """What a chapter adds; one that cannot be is told as not given, the others stand."""
-    with mapped.watch.phase(name):
-        try:
-            return write(mapped, stage)
-        except LamwrightError as error:
-            return Chapter((), (), (f"{name}: {error}",))
 
 
 def _counts(flux_map: FluxMap, solved: int) -> MapCounts:

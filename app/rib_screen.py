@@ -13,6 +13,7 @@ from rich.text import Text
 from lamwright.postprocess.rib_tables import shown_ribs
 
 from .lines import number, valued
+from .report_screen import print_ending
 from .rib_work import RibsReport
 from .thin_screen import THIN_TABLE, thin_screen
 
@@ -44,13 +45,7 @@ def print_ribs(report: RibsReport, folder: str) -> None:
         told = fact if isinstance(fact, str) else ("yes" if fact else "no")
         console.print(f"{key.replace('_', ' ')}: {escape(told)}", soft_wrap=True)
     console.print(_verdict_line(report))
-    for line in report.not_given:
-        console.print(f"[yellow]not given:[/yellow] {escape(line)}", soft_wrap=True)
-    for line in report.cautions:
-        console.print(f"[dim]- {escape(line)}[/dim]", soft_wrap=True)
-    times = ", ".join(f"{phase} {seconds:.1f}" for phase, seconds in report.seconds.items())
-    console.print(f"[dim]where the time goes, s: {times}[/dim]", soft_wrap=True)
-    console.print(f"[dim]~ estimate by formula; files in[/dim] {escape(folder)}", soft_wrap=True)
+    print_ending(console, report.not_given, report.cautions, report.seconds, folder)
 
 
 def _ribs_table(report: RibsReport) -> Table:

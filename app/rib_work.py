@@ -2,10 +2,10 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
-from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.files import json_text
@@ -15,8 +15,8 @@ from lamwright.postprocess.rib_tables import RibRow, rib_rows, ribs_csv
 from lamwright.postprocess.verdict import RPM
 from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 
+from .chapter import made_chapter
 from .desk import Desk
-from .mapped import Chapter
 from .progress import Stopwatch
 from .ribbed import Ribbed, RibChapter, RibChapterMaker, RibWishes, Rows
 from .version import version
@@ -89,7 +89,7 @@ def write_results(
 ) -> RibsReport:
     """All files into `stage`, with those of the chapters; returns what `ribs.json` says."""
     machine, watch = ribbed.machine, ribbed.watch
-    chapters = [_chapter(ribbed, stage, name, write) for name, write in makers]
+    chapters = [made_chapter(watch, name, partial(write, ribbed, stage)) for name, write in makers]
     whole = [chapter for chapter in chapters if isinstance(chapter, RibChapter)]
     groups = [chapter.of_ribs for chapter in whole if chapter.of_ribs]
     report = RibsReport(
@@ -126,15 +126,6 @@ def write_results(
     write_text(stage / TABLE_FILE, ribs_csv(report.ribs))
     write_text(stage / RIBS_FILE, json_text(_record(report, machine, tolerance)))
     return report
-
-
-def _chapter(ribbed: Ribbed, stage: Path, name: str, write: RibChapterMaker) -> Chapter:
-    """What a chapter adds; one that cannot be is told as not given, the others stand."""
-    with ribbed.watch.phase(name):
-        try:
-            return write(ribbed, stage)
-        except LamwrightError as error:
-            return Chapter((), (), (f"{name}: {error}",))
 
 
 def _record(report: RibsReport, machine: Machine, tolerance: ToleranceName) -> dict[str, object]:

@@ -10,8 +10,8 @@ from lamwright.geometry.section import CrossSection
 from lamwright.postprocess.verdict import RPM
 from lamwright.solver.rotor_stress import StressSettings
 
+from .chapter import Chapter
 from .desk import StressWork
-from .mapped import Chapter
 from .progress import Stopwatch
 
 if TYPE_CHECKING:

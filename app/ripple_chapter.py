@@ -52,7 +52,8 @@ from lamwright.postprocess.torque import spectrum
 from lamwright.postprocess.torque_causes import order_cause, slotting
 from lamwright.postprocess.torque_pairs import largest_pairs
 
-from .mapped import Chapter, Mapped
+from .chapter import Chapter
+from .mapped import Mapped
 from .ripple_work import DEFAULT_SHARE, RippleWork, highest_order, ripple_work, slot_skew
 
 if TYPE_CHECKING:

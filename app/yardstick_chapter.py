@@ -35,9 +35,10 @@ from lamwright.postprocess.yardsticks import (
 from lamwright.solver.field import MagneticModel, solve_point
 from lamwright.solver.types import FieldSolution
 
+from .chapter import Chapter
 from .desk import Desk
 from .ideal_rotor import IdealRotor, ideal_rotor, round_model
-from .mapped import Chapter, Mapped
+from .mapped import Mapped
 from .pool import Crew
 
 CSV_FILE = "yardsticks.csv"

@@ -17,6 +17,7 @@ from lamwright.geometry.section import CrossSection, pole_of, rotor_cell
 from lamwright.solver.start_stop import NO_FLOW
 from lamwright.solver.types import FloatArray, IntArray
 
+from .figures_close_up import frame_close_up, head_close_up, open_close_up
 from .figures_labels import RULER_FOOT, Callout, Side, draw_note, draw_ruler, place_callouts
 from .figures_section import bare, pole_words
 from .figures_stress import LETTERS, RPM, draw_outline, numbered_rib, rib_name, rotor_silhouette
@@ -87,9 +88,7 @@ def draw_plastic_rib(
     section = rotor_cell(section)
     turn = upright(section)
     middle, half = MM * turn * 0.5 * (row.rib.start + row.rib.end), _half_side(row)
-    ax.set_aspect("equal", adjustable="box")
-    ax.set_xlim(middle.real - half, middle.real + half)
-    ax.set_ylim(middle.imag - half, middle.imag + half)
+    open_close_up(ax, middle, half)
     near = np.abs(_corners(study, turn) - middle).min(axis=1) < 2.0 * half
     _draw_zones(ax, study, np.flatnonzero(near), turn)
     draw_outline(ax, section, turn, style)
@@ -98,18 +97,12 @@ def draw_plastic_rib(
         if math.isfinite(row.largest_strain)
         else "tears in the collapse"
     )
-    ax.set_title(
+    head_close_up(
+        ax,
         f"{letter}: {rib_name(row.rib, section.ribs)}, {MM * row.rib.width:.2f} mm\n"
         f"{PERCENT * row.section_share:.0f} % of its section yielded, {strain}",
-        fontsize=style.text,
-        color=style.ink,
-        loc="left",
-        pad=4.0,
+        style,
     )
-    ax.set_xticks([])
-    ax.set_yticks([])
-    for spine in ax.spines.values():
-        spine.set(color=style.ink, linewidth=style.outline)
 
 
 def strain_limit(study: PlasticStudy) -> float:
@@ -192,25 +185,5 @@ def _half_side(row: PlasticRib) -> float:
 
 
 def _draw_frame(ax: Axes, row: PlasticRib, letter: str, turn: complex, style: Style) -> None:
-    from matplotlib.patches import Rectangle
-    from matplotlib.patheffects import Normal, Stroke
-
-    middle, half = MM * turn * 0.5 * (row.rib.start + row.rib.end), _half_side(row)
-    frame = Rectangle(
-        (middle.real - half, middle.imag - half), 2 * half, 2 * half, fill=False, zorder=7
-    )
-    frame.set(edgecolor=style.ink, linewidth=style.outline)
-    ax.add_artist(frame)
-    inward = -1.0 if middle.real > 0.0 else 1.0
-    ax.text(
-        middle.real + inward * half,
-        middle.imag - 1.15 * half,
-        letter,
-        fontsize=style.text,
-        fontweight="bold",
-        color=style.ink,
-        ha="right" if inward > 0.0 else "left",
-        va="top",
-        path_effects=[Stroke(linewidth=2.0, foreground=style.paper), Normal()],
-        zorder=9,
-    )
+    middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
+    frame_close_up(ax, middle, _half_side(row), letter, style)

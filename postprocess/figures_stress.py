@@ -19,6 +19,7 @@ from lamwright.geometry.section import CrossSection, Rib, base_name, pole_of, ro
 from lamwright.solver.isoparametric import boundary_edges
 from lamwright.solver.types import IntArray, StressSolution
 
+from .figures_close_up import frame_close_up, head_close_up, open_close_up
 from .figures_labels import RULER_FOOT, Callout, Side, draw_note, draw_ruler, place_callouts
 from .figures_section import bare, pole_words
 from .figures_sector import draw_cut
@@ -113,9 +114,7 @@ def draw_rib(
     turn = upright(section)
     middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
     half = _half_side(row)
-    ax.set_aspect("equal", adjustable="box")
-    ax.set_xlim(middle.real - half, middle.real + half)
-    ax.set_ylim(middle.imag - half, middle.imag + half)
+    open_close_up(ax, middle, half)
     at = MM * turn * _places(solution)[solution.mesh.elements]
     near = np.abs(at - middle).min(axis=1) < 2.0 * half
     _draw_field(ax, solution, np.flatnonzero(near), turn, style)
@@ -133,18 +132,12 @@ def draw_rib(
         path_effects=[Stroke(linewidth=3.2, foreground=style.paper), Normal()],
         zorder=9,
     )
-    ax.set_title(
+    head_close_up(
+        ax,
         f"{letter}: {rib_name(row.rib, section.ribs)}, yield margin {row.yield_margin:.2f}\n"
         f"peak {mpa(row.peak)}, mean tension {mpa(row.mean_tension)}",
-        fontsize=style.text,
-        color=style.ink,
-        loc="left",
-        pad=4.0,
+        style,
     )
-    ax.set_xticks([])
-    ax.set_yticks([])
-    for spine in ax.spines.values():
-        spine.set(color=style.ink, linewidth=style.outline)
 
 
 def stress_limit(solution: StressSolution) -> float:
@@ -308,28 +301,8 @@ def _half_side(row: RibStress) -> float:
 
 
 def _draw_frame(ax: Axes, row: RibStress, letter: str, turn: complex, style: Style) -> None:
-    from matplotlib.patches import Rectangle
-    from matplotlib.patheffects import Normal, Stroke
-
-    middle, half = MM * turn * 0.5 * (row.rib.start + row.rib.end), _half_side(row)
-    corner = (middle.real - half, middle.imag - half)
-    frame = Rectangle(corner, 2 * half, 2 * half, fill=False, zorder=7)
-    frame.set(edgecolor=style.ink, linewidth=style.outline)
-    ax.add_artist(frame)
-    # Below, at the end towards the q axis: labels stand outside of the pole, peaks in the frame.
-    inward = -1.0 if middle.real > 0.0 else 1.0
-    ax.text(
-        middle.real + inward * half,
-        middle.imag - 1.15 * half,
-        letter,
-        fontsize=style.text,
-        fontweight="bold",
-        color=style.ink,
-        ha="right" if inward > 0.0 else "left",
-        va="top",
-        path_effects=[Stroke(linewidth=2.0, foreground=style.paper), Normal()],
-        zorder=9,
-    )
+    middle = MM * turn * 0.5 * (row.rib.start + row.rib.end)
+    frame_close_up(ax, middle, _half_side(row), letter, style)
 
 
 def _draw_width(ax: Axes, row: RibStress, turn: complex, style: Style) -> None:

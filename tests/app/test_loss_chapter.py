@@ -7,8 +7,9 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from lamwright.app.chapter import Chapter
 from lamwright.app.loss_chapter import loss_chapter
-from lamwright.app.mapped import Chapter, Mapped
+from lamwright.app.mapped import Mapped
 from lamwright.app.pool import Crew
 from lamwright.app.progress import Stopwatch
 from lamwright.geometry.design_file import Machine
