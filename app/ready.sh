@@ -87,8 +87,8 @@ install_project() {
     else
         say "installing the tools for tests"
         # The second finite element library has no wheel for some systems; its tests then skip.
-        install --only-binary ngsolve,netgen-mesher,netgen-occt -e "${root}[dev,independent]" ||
-            install -e "${root}[dev]" || give_up "the installation failed"
+        install --only-binary ngsolve,netgen-mesher,netgen-occt -e "${root}[dev,independent,cluster]" ||
+            install -e "${root}[dev,cluster]" || give_up "the installation failed"
         printf '%s\n' "$state" >"$venv/ready-core"
     fi
     printf '%s\n' "$state" >"$stamp"
