@@ -27,7 +27,7 @@ LONGEST = 400  # lines of a file: one sitting
 OWNERS = {
     "gmsh": ("solver/mesh*.py",),
     "ezdxf": ("geometry/dxf*.py",),
-    "matplotlib": ("postprocess/figures*.py",),
+    "matplotlib": ("postprocess/figures*.py", "postprocess/sheet*.py"),
     "cvxopt": ("solver/linear.py",),
     "h5netcdf": ("postprocess/netcdf.py",),
     "h5py": ("postprocess/netcdf.py",),
