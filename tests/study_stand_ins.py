@@ -1,0 +1,63 @@
+"""Stand-ins for the evaluation of a design, importable by name in worker processes."""
+
+import hashlib
+import os
+import signal
+import sys
+import time
+from collections.abc import Sequence
+from pathlib import Path
+
+from lamwright.app.evaluation import Evaluation
+from lamwright.app.study_task import Task
+
+
+def doubled(number: int) -> int:
+    return 2 * number
+
+
+def slept(seconds: float) -> int:
+    """Sleep; gives the process it happened in."""
+    time.sleep(seconds)
+    return os.getpid()
+
+
+def misbehaving(wish: str) -> str:
+    """Do what is asked, such as die or hang."""
+    what, _, more = wish.partition(" ")
+    if what == "die":
+        os.kill(os.getpid(), signal.SIGKILL)
+    if what == "exit":
+        os._exit(int(more))
+    if what == "die-once" and not Path(more).exists():  # at the first call with this file
+        Path(more).touch()
+        os.kill(os.getpid(), signal.SIGKILL)
+    if what == "hang":
+        time.sleep(1000.0)
+    if what == "raise":
+        raise ValueError(more)
+    if what == "leave":
+        sys.exit(3)
+    return f"{wish} done"
+
+
+def evaluated(task: Task) -> Evaluation:
+    """An evaluation whose figures follow from the values alone; its text says how to misbehave."""
+    misbehaving(task.design_text)
+    x, y = (float(value) for value in task.values.values())
+    figures = {"torque_nm": x * y, "torque_ripple_percent": abs(x - y)}
+    return Evaluation("done", figures=figures, passes=x * y > 4.0, seconds=0.0)
+
+
+def stand_in_tasks(wishes: Sequence[str]) -> list[Task]:
+    """A task for each wish."""
+    return [
+        Task(
+            hash=hashlib.sha256(f"{k} {wish}".encode()).hexdigest(),
+            values={"rotor.gap_mm": 0.3 + 0.1 * k, "rotor.outer_diameter_mm": 80.0 - k},
+            design_name="stand_in.toml",
+            design_text=wish,
+            cards={},
+        )
+        for k, wish in enumerate(wishes)
+    ]
