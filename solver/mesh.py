@@ -276,7 +276,7 @@ def _run_gmsh(
     # Begun anew each time (1 ms): a second mesh of the same regions in one process was another.
     is_ours = not gmsh.isInitialized()
     if is_ours:
-        _initialise()
+        begin_gmsh()
     for option, value in {
         "General.Terminal": 0,
         "General.NumThreads": 1,
@@ -315,7 +315,7 @@ def _run_gmsh(
     return tags, coords, found
 
 
-def _initialise() -> None:
+def begin_gmsh() -> None:
     """Begin gmsh without its side effects on the process.
 
     It makes SIGPIPE end the process without a word, where Python has the write fail: a reader of
