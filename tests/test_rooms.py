@@ -36,6 +36,8 @@ OWNERS = {
     "pebble": ("app/study_workers.py",),
     "distributed": ("app/study_cluster*.py",),
     "dask": ("app/study_cluster*.py",),
+    "pymoo": ("app/search*.py",),
+    "moocore": ("app/search*.py",),
     "click": ("app/*.py",),
     "rich": ("app/*.py",),
     "pydantic": ("geometry/design*.py",),
