@@ -14,6 +14,7 @@ import click
 from lamwright.geometry.errors import LamwrightError
 
 from .cli_start import start
+from .cli_study import sweep
 from .threads import hold_threads
 
 if TYPE_CHECKING:
@@ -369,3 +370,4 @@ def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
 
 
 main.add_command(start)
+main.add_command(sweep)

@@ -4,7 +4,7 @@ import sys
 import time
 from collections import deque
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import AbstractContextManager, contextmanager
 from typing import TYPE_CHECKING
 
 import click
@@ -14,6 +14,7 @@ from rich.markup import escape
 if TYPE_CHECKING:
     from .ledger_rows import Row
     from .study import Study, StudyGoal
+    from .study_run import OnRow
 
 BETWEEN_LINES_S = 10.0
 MOST_TOLD = 20  # failures told one by one
@@ -76,7 +77,7 @@ class StudyProgress:
         if (rate := self.rate) is not None:
             parts.append(f"{_rate(rate)}")
             if self.total is not None and self.done < self.total:
-                parts.append(f"{_time((self.total - self.done) / rate)} left")
+                parts.append(f"{time_text((self.total - self.done) / rate)} left")
         if self.known:
             parts.append(f"{self.known} known before")
         if self.rejected:
@@ -100,8 +101,13 @@ class StudyProgress:
         return new > old if goal.sense == "most" else new < old
 
 
+def watched(what: str) -> "Callable[[Study, int | None], AbstractContextManager[OnRow]]":
+    """Shows the progress of `what`, for `sweep.Watch`."""
+    return lambda study, total: shown(StudyProgress(study, total), what)
+
+
 @contextmanager
-def shown(progress: StudyProgress, what: str) -> "Iterator[Callable[[Row, bool], None]]":
+def shown(progress: StudyProgress, what: str) -> "Iterator[OnRow]":
     """What to call for each row, so that the user sees the progress of `what`."""
     if not sys.stderr.isatty():
         yield _Lines(progress, what)
@@ -155,7 +161,7 @@ def _rate(rate: float) -> str:
     return f"{rate:.3g}/s" if rate >= 1.0 else f"{60.0 * rate:.3g}/min"
 
 
-def _time(seconds: float) -> str:
+def time_text(seconds: float) -> str:
     """Seconds as a person says them."""
     whole = round(seconds)
     if whole < 60:
