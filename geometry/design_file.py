@@ -150,6 +150,21 @@ def design_hash(design: MachineDesign, cards: tuple[SteelCard | MagnetCard, ...]
     return hashlib.sha256(canonical.encode()).hexdigest()
 
 
+def read_tables(path: Path, model: type[_Model]) -> tuple[_Model, str]:
+    """The validated tables of another kind of file, and its text.
+
+    Raises:
+        DesignError: the file cannot be read or used; one line for each fault.
+    """
+    text = _text(path)
+    return _validated(path, text, model), text
+
+
+def faults_at(path: Path, text: str, found: Sequence[tuple[KeyPath, str]]) -> DesignError:
+    """Faults of keys as an error that names the file and the line of each."""
+    return DesignError(_lines_text(path, text, found))
+
+
 def placed(findings: tuple[Finding, ...], path: Path) -> DesignError:
     """The findings of a check as an error that names the file and the line of each key."""
     return DesignError(_placed_text(findings, path, _text(path)))

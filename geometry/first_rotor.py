@@ -18,7 +18,7 @@ from .errors import DesignError
 from .first_barriers import PlacedBarrier, PoleRoom, placed_barriers
 from .first_ribs import RibLaw, RibLoad, RibWidths, rib_loads, rib_stresses, rib_widths
 from .first_ripple import TorqueEstimate, estimated_torque_of, gap_model
-from .first_spread import Spread, is_avoided, spreads
+from .first_spread import EvenEnds, Spread, is_avoided, spreads
 from .rotor_checks import rotor_faults
 
 INSULATIONS = (0.40, 0.36, 0.32, 0.28)  # tried in this order
@@ -105,7 +105,7 @@ def first_rotor(design: MachineDesign, needs: RotorNeeds) -> FirstRotor:
 
 
 def first_that_fits(
-    design: MachineDesign, needs: RotorNeeds, spread: Spread
+    design: MachineDesign, needs: RotorNeeds, spread: Spread | EvenEnds
 ) -> tuple[float, tuple[FirstBarrier, ...]] | str:
     """The most air with which a spread passes the checks of shape, or why none does."""
     why = ""
@@ -145,7 +145,7 @@ def pole_room(design: MachineDesign) -> PoleRoom:
 
 
 def laid_out(
-    design: MachineDesign, needs: RotorNeeds, spread: Spread, insulation: float
+    design: MachineDesign, needs: RotorNeeds, spread: Spread | EvenEnds, insulation: float
 ) -> tuple[FirstBarrier, ...] | str:
     """Barriers and ribs for one spread, or why they cannot be."""
     room, law = pole_room(design), RibLaw()
@@ -178,7 +178,10 @@ def laid_out(
 
 
 def _tables(
-    design: MachineDesign, spread: Spread, insulation: float, widths: Sequence[RibWidths]
+    design: MachineDesign,
+    spread: Spread | EvenEnds,
+    insulation: float,
+    widths: Sequence[RibWidths],
 ) -> tuple[BarrierDesign, ...] | str:
     """Barriers with ribs of given widths, checked, or the first reason why they cannot be."""
     room = pole_room(design)

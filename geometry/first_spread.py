@@ -48,6 +48,21 @@ class Spread:
         return math.ceil(left - 1e-9) - 1
 
 
+@dataclass(frozen=True, slots=True)
+class EvenEnds:
+    """Ends of the barriers of half a pole, equally spaced up to the last one, wherever it lies."""
+
+    barriers: int
+    last: float  # electrical angle from the q axis in rad
+    first_place: float = 0.5  # of the first end from the q axis, in spacings
+
+    @property
+    def ends(self) -> tuple[float, ...]:
+        """Electrical angles of the ends from the q axis in rad, from the outermost barrier's."""
+        spacing = self.last / (self.first_place + self.barriers - 1)
+        return tuple((self.first_place + k) * spacing for k in range(self.barriers))
+
+
 def even_spread(barriers: int) -> Spread:
     """Ends that share the half pole out evenly, whatever the slots: 90 / n degrees apart."""
     return Spread(barriers, 4 * barriers, is_half=True)
