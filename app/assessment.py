@@ -59,8 +59,9 @@ from .angle import AngleFound, most_torque
 from .desk import Desk, StressWork
 from .lamination import DXF_FILE
 from .magnet_work import MagnetWork, magnet_work
+from .outline_work import outlined
 from .point import model_of
-from .pool import Crew
+from .pool import Crew, Worker
 from .progress import Stopwatch
 from .version import version
 
@@ -77,6 +78,7 @@ class Assessment:
     machine: Machine
     section: CrossSection
     crew: Crew[Desk]
+    outliner: Worker[object] | None  # who writes the outline, if not the crew
     watch: Stopwatch
     tolerance: ToleranceName
     pictures: bool
@@ -91,7 +93,8 @@ class Assessment:
         stress_to_come = crew.start(
             Desk.stress, section, self.machine.rotor_steel, overspeed, stress_settings
         )
-        outline_to_come = crew.start(Desk.outline, section, stage / DXF_FILE)
+        start = crew.start if self.outliner is None else self.outliner.submit
+        outline_to_come = start(outlined, section, stage / DXF_FILE)
         with watch.phase("mesh"):
             sector = mesh_section(section, mesh_settings)
         with watch.phase("magnetic model"):

@@ -102,12 +102,14 @@ def assess(
     Ends with 0 when every limit of the design holds, with 1 when one is missed.
     """
     from .run import assess as run
-    from .screen import print_verdict, shown_progress
+    from .shown_progress import shown_progress
 
     reports: list[RibsReport] = []
     on_ribs = reports.append if with_ribs else None
     with shown_progress() as progress:
         verdict = run(design, out, progress, tolerance, pictures, on_ribs)
+    from .screen import print_verdict
+
     print_verdict(verdict, str(out))
     for report in reports:
         from .rib_screen import print_ribs
@@ -155,7 +157,7 @@ def flux_map(
     from .control_wishes import control_wishes
     from .map_run import map_design
     from .map_screen import print_map, wishes_of
-    from .screen import shown_progress
+    from .shown_progress import shown_progress
 
     wanted, control = wishes_of(wishes), control_wishes(table_size, c_format)
     with shown_progress() as progress:
@@ -246,7 +248,7 @@ def ribs(
     """
     from .rib_run import ribs_design
     from .rib_screen import print_ribs
-    from .screen import shown_progress
+    from .shown_progress import shown_progress
 
     with shown_progress() as progress:
         report = ribs_design(
@@ -281,7 +283,7 @@ def spread(
     workers: int | None,
 ) -> None:
     """What the tolerances of making do to DESIGN, and how many rotors hold its limits."""
-    from .screen import shown_progress
+    from .shown_progress import shown_progress
     from .spread import SpreadWishes
     from .spread import spread as run
     from .spread_screen import print_spread
@@ -330,7 +332,7 @@ def locked(
     """Torque and terminal inductance of DESIGN over the angle of a locked rotor fed with d.c."""
     from .locked import locked as run
     from .locked import print_locked
-    from .screen import shown_progress
+    from .shown_progress import shown_progress
 
     with shown_progress() as progress:
         found = run(design, out, currents, feed, step_deg, measured, zero_deg, progress, tolerance)

@@ -9,7 +9,6 @@ from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
 from lamwright.postprocess.figures import Composer, write_figure
-from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
@@ -19,7 +18,6 @@ from lamwright.solver.foreseen import Node
 from lamwright.solver.rotor_stress import StressSettings, rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
 
-from .lamination import write_outline
 from .map_point import MapDesk, MapTask, map_desk, solved_point
 from .map_store import PointRecord
 
@@ -32,14 +30,6 @@ class StressWork:
     report: RibReport
     finer: RibReport  # the same on a mesh four times as fine
     zone_errors: FloatArray  # (n_rib + 1,), relative errors of the peaks
-    seconds: float
-
-
-@dataclass(frozen=True, slots=True)
-class OutlineWork:
-    """How true the written outline is, and the wall time it took."""
-
-    figures: OutlineFigures
     seconds: float
 
 
@@ -105,12 +95,6 @@ class Desk:
             zone_errors=zone_errors,
             seconds=time.perf_counter() - began,
         )
-
-    def outline(self, section: CrossSection, path: Path) -> OutlineWork:
-        """Write the lamination as DXF."""
-        began = time.perf_counter()
-        figures = write_outline(section, path)
-        return OutlineWork(figures, time.perf_counter() - began)
 
     def figure(self, folder: Path, name: str, compose: Composer) -> None:
         """Draw a figure into the folder, twice: PNG and SVG."""

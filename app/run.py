@@ -1,7 +1,8 @@
 """One design to one folder, on as many cores as there are: `assess`.
 
-Nothing heavy is imported at the top: the design is read and drawn first, so that a broken one is
-refused at once. Then the workers are started: as copies of this process once it has imported what
+Nothing heavy is imported at the top. First a process is started that imports what writes the DXF,
+a second, beside this one's imports. Then the design is read and drawn, so that a broken one is
+refused at once, and the workers are started: as copies of this process once it has imported what
 all need, or, where that is not safe, anew, their imports beside its own.
 """
 
@@ -9,18 +10,15 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from lamwright.postprocess.files import prepared_folder, staged
-
-from .drawings import read_marked
-from .lamination import section_of
+from .outline_work import early_outliner
 from .pool import Crew, spare_cores
-from .progress import SHARES, Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
     from lamwright.postprocess.verdict import Verdict
     from lamwright.solver.tolerance import ToleranceName
 
     from .desk import Desk
+    from .progress import Progress
     from .rib_work import RibsReport
 
 MOST_WORKERS = 3  # beside this process; a design has six chains to share
@@ -30,7 +28,7 @@ SHARE_BEFORE_RIBS = 0.4  # of the wall time, measured on demo_24s4p_arc
 def assess(
     path: str | Path,
     out: str | Path,
-    progress: Progress = silent,
+    progress: "Progress | None" = None,
     tolerance: "ToleranceName" = "normal",
     pictures: bool = True,
     on_ribs: "Callable[[RibsReport], None] | None" = None,
@@ -54,19 +52,29 @@ def assess(
         LamwrightError: the folder cannot be written.
         NotConverged: an iteration did not end; with its history.
     """
-    watch = Stopwatch(progress, SHARES if on_ribs is None else _shares_with_ribs())
-    machine = read_marked(Path(path), Path(out))
-    section = section_of(machine)
-    folder = prepared_folder(Path(out))
-    with watch.phase("start"):
-        crew = Crew(make_desk, min(spare_cores(), MOST_WORKERS))
-        from .assessment import Assessment
-    with crew, staged(folder) as stage:
-        work = Assessment(machine, section, crew, watch, tolerance, pictures, on_ribs)
-        return work.written_to(stage)
+    with early_outliner() as hired:
+        from lamwright.postprocess.files import prepared_folder, staged
+
+        from .drawings import read_marked
+        from .lamination import section_of
+        from .progress import SHARES, Stopwatch, silent
+
+        shares = SHARES if on_ribs is None else _shares_with_ribs()
+        watch = Stopwatch(progress or silent, shares)
+        machine = read_marked(Path(path), Path(out))
+        section = section_of(machine)
+        folder = prepared_folder(Path(out))
+        with watch.phase("start"):
+            crew = Crew(make_desk, min(spare_cores(), MOST_WORKERS))
+            from .assessment import Assessment
+        with crew, staged(folder) as stage:
+            outliner = hired()  # only now: its threads here would forbid the crew's copies
+            work = Assessment(machine, section, crew, outliner, watch, tolerance, pictures, on_ribs)
+            return work.written_to(stage)
 
 
 def _shares_with_ribs() -> dict[str, float]:
+    from .progress import SHARES
     from .rib_chapters import CHAPTERS
 
     own = {phase: (1.0 - SHARE_BEFORE_RIBS) / len(CHAPTERS) for phase, _ in CHAPTERS}

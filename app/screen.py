@@ -1,14 +1,7 @@
-"""What `assess` shows on the terminal: a bar on its way, the verdict as a table at the end.
+"""What `assess` shows on the terminal at its end: the verdict as a table."""
 
-Progress goes to stderr, results to stdout. Without a terminal the bar becomes one line a phase.
-"""
-
-import sys
 import textwrap
-from collections.abc import Iterator
-from contextlib import contextmanager
 
-import click
 from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
@@ -18,7 +11,6 @@ from lamwright.postprocess.quantities import Figure
 from lamwright.postprocess.verdict import Outcome, Verdict, all_figures
 
 from .lines import number, valued
-from .progress import Progress
 
 # Figures without a limit that a designer reads at a glance, in order.
 GLANCE = (
@@ -44,40 +36,6 @@ MAGNET_GLANCE = (
     "demagnetising_current_a",
     "magnet_below_knee_percent",
 )
-
-
-@contextmanager
-def shown_progress() -> Iterator[Progress]:
-    """Progress as a bar on a terminal, as a line for each phase elsewhere."""
-    if not sys.stderr.isatty():
-        yield _PlainLines()
-        return
-    from rich.progress import BarColumn, TextColumn, TimeElapsedColumn
-    from rich.progress import Progress as Bar
-
-    columns = (TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn())
-    bar = Bar(*columns, console=Console(stderr=True), transient=True)
-    task = bar.add_task("start", total=1.0)
-
-    def show(phase: str, share: float) -> None:
-        bar.update(task, description=f"{phase:<22}", completed=share)
-        if phase != "start":  # the bar has a thread, and workers are copies of a single one
-            bar.start()
-
-    try:
-        yield show
-    finally:
-        bar.stop()
-
-
-class _PlainLines:
-    def __init__(self) -> None:
-        self._phase = ""
-
-    def __call__(self, phase: str, share: float) -> None:
-        if phase != self._phase:
-            self._phase = phase
-            click.echo(f"{100.0 * share:3.0f} %  {phase}", err=True)
 
 
 def print_verdict(verdict: Verdict, folder: str) -> None:

@@ -46,6 +46,12 @@ _IDENTIFIERS = re.compile(r"(\$(?:FINGERPRINT|VERSION)GUID\n  2\n).*(?=\n)")
 _MARKERS = re.compile(r"^(\S+) @ \d{4}-\d\d-\d\dT.*$", re.MULTILINE)
 
 
+def load() -> None:
+    """Import the library ahead of its first use, for a process that has the time."""
+    import ezdxf  # noqa: F401
+    from ezdxf.audit import Auditor  # noqa: F401
+
+
 def write_lamination(section: CrossSection, path: FilePath) -> None:
     """Write the whole rotor lamination, all poles, as DXF; the file appears complete or not at all.
 
