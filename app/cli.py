@@ -13,6 +13,7 @@ import click
 
 from lamwright.geometry.errors import LamwrightError
 
+from .cli_ledger import ledger
 from .cli_start import start
 from .cli_study import sweep
 from .threads import hold_threads
@@ -371,5 +372,6 @@ def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
     click.echo(json_text(run(design, i_d=i_d, i_q=i_q, angle_deg=angle)), nl=False)
 
 
+main.add_command(ledger)
 main.add_command(start)
 main.add_command(sweep)

@@ -180,7 +180,7 @@ class Ledger:
             LamwrightError: the condition or the name is not understood.
         """
         columns = self.columns
-        condition = parsed(where, columns) if where else Condition("1", ())
+        condition = _condition(where, columns)
         name = sort.removeprefix("-")
         column = columns.found(name)
         if column is None:
@@ -199,6 +199,13 @@ class Ledger:
     def count(self) -> int:
         """How many rows there are."""
         return sum(self.outcomes().values())
+
+    def count_where(self, where: str | None) -> int:
+        """How many rows fulfil a condition."""
+        condition = _condition(where, self.columns)
+        with told(self.path):
+            sql = f"select count(*) from design where {condition.sql}"
+            return int(self._file.execute(sql, condition.parameters).fetchone()[0])
 
     def outcomes(self) -> dict[str, int]:
         """How many rows have each outcome."""
@@ -330,6 +337,10 @@ class Ledger:
         with told(self.path):
             found = self._file.execute("select value from note where name = ?", (name,)).fetchone()
         return None if found is None else str(found[0])
+
+
+def _condition(where: str | None, columns: Columns) -> Condition:
+    return Condition("1", ()) if where is None else parsed(where, columns)
 
 
 def _is_known(name: str, columns: Columns) -> bool:

@@ -7,6 +7,7 @@ does not fulfil the comparison, nor its opposite.
 """
 
 import ast
+import warnings
 from dataclasses import dataclass, replace
 from typing import Literal
 
@@ -55,7 +56,8 @@ def parsed(text: str, columns: Columns) -> Condition:
     if len(text) > LONGEST:
         raise LamwrightError(f"--where: {len(text)} characters long; accepted up to {LONGEST}")
     try:
-        tree = ast.parse(text.strip(), mode="eval")
+        with warnings.catch_warnings(action="ignore"):  # of `6or`
+            tree = ast.parse(text.strip().replace("[*]", "[...]"), mode="eval")
     except (SyntaxError, ValueError, RecursionError, MemoryError) as error:
         raise LamwrightError(f"--where {_one_line(text)}: {_syntax(error, text)}") from None
     try:
@@ -125,7 +127,7 @@ def _value(node: ast.expr, columns: Columns) -> _Part:
         )
         return _Part(sql, (*left.parameters, *right.parameters), "number")
     if isinstance(node, ast.Name | ast.Attribute | ast.Subscript):
-        name = ast.unparse(node).replace('"', "'")
+        name = ast.unparse(node).replace("[...]", "[*]")
         column = columns.found(name)
         if column is None:
             raise _Refusal(f"no column {name}; {columns.nearest(name)}")

@@ -1,18 +1,20 @@
 """Figures as lines of plain text; what `outline` shows, which must be quick."""
 
 import math
+from typing import TYPE_CHECKING
 
 import click
 
 from lamwright.postprocess.quantities import Figure, figures_of
 
-from .lamination import OutlineReport
+if TYPE_CHECKING:
+    from .lamination import OutlineReport
 
 DIGITS = 4  # significant, on the terminal only
 MM = 1e3  # mm per m
 
 
-def print_outline(report: OutlineReport) -> None:
+def print_outline(report: "OutlineReport") -> None:
     """What was recognised in drawings, the outline's figures and ribs, and where the DXF is."""
     for part in report.recognised:
         click.echo(f"{part.part} recognised in {part.file}, drawn in {part.picture}")
