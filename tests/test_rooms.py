@@ -28,6 +28,7 @@ OWNERS = {
     "gmsh": ("solver/mesh*.py",),
     "ezdxf": ("geometry/dxf*.py",),
     "matplotlib": ("postprocess/figures*.py", "postprocess/sheet*.py"),
+    "fontTools": ("postprocess/sheet_font.py",),
     "cvxopt": ("solver/linear.py",),
     "h5netcdf": ("postprocess/netcdf.py",),
     "h5py": ("postprocess/netcdf.py",),

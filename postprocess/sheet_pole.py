@@ -1,0 +1,232 @@
+"""The view of one pole: barriers on the q axis, end angles, holes, notches, letters of details.
+
+On the left stand, from rim to bore, each barrier's outer side as its distance from the shaft axis
+(theoretically exact, boxed: the barriers' contours have a profile tolerance) and its thickness; at
+the rim the angles of the barriers' ends off the q axis, on the right half alone where both are
+mirror images.
+"""
+
+import cmath
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from lamwright.geometry.curves import Edge
+
+from .sheet_clip import in_window
+from .sheet_details import DetailMark, mark
+from .sheet_dimensions import (
+    angular,
+    boxed,
+    extension,
+    leaders,
+    narrow_span,
+    number,
+    spread,
+    with_limit,
+)
+from .sheet_ink import (
+    CENTRE,
+    NARROW,
+    PHANTOM,
+    TITLE,
+    WIDE,
+    Ink,
+    Picture,
+    Stroke,
+    Word,
+    bow,
+    placed,
+    polyline,
+    segment,
+)
+from .sheet_job import MM, SheetJob
+from .sheet_labels import Board
+from .sheet_measures import AxisCut, PoleMeasure
+from .sheet_rims import Groove, HoleGroup, RimMeasure
+
+STRIP = 2.0  # mm of the neighbouring poles that are shown
+UP = math.pi / 2.0
+FIRST_ARC = 8.0  # mm from the rim to the first end angle
+ARC_STEP = 7.5  # mm to the next
+PITCH = 5.4  # mm between the labels on the left
+COLUMN = 9.0  # mm from the outline to the thickness dimensions
+JOG = 8.0  # mm further to the labels
+ANGLE_DIGITS = 2
+
+
+@dataclass(frozen=True, slots=True)
+class Pole:
+    """What a pole's view shows."""
+
+    measure: PoleMeasure
+    outlines: Sequence[Edge]  # of the whole lamination, upright for this pole, m
+    rim: RimMeasure
+    bore: float  # radius, m
+    holes: Sequence[HoleGroup]
+    notches: Sequence[tuple[Groove, int]]  # in this pole's frame, with how many there are
+    marks: Sequence[DetailMark]
+
+
+def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
+    """One pole at `scale`, its q axis up, the shaft axis at 0."""
+    factor = scale / MM
+    rim = scale * pole.rim.radius / MM
+    bore = scale * pole.bore / MM
+    pitch = job.section.pole_angle
+    half = min(0.5 * pitch + STRIP / rim, math.pi * 0.75)
+    edges = in_window(pole.outlines, UP, half)
+    board = Board(Stroke(placed((edge,), factor), WIDE) for edge in edges)
+    board.add(_sides(rim, bore, half))
+    board.add(_axes(rim, bore, 0.5 * pitch))
+    if not pole.rim.is_round:
+        board.add([bow(0j, rim, UP + half, UP - half, PHANTOM)])
+    left = min(p.real for edge in edges for p in (edge.start, edge.end)) * factor
+    left = min(left, min(ink.edges[0].point(0.5).real for ink in _strokes(board)))
+    _cuts(board, job, pole.measure.cuts, factor, left)
+    _end_angles(board, pole.measure, factor, rim)
+    for one in pole.marks:
+        mark(board, one, complex(factor))
+    _holes(board, pole.holes, factor, pitch)
+    _notches(board, pole, factor)
+    _rim(board, pole, factor)
+    low, high = board.picture.box
+    middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
+    board.add([Word(name, middle, TITLE, "middle")])
+    return board.picture
+
+
+def _strokes(board: Board) -> list[Stroke]:
+    return [ink for ink in board.inks if isinstance(ink, Stroke)]
+
+
+def _sides(rim: float, bore: float, half: float) -> list[Ink]:
+    """Break lines on both sides, each with a zigzag."""
+    inks: list[Ink] = []
+    for side in (1.0, -1.0):
+        way = cmath.rect(1.0, UP + side * half)
+        middle, kink = 0.5 * (rim + bore), 1.2
+        points = [
+            (bore - 1.5) * way,
+            (middle - 1.0) * way,
+            (middle - 0.4 + 1j * kink) * way,
+            (middle + 0.4 - 1j * kink) * way,
+            (middle + 1.0) * way,
+            (rim + 1.5) * way,
+        ]
+        inks.append(polyline(points, NARROW))
+    return inks
+
+
+def _axes(rim: float, bore: float, half: float) -> list[Ink]:
+    """Centre lines of q and d axes with their letters."""
+    start = max(bore - 6.0, 0.0)
+    inks: list[Ink] = [segment(1j * start, 1j * (rim + 4.0), CENTRE)]
+    for side in (1.0, -1.0):
+        way = cmath.rect(1.0, UP + side * half)
+        inks.append(segment(start * way, (rim + 4.0) * way, CENTRE))
+        at = (rim + 6.5) * way
+        inks.append(Word("d", at - 1.25j, align="middle"))
+    inks.append(Word("q", 1j * start - 3.7j, align="middle"))
+    return inks
+
+
+def _cuts(board: Board, job: SheetJob, cuts: Sequence[AxisCut], factor: float, left: float) -> None:
+    """Distances and thicknesses along the q axis, in two columns left of the outline."""
+    first, second = left - COLUMN, left - COLUMN - JOG
+    wanted = []
+    for cut in cuts:
+        wanted += [cut.outer * factor + 1.0, 0.5 * (cut.outer + cut.inner) * factor - 1.0]
+    heights = spread(wanted, PITCH)
+    column = min(first - 3.0, second)
+    for k, cut in enumerate(cuts):
+        top, bottom = (complex(-cut.beside, y) * factor for y in (cut.outer, cut.inner))
+        beside = f" at {number(cut.beside / MM)}" if cut.beside else ""
+        at_top, at_bottom = complex(first, top.imag), complex(first, bottom.imag)
+        board.add([segment(top - 0.8, at_top - 1.5), extension(bottom, at_bottom)])
+        board.add(narrow_span(at_top, at_bottom))
+        word = Word(number(cut.outer / MM) + beside, 0j)
+        at = complex(column - JOG - word.width - 1.5, heights[2 * k] - 1.25)
+        placed_word = Word(word.text, at)
+        end = complex(column - JOG, heights[2 * k])
+        jog = polyline((at_top - 1.5, complex(column - 1.0, top.imag), end + 0.4, end))
+        board.add([jog, *boxed(placed_word)])
+        text = with_limit(cut.thickness / MM, job.width_limit)
+        start = 0.5 * (at_top + at_bottom)
+        end = complex(column - JOG, heights[2 * k + 1])
+        word = Word(text, complex(end.real - 0.8, end.imag - 1.25), align="right")
+        board.add([polyline((start, complex(column - 1.0, start.imag), end + 0.4, end)), word])
+
+
+def _end_angles(board: Board, pole: PoleMeasure, factor: float, rim: float) -> None:
+    """Arcs outside the rim from the q axis to the ends, the smallest angle nearest to the rim."""
+    ribs = [rib for rib in pole.ribs if rib.kind == "tangential"]
+    for side in (1.0, -1.0):
+        if side < 0.0 and pole.is_symmetric:
+            continue
+        own = sorted((r for r in ribs if r.end_angle * side > 0.0), key=lambda r: abs(r.end_angle))
+        for k, rib in enumerate(own):
+            radius = rim + FIRST_ARC + k * ARC_STEP
+            last = UP - rib.end_angle
+            way = cmath.rect(1.0, last)
+            foot = rib.start * factor
+            foot = abs(foot) * way
+            text = f"{number(math.degrees(abs(rib.end_angle)), ANGLE_DIGITS)}\u00b0"
+            line = segment(foot + 0.8 * way, (radius + 1.5) * way)
+            candidates = [[line, *inks] for inks in angular(0j, radius, UP, last, text)]
+            board.put(candidates, text)
+        if own:
+            top = rim + FIRST_ARC + (len(own) - 1) * ARC_STEP + 1.5
+            board.add([segment(1j * (rim + 4.0), 1j * top, CENTRE)])
+
+
+def _holes(board: Board, groups: Sequence[HoleGroup], factor: float, pitch: float) -> None:
+    for group in groups:
+        if abs(group.off_axis - 0.5 * pitch) < 1e-6:
+            place = "on d axis"
+        elif group.off_axis < 1e-6:
+            place = "on q axis"
+        else:
+            place = f"{number(math.degrees(group.off_axis), ANGLE_DIGITS)}\u00b0 from q axis"
+        size = f"{group.count}\u00d7 \u2300{number(group.diameter / MM)}"
+        if group.span:
+            size = (
+                f"{group.count}\u00d7 slot {number(group.diameter / MM)} wide, ends"
+                f" {number(math.degrees(group.span), ANGLE_DIGITS)}\u00b0 apart"
+            )
+        circle = f"on \u2300{number(2.0 * group.place / MM)}, {place}"
+        arcs = [e for e in group.first.edges if not e.is_line]
+        tips = [edge.point(share) * factor for edge in arcs for share in (0.5, 0.25, 0.75)]
+        tips.sort(key=lambda tip: -tip.real)
+        candidates = (inks for tip in tips for inks in leaders(tip, [size, circle]))
+        board.put(candidates, size)
+
+
+def _notches(board: Board, pole: Pole, factor: float) -> None:
+    for groove, count in pole.notches:
+        off = groove.angle
+        place = (
+            "on q axis"
+            if abs(off) < 1e-6
+            else f"{number(math.degrees(abs(off)), 2)}\u00b0 from q axis"
+        )
+        sizes = f"{count}\u00d7 {number(groove.mouth / MM)} wide, {number(groove.depth / MM)} deep"
+        radii = ", ".join(f"R{number(r / MM)}" for r in groove.radii)
+        texts = [sizes, f"{radii + ', ' if radii else ''}{place}"]
+        turn = cmath.exp(1j * (UP - off))
+        tips = [edge.point(0.5) * turn * factor for edge in groove.edges]
+        candidates = (inks for tip in tips for inks in leaders(tip, texts))
+        board.put(candidates, sizes)
+
+
+def _rim(board: Board, pole: Pole, factor: float) -> None:
+    """The rim's radius on the q axis where it is no circle."""
+    if pole.rim.is_round:
+        return
+    tip = 1j * pole.rim.on_q * factor
+    radii = ", ".join(f"R{number(r / MM)}" for r in pole.rim.radii)
+    texts = [f"rim on q axis {number(pole.rim.on_q / MM)} from axis", f"rim of arcs {radii}"]
+    # Beside the q axis, whose own labels stand on the left.
+    arcs = [e for e in pole.outlines if abs(abs(e.start) - pole.rim.on_q) < 1e-4]
+    tips = [tip, *(edge.point(0.5) * factor for edge in arcs)]
+    board.put((inks for one in tips for inks in leaders(one, texts)), texts[0])
