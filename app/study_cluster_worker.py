@@ -68,6 +68,12 @@ def _process(call: Callable[[Task], Result]) -> Worker[None]:
     return worker
 
 
+def end_here() -> None:
+    """End this thread's process, if there is one."""
+    if (worker := getattr(_here, "worker", None)) is not None:
+        _end(worker)
+
+
 def _end(worker: Worker[None]) -> None:
     _here.worker = None
     worker.stop()

@@ -34,6 +34,8 @@ def misbehaving(wish: str) -> str:
         os.kill(os.getpid(), signal.SIGKILL)
     if what == "hang":
         time.sleep(1000.0)
+    if what == "sleep":
+        time.sleep(float(more))
     if what == "raise":
         raise ValueError(more)
     if what == "leave":
