@@ -60,7 +60,7 @@ def lamination_contours(section: CrossSection) -> tuple[Contour, ...]:
         for k, iron in enumerate(rotor_iron(cell))
     ]
     loops = [
-        (pole, _as_circle(loop))
+        (pole, as_circle(loop))
         for pole, loop in _joined([c for c, _ in period], section.poles, pitch)
     ]
     for pole in range(section.poles):
@@ -188,7 +188,7 @@ def _closed(edges: Sequence[Edge]) -> Path:
     return Path(tuple(Edge(e.start, s, e.bulge) for e, s in zip(edges, starts, strict=True)))
 
 
-def _as_circle(path: Path) -> Path:
+def as_circle(path: Path) -> Path:
     """The full circle about the shaft axis that the path is, or the path itself."""
     radius = abs(path.edges[0].start)
     for edge in path.edges:

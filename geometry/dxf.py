@@ -26,7 +26,7 @@ from .whole_file import write_text
 
 if TYPE_CHECKING:
     from ezdxf.document import Drawing
-    from ezdxf.entities import LWPolyline
+    from ezdxf.entities import DXFEntity
 
 __all__ = [
     "Contour",
@@ -64,7 +64,7 @@ def write_lamination(section: CrossSection, path: FilePath) -> None:
 
 def write_contours(contours: Sequence[Contour], path: FilePath) -> None:
     """Write closed contours (m) as DXF in mm, each on its own layer."""
-    write_text(path, _dxf_text(contours))
+    write_text(path, fixed_text(_document(contours), _remarks(contours)))
 
 
 def read_contours(path: FilePath) -> tuple[Contour, ...]:
@@ -73,6 +73,21 @@ def read_contours(path: FilePath) -> tuple[Contour, ...]:
     Raises:
         DesignError: if the file cannot be read, is not in millimetres, holds anything but closed
             and finite polylines in its model space, or nothing at all.
+    """
+    document = readable_document(path)
+    contours = []
+    for entity in document.modelspace():
+        contours.append(Contour(str(entity.dxf.layer), path_of(entity, path)))
+    if not contours:
+        raise DesignError(f"{path}: no contour in the file")
+    return tuple(contours)
+
+
+def readable_document(path: FilePath) -> "Drawing":
+    """The DXF file as the library reads it.
+
+    Raises:
+        DesignError: if it cannot be read or is not in millimetres.
     """
     import ezdxf
 
@@ -84,19 +99,7 @@ def read_contours(path: FilePath) -> tuple[Contour, ...]:
         raise DesignError(f"{path}: not a readable DXF file; {_one_line(error)}") from error
     if document.header.get("$INSUNITS", 0) != ezdxf.units.MM:
         raise DesignError(f"{path}: $INSUNITS is not 4; millimetres needed")
-    contours = []
-    for entity in document.modelspace():
-        if entity.dxftype() != "LWPOLYLINE" or not entity.closed:
-            raise DesignError(
-                f"{path}: {entity.dxftype()} on layer {entity.dxf.layer} is no closed polyline"
-            )
-        outline = _path(entity)
-        if not math.isfinite(perimeter(outline)):
-            raise DesignError(f"{path}: a polyline on layer {entity.dxf.layer} is not finite")
-        contours.append(Contour(str(entity.dxf.layer), outline))
-    if not contours:
-        raise DesignError(f"{path}: no contour in the file")
-    return tuple(contours)
+    return document
 
 
 def _one_line(error: Exception) -> str:
@@ -105,21 +108,34 @@ def _one_line(error: Exception) -> str:
     return f"{type(error).__name__}: {' '.join(text.split())}"
 
 
-def _path(entity: "LWPolyline") -> Path:
+def path_of(entity: "DXFEntity", path: FilePath) -> Path:
+    """The closed path in m that an entity of the file draws.
+
+    Raises:
+        DesignError: for anything but a closed and finite polyline.
+    """
+    from ezdxf.entities import LWPolyline
+
+    if not isinstance(entity, LWPolyline) or not entity.closed:
+        kind, layer = entity.dxftype(), entity.dxf.layer
+        raise DesignError(f"{path}: {kind} on layer {layer} is no closed polyline")
     vertices = [(MM * complex(x, y), float(b)) for x, y, b in entity.get_points("xyb")]
-    ends = [point for point, _ in (*vertices[1:], vertices[0])]
-    return Path(tuple(Edge(start, end, b) for (start, b), end in zip(vertices, ends, strict=True)))
+    ends = [point for point, _ in (*vertices[1:], *vertices[:1])]
+    outline = Path(tuple(Edge(p, end, b) for (p, b), end in zip(vertices, ends, strict=True)))
+    if not math.isfinite(perimeter(outline)):
+        raise DesignError(f"{path}: a polyline on layer {entity.dxf.layer} is not finite")
+    return outline
 
 
-def _dxf_text(contours: Sequence[Contour]) -> str:
-    document = _document(contours)
+def fixed_text(document: "Drawing", remarks: Sequence[str]) -> str:
+    """The document as text without time stamps and random identifiers, remarks at its head."""
     stream = StringIO()
     document.write(stream)
     text = _MARKERS.sub(r"\1", _STAMPS.sub("", stream.getvalue()))
     nil = f"{{{uuid.UUID(int=0)}}}"
     name = uuid.uuid5(IDENTIFIER_SPACE, _IDENTIFIERS.sub(rf"\g<1>{nil}", text))
     text = _IDENTIFIERS.sub(rf"\g<1>{{{str(name).upper()}}}", text)
-    return "".join(f"999\n{remark}\n" for remark in _remarks(contours)) + text
+    return "".join(f"999\n{remark}\n" for remark in remarks) + text
 
 
 def _remarks(contours: Sequence[Contour]) -> list[str]:

@@ -90,3 +90,12 @@ class OutlineError(LamwrightError, ValueError):
         """Keep the place beside the text, for a picture that marks it."""
         super().__init__(text)
         self.place = place
+
+
+class OffsetError(DesignError):
+    """An allowance that leaves nothing of a contour or of the steel beside it; place in m."""
+
+    def __init__(self, text: str, place: complex) -> None:
+        """Keep the place beside the text."""
+        super().__init__(text)
+        self.place = place

@@ -65,12 +65,12 @@ def difference(first: Sequence[Edge], second: Sequence[Edge]) -> tuple[float, Po
     points = np.array([edge.point(float(s)) for edge in first for s in shares])
     gaps = np.full(points.size, np.inf)
     for edge in second:
-        gaps = np.minimum(gaps, _distances(edge, points))
+        gaps = np.minimum(gaps, distances_to(edge, points))
     worst = int(np.argmax(gaps))
     return float(gaps[worst]), complex(points[worst])
 
 
-def _distances(edge: Edge, points: ComplexArray) -> FloatArray:
+def distances_to(edge: Edge, points: ComplexArray) -> FloatArray:
     """Distance in m of each point from the edge; twin of `distance_to` for many points."""
     ends = np.minimum(np.abs(points - edge.start), np.abs(points - edge.end))
     if edge.is_line:
