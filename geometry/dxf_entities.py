@@ -8,7 +8,10 @@ Arcs, circles and polylines with bulges stay exact; ellipses and splines are fit
 import cmath
 import math
 from collections.abc import Iterator
+from itertools import pairwise
 from typing import TYPE_CHECKING, cast
+
+import numpy as np
 
 from .curves import Edge, Point
 from .spline_arcs import fitted_arcs, straightened
@@ -26,9 +29,11 @@ if TYPE_CHECKING:
         Polyline,
         Spline,
     )
+    from ezdxf.math import BSpline
 
 MOST_NESTED = 8  # blocks within blocks
 MOST_ENTITIES = 50_000  # after the blocks are opened: bounds the time
+TRACED = 100  # control points of a spline: more are a traced curve's
 TILT_TOL = 1e-9  # of the extrusion's unit vector
 # Carry no outline: notes, measures, fillings, views.
 NOT_OUTLINE = frozenset(
@@ -194,6 +199,8 @@ def _ellipse(entity: "DXFGraphic", unit: float) -> list[Edge]:
 
 def _spline(entity: "DXFGraphic", unit: float) -> list[Edge]:
     spline = cast("Spline", entity).construction_tool()
+    if spline.count > TRACED:
+        return _traced(spline, unit)
     knots = [float(k) for k in spline.knots()]
     degree = spline.order - 1
     low, high = knots[degree], knots[-degree - 1]
@@ -209,6 +216,26 @@ def _spline(entity: "DXFGraphic", unit: float) -> list[Edge]:
         return unit * complex(point.x, point.y), tangent / abs(tangent)
 
     return fitted_arcs(curve, [low, *sorted(corners), high])
+
+
+def _traced(spline: "BSpline", unit: float) -> list[Edge]:
+    """Chords of a curve through very many points, as a scanner or a tracing program makes it.
+
+    What its points scatter by would take arcs without number; two chords a span keep them all.
+    """
+    # Imported here: it takes 0.2 s, and few drawings need it.
+    from scipy.interpolate import BSpline as BSplineCurve
+
+    degree = spline.order - 1
+    knots = np.array(spline.knots())
+    control = np.array([complex(p.x, p.y) for p in spline.control_points])
+    weights = np.array(spline.weights() or np.ones(control.size))
+    spans = np.unique(knots[degree : knots.size - degree])
+    at = np.union1d(spans, 0.5 * (spans[1:] + spans[:-1]))
+    curve = BSplineCurve(knots, np.column_stack([control * weights, weights]), degree)
+    placed, divisor = curve(at).T
+    points = [complex(p) for p in unit * placed / divisor]
+    return [Edge(a, b) for a, b in pairwise(points) if a != b]
 
 
 _READERS = {

@@ -57,7 +57,10 @@ class DrawnPieces:
 
 
 def read_pieces(
-    path: FilePath, unit_mm: float | None = None, layers: Sequence[str] = ()
+    path: FilePath,
+    unit_mm: float | None = None,
+    layers: Sequence[str] = (),
+    assumed_mm: float | None = None,
 ) -> DrawnPieces:
     """The lines and arcs of a DXF drawing.
 
@@ -65,13 +68,14 @@ def read_pieces(
         path: the file.
         unit_mm: mm per drawing unit; None takes the file's own statement.
         layers: names of the layers that hold the outline; none means all that are shown.
+        assumed_mm: mm per drawing unit where neither is told; None refuses such a file.
 
     Raises:
         OutlineError: one line, if the file cannot be read or states no unit, or holds nothing.
     """
     data = _bytes(path)
     document = _document(data)
-    unit, source = _unit(document, unit_mm)
+    unit, source = _unit(document, unit_mm, assumed_mm)
     taken, left_out = _chosen(document, layers)
     edges: list[Edge] = []
     edge_layers: list[str] = []
@@ -156,13 +160,15 @@ def _one_line(error: Exception) -> str:
     return f"{type(error).__name__}: {' '.join(text.split())}"[:200]
 
 
-def _unit(document: "Drawing", stated: float | None) -> tuple[float, str]:
+def _unit(document: "Drawing", stated: float | None, assumed: float | None) -> tuple[float, str]:
     code = document.header.get("$INSUNITS", 0)
     if stated is not None:
         told = f", the file says {UNIT_NAMES[code]}" if code in UNIT_NAMES else ""
         return stated, f"{stated:g} mm as stated{told}"
     if code in UNITS_MM:
         return UNITS_MM[code], f"{UNIT_NAMES[code]}, from the file"
+    if assumed is not None:
+        return assumed, f"{assumed:g} mm assumed, the file states none"
     raise OutlineError(
         "the file states no unit; state outline_unit_mm, as 1.0 for mm or 25.4 for inches"
     )
