@@ -7,6 +7,7 @@ drawing: the same job gives the same bytes.
 """
 
 import cmath
+import functools
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from itertools import pairwise
@@ -17,7 +18,7 @@ from lamwright.geometry.errors import LamwrightError
 
 from .sheet_clip import turn_of
 from .sheet_details import (
-    DetailMark,
+    LETTERS,
     RibKind,
     detail_mark,
     detail_scale,
@@ -28,12 +29,22 @@ from .sheet_details import (
 from .sheet_frame import BLOCK_HEIGHT, BLOCK_WIDTH, Paper, frame, papers, title_block
 from .sheet_ink import Picture
 from .sheet_job import MM, SheetJob
+from .sheet_key import key_detail, key_mark
 from .sheet_labels import NoRoomError
-from .sheet_layout import Block, Room, packed
+from .sheet_layout import GAP, Area, Blocks, arranged
 from .sheet_measures import PoleMeasure, pole_measures
 from .sheet_pdf import write_pdf
 from .sheet_pole import Pole, pole_view
-from .sheet_rims import BoreMeasure, HoleGroup, RimMeasure, bore_measure, hole_groups, rim_measure
+from .sheet_rims import (
+    BoreMeasure,
+    HoleGroup,
+    NotchGroup,
+    RimMeasure,
+    bore_measure,
+    hole_groups,
+    notch_groups,
+    rim_measure,
+)
 from .sheet_svg import write_svg
 from .sheet_tables import barrier_table, caution, notes, rib_table, stack_table
 from .sheet_whole import Whole, whole_view
@@ -41,7 +52,8 @@ from .sheet_whole import Whole, whole_view
 SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
 LEAST_CHORD = 70.0  # mm of paper that a pole's view should be wide at least
 LEAST_BARRIER = 3.0  # mm of paper that the thinnest barrier should be
-LEAST_WHOLE = 55.0  # mm of paper, of the whole lamination's diameter
+LEAST_WHOLE = 75.0  # mm of paper, of the whole lamination's diameter
+MOST_WHOLE = 200.0  # mm of paper, beyond which a larger view shows no more
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,6 +65,7 @@ class Measured:
     bore: BoreMeasure
     rim: RimMeasure
     holes: tuple[HoleGroup, ...]
+    notches: tuple[NotchGroup, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -84,6 +97,20 @@ def drawing_sheet(job: SheetJob, path_pdf: Path, path_svg: Path) -> Sheet:
     return sheet
 
 
+def measure(job: SheetJob) -> Measured:
+    """All that the drawing tells, measured on the contours."""
+    poles = pole_measures(job)
+    rim = rim_measure(job.contours, job.section.pole_angle)
+    return Measured(
+        poles,
+        rib_kinds(poles),
+        bore_measure(job.contours),
+        rim,
+        hole_groups(poles),
+        notch_groups(rim, job.section.pole_angle),
+    )
+
+
 def composed(job: SheetJob) -> Sheet:
     """The drawing on the smallest paper that has room.
 
@@ -92,98 +119,107 @@ def composed(job: SheetJob) -> Sheet:
     """
     measured = measure(job)
     sizes = papers(job.options.paper)
-    details = _details(job, measured)
+    details, tables = _details(job, measured), _tables(job, measured)
+    poles = functools.cache(lambda scale: _pole_views(job, measured, scale))
+    whole = functools.cache(lambda scale: (_whole_view(job, measured, scale),))
     for is_last in (False, True):
         for paper in sizes:
-            found = _on_paper(job, measured, paper, details, is_last)
-            if found is not None:
-                return found
+            for scales in _scales(job, measured, paper, is_last):
+                try:
+                    views = (*poles(scales[0]), *whole(scales[1]))
+                except NoRoomError:
+                    continue
+                blocks = Blocks(views, details, tables)
+                picture = _on_paper(job, blocks, paper, scales[1])
+                if picture is not None:
+                    return Sheet(paper, picture, scales[1], scales[0])
     names = " or ".join(paper.name for paper in sizes)
     raise LamwrightError(f"drawing: not all views fit on {names}; ask for a larger paper")
 
 
-def measure(job: SheetJob) -> Measured:
-    """All that the drawing tells, measured on the contours."""
-    poles = pole_measures(job)
-    return Measured(
-        poles,
-        rib_kinds(poles),
-        bore_measure(job.contours),
-        rim_measure(job.contours, job.section.pole_angle),
-        hole_groups(poles),
-    )
-
-
-def _on_paper(
-    job: SheetJob, measured: Measured, paper: Paper, details: Sequence[Picture], is_last: bool
-) -> Sheet | None:
-    space = Room(paper.low, paper.high)
+def _on_paper(job: SheetJob, blocks: Blocks, paper: Paper, scale: float) -> Picture | None:
+    """All blocks on a paper with its frame and title block, None where one finds no room."""
     corner = complex(paper.high.real - BLOCK_WIDTH, paper.low.imag)
-    block = Room(corner, corner + complex(BLOCK_WIDTH, BLOCK_HEIGHT))
-    for pole_scale, whole_scale in _scales(job, measured, is_last):
-        try:
-            blocks = _blocks(job, measured, pole_scale, whole_scale, details)
-        except NoRoomError:
-            continue
-        found = packed(blocks, space, [block])
-        if found is None:
-            continue
-        title = title_block(job, [scale_text(whole_scale)], paper).moved(corner)
-        picture = frame(paper)
-        for one in (title, *found):
-            picture = picture + one
-        return Sheet(paper, picture, whole_scale, pole_scale)
-    return None
+    title = Area(corner, corner + complex(BLOCK_WIDTH, BLOCK_HEIGHT))
+    found = arranged(blocks, Area(paper.low, paper.high), title)
+    if found is None:
+        return None
+    picture = frame(paper) + title_block(job, [scale_text(scale)], paper).moved(corner)
+    for one in found:
+        picture = picture + one
+    return picture
 
 
-def _scales(job: SheetJob, measured: Measured, is_last: bool) -> Iterator[tuple[float, float]]:
+def _scales(
+    job: SheetJob, measured: Measured, paper: Paper, is_last: bool
+) -> Iterator[tuple[float, float]]:
     """Scales of pole and whole lamination, the largest first; all the small ones if need be."""
     size = 2.0 * measured.rim.radius / MM
     chord = measured.rim.radius / MM * abs(1.0 - cmath.exp(1j * job.section.pole_angle))
     thin = min((cut.thickness for pole in measured.poles for cut in pole.cuts), default=MM) / MM
+    room = min((paper.high - paper.low).real, (paper.high - paper.low).imag)
     for pole_scale in SCALES:
         is_small = pole_scale * chord < LEAST_CHORD or pole_scale * thin < LEAST_BARRIER
-        if is_small and not is_last:
+        if pole_scale * chord > 1.2 * room or (is_small and not is_last):
             continue
         for whole_scale in SCALES:
-            if whole_scale > pole_scale or (whole_scale * size < LEAST_WHOLE and not is_last):
+            on_paper = whole_scale * size
+            if whole_scale > pole_scale or on_paper > min(room, MOST_WHOLE):
+                continue
+            if on_paper < LEAST_WHOLE and not is_last:
                 continue
             yield pole_scale, whole_scale
 
 
-def _blocks(
-    job: SheetJob,
-    measured: Measured,
-    pole_scale: float,
-    whole_scale: float,
-    details: Sequence[Picture],
-) -> list[Block]:
-    blocks = []
+def _pole_views(job: SheetJob, measured: Measured, scale: float) -> tuple[Picture, ...]:
+    found = []
     for number, pole in enumerate(measured.poles):
-        shown = _pole(job, measured, number)
-        name = f"{_name(pole)} ({scale_text(pole_scale)})"
-        blocks.append(Block(pole_view(job, shown, pole_scale, name)))
-    whole = Whole(measured.bore, measured.rim, measured.holes, None)
-    name = f"Lamination ({scale_text(whole_scale)})"
-    blocks.append(Block(whole_view(job, whole, whole_scale, name)))
-    width = BLOCK_WIDTH - 8.0
-    blocks += [
-        Block(caution(job, width), is_right=True),
-        Block(notes(job, width), is_right=True),
-        Block(stack_table(job), is_right=True),
-        Block(barrier_table(measured.poles, job.width_limit, measured.rim.radius), is_right=True),
-        Block(rib_table(measured.kinds, job.width_limit), is_right=True),
+        shown = Pole(
+            pole,
+            _upright(job, pole),
+            measured.rim,
+            measured.bore.radius,
+            measured.holes if number == 0 else (),
+            measured.notches if number == 0 else (),
+            [detail_mark(kind) for kind in measured.kinds if kind.pole == number],
+        )
+        found.append(pole_view(job, shown, scale, f"{_name(pole)} ({scale_text(scale)})"))
+    return tuple(found)
+
+
+def _whole_view(job: SheetJob, measured: Measured, scale: float) -> Picture:
+    where = key_mark(measured.bore, _key_letter(measured))
+    whole = Whole(measured.bore, measured.rim, measured.holes, where)
+    return whole_view(job, whole, scale, f"Lamination ({scale_text(scale)})")
+
+
+def _key_letter(measured: Measured) -> str:
+    return LETTERS[len(measured.kinds) % len(LETTERS)]
+
+
+def _tables(job: SheetJob, measured: Measured) -> list[Picture]:
+    width = BLOCK_WIDTH - 2.0 * GAP
+    limit = job.width_limit
+    return [
+        rib_table(measured.kinds, limit),
+        barrier_table(measured.poles, limit, measured.rim.radius),
+        stack_table(job),
+        notes(job, width),
+        caution(job, width),
     ]
-    return [*blocks, *(Block(one) for one in details)]
 
 
-def _details(job: SheetJob, measured: Measured) -> tuple[Picture, ...]:
+def _details(job: SheetJob, measured: Measured) -> list[Picture]:
     found = []
     for kind in measured.kinds:
         outlines = _upright(job, measured.poles[kind.pole])
         scale = scale_text(detail_scale(kind))
         found.append(rib_detail(kind, outlines, job.width_limit, scale))
-    return tuple(found)
+    where = key_mark(measured.bore, _key_letter(measured))
+    if where is not None:
+        bore = next(c.path.edges for c in job.contours if c.layer == "BORE")
+        found.append(key_detail(job, measured.bore, bore, where))
+    return found
 
 
 def _name(pole: PoleMeasure) -> str:
@@ -198,14 +234,7 @@ def _name(pole: PoleMeasure) -> str:
         many = f"{numbers[0]} to {numbers[-1]}"
     else:
         many = f"{numbers[0]}, {numbers[1]} to {numbers[-1]}"
-    return f"Pole, alike {many}"
-
-
-def _pole(job: SheetJob, measured: Measured, number: int) -> Pole:
-    pole = measured.poles[number]
-    marks: list[DetailMark] = [detail_mark(k) for k in measured.kinds if k.pole == number]
-    holes = measured.holes if number == 0 else ()
-    return Pole(pole, _upright(job, pole), measured.rim, measured.bore.radius, holes, (), marks)
+    return f"Poles {many} alike"
 
 
 def _upright(job: SheetJob, pole: PoleMeasure) -> Sequence[Edge]:

@@ -19,7 +19,7 @@ LETTERS = "ABCDEFGHJKLMNPRSTUVWXYZ"  # no I, O or Q, that look like figures (ISO
 CIRCLE = 19.0  # mm of paper, radius of a detail
 SCALES = (100.0, 50.0, 20.0, 10.0, 5.0, 2.0, 1.0)
 MOST_RIB = 13.0  # mm of paper that a rib may be wide
-LEAST_VIEW = 1.6  # widths of a rib, and radii of its corners, that the detail reaches at least
+LEAST_VIEW = 1.3  # widths of a rib that its detail reaches at least; one radius of its corners
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +93,7 @@ def _is_like(known: RibKind, rib: RibMeasure) -> bool:
 
 def detail_scale(kind: RibKind) -> float:
     """The greatest scale at which the rib and its corners are seen."""
-    need = LEAST_VIEW * max(0.8 * kind.width, *(0.8 * r for r in kind.radii), 0.0)
+    need = max((LEAST_VIEW * kind.width, *kind.radii))
     for scale in SCALES:
         fits = CIRCLE / scale * MM >= need and kind.width / MM * scale <= MOST_RIB
         if fits:

@@ -6,6 +6,7 @@ has. A height is that of capital letters.
 """
 
 import cmath
+import functools
 import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
@@ -88,9 +89,9 @@ class Word:
 Ink = Stroke | Fill | Word
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, eq=False)
 class Picture:
-    """Ink in one frame."""
+    """Ink in one frame; compared by identity."""
 
     inks: tuple[Ink, ...] = ()
 
@@ -101,9 +102,7 @@ class Picture:
     @property
     def box(self) -> tuple[Point, Point]:
         """Lower left and upper right corner of all ink, in mm."""
-        points = [point for ink in self.inks for point in _extremes(ink)]
-        low = complex(min(p.real for p in points), min(p.imag for p in points))
-        return low, complex(max(p.real for p in points), max(p.imag for p in points))
+        return _box(self)
 
     @property
     def size(self) -> Point:
@@ -124,6 +123,13 @@ class Picture:
     def strokes(self) -> tuple[Stroke, ...]:
         """All lines."""
         return tuple(ink for ink in self.inks if isinstance(ink, Stroke))
+
+
+@functools.lru_cache(maxsize=64)
+def _box(picture: Picture) -> tuple[Point, Point]:
+    points = [point for ink in picture.inks for point in _extremes(ink)]
+    low = complex(min(p.real for p in points), min(p.imag for p in points))
+    return low, complex(max(p.real for p in points), max(p.imag for p in points))
 
 
 def placed(edges: Iterable[Edge], factor: complex, shift: Point = 0j) -> tuple[Edge, ...]:

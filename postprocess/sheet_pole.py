@@ -43,7 +43,7 @@ from .sheet_ink import (
 from .sheet_job import MM, SheetJob
 from .sheet_labels import Board
 from .sheet_measures import AxisCut, PoleMeasure
-from .sheet_rims import Groove, HoleGroup, RimMeasure
+from .sheet_rims import HoleGroup, NotchGroup, RimMeasure
 
 STRIP = 2.0  # mm of the neighbouring poles that are shown
 UP = math.pi / 2.0
@@ -53,6 +53,7 @@ PITCH = 5.4  # mm between the labels on the left
 COLUMN = 9.0  # mm from the outline to the thickness dimensions
 JOG = 8.0  # mm further to the labels
 ANGLE_DIGITS = 2
+ON_AXIS = 1e-6  # rad
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,7 +65,7 @@ class Pole:
     rim: RimMeasure
     bore: float  # radius, m
     holes: Sequence[HoleGroup]
-    notches: Sequence[tuple[Groove, int]]  # in this pole's frame, with how many there are
+    notches: Sequence[NotchGroup]
     marks: Sequence[DetailMark]
 
 
@@ -88,7 +89,7 @@ def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
     for one in pole.marks:
         mark(board, one, complex(factor))
     _holes(board, pole.holes, factor, pitch)
-    _notches(board, pole, factor)
+    _notches(board, pole, factor, pitch)
     _rim(board, pole, factor)
     low, high = board.picture.box
     middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
@@ -125,8 +126,8 @@ def _axes(rim: float, bore: float, half: float) -> list[Ink]:
     for side in (1.0, -1.0):
         way = cmath.rect(1.0, UP + side * half)
         inks.append(segment(start * way, (rim + 4.0) * way, CENTRE))
-        at = (rim + 6.5) * way
-        inks.append(Word("d", at - 1.25j, align="middle"))
+        # Beyond the axis, clear of the break line beside it.
+        inks.append(Word("d", (rim + 7.0 - 3.0j * side) * way - 1.25j, align="middle"))
     inks.append(Word("q", 1j * start - 3.7j, align="middle"))
     return inks
 
@@ -141,7 +142,7 @@ def _cuts(board: Board, job: SheetJob, cuts: Sequence[AxisCut], factor: float, l
     column = min(first - 3.0, second)
     for k, cut in enumerate(cuts):
         top, bottom = (complex(-cut.beside, y) * factor for y in (cut.outer, cut.inner))
-        beside = f" at {number(cut.beside / MM)}" if cut.beside else ""
+        beside = f" ({number(cut.beside / MM)} off q)" if cut.beside else ""
         at_top, at_bottom = complex(first, top.imag), complex(first, bottom.imag)
         board.add([segment(top - 0.8, at_top - 1.5), extension(bottom, at_bottom)])
         board.add(narrow_span(at_top, at_bottom))
@@ -182,19 +183,13 @@ def _end_angles(board: Board, pole: PoleMeasure, factor: float, rim: float) -> N
 
 def _holes(board: Board, groups: Sequence[HoleGroup], factor: float, pitch: float) -> None:
     for group in groups:
-        if abs(group.off_axis - 0.5 * pitch) < 1e-6:
-            place = "on d axis"
-        elif group.off_axis < 1e-6:
-            place = "on q axis"
-        else:
-            place = f"{number(math.degrees(group.off_axis), ANGLE_DIGITS)}\u00b0 from q axis"
         size = f"{group.count}\u00d7 \u2300{number(group.diameter / MM)}"
         if group.span:
             size = (
                 f"{group.count}\u00d7 slot {number(group.diameter / MM)} wide, ends"
                 f" {number(math.degrees(group.span), ANGLE_DIGITS)}\u00b0 apart"
             )
-        circle = f"on \u2300{number(2.0 * group.place / MM)}, {place}"
+        circle = f"on \u2300{number(2.0 * group.place / MM)}, {_place(group.off_axis, pitch)}"
         arcs = [e for e in group.first.edges if not e.is_line]
         tips = [edge.point(share) * factor for edge in arcs for share in (0.5, 0.25, 0.75)]
         tips.sort(key=lambda tip: -tip.real)
@@ -202,21 +197,30 @@ def _holes(board: Board, groups: Sequence[HoleGroup], factor: float, pitch: floa
         board.put(candidates, size)
 
 
-def _notches(board: Board, pole: Pole, factor: float) -> None:
-    for groove, count in pole.notches:
-        off = groove.angle
-        place = (
-            "on q axis"
-            if abs(off) < 1e-6
-            else f"{number(math.degrees(abs(off)), 2)}\u00b0 from q axis"
+def _notches(board: Board, pole: Pole, factor: float, pitch: float) -> None:
+    for group in pole.notches:
+        groove = group.groove
+        sizes = (
+            f"{group.count}\u00d7 notch {number(groove.mouth / MM)} wide,"
+            f" {number(groove.depth / MM)} deep"
         )
-        sizes = f"{count}\u00d7 {number(groove.mouth / MM)} wide, {number(groove.depth / MM)} deep"
-        radii = ", ".join(f"R{number(r / MM)}" for r in groove.radii)
-        texts = [sizes, f"{radii + ', ' if radii else ''}{place}"]
-        turn = cmath.exp(1j * (UP - off))
-        tips = [edge.point(0.5) * turn * factor for edge in groove.edges]
-        candidates = (inks for tip in tips for inks in leaders(tip, texts))
-        board.put(candidates, sizes)
+        radii = [f"R{number(r / MM)}" for r in groove.radii]
+        texts = [sizes, ", ".join([*radii, _place(group.off_axis, pitch)])]
+        tips = [
+            edge.point(0.5) * cmath.rect(1.0, UP - side * group.off_axis) * factor
+            for side in (1.0, -1.0)
+            for edge in groove.edges
+        ]
+        board.put((inks for tip in tips for inks in leaders(tip, texts)), sizes)
+
+
+def _place(off_axis: float, pitch: float) -> str:
+    """Where something lies that is `off_axis` rad from the q axis."""
+    if off_axis < ON_AXIS:
+        return "on q axis"
+    if abs(off_axis - 0.5 * pitch) < ON_AXIS:
+        return "on d axis"
+    return f"{number(math.degrees(off_axis), ANGLE_DIGITS)}\u00b0 from q axis"
 
 
 def _rim(board: Board, pole: Pole, factor: float) -> None:

@@ -6,11 +6,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from lamwright.geometry.contours import Contour
-from lamwright.geometry.curves import Edge, Path, Point, turned_edge
+from lamwright.geometry.curves import Edge, Path, turned_edge
 
-from .sheet_clip import runs
+from .sheet_clip import heights_at, runs
 from .sheet_ink import edge_extremes
-from .sheet_job import MM
 from .sheet_measures import PoleMeasure
 
 ON_CIRCLE = 1e-7  # m, of an arc about the axis
@@ -69,6 +68,15 @@ class HoleGroup:
     first: Path  # upright, of the first pole that has one
 
 
+@dataclass(frozen=True, slots=True)
+class NotchGroup:
+    """Notches all alike at one angle off their q axes, magnitude in rad."""
+
+    groove: Groove
+    off_axis: float
+    count: int
+
+
 def bore_measure(contours: Sequence[Contour]) -> BoreMeasure:
     """Bore and keyways; a lamination has one contour on layer BORE."""
     path = next(c.path for c in contours if c.layer == "BORE")
@@ -96,6 +104,20 @@ def rim_measure(contours: Sequence[Contour], pole_angle: float) -> RimMeasure:
         return RimMeasure(radius, True, _grooves(path, radius), on_q, ())
     arcs = [edge.radius for edge in path.edges if not edge.is_line]
     return RimMeasure(radius, False, (), on_q, _each_once(arcs))
+
+
+def notch_groups(rim: RimMeasure, pole_angle: float) -> tuple[NotchGroup, ...]:
+    """Notches all around, those alike together."""
+    found: list[NotchGroup] = []
+    for groove in rim.notches:
+        off = abs((groove.angle % pole_angle) - 0.5 * pole_angle)
+        for k, known in enumerate(found):
+            if known.groove.is_like(groove) and abs(known.off_axis - off) * rim.radius < SAME:
+                found[k] = NotchGroup(known.groove, known.off_axis, known.count + 1)
+                break
+        else:
+            found.append(NotchGroup(groove, off, 1))
+    return tuple(found)
 
 
 def hole_groups(poles: Sequence[PoleMeasure]) -> tuple[HoleGroup, ...]:
@@ -169,8 +191,7 @@ def _is_on(edge: Edge, radius: float) -> bool:
 
 
 def _reach(path: Path, way: complex) -> float:
-    from .sheet_clip import heights_at
-
+    """Distance from the axis to an outline in a direction."""
     upright = [turned_edge(edge, cmath.phase(1j / way)) for edge in path.edges]
     return max(heights_at(upright, 0.0))
 
@@ -185,13 +206,3 @@ def _each_once(values: Sequence[float]) -> tuple[float, ...]:
 
 def _apart(first: float, second: float) -> float:
     return (first - second) % (2.0 * math.pi)
-
-
-def groove_place(groove: Groove, radius: float) -> Point:
-    """The middle of a groove's mouth, in the lamination's frame."""
-    return cmath.rect(radius, groove.angle)
-
-
-def in_mm(length: float) -> float:
-    """A length in mm."""
-    return length / MM
