@@ -21,6 +21,8 @@ from .operating import (
     AngleSettings,
     best_angle,
     chosen_angles,
+    kept_conditions,
+    uphill,
 )
 
 MAGNET_ANGLES = AngleSettings(first=42.0 * DEGREE, least=-60.0 * DEGREE, most=88.0 * DEGREE)
@@ -61,13 +63,14 @@ def predicted_angle(
     chosen = chosen_angles(tried, values, use)
     gamma = np.array([tried[k] for k in chosen])
     torque, slope = np.array([values[k] for k in chosen]).T
-    order = np.arange(1, 2 * gamma.size + 1)
+    kept = kept_conditions(gamma, use)
+    order = np.arange(1, kept.size + 1)
     # cos, sin, cos, sin ... of gamma, 2 gamma, 3 gamma, 4 gamma ...
     shift = np.where(order % 2 == 1, 0.0, -0.5 * math.pi)
     rows = np.cos(np.outer(gamma, order) + shift)
     slopes = -order * np.sin(np.outer(gamma, order) + shift)
-    series = np.linalg.solve(np.concatenate([rows, slopes]), np.concatenate([torque, slope]))
-    low = max(use.least, float(gamma.min()) - 2.0 * use.reach)
-    high = min(use.most, float(gamma.max()) + 2.0 * use.reach)
+    conditions, right = np.concatenate([rows, slopes]), np.concatenate([torque, slope])
+    series = np.linalg.solve(conditions[kept], right[kept])
+    low, high = uphill(tried, values, chosen, use, 2.0)
     grid = np.arange(low, high, GRID)
     return float(grid[np.argmax(np.cos(np.outer(grid, order) + shift) @ series)])

@@ -21,7 +21,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from lamwright.geometry.errors import LamwrightError, NotConverged
-from lamwright.solver.types import FloatArray
+from lamwright.solver.types import FloatArray, IntArray
 
 DEGREE = math.pi / 180.0
 GRID = 0.005 * DEGREE  # of the search for the maximum
@@ -37,6 +37,9 @@ class AngleSettings:
     least: float = 5.0 * DEGREE
     most: float = 88.0 * DEGREE
     apart: float = 0.05 * DEGREE  # angles nearer to each other than this count once
+    # Of two angles nearer than this only one torque counts beside both slopes: their difference
+    # would be that of the fields' errors, of some 1e-5.
+    close: float = 1.5 * DEGREE
     reach: float = 8.0 * DEGREE  # how far beyond the tried angles the interpolation is trusted
     # A second prediction that moves less is within 0.03 degree of the maximum of the torque given
     # (saturated machines of tests/postprocess).
@@ -190,28 +193,65 @@ def _predicted(
     chosen = chosen_angles(tried, values, use)
     gamma = np.array([tried[k] for k in chosen])
     torque, slope = np.array([values[k] for k in chosen]).T
-    law = _inverse_law(gamma, torque, slope)
-    low = max(use.least, float(gamma.min()) - use.reach)
-    high = min(use.most, float(gamma.max()) + use.reach)
+    law = _inverse_law(gamma, torque, slope, kept_conditions(gamma, use))
+    low, high = uphill(tried, values, chosen, use)
     grid = np.arange(low, high, GRID)
     inverse_at = law(np.cos(grid))
     grid, inverse_at = grid[inverse_at > 0.0], inverse_at[inverse_at > 0.0]
     return float(grid[np.argmax(np.sin(2.0 * grid) / inverse_at)])
 
 
+def uphill(
+    tried: Sequence[float],
+    values: Sequence[tuple[float, float]],
+    chosen: Sequence[int],
+    use: AngleSettings,
+    reaches: float = 1.0,
+) -> tuple[float, float]:
+    """Where the maximum may lie: on the side of each angle on which its torque grows.
+
+    Args:
+        tried: angles in rad.
+        values: torques and slopes there.
+        chosen: numbers of those that are interpolated.
+        use: bounds, and how far beyond the chosen ones.
+        reaches: so many times as far.
+    """
+    gamma = [tried[k] for k in chosen]
+    low = max(use.least, min(gamma) - reaches * use.reach)
+    high = min(use.most, max(gamma) + reaches * use.reach)
+    rising = [g for g, (_, slope) in zip(tried, values, strict=True) if slope > 0.0]
+    falling = [g for g, (_, slope) in zip(tried, values, strict=True) if slope <= 0.0]
+    if rising and falling and max(rising) > min(falling):
+        return low, high  # a minimum between them
+    low, high = max([low, *rising]), min([high, *falling])
+    return low, max(high, low + GRID)
+
+
+def kept_conditions(gamma: FloatArray, use: AngleSettings) -> IntArray:
+    """Numbers of the conditions that count, of the torques and then the slopes at the angles.
+
+    With 56.0 and 56.2 degrees about the maximum all four predicted 48 degrees, and 4.7 % of the
+    torque were lost.
+    """
+    count = gamma.size
+    is_close = count == 2 and abs(float(gamma[1] - gamma[0])) < use.close
+    return np.array([0, 2, 3]) if is_close else np.arange(2 * count)
+
+
 def _inverse_law(
-    gamma: FloatArray, torque: FloatArray, slope: FloatArray
+    gamma: FloatArray, torque: FloatArray, slope: FloatArray, kept: IntArray
 ) -> np.polynomial.Polynomial:
-    """Polynomial in cos gamma with the values and slopes of sin 2 gamma / T at the angles."""
+    """Polynomial in cos gamma with the values and slopes of sin 2 gamma / T that are `kept`."""
     x, middle = np.cos(gamma), float(np.mean(np.cos(gamma)))
     double = np.sin(2.0 * gamma)
     value = double / torque
     change = (2.0 * np.cos(2.0 * gamma) - double * slope / torque) / torque  # d/d gamma
-    power = np.arange(2 * gamma.size)
+    power = np.arange(kept.size)
     at = (x - middle)[:, None]
     rows = [at**power, power * at ** np.maximum(power - 1, 0)]
     right = np.concatenate([value, change / -np.sin(gamma)])
-    coefficients = np.linalg.solve(np.concatenate(rows), right)
+    coefficients = np.linalg.solve(np.concatenate(rows)[kept], right[kept])
     # The domain moves the origin to the middle; its half-width of 1 scales nothing.
     return np.polynomial.Polynomial(coefficients, domain=[middle - 1.0, middle + 1.0])
 

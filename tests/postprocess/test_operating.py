@@ -132,6 +132,22 @@ def test_best_angle_far_from_the_first_angles():
     assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.04)
 
 
+@pytest.mark.parametrize("peak_deg", [56.05, 56.2, 56.5, 57.0])
+def test_two_angles_beside_the_maximum_do_not_send_the_search_away(peak_deg):
+    """Torques with errors of 1e-5, as fields have them: the maximum between two angles is found.
+
+    By values and slopes alone the search ended up to 8 degrees off. 2 (0.3 deg)^2 is 5e-5.
+    """
+    peak = math.radians(peak_deg)
+
+    def torque_of(gamma):
+        error = 1e-5 if gamma == AngleSettings().first else -1e-5
+        law, slope = math.cos(1.5 * (gamma - peak)), -1.5 * math.sin(1.5 * (gamma - peak))
+        return law + error, slope
+
+    assert math.degrees(best_angle(torque_of).gamma) == pytest.approx(peak_deg, abs=0.3)
+
+
 def test_no_saliency_is_said():
     """Torque that is negative everywhere has no best angle; the user is told why."""
     with pytest.raises(LamwrightError, match="no saliency along its d axis"):
