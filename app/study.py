@@ -9,7 +9,10 @@ import json
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
+
+if TYPE_CHECKING:
+    from lamwright.solver.tolerance import ToleranceName
 
 Value = float | int | str
 Values = Mapping[str, Value]  # of one design, by key, in the study's order of keys
@@ -97,7 +100,7 @@ class Study:
     drawings: Mapping[str, bytes]  # by their names in the design
     keys: tuple[StudyKey, ...]
     effort: Effort
-    tolerance: str
+    tolerance: "ToleranceName"
     limits: tuple[StudyLimit, ...]
     goals: tuple[StudyGoal, ...]
     sampling: Sampling

@@ -6,6 +6,7 @@ import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from functools import lru_cache
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.design_keys import replaced
@@ -18,6 +19,9 @@ from .study_layout import laid_out_barriers
 from .study_machine import machine_of
 from .study_text import with_barriers, with_values
 from .version import version
+
+if TYPE_CHECKING:
+    from lamwright.solver.tolerance import ToleranceName
 
 _UNTOLD = ("name", "note")  # of a design: no figure depends on them
 
@@ -37,7 +41,7 @@ class Task:
     cards: Mapping[str, str]
     drawings: Mapping[str, bytes] = field(default_factory=dict)
     effort: Effort = "quick"
-    tolerance: str = "coarse"
+    tolerance: "ToleranceName" = "coarse"
     limits: tuple[StudyLimit, ...] = ()
     fault: str = ""  # why the values give no design at all; the text is then the base's
 

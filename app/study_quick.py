@@ -1,0 +1,134 @@
+"""Quick figures of a design: a coarse field at few rotor positions, the stress on one mesh.
+
+The same steps as `assess` and the same names, with less of everything: a mesh about half as fine
+as that of `coarse`, 9 to 14 instead of 30 rotor positions, Newton's iteration ended earlier, no
+refinement of the stress mesh, no error bars. How far that is from the full figures is measured in
+app/README.md. Nothing is kept between designs.
+"""
+
+import math
+from dataclasses import replace
+
+from lamwright.geometry.contours import lamination_contours
+from lamwright.geometry.curves import area, perimeter
+from lamwright.geometry.design_file import Machine
+from lamwright.geometry.errors import GeometryError
+from lamwright.geometry.section import CrossSection, rotor_cell, rotor_iron
+from lamwright.geometry.skew import skew_offsets
+from lamwright.postprocess.masses import mass_figures
+from lamwright.postprocess.operating import search_positions
+from lamwright.postprocess.quantities import figures_of
+from lamwright.postprocess.ribs import rib_report
+from lamwright.postprocess.skew import mean_solution, step_point
+from lamwright.postprocess.summary import magnetic_figures, stress_figures, terminal_figures
+from lamwright.postprocess.torque import TorqueWaveform, torque_waveform, waveform_positions
+from lamwright.postprocess.verdict import RPM, StressFigures
+from lamwright.solver.chains import OperatingPoint, fanned
+from lamwright.solver.field import MagneticModel, solve_point
+from lamwright.solver.mesh import mesh_lamination, mesh_section
+from lamwright.solver.mesh_plan import MeshSettings
+from lamwright.solver.newton import NewtonSettings
+from lamwright.solver.rotor_stress import StressSettings, sharp_corners, stress_on
+from lamwright.solver.types import FieldSolution
+
+from .angle import AngleFound, most_torque
+from .point import model_of
+from .study_figures import NOT_QUICK
+
+FIELD_MESH = MeshSettings(
+    scale=2.0,
+    across_rib=2.0,
+    across_iron=1.0,
+    across_air=0.5,
+    across_copper=0.5,
+    coarsest=0.12,
+    corner=0.5,
+    growth=1.0,
+    step_angle=math.pi / 4.0,
+)
+# At 1e-2 torque and linkages are those of 1e-4 within 1e-4 (measured, three demos).
+NEWTON = NewtonSettings(tolerance=1e-2)
+LEAST_POSITIONS = 9
+STRESS = StressSettings(mesh=MeshSettings(scale=2.0))
+
+
+def quick_figures_of(machine: Machine, section: CrossSection) -> dict[str, float]:
+    """Figures by their keys, in their units.
+
+    Raises:
+        GeometryError: the lamination has a corner without a finite stress.
+        MeshError: it cannot be meshed.
+        NotConverged: an iteration did not end.
+        LamwrightError: the rotor makes no torque.
+    """
+    waveform, magnet_psi_q = _field(machine, section)
+    magnetic = magnetic_figures(waveform, magnet_psi_q)
+    groups = (
+        magnetic,
+        terminal_figures(machine.design, magnetic),
+        _stress(machine, section),
+        mass_figures(machine, section),
+    )
+    found = {one.key: float(one.value) for group in groups for one in figures_of(group)}
+    contours = lamination_contours(section)
+    found["lamination_area_mm2"] = 1e6 * sum(area(one.path) for one in contours)
+    found["lamination_perimeter_mm"] = 1e3 * sum(perimeter(one.path) for one in contours)
+    return {key: value for key, value in found.items() if key not in NOT_QUICK}
+
+
+def positions_of(pole_pairs: int, slots: int) -> int:
+    """Rotor positions of the waveform: the angle search's among them."""
+    least = len(search_positions(pole_pairs, slots))
+    return least * max(1, math.ceil(LEAST_POSITIONS / least))
+
+
+def _field(machine: Machine, section: CrossSection) -> tuple[TorqueWaveform, float]:
+    """The waveform at the angle of most torque, and psi_q at no load in V s."""
+    design = machine.design
+    model = model_of(machine, section, mesh_section(section, FIELD_MESH))
+    model = replace(model, settings=replace(model.settings, newton=NEWTON))
+    found = most_torque(model, design, lambda share: None)
+    offsets, pole_pairs = skew_offsets(design), section.pole_pairs
+    count = positions_of(pole_pairs, section.slots)
+    places = waveform_positions(pole_pairs, count).tolist()
+    points = [OperatingPoint(found.i_d, found.i_q, place) for place in places]
+    by_step = [
+        _chained(model, [step_point(point, offset, pole_pairs) for point in points], found, k)
+        for k, offset in enumerate(offsets)
+    ]
+    together = zip(zip(*by_step, strict=True), points, strict=True)
+    fields = [mean_solution(steps, offsets, point, pole_pairs) for steps, point in together]
+    bare = 0.0
+    if machine.magnet is not None:
+        bare = solve_point(model, 0.0, 0.0, places[0]).psi_q
+    return torque_waveform(fields, pole_pairs), bare
+
+
+def _chained(
+    model: MagneticModel, points: list[OperatingPoint], found: AngleFound, step: int
+) -> list[FieldSolution]:
+    """Fields of one step of the rotor, in chains away from those of the angle search."""
+    near = found.last[step]
+    at: dict[int, FieldSolution] = {}
+    for start, chain in fanned([p.position for p in points], [f.position for f in near]):
+        field = near[start]
+        for k in chain:
+            if k not in at:
+                point = points[k]
+                at[k] = solve_point(model, point.i_d, point.i_q, point.position, field)
+            field = at[k]
+    return [at[k] for k in range(len(points))]
+
+
+def _stress(machine: Machine, section: CrossSection) -> StressFigures:
+    """Figures of the lamination at overspeed, from the mesh that `assess` begins with."""
+    cell = rotor_cell(section)
+    faults = tuple(fault for iron in rotor_iron(cell) for fault in sharp_corners(iron))
+    if faults:
+        raise GeometryError(faults)
+    duty = machine.design.duty
+    speed = duty.overspeed_factor * duty.maximum_speed_rpm / RPM
+    mesh = mesh_lamination(section, STRESS.mesh)
+    solution = stress_on(section, mesh, machine.rotor_steel, speed, STRESS)
+    strength = 1e6 * machine.rotor_steel.yield_strength_mpa.value
+    return stress_figures(rib_report(solution, section, strength))
