@@ -7,19 +7,17 @@ the program, 130 interrupted.
 
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING, Literal, NoReturn
+from typing import Literal, NoReturn
 
 import click
 
 from lamwright.geometry.errors import LamwrightError
 
+from .cli_assess import assess
 from .cli_ledger import ledger
 from .cli_start import start
 from .cli_study import sweep
 from .threads import hold_threads
-
-if TYPE_CHECKING:
-    from .rib_work import RibsReport
 
 FAULT = 70  # "internal software error" of the usual list of exit codes
 INTERRUPTED = 130  # as a shell reports a process ended by the interrupt key
@@ -75,48 +73,6 @@ _PICTURES = click.option(
 def main() -> None:
     """Design synchronous reluctance rotors that can be built."""
     hold_threads()
-
-
-@main.command()
-@_DESIGN
-@_OUT
-@click.option(
-    "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
-    default="normal",
-    show_default=True,
-    help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
-)
-@_PICTURES
-@click.option("--ribs", "with_ribs", is_flag=True, help="All that the command ribs tells, too.")
-@click.pass_context
-def assess(
-    ctx: click.Context,
-    design: Path,
-    out: Path,
-    tolerance: Literal["coarse", "normal", "fine"],
-    pictures: bool,
-    with_ribs: bool,
-) -> None:
-    """Field, stress, verdict, pictures and punch outline of DESIGN.
-
-    Ends with 0 when every limit of the design holds, with 1 when one is missed.
-    """
-    from .run import assess as run
-    from .shown_progress import shown_progress
-
-    reports: list[RibsReport] = []
-    on_ribs = reports.append if with_ribs else None
-    with shown_progress() as progress:
-        verdict = run(design, out, progress, tolerance, pictures, on_ribs)
-    from .screen import print_verdict
-
-    print_verdict(verdict, str(out))
-    for report in reports:
-        from .rib_screen import print_ribs
-
-        print_ribs(report, str(out))
-    ctx.exit(0 if verdict.passes and all(report.passes for report in reports) else 1)
 
 
 @main.command("map")
@@ -373,5 +329,6 @@ def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
 
 
 main.add_command(ledger)
+main.add_command(assess)
 main.add_command(start)
 main.add_command(sweep)

@@ -189,7 +189,7 @@ def _rows(edges: Sequence[Edge], k: int, t: FloatArray) -> tuple[IntArray, Float
 def _shape(t: FloatArray, sweep: float) -> tuple[ComplexArray, ComplexArray]:
     """The share f of the chord at shares t of an arc, and its derivative by the sweep."""
     if abs(sweep) < 1e-4:
-        bow: ComplexArray = 0.5j * t * (t - 1.0)
+        bow = np.asarray(0.5j * t * (t - 1.0), dtype=np.complex128)
         return t + sweep * bow, bow
     part, whole = np.exp(1j * t * sweep), cmath.exp(1j * sweep)
     f = (1.0 - part) / (1.0 - whole)

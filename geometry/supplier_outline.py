@@ -36,7 +36,7 @@ STRAY = 6.0  # standard deviations of a contour's points
 LEAST_STRAY = 2e-5  # m
 MAP_STEP = 4e-4  # m, between the points of the deviation map
 MOST_PLACES = 6  # worst places named
-APART = 2e-3  # m, between places that are named each
+APART = 0.08  # of the rim's radius, between places that are named each
 
 IntArray = npt.NDArray[np.int64]
 
@@ -227,7 +227,7 @@ def _worst(
     places: list[WorstPlace] = []
     for k in np.argsort(-np.abs(deviation)):
         point = complex(at[k])
-        if all(abs(point - place.at) > APART for place in places):
+        if all(abs(point - place.at) > APART * ideal.rim for place in places):
             places.append(
                 WorstPlace(float(deviation[k]), point, laid.drawn(point), ideal.place(point))
             )
