@@ -15,6 +15,7 @@ from lamwright.geometry.errors import LamwrightError
 
 from .cli_assess import assess
 from .cli_ledger import ledger
+from .cli_release import release, verify
 from .cli_start import start
 from .cli_study import sweep
 from .threads import hold_threads
@@ -332,3 +333,5 @@ main.add_command(ledger)
 main.add_command(assess)
 main.add_command(start)
 main.add_command(sweep)
+main.add_command(release)
+main.add_command(verify)

@@ -119,7 +119,13 @@ def path_of(entity: "DXFEntity", path: FilePath) -> Path:
     if not isinstance(entity, LWPolyline) or not entity.closed:
         kind, layer = entity.dxftype(), entity.dxf.layer
         raise DesignError(f"{path}: {kind} on layer {layer} is no closed polyline")
-    vertices = [(MM * complex(x, y), float(b)) for x, y, b in entity.get_points("xyb")]
+    way = entity.dxf.extrusion
+    if abs(way.x) + abs(way.y) > 0.0 or way.z == 0.0 or entity.dxf.elevation != 0.0:
+        raise DesignError(f"{path}: a polyline on layer {entity.dxf.layer} is not in the plane")
+    # Seen from below its x axis is turned round: so programs write what they have mirrored.
+    side = 1.0 if way.z > 0.0 else -1.0
+    points = entity.get_points("xyb")
+    vertices = [(MM * complex(side * x, y), side * float(b)) for x, y, b in points]
     ends = [point for point, _ in (*vertices[1:], *vertices[:1])]
     outline = Path(tuple(Edge(p, end, b) for (p, b), end in zip(vertices, ends, strict=True)))
     if not math.isfinite(perimeter(outline)):

@@ -198,11 +198,11 @@ def _add_texts(model: "Modelspace", reach: float, texts: Sequence[str]) -> float
     for text in texts:
         y -= LINE_PITCH * height
         attributes = {"layer": "TEXT", "height": height, "insert": (-reach, y)}
-        model.add_text(_plain(text), dxfattribs=attributes)
+        model.add_text(plain_text(text), dxfattribs=attributes)
     return y - height if texts else y
 
 
-def _plain(text: str) -> str:
+def plain_text(text: str) -> str:
     """Text that every program shows alike: one line of printable ASCII, no control codes."""
     line = " ".join(text.split()).encode("ascii", "replace").decode()
     return line.replace("%%", "% %").replace("^", " ")

@@ -47,13 +47,19 @@ def prepared_folder(folder: Path) -> Path:
 
 @contextmanager
 def staged(folder: Path, last: str = VERDICT_FILE) -> Iterator[Path]:
-    """A hidden folder whose files move to `folder` when the block ends well, `last` as the last."""
+    """A hidden folder whose files move to `folder` when the block ends well, `last` as the last.
+
+    Files below it move to the same place below `folder`.
+    """
     stage = Path(tempfile.mkdtemp(prefix=".unfinished-", dir=folder))
     try:
         yield stage
         (folder / last).unlink(missing_ok=True)
-        for file in sorted(stage.iterdir(), key=lambda file: (file.name == last, file)):
-            file.replace(folder / file.name)
+        files = [file for file in stage.rglob("*") if not file.is_dir()]
+        for file in sorted(files, key=lambda file: (file == stage / last, file)):
+            target = folder / file.relative_to(stage)
+            target.parent.mkdir(parents=True, exist_ok=True)
+            file.replace(target)
     finally:
         shutil.rmtree(stage, ignore_errors=True)
 
