@@ -204,5 +204,5 @@ def _add_texts(model: "Modelspace", reach: float, texts: Sequence[str]) -> float
 
 def plain_text(text: str) -> str:
     """Text that every program shows alike: one line of printable ASCII, no control codes."""
-    line = " ".join(text.split()).encode("ascii", "replace").decode()
-    return line.replace("%%", "% %").replace("^", " ")
+    text = text.replace("%%", "% %").replace("^", " ")
+    return " ".join(text.split()).encode("ascii", "replace").decode()

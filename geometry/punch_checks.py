@@ -133,6 +133,7 @@ def _misplaced(contours: Sequence[Contour], names: Sequence[str]) -> list[Findin
     """Holes that are not in the steel; only of contours that do not touch."""
     found = []
     outers = [c.path for c in contours if c.layer == "OUTER_CONTOUR"]
+    spots = [_spot(contour.path) for contour in contours]
     for k, contour in enumerate(contours):
         if contour.layer == "OUTER_CONTOUR":
             continue
@@ -143,10 +144,21 @@ def _misplaced(contours: Sequence[Contour], names: Sequence[str]) -> list[Findin
             found.append(Finding("contour_outside", key, size, text, "take it out"))
             continue
         for j, other in enumerate(contours):
-            if j != k and other.layer != "OUTER_CONTOUR" and encloses(other.path, point):
+            if j == k or other.layer == "OUTER_CONTOUR":
+                continue
+            middle, reach = spots[j]
+            if abs(point - middle) <= reach and encloses(other.path, point):
                 key, text = f"area_mm2 of {names[k]} at {at}", f"inside {names[j]}"
                 found.append(Finding("contour_nested", key, size, text, "take one out"))
     return found
+
+
+def _spot(path: Path) -> tuple[Point, float]:
+    """The middle of a contour's corners, and a radius in m about it that holds the contour."""
+    middle = sum(edge.start for edge in path.edges) / len(path.edges)
+    # The rise of an arc over its chord is half the chord times the bulge.
+    rise = max(0.5 * abs(edge.end - edge.start) * abs(edge.bulge) for edge in path.edges)
+    return middle, max(abs(edge.start - middle) for edge in path.edges) + 2.0 * rise
 
 
 def _thin(contours: Sequence[Contour], names: Sequence[str], sheet_mm: float) -> list[Finding]:

@@ -8,7 +8,7 @@ allowance, the sides of its notches running on. Nothing is redrawn: lines stay l
 
 import cmath
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 
 from .contours import Contour
 from .corners import crossings
@@ -17,13 +17,14 @@ from .distances import distance, nearest
 from .errors import DesignError, OffsetError
 from .offset_loops import MITRE, WELD, offset_loops
 from .outline_places import place_text
-from .punch_options import PunchOptions
+from .punch_options import MOST_CLEARANCE, MOST_OFFSET, Corners, PunchOptions
 from .punch_webs import TOUCH, air_throats, edge_pairs
 
 MM = 1e-3  # m
 POCKETS = "MAGNET_POCKETS"
 RIM = "OUTER_CONTOUR"
 SAME = 1e-11  # m and of a bulge: poles alike differ by the rounding of a turn
+FARTHEST = 2.0 * MM * (MOST_OFFSET + MOST_CLEARANCE)  # m, that two contours may close in by
 STEPS = 14  # halvings of the offset refused: 1 mm to 0.1 um
 
 
@@ -70,15 +71,9 @@ def _moved(
             result.append(Contour(contour.layer, turned(result[known[0]].path, known[1])))
             continue
 
-        # `found` is used up within this turn of the loop.
-        def found(
-            share: float, path: Path = contour.path, base: float = base, step: float = step
-        ) -> tuple[Path, ...]:
-            return offset_loops(path, base + share * step, options.corners)
-
-        loops = found(1.0)
+        loops = offset_loops(contour.path, base + step, options.corners)
         if len(loops) != 1:
-            raise _closing(contour, found, key, stated)
+            raise _closing(contour, (base, step), options.corners, key, stated)
         result.append(Contour(contour.layer, loops[0]))
     _refuse_cuts(contours, result, fixed, added, key, stated)
     return result
@@ -101,22 +96,29 @@ def _known(contours: Sequence[Contour], contour: Contour) -> tuple[int, float] |
 
 
 def _closing(
-    contour: Contour, found: Callable[[float], tuple[Path, ...]], key: str, stated: float
+    contour: Contour, moves: tuple[float, float], corners: Corners, key: str, stated: float
 ) -> OffsetError:
-    """Where a contour would close or fall apart, and the most that keeps it whole."""
+    """Where a contour would close or fall apart, and the most that keeps it whole.
+
+    Its distance in m is the first of `moves` and a share of the second, which is what is stated.
+    Sharp corners may meet where rolled ones have room: only these tell closing from splitting.
+    """
+    base, step = moves
     low, high = 0.0, 1.0
     for _ in range(STEPS):
         middle = 0.5 * (low + high)
-        low, high = (middle, high) if len(found(middle)) == 1 else (low, middle)
-    last, gone = found(low), found(high)
+        is_whole = len(offset_loops(contour.path, base + middle * step, corners)) == 1
+        low, high = (middle, high) if is_whole else (low, middle)
+    last = offset_loops(contour.path, base + low * step, corners)
+    gone = offset_loops(contour.path, base + high * step, "round")
+    most = low * stated
+    at = _throat(last[0] if len(last) == 1 else contour.path)
     if len(gone) > 1:
-        verb = "split"
         p, q = _nearest(gone[0].edges, gone[1].edges)
-        place = 0.5 * (p + q)
-    else:
-        verb, place = "close", _throat(last[0] if len(last) == 1 else contour.path)
-    fault = f"would {verb} a contour of layer {contour.layer} near {place_text(place)}"
-    return _refusal(key, stated, low * stated, fault, place)
+        at = 0.5 * (p + q)
+    verb = {0: "close", 1: "let sharp corners meet in"}.get(len(gone), "split")
+    fault = f"would {verb} a contour of layer {contour.layer} near {place_text(at)}"
+    return _refusal(key, stated, most, fault, at)
 
 
 def _refusal(key: str, stated: float, most: float, fault: str, place: Point) -> OffsetError:
@@ -150,7 +152,7 @@ def _refuse_cuts(
     stated: float,
 ) -> None:
     """Refuse contours that would meet, so that the steel between them is cut through."""
-    for i, j in _neighbours(before, 4.0 * MM):
+    for i, j in _neighbours(before, FARTHEST):
         closer = -(fixed[i] + fixed[j] + added[i] + added[j])
         if closer <= 0.0:
             continue

@@ -19,7 +19,6 @@ from .outline_edges import distances_to
 
 TOUCH = 1e-6  # m, edges no further apart are in contact
 EMPTY = 1e-6  # of the circle's radius, that a contour may reach into it by rounding
-FIRST_REACH = 1e-3  # m, doubled until a place is found
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,30 +51,22 @@ def air_throats(contour: Contour, within: float) -> tuple[Web, ...]:
     return _narrow((contour,), within, lambda point: not _in_steel((contour,), point))
 
 
-def least_web(contours: Sequence[Contour]) -> Web | None:
-    """The thinnest place of the steel; None where the steel has none, as a plain disc."""
-    span = max(abs(edge.start) for contour in contours for edge in contour.path.edges)
-    within = FIRST_REACH
-    while True:
-        found = steel_webs(contours, within)
-        if found or within > 2.0 * span:
-            return found[0] if found else None
-        within *= 2.0
-
-
 def edge_pairs(
     contours: Sequence[Contour], margin: float
 ) -> list[tuple[tuple[int, Edge], tuple[int, Edge]]]:
     """Pairs of edges nearer than about `margin` m that do not follow each other, with contours."""
     numbered = [
-        (c, k, len(contour.path.edges), edge)
+        (c, k, len(contour.path.edges), edge, edge.point(0.5), 0.5 * edge.length)
         for c, contour in enumerate(contours)
         for k, edge in enumerate(contour.path.edges)
     ]
     pairs = []
-    for i, j in overlapping_boxes([edge for *_, edge in numbered], 2.0 * margin):
-        a, k, count, first = numbered[i]
-        b, m, _, second = numbered[j]
+    for i, j in overlapping_boxes([one[3] for one in numbered], 2.0 * margin):
+        a, k, count, first, middle, half = numbered[i]
+        b, m, _, second, other, reach = numbered[j]
+        # No point of an edge lies further than half its length from its middle.
+        if abs(middle - other) - half - reach > margin:
+            continue
         if a != b or (k - m) % count not in (1, count - 1):
             pairs.append(((a, first), (b, second)))
     return pairs
