@@ -16,6 +16,7 @@ from lamwright.geometry.errors import LamwrightError
 from .cli_assess import assess
 from .cli_ledger import ledger
 from .cli_release import release, verify
+from .cli_search import search
 from .cli_start import start
 from .cli_study import sweep
 from .threads import hold_threads
@@ -335,3 +336,4 @@ main.add_command(start)
 main.add_command(sweep)
 main.add_command(release)
 main.add_command(verify)
+main.add_command(search)

@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING, Protocol
 from .search_front import turned
 
 if TYPE_CHECKING:
-    from .study import StudyGoal, StudyLimit
+    from .study import Study, StudyGoal, StudyLimit
 
 
 class Looked(Protocol):
@@ -73,12 +73,22 @@ class Measure:
             return Worth(none, most)
         lack = sum((lacking(limit, looked.figures) for limit in self.limits), 0.0)
         if lack == 0.0 and looked.passes is False:
-            lack = 0.5  # a limit of the design file itself
+            lack = 0.5  # a limit that is not among those stated
         return Worth(goals, lack)
 
     def all(self, rows: Sequence[Looked]) -> list[Worth]:
         """Of many designs."""
         return [self.worth(row) for row in rows]
+
+
+def measure_of(study: "Study") -> Measure:
+    """What a study asks: its goals, its limits, and those of its base design on other figures."""
+    from .evaluation import limits_of
+    from .study_screening import STAGES
+    from .study_task import machine_of_study
+
+    limits = limits_of(machine_of_study(study), study.limits)
+    return Measure(study.goals, limits, STAGES)
 
 
 def lacking(limit: "StudyLimit", figures: Mapping[str, float]) -> float:

@@ -31,8 +31,12 @@ CARD_KEYS = ("steel.rotor_card", "steel.stator_card", "magnet.card")
 DRAWING_KEYS = ("stator.outline_dxf", "rotor.outline_dxf")
 
 
-def read_study(path: Path) -> Study:
+def read_study(path: Path, *, is_searched: bool = False) -> Study:
     """The study in the TOML file `path`, with all that its designs need.
+
+    Args:
+        path: study file.
+        is_searched: whether its points are asked for one by one: then they need not be countable.
 
     Raises:
         DesignError: the study, its base or a card cannot be read or used; one line a fault.
@@ -66,7 +70,7 @@ def read_study(path: Path) -> Study:
         seconds=tables.most_seconds
         or (QUICK_SECONDS if tables.effort == "quick" else FULL_SECONDS),
     )
-    if found := [*_grid_faults(study)]:
+    if not is_searched and (found := [*_grid_faults(study)]):
         raise faults_at(path, text, found)
     return study
 

@@ -26,6 +26,7 @@ from lamwright.geometry.section import CrossSection
 
 from .study import StudyLimit
 
+STAGES = ("values", "design", "geometry", "ribs", "quick", "full")  # with the computation
 MARGIN = "yield_margin"
 # The law may be wrong by so much, either way: of 20 random rotors the stress solution's greatest
 # stress was 0.24 times the law's at the least (see app/README.md).

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from .study import Study
 
 # Gives what is to be called for each row, for a study and its number of designs.
-Watch = Callable[["Study", int], AbstractContextManager[OnRow]]
+Watch = Callable[["Study", int | None], AbstractContextManager[OnRow]]
 
 INTERRUPTED = "interrupted; what is finished is kept: the same command goes on from there"
 
@@ -32,7 +32,7 @@ class SweepReport:
     seconds: float
 
 
-def unwatched(study: "Study", total: int) -> AbstractContextManager[OnRow]:
+def unwatched(study: "Study", total: int | None) -> AbstractContextManager[OnRow]:
     """Nobody looks."""
     return nullcontext(untold)
 

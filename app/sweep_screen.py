@@ -23,11 +23,10 @@ def print_sweep(report: "SweepReport", folder: str) -> None:
     console = Console(highlight=False)
     study = report.study
     if rows := best_rows(study, report.rows):
-        console.print(_table(study, rows))
+        goal = f", best {study.goals[0].figure} first" if study.goals else ""
+        console.print(design_table(study, rows, f"{study.name}{goal}"))
     console.print(escape(_counts(report)), soft_wrap=True)
-    for outcome in ("rejected", "failed"):
-        for reason, count in _reasons(report.rows, outcome):
-            console.print(f"[dim]- {count} {outcome}:[/dim] {escape(reason)}", soft_wrap=True)
+    print_reasons(console, report.rows)
     more = f"more by: lamwright ledger {folder}; a design back by: lamwright ledger {folder} --show"
     console.print(f"[dim]{escape(more)} NUMBER[/dim]", soft_wrap=True)
 
@@ -44,9 +43,8 @@ def best_rows(study: "Study", rows: "Sequence[Row]") -> "list[Row]":
     return known[:MOST_LISTED]
 
 
-def _table(study: "Study", rows: "Sequence[Row]") -> Table:
-    goal = f", best {study.goals[0].figure} first" if study.goals else ""
-    title = f"{study.name}{goal}"
+def design_table(study: "Study", rows: "Sequence[Row]", title: str) -> Table:
+    """Keys, goals and limits of some designs, one row each."""
     table = Table(title=escape(title), title_justify="left", title_style="bold")
     keys = [key.key for key in study.keys]
     figures = list(
@@ -61,6 +59,13 @@ def _table(study: "Study", rows: "Sequence[Row]") -> Table:
         passes = {True: "hold", False: "missed", None: "not known"}[row.passes]
         table.add_row(str(row.number), *values, *found, passes)
     return table
+
+
+def print_reasons(console: Console, rows: "Sequence[Row]") -> None:
+    """Why designs were rejected or failed, the commonest reasons."""
+    for outcome in ("rejected", "failed"):
+        for reason, count in _reasons(rows, outcome):
+            console.print(f"[dim]- {count} {outcome}:[/dim] {escape(reason)}", soft_wrap=True)
 
 
 def _told(value: float | int | str | None) -> str:
