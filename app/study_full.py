@@ -29,7 +29,7 @@ def full_figures_of(
     with watch.phase("start"):
         crew = Crew(make_desk, 0)
     with crew, tempfile.TemporaryDirectory(prefix="lamwright-") as folder:
-        work = Assessment(machine, section, crew, watch, tolerance, pictures=False)
+        work = Assessment(machine, section, crew, None, watch, tolerance, pictures=False)
         verdict = work.written_to(Path(folder))
     found = {key: float(one.value) for key, one in all_figures(verdict).items()}
     masses = {one.key: float(one.value) for one in figures_of(mass_figures(machine, section))}

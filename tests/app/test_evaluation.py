@@ -145,6 +145,7 @@ def test_a_full_evaluation_has_the_figures_of_assess(study: Study, tmp_path: Pat
     """To nine digits, which is all that is kept of them; error bars too."""
     full = replace(task(study, {"rotor.gap_mm": 0.4}), effort="full", tolerance="coarse")
     ended = evaluate(full)
+    assert ended.outcome == "done", ended.reason
     verdict = assess(DEMO, tmp_path / "out", tolerance="coarse", pictures=False)
     wanted = all_figures(verdict)
     masses = {key for key in known_figures() if key.endswith("_mass_kg")}
