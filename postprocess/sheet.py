@@ -45,14 +45,15 @@ from .sheet_rims import (
     notch_groups,
     rim_measure,
 )
+from .sheet_stack import stack_picture
 from .sheet_svg import write_svg
 from .sheet_tables import barrier_table, caution, notes, rib_table, stack_table
 from .sheet_whole import Whole, whole_view
 
 SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
-LEAST_CHORD = 70.0  # mm of paper that a pole's view should be wide at least
+LEAST_CHORD = 80.0  # mm of paper that a pole's view should be wide at least
 LEAST_BARRIER = 3.0  # mm of paper that the thinnest barrier should be
-LEAST_WHOLE = 75.0  # mm of paper, of the whole lamination's diameter
+LEAST_WHOLE = 65.0  # mm of paper, of the whole lamination's diameter
 MOST_WHOLE = 200.0  # mm of paper, beyond which a larger view shows no more
 
 
@@ -203,7 +204,7 @@ def _tables(job: SheetJob, measured: Measured) -> list[Picture]:
     return [
         rib_table(measured.kinds, limit),
         barrier_table(measured.poles, limit, measured.rim.radius),
-        stack_table(job),
+        stack_picture(job, stack_table(job), measured.rim.radius),
         notes(job, width),
         caution(job, width),
     ]

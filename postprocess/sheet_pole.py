@@ -53,6 +53,7 @@ PITCH = 5.4  # mm between the labels on the left
 COLUMN = 9.0  # mm from the outline to the thickness dimensions
 JOG = 8.0  # mm further to the labels
 ANGLE_DIGITS = 2
+OFF_AXIS = (0.0, -3.0, 3.0, -5.0, 5.0, -8.0, 8.0)  # mm beside a d axis
 ON_AXIS = 1e-6  # rad
 
 
@@ -88,9 +89,10 @@ def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
     _end_angles(board, pole.measure, factor, rim)
     for one in pole.marks:
         mark(board, one, complex(factor))
-    _holes(board, pole.holes, factor, pitch)
+    _holes(board, pole.holes, factor, pitch, half)
     _notches(board, pole, factor, pitch)
     _rim(board, pole, factor)
+    _d_letters(board, rim, 0.5 * pitch)
     low, high = board.picture.box
     middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
     board.add([Word(name, middle, TITLE, "middle")])
@@ -126,10 +128,16 @@ def _axes(rim: float, bore: float, half: float) -> list[Ink]:
     for side in (1.0, -1.0):
         way = cmath.rect(1.0, UP + side * half)
         inks.append(segment(start * way, (rim + 4.0) * way, CENTRE))
-        # Beyond the axis, clear of the break line beside it.
-        inks.append(Word("d", (rim + 7.0 - 3.0j * side) * way - 1.25j, align="middle"))
     inks.append(Word("q", 1j * start - 3.7j, align="middle"))
     return inks
+
+
+def _d_letters(board: Board, rim: float, half: float) -> None:
+    """The letters of the d axes beyond the rim, where there is room."""
+    for side in (1.0, -1.0):
+        way = cmath.rect(1.0, UP + side * half)
+        places = [(rim + out + 1j * turn) * way for out in (6.5, 9.0, 12.0) for turn in OFF_AXIS]
+        board.put(([Word("d", at - 1.25j, align="middle")] for at in places), "d")
 
 
 def _cuts(board: Board, job: SheetJob, cuts: Sequence[AxisCut], factor: float, left: float) -> None:
@@ -181,7 +189,9 @@ def _end_angles(board: Board, pole: PoleMeasure, factor: float, rim: float) -> N
             board.add([segment(1j * (rim + 4.0), 1j * top, CENTRE)])
 
 
-def _holes(board: Board, groups: Sequence[HoleGroup], factor: float, pitch: float) -> None:
+def _holes(
+    board: Board, groups: Sequence[HoleGroup], factor: float, pitch: float, half: float
+) -> None:
     for group in groups:
         size = f"{group.count}\u00d7 \u2300{number(group.diameter / MM)}"
         if group.span:
@@ -192,6 +202,7 @@ def _holes(board: Board, groups: Sequence[HoleGroup], factor: float, pitch: floa
         circle = f"on \u2300{number(2.0 * group.place / MM)}, {_place(group.off_axis, pitch)}"
         arcs = [e for e in group.first.edges if not e.is_line]
         tips = [edge.point(share) * factor for edge in arcs for share in (0.5, 0.25, 0.75)]
+        tips = [tip for tip in tips if abs(cmath.phase(tip / 1j)) < half] or tips
         tips.sort(key=lambda tip: -tip.real)
         candidates = (inks for tip in tips for inks in leaders(tip, [size, circle]))
         board.put(candidates, size)

@@ -88,7 +88,7 @@ def barrier_table(poles: Sequence[PoleMeasure], limit: float, rim: float) -> Pic
         "No.",
         "Off q axis",
         "From axis",
-        "Thickness",
+        "Along q axis",
         "(Depth)",
         "End angle \u00b0",
     )
@@ -160,7 +160,11 @@ def _notes(job: SheetJob) -> Iterator[str]:
     burr = f"{number(asked.burr_mm)} mm at most" if asked.burr_mm is not None else "not given"
     yield f"Burr side: {side}, all sheets the same way round. Burr height: {burr}."
     yield f"Rolling direction: {asked.rolling_direction or 'not given; agree before tooling'}."
-    yield "The DXF of the same design hash is the contour; this sheet tells how it is inspected."
+    poles = job.section.poles
+    yield (
+        f"{poles} poles, q axes {number(360.0 / poles)}\u00b0 apart. The DXF of the same design"
+        " hash is the exact contour, also where nothing is dimensioned here."
+    )
 
 
 def caution(job: SheetJob, width: float) -> Picture:

@@ -31,6 +31,8 @@ from .sheet_rims import BoreMeasure, HoleGroup, RimMeasure
 
 AXIS_PAST = 5.0  # mm that centre lines go past the rim
 LEVEL = 13.0  # mm from the rim to the outer diameter's dimension line
+QUARTER = math.pi / 2.0
+LEAST_OFF = 0.14  # rad from a leader to a centre line
 DATUM = 5.0  # mm, side of a datum's box
 
 
@@ -85,13 +87,19 @@ def _bore(board: Board, job: SheetJob, bore: BoreMeasure, scale: float, rim: flo
     limits = limits_of(size, job.options.bore_fit)
     text = f"\u2300{number(size)} {job.options.bore_fit}"
     pitch = job.section.pole_angle
-    ways = [math.pi / 2.0 + (k + 0.5) * pitch for k in (-1, -2, 0, 1, -3, 2)]
+    ways = [_off_centre_line(math.pi / 2.0 + (k + 0.5) * pitch) for k in (-1, -2, 0, 1, -3, 2)]
     candidates = [
         _datum_leader(cmath.rect(radius, way), cmath.rect(rim + far, way), text, limits)
         for far in (8.0, 12.0, 16.0, 22.0, 30.0)
         for way in ways
     ]
     board.put(candidates, text)
+
+
+def _off_centre_line(way: float) -> float:
+    """A direction clear of the upright and the level centre line."""
+    off = (way + QUARTER / 2.0) % QUARTER - QUARTER / 2.0
+    return way + LEAST_OFF if abs(off) < LEAST_OFF else way
 
 
 def _datum_leader(tip: Point, knee: Point, text: str, limits: Limits) -> list[Ink]:
