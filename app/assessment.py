@@ -221,8 +221,10 @@ class Assessment:
         with watch.phase("pictures"):
             for figure in drawn:
                 figure.result()
+        ribs = None
         if self.on_ribs is not None:
-            self.on_ribs(self._ribs(stage, stress))
+            ribs = self._ribs(stage, stress)
+            self.on_ribs(ribs)
         cards = (machine.rotor_steel, machine.stator_steel)
         bare_psi_q = sum(work.record.psi_q for work in magnets)
         magnetic, rotor = magnetic_figures(waveform, bare_psi_q), stress_figures(stress.report)
@@ -261,6 +263,12 @@ class Assessment:
             magnet_states=tuple(state for work in magnets for state in work.states),
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
+        if self.pictures:
+            from .report_assess import assess_report
+            from .report_files import write_report
+
+            records = [row.record for row in rows]
+            write_report(assess_report(verdict, orders, records, machine, stage, ribs), stage)
         return verdict
 
     def _ribs(self, stage: Path, stress: StressWork) -> "RibsReport":

@@ -17,12 +17,13 @@ from .pool import Crew, spare_cores
 from .progress import Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
+    from lamwright.geometry.design_file import Machine
     from lamwright.geometry.section import CrossSection
     from lamwright.solver.tolerance import ToleranceName
 
     from .control_wishes import ControlWishes
     from .desk import Desk
-    from .map_grid import GridWishes
+    from .map_grid import GridWishes, MapGrid
     from .mapping import MapReport
 
 MOST_WORKERS = 64
@@ -81,6 +82,8 @@ def map_design(
     from .map_grid import GridWishes, map_grid
     from .map_store import PointStore
     from .mapping import MAP_FILE, mapped_machine, run_of, write_results
+    from .report_files import write_report
+    from .report_map import map_report
 
     grid = map_grid(machine, section, wishes or GridWishes())
     watch = Stopwatch(progress, {**SHARES, **{name: CHAPTER_SHARE for name, _ in CHAPTERS}})
@@ -96,9 +99,21 @@ def map_design(
                     mapped, eccentricity=eccentricity, control=control or mapped.control
                 )
                 with staged(folder, MAP_FILE) as stage:
-                    return write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
+                    report = write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
+                    command = _again(machine, grid, tolerance)
+                    write_report(map_report(report, machine, stage, tolerance, command), stage)
+                    return report
         except KeyboardInterrupt:
             raise KeyboardInterrupt(INTERRUPTED) from None
+
+
+def _again(machine: "Machine", grid: "MapGrid", tolerance: str) -> str:
+    """The command that computes the same map."""
+    i_d, i_q = (",".join(f"{current:.10g}" for current in axis) for axis in (grid.i_d, grid.i_q))
+    return (
+        f"lamwright map {machine.path.name} --out FOLDER --tolerance {tolerance} --i-d={i_d} "
+        f"--i-q={i_q} --positions {grid.position.size}"
+    )
 
 
 def _eccentricity(wish_mm: float | None, section: "CrossSection") -> float | None:

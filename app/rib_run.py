@@ -87,4 +87,16 @@ def ribs_design(
             thinned = thinned_ribs(ribbed, rib_factor)
         chapters = (*chapters, (PRICE, partial(thin_chapter, thinned, tolerance)))
     with staged(folder, RIBS_FILE) as stage:
-        return write_results(ribbed, stage, tolerance, chapters)
+        report = write_results(ribbed, stage, tolerance, chapters)
+        if pictures:
+            from .report_files import write_report
+            from .report_ribs import ribs_report
+
+            thin = "" if rib_factor is None else f" --thin --rib-factor {rib_factor:g}"
+            command = f"lamwright ribs {machine.path.name} --out FOLDER --tolerance {tolerance}"
+            if overspeed_share:
+                command += f" --overspeed-share {overspeed_share:g}"
+            if teeth_mass_factor is not None:
+                command += f" --teeth-mass-factor {teeth_mass_factor:g}"
+            write_report(ribs_report(report, machine, stage, command + thin), stage)
+        return report

@@ -3,11 +3,13 @@
 import csv
 import json
 import math
+import re
 from pathlib import Path
 
 import pytest
 
 from lamwright.app import run
+from lamwright.app.lines import number
 from lamwright.app.run import assess
 from lamwright.geometry.design_file import read_design
 from lamwright.geometry.dxf import read_contours
@@ -46,6 +48,21 @@ def test_folder_holds_whole_files_only(assessed):
     names = {path.name for path in assessed[1].iterdir()}
     assert {"verdict.json", "lamination.dxf", "torque.csv", "ribs.csv"} <= names
     assert not [name for name in names if name.startswith(".")]
+
+
+def test_report_says_what_the_verdict_says(assessed, record):
+    """Every number of a figure in it is that of `verdict.json`, as the terminal rounds it."""
+    page = (assessed[1] / "report.html").read_text()
+    cells = re.findall(r'data-key="([a-z_0-9]+)">([^<]*)<', page)
+    assert {"torque_nm", "yield_margin", "field_unknowns", "power_factor"} <= {k for k, _ in cells}
+    for key, text in cells:
+        value = record[key]
+        shown = str(value) if isinstance(value, int) else number(value)
+        assert text.removeprefix("~ ").split(" ")[0] == shown, key
+    assert page.count("data-key") >= 45
+    assert DEMO.read_text().splitlines()[0] in page  # the design itself, to repeat it
+    assert record["design_hash"] in page
+    assert (assessed[1] / "report.pdf").read_bytes().startswith(b"%PDF")
 
 
 def test_verdict_on_disk_is_the_one_returned(assessed, record):

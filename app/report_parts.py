@@ -1,0 +1,144 @@
+"""Parts that the reports of several commands share."""
+
+import platform
+from collections.abc import Iterable, Mapping, Sequence
+from importlib.metadata import PackageNotFoundError
+from importlib.metadata import version as installed_version
+from pathlib import Path
+
+from lamwright.geometry.design_file import Machine
+from lamwright.postprocess.quantities import Figure
+from lamwright.postprocess.report import (
+    Block,
+    Cell,
+    Grid,
+    Lines,
+    Listing,
+    Paragraph,
+    Picture,
+    Section,
+    numeral,
+    words,
+)
+
+from .lines import number, valued
+from .version import version
+
+LIBRARIES = ("numpy", "scipy", "gmsh", "cvxopt", "scikit-fem", "ezdxf")
+CAUTION = (
+    "These results support, and never replace, a qualified engineer's judgement, the supplier's "
+    "material certificate, an overspeed test in containment, and local codes and standards. "
+    "Rotors burst."
+)
+# What a picture shows, by its file's name; others are named by their file.
+CAPTIONS = {
+    "section": "The pole that is computed: regions, ribs and winding.",
+    "flux": "Flux density (colour) and flux lines at rated current, first of all positions.",
+    "torque": "Torque over 60 electrical degrees, and its orders.",
+    "stress": "Von Mises stress at overspeed, the deformation enlarged; the ribs close up.",
+    "ribs": "Yield margin, peak and life of each rib.",
+    "plastic": "What has yielded at overspeed.",
+    "fit_pressure": "Pressure of the shaft's fit over speed.",
+    "modes": "The lowest modes of rotor and stator, and the speeds at which orders meet them.",
+    "thin": "What the thinnest ribs cost and bring.",
+    "map": "Flux linkages, saliency and torque over the plane of currents.",
+    "control": "Most torque per ampere, per volt and within both limits over the currents.",
+    "envelope": "Most torque and power over speed within current and voltage.",
+    "efficiency": "Efficiency over torque and speed.",
+    "ripple": "Where the ripple comes from.",
+    "forces": "Radial forces on the stator by order.",
+    "losses": "Losses at rated load.",
+    "loss_density": "Iron loss where it arises.",
+    "yardsticks": "The machine against yardsticks of the trade.",
+}
+
+
+def figure_grid(figures: Iterable[Figure], errors: Mapping[str, float], note: str = "") -> Grid:
+    """A table of figures with their error bars."""
+    return Grid(
+        ("what", "value", "+-"),
+        tuple(
+            (
+                words(figure.label),
+                numeral(figure_text(figure), figure.key),
+                numeral(error_text(errors, figure.key)),
+            )
+            for figure in figures
+        ),
+        note,
+    )
+
+
+def figure_text(figure: Figure) -> str:
+    """A figure with its unit as on the terminal, but counts whole."""
+    return str(figure.value) if isinstance(figure.value, int) else valued(figure)
+
+
+def error_text(errors: Mapping[str, float], key: str) -> str:
+    """The figure's error, two digits, in its unit; empty where there is none."""
+    return f"{errors[key]:.2g}" if key in errors else ""
+
+
+def picture_blocks(folder: Path, names: Sequence[str]) -> tuple[Picture, ...]:
+    """Those of the pictures that have been drawn."""
+    return tuple(
+        Picture(name, CAPTIONS.get(name, name.replace("_", " ")))
+        for name in names
+        if (folder / f"{name}.png").exists()
+    )
+
+
+def ribs_grid(records: Sequence[Mapping[str, object]], keys: Sequence[tuple[str, str]]) -> Grid:
+    """A row for each rib, a column for each (key, head) of its record."""
+
+    def shown(value: object) -> Cell:
+        if isinstance(value, float):
+            return numeral(number(value))
+        return numeral("-") if value is None else words(str(value))
+
+    columns = [(key, head) for key, head in keys if any(key in record for record in records)]
+    rows = tuple(tuple(shown(record.get(key)) for key, _ in columns) for record in records)
+    return Grid(tuple(head for _, head in columns), rows)
+
+
+def lines_section(title: str, items: Sequence[str], otherwise: str) -> Section:
+    """A section that is a list, or one sentence where there is nothing to list."""
+    return Section(title, (Lines(tuple(items)) if items else Paragraph(otherwise),))
+
+
+def times_grid(seconds: Mapping[str, float]) -> Grid:
+    """Wall time by phase."""
+    rows = tuple((words(phase), numeral(f"{spent:.2f}")) for phase, spent in seconds.items())
+    return Grid(("phase", "s"), rows)
+
+
+def repeat_section(command: str, machine: Machine, design_hash: str, text: str) -> Section:
+    """All that a second person needs to compute the same."""
+    design = machine.design
+    cards = dict.fromkeys((design.steel.rotor_card, design.steel.stator_card))
+    if design.magnet is not None:
+        cards[design.magnet.card] = None
+    listings = [Listing(f"Design file {machine.path.name}", text)]
+    for card in cards:
+        path = machine.path.parent / card
+        listings.append(Listing(f"Card {card}", path.read_text(encoding="utf-8")))
+    made_by = [("lamwright", version()), ("Python", platform.python_version()), *_libraries()]
+    blocks: list[Block] = [
+        Paragraph(
+            f"Save the files listed below and run: {command}. The design and its cards have the "
+            f"SHA-256 {design_hash}; the same versions give the same figures."
+        ),
+        Grid(("program", "version"), tuple((words(n), words(v)) for n, v in made_by)),
+        *listings,
+    ]
+    return Section("To repeat it", tuple(blocks))
+
+
+def _libraries() -> list[tuple[str, str]]:
+    found = []
+    for name in LIBRARIES:
+        try:
+            found.append((name, installed_version(name)))
+        except PackageNotFoundError:
+            continue
+    return found
