@@ -23,6 +23,7 @@ LISTED = 20  # rows that are listed unless --limit says another number
 @click.option("--show", type=int, metavar="ID", help="Write this design's file, ready for assess.")
 @click.option("--to", "design_file", type=click.Path(path_type=Path), help="Where --show writes.")
 @click.option("--compare", nargs=2, type=int, metavar="A B", help="Two designs by their numbers.")
+@click.option("--pictures", "is_pictured", is_flag=True, help="Draw the study into FOLDER.")
 @click.option("--check", "is_checked", is_flag=True, help="Read all of it and tell any damage.")
 def ledger(
     folder: Path,
@@ -34,6 +35,7 @@ def ledger(
     show: int | None,
     design_file: Path | None,
     compare: tuple[int, int] | None,
+    is_pictured: bool,
     is_checked: bool,
 ) -> None:
     """Designs of a study in FOLDER: progress and the best so far, lists, tables, files again.
@@ -55,13 +57,20 @@ def ledger(
         if compare is not None:
             first, second = (kept.row(number) for number in compare)
             print_comparison(kept.columns, first, second)
+        if is_pictured:
+            from lamwright.postprocess.files import prepared_folder
+
+            from .study_pictures import write_pictures
+
+            for picture in write_pictures(kept, prepared_folder(folder)):
+                click.echo(str(picture))
         if csv_file is not None or netcdf_file is not None:
             _write(kept, where, sort, csv_file, netcdf_file)
         elif where is not None or sort is not None or limit is not None:
             count = kept.count_where(where)
             rows = kept.rows(where, sort or "number", LISTED if limit is None else limit)
             print_rows(kept.study, kept.columns, rows, count)
-        elif show is None and compare is None and not is_checked:
+        elif show is None and compare is None and not (is_checked or is_pictured):
             print_progress(kept)
 
 
@@ -70,12 +79,12 @@ def _show(kept: "Ledger", number: int, path: Path) -> None:
     from .ledger_show import written_design
 
     row = kept.row(number)
-    text, files = kept.design_file(number)
-    written_design(path, text, files)
+    design = kept.design(number)
+    written_design(path, design.text, design.files)
     click.echo(f"design {number} ({stated_values(row)}): {path}")
     if row.outcome != "done":
         click.echo(f"{row.outcome}: {row.reason}")
-        if text == kept.study.base_text:
+        if design.text == kept.study.base_text:
             click.echo("its values give no design: this is the base's file")
 
 
@@ -86,12 +95,13 @@ def _write(
     csv_file: Path | None,
     netcdf_file: Path | None,
 ) -> None:
-    from .ledger_show import write_whole
+    from lamwright.geometry.whole_file import write_text
+
     from .ledger_tables import csv_of
 
     rows = kept.rows(where, sort or "number")
     if csv_file is not None:
-        write_whole(csv_file, csv_of(kept.columns, rows).encode())
+        write_text(csv_file, csv_of(kept.columns, rows))
         click.echo(f"{len(rows)} designs: {csv_file}")
     if netcdf_file is not None:
         if not rows:

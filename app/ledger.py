@@ -26,7 +26,7 @@ from .ledger_file import (
     unpacked,
 )
 from .ledger_rows import ERROR, FIGURE, FIXED, KEY, Columns, Row, columns_of, quoted, rows_of
-from .ledger_study import KeptStudy, files_of, kept_study, stated, texts_of
+from .ledger_study import KeptDesign, KeptStudy, kept_design, kept_study, stated, texts_of
 from .ledger_where import Condition, parsed
 from .version import version
 
@@ -213,8 +213,8 @@ class Ledger:
             sql = "select outcome, count(*) from design group by outcome order by outcome"
             return dict(self._file.execute(sql))
 
-    def design_file(self, number: int) -> tuple[str, dict[str, bytes]]:
-        """The design file of a row, and the cards and drawings by their names in it.
+    def design(self, number: int) -> KeptDesign:
+        """The design file of a row with the cards and drawings that it names.
 
         Raises:
             LamwrightError: there is no such row, or its file is damaged.
@@ -223,7 +223,7 @@ class Ledger:
         with told(self.path):
             sql = "select file, texts from design join cards on cards.number = cards "
             found = self._file.execute(sql + "where design.number = ?", (number,)).fetchone()
-        return unpacked(found[0], self._base), files_of(found[1])
+        return kept_design(unpacked(found[0], self._base), found[1])
 
     def check(self) -> None:
         """Read all of the file and hold it to its own sums.

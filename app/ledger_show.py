@@ -1,14 +1,13 @@
 """A design of a ledger as files again: its design file, and beside it the cards that it names."""
 
 import hashlib
-import os
-import tempfile
 import tomllib
 from collections.abc import Iterator, Mapping
 from pathlib import Path, PurePosixPath
 
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.restated import restated
+from lamwright.geometry.whole_file import whole_file
 
 CARDS_FOLDER = "cards"  # beside the design file
 
@@ -28,35 +27,21 @@ def written_design(path: Path, text: str, files: Mapping[str, bytes]) -> Path:
         names: dict[str, str] = {}
         for name, data in files.items():
             copy = _free(path.parent / CARDS_FOLDER, PurePosixPath(name).name, data)
-            write_whole(copy, data)
+            _write(copy, data)
             names[name] = copy.relative_to(path.parent).as_posix()
         stated = tomllib.loads(text)
         values = {key: names[value] for key, value in _texts(stated, "") if value in names}
-        write_whole(path, restated(text, values).encode())
+        _write(path, restated(text, values).encode())
     except OSError as error:
         reason = (error.strerror or str(error)).lower()
         raise LamwrightError(f"{path}: cannot be written: {reason}; give another --to") from None
     return path
 
 
-def write_whole(path: Path, data: bytes) -> None:
-    """Write a file so that it is there whole or not at all.
-
-    Raises:
-        OSError: it cannot be written.
-    """
+def _write(path: Path, data: bytes) -> None:
     path.parent.mkdir(parents=True, exist_ok=True)
-    handle, made = tempfile.mkstemp(prefix=".unfinished-", dir=path.parent)
-    try:
-        with os.fdopen(handle, "wb") as stream:
-            stream.write(data)
-        umask = os.umask(0)
-        os.umask(umask)
-        Path(made).chmod(0o666 & ~umask)  # mkstemp's own files are for their owner alone
-        Path(made).replace(path)
-    except BaseException:
-        Path(made).unlink(missing_ok=True)
-        raise
+    with whole_file(path) as temporary:
+        temporary.write_bytes(data)
 
 
 def _free(folder: Path, name: str, data: bytes) -> Path:

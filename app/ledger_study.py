@@ -25,6 +25,20 @@ class KeptStudy:
     tolerance: str
 
 
+@dataclass(frozen=True, slots=True)
+class KeptDesign:
+    """A design file, and the files that it names by their names in it."""
+
+    text: str
+    cards: Mapping[str, str]
+    drawings: Mapping[str, bytes]
+
+    @property
+    def files(self) -> dict[str, bytes]:
+        """Cards and drawings alike."""
+        return {name: text.encode() for name, text in self.cards.items()} | dict(self.drawings)
+
+
 def stated(study: "Study") -> dict[str, str]:
     """What makes the study, by name, each as JSON: another value is another study.
 
@@ -72,8 +86,8 @@ def texts_of(cards: Mapping[str, str], drawings: Mapping[str, bytes]) -> str:
     return json.dumps({"cards": dict(cards), "drawings": coded}, sort_keys=True)
 
 
-def files_of(texts: str) -> dict[str, bytes]:
-    """The files of such a text by their names."""
-    made = json.loads(texts)
-    cards = {name: text.encode() for name, text in made["cards"].items()}
-    return cards | {name: base64.b64decode(text) for name, text in made["drawings"].items()}
+def kept_design(text: str, files: str) -> KeptDesign:
+    """A design with the files that `texts_of` made one text."""
+    made = json.loads(files)
+    drawings = {name: base64.b64decode(coded) for name, coded in made["drawings"].items()}
+    return KeptDesign(text, made["cards"], drawings)

@@ -78,20 +78,30 @@ def best_rows(study: KeptStudy, rows: Sequence[Row]) -> list[Best]:
     return found
 
 
-def reason_class(row: Row) -> str:
-    """Why a row has no figures, without its numbers: like faults of many designs are one class."""
+def reason_classes(rows: Sequence[Row]) -> list[str]:
+    """Why each row has no figures, "" where it has: faults that differ by numbers are of one class.
+
+    Place and remedy are left out, and the numbers where they differ within a class.
+    """
+    faults = ["" if row.outcome == "done" else _fault(row) for row in rows]
+    classes = [_NUMBER.sub("..", fault) for fault in faults]
+    words: dict[str, set[str]] = {}
+    for name, fault in zip(classes, faults, strict=True):
+        words.setdefault(name, set()).add(fault)
+    return [min(words[name]) if len(words[name]) == 1 else name for name in classes]
+
+
+def _fault(row: Row) -> str:
     fault = row.reason.split("; ")[0]
-    fault = fault.rpartition(": ")[2] or fault
-    return _NUMBER.sub("..", fault).strip() or row.outcome
+    return (fault.rpartition(": ")[2] or fault).strip() or row.outcome
 
 
 def reasons(rows: Sequence[Row]) -> list[tuple[str, str, int]]:
     """Outcome, reason's class and number of the rows without figures, the most first."""
     counts: dict[tuple[str, str], int] = {}
-    for row in rows:
-        if row.outcome != "done":
-            key = (row.outcome, reason_class(row))
-            counts[key] = counts.get(key, 0) + 1
+    for row, reason in zip(rows, reason_classes(rows), strict=True):
+        if reason:
+            counts[row.outcome, reason] = counts.get((row.outcome, reason), 0) + 1
     told = [(outcome, reason, count) for (outcome, reason), count in counts.items()]
     return sorted(told, key=lambda one: (-one[2], one[0], one[1]))
 

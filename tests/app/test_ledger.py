@@ -47,7 +47,7 @@ def test_a_row_comes_back_whole(tmp_path):
         ledger.record(plain_task(5), plain_evaluation(5))
     with Ledger.read(tmp_path) as ledger:
         kept, rejected = ledger.rows()
-        text, files = ledger.design_file(1)
+        design = ledger.design(1)
         study = ledger.study
         ledger.check()
     assert kept == made
@@ -57,8 +57,11 @@ def test_a_row_comes_back_whole(tmp_path):
     assert (kept.origin, kept.attempts, kept.passes, kept.outcome) == ("polish", 2, False, "done")
     assert (rejected.passes, rejected.reason) == (None, "rib 5 is thinner than the sheet")
     assert not rejected.figures
-    assert text == plain_task(3).design_text
-    assert files == {"cards/steel.toml": b"# a steel, invented\n", "slot.dxf": b"\x00\xff drawn"}
+    assert design.text == plain_task(3).design_text
+    assert design.files == {
+        "cards/steel.toml": b"# a steel, invented\n",
+        "slot.dxf": b"\x00\xff drawn",
+    }
     assert (study.name, study.keys) == ("angle by gap", (ANGLE, GAP))
     assert study.limits == (("yield_margin", 1.5, None),)
     assert study.goals == (("torque_nm", "most"), ("torque_ripple_percent", "least"))
