@@ -164,7 +164,7 @@ def _document(
     reach /= MM
     _add_datum(model, reach, axis)
     bottom = _add_texts(model, reach, texts)
-    document.header["$LTSCALE"] = reach / 40.0
+    document.header["$LTSCALE"] = reach / 80.0
     side = OVERHANG * reach
     model.reset_extents((-side, bottom, 0.0), (side, side, 0.0))
     document.set_modelspace_vport(
