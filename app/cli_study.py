@@ -53,11 +53,11 @@ def sweep(study: Path, out: Path, is_retrying: bool, **options: object) -> None:
 
     The same command goes on where a run was stopped, however it was. As in
 
-    lamwright sweep designs/studies/barriers.toml --out out/barriers
+    lamwright sweep designs/studies/barriers_by_end_angle.toml --out out/barriers
     """
     from .study_screen import watched
     from .sweep import sweep as run
     from .sweep_screen import print_sweep
 
     report = run(study, out, pool_wishes(options), watched("sweep"), is_retrying=is_retrying)
-    print_sweep(report, str(out))
+    print_sweep(report, out)

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 BETWEEN_LINES_S = 10.0
 MOST_TOLD = 20  # failures told one by one
 OF_RATE = 200  # last designs that the rate is taken of
+LEAST_OF_RATE = 5  # designs, before the time until the first is left out
 
 
 class StudyProgress:
@@ -33,23 +34,21 @@ class StudyProgress:
         """Start the clock; `total` is the number of designs, None where it is not known."""
         self.total = total
         self.known = self.computed = self.rejected = self.failed = self.passing = 0
-        self.last_failed: Row | None = None
         self._goals = study.goals
         self._best: dict[StudyGoal, Row] = {}
         self._clock = clock
-        self._ends: deque[float] = deque([clock()], maxlen=OF_RATE + 1)
+        self._began = clock()
+        self._ends: deque[float] = deque(maxlen=OF_RATE)
 
     def __call__(self, row: "Row", is_known: bool) -> None:
         """Count a row."""
         if is_known:
             self.known += 1
-            self._ends[-1] = self._clock()  # reading known rows takes no computing
+            self._began = self._clock()  # reading known rows takes no computing
         else:
             self.computed += 1
             self._ends.append(self._clock())
-        if row.outcome == "failed":
-            self.failed += 1
-            self.last_failed = row
+        self.failed += row.outcome == "failed"
         self.rejected += row.outcome == "rejected"
         self.passing += row.passes is True
         for goal in self._goals if row.outcome == "done" else ():
@@ -63,9 +62,16 @@ class StudyProgress:
 
     @property
     def rate(self) -> float | None:
-        """Designs computed in a second, of late; None before the first."""
-        spent = self._ends[-1] - self._ends[0]
-        return (len(self._ends) - 1) / spent if spent > 0.0 and self.computed else None
+        """Designs computed in a second, of late; None before the first.
+
+        The first ones also waited for the start of the workers.
+        """
+        if not self._ends:
+            return None
+        is_running = len(self._ends) >= LEAST_OF_RATE
+        first, count = (self._ends[0], -1) if is_running else (self._began, 0)
+        spent = self._ends[-1] - first
+        return (len(self._ends) + count) / spent if spent > 0.0 else None
 
     def best(self, goal: "StudyGoal") -> "Row | None":
         """The best row of a goal: of those that pass, or of all where none does."""

@@ -1,12 +1,17 @@
-"""What `sweep` prints at its end: how many, the best, and where to look on."""
+"""What `sweep` prints at its end: the best designs, counts and reasons, where to look on."""
 
 from collections.abc import Sequence
+from pathlib import Path
 from typing import TYPE_CHECKING
 
+import click
 from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
 
+from .ledger import Ledger
+from .ledger_screen import print_progress
+from .ledger_tables import reasons
 from .study_screen import time_text
 
 if TYPE_CHECKING:
@@ -15,20 +20,21 @@ if TYPE_CHECKING:
     from .sweep import SweepReport
 
 MOST_LISTED = 8  # of the best designs
-MOST_REASONS = 3  # told of rejected and failed designs
+MOST_REASONS = 6  # told of rejected and failed designs
 
 
-def print_sweep(report: "SweepReport", folder: str) -> None:
-    """Counts, the best designs as a table, the commonest reasons, and the next commands."""
-    console = Console(highlight=False)
+def print_sweep(report: "SweepReport", folder: Path) -> None:
+    """The best designs as a table, the ledger's own words, and the next commands."""
     study = report.study
     if rows := best_rows(study, report.rows):
         goal = f", best {study.goals[0].figure} first" if study.goals else ""
-        console.print(design_table(study, rows, f"{study.name}{goal}"))
-    console.print(escape(_counts(report)), soft_wrap=True)
-    print_reasons(console, report.rows)
-    more = f"more by: lamwright ledger {folder}; a design back by: lamwright ledger {folder} --show"
-    console.print(f"[dim]{escape(more)} NUMBER[/dim]", soft_wrap=True)
+        Console(highlight=False).print(design_table(study, rows, f"{study.name}{goal}"))
+    with Ledger.read(folder) as ledger:
+        print_progress(ledger)
+    known = len({row.hash for row in report.rows}) - report.computed
+    before = f", {known} were known before" if known else ""
+    click.echo(f"{report.computed} designs computed in {time_text(report.seconds)}{before}")
+    click.echo(f"more by: lamwright ledger {folder}; a design's file by its --show NUMBER")
 
 
 def best_rows(study: "Study", rows: "Sequence[Row]") -> "list[Row]":
@@ -63,38 +69,11 @@ def design_table(study: "Study", rows: "Sequence[Row]", title: str) -> Table:
 
 def print_reasons(console: Console, rows: "Sequence[Row]") -> None:
     """Why designs were rejected or failed, the commonest reasons."""
-    for outcome in ("rejected", "failed"):
-        for reason, count in _reasons(rows, outcome):
-            console.print(f"[dim]- {count} {outcome}:[/dim] {escape(reason)}", soft_wrap=True)
+    for outcome, reason, count in reasons(rows)[:MOST_REASONS]:
+        console.print(f"[dim]- {count} {outcome}:[/dim] {escape(reason)}", soft_wrap=True)
 
 
 def _told(value: float | int | str | None) -> str:
     if value is None:
         return "not given"
     return f"{value:.4g}" if isinstance(value, float) else escape(str(value))
-
-
-def _counts(report: "SweepReport") -> str:
-    rows = {row.hash: row for row in report.rows}.values()
-    outcomes = [row.outcome for row in rows]
-    passing = sum(row.passes is True for row in rows)
-    parts = [f"{passing} hold all limits", f"{outcomes.count('done') - passing} do not"]
-    parts += [f"{outcomes.count(name)} {name}" for name in ("rejected", "failed")]
-    known = len(rows) - report.computed
-    before = f", {known} known before" if known else ""
-    return f"{len(rows)} designs in {time_text(report.seconds)}{before}: {', '.join(parts)}"
-
-
-def _reasons(rows: "Sequence[Row]", outcome: str) -> list[tuple[str, int]]:
-    """The commonest reasons of an outcome with an example's words, and how many share the kind."""
-    kinds: dict[str, list[str]] = {}
-    for row in rows:
-        if row.outcome == outcome:
-            kinds.setdefault(_kind(row), []).append(row.reason)
-    found = sorted(kinds.values(), key=len, reverse=True)[:MOST_REASONS]
-    return [(reasons[0], len(reasons)) for reasons in found]
-
-
-def _kind(row: "Row") -> str:
-    """Reasons that differ in their numbers alone are of one kind."""
-    return row.stage + "".join(letter for letter in row.reason if not letter.isdigit())

@@ -2,6 +2,7 @@
 
 import hashlib
 import os
+import random
 import signal
 import sys
 import time
@@ -63,3 +64,23 @@ def stand_in_tasks(wishes: Sequence[str]) -> list[Task]:
         )
         for k, wish in enumerate(wishes)
     ]
+
+
+def drawn(task: Task) -> Evaluation:
+    """Figures drawn from the task's hash after 30 ms; every seventh or so is rejected."""
+    time.sleep(0.03)
+    chance = random.Random(task.hash)
+    if chance.random() < 1 / 7:
+        return Evaluation("rejected", "drawn by lot", "outline", seconds=0.03)
+    figures = {"torque_nm": chance.random(), "torque_ripple_percent": 50.0 * chance.random()}
+    passes = figures["torque_ripple_percent"] < 25.0
+    return Evaluation("done", "", "field", figures, {"torque_nm": 0.01}, passes, 0.03)
+
+
+def main() -> None:
+    """The program with `drawn` for its evaluation."""
+    from lamwright.app import evaluation
+    from lamwright.app.cli import main
+
+    evaluation.evaluate = drawn
+    main(prog_name="lamwright")
