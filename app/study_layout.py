@@ -4,7 +4,7 @@
 |---|---|---|
 | `layout.barriers` | barriers of a pole | as many as the base has |
 | `layout.end_angle_deg` | q axis to the end of the innermost barrier, mechanical | the base's |
-| `layout.places` | or places of barrier ends round a pole pair, against the stator's slots | |
+| `layout.places` | or slot pairing: places of barrier ends round a pole pair, even | |
 | `layout.first_place` | first end from the q axis, in spacings of the ends: 0.5 or 1 | 1 |
 | `layout.insulation_ratio` | share of air in the depth of the pole | most that fits of `start`'s |
 | `layout.rib_factor` | least rib over the sheet's thickness | 1.2 |
@@ -84,6 +84,9 @@ def _ends(design: MachineDesign, count: int, asked: Mapping[str, float]) -> Even
     """Where the barriers end."""
     first = asked.get("layout.first_place", FIRST_PLACE)
     if "layout.places" in asked:
+        if asked["layout.places"] % 2:
+            told = f"layout.places = {asked['layout.places']:g}"
+            raise DesignError(f"{told}: both halves of a pole are alike; accepted even numbers")
         last = (first + count - 1) * 2.0 * math.pi / asked["layout.places"]
     else:
         innermost = design.rotor.barrier[-1].end_angle_deg

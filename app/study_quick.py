@@ -3,7 +3,7 @@
 The same steps as `assess` and the same names, with less of everything: a mesh about half as fine
 as that of `coarse`, 9 to 14 instead of 30 rotor positions, Newton's iteration ended earlier, no
 refinement of the stress mesh, no error bars. How far that is from the full figures is measured in
-app/README.md. Nothing is kept between designs.
+designs/studies/README.md. Nothing is kept between designs.
 """
 
 import math

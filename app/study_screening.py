@@ -28,9 +28,9 @@ from .study import StudyLimit
 
 STAGES = ("values", "design", "geometry", "ribs", "quick", "full")  # with the computation
 MARGIN = "yield_margin"
-# The law may be wrong by so much, either way: of 20 random rotors the stress solution's greatest
-# stress was 0.24 times the law's at the least (see app/README.md).
-LAW_ALLOWANCE = 5.0
+# The stress on one mesh was 0.39 to 2.3 times the law's, median 0.78, of 80 random rotors; so a
+# rotor is refused only where the law is beyond the limit by more than this.
+LAW_ALLOWANCE = 4.0
 # Shares by which quick figures may miss a limit of a full computation and still be computed.
 ALLOWANCES = {
     "torque_nm": 0.05,

@@ -47,7 +47,7 @@ def test_a_quick_evaluation_has_all_figures_it_promises(demo: Evaluation) -> Non
 
 
 def test_quick_figures_of_the_demo(demo: Evaluation) -> None:
-    """Against the full figures of README: within what app/README.md says of quick ones.
+    """Against the full figures of README: within what designs/studies/README.md says of quick ones.
 
     Masses by hand: copper 4 coils a phase of 34 turns, 2 x 210 mm of 1.4 mm2, 8930 kg/m3.
     """
