@@ -19,7 +19,7 @@ from lamwright.postprocess.files import VERDICT_FILE, json_text, prepared_folder
 
 from .lamination import section_of
 from .progress import Progress, silent
-from .release_files import drawn_faults, write_drawing, write_dxfs, write_solids
+from .release_files import dxf_faults, write_drawing, write_dxfs
 from .release_manifest import (
     MANIFEST_FILE,
     Promise,
@@ -32,6 +32,7 @@ from .release_manifest import (
 )
 from .release_parts import parts_of
 from .release_record import Order, nesting_record, release_record
+from .release_solids import write_solids
 from .release_source import Copies, copies_of
 from .version import version
 
@@ -95,7 +96,7 @@ def release(
         write_dxfs(machine, parts, promise, wishes.order.sheet, stage)
         write_solids(parts, stage, wishes.order.sheet.date)
         write_drawing(machine, parts, promise, wishes.order.sheet, stage)
-        faults = drawn_faults(machine, parts, promise, wishes.order.sheet, stage)
+        faults = dxf_faults(machine, parts, promise, wishes.order.sheet, stage)
         if faults:
             raise LamwrightError("\n".join(faults))
         record = {

@@ -1,4 +1,4 @@
-"""The files of a package that are drawn: DXF, STEP and the drawing, and whether they are true."""
+"""The files of a package that are drawn: DXF and the drawing, and whether they are true."""
 
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
@@ -13,7 +13,6 @@ from lamwright.geometry.dxf_release import FORMS, plain_text, write_release
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.sheet import drawing_sheet
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
-from lamwright.solver.mesh_step import Solid, step_volumes, write_step
 
 from .lamination import section_of
 from .release_manifest import NOT_PASSED, Promise
@@ -22,19 +21,12 @@ from .release_parts import Part
 DRAWING_FILES = ("rotor.pdf", "rotor.svg")
 # The drawing measures by the layers of `geometry.contours`.
 ON_SHEET = {"MAGNET_POCKETS": "BARRIERS", "KEYWAY": "BORE"}
-VOLUME_TOL = 1e-6  # relative, of a solid against area x height
 MM = 1e3  # mm per m
-MM3 = 1e9  # mm^3 per m^3
 
 
 def dxf_name(part: Part, form: str) -> str:
     """File name of a part's DXF."""
     return f"{part.name}_{form.lower()}.dxf"
-
-
-def solids_of(part: Part) -> dict[str, tuple[Solid, ...]]:
-    """What stands in each STEP file of a part, by the file's name without ending."""
-    return {f"{part.name}_lamination": part.lamination(), f"{part.name}_stack": part.stack()}
 
 
 def dxf_texts(machine: Machine, part: Part, promise: Promise, wishes: SheetOptions) -> list[str]:
@@ -63,13 +55,6 @@ def write_dxfs(
 
 def _not_passed(promise: Promise) -> str:
     return f"{NOT_PASSED}: the design fails {', '.join(promise.missed)}"
-
-
-def write_solids(parts: Sequence[Part], folder: Path, date: str) -> None:
-    """Write one lamination and the stack of each part as STEP."""
-    for part in parts:
-        for name, solids in solids_of(part).items():
-            write_step(folder / f"{name}.step", name, solids, date)
 
 
 def write_drawing(
@@ -107,16 +92,15 @@ def drawing_notes(
                 yield f"{name}: not byte for byte what is drawn here; compare the two by eye"
 
 
-def drawn_faults(
+def dxf_faults(
     machine: Machine, parts: Sequence[Part], promise: Promise, wishes: SheetOptions, folder: Path
 ) -> list[str]:
-    """One line for each place where a DXF or a solid in the folder is not the parts'."""
+    """One line for each place where a DXF in the folder is not the parts'."""
     lines: list[str] = []
     for part in parts:
         texts = dxf_texts(machine, part, promise, wishes)
         for form in FORMS:
             lines += _dxf_faults(part, dxf_name(part, form), texts, folder)
-        lines += _step_faults(part, folder)
     return lines
 
 
@@ -134,22 +118,3 @@ def _dxf_faults(part: Part, name: str, texts: Sequence[str], folder: Path) -> It
     for due, note in zip_longest(map(plain_text, texts), found.notes):
         if due != note:
             yield f"{name}: note {note!r}: made {due!r}"
-
-
-def _step_faults(part: Part, folder: Path) -> Iterator[str]:
-    for stem, solids in solids_of(part).items():
-        name = f"{stem}.step"
-        if not (folder / name).is_file():
-            continue
-        try:
-            found = step_volumes(folder / name)
-        except LamwrightError as error:
-            yield str(error).replace(str(folder / name), name)
-            continue
-        due = [part.area * solid.height for solid in solids]
-        if len(found) != len(due):
-            yield f"{name}: {len(found)} solids; the design has {len(due)}"
-        elif any(
-            abs(a / b - 1.0) > VOLUME_TOL for a, b in zip(sorted(found), sorted(due), strict=True)
-        ):
-            yield f"{name}: {MM3 * sum(found):.9g} mm3; the design has {MM3 * sum(due):.9g}"

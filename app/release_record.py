@@ -23,6 +23,7 @@ from .release_manifest import (
     rounded,
 )
 from .release_parts import Part, part_record
+from .release_solids import kernel
 from .version import version
 
 MM = 1e3  # mm per m
@@ -54,6 +55,7 @@ def release_record(
         "package": "lamination package by Lamwright",
         "form": FORM,
         "version": version(),
+        "kernel": kernel(),
         "design": machine.design.name,
         "design_hash": design_hash(machine.design, machine.cards),
         "revision": order.sheet.revision,

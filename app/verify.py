@@ -21,7 +21,7 @@ from lamwright.postprocess.sheet_job import SheetOptions
 
 from .lamination import section_of
 from .progress import Progress, silent
-from .release_files import drawing_notes, drawn_faults
+from .release_files import drawing_notes, dxf_faults
 from .release_manifest import (
     FORM,
     MANIFEST_FILE,
@@ -35,6 +35,7 @@ from .release_manifest import (
 )
 from .release_parts import Part, parts_of
 from .release_record import Order, differences, release_record
+from .release_solids import kernel, solid_faults
 from .version import version
 
 if TYPE_CHECKING:
@@ -87,11 +88,17 @@ def verify(folder: Path, solve: bool = False, progress: Progress = silent) -> Ve
             notes.append(f"made by version {manifest.get('version')}, verified by {version()}")
         rest = {key: value for key, value in manifest.items() if key not in OF_FILES}
         due = release_record(made.machine, made.parts, made.promise, made.order)
-        due["version"] = made.promise.record.get("version")
+        due |= {"version": made.promise.record.get("version"), "kernel": manifest.get("kernel")}
         changes += [f"{MANIFEST_FILE}: {line}" for line in differences(rest, due)]
         progress("drawings", 0.3)
         drawn = (made.machine, made.parts, made.promise, made.order.sheet)
-        changes += drawn_faults(*drawn, folder)
+        changes += dxf_faults(*drawn, folder)
+        progress("solids", 0.4)
+        other = list(solid_faults(made.parts, folder, made.order.sheet.date))
+        if manifest.get("kernel") == kernel():
+            changes += other
+        else:
+            notes += [*other, f"solids made by {manifest.get('kernel')}, compared by {kernel()}"]
         if solve:
             changes += _solved_changes(made, progress)
             notes += drawing_notes(*drawn, folder)
@@ -203,7 +210,7 @@ def _solved_changes(made: _Made, progress: Progress) -> Iterator[str]:
         return
 
     def told(phase: str, share: float) -> None:
-        progress(phase, 0.3 + 0.7 * share)
+        progress(phase, 0.5 + 0.5 * share)
 
     with TemporaryDirectory() as folder:
         assess(made.machine.path, folder, told, tolerance, pictures=False)

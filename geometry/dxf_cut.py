@@ -14,7 +14,7 @@ from .dxf_release import NOTE_LAYERS
 from .errors import DesignError
 from .punch_layers import CUT_LAYERS
 
-LARGEST = 64_000_000  # bytes; a stator of 144 slots has 1 MB
+LARGEST = 16_000_000  # bytes; a stator of 144 slots has 0.2 MB
 FAR = 1e3  # m; a contour that goes further is damaged
 SAID = 120  # characters of a strange thing that are told
 

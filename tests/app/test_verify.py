@@ -158,6 +158,23 @@ def test_plain_changes_are_named(copy):
     assert "rotor_stack.step: " in rest
 
 
+@pytest.mark.slow
+def test_damaged_and_altered_solids_are_named_though_the_hashes_follow(copy):
+    """Read apart: some damaged files end the process that reads them."""
+    cut = copy / "rotor_lamination.step"
+    cut.write_text(cut.read_text()[:40_000])
+    longer = copy / "stator_stack.step"
+    high = f"{read_machine(DEMO).design.stator.stack_length_mm:g}."
+    longer.write_text(longer.read_text().replace(f",{high})", f",{float(high) + 1.0:g}.)"))
+    named = copy / "rotor_stack.step"
+    named.write_text(named.read_text().replace("'rotor_stack'", "'rotor_stock'"))
+    resealed(copy)
+    unreadable, renamed, thick = verify(copy).changes
+    assert unreadable == "rotor_lamination.step: cannot be read as solids"
+    assert renamed == ("rotor_stack.step: not the design's solids, though of their volume")
+    assert thick.startswith("stator_stack.step: ")
+
+
 def test_what_is_no_package_is_one_line(tmp_path):
     """No folder, no manifest, a manifest of something else."""
     for text, fault in (
