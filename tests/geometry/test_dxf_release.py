@@ -38,7 +38,6 @@ NAMES = (
     "demo_36s4p_magnet",
     "gallery/compressor_24s4p",
     "gallery/spindle_24s2p",
-    "gallery/retrofit_48s4p",
 )
 
 
@@ -153,7 +152,7 @@ def _started_elsewhere(contour: Contour) -> Contour:
 
 def test_stator_sheets_have_the_area_of_their_regions():
     """The sheet as one contour and the sector's iron as regions are made apart: areas are equal."""
-    for name in (*NAMES, "gallery/winder_72s12p"):
+    for name in NAMES:
         of = section(name)
         (iron,) = (r for r in of.stator if r.name == "stator_iron")
         regions = (area(iron.outer) + sum(area(h) for h in iron.holes)) * of.sectors

@@ -146,7 +146,7 @@ def test_a_waist_falls_apart_and_a_narrow_shape_goes():
     assert offset_loops(bell, -3.5 * MM, "sharp") == ()
 
 
-@pytest.mark.parametrize("name", DEMOS[:2])
+@pytest.mark.parametrize("name", DEMOS[:1])
 @pytest.mark.parametrize("tool_mm", [0.1, -0.1])
 def test_out_and_in_returns_the_shipped_laminations(name, tool_mm):
     """To 1 um as promised, measured 1e-5 um: no arc of these has a radius of 0.1 mm or less."""
@@ -160,10 +160,10 @@ def test_out_and_in_returns_the_shipped_laminations(name, tool_mm):
 @pytest.mark.parametrize("tool_mm", [0.15, -0.15])
 def test_shapelys_buffer_agrees(corners: Corners, tool_mm):
     """To 2 um as promised, both ways; of polygons with chords within 0.1 um of their arcs."""
-    for name in ("demo_36s4p_straight", "demo_24s4p_arc"):
-        contours = rotor_lamination(section(name))
-        # One pole's barriers, the bore and the rim.
-        _agree([c for c in contours if _is_of_first_pole(c, section(name))], corners, tool_mm)
+    name = "demo_36s4p_straight"
+    contours = rotor_lamination(section(name))
+    # One pole's barriers, the bore and the rim.
+    _agree([c for c in contours if _is_of_first_pole(c, section(name))], corners, tool_mm)
 
 
 def _is_of_first_pole(contour: Contour, of: CrossSection) -> bool:
@@ -198,7 +198,9 @@ def _agree(contours, corners: Corners, tool_mm: float) -> None:
         assert abs(rough.area - fine.area) < 2.0 * UM * fine.length
 
 
-@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize(
+    "seed", [*range(2), *(pytest.param(n, marks=pytest.mark.slow) for n in range(2, 40))]
+)
 def test_random_rotors_keep_the_laws_of_parallels(seed):
     """Every point of a parallel is at d from the outline; it comes back; strips have their area."""
     rng = np.random.default_rng(seed)
