@@ -1,5 +1,7 @@
 """The command `ledger`; see `cli` for the rules of commands."""
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -68,8 +70,9 @@ def ledger(
             _write(kept, where, sort, csv_file, netcdf_file)
         elif where is not None or sort is not None or limit is not None:
             count = kept.count_where(where)
-            rows = kept.rows(where, sort or "number", LISTED if limit is None else limit)
-            print_rows(kept.study, kept.columns, rows, count)
+            most, study = LISTED if limit is None else limit, kept.study
+            rows = kept.rows(where, sort or "number", most, study.figures)
+            print_rows(study, kept.columns, rows, count)
         elif show is None and compare is None and not (is_checked or is_pictured):
             print_progress(kept)
 
@@ -95,18 +98,30 @@ def _write(
     csv_file: Path | None,
     netcdf_file: Path | None,
 ) -> None:
-    from lamwright.geometry.whole_file import write_text
+    from lamwright.geometry.whole_file import whole_file, write_text
 
     from .ledger_tables import csv_of
 
     rows = kept.rows(where, sort or "number")
     if csv_file is not None:
-        write_text(csv_file, csv_of(kept.columns, rows))
+        with _told("--csv", csv_file):
+            write_text(csv_file, csv_of(kept.columns, rows))
         click.echo(f"{len(rows)} designs: {csv_file}")
     if netcdf_file is not None:
         if not rows:
             raise LamwrightError(f"--netcdf {netcdf_file}: no design to write")
         from .ledger_netcdf import write_rows
 
-        write_rows(netcdf_file, kept.study, kept.columns, rows)
+        with _told("--netcdf", netcdf_file), whole_file(netcdf_file) as temporary:
+            write_rows(temporary, kept.study, kept.columns, rows)
         click.echo(f"{len(rows)} designs: {netcdf_file}")
+
+
+@contextmanager
+def _told(option: str, path: Path) -> Iterator[None]:
+    """What the system says of a file that cannot be written, on one line."""
+    try:
+        yield
+    except OSError as error:
+        reason = (error.strerror or str(error)).lower()
+        raise LamwrightError(f"{option} {path}: cannot be written: {reason}") from None

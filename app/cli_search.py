@@ -4,7 +4,7 @@ from pathlib import Path
 
 import click
 
-from .cli_study import pool_options, pool_wishes
+from .cli_study import PICTURES, pool_options, pool_wishes
 
 _PATH = click.Path(path_type=Path)
 
@@ -41,6 +41,7 @@ _PATH = click.Path(path_type=Path)
     show_default=True,
     help="Members of the front that go on along the adjoint's slopes at the end.",
 )
+@PICTURES
 @pool_options
 def search(
     study: Path,
@@ -51,6 +52,7 @@ def search(
     stall: int,
     gain_percent: float,
     polish: int,
+    pictures: bool,
     **options: object,
 ) -> None:
     """Look for the best designs of STUDY: those that no other betters in every goal.
@@ -69,3 +71,7 @@ def search(
     wishes = pool_wishes(options)
     report = run(study, out, settings, wishes, watched("search"), print_course)
     print_search(report, str(out))
+    if pictures:
+        from .study_pictures import draw_study
+
+        draw_study(out)

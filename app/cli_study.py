@@ -43,12 +43,18 @@ def pool_wishes(options: dict[str, Any]) -> "PoolWishes":
     return PoolWishes(**options)
 
 
+PICTURES = click.option(
+    "--pictures/--no-pictures", default=True, help="Draw the study at the end.  [default: yes]"
+)
+
+
 @click.command()
 @click.argument("study", type=_PATH)
 @click.option("--out", required=True, type=_PATH, help="Folder for the ledger and the pictures.")
 @click.option("--retry-failed", "is_retrying", is_flag=True, help="Compute anew what had failed.")
+@PICTURES
 @pool_options
-def sweep(study: Path, out: Path, is_retrying: bool, **options: object) -> None:
+def sweep(study: Path, out: Path, is_retrying: bool, pictures: bool, **options: object) -> None:
     """Compute every design of STUDY, each once.
 
     The same command goes on where a run was stopped, however it was. As in
@@ -61,3 +67,7 @@ def sweep(study: Path, out: Path, is_retrying: bool, **options: object) -> None:
 
     report = run(study, out, pool_wishes(options), watched("sweep"), is_retrying=is_retrying)
     print_sweep(report, out)
+    if pictures:
+        from .study_pictures import draw_study
+
+        draw_study(out)

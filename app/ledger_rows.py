@@ -6,7 +6,7 @@ second, where reading each row's JSON takes whole ones.
 """
 
 import difflib
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
@@ -60,6 +60,13 @@ class Columns:
     keys: tuple[str, ...]
     figures: tuple[str, ...]
     errors: tuple[str, ...]
+
+    def with_figures(self, chosen: Collection[str] | None) -> "Columns":
+        """The same with some of the figures and errors alone; None for all."""
+        if chosen is None:
+            return self
+        figures = tuple(name for name in self.figures if name in chosen)
+        return Columns(self.keys, figures, tuple(name for name in self.errors if name in chosen))
 
     @property
     def names(self) -> tuple[str, ...]:
@@ -115,25 +122,26 @@ def rows_of(columns: Columns, records: Iterable[Sequence[Any]]) -> list[Row]:
     """Rows from records in the order of `Columns.select`."""
     fixed = len(FIXED)
     first, second = fixed + len(columns.keys), fixed + len(columns.keys) + len(columns.figures)
+    keys, figures, errors = columns.keys, columns.figures, columns.errors
+    before, after = _PASSES, _PASSES + 1
     rows = []
     for record in records:
-        flag = record[_PASSES]
-        given: list[Any] = [
-            *record[:_PASSES],
-            None if flag is None else bool(flag),
-            *record[_PASSES + 1 : fixed],
-            _given(columns.keys, record[fixed:first]),
-            _given(columns.figures, record[first:second]),
-            _given(columns.errors, record[second:]),
-        ]
+        flag = record[before]
+        given = (
+            *record[:before],
+            flag if flag is None else flag != 0,
+            *record[after:fixed],
+            _given(keys, record[fixed:first]),
+            _given(figures, record[first:second]),
+            _given(errors, record[second:]),
+        )
         rows.append(Row(*given))
     return rows
 
 
 def _given(names: Sequence[str], values: Sequence[Any]) -> dict[str, Any]:
-    if None in values:
-        return {n: v for n, v in zip(names, values, strict=True) if v is not None}
-    return dict(zip(names, values, strict=True))
+    made = dict(zip(names, values, strict=True))
+    return {n: v for n, v in made.items() if v is not None} if None in values else made
 
 
 def quoted(name: str) -> str:

@@ -21,7 +21,8 @@ REASONS = 6  # classes of reasons that are told
 
 def print_progress(ledger: Ledger) -> None:
     """How far the study is, why designs have no figures, and the best of each goal."""
-    study, rows = ledger.study, ledger.rows()
+    study = ledger.study
+    rows = ledger.rows(figures=study.figures)
     click.echo(_progress(ledger, study, rows))
     told = reasons(rows)
     for outcome, reason, count in told[:REASONS]:
@@ -61,8 +62,7 @@ def stated_values(row: Row) -> str:
 
 def print_rows(study: KeptStudy, columns: Columns, rows: Sequence[Row], count: int) -> None:
     """Rows as a table: keys, figures of goals and limits, reason."""
-    asked = [figure for figure, _ in study.goals] + [figure for figure, _, _ in study.limits]
-    figures = [name for name in dict.fromkeys(asked) if name in columns.figures]
+    figures = [name for name in study.figures if name in columns.figures]
     names = ["number", "outcome", "passes", *columns.keys, *figures]
     cells = [[_shown(row, name) for name in names] for row in rows]
     heads = ["design" if name == "number" else name for name in names]

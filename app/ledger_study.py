@@ -24,6 +24,12 @@ class KeptStudy:
     effort: str
     tolerance: str
 
+    @property
+    def figures(self) -> tuple[str, ...]:
+        """Figures of the goals, then those of the limits."""
+        named = [figure for figure, _ in self.goals] + [figure for figure, _, _ in self.limits]
+        return tuple(dict.fromkeys(named))
+
 
 @dataclass(frozen=True, slots=True)
 class KeptDesign:

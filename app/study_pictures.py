@@ -4,6 +4,7 @@ from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal, cast
 
+import click
 import numpy as np
 
 from lamwright.geometry.errors import LamwrightError
@@ -48,7 +49,10 @@ def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
     Raises:
         LamwrightError: no design has figures yet.
     """
-    rows = sorted(ledger.rows(), key=lambda row: row.hash)  # the same for any order of finishing
+    figures = (*ledger.study.figures, *USUAL)
+    rows = sorted(
+        ledger.rows(figures=figures), key=lambda row: row.hash
+    )  # the same for any order of finishing
     if not any(row.figures for row in rows):
         raise LamwrightError(f"{ledger.path}: no design has figures yet, so there is no picture")
     studied = studied_of(ledger.study, rows)
@@ -60,14 +64,32 @@ def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
     return write_study_figures(folder, studied, sections)
 
 
+def draw_study(folder: Path) -> None:
+    """Write the pictures of a study beside its ledger and say where, or why there are none.
+
+    Raises:
+        KeyboardInterrupt: with a line for the user; the designs are kept whatever happens.
+    """
+    try:
+        with Ledger.read(folder) as ledger:
+            written = write_pictures(ledger, folder)
+    except KeyboardInterrupt:
+        told = f"no pictures, all designs are kept; lamwright ledger {folder} --pictures draws them"
+        raise KeyboardInterrupt(f"interrupted: {told}") from None
+    except LamwrightError as error:
+        click.echo(f"no pictures: {error}")
+        return
+    names = ", ".join(path.stem for path in written if path.suffix == ".png")
+    click.echo(f"pictures (PNG, SVG) in {folder}: {names}")
+
+
 def studied_of(study: KeptStudy, rows: Sequence[Row]) -> Studied:
     """Rows as the plain arrays that the pictures take."""
     known = known_figures()
-    names = [figure for figure, _ in study.goals] + [figure for figure, _, _ in study.limits]
     limits = {figure: (least, most) for figure, least, most in study.limits}
     senses = dict(study.goals)
     figures = []
-    for name in dict.fromkeys((*names, *USUAL)):
+    for name in dict.fromkeys((*study.figures, *USUAL)):
         values = np.array([row.figures.get(name, np.nan) for row in rows])
         if not np.isfinite(values).any():
             continue

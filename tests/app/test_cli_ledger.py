@@ -130,6 +130,7 @@ FAULTS = [
     (("--where", "torq > 3"), "no column torq; did you mean torque_nm?"),
     (("--sort", "torq"), "--sort torq: no such column; did you mean torque_nm?"),
     (("--compare", 1, 99), "has no design 99; it has 30"),
+    (("--csv", "no/such/folder/x.csv"), "--csv no/such/folder/x.csv: cannot be written: no such"),
     (("--netcdf", "x.nc", "--where", "torque_nm > 99"), "no design to write"),
 ]
 

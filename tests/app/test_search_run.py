@@ -137,7 +137,8 @@ def test_the_command_prints_front_end_and_next_commands(whole):
     options = ["--population", "8", "--budget", "48", "--seed", "3", "--stall", "0"]
     with stood_in():
         done = CliRunner().invoke(
-            main, ["search", str(path), "--out", str(folder), *options, "--polish", "3"]
+            main,
+            ["search", str(path), "--out", str(folder), "--no-pictures", *options, "--polish", "3"],
         )
     assert done.exit_code == 0, done.output
     assert "front along torque_nm" in done.output

@@ -63,7 +63,17 @@ def _sweep(study, out, *options, code=STAND_IN):
     """The command in a process group of its own; killed at the end of the block."""
     tests = str(Path(study_stand_ins.__file__).parent)
     paths = [tests, *(path for path in sys.path if path and path != tests)]
-    command = [sys.executable, "-c", code, "sweep", str(study), "--out", str(out), *options]
+    command = [
+        sys.executable,
+        "-c",
+        code,
+        "sweep",
+        str(study),
+        "--out",
+        str(out),
+        "--no-pictures",
+        *options,
+    ]
     with subprocess.Popen(
         command,
         stdout=subprocess.PIPE,
@@ -132,7 +142,7 @@ def test_a_sweep_is_told_and_repeated_without_computing(tmp_path, monkeypatch):
     """Counts, the best with its values, where to look on; the second time all is known."""
     monkeypatch.setattr(evaluation, "evaluate", study_stand_ins.drawn)
     out = tmp_path / "out"
-    asked = ["sweep", str(_study(tmp_path, 2)), "--out", str(out)]
+    asked = ["sweep", str(_study(tmp_path, 2)), "--out", str(out), "--no-pictures"]
     first = CliRunner().invoke(main, [*asked, "--workers", "1"])
     assert first.exit_code == 0, first.stderr
     assert first.stderr.splitlines()[-1].startswith("sweep: 20/20  ")
@@ -276,7 +286,7 @@ def test_a_folder_that_cannot_be_written_is_one_line(tmp_path):
 )
 def test_options_that_do_not_fit_are_one_line(tmp_path, options, said):
     """Told before the study is read, and nothing is written."""
-    asked = ["sweep", "study.toml", "--out", str(tmp_path / "out"), *options]
+    asked = ["sweep", "study.toml", "--out", str(tmp_path / "out"), "--no-pictures", *options]
     done = CliRunner().invoke(main, asked)
     assert (done.exit_code, done.stderr) == (2, f"{said}\n")
     assert not (tmp_path / "out").exists()

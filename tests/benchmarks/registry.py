@@ -3,6 +3,7 @@
 from collections.abc import Callable
 
 from .chains import growth_exponent_points, growth_exponent_unknowns, map_point_ms
+from .ledgers import ledger_cost
 from .maps import map_seconds
 from .processes import core_efficiency, design_seconds, peak_memory_mib
 from .steps import newton_step_ratio, operating_point_ratio, step_over_factorisation
@@ -20,6 +21,7 @@ BENCHMARKS: dict[str, Benchmark] = {
         design_seconds,
         map_point_ms,
         map_seconds,
+        ledger_cost,
         growth_exponent_unknowns,
         growth_exponent_points,
         core_efficiency,
