@@ -1,5 +1,6 @@
 """Study files: what is read, and one clear line for everything that cannot be."""
 
+import re
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
@@ -8,7 +9,15 @@ import pytest
 
 from lamwright.app.study import Sampling
 from lamwright.app.study_file import read_study
+from lamwright.app.study_keys import LAYOUT_KINDS
 from lamwright.app.study_points import points_of
+from lamwright.app.study_tables import (
+    GoalTable,
+    LimitTable,
+    SampleTable,
+    StudyTables,
+    VaryTable,
+)
 from lamwright.app.study_task import task_of
 from lamwright.geometry.errors import DesignError
 
@@ -143,3 +152,19 @@ def test_a_broken_base_says_so_in_its_own_words(written: Written, tmp_path: Path
     (tmp_path / "bad.toml").write_text(base)
     with pytest.raises(DesignError, match=r"bad\.toml:\d+: rotor\.gap_mm = -0\.4: too small"):
         read_study(written(f'name = "x"\nbase = "bad.toml"\n{GAP}'))
+
+
+def test_readme_lists_every_key_and_its_example_reads(written: Written) -> None:
+    """designs/studies/README.md: keys of the tables and of the layout, and the study it shows."""
+    readme = (DESIGNS / "studies" / "README.md").read_text(encoding="utf-8")
+    tables = (StudyTables, VaryTable, LimitTable, GoalTable, SampleTable)
+    names = {name for table in tables for name in table.model_fields}
+    rows = " ".join(row for row in readme.splitlines() if row.startswith("| "))
+    told = set(re.findall(r"`(?:\[+\w+\]+ )?([\w.]+)`", rows))
+    assert names - {"vary", "limit", "goal", "sample"} <= told
+    assert set(LAYOUT_KINDS) <= told
+    assert {path.name for path in SHIPPED} <= told
+    block = re.search(r"```toml\n(.*?)```", readme, re.DOTALL)
+    assert block
+    study = read_study(written(block[1].replace("..", DESIGNS.as_posix())))
+    assert len(points_of(study)) == 48
