@@ -14,6 +14,7 @@ import click
 from lamwright.geometry.errors import LamwrightError
 
 from .cli_assess import assess
+from .cli_compare import compare
 from .cli_ledger import ledger
 from .cli_release import release, verify
 from .cli_search import search
@@ -332,6 +333,7 @@ def point(design: Path, i_d: float, i_q: float, angle: float) -> None:
 
 main.add_command(ledger)
 main.add_command(assess)
+main.add_command(compare)
 main.add_command(start)
 main.add_command(sweep)
 main.add_command(release)

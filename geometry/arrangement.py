@@ -19,10 +19,13 @@ import numpy as np
 
 from .corners import crossings, foot, is_within
 from .curves import Edge, Path, Point, area, reversed_edge, share_of
+from .errors import OutlineError
+from .outline_places import place_text
 from .welding import Welder
 
 GRAZING = 0.03  # rad, curves that cross at less beside a common end are drawn tangent
 GRAZING_REACH = 60.0  # times the tolerance
+MOST_PAIRS = 150_000  # of pieces whose boxes overlap: bounds the time; 3 n are usual
 BLOCK = 256  # boxes compared at once, which bounds the memory
 
 
@@ -73,6 +76,9 @@ def arrangement(pieces: Sequence[Edge], tolerance: float) -> Arrangement:
     Args:
         pieces: lines, and arcs of at most half a turn, in m; of two that coincide the first stays.
         tolerance: m, ends nearer than this are one.
+
+    Raises:
+        OutlineError: for a scribble, whose pieces cross each other everywhere.
     """
     welder = Welder(tolerance)
     for piece in pieces:
@@ -147,7 +153,13 @@ def _cuts(
     cuts: list[list[tuple[float, int]]] = [[] for _ in curves]
     fresh = Welder(tolerance)
     where: list[tuple[int, float]] = []
-    for i, j in overlapping_boxes(curves, 2.0 * tolerance):
+    for pairs, (i, j) in enumerate(overlapping_boxes(curves, 2.0 * tolerance)):
+        if pairs > MOST_PAIRS:
+            at = place_text(points[ends[i][0]])
+            raise OutlineError(
+                f"more than {MOST_PAIRS} pieces lie over each other, as at {at}; accepted the "
+                "outline of a lamination"
+            )
         for a, b in ((i, j), (j, i)):
             for v in ends[a]:
                 if v not in ends[b] and _is_near(curves[b], points[v], tolerance):

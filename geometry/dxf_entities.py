@@ -7,8 +7,8 @@ Arcs, circles and polylines with bulges stay exact; ellipses and splines are fit
 
 import cmath
 import math
-from collections.abc import Iterator
-from itertools import pairwise
+from collections.abc import Iterable, Iterator
+from itertools import count, pairwise
 from typing import TYPE_CHECKING, cast
 
 import numpy as np
@@ -32,7 +32,9 @@ if TYPE_CHECKING:
     from ezdxf.math import BSpline
 
 MOST_NESTED = 8  # blocks within blocks
+MOST_INSERTED = 15_000  # entities and blocks out of blocks: 0.2 ms each
 MOST_ENTITIES = 50_000  # after the blocks are opened: bounds the time
+FARTHEST = 1e4  # m: beyond, a double tells no micrometre
 TRACED = 100  # control points of a spline: more are a traced curve's
 TILT_TOL = 1e-9  # of the extrusion's unit vector
 # Carry no outline: notes, measures, fillings, views.
@@ -54,13 +56,22 @@ class EntityError(ValueError):
         self.point = point
 
 
-def opened(entities: "Iterator[DXFEntity]", depth: int = 0) -> "Iterator[DXFGraphic]":
+def opened(entities: "Iterable[DXFEntity]") -> "Iterator[DXFGraphic]":
     """The entities with every inserted block replaced by its content, placed.
 
     Raises:
-        EntityError: blocks nested too deeply.
+        EntityError: blocks nested too deeply, or too much in them: a few lines of a file can ask
+            for any number, and for any number of empty blocks.
     """
+    return _opened(entities, 0, count(1))
+
+
+def _opened(
+    entities: "Iterable[DXFEntity]", depth: int, counter: Iterator[int]
+) -> "Iterator[DXFGraphic]":
     for entity in entities:
+        if depth and next(counter) > MOST_INSERTED:
+            raise EntityError(f"more than {MOST_INSERTED} entities in inserted blocks")
         if entity.dxftype() != "INSERT":
             yield cast("DXFGraphic", entity)
             continue
@@ -70,7 +81,9 @@ def opened(entities: "Iterator[DXFEntity]", depth: int = 0) -> "Iterator[DXFGrap
             raise EntityError(f"blocks nested more than {MOST_NESTED} deep", at)
         many = insert.multi_insert() if insert.mcount > 1 else (insert,)
         for one in many:
-            yield from opened(one.virtual_entities(), depth + 1)
+            if next(counter) > MOST_INSERTED:
+                raise EntityError(f"more than {MOST_INSERTED} blocks inserted")
+            yield from _opened(one.virtual_entities(), depth + 1, counter)
 
 
 def edges_of(entity: "DXFGraphic", unit: float) -> list[Edge] | None:
@@ -92,11 +105,15 @@ def edges_of(entity: "DXFGraphic", unit: float) -> list[Edge] | None:
         raise EntityError(f"{kind} cannot be read, explode it into lines, arcs and polylines")
     edges = reader(entity, unit)
     for edge in edges:
-        if not (
-            cmath.isfinite(edge.start) and cmath.isfinite(edge.end) and math.isfinite(edge.bulge)
-        ):
-            raise EntityError(f"{kind} with a coordinate that is no number")
+        _raise_if_no_place(kind, edge)
     return [straightened(half) for edge in edges for half in halves(edge)]
+
+
+def _raise_if_no_place(kind: str, edge: Edge) -> None:
+    if not (cmath.isfinite(edge.start) and cmath.isfinite(edge.end) and math.isfinite(edge.bulge)):
+        raise EntityError(f"{kind} with a coordinate that is no number")
+    if max(abs(p) for e in (edge.start, edge.end) for p in (e.real, e.imag)) > FARTHEST:
+        raise EntityError(f"{kind} more than {FARTHEST / 1e3:g} km from the drawing's origin")
 
 
 def halves(edge: Edge) -> list[Edge]:
@@ -187,6 +204,10 @@ def _ellipse(entity: "DXFGraphic", unit: float) -> list[Edge]:
     centre = unit * complex(dxf.center.x, dxf.center.y)
     major = unit * complex(dxf.major_axis.x, dxf.major_axis.y)
     minor = 1j * side * float(dxf.ratio) * major
+    if not (cmath.isfinite(centre) and cmath.isfinite(major) and cmath.isfinite(minor)):
+        raise EntityError("ELLIPSE with a coordinate that is no number")
+    if minor == 0.0 or major == 0.0:
+        raise EntityError("ELLIPSE without a width")
     low = float(dxf.start_param)
     sweep = (float(dxf.end_param) - low) % (2.0 * math.pi) or 2.0 * math.pi
 
@@ -198,10 +219,19 @@ def _ellipse(entity: "DXFGraphic", unit: float) -> list[Edge]:
 
 
 def _spline(entity: "DXFGraphic", unit: float) -> list[Edge]:
+    through = cast("Spline", entity).fit_points
+    if not cast("Spline", entity).control_points and len(through) > TRACED:
+        # The library would solve for a curve through all of them.
+        spots = [unit * complex(p[0], p[1]) for p in through]
+        return [Edge(a, b) for a, b in pairwise(spots) if a != b]
     spline = cast("Spline", entity).construction_tool()
     if spline.count > TRACED:
         return _traced(spline, unit)
     knots = [float(k) for k in spline.knots()]
+    # Halving would go on to its end where nothing can be compared.
+    places = [v for point in spline.control_points for v in (point.x, point.y)]
+    if not all(math.isfinite(v) for v in (*knots, *places)):
+        raise EntityError("SPLINE with a coordinate that is no number")
     degree = spline.order - 1
     low, high = knots[degree], knots[-degree - 1]
     # A knot as manifold as the degree lets the curve have a corner there.

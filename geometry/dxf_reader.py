@@ -7,6 +7,7 @@ ezdxf takes 0.35 s to import and is imported inside the functions.
 """
 
 import hashlib
+import re
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -25,6 +26,12 @@ if TYPE_CHECKING:
     from ezdxf.entities import DXFGraphic
 
 LARGEST_FILE = 30_000_000  # bytes; a lamination of 100 slots drawn loose has 0.5 MB
+LARGEST_BINARY = 5_000_000  # bytes
+MOST_LINES = 1_000_000  # of a text file; 28 000 lines of a traced outline take 700 000
+MOST_RECORDS = 60_000  # entities, vertices of old polylines, table entries
+RECORD = re.compile(rb"\n[ \t]*0[ \t]*\r?\n")
+BINARY = b"AutoCAD Binary DXF"
+MOST_EDGES = 120_000  # bounds time and memory; 14 contours traced by 2 000 points have 28 000
 LEAST_LENGTH = 1e-9  # m, a piece shorter than this is none
 # $INSUNITS: mm per unit. Codes by the DXF reference (0: none stated).
 UNITS_MM = {1: 25.4, 2: 304.8, 4: 1.0, 5: 10.0, 6: 1000.0, 9: 0.0254, 13: 0.001, 14: 100.0}
@@ -74,6 +81,7 @@ def read_pieces(
         OutlineError: one line, if the file cannot be read or states no unit, or holds nothing.
     """
     data = _bytes(path)
+    _raise_if_endless(data)
     document = _document(data)
     unit, source = _unit(document, unit_mm, assumed_mm)
     taken, left_out = _chosen(document, layers)
@@ -92,6 +100,10 @@ def read_pieces(
         kinds[entity.dxftype()] += 1
         edges += long
         edge_layers += [_layer_of(entity)] * len(long)
+        if len(edges) > MOST_EDGES:
+            raise OutlineError(
+                f"more than {MOST_EDGES} lines and arcs; accepted a lamination alone"
+            )
     if not edges:
         raise OutlineError("no line, arc or polyline in the drawing's model space")
     return DrawnPieces(
@@ -118,6 +130,20 @@ def _bytes(path: FilePath) -> bytes:
     return data
 
 
+def _raise_if_endless(data: bytes) -> None:
+    """Told from the bytes, for the library takes 20 us a tag and 1 kB an entity."""
+    is_binary = data.startswith(BINARY)
+    if is_binary and len(data) > LARGEST_BINARY:
+        most = f"{LARGEST_BINARY // 1_000_000} MB in a binary file"
+    elif not is_binary and max(data.count(b"\n"), data.count(b"\r")) > MOST_LINES:
+        most = f"{MOST_LINES} lines of text"
+    elif not is_binary and sum(1 for _ in RECORD.finditer(data)) > MOST_RECORDS:
+        most = f"{MOST_RECORDS} entities"
+    else:
+        return
+    raise OutlineError(f"more than {most}; accepted a lamination alone")
+
+
 def _read_fault(path: FilePath) -> str:
     """Why `path` cannot be read, empty where it can."""
     try:
@@ -138,7 +164,7 @@ def _document(data: bytes) -> "Drawing":
     from ezdxf.filemanagement import dxf_stream_info
 
     try:
-        if data.startswith(b"AutoCAD Binary DXF"):
+        if data.startswith(BINARY):
             from ezdxf.document import Drawing as Document
             from ezdxf.lldxf.tagger import binary_tags_loader
 
@@ -157,7 +183,8 @@ def _document(data: bytes) -> "Drawing":
 def _one_line(error: Exception) -> str:
     # The library quotes the file's own bytes, line ends and half characters among them.
     text = str(error).encode("ascii", "backslashreplace").decode()
-    return f"{type(error).__name__}: {' '.join(text.split())}"[:200]
+    text = "".join(c if c.isprintable() else "?" for c in " ".join(text.split()))
+    return f"{type(error).__name__}: {text}".rstrip(" :")[:200]
 
 
 def _unit(document: "Drawing", stated: float | None, assumed: float | None) -> tuple[float, str]:

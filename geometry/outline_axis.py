@@ -20,7 +20,7 @@ from .outline_places import place_text
 MOST_CENTRES = 60  # arcs tried as to their centre, the longest first
 WHOLE_GAP = 1e-3  # m, a gap in the outermost circle up to this is no sector's
 MOST_COPIES = 144
-MOST_PIECES = 20_000  # after copying: bounds the time to seconds
+MOST_PIECES = 20_000  # copies counted: bounds the time to seconds
 FULL_TURN = 2.0 * math.pi
 
 
@@ -47,6 +47,8 @@ def whole_lamination(edges: Sequence[Edge], tolerance: float) -> Lamination:
     Raises:
         OutlineError: without arcs about a common axis, or for a sector that is no whole share.
     """
+    if len(edges) > MOST_PIECES:
+        raise OutlineError(f"more than {MOST_PIECES} pieces; accepted a lamination alone")
     axis = shaft_axis(edges, tolerance)
     moved = [Edge(e.start - axis, e.end - axis, e.bulge) for e in edges]
     low, high = _covered(moved, tolerance)

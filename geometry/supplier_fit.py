@@ -79,6 +79,7 @@ def _fit(
     reach: float,
 ) -> FittedContour:
     count, noise = len(designed), NOISE[0]
+    limit = reach  # the first step may have far to go; then what lies off is no part of the contour
     origin = np.array([edge.start for edge in designed])
     angles = np.array([edge.sweep for edge in designed])
     joints = np.array([edge.start for edge in first])
@@ -89,7 +90,7 @@ def _fit(
     edges = tuple(first)
     for _ in range(STEPS):
         found = feet(samples.at, edges, reach)
-        use = _used(found, samples, noise, designed)
+        use = _used(found, samples, limit, designed)
         off = _carried(samples.at, edges, found)
         # Priors in the same unit: a joint off by HELD weighs as a point off by the noise.
         weights = np.repeat([noise / HELD, noise / HELD, noise / BENT], count) ** 2
@@ -109,6 +110,7 @@ def _fit(
         sweeps = sweeps + step[2 * count :]
         edges = _edges(joints, sweeps)
         noise = _scatter(off[use])
+        limit = max(OUTLYING * noise, LEAST_OUTLYING)
         if np.abs(step[: 2 * count]).max() < 1e-2 * noise:
             break
     covariance = np.zeros((3 * count, 3 * count))
@@ -139,12 +141,12 @@ def _stretch(joints: ComplexArray) -> FloatArray:
     return cost
 
 
-def _used(found: Feet, samples: Samples, noise: float, designed: Sequence[Edge]) -> BoolArray:
+def _used(found: Feet, samples: Samples, limit: float, designed: Sequence[Edge]) -> BoolArray:
     """Points near the contour; between the ends of a straight piece, only those of lines.
 
     A line traced by many points is told by those: what lies between is no further measurement.
     """
-    near = (np.abs(found.distance) < max(OUTLYING * noise, LEAST_OUTLYING)) & (found.edge >= 0)
+    near = (np.abs(found.distance) < limit) & (found.edge >= 0)
     ends = np.bincount(found.edge[near & ~samples.is_between], minlength=len(designed))
     by_chords = np.array([e.is_line for e in designed]) & (ends < ENOUGH_ENDS)
     return near & (~samples.is_between | by_chords[found.edge])

@@ -129,20 +129,20 @@ def test_a_moved_barrier_and_a_worn_rim_are_measured(tmp_path):
     assert found.worst[0].text.startswith("pole 3, ")
 
 
-def test_a_larger_rim_narrows_the_gap(tmp_path):
-    """Rim 15 um out all round: the section's rotor has that radius, and the parts still meet."""
+@pytest.mark.parametrize("change", [15.0 * UM, -150.0 * UM])
+def test_another_rim_is_another_gap(change, tmp_path):
+    """Rim out or in all round: the section's rotor has that radius, and the parts still meet."""
     section = section_of()
-    edges = edges_mm(section)
-    grown = [
-        Edge(e.start * 1.0003695, e.end * 1.0003695, e.bulge)
-        if abs(abs(e.start) - 40.6) < 1e-6
-        else e
-        for e in edges
+    share = 1.0 + change / section.rotor_radius
+    edges = [
+        Edge(e.start * share, e.end * share, e.bulge) if abs(abs(e.start) - 40.6) < 1e-6 else e
+        for e in edges_mm(section)
     ]
-    found = supplier_outline(section, saved(drawing_of(grown), tmp_path))
-    assert found.section.rotor_radius == pytest.approx(0.0406 + 15.0 * UM, abs=0.1 * UM)
+    found = supplier_outline(section, saved(drawing_of(edges), tmp_path))
+    assert found.section.rotor_radius == pytest.approx(0.0406 + change, abs=0.1 * UM)
     assert found.rim is not None
-    assert found.rim.radius - found.rim.designed == pytest.approx(15.0 * UM, abs=0.1 * UM)
+    assert found.rim.radius - found.rim.designed == pytest.approx(change, abs=0.1 * UM)
+    assert all(r.difference == pytest.approx(change, abs=0.1 * UM) for r in found.ribs)
     radii = [
         {round(abs(p), 12) for r in part for e in r.outer.edges for p in (e.start, e.end)}
         for part in (found.section.rotor, found.section.stator)

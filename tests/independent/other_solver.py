@@ -15,7 +15,7 @@ from scipy.interpolate import PchipInterpolator
 
 from lamwright.geometry.curves import Path, circle, turned
 from lamwright.geometry.design import SteelCard
-from lamwright.geometry.dxf import read_contours
+from lamwright.geometry.dxf_release import read_release
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
 from lamwright.solver.magnet import MagnetLaw
@@ -71,7 +71,7 @@ def rotor_faces(
     dxf: FilePath, section: CrossSection, angle: float, magnets: Sequence[OtherMagnet]
 ) -> list[Any]:
     """Faces of the exported rotor lamination, turned by `angle`, its shaft and its half gap."""
-    contours = [(c.layer, turned(c.path, angle)) for c in read_contours(dxf)]
+    contours = [(c.layer, turned(c.path, angle)) for c in read_release(dxf)]
     sizes = [abs(path.edges[0].start) for _, path in contours]
     rim = contours[int(np.argmax(sizes))][1]
     bore = contours[int(np.argmin(sizes))][1]
@@ -156,9 +156,13 @@ def solve_field(
     radius = ngs.sqrt(ngs.x * ngs.x + ngs.y * ngs.y)
     b_r = (-ngs.y * field[0] + ngs.x * field[1]) / radius  # (1/r) dA/dtheta
     b_t = -(ngs.x * field[0] + ngs.y * field[1]) / radius
-    gap = mesh.Materials("gap_.*")
+    # The mean over radii needs a ring of even thickness: beside a rim that is no circle, the
+    # stator's half of the gap.
+    is_even = section.ring_radius is None
+    gap = mesh.Materials("gap_.*" if is_even else "gap_stator.*")
+    wide = section.gap if is_even else section.stator_bore_radius - section.circle_radius
     integral = ngs.Integrate(radius * b_r * b_t, mesh, definedon=gap, order=8) * 1e-9
-    torque = section.stack_length / (MU_0 * section.gap) * integral
+    torque = section.stack_length / (MU_0 * wide) * integral
     return OtherField(torque, psi, mesh.ne)
 
 

@@ -11,7 +11,7 @@ import numpy as np
 
 from lamwright.geometry.curves import Path
 from lamwright.geometry.design import SteelCard
-from lamwright.geometry.dxf import read_contours
+from lamwright.geometry.dxf_release import read_release
 
 from .occ_faces import occ_face
 
@@ -32,7 +32,7 @@ def solve_stress(dxf: FilePath, card: SteelCard, speed: float, fine: float) -> O
     import ngsolve as ngs
     from netgen.occ import OCCGeometry
 
-    contours = [c.path for c in read_contours(dxf)]
+    contours = [c.path for c in read_release(dxf)]
     sizes = [abs(path.edges[0].start) for path in contours]
     rim, bore = contours[int(np.argmax(sizes))], contours[int(np.argmin(sizes))]
     barriers = [path for path in contours if path is not rim and path is not bore]
