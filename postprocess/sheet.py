@@ -52,7 +52,7 @@ from .sheet_whole import Whole, whole_view
 
 SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
 LEAST_CHORD = 80.0  # mm of paper that a pole's view should be wide at least
-LEAST_BARRIER = 3.0  # mm of paper that the thinnest barrier should be
+LEAST_BARRIER = 2.0  # mm of paper that the thinnest barrier should be
 LEAST_WHOLE = 65.0  # mm of paper, of the whole lamination's diameter
 MOST_WHOLE = 200.0  # mm of paper, beyond which a larger view shows no more
 

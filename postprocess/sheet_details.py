@@ -2,7 +2,7 @@
 
 import cmath
 import math
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 from lamwright.geometry.curves import Edge, Point
@@ -19,6 +19,7 @@ LETTERS = "ABCDEFGHJKLMNPRSTUVWXYZ"  # no I, O or Q, that look like figures (ISO
 CIRCLE = 19.0  # mm of paper, radius of a detail
 SCALES = (100.0, 50.0, 20.0, 10.0, 5.0, 2.0, 1.0)
 MOST_RIB = 13.0  # mm of paper that a rib may be wide
+LEAST_MARK = 2.0  # mm of paper, radius of a detail's circle in its view
 LEAST_VIEW = 1.3  # widths of a rib that its detail reaches at least; one radius of its corners
 
 
@@ -106,22 +107,24 @@ def detail_mark(kind: RibKind) -> DetailMark:
     return DetailMark(kind.letter, kind.rib.middle, CIRCLE / detail_scale(kind) * MM)
 
 
-def mark(board: Board, one: DetailMark, factor: complex) -> None:
-    """Draw a detail's circle and letter in a view whose axis lies at 0."""
-    centre, radius = one.centre * factor, max(one.radius * abs(factor), 2.0)
-    board.add([ring(centre, radius)])
-    size = 3.5
-    candidates = []
-    for reach in (3.2, 5.0, 8.0, 12.0, 17.0):
+def mark(board: Board, ones: Sequence[DetailMark], factor: complex) -> None:
+    """Draw the circles of details in a view whose axis lies at 0, then their letters beside."""
+    places = [(one.centre * factor, max(one.radius * abs(factor), LEAST_MARK)) for one in ones]
+    board.add(ring(centre, radius) for centre, radius in places)
+    for one, (centre, radius) in zip(ones, places, strict=True):
+        board.put(_letters(one.letter, centre, radius), f"letter {one.letter}")
+
+
+def _letters(letter: str, centre: Point, radius: float) -> Iterator[list[Ink]]:
+    """Places of a circle's letter around it, farther ones with a line to it."""
+    for reach in (3.2, 5.0, 8.0, 12.0, 17.0, 24.0, 32.0):
         for k in range(16):
             way = cmath.rect(1.0, math.pi / 4.0 + k * math.pi / 8.0)
             at = centre + (radius + reach) * way
-            word = Word(one.letter, at - 0.5j * size, size, "middle")
-            inks: list[Ink] = [word]
+            inks: list[Ink] = [Word(letter, at - 0.5j * TITLE, TITLE, "middle")]
             if reach > 4.0:
                 inks.append(segment(centre + radius * way, at - 2.8 * way))
-            candidates.append(inks)
-    board.put(candidates, f"letter {one.letter}")
+            yield inks
 
 
 def rib_detail(kind: RibKind, outlines: Sequence[Edge], limit: float, letter_scale: str) -> Picture:

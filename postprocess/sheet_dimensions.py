@@ -168,11 +168,12 @@ def narrow_span(start: Point, end: Point) -> list[Ink]:
 
 
 def angular(
-    centre: Point, radius: float, first: float, last: float, text: str
+    centre: Point, radius: float, first: float, last: float, text: str, *, is_past: bool = False
 ) -> Iterator[list[Ink]]:
     """Candidates of an angular dimension on an arc of `radius` mm; directions in rad, boxed text.
 
-    The text stands along the arc between its ends, or past the second one.
+    The text stands along the arc between its ends, past the second one, or before the first;
+    with `is_past` past the second one alone.
     """
     way = math.copysign(1.0, last - first)
     head = way * ARROW / radius
@@ -190,7 +191,7 @@ def angular(
         arrow(tips[1], -1j * way * cmath.rect(1.0, last + 0.5 * head)),
     ]
     lines = inside if length > 3.0 * ARROW else outside
-    if length > width + 2.0 * ARROW + 1.0:
+    if length > width + 2.0 * ARROW + 1.0 and not is_past:
         for share in (0.5, 0.4, 0.6, 0.3, 0.7):
             yield [*lines, *_on_arc(centre, radius, first + share * (last - first), text)]
     # Past the end, on the arc's own prolongation.
@@ -198,6 +199,14 @@ def angular(
         start = last + way * ((2.0 * ARROW if lines is outside else 0.0) + gap) / radius
         middle = start + way * 0.5 * width / radius
         tail = bow(centre, radius, last, start)
+        yield [*lines, tail, *_beside_arc(centre, radius, middle, text)]
+    if is_past:
+        return
+    # Before the first end, likewise.
+    for gap in (1.5, 4.0, 8.0):
+        start = first - way * ((2.0 * ARROW if lines is outside else 0.0) + gap) / radius
+        middle = start - way * 0.5 * width / radius
+        tail = bow(centre, radius, first, start)
         yield [*lines, tail, *_beside_arc(centre, radius, middle, text)]
 
 

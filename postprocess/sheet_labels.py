@@ -19,7 +19,7 @@ from .sheet_ink import Fill, Ink, Picture, Stroke, Word
 
 ComplexArray = npt.NDArray[np.complex128]
 
-CLEAR = 0.5  # mm round a word
+CLEAR = 0.8  # mm round a word
 SAG = 0.05  # mm, of a chord under its arc
 TOUCH = 0.05  # mm that a found overlap must reach
 
@@ -38,6 +38,13 @@ class Board:
         self._stacked: ComplexArray | None = None
         self._words: list[Word] = []
         self.add(inks)
+
+    def copy(self) -> "Board":
+        """A board with the same ink, to try on."""
+        other = Board()
+        other.inks, other._words = [*self.inks], [*self._words]
+        other._chords, other._stacked = [*self._chords], self._stacked
+        return other
 
     def add(self, inks: Iterable[Ink]) -> None:
         """Draw without looking."""

@@ -41,9 +41,9 @@ from .sheet_ink import (
     segment,
 )
 from .sheet_job import MM, SheetJob
-from .sheet_labels import Board
-from .sheet_measures import AxisCut, PoleMeasure
-from .sheet_rims import HoleGroup, NotchGroup, RimMeasure
+from .sheet_labels import Board, NoRoomError
+from .sheet_measures import AxisCut, PoleMeasure, RibMeasure
+from .sheet_rims import Groove, HoleGroup, NotchGroup, RimMeasure
 
 STRIP = 2.0  # mm of the neighbouring poles that are shown
 UP = math.pi / 2.0
@@ -55,6 +55,7 @@ JOG = 8.0  # mm further to the labels
 ANGLE_DIGITS = 2
 OFF_AXIS = (0.0, -3.0, 3.0, -5.0, 5.0, -8.0, 8.0)  # mm beside a d axis
 ON_AXIS = 1e-6  # rad
+WIDE_AS_STEP = 10.0  # depths, a wider notch is a step of the rim
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,9 +87,8 @@ def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
     left = min(p.real for edge in edges for p in (edge.start, edge.end)) * factor
     left = min(left, min(ink.edges[0].point(0.5).real for ink in _strokes(board)))
     _cuts(board, job, pole.measure.cuts, factor, left)
-    _end_angles(board, pole.measure, factor, rim)
-    for one in pole.marks:
-        mark(board, one, complex(factor))
+    board = _end_angles(board, pole.measure, factor, rim)
+    mark(board, pole.marks, complex(factor))
     _holes(board, pole.holes, factor, pitch, half)
     _notches(board, pole, factor, pitch)
     _rim(board, pole, factor)
@@ -167,26 +167,45 @@ def _cuts(board: Board, job: SheetJob, cuts: Sequence[AxisCut], factor: float, l
         board.add([polyline((start, complex(column - 1.0, start.imag), end + 0.4, end)), word])
 
 
-def _end_angles(board: Board, pole: PoleMeasure, factor: float, rim: float) -> None:
-    """Arcs outside the rim from the q axis to the ends, the smallest angle nearest to the rim."""
+def _end_angles(board: Board, pole: PoleMeasure, factor: float, rim: float) -> Board:
+    """The board with arcs outside the rim from the q axis to the ends.
+
+    The smallest angle lies nearest to the rim; where texts then meet extension lines, farthest.
+    """
     ribs = [rib for rib in pole.ribs if rib.kind == "tangential"]
-    for side in (1.0, -1.0):
-        if side < 0.0 and pole.is_symmetric:
-            continue
-        own = sorted((r for r in ribs if r.end_angle * side > 0.0), key=lambda r: abs(r.end_angle))
-        for k, rib in enumerate(own):
+    sides = [[rib for rib in ribs if rib.end_angle * side > 0.0] for side in (1.0, -1.0)]
+    if pole.is_symmetric:
+        sides = sides[:1]
+    most = max(len(own) for own in sides)
+    if most:
+        top = rim + FIRST_ARC + (most - 1) * ARC_STEP + 1.5
+        board.add([segment(1j * (rim + 4.0), 1j * top, CENTRE)])
+    try:
+        return _with_arcs(board.copy(), sides, factor, rim, is_rising=True)
+    except NoRoomError:
+        return _with_arcs(board, sides, factor, rim, is_rising=False)
+
+
+def _with_arcs(
+    board: Board,
+    sides: Sequence[Sequence[RibMeasure]],
+    factor: float,
+    rim: float,
+    *,
+    is_rising: bool,
+) -> Board:
+    for own in sides:
+        order = sorted(own, key=lambda rib: abs(rib.end_angle), reverse=not is_rising)
+        for k, rib in enumerate(order):
             radius = rim + FIRST_ARC + k * ARC_STEP
             last = UP - rib.end_angle
             way = cmath.rect(1.0, last)
-            foot = rib.start * factor
-            foot = abs(foot) * way
             text = f"{number(math.degrees(abs(rib.end_angle)), ANGLE_DIGITS)}\u00b0"
-            line = segment(foot + 0.8 * way, (radius + 1.5) * way)
-            candidates = [[line, *inks] for inks in angular(0j, radius, UP, last, text)]
-            board.put(candidates, text)
-        if own:
-            top = rim + FIRST_ARC + (len(own) - 1) * ARC_STEP + 1.5
-            board.add([segment(1j * (rim + 4.0), 1j * top, CENTRE)])
+            line = segment((abs(rib.start) * factor + 0.8) * way, (radius + 1.5) * way)
+            # Of falling ones each line to an end crosses all arcs before it, but not past them.
+            arcs = angular(0j, radius, UP, last, text, is_past=not is_rising)
+            board.put(([line, *inks] for inks in arcs), text)
+    return board
 
 
 def _holes(
@@ -212,7 +231,7 @@ def _notches(board: Board, pole: Pole, factor: float, pitch: float) -> None:
     for group in pole.notches:
         groove = group.groove
         sizes = (
-            f"{group.count}\u00d7 notch {number(groove.mouth / MM)} wide,"
+            f"{group.count}\u00d7 {_kind(groove)} {number(groove.mouth / MM)} wide,"
             f" {number(groove.depth / MM)} deep"
         )
         radii = [f"R{number(r / MM)}" for r in groove.radii]
@@ -223,6 +242,10 @@ def _notches(board: Board, pole: Pole, factor: float, pitch: float) -> None:
             for edge in groove.edges
         ]
         board.put((inks for tip in tips for inks in leaders(tip, texts)), sizes)
+
+
+def _kind(groove: Groove) -> str:
+    return "step" if groove.mouth > WIDE_AS_STEP * groove.depth else "notch"
 
 
 def _place(off_axis: float, pitch: float) -> str:

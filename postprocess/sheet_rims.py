@@ -25,7 +25,7 @@ class Groove:
     edges: tuple[Edge, ...]
     mouth: float  # width at the bore or rim
     width: float  # greatest
-    depth: float  # from the circle
+    depth: float  # on its middle, from the circle
     radii: tuple[float, ...]  # of its arcs, each once
 
     def is_like(self, other: "Groove") -> bool:
@@ -173,7 +173,9 @@ def _groove(run: Sequence[Edge], radius: float) -> Groove:
     angle = cmath.phase(run[0].start + run[-1].end)
     edges = tuple(turned_edge(edge, -angle) for edge in run)
     points = [p for edge in edges for p in edge_extremes(edge)]
-    far = max(points, key=lambda p: abs(p.real - radius)).real
+    # On its middle: beside it a wide and shallow one has the circle's own height to it.
+    on_middle = heights_at([turned_edge(edge, 0.5 * math.pi) for edge in edges], 0.0)
+    far = max(on_middle, key=lambda height: abs(height - radius))
     return Groove(
         angle,
         edges,

@@ -59,7 +59,7 @@ def whole_view(job: SheetJob, shown: Whole, scale: float, name: str) -> Picture:
     board.add([Word("q1", 1j * (reach + 1.2), align="middle")])
     _outer(board, job, shown.rim, radius)
     if shown.key_mark is not None:
-        mark(board, shown.key_mark, factor)
+        mark(board, [shown.key_mark], factor)
     _bore(board, job, shown.bore, scale, radius)
     low, high = board.picture.box
     middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
