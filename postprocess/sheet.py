@@ -52,7 +52,7 @@ from .sheet_whole import Whole, whole_view
 
 SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
 LEAST_CHORD = 80.0  # mm of paper that a pole's view should be wide at least
-LEAST_BARRIER = 2.0  # mm of paper that the thinnest barrier should be
+LEAST_BARRIER = 3.0  # mm of paper that the thinnest barrier should be
 LEAST_WHOLE = 65.0  # mm of paper, of the whole lamination's diameter
 MOST_WHOLE = 200.0  # mm of paper, beyond which a larger view shows no more
 
@@ -124,7 +124,8 @@ def composed(job: SheetJob) -> Sheet:
     poles = functools.cache(lambda scale: _pole_views(job, measured, scale))
     whole = functools.cache(lambda scale: (_whole_view(job, measured, scale),))
     for is_last in (False, True):
-        for paper in sizes:
+        # With views smaller than wished for, at least on the largest paper.
+        for paper in reversed(sizes) if is_last else sizes:
             for scales in _scales(job, measured, paper, is_last):
                 try:
                     views = (*poles(scales[0]), *whole(scales[1]))

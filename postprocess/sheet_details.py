@@ -107,12 +107,19 @@ def detail_mark(kind: RibKind) -> DetailMark:
     return DetailMark(kind.letter, kind.rib.middle, CIRCLE / detail_scale(kind) * MM)
 
 
-def mark(board: Board, ones: Sequence[DetailMark], factor: complex) -> None:
-    """Draw the circles of details in a view whose axis lies at 0, then their letters beside."""
-    places = [(one.centre * factor, max(one.radius * abs(factor), LEAST_MARK)) for one in ones]
-    board.add(ring(centre, radius) for centre, radius in places)
-    for one, (centre, radius) in zip(ones, places, strict=True):
-        board.put(_letters(one.letter, centre, radius), f"letter {one.letter}")
+def circles(board: Board, ones: Sequence[DetailMark], factor: complex) -> None:
+    """Draw the circles of details in a view whose axis lies at 0: before any text."""
+    board.add(ring(*_place(one, factor)) for one in ones)
+
+
+def letters(board: Board, ones: Sequence[DetailMark], factor: complex) -> None:
+    """Write the letters of details beside their circles."""
+    for one in ones:
+        board.put(_letters(one.letter, *_place(one, factor)), f"letter {one.letter}")
+
+
+def _place(one: DetailMark, factor: complex) -> tuple[Point, float]:
+    return one.centre * factor, max(one.radius * abs(factor), LEAST_MARK)
 
 
 def _letters(letter: str, centre: Point, radius: float) -> Iterator[list[Ink]]:

@@ -14,7 +14,7 @@ from dataclasses import dataclass
 from lamwright.geometry.curves import Edge
 
 from .sheet_clip import in_window
-from .sheet_details import DetailMark, mark
+from .sheet_details import DetailMark, circles, letters
 from .sheet_dimensions import (
     angular,
     boxed,
@@ -87,8 +87,9 @@ def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
     left = min(p.real for edge in edges for p in (edge.start, edge.end)) * factor
     left = min(left, min(ink.edges[0].point(0.5).real for ink in _strokes(board)))
     _cuts(board, job, pole.measure.cuts, factor, left)
+    circles(board, pole.marks, complex(factor))
     board = _end_angles(board, pole.measure, factor, rim)
-    mark(board, pole.marks, complex(factor))
+    letters(board, pole.marks, complex(factor))
     _holes(board, pole.holes, factor, pitch, half)
     _notches(board, pole, factor, pitch)
     _rim(board, pole, factor)

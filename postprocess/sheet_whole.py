@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from lamwright.geometry.curves import Point
 
-from .sheet_details import DetailMark, mark
+from .sheet_details import DetailMark, circles, letters
 from .sheet_dimensions import across, extension, leader, number
 from .sheet_fits import Limits, limits_of
 from .sheet_ink import (
@@ -59,7 +59,8 @@ def whole_view(job: SheetJob, shown: Whole, scale: float, name: str) -> Picture:
     board.add([Word("q1", 1j * (reach + 1.2), align="middle")])
     _outer(board, job, shown.rim, radius)
     if shown.key_mark is not None:
-        mark(board, [shown.key_mark], factor)
+        circles(board, [shown.key_mark], factor)
+        letters(board, [shown.key_mark], factor)
     _bore(board, job, shown.bore, scale, radius)
     low, high = board.picture.box
     middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
