@@ -14,10 +14,11 @@ from .studied import Effect, StudyAxis
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
+FEW = 60  # designs, whose points lie above the curve; more would hide it
 POINT = "#8d979f"
 BAR_TOLD = (
-    "line: mean of the designs at this value; bar: one standard deviation of them, by the other "
-    "keys, none for a single design; grey: the designs"
+    "line: mean of the designs at this value, or in this eighth of many; bar: one standard "
+    "deviation of them, by the other keys; grey: the designs"
 )
 
 
@@ -30,15 +31,16 @@ def draw_effect(
     style: Style,
 ) -> None:
     """Draw the designs as points, their means with bars, and the figure's limits; y over `span`."""
+    is_few = key.values.size <= FEW
     ax.plot(
         key.values,
         figure.values,
         linestyle="none",
         marker="o",
-        markersize=2.6,
+        markersize=2.6 if is_few else 1.8,
         color=POINT,
         markeredgewidth=0.0,
-        zorder=4,
+        zorder=4 if is_few else 2,
     )
     ax.errorbar(
         effect.at,

@@ -153,6 +153,8 @@ def _number(
     style: Style,
 ) -> None:
     """Numbers of designs beside their points, where they find room; the first come first."""
+    from matplotlib.patheffects import Normal, Stroke
+
     taken: list[tuple[float, float]] = []
     scale = ax.figure.dpi / 72.0  # pixels per point
     for k in numbered[:MOST_NUMBERED]:
@@ -172,6 +174,7 @@ def _number(
             color=style.ink,
             ha="right" if left else "left",
             zorder=6,
+            path_effects=[Stroke(linewidth=2.2, foreground=style.paper), Normal()],
         )
 
 

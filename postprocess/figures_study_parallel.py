@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 MOST_AXES = 10
+MOST_LINES = 1000  # drawn as lines in an SVG; more are an image there
 TICKS = 5
 EDGE = 0.03  # of an axis' height beyond its least and greatest value
 BAR = 0.035  # half width of a limit's bar, axes being 1 apart
@@ -46,7 +47,9 @@ def draw_parallel(ax: Axes, studied: Studied, axes: Sequence[StudyAxis], style: 
     for passing, colour, order in ((False, FAILED, 2), (True, style.second, 3)):
         lines = heights[studied.passes == passing]
         strong = float(np.clip(25.0 / max(1, len(lines)), 0.12, 0.9))
-        ax.plot(places, lines.T, color=colour, linewidth=0.9, alpha=strong, zorder=order)
+        drawn = ax.plot(places, lines.T, color=colour, linewidth=0.9, alpha=strong, zorder=order)
+        for line in drawn:
+            line.set_rasterized(len(lines) > MOST_LINES)
     for best, dash in zip(bests, DASHES, strict=False):
         if best is not None:
             ax.plot(
