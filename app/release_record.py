@@ -138,8 +138,8 @@ def _cautions(promise: Promise, punch: PunchOptions) -> list[str]:
         )
     if punch.magnet_clearance_mm:
         lines.append(
-            f"magnet pockets are {punch.magnet_clearance_mm:g} mm wider on all sides than in the "
-            "machine that was analysed"
+            f"magnet pockets are {punch.magnet_clearance_mm:g} mm wider all round than analysed, "
+            "ribs beside them thinner by as much: the stress promised is not theirs"
         )
     stated = promise.record.get("cautions")
     return [*lines, *(str(line) for line in stated)] if isinstance(stated, list) else lines
