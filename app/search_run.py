@@ -35,6 +35,7 @@ if TYPE_CHECKING:
 SEARCH, POLISH = "search", "polish"  # names of the states, and origins of rows
 # Tries of a member of the front. Some 5 s of a core for slopes, once for each step accepted.
 ROUNDS = 6
+SLOPES_SECONDS = 600.0  # that the slopes of one design may take, however busy the machine is
 LEAST_POPULATION = 4
 
 Told = Callable[[Course], None]
@@ -156,7 +157,7 @@ class _Run:
         kept = unpacked_polish(self.ledger.state(POLISH), len(state.asked), members)
         begun = kept or begun_polish(state, rows, members)
         with (
-            hired(design_slopes, wishes, self.study.seconds) as slopes_pool,
+            hired(design_slopes, wishes, SLOPES_SECONDS) as slopes_pool,
             self.watch(self.study, ROUNDS * len(begun.lines) - len(begun.points)) as show,
         ):
             worker = Polisher(

@@ -5,6 +5,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
+from rich import box
 from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
@@ -51,20 +52,35 @@ def best_rows(study: "Study", rows: "Sequence[Row]") -> "list[Row]":
 
 def design_table(study: "Study", rows: "Sequence[Row]", title: str) -> Table:
     """Keys, goals and limits of some designs, one row each."""
-    table = Table(title=escape(title), title_justify="left", title_style="bold")
-    keys = [key.key for key in study.keys]
+    table = Table(
+        title=escape(title),
+        title_justify="left",
+        title_style="bold",
+        box=box.SIMPLE_HEAD,
+        padding=(0, 1, 0, 0),
+        pad_edge=False,
+    )
+    # What all designs share needs no column.
+    keys = [key.key for key in study.keys if key.values is None or len(key.values) > 1]
     figures = list(
         dict.fromkeys([*(g.figure for g in study.goals), *(s.figure for s in study.limits)])
     )
     for name in ("design", *keys, *figures):
-        table.add_column(escape(name), justify="right", overflow="fold")
-    table.add_column("limits")
+        table.add_column(escape(_in_lines(name)), justify="right", overflow="fold")
+    are_told = any(row.passes is not True for row in rows)
+    if are_told:
+        table.add_column("limits")
     for row in rows:
         values = [_told(row.values.get(key)) for key in keys]
         found = [_told(row.figures.get(figure)) for figure in figures]
         passes = {True: "hold", False: "missed", None: "not known"}[row.passes]
-        table.add_row(str(row.number), *values, *found, passes)
+        table.add_row(str(row.number), *values, *found, *([passes] if are_told else []))
     return table
+
+
+def _in_lines(name: str) -> str:
+    """A name over several lines, so that a column is as wide as its numbers."""
+    return name.removeprefix("layout.").replace("_", "\n_").replace(".", ".\n")
 
 
 def print_reasons(console: Console, rows: "Sequence[Row]") -> None:
