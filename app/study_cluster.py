@@ -129,7 +129,7 @@ def _connected(wishes: "PoolWishes", place: str) -> Any:
     except ImportError:
         remedy = "install lamwright with its extra, as lamwright[cluster]"
         raise LamwrightError(f"{place}: takes the library distributed; {remedy}") from None
-    logging.getLogger("distributed").setLevel(logging.CRITICAL)  # it logs what it raises
+    _silence()
     security = None
     if wishes.tls_ca is not None:
         security = Security(
@@ -156,6 +156,13 @@ def _connected(wishes: "PoolWishes", place: str) -> Any:
     except (OSError, ValueError, TypeError, RuntimeError) as error:
         said = " ".join(str(error).split())
         raise LamwrightError(f"{place}: no scheduler can be used there: {said}") from None
+
+
+def _silence() -> None:
+    """Keep the library's loggers from the terminal: they tell what is raised or done again."""
+    for name in [*logging.root.manager.loggerDict]:
+        if name.partition(".")[0] == "distributed":
+            logging.getLogger(name).setLevel(logging.CRITICAL)
 
 
 def _check_scheduler_file(path: Path, place: str) -> None:

@@ -47,8 +47,8 @@ def _study(folder, gaps):
         step = 0.01
         [[vary]]
         key = "rotor.barrier[1].depth_mm"
-        least = 14.0
-        most = 14.9
+        least = 3.2
+        most = 4.1
         step = 0.1
         [[goal]]
         figure = "torque_nm"
@@ -117,7 +117,7 @@ def _table(out):
     with Ledger.read(out) as ledger:
         ledger.check()
         rows = ledger.rows()
-        files = {row.hash: ledger.design_file(row.number) for row in rows}
+        files = {row.hash: ledger.design(row.number) for row in rows}
     same = ("values", "outcome", "reason", "stage", "passes", "figures", "errors")
     same += ("tolerance", "effort", "version", "origin")
     table = {row.hash: [getattr(row, name) for name in same] for row in rows}
@@ -204,6 +204,64 @@ def test_killed_at_twenty_random_moments_it_ends_with_the_table_of_one_never_dis
     assert _ended(study, tmp_path / "undisturbed", "--workers", "2")[0] == 0
     assert len(_table(out)[0]) == 600
     assert _table(out) == _table(tmp_path / "undisturbed")
+
+
+@pytest.mark.slow
+def test_killed_in_the_middle_of_real_fields_the_table_is_the_same(tmp_path):
+    """Six rotors computed in truth; killed three times, each time after another row."""
+    study, out = _study(tmp_path, 2), tmp_path / "out"
+    study.write_text(study.read_text().replace("most = 4.1", "most = 3.4"))
+    for k in range(3):
+        with _sweep(study, out, "--workers", "2", code=REAL) as run:
+            _until(lambda k=k, run=run: _count(out) > k or run.poll() is not None)
+            assert run.poll() is None
+            os.killpg(run.pid, signal.SIGKILL)
+            run.wait()
+    assert 3 <= _count(out) <= 6
+    assert _ended(study, out, "--workers", "2", code=REAL)[0] == 0
+    assert _ended(study, tmp_path / "undisturbed", "--workers", "1", code=REAL)[0] == 0
+    table, files = _table(out)
+    assert len(table) == 6
+    assert all(one[1] == "done" for one in table.values())
+    assert (table, files) == _table(tmp_path / "undisturbed")
+
+
+@pytest.mark.slow
+def test_workers_killed_at_random_cost_no_design(tmp_path):
+    """Five of them in sixty designs, of which each may be lost once: all sixty have their row."""
+    study, out = _study(tmp_path, 6), tmp_path / "out"
+    chance = random.Random(8)
+    with _sweep(study, out, "--workers", "2") as run:
+        for k in range(5):
+            _until(lambda k=k: _count(out) >= 8 * k + 2)
+            time.sleep(0.1 * chance.random())
+            os.kill(chance.choice(_workers(run.pid)), signal.SIGKILL)
+        _, told = run.communicate(timeout=PATIENCE_S)
+    assert (run.returncode, _faults(told)) == (0, [])
+    assert _ended(study, tmp_path / "undisturbed", "--workers", "2")[0] == 0
+    assert len(_table(out)[0]) == 60
+    assert _table(out) == _table(tmp_path / "undisturbed")
+
+
+def _workers(parent):
+    """Processes that were spawned to work, by their number; one may just be replaced."""
+    until = time.monotonic() + PATIENCE_S
+    while time.monotonic() < until:
+        told = Path(f"/proc/{parent}/task/{parent}/children")
+        threads = told.parent.parent.glob("*/children")
+        children = [int(pid) for file in threads for pid in file.read_text().split()]
+        found = [pid for pid in children if b"spawn_main" in _command(pid)]
+        if found:
+            return found
+        time.sleep(0.01)
+    raise AssertionError("no worker")
+
+
+def _command(pid):
+    try:
+        return Path(f"/proc/{pid}/cmdline").read_bytes()
+    except OSError:
+        return b""
 
 
 @contextmanager
