@@ -47,7 +47,7 @@ from .sheet_rims import (
 )
 from .sheet_stack import stack_picture
 from .sheet_svg import write_svg
-from .sheet_tables import barrier_table, caution, notes, rib_table, stack_table
+from .sheet_tables import barrier_table, caution, notes, radial_table, rib_table, stack_table
 from .sheet_whole import Whole, whole_view
 
 SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
@@ -202,8 +202,10 @@ def _key_letter(measured: Measured) -> str:
 def _tables(job: SheetJob, measured: Measured) -> list[Picture]:
     width = BLOCK_WIDTH - 2.0 * GAP
     limit = job.width_limit
+    radial = radial_table(measured.poles)
     return [
         rib_table(measured.kinds, limit),
+        *(() if radial is None else (radial,)),
         barrier_table(measured.poles, limit, measured.rim.radius),
         stack_picture(job, stack_table(job), measured.rim.radius),
         notes(job, width),

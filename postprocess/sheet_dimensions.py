@@ -16,6 +16,7 @@ from .sheet_ink import (
     arrow,
     bow,
     polyline,
+    rectangle,
     segment,
 )
 
@@ -24,6 +25,8 @@ PAST = 1.5  # mm that an extension line goes past its dimension line
 OFF = 0.8  # mm from an outline to an extension line
 LIFT = 1.0  # mm from a line to the text above it
 TAIL = 3.0  # mm of a dimension line outside its arrows
+CELL = 5.0  # mm, height of a tolerance frame's cells
+CELL_PAD = 1.2  # mm beside their text
 BOX = 0.9  # mm round a boxed dimension
 WAYS = 24  # directions that a leader is tried in
 REACHES = (6.0, 9.0, 13.0, 18.0, 24.0, 32.0, 42.0)  # mm, lengths it is tried in
@@ -109,6 +112,32 @@ def leader(
         words += size_text(text, limits if k == 0 else None, at)
     far = knee + width if is_right else knee - width
     return [polyline((tip, knee, far)), arrow(tip, tip - knee), *words]
+
+
+def line_profile(tip: Point, over: str, cells: Sequence[str]) -> Iterator[list[Ink]]:
+    """Candidates of a line profile tolerance on a leader (ISO 1101, m), its symbol a half circle.
+
+    Args:
+        tip: on the outline, mm.
+        over: which features it is of.
+        cells: texts behind the symbol: width of the zone, datum.
+    """
+    widths = [CELL, *(Word(text, 0j).width + 2.0 * CELL_PAD for text in cells)]
+    for reach in REACHES:
+        for k in range(WAYS):
+            knee = tip + cmath.rect(reach, 2.0 * math.pi * (k + 0.5) / WAYS)
+            side = 1.0 if knee.real >= tip.real else -1.0
+            low = knee + side * 3.0 - 0.5j * CELL
+            low -= sum(widths) if side < 0.0 else 0.0
+            inks: list[Ink] = [polyline((tip, knee, knee + side * 3.0)), arrow(tip, tip - knee)]
+            inks.append(bow(low + complex(0.5, 0.3) * CELL, 0.34 * CELL, 0.0, math.pi))
+            for text, width in zip(("", *cells), widths, strict=True):
+                inks.append(rectangle(low, low + complex(width, CELL)))
+                if text:
+                    inks.append(Word(text, low + CELL_PAD + 0.5j * (CELL - TEXT)))
+                low += width
+            inks.append(Word(over, low - sum(widths) + 1j * (CELL + LIFT)))
+            yield inks
 
 
 def across(

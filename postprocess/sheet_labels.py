@@ -68,6 +68,10 @@ class Board:
                 return False
         return not any(touches(other, own, CLEAR) for other in self._words)
 
+    def is_clear(self, low: Point, high: Point) -> bool:
+        """Whether no line comes into the rectangle between two corners."""
+        return not _crosses((0.5 * (low + high), 0.5 * (high - low), 1.0), self._lines, 0.0)
+
     def put(self, candidates: Iterable[Sequence[Ink]], what: str) -> None:
         """Draw the first candidate that is free.
 
@@ -104,9 +108,13 @@ def chords(ink: Stroke | Fill) -> ComplexArray:
 
 def touches(word: Word, lines: ComplexArray, room: float) -> bool:
     """Whether any chord (n, 2) comes within `room` mm of a word's box."""
+    return _crosses(_box(word), lines, room)
+
+
+def _crosses(box: tuple[Point, Point, complex], lines: ComplexArray, room: float) -> bool:
     if not len(lines):
         return False
-    middle, half, turn = _box(word)
+    middle, half, turn = box
     own = (lines - middle) / turn
     size = half + complex(room, room)
     first, last = own[:, 0], own[:, 1]

@@ -58,6 +58,7 @@ class RibMeasure:
     end: Point
     end_angle: float
     radii: tuple[float, ...]  # of its corners or its barrier's end, each once
+    centre: Point  # half-way across and along its sides
 
     @property
     def width(self) -> float:
@@ -68,6 +69,12 @@ class RibMeasure:
     def middle(self) -> Point:
         """Half-way across."""
         return 0.5 * (self.start + self.end)
+
+    @property
+    def tilt(self) -> float:
+        """Angle in rad between a radial rib and the q axis, magnitude."""
+        across = self.end - self.start
+        return abs(math.atan2(across.imag, abs(across.real)))
 
 
 @dataclass(frozen=True, slots=True)
@@ -195,6 +202,8 @@ def _rib(rib: Rib, turn: complex, cavities: Sequence[Cavity], rim: Sequence[Edge
     near = [in_circle(side, end, reach) for side, end in zip(sides, ends, strict=True)]
     start, end = shortest(near[0], near[1])
     edge = _end_edge(sides[0], start)
+    beside = [_side_at(side, point) for side, point in zip(sides, (start, end), strict=True)]
+    is_straight = all(one.is_line for one in beside)
     return RibMeasure(
         rib.kind,
         rib.barrier,
@@ -202,6 +211,7 @@ def _rib(rib: Rib, turn: complex, cavities: Sequence[Cavity], rim: Sequence[Edge
         end,
         math.pi / 2.0 - cmath.phase(_end_place(edge, start)),
         _corner_radii(sides[0], edge),
+        0.5 * sum(one.point(0.5) for one in beside) if is_straight else 0.5 * (start + end),
     )
 
 
@@ -210,6 +220,13 @@ def _end_edge(edges: Sequence[Edge], start: Point) -> Edge:
     at_place = [edge for edge in edges if nearest_gap(edge, start) < ABOUT_AXIS]
     along = [edge for edge in at_place if not edge.is_line and abs(edge.centre) < ABOUT_AXIS]
     return along[0] if along else nearest_edge(edges, start)
+
+
+def _side_at(edges: Sequence[Edge], point: Point) -> Edge:
+    """The edge at one end of a rib's least width; of several a straight one."""
+    at_place = [edge for edge in edges if nearest_gap(edge, point) < ABOUT_AXIS]
+    lines = [edge for edge in at_place if edge.is_line]
+    return lines[0] if lines else nearest_edge(edges, point)
 
 
 def _nearest_path(cavities: Sequence[Cavity], point: Point) -> tuple[Edge, ...]:

@@ -20,6 +20,7 @@ from .sheet_dimensions import (
     boxed,
     extension,
     leaders,
+    line_profile,
     narrow_span,
     number,
     spread,
@@ -55,6 +56,7 @@ JOG = 8.0  # mm further to the labels
 ANGLE_DIGITS = 2
 OFF_AXIS = (0.0, -3.0, 3.0, -5.0, 5.0, -8.0, 8.0)  # mm beside a d axis
 ON_AXIS = 1e-6  # rad
+LONG = 1e-3  # m, an edge that a leader may point at
 WIDE_AS_STEP = 10.0  # depths, a wider notch is a step of the rim
 
 
@@ -93,6 +95,7 @@ def pole_view(job: SheetJob, pole: Pole, scale: float, name: str) -> Picture:
     _holes(board, pole.holes, factor, pitch, half)
     _notches(board, pole, factor, pitch)
     _rim(board, pole, factor)
+    _profile(board, job, pole.measure, factor)
     _d_letters(board, rim, 0.5 * pitch)
     low, high = board.picture.box
     middle = complex(0.5 * (low.real + high.real), high.imag + 4.0)
@@ -131,6 +134,20 @@ def _axes(rim: float, bore: float, half: float) -> list[Ink]:
         inks.append(segment(start * way, (rim + 4.0) * way, CENTRE))
     inks.append(Word("q", 1j * start - 3.7j, align="middle"))
     return inks
+
+
+def _profile(board: Board, job: SheetJob, pole: PoleMeasure, factor: float) -> None:
+    """The barriers' line profile on a leader to a barrier's right half, inner barriers first."""
+    cavities = sorted(pole.cavities, key=lambda cavity: -cavity.barrier)
+    edges = [edge for cavity in cavities for edge in cavity.path.edges]
+    tips = [e.point(share) * factor for e in edges for share in (0.7, 0.3) if e.length > LONG]
+    cells = (number(job.width_limit), "A")
+    on_right = (tip for tip in tips if tip.real > 0.0)
+    text = "all barriers"
+    frames = (inks for tip in on_right for inks in line_profile(tip, text, cells))
+    # All but the leader stands clear of lines, the symbol too.
+    clear = (inks for inks in frames if board.is_clear(*Picture(tuple(inks[2:])).box))
+    board.put(clear, text)
 
 
 def _d_letters(board: Board, rim: float, half: float) -> None:

@@ -95,6 +95,34 @@ def barrier_table(poles: Sequence[PoleMeasure], limit: float, rim: float) -> Pic
     return table("BARRIERS ON THE Q AXIS, from the rim", header, rows)
 
 
+def radial_table(poles: Sequence[PoleMeasure]) -> Picture | None:
+    """Where radial ribs stand, those left and right of the q axis as one; None without any."""
+    rows: dict[tuple[str, ...], int] = {}
+    for pole in poles:
+        for rib in pole.ribs:
+            if rib.kind != "radial":
+                continue
+            row = (
+                *((_poles(pole.numbers),) if len(poles) > 1 else ()),
+                str(rib.barrier),
+                _off_q(rib.centre.real / MM, pole.is_symmetric),
+                number(rib.centre.imag / MM),
+                number(math.degrees(rib.tilt), 2),
+            )
+            rows[row] = rows.get(row, 0) + len(pole.numbers)
+    if not rows:
+        return None
+    head = (*(("Poles",) if len(poles) > 1 else ()), "Barrier", "Off q axis", "Along q from axis")
+    lines = [(*row, str(count)) for row, count in rows.items()]
+    return table("RADIAL RIBS, middle of each", (*head, "Tilt \u00b0", "Count"), lines)
+
+
+def _off_q(off: float, is_symmetric: bool) -> str:
+    """Distance from the q axis in mm; with its side where the halves of a pole differ."""
+    side = "" if is_symmetric or abs(off) < 5e-4 else (" right" if off > 0.0 else " left")
+    return f"{number(abs(off))}{side}"
+
+
 def _poles(numbers: Sequence[int]) -> str:
     if len(numbers) > 3:
         return f"{numbers[0]}, {numbers[1]}, .. {numbers[-1]}"

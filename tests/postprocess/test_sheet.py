@@ -1,6 +1,7 @@
 """The supplier's drawing: what it prints is what the outline has, and can be read."""
 
 import functools
+import itertools
 import math
 import re
 import subprocess
@@ -131,6 +132,24 @@ def _check_ribs(job: SheetJob, rows: list[list[str]]) -> None:
                 pairs = [(a, b) for k, a in enumerate(cavities) for b in cavities[:k]]
                 least = min(a.distance(b) for a, b in pairs)
             assert abs(value - MM * least) < half + SAMPLED, (kind, number)
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", ["blower_36s2p", "spindle_24s2p"])
+def test_radial_ribs_stand_where_printed(name, written):
+    """Half-way between the cavities on both sides of each upright rib, to the last digit."""
+    job = job_of(name)
+    rows = table_rows(told_by_pdf(written(name)[0]), "Barrier", 5)
+    middles = {}
+    for number, cavities in cavities_by_barrier(job.section, job.contours, 1).items():
+        spans = sorted((area.bounds[0], area.bounds[2]) for area in cavities)
+        middles[number] = [500.0 * (a[1] + b[0]) for a, b in itertools.pairwise(spans)]
+    assert sum(int(row[-1]) for row in rows) == job.section.poles * sum(map(len, middles.values()))
+    for barrier, off, _, tilt, _ in rows:
+        value, half = digits_of(off)
+        gaps = [abs(value - abs(middle)) for middle in middles[int(barrier)]]
+        assert min(gaps) < half + SAMPLED
+        assert tilt == "0"
 
 
 def _numbers(text: str) -> list[int]:
