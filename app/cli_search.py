@@ -74,4 +74,8 @@ def search(
     if pictures:
         from .study_pictures import draw_study
 
-        draw_study(out)
+        again = (
+            f"lamwright search {study.name} --out FOLDER --budget {budget} --population "
+            f"{population} --seed {seed} --stall {stall} --gain {gain_percent:g} --polish {polish}"
+        )
+        draw_study(out, report.study, again)

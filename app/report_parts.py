@@ -122,16 +122,21 @@ def repeat_section(command: str, machine: Machine, design_hash: str, text: str) 
     for card in cards:
         path = machine.path.parent / card
         listings.append(Listing(f"Card {card}", path.read_text(encoding="utf-8")))
-    made_by = [("lamwright", version()), ("Python", platform.python_version()), *_libraries()]
     blocks: list[Block] = [
         Paragraph(
             f"Save the files listed below and run: {command}. The design and its cards have the "
             f"SHA-256 {design_hash}; the same versions give the same figures."
         ),
-        Grid(("program", "version"), tuple((words(n), words(v)) for n, v in made_by)),
+        made_by(),
         *listings,
     ]
     return Section("To repeat it", tuple(blocks))
+
+
+def made_by() -> Grid:
+    """The versions of the programs that took part."""
+    programs = [("lamwright", version()), ("Python", platform.python_version()), *_libraries()]
+    return Grid(("program", "version"), tuple((words(n), words(v)) for n, v in programs))
 
 
 def _libraries() -> list[tuple[str, str]]:

@@ -21,6 +21,8 @@ from .study_figures import known_figures
 if TYPE_CHECKING:
     from lamwright.geometry.section import CrossSection
 
+    from .study import Study
+
 # Shown beside goals and limits where they vary, in this order.
 USUAL = (
     "torque_nm",
@@ -64,8 +66,13 @@ def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
     return write_study_figures(folder, studied, sections)
 
 
-def draw_study(folder: Path) -> None:
-    """Write the pictures of a study beside its ledger and say where, or why there are none.
+def draw_study(folder: Path, study: "Study", command: str) -> None:
+    """Write pictures and report of a study beside its ledger and say where, or why there are none.
+
+    Args:
+        folder: of the ledger.
+        study: as read from its file.
+        command: that computes it again, for the report.
 
     Raises:
         KeyboardInterrupt: with a line for the user; the designs are kept whatever happens.
@@ -73,6 +80,10 @@ def draw_study(folder: Path) -> None:
     try:
         with Ledger.read(folder) as ledger:
             written = write_pictures(ledger, folder)
+            from .report_files import HTML_FILE, PDF_FILE, write_report
+            from .report_study import study_report
+
+            write_report(study_report(study, ledger, written, command), folder)
     except KeyboardInterrupt:
         told = f"no pictures, all designs are kept; lamwright ledger {folder} --pictures draws them"
         raise KeyboardInterrupt(f"interrupted: {told}") from None
@@ -81,6 +92,7 @@ def draw_study(folder: Path) -> None:
         return
     names = ", ".join(path.stem for path in written if path.suffix == ".png")
     click.echo(f"pictures (PNG, SVG) in {folder}: {names}")
+    click.echo(f"report: {folder / HTML_FILE}, {PDF_FILE}")
 
 
 def studied_of(study: KeptStudy, rows: Sequence[Row]) -> Studied:

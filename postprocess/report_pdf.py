@@ -163,7 +163,7 @@ def _table(grid: Grid, width: float) -> "Flowable":
 
     def wanted(heads: Sequence[str], cells: Sequence[Cell]) -> float:
         texts = [*heads, *(cell.text for cell in cells)]
-        return max(stringWidth(text, "DejaVuSans-Bold", 7.5) for text in texts) + 14.0
+        return 14.0 + max(float(stringWidth(text, "DejaVuSans-Bold", 7.5)) for text in texts)
 
     head = [headed(column, r) for column, r in zip(grid.columns, right, strict=True)]
     columns: list[Sequence[Cell]] = list(zip(*grid.rows, strict=True))

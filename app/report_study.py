@@ -1,0 +1,209 @@
+"""The report of `sweep` and `search`: which designs were computed, and which are worth a look."""
+
+from collections.abc import Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from lamwright.postprocess.report import (
+    Block,
+    Cell,
+    Grid,
+    Listing,
+    Paragraph,
+    Picture,
+    Report,
+    Section,
+    numeral,
+    words,
+)
+
+from .ledger import Ledger
+from .ledger_rows import Row
+from .ledger_tables import best_rows, missed_limits, reasons
+from .lines import number
+from .report_parts import CAUTION, error_text, lines_section, made_by
+from .study_figures import known_figures
+from .version import version
+
+if TYPE_CHECKING:
+    from .study import Study
+
+MOST_LISTED = 25
+CAPTIONS = {
+    "study_parallel": "Every design as a line across what varies and what was found.",
+    "study_effects": "What each key does to each figure, all else mixed.",
+    "study_heat": "Figures over the two keys that vary.",
+    "study_front": "Designs that no other beats in both goals, with the limits.",
+}
+QUICK = (
+    "effort quick: each design was computed on a coarse field, enough to sort designs by; assess "
+    "the one that is chosen"
+)
+
+
+def study_report(study: "Study", ledger: Ledger, pictures: Sequence[Path], command: str) -> Report:
+    """The report of a study.
+
+    Args:
+        study: as read from its file.
+        ledger: its designs.
+        pictures: that were drawn of it, in the folder of the report.
+        command: that goes on with it, or computes it again.
+    """
+    rows = ledger.rows()
+    holding = [row for row in rows if row.passes]
+    outcomes = ledger.outcomes()
+    counts = ", ".join(f"{count} {name}" for name, count in sorted(outcomes.items()))
+    found = f"{len(holding)} of {len(rows)} designs hold every limit"
+    return Report(
+        title=f"Study {study.name}",
+        subtitle=f"lamwright {version()}, effort {study.effort}, study {study.hash[:16]}",
+        outcome=found,
+        mark="good" if holding else "bad",
+        sections=(
+            Section("Best of each goal", (_best(ledger, rows), *_note(study))),
+            Section("Pictures", _pictures(pictures)),
+            Section("Designs", _designs(study, holding or rows, bool(holding))),
+            _asked(study, counts),
+            _refused(rows),
+            lines_section(
+                "What was not computed",
+                (QUICK,) if study.effort == "quick" else (),
+                "each design was computed as by assess, without pictures",
+            ),
+            lines_section(
+                "Cautions", ("a study compares designs; none of them is signed off by it",), ""
+            ),
+            _repeat(study, command),
+        ),
+        closing=CAUTION,
+    )
+
+
+def _note(study: "Study") -> tuple[Block, ...]:
+    return (Paragraph(f"Note of the study file: {study.note}"),) if study.note else ()
+
+
+def _label(name: str) -> str:
+    shown = known_figures().get(name)
+    return f"{shown.label}, {shown.unit}".rstrip(", ") if shown else name
+
+
+def _value(row: Row, name: str) -> tuple[Cell, Cell]:
+    value = row.figures.get(name)
+    shown = numeral("" if value is None else number(value), name)
+    return shown, numeral(error_text(row.errors, name))
+
+
+def _best(ledger: Ledger, rows: Sequence[Row]) -> Grid:
+    study = ledger.study
+    lines = []
+    for best in best_rows(study, rows):
+        missed = ", ".join(missed_limits(study, best.row))
+        mark = (
+            words("holds every limit", "good") if best.holds else words(f"misses {missed}", "bad")
+        )
+        goal = words(f"{best.sense} {_label(best.figure)}")
+        keys = words(_keys(best.row))
+        lines.append(
+            (goal, *_value(best.row, best.figure), numeral(str(best.row.number)), keys, mark)
+        )
+    return Grid(("goal", "value", "+-", "design", "keys", "limits"), tuple(lines))
+
+
+def _keys(row: Row) -> str:
+    return ", ".join(f"{key} = {_stated(value)}" for key, value in row.values.items())
+
+
+def _stated(value: object) -> str:
+    return f"{value:.6g}" if isinstance(value, float) else str(value)
+
+
+def _pictures(paths: Sequence[Path]) -> tuple[Block, ...]:
+    names = dict.fromkeys(path.stem for path in paths)
+    return tuple(
+        Picture(name, CAPTIONS.get(name.rstrip("_0123456789"), name.replace("_", " ")))
+        for name in names
+    )
+
+
+def _designs(study: "Study", rows: Sequence[Row], holding: bool) -> tuple[Block, ...]:
+    """A table of the first designs by the first goal."""
+    if not study.goals:
+        ranked, order = list(rows), "in order of finishing"
+    else:
+        goal = study.goals[0]
+        sign, order = (-1.0 if goal.sense == "most" else 1.0), f"by {_label(goal.figure)}"
+        ranked = sorted(
+            (row for row in rows if goal.figure in row.figures),
+            key=lambda row: (sign * row.figures[goal.figure], row.hash),
+        )
+    figures = [g.figure for g in study.goals] + [limit.figure for limit in study.limits]
+    names = list(dict.fromkeys(figures))
+    keys = [key.key for key in study.keys]
+    heads = ["design", *keys, *(head for name in names for head in (_label(name), "+-"))]
+    lines = tuple(
+        (
+            numeral(str(row.number)),
+            *(numeral(_stated(row.values.get(key, ""))) for key in keys),
+            *(cell for name in names for cell in _value(row, name)),
+        )
+        for row in ranked[:MOST_LISTED]
+    )
+    of = "that hold every limit" if holding else "of which none holds every limit"
+    told = f"The first {len(lines)} of {len(ranked)} designs {of}, {order}."
+    return Paragraph(told), Grid(tuple(heads), lines)
+
+
+def _asked(study: "Study", counts: str) -> Section:
+    limits = [
+        f"{_label(limit.figure)}: "
+        + " and ".join(
+            f"{sign} {number(end)}"
+            for sign, end in ((">=", limit.least), ("<=", limit.most))
+            if end is not None
+        )
+        for limit in study.limits
+    ]
+    goals = [f"{goal.sense} {_label(goal.figure)}" for goal in study.goals]
+    rows = [
+        ("base design", study.base_name),
+        ("keys", ", ".join(key.key for key in study.keys)),
+        ("goals", "; ".join(goals)),
+        ("limits", "; ".join(limits) or "none"),
+        ("sampling", study.sampling.kind),
+        ("effort, tolerance", f"{study.effort}, {study.tolerance}"),
+        ("designs", counts),
+    ]
+    return Section(
+        "What was asked", (Grid(("what", "asked"), tuple((words(a), words(b)) for a, b in rows)),)
+    )
+
+
+def _refused(rows: Sequence[Row]) -> Section:
+    lines = tuple(
+        (words(outcome), words(reason), numeral(str(count)))
+        for outcome, reason, count in reasons(rows)
+    )
+    table: Block = Grid(("outcome", "reason", "designs"), lines)
+    return Section("Designs without figures", (table if lines else Paragraph("none"),))
+
+
+def _repeat(study: "Study", command: str) -> Section:
+    """All files that a second person needs."""
+    text = study.path.read_text(encoding="utf-8")
+    drawings = ", ".join(study.drawings)
+    return Section(
+        "To repeat it",
+        (
+            Paragraph(
+                f"Save the files listed below and run: {command}. lamwright ledger FOLDER --show "
+                "NUMBER writes a design back, ready for assess."
+                + (f" The drawings {drawings} belong to it." if drawings else "")
+            ),
+            made_by(),
+            Listing(f"Study file {study.path.name}", text),
+            Listing(f"Base design {study.base_name}", study.base_text),
+            *(Listing(f"Card {name}", card) for name, card in study.cards.items()),
+        ),
+    )
