@@ -16,6 +16,7 @@ from lamwright.geometry.errors import LamwrightError
 from .cli_assess import assess
 from .cli_compare import compare
 from .cli_ledger import ledger
+from .cli_page import page
 from .cli_release import release, verify
 from .cli_search import search
 from .cli_start import start
@@ -339,3 +340,4 @@ main.add_command(sweep)
 main.add_command(release)
 main.add_command(verify)
 main.add_command(search)
+main.add_command(page)

@@ -98,13 +98,17 @@ def read_magnet_card(path: Path) -> MagnetCard:
     return _checked_card(path, MagnetCard, magnet_card_findings)
 
 
-def read_machine(path: Path) -> Machine:
+def read_machine(path: Path, text: str | None = None) -> Machine:
     """The design in `path` and the cards it names; names count from the design's folder.
+
+    Args:
+        path: design file.
+        text: that stands for what is in the file, as where it is being edited.
 
     Raises:
         DesignError: the design or a card cannot be read or used; one line for each fault.
     """
-    text = _text(path)
+    text = _text(path) if text is None else text
     design = _design(path, text)
     cards: list[SteelCard] = []
     problems: dict[str, None] = {}  # as an ordered set: both keys may name the same broken card

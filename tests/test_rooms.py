@@ -39,11 +39,18 @@ OWNERS = {
     "dask": ("app/study_cluster*.py",),
     "pymoo": ("app/search*.py",),
     "moocore": ("app/search*.py",),
+    "starlette": ("app/page_*.py",),
+    "uvicorn": ("app/page_server.py",),
     "click": ("app/*.py",),
     "rich": ("app/*.py",),
     "pydantic": ("geometry/design*.py", "app/study_tables.py"),
 }
-IMPORTED_AT_THE_TOP = {"click", "rich", "pydantic"}  # light enough, or needed by every command
+IMPORTED_AT_THE_TOP = {
+    "click",
+    "rich",
+    "pydantic",
+    "starlette",
+}  # light enough, or needed by every command
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,0 +1,161 @@
+"""The page's server: addresses, answers, and its life from the first to the last request."""
+
+import contextlib
+import json
+import socket
+from collections.abc import Awaitable, Callable, Mapping
+from importlib.resources import files
+from pathlib import Path
+from typing import Any
+
+from starlette.applications import Starlette
+from starlette.concurrency import run_in_threadpool
+from starlette.exceptions import HTTPException
+from starlette.requests import Request
+from starlette.responses import FileResponse, JSONResponse, Response
+from starlette.routing import Mount, Route
+from starlette.staticfiles import StaticFiles
+
+from lamwright.geometry.errors import LamwrightError
+
+from . import page_api
+from .page_api import BadRequest, Page
+from .page_drawing import Record
+from .page_folder import ChangedOnDisk, Outside
+from .page_guard import Door, Guard
+
+STATIC = Path(str(files("lamwright.app"))) / "static"
+STATUS = ((ChangedOnDisk, 409), (Outside, 403), (LamwrightError, 422), (OSError, 422))
+
+Handler = Callable[[Request], Awaitable[Response]]
+
+
+def page_app(page: Page, door: Door) -> Guard:
+    """The whole server, to be run by uvicorn or a test's client."""
+    routes = [
+        Route("/", _index),
+        Route("/api/page", _getting(lambda query: page_api.page_record(page))),
+        Route("/api/design", _getting(lambda query: page_api.design_record(page, query["path"]))),
+        *(
+            Route(f"/api/{name}", _posting(page, call), methods=["POST"])
+            for name, call in (
+                ("outline", page_api.outline),
+                ("ranges", page_api.ranges),
+                ("draft", page_api.keep_draft),
+                ("discard", page_api.discard_draft),
+                ("save", page_api.save),
+            )
+        ),
+        Mount("/static", StaticFiles(directory=STATIC, follow_symlink=False)),
+    ]
+    handlers: dict[Any, Any] = {HTTPException: _http_fault, **{kind: _fault for kind, _ in STATUS}}
+    return Guard(Starlette(routes=routes, exception_handlers=handlers), door)
+
+
+async def _index(request: Request) -> Response:
+    return FileResponse(STATIC / "index.html", media_type="text/html")
+
+
+def _getting(call: Callable[[Mapping[str, str]], Record]) -> Handler:
+    async def answer(request: Request) -> Response:
+        try:
+            return JSONResponse(await run_in_threadpool(call, request.query_params))
+        except KeyError as error:
+            raise BadRequest(f"{error.args[0]}: missing in the address") from None
+
+    return answer
+
+
+def _posting(page: Page, call: Callable[[Page, Mapping[str, object]], Record]) -> Handler:
+    async def answer(request: Request) -> Response:
+        body = json_object(await request.body())
+        return JSONResponse(await run_in_threadpool(call, page, body))
+
+    return answer
+
+
+def json_object(data: bytes | str) -> dict[str, object]:
+    """The JSON object in a body or frame.
+
+    Raises:
+        BadRequest: it is none.
+    """
+    try:
+        body = json.loads(data, parse_constant=_no_number)
+    except (ValueError, RecursionError):
+        raise BadRequest("not JSON; accepted an object") from None
+    if not isinstance(body, dict):
+        raise BadRequest("not a JSON object")
+    return body
+
+
+def _no_number(name: str) -> float:
+    raise ValueError(name)
+
+
+async def _fault(request: Request, error: Exception) -> Response:
+    status = next(status for kind, status in STATUS if isinstance(error, kind))
+    said = str(error) if isinstance(error, LamwrightError) else "a file cannot be read or written"
+    return JSONResponse({"error": said}, status)
+
+
+async def _http_fault(request: Request, error: Exception) -> Response:
+    assert isinstance(error, HTTPException)
+    return JSONResponse({"error": str(error.detail)}, error.status_code)
+
+
+def listening(port: int) -> socket.socket:
+    """A socket of the loopback alone.
+
+    Args:
+        port: 0 takes a free one.
+
+    Raises:
+        LamwrightError: the port is in use, or not to be had.
+    """
+    own = socket.socket(socket.AF_INET, socket.SOCK_STREAM)
+    try:
+        if hasattr(socket, "SO_EXCLUSIVEADDRUSE"):  # Windows: nobody else may listen there too
+            own.setsockopt(socket.SOL_SOCKET, socket.SO_EXCLUSIVEADDRUSE, 1)
+        else:  # a port whose last connections are still being forgotten can be had
+            own.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
+        own.bind(("127.0.0.1", port))
+        own.listen(64)
+    except (OSError, OverflowError) as error:
+        own.close()
+        reason = "in use, maybe by a page that runs already"
+        if not isinstance(error, OSError) or error.errno not in _IN_USE:
+            reason = "cannot be had"
+        raise LamwrightError(f"--port {port}: {reason}; accepted another, or 0 for any") from None
+    return own
+
+
+def serve(page: Page, door: Door, own: socket.socket) -> None:
+    """Serve until the interrupt key."""
+    import uvicorn
+
+    config = uvicorn.Config(
+        page_app(page, door),
+        http="h11",
+        ws="websockets-sansio",
+        ws_max_size=1 << 20,
+        ws_max_queue=8,
+        ws_per_message_deflate=False,
+        log_level="error",
+        access_log=False,
+        server_header=False,
+        limit_concurrency=128,
+        h11_max_incomplete_event_size=32768,
+        timeout_graceful_shutdown=2,
+    )
+    with contextlib.closing(own):
+        uvicorn.Server(config).run(sockets=[own])
+
+
+def _in_use() -> frozenset[int]:
+    import errno
+
+    return frozenset({errno.EADDRINUSE, getattr(errno, "WSAEADDRINUSE", errno.EADDRINUSE)})
+
+
+_IN_USE = _in_use()

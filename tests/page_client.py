@@ -1,0 +1,28 @@
+"""A client of the page's server in this process, as the page itself would ask."""
+
+import shutil
+from pathlib import Path
+
+from starlette.testclient import TestClient
+
+from lamwright.app.page_api import Page, opened_page
+from lamwright.app.page_guard import Door
+from lamwright.app.page_server import page_app
+
+DESIGNS = Path(__file__).parent.parent / "designs"
+DEMO = "demo_24s4p_arc.toml"
+DOOR = Door(8765, "a token of this test")
+ORIGIN = "http://127.0.0.1:8765"
+HEADERS = {"x-page-token": DOOR.token, "origin": ORIGIN}
+
+
+def demo_folder(folder: Path) -> Page:
+    """The page of a copy of the demonstration design."""
+    shutil.copy(DESIGNS / DEMO, folder)
+    shutil.copytree(DESIGNS / "steel", folder / "steel")
+    return opened_page(folder / DEMO, None)
+
+
+def client_of(page: Page) -> TestClient:
+    """A client with token and origin."""
+    return TestClient(page_app(page, DOOR), base_url=ORIGIN, headers=HEADERS)
