@@ -157,7 +157,8 @@ def worst_group(ribs: Sequence[MeasuredRib], ideal: Ideal) -> int:
     """The period, from 0, with the rib that has the least share of its designed width."""
     if not ribs:
         return 0
-    thinnest = min(ribs, key=lambda rib: rib.width / rib.designed)
+    # To 1e-6, so that of ribs that are alike the first counts.
+    thinnest = min(ribs, key=lambda rib: round(rib.width / rib.designed, 6))
     return (thinnest.pole - 1) // ideal.period
 
 

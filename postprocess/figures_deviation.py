@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from lamwright.geometry.supplier_outline import SupplierOutline
+from lamwright.geometry.supplier_outline import SupplierOutline, WorstPlace
 
 from .figures import _figure, write_figure
 from .figures_style import MM, Style, draw_scale, inked
@@ -24,6 +24,7 @@ if TYPE_CHECKING:
 
 UM = 1e6  # per m
 LEAST_SCALE = 1.0  # um, of the colours: exact drawings are grey, not a carpet of rounding
+LEAST_PLACE = 5e-9  # m
 DRAWN_SHARE = 0.035  # of the rim's radius, that the largest deviation is drawn with
 LINE = 2.6  # points
 MOST_RIBS = 40  # bars; more are in the table alone
@@ -98,15 +99,16 @@ def draw_deviation(ax: Axes, found: SupplierOutline, limit: float, style: Style)
     ax.set_ylim(-reach, reach)
     ax.set_aspect("equal")
     ax.axis("off")
-    told = f"deviation drawn {gain:.3g} times as large, design as a thin line"
+    told = f"deviation drawn {gain:.0f} times as large, design as a thin line"
     ax.text(0.5, 0.0, told, transform=ax.transAxes, ha="center", fontsize=style.text)
 
 
 def draw_places(ax: Axes, found: SupplierOutline, style: Style) -> None:
     """List the worst places by their numbers, then the diameters."""
     ax.axis("off")
-    lines = ["worst places, um"]
-    for number, place in enumerate(found.worst, start=1):
+    places = _shown_places(found)
+    lines = ["worst places, um"] if places else ["nowhere off by 0.01 um"]
+    for number, place in enumerate(places, start=1):
         where, radius, angle = (part.strip() for part in place.text.split(", "))
         lines.append(f"{number}  {UM * place.deviation:+.2f}   {where}, {radius},")
         lines.append(f"     {angle}")
@@ -163,6 +165,11 @@ def draw_rib_bars(ax: Axes, found: SupplierOutline, style: Style) -> None:
         spine.set(color=style.quiet, linewidth=style.hair)
 
 
+def _shown_places(found: SupplierOutline) -> list[WorstPlace]:
+    """Those that are more than rounding."""
+    return [place for place in found.worst if abs(place.deviation) >= LEAST_PLACE]
+
+
 def _gain(found: SupplierOutline) -> float:
     """How many times deviations are drawn: a round number, 1 where there are next to none."""
     most = max(float(np.abs(found.deviation).max()), LEAST_SCALE / UM)
@@ -174,7 +181,7 @@ def _gain(found: SupplierOutline) -> float:
 def _number_places(ax: Axes, found: SupplierOutline, style: Style) -> None:
     from matplotlib.patheffects import Normal, Stroke
 
-    for number, place in enumerate(found.worst, start=1):
+    for number, place in enumerate(_shown_places(found), start=1):
         inward = MM * place.at * (1.0 - 0.05)
         ax.plot(
             [MM * place.at.real, inward.real],

@@ -11,8 +11,12 @@ from supplier_forms import FORMS, write_traced
 from lamwright.app.cli import main
 from lamwright.app.outline_run import OutlineWishes, assess_outline, promised_record
 from lamwright.app.point import read_machine
+from lamwright.app.release_parts import parts_of
 from lamwright.geometry.cross_section import cross_section
+from lamwright.geometry.dxf_release import write_release
 from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.punch_options import PunchOptions
+from lamwright.geometry.supplier_outline import supplier_outline
 
 DESIGNS = Path(__file__).parent.parent.parent / "designs"
 DEMO = DESIGNS / "demo_24s4p_arc.toml"
@@ -77,6 +81,20 @@ def test_a_thin_rib_is_told_and_stressed(tmp_path):
     assert figures["rib_stress_peak_mpa"]["change"] > 0.0
     assert figures["rib_stress_peak_mpa"]["beyond_error_bars"]
     assert figures["torque_nm"]["beyond_error_bars"]
+
+
+@pytest.mark.parametrize("form", ["R2000", "R2018"])
+def test_what_was_released_comes_back(form, tmp_path):
+    """Centre lines and texts of a released DXF are no outline; ribs exact to 1 nm (rounding)."""
+    machine = read_machine(DEMO)
+    section = cross_section(machine.design)
+    parts = parts_of(machine, section, PunchOptions())
+    rotor = next(part for part in parts if part.name == "rotor")
+    path = tmp_path / "rotor.dxf"
+    write_release(rotor.tool, path, form, ["a note"], rotor.axis)
+    found = supplier_outline(section, path)
+    assert max(abs(rib.difference) for rib in found.ribs) < 1e-9
+    assert found.group == 0
 
 
 REFUSED = {
