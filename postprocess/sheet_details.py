@@ -17,7 +17,7 @@ from .sheet_measures import PoleMeasure, RibMeasure
 SAME = 1e-6  # m, widths and radii that differ less are one
 LETTERS = "ABCDEFGHJKLMNPRSTUVWXYZ"  # no I, O or Q, that look like figures (ISO 128, m)
 CIRCLE = 19.0  # mm of paper, radius of a detail
-SCALES = (100.0, 50.0, 20.0, 10.0, 5.0, 2.0, 1.0)
+SCALES = (100.0, 50.0, 20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)
 MOST_RIB = 13.0  # mm of paper that a rib may be wide
 LEAST_MARK = 2.0  # mm of paper, radius of a detail's circle in its view
 LEAST_VIEW = 1.3  # widths of a rib that its detail reaches at least; one radius of its corners

@@ -22,6 +22,8 @@ SIDE_TOL = 1e-6  # rad
 STEP = 0.5e-3  # m, places beside the q axis where a rib stands on it
 MOST_STEPS = 40
 SETTLED = 0.02  # of the thickness, change over a step beside a rib's fillet
+# Of the rotor's radius: a wider one is no rib, but what a drawing's hole leaves to the rim.
+MOST_RIB = 0.15
 WINDOW = 3.0  # rib widths about a rib's ends in which its least width is looked for
 
 
@@ -138,7 +140,7 @@ def _measured(
     ribs = [
         _rib(rib, turn, cavities, outer.path.edges)
         for rib in cell.ribs
-        if pole_of(rib.name) == pole
+        if pole_of(rib.name) == pole and rib.width < MOST_RIB * section.rotor_radius
     ]
     barriers = sorted({cavity.barrier for cavity in cavities})
     cuts = [_axis_cut(k, [c for c in cavities if c.barrier == k]) for k in barriers]

@@ -1,7 +1,6 @@
 """The supplier's drawing: what it prints is what the outline has, and can be read."""
 
 import functools
-import itertools
 import math
 import re
 import subprocess
@@ -12,16 +11,12 @@ from pathlib import Path
 import numpy as np
 import pypdf
 import pytest
-import shapely
 from random_designs import random_design
+from sheet_jobs import DESIGNS, QUICK, job_of, sheet_of
 from sheet_reading import (
     MM,
     POINT,
-    cavities_by_barrier,
-    digits_of,
-    end_angle,
     polygon_of,
-    table_rows,
     told_by_pdf,
     told_by_svg,
 )
@@ -30,38 +25,17 @@ from lamwright.geometry.contours import Contour, lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import Edge
 from lamwright.geometry.curves import Path as Outline
-from lamwright.geometry.design_file import design_hash, read_machine
+from lamwright.geometry.design_file import read_machine
+from lamwright.geometry.dxf import write_contours
 from lamwright.geometry.errors import DesignError, LamwrightError
-from lamwright.postprocess.sheet import Sheet, composed, drawing_sheet
+from lamwright.geometry.punch_offset import punched
+from lamwright.geometry.punch_options import PunchOptions
+from lamwright.postprocess.sheet import composed, drawing_sheet
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
 from lamwright.postprocess.sheet_labels import faults
 
-DESIGNS = Path(__file__).parents[2] / "designs"
 GALLERY = sorted(path.stem for path in (DESIGNS / "gallery").glob("*.toml"))
-QUICK = ("demo_24s4p_arc", "blower_36s2p", "hoist_60s10p")
-# Their ends are round or run along the rim, so that the farthest point is where an end is measured.
-MEASURED = (*QUICK, "mill_48s4p", "ropeway_48s8p", "traction_54s6p", "servo_12s10p")
-SAMPLED = 1e-4  # mm, of a distance between polygons instead of arcs
-TURNED = 0.002  # degrees, of the farthest of samples on an arc
 RANDOM = 60  # designs among the slow tests
-
-
-@functools.cache
-def job_of(name: str, **options: object) -> SheetJob:
-    """A shipped design as it is drawn."""
-    path = DESIGNS / f"{name}.toml"
-    machine = read_machine(path if path.exists() else DESIGNS / "gallery" / path.name)
-    section = cross_section(machine.design)
-    digest = design_hash(machine.design, machine.cards)
-    contours = lamination_contours(section)
-    wishes = SheetOptions(part_number="4711", **options)  # type: ignore[arg-type]
-    return SheetJob(machine.design, section, contours, machine.rotor_steel, digest, wishes)
-
-
-@functools.cache
-def sheet_of(name: str) -> Sheet:
-    """A shipped design's drawing."""
-    return composed(job_of(name))
 
 
 @pytest.fixture(scope="module")
@@ -85,118 +59,6 @@ def test_files_say_what_was_composed(name, written):
     pdf, svg = written(name)
     assert sorted(one.text for one in told_by_svg(svg)) == words
     assert sorted(one.text for one in told_by_pdf(pdf)) == words
-
-
-@pytest.mark.parametrize(
-    "name",
-    [MEASURED[0], *(pytest.param(name, marks=pytest.mark.slow) for name in MEASURED[1:])],
-)
-def test_printed_sizes_are_the_outlines(name, written):
-    """Every width, thickness, distance and angle, read back from both files, to its last digit.
-
-    The outline is measured by polygons with chords within 1e-8 m of the arcs.
-    """
-    job = job_of(name)
-    pdf, svg = written(name)
-    for told in (told_by_svg(svg), told_by_pdf(pdf)):
-        _check_diameters(job, [one.text for one in told])
-        _check_ribs(job, table_rows(told, "Det.", 7))
-        several = len({p for p in re.findall(r"Poles \d", " ".join(o.text for o in told))}) > 1
-        _check_barriers(job, told, several)
-
-
-def _check_diameters(job: SheetJob, texts: list[str]) -> None:
-    outer = next(c.path for c in job.contours if c.layer == "OUTER_CONTOUR")
-    bore = next(c.path for c in job.contours if c.layer == "BORE")
-    sizes = [
-        2.0 * MM * polygon_of(outer).hausdorff_distance(shapely.Point(0.0, 0.0)),
-        2.0 * MM * polygon_of(bore).exterior.distance(shapely.Point(0.0, 0.0)),
-    ]
-    printed = [digits_of(text) for text in texts if text.startswith("\u2300")]
-    for size in sizes:
-        assert any(abs(value - size) < half + SAMPLED for value, half in printed), size
-
-
-def _check_ribs(job: SheetJob, rows: list[list[str]]) -> None:
-    outer = next(c.path for c in job.contours if c.layer == "OUTER_CONTOUR")
-    rim = polygon_of(outer, 1j * np.exp(-0.5j * job.section.pole_angle)).exterior
-    barriers = cavities_by_barrier(job.section, job.contours, 1)
-    assert {k for row in rows for k in _numbers(row[2])} == set(barriers)
-    for _, kind, numbers, _, width, *_ in rows:
-        value, half = digits_of(width)
-        for number in _numbers(numbers):
-            cavities = barriers[number]
-            if kind == "tangential":
-                least = min(cavity.distance(rim) for cavity in cavities)
-            else:
-                pairs = [(a, b) for k, a in enumerate(cavities) for b in cavities[:k]]
-                least = min(a.distance(b) for a, b in pairs)
-            assert abs(value - MM * least) < half + SAMPLED, (kind, number)
-
-
-@pytest.mark.slow
-@pytest.mark.parametrize("name", ["blower_36s2p", "spindle_24s2p"])
-def test_radial_ribs_stand_where_printed(name, written):
-    """Half-way between the cavities on both sides of each upright rib, to the last digit."""
-    job = job_of(name)
-    rows = table_rows(told_by_pdf(written(name)[0]), "Barrier", 5)
-    middles = {}
-    for number, cavities in cavities_by_barrier(job.section, job.contours, 1).items():
-        spans = sorted((area.bounds[0], area.bounds[2]) for area in cavities)
-        middles[number] = [500.0 * (a[1] + b[0]) for a, b in itertools.pairwise(spans)]
-    assert sum(int(row[-1]) for row in rows) == job.section.poles * sum(map(len, middles.values()))
-    for barrier, off, _, tilt, _ in rows:
-        value, half = digits_of(off)
-        gaps = [abs(value - abs(middle)) for middle in middles[int(barrier)]]
-        assert min(gaps) < half + SAMPLED
-        assert tilt == "0"
-
-
-def _numbers(text: str) -> list[int]:
-    return [int(one) for one in text.split(",")]
-
-
-def _check_barriers(job: SheetJob, told: list, several: bool) -> None:
-    rows = table_rows(told, "Poles" if several else "No.", 7 if several else 6)
-    rows = [row if several else ["1", *row] for row in rows]
-    radius = max(abs(e.start) for c in job.contours for e in c.path.edges)
-    for pole in {row[0] for row in rows}:
-        first = int(pole.split(",")[0])
-        barriers = cavities_by_barrier(job.section, job.contours, first)
-        own = [row for row in rows if row[0] == pole]
-        assert sorted(int(row[1]) for row in own) == sorted(barriers)
-        for _, number, beside, outer, thickness, depth, angle in own:
-            cut = _cut(barriers[int(number)], float(beside))
-            assert abs(digits_of(outer)[0] - cut[1]) < digits_of(outer)[1] + SAMPLED
-            assert abs(digits_of(thickness)[0] - (cut[1] - cut[0])) < (
-                digits_of(thickness)[1] + SAMPLED
-            )
-            value, half = digits_of(depth)
-            assert abs(value - (MM * radius - cut[1])) < half + SAMPLED
-            ends = _ends(job, int(number), first)
-            for printed in angle.split(" / "):
-                value, half = digits_of(printed)
-                assert any(abs(value - end) < half + TURNED for end in ends), (number, ends)
-
-
-def _cut(cavities: list[shapely.Polygon], beside: float) -> tuple[float, float]:
-    """Lowest and highest place of a barrier on the upright line `beside` mm left of the q axis."""
-    x = -beside / MM
-    line = shapely.LineString([(x, 0.0), (x, 1.0)])
-    parts = [cavity.intersection(line).bounds for cavity in cavities if cavity.intersects(line)]
-    return MM * min(b[1] for b in parts), MM * max(b[3] for b in parts)
-
-
-def _ends(job: SheetJob, barrier: int, pole: int) -> list[float]:
-    turn = 1j * np.exp(-1j * (pole - 0.5) * job.section.pole_angle)
-    areas = cavities_by_barrier(job.section, job.contours, pole)[barrier]
-    edges = []
-    for contour in job.contours:
-        if contour.layer == "BARRIERS":
-            area = polygon_of(contour.path, turn)
-            if any(area.equals(one) for one in areas):
-                edges += contour.path.edges
-    return end_angle(Outline(tuple(edges)), complex(turn))
 
 
 @pytest.mark.parametrize("name", QUICK)
@@ -256,7 +118,8 @@ def test_same_job_same_bytes(tmp_path, written):
     again = tmp_path / "again.pdf", tmp_path / "again.svg"
     code = (
         "import sys; sys.path[:0] = ['tests', 'typed']\n"
-        "from pathlib import Path; from test_sheet import job_of, drawing_sheet\n"
+        "from pathlib import Path; from sheet_jobs import job_of\n"
+        "from lamwright.postprocess.sheet import drawing_sheet\n"
         f"drawing_sheet(job_of({name!r}), Path({str(again[0])!r}), Path({str(again[1])!r}))"
     )
     here = Path(__file__).parent
@@ -309,6 +172,38 @@ def test_sizes_come_from_the_contours():
     texts = {word.text for word in composed(replace(job, contours=larger)).picture.words}
     assert {"\u230082.012", "\u230026.26 H7", "0.606 \u00b10.04", "2.626 \u00b10.04"} <= texts
     assert "\u230081.2" not in texts
+
+
+def test_a_compensated_outline_is_told_as_cut():
+    """Steel 0.02 mm out on all contours: ribs and diameter 0.04 mm larger, bore and air less."""
+    job = job_of(QUICK[0])
+    cut = punched(job.contours, PunchOptions(tool_offset_mm=0.02))
+    sheet = composed(replace(job, contours=cut))
+    texts = {word.text for word in sheet.picture.words}
+    assert {"\u230081.24", "\u230025.96 H7", "0.64 \u00b10.04", "2.56 \u00b10.04"} <= texts
+    assert faults(sheet.picture) == []
+
+
+@pytest.mark.slow
+def test_a_rotor_from_a_drawing_is_drawn(tmp_path):
+    """A user's DXF with holes below the barriers: ribs are ribs, nothing is written over."""
+    name = "winder_72s12p"
+    write_contours(job_of(name).contours, tmp_path / "rotor.dxf")
+    text = (DESIGNS / "gallery" / f"{name}.toml").read_text()
+    tables = re.split(r"(?m)^(?=\[)", text)
+    text = "".join(t for t in tables if not re.match(r"\[\[?rotor\.", t))
+    text = re.sub(r"(?m)^(gap_mm|shaft_diameter_mm) = .*\n", "", text)
+    text = text.replace("[rotor]\n", '[rotor]\noutline_dxf = "rotor.dxf"\n')
+    path = tmp_path / "rotor.toml"
+    path.write_text(text.replace('"../steel/', f'"{DESIGNS}/steel/'))
+    machine = read_machine(path)
+    section = cross_section(machine.design)
+    contours = lamination_contours(section)
+    sheet = composed(SheetJob(machine.design, section, contours, machine.rotor_steel, 64 * "0"))
+    assert faults(sheet.picture) == []
+    widths = {w.text for w in sheet.picture.words if "\u00b10.04" in w.text}
+    assert {"0.70 \u00b10.04", "1.00 \u00b10.04"} <= widths
+    assert sheet.pole_scale >= 1.0
 
 
 def test_wishes_are_on_the_sheet():

@@ -1,0 +1,31 @@
+"""Shipped designs as they are drawn for the supplier, each composed once a session."""
+
+import functools
+from pathlib import Path
+
+from lamwright.geometry.contours import lamination_contours
+from lamwright.geometry.cross_section import cross_section
+from lamwright.geometry.design_file import design_hash, read_machine
+from lamwright.postprocess.sheet import Sheet, composed
+from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
+
+DESIGNS = Path(__file__).parents[1] / "designs"
+QUICK = ("demo_24s4p_arc", "blower_36s2p", "hoist_60s10p")
+
+
+@functools.cache
+def job_of(name: str, **options: object) -> SheetJob:
+    """A shipped design as it is drawn."""
+    path = DESIGNS / f"{name}.toml"
+    machine = read_machine(path if path.exists() else DESIGNS / "gallery" / path.name)
+    section = cross_section(machine.design)
+    digest = design_hash(machine.design, machine.cards)
+    contours = lamination_contours(section)
+    wishes = SheetOptions(part_number="4711", **options)  # type: ignore[arg-type]
+    return SheetJob(machine.design, section, contours, machine.rotor_steel, digest, wishes)
+
+
+@functools.cache
+def sheet_of(name: str) -> Sheet:
+    """A shipped design's drawing."""
+    return composed(job_of(name))
