@@ -49,7 +49,7 @@ class SearchReport:
     state: SearchState
     polish: PolishState | None
     front: "tuple[Row, ...]"  # along the first goal, its best first
-    rows: "tuple[Row, ...]"  # of all designs asked for
+    rows: "tuple[Row, ...]"  # of all designs in the ledger
     computed: int  # of them, by this run
     seconds: float
 
@@ -99,7 +99,7 @@ def search(
             run = _Run(study, settings, ledger, pool, watch)
             state = run.search(on_generation)
             polish = run.polish(state, wishes) if settings.polish else None
-            rows, front = run.rows_and_front(state, polish)
+            rows, front = run.rows_and_front()
     except KeyboardInterrupt:
         raise KeyboardInterrupt(INTERRUPTED) from None
     seconds = time.perf_counter() - began
@@ -213,17 +213,17 @@ class _Run:
             )
         return [row for row in rows if row is not None]
 
-    def rows_and_front(
-        self, state: SearchState, polish: PolishState | None
-    ) -> "tuple[tuple[Row, ...], tuple[Row, ...]]":
-        """All rows, and those of the front in the order of the first goal."""
-        worths = [*state.worths, *(polish.worths if polish else ())]
-        rows = self.known([*state.hashes, *(polish.hashes if polish else ())])
-        held = {row.hash: k for k, row in reversed([*enumerate(rows)]) if worths[k].holds}
-        numbers = sorted(held.values())
-        goals = np.array([worths[k].goals for k in numbers], dtype=float)
-        best = [k for k, is_best in zip(numbers, on_front(goals), strict=True) if is_best]
-        best.sort(key=lambda k: worths[k].goals)
+    def rows_and_front(self) -> "tuple[tuple[Row, ...], tuple[Row, ...]]":
+        """All rows of the ledger, and those of its front in the order of the first goal.
+
+        Designs of an earlier polish, or of a sweep of the same study, may stand on the front too.
+        """
+        rows = self.ledger.rows()
+        worths = self.measure.all(rows)
+        held = [k for k, worth in enumerate(worths) if worth.holds]
+        held.sort(key=lambda k: (worths[k].goals, rows[k].hash))  # not by who was finished first
+        goals = np.array([worths[k].goals for k in held], dtype=float)
+        best = [k for k, is_best in zip(held, on_front(goals), strict=True) if is_best]
         return tuple(rows), tuple(rows[k] for k in best)
 
 

@@ -82,7 +82,7 @@ def every(space):
 def test_a_search_killed_with_its_workers_goes_on_bit_by_bit(tmp_path):
     """SIGKILL of the whole process group at random moments: state and rows as undisturbed."""
     command = [sys.executable, "-m", "lamwright.app", "search", STUDY, "--stall", "0"]
-    command += ["--population", "6", "--budget", "18", "--seed", "5", "--out"]
+    command += ["--population", "6", "--budget", "18", "--seed", "5", "--no-pictures", "--out"]
     subprocess.run([*command, tmp_path / "whole"], check=True, capture_output=True)
     rng = random.Random(3)
     for _ in range(4):
