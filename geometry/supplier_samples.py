@@ -45,12 +45,13 @@ def samples_of(edges: Sequence[Edge], step: float | None = None) -> Samples:
     """
     if step is None:
         step = sum(edge.length for edge in edges) / MOST_SAMPLES
+    least = LEAST_ON_ARC if len(edges) < MOST_SAMPLES else 1  # so many tell themselves
     ends = np.array([p for edge in edges for p in (edge.start, edge.end)])
     parts, between = [ends], [np.zeros(ends.size, dtype=bool)]
     for edge in edges:
         count = int(np.ceil(edge.length / step))
         if not edge.is_line:
-            count = max(count, LEAST_ON_ARC)
+            count = max(count, least)
         if count > 1:
             inner = points_on(edge, np.arange(1, count) / count)
             parts.append(inner)
