@@ -16,6 +16,7 @@ from pathlib import Path
 import pytest
 import study_stand_ins
 from click.testing import CliRunner
+from dask_processes import cluster
 
 from lamwright.app import evaluation
 from lamwright.app.cli import main
@@ -224,6 +225,20 @@ def test_killed_in_the_middle_of_real_fields_the_table_is_the_same(tmp_path):
     assert len(table) == 6
     assert all(one[1] == "done" for one in table.values())
     assert (table, files) == _table(tmp_path / "undisturbed")
+
+
+@pytest.mark.slow
+def test_a_cluster_gives_the_table_of_this_machine(tmp_path):
+    """Six rotors computed in truth by a scheduler's two workers, and by processes here."""
+    study = _study(tmp_path, 2)
+    study.write_text(study.read_text().replace("most = 4.1", "most = 3.4"))
+    with cluster(tmp_path, 2) as made:
+        far = ("--scheduler-file", str(made.file))
+        code, said, told = _ended(study, tmp_path / "far", *far, code=REAL)
+    assert (code, _faults(told)) == (0, [])
+    assert "\n6 designs computed in " in said
+    assert _ended(study, tmp_path / "here", "--workers", "2", code=REAL)[0] == 0
+    assert _table(tmp_path / "far") == _table(tmp_path / "here")
 
 
 @pytest.mark.slow
