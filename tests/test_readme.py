@@ -1,4 +1,4 @@
-"""README says what is: its Python runs, its tables list the keys, its two commands can be found."""
+"""README says what is: its Python runs, guides list keys and commands, no link leads nowhere."""
 
 import re
 import subprocess
@@ -36,6 +36,7 @@ from lamwright.geometry.design_tolerance import KeyTolerance, ToleranceDesign
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
+KEYS = (ROOT / "designs" / "README.md").read_text(encoding="utf-8")
 NUMBER = re.compile(r"-?\d+\.\d+")
 
 
@@ -92,7 +93,7 @@ def test_the_python_lines_print_what_is_printed_there():
 )
 def test_each_key_of_a_design_has_its_row(header: str, model: type[BaseModel]):
     """Every key in its order, with its default where it has one."""
-    table = README[README.index(f"| {header}") :].split("\n\n", 1)[0]
+    table = KEYS[KEYS.index(f"| {header}") :].split("\n\n", 1)[0]
     rows = [row.split("|")[1:3] for row in table.splitlines()[2:]]
     fields = {key: field for key, field in model.model_fields.items() if "barrier" not in key}
     assert [key.strip() for key, _ in rows] == [f"`{key}`" for key in fields]
@@ -104,6 +105,22 @@ def test_each_key_of_a_design_has_its_row(header: str, model: type[BaseModel]):
 def test_each_table_of_a_design_and_key_of_a_card_is_named():
     """What is left: the tables themselves, and the keys of the cards in their paragraphs."""
     for key in MachineDesign.model_fields:
-        assert f"`{key}`" in README or f"`[{key}]`" in README
+        assert f"`{key}`" in KEYS or f"`[{key}]`" in KEYS
     for key in (*SteelCard.model_fields, *MagnetCard.model_fields):
-        assert f"`{key}`" in README
+        assert f"`{key}`" in KEYS
+
+
+def test_every_command_is_listed():
+    """The table has all commands of the program and no other."""
+    from lamwright.app.cli import main
+
+    listed = re.findall(r"^\| `lamwright ([a-z]+)[ `]", README, re.MULTILINE)
+    assert sorted(listed) == sorted(main.commands)
+
+
+@pytest.mark.parametrize("guide", sorted(ROOT.glob("[!.]*/**/*.md")) + sorted(ROOT.glob("*.md")))
+def test_links_of_guides_lead_somewhere(guide):
+    """Files and pictures that a guide names by a link are there."""
+    text = guide.read_text(encoding="utf-8")
+    for target in re.findall(r"\]\(([^)#]+)(?:#[^)]*)?\)", text):
+        assert target.startswith("http") or (guide.parent / target).exists(), target
