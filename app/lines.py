@@ -1,16 +1,16 @@
 """Figures as lines of plain text; what `outline` shows, which must be quick."""
 
-import math
 from typing import TYPE_CHECKING
 
 import click
 
-from lamwright.postprocess.quantities import Figure, figures_of
+from lamwright.postprocess.quantities import figures_of
+from lamwright.postprocess.quantities import number as number
+from lamwright.postprocess.quantities import valued as valued
 
 if TYPE_CHECKING:
     from .lamination import OutlineReport
 
-DIGITS = 4  # significant, on the terminal only
 MM = 1e3  # mm per m
 
 
@@ -32,17 +32,3 @@ def print_outline(report: "OutlineReport") -> None:
     for label, value in rows:
         click.echo(f"  {label:<{left}}  {value}")
     click.echo(f"punch outline: {report.dxf}")
-
-
-def number(value: float) -> str:
-    """A number with four significant digits, without exponent where it can be read so."""
-    if value == 0.0 or not 1e-4 <= abs(value) < 1e7:
-        return f"{value:.{DIGITS}g}"
-    decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
-    return f"{value:.{max(0, decimals)}f}"
-
-
-def valued(figure: Figure) -> str:
-    """A figure with its unit, marked where it is an estimate."""
-    about = "~ " if figure.is_estimate else ""
-    return f"{about}{number(figure.value)} {figure.unit}".rstrip()

@@ -6,11 +6,12 @@ from rich.text import Text
 
 from lamwright.geometry.supplier_outline import angle_text
 from lamwright.postprocess.differences import FigureDifference
+from lamwright.postprocess.glance import GLANCE, MAGNET_GLANCE
 from lamwright.postprocess.supplier_tables import holds
 
 from .lines import number
 from .outline_run import OutlineVerdict
-from .screen import GLANCE, MAGNET_GLANCE, print_verdict
+from .screen import print_verdict
 
 MM, UM = 1e3, 1e6  # per m
 MOST_RIBS = 12  # those most off; all are in outline_ribs.csv

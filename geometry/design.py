@@ -264,6 +264,12 @@ class MachineDesign(_Table):
         """Pole pairs of the rotor."""
         return self.rotor.poles // 2
 
+    def _repr_html_(self) -> str:
+        """The drawing of a pole and the main figures, as a notebook shows them."""
+        from .notebook import design_html  # it draws, so it needs all that is above
+
+        return design_html(self)
+
 
 class Sourced(_Table):
     """A value of a steel card and where it is from."""

@@ -48,6 +48,12 @@ class Machine:
         steel = (self.rotor_steel, self.stator_steel)
         return steel if self.magnet is None else (*steel, self.magnet)
 
+    def _repr_html_(self) -> str:
+        """The design as a notebook shows it, and its cards by name."""
+        from .notebook import machine_html
+
+        return machine_html(self)
+
 
 def read_design(path: Path) -> MachineDesign:
     """The validated design in the TOML file `path`.

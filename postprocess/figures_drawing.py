@@ -16,9 +16,10 @@ import numpy as np
 from lamwright.geometry.curves import Edge, Path
 from lamwright.geometry.drawn_rotor import RotorDrawing
 from lamwright.geometry.drawn_stator import StatorDrawing
+from lamwright.geometry.palette import FILLS
 from lamwright.geometry.section import Material
 
-from .figures_style import FILLS, MM, Style, inked, sampled
+from .figures_style import MM, Style, inked, sampled
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes

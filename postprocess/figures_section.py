@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from lamwright.geometry.palette import DRAWN_AS, FILLS, MATERIAL_NAMES
 from lamwright.geometry.section import (
     CrossSection,
     Material,
@@ -28,9 +29,6 @@ from .figures_labels import RULER_FOOT, Callout, FloatArray, Side, draw_ruler, p
 from .figures_magnets import draw_arrows, magnet_callouts
 from .figures_sector import break_off, break_radius, draw_axes_lines, pole_silhouette
 from .figures_style import (
-    DRAWN_AS,
-    FILLS,
-    MATERIAL_NAMES,
     MM,
     ComplexArray,
     Style,

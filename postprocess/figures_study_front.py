@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
+from lamwright.geometry.palette import FILLS
 from lamwright.geometry.section import CrossSection
 from lamwright.solver.types import FloatArray
 
 from .figures_study_marks import FAILED, frame, limit_text
-from .figures_style import FILLS, MM, Style, inked, region_ink, upright, visible_edges
+from .figures_style import MM, Style, inked, region_ink, upright, visible_edges
 from .studied import IntArray, Studied, StudyAxis, front_of
 
 if TYPE_CHECKING:

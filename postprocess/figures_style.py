@@ -1,8 +1,8 @@
 """Style and palette of every figure, and the way from exact outlines to what is inked.
 
-Figures are drawn in mm, upright: the middle of the drawn pole points up. The palette was chosen
-by lightness first, so that materials and colour scales still tell apart when printed in grey;
-the test of figures holds it to that.
+Figures are drawn in mm, upright: the middle of the drawn pole points up. Colour scales were chosen
+by lightness first, as the palette was, so that they still tell apart when printed in grey; the test
+of figures holds them to that.
 """
 
 from __future__ import annotations
@@ -17,7 +17,8 @@ import numpy as np
 import numpy.typing as npt
 
 from lamwright.geometry.curves import Edge, Path
-from lamwright.geometry.section import CrossSection, Material, Region
+from lamwright.geometry.palette import ACCENT, INK, PAPER, QUIET
+from lamwright.geometry.section import CrossSection, Region
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -38,41 +39,17 @@ WIDEST_BEZIER = math.pi / 6  # rad, one cubic per 30 degrees: 4e-7 of the radius
 class Style:
     """Sizes in points (1/72 inch) and colours of a figure's lines and letters."""
 
-    ink: str = "#17212b"  # outlines, labels, numbers
-    quiet: str = "#5a6672"  # axes, leaders, second rank text
-    accent: str = "#b5341f"  # the one thing to look at: peaks, limits
+    ink: str = INK
+    quiet: str = QUIET
+    accent: str = ACCENT
     second: str = "#2f6f8f"  # a second curve
-    paper: str = "#ffffff"
+    paper: str = PAPER
     text: float = 8.0
     small: float = 7.0
     title: float = 10.0
     outline: float = 0.7
     hair: float = 0.45
     dpi: float = 200.0  # pixels per inch of a PNG and of the rasterised part of an SVG
-
-
-# Lightness (CIE L*) falls from air 100 through stator 88, rotor 75, copper 58 and shaft 43 to
-# magnets 30.
-FILLS: dict[Material, str] = {
-    "air": "#ffffff",
-    "stator_steel": "#d6dee4",
-    "rotor_steel": "#aebbc6",
-    "copper": "#cb7a43",
-    "shaft": "#5f6873",
-    "magnet": "#1f4e44",
-}
-# Solid metal in a bore or hole never lies beside another but the shaft, from which a line parts it.
-DRAWN_AS: dict[Material, Material] = {"key": "shaft", "rivet": "shaft"}
-MATERIAL_NAMES: dict[Material, str] = {
-    "rotor_steel": "rotor steel",
-    "stator_steel": "stator steel",
-    "copper": "copper",
-    "air": "air",
-    "shaft": "shaft",
-    "magnet": "magnet",
-    "key": "key",
-    "rivet": "rivet",
-}
 
 
 def flux_colours() -> LinearSegmentedColormap:

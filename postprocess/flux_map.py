@@ -34,6 +34,12 @@ class FluxMap:
     torque: FloatArray  # (n_d, n_q, n_pos), N m, Maxwell stress
     coenergy: FloatArray  # (n_d, n_q, n_pos), J
 
+    def _repr_html_(self) -> str:
+        """Pictures and main figures, as a notebook shows them."""
+        from .notebook import flux_map_html  # it needs all that is here
+
+        return flux_map_html(self)
+
 
 def mean_linkages(flux_map: FluxMap) -> tuple[FloatArray, FloatArray]:
     """Means of psi_d and psi_q over the positions, V s, (n_d, n_q) each."""

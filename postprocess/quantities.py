@@ -14,6 +14,7 @@ if TYPE_CHECKING:
 
 
 RPM = 30.0 / math.pi  # 1/min per rad/s
+DIGITS = 4  # significant, where people read; files hold all of them
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,6 +63,20 @@ def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
         # Counts stay whole numbers.
         scaled = value if shown.scale == 1.0 else value * shown.scale
         yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate)
+
+
+def number(value: float) -> str:
+    """A number with four significant digits, without exponent where it can be read so."""
+    if value == 0.0 or not 1e-4 <= abs(value) < 1e7:
+        return f"{value:.{DIGITS}g}"
+    decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
+    return f"{value:.{max(0, decimals)}f}"
+
+
+def valued(figure: Figure) -> str:
+    """A figure with its unit, marked where it is an estimate."""
+    about = "~ " if figure.is_estimate else ""
+    return f"{about}{number(figure.value)} {figure.unit}".rstrip()
 
 
 def scaled_by_key(group: "DataclassInstance", values: Mapping[str, float]) -> dict[str, float]:

@@ -182,6 +182,12 @@ class Verdict:
         """Whether every limit of the design file holds."""
         return all(outcome.holds for outcome in self.outcomes)
 
+    def _repr_html_(self) -> str:
+        """Limits and figures with their error bars, as a notebook shows them."""
+        from .notebook import verdict_html  # it needs all that is here
+
+        return verdict_html(self)
+
 
 def all_figures(verdict: Verdict) -> dict[str, Figure]:
     """Every figure of the verdict by its key, in order."""

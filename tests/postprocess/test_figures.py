@@ -13,13 +13,13 @@ from matplotlib.text import Text
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import Edge
 from lamwright.geometry.design_file import read_machine
+from lamwright.geometry.palette import FILLS
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess import figures
 from lamwright.postprocess.figures import FIGURES, Pictured, write_figures
 from lamwright.postprocess.figures_field import PolePart, contour_triangles, lattice, pole_parts
 from lamwright.postprocess.figures_stress import close_ups, mpa, stress_limit
 from lamwright.postprocess.figures_style import (
-    FILLS,
     Style,
     flux_colours,
     inked,
