@@ -55,6 +55,7 @@ def test_another_version_on_a_worker_ends_the_study():
         carry_out(misbehaving, "a", LIMIT_S, "9.9")
 
 
+@pytest.mark.slow
 def test_no_scheduler_is_one_line(monkeypatch, tmp_path):
     """Nobody listens at port 1; a file that is not there; an address that is none."""
     monkeypatch.setattr(study_cluster, "CONNECT_S", 0.5)

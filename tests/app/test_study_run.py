@@ -116,15 +116,13 @@ def test_the_pool_holds_few_tasks_at_a_time(ledger):
 
 
 def test_rows_of_workers_that_die_are_those_of_workers_that_live(ledger):
-    """Real processes, three of ten designs die at their first try: each is done at its second."""
-    wishes = [
-        f"die-once {ledger.path.parent / str(k)}" if k in (2, 3, 7) else "" for k in range(10)
-    ]
+    """Real processes; one of ten designs kills its own at the first try and is done at the second."""
+    wishes = [f"die-once {ledger.path.parent / str(k)}" if k == 3 else "" for k in range(10)]
     tasks = stand_in_tasks(wishes)
     with LocalPool(evaluated, 2, 60.0) as pool:
         rows = carried_out(tasks, ledger, pool)
     assert [row.outcome for row in rows] == ["done"] * 10
-    assert {k for k, row in enumerate(rows) if row.attempts == 2} >= {2, 3, 7}
+    assert {k for k, row in enumerate(rows) if row.attempts == 2} >= {3}
     alone = [evaluated(task) for task in tasks]
     assert [row.figures for row in rows] == [one.figures for one in alone]
     ledger.check()
