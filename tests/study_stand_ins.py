@@ -1,47 +1,14 @@
 """Stand-ins for the evaluation of a design, importable by name in worker processes."""
 
 import hashlib
-import os
 import random
-import signal
-import sys
 import time
 from collections.abc import Sequence
-from pathlib import Path
+
+from study_deeds import misbehaving
 
 from lamwright.app.evaluation import Evaluation
 from lamwright.app.study_task import Task
-
-
-def doubled(number: int) -> int:
-    return 2 * number
-
-
-def slept(seconds: float) -> int:
-    """Sleep; gives the process it happened in."""
-    time.sleep(seconds)
-    return os.getpid()
-
-
-def misbehaving(wish: str) -> str:
-    """Do what is asked, such as die or hang."""
-    what, _, more = wish.partition(" ")
-    if what == "die":
-        os.kill(os.getpid(), signal.SIGKILL)
-    if what == "exit":
-        os._exit(int(more))
-    if what == "die-once" and not Path(more).exists():  # at the first call with this file
-        Path(more).touch()
-        os.kill(os.getpid(), signal.SIGKILL)
-    if what == "hang":
-        time.sleep(1000.0)
-    if what == "sleep":
-        time.sleep(float(more))
-    if what == "raise":
-        raise ValueError(more)
-    if what == "leave":
-        sys.exit(3)
-    return f"{wish} done"
 
 
 def evaluated(task: Task) -> Evaluation:

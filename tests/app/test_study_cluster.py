@@ -10,8 +10,9 @@ from pathlib import Path
 
 import pytest
 from dask_processes import PATIENCE_S, cluster
+from study_deeds import misbehaving, slept
 from study_rows import plain_study
-from study_stand_ins import evaluated, misbehaving, slept, stand_in_tasks
+from study_stand_ins import evaluated, stand_in_tasks
 
 from lamwright.app import study_cluster, study_cluster_worker
 from lamwright.app.ledger import Ledger

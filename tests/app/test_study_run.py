@@ -116,7 +116,7 @@ def test_the_pool_holds_few_tasks_at_a_time(ledger):
 
 
 def test_rows_of_workers_that_die_are_those_of_workers_that_live(ledger):
-    """Real processes; one of ten designs kills its own at the first try and is done at the second."""
+    """Real processes; one of ten designs kills its own at the first try, then is done."""
     wishes = [f"die-once {ledger.path.parent / str(k)}" if k == 3 else "" for k in range(10)]
     tasks = stand_in_tasks(wishes)
     with LocalPool(evaluated, 2, 60.0) as pool:

@@ -8,8 +8,8 @@ import time
 from pathlib import Path
 
 import pytest
-import study_stand_ins
-from study_stand_ins import misbehaving, slept
+import study_deeds
+from study_deeds import misbehaving, slept
 
 from lamwright.app.study_pool import OverTime, PoolLost, TaskLost
 from lamwright.app.study_workers import LocalPool
@@ -98,7 +98,7 @@ def test_killed_in_the_middle_of_tasks_it_leaves_nobody():
     """Kill -9 of the coordinator alone: workers that would have worked on end by themselves."""
     code = (
         "import sys, time\n"
-        "from study_stand_ins import slept\n"
+        "from study_deeds import slept\n"
         "from lamwright.app.study_workers import LocalPool\n"
         "pool = LocalPool(slept, 2)\n"
         "first = [pool.submit(0.5) for _ in range(2)]\n"
@@ -107,7 +107,7 @@ def test_killed_in_the_middle_of_tasks_it_leaves_nobody():
         "print(*pids, flush=True)\n"
         "time.sleep(1000.0)\n"
     )
-    paths = [*sys.path, str(Path(study_stand_ins.__file__).parent)]
+    paths = [*sys.path, str(Path(study_deeds.__file__).parent)]
     environment = {**os.environ, "PYTHONPATH": os.pathsep.join(path for path in paths if path)}
     with subprocess.Popen(
         [sys.executable, "-c", code], stdout=subprocess.PIPE, text=True, env=environment
