@@ -4,6 +4,7 @@ Everything that comes in is data: a name is looked up in the folder, a text is r
 nothing of it is ever put into markup, a command or a path outside.
 """
 
+import json
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -116,6 +117,25 @@ def save(page: Page, body: Mapping[str, object]) -> Record:
     sha256 = maybe_text_of(body, "sha256")
     done = page.folder.save(path, text, sha256, replace=flag_of(body, "replace"))
     return {"path": path, "sha256": done}
+
+
+def json_object(data: bytes | str) -> dict[str, object]:
+    """The JSON object in a body or frame.
+
+    Raises:
+        BadRequest: it is none.
+    """
+    try:
+        body = json.loads(data, parse_constant=_no_number)
+    except (ValueError, RecursionError):
+        raise BadRequest("not JSON; accepted an object") from None
+    if not isinstance(body, dict):
+        raise BadRequest("not a JSON object")
+    return body
+
+
+def _no_number(name: str) -> float:
+    raise ValueError(name)
 
 
 def text_of(body: Mapping[str, object], name: str) -> str:

@@ -188,6 +188,30 @@ class Folder:
                 "a --folder that holds it"
             )
 
+    def mirrored(self, name: str, text: str, target: Path) -> Path:
+        """A copy of a text and of the files that it names, in their places to each other.
+
+        Args:
+            name: of the design.
+            text: of the design, which can be used.
+            target: folder, made here, that stands for this one.
+
+        Returns:
+            The copy's file.
+        """
+        path, data = self.design_file(name), tomllib.loads(text)
+        for table, key in NAMING:
+            file = data.get(table, {}).get(key)
+            if isinstance(file, str):
+                place = Path(os.path.normpath(path.parent / file))
+                copy = target / place.relative_to(self.root)
+                copy.parent.mkdir(parents=True, exist_ok=True)
+                copy.write_bytes(place.read_bytes())
+        copy = target / path.relative_to(self.root)
+        copy.parent.mkdir(parents=True, exist_ok=True)
+        copy.write_text(text, encoding="utf-8")
+        return copy
+
     def listed(self) -> list[Listed]:
         """Designs and studies in the folder, by name."""
         found = []

@@ -1,9 +1,9 @@
 """The page's server: addresses, answers, and its life from the first to the last request."""
 
 import contextlib
-import json
 import socket
 from collections.abc import Awaitable, Callable, Mapping
+from functools import partial
 from importlib.resources import files
 from pathlib import Path
 from typing import Any
@@ -13,25 +13,33 @@ from starlette.concurrency import run_in_threadpool
 from starlette.exceptions import HTTPException
 from starlette.requests import Request
 from starlette.responses import FileResponse, JSONResponse, Response
-from starlette.routing import Mount, Route
+from starlette.routing import Mount, Route, WebSocketRoute
 from starlette.staticfiles import StaticFiles
 
 from lamwright.geometry.errors import LamwrightError
 
 from . import page_api
-from .page_api import BadRequest, Page
+from .page_api import BadRequest, Page, json_object, text_of
+from .page_coarse import FIELD_FILE
 from .page_drawing import Record
 from .page_folder import ChangedOnDisk, Outside
 from .page_guard import Door, Guard
+from .page_jobs import Jobs
+from .page_result import shown_files
+from .page_socket import Sockets, effort_of
+from .page_tasks import Tasks, ledger_record, pick, release, sweep
 
 STATIC = Path(str(files("lamwright.app"))) / "static"
+OCTETS = "application/octet-stream"
+INLINE = (".png", ".svg", ".csv", ".json", ".bin")  # what the page shows or reads by itself
 STATUS = ((ChangedOnDisk, 409), (Outside, 403), (LamwrightError, 422), (OSError, 422))
 
 Handler = Callable[[Request], Awaitable[Response]]
 
 
-def page_app(page: Page, door: Door) -> Guard:
+def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks) -> Guard:
     """The whole server, to be run by uvicorn or a test's client."""
+    sockets = Sockets(jobs, door)
     routes = [
         Route("/", _index),
         Route("/api/page", _getting(lambda query: page_api.page_record(page))),
@@ -46,6 +54,12 @@ def page_app(page: Page, door: Door) -> Guard:
                 ("save", page_api.save),
             )
         ),
+        Route("/api/jobs", _asking(jobs), methods=["POST"]),
+        Route("/api/jobs/{job}", _job(jobs)),
+        Route("/api/jobs/{job}/field", _job_file(jobs, FIELD_FILE)),
+        Route("/api/jobs/{job}/file/{name}", _job_file(jobs)),
+        WebSocketRoute("/api/work", sockets.serve),
+        *_task_routes(page, jobs, tasks),
         Mount("/static", StaticFiles(directory=STATIC, follow_symlink=False)),
     ]
     handlers: dict[Any, Any] = {HTTPException: _http_fault, **{kind: _fault for kind, _ in STATUS}}
@@ -74,23 +88,69 @@ def _posting(page: Page, call: Callable[[Page, Mapping[str, object]], Record]) -
     return answer
 
 
-def json_object(data: bytes | str) -> dict[str, object]:
-    """The JSON object in a body or frame.
+def _asking(jobs: Jobs) -> Handler:
+    """A verdict asked for without a socket, as by a script."""
 
-    Raises:
-        BadRequest: it is none.
-    """
-    try:
-        body = json.loads(data, parse_constant=_no_number)
-    except (ValueError, RecursionError):
-        raise BadRequest("not JSON; accepted an object") from None
-    if not isinstance(body, dict):
-        raise BadRequest("not a JSON object")
-    return body
+    async def answer(request: Request) -> Response:
+        body = json_object(await request.body())
+        path, text = text_of(body, "path"), text_of(body, "text")
+        job = await run_in_threadpool(jobs.want, effort_of(body), path, text, "without socket")
+        return JSONResponse(job.record)
+
+    return answer
 
 
-def _no_number(name: str) -> float:
-    raise ValueError(name)
+def _job(jobs: Jobs) -> Handler:
+    def record(job_id: str) -> Record:
+        job = jobs.state(job_id)
+        return {**job.record, "result": jobs.result(job_id) if job.state == "done" else None}
+
+    async def answer(request: Request) -> Response:
+        return JSONResponse(await run_in_threadpool(record, request.path_params["job"]))
+
+    return answer
+
+
+def _job_file(jobs: Jobs, fixed: str | None = None) -> Handler:
+    """A file of a finished job; those of a full one by name."""
+
+    async def answer(request: Request) -> Response:
+        job_id: str = request.path_params["job"]
+        name = fixed or request.path_params["name"]
+        place = jobs.place(job_id)
+        if jobs.state(job_id).state != "done":
+            raise HTTPException(404, "this job has no result")
+        if not (place / name).is_file() if fixed else name not in shown_files(place):
+            raise HTTPException(404, "no such file")
+        path = place / name
+        if path.suffix not in INLINE:  # a report must not run as this page
+            return FileResponse(path, media_type=OCTETS, filename=name)
+        return FileResponse(path)
+
+    return answer
+
+
+def _task_routes(page: Page, jobs: Jobs, tasks: Tasks) -> list[Route]:
+    async def released(request: Request) -> Response:
+        body = json_object(await request.body())
+        return JSONResponse(await run_in_threadpool(release, page, jobs, tasks, body))
+
+    async def stopped(request: Request) -> Response:
+        await run_in_threadpool(tasks.stop_one, request.path_params["task"])
+        return JSONResponse({"stopped": True})
+
+    async def one(request: Request) -> Response:
+        return JSONResponse(tasks.one(request.path_params["task"]))
+
+    return [
+        Route("/api/release", released, methods=["POST"]),
+        Route("/api/sweep", _posting(page, partial(sweep, tasks)), methods=["POST"]),
+        Route("/api/tasks", _getting(lambda query: {"tasks": tasks.all()})),
+        Route("/api/tasks/{task}", one),
+        Route("/api/tasks/{task}/stop", stopped, methods=["POST"]),
+        Route("/api/ledger", _getting(lambda query: ledger_record(page, query))),
+        Route("/api/pick", _posting(page, pick), methods=["POST"]),
+    ]
 
 
 async def _fault(request: Request, error: Exception) -> Response:
@@ -131,11 +191,17 @@ def listening(port: int) -> socket.socket:
 
 
 def serve(page: Page, door: Door, own: socket.socket) -> None:
-    """Serve until the interrupt key."""
+    """Serve until the interrupt key; what is under way then ends."""
+    with Jobs(page.folder) as jobs, Tasks() as tasks:
+        jobs.warm()
+        _run(page_app(page, door, jobs, tasks), own)
+
+
+def _run(app: Guard, own: socket.socket) -> None:
     import uvicorn
 
     config = uvicorn.Config(
-        page_app(page, door),
+        app,
         http="h11",
         ws="websockets-sansio",
         ws_max_size=1 << 20,

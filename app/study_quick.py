@@ -7,7 +7,7 @@ designs/studies/README.md. Nothing is kept between designs.
 """
 
 import math
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.curves import area, perimeter
@@ -15,21 +15,21 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.errors import GeometryError
 from lamwright.geometry.section import CrossSection, rotor_cell, rotor_iron
 from lamwright.geometry.skew import skew_offsets
-from lamwright.postprocess.masses import mass_figures
+from lamwright.postprocess.masses import MassFigures, mass_figures
 from lamwright.postprocess.operating import search_positions
 from lamwright.postprocess.quantities import figures_of
-from lamwright.postprocess.ribs import rib_report
+from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.postprocess.skew import mean_solution, step_point
 from lamwright.postprocess.summary import magnetic_figures, stress_figures, terminal_figures
 from lamwright.postprocess.torque import TorqueWaveform, torque_waveform, waveform_positions
-from lamwright.postprocess.verdict import RPM, StressFigures
+from lamwright.postprocess.verdict import RPM, MagneticFigures, StressFigures, TerminalFigures
 from lamwright.solver.chains import OperatingPoint, fanned
 from lamwright.solver.field import MagneticModel, solve_point
 from lamwright.solver.mesh import mesh_lamination, mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import NewtonSettings
 from lamwright.solver.rotor_stress import StressSettings, sharp_corners, stress_on
-from lamwright.solver.types import FieldSolution
+from lamwright.solver.types import FieldSolution, StressSolution
 
 from .angle import AngleFound, most_torque
 from .point import model_of
@@ -52,6 +52,30 @@ LEAST_POSITIONS = 9
 STRESS = StressSettings(mesh=MeshSettings(scale=2.0))
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class QuickField:
+    """The field of a quick evaluation, and what it was solved with."""
+
+    model: MagneticModel
+    found: AngleFound
+    waveform: TorqueWaveform
+    magnet_psi_q: float  # at no load, V s
+    last: FieldSolution  # one of the waveform's, of the first step of the rotor
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class QuickWork:
+    """All that a quick evaluation has computed."""
+
+    field: QuickField
+    solution: StressSolution
+    ribs: RibReport
+    magnetic: MagneticFigures
+    terminal: TerminalFigures
+    stress: StressFigures
+    masses: MassFigures
+
+
 def quick_figures_of(machine: Machine, section: CrossSection) -> dict[str, float]:
     """Figures by their keys, in their units.
 
@@ -61,19 +85,29 @@ def quick_figures_of(machine: Machine, section: CrossSection) -> dict[str, float
         NotConverged: an iteration did not end.
         LamwrightError: the rotor makes no torque.
     """
-    waveform, magnet_psi_q = _field(machine, section)
-    magnetic = magnetic_figures(waveform, magnet_psi_q)
-    groups = (
-        magnetic,
-        terminal_figures(machine.design, magnetic),
-        _stress(machine, section),
-        mass_figures(machine, section),
-    )
+    work = quick_work(machine, section)
+    groups = (work.magnetic, work.terminal, work.stress, work.masses)
     found = {one.key: float(one.value) for group in groups for one in figures_of(group)}
     contours = lamination_contours(section)
     found["lamination_area_mm2"] = 1e6 * sum(area(one.path) for one in contours)
     found["lamination_perimeter_mm"] = 1e3 * sum(perimeter(one.path) for one in contours)
     return {key: value for key, value in found.items() if key not in NOT_QUICK}
+
+
+def quick_work(machine: Machine, section: CrossSection) -> QuickWork:
+    """The computation behind the figures; raises what `quick_figures_of` does."""
+    field = quick_field(machine, section)
+    magnetic = magnetic_figures(field.waveform, field.magnet_psi_q)
+    solution, ribs = quick_stress(machine, section)
+    return QuickWork(
+        field=field,
+        solution=solution,
+        ribs=ribs,
+        magnetic=magnetic,
+        terminal=terminal_figures(machine.design, magnetic),
+        stress=stress_figures(ribs),
+        masses=mass_figures(machine, section),
+    )
 
 
 def positions_of(pole_pairs: int, slots: int) -> int:
@@ -82,8 +116,8 @@ def positions_of(pole_pairs: int, slots: int) -> int:
     return least * max(1, math.ceil(LEAST_POSITIONS / least))
 
 
-def _field(machine: Machine, section: CrossSection) -> tuple[TorqueWaveform, float]:
-    """The waveform at the angle of most torque, and psi_q at no load in V s."""
+def quick_field(machine: Machine, section: CrossSection) -> QuickField:
+    """The waveform at the angle of most torque."""
     design = machine.design
     model = model_of(machine, section, mesh_section(section, FIELD_MESH))
     model = replace(model, settings=replace(model.settings, newton=NEWTON))
@@ -101,7 +135,8 @@ def _field(machine: Machine, section: CrossSection) -> tuple[TorqueWaveform, flo
     bare = 0.0
     if machine.magnet is not None:
         bare = solve_point(model, 0.0, 0.0, places[0]).psi_q
-    return torque_waveform(fields, pole_pairs), bare
+    waveform = torque_waveform(fields, pole_pairs)
+    return QuickField(model, found, waveform, bare, by_step[0][-1])
 
 
 def _chained(
@@ -120,8 +155,8 @@ def _chained(
     return [at[k] for k in range(len(points))]
 
 
-def _stress(machine: Machine, section: CrossSection) -> StressFigures:
-    """Figures of the lamination at overspeed, from the mesh that `assess` begins with."""
+def quick_stress(machine: Machine, section: CrossSection) -> tuple[StressSolution, RibReport]:
+    """The lamination at overspeed, on the mesh that `assess` begins with."""
     cell = rotor_cell(section)
     faults = tuple(fault for iron in rotor_iron(cell) for fault in sharp_corners(iron))
     if faults:
@@ -131,4 +166,4 @@ def _stress(machine: Machine, section: CrossSection) -> StressFigures:
     mesh = mesh_lamination(section, STRESS.mesh)
     solution = stress_on(section, mesh, machine.rotor_steel, speed, STRESS)
     strength = 1e6 * machine.rotor_steel.yield_strength_mpa.value
-    return stress_figures(rib_report(solution, section, strength))
+    return solution, rib_report(solution, section, strength)

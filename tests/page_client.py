@@ -7,7 +7,9 @@ from starlette.testclient import TestClient
 
 from lamwright.app.page_api import Page, opened_page
 from lamwright.app.page_guard import Door
+from lamwright.app.page_jobs import Jobs
 from lamwright.app.page_server import page_app
+from lamwright.app.page_tasks import Tasks
 
 DESIGNS = Path(__file__).parent.parent / "designs"
 DEMO = "demo_24s4p_arc.toml"
@@ -23,6 +25,7 @@ def demo_folder(folder: Path) -> Page:
     return opened_page(folder / DEMO, None)
 
 
-def client_of(page: Page) -> TestClient:
-    """A client with token and origin."""
-    return TestClient(page_app(page, DOOR), base_url=ORIGIN, headers=HEADERS)
+def client_of(page: Page, jobs: Jobs | None = None, tasks: Tasks | None = None) -> TestClient:
+    """A client with token and origin; who asks for jobs or tasks gives and ends them."""
+    app = page_app(page, DOOR, jobs or Jobs(page.folder), tasks or Tasks())
+    return TestClient(app, base_url=ORIGIN, headers=HEADERS)
