@@ -1,0 +1,166 @@
+// Design files: which one is open, saving, going back, releasing, and the dialogs that go with it.
+
+import { byId, el, set, setText } from "./dom.js";
+import { ask } from "./dialogs.js";
+import { isOpen } from "./tasks.js";
+import { giveToken } from "./token.js";
+
+export class Files {
+  #design;
+  #tasks;
+  #line;
+  #tabs;
+  #say;
+  #choice = byId("design");
+
+  constructor(design, tasks, line, tabs, say) {
+    this.#design = design;
+    this.#tasks = tasks;
+    this.#line = line;
+    this.#tabs = tabs;
+    this.#say = say;
+    this.#choice.addEventListener("change", () => this.#open(this.#choice.value));
+    tasks.on("changed", () => this.#releases());
+    tasks.on("ended", (task) => task.kind === "release" && say(`release ${task.state}`));
+  }
+
+  async list({ designs, start }) {
+    this.#choice.replaceChildren(...designs.map(({ path, name }) => option(path, name)));
+    const last = sessionStorage.getItem("lamwright-open");
+    const path = [last, start, designs[0]?.path].find((one) => one && (one === start || designs.some((each) => each.path === one)));
+    if (path) await this.#open(path);
+    else this.#line.set("fault", "No design file in this folder: begin one by lamwright start, then reload this page.");
+  }
+
+  opened() {
+    const { path } = this.#design;
+    if (![...this.#choice.options].some((one) => one.value === path)) this.#choice.append(option(path, ""));
+    this.#choice.value = path;
+    sessionStorage.setItem("lamwright-open", path);
+    this.#line.clear("fault");
+    this.show();
+  }
+
+  // Saved, or a draft, or one that began from another file than there is now.
+  show() {
+    const { isChanged, isStale, sha256, path } = this.#design;
+    const state = byId("file-state");
+    setText(state, isChanged ? (sha256 ? "draft, not saved" : "new, not saved") : "saved");
+    set(state, { "data-changed": String(isChanged) });
+    byId("save").disabled = !isChanged;
+    byId("discard").disabled = !isChanged || !sha256;
+    document.title = `${isChanged ? "\u2022 " : ""}${path ?? ""} \u2013 Lamwright`;
+    if (isStale) {
+      this.#line.set("stale", "The file has changed on the disk since this draft began.", [
+        { text: "Back to the file", call: () => this.discard() },
+        { text: "Save over it", call: () => this.#save(path, true) },
+        { text: "Save as \u2026", call: () => this.saveAs() }]);
+    } else {
+      this.#line.clear("stale");
+    }
+  }
+
+  async save() {
+    const { path, isChanged, sha256 } = this.#design;
+    if (!isChanged) return;
+    if (sha256) await this.#save(path, false);
+    else await this.saveAs();
+  }
+
+  async saveAs() {
+    const { path, sha256 } = this.#design;
+    const answer = await ask("Save under a name", {
+      fields: [{ name: "path", label: "File, in the page's folder", value: sha256 ? path.replace(/(-\d+)?\.toml$/, "-2.toml") : path }],
+      buttons: [{ value: "save", text: "Save" }],
+    });
+    if (answer) await this.#save(answer.path.endsWith(".toml") ? answer.path : `${answer.path}.toml`, false);
+  }
+
+  async #save(path, isReplacing) {
+    try {
+      await this.#design.save(path, isReplacing);
+      this.#line.clear("fault");
+      this.#say(`saved as ${path}`);
+    } catch (error) {
+      if (error.status !== 409) return this.#fault(error);
+      const answer = await ask("Another file is there", {
+        lines: [error.message], buttons: [{ value: "as", text: "Save as \u2026", isMain: true }, { value: "replace", text: "Replace it" }],
+      });
+      if (answer?.button === "replace") await this.#save(path, true);
+      if (answer?.button === "as") await this.saveAs();
+    }
+  }
+
+  async discard() {
+    if (!this.#design.isChanged || !this.#design.sha256) return;
+    try {
+      await this.#design.discard();
+      this.#say("back to the file; undo brings the draft again");
+    } catch (error) {
+      this.#fault(error);
+    }
+  }
+
+  async release() {
+    const { path, isChanged } = this.#design;
+    if (isChanged) {
+      const answer = await ask("Release needs a saved design", { lines: [`${path} has changes that are not saved.`], buttons: [{ value: "save", text: "Save it" }] });
+      if (!answer) return;
+      await this.save();
+      if (this.#design.isChanged) return;
+    }
+    const answer = await ask("Release for manufacture", {
+      lines: ["Computes the full verdict and writes drawings, outlines and solids of the design into a folder. Rotors can burst: have a competent person check it before anything is built."],
+      fields: [{ name: "out", label: "Folder for it", value: this.#design.path.replace(/\.toml$/, "-release") },
+        { name: "despite", label: "even if limits are missed", type: "checkbox" }],
+      buttons: [{ value: "release", text: "Release" }],
+    });
+    if (!answer) return;
+    try {
+      await this.#tasks.begin("release", { path: this.#design.path, out: answer.out, despite_limits: answer.despite });
+      this.#tabs.choose("release");
+    } catch (error) {
+      this.#fault(error);
+    }
+  }
+
+  // A design of a study: it becomes a new file when it is saved.
+  async take(picked, what) {
+    if (this.#design.isUnsent) return;
+    await this.#design.begin(picked.path, picked.text, what);
+  }
+
+  askForAddress(open) {
+    this.#line.set("strange", "The server was started anew, with another address. Open the address that it printed, or paste it here.", [{ text: "Paste the address", call: async () => {
+      const answer = await ask("The address that the server printed", { fields: [{ name: "address", label: "http://127.0.0.1:\u2026/#token=\u2026" }], buttons: [{ value: "go", text: "Connect" }] });
+      if (answer && giveToken(answer.address)) open();
+    } }]);
+  }
+
+  async #open(path) {
+    try {
+      await this.#design.open(path);
+    } catch (error) {
+      this.#choice.value = this.#design.path;
+      this.#fault(error);
+    }
+  }
+
+  #releases() {
+    const own = this.#tasks.all.filter((task) => task.kind === "release");
+    byId("tab-release").hidden = !own.length;
+    byId("releases").replaceChildren(...own.map((task) => el("li", { class: task.state },
+      el("p", {}, el("strong", {}, task.folder ?? ""), ` ${task.state}${task.phase ? `: ${task.phase}` : ""}`),
+      isOpen(task) ? el("p", {}, el("progress", { max: 1, value: task.share ?? 0, "aria-label": "Release" }), el("button", { type: "button", on: { click: () => this.#tasks.stop(task.task) } }, "Stop")) : null,
+      task.error ? el("p", { class: "missed" }, task.error) : null,
+      (task.lines ?? []).length ? el("pre", {}, task.lines.join("\n")) : null)));
+  }
+
+  #fault(error) {
+    if (error.status) this.#line.set("fault", error.message, [{ text: "Close", call: () => this.#line.clear("fault") }]);
+  }
+}
+
+function option(path, name) {
+  return el("option", { value: path }, name ? `${name} \u00b7 ${path}` : path);
+}
