@@ -15,6 +15,8 @@ from .study_layout import layout_fault
 from .study_points import counted
 from .study_tables import GoalTable, LimitTable, StudyTables, VaryTable
 
+ROUNDING = 1e-9  # of a range: 3.3 - 3.2 is a little less than 0.1
+
 Faults = Iterator[tuple[KeyPath, str]]  # where, and the line's text
 
 
@@ -92,7 +94,7 @@ def _step_faults(k: int, vary: VaryTable, kind: KeyKind) -> Faults:
     here, told = ("vary", k), f"vary[{k + 1}]"
     assert vary.least is not None
     assert vary.most is not None
-    if vary.step is not None and vary.step > vary.most - vary.least:
+    if vary.step is not None and vary.step > (vary.most - vary.least) * (1.0 + ROUNDING):
         room = vary.most - vary.least
         yield (*here, "step"), f"{told}.step = {vary.step:g}: too large; accepted up to {room:g}"
     if vary.step is not None and kind.whole and vary.step != round(vary.step):

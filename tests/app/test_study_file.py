@@ -146,6 +146,12 @@ def test_one_clear_line_for_a_broken_study(written: Written, text: str, told: st
     assert "\n" not in said
 
 
+def test_a_step_as_wide_as_its_range_is_taken(written: Written) -> None:
+    """3.3 - 3.2 is a little less than 0.1 to the machine, not to a designer."""
+    path = written(vary("rotor.barrier[1].depth_mm", "least = 3.2\nmost = 3.3\nstep = 0.1"))
+    assert read_study(path).keys[0].values == (3.2, 3.3)
+
+
 def test_a_broken_base_says_so_in_its_own_words(written: Written, tmp_path: Path) -> None:
     """The base's faults are told as `assess` tells them."""
     base = (DESIGNS / "demo_24s4p_arc.toml").read_text().replace("gap_mm = 0.4", "gap_mm = -0.4")
