@@ -3,12 +3,13 @@
 import argparse
 import os
 
-from lamwright.app.threads import SINGLE_THREADED
+from lamwright.app.threads import SINGLE_THREADED, hold_threads
 
 
 def main() -> None:
     """Run the benchmarks named, or all."""
     os.environ.update(SINGLE_THREADED)  # before numpy is imported
+    hold_threads()
     from .registry import BENCHMARKS
     from .timing import ALOUD, SILENT
     from .workload import FULL, TINY
