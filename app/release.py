@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 from lamwright.geometry.design_file import Machine, design_hash, read_machine
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.whole_file import write_text
-from lamwright.postprocess.files import VERDICT_FILE, json_text, prepared_folder, staged
+from lamwright.postprocess.files import VERDICT_FILE, json_text, prepared_folder
 
 from .lamination import section_of
 from .progress import Progress, silent
@@ -24,7 +24,6 @@ from .release_manifest import (
     MANIFEST_FILE,
     Promise,
     Record,
-    file_sha256,
     manifest_text,
     package_number,
     promise_of,
@@ -34,6 +33,7 @@ from .release_parts import parts_of
 from .release_record import Order, nesting_record, release_record
 from .release_solids import write_solids
 from .release_source import Copies, copies_of
+from .release_stage import earlier_files, hashes, staged_package
 from .version import version
 
 if TYPE_CHECKING:
@@ -82,7 +82,7 @@ def release(
     parts = parts_of(machine, section, wishes.order.punch)
     nesting_record(parts, wishes.order.strip)  # a strip too narrow is refused before any work
     folder = prepared_folder(out)
-    earlier = _earlier_files(folder)
+    earlier = earlier_files(folder)
     promise = _promise(machine, wishes, progress)
     if not promise.passes and not wishes.despite_limits:
         raise LamwrightError(
@@ -90,7 +90,7 @@ def release(
             "released; change the design, or --despite-limits marks the package NOT PASSED"
         )
     progress("files", SHARE_OF_VERDICT)
-    with staged(folder, MANIFEST_FILE) as stage:
+    with staged_package(folder, earlier) as stage:
         _copy(machine, copies, stage)
         write_text(stage / VERDICT_FILE, json_text(promise.record))
         write_dxfs(machine, parts, promise, wishes.order.sheet, stage)
@@ -106,19 +106,7 @@ def release(
         }
         text = manifest_text(record)
         write_text(stage / MANIFEST_FILE, text)
-        names = {*hashes(stage)}
-    for name in earlier - names:
-        (folder / name).unlink(missing_ok=True)
     return ReleaseReport(folder, record, package_number(text), promise.passes)
-
-
-def hashes(folder: Path) -> dict[str, str]:
-    """SHA-256 of every file below a folder, by its name there."""
-    return {
-        file.relative_to(folder).as_posix(): file_sha256(file)
-        for file in sorted(folder.rglob("*"))
-        if file.is_file()
-    }
 
 
 def _copy(machine: Machine, copies: Copies, stage: Path) -> None:
@@ -127,30 +115,6 @@ def _copy(machine: Machine, copies: Copies, stage: Path) -> None:
     again = read_machine(stage / copies.design)
     if _hash(again) != _hash(machine):
         raise LamwrightError(f"{machine.path}: was changed meanwhile; start again")
-
-
-def _earlier_files(folder: Path) -> set[str]:
-    """Files of an earlier package in the folder, which the new one replaces.
-
-    Raises:
-        LamwrightError: the folder holds anything else.
-    """
-    present = {
-        file.relative_to(folder).as_posix() for file in folder.rglob("*") if not file.is_dir()
-    }
-    ours = {MANIFEST_FILE}
-    if MANIFEST_FILE in present:
-        files = read_record(folder / MANIFEST_FILE, "an empty folder, or an earlier package").get(
-            "files"
-        )
-        ours |= set(files) if isinstance(files, dict) else set()
-    strange = sorted(present - ours)
-    if strange:
-        raise LamwrightError(
-            f"--out {folder}: holds {strange[0]}, which is of no package; accepted an empty "
-            "folder, or that of an earlier package"
-        )
-    return present
 
 
 def _promise(machine: Machine, wishes: ReleaseWishes, progress: Progress) -> Promise:

@@ -6,11 +6,9 @@ verdict's? Are DXF and solids those of the design, whatever the manifest says of
 the design is solved again, so that a promise changed everywhere along shows too.
 """
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
-from tempfile import TemporaryDirectory
-from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import Machine, read_machine
 from lamwright.geometry.errors import LamwrightError
@@ -36,10 +34,8 @@ from .release_manifest import (
 from .release_parts import Part, parts_of
 from .release_record import Order, differences, release_record
 from .release_solids import kernel, solid_faults
+from .verify_solved import solved_changes
 from .version import version
-
-if TYPE_CHECKING:
-    from lamwright.solver.tolerance import ToleranceName
 
 A_PACKAGE = "the folder of a release"
 OF_FILES = ("files", "seal", "design_file")  # of the manifest, not made from the design
@@ -100,7 +96,8 @@ def verify(folder: Path, solve: bool = False, progress: Progress = silent) -> Ve
         else:
             notes += [*other, f"solids made by {manifest.get('kernel')}, compared by {kernel()}"]
         if solve:
-            changes += _solved_changes(made, progress)
+            solved = solved_changes(made.machine, made.promise, progress)
+            (changes if manifest.get("version") == version() else notes).extend(solved)
             notes += drawing_notes(*drawn, folder)
     text = path.read_text(encoding="utf-8")
     files = manifest.get("files")
@@ -197,33 +194,3 @@ def _order(manifest: Record) -> Order:
     except (TypeError, KeyError, ValueError) as error:
         fault = str(error) if isinstance(error, LamwrightError) else "not those of a release"
         raise LamwrightError(f"{MANIFEST_FILE}: punch, drawing or nesting: {fault}") from None
-
-
-def _solved_changes(made: _Made, progress: Progress) -> Iterator[str]:
-    """Promised figures that the design, solved again, does not have."""
-    from .run import assess
-
-    stated = made.promise.record
-    tolerance: ToleranceName = stated.get("tolerance", "normal")  # type: ignore[assignment]
-    if tolerance not in ("coarse", "normal", "fine"):
-        yield f"{VERDICT_FILE}: tolerance = {tolerance!r}: not one of assess"
-        return
-
-    def told(phase: str, share: float) -> None:
-        progress(phase, 0.5 + 0.5 * share)
-
-    with TemporaryDirectory() as folder:
-        assess(made.machine.path, folder, told, tolerance, pictures=False)
-        record = read_record(Path(folder) / VERDICT_FILE, "a verdict")
-    again = promise_of(record, made.machine.design.limits).record
-    for line in differences(_shortened(stated), _shortened(again)):
-        yield f"{VERDICT_FILE}: {line}, when solved again"
-
-
-def _shortened(value: object) -> object:
-    """Numbers to six digits: other processors differ in the last ones."""
-    if isinstance(value, float):
-        return float(f"{value:.6g}")
-    if isinstance(value, Mapping):
-        return {key: _shortened(item) for key, item in value.items()}
-    return [_shortened(item) for item in value] if isinstance(value, list) else value

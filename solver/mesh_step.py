@@ -190,15 +190,13 @@ def _without_pcurves(text: str) -> str:
     end = text.index("ENDSEC;", start)
     bodies = {int(number): body for number, body in _STATEMENT.findall(text[start:])}
     space = {n: int(m[1]) for n, body in bodies.items() if (m := _DOUBLED.match(body))}
-    uses = {
-        n: [space.get(k, k) for k in map(int, _REFERENCE.findall(body))]
-        for n, body in bodies.items()
-    }
-    used = {int(k) for body in bodies.values() for k in _REFERENCE.findall(body)}
+    uses = {n: [int(k) for k in _REFERENCE.findall(body)] for n, body in bodies.items()}
+    used = {k for named in uses.values() for k in named}
     todo = [n for n in bodies if n not in used]
     kept = set(todo)
     while todo:
-        for k in uses[todo.pop()]:
+        for one in uses[todo.pop()]:
+            k = space.get(one, one)
             if k not in kept:
                 kept.add(k)
                 todo.append(k)

@@ -24,9 +24,10 @@ from released import (
 )
 
 from lamwright.app.cli import main
-from lamwright.app.release import ReleaseWishes, hashes, release
+from lamwright.app.release import ReleaseWishes, release
 from lamwright.app.release_manifest import FIGURE_OF_LIMIT
 from lamwright.app.release_record import Order
+from lamwright.app.release_stage import hashes
 from lamwright.app.verify import verify
 from lamwright.geometry.curves import area
 from lamwright.geometry.design_file import design_hash, read_machine
@@ -170,6 +171,11 @@ BAD = [
     (("--strip-width", "nan"), "--strip-width nan: out of range; accepted 1 to 3000"),
     (("--date", "2026-02-30"), "--date 2026-02-30: not a date; accepted as 2026-01-31"),
     (("--tool-offset", "5"), "tool_offset_mm = 5: outside its range; accepted -1 to 1"),
+    (
+        ("--grinding-allowance", "0.9", "--strip-width", "300"),
+        "grinding_allowance_mm: the rotor's blank of 82.1 mm does not come out of the stator's "
+        "bore of 82; accepted a smaller allowance, or no --strip-width",
+    ),
     (("--magnet-clearance", "0.1"), "magnet_clearance_mm = 0.1: "),
     (("--remark", "a\nb"), "--remark: no line of text"),
 ]
