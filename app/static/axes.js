@@ -3,7 +3,7 @@
 import { svg } from "./dom.js";
 import { plain, ticks } from "./format.js";
 
-export const PAD = { left: 52, right: 12, top: 12, bottom: 36 };
+export const PAD = { left: 52, right: 12, top: 24, bottom: 36 };
 
 // x, y: {low, high, name, ticks?}. Returns {group, atX, atY, valueX}.
 export function axes(width, height, x, y) {

@@ -22,9 +22,8 @@ export class Field {
   #isAsked = false;
   #onShown;
 
-  // `onShown(isShown)`: whether a field lies under the outline now.
+  // `onShown(kind)`: which field lies under the outline now, or null.
   constructor({ canvas, bar, hint, stage }, viewport, onShown) {
-    Object.assign(this, { kind: "outline" });
     this.#canvas = canvas;
     this.#viewport = viewport;
     this.#bar = bar;
@@ -84,7 +83,7 @@ export class Field {
     for (const one of ["low", "high", "name", "greatest"]) {
       if (!picture) setText(this.#bar.querySelector(`.${one}`), "");
     }
-    this.#onShown(picture !== null);
+    this.#onShown(picture && this.kind);
   }
 
   #label(picture) {

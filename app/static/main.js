@@ -37,7 +37,10 @@ const picture = byId("picture");
 const viewport = new Viewport(stage, (event) => handles.take(event));
 const drawing = new Drawing(picture, viewport, byId("scale"));
 const field = new Field({ canvas: byId("field"), bar: byId("field-bar"), hint: byId("field-hint"), stage }, viewport,
-  (isShown) => stage.classList.toggle("has-field", isShown));
+  (shown) => {
+    stage.classList.toggle("has-field", shown !== null);
+    stage.dataset.field = shown ?? "";
+  });
 const tabs = new Tabs();
 const files = new Files(design, tasks, line, tabs, say);
 const verdict = new VerdictPanel({ design, work, kept, field, say });

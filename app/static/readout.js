@@ -57,6 +57,6 @@ export class Readout {
     const near = isLow ? least : most;
     const isAt = share < 0.01 || share > 0.99;
     set(this.#why, { "data-at": String(isAt) });
-    setText(this.#why, `${isAt ? "limit: " : isLow ? "at the least: " : "at the most: "}${near.why}`);
+    setText(this.#why, `${isAt ? "limit: " : isLow ? "at the least: " : "at the most: "}${near.why.replace(`${this.#handle.key}: `, "")}`);
   }
 }

@@ -78,7 +78,6 @@ export class Studies {
 
   #watch(folder) {
     if (folder !== this.#folder) {
-      Object.assign(this.#rows, {});
       this.#rows.clear();
       this.#chosen = null;
       this.#study = null;

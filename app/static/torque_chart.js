@@ -4,7 +4,7 @@ import { axes, PAD, roomy } from "./axes.js";
 import { set, svg } from "./dom.js";
 import { angleTicks, written } from "./format.js";
 
-const HEIGHT = 190;
+const HEIGHT = 200;
 
 export class TorqueChart {
   #host;
@@ -35,7 +35,7 @@ export class TorqueChart {
     const line = ({ angle_deg: x, torque_nm: y }) => x.map((value, k) => `${k ? "L" : "M"}${frame.atX(value).toFixed(1)} ${frame.atY(y[k]).toFixed(1)}`).join("");
     const mean = torques.reduce((sum, value) => sum + value, 0) / torques.length;
     const told = `torque: mean ${written(mean, 3)} N m, ${written(Math.min(...torques), 3)} to ${written(Math.max(...torques), 3)} N m`;
-    const readout = svg("text", { class: "chart-value", x: width - PAD.right, y: PAD.top + 10, "text-anchor": "end" }, told);
+    const readout = svg("text", { class: "chart-value", x: width - PAD.right, y: 13, "text-anchor": "end" }, told);
     const cross = svg("path", { class: "cross" });
     const picture = svg("svg", { class: "chart", viewBox: `0 0 ${width} ${HEIGHT}`, width, height: HEIGHT, role: "img", "aria-label": told },
       frame.group,
