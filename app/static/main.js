@@ -62,17 +62,31 @@ const handles = new Handles(picture, viewport, {
     readout.show(handle, value, limits(handle.key));
     design.preview({ [handle.key]: value }, began);
   },
-  commit: (handle, value) => design.commit({ [handle.key]: value }, `barrier ${handle.barrier}, ${handle.kind} ${plain(value)}`),
+  commit,
   revert: () => design.revert(),
 });
-const readout = new Readout((handle, value) => design.commit({ [handle.key]: value }, `barrier ${handle.barrier}, ${handle.kind} ${plain(value)}`));
+const readout = new Readout(commit);
 const studies = new Studies(tasks, async (picked, what) => {
   await files.take(picked, what);
   tabs.choose("verdict");
 }, say);
 
+tabs.on("chosen", (name) => name === "study" && studies.seen());
+
 function limits(key) {
   return rangesText === design.text ? ranges.get(key) : undefined;
+}
+
+async function commit(handle, value) {
+  const own = limits(handle.key);
+  await design.commit({ [handle.key]: value }, `barrier ${handle.barrier}, ${handle.kind} ${plain(value)}`);
+  if (!own) return;
+  // How far a key may move depends on the others alone: its own limits outlive its change.
+  if (rangesText !== design.text) ranges.clear();
+  rangesText = design.text;
+  ranges.set(handle.key, own);
+  handles.limitsCame();
+  if (chosen?.key === handle.key && !handles.isMoving) readout.show(chosen, chosen.value, own);
 }
 
 async function askLimits(key) {

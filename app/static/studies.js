@@ -32,14 +32,22 @@ export class Studies {
     this.#choice.addEventListener("change", () => this.#watch(this.#folderOf(this.#choice.value)));
     for (const id of ["scatter-x", "scatter-y"]) byId(id).addEventListener("change", () => this.#draw());
     tasks.on("changed", () => this.#showTask());
-    tasks.on("ended", (task) => task.kind === "sweep" && say(`sweep ${task.state}`));
+    tasks.on("ended", (task) => {
+      if (task.kind !== "sweep") return;
+      say(`sweep ${task.state}`);
+      if (task.folder === this.#folder) this.#read();
+    });
   }
 
   list(studies) {
     this.#choice.replaceChildren(...studies.map(({ path, name }) => el("option", { value: path }, name ? `${name} (${path})` : path)));
     byId("studies-none").hidden = studies.length > 0;
     byId("studies-some").hidden = studies.length === 0;
-    if (studies.length) this.#watch(this.#folderOf(this.#choice.value));
+  }
+
+  // Its ledger is looked for when the tab is first seen.
+  seen() {
+    if (this.#choice.value) this.#watch(this.#folderOf(this.#choice.value));
   }
 
   async begin() {
@@ -93,13 +101,13 @@ export class Studies {
     const folder = this.#folder;
     let isMore = false;
     try {
-      const answer = await get("/api/ledger", { folder, since: this.#rows.size });
+      const answer = await get("/api/ledger", { folder, since: Math.max(0, ...this.#rows.keys()) });
       if (folder !== this.#folder) return;
-      if (!this.#study) this.#begun(answer.study);
+      if (!this.#study && answer.study) this.#begun(answer.study);
       for (const row of answer.rows) this.#rows.set(row.number, row);
       isMore = answer.rows.length > 0 && this.#rows.size < answer.total;
       if (answer.rows.length) this.#draw();
-      setText(byId("ledger-line"), answer.total ? `${this.#rows.size} of ${answer.total} designs` : "");
+      setText(byId("ledger-line"), answer.total ? `${this.#rows.size}${answer.planned > this.#rows.size ? ` of ${answer.planned}` : ""} designs` : "not swept yet");
     } catch (error) {
       if (!(error instanceof Gone) && folder === this.#folder && !this.#own()) {
         setText(byId("ledger-line"), "not swept yet");
@@ -122,9 +130,9 @@ export class Studies {
   // Goals first, then what has limits, then the rest that rows hold.
   #figures() {
     const named = new Map();
-    const add = (key, sense, unit = "") => named.has(key) || named.set(key, { key, label: labelOf(key), unit: unit || unitIn(key), sense });
-    for (const goal of this.#study?.goals ?? []) add(goal.figure ?? goal.key, goal.sense, goal.unit);
-    for (const limit of this.#study?.limits ?? []) add(limit.figure ?? limit.key, limit.sense === "least" ? "most" : "least", limit.unit);
+    const add = (key, sense) => named.has(key) || named.set(key, { key, label: labelOf(key), unit: unitIn(key), sense });
+    for (const goal of this.#study?.goals ?? []) add(goal.figure, goal.sense);
+    for (const limit of this.#study?.limits ?? []) add(limit.figure, limit.least === null ? "least" : "most");
     for (const row of this.#rows.values()) {
       for (const key of Object.keys(row.figures ?? {})) add(key, "most");
     }
@@ -169,14 +177,36 @@ export class Studies {
     this.#say(`design ${number} chosen`);
   }
 
+  // Beside the study's base, where the names of its cards hold.
+  async #pathOf(picked) {
+    if (picked.path) return picked.path;
+    const study = this.#choice.value;
+    return joined(study, await baseOf(study)).replace(/\.toml$/, `-row${picked.row}.toml`);
+  }
+
   async #pick() {
     try {
       const picked = await post("/api/pick", { folder: this.#folder, row: this.#chosen });
-      await this.#load(picked, `design ${this.#chosen} of ${this.#folder}`);
+      await this.#load({ path: await this.#pathOf(picked), text: picked.text }, `design ${this.#chosen} of ${this.#folder}`);
     } catch (error) {
       setText(byId("row-line"), error.message);
     }
   }
+}
+
+async function baseOf(study) {
+  const { text } = await get("/api/design", { path: study });
+  return /^base\s*=\s*"([^"]+)"/m.exec(text)?.[1] ?? "design.toml";
+}
+
+// A name as the folder counts it: the study's folder and a way from there, its ".." resolved.
+function joined(study, way) {
+  const parts = [];
+  for (const part of [...study.split("/").slice(0, -1), ...way.split("/")]) {
+    if (part === "..") parts.pop();
+    else if (part !== ".") parts.push(part);
+  }
+  return parts.join("/");
 }
 
 function labelOf(key) {

@@ -1,11 +1,12 @@
 // Tabs beside the drawing: arrow keys go between them, as the pattern of tab lists has it.
 
-import { byId, set } from "./dom.js";
+import { byId, set, Teller } from "./dom.js";
 
-export class Tabs {
+export class Tabs extends Teller {
   #tabs = [...document.querySelectorAll("[role=tab]")];
 
   constructor() {
+    super();
     for (const tab of this.#tabs) {
       tab.addEventListener("click", () => this.#select(tab));
       tab.addEventListener("keydown", (event) => {
@@ -31,5 +32,6 @@ export class Tabs {
       set(tab, { "aria-selected": String(tab === chosen), tabindex: tab === chosen ? 0 : -1 });
       byId(tab.getAttribute("aria-controls")).hidden = tab !== chosen;
     }
+    this.tell("chosen", chosen.id.replace("tab-", ""));
   }
 }

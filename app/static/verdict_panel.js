@@ -26,7 +26,7 @@ export class VerdictPanel {
 
   settled() {
     const { design, work } = this.#parts;
-    if (design.outline?.ok && !work.known(design.outline.hash)) work.want("coarse", design.path, design.text);
+    if (design.outline?.ok && !work.fieldJob(design.outline.hash)) work.want("coarse", design.path, design.text);
     this.show();
   }
 
@@ -51,7 +51,8 @@ export class VerdictPanel {
     this.#chart.show(known?.result.torque, other?.result.torque);
     byId("torque").classList.toggle("is-old", isOld);
     this.#files(own);
-    field.want(known?.job ?? null, isOld ? "of an earlier outline" : "");
+    const fieldJob = known && work.fieldJob(known.result.design_hash);
+    field.want(fieldJob, isOld ? "of an earlier outline" : "");
     if (own && own.job !== this.#said) {
       this.#said = own.job;
       say(`${own.effort} verdict: ${summary(own)}`);

@@ -1,6 +1,6 @@
 // Verdicts: what is wanted, what is under way, what is known. Results stay by the design's hash, so
 // that undo shows the earlier verdict at once; whatever is missing is asked for again after the
-// socket was lost, and a full job goes on being watched after a reload.
+// socket was lost, and the last full job is watched again after a reload.
 
 import { Teller } from "./dom.js";
 
@@ -24,7 +24,6 @@ export class Work extends Teller {
     const before = this.#jobs[effort];
     if (before && before.text === text && before.path === path && isUnderWay(before)) return;
     this.#jobs[effort] = { ticket: ++this.#ticket, path, text, job: null, state: "asked", phase: "", share: 0 };
-    if (effort === "full") this.#remember(null);
     this.#ask(effort);
     this.tell("changed", effort);
   }
@@ -53,6 +52,11 @@ export class Work extends Teller {
     return this.#results.get(`full ${hash}`) ?? this.#results.get(`coarse ${hash}`) ?? null;
   }
 
+  // The job whose field is of a design: fields come with coarse verdicts.
+  fieldJob(hash) {
+    return this.#results.get(`coarse ${hash}`)?.job ?? null;
+  }
+
   #ask(effort) {
     const { path, text, ticket } = this.#jobs[effort];
     this.#link.send({ want: effort, path, text, ticket });
@@ -79,14 +83,13 @@ export class Work extends Teller {
     } else if (message.kind === "failed") {
       Object.assign(own, { state: "failed", error: message.error });
     } else if (message.kind === "superseded") {
-      if (own.state !== "done") own.state = "superseded";
+      if (own.state !== "done") Object.assign(own, { state: effort === "full" ? "stopped" : "superseded" });
     } else {
       const { job, state, phase, share, error } = message;
       Object.assign(own, { job: job ?? own.job, state, phase: phase ?? "", share: share ?? 0, error });
       if (state === "none") this.#lost(effort, own);
-      if (effort === "full" && isUnderWay(own)) this.#remember(own.job);
     }
-    if (effort === "full" && !isUnderWay(own)) this.#remember(null);
+    if (effort === "full") this.#remember(["failed", "stopped", "refused", "none"].includes(own.state) ? null : own.job);
     this.tell("changed", effort);
   }
 
