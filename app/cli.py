@@ -21,6 +21,8 @@ from .cli_release import release, verify
 from .cli_search import search
 from .cli_start import start
 from .cli_study import sweep
+from .examples import add_examples
+from .guide import pointer
 from .threads import hold_threads
 
 FAULT = 70  # "internal software error" of the usual list of exit codes
@@ -35,7 +37,7 @@ class _Front(click.Group):
         try:
             return super().invoke(ctx)
         except LamwrightError as error:
-            self._end(ctx, str(error), error.exit_code)
+            self._end(ctx, "\n".join((str(error), *pointer(error))), error.exit_code)
         except BrokenPipeError:
             raise  # the reader of the output has gone: click ends quietly
         except OSError as error:
@@ -72,7 +74,11 @@ _PICTURES = click.option(
 )
 
 
-@click.group(cls=_Front, context_settings={"help_option_names": ["-h", "--help"]})
+@click.group(
+    cls=_Front,
+    context_settings={"help_option_names": ["-h", "--help"]},
+    epilog="Each command's --help ends with an example. Completion by the shell: app/README.md.",
+)
 @click.version_option(package_name="lamwright", message="%(prog)s %(version)s")
 def main() -> None:
     """Design synchronous reluctance rotors that can be built."""
@@ -341,3 +347,4 @@ main.add_command(release)
 main.add_command(verify)
 main.add_command(search)
 main.add_command(page)
+add_examples(main)

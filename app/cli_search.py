@@ -58,9 +58,7 @@ def search(
     """Look for the best designs of STUDY: those that no other betters in every goal.
 
     Goals, limits and keys stand in the study file. The same command goes on where a search was
-    stopped, however it was, and finds the same as if it had not been. As in
-
-    lamwright search designs/studies/torque_against_ripple.toml --out out/front --polish 6
+    stopped, however it was, and finds the same as if it had not been.
     """
     from .search_run import search as run
     from .search_screen import print_course, print_search

@@ -57,9 +57,7 @@ PICTURES = click.option(
 def sweep(study: Path, out: Path, is_retrying: bool, pictures: bool, **options: object) -> None:
     """Compute every design of STUDY, each once.
 
-    The same command goes on where a run was stopped, however it was. As in
-
-    lamwright sweep designs/studies/barriers_by_end_angle.toml --out out/barriers
+    The same command goes on where a run was stopped, however it was.
     """
     from .study_screen import watched
     from .sweep import sweep as run

@@ -1,8 +1,8 @@
 """What the physics does: a cross-section in, magnetic field and stress field out.
 
 In: `CrossSection`, winding table, steel cards. On the way: `SectorMesh`, one pole meshed once,
-and `MagneticModel`. Out: `FieldSolution` at any current and rotor angle, `StressSolution` at any
-speed. Names load when they are first used.
+and `MagneticModel`. Out: `FieldSolution` at any current and rotor angle (`solve_point`,
+`solve_chain`), `StressSolution` at any speed (`solve_stress`). Names load when they are first used.
 """
 
 from importlib import import_module
@@ -19,7 +19,7 @@ if TYPE_CHECKING:
     from .mesh import mesh_regions as mesh_regions
     from .mesh import mesh_section as mesh_section
     from .rotor_stress import StressSettings as StressSettings
-    from .rotor_stress import rotor_stress as rotor_stress
+    from .rotor_stress import rotor_stress as _rotor_stress
     from .steel import SteelLaw as SteelLaw
     from .steel import reluctivity_law as reluctivity_law
     from .types import FieldSolution as FieldSolution
@@ -27,24 +27,28 @@ if TYPE_CHECKING:
     from .types import SectorMesh as SectorMesh
     from .types import StressSolution as StressSolution
 
+    solve_stress = _rotor_stress
+
+# Module and name there by the name here, which is none of a module's: Python would put the module
+# in its place once that is loaded.
 _HOME_OF = {
-    "FieldSettings": "field",
-    "FieldSolution": "types",
-    "MagneticModel": "field",
-    "OperatingPoint": "chains",
-    "PlanarMesh": "types",
-    "SectorMesh": "types",
-    "SteelLaw": "steel",
-    "StressSettings": "rotor_stress",
-    "StressSolution": "types",
-    "magnetic_model": "field",
-    "mesh_lamination": "mesh",
-    "mesh_regions": "mesh",
-    "mesh_section": "mesh",
-    "reluctivity_law": "steel",
-    "rotor_stress": "rotor_stress",
-    "solve_chain": "chains",
-    "solve_point": "field",
+    "FieldSettings": ("field", "FieldSettings"),
+    "FieldSolution": ("types", "FieldSolution"),
+    "MagneticModel": ("field", "MagneticModel"),
+    "OperatingPoint": ("chains", "OperatingPoint"),
+    "PlanarMesh": ("types", "PlanarMesh"),
+    "SectorMesh": ("types", "SectorMesh"),
+    "SteelLaw": ("steel", "SteelLaw"),
+    "StressSettings": ("rotor_stress", "StressSettings"),
+    "StressSolution": ("types", "StressSolution"),
+    "magnetic_model": ("field", "magnetic_model"),
+    "mesh_lamination": ("mesh", "mesh_lamination"),
+    "mesh_regions": ("mesh", "mesh_regions"),
+    "mesh_section": ("mesh", "mesh_section"),
+    "reluctivity_law": ("steel", "reluctivity_law"),
+    "solve_chain": ("chains", "solve_chain"),
+    "solve_point": ("field", "solve_point"),
+    "solve_stress": ("rotor_stress", "rotor_stress"),
 }
 
 __all__ = sorted(_HOME_OF)
@@ -53,4 +57,5 @@ __all__ = sorted(_HOME_OF)
 def __getattr__(name: str) -> object:
     if name not in _HOME_OF:
         raise AttributeError(f"{__name__} has no {name}")
-    return getattr(import_module(f".{_HOME_OF[name]}", __name__), name)
+    module, own = _HOME_OF[name]
+    return getattr(import_module(f".{module}", __name__), own)

@@ -43,8 +43,8 @@ def test_main_sizes_give_a_design_that_can_be_drawn(tmp_path):
 
 
 def test_readme_shows_what_is_printed(tmp_path, monkeypatch):
-    """README's own line, run in an empty folder, prints README's own lines."""
-    readme = (ROOT / "README.md").read_text(encoding="utf-8")
+    """The guide's own line, run in an empty folder, prints the guide's own lines."""
+    readme = (ROOT / "app" / "README.md").read_text(encoding="utf-8")
     block = re.search(r"```\n> lamwright start (.*)\n((?:.*\n)*?)```", readme)
     assert block
     monkeypatch.chdir(tmp_path)

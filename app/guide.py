@@ -1,0 +1,53 @@
+"""Where a guide tells more about a fault: one line after the faults of bad input."""
+
+import re
+
+from lamwright.geometry.errors import DesignError, LamwrightError
+
+_DESIGN, _STUDY = "designs/README.md", "designs/studies/README.md"
+_BARRIERS = "geometry/README.md"
+# By the first words of a key, longer ones before shorter; a test holds each to a heading.
+SECTIONS: dict[str, tuple[str, str]] = {
+    "rotor.barrier.magnet": (_DESIGN, "Magnets in barriers"),
+    "rotor.barrier.shape": (_BARRIERS, "What its sides are"),
+    "rotor.barrier.end_shape": (_BARRIERS, "How it ends"),
+    "rotor.barrier": (_DESIGN, "Barriers"),
+    "rotor.alternate_barrier": (_DESIGN, "Barriers"),
+    "rotor.notch": (_DESIGN, "Notches, holes, keyways and rim"),
+    "rotor.hole": (_DESIGN, "Notches, holes, keyways and rim"),
+    "rotor.keyway": (_DESIGN, "Notches, holes, keyways and rim"),
+    "rotor.contour": (_DESIGN, "Notches, holes, keyways and rim"),
+    "rotor.fit": (_DESIGN, "Shaft fit"),
+    "rotor": (_DESIGN, "Rotor"),
+    "stator": (_DESIGN, "Stator"),
+    "winding": (_DESIGN, "Winding"),
+    "steel": (_DESIGN, "Steel and magnets"),
+    "magnet": (_DESIGN, "Steel and magnets"),
+    "duty": (_DESIGN, "Duty"),
+    "losses": (_DESIGN, "Losses and heat"),
+    "hot": (_DESIGN, "Losses and heat"),
+    "tolerance": (_DESIGN, "Tolerances"),
+    "limits": (_DESIGN, "Limits"),
+    "magnetisation": (_DESIGN, "Cards"),
+    "hardening": (_DESIGN, "Cards"),
+    "fatigue": (_DESIGN, "Cards"),
+    "loss": (_DESIGN, "Cards"),
+    "vary": (_STUDY, "Keys that vary"),
+    "limit": (_STUDY, "The study file"),
+    "goal": (_STUDY, "The study file"),
+    "sample": (_STUDY, "The study file"),
+}
+# The key of `demo.toml:14: rotor.gap_mm = -0.4: too small`; the first fault speaks for all.
+_KEY = re.compile(r":\d+: ([a-z_]+(?:\[\d+\])?(?:\.[a-z_]+(?:\[\d+\])?)*)(?: =|:)")
+
+
+def pointer(error: LamwrightError) -> tuple[str, ...]:
+    """The line that names file and section of the guide, none where nothing fits."""
+    found = _KEY.search(str(error)) if isinstance(error, DesignError) else None
+    if found is None:
+        return ()
+    key = re.sub(r"\[\d+\]", "", found[1])
+    for start, (file, section) in SECTIONS.items():
+        if key == start or key.startswith(f"{start}."):
+            return (f'more: {file}, section "{section}"',)
+    return ()
