@@ -130,7 +130,8 @@ def _on_rim(edge: Edge, frame: _Pole) -> Edge:
     points = (edge.start, edge.point(0.5), edge.end)
     if any(abs(abs(p) - frame.rim) > 4.0 * frame.tolerance for p in points):
         return edge
-    is_ccw = (edge.start.conjugate() * edge.end).imag > 0.0
+    # Towards its middle: of two poles an edge may take half a turn, with no side of its chord.
+    is_ccw = (edge.start.conjugate() * points[1]).imag > 0.0
     return arc(edge.start, edge.end, 0j, ccw=is_ccw)
 
 
@@ -164,7 +165,9 @@ def _side(point: Point, frame: _Pole) -> int:
     if abs(point) < WELD_TOL:
         return 0
     for side in (1, -1):
-        if abs((point * cmath.exp(-1j * side * frame.half)).imag) < WELD_TOL:
+        turned = point * cmath.exp(-1j * side * frame.half)
+        # Of two poles, both sides are on one line, and each on its own end of it.
+        if abs(turned.imag) < WELD_TOL and turned.real > 0.0:
             return side
     return 0
 

@@ -3,6 +3,7 @@
 import cmath
 import math
 from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
@@ -95,6 +96,15 @@ def mirrored_edges(edges: Sequence[Edge]) -> list[Edge]:
     return [Edge(e.start.conjugate(), e.end.conjugate(), -e.bulge) for e in edges]
 
 
+@dataclass(frozen=True, slots=True)
+class _Partner:
+    """The edge whose mirror image another one is."""
+
+    number: int
+    image: Edge  # mirrored, and run as the other is
+    is_reversed: bool  # to be run so
+
+
 def made_symmetric(edges: Sequence[Edge], tolerance: float) -> list[Edge] | None:
     """The edges as the mean of themselves and their mirror image in the real axis.
 
@@ -102,20 +112,20 @@ def made_symmetric(edges: Sequence[Edge], tolerance: float) -> list[Edge] | None
         Edges symmetric to the last bit, or None where an edge has no partner within `tolerance` m.
     """
     mirror = mirrored_edges(edges)
-    partners = []
+    partners: list[_Partner] = []
     for edge in edges:
         found = [
-            m
-            for twin in mirror
+            _Partner(number, m, m is not twin)
+            for number, twin in enumerate(mirror)
             for m in (twin, reversed_edge(twin))
             if _are_near(edge, m, tolerance)
         ]
         if not found:
             return None
-        gaps = [abs(m.start - edge.start) for m in found]
-        partners.append(found[gaps.index(min(gaps))])
+        partners.append(min(found, key=lambda one: abs(one.image.start - edge.start)))
     mean: dict[Point, Point] = {}
-    for edge, twin in zip(edges, partners, strict=True):
+    for edge, partner in zip(edges, partners, strict=True):
+        twin = partner.image
         for point, other in ((edge.start, twin.start), (edge.end, twin.end)):
             mean[point] = 0.5 * (point + other)
     # Each pair of points exactly each other's image: the mean of means differs by a bit.
@@ -135,20 +145,19 @@ def _nearest(points: Iterable[Point], to: Point) -> Point:
 
 
 def _rebuilt(
-    edges: Sequence[Edge], partners: Sequence[Edge], exact: dict[Point, Point]
+    edges: Sequence[Edge], partners: Sequence["_Partner"], exact: dict[Point, Point]
 ) -> list[Edge]:
-    made: dict[tuple[Point, Point], float] = {}
+    # By number, not by ends: a chord and its arc share these.
+    bulges: dict[int, float] = {}
     result = []
-    for edge, twin in zip(edges, partners, strict=True):
-        start, end = exact[edge.start], exact[edge.end]
-        bulge = 0.5 * (edge.bulge + twin.bulge)
-        image = (start.conjugate(), end.conjugate())
-        if image in made:
-            bulge = -made[image]
-        elif image[::-1] in made:
-            bulge = made[image[::-1]]
-        made[start, end] = bulge
-        result.append(Edge(start, end, bulge))
+    for number, (edge, partner) in enumerate(zip(edges, partners, strict=True)):
+        known = bulges.get(partner.number)
+        if known is None:
+            bulge = 0.5 * (edge.bulge + partner.image.bulge)
+        else:
+            bulge = known if partner.is_reversed else -known
+        bulges[number] = bulge
+        result.append(Edge(exact[edge.start], exact[edge.end], bulge))
     return result
 
 
