@@ -4,8 +4,8 @@ Frame: shaft axis at 0, q axis along +x. Every pole is cut out by its two d axes
 own mirror image within the tolerance it is made so to the last bit, and points on the d axes of
 neighbouring poles are made to lie on each other.
 Barriers are told by u + iv = ((x + iy) / rim)^p: a barrier is one band of u (from the q axis to
-the rim), its cavities follow each other in v. Full circles and what lies across a d axis are
-holes, no barriers.
+the rim), its cavities follow each other in v. Holes, no barriers, are full circles, what lies
+across a d axis, and what is farther from the rim than it is long: a barrier runs from rib to rib.
 """
 
 import cmath
@@ -24,7 +24,9 @@ from .outline_edges import joined_parts, made_symmetric, turned_edges
 from .section import Rib
 
 WELD_TOL = 1e-7  # m, within one pole: far below a drawing's digits, far above rounding
-OVERLAP = 0.5  # of the narrower band of u: cavities that share more are of one barrier
+# Of the narrower band: cavities of one barrier share more of u and less of v; ribs that lean make
+# them share some of v, up to 0.08 in the gallery.
+OVERLAP = 0.5
 LETTERS = "abcdefghij"
 
 
@@ -235,6 +237,8 @@ def _barriers(air: Sequence[PolePart], frame: _Pole) -> tuple[list[PolePart], li
     holes = [p for p in air if _is_hole(p, frame)]
     cavities = [p for p in air if p not in holes]
     groups = _grouped(cavities, frame)
+    holes += [part for group in groups if _is_off_rim(group, frame) for part in group]
+    groups = [group for group in groups if not _is_off_rim(group, frame)]
     named: list[PolePart] = []
     ribs: list[Rib] = []
     for number, group in enumerate(groups, start=1):
@@ -258,6 +262,13 @@ def _is_hole(part: PolePart, frame: _Pole) -> bool:
     )
 
 
+def _is_off_rim(group: Sequence[PolePart], frame: _Pole) -> bool:
+    """Whether the cavities are farther from the rim than they are long together."""
+    points = [e.point(k / 4) for part in group for e in part.outer.edges for k in range(4)]
+    length = max(abs(p - q) for p in points for q in points)
+    return frame.rim - max(map(abs, points)) > length
+
+
 def _middle(part: PolePart) -> Point:
     total = sum(edge.length for edge in part.outer.edges)
     return sum(edge.length * edge.point(0.5) for edge in part.outer.edges) / total
@@ -267,17 +278,16 @@ def _grouped(cavities: Sequence[PolePart], frame: _Pole) -> list[list[PolePart]]
     """Cavities of each barrier, counter-clockwise; barriers from the rim inward."""
     spans = {id(p): _span(p, frame) for p in cavities}
     left = sorted(cavities, key=lambda p: -sum(spans[id(p)][0]))
+
+    def follow(one: PolePart, other: PolePart) -> bool:
+        (u, v), (other_u, other_v) = spans[id(one)], spans[id(other)]
+        is_like = _shared(u, other_u) > OVERLAP and _shared(v, other_v) < OVERLAP
+        return is_like and _is_along(*_shortest(one, other), frame)
+
     groups: list[list[PolePart]] = []
     for part in left:
-        (low, high), (v_low, v_high) = spans[id(part)]
         for group in groups:
-            bands = [spans[id(p)] for p in group]
-            shared = min(
-                (min(high, b[0][1]) - max(low, b[0][0])) / min(high - low, b[0][1] - b[0][0])
-                for b in bands
-            )
-            apart = all(v_low >= b[1][1] or v_high <= b[1][0] for b in bands)
-            if shared > OVERLAP and apart:
+            if all(follow(part, other) for other in group):
                 group.append(part)
                 break
         else:
@@ -285,6 +295,25 @@ def _grouped(cavities: Sequence[PolePart], frame: _Pole) -> list[list[PolePart]]
     for group in groups:
         group.sort(key=lambda p: spans[id(p)][1][0])
     return groups
+
+
+def _shortest(one: PolePart, other: PolePart) -> tuple[Point, Point]:
+    """Where two cavities are nearest to each other."""
+    pairs = [nearest(a, b) for a in one.outer.edges for b in other.outer.edges]
+    return min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
+
+
+def _is_along(start: Point, end: Point, frame: _Pole) -> bool:
+    """Whether a way runs along v, as across a rib, and not along u, as from barrier to barrier."""
+    # dw = p z^(p - 1) dz; of it the direction counts.
+    step = (end - start) * (0.5 * (start + end) / frame.rim) ** (frame.order - 1)
+    return abs(step.imag) > abs(step.real)
+
+
+def _shared(first: tuple[float, float], second: tuple[float, float]) -> float:
+    """What two bands share, of the narrower one; negative where they lie apart."""
+    common = min(first[1], second[1]) - max(first[0], second[0])
+    return common / min(first[1] - first[0], second[1] - second[0])
 
 
 def _span(part: PolePart, frame: _Pole) -> tuple[tuple[float, float], tuple[float, float]]:
@@ -310,8 +339,7 @@ def _ribs(number: int, group: Sequence[PolePart], frame: _Pole) -> list[Rib]:
             end = frame.rim * point / abs(point)
             ribs.append(Rib(f"tangential_{number}_{word}", "tangential", number, point, end))
     for letter, before, after in zip(LETTERS, group[:-1], group[1:], strict=False):
-        pairs = [nearest(a, b) for a in before.outer.edges for b in after.outer.edges]
-        start, end = min(pairs, key=lambda pair: abs(pair[0] - pair[1]))
+        start, end = _shortest(before, after)
         ribs.append(Rib(f"radial_{number}_{letter}", "radial", number, start, end))
     return ribs
 
