@@ -12,6 +12,7 @@ from lamwright.geometry.outline_places import place_text
 from lamwright.geometry.whole_file import write_text
 from lamwright.postprocess.differences import (
     FigureDifference,
+    Pair,
     difference_rows,
     figure_differences,
 )
@@ -25,31 +26,7 @@ if TYPE_CHECKING:
 
 MOST_CHANGES = 12  # contours named each
 NONE = 1e-9  # m, less is rounding
-ROUNDING = 1e-9  # relative
 MM, UM = 1e3, 1e6  # per m
-
-
-@dataclass(frozen=True, slots=True)
-class Pair:
-    """Two numbers of the same thing; None where one side has none."""
-
-    name: str
-    first: float | None
-    second: float | None
-
-    @property
-    def change(self) -> float | None:
-        """Second less first."""
-        if self.first is None or self.second is None:
-            return None
-        return self.second - self.first
-
-    @property
-    def differs(self) -> bool:
-        """Whether they are not the same, to rounding."""
-        if self.first is None or self.second is None:
-            return self.first is not self.second
-        return abs(self.second - self.first) > ROUNDING * abs(self.first)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -179,7 +156,7 @@ def compare_record(report: CompareReport) -> dict[str, object]:
         "keys": [{"key": key, "a": a, "b": b} for key, a, b in report.keys],
         "geometry": {
             "sizes": [
-                {"figure": p.name, "a": p.first, "b": p.second, "change": p.change}
+                {"figure": p.key, "a": p.first, "b": p.second, "change": p.change}
                 for p in report.sizes
             ],
             "largest_deviation_um": None if largest is None else UM * largest[0],
@@ -187,7 +164,7 @@ def compare_record(report: CompareReport) -> dict[str, object]:
             "has_partner_everywhere": report.gaps is None or not report.gaps.is_beyond,
             "changes": list(report.changes),
             "ribs": [
-                {"rib": p.name, "a_mm": _mm(p.first), "b_mm": _mm(p.second)} for p in report.ribs
+                {"rib": p.key, "a_mm": _mm(p.first), "b_mm": _mm(p.second)} for p in report.ribs
             ],
         },
         "figures": difference_rows(report.figures, ("a", "b")),

@@ -4,7 +4,9 @@ from rich.console import Console
 from rich.markup import escape
 from rich.table import Table
 
-from .compare import MM, UM, CompareReport, Pair
+from lamwright.postprocess.differences import Pair
+
+from .compare import MM, UM, CompareReport
 from .lines import number
 from .outline_screen import cells
 
@@ -47,7 +49,7 @@ def _print_geometry(console: Console, report: CompareReport) -> None:
     if sizes:
         table = _table("geometry", "what", "A", "B", "change")
         for pair in sizes:
-            table.add_row(pair.name.replace("_", " "), *_cells(pair, 1.0))
+            table.add_row(pair.key.replace("_", " "), *_cells(pair, 1.0))
         console.print(table)
     ribs = sorted(
         (pair for pair in report.ribs if pair.differs), key=lambda p: -abs(p.change or 1.0)
@@ -55,7 +57,7 @@ def _print_geometry(console: Console, report: CompareReport) -> None:
     if ribs:
         table = _table("ribs, mm", "rib", "A", "B", "change")
         for pair in ribs[:MOST_RIBS]:
-            table.add_row(pair.name, *_cells(pair, MM))
+            table.add_row(pair.key, *_cells(pair, MM))
         console.print(table)
         if len(ribs) > MOST_RIBS:
             console.print(f"[dim]{len(ribs) - MOST_RIBS} more ribs differ; all with --json[/dim]")

@@ -16,15 +16,12 @@ GROUPS = (MagneticFigures, TerminalFigures, StressFigures, OutlineFigures, Magne
 
 
 @dataclass(frozen=True, slots=True)
-class FigureDifference:
-    """One figure of two results, in its unit; None where a result does not have it."""
+class Pair:
+    """Two numbers of the same thing; None where one side has none."""
 
     key: str
-    label: str
-    unit: str
     first: float | None
     second: float | None
-    bar: float | None  # sum of both error bars, None where neither has one
 
     @property
     def change(self) -> float | None:
@@ -35,10 +32,19 @@ class FigureDifference:
 
     @property
     def differs(self) -> bool:
-        """Whether the two are not the same number."""
+        """Whether they are not the same, to rounding."""
         if self.first is None or self.second is None:
             return self.first is not self.second
         return abs(self.second - self.first) > ROUNDING * max(abs(self.first), abs(self.second))
+
+
+@dataclass(frozen=True, slots=True)
+class FigureDifference(Pair):
+    """One figure of two results, in its unit."""
+
+    label: str
+    unit: str
+    bar: float | None  # sum of both error bars, None where neither has one
 
     @property
     def is_beyond(self) -> bool | None:
@@ -70,7 +76,7 @@ def figure_differences(
         bars = [_number(record, f"{key}_error") for record in (first, second)]
         known = [bar for bar in bars if bar is not None]
         bar = sum(known) if known else None
-        found.append(FigureDifference(key, shown.label, shown.unit, a, b, bar))
+        found.append(FigureDifference(key, a, b, shown.label, shown.unit, bar))
     return tuple(found)
 
 
