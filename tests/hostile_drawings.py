@@ -15,6 +15,7 @@ from itertools import pairwise
 from pathlib import Path
 
 SECONDS, BYTES = 10, 1 << 30  # of the processor, of address space
+READERS = ("supplier", "drawn rotor")  # of an inspected outline, of a rotor to be analysed as drawn
 OVERHEAD = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS")  # threads reserve address space
 
 
@@ -199,8 +200,8 @@ def write(name: str, folder: Path) -> Path:
     return path
 
 
-def said(design: Path, path: Path) -> list[str]:
-    """What a supplier's outline and a drawn rotor's outline are refused with."""
+def said(design: Path, path: Path, reader: str) -> str:
+    """What a supplier's outline or a drawn rotor's outline is refused with."""
     from lamwright.geometry.cross_section import cross_section
     from lamwright.geometry.design_file import read_design
     from lamwright.geometry.drawn_rotor import recognised_rotor
@@ -209,42 +210,38 @@ def said(design: Path, path: Path) -> list[str]:
     from lamwright.geometry.supplier_outline import supplier_outline
 
     section = cross_section(read_design(design))
-    lines = []
-    for read in (
-        lambda: supplier_outline(section, path),
-        lambda: recognised_rotor(read_pieces(path).edges, 1e-5, section.poles),
-    ):
-        try:
-            read()
-            lines.append("accepted")
-        except OutlineError as error:
-            lines.append(str(error))
-    return lines
+    try:
+        if reader == "supplier":
+            supplier_outline(section, path)
+        else:
+            recognised_rotor(read_pieces(path).edges, 1e-5, section.poles)
+    except OutlineError as error:
+        return str(error)
+    return "accepted"
 
 
-def read_alone(design: Path, path: Path) -> list[str]:
+def read_alone(design: Path, path: Path, reader: str) -> str:
     """`said` in a process of its own under the limits, or how it died."""
     inlet, outlet = os.pipe()
     child = os.fork()
     if child == 0:
         os.close(inlet)
-        resource.setrlimit(resource.RLIMIT_CPU, (2 * SECONDS, 2 * SECONDS))  # two readings
+        resource.setrlimit(resource.RLIMIT_CPU, (SECONDS, SECONDS))
         resource.setrlimit(resource.RLIMIT_AS, (BYTES, BYTES))
         try:
-            lines = said(design, path)
+            line = said(design, path, reader)
         except BaseException as error:
-            lines = [f"TRACEBACK {type(error).__name__}: {error}"[:300]]
-        os.write(outlet, json.dumps(lines)[:60_000].encode())
+            line = f"TRACEBACK {type(error).__name__}: {error}"[:300]
+        os.write(outlet, line.encode()[:60_000])
         os._exit(0)
     os.close(outlet)
     with os.fdopen(inlet, "rb") as stream:
         data = stream.read()
     _, status, usage = os.wait4(child, 0)
-    if not data:
-        return [f"KILLED, status {status}"]
     if "-v" in sys.argv:
-        sys.stderr.write(f"{path.name}: {usage.ru_utime:.1f} s, {usage.ru_maxrss // 1024} MiB\n")
-    return list(json.loads(data))
+        spent = f"{usage.ru_utime + usage.ru_stime:.1f} s, {usage.ru_maxrss // 1024} MiB"
+        sys.stderr.write(f"{path.name} {reader}: {spent}\n")
+    return data.decode() if data else f"KILLED, status {status}"
 
 
 def main() -> None:
@@ -256,7 +253,10 @@ def main() -> None:
 
     from lamwright.geometry import supplier_outline  # noqa: F401
 
-    told = {name: read_alone(Path(design), write(name, Path(folder))) for name in names}
+    told = {}
+    for name in names:
+        path = write(name, Path(folder))
+        told[name] = [read_alone(Path(design), path, reader) for reader in READERS]
     print(json.dumps(told))
 
 

@@ -44,7 +44,7 @@ TEXTS = {
     "a_thousand_times_small": "state --outline-unit-mm 1000",
     "two_hundred_megabytes": "file too large",
     "rows_of_nothing": "blocks inserted",
-    "empty_blocks_by_hundreds": "in inserted blocks",
+    "empty_blocks_by_hundreds": "blocks inserted",
 }
 
 
