@@ -50,9 +50,15 @@ class FittedContour:
 
     def standard_error(self, number: int, share: float) -> float:
         """Of the contour's place in m across itself, at a share of edge `number`."""
+        row = self.row(number, share)
+        return math.sqrt(max(0.0, float(row @ self.covariance @ row)))
+
+    def row(self, number: int, share: float) -> FloatArray:
+        """Derivative (3m,) of that place by the unknowns, to the right of the edge."""
         columns, rows = _rows(self.edges, number, np.array([share]))
-        own = self.covariance[np.ix_(columns, columns)]
-        return math.sqrt(max(0.0, float((rows @ own @ rows.T)[0, 0])))
+        whole = np.zeros(3 * len(self.edges))
+        whole[columns] = rows[0]
+        return whole
 
 
 def fitted_contour(designed: Sequence[Edge], samples: Samples, reach: float) -> FittedContour:
@@ -110,13 +116,18 @@ def _fit(
         sweeps = sweeps + step[2 * count :]
         edges = _edges(joints, sweeps)
         noise = _scatter(off[use])
-        limit = max(OUTLYING * noise, LEAST_OUTLYING)
+        limit = outlying(noise)
         if np.abs(step[: 2 * count]).max() < 1e-2 * noise:
             break
     covariance = np.zeros((3 * count, 3 * count))
     covariance[np.ix_(free, free)] = noise**2 * np.linalg.inv(normal[np.ix_(free, free)])
     last = feet(samples.at, edges, reach)
     return FittedContour(edges, noise, last.distance, covariance)
+
+
+def outlying(noise: float) -> float:
+    """Distance in m beyond which a point is no part of its contour."""
+    return max(OUTLYING * noise, LEAST_OUTLYING)
 
 
 def _scatter(off: FloatArray) -> float:

@@ -19,9 +19,10 @@ from .outline_places import place_text
 from .outline_report import OutlineSource, source_of
 from .section import CrossSection
 from .supplier_align import Alignment, alignment, on_edges
+from .supplier_circle import as_circle
 from .supplier_cover import Cover, covered, whole_turn
 from .supplier_fit import FittedContour, fitted_contour
-from .supplier_ideal import Ideal, ideal_outline
+from .supplier_ideal import Ideal, ideal_outline, is_circle
 from .supplier_ribs import MeasuredRib, measured_ribs
 from .supplier_samples import Samples, samples_of
 from .supplier_section import measured_section
@@ -130,7 +131,9 @@ def supplier_outline(
     contours = []
     for number, contour in enumerate(ideal.contours):
         own = (found.edge >= 0) & (owners[found.edge] == number)
-        contours.append(fitted_contour(contour.path.edges, points.kept(own), reach))
+        edges, held = contour.path.edges, points.kept(own)
+        fit = fitted_contour(edges, held, reach)
+        contours.append(as_circle(edges, fit, held, copies) if is_circle(edges) else fit)
     ribs = measured_ribs(ideal, contours)
     group = worst_group(ribs, ideal)
     at, contour_of = _map_points(contours)
@@ -248,12 +251,14 @@ def _strays(
     ideal: Ideal,
     laid: Alignment,
 ) -> tuple[WorstPlace, ...]:
-    """Ends of pieces that lie off the contour fitted to all the others, the farthest of each."""
+    """Points that lie off the contour fitted to all the others, the farthest of each.
+
+    Points between the ends of a straight piece count too: they tell a chamfer in a fillet's place.
+    """
     strays = []
     for number, fit in enumerate(contours):
         own = (found.edge >= 0) & (owners[found.edge] == number)
-        use = ~points.is_between[own] & np.isfinite(fit.residual)
-        off = np.where(use, fit.residual, 0.0)
+        off = np.where(np.isfinite(fit.residual), fit.residual, 0.0)
         k = int(np.argmax(np.abs(off)))
         if abs(off[k]) > max(STRAY * fit.noise, LEAST_STRAY):
             at = complex(points.at[own][k])

@@ -89,6 +89,7 @@ def supplier_record(
         "bore": _ring_record(found.bore),
         "poles_analysed": list(found.poles_analysed),
         "worst_places": [_place_record(place) for place in found.worst],
+        "analysed_as_drawn": not found.strays,
         "strays": [_place_record(place) for place in found.strays],
         "ribs": rib_records(found, tolerance),
         "ribs_out_of_tolerance": ribs_out(found, tolerance),
@@ -102,17 +103,21 @@ def supplier_cautions(found: SupplierOutline) -> tuple[str, ...]:
     analysed = " and ".join(str(pole) for pole in found.poles_analysed)
     what = "pole" if period == 1 else "poles"
     lines = []
+    if found.strays:
+        worst = found.strays[0]
+        count = len(found.strays)
+        have = "contours have" if count > 1 else "contour has"
+        lines.append(
+            f"NOT ANALYSED AS DRAWN: {count} {have} a shape that"
+            " the design's lines and arcs do not have (a relief, a chamfer, a burr), up to"
+            f" {UM * worst.deviation:+.0f} um off them, first at {worst.text}; stress and field"
+            " there are those of the design's lines and arcs: put the shape into the design, or"
+            " assess the drawing itself by rotor.outline_dxf"
+        )
     if poles > period:
         lines.append(
             f"field and stress are of a rotor with all poles as {what} {analysed}, whose thinnest"
             " rib has the least share of its designed width; rim and bore are the mean of all"
-        )
-    if found.strays:
-        worst = found.strays[0]
-        lines.append(
-            f"{len(found.strays)} contours do not follow their lines and arcs everywhere: points"
-            f" up to {UM * worst.deviation:+.0f} um off, first at {worst.text}; the analysis leaves"
-            " them out"
         )
     if found.left_out:
         lines.append("what is drawn inside cavities or outside the rotor was left out")

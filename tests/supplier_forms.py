@@ -15,7 +15,7 @@ from ezdxf.document import Drawing
 from scipy.interpolate import make_interp_spline
 
 from lamwright.geometry.contours import lamination_contours
-from lamwright.geometry.curves import Edge, Path
+from lamwright.geometry.curves import Edge, Path, piece
 from lamwright.geometry.section import CrossSection, rotor_iron
 
 
@@ -150,6 +150,21 @@ FORMS: dict[str, Callable[[CrossSection], Drawing]] = {
         one_pole,
     )
 }
+
+
+def with_relief(edges: Sequence[Edge], number: int, radius: float) -> list[Edge]:
+    """The closed chain with a half-round notch into the steel in the middle of one edge."""
+    edge = edges[number]
+    share = radius / edge.length
+    a, b = edge.point(0.5 - share), edge.point(0.5 + share)
+    notched = [piece(edge, edge.start, a), Edge(a, b, -1.0), piece(edge, b, edge.end)]
+    return [*edges[:number], *notched, *edges[number + 1 :]]
+
+
+def with_chamfer(edges: Sequence[Edge], number: int) -> list[Edge]:
+    """The closed chain with a straight line in place of one edge."""
+    edge = edges[number]
+    return [*edges[:number], Edge(edge.start, edge.end), *edges[number + 1 :]]
 
 
 def traced(path: Path, count: int) -> np.ndarray:

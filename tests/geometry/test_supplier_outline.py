@@ -42,7 +42,7 @@ def edges_of(section):
     return [e for r in regions for path in (r.outer, *r.holes) for e in path.edges]
 
 
-QUICK = ("polylines", "splines", "gaps", "one_pole")
+QUICK = ("splines", "gaps")
 
 
 @pytest.mark.parametrize(
