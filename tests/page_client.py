@@ -15,6 +15,7 @@ DESIGNS = Path(__file__).parent.parent / "designs"
 DEMO = "demo_24s4p_arc.toml"
 DOOR = Door(8765, "a token of this test")
 ORIGIN = "http://127.0.0.1:8765"
+SOCKET = "ws://127.0.0.1:8765/api/work"
 HEADERS = {"x-page-token": DOOR.token, "origin": ORIGIN}
 
 

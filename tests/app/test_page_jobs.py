@@ -1,0 +1,322 @@
+"""Verdicts behind the page: one job per content, truth after reloads and kills, fields as drawn."""
+
+import json
+import struct
+import threading
+import time
+from pathlib import Path
+
+import numpy as np
+import pytest
+from page_client import DEMO, SOCKET, client_of, demo_folder
+
+from lamwright.app.evaluation import evaluate
+from lamwright.app.page_api import Page
+from lamwright.app.page_jobs import Job, Jobs, Refused
+from lamwright.app.study_task import Task
+from lamwright.geometry.errors import LamwrightError
+
+PATIENCE_S = 120.0  # of a loaded machine; a job takes a second
+
+
+def _finished(jobs: Jobs, job_id: str) -> Job:
+    until = time.monotonic() + PATIENCE_S
+    while (job := jobs.state(job_id)).state in ("waiting", "running"):
+        assert time.monotonic() < until
+        time.sleep(0.02)
+    return job
+
+
+def _text(page: Page, gap: float = 0.4) -> str:
+    return page.folder.text(DEMO)[0].replace("gap_mm = 0.4", f"gap_mm = {gap}")
+
+
+class StandIn:
+    """A worker whose calls end when the test says so."""
+
+    def __init__(self) -> None:
+        """No call yet."""
+        self.calls: list[tuple[object, ...]] = []
+        self.futures: list[object] = []
+        self.is_stopped = False
+
+    def submit(self, method: object, *args: object) -> object:
+        """Note a call."""
+        from concurrent.futures import Future
+
+        self.calls.append(args)
+        self.futures.append(Future())
+        return self.futures[-1]
+
+    def stop(self) -> None:
+        """Note the end."""
+        self.is_stopped = True
+
+
+@pytest.fixture
+def page(tmp_path: Path) -> Page:
+    return demo_folder(tmp_path)
+
+
+def _with_stand_in(page: Page) -> tuple[Jobs, StandIn]:
+    jobs, worker = Jobs(page.folder), StandIn()
+    jobs._worker = worker  # type: ignore[assignment]
+    return jobs, worker
+
+
+def test_the_newest_coarse_one_drops_those_that_wait(page: Page):
+    """Of one owner: the first is under way, the second is dropped, the third comes next."""
+    jobs, worker = _with_stand_in(page)
+    told: list[tuple[str, str]] = []
+    jobs.listen(lambda job: told.append((job.id, job.state)))
+    ids = [jobs.want("coarse", DEMO, _text(page, gap), "tab").id for gap in (0.41, 0.42, 0.43)]
+    assert [jobs.state(one).state for one in ids] == ["running", "none", "waiting"]
+    assert (ids[1], "superseded") in told
+    worker.futures[0].set_result(None)  # type: ignore[attr-defined]
+    assert [jobs.state(one).state for one in ids][2] == "running"
+    assert [call[2] for call in worker.calls] == [_text(page, gap) for gap in (0.41, 0.43)]
+    jobs.stop()
+    assert worker.is_stopped
+
+
+def test_what_another_tab_waits_for_goes_on(page: Page):
+    """Two owners of one job: the first one's next wish leaves it to the second."""
+    jobs, _ = _with_stand_in(page)
+    jobs.want("coarse", DEMO, _text(page, 0.41), "a")
+    shared = jobs.want("coarse", DEMO, _text(page, 0.42), "a")
+    assert jobs.want("coarse", DEMO, _text(page, 0.42), "b").id == shared.id
+    jobs.want("coarse", DEMO, _text(page, 0.43), "a")
+    assert jobs.state(shared.id).state == "waiting"
+    jobs.leave("b")
+    assert jobs.state(shared.id).state == "none"
+    jobs.stop()
+
+
+def test_a_job_is_its_content(page: Page):
+    """Another layout is the same job, another value is another one, a card's too."""
+    jobs, _ = _with_stand_in(page)
+    text = _text(page)
+    first = jobs.want("coarse", DEMO, text, "a").id
+    laid_out = text.replace("gap_mm = 0.4", "gap_mm   =  0.40  # a comment")
+    assert jobs.want("coarse", DEMO, laid_out, "b").id == first
+    assert jobs.want("coarse", DEMO, _text(page, 0.41), "b").id != first
+    card = page.folder.root / "steel" / "demo_050.toml"
+    card.write_text(card.read_text().replace("value = 380.0", "value = 381.0"))
+    assert jobs.want("coarse", DEMO, text, "b").id != first
+    jobs.stop()
+
+
+def test_a_fault_of_the_worker_fails_its_job_alone(page: Page):
+    """The next one goes to a new process; the failed one can be asked for again."""
+    from lamwright.app.pool import WorkerLost
+
+    jobs, worker = _with_stand_in(page)
+    first = jobs.want("coarse", DEMO, _text(page, 0.41), "a").id
+    worker.futures[0].set_exception(LamwrightError("no torque"))  # type: ignore[attr-defined]
+    assert (jobs.state(first).state, jobs.state(first).error) == ("failed", "no torque")
+    assert jobs.want("coarse", DEMO, _text(page, 0.41), "a").state == "running"
+    worker.futures[1].set_exception(WorkerLost("gone"))  # type: ignore[attr-defined]
+    assert jobs._worker is None
+    assert jobs.state(first).error == "gone"
+    with pytest.raises(Refused, match="run into each other"):
+        jobs.want(
+            "coarse", DEMO, _text(page).replace("thickness_mm = 2.6", "thickness_mm = 9.6"), ""
+        )
+    jobs.stop()
+
+
+@pytest.mark.parametrize("name", ["", "coarse-", "coarse-" + "g" * 40, "../" + "0" * 40, "full-x"])
+def test_an_id_is_no_path(page: Page, name: str):
+    """An id is looked at before a file of it is."""
+    jobs = Jobs(page.folder)
+    with pytest.raises(LamwrightError, match="no job's id"):
+        jobs.place(name)
+    assert client_of(page, jobs).get(f"/api/jobs/{name or 'x'}").status_code in (403, 404)
+
+
+@pytest.fixture(scope="module")
+def coarse(tmp_path_factory: pytest.TempPathFactory):
+    """A coarse verdict of the demonstration design: page, job, record, field file."""
+    page = demo_folder(tmp_path_factory.mktemp("page"))
+    with Jobs(page.folder) as jobs:
+        client = client_of(page, jobs)
+        body = {"want": "coarse", "path": DEMO, "text": _text(page)}
+        job = _finished(jobs, client.post("/api/jobs", json=body).json()["job"])
+        assert job.state == "done", job.error
+        answer = client.get(f"/api/jobs/{job.id}").json()
+        data = client.get(f"/api/jobs/{job.id}/field").content
+    return page, job, answer["result"], data
+
+
+def test_coarse_figures_are_those_of_a_quick_evaluation(coarse):
+    """The same numbers as a study's, to the nine digits that those keep; outcomes by the limits."""
+    page, _, result, _ = coarse
+    cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").read_text()}
+    quick = evaluate(Task("", {}, DEMO, _text(page), cards))
+    figures = {one["key"]: one["value"] for one in result["figures"]}
+    assert len(figures) > 20
+    for key, value in figures.items():
+        assert value == pytest.approx(quick.figures[key], rel=1e-8), key
+    assert result["passes"] is quick.passes
+    for one in result["outcomes"]:
+        least = one["sense"] == "least"
+        holds = one["value"] >= one["limit"] if least else one["value"] <= one["limit"]
+        assert one["passes"] is holds
+        assert figures[one["figure"]] == one["value"]
+    assert all(one["error"] is None for one in result["figures"])
+    mean = np.mean(result["torque"]["torque_nm"])
+    assert mean == pytest.approx(figures["torque_nm"], rel=1e-12)
+
+
+def _arrays(data: bytes) -> tuple[dict, dict[str, np.ndarray]]:
+    (length,) = struct.unpack("<I", data[:4])
+    head = json.loads(data[4 : 4 + length])
+    found = {
+        one["name"]: np.frombuffer(
+            data, "<" + one["type"], int(np.prod(one["shape"])), 4 + length + one["offset"]
+        ).reshape(one["shape"])
+        for one in head["arrays"]
+    }
+    return head, found
+
+
+def test_the_field_lies_on_the_outline(coarse):
+    """Triangles fill the sector; A_z is one value on both sides of the gap's middle.
+
+    The areas miss by what flat quarters of curved elements miss, 0.1 %. A wrong turn or sign of the
+    rotor would tear A_z at the turning circle by the flux that passes it.
+    """
+    _, _, _, data = coarse
+    head, arrays = _arrays(data)
+    places, triangles = arrays["field_positions"].astype(float), arrays["field_triangles"]
+    a, b, c = (places[triangles[:, k]] for k in range(3))
+    cross = (b - a)[:, 0] * (c - a)[:, 1] - (b - a)[:, 1] * (c - a)[:, 0]
+    assert np.abs(cross).sum() / 2 == pytest.approx(np.pi * 70.0**2 / 4, rel=1e-3)
+    assert (cross < 0).all()  # counter-clockwise as seen, y downward
+    x, y, width, height = head["view"]
+    assert (places >= [x, y]).all()
+    assert (places <= [x + width, y + height]).all()
+    radius = np.hypot(*places.T)
+    on_circle = np.abs(radius - 40.8) < 1e-3  # the middle of the gap
+    angle = np.arctan2(*places[on_circle].T)
+    potential = arrays["field_a_z"][on_circle]
+    order = np.argsort(angle)
+    same = np.diff(angle[order]) < 1e-5
+    assert same.sum() > 100
+    jump = np.abs(np.diff(potential[order]))[same].max()
+    assert jump < 1e-5 * np.ptp(arrays["field_a_z"])
+    assert head["ranges"]["b"][1] == pytest.approx(arrays["field_b"].max(), rel=1e-6)
+
+
+def test_stress_is_that_of_the_verdict(coarse):
+    """Its largest value is the figure's, at a rib."""
+    _, _, result, data = coarse
+    _, arrays = _arrays(data)
+    figures = {one["key"]: one["value"] for one in result["figures"]}
+    peak = arrays["stress_von_mises"].max()
+    assert peak == pytest.approx(figures["lamination_stress_peak_mpa"], rel=1e-6)
+    assert peak == pytest.approx(max(rib["peak_mpa"] for rib in result["ribs"]), rel=1e-6)
+
+
+def test_a_restarted_server_finds_what_is_finished(coarse):
+    """New jobs on the same folder: done at once, nothing is started."""
+    page, job, result, _ = coarse
+    jobs = Jobs(page.folder)
+    again = jobs.want("coarse", DEMO, _text(page), "new")
+    assert (again.id, again.state, jobs._worker) == (job.id, "done", None)
+    assert jobs.result(job.id) == result
+
+
+def test_the_socket_tells_a_verdict(coarse):
+    """Token, ready, job, done with its result; then what a faulty design has."""
+    page, job, result, _ = coarse
+    client = client_of(page, Jobs(page.folder))
+    with client.websocket_connect(SOCKET) as socket:
+        socket.send_json({"token": client.headers["x-page-token"]})
+        assert socket.receive_json()["kind"] == "ready"
+        socket.send_json({"want": "coarse", "path": DEMO, "text": _text(page), "ticket": 7})
+        first, second = socket.receive_json(), socket.receive_json()
+        assert (first["kind"], first["ticket"], first["job"]) == ("job", 7, job.id)
+        assert (second["kind"], second["ticket"], second["result"]) == ("done", 7, result)
+        socket.send_json({"want": "coarse", "path": DEMO, "text": "x = ", "ticket": 8})
+        refused = socket.receive_json()
+        assert (refused["kind"], refused["ticket"]) == ("refused", 8)
+        assert refused["findings"][0]["line"] == 1
+        socket.send_json({"watch": job.id})
+        assert socket.receive_json()["state"] == "done"
+        assert socket.receive_json()["result"] == result
+
+
+FRAMES = [
+    "",
+    "{",
+    "[]",
+    "null",
+    '"want"',
+    "[" * 50000,
+    '{"want": "coarse"}',
+    '{"want": "all", "ticket": 1, "path": "a.toml", "text": ""}',
+    '{"want": "coarse", "ticket": -1, "path": "a.toml", "text": ""}',
+    '{"want": "coarse", "ticket": true, "path": "a.toml", "text": ""}',
+    '{"want": "coarse", "ticket": 1, "path": 5, "text": ""}',
+    '{"watch": "../../x"}',
+    '{"nothing": 1}',
+    " " * ((1 << 20) + 1),
+    b"\x00\x01",
+]
+
+
+@pytest.mark.parametrize("frame", FRAMES, ids=range(len(FRAMES)))
+def test_malformed_frames_close_the_socket(page: Page, frame: str | bytes):
+    """With the code of malformed data; the next socket opens as ever."""
+    from starlette.websockets import WebSocketDisconnect
+
+    client = client_of(page)
+    for _ in range(2):
+        with client.websocket_connect(SOCKET) as socket:
+            socket.send_json({"token": client.headers["x-page-token"]})
+            assert socket.receive_json()["kind"] == "ready"
+            send = socket.send_bytes if isinstance(frame, bytes) else socket.send_text
+            send(frame)  # type: ignore[arg-type]
+            with pytest.raises(WebSocketDisconnect) as closed:
+                socket.receive_json()
+            assert closed.value.code == 1007
+
+
+def test_a_socket_needs_token_and_origin(page: Page):
+    """A wrong token, none, a foreign Origin, none at all, a foreign Host."""
+    from starlette.websockets import WebSocketDisconnect
+
+    client = client_of(page)
+    for first, code in (({"token": "wrong"}, 4403), ({"token": None}, 4403), ({}, 4403)):
+        with client.websocket_connect(SOCKET) as socket:
+            socket.send_json(first)
+            with pytest.raises(WebSocketDisconnect) as closed:
+                socket.receive_json()
+            assert closed.value.code == code
+    for name, value in (
+        ("origin", "http://evil.example"),
+        ("origin", "null"),
+        ("host", "evil:8765"),
+    ):
+        with (
+            pytest.raises(WebSocketDisconnect) as closed,
+            client.websocket_connect(SOCKET, headers={name: value}),
+        ):
+            pass
+        assert closed.value.code == 1008
+    del client.headers["origin"]
+    with pytest.raises(WebSocketDisconnect), client.websocket_connect(SOCKET):
+        pass
+
+
+def test_listeners_end(page: Page):
+    """Sockets come and go for days: none of them stays."""
+    jobs = Jobs(page.folder)
+    ends = [jobs.listen(lambda job: None) for _ in range(10)]
+    threads = [threading.Thread(target=end) for end in ends]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert jobs._listeners == []
