@@ -8,6 +8,7 @@ as after the server was killed, it ends at the next line.
 
 import contextlib
 import json
+import os
 import signal
 import sys
 import threading
@@ -22,14 +23,22 @@ from .process import Process, anew
 _RUN = "from lamwright.app.page_process import work; work()"
 
 Tell = Callable[[Mapping[str, Any]], None]  # {"phase", "share"}, {"done"} or {"error"} at the end
+PATIENCE_S = 5.0  # from asking a process to end to ending it
 LOST = "its process ended without an answer; out of memory?"
 
 
 class Hired:
     """A process with one order."""
 
-    def __init__(self, order: Mapping[str, Any], tell: Tell) -> None:
-        """Start it; `tell` is called in a thread of its own, last of all with "done" or "error"."""
+    def __init__(self, order: Mapping[str, Any], tell: Tell, *, is_asked: bool = False) -> None:
+        """Start it; `tell` is called in a thread of its own, last of all with "done" or "error".
+
+        Args:
+            order: what to do.
+            tell: gets what it says.
+            is_asked: to end it, ask it first: one that has a pool then clears up.
+        """
+        self._is_asked = is_asked
         self._process: Process = anew(_RUN)
         self._is_ended = False
         self._tell = tell
@@ -40,11 +49,22 @@ class Hired:
         """End it, whatever it is doing; nothing more is told."""
         self._is_ended = True
         with contextlib.suppress(OSError):
-            self._process.kill()
+            if not self._is_asked:
+                self._process.kill()
+                return
+            os.kill(self._process.pid, signal.SIGTERM)
+            timer = threading.Timer(PATIENCE_S, self._kill)
+            timer.daemon = True
+            timer.start()
 
     def join(self) -> None:
         """Wait until it has gone."""
         self._thread.join()
+
+    def _kill(self) -> None:
+        if self._thread.is_alive():
+            with contextlib.suppress(OSError):
+                self._process.kill()
 
     def _follow(self, order: dict[str, Any]) -> None:
         answers, calls = self._process.stdout, self._process.stdin
@@ -71,8 +91,6 @@ def work() -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # who started it decides
     order = json.load(sys.stdin)
     sys.stdin.close()
-    import os
-
     answers = os.fdopen(os.dup(1), "w", encoding="utf-8")
     os.dup2(2, 1)  # libraries print to descriptor 1
     teller = _Teller(answers)
@@ -80,6 +98,8 @@ def work() -> None:
         done = ORDERS[order["kind"]](order, teller.progress)
     except LamwrightError as error:
         teller.say({"error": str(error)})
+    except KeyboardInterrupt:
+        os._exit(1)  # asked to end, and cleared up
     except BrokenPipeError:
         os._exit(1)
     except OSError as error:
@@ -142,8 +162,14 @@ def _sweep(order: Mapping[str, Any], progress: Callable[[str, float], None]) -> 
 
         yield show
 
+    signal.signal(signal.SIGTERM, _interrupted)
     report = sweep(order["study"], order["out"], watch=watch)
     return {"rows": len(report.rows), "computed": report.computed}
+
+
+def _interrupted(*_: object) -> None:
+    signal.signal(signal.SIGTERM, signal.SIG_IGN)
+    raise KeyboardInterrupt
 
 
 ORDERS = {"full": _full, "release": _release, "sweep": _sweep}

@@ -23,7 +23,7 @@ from .page_api import BadRequest, Page, json_object, text_of
 from .page_coarse import FIELD_FILE
 from .page_drawing import Record
 from .page_folder import ChangedOnDisk, Outside
-from .page_guard import Door, Guard
+from .page_guard import Door, Guard, TooLarge
 from .page_jobs import Jobs
 from .page_result import shown_files
 from .page_socket import Sockets, effort_of
@@ -62,7 +62,11 @@ def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks) -> Guard:
         *_task_routes(page, jobs, tasks),
         Mount("/static", StaticFiles(directory=STATIC, follow_symlink=False)),
     ]
-    handlers: dict[Any, Any] = {HTTPException: _http_fault, **{kind: _fault for kind, _ in STATUS}}
+    handlers: dict[Any, Any] = {
+        TooLarge: _too_large,
+        HTTPException: _http_fault,
+        **{kind: _fault for kind, _ in STATUS},
+    }
     return Guard(Starlette(routes=routes, exception_handlers=handlers), door)
 
 
@@ -157,6 +161,11 @@ async def _fault(request: Request, error: Exception) -> Response:
     status = next(status for kind, status in STATUS if isinstance(error, kind))
     said = str(error) if isinstance(error, LamwrightError) else "a file cannot be read or written"
     return JSONResponse({"error": said}, status)
+
+
+async def _too_large(request: Request, error: Exception) -> Response:
+    assert isinstance(error, TooLarge)
+    return JSONResponse({"error": str(error)}, error.status, headers={"connection": "close"})
 
 
 async def _http_fault(request: Request, error: Exception) -> Response:

@@ -91,7 +91,9 @@ class Tasks:
             for old in list(self._tasks)[: max(0, len(self._tasks) - MOST_TASKS)]:
                 if self._tasks[old].state != "running":
                     del self._tasks[old]
-            self._hired[task.id] = Hired(order, lambda said: self._told(task.id, said))
+            self._hired[task.id] = Hired(
+                order, lambda said: self._told(task.id, said), is_asked=kind == "sweep"
+            )
         return task
 
     def one(self, task_id: str) -> Record:
