@@ -92,8 +92,10 @@ def draw_gaps(
     least = "at least " if gaps.is_beyond else ""
     told = f"A full, B dashed; largest {least}{UM * worst:.4g} um at {place_text(place)}, ringed"
     ax.text(0.5, -0.005, told, transform=ax.transAxes, ha="center", va="top", fontsize=style.text)
-    reach = 1.04 * float(np.abs(at).max())
-    ax.set_xlim(-reach, reach)
-    ax.set_ylim(-reach, reach)
+    # Of drawings that tell no axis, the origin may lie anywhere.
+    middle_x, middle_y = (0.5 * (v.max() + v.min()) for v in (at.real, at.imag))
+    reach = 0.52 * float(max(np.ptp(at.real), np.ptp(at.imag)))
+    ax.set_xlim(middle_x - reach, middle_x + reach)
+    ax.set_ylim(middle_y - reach, middle_y + reach)
     ax.set_aspect("equal")
     ax.axis("off")

@@ -100,7 +100,7 @@ def draw_deviation(ax: Axes, found: SupplierOutline, limit: float, style: Style)
     ax.set_aspect("equal")
     ax.axis("off")
     told = f"deviation drawn {gain:.0f} times as large, design as a thin line"
-    ax.text(0.5, 0.0, told, transform=ax.transAxes, ha="center", fontsize=style.text)
+    ax.text(0.5, -0.006, told, transform=ax.transAxes, ha="center", va="top", fontsize=style.text)
 
 
 def draw_places(ax: Axes, found: SupplierOutline, style: Style) -> None:
@@ -114,7 +114,7 @@ def draw_places(ax: Axes, found: SupplierOutline, style: Style) -> None:
         lines.append(f"     {angle}")
     for word, ring in (("rim", found.rim), ("bore", found.bore)):
         if ring is not None:
-            change = 2.0 * UM * (ring.radius - ring.designed)
+            change = round(2.0 * UM * (ring.radius - ring.designed), 1) + 0.0  # no -0.0
             lines.append("")
             lines.append(f"{word} diameter {2.0 * MM * ring.radius:.4f} mm, {change:+.1f} um;")
             lines.append(
@@ -122,6 +122,10 @@ def draw_places(ax: Axes, found: SupplierOutline, style: Style) -> None:
                 f"{UM * ring.unroundness:.1f} um out of round"
             )
     lines += ["", f"noise of the points {UM * found.noise:.2g} um"]
+    if found.strays:  # first, for they are not on the map
+        where, radius, angle = (part.strip() for part in found.strays[0].text.split(", "))
+        told = f"NOT AS DRAWN, {UM * found.strays[0].deviation:+.0f} um at {where},"
+        lines = [told, f"  {radius}, {angle}", "", "else:", *lines]
     ax.text(
         0.0,
         1.0,
@@ -138,8 +142,9 @@ def draw_rib_bars(ax: Axes, found: SupplierOutline, style: Style) -> None:
     """Draw how much each rib is wider than designed, those that are most off first."""
     order = sorted(found.ribs, key=lambda rib: -abs(rib.difference))[:MOST_RIBS]
     shown = order[:10]
+    colours = deviation_colours()  # as on the map: blue is less steel
     for at, rib in enumerate(shown):
-        colour = style.second if rib.difference >= 0.0 else style.accent
+        colour = colours(0.9 if rib.difference >= 0.0 else 0.1)
         ax.barh(-at, UM * rib.difference, height=0.6, color=colour, zorder=2)
         ax.plot(
             [UM * (rib.difference - rib.error), UM * (rib.difference + rib.error)],
