@@ -42,7 +42,7 @@ def edges_of(section):
     return [e for r in regions for path in (r.outer, *r.holes) for e in path.edges]
 
 
-QUICK = ("splines", "gaps")
+QUICK = ("splines",)
 
 
 @pytest.mark.parametrize(
@@ -129,7 +129,7 @@ def test_a_moved_barrier_and_a_worn_rim_are_measured(tmp_path):
     assert found.worst[0].text.startswith("pole 3, ")
 
 
-@pytest.mark.parametrize("change", [15.0 * UM, -150.0 * UM])
+@pytest.mark.parametrize("change", [15.0 * UM, pytest.param(-150.0 * UM, marks=pytest.mark.slow)])
 def test_another_rim_is_another_gap(change, tmp_path):
     """Rim out or in all round: the section's rotor has that radius, and the parts still meet."""
     section = section_of()
@@ -174,9 +174,14 @@ def test_what_is_not_the_design_is_refused_in_one_line(tmp_path):
 
 
 def test_a_mirror_image_is_refused_where_it_can_be_told(tmp_path):
-    """The design with unlike halves; of the demo, its own mirror image, either side is told."""
+    """The design with unlike halves."""
     edges = [mirrored(e) for e in edges_mm(section_of("gallery/lift_27s6p"))]
     refused(drawing_of(edges), tmp_path, "mirror image", "gallery/lift_27s6p")
+
+
+@pytest.mark.slow
+def test_of_its_own_mirror_image_either_side_is_told(tmp_path):
+    """The demo's."""
     section = section_of()
     found = supplier_outline(
         section, saved(drawing_of([mirrored(e) for e in edges_mm(section)]), tmp_path)
