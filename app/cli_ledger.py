@@ -69,10 +69,7 @@ def ledger(
         if csv_file is not None or netcdf_file is not None:
             _write(kept, where, sort, csv_file, netcdf_file)
         elif where is not None or sort is not None or limit is not None:
-            count = kept.count_where(where)
-            most, study = LISTED if limit is None else limit, kept.study
-            rows = kept.rows(where, sort or "number", most, study.figures)
-            print_rows(study, kept.columns, rows, count)
+            print_rows(kept, where, sort or "number", LISTED if limit is None else limit)
         elif show is None and compare is None and not (is_checked or is_pictured):
             print_progress(kept)
 

@@ -7,7 +7,7 @@ or kept twice.
 """
 
 import sqlite3
-from collections.abc import Collection, Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from pathlib import Path
 from types import TracebackType
@@ -27,7 +27,7 @@ from .ledger_file import (
 )
 from .ledger_rows import ERROR, FIGURE, FIXED, KEY, Columns, Row, columns_of, quoted, rows_of
 from .ledger_study import KeptDesign, KeptStudy, kept_design, kept_study, stated, texts_of
-from .ledger_where import Condition, parsed
+from .ledger_where import condition_of, ordered
 from .version import version
 
 if TYPE_CHECKING:
@@ -36,6 +36,8 @@ if TYPE_CHECKING:
     from .study_task import Task
 
 FORM = "1"  # of the tables
+
+Cells = tuple[float | int | str | None, ...]
 
 
 class Ledger:
@@ -186,16 +188,58 @@ class Ledger:
             LamwrightError: the condition or the name is not understood.
         """
         columns = self.columns
-        condition = _condition(where, columns)
-        name = sort.removeprefix("-")
-        column = columns.found(name)
-        if column is None:
-            raise LamwrightError(f"--sort {name}: no such column; {columns.nearest(name)}")
-        turn = "desc" if sort.startswith("-") else "asc"
-        order = f"order by {column[0]} is null, {column[0]} {turn}, number limit ?"
-        most = -1 if limit is None else limit
-        clause = f"where {condition.sql} {order}"
-        return self._selected(clause, (*condition.parameters, most), columns.with_figures(figures))
+        end = ordered(where, sort, limit, columns)
+        return self._selected(end.sql, end.parameters, columns.with_figures(figures))
+
+    def cells(
+        self,
+        names: Sequence[str],
+        where: str | None = None,
+        sort: str = "number",
+        limit: int | None = None,
+    ) -> list[Cells]:
+        """Some columns of rows, as SQL has them: a third of the time that whole rows take.
+
+        Args:
+            names: of columns, as users call them.
+            where: a condition, as for `rows`; so are `sort` and `limit`.
+            sort: name of a column.
+            limit: of how many are given.
+
+        Raises:
+            LamwrightError: the condition or the name of `sort` is not understood.
+        """
+        columns = self.columns
+        end = ordered(where, sort, limit, columns)
+        chosen = [found[0] for name in names if (found := columns.found(name)) is not None]
+        assert len(chosen) == len(names), names
+        with told(self.path):
+            sql = f"select {', '.join(chosen)} from design {end.sql}"
+            return self._file.execute(sql, end.parameters).fetchall()
+
+    def best(self, figure: str, sense: str) -> Row | None:
+        """The row with the most or least of a figure among those that hold every limit.
+
+        Where none does it is the best of all; None where no row has the figure.
+        """
+        columns = self.columns
+        if figure not in columns.figures:
+            return None
+        column, turn = quoted(FIGURE + figure), "desc" if sense == "most" else "asc"
+        order = f"order by coalesce(passes, 0) desc, {column} {turn}, hash limit 1"
+        chosen = columns.with_figures((figure, *self.study.figures))
+        found = self._selected(f"where {column} is not null {order}", (), chosen)
+        return found[0] if found else None
+
+    def holding(self) -> int:
+        """How many rows hold every limit."""
+        return self.count_where("passes")
+
+    def reasons(self) -> list[tuple[str, str, int]]:
+        """Outcome, reason and number of the rows without figures, each reason once."""
+        with told(self.path):
+            sql = "select outcome, reason, count(*) from design where outcome <> 'done' "
+            return self._file.execute(sql + "group by outcome, reason").fetchall()
 
     def _selected(
         self, clause: str, parameters: tuple[object, ...], chosen: Columns | None = None
@@ -211,7 +255,7 @@ class Ledger:
 
     def count_where(self, where: str | None) -> int:
         """How many rows fulfil a condition."""
-        condition = _condition(where, self.columns)
+        condition = condition_of(where, self.columns)
         with told(self.path):
             sql = f"select count(*) from design where {condition.sql}"
             return int(self._file.execute(sql, condition.parameters).fetchone()[0])
@@ -346,10 +390,6 @@ class Ledger:
         with told(self.path):
             found = self._file.execute("select value from note where name = ?", (name,)).fetchone()
         return None if found is None else str(found[0])
-
-
-def _condition(where: str | None, columns: Columns) -> Condition:
-    return Condition("1", ()) if where is None else parsed(where, columns)
 
 
 def _is_known(name: str, columns: Columns) -> bool:

@@ -1,9 +1,11 @@
 """The rows of a ledger as tables: the best of each goal, two beside each other, CSV."""
 
 import re
-from collections.abc import Sequence
+from collections import Counter
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
+from .ledger import Ledger
 from .ledger_rows import ERROR_ENDING, Columns, Row
 from .ledger_study import KeptStudy
 
@@ -78,32 +80,56 @@ def best_rows(study: KeptStudy, rows: Sequence[Row]) -> list[Best]:
     return found
 
 
+def best_of(ledger: Ledger) -> list[Best]:
+    """The same of all rows of a ledger, found by SQL: no row but the best is read."""
+    found = []
+    for figure, sense in ledger.study.goals:
+        row = ledger.best(figure, sense)
+        if row is not None:
+            found.append(Best(figure, sense, row, bool(row.passes)))
+    return found
+
+
 def reason_classes(rows: Sequence[Row]) -> list[str]:
     """Why each row has no figures, "" where it has: faults that differ by numbers are of one class.
 
     Place and remedy are left out, and the numbers where they differ within a class.
     """
-    faults = ["" if row.outcome == "done" else _fault(row) for row in rows]
-    classes = [_NUMBER.sub("..", fault) for fault in faults]
-    words: dict[str, set[str]] = {}
-    for name, fault in zip(classes, faults, strict=True):
-        words.setdefault(name, set()).add(fault)
-    return [min(words[name]) if len(words[name]) == 1 else name for name in classes]
+    classes = _classes({(row.outcome, row.reason) for row in rows})
+    return [classes[row.outcome, row.reason] for row in rows]
 
 
-def _fault(row: Row) -> str:
-    fault = row.reason.split("; ")[0]
-    return (fault.rpartition(": ")[2] or fault).strip() or row.outcome
+def _classes(reasons: Iterable[tuple[str, str]]) -> dict[tuple[str, str], str]:
+    """The class of each outcome and reason."""
+    faults = {one: "" if one[0] == "done" else _fault(*one) for one in reasons}
+    names = {fault: _NUMBER.sub("..", fault) for fault in set(faults.values())}
+    words: dict[str, list[str]] = {}
+    for fault, name in names.items():
+        words.setdefault(name, []).append(fault)
+    alone = {name: found[0] if len(found) == 1 else name for name, found in words.items()}
+    return {one: alone[names[fault]] for one, fault in faults.items()}
+
+
+def _fault(outcome: str, reason: str) -> str:
+    fault = reason.split("; ")[0]
+    return (fault.rpartition(": ")[2] or fault).strip() or outcome
 
 
 def reasons(rows: Sequence[Row]) -> list[tuple[str, str, int]]:
     """Outcome, reason's class and number of the rows without figures, the most first."""
-    counts: dict[tuple[str, str], int] = {}
-    for row, reason in zip(rows, reason_classes(rows), strict=True):
-        if reason:
-            counts[row.outcome, reason] = counts.get((row.outcome, reason), 0) + 1
-    told = [(outcome, reason, count) for (outcome, reason), count in counts.items()]
-    return sorted(told, key=lambda one: (-one[2], one[0], one[1]))
+    counts = Counter((row.outcome, row.reason) for row in rows)
+    return told_reasons([(*one, count) for one, count in counts.items()])
+
+
+def told_reasons(counted: Sequence[tuple[str, str, int]]) -> list[tuple[str, str, int]]:
+    """Outcome, reason's class and number from outcome, reason and number, the most first."""
+    classes = _classes((outcome, reason) for outcome, reason, _ in counted)
+    counts: Counter[tuple[str, str]] = Counter()
+    for outcome, reason, count in counted:
+        if told := classes[outcome, reason]:
+            counts[outcome, told] += count
+    found = [(outcome, reason, count) for (outcome, reason), count in counts.items()]
+    return sorted(found, key=lambda one: (-one[2], one[0], one[1]))
 
 
 def missed_limits(study: KeptStudy, row: Row) -> list[str]:

@@ -67,6 +67,32 @@ def parsed(text: str, columns: Columns) -> Condition:
     return Condition(part.sql, part.parameters)
 
 
+def condition_of(where: str | None, columns: Columns) -> Condition:
+    """The condition of a text; None for all rows.
+
+    Raises:
+        LamwrightError: it is not understood.
+    """
+    return Condition("1", ()) if where is None else parsed(where, columns)
+
+
+def ordered(where: str | None, sort: str, limit: int | None, columns: Columns) -> Condition:
+    """The end of a select: which rows, in the order of a column, and how many at most.
+
+    Raises:
+        LamwrightError: the condition or the name of the column is not understood.
+    """
+    condition = condition_of(where, columns)
+    name = sort.removeprefix("-")
+    column = columns.found(name)
+    if column is None:
+        raise LamwrightError(f"--sort {name}: no such column; {columns.nearest(name)}")
+    turn = "desc" if sort.startswith("-") else "asc"
+    order = f"order by {column[0]} is null, {column[0]} {turn}, number limit ?"
+    most = -1 if limit is None else limit
+    return Condition(f"where {condition.sql} {order}", (*condition.parameters, most))
+
+
 class _Refusal(Exception):
     """What is not understood, as the end of the error's line."""
 

@@ -4,6 +4,7 @@ import csv
 import os
 from pathlib import Path
 
+import numpy as np
 import pytest
 from click.testing import CliRunner
 
@@ -11,7 +12,13 @@ from lamwright.app.cli import main
 from lamwright.app.evaluation import Evaluation
 from lamwright.app.ledger import Ledger
 from lamwright.app.ledger_rows import Row
-from lamwright.app.ledger_tables import reason_classes, reasons
+from lamwright.app.ledger_tables import (
+    best_of,
+    best_rows,
+    reason_classes,
+    reasons,
+    told_reasons,
+)
 from lamwright.app.study_file import read_study
 from lamwright.app.study_points import points_of
 from lamwright.app.study_task import task_of
@@ -90,6 +97,37 @@ def test_tables_hold_every_number(folder, tmp_path):
     assert variables["rotor_barrier_1_end_angle_deg"].values[3] == 1.0
     assert variables["outcome"].long_name == "outcome: 0 done, 1 rejected"
     assert attributes["goals"] == "most torque_nm, least torque_ripple_percent"
+
+
+def test_what_sql_finds_is_what_all_rows_say(tmp_path):
+    """Best of each goal, reasons and lists, before and after the first that holds every limit."""
+    draws = np.random.default_rng(4).integers(0, 6, 200)
+    with Ledger.open(tmp_path, plain_study()) as ledger:
+        for k, draw in enumerate(draws.tolist()):
+            ledger.record(plain_task(k + 1), drawn_evaluation(k, draw))
+            if k in (0, 100, 199):
+                rows = ledger.rows()
+                assert best_of(ledger) == best_rows(ledger.study, rows)
+                assert told_reasons(ledger.reasons()) == reasons(rows)
+                assert ledger.holding() == sum(row.passes is True for row in rows)
+                listed = ledger.rows("torque_nm < 5", "-torque_nm", 30)
+                names = ["number", "torque_nm", "outcome", GAP]
+                assert ledger.cells(names, "torque_nm < 5", "-torque_nm", 30) == [
+                    (row.number, row.figures["torque_nm"], row.outcome, row.values[GAP])
+                    for row in listed
+                ]
+        assert {best.holds for best in best_of(ledger)} == {True}
+
+
+def drawn_evaluation(k, draw):
+    """By what was drawn from 0 to 5: rejected, failed, or done with few different figures."""
+    if draw < 2:
+        reason = [f"key_{k}: rib {k} is thin; accepted 4", "no end after 60 s", ""][k % 3]
+        return Evaluation(("rejected", "failed")[draw], reason, "outline")
+    figures = {"torque_nm": float(draw), "yield_margin": 2.0}
+    if k % 2:
+        figures["torque_ripple_percent"] = float(k % 7)
+    return Evaluation("done", "", "field", figures, {}, bool(k > 100 and draw < 5))
 
 
 @pytest.fixture(scope="module")
