@@ -1,12 +1,13 @@
-"""Shipped designs as they are drawn for the supplier, each composed once a session."""
+"""Shipped designs as they are drawn for the supplier, each composed and written once a session."""
 
 import functools
+import tempfile
 from pathlib import Path
 
 from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import design_hash, read_machine
-from lamwright.postprocess.sheet import Sheet, composed
+from lamwright.postprocess.sheet import Sheet, composed, drawing_sheet
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
 
 DESIGNS = Path(__file__).parents[1] / "designs"
@@ -29,3 +30,18 @@ def job_of(name: str, **options: object) -> SheetJob:
 def sheet_of(name: str) -> Sheet:
     """A shipped design's drawing."""
     return composed(job_of(name))
+
+
+@functools.cache
+def written_sheet(name: str) -> tuple[Path, Path]:
+    """PDF and SVG of a shipped design's drawing."""
+    folder = Path(_folder().name)
+    pdf, svg = folder / f"{name}.pdf", folder / f"{name}.svg"
+    drawing_sheet(job_of(name), pdf, svg)
+    return pdf, svg
+
+
+@functools.cache
+def _folder() -> "tempfile.TemporaryDirectory[str]":
+    """Goes with the process."""
+    return tempfile.TemporaryDirectory()

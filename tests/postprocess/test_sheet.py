@@ -1,6 +1,5 @@
 """The supplier's drawing: what it prints is what the outline has, and can be read."""
 
-import functools
 import math
 import re
 import subprocess
@@ -12,7 +11,7 @@ import numpy as np
 import pypdf
 import pytest
 from random_designs import random_design
-from sheet_jobs import DESIGNS, QUICK, job_of, sheet_of
+from sheet_jobs import DESIGNS, QUICK, job_of, sheet_of, written_sheet
 from sheet_reading import (
     MM,
     POINT,
@@ -30,7 +29,7 @@ from lamwright.geometry.dxf import write_contours
 from lamwright.geometry.errors import DesignError, LamwrightError
 from lamwright.geometry.punch_offset import punched
 from lamwright.geometry.punch_options import PunchOptions
-from lamwright.postprocess.sheet import composed, drawing_sheet
+from lamwright.postprocess.sheet import composed
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
 from lamwright.postprocess.sheet_labels import faults
 
@@ -38,18 +37,10 @@ GALLERY = sorted(path.stem for path in (DESIGNS / "gallery").glob("*.toml"))
 RANDOM = 60  # designs among the slow tests
 
 
-@pytest.fixture(scope="module")
-def written(tmp_path_factory):
+@pytest.fixture
+def written():
     """Files of one drawing, written once."""
-    folder = tmp_path_factory.mktemp("sheet")
-
-    @functools.cache
-    def write(name: str) -> tuple[Path, Path]:
-        pdf, svg = folder / f"{name}.pdf", folder / f"{name}.svg"
-        drawing_sheet(job_of(name), pdf, svg)
-        return pdf, svg
-
-    return write
+    return written_sheet
 
 
 @pytest.mark.parametrize("name", QUICK[:1])

@@ -1,14 +1,12 @@
 """Sizes printed on the supplier's drawing, read back from both files and measured again."""
 
-import functools
 import itertools
 import re
-from pathlib import Path
 
 import numpy as np
 import pytest
 import shapely
-from sheet_jobs import QUICK, job_of
+from sheet_jobs import QUICK, job_of, written_sheet
 from sheet_reading import (
     MM,
     cavities_by_barrier,
@@ -21,7 +19,6 @@ from sheet_reading import (
 )
 
 from lamwright.geometry.curves import Path as Outline
-from lamwright.postprocess.sheet import drawing_sheet
 from lamwright.postprocess.sheet_job import SheetJob
 
 # Their ends are round or run along the rim, so that the farthest point is where an end is measured.
@@ -30,18 +27,10 @@ SAMPLED = 1e-4  # mm, of a distance between polygons instead of arcs
 TURNED = 0.002  # degrees, of the farthest of samples on an arc
 
 
-@pytest.fixture(scope="module")
-def written(tmp_path_factory):
+@pytest.fixture
+def written():
     """Files of one drawing, written once."""
-    folder = tmp_path_factory.mktemp("sheet")
-
-    @functools.cache
-    def write(name: str) -> tuple[Path, Path]:
-        pdf, svg = folder / f"{name}.pdf", folder / f"{name}.svg"
-        drawing_sheet(job_of(name), pdf, svg)
-        return pdf, svg
-
-    return write
+    return written_sheet
 
 
 @pytest.mark.parametrize(
