@@ -2,7 +2,7 @@
 
 import { Gone, get, post } from "./api.js";
 import { byId, el, set, setText } from "./dom.js";
-import { figure, written } from "./format.js";
+import { figure, plain } from "./format.js";
 import { front, Scatter } from "./scatter.js";
 import { isOpen } from "./tasks.js";
 
@@ -19,6 +19,7 @@ export class Studies {
   #folder = null;
   #chosen = null;
   #timer = 0;
+  #looks = 0; // the last of them alone goes on
   #scatter = new Scatter(byId("scatter"), (row) => this.#choose(row.number));
 
   // `load(path, text, what)`: a design was picked.
@@ -99,22 +100,24 @@ export class Studies {
   // New rows since the last look, until the sweep has ended and all are here.
   async #read() {
     const folder = this.#folder;
+    const look = ++this.#looks;
     let isMore = false;
     try {
       const answer = await get("/api/ledger", { folder, since: Math.max(0, ...this.#rows.keys()) });
-      if (folder !== this.#folder) return;
+      if (look !== this.#looks) return;
       if (!this.#study && answer.study) this.#begun(answer.study);
       for (const row of answer.rows) this.#rows.set(row.number, row);
       isMore = answer.rows.length > 0 && this.#rows.size < answer.total;
       if (answer.rows.length) this.#draw();
       setText(byId("ledger-line"), answer.total ? `${this.#rows.size}${answer.planned > this.#rows.size ? ` of ${answer.planned}` : ""} designs` : "not swept yet");
     } catch (error) {
-      if (!(error instanceof Gone) && folder === this.#folder && !this.#own()) {
+      if (!(error instanceof Gone) && look === this.#looks && !this.#own()) {
         setText(byId("ledger-line"), "not swept yet");
         this.#draw();
         return;
       }
     }
+    if (look !== this.#looks) return; // a later look goes on
     if (isMore || this.#own()) this.#timer = setTimeout(() => this.#read(), isMore ? 0 : EVERY_MS);
   }
 
@@ -164,13 +167,13 @@ export class Studies {
       el("tbody", {}, ...shown.map((row) => el("tr", { class: row.number === this.#chosen ? "is-chosen" : null },
         el("th", { scope: "row" }, el("button", { type: "button", class: "row", "aria-pressed": String(row.number === this.#chosen), on: { click: () => this.#choose(row.number) } }, String(row.number))),
         ...columns.map(({ key }) => el("td", { class: "number" }, Number.isFinite(row.figures?.[key]) ? figure(row.figures[key], row.errors?.[key]) : "\u2013")),
-        el("td", { class: row.passes ? "met" : "missed" }, isBest.has(row.number) ? "\u2713 on the front" : row.passes ? "\u2713 met" : `\u2717 ${row.reason || row.outcome || "missed"}`)))));
+        el("td", { class: row.passes ? "met" : "missed" }, isBest.has(row.number) ? "\u2713 on the front" : row.passes ? "\u2713 met" : `\u2717 ${row.reason || (row.outcome === "done" ? "misses a limit" : row.outcome)}`)))));
   }
 
   #choose(number) {
     this.#chosen = number;
     const row = this.#rows.get(number);
-    const values = Object.entries(row.values ?? {}).map(([key, value]) => `${key} ${typeof value === "number" ? written(value, 4) : value}`);
+    const values = Object.entries(row.values ?? {}).map(([key, value]) => valueText(key, value));
     setText(byId("row-line"), `design ${number}: ${values.join(", ")}`);
     set(byId("row-load"), { hidden: false });
     this.#draw();
@@ -207,6 +210,14 @@ function joined(study, way) {
     else if (part !== ".") parts.push(part);
   }
   return parts.join("/");
+}
+
+// "rotor.barrier[3].end_angle_deg", 39.5 as "barrier 3 end angle 39.5 deg".
+function valueText(key, value) {
+  const words = key.replace(/^(rotor|layout)\./, "").replace(/\[(\d+)\]\./, " $1 ").replaceAll(/[._]/g, " ");
+  const unit = / (mm|deg|rpm|a|v|percent)$/.exec(words)?.[1];
+  const named = unit ? words.slice(0, -unit.length - 1) : words;
+  return `${named} ${typeof value === "number" ? plain(value) : value}${unit ? ` ${{ rpm: "1/min", percent: "%", a: "A", v: "V" }[unit] ?? unit}` : ""}`;
 }
 
 function labelOf(key) {

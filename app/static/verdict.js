@@ -2,6 +2,7 @@
 // A limit that is missed shows by a sign and a word as well as by colour.
 
 import { byId, el, set, setText } from "./dom.js";
+import { gauge, isOpen } from "./gauge.js";
 import { figure, plain, signed, unitOf, written } from "./format.js";
 
 const SENSES = { least: "\u2265", most: "\u2264" };
@@ -42,10 +43,11 @@ function limitsTable(result, other, kept) {
       el("th", { scope: "row" }, label),
       el("td", { class: "number" }, `${figure(outcome.value, outcome.error)} ${unitOf(outcome.unit)}`),
       kept && el("td", { class: "number kept-value" }, other.has(outcome.figure) ? difference(outcome.value, other.get(outcome.figure).value) : ""),
+      el("td", { class: "gauge-cell" }, gauge(outcome)),
       el("td", { class: "number limit" }, `${SENSES[outcome.sense]} ${plain(outcome.limit)}`),
-      el("td", { class: "outcome" }, el("span", { class: "sign", "aria-hidden": "true" }, outcome.passes ? "\u2713" : "\u2717"), outcome.passes ? " met" : " missed"));
+      el("td", { class: "outcome" }, el("span", { class: "sign", "aria-hidden": "true" }, outcome.passes ? "\u2713" : "\u2717"), outcome.passes ? " met" : " missed", isOpen(outcome) && el("span", { class: "estimate" }, " within its error")));
   });
-  return table("Limits", ["figure", "value", kept && `against ${kept.name}`, "limit", "outcome"], rows, "limits");
+  return table("Limits", ["figure", "value", kept && `against ${kept.name}`, "", "limit", "outcome"], rows, "limits");
 }
 
 function figureTables(result, other, kept) {
@@ -70,7 +72,7 @@ function ribsTable({ ribs }) {
 
 function table(caption, heads, rows, kind) {
   return el("table", { class: `figures ${kind}` }, el("caption", {}, caption),
-    el("thead", { class: kind === "plain" ? "unseen" : null }, el("tr", {}, ...heads.filter(Boolean).map((head) => el("th", { scope: "col" }, head)))),
+    el("thead", { class: kind === "plain" ? "unseen" : null }, el("tr", {}, ...heads.filter((head) => head !== undefined && head !== null).map((head) => (head ? el("th", { scope: "col" }, head) : el("td"))))),
     el("tbody", {}, ...rows));
 }
 
