@@ -14,7 +14,8 @@ found; it prints nothing and asks nothing. `progress` arguments are called with 
 | the supplier's package | `release_design`, `verify_package`, `compare_designs` |
 
 Errors are `lamwright.geometry.LamwrightError`, one line a fault. Names load when they are first
-used. Functions that use several processes want the usual `if __name__ == "__main__":` in a script.
+used. In a script `sweep_study` and `search_study` need `if __name__ == "__main__":` around all of
+it, since their workers load the script anew; in a notebook they do not.
 """
 
 from importlib import import_module

@@ -8,9 +8,11 @@ steel data in, have a qualified engineer look at it, and test it at overspeed in
 """
 
 # %% A design: what its file says, drawn from its own lines and arcs
+import subprocess
+import sys
 from pathlib import Path
 
-from lamwright.app import GridWishes, Ledger, assess, map_design, read_machine, solve, sweep_study
+from lamwright.app import GridWishes, Ledger, assess, map_design, read_machine, solve
 from lamwright.postprocess import all_figures, read_flux_map
 
 DESIGNS = Path("designs")
@@ -49,7 +51,11 @@ flux_map = read_flux_map(OUT / "map" / "map.nc")
 flux_map
 
 # %% A study: 48 rotors on all cores (two or three minutes), those that hold every limit
-report = sweep_study(DESIGNS / "studies" / "barriers_by_end_angle.toml", OUT / "study")
+# By its command: workers of `sweep_study` load the script that calls it anew, so a script would
+# need `if __name__ == "__main__":` around all of it; a notebook may call it as it is.
+study = DESIGNS / "studies" / "barriers_by_end_angle.toml"
+asked = ["sweep", str(study), "--out", str(OUT / "study"), "--no-pictures"]
+subprocess.run([sys.executable, "-m", "lamwright.app", *asked], check=True)
 with Ledger.read(OUT / "study") as ledger:
     best = ledger.rows("passes", "-torque_nm", 3)
 for row in best:
