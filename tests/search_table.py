@@ -4,12 +4,6 @@
 
 sweeps `tests/data/search_grid.toml` into FOLDER (2000 quick designs, some 25 minutes of a core; it
 goes on where it was stopped) and writes `tests/data/search_grid.csv`.
-
-The table there is a little older than the program: it was made by the same quick figures before the
-search of the angle of most torque was bettered. Of 20 rotors drawn at random and computed anew
-three were the same to all digits; of the others the figure that changed most did so by 0.006 to
-0.19 of it.
-For the search it is a problem of 2000 real rotors all the same.
 """
 
 import csv
