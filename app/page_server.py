@@ -182,7 +182,9 @@ def listening(port: int) -> socket.socket:
     Raises:
         LamwrightError: the port is in use, or not to be had.
     """
-    own = socket.socket(socket.AF_INET, socket.SOCK_STREAM)
+    # With its protocol named: asyncio sets TCP_NODELAY on no other, and answers of two parts then
+    # wait 40 ms for a delayed acknowledgement (measured).
+    own = socket.socket(socket.AF_INET, socket.SOCK_STREAM, socket.IPPROTO_TCP)
     try:
         if hasattr(socket, "SO_EXCLUSIVEADDRUSE"):  # Windows: nobody else may listen there too
             own.setsockopt(socket.SOL_SOCKET, socket.SO_EXCLUSIVEADDRUSE, 1)

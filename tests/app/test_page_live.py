@@ -22,6 +22,7 @@ def test_a_busy_port_is_told_in_one_line():
     with listening(0) as own:
         port = own.getsockname()[1]
         assert own.getsockname()[0] == "127.0.0.1"
+        assert own.proto == socket.IPPROTO_TCP  # else asyncio leaves Nagle's algorithm on
         with pytest.raises(LamwrightError, match=f"--port {port}: in use, .*accepted another"):
             listening(port)
     listening(port).close()
