@@ -16,6 +16,13 @@ from lamwright.geometry.errors import LamwrightError
 from .cli_assess import assess
 from .cli_compare import compare
 from .cli_ledger import ledger
+from .cli_options import (
+    TOLERANCES,
+    design_argument,
+    fineness_option,
+    out_option,
+    pictures_option,
+)
 from .cli_page import page
 from .cli_release import release, verify
 from .cli_search import search
@@ -57,23 +64,6 @@ class _Front(click.Group):
         ctx.exit(code)
 
 
-_DESIGN = click.argument("design", type=click.Path(path_type=Path))
-_OUT = click.option(
-    "--out", required=True, type=click.Path(path_type=Path), help="Folder for the results."
-)
-_FINENESS = click.option(
-    "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
-    default="normal",
-    show_default=True,
-    help="How fine to mesh, as of assess.",
-)
-
-_PICTURES = click.option(
-    "--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]"
-)
-
-
 @click.group(
     cls=_Front,
     context_settings={"help_option_names": ["-h", "--help"]},
@@ -86,15 +76,15 @@ def main() -> None:
 
 
 @main.command("map")
-@_DESIGN
-@_OUT
+@design_argument
+@out_option
 @click.option("--points", help="Currents of each axis, as 15x15.  [default: 15x15]")
 @click.option("--i-d", help="d-axis currents, A peak, as 0,2,5,9.  [default: to 1.25 x maximum]")
 @click.option("--i-q", help="q-axis currents, likewise.")
 @click.option("--positions", type=int, help="Over 60 electrical degrees.  [default: 12 or more]")
 @click.option(
     "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
+    type=TOLERANCES,
     default="normal",
     show_default=True,
     help="Largest error of torque and linkage: 2, 1 %; 0.5, 0.3 %; 0.1, 0.1 %.",
@@ -142,7 +132,7 @@ def flux_map(
 
 
 @main.command()
-@_DESIGN
+@design_argument
 @click.option("--out", type=click.Path(path_type=Path), help="Folder for the results.")
 @click.option(
     "--ranges",
@@ -166,8 +156,8 @@ def outline(design: Path, out: Path | None, ranges: bool) -> None:
 
 
 @main.command()
-@_DESIGN
-@_OUT
+@design_argument
+@out_option
 def slopes(design: Path, out: Path) -> None:
     """Change of torque, saliency and rib stress with each length and angle of DESIGN."""
     from .slopes import print_slopes
@@ -177,16 +167,16 @@ def slopes(design: Path, out: Path) -> None:
 
 
 @main.command()
-@_DESIGN
-@_OUT
+@design_argument
+@out_option
 @click.option(
     "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
+    type=TOLERANCES,
     default="normal",
     show_default=True,
     help="Largest error of rib stress: 5; 2; 0.5 %.",
 )
-@_PICTURES
+@pictures_option
 @click.option("--overspeed-share", default=0.0, help="Share of starts to overspeed.  [default: 0]")
 @click.option("--teeth-mass-factor", type=float, help="Wound over bare stator teeth, by mass.")
 @click.option("--thin", is_flag=True, help="Find the thinnest ribs that hold the yield margin.")
@@ -233,12 +223,12 @@ def ribs(
 
 
 @main.command()
-@_DESIGN
-@_OUT
+@design_argument
+@out_option
 @click.option("--samples", default=5000, show_default=True, help="Random machines by the model.")
 @click.option("--solve", default=12, show_default=True, help="Of random machines solved in full.")
 @click.option("--seed", default=1, show_default=True, help="Of the random numbers.")
-@_FINENESS
+@fineness_option
 @click.option("--workers", type=int, help="Processes that solve.  [default: one for each core]")
 def spread(
     design: Path,
@@ -262,8 +252,8 @@ def spread(
 
 
 @main.command()
-@_DESIGN
-@_OUT
+@design_argument
+@out_option
 @click.option("--currents", required=True, help="Direct currents, A, as 15,25,35.")
 @click.option(
     "--feed",
@@ -285,7 +275,7 @@ def spread(
     show_default=True,
     help="Its angles' reading where the rotor rests, d axis on the current's.",
 )
-@_FINENESS
+@fineness_option
 def locked(
     design: Path,
     out: Path,
@@ -307,7 +297,7 @@ def locked(
 
 
 @main.command()
-@_DESIGN
+@design_argument
 @click.option(
     "--csv", "table", type=click.Path(path_type=Path), help="Write the coil sides to this file."
 )
@@ -320,7 +310,7 @@ def winding(design: Path, table: Path | None) -> None:
 
 
 @main.command()
-@_DESIGN
+@design_argument
 @click.option("--i-d", required=True, type=float, help="d-axis current, A peak.")
 @click.option("--i-q", required=True, type=float, help="q-axis current, A peak.")
 @click.option(

@@ -7,24 +7,24 @@ import click
 
 from lamwright.geometry.errors import LamwrightError
 
+from .cli_options import TOLERANCES, design_argument, out_option, pictures_option
+
 if TYPE_CHECKING:
     from .outline_run import OutlineWishes
     from .rib_work import RibsReport
 
 
 @click.command()
-@click.argument("design", type=click.Path(path_type=Path))
-@click.option(
-    "--out", required=True, type=click.Path(path_type=Path), help="Folder for the results."
-)
+@design_argument
+@out_option
 @click.option(
     "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
+    type=TOLERANCES,
     default="normal",
     show_default=True,
     help="Largest error of torque, linkage, rib stress: 2, 1, 5 %; 0.5, 0.3, 2 %; 0.1, 0.1, 0.5 %.",
 )
-@click.option("--pictures/--no-pictures", default=True, help="Draw the figures.  [default: yes]")
+@pictures_option
 @click.option("--ribs", "with_ribs", is_flag=True, help="All that the command ribs tells, too.")
 @click.option(
     "--outline",
@@ -82,14 +82,16 @@ def assess(
         if value is not None:
             raise click.UsageError(f"{name}: only with --outline")
 
+    # Nothing heavy before the run: its first process is started ahead of the imports.
     from .run import assess as run
-    from .screen import print_verdict
     from .shown_progress import shown_progress
 
     reports: list[RibsReport] = []
     on_ribs = reports.append if with_ribs else None
     with shown_progress() as progress:
         verdict = run(design, out, progress, tolerance, pictures, on_ribs)
+    from .screen import print_verdict
+
     print_verdict(verdict, str(out))
     for report in reports:
         from .rib_screen import print_ribs

@@ -5,26 +5,22 @@ from typing import Literal
 
 import click
 
+from .cli_options import design_argument, fineness_option
+
 _OUT = click.option(
     "--out", required=True, type=click.Path(path_type=Path), help="Folder of the package."
 )
 
 
 @click.command()
-@click.argument("design", type=click.Path(path_type=Path))
+@design_argument
 @_OUT
 @click.option(
     "--verdict",
     type=click.Path(path_type=Path),
     help="verdict.json of the same design by this version.  [default: assess now]",
 )
-@click.option(
-    "--tolerance",
-    type=click.Choice(["coarse", "normal", "fine"]),
-    default="normal",
-    show_default=True,
-    help="How fine to mesh, as of assess.",
-)
+@fineness_option
 @click.option(
     "--despite-limits", is_flag=True, help="Release a design that fails, marked NOT PASSED."
 )

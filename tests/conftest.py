@@ -1,5 +1,7 @@
 """What holds for all tests."""
 
+import signal
+
 import pytest
 from newton_cases import PROPERTY, summary
 
@@ -7,6 +9,9 @@ from lamwright.app.threads import hold_threads
 
 # Two test processes on two cores: a second BLAS thread in each only doubles the processor time.
 hold_threads()
+# Started in the background of a script a process ignores the interrupt key, and so would those
+# that the tests of that key start.
+signal.signal(signal.SIGINT, signal.default_int_handler)
 
 
 def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:

@@ -4,6 +4,8 @@ import csv
 import json
 import math
 import re
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -187,3 +189,19 @@ def test_the_door_gives_functions_whatever_was_imported_before():
 
     for name in lamwright.app.__all__:
         assert callable(getattr(lamwright.app, name)), name
+
+
+def test_the_first_process_starts_before_anything_heavy_is_imported():
+    """Else what writes the DXF is not loaded beside the imports of the command itself."""
+    code = (
+        "import sys\n"
+        "from lamwright.app import run\n"
+        "def told():\n"
+        "    print(sorted({'numpy', 'scipy', 'pydantic'} & set(sys.modules)))\n"
+        "    raise SystemExit\n"
+        "run.early_outliner = told\n"
+        "from lamwright.app.cli import main\n"
+        f"main(['assess', {str(DEMO)!r}, '--out', 'nowhere'])\n"
+    )
+    told = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert told.stdout == "[]\n"
