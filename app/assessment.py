@@ -66,6 +66,7 @@ from .progress import Stopwatch
 from .version import version
 
 if TYPE_CHECKING:
+    from .report_assess import Supplied
     from .rib_work import RibsReport
 
 WAVEFORM_FILE, ORDERS_FILE, RIBS_FILE = "torque.csv", "torque_orders.csv", "ribs.csv"
@@ -83,6 +84,7 @@ class Assessment:
     tolerance: ToleranceName
     pictures: bool
     on_ribs: "Callable[[RibsReport], None] | None" = None  # who wants all about the ribs too
+    supplied: "Supplied | None" = None  # whose outline the section is, if not the design's own
 
     def written_to(self, stage: Path) -> Verdict:
         """The verdict; all results as files in `stage`, `verdict.json` last."""
@@ -268,7 +270,8 @@ class Assessment:
             from .report_files import write_report
 
             records = [row.record for row in rows]
-            write_report(assess_report(verdict, orders, records, machine, stage, ribs), stage)
+            report = assess_report(verdict, orders, records, machine, stage, ribs, self.supplied)
+            write_report(report, stage)
         return verdict
 
     def _ribs(self, stage: Path, stress: StressWork) -> "RibsReport":

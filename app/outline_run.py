@@ -94,12 +94,14 @@ def assess_outline(
         from lamwright.postprocess.differences import figure_differences
         from lamwright.postprocess.supplier_tables import (
             promise_csv,
+            ribs_out,
             supplier_cautions,
             supplier_record,
             supplier_ribs_csv,
         )
 
         from .assessment import Assessment
+        from .report_assess import Supplied
 
         if promise is None:
             with tempfile.TemporaryDirectory(dir=stage) as beside:
@@ -109,12 +111,27 @@ def assess_outline(
                 )
                 promise = _record(Path(beside) / VERDICT_FILE)
         watch = Stopwatch(_part(progress, "", 0.5) if not begun else progress, SHARES)
-        work = Assessment(machine, found.section, crew, None, watch, tolerance, pictures)
+        limit = rib_tolerance(machine, wishes)
+        cautions = supplier_cautions(found)
+        if pictures:  # before the report, which shows it
+            from lamwright.postprocess.figures_deviation import write_deviation
+
+            write_deviation(stage, machine.design.name, found)
+        source = found.source
+        supplied = Supplied(wishes.file.name, source.sha256, ribs_out(found, limit), cautions)
+        work = Assessment(
+            machine,
+            found.section,
+            crew,
+            None,
+            watch,
+            tolerance,
+            pictures,
+            supplied=supplied,
+        )
         verdict = work.written_to(stage)
         record = _record(stage / VERDICT_FILE)
-        limit = rib_tolerance(machine, wishes)
         differences = figure_differences(promise, record)
-        cautions = supplier_cautions(found)
         told = {
             "design": machine.design.name,
             "design_hash": design_hash(machine.design, machine.cards),
@@ -124,10 +141,6 @@ def assess_outline(
         write_text(stage / RECORD_FILE, json_text(told))
         write_text(stage / RIBS_FILE, supplier_ribs_csv(found, limit))
         write_text(stage / PROMISE_FILE, promise_csv(differences))
-        if pictures:
-            from lamwright.postprocess.figures_deviation import write_deviation
-
-            write_deviation(stage, machine.design.name, found)
         # The verdict says whose outline it is of.
         verdict = replace(verdict, cautions=(*cautions, *verdict.cautions))
         record["analysed_outline"] = wishes.file.name

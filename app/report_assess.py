@@ -1,6 +1,7 @@
 """The report of `assess`."""
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -96,6 +97,16 @@ RIBS_ELSEWHERE = (
 )
 
 
+@dataclass(frozen=True, slots=True)
+class Supplied:
+    """A supplier's or an inspection's outline that was analysed in place of the design's own."""
+
+    file: str
+    sha256: str
+    ribs_out: int  # of their tolerance
+    cautions: tuple[str, ...]
+
+
 def assess_report(
     verdict: Verdict,
     orders: TorqueSpectrum,
@@ -103,6 +114,7 @@ def assess_report(
     machine: Machine,
     folder: Path,
     ribs: "RibsReport | None" = None,
+    supplied: Supplied | None = None,
 ) -> Report:
     """The report of one assessed design.
 
@@ -113,15 +125,19 @@ def assess_report(
         machine: the design with its cards.
         folder: with the pictures that have been drawn.
         ribs: what the command `ribs` says, where it was asked too.
+        supplied: the outline that was analysed, where it is not the design's own.
     """
     missed = [o.figure.label for o in verdict.outcomes if not o.holds]
-    passes = verdict.passes and (ribs is None or ribs.passes)
+    if supplied is not None and supplied.ribs_out:
+        missed.append(f"{supplied.ribs_out} ribs out of tolerance")
+    passes = not missed and (ribs is None or ribs.passes)
     if missed or passes:
         outcome = f"FAILS: {', '.join(missed)}" if missed else "PASSES: every limit holds"
     else:
         outcome = "FAILS: yield margin with fit, heat and magnets"
     sections = [
         Section("Verdict", (_limits(verdict), *_remarks(machine))),
+        *_supplied(supplied, folder),
         Section("The machine", picture_blocks(folder, ["section"])),
         Section(
             "Field and torque",
@@ -157,17 +173,21 @@ def assess_report(
         ),
         _method(verdict),
         lines_section("What was not computed", (*(() if ribs else RIBS_ELSEWHERE), *ELSEWHERE), ""),
-        lines_section("Cautions", verdict.cautions, "none"),
+        lines_section(
+            "Cautions", (*(supplied.cautions if supplied else ()), *verdict.cautions), "none"
+        ),
         repeat_section(
             f"lamwright assess {machine.path.name} --out FOLDER --tolerance {verdict.tolerance}"
-            + (" --ribs" if ribs else ""),
+            + (" --ribs" if ribs else "")
+            + (f" --outline {supplied.file}" if supplied else ""),
             machine,
             verdict.design_hash,
             machine.path.read_text(encoding="utf-8"),
         ),
     ]
     return Report(
-        title=f"Assessment of {verdict.design_name}",
+        title=f"Assessment of {verdict.design_name}"
+        + (f", rotor as in {supplied.file}" if supplied else ""),
         subtitle=f"lamwright {verdict.version}, tolerance {verdict.tolerance}, design "
         f"{verdict.design_hash[:16]}",
         outcome=outcome,
@@ -175,6 +195,19 @@ def assess_report(
         sections=tuple(section for section in sections if section.blocks),
         closing=CAUTION,
     )
+
+
+def _supplied(supplied: Supplied | None, folder: Path) -> tuple[Section, ...]:
+    if supplied is None:
+        return ()
+    told = (
+        f"Rotor contours of {supplied.file} (SHA-256 {supplied.sha256}), laid on the design and "
+        f"measured, are analysed here in place of the design's own; {supplied.ribs_out} ribs are "
+        "out of their tolerance. Every rib stands in outline_ribs.csv, what was promised beside "
+        "what was found in promise.csv."
+    )
+    pictures = picture_blocks(folder, ["deviation"])
+    return (Section("The outline as supplied", (Paragraph(told), *pictures)),)
 
 
 def _limits(verdict: Verdict) -> Grid:

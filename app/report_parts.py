@@ -35,6 +35,7 @@ CAPTIONS = {
     "section": "The pole that is computed: regions, ribs and winding.",
     "flux": "Flux density (colour) and flux lines at rated current, first of all positions.",
     "torque": "Torque over 60 electrical degrees, and its orders.",
+    "deviation": "The outline as supplied against the design.",
     "stress": "Von Mises stress at overspeed, the deformation enlarged; the ribs close up.",
     "ribs": "Yield margin, peak and life of each rib.",
     "plastic": "What has yielded at overspeed.",

@@ -57,6 +57,10 @@ def test_a_noisy_outline_keeps_the_promise(kind, tmp_path):
     assert verdict["analysed_outline"] == "back.dxf"
     assert verdict["torque_nm"] == torque.second
     assert (out / "deviation.png").stat().st_size > 50_000
+    page = (out / "report.html").read_text()
+    assert "rotor as in back.dxf" in page
+    assert verdict["analysed_outline_sha256"] in page
+    assert "PASSES" in page
 
 
 @pytest.mark.slow
@@ -92,6 +96,9 @@ def test_a_thin_rib_is_told_and_stressed(tmp_path):
         assert record_of["cautions"][0].startswith("NOT ANALYSED AS DRAWN: 1 contour")
     assert not record["analysed_as_drawn"]
     assert "NOT ANALYSED AS DRAWN" in told.output
+    page = (tmp_path / "report.html").read_text()
+    assert "24 ribs out of tolerance" in page
+    assert "NOT ANALYSED AS DRAWN" in page
 
 
 @pytest.mark.parametrize("form", ["R2000", "R2018"])
