@@ -32,8 +32,8 @@ def report_pdf(report: Report, folder: Path) -> bytes:
     """
     from reportlab.lib.pagesizes import A4
     from reportlab.lib.units import mm
+    from reportlab.platypus import KeepTogether, SimpleDocTemplate, Spacer
     from reportlab.platypus import Paragraph as Text
-    from reportlab.platypus import SimpleDocTemplate, Spacer
 
     _load_letters()
     side, above = (share * mm for share in MARGIN_MM)
@@ -56,9 +56,13 @@ def report_pdf(report: Report, folder: Path) -> bytes:
         _outcome(report, document.width),
     ]
     for section in report.sections:
-        flow.append(Text(escape(section.title), style["heading"]))
+        before: list[Flowable] = [Text(escape(section.title), style["heading"])]
         for block in section.blocks:
-            flow += _set(block, folder, document.width)
+            parts = _set(block, folder, document.width)
+            # A heading stays with what follows it, a picture with its caption.
+            is_picture = isinstance(block, Picture)
+            flow += [KeepTogether([*before, *parts])] if is_picture else [*before, *parts]
+            before = []
     page = _footed(report.closing)
     document.build(flow, onFirstPage=page, onLaterPages=page)
     return stream.getvalue()
@@ -140,7 +144,7 @@ def _set(block: Block, folder: Path, width: float) -> "list[Flowable]":
     if isinstance(block, Grid):
         note = [Text(escape(block.note), style["note"])] if block.note else []
         return [_table(block, width), *note]
-    return [_figure(block, folder, width)]
+    return _figure(block, folder, width)
 
 
 def _table(grid: Grid, width: float) -> "Flowable":
@@ -195,10 +199,10 @@ def _fitted(wanted: list[float], width: float) -> list[float]:
     return [min(one, limit) for one in wanted]
 
 
-def _figure(picture: Picture, folder: Path, width: float) -> "Flowable":
+def _figure(picture: Picture, folder: Path, width: float) -> "list[Flowable]":
     from reportlab.lib.units import mm
     from reportlab.lib.utils import ImageReader
-    from reportlab.platypus import Image, KeepTogether, Spacer
+    from reportlab.platypus import Image, Spacer
     from reportlab.platypus import Paragraph as Text
 
     path = folder / f"{picture.name}.png"
@@ -206,7 +210,7 @@ def _figure(picture: Picture, folder: Path, width: float) -> "Flowable":
     scale = min(width / across, MOST_PICTURE_MM * mm / up)
     drawn = Image(str(path), width=scale * across, height=scale * up)
     note = Text(escape(picture.caption), _styles()["note"])
-    return KeepTogether([Spacer(0.0, 2 * mm), drawn, note])
+    return [Spacer(0.0, 2 * mm), drawn, note]
 
 
 def _footed(closing: str) -> "Callable[[Canvas, object], None]":

@@ -107,3 +107,13 @@ def test_pdf_says_what_html_says_and_repeats(folder):
     assert whole.count("name with \u03b3 and <b>") >= 8
     assert "1.5" in whole
     assert f"page {len(pages)}" in whole
+
+
+@pytest.mark.parametrize("lines", [20, 24, 28, 32, 36])
+def test_a_heading_stands_on_the_page_of_its_picture(folder, lines):
+    """However much stands above: a heading alone at a page's foot heads nothing."""
+    above = Section("above", (Lines(tuple(f"line {k}" for k in range(lines))),))
+    drawn = Section("of the picture", (Picture("one", "the caption"),))
+    data = report_pdf(Report("a", "b", "c", "good", (above, drawn), "d"), folder)
+    pages = [page.extract_text() for page in pypdf.PdfReader(BytesIO(data)).pages]
+    assert [("of the picture" in page) == ("the caption" in page) for page in pages] == [True] * 2
