@@ -9,6 +9,7 @@ import time
 from pathlib import Path
 
 import pytest
+import study_deeds
 from dask_processes import PATIENCE_S, cluster
 from study_deeds import misbehaving, slept
 from study_rows import plain_study
@@ -34,8 +35,9 @@ def two_workers(tmp_path_factory):
         yield PoolWishes(scheduler_file=made.file)
 
 
-def test_a_worker_has_each_design_done_by_a_process_of_its_own():
+def test_a_worker_has_each_design_done_by_a_process_of_its_own(monkeypatch):
     """What happens on a cluster's worker, without a cluster: a crash, a hang, an error, results."""
+    monkeypatch.setenv("PYTHONPATH", str(Path(study_deeds.__file__).parent))  # for its process
     try:
         assert carry_out(misbehaving, "a", LIMIT_S, version()) == "a done"
         with pytest.raises(TaskLost, match="its process ended without an answer"):
