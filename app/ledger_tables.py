@@ -67,21 +67,16 @@ class Difference:
         return abs(self.first - self.second) > self.first_error + self.second_error
 
 
-def best_rows(study: KeptStudy, rows: Sequence[Row]) -> list[Best]:
-    """The best row of each goal among those that hold every limit, or else among all."""
-    found = []
-    for figure, sense in study.goals:
-        having = [row for row in rows if figure in row.figures]
-        holding = [row for row in having if row.passes]
-        if having:
-            sign = -1.0 if sense == "most" else 1.0
-            row = min(holding or having, key=lambda row: (sign * row.figures[figure], row.hash))
-            found.append(Best(figure, sense, row, bool(holding)))
-    return found
+def ranked(rows: Sequence[Row], figure: str, sense: str) -> list[Row]:
+    """Those with the figure, the best first, but those that hold every limit before all others."""
+    sign = -1.0 if sense == "most" else 1.0
+    having = [row for row in rows if figure in row.figures]
+    having.sort(key=lambda row: (row.passes is not True, sign * row.figures[figure], row.hash))
+    return having
 
 
 def best_of(ledger: Ledger) -> list[Best]:
-    """The same of all rows of a ledger, found by SQL: no row but the best is read."""
+    """The first of `ranked` for each goal, found by SQL: no row but the best is read."""
     found = []
     for figure, sense in ledger.study.goals:
         row = ledger.best(figure, sense)

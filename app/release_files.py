@@ -63,8 +63,8 @@ def write_drawing(
     """Write the rotor's drawing as PDF and SVG; of a design that fails it says so."""
     options = wishes
     if not promise.passes:
-        remarks = (_not_passed(promise), *wishes.remarks)
-        options = replace(wishes, status=NOT_PASSED, remarks=remarks)
+        warning = f"{_not_passed(promise)}. NOT FOR RUNNING ROTORS."
+        options = replace(wishes, status=NOT_PASSED, warning=warning)
     (rotor,) = (part for part in parts if part.name == "rotor")
     job = SheetJob(
         design=machine.design,

@@ -19,7 +19,7 @@ from lamwright.postprocess.report import (
 
 from .ledger import Ledger
 from .ledger_rows import Row
-from .ledger_tables import best_rows, missed_limits, reasons
+from .ledger_tables import best_of, missed_limits, ranked, told_reasons
 from .lines import number
 from .report_parts import CAUTION, error_text, lines_section, made_by
 from .study_figures import known_figures
@@ -61,11 +61,11 @@ def study_report(study: "Study", ledger: Ledger, pictures: Sequence[Path], comma
         outcome=found,
         mark="good" if holding else "bad",
         sections=(
-            Section("Best of each goal", (_best(ledger, rows), *_note(study))),
+            Section("Best of each goal", (_best(ledger), *_note(study))),
             Section("Pictures", _pictures(pictures)),
             Section("Designs", _designs(study, holding or rows, bool(holding))),
             _asked(study, counts),
-            _refused(rows),
+            _refused(ledger),
             lines_section(
                 "What was not computed",
                 (QUICK,) if study.effort == "quick" else (),
@@ -95,10 +95,10 @@ def _value(row: Row, name: str) -> tuple[Cell, Cell]:
     return shown, numeral(error_text(row.errors, name))
 
 
-def _best(ledger: Ledger, rows: Sequence[Row]) -> Grid:
+def _best(ledger: Ledger) -> Grid:
     study = ledger.study
     lines = []
-    for best in best_rows(study, rows):
+    for best in best_of(ledger):
         missed = ", ".join(missed_limits(study, best.row))
         mark = (
             words("holds every limit", "good") if best.holds else words(f"misses {missed}", "bad")
@@ -129,15 +129,9 @@ def _pictures(paths: Sequence[Path]) -> tuple[Block, ...]:
 
 def _designs(study: "Study", rows: Sequence[Row], holding: bool) -> tuple[Block, ...]:
     """A table of the first designs by the first goal."""
-    if not study.goals:
-        ranked, order = list(rows), "in order of finishing"
-    else:
-        goal = study.goals[0]
-        sign, order = (-1.0 if goal.sense == "most" else 1.0), f"by {_label(goal.figure)}"
-        ranked = sorted(
-            (row for row in rows if goal.figure in row.figures),
-            key=lambda row: (sign * row.figures[goal.figure], row.hash),
-        )
+    listed, order = list(rows), "in order of finishing"
+    for goal in study.goals[:1]:
+        listed, order = ranked(rows, goal.figure, goal.sense), f"by {_label(goal.figure)}"
     figures = [g.figure for g in study.goals] + [limit.figure for limit in study.limits]
     names = list(dict.fromkeys(figures))
     keys = [key.key for key in study.keys]
@@ -148,10 +142,10 @@ def _designs(study: "Study", rows: Sequence[Row], holding: bool) -> tuple[Block,
             *(numeral(_stated(row.values.get(key, ""))) for key in keys),
             *(cell for name in names for cell in _value(row, name)),
         )
-        for row in ranked[:MOST_LISTED]
+        for row in listed[:MOST_LISTED]
     )
     of = "that hold every limit" if holding else "of which none holds every limit"
-    told = f"The first {len(lines)} of {len(ranked)} designs {of}, {order}."
+    told = f"The first {len(lines)} of {len(listed)} designs {of}, {order}."
     return Paragraph(told), Grid(tuple(heads), lines)
 
 
@@ -180,10 +174,10 @@ def _asked(study: "Study", counts: str) -> Section:
     )
 
 
-def _refused(rows: Sequence[Row]) -> Section:
+def _refused(ledger: Ledger) -> Section:
     lines = tuple(
         (words(outcome), words(reason), numeral(str(count)))
-        for outcome, reason, count in reasons(rows)
+        for outcome, reason, count in told_reasons(ledger.reasons())
     )
     table: Block = Grid(("outcome", "reason", "designs"), lines)
     return Section("Designs without figures", (table if lines else Paragraph("none"),))

@@ -12,7 +12,7 @@ from rich.table import Table
 
 from .ledger import Ledger
 from .ledger_screen import print_progress
-from .ledger_tables import reasons
+from .ledger_tables import ranked, reasons
 from .study_screen import time_text
 
 if TYPE_CHECKING:
@@ -27,7 +27,7 @@ MOST_REASONS = 6  # told of rejected and failed designs
 def print_sweep(report: "SweepReport", folder: Path) -> None:
     """The best designs as a table, the ledger's own words, and the next commands."""
     study = report.study
-    if rows := best_rows(study, report.rows):
+    if rows := listed_rows(study, report.rows):
         goal = f", best {study.goals[0].figure} first" if study.goals else ""
         Console(highlight=False).print(design_table(study, rows, f"{study.name}{goal}"))
     with Ledger.read(folder) as ledger:
@@ -38,16 +38,13 @@ def print_sweep(report: "SweepReport", folder: Path) -> None:
     click.echo(f"more by: lamwright ledger {folder}; a design's file by its --show NUMBER")
 
 
-def best_rows(study: "Study", rows: "Sequence[Row]") -> "list[Row]":
+def listed_rows(study: "Study", rows: "Sequence[Row]") -> "list[Row]":
     """The best by the first goal, those that pass before others; without a goal those that pass."""
     done = {row.number: row for row in rows if row.outcome == "done"}
     if not study.goals:
         return [row for row in done.values() if row.passes][:MOST_LISTED]
     goal = study.goals[0]
-    sign = -1.0 if goal.sense == "most" else 1.0
-    known = [row for row in done.values() if goal.figure in row.figures]
-    known.sort(key=lambda row: (row.passes is not True, sign * row.figures[goal.figure]))
-    return known[:MOST_LISTED]
+    return ranked(list(done.values()), goal.figure, goal.sense)[:MOST_LISTED]
 
 
 def design_table(study: "Study", rows: "Sequence[Row]", title: str) -> Table:

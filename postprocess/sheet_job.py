@@ -33,6 +33,7 @@ class SheetOptions:
         burr_side: `near` (the side seen) or `far`; empty: not given.
         burr_mm: most height of a burr; None: not given.
         rolling_direction: note on the rolling direction; empty: not given.
+        warning: stands first in the frame of cautions, in bold; empty: none.
         remarks: further notes, one line each, as of a tool's compensation in the outline.
         paper: `A4`, `A3` or `A2`; empty: the smallest on which all views find room.
     """
@@ -53,6 +54,7 @@ class SheetOptions:
     burr_side: str = ""
     burr_mm: float | None = None
     rolling_direction: str = ""
+    warning: str = ""
     remarks: tuple[str, ...] = ()
     paper: str = ""
 

@@ -200,6 +200,8 @@ def caution(job: SheetJob, width: float) -> Picture:
     texts = [CAUTION]
     if "invented" in job.design.note.lower():
         texts.insert(0, INVENTED)
+    if job.options.warning:
+        texts.insert(0, job.options.warning)
     lines = [line for text in texts for line in wrapped(text, width - 4.0, TEXT, is_bold=True)]
     height = LINE * len(lines) + 2.0
     inks: list[Ink] = [rectangle(0j, complex(width, height), RULE)]

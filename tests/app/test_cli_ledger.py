@@ -13,8 +13,9 @@ from lamwright.app.evaluation import Evaluation
 from lamwright.app.ledger import Ledger
 from lamwright.app.ledger_rows import Row
 from lamwright.app.ledger_tables import (
+    Best,
     best_of,
-    best_rows,
+    ranked,
     reason_classes,
     reasons,
     told_reasons,
@@ -107,7 +108,11 @@ def test_what_sql_finds_is_what_all_rows_say(tmp_path):
             ledger.record(plain_task(k + 1), drawn_evaluation(k, draw))
             if k in (0, 100, 199):
                 rows = ledger.rows()
-                assert best_of(ledger) == best_rows(ledger.study, rows)
+                assert best_of(ledger) == [
+                    Best(figure, sense, row, bool(row.passes))
+                    for figure, sense in ledger.study.goals
+                    for row in ranked(rows, figure, sense)[:1]
+                ]
                 assert told_reasons(ledger.reasons()) == reasons(rows)
                 assert ledger.holding() == sum(row.passes is True for row in rows)
                 listed = ledger.rows("torque_nm < 5", "-torque_nm", 30)

@@ -149,7 +149,9 @@ def test_a_design_that_fails_is_refused_or_marked(tmp_path):
     assert manifest["status"] == "NOT PASSED"
     assert manifest["limits_missed"] == ["least_torque_nm"]
     assert manifest["cautions"][0].startswith("NOT PASSED: ")
-    assert "NOT PASSED" in (tmp_path / "out" / "rotor.svg").read_text()
+    drawing = (tmp_path / "out" / "rotor.svg").read_text()
+    assert "NOT PASSED: the design fails" in drawing
+    assert "NOT FOR RUNNING ROTORS." in drawing
     assert verify(tmp_path / "out").changes == ()
 
 
