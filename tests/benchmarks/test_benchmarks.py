@@ -16,10 +16,11 @@ CASES = [pytest.param(n, marks=pytest.mark.slow) if n in SLOW else n for n in BE
 
 @pytest.mark.parametrize("name", CASES)
 def test_a_benchmark_gives_finite_positive_figures_of_its_name(name: str) -> None:
-    """Law: a ratio of times, a time, a size and a growth are numbers above zero.
+    """Law: a ratio of times, a time and a size are numbers above zero, a growth is a number.
 
-    No size is asked of them: times on a shared machine prove nothing. The two against the other
-    library also hold its linkages to ours within 1e-3 and fail else.
+    No size is asked of them: times on a shared machine prove nothing, and the exponent of a growth
+    between two small sizes has no sign there. The two against the other library also hold its
+    linkages to ours within 1e-3 and fail else.
     """
     if name in NEED_PEER and find_spec("ngsolve") is None:
         pytest.skip("the second finite element library is an optional extra")
@@ -28,7 +29,7 @@ def test_a_benchmark_gives_finite_positive_figures_of_its_name(name: str) -> Non
     for key, value in figures.items():
         assert key.startswith(name)
         assert math.isfinite(value)
-        assert value > 0.0
+        assert value > 0.0 or name.startswith("growth_exponent")
 
 
 def test_growth_exponent_of_a_power_law() -> None:

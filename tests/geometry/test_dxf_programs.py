@@ -101,6 +101,7 @@ def test_freecad_reads_every_contour_closed_with_its_area_and_length(released, t
     script.write_text(FREECAD)
     wanted.write_text(json.dumps([str(path) for path in released]))
     env = {**os.environ, "HOME": str(tmp_path), "LAMINATIONS": str(wanted)}
+    env.pop("VIRTUAL_ENV", None)  # it would look there for a script of its own and complain
     run = subprocess.run(
         [command, str(script)], env=env, capture_output=True, text=True, timeout=600
     )
