@@ -27,12 +27,12 @@ quietly() {
     return "$status"
 }
 
-# Install Debian packages as root or through sudo, or say what to type.
+# Install Debian packages as root or through sudo, or say what an administrator has to type.
 apt_install() {
     local as_root=""
     local by_hand="please install these with your system's package manager: $*"
     command -v apt-get >/dev/null || give_up "$by_hand"
-    by_hand="please run: sudo apt-get install -y $*"
+    by_hand="please run this as root, or have it run, then try again: apt-get install -y $*"
     if [ "$(id -u)" -ne 0 ]; then
         command -v sudo >/dev/null || give_up "$by_hand"
         as_root="sudo"
@@ -56,14 +56,23 @@ find_python() {
     return 1
 }
 
+# Where the system's list of libraries has no GLU, gmsh cannot be loaded: known before it is fetched.
+without_glu() {
+    [ "$(uname -s)" = Linux ] && command -v apt-get >/dev/null || return 1
+    ! PATH="$PATH:/usr/sbin:/sbin" ldconfig -p 2>/dev/null | grep -q "libGLU\.so\.1"
+}
+
 make_venv() {
-    local python version
+    local python version packages=""
     python=$(find_python) || give_up "Python 3.11 or later is needed${PYTHON:+, $PYTHON is not};" \
         "install it, or name it: PYTHON=/path/to/python3 bash app/ready.sh ..."
     if ! "$python" -c 'import venv, ensurepip' >/dev/null 2>&1; then
         version=$("$python" -c 'import sys; print("%d.%d" % sys.version_info[:2])')
-        apt_install "python$version-venv"
+        packages="python$version-venv"
     fi
+    if without_glu; then packages="$packages $gmsh_packages"; fi
+    # All at once: who has to ask an administrator asks once, and before minutes of downloads.
+    [ -z "$packages" ] || apt_install $packages
     say "making .venv with $("$python" -V)"
     quietly "$python" -m venv --clear "$venv" || give_up "the virtual environment could not be made"
 }
