@@ -8,7 +8,6 @@ depend on who did what.
 """
 
 from collections.abc import Callable, Sequence
-from concurrent.futures import Future
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
@@ -23,7 +22,6 @@ from lamwright.postprocess.cautions import cautions
 from lamwright.postprocess.detail_cautions import detail_cautions
 from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
 from lamwright.postprocess.figures import (
-    Composer,
     flux_figure,
     section_figure,
     stress_figure,
@@ -55,6 +53,7 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 from lamwright.solver.types import FieldSolution
 
+from .album import Album
 from .angle import AngleFound, most_torque
 from .desk import Desk, StressWork
 from .lamination import DXF_FILE
@@ -85,9 +84,15 @@ class Assessment:
     pictures: bool
     on_ribs: "Callable[[RibsReport], None] | None" = None  # who wants all about the ribs too
     supplied: "Supplied | None" = None  # whose outline the section is, if not the design's own
+    on_verdict: Callable[[Path], None] | None = None  # who wants it before the pictures are drawn
 
     def written_to(self, stage: Path) -> Verdict:
-        """The verdict; all results as files in `stage`, `verdict.json` last."""
+        """The verdict; all results as files in `stage`, `verdict.json` last but for late pictures.
+
+        `on_verdict` gets the folder once all but pictures and report stand there.
+        """
+        is_late = self.on_verdict is not None
+        album = Album(self.crew, stage, is_wanted=self.pictures, is_late=is_late)
         watch, duty = self.watch, self.machine.design.duty
         overspeed = duty.overspeed_factor * duty.maximum_speed_rpm / RPM
         name, section, crew = self.machine.design.name, self.section, self.crew
@@ -102,7 +107,7 @@ class Assessment:
         with watch.phase("magnetic model"):
             model = model_of(self.machine, section, sector)
             crew.everywhere(Desk.take_model, model)
-            drawn = [*self._drawn(stage, "section", partial(section_figure, name, section))]
+            album.add("section", partial(section_figure, name, section))
         with watch.phase("current angle"):
             found = most_torque(model, self.machine.design, watch.within)
         with watch.phase("torque waveform"):
@@ -113,13 +118,12 @@ class Assessment:
             middle = len(by_step) // 2
             shown = name if len(by_step) == 1 else f"{name}, step {middle + 1} of {len(by_step)}"
             flux = partial(flux_figure, shown, section, winding, sector, by_step[middle][0])
-            drawn += self._drawn(stage, "flux", flux)
-            torque = partial(torque_figure, name, section, waveform)
-            drawn += self._drawn(stage, "torque", torque)
+            album.add("flux", flux)
+            album.add("torque", partial(torque_figure, name, section, waveform))
         with watch.phase("stress"):
             stress = stress_to_come.result()
             compose = partial(stress_figure, name, section, stress.solution, stress.report)
-            drawn += self._drawn(stage, "stress", compose)
+            album.add("stress", compose)
         watch.meanwhile("stress", stress.seconds)
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields, by_step)
@@ -129,7 +133,7 @@ class Assessment:
         waves = (field for step in by_step for field in step)
         solved = (*found.fields, *waves, *(f for work in magnets for f in work.fields))
         return self._written(
-            stage, model, outline.figures, waveform, field_errors, solved, stress, magnets, drawn
+            stage, model, outline.figures, waveform, field_errors, solved, stress, magnets, album
         )
 
     def _magnets(self, model: MagneticModel) -> tuple[MagnetWork, ...]:
@@ -193,10 +197,6 @@ class Assessment:
         }
         return errors_of(fields, changed, pole_pairs)
 
-    def _drawn(self, stage: Path, name: str, compose: Composer) -> "list[Future[None]]":
-        """A figure to come, drawn by a worker where there is one; nothing where none is wanted."""
-        return [self.crew.start(Desk.figure, stage, name, compose)] if self.pictures else []
-
     def _written(
         self,
         stage: Path,
@@ -207,7 +207,7 @@ class Assessment:
         fields: Sequence[FieldSolution],
         stress: StressWork,
         magnets: Sequence[MagnetWork],
-        drawn: "Sequence[Future[None]]",
+        album: Album,
     ) -> Verdict:
         """Write everything; the verdict last, with the time that the rest has taken."""
         machine, watch = self.machine, self.watch
@@ -220,9 +220,8 @@ class Assessment:
             write_text(stage / RIBS_FILE, ribs_csv(rows))
             for work in magnets:
                 work.write(stage)
-        with watch.phase("pictures"):
-            for figure in drawn:
-                figure.result()
+        if self.on_verdict is None:
+            self._close(album)
         ribs = None
         if self.on_ribs is not None:
             ribs = self._ribs(stage, stress)
@@ -265,6 +264,9 @@ class Assessment:
             magnet_states=tuple(state for work in magnets for state in work.states),
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
+        if self.on_verdict is not None:
+            self.on_verdict(stage)
+            self._close(album)
         if self.pictures:
             from .report_assess import assess_report
             from .report_files import write_report
@@ -273,6 +275,10 @@ class Assessment:
             report = assess_report(verdict, orders, records, machine, stage, ribs, self.supplied)
             write_report(report, stage)
         return verdict
+
+    def _close(self, album: Album) -> None:
+        with self.watch.phase("pictures"):
+            album.close(self.watch.within)
 
     def _ribs(self, stage: Path, stress: StressWork) -> "RibsReport":
         """What `ribs` says, from the stress that is known already."""

@@ -11,36 +11,30 @@ what is under way; what others ask for too goes on.
 """
 
 import contextlib
-import hashlib
 import json
-import re
 import shutil
 import threading
 from collections.abc import Callable, Hashable, Mapping
 from concurrent.futures import Future
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from pathlib import Path
-from typing import Any, Literal
+from typing import Any
 
-from lamwright.geometry.design_file import Machine, design_hash
+from lamwright.geometry.design_file import design_hash
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.files import VERDICT_FILE
 
 from .page_coarse import RESULT_FILE, CoarseDesk, coarse_desk
 from .page_drawing import Record
-from .page_folder import Folder, Outside
+from .page_folder import Folder
+from .page_job import TOLERANCE, Effort, Job, State, effort_of_id, job_id_of
 from .page_outline import Found, outlined
 from .page_process import Hired
 from .pool import Worker
-from .version import version
 
-Effort = Literal["coarse", "full"]
-State = Literal["none", "waiting", "running", "done", "failed", "superseded"]
-TOLERANCE = "normal"  # of full verdicts, as of assess
 MOST_KEPT = {"coarse": 200, "full": 30}  # results in the cache: 0.6 MB and some 3 MB each
 MOST_FAILED = 64
 LIMIT_S = {"coarse": 120.0, "full": 3600.0}
-_ID = re.compile(r"(coarse|full)-[0-9a-f]{40}")
 
 
 class Refused(LamwrightError, ValueError):
@@ -50,34 +44,6 @@ class Refused(LamwrightError, ValueError):
         """Keep them."""
         super().__init__("\n".join(one.text for one in found))
         self.found = found
-
-
-@dataclass(frozen=True, slots=True)
-class Job:
-    """A verdict that was asked for."""
-
-    id: str
-    effort: Effort
-    state: State
-    phase: str = ""
-    share: float = 0.0
-    error: str | None = None
-    path: str = ""
-    text: str = ""
-    design_hash: str = ""
-    owners: frozenset[Hashable] = frozenset()
-
-    @property
-    def record(self) -> Record:
-        """As the page gets it."""
-        return {
-            "job": self.id,
-            "effort": self.effort,
-            "state": self.state,
-            "phase": self.phase,
-            "share": self.share,
-            "error": self.error,
-        }
 
 
 OnChange = Callable[[Job], None]
@@ -138,7 +104,7 @@ class Jobs:
         if one.machine is None or one.section is None:
             raise Refused(one.found)
         due = design_hash(one.machine.design, one.machine.cards)
-        job_id = job_id_of(effort, one.machine)
+        job_id = job_id_of(effort, due)
         with self._lock:
             self._give_up(effort, owner, but=job_id)
             job = self.state(job_id)
@@ -163,7 +129,7 @@ class Jobs:
         Raises:
             Outside: this is no id.
         """
-        effort = _effort_of(job_id)
+        effort = effort_of_id(job_id)
         with self._lock:
             if job_id in self._known:
                 return self._known[job_id]
@@ -171,12 +137,13 @@ class Jobs:
         return Job(job_id, effort, "done" if is_done else "none", share=float(is_done))
 
     def result(self, job_id: str) -> Record | None:
-        """What a finished job says; None of one that is not finished."""
-        if self.state(job_id).state != "done":
-            return None
+        """What a finished job says; of one under way its figures, or None."""
+        job = self.state(job_id)
+        if job.state != "done":
+            return job.figures
         place = self.place(job_id)
         with contextlib.suppress(OSError, ValueError, KeyError):
-            if _effort_of(job_id) == "coarse":
+            if effort_of_id(job_id) == "coarse":
                 read: Record = json.loads((place / RESULT_FILE).read_text(encoding="utf-8"))
                 return read
             from .page_result import full_record
@@ -190,7 +157,7 @@ class Jobs:
         Raises:
             Outside: this is no id.
         """
-        effort = _effort_of(job_id)
+        effort = effort_of_id(job_id)
         return self._folder.cache / effort / job_id.removeprefix(f"{effort}-")
 
     def cancel(self, job_id: str) -> None:
@@ -312,6 +279,11 @@ class Jobs:
                 self._known[job_id] = job
                 self._tell(job)
                 return
+            if "result" in said:
+                job = replace(job, figures=said["result"])
+                self._known[job_id] = job
+                self._tell(job)
+                return
             self._hired = None
             self._end(job, "failed" if "error" in said else "done", said.get("error"))
             self._begin("full")
@@ -340,7 +312,8 @@ class Jobs:
             timer.cancel()
         self._known.pop(job.id, None)
         share = 1.0 if state == "done" else job.share
-        ended = replace(job, state=state, error=error, share=share, text="", owners=frozenset())
+        ended = replace(job, state=state, error=error, share=share, owners=frozenset())
+        ended = replace(ended, text="", figures=None)
         if state == "failed":
             failed = [one.id for one in self._known.values() if one.state == "failed"]
             for old in failed[: max(0, len(failed) + 1 - MOST_FAILED)]:
@@ -364,20 +337,6 @@ class Jobs:
     def _tell(self, job: Job) -> None:
         for call in list(self._listeners):
             call(job)
-
-
-def job_id_of(effort: Effort, machine: Machine) -> str:
-    """The id of a verdict of a machine."""
-    due = design_hash(machine.design, machine.cards)
-    stated = json.dumps([due, version(), TOLERANCE if effort == "full" else ""])
-    return f"{effort}-{hashlib.sha256(stated.encode()).hexdigest()[:40]}"
-
-
-def _effort_of(job_id: str) -> Effort:
-    found = _ID.fullmatch(job_id)
-    if found is None:
-        raise Outside("no job's id")
-    return "coarse" if found[1] == "coarse" else "full"
 
 
 def _last_file(effort: Effort) -> str:

@@ -22,7 +22,8 @@ from .process import Process, anew
 
 _RUN = "from lamwright.app.page_process import work; work()"
 
-Tell = Callable[[Mapping[str, Any]], None]  # {"phase", "share"}, {"done"} or {"error"} at the end
+# {"phase", "share"}, {"result"} once figures are known, {"done"} or {"error"} at the end
+Tell = Callable[[Mapping[str, Any]], None]
 PATIENCE_S = 5.0  # from asking a process to end to ending it
 LOST = "its process ended without an answer; out of memory?"
 
@@ -95,7 +96,7 @@ def work() -> None:
     os.dup2(2, 1)  # libraries print to descriptor 1
     teller = _Teller(answers)
     try:
-        done = ORDERS[order["kind"]](order, teller.progress)
+        done = ORDERS[order["kind"]](order, teller)
     except LamwrightError as error:
         teller.say({"error": str(error)})
     except KeyboardInterrupt:
@@ -126,23 +127,29 @@ class _Teller:
         self._answers.flush()
 
 
-def _full(order: Mapping[str, Any], progress: Callable[[str, float], None]) -> dict[str, Any]:
+def _full(order: Mapping[str, Any], teller: _Teller) -> dict[str, Any]:
     from .run import assess
 
-    verdict = assess(order["design"], order["out"], progress, order["tolerance"])
+    def known(folder: Path) -> None:
+        from .page_result import full_record
+
+        teller.say({"result": {**full_record(folder), "files": []}})
+
+    design, out = order["design"], order["out"]
+    verdict = assess(design, out, teller.progress, order["tolerance"], on_verdict=known)
     return {"passes": verdict.passes}
 
 
-def _release(order: Mapping[str, Any], progress: Callable[[str, float], None]) -> dict[str, Any]:
+def _release(order: Mapping[str, Any], teller: _Teller) -> dict[str, Any]:
     from .release import ReleaseWishes, release
 
     verdict = Path(order["verdict"]) if order["verdict"] else None
     wishes = ReleaseWishes(verdict=verdict, despite_limits=order["despite_limits"])
-    report = release(Path(order["design"]), Path(order["out"]), wishes, progress)
+    report = release(Path(order["design"]), Path(order["out"]), wishes, teller.progress)
     return {"passes": report.passes, "number": report.number}
 
 
-def _sweep(order: Mapping[str, Any], progress: Callable[[str, float], None]) -> dict[str, Any]:
+def _sweep(order: Mapping[str, Any], teller: _Teller) -> dict[str, Any]:
     from collections.abc import Iterator
     from contextlib import contextmanager
 
@@ -158,7 +165,7 @@ def _sweep(order: Mapping[str, Any], progress: Callable[[str, float], None]) -> 
         def show(row: Row, is_known: bool) -> None:
             nonlocal seen
             seen += 1
-            progress(f"{seen} of {total} designs", seen / total if total else 0.0)
+            teller.progress(f"{seen} of {total} designs", seen / total if total else 0.0)
 
         yield show
 

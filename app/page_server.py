@@ -107,7 +107,7 @@ def _asking(jobs: Jobs) -> Handler:
 def _job(jobs: Jobs) -> Handler:
     def record(job_id: str) -> Record:
         job = jobs.state(job_id)
-        return {**job.record, "result": jobs.result(job_id) if job.state == "done" else None}
+        return {**job.record, "result": jobs.result(job_id)}
 
     async def answer(request: Request) -> Response:
         return JSONResponse(await run_in_threadpool(record, request.path_params["job"]))

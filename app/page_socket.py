@@ -20,7 +20,8 @@ from lamwright.geometry.errors import LamwrightError
 from .page_api import BadRequest, json_object, text_of, whole_of
 from .page_drawing import Record
 from .page_guard import Door
-from .page_jobs import Effort, Job, Jobs, Refused
+from .page_job import Effort, Job, job_id_of
+from .page_jobs import Jobs, Refused
 from .version import version
 
 PATIENCE_S = 5.0  # for the token
@@ -94,12 +95,14 @@ class _Talk:
     async def _answer(self, asked: Mapping[str, object]) -> None:
         if "want" in asked:
             await self._want(asked)
+        elif "look" in asked:
+            await self._look(asked)
         elif "watch" in asked:
             await self._watch(text_of(asked, "watch"))
         elif "cancel" in asked:
             await run_in_threadpool(self._jobs.cancel, text_of(asked, "cancel"))
         else:
-            raise BadRequest("accepted want, watch or cancel")
+            raise BadRequest("accepted want, look, watch or cancel")
 
     async def _want(self, asked: Mapping[str, object]) -> None:
         ticket, effort = whole_of(asked, "ticket"), effort_of(asked)
@@ -120,6 +123,15 @@ class _Talk:
             del self._watched[next(iter(self._watched))]
         await self._say({"kind": "job", "ticket": ticket, **job.record})
         # It may have ended before it was watched: its state is told as it is now.
+        self._heard(await run_in_threadpool(self._jobs.state, job.id))
+
+    async def _look(self, asked: Mapping[str, object]) -> None:
+        """Whether a design's verdict is finished or under way; nothing is begun."""
+        ticket, due = whole_of(asked, "ticket"), text_of(asked, "look")
+        job = await run_in_threadpool(self._jobs.state, job_id_of("full", due))
+        if job.state in ("waiting", "running", "done"):
+            self._watched.setdefault(job.id, ticket)
+        await self._say({"kind": "job", "ticket": ticket, **job.record})
         self._heard(await run_in_threadpool(self._jobs.state, job.id))
 
     async def _watch(self, job_id: str) -> None:
@@ -161,7 +173,8 @@ class _Talk:
                 return {"kind": "failed", "ticket": ticket, **failed}
             return {"kind": "done", "ticket": ticket, **job.record, "result": result}
         kind = job.state if job.state in ("failed", "superseded") else "progress"
-        return {"kind": kind, "ticket": ticket, **job.record}
+        known = {} if job.figures is None else {"result": job.figures}
+        return {"kind": kind, "ticket": ticket, **job.record, **known}
 
     async def _say(self, message: Record) -> None:
         await self._socket.send_json(message)

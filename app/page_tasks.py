@@ -11,13 +11,15 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any, Literal
 
+from lamwright.geometry.design_file import design_hash
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.files import VERDICT_FILE
 
 from .page_api import BadRequest, Page, flag_of, maybe_text_of, text_of, whole_of
 from .page_drawing import Record
 from .page_folder import Folder
-from .page_jobs import Jobs, job_id_of
+from .page_job import job_id_of
+from .page_jobs import Jobs
 from .page_outline import outlined
 from .page_process import Hired
 
@@ -148,7 +150,8 @@ def release(page: Page, jobs: Jobs, tasks: Tasks, body: Mapping[str, object]) ->
     one = outlined(page.folder, path, text)
     if one.machine is None or one.section is None:
         raise LamwrightError("\n".join(found.text for found in one.found))
-    verdict = jobs.place(job_id_of("full", one.machine)) / VERDICT_FILE
+    due = design_hash(one.machine.design, one.machine.cards)
+    verdict = jobs.place(job_id_of("full", due)) / VERDICT_FILE
     order = {
         "kind": "release",
         "design": str(page.folder.design_file(path)),
@@ -175,16 +178,29 @@ def sweep(tasks: Tasks, page: Page, body: Mapping[str, object]) -> Record:
 def ledger_record(page: Page, query: Mapping[str, str]) -> Record:
     """Rows of a ledger after a number, at most 500, with what its study asks for.
 
+    A study that was not swept yet, or whose sweep is about to begin, has none: its study is None.
+
     Raises:
         BadRequest: the number is none.
-        LamwrightError: the folder holds no ledger.
+        LamwrightError: the ledger cannot be read.
     """
     from .ledger import Ledger
+    from .ledger_file import LEDGER_FILE, is_locked
 
     since = query.get("since", "0")
-    if not since.isdigit() or len(since) > 12:
+    if not (since.isascii() and since.isdigit()) or len(since) > 12:
         raise BadRequest("since: accepted a whole number from 0")
-    with Ledger.read(page.folder.file(query["folder"])) as ledger:
+    folder = page.folder.file(query["folder"])
+    none: Record = {"study": None, "rows": [], "total": 0, "planned": None, "is_written": False}
+    if not (folder / LEDGER_FILE).is_file():
+        return none
+    try:
+        ledger = Ledger.read(folder)
+    except LamwrightError:
+        if is_locked(folder):  # its tables are being made
+            return {**none, "is_written": True}
+        raise
+    with ledger:
         study = ledger.study
         rows = ledger.rows(f"number > {int(since)}", limit=MOST_ROWS)
         planned = ledger.noted("planned")
@@ -216,14 +232,32 @@ def ledger_record(page: Page, query: Mapping[str, str]) -> Record:
 
 
 def pick(page: Page, body: Mapping[str, object]) -> Record:
-    """The design of a ledger's row as text, to be opened and saved beside the study's base."""
+    """The design of a ledger's row as text, and a free name for it beside the study's base.
+
+    There the names of its cards hold.
+    """
     from .ledger import Ledger
 
     folder, number = text_of(body, "folder"), whole_of(body, "row")
     with Ledger.read(page.folder.file(folder)) as ledger:
         row, design = ledger.row(number), ledger.design(number)
         name = ledger.study.name
-    return {"text": design.text, "values": dict(row.values), "study": name, "row": number}
+    study = maybe_text_of(body, "study")
+    path = None if study is None else _free_name(page.folder, study, number)
+    values = dict(row.values)
+    return {"text": design.text, "values": values, "study": name, "row": number, "path": path}
+
+
+def _free_name(folder: Folder, study: str, number: int) -> str:
+    """Of a row's design; that of the study's base, then the row's number."""
+    path = folder.design_file(study)
+    base = _base_of(path)
+    if base is None:
+        raise LamwrightError(f"{study}: names no base; accepted the study's file")
+    named = folder.name_of(path.parent / base)
+    stem = f"{named.removesuffix('.toml')}-row{number}"
+    names = (f"{stem}{more}.toml" for more in ("", *(f"-{k}" for k in range(2, 1000))))
+    return next(name for name in names if not folder.design_file(name).exists())
 
 
 def _out(folder: Folder, body: Mapping[str, object], usual: str, path: str) -> str:

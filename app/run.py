@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 
 MOST_WORKERS = 3  # beside this process; a design has six chains to share
 SHARE_BEFORE_RIBS = 0.4  # of the wall time, measured on demo_24s4p_arc
+SHARE_BEFORE_PICTURES = 0.65  # where they are drawn last, likewise
 
 
 def assess(
@@ -32,6 +33,7 @@ def assess(
     tolerance: "ToleranceName" = "normal",
     pictures: bool = True,
     on_ribs: "Callable[[RibsReport], None] | None" = None,
+    on_verdict: Callable[[Path], None] | None = None,
 ) -> "Verdict":
     """Assess the design in the file `path`; all results go to the folder `out`.
 
@@ -43,6 +45,8 @@ def assess(
         pictures: whether to draw the figures, 40 % of the processors' time.
         on_ribs: called with what `ribs` would say, whose files then go to the folder too; without
             it they are not made.
+        on_verdict: called with a folder where verdict and tables stand as soon as they do; the
+            pictures are drawn after it, not beside, so that who waits for figures waits less.
 
     Returns:
         The verdict, as written to `verdict.json`.
@@ -60,6 +64,9 @@ def assess(
         from .progress import SHARES, Stopwatch, silent
 
         shares = SHARES if on_ribs is None else _shares_with_ribs()
+        if on_verdict is not None:
+            shares = {phase: SHARE_BEFORE_PICTURES * share for phase, share in shares.items()}
+            shares["pictures"] = 1.0 - SHARE_BEFORE_PICTURES
         watch = Stopwatch(progress or silent, shares)
         machine = read_marked(Path(path), Path(out))
         section = section_of(machine)
@@ -69,7 +76,10 @@ def assess(
             from .assessment import Assessment
         with crew, staged(folder) as stage:
             outliner = hired()  # only now: its threads here would forbid the crew's copies
-            work = Assessment(machine, section, crew, outliner, watch, tolerance, pictures, on_ribs)
+            work = Assessment(
+                *(machine, section, crew, outliner, watch, tolerance, pictures, on_ribs),
+                on_verdict=on_verdict,
+            )
             return work.written_to(stage)
 
 

@@ -21,7 +21,7 @@ import { Tabs } from "./tabs.js";
 import { Tasks } from "./tasks.js";
 import { theme } from "./theme.js";
 import { titleBlock } from "./title_block.js";
-import { onChangedElsewhere, takeToken } from "./token.js";
+import { onBegunElsewhere, onChangedElsewhere, takeToken, tellBegun } from "./token.js";
 import { VerdictPanel } from "./verdict_panel.js";
 import { Viewport } from "./viewport.js";
 import { Work } from "./work.js";
@@ -260,6 +260,8 @@ takeToken(() => link.open());
 onChangedElsewhere((path) => {
   if (path === design.path && !handles.isMoving) design.refresh().catch(() => {});
 });
+work.on("begun", tellBegun);
+onBegunElsewhere(() => verdict.look());
 document.addEventListener("visibilitychange", () => {
   if (!document.hidden && hasStarted && link.state === "on") design.refresh().catch(() => {});
 });

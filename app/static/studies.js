@@ -101,24 +101,21 @@ export class Studies {
   async #read() {
     const folder = this.#folder;
     const look = ++this.#looks;
-    let isMore = false;
+    let [isMore, isWritten] = [false, false];
     try {
       const answer = await get("/api/ledger", { folder, since: Math.max(0, ...this.#rows.keys()) });
       if (look !== this.#looks) return;
       if (!this.#study && answer.study) this.#begun(answer.study);
       for (const row of answer.rows) this.#rows.set(row.number, row);
       isMore = answer.rows.length > 0 && this.#rows.size < answer.total;
-      if (answer.rows.length) this.#draw();
+      if (answer.rows.length || !answer.total) this.#draw();
       setText(byId("ledger-line"), answer.total ? `${this.#rows.size}${answer.planned > this.#rows.size ? ` of ${answer.planned}` : ""} designs` : "not swept yet");
+      isWritten = answer.is_written;
     } catch (error) {
-      if (!(error instanceof Gone) && look === this.#looks && !this.#own()) {
-        setText(byId("ledger-line"), "not swept yet");
-        this.#draw();
-        return;
-      }
+      if (!(error instanceof Gone) && look === this.#looks) setText(byId("ledger-line"), error.message);
     }
     if (look !== this.#looks) return; // a later look goes on
-    if (isMore || this.#own()) this.#timer = setTimeout(() => this.#read(), isMore ? 0 : EVERY_MS);
+    if (isMore || isWritten || this.#own()) this.#timer = setTimeout(() => this.#read(), isMore ? 0 : EVERY_MS);
   }
 
   #begun(study) {
@@ -180,36 +177,14 @@ export class Studies {
     this.#say(`design ${number} chosen`);
   }
 
-  // Beside the study's base, where the names of its cards hold.
-  async #pathOf(picked) {
-    if (picked.path) return picked.path;
-    const study = this.#choice.value;
-    return joined(study, await baseOf(study)).replace(/\.toml$/, `-row${picked.row}.toml`);
-  }
-
   async #pick() {
     try {
-      const picked = await post("/api/pick", { folder: this.#folder, row: this.#chosen });
-      await this.#load({ path: await this.#pathOf(picked), text: picked.text }, `design ${this.#chosen} of ${this.#folder}`);
+      const picked = await post("/api/pick", { folder: this.#folder, row: this.#chosen, study: this.#choice.value });
+      await this.#load(picked, `design ${this.#chosen} of ${this.#folder}`);
     } catch (error) {
       setText(byId("row-line"), error.message);
     }
   }
-}
-
-async function baseOf(study) {
-  const { text } = await get("/api/design", { path: study });
-  return /^base\s*=\s*"([^"]+)"/m.exec(text)?.[1] ?? "design.toml";
-}
-
-// A name as the folder counts it: the study's folder and a way from there, its ".." resolved.
-function joined(study, way) {
-  const parts = [];
-  for (const part of [...study.split("/").slice(0, -1), ...way.split("/")]) {
-    if (part === "..") parts.pop();
-    else if (part !== ".") parts.push(part);
-  }
-  return parts.join("/");
 }
 
 // "rotor.barrier[3].end_angle_deg", 39.5 as "barrier 3 end angle 39.5 deg".

@@ -22,6 +22,7 @@ export function takeToken(call) {
       call();
     }
     if (data.kind === "changed") listeners.forEach((listener) => listener(data.path));
+    if (data.kind === "begun") onBegun();
   });
 }
 
@@ -34,6 +35,17 @@ export function onChangedElsewhere(listener) {
 
 export function tellChanged(path) {
   channel.postMessage({ kind: "changed", path });
+}
+
+let onBegun = () => {};
+
+// Another tab has begun a full verdict.
+export function onBegunElsewhere(call) {
+  onBegun = call;
+}
+
+export function tellBegun() {
+  channel.postMessage({ kind: "begun" });
 }
 
 export function currentToken() {

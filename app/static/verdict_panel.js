@@ -27,7 +27,14 @@ export class VerdictPanel {
   settled() {
     const { design, work } = this.#parts;
     if (design.outline?.ok && !work.fieldJob(design.outline.hash)) work.want("coarse", design.path, design.text);
+    this.look();
     this.show();
+  }
+
+  // Another window may have had the full verdict computed.
+  look() {
+    const { design, work } = this.#parts;
+    if (design.outline?.ok) work.look(design.outline.hash, design.path, design.text);
   }
 
   full() {

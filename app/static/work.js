@@ -1,17 +1,20 @@
 // Verdicts: what is wanted, what is under way, what is known. Results stay by the design's hash, so
 // that undo shows the earlier verdict at once; whatever is missing is asked for again after the
-// socket was lost, and the last full job is watched again after a reload.
+// socket was lost, and the last full job is taken up again after a reload. Whether a design has a
+// full verdict that another window or an earlier start asked for is looked up when it is shown.
 
 import { Teller } from "./dom.js";
 
 const MOST_RESULTS = 60;
-const WATCHED = "lamwright-full-job";
+const UNDER_WAY = "lamwright-full-job"; // path and text of this window's full job
 
 export class Work extends Teller {
   #link;
   #results = new Map(); // "effort hash" -> {job, result}
   #jobs = { coarse: null, full: null }; // {ticket, path, text, job, state, phase, share, error, findings}
   #ticket = 0;
+  #look = null; // {ticket, path, text, job}: the last design that was looked up
+  #isTakenUp = false;
 
   constructor(link) {
     super();
@@ -25,7 +28,17 @@ export class Work extends Teller {
     if (before && before.text === text && before.path === path && isUnderWay(before)) return;
     this.#jobs[effort] = { ticket: ++this.#ticket, path, text, job: null, state: "asked", phase: "", share: 0 };
     this.#ask(effort);
+    this.#remember();
     this.tell("changed", effort);
+  }
+
+  // Whether a full verdict of the design is finished or under way, whoever asked for it.
+  look(hash, path, text) {
+    if (this.#results.has(`full ${hash}`)) return;
+    const full = this.#jobs.full;
+    if (isUnderWay(full) && full.text === text) return;
+    this.#look = { ticket: ++this.#ticket, path, text, job: null };
+    this.#link.send({ look: hash, ticket: this.#look.ticket });
   }
 
   // The full verdict under way, ended.
@@ -34,7 +47,7 @@ export class Work extends Teller {
     if (!full || !isUnderWay(full)) return false;
     if (full.job) this.#link.send({ cancel: full.job });
     this.#jobs.full = { ...full, state: "stopped" };
-    this.#remember(null);
+    this.#remember();
     this.tell("changed", "full");
     return true;
   }
@@ -64,16 +77,17 @@ export class Work extends Teller {
 
   #again() {
     for (const effort of ["coarse", "full"]) if (isUnderWay(this.#jobs[effort])) this.#ask(effort);
-    const job = sessionStorage.getItem(WATCHED);
-    if (job && !this.#jobs.full) {
-      this.#jobs.full = { ticket: ++this.#ticket, path: null, text: null, job, state: "asked", phase: "", share: 0 };
-      this.#link.send({ watch: job });
-    }
+    const own = this.#isTakenUp ? null : remembered();
+    this.#isTakenUp = true;
+    if (own && !this.#jobs.full) this.want("full", own.path, own.text);
   }
 
   #received(message) {
     const effort = this.#effortOf(message);
-    if (!effort) return;
+    if (!effort) {
+      this.#found(message);
+      return;
+    }
     const own = this.#jobs[effort];
     if (message.kind === "refused") {
       Object.assign(own, { state: "refused", findings: message.findings });
@@ -86,17 +100,26 @@ export class Work extends Teller {
       if (own.state !== "done") Object.assign(own, { state: effort === "full" ? "stopped" : "superseded" });
     } else {
       const { job, state, phase, share, error } = message;
+      if (effort === "full" && !own.job && job) this.tell("begun");
       Object.assign(own, { job: job ?? own.job, state, phase: phase ?? "", share: share ?? 0, error });
-      if (state === "none") this.#lost(effort, own);
+      if (message.result) this.#keep(effort, job, message.result); // figures, while pictures are drawn
+      if (state === "none") this.#ask(effort); // the server does not know it any more
     }
-    if (effort === "full") this.#remember(["failed", "stopped", "refused", "none"].includes(own.state) ? null : own.job);
+    this.#remember();
     this.tell("changed", effort);
   }
 
-  // A job that the server does not know (any more): begin it again if its text is known here.
-  #lost(effort, own) {
-    if (own.text === null) this.#jobs[effort] = null;
-    else this.#ask(effort);
+  // What was looked up: finished, or under way and followed as if it had been asked for here.
+  #found({ kind, ticket, job, state, result }) {
+    const look = this.#look;
+    if (!look || (ticket !== look.ticket && job !== look.job)) return;
+    look.job = job;
+    if (kind === "job" && ["waiting", "running"].includes(state) && !isUnderWay(this.#jobs.full)) {
+      this.#jobs.full = { ...look, state, phase: "", share: 0 };
+      this.#remember();
+    }
+    if (result) this.#keep("full", job, result);
+    this.tell("changed", "full");
   }
 
   #effortOf(message) {
@@ -114,9 +137,20 @@ export class Work extends Teller {
     if (this.#results.size > MOST_RESULTS) this.#results.delete(this.#results.keys().next().value);
   }
 
-  #remember(job) {
-    if (job) sessionStorage.setItem(WATCHED, job);
-    else sessionStorage.removeItem(WATCHED);
+  #remember() {
+    const { path, text } = this.#jobs.full ?? {};
+    try {
+      if (isUnderWay(this.#jobs.full)) sessionStorage.setItem(UNDER_WAY, JSON.stringify({ path, text }));
+      else sessionStorage.removeItem(UNDER_WAY);
+    } catch { /* storage full: a reload forgets that it was asked for, the server does not */ }
+  }
+}
+
+function remembered() {
+  try {
+    return JSON.parse(sessionStorage.getItem(UNDER_WAY));
+  } catch {
+    return null; // unreadable: none
   }
 }
 

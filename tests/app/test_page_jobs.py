@@ -12,7 +12,8 @@ from page_client import DEMO, SOCKET, client_of, demo_folder
 
 from lamwright.app.evaluation import evaluate
 from lamwright.app.page_api import Page
-from lamwright.app.page_jobs import Job, Jobs, Refused
+from lamwright.app.page_job import Job
+from lamwright.app.page_jobs import Jobs, Refused
 from lamwright.app.study_task import Task
 from lamwright.geometry.errors import LamwrightError
 
