@@ -16,7 +16,12 @@ from lamwright.solver.mesh import mesh_section
 from lamwright.solver.rotor_stress import rotor_stress
 from lamwright.solver.steel import reluctivity_law
 
-pytest.importorskip("ngsolve", reason="the second finite element library is an optional extra")
+# ImportError: installed, but a system library that it loads may be missing.
+pytest.importorskip(
+    "ngsolve",
+    reason="the second finite element library is an optional extra",
+    exc_type=ImportError,
+)
 
 from .other_solver import solve_field
 from .other_stress import solve_stress
