@@ -29,7 +29,13 @@ from lamwright.postprocess.figures import (
 )
 from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
-from lamwright.postprocess.rib_tables import elastic_figures, rib_rows, ribs_csv
+from lamwright.postprocess.rib_tables import (
+    elastic_errors,
+    elastic_figures,
+    rib_columns,
+    rib_rows,
+    ribs_csv,
+)
 from lamwright.postprocess.skew import mean_change, mean_solution, skew_cautions, step_point
 from lamwright.postprocess.summary import (
     magnetic_figures,
@@ -37,6 +43,7 @@ from lamwright.postprocess.summary import (
     stress_figures,
     terminal_figures,
 )
+from lamwright.postprocess.table_errors import order_columns, waveform_columns
 from lamwright.postprocess.tables import spectrum_csv, verdict_record, waveform_csv
 from lamwright.postprocess.torque import (
     TorqueWaveform,
@@ -215,8 +222,9 @@ class Assessment:
             write_text(stage / WAVEFORM_FILE, waveform_csv(waveform))
             orders = spectrum(waveform)
             write_text(stage / ORDERS_FILE, spectrum_csv(orders, waveform.mean))
-            elastic = elastic_figures(self.section, stress.report, stress.zone_errors)
-            rows = rib_rows(self.section, stress.report, elastic)
+            elastic = elastic_figures(self.section, stress.report)
+            of_ribs = elastic_errors(self.section, stress.report, stress.finer, stress.zone_errors)
+            rows = rib_rows(self.section, stress.report, elastic, errors=of_ribs)
             write_text(stage / RIBS_FILE, ribs_csv(rows))
             for work in magnets:
                 work.write(stage)
@@ -235,6 +243,17 @@ class Assessment:
             **terminal_errors(machine.design, magnetic, terminal, field_errors),
             **stress_errors(stress.report, stress.finer, stress.zone_errors),
         }
+        tables = {
+            WAVEFORM_FILE: waveform_columns(waveform, field_errors),
+            ORDERS_FILE: order_columns(orders, waveform.mean, field_errors),
+            RIBS_FILE: rib_columns(rows),
+        }
+        of_magnets = tuple(
+            work.figures(machine, self.section, waveform.i_d, waveform.i_q) for work in magnets
+        )
+        for work, own in zip(magnets, of_magnets, strict=True):
+            bars |= work.error_bars(machine, own, waveform.i_d, waveform.i_q)
+            tables |= work.columns(own, bars)
         unknowns = model.numbering.n_dof
         verdict = Verdict(
             design_name=machine.design.name,
@@ -258,10 +277,10 @@ class Assessment:
             ),
             times=watch.times,
             errors=bars,
-            magnets=tuple(
-                work.figures(machine, self.section, waveform.i_d, waveform.i_q) for work in magnets
-            ),
+            magnets=of_magnets,
             magnet_states=tuple(state for work in magnets for state in work.states),
+            finer_states=tuple(state for work in magnets for state in work.finer_states),
+            table_errors=tables,
         )
         write_text(stage / VERDICT_FILE, json_text(verdict_record(verdict, orders)))
         if self.on_verdict is not None:

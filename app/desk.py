@@ -8,10 +8,11 @@ from pathlib import Path
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
+from lamwright.postprocess.demagnetisation import MagnetState, magnet_states
 from lamwright.postprocess.figures import Composer, write_figure
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.chains import OperatingPoint, solve_chain
-from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level
+from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level, finer_field
 from lamwright.solver.estimate_stress import finer_stress, peak_errors, zone_peaks
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.foreseen import Node
@@ -75,6 +76,20 @@ class Desk:
         if self._level is None:
             self._level = fine_level(self._model, section, winding)
         return changes(self._level, solution)
+
+    def finer_magnets(
+        self, section: CrossSection, winding: WindingTable, solution: FieldSolution
+    ) -> tuple[MagnetState, ...]:
+        """The state of every magnet in a solution of the model, on a mesh four times as fine."""
+        assert self._model is not None
+        law = self._model.settings.magnet
+        assert law is not None
+        if self._level is None:
+            self._level = fine_level(self._model, section, winding)
+        level = self._level
+        a = finer_field(level, solution)[1]
+        rotor = level.sector.rotor
+        return magnet_states(rotor, section.rotor, a[: len(rotor.nodes)], law)
 
     def stress(
         self, section: CrossSection, card: SteelCard, speed: float, settings: StressSettings

@@ -8,8 +8,9 @@ from lamwright.postprocess.error_bars import stress_errors
 from lamwright.postprocess.magnet_cautions import LOAD_LEFT_OUT
 from lamwright.postprocess.quantities import scaled_by_key
 from lamwright.postprocess.rib_figures import mean_yield, rotor_errors, rotor_figures
-from lamwright.postprocess.rib_tables import elastic_figures
+from lamwright.postprocess.rib_tables import elastic_errors, elastic_figures
 from lamwright.postprocess.summary import stress_figures
+from lamwright.solver.estimate_stress import BEYOND
 
 from .ribbed import Ribbed, RibChapter
 
@@ -24,15 +25,21 @@ def elastic_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
         name = ribbed.machine.design.name
         compose = partial(stress_figure, name, section, stress.solution, stress.report)
         write_figure(stage, "stress", compose)
+    mean = mean_yield(stress.report)
+    means = {}
+    for own, finer in zip(mean, mean_yield(stress.finer), strict=False):
+        means = scaled_by_key(own, {"speed": BEYOND * abs(finer.speed - own.speed)})
     return RibChapter(
-        figures=(stress_figures(stress.report), rotor, *mean_yield(stress.report)),
+        figures=(stress_figures(stress.report), rotor, *mean),
         cautions=(
             *(() if ribbed.machine.magnet is None else (LOAD_LEFT_OUT,)),
             *detail_cautions(section, ribbed.machine.rotor_steel, ribbed.overspeed),
         ),
-        of_ribs=elastic_figures(section, stress.report, stress.zone_errors),
+        of_ribs=elastic_figures(section, stress.report),
+        rib_errors=elastic_errors(section, stress.report, stress.finer, stress.zone_errors),
         errors={
             **stress_errors(stress.report, stress.finer, stress.zone_errors),
             **scaled_by_key(rotor, rotor_errors(stress.report, stress.finer)),
+            **means,
         },
     )

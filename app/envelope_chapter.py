@@ -26,7 +26,7 @@ from lamwright.postprocess.figures_envelope import (
     write_envelope,
 )
 from lamwright.postprocess.landmarks import landmarks
-from lamwright.postprocess.quantities import RPM, shown_as
+from lamwright.postprocess.quantities import CHECK, RPM, STATED, shown_as
 from lamwright.postprocess.terminals import Terminals, terminals
 from lamwright.postprocess.voltage_run import (
     Feed,
@@ -76,7 +76,7 @@ class RunFigures:
     """A run in time on constant voltage, from zero current to a point of the envelope."""
 
     speed: float = field(
-        metadata=shown_as("voltage_run_speed_rpm", "voltage run, speed", "1/min", RPM)
+        metadata=shown_as("voltage_run_speed_rpm", "voltage run, speed", "1/min", RPM, exact=STATED)
     )
     current_difference: float = field(
         metadata=shown_as(
@@ -84,6 +84,7 @@ class RunFigures:
             "voltage run, end off the table: current",
             "%",
             100.0,
+            exact=CHECK,
         )
     )
     torque_difference: float = field(
@@ -92,11 +93,16 @@ class RunFigures:
             "voltage run, end off the table: torque",
             "%",
             100.0,
+            exact=CHECK,
         )
     )
     energy_gap: float = field(
         metadata=shown_as(
-            "voltage_run_energy_gap_percent", "voltage run, what its energies lack", "%", 100.0
+            "voltage_run_energy_gap_percent",
+            "voltage run, what its energies lack",
+            "%",
+            100.0,
+            exact=CHECK,
         )
     )
     damping: float = field(

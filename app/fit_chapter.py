@@ -3,11 +3,13 @@
 from pathlib import Path
 
 from lamwright.geometry.errors import NotConverged
+from lamwright.postprocess.figure_errors import lacking_errors
 from lamwright.postprocess.fit_figures import (
     fit_cautions,
     fit_figures,
     hot_gap,
     pressed_errors,
+    pressed_rib_errors,
     pressed_ribs,
 )
 from lamwright.postprocess.fit_study import fit_study
@@ -44,11 +46,15 @@ def fit_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
         from lamwright.postprocess.figures_fit import write_fit
 
         write_fit(stage, design.name, study)
+    figures = fit_figures(study, machine)
+    errors = pressed_errors(study, machine)
     return RibChapter(
-        figures=fit_figures(study, machine),
+        figures=figures,
         cautions=tuple(fit_cautions(study, machine, ribbed.overspeed)),
         not_given=tuple(lacking),
         of_ribs=pressed_ribs(study),
-        errors=pressed_errors(study),
+        rib_errors=pressed_rib_errors(study),
+        errors=errors,
+        without_error=lacking_errors(figures, errors),
         facts={"worst_pressed_state": study.worst.name},
     )

@@ -3,7 +3,8 @@
 from pathlib import Path
 
 from lamwright.postprocess.life_figures import life_cautions, life_figures, local_rule
-from lamwright.postprocess.rib_life import zone_lives, zone_stress
+from lamwright.postprocess.quantities import scaled_by_key
+from lamwright.postprocess.rib_life import life_errors, zone_lives, zone_stress
 
 from .ribbed import Ribbed, RibChapter
 
@@ -25,7 +26,8 @@ def life_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
     figures = life_figures(lives, data, share)
     # Of the shortest life: N goes with stress to the power of 1/b, by every rule nearly or more.
     least = min(range(len(lives)), key=lambda k: lives[k].median)
-    steep = float(stress.zone_errors[least]) / abs(data.strength_exponent)
+    off = [float(share) for share in stress.zone_errors]
+    steep = off[least] / abs(data.strength_exponent)
     return RibChapter(
         figures=(figures,),
         cautions=(*_of_spin_alone(ribbed), *life_cautions(lives, card, data)),
@@ -37,7 +39,12 @@ def life_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
                 ("life_shortest_50_percent_cycles", figures.median),
                 ("life_shortest_97_7_percent_cycles", figures.high),
             )
-        },
+        }
+        # By every rule the amplitude goes with the stress nearly or less than in proportion.
+        | scaled_by_key(figures, {"amplitude": off[least] * figures.amplitude}),
+        rib_errors=tuple(
+            life_errors(life, share, data) for life, share in zip(lives[:-1], off, strict=False)
+        ),
         facts={
             "life_method": data.method,
             "life_local_stress": local_rule(pulled, factor, card, data),

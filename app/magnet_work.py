@@ -1,6 +1,6 @@
 """The fields that only a machine with magnets needs: without current, and against the magnets."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
@@ -9,13 +9,16 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
+from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.demagnetisation import (
     MagnetState,
     magnet_states,
     opposing_angle,
+    worst_places,
     worst_states,
 )
 from lamwright.postprocess.magnet_cautions import magnet_cautions
+from lamwright.postprocess.magnet_errors import magnet_errors
 from lamwright.postprocess.magnet_figures import (
     MagnetFigures,
     demagnetising_current,
@@ -23,9 +26,12 @@ from lamwright.postprocess.magnet_figures import (
 )
 from lamwright.postprocess.no_load import NoLoad, linkage_spectrum, no_load, no_load_positions
 from lamwright.postprocess.operating import dq_currents
-from lamwright.postprocess.skew import mean_solution, step_point
+from lamwright.postprocess.skew import mean_change, mean_solution, step_point
+from lamwright.postprocess.table_errors import Columns, no_load_columns
 from lamwright.postprocess.tables import linkage_orders_csv, no_load_csv
 from lamwright.solver.chains import OperatingPoint
+from lamwright.solver.estimate import NoLoadErrors, no_load_errors, sample_places
+from lamwright.solver.estimate_step import Change
 from lamwright.solver.field import MagneticModel
 from lamwright.solver.magnet import magnet_law
 from lamwright.solver.model import remagnetised
@@ -45,7 +51,9 @@ class MagnetWork:
     """No load and demagnetisation of a machine with magnets."""
 
     record: NoLoad
+    errors: NoLoadErrors
     states: tuple[MagnetState, ...]  # of each magnet at its worst position
+    finer_states: tuple[MagnetState, ...]  # the same on the finer mesh
     fields: tuple[FieldSolution, ...]
 
     def write(self, folder: Path) -> None:
@@ -73,6 +81,23 @@ class MagnetWork:
             (i_d, i_q),
         )
 
+    def error_bars(
+        self, machine: Machine, figures: MagnetFigures, i_d: float, i_q: float
+    ) -> dict[str, float]:
+        """Errors of its figures by key, in their units."""
+        return magnet_errors(
+            machine.design,
+            figures,
+            self.errors,
+            (self.record.psi_d, self.record.psi_q),
+            (i_d, i_q),
+            (self.states, self.finer_states),
+        )
+
+    def columns(self, figures: MagnetFigures, errors: Mapping[str, float]) -> dict[str, Columns]:
+        """Errors of the columns of its tables, by file."""
+        return no_load_columns(figures, errors, self.errors)
+
 
 def magnet_work(
     machine: Machine, section: CrossSection, model: MagneticModel, crew: Crew[Desk]
@@ -94,6 +119,13 @@ def magnet_work(
         for steps, point in zip(bare, still, strict=True)
     ]
     record = no_load(whole, section.rotor_period)
+    winding, places = winding_table(machine.design), sample_places(whole)
+    samples = [partial(_change, section, winding, field) for k in places for field in bare[k]]
+    done, count = crew.share(samples, lambda count: None), len(offsets)
+    changed = {
+        place: mean_change(done[at * count : (at + 1) * count], offsets, pole_pairs)
+        for at, place in enumerate(places)
+    }
     gamma = opposing_angle(record.psi_d, record.psi_q)
     i_d, i_q = dq_currents(demagnetising_current(machine.design), gamma)
     if law != model.settings.magnet:
@@ -103,8 +135,18 @@ def magnet_work(
     rotor = model.sector.rotor
     loaded = [field for steps in opposed for field in steps]
     states = [magnet_states(rotor, section.rotor, field.a_rotor, law) for field in loaded]
+    worst = worst_places(states)
+    at_worst = sorted(set(worst))
+    again = [partial(_finer, section, winding, loaded[k]) for k in at_worst]
+    finer = dict(zip(at_worst, crew.share(again, lambda count: None), strict=True))
     unloaded = [field for steps in bare for field in steps]
-    return MagnetWork(record, worst_states(states), (*unloaded, *loaded))
+    return MagnetWork(
+        record=record,
+        errors=no_load_errors(whole, changed),
+        states=worst_states(states),
+        finer_states=tuple(finer[k][magnet] for magnet, k in enumerate(worst)),
+        fields=(*unloaded, *loaded),
+    )
 
 
 def _solved(
@@ -121,6 +163,18 @@ def _solved(
     fields = [field for chain in done for field in chain]
     by_step = [fields[at : at + len(points)] for at in range(0, len(fields), len(points))]
     return list(zip(*by_step, strict=True))
+
+
+def _change(
+    section: CrossSection, winding: WindingTable, solution: FieldSolution, desk: Desk
+) -> Change:
+    return desk.change(section, winding, solution)
+
+
+def _finer(
+    section: CrossSection, winding: WindingTable, solution: FieldSolution, desk: Desk
+) -> tuple[MagnetState, ...]:
+    return desk.finer_magnets(section, winding, solution)
 
 
 def _chain(points: Sequence[OperatingPoint], desk: Desk) -> tuple[FieldSolution, ...]:

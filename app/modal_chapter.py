@@ -8,13 +8,17 @@ from lamwright.postprocess.modal_tables import (
     Speeds,
     meetings_csv,
     modal_cautions,
+    modal_columns,
+    modal_errors,
     modal_figures,
     modes_csv,
 )
 from lamwright.postprocess.quantities import RPM
 from lamwright.postprocess.resonances import Lamination, orders_of
-from lamwright.solver.modal import lowest_modes
-from lamwright.solver.modal_bodies import rotor_period, stator_period
+from lamwright.solver.estimate_mesh import SparseRows
+from lamwright.solver.modal import Period, lowest_modes
+from lamwright.solver.modal_bodies import finer_rotor, finer_stator, rotor_period, stator_period
+from lamwright.solver.modal_error import frequency_errors
 from lamwright.solver.rotor_stress import elastic_material
 
 from .ribbed import Ribbed, RibChapter
@@ -40,6 +44,8 @@ def modal_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
         figures=modal_figures(laminations, speeds),
         cautions=modal_cautions(laminations, speeds),
         not_given=_not_given(ribbed),
+        errors=modal_errors(laminations, speeds),
+        table_errors=modal_columns(laminations, speeds),
     )
 
 
@@ -47,31 +53,43 @@ def _laminations(ribbed: Ribbed) -> tuple[Lamination, Lamination, Lamination]:
     section, machine = ribbed.section, ribbed.machine
     material = elastic_material(machine.rotor_steel)
     mesh = ribbed.stress.solution.mesh
-    periods = [
-        ("rotor_free", "rotor, bore free", rotor_period(section, mesh, material, is_held=False)),
-        ("rotor_held", "rotor, bore held", rotor_period(section, mesh, material, is_held=True)),
-        (
-            "stator",
-            "stator",
-            stator_period(
-                section,
-                elastic_material(machine.stator_steel),
-                ribbed.wishes.teeth_mass_factor or 1.0,
-            ),
-        ),
-    ]
-    free, held, stator = (
-        Lamination(
-            key=key,
-            name=name,
-            period=period,
-            modes=lowest_modes(period, MODES),
-            orders=orders_of(section, is_stator=key == "stator"),
-            sectors=section.sectors,
-        )
-        for key, name, period in periods
+    free, held = (
+        rotor_period(section, mesh, material, is_held=is_held) for is_held in (False, True)
     )
-    return free, held, stator
+    of_stator = elastic_material(machine.stator_steel), ribbed.wishes.teeth_mass_factor or 1.0
+    stator = stator_period(section, *of_stator)
+    return (
+        _lamination(
+            ribbed,
+            ("rotor_free", "rotor, bore free"),
+            free,
+            finer_rotor(section, free, material, is_held=False),
+        ),
+        _lamination(
+            ribbed,
+            ("rotor_held", "rotor, bore held"),
+            held,
+            finer_rotor(section, held, material, is_held=True),
+        ),
+        _lamination(
+            ribbed, ("stator", "stator"), stator, finer_stator(section, stator, *of_stator)
+        ),
+    )
+
+
+def _lamination(
+    ribbed: Ribbed, names: tuple[str, str], period: Period, finer: tuple[Period, SparseRows]
+) -> Lamination:
+    modes = lowest_modes(period, MODES)
+    return Lamination(
+        key=names[0],
+        name=names[1],
+        period=period,
+        modes=modes,
+        orders=orders_of(ribbed.section, is_stator=names[0] == "stator"),
+        sectors=ribbed.section.sectors,
+        errors=frequency_errors(*finer, modes),
+    )
 
 
 def _not_given(ribbed: Ribbed) -> tuple[str, ...]:

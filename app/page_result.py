@@ -59,7 +59,7 @@ def coarse_record(machine: Machine, work: QuickWork, seconds: float) -> Record:
                 "barrier": row.rib.barrier,
                 "width_mm": round(MM * row.rib.width, 6),
                 "peak_mpa": MPA * row.peak,
-                "peak_error_mpa": None,
+                "peak_mpa_error": None,
                 "tension_mean_mpa": MPA * row.mean_tension,
                 "yield_margin": row.yield_margin,
             }
@@ -160,7 +160,7 @@ def _torque_of(path: Path) -> Record:
 
 
 def _ribs_of(path: Path) -> list[Record]:
-    numbers = ("width_mm", "peak_mpa", "peak_error_mpa", "tension_mean_mpa", "yield_margin")
+    numbers = ("width_mm", "peak_mpa", "peak_mpa_error", "tension_mean_mpa", "yield_margin")
     return [
         {
             "name": row["rib"],

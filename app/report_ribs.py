@@ -25,7 +25,7 @@ RIB_COLUMNS = (
     ("tension_mean_mpa", "mean tension, MPa"),
     ("bending_mpa", "bending, MPa"),
     ("peak_mpa", "peak, MPa"),
-    ("peak_error_mpa", "+-"),
+    ("peak_mpa_error", "+-"),
     ("yield_margin", "yield margin"),
     ("speed_first_yield_rpm", "first yield, 1/min"),
 )

@@ -8,10 +8,12 @@ from pathlib import Path
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.whole_file import write_text
+from lamwright.postprocess.figure_errors import error_values, without_error
 from lamwright.postprocess.files import json_text
 from lamwright.postprocess.quantities import Figure, figures_of
 from lamwright.postprocess.rib_cautions import rib_cautions
-from lamwright.postprocess.rib_tables import RibRow, rib_rows, ribs_csv
+from lamwright.postprocess.rib_tables import RibRow, rib_columns, rib_rows, ribs_csv
+from lamwright.postprocess.table_errors import Columns
 from lamwright.postprocess.verdict import RPM
 from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 
@@ -32,6 +34,8 @@ class RibsReport:
     sections: tuple[tuple[str, tuple[Figure, ...]], ...]  # of each chapter
     ribs: tuple[RibRow, ...]  # of the rotor's own period
     errors: Mapping[str, float]  # by the figures' keys, in their units
+    without_error: Mapping[str, str]  # why others have none, beside what their declaration says
+    table_errors: Mapping[str, Columns]  # of the columns, by file
     facts: Mapping[str, str | bool]  # by key, what is no number
     tables: Mapping[str, Rows]  # by key
     least_margin: float  # yield margin asked for
@@ -92,14 +96,22 @@ def write_results(
     chapters = [made_chapter(watch, name, partial(write, ribbed, stage)) for name, write in makers]
     whole = [chapter for chapter in chapters if isinstance(chapter, RibChapter)]
     groups = [chapter.of_ribs for chapter in whole if chapter.of_ribs]
+    of_ribs = [chapter.rib_errors for chapter in whole if chapter.rib_errors]
+    bars = [{k: v for own in rib for k, v in own.items()} for rib in zip(*of_ribs, strict=True)]
+    rows = rib_rows(ribbed.section, ribbed.stress.report, *groups, errors=bars)
     report = RibsReport(
         design_name=machine.design.name,
         sections=tuple(
             (name, tuple(figure for group in chapter.figures for figure in figures_of(group)))
             for (name, _), chapter in zip(makers, chapters, strict=True)
         ),
-        ribs=rib_rows(ribbed.section, ribbed.stress.report, *groups),
-        errors={key: error for chapter in whole for key, error in chapter.errors.items()},
+        ribs=rows,
+        errors={key: error for chapter in chapters for key, error in chapter.errors.items()},
+        without_error={key: why for one in chapters for key, why in one.without_error.items()},
+        table_errors={
+            TABLE_FILE: rib_columns(rows),
+            **{name: columns for one in chapters for name, columns in one.table_errors.items()},
+        },
         facts={key: fact for chapter in whole for key, fact in chapter.facts.items()},
         tables={key: rows for chapter in whole for key, rows in chapter.tables.items()},
         least_margin=machine.design.limits.least_yield_margin,
@@ -129,12 +141,8 @@ def write_results(
 
 
 def _record(report: RibsReport, machine: Machine, tolerance: ToleranceName) -> dict[str, object]:
-    values: dict[str, float] = {}
-    for key, figure in report.figures.items():
-        values[key] = figure.value
-        if key in report.errors:
-            values[f"{key}_error"] = report.errors[key]
-    assert len(report.figures) == sum(len(figures) for _, figures in report.sections)
+    figures = [figure for _, own in report.sections for figure in own]
+    values = error_values(figures, report.errors)
     return {
         "design": report.design_name,
         "passes": report.passes,
@@ -143,6 +151,8 @@ def _record(report: RibsReport, machine: Machine, tolerance: ToleranceName) -> d
         **report.facts,
         "ribs": [row.record for row in report.ribs],
         **{key: list(rows) for key, rows in report.tables.items()},
+        "table_errors": {name: dict(columns) for name, columns in report.table_errors.items()},
+        "errors_not_given": without_error(figures, report.errors, report.without_error),
         "estimates": [key for key, figure in report.figures.items() if figure.is_estimate],
         "not_given": list(report.not_given),
         "cautions": list(report.cautions),

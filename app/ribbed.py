@@ -59,9 +59,9 @@ class RibChapter(Chapter):
     # One group for each rib of the rotor's own period, fields made by `quantities.shown_as`; what
     # has no meaning for a rib is nan or infinite.
     of_ribs: "tuple[DataclassInstance, ...]" = ()
-    errors: Mapping[str, float] = field(default_factory=dict)  # by the figures' keys, their units
     facts: Mapping[str, str | bool] = field(default_factory=dict)  # by key: what is no number
     tables: Mapping[str, Rows] = field(default_factory=dict)  # by key, of `ribs.json` as they are
+    rib_errors: tuple[Mapping[str, float], ...] = ()  # of each rib, by the keys of `of_ribs`
 
 
 # The machine and the hidden folder whose files move to the results when all chapters are done.

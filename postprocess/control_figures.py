@@ -9,7 +9,7 @@ from .control import Control
 from .control_files import DEGREE, LINE_RMS
 from .control_points import control_points
 from .control_tables import point_values
-from .quantities import shown_as, shown_estimate
+from .quantities import CHECK, STATED, shown_as, shown_estimate
 from .torque_limit import torque_limit
 from .torque_lines import torque_lines
 
@@ -18,7 +18,9 @@ from .torque_lines import torque_lines
 class CurveFigures:
     """Most torque per ampere at the current limit."""
 
-    current: float = field(metadata=shown_as("current_limit_a", "current limit, peak", "A"))
+    current: float = field(
+        metadata=shown_as("current_limit_a", "current limit, peak", "A", exact=STATED)
+    )
     torque: float = field(
         metadata=shown_as("torque_at_current_limit_nm", "torque at the current limit", "N m")
     )
@@ -54,19 +56,23 @@ class ReadingFigures:
 
     torque_most: float = field(
         metadata=shown_as(
-            "table_torque_error_most_nm", "drive's table: greatest torque error", "N m"
+            "table_torque_error_most_nm", "drive's table: greatest torque error", "N m", exact=CHECK
         )
     )
     torque_rms: float = field(
-        metadata=shown_as("table_torque_error_rms_nm", "drive's table: torque error, rms", "N m")
+        metadata=shown_as(
+            "table_torque_error_rms_nm", "drive's table: torque error, rms", "N m", exact=CHECK
+        )
     )
     current_most: float = field(
         metadata=shown_as(
-            "table_current_error_most_a", "drive's table: greatest current error", "A"
+            "table_current_error_most_a", "drive's table: greatest current error", "A", exact=CHECK
         )
     )
     current_rms: float = field(
-        metadata=shown_as("table_current_error_rms_a", "drive's table: current error, rms", "A")
+        metadata=shown_as(
+            "table_current_error_rms_a", "drive's table: current error, rms", "A", exact=CHECK
+        )
     )
     voltage_over: float = field(
         metadata=shown_estimate(
@@ -74,6 +80,7 @@ class ReadingFigures:
             "drive's table: most voltage over the limit",
             "V rms",
             LINE_RMS,
+            exact=CHECK,
         )
     )
 

@@ -32,6 +32,7 @@ class MagnetState:
     share_below: float  # of the area, 0 to 1, below the knee
     flux_low: float  # T, along the magnetisation; 99 % of the area have as much or more
     flux_mean: float  # T
+    grain: float  # of the area, the most that a point of the mesh stands for
 
 
 def magnet_states(
@@ -58,6 +59,14 @@ def worst_states(states: Sequence[tuple[MagnetState, ...]]) -> tuple[MagnetState
     )
 
 
+def worst_places(states: Sequence[tuple[MagnetState, ...]]) -> tuple[int, ...]:
+    """Where among the fields each magnet is worst, by the rule of `worst_states`."""
+    worst = worst_states(states)
+    return tuple(
+        next(k for k, own in enumerate(states) if own[m] is state) for m, state in enumerate(worst)
+    )
+
+
 def opposing_angle(no_load_psi_d: float, no_load_psi_q: float) -> float:
     """Current angle gamma in rad whose field opposes the magnets' linkage (V s)."""
     return math.atan2(-no_load_psi_q, -no_load_psi_d)
@@ -80,4 +89,5 @@ def _state(rotor: PlanarMesh, region: Region, a_rotor: FloatArray, law: MagnetLa
         share_below=float(quad.weight[flux < law.knee].sum()) / area,
         flux_low=float(flux.flat[low]),
         flux_mean=float(np.sum(quad.weight * flux)) / area,
+        grain=float(quad.weight.max()) / area,
     )

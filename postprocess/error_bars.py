@@ -2,8 +2,8 @@
 
 Numerical errors alone: neither the steel curve's nor those of the formulas for resistance and end
 winding are in them. Figures that are prescribed (currents, speeds, limits) or formulas alone have
-none, and so have the counts and the figures that state differences themselves. Currents and
-linkages hold at the current angle stated, whose own error is that of the best angle.
+none, and so have the counts and the figures that state differences themselves; each says why
+(`quantities`). Linkages hold at the currents stated; these err as the best angle does.
 """
 
 import math
@@ -39,17 +39,20 @@ def magnetic_errors(
         magnet_psi_q: mean psi_q at no load in V s, taken as true.
     """
     m = magnetic
+    angle = angle_error(errors.torque / m.torque, AngleSettings().tolerance)
 
     def saliency(psi_d: float, psi_q: float) -> float:
         return saliency_ratio(m.i_d, m.i_q, psi_d, psi_q - magnet_psi_q)
 
-    return _by_key(
+    return by_key(
         m,
         {
             "torque": errors.torque,
             "ripple": errors.ripple,
             "saliency": errors.linkages.of(saliency, m.psi_d, m.psi_q),
-            "gamma": angle_error(errors.torque / m.torque, AngleSettings().tolerance),
+            "gamma": angle,
+            "i_d": angle * abs(m.i_q),
+            "i_q": angle * abs(m.i_d),
             "psi_d": errors.psi_d,
             "psi_q": errors.psi_q,
             "torque_linkage": errors.torque_linkage,
@@ -76,7 +79,7 @@ def terminal_errors(
             end_inductance=end_inductance,
         )
 
-    return _by_key(
+    return by_key(
         terminal,
         {
             "power_factor": known.of(lambda d, q: state(d, q).power_factor, m.psi_d, m.psi_q),
@@ -101,7 +104,7 @@ def stress_errors(report: RibReport, finer: RibReport, zone_errors: FloatArray) 
         name: BEYOND * abs(getattr(fine, name) - getattr(stress, name))
         for name in ("tension", "growth", "gap_left")
     }
-    return _by_key(
+    return by_key(
         stress,
         {
             "peak": peak * stress.peak,
@@ -114,7 +117,7 @@ def stress_errors(report: RibReport, finer: RibReport, zone_errors: FloatArray) 
     )
 
 
-def _by_key(group: "DataclassInstance", errors: Mapping[str, float]) -> dict[str, float]:
+def by_key(group: "DataclassInstance", errors: Mapping[str, float]) -> dict[str, float]:
     """Errors in SI by field as errors in the figures' units by key.
 
     Raises:

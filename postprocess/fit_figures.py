@@ -9,8 +9,9 @@ from lamwright.geometry.design_file import Machine
 from lamwright.solver.estimate_stress import BEYOND
 from lamwright.solver.pressed_stress import Loosening
 
+from .figure_errors import differences
 from .fit_study import UM, FitStudy, PressedState
-from .quantities import RPM, shown_as
+from .quantities import RPM, STATED, scaled_by_key, shown_as
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance
@@ -24,7 +25,7 @@ class ColdFit:
     """Pressure between lamination and shaft, as cold as the drawing."""
 
     interference: float = field(
-        metadata=shown_as("radial_interference_um", "radial interference", "um", 1e6)
+        metadata=shown_as("radial_interference_um", "radial interference", "um", 1e6, exact=STATED)
     )
     rest: float = field(
         metadata=shown_as("fit_pressure_rest_mpa", "mean fit pressure at rest", "MPa", MPA)
@@ -228,14 +229,35 @@ def pressed_ribs(study: FitStudy) -> tuple[PressedRib, ...]:
     )
 
 
-def pressed_errors(study: FitStudy) -> dict[str, float]:
-    """Errors by key in the figures' units, from the mesh four times as fine."""
+def pressed_errors(study: FitStudy, machine: Machine) -> dict[str, float]:
+    """Errors by key in the figures' units.
+
+    Peak and margin from the mesh four times as fine; all others are bounds: by how much they
+    differ from those of a coarser mesh.
+    """
     worst, finer = study.worst.report, study.finer
     error = BEYOND * abs(finer.peak - worst.peak)
     return {
+        **differences(fit_figures(study, machine), _coarser(study, machine)),
         "peak_pressed_mpa": MPA * error,
         "yield_margin_pressed": worst.yield_margin * error / worst.peak,
     }
+
+
+def _coarser(study: FitStudy, machine: Machine) -> "tuple[DataclassInstance, ...]":
+    return () if study.coarser is None else fit_figures(study.coarser, machine)
+
+
+def pressed_rib_errors(study: FitStudy) -> tuple[dict[str, float], ...]:
+    """Of each rib, from the mesh four times as fine: the shares by which the worst state is off."""
+    found = []
+    rows = zip(pressed_ribs(study), study.worst.report.ribs, study.finer.ribs, strict=True)
+    for rib, own, fine in rows:
+        peak = BEYOND * abs(fine.peak - own.peak) / own.peak
+        tension = BEYOND * abs(fine.mean_tension - own.mean_tension)
+        errors = {"tension": tension, "peak": peak * rib.peak, "margin": peak * rib.margin}
+        found.append(scaled_by_key(rib, errors))
+    return tuple(found)
 
 
 def fit_cautions(study: FitStudy, machine: Machine, overspeed: float) -> Iterator[str]:

@@ -6,6 +6,7 @@ Under a magnet, where the mesh does not resolve the contact, no peak is taken.
 Source: Lame's rings generalised to any bore by finite elements; heat as a free strain (derived).
 """
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -13,13 +14,14 @@ import numpy as np
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.design_fit import FitDesign, HotDesign
+from lamwright.geometry.errors import NotConverged
 from lamwright.geometry.hot_steel import steel_at
 from lamwright.geometry.section import CrossSection, rotor_cell
 from lamwright.solver.elastic import ElasticMaterial
 from lamwright.solver.pressed import Fit, Heat, Pressed, pressed, with_fine_bore
 from lamwright.solver.pressed_stress import Loosening, PressedStress, loosening, stress_at
 from lamwright.solver.refine import refined
-from lamwright.solver.rotor_stress import elastic_material, lamination_circles
+from lamwright.solver.rotor_stress import coarser_lamination, elastic_material, lamination_circles
 from lamwright.solver.shaft import Shaft
 from lamwright.solver.types import PlanarMesh
 
@@ -49,6 +51,7 @@ class FitStudy:
     loose_cold: Loosening
     loose_hot: Loosening | None  # without temperatures there is none
     needs_expansion: bool  # temperatures are stated, the card has no expansion
+    coarser: "FitStudy | None"  # the same on a coarser mesh; None where that finds no contact
 
     @property
     def worst(self) -> PressedState:
@@ -81,13 +84,36 @@ def fit_study(
     needs_expansion = hot is not None and machine.rotor_steel.expansion_um_per_m_k is None
     if needs_expansion:
         hot = None
-    mesh = with_fine_bore(section, mesh)
-    cold = _pressed(machine, section, mesh, None)
     speeds = (
         {"overspeed": overspeed}
         if design.rotor.fit is None and hot is None
         else {"rest": 0.0, "maximum speed": maximum, "overspeed": overspeed}
     )
+    mesh = with_fine_bore(section, mesh)
+    own = _study(machine, section, mesh, hot, speeds, needs_expansion)
+    worst = own.worst
+    every = np.arange(len(mesh.elements))
+    fine_mesh = refined(mesh, every, lamination_circles(section))
+    fine = _pressed(machine, section, fine_mesh, hot if worst.is_hot else None)
+    finer = _state(machine, fine, worst.is_hot, "", worst.report.speed)
+    try:
+        coarse = with_fine_bore(section, coarser_lamination(section))
+        coarser = _study(machine, section, coarse, hot, speeds, needs_expansion)
+    except NotConverged:
+        return replace(own, finer=finer.report)
+    return replace(own, finer=finer.report, coarser=coarser)
+
+
+def _study(
+    machine: Machine,
+    section: CrossSection,
+    mesh: PlanarMesh,
+    hot: HotDesign | None,
+    speeds: Mapping[str, float],
+    needs_expansion: bool,
+) -> FitStudy:
+    """All states on one mesh; its worst is its own `finer`."""
+    cold = _pressed(machine, section, mesh, None)
     items = {False: cold}
     if hot is not None:
         items[True] = _pressed(machine, section, mesh, hot)
@@ -96,19 +122,15 @@ def fit_study(
         for is_hot, item in items.items()
         for place, speed in speeds.items()
     )
-    worst = min(states, key=lambda state: state.report.yield_margin)
-    every = np.arange(len(mesh.elements))
-    fine_mesh = refined(mesh, every, lamination_circles(section))
-    fine = _pressed(machine, section, fine_mesh, hot if worst.is_hot else None)
-    finer = _state(machine, fine, worst.is_hot, "", worst.report.speed)
     return FitStudy(
         section=section,
         states=states,
-        finer=finer.report,
+        finer=min((state.report for state in states), key=lambda report: report.yield_margin),
         cold=cold,
         loose_cold=loosening(cold),
         loose_hot=loosening(items[True]) if hot is not None else None,
         needs_expansion=needs_expansion,
+        coarser=None,
     )
 
 

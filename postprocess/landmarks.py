@@ -14,7 +14,7 @@ import numpy.typing as npt
 from lamwright.solver.types import FloatArray
 
 from .envelope import Corner, Envelope, Region, corner, envelope
-from .quantities import RPM, shown_as
+from .quantities import RPM, STATED, shown_as
 from .terminals import Terminals
 from .within_limits import most_power_factor
 
@@ -33,10 +33,12 @@ class CurrentFigures:
     """The machine at its current limit, whatever the voltage."""
 
     current: float = field(
-        metadata=shown_as("maximum_current_a", "current limit, peak of a phase", "A")
+        metadata=shown_as("maximum_current_a", "current limit, peak of a phase", "A", exact=STATED)
     )
     voltage: float = field(
-        metadata=shown_as("voltage_limit_phase_v", "voltage limit, peak of a phase", "V")
+        metadata=shown_as(
+            "voltage_limit_phase_v", "voltage limit, peak of a phase", "V", exact=STATED
+        )
     )
     power_factor: float = field(
         metadata=shown_as(

@@ -7,7 +7,7 @@ from lamwright.geometry.design import SteelCard
 from lamwright.geometry.design_fatigue import FatigueData
 from lamwright.solver.types import FloatArray
 
-from .quantities import shown_as, shown_estimate
+from .quantities import CARD, shown_as, shown_estimate
 from .rib_life import RibLife
 
 MPA = 1e6  # Pa per MPa
@@ -45,10 +45,18 @@ class LifeFigures:
         )
     )
     overspeed_share: float = field(
-        metadata=shown_as("life_overspeed_share_percent", "starts that go to overspeed", "%", 100.0)
+        metadata=shown_as(
+            "life_overspeed_share_percent",
+            "starts that go to overspeed",
+            "%",
+            100.0,
+            exact="stated by the command",
+        )
     )
     tested_to: float = field(
-        metadata=shown_as("life_line_tested_to_cycles", "the card's line was tested to", "")
+        metadata=shown_as(
+            "life_line_tested_to_cycles", "the card's line was tested to", "", exact=CARD
+        )
     )
 
 

@@ -29,7 +29,7 @@ import numpy as np
 from lamwright.geometry.errors import LamwrightError
 from lamwright.solver.types import FloatArray
 
-from .quantities import shown_as, shown_estimate
+from .quantities import STATED, shown_as, shown_estimate
 from .skew import skew_cautions
 
 DEGREE = math.pi / 180.0
@@ -112,7 +112,7 @@ class LockedCurves:
 class LockedFigures:
     """What the curves of one current come to."""
 
-    current: float = field(metadata=shown_as("current_a", "current", "A d.c."))
+    current: float = field(metadata=shown_as("current_a", "current", "A d.c.", exact=STATED))
     torque: float = field(metadata=shown_as("torque_peak_nm", "greatest torque", "N m"))
     torque_angle: float = field(
         metadata=shown_as("torque_peak_angle_mech_deg", "at the angle", "deg", 1.0 / DEGREE)

@@ -13,7 +13,7 @@ from lamwright.solver.types import FloatArray
 from .files import csv_text
 from .iron_loss import PARTS, IronLaws, loss_of_orders
 from .loss_surface import MOST_MISFIT
-from .quantities import RPM, shown_as, shown_estimate
+from .quantities import CHECK, FORMULA, RPM, STATED, shown_as, shown_estimate
 
 MOST_BEYOND = 0.1  # of the iron loss at frequencies no point of the card reaches
 MOST_DEPTHS = 1.0  # thickness of a strand over the penetration depth
@@ -23,17 +23,23 @@ MOST_DEPTHS = 1.0  # thickness of a strand over the penetration depth
 class PointFigures:
     """Where the losses are told."""
 
-    current: float = field(metadata=shown_as("loss_current_a", "losses: phase current, peak", "A"))
+    current: float = field(
+        metadata=shown_as("loss_current_a", "losses: phase current, peak", "A", exact=STATED)
+    )
     gamma: float = field(metadata=shown_as("loss_angle_el_deg", "its angle", "el deg", 180 / np.pi))
-    speed: float = field(metadata=shown_as("loss_speed_rpm", "speed", "1/min", RPM))
+    speed: float = field(metadata=shown_as("loss_speed_rpm", "speed", "1/min", RPM, exact=STATED))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class CopperFigures:
     """Direct-current copper loss at the winding's temperature."""
 
-    slots: float = field(metadata=shown_estimate("copper_slots_w", "copper in the slots", "W"))
-    ends: float = field(metadata=shown_estimate("copper_end_turns_w", "copper, end turns", "W"))
+    slots: float = field(
+        metadata=shown_estimate("copper_slots_w", "copper in the slots", "W", exact=FORMULA)
+    )
+    ends: float = field(
+        metadata=shown_estimate("copper_end_turns_w", "copper, end turns", "W", exact=FORMULA)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -47,10 +53,14 @@ class AcCopperFigures:
         )
     )
     closed: float = field(
-        metadata=shown_estimate("copper_ac_closed_percent", "the same, closed form", "%", 100.0)
+        metadata=shown_estimate(
+            "copper_ac_closed_percent", "the same, closed form", "%", 100.0, exact=FORMULA
+        )
     )
     depths: float = field(
-        metadata=shown_as("strand_penetration_depths", "strand over penetration depth", "")
+        metadata=shown_as(
+            "strand_penetration_depths", "strand over penetration depth", "", exact=FORMULA
+        )
     )
 
 
@@ -67,7 +77,9 @@ class IronFigures:
     eddy: float = field(metadata=shown_estimate("iron_eddy_w", "classical eddy currents", "W"))
     excess: float = field(metadata=shown_estimate("iron_excess_w", "excess", "W"))
     misfit: float = field(
-        metadata=shown_as("loss_points_misfit_percent", "loss points, greatest misfit", "%", 100.0)
+        metadata=shown_as(
+            "loss_points_misfit_percent", "loss points, greatest misfit", "%", 100.0, exact=CHECK
+        )
     )
     beyond: float = field(
         metadata=shown_as(
@@ -80,14 +92,18 @@ class IronFigures:
 class WindageFigures:
     """Windage by formula."""
 
-    windage: float = field(metadata=shown_estimate("windage_w", "windage, formula", "W"))
+    windage: float = field(
+        metadata=shown_estimate("windage_w", "windage, formula", "W", exact=FORMULA)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class BearingFigures:
     """Friction of bearings and seals by the stated torque."""
 
-    bearings: float = field(metadata=shown_estimate("bearings_w", "bearings and seals", "W"))
+    bearings: float = field(
+        metadata=shown_estimate("bearings_w", "bearings and seals", "W", exact=STATED)
+    )
 
 
 def iron_figures(coefficients: FloatArray, laws: IronLaws, omega_e: float) -> IronFigures:

@@ -9,7 +9,7 @@ from lamwright.solver.magnet import magnet_law
 
 from .demagnetisation import MagnetState
 from .no_load import NoLoad, cogging_torque, line_emf, linkage_spectrum, peak_linkage
-from .quantities import RPM, shown_as
+from .quantities import CARD, FORMULA, RPM, STATED, shown_as
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -47,20 +47,28 @@ class MagnetFigures:
     torque_share: float = field(
         metadata=shown_as("magnet_torque_nm", "torque of the no-load linkage", "N m")
     )
-    mass: float = field(metadata=shown_as("magnet_mass_kg", "mass of the magnets", "kg"))
+    mass: float = field(
+        metadata=shown_as("magnet_mass_kg", "mass of the magnets", "kg", exact=FORMULA)
+    )
     temperature: float = field(
-        metadata=shown_as("magnet_temperature_c", "temperature of the magnets", "C")
+        metadata=shown_as("magnet_temperature_c", "temperature of the magnets", "C", exact=STATED)
     )
     remanence: float = field(
-        metadata=shown_as("magnet_remanence_t", "remanence at that temperature", "T")
+        metadata=shown_as("magnet_remanence_t", "remanence at that temperature", "T", exact=CARD)
     )
     demagnetising_current: float = field(
-        metadata=shown_as("demagnetising_current_a", "demagnetising current, peak", "A")
+        metadata=shown_as(
+            "demagnetising_current_a", "demagnetising current, peak", "A", exact=STATED
+        )
     )
     demagnetising_temperature: float = field(
-        metadata=shown_as("demagnetising_temperature_c", "magnets' temperature against it", "C")
+        metadata=shown_as(
+            "demagnetising_temperature_c", "magnets' temperature against it", "C", exact=STATED
+        )
     )
-    knee: float = field(metadata=shown_as("magnet_knee_t", "flux density at the knee there", "T"))
+    knee: float = field(
+        metadata=shown_as("magnet_knee_t", "flux density at the knee there", "T", exact=CARD)
+    )
     below_knee: float = field(
         metadata=shown_as(
             "magnet_below_knee_percent", "area below the knee, worst magnet", "%", 100.0

@@ -8,7 +8,7 @@ import numpy as np
 from .coenergy_surface import CoenergySurface, incremental, linkages, node_residual, torque
 from .flux_map import FluxMap, linkage_torque, mean_torque
 from .operating import DEGREE, dq_currents
-from .quantities import shown_as
+from .quantities import CHECK, COUNT, STATED, shown_as
 
 ANGLES = 9001  # tried for most torque in half a turn: 0.02 degrees apart
 SAME = 1e-9  # of a torque, rounding
@@ -18,18 +18,24 @@ SAME = 1e-9  # of a torque, rounding
 class MapCounts:
     """What a map consists of."""
 
-    currents_d: int = field(metadata=shown_as("map_currents_d", "d-axis currents", ""))
-    currents_q: int = field(metadata=shown_as("map_currents_q", "q-axis currents", ""))
-    positions: int = field(metadata=shown_as("map_positions", "positions of each pair", ""))
-    solved: int = field(metadata=shown_as("map_points_solved", "pairs solved in this run", ""))
-    kept: int = field(metadata=shown_as("map_points_kept", "pairs kept from runs before", ""))
+    currents_d: int = field(metadata=shown_as("map_currents_d", "d-axis currents", "", exact=COUNT))
+    currents_q: int = field(metadata=shown_as("map_currents_q", "q-axis currents", "", exact=COUNT))
+    positions: int = field(
+        metadata=shown_as("map_positions", "positions of each pair", "", exact=COUNT)
+    )
+    solved: int = field(
+        metadata=shown_as("map_points_solved", "pairs solved in this run", "", exact=COUNT)
+    )
+    kept: int = field(
+        metadata=shown_as("map_points_kept", "pairs kept from runs before", "", exact=COUNT)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class MapFigures:
     """A map at rated current and the angle of most torque, and its greatest torque."""
 
-    current: float = field(metadata=shown_as("rated_current_a", "rated current", "A"))
+    current: float = field(metadata=shown_as("rated_current_a", "rated current", "A", exact=STATED))
     gamma: float = field(
         metadata=shown_as("rated_current_angle_deg", "its angle of most torque", "deg", 1 / DEGREE)
     )
@@ -52,22 +58,38 @@ class MapChecks:
 
     difference: float = field(
         metadata=shown_as(
-            "map_torque_difference_percent", "Maxwell's torque less the coenergy's", "%", 100.0
+            "map_torque_difference_percent",
+            "Maxwell's torque less the coenergy's",
+            "%",
+            100.0,
+            exact=CHECK,
         )
     )
     node_residual: float = field(
         metadata=shown_as(
-            "map_node_residual_percent", "linkage of the surface less the map's", "%", 100.0
+            "map_node_residual_percent",
+            "linkage of the surface less the map's",
+            "%",
+            100.0,
+            exact=CHECK,
         )
     )
     linkage_between: float = field(
         metadata=shown_as(
-            "map_interpolation_linkage_percent", "linkage between nodes, error", "%", 100.0
+            "map_interpolation_linkage_percent",
+            "linkage between nodes, error",
+            "%",
+            100.0,
+            exact=CHECK,
         )
     )
     torque_between: float = field(
         metadata=shown_as(
-            "map_interpolation_torque_percent", "torque between nodes, error", "%", 100.0
+            "map_interpolation_torque_percent",
+            "torque between nodes, error",
+            "%",
+            100.0,
+            exact=CHECK,
         )
     )
 

@@ -12,7 +12,7 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection, Material
 from lamwright.geometry.winding import winding_table
 
-from .quantities import shown_as
+from .quantities import FORMULA, shown_as
 
 COPPER_DENSITY = 8930.0  # kg/m^3 at 20 C; textbook matter
 
@@ -22,14 +22,18 @@ class MassFigures:
     """Masses of the active parts in kg."""
 
     rotor_iron: float = field(
-        metadata=shown_as("rotor_iron_mass_kg", "mass of the rotor's sheets", "kg")
+        metadata=shown_as("rotor_iron_mass_kg", "mass of the rotor's sheets", "kg", exact=FORMULA)
     )
     stator_iron: float = field(
-        metadata=shown_as("stator_iron_mass_kg", "mass of the stator's sheets", "kg")
+        metadata=shown_as("stator_iron_mass_kg", "mass of the stator's sheets", "kg", exact=FORMULA)
     )
-    copper: float = field(metadata=shown_as("copper_mass_kg", "mass of the copper", "kg"))
+    copper: float = field(
+        metadata=shown_as("copper_mass_kg", "mass of the copper", "kg", exact=FORMULA)
+    )
     active: float = field(
-        metadata=shown_as("active_mass_kg", "mass of sheets, copper and magnets", "kg")
+        metadata=shown_as(
+            "active_mass_kg", "mass of sheets, copper and magnets", "kg", exact=FORMULA
+        )
     )
 
 

@@ -5,8 +5,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from .files import csv_text
-from .quantities import RPM, shown_as
+from .quantities import COUNT, RPM, shown_as
 from .resonances import Lamination, Meeting, driver, meetings, nearest
+from .table_errors import Columns
 
 PERCENT = 100.0
 NEAR = 0.1  # of the frequency: what damping and the model's error leave open (no source)
@@ -45,7 +46,9 @@ class StatorModeFigures:
     lowest: float = field(
         metadata=shown_as("stator_mode_hz", "lowest mode of the stator, free", "Hz")
     )
-    waves: int = field(metadata=shown_as("stator_mode_waves", "waves of it round the circle", ""))
+    waves: int = field(
+        metadata=shown_as("stator_mode_waves", "waves of it round the circle", "", exact=COUNT)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -53,9 +56,13 @@ class MeetingFigures:
     """How often orders meet modes that the centred machine's field can shake."""
 
     service: int = field(
-        metadata=shown_as("mode_meetings", "orders meet modes of the field, to maximum", "")
+        metadata=shown_as(
+            "mode_meetings", "orders meet modes of the field, to maximum", "", exact=COUNT
+        )
     )
-    test: int = field(metadata=shown_as("mode_meetings_overspeed", "the same, to overspeed", ""))
+    test: int = field(
+        metadata=shown_as("mode_meetings_overspeed", "the same, to overspeed", "", exact=COUNT)
+    )
     rated: float = field(
         metadata=shown_as(
             "mode_nearest_rated_percent", "nearest such order at rated speed, off by", "%", PERCENT
@@ -114,6 +121,69 @@ def modal_figures(laminations: Sequence[Lamination], speeds: Speeds) -> tuple[Mo
     return tuple(groups)
 
 
+def modal_errors(laminations: Sequence[Lamination], speeds: Speeds) -> dict[str, float]:
+    """Errors of the figures by key, in their units; speeds and distances go with the mode's."""
+    free, held, stator = laminations
+    errors = {
+        "rotor_mode_free_hz": float(free.errors[0]),
+        "rotor_mode_held_hz": float(held.errors[0]),
+        "stator_mode_hz": float(stator.errors[0]),
+    }
+    oval = [k for k, mode in enumerate(free.modes) if mode.waves == 2]
+    if oval:
+        errors["rotor_mode_oval_hz"] = float(free.errors[oval[0]])
+    for key, speed in (
+        ("mode_nearest_rated_percent", speeds.rated),
+        ("mode_nearest_maximum_percent", speeds.maximum),
+    ):
+        near = _near(laminations, speed)
+        if near:
+            share, off = min(near, key=lambda one: abs(one[0]))
+            errors[key] = PERCENT * (1.0 + share) * off
+    driven = driven_meetings(laminations, speeds.overspeed)
+    if driven:
+        first = driven[0]
+        off = float(first.lamination.errors[first.number - 1]) / first.mode.frequency
+        errors["speed_mode_met_lowest_rpm"] = RPM * first.speed * off
+    return errors
+
+
+def modal_columns(laminations: Sequence[Lamination], speeds: Speeds) -> dict[str, Columns]:
+    """Errors of the columns of `modes.csv` and `mode_speeds.csv`, by file."""
+    shares = "of the mode's shape: not estimated"
+    off = max(
+        float(error) / mode.frequency
+        for lamination in laminations
+        for error, mode in zip(lamination.errors, lamination.modes, strict=True)
+    )
+    most = [
+        abs(nearest(mode, lamination.orders, speed)[1])
+        for lamination in laminations
+        for mode in lamination.modes
+        for speed in (speeds.rated, speeds.maximum)
+    ]
+    met = meetings(laminations, speeds.overspeed)
+    return {
+        "modes.csv": {
+            "frequency_hz": "its error stands beside it",
+            "alike": COUNT,
+            "cyclic_index": COUNT,
+            "waves": COUNT,
+            "wave_share_percent": shares,
+            "turned_inertia_percent": shares,
+            "shaken_mass_percent": shares,
+            "off_rated_percent_error": PERCENT * (1.0 + max(most)) * off,
+            "off_maximum_percent_error": PERCENT * (1.0 + max(most)) * off,
+        },
+        "mode_speeds.csv": {
+            "speed_rpm_error": off * max((RPM * one.speed for one in met), default=0.0),
+            "frequency_hz_error": off * max((one.mode.frequency for one in met), default=0.0),
+            "waves": COUNT,
+            "times_speed": COUNT,
+        },
+    }
+
+
 def driven_meetings(laminations: Sequence[Lamination], top_speed: float) -> tuple[Meeting, ...]:
     """Meetings with modes that the field of the centred machine can shake, by rising speed."""
     return tuple(
@@ -125,20 +195,24 @@ def driven_meetings(laminations: Sequence[Lamination], top_speed: float) -> tupl
 
 def _nearest_of_all(laminations: Sequence[Lamination], speed: float) -> float:
     """The least distance of an order to a mode of the field, with its sign; nan without one."""
-    shares = [
-        nearest(mode, lamination.orders, speed)[1]
+    return min((share for share, _ in _near(laminations, speed)), key=abs, default=math.nan)
+
+
+def _near(laminations: Sequence[Lamination], speed: float) -> list[tuple[float, float]]:
+    """Of each mode of the field its distance to an order, and its frequency's relative error."""
+    return [
+        (nearest(mode, lamination.orders, speed)[1], float(error) / mode.frequency)
         for lamination in laminations
-        for mode in lamination.modes
+        for mode, error in zip(lamination.modes, lamination.errors, strict=True)
         if driver(mode, lamination.sectors) == "field"
     ]
-    return min(shares, key=abs, default=math.nan)
 
 
 def modes_csv(laminations: Sequence[Lamination], speeds: Speeds) -> str:
     """One row for each mode, with the order nearest to it at rated and at maximum speed."""
     header = [
-        "lamination", "mode", "frequency_hz", "alike", "cyclic_index", "waves",
-        "wave_share_percent", "turned_inertia_percent", "shaken_mass_percent", "shaken_by",
+        "lamination", "mode", "frequency_hz", "frequency_hz_error", "alike", "cyclic_index",
+        "waves", "wave_share_percent", "turned_inertia_percent", "shaken_mass_percent", "shaken_by",
         "nearest_rated", "off_rated_percent", "nearest_maximum", "off_maximum_percent",
     ]  # fmt: skip
     rows = []
@@ -152,6 +226,7 @@ def modes_csv(laminations: Sequence[Lamination], speeds: Speeds) -> str:
                     lamination.key,
                     str(number),
                     f"{mode.frequency:.6g}",
+                    f"{lamination.errors[number - 1]:.3g}",
                     str(1 + mode.is_pair),
                     str(mode.index),
                     str(mode.waves),

@@ -4,7 +4,7 @@ import math
 from dataclasses import dataclass, field
 
 from .plastic_ribs import PlasticReport, PlasticRib
-from .quantities import RPM, shown_as
+from .quantities import COUNT, RPM, scaled_by_key, shown_as
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -31,7 +31,7 @@ class BurstFigures:
         metadata=shown_as("burst_over_overspeed", "burst, lower bound, over overspeed", "")
     )
     cycles: int = field(
-        metadata=shown_as("start_stop_cycles", "start-stop cycles computed for it", "")
+        metadata=shown_as("start_stop_cycles", "start-stop cycles computed for it", "", exact=COUNT)
     )
 
 
@@ -94,6 +94,17 @@ def left_figures(report: PlasticReport) -> tuple[LeftFigures, ...]:
 def plastic_rib_figures(report: PlasticReport) -> tuple[PlasticRibFigures, ...]:
     """One for each rib."""
     return tuple(_of_rib(row) for row in report.ribs)
+
+
+def rib_differences(rib: PlasticRibFigures, other: PlasticRibFigures) -> dict[str, float]:
+    """By how much a rib's figures differ from another mesh's, by key; nan where both burst."""
+    return scaled_by_key(
+        rib,
+        {
+            name: abs(getattr(rib, name) - getattr(other, name))
+            for name in ("section", "area", "strain")
+        },
+    )
 
 
 def _of_rib(row: PlasticRib) -> PlasticRibFigures:

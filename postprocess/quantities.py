@@ -16,6 +16,14 @@ if TYPE_CHECKING:
 RPM = 30.0 / math.pi  # 1/min per rad/s
 DIGITS = 4  # significant, where people read; files hold all of them
 
+# Why a figure has no numerical error.
+STATED = "stated by the design file"
+CARD = "stated by a card of steel or magnets"
+COUNT = "a count"
+FORMULA = "by formula from what design file and cards state: no mesh in it"
+CHECK = "itself a measure of an error"
+OUTLINE = "of exact lines and arcs: to rounding"
+
 
 @dataclass(frozen=True, slots=True)
 class Shown:
@@ -26,6 +34,7 @@ class Shown:
     unit: str
     scale: float = 1.0
     is_estimate: bool = False
+    exact: str = ""  # why it has no numerical error; empty where it may have one
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,16 +46,21 @@ class Figure:
     value: float
     unit: str
     is_estimate: bool
+    exact: str = ""
 
 
-def shown_as(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
-    """Metadata of a field that leaves the program as a figure."""
-    return {"shown": Shown(key, label, unit, scale)}
+def shown_as(
+    key: str, label: str, unit: str, scale: float = 1.0, exact: str = ""
+) -> Mapping[str, Shown]:
+    """Metadata of a field that leaves the program as a figure; `exact` as in `Shown`."""
+    return {"shown": Shown(key, label, unit, scale, exact=exact)}
 
 
-def shown_estimate(key: str, label: str, unit: str, scale: float = 1.0) -> Mapping[str, Shown]:
+def shown_estimate(
+    key: str, label: str, unit: str, scale: float = 1.0, exact: str = ""
+) -> Mapping[str, Shown]:
     """The same for a figure that rests on a formula instead of a field."""
-    return {"shown": Shown(key, label, unit, scale, is_estimate=True)}
+    return {"shown": Shown(key, label, unit, scale, is_estimate=True, exact=exact)}
 
 
 def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
@@ -62,7 +76,7 @@ def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
             raise ArithmeticError(f"{shown.key} = {value}: not a finite number")
         # Counts stay whole numbers.
         scaled = value if shown.scale == 1.0 else value * shown.scale
-        yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate)
+        yield Figure(shown.key, shown.label, scaled, shown.unit, shown.is_estimate, shown.exact)
 
 
 def number(value: float) -> str:
@@ -90,21 +104,31 @@ class OutlineFigures:
     """The punch outline as read back from the DXF, against the outline analysed."""
 
     area: float = field(
-        metadata=shown_as("lamination_area_mm2", "area of the lamination", "mm2", 1e6)
+        metadata=shown_as(
+            "lamination_area_mm2", "area of the lamination", "mm2", 1e6, exact=OUTLINE
+        )
     )
     perimeter: float = field(
-        metadata=shown_as("lamination_perimeter_mm", "cut length of the lamination", "mm", 1e3)
+        metadata=shown_as(
+            "lamination_perimeter_mm", "cut length of the lamination", "mm", 1e3, exact=OUTLINE
+        )
     )
     area_difference: float = field(
-        metadata=shown_as("dxf_area_difference_relative", "area read back, relative difference", "")
+        metadata=shown_as(
+            "dxf_area_difference_relative", "area read back, relative difference", "", exact=CHECK
+        )
     )
     perimeter_difference: float = field(
         metadata=shown_as(
-            "dxf_perimeter_difference_relative", "cut length read back, difference", ""
+            "dxf_perimeter_difference_relative", "cut length read back, difference", "", exact=CHECK
         )
     )
     vertex_difference: float = field(
         metadata=shown_as(
-            "dxf_vertex_difference_um", "vertices read back, greatest distance", "um", 1e6
+            "dxf_vertex_difference_um",
+            "vertices read back, greatest distance",
+            "um",
+            1e6,
+            exact=CHECK,
         )
     )

@@ -19,6 +19,7 @@ from typing import Literal
 
 from lamwright.geometry.section import CrossSection
 from lamwright.solver.modal import Mode, Period
+from lamwright.solver.types import FloatArray
 
 Driver = Literal["field", "offset axis", "neither"]
 ELECTRICAL = (6, 12, 18, 24)
@@ -44,6 +45,7 @@ class Lamination:
     modes: tuple[Mode, ...]
     orders: tuple[Order, ...]  # rising
     sectors: int  # the centred machine's field repeats so often round the circle
+    errors: FloatArray  # (n_mode,), of the frequencies, Hz
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -6,7 +6,7 @@ from dataclasses import dataclass, field
 from lamwright.geometry.section import CrossSection
 from lamwright.solver.estimate_stress import BEYOND
 
-from .quantities import RPM, shown_as
+from .quantities import COUNT, RPM, STATED, shown_as
 from .ribs import RibReport
 
 
@@ -14,10 +14,14 @@ from .ribs import RibReport
 class RotorFigures:
     """The lamination at overspeed, bore free."""
 
-    ribs: int = field(metadata=shown_as("ribs_of_a_period", "ribs of the rotor's period", ""))
+    ribs: int = field(
+        metadata=shown_as("ribs_of_a_period", "ribs of the rotor's period", "", exact=COUNT)
+    )
     growth_d: float = field(metadata=shown_as("growth_d_um", "growth on the d axis", "um", 1e6))
     growth_q: float = field(metadata=shown_as("growth_q_um", "growth on the q axis", "um", 1e6))
-    gap: float = field(metadata=shown_as("gap_cold_mm", "air gap at rest, cold", "mm", 1e3))
+    gap: float = field(
+        metadata=shown_as("gap_cold_mm", "air gap at rest, cold", "mm", 1e3, exact=STATED)
+    )
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -35,7 +35,7 @@ from lamwright.geometry.section import CrossSection
 from lamwright.solver.rib_zones import zone_of_node
 from lamwright.solver.types import FloatArray, StressSolution
 
-from .quantities import shown_as
+from .quantities import scaled_by_key, shown_as
 
 MPA = 1e6  # Pa per MPa
 LONGEST = 600.0  # natural logarithm of a life that counts as endless: numbers end at 709
@@ -176,6 +176,27 @@ def zone_lives(
     """
     curve = cyclic_curve(card, data)
     return tuple(_life(pair.tolist(), card, data, curve, speeds) for pair in stress)
+
+
+def life_errors(life: RibLife, share: float, data: FatigueData) -> dict[str, float]:
+    """Errors of a rib's life by key, in the figures' units.
+
+    Args:
+        life: of the rib.
+        share: relative error of its elastic peak.
+        data: the card's.
+    """
+    steep = share / abs(data.strength_exponent)
+    return scaled_by_key(
+        life,
+        {
+            "maximum": share * abs(life.maximum),
+            "amplitude": share * life.amplitude,
+            "median": steep * life.median,
+            "low": steep * life.low,
+            "high": steep * life.high,
+        },
+    )
 
 
 def _life(

@@ -8,18 +8,21 @@ Axes: n_rib ribs of the rotor's own period.
 
 import cmath
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, fields
 from typing import TYPE_CHECKING
 
 from lamwright.geometry.corners import foot, is_within
 from lamwright.geometry.curves import Edge, Point
 from lamwright.geometry.section import CrossSection, Region, Rib, base_name, rotor_cell
+from lamwright.solver.estimate_stress import BEYOND
 from lamwright.solver.types import FloatArray
 
+from .figure_errors import NOT_ESTIMATED, SUFFIX
 from .files import csv_text
-from .quantities import RPM, Shown, shown_as
+from .quantities import OUTLINE, RPM, Shown, scaled_by_key, shown_as
 from .ribs import RibReport, RibStress
+from .table_errors import Columns
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance
@@ -27,6 +30,7 @@ if TYPE_CHECKING:
 ON_OUTLINE = 1e-6  # m, far above rounding and below any element
 BARE = ("rotor_iron", "shaft", "gap_rotor", "rim_air")  # regions that cut nothing out of the iron
 OTHER_SIDE = {"left": "right", "right": "left"}
+AT_NODE = "not estimated: the mesh's node of most stress"
 ALIKE = 5e-3  # of the peak: the two of a mirrored pair differ by their meshes
 MM, MPA, DEGREE = 1e3, 1e-6, math.pi / 180.0
 
@@ -35,16 +39,21 @@ MM, MPA, DEGREE = 1e3, 1e-6, math.pi / 180.0
 class RibFigures:
     """One rib at overspeed, elastic."""
 
-    width: float = field(metadata=shown_as("width_mm", "width", "mm", MM))
+    width: float = field(metadata=shown_as("width_mm", "width", "mm", MM, exact=OUTLINE))
     tension: float = field(metadata=shown_as("tension_mean_mpa", "mean tension", "MPa", MPA))
     shear: float = field(metadata=shown_as("shear_mean_mpa", "mean shear", "MPa", MPA))
     bending: float = field(metadata=shown_as("bending_mpa", "bending", "MPa", MPA))
     peak: float = field(metadata=shown_as("peak_mpa", "peak von Mises stress", "MPa", MPA))
-    peak_error: float = field(metadata=shown_as("peak_error_mpa", "its error", "MPa", MPA))
-    peak_x: float = field(metadata=shown_as("peak_x_mm", "place of the peak, x", "mm", MM))
-    peak_y: float = field(metadata=shown_as("peak_y_mm", "place of the peak, y", "mm", MM))
+    peak_x: float = field(
+        metadata=shown_as("peak_x_mm", "place of the peak, x", "mm", MM, exact=AT_NODE)
+    )
+    peak_y: float = field(
+        metadata=shown_as("peak_y_mm", "place of the peak, y", "mm", MM, exact=AT_NODE)
+    )
     peak_angle: float = field(
-        metadata=shown_as("peak_angle_deg", "place of the peak, from its q axis", "deg", 1 / DEGREE)
+        metadata=shown_as(
+            "peak_angle_deg", "place of the peak, from its q axis", "deg", 1 / DEGREE, exact=AT_NODE
+        )
     )
     concentration: float = field(
         metadata=shown_as("stress_concentration", "peak over mean tension", "")
@@ -65,6 +74,7 @@ class RibRow:
     rib: Rib
     peak_on: str  # what of the outline its peak sits on
     groups: "tuple[DataclassInstance, ...]"  # with fields made by `quantities.shown_as`
+    errors: Mapping[str, float] = field(default_factory=dict)  # by key, of some of the figures
 
     @property
     def values(self) -> dict[str, float | None]:
@@ -81,28 +91,72 @@ class RibRow:
     def record(self) -> dict[str, object]:
         """The rib as it stands in JSON."""
         rib = self.rib
-        head = {"rib": rib.name, "kind": rib.kind, "barrier": rib.barrier, "peak_on": self.peak_on}
-        return {**head, **self.values}
+        found: dict[str, object] = {
+            "rib": rib.name,
+            "kind": rib.kind,
+            "barrier": rib.barrier,
+            "peak_on": self.peak_on,
+        }
+        for key, value in self.values.items():
+            found[key] = value
+            if key in self.errors:
+                error = self.errors[key]
+                found[key + SUFFIX] = error if math.isfinite(error) else None
+        return found
 
 
-def elastic_figures(
-    section: CrossSection, report: RibReport, errors: FloatArray | None = None
-) -> tuple[RibFigures, ...]:
-    """The ribs of a report.
+def elastic_figures(section: CrossSection, report: RibReport) -> tuple[RibFigures, ...]:
+    """The ribs of a report at overspeed.
 
     Args:
         section: exact outlines.
         report: at overspeed.
-        errors: (n_rib or more,), relative, of the peaks.
     """
-    known = [math.nan] * len(report.ribs) if errors is None else errors.tolist()
-    return tuple(
-        _figures(section, row, report.speed, error)
-        for row, error in zip(report.ribs, known, strict=False)
-    )
+    return tuple(_figures(section, row, report.speed) for row in report.ribs)
 
 
-def _figures(section: CrossSection, row: RibStress, speed: float, error: float) -> RibFigures:
+def elastic_errors(
+    section: CrossSection, report: RibReport, finer: RibReport, peaks: FloatArray
+) -> tuple[dict[str, float], ...]:
+    """Errors of each rib's figures by key, in their units; what has no meaning has none.
+
+    Args:
+        section: exact outlines.
+        report: what the figures are of.
+        finer: the same from the mesh four times as fine.
+        peaks: (n_rib or more,), relative, of the peaks.
+    """
+    found = []
+    for own, fine, share in zip(report.ribs, finer.ribs, peaks.tolist(), strict=False):
+        figures = _figures(section, own, report.speed)
+        tension = BEYOND * abs(fine.mean_tension - own.mean_tension)
+        of_tension = tension / own.mean_tension if own.mean_tension > 0.0 else math.nan
+        errors = {
+            "tension": tension,
+            "shear": BEYOND * abs(fine.mean_shear - own.mean_shear),
+            "bending": BEYOND * abs(fine.bending - own.bending),
+            "peak": share * own.peak,
+            "concentration": (share + of_tension) * figures.concentration,
+            "yield_margin": share * own.yield_margin,
+            # Speeds go with the root of a margin.
+            "first_yield_speed": 0.5 * share * figures.first_yield_speed,
+            "mean_yield_speed": 0.5 * of_tension * figures.mean_yield_speed,
+        }
+        found.append(scaled_by_key(figures, errors))
+    return tuple(found)
+
+
+def rib_columns(rows: Sequence[RibRow]) -> Columns:
+    """Why columns of `ribs.csv` have no error beside them."""
+    return {
+        item.metadata["shown"].key: item.metadata["shown"].exact or NOT_ESTIMATED
+        for group in rows[0].groups
+        for item in fields(group)
+        if item.metadata["shown"].key not in rows[0].errors
+    }
+
+
+def _figures(section: CrossSection, row: RibStress, speed: float) -> RibFigures:
     angle = cmath.phase(row.peak_at) % section.pole_angle - 0.5 * section.pole_angle
     return RibFigures(
         width=row.rib.width,
@@ -110,7 +164,6 @@ def _figures(section: CrossSection, row: RibStress, speed: float, error: float) 
         shear=row.mean_shear,
         bending=row.bending,
         peak=row.peak,
-        peak_error=error * row.peak,
         peak_x=row.peak_at.real,
         peak_y=row.peak_at.imag,
         peak_angle=angle,
@@ -126,6 +179,7 @@ def rib_rows(
     section: CrossSection,
     report: RibReport,
     *groups: "Sequence[DataclassInstance]",
+    errors: Sequence[Mapping[str, float]] = (),
 ) -> tuple[RibRow, ...]:
     """One row for each rib.
 
@@ -133,10 +187,12 @@ def rib_rows(
         section: exact outlines.
         report: whose ribs and places of peaks they are.
         groups: each of n_rib groups of figures of one kind.
+        errors: of each rib by the figures' keys; of none if empty.
     """
+    known = errors or [{}] * len(report.ribs)
     return tuple(
-        RibRow(row.rib, outline_place(section, row.peak_at), tuple(of_rib))
-        for row, *of_rib in zip(report.ribs, *groups, strict=True)
+        RibRow(row.rib, outline_place(section, row.peak_at), tuple(of_rib), own)
+        for row, own, *of_rib in zip(report.ribs, known, *groups, strict=True)
     )
 
 

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass, field
 
-from .quantities import shown_as, shown_estimate
+from .quantities import COUNT, FORMULA, STATED, shown_as, shown_estimate
 
 MM = 1e3  # mm per m
 NOTABLE_PULL = 1.0  # N, far above what rounding leaves where nothing pulls
@@ -15,12 +15,14 @@ class RippleFigures:
     i_d: float = field(metadata=shown_as("ripple_i_d_a", "d-axis current of the ripple", "A"))
     i_q: float = field(metadata=shown_as("ripple_i_q_a", "q-axis current of the ripple", "A"))
     mean: float = field(metadata=shown_as("ripple_mean_torque_nm", "mean torque, no skew", "N m"))
-    order: int = field(metadata=shown_as("ripple_largest_order_el", "largest order of torque", ""))
+    order: int = field(
+        metadata=shown_as("ripple_largest_order_el", "largest order of torque", "", exact=COUNT)
+    )
     largest: float = field(
         metadata=shown_as("ripple_largest_percent", "largest order, no skew", "% of mean", 100.0)
     )
     slot_order: int = field(
-        metadata=shown_as("ripple_slot_order_el", "first slot order of torque", "")
+        metadata=shown_as("ripple_slot_order_el", "first slot order of torque", "", exact=COUNT)
     )
     slot: float = field(
         metadata=shown_as("ripple_slot_order_percent", "slot order, no skew", "% of mean", 100.0)
@@ -52,7 +54,10 @@ class ForceFigures:
     )
     space: int = field(
         metadata=shown_as(
-            "force_lowest_space_order", "lowest space order above 0 that alternates", ""
+            "force_lowest_space_order",
+            "lowest space order above 0 that alternates",
+            "",
+            exact=COUNT,
         )
     )
     lowest: float = field(
@@ -61,11 +66,16 @@ class ForceFigures:
         )
     )
     frequency: float = field(
-        metadata=shown_as("force_lowest_order_hz", "frequency of that at rated speed", "Hz")
+        metadata=shown_as(
+            "force_lowest_order_hz", "frequency of that at rated speed", "Hz", exact=FORMULA
+        )
     )
     frequency_at_most: float = field(
         metadata=shown_as(
-            "force_lowest_order_maximum_hz", "frequency of that at maximum speed", "Hz"
+            "force_lowest_order_maximum_hz",
+            "frequency of that at maximum speed",
+            "Hz",
+            exact=FORMULA,
         )
     )
     tooth_pull: float = field(
@@ -87,10 +97,14 @@ class PullFigures:
     """A rotor beside the stator's axis, at rated current."""
 
     offset: float = field(
-        metadata=shown_as("eccentricity_mm", "rotor's axis beside the stator's", "mm", MM)
+        metadata=shown_as(
+            "eccentricity_mm", "rotor's axis beside the stator's", "mm", MM, exact=STATED
+        )
     )
     share: float = field(
-        metadata=shown_as("eccentricity_percent", "that offset over the gap", "%", 100.0)
+        metadata=shown_as(
+            "eccentricity_percent", "that offset over the gap", "%", 100.0, exact=STATED
+        )
     )
     along: float = field(
         metadata=shown_as("eccentric_pull_n", "mean pull towards the narrow side", "N")
@@ -118,7 +132,9 @@ class CoggingFigures:
     """Torque of the magnets without current."""
 
     per_turn: int = field(
-        metadata=shown_as("cogging_periods_per_turn", "periods of cogging in a turn", "")
+        metadata=shown_as(
+            "cogging_periods_per_turn", "periods of cogging in a turn", "", exact=COUNT
+        )
     )
     peak_to_peak: float = field(
         metadata=shown_as("cogging_peak_to_peak_nm", "cogging torque, peak to peak", "N m")

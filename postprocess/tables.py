@@ -1,12 +1,12 @@
 """Results as records for JSON and as CSV, with a unit in every key: the only place for it."""
 
-from collections.abc import Mapping
-
 import numpy as np
 
 from lamwright.solver.types import FieldSolution
 
+from .figure_errors import SUFFIX, error_values, without_error
 from .files import csv_text
+from .magnet_errors import state_errors
 from .no_load import LinkageSpectrum, NoLoad
 from .operating import mean_linkage_torque
 from .torque import TorqueSpectrum, TorqueWaveform, coenergy_torque, linkage_torque
@@ -22,11 +22,13 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
     return {
         "design": verdict.design_name,
         "passes": verdict.passes,
-        **_with_errors({key: figure.value for key, figure in figures.items()}, verdict.errors),
+        **error_values(figures.values(), verdict.errors),
         "limits": {outcome.key: outcome.limit for outcome in verdict.outcomes},
         "outcomes": {outcome.key: _outcome_record(outcome) for outcome in verdict.outcomes},
         "torque_harmonics": _spectrum_record(spectrum),
         **_magnet_records(verdict),
+        "table_errors": {name: dict(columns) for name, columns in verdict.table_errors.items()},
+        "errors_not_given": without_error(figures.values(), verdict.errors),
         "estimates": [key for key, figure in figures.items() if figure.is_estimate],
         "cautions": list(verdict.cautions),
         "outline_dxf": verdict.outline_dxf,
@@ -35,16 +37,6 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
         "design_hash": verdict.design_hash,
         "seconds": {time.phase: round(time.seconds, 3) for time in verdict.times},
     }
-
-
-def _with_errors(values: dict[str, float], errors: Mapping[str, float]) -> dict[str, float]:
-    """Each value followed by its absolute error where there is one."""
-    record: dict[str, float] = {}
-    for key, value in values.items():
-        record[key] = value
-        if key in errors:
-            record[f"{key}_error"] = errors[key]
-    return record
 
 
 def _outcome_record(outcome: Outcome) -> dict[str, object]:
@@ -74,8 +66,9 @@ def _magnet_records(verdict: Verdict) -> dict[str, object]:
             "below_knee_percent": 100.0 * state.share_below,
             "flux_density_low_t": state.flux_low,
             "flux_density_mean_t": state.flux_mean,
+            **{key + SUFFIX: error for key, error in state_errors(state, finer).items()},
         }
-        for state in verdict.magnet_states
+        for state, finer in zip(verdict.magnet_states, verdict.finer_states, strict=True)
     ]
     return {"magnets": states} if states else {}
 

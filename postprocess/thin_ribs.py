@@ -20,7 +20,7 @@ from lamwright.geometry.rib_groups import RibGroup
 from lamwright.solver.types import FloatArray
 
 from .files import csv_text
-from .quantities import shown_as
+from .quantities import COUNT, shown_as
 
 LONGEST_STEP = 0.4  # of a logarithm: beyond, the slopes of a rib say little
 USUAL_SLOPE = 0.7  # of log margin by log width, where the slopes cannot be used
@@ -100,7 +100,9 @@ class ThinRib:
 class ThinFigures:
     """What thinning has brought."""
 
-    steps: int = field(metadata=shown_as("thin_steps", "thinnest ribs: designs solved", ""))
+    steps: int = field(
+        metadata=shown_as("thin_steps", "thinnest ribs: designs solved", "", exact=COUNT)
+    )
     yield_margin: float = field(
         metadata=shown_as("thin_yield_margin", "thinnest ribs: least yield margin of a rib", "")
     )

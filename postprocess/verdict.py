@@ -12,8 +12,19 @@ from lamwright.geometry.design import LimitsDesign
 
 from .demagnetisation import MagnetState
 from .magnet_figures import MagnetFigures
+from .quantities import (
+    CARD,
+    CHECK,
+    COUNT,
+    FORMULA,
+    STATED,
+    Figure,
+    OutlineFigures,
+    figures_of,
+    shown_as,
+    shown_estimate,
+)
 from .quantities import RPM as RPM
-from .quantities import Figure, OutlineFigures, figures_of, shown_as, shown_estimate
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance
@@ -31,7 +42,7 @@ class MagneticFigures:
             "current_angle_deg", "current angle of most torque", "el deg", 180.0 / math.pi
         )
     )
-    current: float = field(metadata=shown_as("current_a", "phase current, peak", "A"))
+    current: float = field(metadata=shown_as("current_a", "phase current, peak", "A", exact=STATED))
     i_d: float = field(metadata=shown_as("i_d_a", "d-axis current", "A"))
     i_q: float = field(metadata=shown_as("i_q_a", "q-axis current", "A"))
     psi_d: float = field(metadata=shown_as("psi_d_vs", "d-axis flux linkage", "V s"))
@@ -40,7 +51,9 @@ class MagneticFigures:
         metadata=shown_as("torque_linkage_nm", "torque by the linkages", "N m")
     )
     torque_difference: float = field(
-        metadata=shown_as("torque_difference_percent", "difference of the two torques", "%", 100.0)
+        metadata=shown_as(
+            "torque_difference_percent", "difference of the two torques", "%", 100.0, exact=CHECK
+        )
     )
     coenergy_difference: float = field(
         metadata=shown_as(
@@ -48,6 +61,7 @@ class MagneticFigures:
             "largest difference to the coenergy's torque",
             "%",
             100.0,
+            exact=CHECK,
         )
     )
     ripple_of_samples: float = field(
@@ -65,18 +79,26 @@ class TerminalFigures:
     line_voltage: float = field(
         metadata=shown_estimate("terminal_voltage_v", "line voltage at rated speed, rms", "V")
     )
-    supply_voltage: float = field(metadata=shown_as("supply_voltage_v", "supply voltage, rms", "V"))
-    speed: float = field(metadata=shown_as("speed_rated_rpm", "rated speed", "1/min", RPM))
+    supply_voltage: float = field(
+        metadata=shown_as("supply_voltage_v", "supply voltage, rms", "V", exact=STATED)
+    )
+    speed: float = field(
+        metadata=shown_as("speed_rated_rpm", "rated speed", "1/min", RPM, exact=STATED)
+    )
     shaft_power: float = field(
         metadata=shown_as("air_gap_power_w", "torque times speed at rated speed", "W")
     )
-    copper_loss: float = field(metadata=shown_estimate("copper_loss_w", "copper loss", "W"))
+    copper_loss: float = field(
+        metadata=shown_estimate("copper_loss_w", "copper loss", "W", exact=FORMULA)
+    )
     resistance: float = field(
-        metadata=shown_estimate("phase_resistance_ohm", "resistance of a phase", "Ohm")
+        metadata=shown_estimate(
+            "phase_resistance_ohm", "resistance of a phase", "Ohm", exact=FORMULA
+        )
     )
     end_inductance: float = field(
         metadata=shown_estimate(
-            "end_winding_inductance_mh", "end-winding leakage of a phase", "mH", 1e3
+            "end_winding_inductance_mh", "end-winding leakage of a phase", "mH", 1e3, exact=FORMULA
         )
     )
 
@@ -96,9 +118,13 @@ class StressFigures:
     )
     yield_margin: float = field(metadata=shown_as("yield_margin", "yield margin at overspeed", ""))
     yield_strength: float = field(
-        metadata=shown_as("yield_strength_mpa", "yield strength of the rotor's steel", "MPa", 1e-6)
+        metadata=shown_as(
+            "yield_strength_mpa", "yield strength of the rotor's steel", "MPa", 1e-6, exact=CARD
+        )
     )
-    speed: float = field(metadata=shown_as("speed_overspeed_rpm", "overspeed", "1/min", RPM))
+    speed: float = field(
+        metadata=shown_as("speed_overspeed_rpm", "overspeed", "1/min", RPM, exact=STATED)
+    )
     yield_speed: float = field(
         metadata=shown_as("speed_yield_begins_rpm", "yielding begins at", "1/min", RPM)
     )
@@ -114,21 +140,37 @@ class StressFigures:
 class SolverFigures:
     """Size and course of the solutions."""
 
-    field_elements: int = field(metadata=shown_as("field_elements", "elements of the field", ""))
-    field_unknowns: int = field(metadata=shown_as("field_unknowns", "unknowns of the field", ""))
-    field_solutions: int = field(metadata=shown_as("field_solutions", "field solutions", ""))
-    newton_steps: int = field(metadata=shown_as("newton_steps", "Newton steps in all", ""))
-    newton_most: int = field(metadata=shown_as("newton_steps_most", "most steps of a solution", ""))
+    field_elements: int = field(
+        metadata=shown_as("field_elements", "elements of the field", "", exact=COUNT)
+    )
+    field_unknowns: int = field(
+        metadata=shown_as("field_unknowns", "unknowns of the field", "", exact=COUNT)
+    )
+    field_solutions: int = field(
+        metadata=shown_as("field_solutions", "field solutions", "", exact=COUNT)
+    )
+    newton_steps: int = field(
+        metadata=shown_as("newton_steps", "Newton steps in all", "", exact=COUNT)
+    )
+    newton_most: int = field(
+        metadata=shown_as("newton_steps_most", "most steps of a solution", "", exact=COUNT)
+    )
     residual: float = field(
-        metadata=shown_as("newton_residual_greatest", "greatest relative residual left", "")
+        metadata=shown_as(
+            "newton_residual_greatest", "greatest relative residual left", "", exact=CHECK
+        )
     )
     positions: int = field(
-        metadata=shown_as("waveform_positions", "positions over 60 el degrees", "")
+        metadata=shown_as("waveform_positions", "positions over 60 el degrees", "", exact=COUNT)
     )
-    stress_elements: int = field(metadata=shown_as("stress_elements", "elements of the stress", ""))
-    stress_unknowns: int = field(metadata=shown_as("stress_unknowns", "unknowns of the stress", ""))
+    stress_elements: int = field(
+        metadata=shown_as("stress_elements", "elements of the stress", "", exact=COUNT)
+    )
+    stress_unknowns: int = field(
+        metadata=shown_as("stress_unknowns", "unknowns of the stress", "", exact=COUNT)
+    )
     stress_refinements: int = field(
-        metadata=shown_as("stress_refinements", "refinements of the stress mesh", "")
+        metadata=shown_as("stress_refinements", "refinements of the stress mesh", "", exact=COUNT)
     )
 
 
@@ -176,6 +218,9 @@ class Verdict:
     errors: Mapping[str, float] = field(default_factory=dict)  # by the figure's key, in its unit
     magnets: tuple[MagnetFigures, ...] = ()  # one where the machine has magnets
     magnet_states: tuple[MagnetState, ...] = ()  # of each magnet at the demagnetising current
+    finer_states: tuple[MagnetState, ...] = ()  # the same on the finer mesh
+    # Of each table the errors of its columns, see `table_errors`.
+    table_errors: Mapping[str, Mapping[str, float | str]] = field(default_factory=dict)
 
     @property
     def passes(self) -> bool:

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 from .files import csv_text
-from .quantities import figures_of, shown_as, shown_estimate
+from .quantities import FORMULA, STATED, figures_of, shown_as, shown_estimate
 
 if TYPE_CHECKING:
     from _typeshed import DataclassInstance
@@ -17,13 +17,17 @@ if TYPE_CHECKING:
 class DesignFigures:
     """The design at rated current and the current angle of most torque, from the map."""
 
-    current: float = field(metadata=shown_as("yardstick_current_a", "current, peak", "A"))
+    current: float = field(
+        metadata=shown_as("yardstick_current_a", "current, peak", "A", exact=STATED)
+    )
     torque: float = field(metadata=shown_as("yardstick_design_torque_nm", "torque, design", "N m"))
     saliency: float = field(
         metadata=shown_as("yardstick_design_saliency_ratio", "saliency, design", "")
     )
     copper_loss: float = field(
-        metadata=shown_estimate("yardstick_design_copper_loss_w", "stator copper loss, design", "W")
+        metadata=shown_estimate(
+            "yardstick_design_copper_loss_w", "stator copper loss, design", "W", exact=FORMULA
+        )
     )
 
 

@@ -75,6 +75,40 @@ class FieldErrors:
     psi_d: float  # V s
     psi_q: float  # V s
     linkages: LinkageErrors
+    # At any one position, and of the amplitude of any order of torque: bounds.
+    torque_at: float  # N m
+    psi_d_at: float  # V s
+    psi_q_at: float  # V s
+    order: float  # N m
+
+
+@dataclass(frozen=True, slots=True)
+class NoLoadErrors:
+    """Absolute errors of a machine with magnets and without current, SI."""
+
+    linkages: LinkageErrors  # of the means
+    waver: float  # V s, rms of what linkages are off by from position to position
+    cogging: float  # N m, of the peak to peak
+
+
+def no_load_errors(
+    solutions: Sequence[FieldSolution], sampled: Mapping[int, Change]
+) -> NoLoadErrors:
+    """Error bars of a waveform without current from the changes at `sample_places`.
+
+    Args:
+        solutions: the whole waveform.
+        sampled: change of each sampled solution, by its place in `solutions`.
+    """
+    change_d = np.array([c.psi_d for c in sampled.values()])
+    change_q = np.array([c.psi_q for c in sampled.values()])
+    torque = np.array([s.torque for s in solutions])
+    high, low = (sampled[int(k)].torque for k in (torque.argmax(), torque.argmin()))
+    return NoLoadErrors(
+        linkages=LinkageErrors(change_d, change_q),
+        waver=BEYOND * math.hypot(float(change_d.std()), float(change_q.std())),
+        cogging=BEYOND * (abs(high - low) + KNOWN_TO * (abs(high) + abs(low))),
+    )
 
 
 def field_errors(
@@ -121,6 +155,7 @@ def errors_of(
     by_linkage = float(linkage_torque(pole_pairs, i_d, i_q, psi_d, psi_q).mean())
     change_d = np.array([c.psi_d for c in sampled.values()])
     change_q = np.array([c.psi_q for c in sampled.values()])
+    change_torque = np.array([c.torque for c in sampled.values()])
     linkages = LinkageErrors(change_d, change_q)
     middle = float(psi_d.mean()), float(psi_q.mean())
     change = linkage_torque(pole_pairs, i_d, i_q, change_d, change_q)
@@ -136,6 +171,11 @@ def errors_of(
         psi_d=linkages.of(lambda d, q: d, *middle),
         psi_q=linkages.of(lambda d, q: q, *middle),
         linkages=linkages,
+        torque_at=_most(change_torque),
+        psi_d_at=_most(change_d) + NEWTON_FLOOR * float(np.abs(psi_d).max()),
+        psi_q_at=_most(change_q) + NEWTON_FLOOR * float(np.abs(psi_q).max()),
+        # One that swings with an order by c moves its amplitude by c; it is seen at few positions.
+        order=_most(change_torque - change_torque.mean()) + NEWTON_FLOOR * abs(mean),
     )
 
 
@@ -155,6 +195,11 @@ def angle_error(relative_torque_error: float, search_tolerance: float) -> float:
     assumption, not measured), it moves the best angle by a half of it.
     """
     return search_tolerance + 0.5 * abs(relative_torque_error)
+
+
+def _most(change: FloatArray) -> float:
+    """Error of what changes (n_sample,) by as much at the most."""
+    return BEYOND * (1.0 + KNOWN_TO) * float(np.abs(change).max())
 
 
 def _doubt(change: FloatArray) -> float:

@@ -194,7 +194,12 @@ def fine_level(model: MagneticModel, section: CrossSection, winding: WindingTabl
 
 
 def changes(level: FineLevel, solution: FieldSolution) -> Change:
-    """What two Newton steps on the finer mesh change.
+    """What two Newton steps on the finer mesh change; arguments as in `finer_field`."""
+    return finer_field(level, solution)[0]
+
+
+def finer_field(level: FineLevel, solution: FieldSolution) -> tuple[Change, FloatArray]:
+    """What two Newton steps on the finer mesh change, and A_z (n_node,) in Wb/m after them.
 
     Args:
         level: of the model that the solution is of.
@@ -222,12 +227,13 @@ def changes(level: FineLevel, solution: FieldSolution) -> Change:
     a_node = node_values(dof, sign, a)
     thickness = model.bore_radius - model.rim_radius
     torque = gap_torque(gap.quad, gap.places, a_node[gap.elements], thickness)
-    return Change(
+    change = Change(
         torque=per_machine * torque - solution.torque,
         psi_d=psi_d - solution.psi_d,
         psi_q=psi_q - solution.psi_q,
         steps=count,
     )
+    return change, a_node
 
 
 def _gap_at(level: FineLevel, rest: float) -> _Gap:

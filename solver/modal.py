@@ -68,7 +68,7 @@ class Mode:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Matrices:
+class Matrices:
     """Stiffness in N/m and mass in kg of a period, per metre, for x and y of each node in turn."""
 
     period: Period
@@ -87,7 +87,7 @@ def lowest_modes(period: Period, count: int) -> tuple[Mode, ...]:
     Raises:
         ValueError: where a node of a period lies on the axis, whose motion belongs to no period.
     """
-    matrices = _matrices(period)
+    matrices = matrices_of(period)
     found = [
         (square, index, form)
         for index in range(period.periods // 2 + 1)
@@ -106,7 +106,7 @@ def index_modes(period: Period, index: int, count: int) -> tuple[Mode, ...]:
     """
     if not 0 <= index <= period.periods // 2:
         raise ValueError(f"cyclic index {index} of {period.periods} periods")
-    matrices = _matrices(period)
+    matrices = matrices_of(period)
     solved = _solutions(matrices, index, count)
     return tuple(_mode(matrices, index, square, form) for square, form in solved)
 
@@ -118,7 +118,12 @@ def element_mass(body: ElasticBody) -> FloatArray:
     return np.asarray(np.einsum("eq,qi,qj->eij", mass, n, n))
 
 
-def _matrices(period: Period) -> _Matrices:
+def matrices_of(period: Period) -> Matrices:
+    """Stiffness and mass of a period.
+
+    Raises:
+        ValueError: where a node of a period lies on the axis, whose motion belongs to no period.
+    """
     body, mesh = period.body, period.body.mesh
     radius = np.hypot(mesh.nodes[:, 0], mesh.nodes[:, 1])
     if period.periods > 1 and np.any(radius < SIDE_TOL):
@@ -128,7 +133,7 @@ def _matrices(period: Period) -> _Matrices:
     dofs = np.stack([2 * mesh.elements, 2 * mesh.elements + 1], axis=-1).reshape(-1, 12)
     size = 2 * len(mesh.nodes)
     least = float(np.min(body.youngs_modulus / body.density))
-    return _Matrices(
+    return Matrices(
         period,
         _assembled(dofs, element_stiffness(body), size),
         _assembled(dofs, mass.reshape(-1, 12, 12), size),
@@ -142,7 +147,7 @@ def _assembled(dofs: IntArray, values: FloatArray, size: int) -> csr_matrix:
     return csr_matrix((values.ravel(), (rows.ravel(), columns.ravel())), shape=(size, size))
 
 
-def _expansion(period: Period, index: int) -> csr_matrix:
+def unknown_motions(period: Period, index: int) -> csr_matrix:
     """From the unknowns to x and y of each node (2 n_node, n_unknown); real where it can be."""
     supports, number = period.supports, period.supports.unknowns
     turn = 2.0 * math.pi * index / period.periods
@@ -160,10 +165,10 @@ def _expansion(period: Period, index: int) -> csr_matrix:
     return coo_matrix((value[kept], (rows[kept], columns[kept])), shape=shape_of).tocsr()
 
 
-def _solutions(matrices: _Matrices, index: int, count: int) -> list[tuple[float, ComplexArray]]:
+def _solutions(matrices: Matrices, index: int, count: int) -> list[tuple[float, ComplexArray]]:
     """Squares of angular frequency in 1/s^2, rising, and shapes (n_node, 2) of unit mass."""
     period = matrices.period
-    expansion = _expansion(period, index)
+    expansion = unknown_motions(period, index)
     adjoint = expansion.conj().T
     stiffness = csc_matrix(adjoint @ matrices.stiffness @ expansion)
     mass = csc_matrix(adjoint @ matrices.mass @ expansion)
@@ -195,7 +200,7 @@ def _lowest(
     return squares, vectors @ turned
 
 
-def _mode(matrices: _Matrices, index: int, square: float, form: ComplexArray) -> Mode:
+def _mode(matrices: Matrices, index: int, square: float, form: ComplexArray) -> Mode:
     period = matrices.period
     waves, share = _edge_waves(matrices, index, form)
     turned, shaken = _support_shares(matrices, index, form)
@@ -212,7 +217,7 @@ def _mode(matrices: _Matrices, index: int, square: float, form: ComplexArray) ->
     )
 
 
-def _support_shares(matrices: _Matrices, index: int, form: ComplexArray) -> tuple[float, float]:
+def _support_shares(matrices: Matrices, index: int, form: ComplexArray) -> tuple[float, float]:
     """Effective moment of inertia and mass of a mode over those of the whole body.
 
     |phi^H M r|^2 / (r^H M r) for a phi of unit mass, r being a rigid motion (derived: the part of
@@ -231,14 +236,14 @@ def _support_shares(matrices: _Matrices, index: int, form: ComplexArray) -> tupl
     return turned, float(shaken)
 
 
-def _along(matrices: _Matrices, form: ComplexArray, motion: FloatArray | ComplexArray) -> float:
+def _along(matrices: Matrices, form: ComplexArray, motion: FloatArray | ComplexArray) -> float:
     pushed = matrices.mass @ motion.ravel()
     whole = matrices.period.periods * np.vdot(motion.ravel(), pushed).real
     both = matrices.period.periods * np.vdot(form.ravel(), pushed)
     return float(abs(both) ** 2 / whole)
 
 
-def _edge_waves(matrices: _Matrices, index: int, form: ComplexArray) -> tuple[int, float]:
+def _edge_waves(matrices: Matrices, index: int, form: ComplexArray) -> tuple[int, float]:
     """Waves round the outer edge that carry most of its motion, and their share of its square.
 
     c_h = 1 / (2 pi) int u e^(-j h theta) d theta, u radial and tangential, summed over h and -h;

@@ -13,12 +13,14 @@ import numpy as np
 from lamwright.geometry.section import CrossSection, rotor_cell
 
 from .elastic import ElasticBody, ElasticMaterial, elastic_body
+from .estimate_mesh import SparseRows, quartered
 from .mesh import RegionSettings, mesh_regions
-from .mesh_fold import fold
+from .mesh_fold import Fan, fold
 from .mesh_outline import outline_of
 from .mesh_sizes import Across, narrow_places
 from .modal import Period
-from .rotor_stress import sides_of
+from .refine import circles_of
+from .rotor_stress import lamination_circles, sides_of
 from .supports import CoupledSides, coupled_sides, unsupported, with_coupled_sides, with_fixed
 from .types import PlanarMesh
 
@@ -62,8 +64,7 @@ def stator_period(
         teeth_mass_factor: mass of the teeth with their winding over that of the bare teeth; what
             the winding stiffens is left out. Teeth end at the radius where the copper ends.
     """
-    iron = [region for region in section.stator if region.material == "stator_steel"]
-    fan = fold(iron, section.sector_angle, (), (section.sector_slots,))
+    fan = _stator_fan(section)
     pitch = 2.0 * math.pi * section.stator_bore_radius / section.slots
     wanted: list[Across | None] = [Across(ACROSS)] * len(fan.regions)
     mesh = mesh_regions(
@@ -73,6 +74,51 @@ def stator_period(
         narrow_places(outline_of(fan.regions), wanted, SPACING * pitch),
         fan.angle if fan.has_twin_sides else None,
     )
+    return _stator_on(section, fan, mesh, material, teeth_mass_factor)
+
+
+def finer_rotor(
+    section: CrossSection, period: Period, material: ElasticMaterial, *, is_held: bool
+) -> tuple[Period, SparseRows]:
+    """A rotor's period with every triangle cut into four, and the way from its nodes there.
+
+    Args:
+        section: the machine's.
+        period: from `rotor_period`.
+        material: its sheet.
+        is_held: as it is.
+    """
+    fine = quartered(period.body.mesh, lamination_circles(section))
+    return rotor_period(section, fine.mesh, material, is_held=is_held), fine.carry
+
+
+def finer_stator(
+    section: CrossSection,
+    period: Period,
+    material: ElasticMaterial,
+    teeth_mass_factor: float = 1.0,
+) -> tuple[Period, SparseRows]:
+    """The same for a stator's period; arguments as in `stator_period`."""
+    fan = _stator_fan(section)
+    edges = (
+        e for region in fan.regions for path in (region.outer, *region.holes) for e in path.edges
+    )
+    fine = quartered(period.body.mesh, circles_of(edges))
+    return _stator_on(section, fan, fine.mesh, material, teeth_mass_factor), fine.carry
+
+
+def _stator_fan(section: CrossSection) -> Fan:
+    iron = [region for region in section.stator if region.material == "stator_steel"]
+    return fold(iron, section.sector_angle, (), (section.sector_slots,))
+
+
+def _stator_on(
+    section: CrossSection,
+    fan: Fan,
+    mesh: PlanarMesh,
+    material: ElasticMaterial,
+    teeth_mass_factor: float,
+) -> Period:
     body = elastic_body(mesh, material)
     if fan.has_twin_sides:
         sides = coupled_sides(mesh, fan.angle)

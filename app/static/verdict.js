@@ -65,7 +65,7 @@ function ribsTable({ ribs }) {
   if (!ribs?.length) return null;
   const rows = ribs.map((rib) => el("tr", {}, el("th", { scope: "row" }, rib.name.replaceAll("_", " ")),
     el("td", { class: "number" }, `${plain(rib.width_mm)} mm`),
-    el("td", { class: "number" }, `${figure(rib.peak_mpa, rib.peak_error_mpa)} MPa`),
+    el("td", { class: "number" }, `${figure(rib.peak_mpa, rib.peak_mpa_error)} MPa`),
     el("td", { class: "number" }, figure(rib.yield_margin))));
   return table("ribs at overspeed", ["rib", "width", "peak stress", "yield margin"], rows, "ribs");
 }

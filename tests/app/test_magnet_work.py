@@ -12,6 +12,7 @@ from lamwright.app.run import make_desk
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
+from lamwright.postprocess.quantities import figures_of
 from lamwright.postprocess.tables import verdict_record
 from lamwright.postprocess.torque import TorqueSpectrum
 from lamwright.postprocess.verdict import all_figures
@@ -81,17 +82,35 @@ def test_cold_ferrite_with_more_current_is_lost(
     assert lost.record.psi == pytest.approx(work.record.psi, abs=1e-6)  # no load is the same
 
 
+def test_every_figure_of_magnets_has_an_error_or_a_reason(
+    machine: Machine, section: CrossSection, work: MagnetWork
+) -> None:
+    """Errors of all that fields give, each under a tenth but those of shares near nothing."""
+    figures = work.figures(machine, section, I_D, I_Q)
+    errors = work.error_bars(machine, figures, I_D, I_Q)
+    for figure in figures_of(figures):
+        assert (figure.key in errors) != bool(figure.exact), figure.key
+        if "below_knee" not in figure.key and figure.key in errors:
+            assert 0.0 < errors[figure.key] < 0.1 * abs(figure.value), figure.key
+
+
 def test_verdict_tells_magnets_only_where_there_are_any(
     machine: Machine, section: CrossSection, work: MagnetWork
 ) -> None:
     """Keys of magnets stand in the record of a machine that has them, and in no other."""
     plain = invented.verdict()
     figures = work.figures(machine, section, I_D, I_Q)
-    full = dataclasses.replace(plain, magnets=(figures,), magnet_states=work.states)
+    full = dataclasses.replace(
+        plain,
+        magnets=(figures,),
+        magnet_states=work.states,
+        finer_states=work.finer_states,
+    )
     new = set(all_figures(full)) - set(all_figures(plain))
     assert {"no_load_linkage_fundamental_vs", "back_emf_v", "magnet_below_knee_percent"} <= new
     empty = TorqueSpectrum((), *(work.record.psi[:0],) * 2)
     with_magnets, without = (verdict_record(v, empty) for v in (full, plain))
+    assert all(m["flux_density_mean_t_error"] > 0.0 for m in with_magnets["magnets"])
     assert [m["magnet"] for m in with_magnets["magnets"]] == [s.name for s in work.states]
     assert "magnets" not in without
     assert new <= set(with_magnets) - set(without)

@@ -10,6 +10,7 @@ from click.testing import CliRunner
 from lamwright.app.cli import main
 from lamwright.app.rib_run import ribs_design
 from lamwright.geometry.errors import LamwrightError
+from lamwright.postprocess.figure_errors import NOT_ESTIMATED
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 pytestmark = pytest.mark.xdist_group("ribs")  # the fixture is worth several seconds
@@ -69,6 +70,29 @@ def test_figures_hang_together(ran, record):
         )
         assert rib["speed_mean_yield_rpm"] > rib["speed_first_yield_rpm"]
         assert rib["peak_on"].startswith(f"barrier {rib['barrier']}, arc of ")
+
+
+def test_every_figure_has_an_error_or_a_reason(record):
+    """`<key>_error` beside each figure, or a line that says why; the same of each rib."""
+    given = {key.removesuffix("_error") for key in record if key.endswith("_error")}
+    reasons = record["errors_not_given"]
+    figures = {
+        key
+        for key, value in record.items()
+        if isinstance(value, (int, float)) and not isinstance(value, bool)
+    } - {"least_yield_margin", *(key for key in record if key.endswith("_error"))}
+    assert given | set(reasons) == figures
+    assert not given & set(reasons)
+    assert NOT_ESTIMATED not in reasons.values()
+    columns = record["table_errors"]["ribs.csv"]
+    for rib in record["ribs"]:
+        numbers = {key for key, value in rib.items() if not isinstance(value, str)} - {"barrier"}
+        bars = {key.removesuffix("_error") for key in numbers if key.endswith("_error")}
+        assert bars | set(columns) | {f"{key}_error" for key in bars} == numbers
+    assert NOT_ESTIMATED not in columns.values()
+    # The burst's mesh error is that of the load's root, some tenths of a percent here.
+    assert 0.0 < record["speed_burst_low_rpm_error"] < 0.02 * record["speed_burst_low_rpm"]
+    assert 0.0 < record["stator_mode_hz_error"] < 1e-3 * record["stator_mode_hz"]
 
 
 def test_the_terminal_shows_the_ribs(ran):

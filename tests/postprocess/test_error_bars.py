@@ -1,6 +1,7 @@
 """Errors of figures: of the right ones, in their units, as large as the figures really change."""
 
 import dataclasses
+import math
 
 import numpy as np
 import pytest
@@ -8,6 +9,7 @@ import pytest
 from lamwright.geometry.design_file import read_machine
 from lamwright.postprocess.error_bars import magnetic_errors, terminal_errors
 from lamwright.postprocess.operating import saliency_ratio
+from lamwright.postprocess.quantities import STATED
 from lamwright.postprocess.summary import terminal_figures
 from lamwright.postprocess.tables import verdict_record
 from lamwright.postprocess.torque import TorqueSpectrum
@@ -17,7 +19,7 @@ from tests.invented_verdict import MAGNETIC, verdict
 from tests.shipped import DESIGNS
 
 CHANGES = LinkageErrors(change_d=np.array([2e-3]), change_q=np.array([-1e-3]))
-ERRORS = FieldErrors(0.05, 0.04, 0.003, 2e-3, 1e-3, CHANGES)
+ERRORS = FieldErrors(0.05, 0.04, 0.003, 2e-3, 1e-3, CHANGES, 0.1, 3e-3, 2e-3, 0.02)
 SHARE = BEYOND * (1.0 + KNOWN_TO)  # of one sample's change
 FLOOR = 5e-3  # of the errors here, that of Newton's iteration at the most
 
@@ -29,7 +31,15 @@ def test_errors_stand_in_the_units_of_their_figures():
     assert found["torque_ripple_percent"] == pytest.approx(0.3)
     assert found["psi_q_vs"] == 1e-3
     # Prescribed, or differences themselves.
-    assert not {"current_a", "i_d_a", "torque_difference_percent"} & set(found)
+    assert not {"current_a", "torque_difference_percent"} & set(found)
+
+
+def test_currents_err_as_the_best_angle_does():
+    """i_d = I cos gamma: an angle off by d moves it by i_q d, and i_q by i_d d (derived)."""
+    found = magnetic_errors(MAGNETIC, ERRORS)
+    off = math.radians(found["current_angle_deg"])
+    assert found["i_d_a"] == pytest.approx(abs(MAGNETIC.i_q) * off)
+    assert found["i_q_a"] == pytest.approx(abs(MAGNETIC.i_d) * off)
 
 
 def test_saliency_errs_by_what_the_changed_linkages_change():
@@ -71,3 +81,6 @@ def test_the_record_holds_each_error_beside_its_figure():
     assert keys.index("torque_nm_error") == keys.index("torque_nm") + 1
     assert [key for key in keys if key.endswith("_error")] == ["torque_nm_error"]
     assert set(all_figures(made)) < set(keys)
+    # Of all others it is said why they have none.
+    assert set(record["errors_not_given"]) == set(all_figures(made)) - {"torque_nm"}
+    assert record["errors_not_given"]["current_a"] == STATED

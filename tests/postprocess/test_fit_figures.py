@@ -17,6 +17,7 @@ from lamwright.postprocess.fit_figures import (
     fit_figures,
     hot_gap,
     pressed_errors,
+    pressed_rib_errors,
     pressed_ribs,
 )
 from lamwright.postprocess.fit_study import FitStudy, fit_study
@@ -83,13 +84,19 @@ def test_fit_in_even_heat_keeps_its_pressure():
 
 def test_the_worst_state_is_told_with_its_error():
     """Least margin of six states; the ribs' own least are not below it; errors are small."""
-    study = even_heat()[0]
+    study, _, machine = even_heat()
     assert len(study.states) == 6
     worst = study.worst.report.yield_margin
     assert worst == min(state.report.yield_margin for state in study.states)
     assert min(rib.margin for rib in pressed_ribs(study)) >= worst
-    errors = pressed_errors(study)
+    errors = pressed_errors(study, machine)
     assert 0.0 < errors["yield_margin_pressed"] < 0.1 * worst
+    # Every other figure differs on the coarser mesh by less than a tenth, and by something.
+    for figure in (f for group in fit_figures(study, machine) for f in figures_of(group)):
+        if not figure.exact:
+            assert 0.0 < errors[figure.key] < 0.1 * abs(figure.value), figure.key
+    for rib, own in zip(pressed_rib_errors(study), pressed_ribs(study), strict=True):
+        assert 0.0 < rib["pressed_peak_mpa"] < 0.1e-6 * own.peak
 
 
 def test_magnets_lower_the_margin():

@@ -50,7 +50,8 @@ def mode(frequency: float, index: int, waves: int = 0) -> Mode:
 
 def lamination(period: Period, key: str, *modes: Mode) -> Lamination:
     orders = (Order("shaft", 1), Order("electrical 6", 12), Order("slots", 24))
-    return Lamination(key, key.replace("_", " "), period, modes, orders, 4)
+    errors = 1e-3 * np.array([one.frequency for one in modes])
+    return Lamination(key, key.replace("_", " "), period, modes, orders, 4, errors)
 
 
 def test_orders_of_rotor_and_stator():
@@ -160,6 +161,7 @@ def test_all_words_of_the_picture_are_on_its_sheet(period):
         lowest_modes(period, 6),
         orders_of(cross_section(plain_design()), is_stator=True),
         4,
+        np.zeros(6),
     )
     figure = modal_figure("plain", (one, one, one), SPEEDS, Style())
     figure.canvas.draw()

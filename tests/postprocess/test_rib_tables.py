@@ -10,6 +10,7 @@ import pytest
 
 from lamwright.geometry.cross_section import cross_section
 from lamwright.postprocess.rib_tables import (
+    elastic_errors,
     elastic_figures,
     outline_place,
     rib_rows,
@@ -55,11 +56,13 @@ def invented_report() -> RibReport:
 def test_rib_table_reads_back():
     """Units converted by hand; a rib under pressure never yields in tension: empty, not inf.
 
-    First yield at speed x sqrt(margin): 1500 rpm x 2; peak over mean 80 / 20; error 1 % of 80.
+    First yield at speed x sqrt(margin): 1500 rpm x 2; peak over mean 80 / 20; error 1 % of 80,
+    of the speed a half of that share.
     """
     report = invented_report()
-    figures = elastic_figures(SECTION, report, np.array([0.01, 0.02, 0.5]))
-    rows = rib_rows(SECTION, report, figures)
+    figures = elastic_figures(SECTION, report)
+    errors = elastic_errors(SECTION, report, report, np.array([0.01, 0.02, 0.5]))
+    rows = rib_rows(SECTION, report, figures, errors=errors)
     first, second = csv.DictReader(io.StringIO(ribs_csv(rows)))
     assert first["rib"] == SECTION.ribs[0].name
     assert float(first["width_mm"]) == pytest.approx(0.6, rel=1e-5)
@@ -68,7 +71,9 @@ def test_rib_table_reads_back():
         math.degrees(math.atan2(16.750, 35.069)), abs=1e-3
     )
     assert float(first["speed_first_yield_rpm"]) == pytest.approx(3000.0)
-    assert float(first["peak_error_mpa"]) == pytest.approx(0.8)
+    assert float(first["peak_mpa_error"]) == pytest.approx(0.8)
+    assert float(first["speed_first_yield_rpm_error"]) == pytest.approx(15.0)
+    assert first["speed_mean_yield_rpm_error"] == ""
     assert first["speed_mean_yield_rpm"] == first["stress_concentration"] == ""
     assert float(second["speed_mean_yield_rpm"]) == pytest.approx(3000.0)
     assert float(second["stress_concentration"]) == pytest.approx(4.0)
