@@ -10,7 +10,6 @@ import tomllib
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
-from lamwright.geometry.checks import shape_faults
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import Machine, design_hash
@@ -18,7 +17,6 @@ from lamwright.geometry.design_keys import key_steps
 from lamwright.geometry.errors import DesignError, GeometryError, LamwrightError
 from lamwright.geometry.key_lines import key_lines, line_of
 from lamwright.geometry.key_ranges import key_range
-from lamwright.geometry.remedies import value_of
 from lamwright.geometry.section import CrossSection
 
 from .page_drawing import Record, drawing_record
@@ -79,13 +77,9 @@ def outlined(
         machine = folder.machine(path, text)
     except DesignError as error:
         return Outlined(text, tuple(_of_lines(str(error), folder.design_file(path).name)))
-    design = machine.design
-    if not remedies and (faults := shape_faults(design)):
-        named = [(fault.keys[0], fault.text) for fault in faults]
-        told = [(key, f"{key} = {value_of(design, key):g}: {said}") for key, said in named]
-        return Outlined(text, _at_keys(text, told), machine)
     try:
-        return Outlined(text, (), machine, cross_section(design))
+        section = cross_section(machine.design, remedies=remedies)
+        return Outlined(text, (), machine, section)
     except GeometryError as error:
         told = [(one.key, one.text) for one in error.findings]
         return Outlined(text, _at_keys(text, told), machine)

@@ -24,9 +24,14 @@ from .unlike_poles import of_all_poles
 from .winding import winding_findings
 
 
-def check_design(design: MachineDesign) -> tuple[Finding, ...]:
-    """All findings on the design, stator first; empty where `cross_section` will succeed."""
-    found = findings(design, shape_faults(design), shared_faults)
+def check_design(design: MachineDesign, *, remedies: bool = True) -> tuple[Finding, ...]:
+    """All findings on the design, stator first; empty where `cross_section` will succeed.
+
+    Args:
+        design: the machine.
+        remedies: look for the range that mends a fault of the shape, which takes a second or two.
+    """
+    found = findings(design, shape_faults(design), shared_faults if remedies else None)
     if design.rotor.poles % 2 == 0:
         found += winding_findings(design)
     found += tuple(strand_findings(design.winding))

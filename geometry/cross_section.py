@@ -12,19 +12,22 @@ from .winding import winding_table
 MM = 1e-3  # m
 
 
-def cross_section(design: MachineDesign, sector_poles: int | None = None) -> CrossSection:
+def cross_section(
+    design: MachineDesign, sector_poles: int | None = None, *, remedies: bool = True
+) -> CrossSection:
     """A sector of the design's machine as exact regions in SI units.
 
     Args:
         design: the machine.
         sector_poles: of the sector, a multiple of the smallest that stands for the machine and
             a divisor of the poles; the smallest itself if not given.
+        remedies: whether findings say what would fit, as of `check_design`.
 
     Raises:
         ValueError: for a sector that does not stand for the machine.
         GeometryError: with every finding, if the shape cannot be drawn or punched.
     """
-    findings = check_design(design)
+    findings = check_design(design, remedies=remedies)
     if findings:
         raise GeometryError(findings)
     frame = rotor_frame(design)

@@ -5,17 +5,21 @@ tables are validated, so that every later step finds whole tables; a dimension t
 states all the same must be the drawing's.
 """
 
+import hashlib
 import math
-from collections.abc import Mapping, Sequence
+import threading
+from collections import OrderedDict
+from collections.abc import Callable, Hashable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Generic, TypeVar
 
 from .design import MachineDesign, RotorDesign, StatorDesign
 from .design_drawing import OutlineKeys
 from .drawn_rotor import recognised_rotor
 from .drawn_slot import SlotHints
 from .drawn_stator import recognised_stator
-from .dxf_reader import DrawnPieces, read_pieces
+from .dxf_reader import DrawnPieces, drawing_bytes, read_pieces
 from .errors import DrawingMark, OutlineError
 from .key_lines import KeyPath
 from .outline_report import RotorOutline, StatorOutline, source_of, stator_measures
@@ -50,6 +54,9 @@ NO_BARRIER: "Data" = {
     "tangential_rib_mm": 1.0,
 }
 
+MOST_KEPT = 4  # outlines of either kind
+
+_Outline = TypeVar("_Outline")
 Data = dict[str, object]
 PlacedFault = tuple[KeyPath, str]
 
@@ -118,11 +125,17 @@ def _stator(table: object, folder: Path) -> _Part:
     keys = _outline_keys(table)
     if keys is None:
         return _Part({**STATOR_FILLERS, **table})
+    hints = _hints(table)
+
+    def recognised(pieces: DrawnPieces) -> StatorOutline:
+        drawing = recognised_stator(pieces.edges, UM * keys.heal_um, hints)
+        return StatorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
+
     try:
-        pieces = _pieces(keys, folder)
-        drawing = recognised_stator(pieces.edges, UM * keys.heal_um, _hints(table))
+        outline = _STATORS.of(folder, keys, hints, recognised)
     except OutlineError as error:
         return _failed("stator", {**STATOR_FILLERS, **table}, keys, folder, error)
+    drawing = outline.drawing
     measures = stator_measures(drawing)
     faults = _unlike("stator", table, measures, STATOR_KEYS, set(StatorDesign.model_fields))
     if drawing.slot.is_parted and table.get("wedge_depth_mm"):
@@ -131,7 +144,6 @@ def _stator(table: object, folder: Path) -> _Part:
     filled = {**measures, **table, "slots": table.get("slots", drawing.slots)}
     if drawing.slot.mouth is None:
         filled["slot_mouth"] = "closed"
-    outline = StatorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
     return _Part(filled, outline, faults)
 
 
@@ -146,13 +158,18 @@ def _rotor(table: object, stator: object, folder: Path) -> _Part:
     is_even = isinstance(poles, int) and not isinstance(poles, bool) and poles in range(2, 25, 2)
     if keys is None or not is_even or not _is_number(bore) or not _is_number(q_axis or 0.0):
         return _Part({**ROTOR_FILLERS, **table, **barrier})
-    assert isinstance(poles, int)
-    try:
-        pieces = _pieces(keys, folder)
-        told = None if q_axis is None else math.radians(_float(q_axis))
+    told = None if q_axis is None else math.radians(_float(q_axis))
+
+    def recognised(pieces: DrawnPieces) -> RotorOutline:
+        assert isinstance(poles, int)
         drawing = recognised_rotor(pieces.edges, UM * keys.heal_um, poles, told)
+        return RotorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
+
+    try:
+        outline = _ROTORS.of(folder, keys, (poles, told), recognised)
     except OutlineError as error:
         return _failed("rotor", {**ROTOR_FILLERS, **table, **barrier}, keys, folder, error)
+    drawing = outline.drawing
     measures = {
         "shaft_diameter_mm": 2.0 * drawing.shaft_radius / MM,
         "gap_mm": 0.5 * _float(bore) - drawing.rotor_radius / MM,
@@ -164,13 +181,50 @@ def _rotor(table: object, stator: object, folder: Path) -> _Part:
             f"diameter, the stator's bore {_float(bore):.6g}; accepted a smaller rotor"
         )
         faults = (*faults, (("rotor", "outline_dxf"), text))
-    outline = RotorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
     return _Part({**table, **measures, **barrier}, outline, faults)
 
 
-def _pieces(keys: OutlineKeys, folder: Path) -> DrawnPieces:
-    path = folder / str(keys.outline_dxf)
-    return read_pieces(path, keys.outline_unit_mm, keys.outline_layers)
+class _Known(Generic[_Outline]):
+    """The last few drawings in which something was recognised, by their content and keys.
+
+    Where a design is changed again and again, as on the page, its drawings stay as they are; to
+    read and recognise one takes 0.3 s (measured).
+    """
+
+    def __init__(self) -> None:
+        """None yet."""
+        self._kept: OrderedDict[Hashable, _Outline] = OrderedDict()
+        self._lock = threading.Lock()
+
+    def of(
+        self,
+        folder: Path,
+        keys: OutlineKeys,
+        hints: Hashable,
+        recognised: Callable[[DrawnPieces], _Outline],
+    ) -> _Outline:
+        """The outline in the drawing that the keys name, recognised if it is not known.
+
+        Raises:
+            OutlineError: nothing is recognised; that is not kept.
+        """
+        data = drawing_bytes(folder / str(keys.outline_dxf))
+        named = tuple(keys.model_dump().items())
+        cause = (hashlib.sha256(data).digest(), named, hints)
+        with self._lock:
+            if cause in self._kept:
+                self._kept.move_to_end(cause)
+                return self._kept[cause]
+        outline = recognised(read_pieces(data, keys.outline_unit_mm, keys.outline_layers))
+        with self._lock:
+            self._kept[cause] = outline
+            while len(self._kept) > MOST_KEPT:
+                self._kept.popitem(last=False)
+        return outline
+
+
+_STATORS: _Known[StatorOutline] = _Known()
+_ROTORS: _Known[RotorOutline] = _Known()
 
 
 def _failed(name: str, table: Data, keys: OutlineKeys, folder: Path, error: OutlineError) -> _Part:

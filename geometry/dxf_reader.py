@@ -64,7 +64,7 @@ class DrawnPieces:
 
 
 def read_pieces(
-    path: FilePath,
+    drawing: FilePath | bytes,
     unit_mm: float | None = None,
     layers: Sequence[str] = (),
     assumed_mm: float | None = None,
@@ -72,7 +72,7 @@ def read_pieces(
     """The lines and arcs of a DXF drawing.
 
     Args:
-        path: the file.
+        drawing: the file, or what it holds.
         unit_mm: mm per drawing unit; None takes the file's own statement.
         layers: names of the layers that hold the outline; none means all that are shown.
         assumed_mm: mm per drawing unit where neither is told; None refuses such a file.
@@ -80,7 +80,7 @@ def read_pieces(
     Raises:
         OutlineError: one line, if the file cannot be read or states no unit, or holds nothing.
     """
-    data = _bytes(path)
+    data = drawing if isinstance(drawing, bytes) else drawing_bytes(drawing)
     _raise_if_endless(data)
     document = _document(data)
     unit, source = _unit(document, unit_mm, assumed_mm)
@@ -117,7 +117,12 @@ def read_pieces(
     )
 
 
-def _bytes(path: FilePath) -> bytes:
+def drawing_bytes(path: FilePath) -> bytes:
+    """What a drawing's file holds.
+
+    Raises:
+        OutlineError: one line, if it cannot be read, or holds nothing or too much.
+    """
     fault = _read_fault(path)
     if fault:
         raise OutlineError(fault)

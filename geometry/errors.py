@@ -72,12 +72,13 @@ class Finding:
     key: str
     value: float
     fault: str
-    remedy: str
+    remedy: str  # empty where what would fit was not looked for
 
     @property
     def text(self) -> str:
         """The finding as one line without its place in the file."""
-        return f"{self.key} = {self.value:g}: {self.fault}; {self.remedy}"
+        told = f"{self.key} = {self.value:g}: {self.fault}"
+        return f"{told}; {self.remedy}" if self.remedy else told
 
 
 class OutlineError(LamwrightError, ValueError):

@@ -76,8 +76,12 @@ def _end(value: float, limit: float, quick: Check, whole: Check, is_accepted: bo
         inside, found = _closed_in(inside, outside, found, quick)
     end = _rounded(value, inside)
     if (missed := whole(end)) and end != value:
-        inside, found = _closed_in(value, end, missed, whole)
-        end = _rounded(value, inside)
+        found = missed
+        # A round number that itself does not fit, though all before it do: the one before it.
+        end = _rounded(value, inside, 0.0)
+        if end != value and (missed := whole(end)):
+            inside, found = _closed_in(value, end, missed, whole)
+            end = _rounded(value, inside, 0.0)
     if found:
         return RangeEnd(end, found[0].code, f"{found[0].keys[0]}: {found[0].text}")
     return RangeEnd(end, "", f"no check; the search ends at {limit:g}")
@@ -146,9 +150,9 @@ def _guessed(
     return tried if is_between else 0.5 * (inside + outside)
 
 
-def _rounded(value: float, end: float) -> float:
+def _rounded(value: float, end: float, slack: float = ROUNDING) -> float:
     """The end rounded towards the value as it stands, which it does not pass."""
     scale = 10.0**DECIMALS
     if end < value:
-        return min(math.ceil(end * scale - ROUNDING) / scale, value)
-    return max(math.floor(end * scale + ROUNDING) / scale, value)
+        return min(math.ceil(end * scale - slack) / scale, value)
+    return max(math.floor(end * scale + slack) / scale, value)

@@ -71,21 +71,21 @@ class Domain:
 Faults = Callable[[MachineDesign, str], Sequence[Fault]]  # those that a key has a share in
 
 
-def findings(design: MachineDesign, found: Sequence[Fault], faults: Faults) -> list[Finding]:
+def findings(design: MachineDesign, found: Sequence[Fault], faults: Faults | None) -> list[Finding]:
     """The faults, each with the key that mends it and the range that fits.
 
     Args:
         design: the design with the faults.
         found: some of its faults.
-        faults: design and key -> all faults in which the key has a share.
+        faults: design and key -> all faults in which the key has a share; None looks for no range.
     """
     searches: dict[str, _Search] = {}  # faults that look to the same key share its trials
     result = []
     for fault in found:
         key, remedy = fault.keys[0], fault.remedy
-        if remedy is None:
+        if remedy is None and faults is not None:
             key, remedy = _mended(design, fault, faults, searches)
-        result.append(Finding(fault.code, key, value_of(design, key), fault.text, remedy))
+        result.append(Finding(fault.code, key, value_of(design, key), fault.text, remedy or ""))
     return result
 
 

@@ -23,6 +23,7 @@ import cmath
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import pairwise
 
 from .bands import Band, mirrored_band
@@ -36,6 +37,7 @@ from .mid_lines import MM
 FULL_ROUND_TOL = 1e-9  # m, a fillet so close to half the thickness is meant to be it
 LENGTH_TOL = 1e-13  # m, of what is found by iteration; 1e-4 of a nanometre
 MOST_STEPS = 60
+ASIDE_TOL = 1e-6  # of an edge's chord, far above rounding
 SLIVER = 1e-9  # relative to a fillet: a shorter edge is rounding
 
 
@@ -101,6 +103,8 @@ def _heights(barrier: BarrierDesign) -> tuple[float, ...]:
     return (-offset, offset)
 
 
+# The same ribs are checked, checked for webs beside them, and drawn.
+@lru_cache(maxsize=64)
 def rib_sides(band: Band, cut: RibCut) -> tuple[RibSide, RibSide]:
     """The clockwise and the counter-clockwise side of a rib, the rib as wide as stated.
 
@@ -116,13 +120,15 @@ def rib_sides(band: Band, cut: RibCut) -> tuple[RibSide, RibSide]:
         below = _side(mirrored, (pivot - shift).conjugate(), cut, along.conjugate())
         return _mirrored(below), _side(band, pivot + shift, cut, along)
 
-    def excess(width: float) -> float:
-        start, end = thinnest(*sides(width), cut)
+    def excess(pair: tuple[RibSide, RibSide]) -> float:
+        start, end = thinnest(*pair, cut)
         return abs(end - start) - cut.width
 
-    if excess(cut.width) < LENGTH_TOL:
-        return sides(cut.width)
-    return sides(_root(excess, cut.width, cut.width - excess(cut.width)))
+    stated = sides(cut.width)
+    by = excess(stated)
+    if by < LENGTH_TOL:
+        return stated
+    return sides(_root(lambda width: excess(sides(width)), cut.width, cut.width - by))
 
 
 def mirrored_pair(sides: tuple[RibSide, RibSide]) -> tuple[RibSide, RibSide]:
@@ -185,13 +191,26 @@ def _crossing(band: Band, base: Point, along: complex, near: Point) -> tuple[Spo
 def _met(band: Band, probe: Edge) -> list[Spot]:
     """Where an unbounded line meets the band's sides, in order along it."""
     found = []
+    across = (probe.end - probe.start).conjugate() / abs(probe.end - probe.start)
     for is_rim, chain in ((False, band.to_shaft), (True, band.to_rim)):
         for index, edge in enumerate(chain):
+            if _is_aside(edge, probe.start, across):
+                continue
             for point in crossings(edge, probe):
                 if is_within(edge, point):
                     at = ((point - probe.start) / (probe.end - probe.start)).real
                     found.append(Spot(at, is_rim, index, point))
     return sorted(found, key=lambda spot: spot.at)
+
+
+def _is_aside(edge: Edge, base: Point, across: complex) -> bool:
+    """Whether an edge lies on one side of a line; most of a fine chain's do, so it pays to look.
+
+    No arc up to half a turn is farther from its chord than half of it times the bulge.
+    """
+    first, last = ((edge.start - base) * across).imag, ((edge.end - base) * across).imag
+    reach = (0.5 * abs(edge.bulge) + ASIDE_TOL) * abs(edge.end - edge.start)
+    return abs(edge.bulge) <= 1.0 and first * last > 0.0 and min(abs(first), abs(last)) > reach
 
 
 def _side(band: Band, base: Point, cut: RibCut, along: complex) -> RibSide:

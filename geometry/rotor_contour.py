@@ -193,16 +193,29 @@ def ribs_to_rim(
 
 def _rib_to_rim(rib: Rib, cavities: Sequence[Region], rim: Sequence[Edge]) -> Rib:
     """The rib from its barrier's end, where it starts on the round rotor, to the rim."""
-    spot = line(rib.start, rib.end)
-    _, path, at = min(
-        (abs(nearest(edge, spot)[0] - rib.start), k, at)
-        for k, region in enumerate(cavities)
-        for at, edge in enumerate(region.outer.edges)
-    )
+    path, at = _edge_at(rib, cavities)
     edges = cavities[path].outer.edges
     end = [edges[(at + step) % len(edges)] for step in range(-END_EDGES, END_EDGES + 1)]
     start, foot = _nearest(end, rim)
     return replace(rib, start=start, end=foot)
+
+
+def _edge_at(rib: Rib, cavities: Sequence[Region]) -> tuple[int, int]:
+    """Which cavity's edge a rib starts on: the numbers of both."""
+    spot = line(rib.start, rib.end)
+    # No point of an edge lies further than half its length from its middle.
+    bounds = sorted(
+        (abs(edge.point(0.5) - rib.start) - 0.5 * edge.length, k, at)
+        for k, region in enumerate(cavities)
+        for at, edge in enumerate(region.outer.edges)
+    )
+    best = (math.inf, 0, 0)
+    for bound, k, at in bounds:
+        if bound > best[0]:
+            break
+        point, _ = nearest(cavities[k].outer.edges[at], spot)
+        best = min(best, (abs(point - rib.start), k, at))
+    return best[1:]
 
 
 def _nearest(first: Sequence[Edge], second: Sequence[Edge]) -> tuple[Point, Point]:

@@ -78,13 +78,15 @@ def test_a_design_with_drawings_goes_to_other_processes_whole(tmp_path):
     assert copy.stator.outline == design.stator.outline != None  # noqa: E711
 
 
-def test_the_hash_follows_the_drawing(tmp_path):
-    """Two files of one sheet are two states of the design."""
+def test_the_hash_follows_the_drawing(tmp_path, monkeypatch):
+    """Two files of one sheet are two states of the design; a known one is not read again."""
     hashes = set()
     for name in ("polylines", "mirror_image"):
         write_form(name, sheet(read_design(DEMO)), tmp_path)
         hashes.add(design_hash(read_design(design_with(tmp_path, STATOR)), ()))
     assert len(hashes) == 2
+    monkeypatch.setattr("lamwright.geometry.design_outlines.read_pieces", None)
+    assert design_hash(read_design(design_with(tmp_path, STATOR)), ()) in hashes
 
 
 def test_only_what_can_be_moved_has_a_slope(tmp_path):

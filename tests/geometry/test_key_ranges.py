@@ -36,6 +36,21 @@ def test_ends_fit_and_what_lies_beyond_does_not(key):
             assert end.code in codes
 
 
+@pytest.mark.parametrize(
+    ("name", "key"),
+    [
+        ("gallery/ropeway_48s8p", "rotor.barrier[2].radial_rib_mm"),
+        ("gallery/extruder_45s6p", "rotor.barrier[1].depth_mm"),
+    ],
+)
+def test_a_round_number_that_does_not_fit_is_no_end(name, key):
+    """Here all values before a round one fit, and it does not: the end is the thousandth before."""
+    design = read_design(Path(f"designs/{name}.toml"))
+    found = key_range(design, key)
+    for end in (found.least.value, found.most.value):
+        assert not shape_faults(with_value(design, key, end))
+
+
 def test_closed_forms():
     """Carriers of 0.5 mm on the q axis and ribs of the sheet's thickness: sums of the file."""
     depth = key_range(DESIGN, "rotor.barrier[2].depth_mm")
