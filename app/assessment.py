@@ -308,7 +308,14 @@ class Assessment:
         _, settings, _ = tolerance_settings(self.tolerance)
         wishes = RibWishes()
         ribbed = Ribbed(
-            self.machine, self.section, stress, settings, self.watch, wishes, self.pictures
+            self.machine,
+            self.section,
+            stress,
+            settings,
+            self.watch,
+            wishes,
+            self.pictures,
+            has_stress_picture=self.pictures,
         )
         return write_results(ribbed, stage, self.tolerance, CHAPTERS)
 

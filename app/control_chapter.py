@@ -24,6 +24,7 @@ from lamwright.postprocess.control_files import (
     drive_header,
     inverse_csv,
     planning_csv,
+    volt_speeds_csv,
 )
 from lamwright.postprocess.figures_control import write_control
 from lamwright.postprocess.netcdf import write_netcdf
@@ -36,6 +37,8 @@ from .version import version
 
 TABLE_FILE, INVERSE_FILE = "control_table.csv", "inverse_map.csv"
 AMPERE_FILE, VOLT_FILE = "most_torque_per_ampere.csv", "most_torque_per_volt.csv"
+VOLT_SPEEDS_FILE = "most_torque_per_volt_speeds.csv"
+VOLT_SPEEDS = (0.25, 0.5, 0.75, 1.0)  # of the maximum speed, beside rated speed
 NETCDF_FILE, HEADER_FILE = "control.nc", "control.h"
 
 
@@ -59,6 +62,9 @@ def control_chapter(mapped: Mapped, stage: Path) -> Chapter:
     write_text(stage / INVERSE_FILE, inverse_csv(control.inverse))
     write_text(stage / AMPERE_FILE, curve_csv(control.per_ampere))
     write_text(stage / VOLT_FILE, curve_csv(control.per_volt))
+    shares = {share * duty.maximum_speed_rpm for share in VOLT_SPEEDS}
+    speeds = [rpm / RPM for rpm in sorted({duty.rated_speed_rpm, *shares})]
+    write_text(stage / VOLT_SPEEDS_FILE, volt_speeds_csv(control, speeds))
     cautions = control_cautions(control, duty.maximum_speed_rpm)
     header = drive_header(control, design.name, _header_text(mapped, control, cautions))
     write_text(stage / HEADER_FILE, c_header_text(header, wishes.number_format))

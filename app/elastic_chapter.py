@@ -19,7 +19,7 @@ def elastic_chapter(ribbed: Ribbed, stage: Path) -> RibChapter:
     """Figures at overspeed with their error bars, a row for each rib, and the picture."""
     stress, section = ribbed.stress, ribbed.section
     rotor = rotor_figures(section, stress.report)
-    if ribbed.pictures:
+    if ribbed.pictures and not ribbed.has_stress_picture:
         from lamwright.postprocess.figures import stress_figure, write_figure
 
         name = ribbed.machine.design.name

@@ -40,6 +40,7 @@ class Ribbed:
     watch: Stopwatch
     wishes: RibWishes
     pictures: bool
+    has_stress_picture: bool = False  # whether it is drawn already, by `assess`
 
     @property
     def overspeed(self) -> float:

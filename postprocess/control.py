@@ -4,6 +4,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from lamwright.solver.types import FloatArray
+
 from .c_numbers import NumberFormat, base_of, held
 from .control_curves import ControlCurve, ampere_curve, volt_curve
 from .control_tables import (
@@ -61,9 +63,7 @@ def control_of(
     planning = planning_table(lines, pull_out, limit, size[0])
     reading = drive_table(lines, pull_out, limit, size[0])
     points, inverse = reading.points, inverse_map(drive, INVERSE_POINTS)
-    # About equal steps of current, from where the map's nodes tell the linkage's bend.
-    torques = float(per_ampere.torque[-1]) * np.linspace(VOLT_FIRST, 1.0, VOLT_POINTS) ** 2
-    per_volt = volt_curve(lines, torques, None)
+    per_volt = volt_curve(lines, volt_torques(per_ampere), None)
     # All currents of the header share one base, and so do its torques.
     currents = [points.i_d, points.i_q, inverse.i_d, inverse.i_q, per_ampere.amplitude]
     current_base = base_of(form, *currents, per_volt.i_d, per_volt.i_q)
@@ -88,3 +88,12 @@ def control_of(
         torque_base,
         pull_out,
     )
+
+
+def volt_torques(per_ampere: ControlCurve) -> FloatArray:
+    """Torques in N m that most torque per volt is told at, up to that of the current limit.
+
+    About equal steps of current, from where the map's nodes tell the linkage's bend.
+    """
+    most = float(per_ampere.torque[-1])
+    return np.asarray(most * np.linspace(VOLT_FIRST, 1.0, VOLT_POINTS) ** 2)

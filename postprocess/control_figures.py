@@ -99,7 +99,7 @@ def curve_figures(control: Control) -> CurveFigures:
 def pull_out_figures(control: Control, omega_e: float) -> PullOutFigures | None:
     """Figures at the most torque of a speed in electrical rad/s; None if there is none."""
     lines, speed = torque_lines(control.drive), np.array([omega_e])
-    limit = torque_limit(lines, speed).torque
+    limit = torque_limit(control.drive, speed).torque
     if not limit[0] > 0.0:
         return None
     points = control_points(lines, limit, speed, limit)

@@ -12,13 +12,15 @@ import numpy as np
 from lamwright.solver.types import FloatArray
 
 from .c_header import CArray, CHeader
-from .control import Control
-from .control_curves import ControlCurve
+from .control import Control, volt_torques
+from .control_curves import ControlCurve, volt_curve
 from .control_tables import ControlTable
 from .files import csv_text
 from .inverse_map import InverseMap
 from .netcdf import Variable
 from .quantities import RPM
+from .terminals import voltages
+from .torque_lines import torque_lines
 
 DEGREE = math.pi / 180.0
 LINE_RMS = math.sqrt(1.5)  # V rms between lines of a star connection per V peak of a phase
@@ -26,7 +28,11 @@ LINE_RMS = math.sqrt(1.5)  # V rms between lines of a star connection per V peak
 
 def curve_csv(curve: ControlCurve) -> str:
     """One row for each point of a curve."""
-    columns = {
+    return _csv(_curve(curve))
+
+
+def _curve(curve: ControlCurve) -> dict[str, FloatArray]:
+    return {
         "current_a": curve.amplitude,
         "gamma_el_deg": curve.gamma / DEGREE,
         "i_d_a": curve.i_d,
@@ -36,7 +42,19 @@ def curve_csv(curve: ControlCurve) -> str:
         "psi_stator_vs": np.hypot(curve.psi_d, curve.psi_q),
         "torque_nm": curve.torque,
     }
-    return _csv(columns)
+
+
+def volt_speeds_csv(control: Control, speeds: Sequence[float]) -> str:
+    """Most torque per volt with resistance: a row for each speed (rad/s, mechanical) and point."""
+    drive, lines = control.drive, torque_lines(control.drive)
+    pole_pairs = drive.surface.pole_pairs
+    tables = []
+    for speed in speeds:
+        curve = volt_curve(lines, volt_torques(control.per_ampere), pole_pairs * speed)
+        volts = np.hypot(*voltages(drive, curve.i_d, curve.i_q, np.asarray(pole_pairs * speed)))
+        still = {"speed_rpm": np.full(curve.i_d.shape, speed * RPM)}
+        tables.append({**still, **_curve(curve), "voltage_line_rms_v": volts * LINE_RMS})
+    return _csv({key: np.concatenate([table[key] for table in tables]) for key in tables[0]})
 
 
 def planning_csv(table: ControlTable, pole_pairs: int) -> str:

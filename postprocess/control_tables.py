@@ -71,7 +71,7 @@ def speed_limits(lines: TorqueLines, most_speed: float, count: int) -> TorqueLim
     Raises:
         LamwrightError: at no speed the supply reaches a torque.
     """
-    limit = torque_limit(lines, np.linspace(0.0, most_speed, count))
+    limit = torque_limit(lines.drive, np.linspace(0.0, most_speed, count))
     if number(limit.torque).max() <= 0.0:
         raise LamwrightError(_weak_supply(lines, "at any speed"))
     return limit
@@ -102,7 +102,7 @@ def drive_table(
     if last < 1:
         raise LamwrightError(_weak_supply(lines, "above standstill"))
     if last < count_s - 1:
-        limit = torque_limit(lines, np.linspace(0.0, float(limit.omega_e[last]), count_s))
+        limit = torque_limit(lines.drive, np.linspace(0.0, float(limit.omega_e[last]), count_s))
     axis = np.linspace(0.0, 1.0, count) ** 2
     return _table(lines, pull_out, axis, axis[:, None] * limit.torque, limit)
 
@@ -177,7 +177,7 @@ def reading_error(
     )
     off = shaft_torque(drive, read_d, read_q) - asked
     over = np.sqrt(square_voltage(drive, read_d, read_q, omega_e)) - drive.voltage_limit
-    true = torque_limit(lines, omega_e)
+    true = torque_limit(drive, omega_e)
     best = control_points(lines, asked, omega_e, true.torque)
     held = best.is_reachable
     away = np.hypot(read_d - best.i_d, read_q - best.i_q)[held]

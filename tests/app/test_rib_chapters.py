@@ -42,6 +42,14 @@ def values(chapter):
     return {figure.key: figure.value for group in chapter.figures for figure in figures_of(group)}
 
 
+def test_the_stress_is_drawn_by_one_of_two(slow_rotor, tmp_path):
+    """`assess --ribs` has drawn it already; by itself `ribs` draws it."""
+    for has_picture in (True, False):
+        ribbed = dataclasses.replace(slow_rotor, pictures=True, has_stress_picture=has_picture)
+        elastic_chapter(ribbed, tmp_path)
+        assert (tmp_path / "stress.png").exists() != has_picture
+
+
 def test_no_life_without_fatigue_data(slow_rotor, tmp_path):
     """The other demo card has none: no figure, no column, one line that names what is missing."""
     card = read_steel_card(DESIGNS / "steel" / "demo_035.toml")

@@ -45,7 +45,7 @@ SPEEDS = np.array([0.0, 150.0, 400.0, 700.0, 1100.0, 2500.0])  # electrical rad/
 def table(name):
     drive = DRIVES[name]
     lines = torque_lines(drive)
-    limit = torque_limit(lines, SPEEDS)
+    limit = torque_limit(drive, SPEEDS)
     torque = np.linspace(0.0, 1.0, 8) * np.nanmax(limit.torque)
     return drive, limit, control_points(lines, torque[:, None], SPEEDS, limit.torque)
 
@@ -108,20 +108,22 @@ def test_limit_of_the_linear_machine():
     volts, amps = drive.voltage_limit, drive.current_limit
     base = volts / (amps * math.sqrt(0.5 * (L_D**2 + L_Q**2)))
     speeds = np.array([0.0, 0.999 * base, 1.001 * base, 3000.0, 6000.0])
-    limit = torque_limit(torque_lines(drive), speeds)
+    limit = torque_limit(drive, speeds)
     most = 0.75 * 2 * (L_D - L_Q) * amps**2
     assert limit.torque[:2] == pytest.approx([most, most])
     assert 0.99 * most < limit.torque[2] < most
     far = 1.5 * 2 * (volts / speeds[3:]) ** 2 * (L_D - L_Q) / (2.0 * L_D * L_Q)
     assert limit.torque[3:] == pytest.approx(far)
-    assert limit.is_per_volt.tolist() == [False, False, False, True, True]
+    used = np.hypot(limit.i_d, limit.i_q) / amps
+    assert used[:3] == pytest.approx(np.ones(3))
+    assert np.all(used[3:] < 0.9)  # the voltage alone rules
 
 
 def test_a_speed_that_magnets_forbid_has_no_point():
     """Psi_m w > U with psi_m / L_q over the current limit: nothing is within the voltage."""
     drive = drive_of(linear_map(2, L_D, L_Q, AXIS, BOTH, psi_m=0.25))
     lines, speeds = torque_lines(drive), np.array([100.0, 2.0e5])
-    limit = torque_limit(lines, speeds)
+    limit = torque_limit(drive, speeds)
     assert np.isfinite(limit.torque).tolist() == [True, False]
     points = control_points(lines, np.zeros(2), speeds, limit.torque)
     assert points.is_reachable.tolist() == [True, False]
@@ -131,7 +133,7 @@ def test_a_speed_that_magnets_forbid_has_no_point():
 def test_resistance_alone_can_hold_the_current_down():
     """At standstill U = R I: most current is U / R below the limit, at 45 degrees."""
     drive = drive_of(linear_map(2, L_D, L_Q, AXIS, AXIS), resistance=5.0, line_voltage=60.0)
-    limit = torque_limit(torque_lines(drive), np.zeros(1))
+    limit = torque_limit(drive, np.zeros(1))
     current = drive.voltage_limit / drive.resistance
     assert current < drive.current_limit
     assert limit.i_d == pytest.approx([current / math.sqrt(2.0)], rel=1e-6)
