@@ -54,6 +54,11 @@ def evaluate(task: Task) -> Evaluation:
     return replace(done, seconds=time.perf_counter() - began)
 
 
+def imported() -> None:
+    """Import what an evaluation needs: 1 s that a worker spends while its study is read."""
+    from . import study_machine, study_quick, study_screening  # noqa: F401
+
+
 def _ended(outcome: OutcomeName, stage: str, error: Exception) -> Evaluation:
     told = str(error) if isinstance(error, LamwrightError) else f"{type(error).__name__}: {error}"
     return Evaluation(outcome, reason=" ".join(told.split()), stage=stage)

@@ -88,13 +88,13 @@ def search(
     if settings.polish:  # refused before anything is computed
         raise_if_idle(space, study.goals, KNOWN_FIGURES)
     folder = prepared_folder(Path(out))
-    from .evaluation import evaluate
+    from .evaluation import evaluate, imported
     from .ledger import Ledger
 
     try:
         with (
             Ledger.open(folder, study) as ledger,
-            hired(evaluate, wishes, study.seconds) as pool,
+            hired(evaluate, wishes, study.seconds, imported) as pool,
         ):
             run = _Run(study, settings, ledger, pool, watch)
             state = run.search(on_generation)

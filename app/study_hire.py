@@ -73,7 +73,10 @@ def checked(wishes: PoolWishes) -> PoolWishes:
 
 @contextmanager
 def hired(
-    call: Callable[[Task], Result], wishes: PoolWishes, limit_s: float
+    call: Callable[[Task], Result],
+    wishes: PoolWishes,
+    limit_s: float,
+    ready: Callable[[], object] | None = None,
 ) -> "Iterator[Pool[Task, Result]]":
     """The pool while the block runs; its workers are ended after it, whatever they are doing.
 
@@ -81,13 +84,14 @@ def hired(
         call: what is done with a task, importable by name.
         wishes: who does it.
         limit_s: time that a task may take, in s, where the wishes state none.
+        ready: what each worker on this machine does before its first task, importable by name.
 
     Raises:
         LamwrightError: the wishes do not fit together.
         PoolLost: the cluster cannot be reached or used.
     """
     checked(wishes)
-    pool = _pool(call, wishes, wishes.limit_s or limit_s)
+    pool = _pool(call, wishes, wishes.limit_s or limit_s, ready)
     try:
         yield pool
     finally:
@@ -95,7 +99,10 @@ def hired(
 
 
 def _pool(
-    call: Callable[[Task], Result], wishes: PoolWishes, limit_s: float
+    call: Callable[[Task], Result],
+    wishes: PoolWishes,
+    limit_s: float,
+    ready: Callable[[], object] | None,
 ) -> "Pool[Task, Result]":
     if wishes.is_cluster:
         from .study_cluster import ClusterPool
@@ -103,4 +110,4 @@ def _pool(
         return ClusterPool(call, wishes, limit_s)
     from .study_workers import LocalPool
 
-    return LocalPool(call, wishes.workers or spare_cores() + 1, limit_s)
+    return LocalPool(call, wishes.workers or spare_cores() + 1, limit_s, ready)

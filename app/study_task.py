@@ -2,7 +2,6 @@
 
 import hashlib
 import json
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from functools import lru_cache
@@ -12,6 +11,7 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.design_keys import replaced
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.first_rotor import with_barriers as with_tables
+from lamwright.geometry.key_lines import toml_read
 
 from .study import Effort, Study, StudyLimit, Values
 from .study_keys import LAYOUT, keys_meant
@@ -120,9 +120,8 @@ def _base(
 
 def _hash(task: Task) -> str:
     """SHA-256 in hex of all that an evaluation depends on, for any layout of the same values."""
-    design = tomllib.loads(task.design_text)
-    for key in _UNTOLD:
-        design.pop(key, None)
+    read = toml_read(task.design_text)
+    design = {key: value for key, value in read.items() if key not in _UNTOLD}
     cards = [_card(text) for _, text in sorted(task.cards.items())]
     drawings = [hashlib.sha256(item).hexdigest() for _, item in sorted(task.drawings.items())]
     stated = [_canonical(design), cards, drawings, task.effort, version()]
@@ -135,7 +134,7 @@ def _hash(task: Task) -> str:
 
 @lru_cache(maxsize=16)
 def _card(text: str) -> object:
-    return _canonical(tomllib.loads(text))
+    return _canonical(toml_read(text))
 
 
 def _canonical(value: object) -> object:

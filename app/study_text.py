@@ -7,11 +7,12 @@ Every change is read back, so that a text of unusual layout is refused instead o
 import re
 import tomllib
 from collections.abc import Mapping, Sequence
+from typing import Any
 
 from lamwright.geometry.design import BarrierDesign
 from lamwright.geometry.design_keys import key_name, key_steps
 from lamwright.geometry.errors import DesignError
-from lamwright.geometry.key_lines import KeyPath, key_lines
+from lamwright.geometry.key_lines import KeyPath, key_lines, toml_read
 from lamwright.geometry.restated import restated
 
 from .study import Value
@@ -74,13 +75,19 @@ def _raise_unless(changed: str, text: str, barriers: Sequence[BarrierDesign]) ->
     """Refuse a text that does not hold the barriers, or in which anything else has changed."""
     fault = "rotor.barrier: cannot be laid out anew in this text; accepted [[rotor.barrier]] tables"
     try:
-        data, before = tomllib.loads(changed), tomllib.loads(text)
-        found = data["rotor"].pop("barrier")
-        before["rotor"].pop("barrier")
+        data, before = toml_read(changed), toml_read(text)
+        found, others = len(data["rotor"]["barrier"]), _without_barriers(data)
+        if others != _without_barriers(before) or "barrier" not in before["rotor"]:
+            raise DesignError(fault)
     except (tomllib.TOMLDecodeError, KeyError):
         raise DesignError(fault) from None
-    if data != before or len(found) != len(barriers):
+    if found != len(barriers):
         raise DesignError(fault)
+
+
+def _without_barriers(data: Mapping[str, Any]) -> dict[str, Any]:
+    rotor = {key: value for key, value in data["rotor"].items() if key != "barrier"}
+    return {**data, "rotor": rotor}
 
 
 def _inserted(text: str, key: str, value: Value) -> str:
@@ -105,7 +112,7 @@ def _inserted(text: str, key: str, value: Value) -> str:
 
 def _parsed(text: str, key: str) -> object:
     try:
-        return tomllib.loads(text)
+        return toml_read(text)
     except tomllib.TOMLDecodeError:
         text = f"{key}: cannot be put into the base design; accepted it stated there"
         raise DesignError(text) from None

@@ -41,25 +41,33 @@ class LocalPool(Generic[Task, Result]):
     """Worker processes that take the next task when they are free; stop it, best by `with`."""
 
     def __init__(
-        self, call: Callable[[Task], Result], cores: int, limit_s: float | None = None
+        self,
+        call: Callable[[Task], Result],
+        cores: int,
+        limit_s: float | None = None,
+        ready: Callable[[], object] | None = None,
     ) -> None:
-        """Hire workers; they start with the first tasks.
+        """Hire workers; they start with the first tasks, or at once where they have to get ready.
 
         Args:
             call: what is done with a task, importable by name.
             cores: number of workers.
             limit_s: time that a task may take, in s; the imports before it do not count.
+            ready: what each worker does before its first task, importable by name.
         """
         hold_threads()  # inherited; numpy reads it where it is imported
         self._call = call
         self._cores = cores
         self._limit_s = limit_s
         self._lock = threading.RLock()
-        self._free = [_Seat() for _ in range(cores)]
+        self._free = [_Seat(ready) for _ in range(cores)]
         self._seats = tuple(self._free)
         self._waiting: deque[tuple[Task, Future[Result]]] = deque()
         self._under_way: set[Future[Result]] = set()
         self._is_stopped = False
+        if ready is not None:
+            for seat in self._seats:
+                seat.start(_nothing, None, None)
 
     def __enter__(self) -> "LocalPool[Task, Result]":
         """The pool itself."""
@@ -141,7 +149,8 @@ class LocalPool(Generic[Task, Result]):
 class _Seat:
     """One worker process at a time."""
 
-    def __init__(self) -> None:
+    def __init__(self, ready: Callable[[], object] | None) -> None:
+        self._ready = ready
         self._pool: ProcessPool | None = None
         self._spent: list[ProcessPool] = []
 
@@ -157,7 +166,9 @@ class _Seat:
         with _born_deaf():
             if self._pool is None:
                 spawn = multiprocessing.get_context("spawn")
-                self._pool = ProcessPool(1, initializer=_settle, context=spawn)
+                self._pool = ProcessPool(
+                    1, initializer=_settle, initargs=(self._ready,), context=spawn
+                )
             return self._pool.schedule(call, args=(task,), timeout=limit_s)
 
     def begin_stop(self) -> None:
@@ -171,11 +182,18 @@ class _Seat:
             pool.join()
 
 
-def _settle() -> None:
+def _settle(ready: Callable[[], object] | None) -> None:
     """What a worker does first."""
     # pebble's handler runs only between two lines of Python, seconds after it was asked to end.
     signal.signal(signal.SIGTERM, signal.SIG_DFL)
     threading.Thread(target=_end_with_parent, daemon=True).start()
+    if ready is not None:
+        with contextlib.suppress(Exception):  # the first task will tell
+            ready()
+
+
+def _nothing(_: None) -> None:
+    """A task that starts a worker."""
 
 
 def _end_with_parent() -> None:

@@ -62,13 +62,13 @@ def sweep(
     """
     wishes = checked(wishes or PoolWishes())
     from .study_file import read_study
-    from .study_points import points_of
+    from .study_points import counted, points_of
 
     began = time.perf_counter()
     study = read_study(Path(path))
-    points = points_of(study)
+    planned = counted(study)
     folder = prepared_folder(Path(out))
-    from .evaluation import evaluate
+    from .evaluation import evaluate, imported
     from .ledger import Ledger
     from .study_task import task_of
 
@@ -80,14 +80,16 @@ def sweep(
         show(row, is_known)
 
     try:
-        with (
-            Ledger.open(folder, study) as ledger,
-            hired(evaluate, wishes, study.seconds) as pool,
-            watch(study, len(points)) as show,
-        ):
-            ledger.note("planned", str(len(points)))
-            tasks = (task_of(study, values) for values in points)
-            rows = carried_out(tasks, ledger, pool, count, is_retrying=is_retrying)
+        with Ledger.open(folder, study) as ledger:
+            # Workers get ready while points and tasks are made; none is hired for nothing.
+            ready = imported if ledger.count() < planned else None
+            with (
+                hired(evaluate, wishes, study.seconds, ready) as pool,
+                watch(study, planned) as show,
+            ):
+                ledger.note("planned", str(planned))
+                tasks = (task_of(study, values) for values in points_of(study))
+                rows = carried_out(tasks, ledger, pool, count, is_retrying=is_retrying)
     except KeyboardInterrupt:
         raise KeyboardInterrupt(INTERRUPTED) from None
     return SweepReport(study, tuple(rows), computed, time.perf_counter() - began)

@@ -1,8 +1,10 @@
 """The version of the installed program."""
 
+from functools import lru_cache
 from importlib.metadata import version as installed_version
 
 
+@lru_cache(maxsize=1)  # reading it takes 1 ms, and every design of a study states it
 def version() -> str:
     """The version as in `pyproject.toml` when it was installed."""
     return installed_version("lamwright")

@@ -87,20 +87,24 @@ def placed_barriers(
         insulation: share of air in the depth that carriers and barriers take by their shares.
         ribs: widths of the tangential ribs in m.
     """
-    low, high = 0.0, room.depth
+    low, high, share = 0.0, room.depth, shares(ends)
     for _ in range(HALVINGS):
         middle = 0.5 * (low + high)
-        fits = _at_depth(room, ends, insulation, ribs, middle)
+        fits = _at_depth(room, ends, share, insulation, ribs, middle)
         low, high = (middle, high) if fits is not None else (low, middle)
-    placed = _at_depth(room, ends, insulation, ribs, low)
+    placed = _at_depth(room, ends, share, insulation, ribs, low)
     return () if placed is None else placed
 
 
 def _at_depth(
-    room: PoleRoom, ends: Sequence[float], insulation: float, ribs: Sequence[float], depth: float
+    room: PoleRoom,
+    ends: Sequence[float],
+    share: Shares,
+    insulation: float,
+    ribs: Sequence[float],
+    depth: float,
 ) -> tuple[PlacedBarrier, ...] | None:
     """The barriers with `depth` shared out among them, None where an arc would bend too far."""
-    share = shares(ends)
     spacing = (ends[1] - ends[0] if len(ends) > 1 else 2.0 * ends[0]) / room.pole_pairs
     widest = MOST_OF_SPACING * spacing * room.rotor_radius
     edge = 0.0  # where the next carrier begins

@@ -1,12 +1,11 @@
 """A design file with some values changed: comments, order and layout stay as they are."""
 
 import re
-import tomllib
 from collections.abc import Mapping
 
 from .design_keys import key_name, key_steps
 from .errors import DesignError
-from .key_lines import key_lines, line_of
+from .key_lines import key_lines, line_of, toml_read
 
 _NUMBER = r"[+-]?[0-9][0-9_]*(?:\.[0-9_]+)?(?:[eE][+-]?[0-9]+)?"
 _STRING = r'"(?:\\.|[^"\\])*"|' r"'[^']*'"
@@ -35,7 +34,7 @@ def restated(text: str, values: Mapping[str, float | str]) -> str:
             )
         rows[at] = rows[at][: found.start()] + found[1] + new + rows[at][found.end() :]
     changed = "\n".join(rows)
-    data = tomllib.loads(changed)
+    data = toml_read(changed)
     for key, value in values.items():
         if _stated(data, key) != (value if isinstance(value, str) else float(f"{value:.9g}")):
             raise DesignError(f"{key}: cannot be changed in place; accepted one key = value a line")

@@ -10,7 +10,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.sparse import csc_matrix
+from scipy.sparse import csc_matrix, csr_matrix
 
 from .gap import RotorPlace, rotor_place, sheared
 from .integrals import dq_values, gap_torque, phase_currents, steel_energies
@@ -51,6 +51,7 @@ class Position:
     sign: FloatArray  # (n_node,)
     values: FloatArray  # (n_slot,), all linear elements
     lower: csc_matrix  # the same as a matrix
+    upper: csr_matrix  # its transpose, on the same values
     diagonal: FloatArray  # (n_dof,)
     solver: SparseSolver
     gap_elements: IntArray  # both halves of the gap
@@ -59,7 +60,7 @@ class Position:
 
     def times(self, a: FloatArray) -> FloatArray:
         """Linear part of the residual, (n_dof,) in A."""
-        product: FloatArray = self.lower @ a + self.lower.T @ a - self.diagonal * a
+        product: FloatArray = self.lower @ a + self.upper @ a - self.diagonal * a
         return product
 
 
@@ -276,7 +277,7 @@ def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
     values = model.fixed_values.copy()
     values[turned.slot] += turned.sign * summed(gap.scatter, packed)
     pattern = turned.pattern
-    n_dof = numbering.n_dof
+    n_dof, entries = numbering.n_dof, (values, pattern.indices, pattern.indptr)
     # Turning by a whole sector changes signs but no partner.
     solver = model.factors.get(
         place.shift % model.sector.n_circle,
@@ -291,7 +292,8 @@ def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
         dof=dof,
         sign=sign,
         values=values,
-        lower=csc_matrix((values, pattern.indices, pattern.indptr), shape=(n_dof, n_dof)),
+        lower=csc_matrix(entries, shape=(n_dof, n_dof)),
+        upper=csr_matrix(entries, shape=(n_dof, n_dof)),
         diagonal=values[pattern.indptr[:-1]],
         solver=solver,
         gap_elements=np.concatenate([gap.node[gap.elements], still.elements]),

