@@ -265,8 +265,10 @@ class Jobs:
         place = self.place(job.id)
         shutil.rmtree(place, ignore_errors=True)
         place.mkdir(parents=True)
-        copy = self._folder.mirrored(job.path, job.text, place / ".design")
-        order = {"kind": "full", "design": str(copy), "out": str(place), "tolerance": TOLERANCE}
+        root = place / ".design"
+        copy = self._folder.mirrored(job.path, job.text, root)
+        order = {"kind": "full", "root": str(root), "design": str(copy), "out": str(place)}
+        order["tolerance"] = TOLERANCE
         self._hired = Hired(order, lambda said: self._full_told(job.id, said))
 
     def _full_told(self, job_id: str, said: Mapping[str, Any]) -> None:

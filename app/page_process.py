@@ -98,7 +98,7 @@ def work() -> None:
     try:
         done = ORDERS[order["kind"]](order, teller)
     except LamwrightError as error:
-        teller.say({"error": str(error)})
+        teller.say({"error": as_the_page_says(str(error), order["root"])})
     except KeyboardInterrupt:
         os._exit(1)  # asked to end, and cleared up
     except BrokenPipeError:
@@ -113,6 +113,12 @@ def work() -> None:
         teller.say({"error": f"a fault of the program: {type(error).__name__}: {error}"})
     else:
         teller.say({"done": done})
+
+
+def as_the_page_says(said: str, root: str) -> str:
+    """A command's message for a window: files by their names there, options by their words."""
+    said = said.replace("--despite-limits", '"even if limits are missed"').replace("--out ", "")
+    return said.replace(f"{root}/", "")
 
 
 class _Teller:
@@ -146,7 +152,11 @@ def _release(order: Mapping[str, Any], teller: _Teller) -> dict[str, Any]:
     verdict = Path(order["verdict"]) if order["verdict"] else None
     wishes = ReleaseWishes(verdict=verdict, despite_limits=order["despite_limits"])
     report = release(Path(order["design"]), Path(order["out"]), wishes, teller.progress)
-    return {"passes": report.passes, "number": report.number}
+    listed = report.manifest["files"]
+    assert isinstance(listed, dict)
+    files = sorted(listed)
+    number, passes = report.number, report.passes
+    return {"passes": passes, "number": number, "place": str(report.folder), "files": files}
 
 
 def _sweep(order: Mapping[str, Any], teller: _Teller) -> dict[str, Any]:

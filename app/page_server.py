@@ -149,7 +149,7 @@ def _task_routes(page: Page, jobs: Jobs, tasks: Tasks) -> list[Route]:
     return [
         Route("/api/release", released, methods=["POST"]),
         Route("/api/sweep", _posting(page, partial(sweep, tasks)), methods=["POST"]),
-        Route("/api/tasks", _getting(lambda query: {"tasks": tasks.all()})),
+        Route("/api/tasks", _getting(lambda query: tasks.all())),
         Route("/api/tasks/{task}", one),
         Route("/api/tasks/{task}/stop", stopped, methods=["POST"]),
         Route("/api/ledger", _getting(lambda query: ledger_record(page, query))),

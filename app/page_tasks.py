@@ -5,6 +5,7 @@ whoever computes them: a sweep started in a terminal is watched in the same way.
 is the running server's; what they have finished lies in the folder.
 """
 
+import secrets
 import threading
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
@@ -65,6 +66,7 @@ class Tasks:
         self._tasks: dict[str, Task] = {}
         self._hired: dict[str, Hired] = {}
         self._count = 0
+        self._start = secrets.token_hex(8)  # another server gives the same numbers
 
     def __enter__(self) -> "Tasks":
         """The tasks themselves."""
@@ -109,10 +111,11 @@ class Tasks:
                 raise LamwrightError("no such task since the page was started")
             return self._tasks[task_id].record
 
-    def all(self) -> list[Record]:
-        """All that are remembered, the newest last."""
+    def all(self) -> Record:
+        """All that are remembered, the newest last, and of which start their numbers are."""
         with self._lock:
-            return [task.record for task in self._tasks.values()]
+            tasks = [task.record for task in self._tasks.values()]
+        return {"tasks": tasks, "start": self._start}
 
     def stop_one(self, task_id: str) -> None:
         """End a task; a sweep goes on from its finished rows when it is started again."""
@@ -154,6 +157,7 @@ def release(page: Page, jobs: Jobs, tasks: Tasks, body: Mapping[str, object]) ->
     verdict = jobs.place(job_id_of("full", due)) / VERDICT_FILE
     order = {
         "kind": "release",
+        "root": str(page.folder.root),
         "design": str(page.folder.design_file(path)),
         "out": str(page.folder.file(out)),
         "verdict": str(verdict) if verdict.is_file() else None,
@@ -171,7 +175,8 @@ def sweep(tasks: Tasks, page: Page, body: Mapping[str, object]) -> Record:
     if base is not None:
         page.folder.name_of(study.parent / base)
         page.folder.keep_inside(*_named(page.folder, study.parent / base))
-    order = {"kind": "sweep", "study": str(study), "out": str(page.folder.file(out))}
+    root = str(page.folder.root)
+    order = {"kind": "sweep", "root": root, "study": str(study), "out": str(page.folder.file(out))}
     return tasks.start("sweep", out, order).record
 
 

@@ -101,6 +101,15 @@ export class Field {
     set(this.#canvas, { "aria-label": `${name}, ${written(low, 3)} to ${written(high, 3)} ${unit}, ${part("greatest").textContent}` });
   }
 
+  get picture() {
+    return this.#picture;
+  }
+
+  // At a place of the drawing in mm; null outside.
+  valueAt({ x, y }) {
+    return this.#known.data.valueAt(this.#picture, x, y);
+  }
+
   redraw() {
     if (!this.#picture || this.#isAsked) return;
     this.#isAsked = true;
@@ -117,12 +126,19 @@ export class Field {
 
   #point(event) {
     if (!this.#picture) return;
-    const place = this.#viewport.place(event);
-    const { x, y } = this.#viewport.toDrawing(place.x, place.y);
-    const value = this.#known.data.valueAt(this.#picture, x, y);
-    setText(this.#hint, value === null ? "" : `${written(value, 3)} ${this.#picture.unit} at ${x.toFixed(1)}, ${(-y).toFixed(1)} mm`);
-    Object.assign(this.#hint.style, { left: `${place.x + 16}px`, top: `${place.y + 18}px` });
-    this.#hint.classList.toggle("is-left", place.x > this.#viewport.size.width - 190);
+    const { x, y } = this.#viewport.place(event);
+    this.hint(this.#viewport.toDrawing(x, y));
+  }
+
+  // The value at a place of the drawing, written beside it; null takes it away.
+  hint(at) {
+    const value = at && this.#picture ? this.valueAt(at) : null;
+    setText(this.#hint, value === null ? "" : `${written(value, 3)} ${this.#picture.unit} at ${at.x.toFixed(1)}, ${(-at.y).toFixed(1)} mm`);
+    if (value === null) return;
+    const { x, y } = this.#viewport.toStage(at.x, at.y);
+    Object.assign(this.#hint.style, { left: `${x + 16}px`, top: `${y + 18}px` });
+    this.#hint.classList.toggle("is-left", x > this.#viewport.size.width - 190);
+    this.#hint.classList.toggle("is-above", y > this.#viewport.size.height - 44);
   }
 }
 

@@ -21,7 +21,7 @@ export class Files {
     this.#say = say;
     this.#choice.addEventListener("change", () => this.#open(this.#choice.value));
     tasks.on("changed", () => this.#releases());
-    tasks.on("ended", (task) => task.kind === "release" && say(`release ${task.state}`));
+    tasks.on("ended", (task) => task.kind === "release" && say(task.state === "done" ? `released as package ${task.result.number}` : `not released: ${task.error ?? task.state}`));
   }
 
   async list({ designs, start }) {
@@ -110,8 +110,8 @@ export class Files {
       if (this.#design.isChanged) return;
     }
     const answer = await ask("Release for manufacture", {
-      lines: ["Computes the full verdict and writes drawings, outlines and solids of the design into a folder. Rotors can burst: have a competent person check it before anything is built."],
-      fields: [{ name: "out", label: "Folder for it", value: this.#design.path.replace(/\.toml$/, "-release") },
+      lines: ["Computes the full verdict, unless it is known, and writes drawings, outlines and solids of the saved design into a folder; an earlier package there is replaced.", "Rotors can burst: have a competent person check it before anything is built."],
+      fields: [{ name: "out", label: "Folder for it, in the page's folder", value: this.#design.path.replace(/\.toml$/, "-release") },
         { name: "despite", label: "even if limits are missed", type: "checkbox" }],
       buttons: [{ value: "release", text: "Release" }],
     });
@@ -146,14 +146,36 @@ export class Files {
     }
   }
 
+  async stopRelease() {
+    const task = this.#tasks.all.findLast((one) => one.kind === "release" && isOpen(one));
+    if (task) await this.#tasks.stop(task.task);
+  }
+
+  // The newest first.
   #releases() {
-    const own = this.#tasks.all.filter((task) => task.kind === "release");
+    const own = this.#tasks.all.filter((task) => task.kind === "release").reverse();
     byId("tab-release").hidden = !own.length;
-    byId("releases").replaceChildren(...own.map((task) => el("li", { class: task.state },
-      el("p", {}, el("strong", {}, task.folder ?? ""), ` ${task.state}${task.phase ? `: ${task.phase}` : ""}`),
-      isOpen(task) ? el("p", {}, el("progress", { max: 1, value: task.share ?? 0, "aria-label": "Release" }), el("button", { type: "button", on: { click: () => this.#tasks.stop(task.task) } }, "Stop")) : null,
-      task.error ? el("p", { class: "missed" }, task.error) : null,
-      (task.lines ?? []).length ? el("pre", {}, task.lines.join("\n")) : null)));
+    const key = JSON.stringify(own);
+    if (byId("releases").dataset.of === key) return;
+    byId("releases").dataset.of = key;
+    byId("releases").replaceChildren(...own.map((task) => this.#release(task)));
+  }
+
+  #release(task) {
+    const { folder, state, phase, share, error, result } = task;
+    const head = (sign, kind, text) => el("p", { class: kind }, sign && el("span", { class: "sign", "aria-hidden": "true" }, `${sign} `), el("strong", {}, folder), ` ${text}`);
+    if (isOpen(task)) {
+      return el("li", {}, head(null, null, phase ? `under way: ${phase}` : "is about to begin"),
+        el("p", { class: "study-row" }, el("progress", { max: 1, value: share ?? 0, "aria-label": `Release to ${folder}` }), el("button", { type: "button", title: "Stop the release (X)", on: { click: () => this.#tasks.stop(task.task) } }, "Stop")));
+    }
+    if (state !== "done") {
+      return el("li", {}, head("\u2717", "missed", state === "stopped" ? "was stopped: nothing was released" : "was not released"),
+        error && el("p", {}, error));
+    }
+    return el("li", {}, head("\u2713", "met", `released as package ${result.number}`),
+      result.passes ? null : el("p", { class: "missed" }, "Limits are missed: every sheet of it is marked NOT PASSED."),
+      el("p", {}, `In ${result.place}`),
+      el("details", {}, el("summary", {}, `${result.files.length + 1} files`), el("ul", { class: "file-names" }, ...result.files.map((name) => el("li", {}, name)), el("li", {}, "the manifest, which lists them with their checksums"))));
   }
 
   #fault(error) {

@@ -1,7 +1,8 @@
-// Keys of the page: each action has one, all are listed in the help. Keys without Ctrl do nothing
-// while a text is typed, and can be switched off for who speaks to the page.
+// Keys of the page: each action has one, all are listed in the help, and the part of the page that
+// does the same names its key. Keys without Ctrl do nothing while a text is typed, and can be
+// switched off for who speaks to the page.
 
-import { byId, el } from "./dom.js";
+import { byId, el, set } from "./dom.js";
 
 const SINGLE = "lamwright-single-keys";
 
@@ -12,15 +13,29 @@ export class Keys {
     document.addEventListener("keydown", (event) => this.#pressed(event));
     const box = byId("single-keys");
     box.checked = localStorage.getItem(SINGLE) !== "off";
-    box.addEventListener("change", () => localStorage.setItem(SINGLE, box.checked ? "on" : "off"));
+    box.addEventListener("change", () => {
+      localStorage.setItem(SINGLE, box.checked ? "on" : "off");
+      this.#mark();
+    });
   }
 
-  // `keys`: like "Ctrl+Shift+Z" or "k"; the first is the one that is listed.
-  add(group, keys, what, call) {
-    this.#actions.push({ group, keys: [keys].flat(), what, call });
+  // `keys`: like "Ctrl+Shift+Z" or "k"; the first is the one that is listed. `part` selects what on
+  // the page does the same.
+  add(group, keys, what, call, part) {
+    this.#actions.push({ group, keys: [keys].flat(), what, call, part });
+  }
+
+  #mark() {
+    for (const { keys, part } of this.#actions) {
+      if (!part) continue;
+      const own = keys.filter((key) => key.startsWith("Ctrl") || byId("single-keys").checked);
+      const named = own.map((key) => upper(key).replace("Ctrl", "Control").replace(/^\+$/, "Plus"));
+      set(document.querySelector(part), { "aria-keyshortcuts": named.join(" ") || null });
+    }
   }
 
   list(host) {
+    this.#mark();
     const groups = [...new Set(this.#actions.map((action) => action.group))];
     host.replaceChildren(...groups.map((group) => el("section", {}, el("h3", {}, group), el("dl", { class: "keys" },
       ...this.#actions.filter((action) => action.group === group).flatMap((action) => [

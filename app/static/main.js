@@ -14,6 +14,7 @@ import { Keys } from "./keys.js";
 import { Link } from "./link.js";
 import { pageKeys } from "./page_keys.js";
 import { plain } from "./format.js";
+import { Probe } from "./probe.js";
 import { Readout } from "./readout.js";
 import { StateLine } from "./state_line.js";
 import { Studies } from "./studies.js";
@@ -40,7 +41,9 @@ const field = new Field({ canvas: byId("field"), bar: byId("field-bar"), hint: b
   (shown) => {
     stage.classList.toggle("has-field", shown !== null);
     stage.dataset.field = shown ?? "";
+    probe.changed();
   });
+const probe = new Probe(stage, viewport, field, say);
 const tabs = new Tabs();
 const files = new Files(design, tasks, line, tabs, say);
 const verdict = new VerdictPanel({ design, work, kept, field, say });
@@ -219,7 +222,19 @@ const act = {
   discard: () => files.discard(),
   release: () => files.release(),
   full: () => verdict.full(),
-  stop: () => work.stop(),
+  stop: () => {
+    if (tabs.shown === "study") studies.stop();
+    else if (tabs.shown === "release") files.stopRelease();
+    else work.stop();
+  },
+  probe: () => probe.focus(),
+  value: () => { handles.focusFirst(); readout.focus(); },
+  files: () => { tabs.choose("verdict"); byId("files").querySelector("button")?.focus(); },
+  releases: () => (byId("tab-release").hidden ? say("nothing was released since the page was started") : tabs.choose("release", true)),
+  study: () => { tabs.choose("study"); byId("study").focus(); },
+  points: () => { tabs.choose("study"); studies.focusPoints(); },
+  axes: () => { tabs.choose("study"); byId("scatter-x").focus(); },
+  load: () => { tabs.choose("study"); studies.load(); },
   keep,
   drop: () => kept.drop(),
   fit: () => viewport.fit(),
@@ -245,7 +260,7 @@ function choosePicture(name) {
 for (const input of document.querySelectorAll("input[name=picture]")) input.addEventListener("change", () => field.choose(input.value));
 for (const [id, call] of Object.entries({
   undo: act.undo, redo: act.redo, save: act.save, "save-as": act.saveAs, discard: act.discard, release: act.release, keep: act.keep,
-  "keep-drop": act.drop, "zoom-in": act.larger, "zoom-out": act.smaller, "zoom-fit": act.fit, "zoom-rotor": act.rotor, "full-begin": act.full, "full-stop": act.stop, "help-open": act.help,
+  "keep-drop": act.drop, "zoom-in": act.larger, "zoom-out": act.smaller, "zoom-fit": act.fit, "zoom-rotor": act.rotor, "full-begin": act.full, "full-stop": () => work.stop(), "help-open": act.help,
 })) byId(id).addEventListener("click", call);
 stage.addEventListener("keydown", (event) => {
   const way = { ArrowLeft: [-1, 0], ArrowRight: [1, 0], ArrowUp: [0, -1], ArrowDown: [0, 1] }[event.key];

@@ -24,6 +24,12 @@ export class Readout {
     this.#host.append(el("p", { class: "hint" }, "Take hold of a mark on the drawing, or press D and use the arrow keys."));
   }
 
+  focus() {
+    if (!this.#handle) return;
+    this.#input.focus();
+    this.#input.select();
+  }
+
   show(handle, value, limits) {
     if (!handle) return;
     if (!this.#handle) {

@@ -35,6 +35,10 @@ export class Scatter {
     new ResizeObserver(() => this.#shown && this.show(...this.#shown)).observe(host);
   }
 
+  get isShown() {
+    return this.#host.querySelector("svg") !== null && this.#host.clientWidth > 0;
+  }
+
   // x, y: {key, label, unit, sense}.
   show(rows, x, y, chosen) {
     this.#shown = [rows, x, y, chosen];

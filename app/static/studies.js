@@ -28,8 +28,8 @@ export class Studies {
     this.#load = load;
     this.#say = say;
     byId("sweep-begin").addEventListener("click", () => this.begin());
-    byId("sweep-stop").addEventListener("click", () => this.#stop());
-    byId("row-load").addEventListener("click", () => this.#pick());
+    byId("sweep-stop").addEventListener("click", () => this.stop());
+    byId("row-load").addEventListener("click", () => this.load());
     this.#choice.addEventListener("change", () => this.#watch(this.#folderOf(this.#choice.value)));
     for (const id of ["scatter-x", "scatter-y"]) byId(id).addEventListener("change", () => this.#draw());
     tasks.on("changed", () => this.#showTask());
@@ -62,7 +62,7 @@ export class Studies {
     }
   }
 
-  async #stop() {
+  async stop() {
     const task = this.#own();
     if (task) await this.#tasks.stop(task.task);
   }
@@ -82,7 +82,7 @@ export class Studies {
     byId("sweep-begin").disabled = Boolean(open);
     byId("sweep-progress").hidden = !open;
     byId("sweep-progress").value = open?.share ?? 0;
-    if (last) setText(byId("sweep-line"), last.error ?? [last.state, last.phase || last.lines?.at(-1)].filter(Boolean).join(": "));
+    if (last) setText(byId("sweep-line"), [last.state, last.error ?? last.phase].filter(Boolean).join(": "));
   }
 
   #watch(folder) {
@@ -91,6 +91,8 @@ export class Studies {
       this.#chosen = null;
       this.#study = null;
       setText(byId("sweep-line"), "");
+      setText(byId("row-line"), "Choose a point or a number to load its design.");
+      set(byId("row-load"), { hidden: true });
     }
     this.#folder = folder;
     clearTimeout(this.#timer);
@@ -177,7 +179,12 @@ export class Studies {
     this.#say(`design ${number} chosen`);
   }
 
-  async #pick() {
+  focusPoints() {
+    (this.#scatter.isShown ? byId("scatter").querySelector("svg") : byId("sweep-begin")).focus();
+  }
+
+  async load() {
+    if (this.#chosen === null) return;
     try {
       const picked = await post("/api/pick", { folder: this.#folder, row: this.#chosen, study: this.#choice.value });
       await this.#load(picked, `design ${this.#chosen} of ${this.#folder}`);

@@ -20,6 +20,10 @@ export class Tabs extends Teller {
     }
   }
 
+  get shown() {
+    return this.#tabs.find((tab) => tab.getAttribute("aria-selected") === "true").id.replace("tab-", "");
+  }
+
   choose(name, isFocused = false) {
     const tab = byId(`tab-${name}`);
     tab.hidden = false;

@@ -1,12 +1,17 @@
 // Releases and sweeps that the server runs: begun here, asked for by polling, stopped by a button.
 
-import { Gone, get, post } from "./api.js";
+import { Gone, get, post, Refused } from "./api.js";
 import { Teller } from "./dom.js";
 
 const EVERY_MS = 700;
+const LOST = {
+  release: "the server was started anew meanwhile: nothing was released, release again",
+  sweep: "the server was started anew meanwhile: finished designs are kept, Sweep goes on with them",
+};
 
 export class Tasks extends Teller {
   #timer = 0;
+  #start = null; // which start of the server the numbers of tasks are of
   #known = new Map();
 
   get all() {
@@ -14,19 +19,32 @@ export class Tasks extends Teller {
   }
 
   async begin(kind, body) {
-    const { task } = await post(`/api/${kind}`, body);
-    this.#known.set(task, { task, kind, state: "waiting", share: 0, lines: [] });
+    const record = await post(`/api/${kind}`, body);
+    this.#known.set(this.#keyOf(record.task), record);
     this.tell("changed");
     this.#poll();
-    return task;
   }
 
-  // What the server runs already, as after a reload.
+  // What the server runs, as after a reload. A server that was started anew knows none of before:
+  // what was under way then has ended with it.
   async refresh() {
-    const answer = await get("/api/tasks");
-    for (const one of answer.tasks ?? answer) this.#known.set(one.task, one);
+    const { tasks, start } = await get("/api/tasks");
+    if (this.#start !== null && this.#start !== start) this.#ended();
+    this.#start = start;
+    for (const one of tasks) this.#known.set(this.#keyOf(one.task), one);
     this.tell("changed");
     this.#poll();
+  }
+
+  #ended() {
+    for (const [key, one] of this.#known) {
+      if (isOpen(one)) this.#known.set(key, { ...one, state: "stopped", error: LOST[one.kind] });
+    }
+  }
+
+  // Two starts of the server give the same numbers.
+  #keyOf(task) {
+    return `${this.#start} ${task}`;
   }
 
   stop(task) {
@@ -41,10 +59,10 @@ export class Tasks extends Teller {
       for (const one of open) {
         try {
           const now = await get(`/api/tasks/${encodeURIComponent(one.task)}`);
-          this.#known.set(one.task, now);
+          this.#known.set(this.#keyOf(one.task), now);
           if (!isOpen(now)) this.tell("ended", now);
         } catch (error) {
-          if (!(error instanceof Gone)) this.#known.set(one.task, { ...one, state: "failed", error: error.message });
+          if (!(error instanceof Gone || error instanceof Refused)) throw error; // refresh tells
         }
       }
       this.tell("changed");

@@ -73,6 +73,12 @@ export class Viewport extends Teller {
     this.tell("moved");
   }
 
+  centre({ x, y }) {
+    this.middle = { x, y };
+    this.#isFitted = false;
+    this.tell("moved");
+  }
+
   toDrawing(px, py) {
     return {
       x: this.middle.x + (px - this.size.width / 2) / this.scale,
