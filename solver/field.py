@@ -14,21 +14,19 @@ from scipy.sparse import csc_matrix, csr_matrix
 
 from .gap import RotorPlace, rotor_place, sheared
 from .integrals import dq_values, gap_torque, phase_currents, steel_energies
-from .kernel import (
-    FluxState,
-    element_residual,
-    flux_state,
-    looked_ahead,
-    packed_tangent,
-    quadrature,
-    quadrature_places,
-    weighted,
-)
+from .kernel import quadrature, quadrature_places
 from .linear import SparseSolver, analyse
 from .model import FieldSettings, MagneticModel, linear_tangent, magnetic_model
 from .newton import minimise
 from .pattern import node_values, summed, turn_gap, turned_ends, turned_numbering
 from .steel import NU_0
+from .steel_kernel import (
+    SteelState,
+    looked_ahead,
+    steel_residual,
+    steel_state,
+    steel_tangent,
+)
 from .types import FieldSolution, FloatArray, IntArray, Quadrature
 
 __all__ = [
@@ -72,30 +70,29 @@ class PointEnergy:
     position: Position
     load: FloatArray  # (n_dof,), A
 
-    def residual(self, a: FloatArray) -> tuple[FloatArray, FluxState]:
+    def residual(self, a: FloatArray) -> tuple[FloatArray, SteelState]:
         """Residual (n_dof,) in A and the state of the steel."""
         iron = self.model.iron
-        a_elem = iron.sign * np.append(a, 0.0)[iron.dof]
-        state = flux_state(iron.quad, a_elem, iron.law)
-        elements = element_residual(iron.quad, state)
-        r = summed(iron.residual_scatter, elements.T)
+        a_elem = np.append(a, 0.0).take(iron.dof.T)
+        a_elem *= iron.sign.T
+        state = steel_state(iron.metric, a_elem, iron.law)
+        r = summed(iron.residual_scatter, steel_residual(iron.metric, state))
         r += self.position.times(a)
         r -= self.load
         return r, state
 
     def look_ahead(
-        self, linear: FluxState, state: FluxState, residual: FloatArray
-    ) -> tuple[FluxState, FloatArray]:
-        """Where to linearise the steel next, see `kernel.looked_ahead`."""
+        self, linear: SteelState, state: SteelState, residual: FloatArray
+    ) -> tuple[SteelState, FloatArray]:
+        """Where to linearise the steel next, see `steel_kernel.looked_ahead`."""
         iron = self.model.iron
-        ahead, change = looked_ahead(linear, state, iron.law, iron.inverse)
-        elements = weighted(iron.quad, change)
-        return ahead, residual + summed(iron.residual_scatter, elements.T)
+        ahead, change = looked_ahead(iron.metric, linear, state, iron.law, iron.inverse)
+        return ahead, residual + summed(iron.residual_scatter, change)
 
-    def solve_tangent(self, state: FluxState, rhs: FloatArray) -> FloatArray:
+    def solve_tangent(self, state: SteelState, rhs: FloatArray) -> FloatArray:
         """Solution of the tangent system for a right side (n_dof,)."""
         iron, position = self.model.iron, self.position
-        values = summed(iron.scatter, packed_tangent(iron.quad, state))
+        values = summed(iron.scatter, steel_tangent(iron.metric, state))
         values += position.values
         position.solver.factorise(values)
         return position.solver.solve(rhs)
@@ -309,7 +306,7 @@ def _joined(first: Quadrature, second: Quadrature) -> Quadrature:
     )
 
 
-def _energies(model: MagneticModel, state: FluxState) -> tuple[float, float]:
+def _energies(model: MagneticModel, state: SteelState) -> tuple[float, float]:
     """Energy and coenergy of the steel, per sector and metre of stack, in J/m."""
     iron = model.iron
     total = np.zeros(2)
@@ -317,7 +314,7 @@ def _energies(model: MagneticModel, state: FluxState) -> tuple[float, float]:
         (slice(None, iron.n_rotor), iron.rotor_law),
         (slice(iron.n_rotor, None), iron.stator_law),
     ):
-        quad = Quadrature(iron.quad.grad[part], iron.quad.weight[part])
-        own = FluxState(state.grad_a[part], state.nu[part], state.dnu[part])
-        total += steel_energies(quad, own, law)
+        total += steel_energies(
+            iron.quad.weight.T[:, part], state.b2[:, part], state.nu[:, part], law
+        )
     return float(total[0]), float(total[1])

@@ -9,7 +9,6 @@ import math
 import numpy as np
 
 from .isoparametric import shape, shape_slope
-from .kernel import FluxState
 from .steel import MU_0, SteelLaw
 from .types import FloatArray, PlanarMesh, Quadrature
 
@@ -51,12 +50,20 @@ def gap_torque(quad: Quadrature, places: FloatArray, a_elem: FloatArray, thickne
     return float(np.sum(quad.weight * product)) / (MU_0 * thickness)
 
 
-def steel_energies(quad: Quadrature, state: FluxState, law: SteelLaw) -> tuple[float, float]:
-    """Energy and coenergy of elements of one steel, per metre of stack, in J/m."""
-    b2 = np.sum(state.grad_a**2, axis=-1)
-    energy = float(np.sum(quad.weight * law.energy_density(b2)))
+def steel_energies(
+    weight: FloatArray, b2: FloatArray, nu: FloatArray, law: SteelLaw
+) -> tuple[float, float]:
+    """Energy and coenergy of elements of one steel, per metre of stack, in J/m.
+
+    Args:
+        weight: of the quadrature points in m^2, any shape, as the others.
+        b2: |B|^2 in T^2.
+        nu: reluctivity in m/H.
+        law: of the steel.
+    """
+    energy = float(np.sum(weight * law.energy_density(b2)))
     # int B dH = H B - int H dB, H B = nu |B|^2
-    return energy, float(np.sum(quad.weight * state.nu * b2)) - energy
+    return energy, float(np.sum(weight * nu * b2)) - energy
 
 
 def flux_density(mesh: PlanarMesh, a: FloatArray) -> FloatArray:

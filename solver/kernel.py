@@ -19,9 +19,7 @@ from functools import cache
 import numpy as np
 
 from .isoparametric import linear_shape, linear_shape_slope, shape, shape_slope, six_points
-from .types import FloatArray, IntArray, MagnetisationInverse, Quadrature, ReluctivityLaw
-
-TINY_H = 1e-30  # A/m, keeps 0/0 out
+from .types import FloatArray, IntArray, Quadrature, ReluctivityLaw
 
 # One point is exact for degree 1, three for degree 2 (Strang & Fix 1973), six for degree 4.
 _POINTS = {
@@ -68,8 +66,7 @@ def quadrature(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> Quadratu
     """
     points, share = _POINTS[n_qp]
     n_local = elements.shape[1]
-    # d N_i / d (xi, eta)
-    dn = shape_slope(points) if n_local == 6 else linear_shape_slope(points)
+    dn = reference_slopes(n_qp, n_local)  # d N_i / d (xi, eta)
     x, y = nodes[elements.T].transpose(2, 0, 1)  # (n_local, n_elem) each
     (x_xi, x_eta), (y_xi, y_eta) = (np.einsum("qki,ie->kqe", dn, c) for c in (x, y))
     det = x_xi * y_eta - x_eta * y_xi  # (n_qp, n_elem), twice the local area
@@ -78,6 +75,12 @@ def quadrature(nodes: FloatArray, elements: IntArray, n_qp: int = 3) -> Quadratu
     grad[:, 0] = (dn_xi * y_eta[:, None] - dn_eta * y_xi[:, None]) / det[:, None]
     grad[:, 1] = (dn_eta * x_xi[:, None] - dn_xi * x_eta[:, None]) / det[:, None]
     return Quadrature(grad=grad.transpose(3, 0, 1, 2), weight=(share[:, None] * det).T)
+
+
+def reference_slopes(n_qp: int, n_local: int) -> FloatArray:
+    """Slopes (n_qp, 2, n_local) of the shape functions at the points, on the reference triangle."""
+    points, _ = _POINTS[n_qp]
+    return shape_slope(points) if n_local == 6 else linear_shape_slope(points)
 
 
 def shape_integrals(nodes: FloatArray, elements: IntArray) -> FloatArray:
@@ -126,47 +129,6 @@ def weighted(quad: Quadrature, h: FloatArray) -> FloatArray:
     h_weighted = quad.weight.T[:, None] * h.transpose(1, 2, 0)  # A m
     integrals: FloatArray = np.einsum("qdie,qde->ie", quad.grad.transpose(1, 2, 3, 0), h_weighted).T
     return integrals
-
-
-def looked_ahead(
-    linear: FluxState, state: FluxState, law: ReluctivityLaw, inverse: MagnetisationInverse
-) -> tuple[FluxState, FloatArray]:
-    """Where to linearise the steel next, and what that changes of H.
-
-    A Newton step from the linearisation at `linear` ends with the flux density B of `state`, and
-    with H_lin, what the linearised steel has of it there. In steel that its magnetomotive force
-    saturates H_lin is the better known of the two, in steel that carries a given flux B is. Half
-    way between B and B(H_lin) is a better point than either: from a first-order start 4 to 5
-    steps instead of 6 to 7; B(H_lin) alone does not converge (measured). Source: own.
-
-    Args:
-        linear: the linearisation point of the step just taken.
-        state: where it led.
-        law: |B|^2 in T^2 -> nu in m/H and nu' in m/(H T^2).
-        inverse: |H| in A/m -> |B| in T.
-
-    Returns:
-        The new linearisation point, and H (n_elem, n_qp, 2) in A/m, turned as `grad_a` is, of
-        the steel linearised there less H of the steel, both at the B of `state`.
-    """
-    old, new = (
-        linear.grad_a.transpose(1, 2, 0),
-        state.grad_a.transpose(1, 2, 0),
-    )  # (n_qp, 2, n_elem)
-    h = _linearised(linear, old, new)
-    size = np.sqrt(h[:, 0] ** 2 + h[:, 1] ** 2)
-    between = 0.5 * (new + h * (inverse(size) / np.maximum(size, TINY_H))[:, None])
-    nu, dnu = law(between[:, 0] ** 2 + between[:, 1] ** 2)
-    ahead = FluxState(between.transpose(2, 0, 1), nu.T, dnu.T)
-    change = _linearised(ahead, between, new) - state.nu.T[:, None] * new
-    return ahead, change.transpose(2, 0, 1)
-
-
-def _linearised(at: FluxState, old: FloatArray, new: FloatArray) -> FloatArray:
-    """H(old) + dH/dB (new - old) = nu new + 2 nu' (old . (new - old)) old, (n_qp, 2, n_elem)."""
-    along = old[:, 0] * (new[:, 0] - old[:, 0]) + old[:, 1] * (new[:, 1] - old[:, 1])
-    h: FloatArray = at.nu.T[:, None] * new + (2.0 * at.dnu.T * along)[:, None] * old
-    return h
 
 
 def packed_tangent(quad: Quadrature, state: FluxState) -> FloatArray:

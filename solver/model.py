@@ -38,6 +38,7 @@ from .pattern import (
     summed,
 )
 from .steel import NU_0, SteelLaw
+from .steel_kernel import Metric, metric_of
 from .types import FloatArray, IntArray, PlanarMesh, Quadrature, SectorMesh
 
 # Of the sources' norm, where a first guess is good enough: see `first_order`.
@@ -95,6 +96,11 @@ class Iron:
     stator_law: SteelLaw
     scatter: SparseRows  # (n_slot, 21 n_elem)
     residual_scatter: SparseRows  # (n_dof, 6 n_elem)
+    metric: Metric = field(init=False)  # that of `quad`
+
+    def __post_init__(self) -> None:
+        """Bring the gradients into the form that Newton's iteration takes."""
+        object.__setattr__(self, "metric", metric_of(self.quad))
 
     def law(self, b2: FloatArray) -> tuple[FloatArray, FloatArray]:
         """Reluctivity and slope for |B|^2 of shape (n_qp, n_elem)."""
@@ -238,8 +244,8 @@ def _model(
         ends=edge_ends(numbering, elements),
         iron=Iron(
             element=iron,
-            dof=numbering.dof[elements[iron]],
-            sign=numbering.sign[elements[iron]],
+            dof=np.asfortranarray(numbering.dof[elements[iron]]),
+            sign=np.asfortranarray(numbering.sign[elements[iron]]),
             quad=quadrature(nodes, elements[iron], settings.iron_points),
             n_rotor=int(np.sum(materials[iron] == "rotor_steel")),
             rotor_law=rotor_law,

@@ -19,12 +19,12 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
 from lamwright.solver.field import MagneticModel, PointEnergy, at_position, solve_point
 from lamwright.solver.integrals import phase_currents
-from lamwright.solver.kernel import FluxState, packed_tangent
 from lamwright.solver.linear import CholmodSolver
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import Energy, State
 from lamwright.solver.pattern import summed
+from lamwright.solver.steel_kernel import SteelState, steel_tangent
 from lamwright.solver.types import FieldSolution, FloatArray
 
 ROOT = Path(__file__).parents[2]
@@ -112,13 +112,13 @@ def unknowns_before(case: Case, gamma: float) -> FloatArray:
     return np.concatenate([field.a_rotor, field.a_stator])[case.model.representative]
 
 
-def factorisation(energy: PointEnergy, state: FluxState) -> Callable[[], None]:
+def factorisation(energy: PointEnergy, state: SteelState) -> Callable[[], None]:
     """CHOLMOD's numeric factorisation of a step's matrix in our order, and nothing else."""
     from cvxopt import cholmod
 
     iron, place = energy.model.iron, energy.position
     solver = place.solver
     assert isinstance(solver, CholmodSolver)
-    solver.factorise(place.values + summed(iron.scatter, packed_tangent(iron.quad, state)))
+    solver.factorise(place.values + summed(iron.scatter, steel_tangent(iron.metric, state)))
     # Not `factorise`: that copies the values in too.
     return partial(cholmod.numeric, solver._matrix, solver._factor)
