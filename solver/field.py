@@ -58,7 +58,9 @@ class Position:
 
     def times(self, a: FloatArray) -> FloatArray:
         """Linear part of the residual, (n_dof,) in A."""
-        product: FloatArray = self.lower @ a + self.upper @ a - self.diagonal * a
+        product: FloatArray = self.lower @ a
+        product += self.upper @ a
+        product -= self.diagonal * a
         return product
 
 

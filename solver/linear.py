@@ -84,6 +84,7 @@ class CholmodSolver:
             self._order = _order_by_corners(columns, indices, ends)
         turn = np.empty(n, dtype=np.int64)
         turn[self._order] = np.arange(n)
+        self._turn = turn
         first = np.minimum(turn[indices], turn[columns])
         last = np.maximum(turn[indices], turn[columns])
         # By columns, then rows. No two entries are alike, so that one key does: 0.8 instead of
@@ -94,7 +95,8 @@ class CholmodSolver:
         self._matrix = spmatrix(1.0, matrix(first), matrix(last), (n, n))
         # The library takes no arrays: these are written through their views.
         self._values, self._side = matrix(0.0, (indices.size, 1)), matrix(0.0, (n, 1))
-        self._values_view, self._side_view = np.asarray(self._values), np.asarray(self._side)
+        self._values_view = np.asarray(self._values)[:, 0]
+        self._side_view = np.asarray(self._side)[:, 0]
         # Else CHOLMOD would try its own order too. The options belong to the whole process.
         before = dict(cholmod.options)
         cholmod.options["nmethods"] = 1
@@ -106,17 +108,16 @@ class CholmodSolver:
 
     def factorise(self, values: FloatArray) -> None:
         """Factorise the matrix with these values of its lower triangle by columns."""
-        self._values_view[:, 0] = values[self._gather]
+        # With `clip` numpy writes in place; the numbers are in range. 0.5 of the time of indexing.
+        values.take(self._gather, out=self._values_view, mode="clip")
         self._matrix.V = self._values
         self._cholmod.numeric(self._matrix, self._factor)
 
     def solve(self, rhs: FloatArray) -> FloatArray:
         """Solution for one right side (n,) with the last factorised values."""
-        self._side_view[:, 0] = rhs[self._order]
+        rhs.take(self._order, out=self._side_view, mode="clip")
         self._cholmod.solve(self._factor, self._side)
-        solution = np.empty_like(self._side_view[:, 0])
-        solution[self._order] = self._side_view[:, 0]
-        return solution
+        return self._side_view.take(self._turn)
 
 
 def _order_by_corners(columns: IntArray, rows: IntArray, ends: IntArray) -> IntArray:

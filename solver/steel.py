@@ -62,10 +62,22 @@ class SteelLaw:
         b2 = b2 + TINY_B2
         b = np.sqrt(b2)
         c0, c1, c2, c3, t = self._interval(b)
-        h = ((c3 * t + c2) * t + c1) * t + c0
-        dh = ((3.0 * c3 * t + 2.0 * c2) * t + c1) / self.step
-        nu = h / b
-        return nu, (dh - nu) / (2.0 * b2)
+        nu = c3 * t
+        for c in (c2, c1):
+            nu += c
+            nu *= t
+        nu += c0
+        nu /= b
+        # (dH/dB - nu) / (2 B^2); in place, which saves a fifth
+        dnu = c3
+        dnu *= 3.0 * t
+        dnu += 2.0 * c2
+        dnu *= t
+        dnu += c1
+        dnu /= self.step
+        dnu -= nu
+        dnu /= 2.0 * b2
+        return nu, dnu
 
     def field_strength(self, b: FloatArray) -> FloatArray:
         """H in A/m at the flux density `b` in T (not negative)."""
