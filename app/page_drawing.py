@@ -13,6 +13,7 @@ from lamwright.geometry.section import CrossSection, Region, Rib
 
 MM = 1e3  # mm per m
 DIGITS = 4  # decimals of mm: a tenth of a micrometre, far below a pixel
+SHAFT_SHOWN = 0.85  # of the shaft's radius may be cut off, where the picture is larger for it
 MARGIN = 0.03  # of the picture's greater side, round it
 
 Record = dict[str, object]
@@ -33,6 +34,7 @@ def drawing_record(section: CrossSection) -> Record:
         "sector_poles": section.sector_poles,
         "pole_angle_deg": math.degrees(section.pole_angle),
         "view": view_box(section),
+        "near": view_box(section, SHAFT_SHOWN * section.shaft_radius),
         "regions": [region_record(part, region, turn) for part, region in parts],
         "ribs": [_rib_record(rib, turn) for rib in section.ribs],
     }
@@ -67,19 +69,18 @@ def directed(direction: complex, turn: complex) -> tuple[float, float]:
     return round(unit.real, 6), round(-unit.imag, 6)
 
 
-def view_box(section: CrossSection) -> list[float]:
-    """x, y, width and height in mm of what the picture shows."""
-    points = list(_extremes(section))
+def view_box(section: CrossSection, inner_radius: float = 0.0) -> list[float]:
+    """x, y, width and height in mm of the sector, or of what lies outside a radius in m."""
+    points = list(_extremes(section, inner_radius))
     xs, ys = [point.real for point in points], [-point.imag for point in points]
     margin = MARGIN * max(max(xs) - min(xs), max(ys) - min(ys))
     width, height = max(xs) - min(xs) + 2.0 * margin, max(ys) - min(ys) + 2.0 * margin
     return [round(v, 2) for v in (min(xs) - margin, min(ys) - margin, width, height)]
 
 
-def _extremes(section: CrossSection) -> Iterator[complex]:
-    """Points of the sector in mm between which all others lie."""
+def _extremes(section: CrossSection, inner_radius: float) -> Iterator[complex]:
+    """Points of the ring's sector in mm between which all others lie."""
     turn, outer = upright(section), MM * section.stator_outer_radius
-    yield 0j
     angles = [0.0, section.sector_angle]
     # Where the outer circle reaches farthest along an axis, if the sector holds that place.
     start = cmath.phase(turn)
@@ -87,6 +88,7 @@ def _extremes(section: CrossSection) -> Iterator[complex]:
     for angle in angles:
         if -1e-12 <= angle <= section.sector_angle + 1e-12:
             yield outer * turn * cmath.exp(1j * angle)
+            yield MM * inner_radius * turn * cmath.exp(1j * angle)
 
 
 def _rib_record(rib: Rib, turn: complex) -> Record:

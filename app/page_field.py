@@ -9,6 +9,7 @@ File: length of the head as a little-endian 32-bit number, the head as JSON padd
 4 bytes, then the arrays one after the other, each at the offset from the head's end that it states.
 """
 
+import cmath
 import json
 import struct
 from collections.abc import Mapping, Sequence
@@ -90,12 +91,17 @@ def _part(mesh: PlanarMesh, potential: FloatArray, turn: complex) -> DrawnField:
 
 
 def drawn_stress(section: CrossSection, solution: StressSolution) -> DrawnField:
-    """Von Mises stress in MPa over the rotor's own period."""
-    turn = upright(section)
+    """Von Mises stress in MPa, known over the rotor's own period, in each of the sector's."""
+    nodes, count = solution.mesh.nodes, len(solution.mesh.nodes)
+    triangles = solution.mesh.elements[:, QUARTERS].reshape(-1, 3)
+    turns = [
+        upright(section) * cmath.exp(1j * pole * section.pole_angle)
+        for pole in range(0, section.sector_poles, section.rotor_period)
+    ]
     return DrawnField(
-        _picture(solution.mesh.nodes, turn),
-        solution.mesh.elements[:, QUARTERS].reshape(-1, 3),
-        {"stress_von_mises": MPA * solution.von_mises},
+        np.concatenate([_picture(nodes, turn) for turn in turns]),
+        np.concatenate([triangles + k * count for k in range(len(turns))]),
+        {"stress_von_mises": np.tile(MPA * solution.von_mises, len(turns))},
     )
 
 

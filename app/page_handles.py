@@ -7,6 +7,7 @@ counter-clockwise half. A rotor that is a drawing has none: its barriers have no
 
 import cmath
 import math
+from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Literal
@@ -52,12 +53,25 @@ def handles(design: MachineDesign, section: CrossSection) -> list[Handle]:
     return [*found, *_of_ribs(design, section)]
 
 
-def handle_record(design: MachineDesign, handle: Handle, section: CrossSection) -> Record:
-    """A handle as the page gets it."""
+def handle_records(design: MachineDesign, section: CrossSection) -> list[Record]:
+    """The handles of the first pole as the page gets them, each with a name of its own."""
+    seen: Counter[str] = Counter()
+    found = []
+    for handle in handles(design, section):
+        name = f"{handle.key} {handle.side}"
+        seen[name] += 1
+        found.append(_record(design, handle, section, name, seen[name]))
+    return found
+
+
+def _record(
+    design: MachineDesign, handle: Handle, section: CrossSection, name: str, number: int
+) -> Record:
     turn, unit = upright(section), "deg" if handle.key.endswith("_deg") else "mm"
     (x, y), (dx, dy) = placed(handle.place, turn), directed(handle.direction, turn)
     return {
-        "id": f"{handle.key} {handle.side}",
+        "id": name if number == 1 else f"{name} {number}",
+        "number": number,  # of a barrier's radial ribs, counter-clockwise
         "key": handle.key,
         "kind": handle.kind,
         "barrier": handle.barrier,

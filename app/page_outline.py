@@ -21,7 +21,7 @@ from lamwright.geometry.section import CrossSection
 
 from .page_drawing import Record, drawing_record
 from .page_folder import Folder
-from .page_handles import handle_record, handles, unit_of
+from .page_handles import handle_records, handles, unit_of
 from .study import Value
 from .study_text import with_values
 
@@ -149,8 +149,7 @@ def _movable(design: MachineDesign, section: CrossSection) -> set[str]:
 
 
 def _drawn(design: MachineDesign, section: CrossSection) -> Record:
-    own = [handle_record(design, handle, section) for handle in handles(design, section)]
-    return {**drawing_record(section), "handles": own}
+    return {**drawing_record(section), "handles": handle_records(design, section)}
 
 
 def _numbers(path: str, value: object) -> Iterator[tuple[str, float | int]]:

@@ -37,8 +37,7 @@ export class Design extends Teller {
 
   async open(path) {
     const record = await get("/api/design", { path });
-    this.path = path;
-    this.drawing = null;
+    Object.assign(this, { path, drawing: null, outline: null });
     this.#history = new History(path);
     this.#take(record);
     this.#history.push(this.text, "open");
@@ -56,7 +55,7 @@ export class Design extends Teller {
 
   // Text that is in no file yet, as of a study's row.
   async begin(path, text, what) {
-    Object.assign(this, { path, savedText: "", sha256: null, drawing: null, isStale: false });
+    Object.assign(this, { path, savedText: "", sha256: null, drawing: null, outline: null, isStale: false });
     this.#history = new History(path);
     this.#history.push(text, what);
     this.text = text;

@@ -19,14 +19,14 @@ export class Drawing {
   }
 
   show(drawing, isOld) {
-    show(this.#regions, drawing?.regions ?? [], (region) => `m-${region.material} p-${region.part}`);
+    show(this.#regions, drawing?.regions ?? [], (region) => `m-${region.material} p-${region.part}${isGap(region) ? " gap" : ""}`);
     this.#picture.classList.toggle("is-old", isOld);
-    if (drawing) this.#viewport.show(drawing.view);
+    if (drawing) this.#viewport.show(drawing.view, drawing.near);
   }
 
   // Outline of the kept design's rotor, or nothing.
   compare(drawing) {
-    const rotor = (drawing?.regions ?? []).filter((region) => region.part === "rotor" && !region.name.startsWith("gap"));
+    const rotor = (drawing?.regions ?? []).filter((region) => region.part === "rotor" && !isGap(region));
     show(this.#kept, rotor, () => "kept-line");
   }
 
@@ -44,6 +44,11 @@ export class Drawing {
     this.#bar.querySelector(".scale-line").style.width = `${millimetres * this.#viewport.scale}px`;
     setText(this.#bar.querySelector(".scale-text"), `${millimetres} mm`);
   }
+}
+
+// The gap's layers are the mesh's; iron and slots have edges of their own.
+function isGap({ name }) {
+  return name.startsWith("gap");
 }
 
 function show(group, regions, classOf) {

@@ -7,7 +7,7 @@ import { set, setText } from "./dom.js";
 import { FieldCanvas } from "./field_canvas.js";
 import { FieldData } from "./field_data.js";
 import { FieldGl } from "./field_gl.js";
-import { written } from "./format.js";
+import { fixed, written } from "./format.js";
 
 export class Field {
   kind = "outline"; // or b, a, stress
@@ -87,12 +87,12 @@ export class Field {
   }
 
   #label(picture) {
-    const { greatest, low, high, unit, name } = picture;
+    const { greatest, low, high, isCut, unit, name } = picture;
     const part = (one) => this.#bar.querySelector(`.${one}`);
     setText(part("name"), `${name} in ${unit}`);
     setText(part("low"), written(low, 3));
-    setText(part("high"), written(high, 3));
-    setText(part("greatest"), `highest ${written(greatest.value, 3)} at ${written(greatest.x, 3)}, ${written(-greatest.y, 3)} mm`);
+    setText(part("high"), `${isCut ? "\u2265 " : ""}${written(high, 3)}`);
+    setText(part("greatest"), `highest ${written(greatest.value, 3)} at ${fixed(greatest.x, 1)}, ${fixed(-greatest.y, 1)} mm`);
     const ramped = part("ramp");
     const context = ramped.getContext("2d");
     const image = context.createImageData(256, 1);
@@ -133,7 +133,7 @@ export class Field {
   // The value at a place of the drawing, written beside it; null takes it away.
   hint(at) {
     const value = at && this.#picture ? this.valueAt(at) : null;
-    setText(this.#hint, value === null ? "" : `${written(value, 3)} ${this.#picture.unit} at ${at.x.toFixed(1)}, ${(-at.y).toFixed(1)} mm`);
+    setText(this.#hint, value === null ? "" : `${written(value, 3)} ${this.#picture.unit} at ${fixed(at.x, 1)}, ${fixed(-at.y, 1)} mm`);
     if (value === null) return;
     const { x, y } = this.#viewport.toStage(at.x, at.y);
     Object.assign(this.#hint.style, { left: `${x + 16}px`, top: `${y + 18}px` });

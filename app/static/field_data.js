@@ -4,10 +4,14 @@
 // Layout: uint32 length of the JSON head, the head, then the arrays at the offsets that it gives.
 
 const PICTURES = {
-  b: { mesh: "field", array: "field_b", range: "b", unit: "T", name: "flux density", ramp: "magnitude", lines: "field_a_z" },
+  b: { mesh: "field", array: "field_b", range: "b", unit: "T", name: "flux density", ramp: "magnitude", lines: "field_a_z", above: 0.001 },
   a: { mesh: "field", array: "field_a_z", range: "a_z", unit: "Wb/m", name: "vector potential", ramp: "signed", lines: "field_a_z" },
-  stress: { mesh: "stress", array: "stress_von_mises", range: "von_mises", unit: "MPa", name: "von Mises stress", ramp: "magnitude", lines: null },
+  stress: { mesh: "stress", array: "stress_von_mises", range: "von_mises", unit: "MPa", name: "von Mises stress", ramp: "magnitude", lines: null, above: 0.004 },
 };
+// `above`: the share of the area whose values lie above the brightest colour; a single corner's peak
+// would leave the rest of the picture dark.
+const BINS = 1000;
+const CLEAR = 0.85; // of the highest value: a colour scale that ends so near it may as well end there
 const LINES = 24; // of equal flux between them
 const CELLS = 64; // along either side of the grid that finds triangles
 
@@ -36,12 +40,16 @@ export class FieldData {
     const [low, high] = this.#head.ranges?.[spec.range] ?? extremes(values);
     const lines = spec.lines ? this.#arrays.get(spec.lines) : null;
     const span = lines ? extremes(lines) : [0, 0];
+    const isPerTriangle = values.length === triangles.length / 3 && values.length !== positions.length / 2;
+    const isSigned = spec.ramp === "signed";
+    const bound = isSigned ? Math.max(-low, high) : high;
+    const brightest = spec.above ? topOf({ positions, triangles, values, isPerTriangle }, bound, spec.above) : bound;
+    const isCut = brightest < CLEAR * bound;
     return {
-      ...spec, positions, triangles, values, low: spec.ramp === "signed" ? -Math.max(-low, high) : low,
-      high: spec.ramp === "signed" ? Math.max(-low, high) : high, lines,
+      ...spec, positions, triangles, values, isPerTriangle, isCut, lines,
+      low: isSigned ? -bound : low, high: isCut ? brightest : bound,
       spacing: lines ? (span[1] - span[0]) / LINES : 0,
-      isPerTriangle: values.length === triangles.length / 3 && values.length !== positions.length / 2,
-      greatest: this.#greatest(values, positions, triangles),
+      greatest: this.#greatest(values, positions, triangles, isSigned),
     };
   }
 
@@ -66,9 +74,10 @@ export class FieldData {
     return this.#grids.get(mesh);
   }
 
-  #greatest(values, positions, triangles) {
+  #greatest(values, positions, triangles, isSigned) {
     let best = 0;
-    for (let k = 1; k < values.length; k += 1) if (values[k] > values[best]) best = k;
+    const size = isSigned ? Math.abs : (value) => value;
+    for (let k = 1; k < values.length; k += 1) if (size(values[k]) > size(values[best])) best = k;
     const node = values.length === positions.length / 2 ? best : triangles[3 * best];
     return { value: values[best], x: positions[2 * node], y: positions[2 * node + 1] };
   }
@@ -104,6 +113,22 @@ class Grid {
     if (!this.#cells.has(key)) this.#cells.set(key, []);
     this.#cells.get(key).push(k);
   }
+}
+
+// The value between 0 and `most` above which a share of the area lies.
+function topOf({ positions: p, triangles: t, values, isPerTriangle }, most, share) {
+  const areas = new Float64Array(BINS);
+  let total = 0;
+  for (let k = 0; k < t.length; k += 3) {
+    const [a, b, c] = [t[k], t[k + 1], t[k + 2]];
+    const area = Math.abs((p[2 * b] - p[2 * a]) * (p[2 * c + 1] - p[2 * a + 1]) - (p[2 * c] - p[2 * a]) * (p[2 * b + 1] - p[2 * a + 1]));
+    const value = isPerTriangle ? values[k / 3] : (values[a] + values[b] + values[c]) / 3;
+    areas[Math.min(BINS - 1, Math.max(0, Math.floor((BINS * value) / most)))] += area;
+    total += area;
+  }
+  let [bin, above] = [BINS, 0];
+  while (bin > 1 && above <= share * total) above += areas[(bin -= 1)];
+  return (most * (bin + 1)) / BINS;
 }
 
 function extremes(values) {

@@ -13,19 +13,21 @@ void main() {
 const FRAGMENT = `#version 300 es
 precision highp float;
 in float shown; in float level;
-uniform sampler2D colours; uniform vec2 range; uniform float spacing; uniform float ink;
+uniform sampler2D colours; uniform vec2 range; uniform float spacing; uniform float ink; uniform float bright;
 out vec4 colour;
+// Lines lie halfway between whole numbers: none where the potential is 0, as on the rim and in most
+// of the shaft.
+float line(float turns) {
+  float width = fwidth(turns);
+  float off = abs(fract(turns) - 0.5);
+  return (1.0 - smoothstep(0.5 * ink * width, (0.5 * ink + 0.8) * width, off)) * (1.0 - smoothstep(0.2, 0.42, width));
+}
 void main() {
   float t = clamp((shown - range.x) / max(range.y - range.x, 1e-30), 0.0, 1.0);
   vec3 base = texture(colours, vec2(t * 255.0 / 256.0 + 0.5 / 256.0, 0.5)).rgb;
-  float cover = 0.0;
-  if (spacing > 0.0) {
-    float turns = level / spacing;
-    float width = fwidth(turns);
-    float off = abs(fract(turns - 0.5) - 0.5);
-    cover = width < 0.5 ? 0.55 * (1.0 - smoothstep(0.5 * ink * width, (0.5 * ink + 0.8) * width, off)) : 0.0;
-  }
-  vec3 pen = dot(base, vec3(0.3, 0.6, 0.1)) > 0.35 ? vec3(0.03, 0.06, 0.08) : vec3(0.92);
+  // Where lines are too close to be told apart two of three fade, then all: the colour stays true.
+  float cover = spacing > 0.0 ? 0.55 * max(line(level / spacing), line(level / (3.0 * spacing))) : 0.0;
+  vec3 pen = dot(base, vec3(0.3, 0.6, 0.1)) > bright ? vec3(0.03, 0.06, 0.08) : vec3(0.92);
   colour = vec4(mix(base, pen, cover), 1.0);
 }`;
 
@@ -87,6 +89,7 @@ export class FieldGl {
     gl.uniform2f(this.#at("range"), this.#picture.low, this.#picture.high);
     gl.uniform1f(this.#at("spacing"), this.#picture.spacing);
     gl.uniform1f(this.#at("ink"), 0.6 * ratio);
+    gl.uniform1f(this.#at("bright"), this.#picture.ramp === "signed" ? 0.35 : 0.85);
     gl.drawArrays(gl.TRIANGLES, 0, this.#count);
   }
 

@@ -35,6 +35,10 @@ export class Handles {
     stage.addEventListener("pointercancel", (event) => this.#pointerUp(event, false));
   }
 
+  get count() {
+    return this.#handles.length;
+  }
+
   get isMoving() {
     return this.#move !== null;
   }
@@ -133,7 +137,7 @@ export class Handles {
   #describe(handle, value) {
     const limits = this.#desk.limits(handle.key);
     set(this.#nodes.get(handle.id), {
-      "aria-label": `barrier ${handle.barrier}, ${handle.kind}${handle.side === "middle" ? "" : `, ${handle.side}`}`,
+      "aria-label": `barrier ${handle.barrier}, ${handle.kind}${handle.number > 1 ? ` ${handle.number}` : ""}${handle.side === "middle" ? "" : `, ${handle.side}`}`,
       "aria-valuenow": plain(value),
       "aria-valuetext": `${plain(value)} ${handle.unit === "deg" ? "degrees" : handle.unit}`,
       "aria-valuemin": limits ? plain(limits.least.value) : null,

@@ -147,7 +147,8 @@ design.on("outline", (began) => {
   if (design.drawing) {
     handles.show(design.drawing.handles ?? [], new Map(outline.keys.map(({ key, value }) => [key, value])));
     chosen = handles.current;
-    if (chosen && !handles.isMoving) readout.show(chosen, chosen.value, limits(chosen.key));
+    if (!chosen) readout.rest(handles.count > 0);
+    else if (!handles.isMoving) readout.show(chosen, chosen.value, limits(chosen.key));
   }
   findings.show(outline);
   editor.mark(outline.findings);

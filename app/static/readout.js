@@ -21,7 +21,14 @@ export class Readout {
       if (this.#handle && Number.isFinite(value) && value !== this.#handle.value) accept(this.#handle, value);
     };
     this.#input.addEventListener("change", typed);
-    this.#host.append(el("p", { class: "hint" }, "Take hold of a mark on the drawing, or press D and use the arrow keys."));
+  }
+
+  // No mark is chosen; of a rotor that is a drawing there is none.
+  rest(hasMarks) {
+    this.#handle = null;
+    this.#host.replaceChildren(el("p", { class: "hint" }, hasMarks
+      ? "Take hold of a mark on the drawing, or press D and use the arrow keys."
+      : "This rotor is a drawing itself: no key of the design file moves its barriers, so it has no marks."));
   }
 
   focus() {

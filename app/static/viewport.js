@@ -12,6 +12,7 @@ export class Viewport extends Teller {
   size = { width: 1, height: 1 };
   #stage;
   #box = null; // x, y, width, height in mm of all there is
+  #near = null; // the same without the most of the shaft
   #isFitted = true;
   #fingers = new Map();
 
@@ -30,19 +31,26 @@ export class Viewport extends Teller {
     }
   }
 
-  show(box) {
-    const isNew = !this.#box || this.#box.some((value, k) => Math.abs(value - box[k]) > 1e-6);
+  show(box, near = box) {
+    const isNew = !this.#box || [...this.#box, ...this.#near].some((value, k) => Math.abs(value - [...box, ...near][k]) > 1e-6);
     this.#box = box;
+    this.#near = near;
     if (isNew && this.#isFitted) this.fit();
   }
 
+  // As large as the stage lets it be: of a narrow sector the shaft may be cut off, it tells little.
   fit() {
     if (!this.#box) return;
-    const [x, y, width, height] = this.#box;
     this.#isFitted = true;
+    this.scale = this.#fitting(this.#near);
+    const isWhole = this.#fitting(this.#box) > 0.999 * this.scale;
+    const [x, y, width, height] = isWhole ? this.#box : this.#near;
     this.middle = { x: x + width / 2, y: y + height / 2 };
-    this.scale = Math.min(this.size.width / width, this.size.height / height);
     this.tell("moved");
+  }
+
+  #fitting([, , width, height]) {
+    return Math.min(this.size.width / width, this.size.height / height);
   }
 
   // A part of the drawing as large as it fits, with a little room.
@@ -56,7 +64,7 @@ export class Viewport extends Teller {
   // Keep the point of the drawing that lies at px, py where it is.
   zoom(factor, px = this.size.width / 2, py = this.size.height / 2) {
     const at = this.toDrawing(px, py);
-    const least = this.#box ? 0.5 * Math.min(this.size.width / this.#box[2], this.size.height / this.#box[3]) : 1;
+    const least = this.#box ? 0.5 * this.#fitting(this.#box) : 1;
     this.scale = Math.min(NEAREST, Math.max(least, this.scale * factor));
     this.middle = {
       x: at.x - (px - this.size.width / 2) / this.scale,

@@ -9,7 +9,7 @@ from page_client import DEMO, DESIGNS, client_of, demo_folder
 
 from lamwright.app.page_drawing import drawing_record
 from lamwright.app.page_folder import Folder
-from lamwright.app.page_handles import handles
+from lamwright.app.page_handles import handle_records, handles
 from lamwright.app.page_outline import outlined
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_keys import replaced
@@ -101,6 +101,16 @@ def test_the_picture_is_the_outline(name: str):
     section = one.section
     whole = 0.5 * (1e3 * section.stator_outer_radius) ** 2 * section.sector_angle
     assert total == pytest.approx(whole, rel=1e-5)
+
+
+def test_each_radial_rib_has_a_mark_of_its_own():
+    """Barriers with 1, 2, 3 and 4 ribs of one width each."""
+    one = outlined(FOLDER, name := "gallery/blower_36s2p.toml", _text(name))
+    assert one.machine is not None
+    assert one.section is not None
+    marks = handle_records(one.machine.design, one.section)
+    assert len({mark["id"] for mark in marks}) == len(marks)
+    assert sum(mark["kind"] == "radial rib" for mark in marks) == 1 + 2 + 3 + 4
 
 
 def test_findings_have_lines_and_keys(tmp_path: Path):
