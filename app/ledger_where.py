@@ -88,7 +88,9 @@ def ordered(where: str | None, sort: str, limit: int | None, columns: Columns) -
     if column is None:
         raise LamwrightError(f"--sort {name}: no such column; {columns.nearest(name)}")
     turn = "desc" if sort.startswith("-") else "asc"
-    order = f"order by {column[0]} is null, {column[0]} {turn}, number limit ?"
+    # Rows lie by their number, which all have: nothing is to be sorted then.
+    nulls = "" if name == "number" else f"{column[0]} is null, "
+    order = f"order by {nulls}{column[0]} {turn}, number limit ?"
     most = -1 if limit is None else limit
     return Condition(f"where {condition.sql} {order}", (*condition.parameters, most))
 

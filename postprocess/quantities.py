@@ -15,6 +15,8 @@ if TYPE_CHECKING:
 
 RPM = 30.0 / math.pi  # 1/min per rad/s
 DIGITS = 4  # significant, where people read; files hold all of them
+# Between these a number of so many digits has no exponent, and digits behind the point.
+PLAIN_FROM, PLAIN_BELOW = 1e-4, 999.5
 
 # Why a figure has no numerical error.
 STATED = "stated by the design file"
@@ -81,7 +83,9 @@ def figures_of(group: "DataclassInstance") -> Iterator[Figure]:
 
 def number(value: float) -> str:
     """A number with four significant digits, without exponent where it can be read so."""
-    if value == 0.0 or not 1e-4 <= abs(value) < 1e7:
+    if PLAIN_FROM <= abs(value) < PLAIN_BELOW:
+        return f"{value:#.{DIGITS}g}"
+    if value == 0.0 or not PLAIN_FROM <= abs(value) < 1e7:
         return f"{value:.{DIGITS}g}"
     decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
     return f"{value:.{max(0, decimals)}f}"

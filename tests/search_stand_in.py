@@ -96,7 +96,9 @@ def stood_in(end: Callable[[int], None] = lambda count: None) -> Iterator[list[d
         return formula(task.values)
 
     @contextmanager
-    def hired(call: Callable, wishes: object, limit_s: float) -> Iterator[Bench]:
+    def hired(
+        call: Callable, wishes: object, limit_s: float, ready: Callable | None = None
+    ) -> Iterator[Bench]:
         yield Bench(call)
 
     before = evaluation.evaluate, search_run.hired, search_run.design_slopes

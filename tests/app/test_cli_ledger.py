@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 from click.testing import CliRunner
 
+from lamwright.app import ledger_screen
 from lamwright.app.cli import main
 from lamwright.app.evaluation import Evaluation
 from lamwright.app.ledger import Ledger
@@ -69,6 +70,20 @@ def test_a_list_is_sorted_filtered_and_cut(folder):
     assert heads.split()[:5] == ["design", "outcome", "passes", ANGLE, GAP]
     assert [int(line.split()[0]) for line in lines] == [19, 18, 17]
     assert count == "3 of 12 designs; --limit 12 lists all"
+
+
+def test_a_column_reads_as_its_values_do_one_by_one():
+    """Numbers of all sizes, where they round to one digit more, few values often, holes."""
+    sizes = np.random.default_rng(1).uniform(-6.0, 8.0, 400)
+    mixed = [*(10.0**sizes).tolist(), -9.9999, 999.49, 999.5, 1e-4, 0.0]
+    for values in (mixed, [None, *mixed], [0.3, None, 0.5] * 50, ["a"] * 150, [1, 0, None] * 60):
+        for text in (ledger_screen._plain, ledger_screen._keyed):
+            alone = ["" if value is None else text(value) for value in values]
+            assert list(ledger_screen._column(values, text)) == alone
+    for value in mixed:
+        if 1e-4 <= abs(value) < 1e3:
+            digits = ledger_screen._plain(value).lstrip("-0.").replace(".", "")
+            assert len(digits) == 4
 
 
 def test_two_designs_are_compared_by_their_error_bars(folder):
