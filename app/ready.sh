@@ -100,6 +100,11 @@ install_project() {
             install -e "${root}[dev,cluster]" || give_up "the installation failed"
         printf '%s\n' "$state" >"$venv/ready-core"
     fi
+    # Where Python may not keep what it compiles, it would compile our modules at every start.
+    if [ -n "${PYTHONDONTWRITEBYTECODE:-}" ]; then
+        quietly "$venv/bin/python" -m compileall -q "$root/geometry" "$root/solver" \
+            "$root/postprocess" "$root/app" || true
+    fi
     printf '%s\n' "$state" >"$stamp"
 }
 
