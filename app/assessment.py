@@ -21,12 +21,6 @@ from lamwright.geometry.winding import WindingTable, winding_table
 from lamwright.postprocess.cautions import cautions
 from lamwright.postprocess.detail_cautions import detail_cautions
 from lamwright.postprocess.error_bars import magnetic_errors, stress_errors, terminal_errors
-from lamwright.postprocess.figures import (
-    flux_figure,
-    section_figure,
-    stress_figure,
-    torque_figure,
-)
 from lamwright.postprocess.files import VERDICT_FILE, json_text
 from lamwright.postprocess.quantities import OutlineFigures
 from lamwright.postprocess.rib_tables import (
@@ -64,7 +58,6 @@ from .album import Album
 from .angle import AngleFound, most_torque
 from .desk import Desk, StressWork
 from .lamination import DXF_FILE
-from .magnet_work import MagnetWork, magnet_work
 from .outline_work import outlined
 from .point import model_of
 from .pool import Crew, Worker
@@ -72,6 +65,7 @@ from .progress import Stopwatch
 from .version import version
 
 if TYPE_CHECKING:
+    from .magnet_work import MagnetWork
     from .report_assess import Supplied
     from .rib_work import RibsReport
 
@@ -114,7 +108,7 @@ class Assessment:
         with watch.phase("magnetic model"):
             model = model_of(self.machine, section, sector)
             crew.everywhere(Desk.take_model, model)
-            album.add("section", partial(section_figure, name, section))
+            album.add("section", name, section)
         with watch.phase("current angle"):
             found = most_torque(model, self.machine.design, watch.within)
         with watch.phase("torque waveform"):
@@ -124,13 +118,11 @@ class Assessment:
             winding = winding_table(self.machine.design)
             middle = len(by_step) // 2
             shown = name if len(by_step) == 1 else f"{name}, step {middle + 1} of {len(by_step)}"
-            flux = partial(flux_figure, shown, section, winding, sector, by_step[middle][0])
-            album.add("flux", flux)
-            album.add("torque", partial(torque_figure, name, section, waveform))
+            album.add("flux", shown, section, winding, sector, by_step[middle][0])
+            album.add("torque", name, section, waveform)
         with watch.phase("stress"):
             stress = stress_to_come.result()
-            compose = partial(stress_figure, name, section, stress.solution, stress.report)
-            album.add("stress", compose)
+            album.add("stress", name, section, stress.solution, stress.report)
         watch.meanwhile("stress", stress.seconds)
         with watch.phase("error bars"):
             field_errors = self._field_errors(fields, by_step)
@@ -143,10 +135,12 @@ class Assessment:
             stage, model, outline.figures, waveform, field_errors, solved, stress, magnets, album
         )
 
-    def _magnets(self, model: MagneticModel) -> tuple[MagnetWork, ...]:
+    def _magnets(self, model: MagneticModel) -> "tuple[MagnetWork, ...]":
         """What a machine with magnets needs besides; nothing for one without."""
         if self.machine.magnet is None:
             return ()
+        from .magnet_work import magnet_work
+
         with self.watch.phase("magnets"):
             return (magnet_work(self.machine, self.section, model, self.crew),)
 
@@ -213,7 +207,7 @@ class Assessment:
         field_errors: FieldErrors,
         fields: Sequence[FieldSolution],
         stress: StressWork,
-        magnets: Sequence[MagnetWork],
+        magnets: "Sequence[MagnetWork]",
         album: Album,
     ) -> Verdict:
         """Write everything; the verdict last, with the time that the rest has taken."""

@@ -5,6 +5,9 @@ Exit codes: 0 every limit holds, 1 a limit is missed, 2 bad input, 3 not converg
 the program, 130 interrupted.
 """
 
+import atexit
+import gc
+import os
 import traceback
 from pathlib import Path
 from typing import Literal, NoReturn
@@ -73,6 +76,9 @@ class _Front(click.Group):
 def main() -> None:
     """Design synchronous reluctance rotors that can be built."""
     hold_threads()
+    os.environ.setdefault("PYDANTIC_DISABLE_PLUGINS", "1")  # they are sought in every package
+    # At its end Python looks for garbage among all that is left: 0.1 s after a design.
+    atexit.register(gc.freeze)
 
 
 @main.command("map")

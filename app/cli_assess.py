@@ -11,6 +11,7 @@ from .cli_options import TOLERANCES, design_argument, out_option, pictures_optio
 
 if TYPE_CHECKING:
     from .outline_run import OutlineWishes
+    from .progress import Progress
     from .rib_work import RibsReport
 
 
@@ -89,7 +90,7 @@ def assess(
     reports: list[RibsReport] = []
     on_ribs = reports.append if with_ribs else None
     with shown_progress() as progress:
-        verdict = run(design, out, progress, tolerance, pictures, on_ribs)
+        verdict = run(design, out, _with_screen(progress), tolerance, pictures, on_ribs)
     from .screen import print_verdict
 
     print_verdict(verdict, str(out))
@@ -98,6 +99,22 @@ def assess(
 
         print_ribs(report, str(out))
     ctx.exit(0 if verdict.passes and all(report.passes for report in reports) else 1)
+
+
+def _with_screen(progress: "Progress") -> "Progress":
+    """Progress that also imports what prints the verdict while the workers have work left.
+
+    That is so when this process has done its first task of the last phase that is shared.
+    """
+    told: list[str] = []
+
+    def show(phase: str, share: float) -> None:
+        progress(phase, share)
+        told.append(phase)
+        if phase == "error bars" and told.count(phase) == 2:
+            from . import screen  # noqa: F401
+
+    return show
 
 
 def _wishes(

@@ -3,24 +3,27 @@
 import time
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import partial
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design import SteelCard
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
 from lamwright.postprocess.demagnetisation import MagnetState, magnet_states
-from lamwright.postprocess.figures import Composer, write_figure
 from lamwright.postprocess.ribs import RibReport, rib_report
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.estimate_step import Change, FineLevel, changes, fine_level, finer_field
 from lamwright.solver.estimate_stress import finer_stress, peak_errors, zone_peaks
 from lamwright.solver.field import MagneticModel
-from lamwright.solver.foreseen import Node
 from lamwright.solver.rotor_stress import StressSettings, rotor_stress
 from lamwright.solver.types import FieldSolution, FloatArray, StressSolution
 
-from .map_point import MapDesk, MapTask, map_desk, solved_point
-from .map_store import PointRecord
+if TYPE_CHECKING:
+    from lamwright.solver.foreseen import Node
+
+    from .map_point import MapDesk, MapTask
+    from .map_store import PointRecord
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,8 +57,10 @@ class Desk:
         assert self._model is not None
         return solve_chain(self._model, points, start=start)
 
-    def take_map(self, task: MapTask) -> None:
+    def take_map(self, task: "MapTask") -> None:
         """Begin the points of a map of the model."""
+        from .map_point import map_desk
+
         assert self._model is not None
         self._map = map_desk(self._model, task)
 
@@ -63,8 +68,10 @@ class Desk:
         """Let go of a map's factors and fields."""
         self._map = None
 
-    def map_point(self, band: int, node: Node) -> PointRecord:
+    def map_point(self, band: int, node: "Node") -> "PointRecord":
         """A point of the map."""
+        from .map_point import solved_point
+
         assert self._map is not None
         return solved_point(self._map, band, node)
 
@@ -111,6 +118,8 @@ class Desk:
             seconds=time.perf_counter() - began,
         )
 
-    def figure(self, folder: Path, name: str, compose: Composer) -> None:
-        """Draw a figure into the folder, twice: PNG and SVG."""
-        write_figure(folder, name, compose)
+    def figure(self, folder: Path, name: str, *shown: object) -> None:
+        """Draw one of `figures.COMPOSERS` into the folder, twice: PNG and SVG."""
+        from lamwright.postprocess.figures import COMPOSERS, write_figure
+
+        write_figure(folder, name, partial(COMPOSERS[name], *shown))

@@ -7,7 +7,6 @@ from pathlib import Path
 from lamwright.geometry.curves import Edge
 from lamwright.geometry.design_drawing import OutlineKeys
 from lamwright.geometry.design_file import Machine, read_machine
-from lamwright.geometry.dxf_reader import read_pieces
 from lamwright.geometry.errors import DrawingError, DrawingMark, OutlineError
 from lamwright.geometry.outline_report import rotor_lines, stator_lines
 from lamwright.postprocess.files import prepared_folder
@@ -94,4 +93,6 @@ def _write_fault(mark: DrawingMark, folder: Path) -> Path | None:
 
 
 def _edges(path: Path, unit_mm: float | None, layers: tuple[str, ...]) -> tuple[Edge, ...]:
+    from lamwright.geometry.dxf_reader import read_pieces
+
     return read_pieces(path, unit_mm, layers).edges

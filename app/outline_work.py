@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import IO, TYPE_CHECKING, NoReturn
 
+from .imports import quick_imports
 from .pool import Worker, serve, spare_cores
 from .process import Copy, anew, may_fork
 
@@ -70,11 +71,12 @@ def early_outliner() -> "Iterator[Callable[[], Worker[object] | None]]":
 
 def load() -> None:
     """Import what `outlined` needs."""
-    from lamwright.geometry import dxf
+    with quick_imports():
+        from lamwright.geometry import dxf
 
-    from . import lamination  # noqa: F401
+        from . import lamination  # noqa: F401
 
-    dxf.load()
+        dxf.load()
 
 
 def _serve_loaded(calls: IO[bytes], answers: IO[bytes]) -> NoReturn:

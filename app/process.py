@@ -15,6 +15,7 @@ Either is born deaf to the interrupt key: the process that asked for it decides.
 """
 
 import contextlib
+import gc
 import os
 import signal
 import subprocess
@@ -67,6 +68,8 @@ class Copy:
                 self.stdin.close()  # else its input would not end with the caller
                 self.stdout.close()
                 os.dup2(2, 1)  # libraries print to descriptor 1, the caller's output
+                gc.freeze()  # what was imported stays: else its pages are copied to be looked at
+                gc.enable()  # the caller may be at its imports
                 serve(calls, answers)
             finally:
                 os._exit(1)

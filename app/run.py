@@ -10,6 +10,7 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from .imports import quick_imports
 from .outline_work import early_outliner
 from .pool import Crew, spare_cores
 
@@ -57,23 +58,26 @@ def assess(
         NotConverged: an iteration did not end; with its history.
     """
     with early_outliner() as hired:
-        from lamwright.postprocess.files import prepared_folder, staged
+        with quick_imports():
+            from lamwright.postprocess.files import prepared_folder, staged
 
-        from .drawings import read_marked
-        from .lamination import section_of
-        from .progress import SHARES, Stopwatch, silent
+            from .drawings import read_marked
+            from .lamination import section_of
+            from .progress import SHARES, Stopwatch, silent
 
-        shares = SHARES if on_ribs is None else _shares_with_ribs()
-        if on_verdict is not None:
-            shares = {phase: SHARE_BEFORE_PICTURES * share for phase, share in shares.items()}
-            shares["pictures"] = 1.0 - SHARE_BEFORE_PICTURES
-        watch = Stopwatch(progress or silent, shares)
-        machine = read_marked(Path(path), Path(out))
-        section = section_of(machine)
-        folder = prepared_folder(Path(out))
-        with watch.phase("start"):
-            crew = Crew(make_desk, min(spare_cores(), MOST_WORKERS))
-            from .assessment import Assessment
+            shares = SHARES if on_ribs is None else _shares_with_ribs()
+            if on_verdict is not None:
+                shares = {phase: SHARE_BEFORE_PICTURES * share for phase, share in shares.items()}
+                shares["pictures"] = 1.0 - SHARE_BEFORE_PICTURES
+            watch = Stopwatch(progress or silent, shares)
+            machine = read_marked(Path(path), Path(out))
+            section = section_of(machine)
+            folder = prepared_folder(Path(out))
+            with watch.phase("start"):
+                if pictures:  # before the workers are copied, which need it too
+                    from lamwright.postprocess.figures import write_figure  # noqa: F401
+                crew = Crew(make_desk, min(spare_cores(), MOST_WORKERS))
+                from .assessment import Assessment
         with crew, staged(folder) as stage:
             outliner = hired()  # only now: its threads here would forbid the crew's copies
             work = Assessment(

@@ -1,6 +1,7 @@
 """Progress on the terminal: on stderr, as a bar, or without a terminal as one line a phase.
 
-It is imported before a command starts its first process, so nothing heavy is at its top.
+It is imported before a command starts its first process, so nothing heavy is at its top; the bar
+itself is made once the workers are: its thread would forbid copies of this process.
 """
 
 import sys
@@ -11,6 +12,8 @@ from typing import TYPE_CHECKING
 import click
 
 if TYPE_CHECKING:
+    from rich.progress import Progress as Bar
+
     from .progress import Progress
 
 
@@ -20,23 +23,38 @@ def shown_progress() -> "Iterator[Progress]":
     if not sys.stderr.isatty():
         yield _PlainLines()
         return
+    shown = _Drawn()
+    try:
+        yield shown
+    finally:
+        shown.stop()
+
+
+class _Drawn:
+    def __init__(self) -> None:
+        self._bar: Bar | None = None
+
+    def __call__(self, phase: str, share: float) -> None:
+        if phase == "start":
+            return
+        if self._bar is None:
+            self._bar = _bar()
+            self._bar.start()
+        self._bar.update(self._bar.task_ids[0], description=f"{phase:<22}", completed=share)
+
+    def stop(self) -> None:
+        if self._bar is not None:
+            self._bar.stop()
+
+
+def _bar() -> "Bar":
     from rich.console import Console
-    from rich.progress import BarColumn, TextColumn, TimeElapsedColumn
-    from rich.progress import Progress as Bar
+    from rich.progress import BarColumn, Progress, TextColumn, TimeElapsedColumn
 
     columns = (TextColumn("{task.description}"), BarColumn(), TimeElapsedColumn())
-    bar = Bar(*columns, console=Console(stderr=True), transient=True)
-    task = bar.add_task("start", total=1.0)
-
-    def show(phase: str, share: float) -> None:
-        bar.update(task, description=f"{phase:<22}", completed=share)
-        if phase != "start":  # the bar has a thread, and workers are copies of a single one
-            bar.start()
-
-    try:
-        yield show
-    finally:
-        bar.stop()
+    bar = Progress(*columns, console=Console(stderr=True), transient=True)
+    bar.add_task("start", total=1.0)
+    return bar
 
 
 class _PlainLines:

@@ -12,17 +12,18 @@ from collections import OrderedDict
 from collections.abc import Callable, Hashable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Generic, TypeVar
+from typing import TYPE_CHECKING, Generic, TypeVar
 
 from .design import MachineDesign, RotorDesign, StatorDesign
 from .design_drawing import OutlineKeys
-from .drawn_rotor import recognised_rotor
-from .drawn_slot import SlotHints
-from .drawn_stator import recognised_stator
-from .dxf_reader import DrawnPieces, drawing_bytes, read_pieces
 from .errors import DrawingMark, OutlineError
 from .key_lines import KeyPath
 from .outline_report import RotorOutline, StatorOutline, source_of, stator_measures
+
+# What reads and recognises is imported for a design with a drawing: 15 ms of each start without.
+if TYPE_CHECKING:
+    from .drawn_slot import SlotHints
+    from .dxf_reader import DrawnPieces
 
 MM = 1e-3  # m
 UM = 1e-6  # m
@@ -127,7 +128,9 @@ def _stator(table: object, folder: Path) -> _Part:
         return _Part({**STATOR_FILLERS, **table})
     hints = _hints(table)
 
-    def recognised(pieces: DrawnPieces) -> StatorOutline:
+    def recognised(pieces: "DrawnPieces") -> StatorOutline:
+        from .drawn_stator import recognised_stator
+
         drawing = recognised_stator(pieces.edges, UM * keys.heal_um, hints)
         return StatorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
 
@@ -160,7 +163,9 @@ def _rotor(table: object, stator: object, folder: Path) -> _Part:
         return _Part({**ROTOR_FILLERS, **table, **barrier})
     told = None if q_axis is None else math.radians(_float(q_axis))
 
-    def recognised(pieces: DrawnPieces) -> RotorOutline:
+    def recognised(pieces: "DrawnPieces") -> RotorOutline:
+        from .drawn_rotor import recognised_rotor
+
         assert isinstance(poles, int)
         drawing = recognised_rotor(pieces.edges, UM * keys.heal_um, poles, told)
         return RotorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
@@ -201,13 +206,15 @@ class _Known(Generic[_Outline]):
         folder: Path,
         keys: OutlineKeys,
         hints: Hashable,
-        recognised: Callable[[DrawnPieces], _Outline],
+        recognised: "Callable[[DrawnPieces], _Outline]",
     ) -> _Outline:
         """The outline in the drawing that the keys name, recognised if it is not known.
 
         Raises:
             OutlineError: nothing is recognised; that is not kept.
         """
+        from .dxf_reader import drawing_bytes, read_pieces
+
         data = drawing_bytes(folder / str(keys.outline_dxf))
         named = tuple(keys.model_dump().items())
         cause = (hashlib.sha256(data).digest(), named, hints)
@@ -263,7 +270,9 @@ def _float(value: object) -> float:
     return float(value)
 
 
-def _hints(table: Mapping[str, object]) -> SlotHints:
+def _hints(table: Mapping[str, object]) -> "SlotHints":
+    from .drawn_slot import SlotHints
+
     def length(key: str) -> float | None:
         value = table.get(key)
         return MM * _float(value) if _is_number(value) and _float(value) >= 0.0 else None

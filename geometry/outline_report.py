@@ -4,14 +4,17 @@ import cmath
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from .curves import Edge, Path, area, turned
 from .distances import distance
-from .drawn_rotor import RotorDrawing
-from .drawn_slot import DrawnSlot, slot_reach
-from .drawn_stator import StatorDrawing
-from .dxf_reader import DrawnPieces
 from .outline_places import place_text
+
+if TYPE_CHECKING:
+    from .drawn_rotor import RotorDrawing
+    from .drawn_slot import DrawnSlot
+    from .drawn_stator import StatorDrawing
+    from .dxf_reader import DrawnPieces
 
 MM = 1e-3  # m
 UM = 1e-6  # m
@@ -35,7 +38,7 @@ class OutlineSource:
 class StatorOutline:
     """A stator from a drawing."""
 
-    drawing: StatorDrawing
+    drawing: "StatorDrawing"
     source: OutlineSource
 
 
@@ -43,11 +46,11 @@ class StatorOutline:
 class RotorOutline:
     """A rotor from a drawing."""
 
-    drawing: RotorDrawing
+    drawing: "RotorDrawing"
     source: OutlineSource
 
 
-def source_of(file: str, pieces: DrawnPieces) -> OutlineSource:
+def source_of(file: str, pieces: "DrawnPieces") -> OutlineSource:
     """How the pieces were read."""
     return OutlineSource(file, pieces.sha256, pieces.unit_source, pieces.kinds, pieces.left_out)
 
@@ -127,8 +130,10 @@ def _drawing_lines(outline: StatorOutline | RotorOutline) -> Lines:
     )
 
 
-def stator_measures(drawing: StatorDrawing) -> dict[str, float]:
+def stator_measures(drawing: "StatorDrawing") -> dict[str, float]:
     """Dimensions that the drawing shows, by the design's keys (mm)."""
+    from .drawn_slot import slot_reach
+
     slot = drawing.slot
     opening = 0.0 if slot.mouth is None else abs(slot.mouth.end - slot.mouth.start)
     depths = [e.point(1.0).real for p in slot.parts if p.kind == "opening" for e in p.outer.edges]
@@ -151,7 +156,7 @@ def stator_measures(drawing: StatorDrawing) -> dict[str, float]:
     }
 
 
-def tooth_width(slot: DrawnSlot, slots: int) -> float:
+def tooth_width(slot: "DrawnSlot", slots: int) -> float:
     """The thinnest place in m of the iron between the copper of two neighbouring slots."""
     sides = _copper_sides(slot)
     half = math.pi / slots
@@ -160,7 +165,7 @@ def tooth_width(slot: DrawnSlot, slots: int) -> float:
     return distance(upper, lower)
 
 
-def _copper_sides(slot: DrawnSlot) -> Sequence[Edge]:
+def _copper_sides(slot: "DrawnSlot") -> Sequence[Edge]:
     on_wall = {cmath.rect(*cmath.polar(p)) for e in slot.wall for p in (e.start, e.end)}
     sides = [
         edge

@@ -13,7 +13,6 @@ from .cavities import cut_barrier
 from .curves import Edge, Path, arc, line, reversed_edge, reversed_path, turned
 from .design import BarrierDesign, MachineDesign
 from .detail_places import Places, key_places, rotor_period
-from .drawn_rotor_regions import drawn_rotor_regions
 from .half_barrier import HalfBarrier
 from .magnets import with_magnets
 from .rib_cuts import rib_cuts
@@ -38,6 +37,8 @@ def rotor_poles(
     """
     outline = design.rotor.outline
     if outline is not None:
+        from .drawn_rotor_regions import drawn_rotor_regions
+
         radius = rotor_frame(design).circle_radius
         return drawn_rotor_regions(outline.drawing, radius, design.pole_pairs)
     other = alternate_pole(design) or design

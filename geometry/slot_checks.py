@@ -9,7 +9,6 @@ import math
 
 from .design import MachineDesign
 from .design_slots import idle_slot_keys
-from .drawn_slot import layered
 from .errors import GeometryError, OutlineError
 from .outline_report import StatorOutline
 from .remedies import Fault
@@ -37,6 +36,8 @@ def stator_faults(design: MachineDesign) -> list[Fault]:
 
 def _drawn_faults(design: MachineDesign, outline: StatorOutline) -> list[Fault]:
     """Faults of a stator from a drawing, whose shape stands as it was recognised."""
+    from .drawn_slot import layered
+
     try:
         slot = layered(outline.drawing.slot, design.winding.layers)
     except OutlineError as error:

@@ -12,7 +12,6 @@ from itertools import pairwise
 
 from .curves import Edge, Path, arc, line, reversed_edge
 from .design import MachineDesign
-from .drawn_stator_regions import drawn_stator_regions
 from .rotor_frame import rotor_frame
 from .section import Region
 from .slot_outline import Slot, slot_outline
@@ -50,6 +49,8 @@ def stator_regions(design: MachineDesign, sector_poles: int = 1) -> tuple[Region
     """
     outline = design.stator.outline
     if outline is not None:
+        from .drawn_stator_regions import drawn_stator_regions
+
         ring, layers = stator_ring(design), design.winding.layers
         poles = 2 * ring.pole_pairs
         return drawn_stator_regions(

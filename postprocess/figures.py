@@ -214,6 +214,12 @@ def fault_figure(title: str, edges: Sequence[Edge], place: complex, style: Style
 
 
 # File names without ending, and who composes them. A run draws each as soon as it can.
+COMPOSERS: dict[str, Callable[..., Figure]] = {
+    "section": section_figure,
+    "flux": flux_figure,
+    "stress": stress_figure,
+    "torque": torque_figure,
+}
 FIGURES: dict[str, Callable[[Pictured, Style], Figure]] = {
     "section": lambda r, style: section_figure(r.name, r.section, style),
     "flux": lambda r, style: flux_figure(r.name, r.section, r.winding, r.sector, r.solution, style),
