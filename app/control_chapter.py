@@ -4,7 +4,9 @@ Limits: `duty.most_current_a`, peak; `duty.supply_voltage_v` between lines of a 
 speeds up to `duty.maximum_speed_rpm`.
 """
 
+from dataclasses import replace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from lamwright.geometry.design_file import design_hash
 from lamwright.geometry.errors import LamwrightError
@@ -29,12 +31,18 @@ from lamwright.postprocess.control_files import (
 from lamwright.postprocess.figures_control import write_control
 from lamwright.postprocess.netcdf import write_netcdf
 from lamwright.postprocess.quantities import RPM
-from lamwright.postprocess.terminals import terminals
+from lamwright.postprocess.shifted_surface import shift_errors, with_angle
+from lamwright.postprocess.terminals import Terminals, terminals
 
 from .chapter import Chapter
 from .mapped import Mapped
 from .version import version
 
+if TYPE_CHECKING:
+    from _typeshed import DataclassInstance
+
+ANGLES = ("gamma_at_current_limit_el_deg",)
+OF_SURFACE = "not estimated row by row: of the map's linkages, see rated_psi_d_vs, rated_psi_q_vs"
 TABLE_FILE, INVERSE_FILE = "control_table.csv", "inverse_map.csv"
 AMPERE_FILE, VOLT_FILE = "most_torque_per_ampere.csv", "most_torque_per_volt.csv"
 VOLT_SPEEDS_FILE = "most_torque_per_volt_speeds.csv"
@@ -81,17 +89,31 @@ def control_chapter(mapped: Mapped, stage: Path) -> Chapter:
         },
     )
     write_control(stage, design.name, control, most_speed)
-    pull_out = pull_out_figures(control, duty.rated_speed_rpm / RPM * pole_pairs)
+    omega_e = duty.rated_speed_rpm / RPM * pole_pairs
+    figures = _figures(drive, omega_e)
+    others = [_figures(replace(drive, surface=surface), omega_e) for surface in mapped.shifted]
     not_given = []
-    if pull_out is None:
+    if len(figures) == 1:
         not_given.append(
             f"pull-out at rated speed: the supply of {duty.supply_voltage_v:g} V reaches no torque"
             f" at {duty.rated_speed_rpm:g} rpm"
         )
-    groups = (curve_figures(control), pull_out, reading_figures(control))
     return Chapter(
-        tuple(group for group in groups if group is not None), cautions, tuple(not_given)
+        (*figures, reading_figures(control)),
+        cautions,
+        tuple(not_given),
+        errors=with_angle(shift_errors(figures, others), mapped.angle_error, ANGLES),
+        table_errors={
+            name: {"all columns": OF_SURFACE}
+            for name in (TABLE_FILE, INVERSE_FILE, AMPERE_FILE, VOLT_FILE, VOLT_SPEEDS_FILE)
+        },
     )
+
+
+def _figures(drive: Terminals, omega_e: float) -> "tuple[DataclassInstance, ...]":
+    """Figures of the curve, and of the pull-out where the supply reaches a torque."""
+    pull_out = pull_out_figures(drive, omega_e)
+    return (curve_figures(drive), *(() if pull_out is None else (pull_out,)))
 
 
 def control_cautions(control: Control, most_rpm: float) -> tuple[str, ...]:

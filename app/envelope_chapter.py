@@ -1,7 +1,8 @@
 """The envelope, the efficiency and a run in time of a mapped machine: tables, pictures, figures."""
 
 import math
-from dataclasses import dataclass, field
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
 from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -20,13 +21,16 @@ from lamwright.postprocess.efficiency import (
 )
 from lamwright.postprocess.envelope import Envelope, Region, envelope
 from lamwright.postprocess.envelope_tables import efficiency_csv, envelope_csv, voltage_run_csv
+from lamwright.postprocess.figure_errors import SUFFIX, lacking_errors
 from lamwright.postprocess.figures_envelope import (
     EfficiencySheet,
     write_efficiency,
     write_envelope,
 )
-from lamwright.postprocess.landmarks import landmarks
-from lamwright.postprocess.quantities import CHECK, RPM, STATED, shown_as
+from lamwright.postprocess.landmarks import LINE, landmarks
+from lamwright.postprocess.quantities import CHECK, RPM, STATED, scaled_by_key, shown_as
+from lamwright.postprocess.shifted_surface import shift_errors, summed, with_angle
+from lamwright.postprocess.table_errors import PLACE, Columns
 from lamwright.postprocess.terminals import Terminals, terminals
 from lamwright.postprocess.voltage_run import (
     Feed,
@@ -39,6 +43,7 @@ from lamwright.postprocess.voltage_run import (
 from lamwright.solver.types import FloatArray
 
 from .chapter import Chapter
+from .control_chapter import OF_SURFACE
 from .known_losses import known_losses
 from .mapped import Mapped
 
@@ -53,6 +58,8 @@ CAUTIONS = (
     "envelope and efficiency: voltage and copper loss rest on resistance and end-winding leakage by"
     " formula; iron loss is not in the envelope; sinusoidal supply: a converter adds losses",
 )
+BEST_ANGLES = ("base_current_angle_deg", "most_power_factor_angle_deg")
+FLAT = "where a flat best lies among the points of the picture: not estimated"
 RAMP, MOST_PERIODS, DAMPINGS = 20.0, 80.0, 7.0  # of the run; e^-7 = 1e-3 is left of a swing
 
 
@@ -64,10 +71,14 @@ class EfficiencyFigures:
         metadata=shown_as("best_efficiency_percent", "best efficiency, of losses given", "%", 100.0)
     )
     torque: float = field(
-        metadata=shown_as("best_efficiency_torque_nm", "best efficiency, shaft torque", "N m")
+        metadata=shown_as(
+            "best_efficiency_torque_nm", "best efficiency, shaft torque", "N m", exact=FLAT
+        )
     )
     speed: float = field(
-        metadata=shown_as("best_efficiency_speed_rpm", "best efficiency, speed", "1/min", RPM)
+        metadata=shown_as(
+            "best_efficiency_speed_rpm", "best efficiency, speed", "1/min", RPM, exact=FLAT
+        )
     )
 
 
@@ -133,12 +144,78 @@ def envelope_chapter(mapped: Mapped, stage: Path) -> Chapter:
     losses = known_losses(mapped)
     efficiency = _efficiency(stage, mapped, drive, losses, top)
     run = _run(stage, drive, losses, rated)
+    shifts = [replace(drive, surface=surface) for surface in mapped.shifted]
+    others = [landmarks(shift, envelope(shift, found.speed), rated).figures for shift in shifts]
+    errors = with_angle(shift_errors(marks.figures, others), mapped.angle_error, BEST_ANGLES)
     for made, name in ((efficiency, "efficiency"), (run, "voltage run")):
         if isinstance(made, str):
             lines.append(f"{name}: {made}")
         else:
             figures.append(made)
-    return Chapter(tuple(figures), CAUTIONS, tuple(lines))
+    if isinstance(efficiency, EfficiencyFigures):
+        errors |= _efficiency_error(drive, shifts, losses, efficiency)
+    if isinstance(run, RunFigures):
+        errors |= summed([_damping_error(drive, shift, rated, run) for shift in shifts])
+    return Chapter(
+        tuple(figures),
+        CAUTIONS,
+        tuple(lines),
+        errors=errors,
+        without_error=lacking_errors(marks.figures, errors),
+        table_errors={
+            "envelope.csv": _columns(found, [envelope(shift, found.speed) for shift in shifts]),
+            **{
+                name: {"all columns": OF_SURFACE}
+                for name in ("envelope_generating.csv", "efficiency.csv", "voltage_run.csv")
+            },
+        },
+    )
+
+
+def _efficiency_error(
+    drive: Terminals, shifts: Sequence[Terminals], losses: KnownLosses, best: EfficiencyFigures
+) -> dict[str, float]:
+    """By the linkages at the currents of the best point; its iron loss is taken as it is."""
+    speed, torque = np.array([best.speed]), np.array([best.torque])
+    point = load_points(drive, losses, speed, torque)
+    others = [
+        float(at_currents(shift, losses, speed, point.i_d, point.i_q).efficiency[0])
+        for shift in shifts
+    ]
+    own = float(point.efficiency[0])
+    if not others or not math.isfinite(own):
+        return {}
+    return scaled_by_key(best, {"best": sum(abs(other - own) for other in others)})
+
+
+def _damping_error(
+    drive: Terminals, shift: Terminals, rated: float, run: RunFigures
+) -> dict[str, float]:
+    table = envelope(drive, np.array([rated]))
+    omega_e = drive.surface.pole_pairs * rated
+    swing = small_swings(shift, float(table.i_d[0]), float(table.i_q[0]), omega_e)[0]
+    return scaled_by_key(run, {"damping": abs(-1.0 / swing.real - run.damping)})
+
+
+def _columns(found: Envelope, others: Sequence[Envelope]) -> Columns:
+    """Errors of the columns of `envelope.csv`: the most that any row differs by."""
+    scale = {
+        "torque": ("torque_nm", 1.0),
+        "power": ("power_w", 1.0),
+        "current": ("current_peak_a", 1.0),
+        "gamma": ("current_angle_deg", 180.0 / math.pi),
+        "i_d": ("i_d_a", 1.0),
+        "i_q": ("i_q_a", 1.0),
+        "voltage": ("line_voltage_rms_v", LINE),
+        "power_factor": ("power_factor", 1.0),
+    }
+    columns: Columns = {"speed_rpm": PLACE, "limit": "which limit rules"}
+    for name, (key, unit) in scale.items():
+        own = getattr(found, name)
+        off = [np.abs(getattr(other, name) - own) for other in others]
+        if off:
+            columns[key + SUFFIX] = unit * sum(float(np.nan_to_num(one).max()) for one in off)
+    return columns
 
 
 def drive_of(mapped: Mapped) -> Terminals:

@@ -6,7 +6,7 @@ the harmonics of rotor and teeth are seen to higher orders.
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -26,6 +26,7 @@ from lamwright.postprocess.ac_copper import (
     thickness_in_depths,
 )
 from lamwright.postprocess.coenergy_surface import torque
+from lamwright.postprocess.figure_errors import SUFFIX, differences
 from lamwright.postprocess.figures_losses import DensityPart, LossPicture, write_loss_figures
 from lamwright.postprocess.iron_loss import (
     IronLaws,
@@ -47,8 +48,9 @@ from lamwright.postprocess.loss_figures import (
     orders_csv,
 )
 from lamwright.postprocess.operating import copper_loss, dq_currents
-from lamwright.postprocess.quantities import RPM
+from lamwright.postprocess.quantities import FORMULA, RPM, scaled_by_key
 from lamwright.postprocess.skew import step_point
+from lamwright.postprocess.table_errors import PLACE, Columns
 from lamwright.postprocess.torque import waveform_positions
 from lamwright.postprocess.windage import bearing_loss, windage_loss
 from lamwright.solver.chains import OperatingPoint, solve_chain
@@ -65,6 +67,8 @@ if TYPE_CHECKING:
 
 POSITIONS = 24  # over 60 electrical degrees: orders up to 72
 ANGLES = 721  # current angles tried on the surface
+LOSS_TABLES = ("losses.csv", "iron_loss_orders.csv")
+OF_COARSER = "not estimated row by row: the sums' errors stand in map.json"
 SPEEDS = 21  # rows of the table over speed
 
 
@@ -83,23 +87,28 @@ class _Losses:
     columns: tuple[tuple[str, str, FloatArray | None], ...]  # key, name, values
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _Solved:
+    """What one mesh says."""
+
+    steps: list[tuple[FieldSolution, ...]]
+    laws: IronLaws | str  # or why there are none
+    iron: _Iron | None
+    strands: SlotStrands | None
+    losses: _Losses
+
+
 def loss_chapter(mapped: Mapped, stage: Path) -> Chapter:
     """Losses at rated current and speed; tables and pictures go to `stage`."""
     design, section = mapped.machine.design, mapped.section
     current = design.duty.rated_current_a
     gamma = best_angle(mapped, current)
-    steps = rated_fields(mapped, current, gamma)
     rated = design.duty.rated_speed_rpm / RPM
     omega_e = section.pole_pairs * rated
-    laws = laws_of(mapped.machine, section, mapped.model)
-    iron: _Iron | None = None
-    if not isinstance(laws, str):
-        parts = [loss_coefficients(mapped.model, fields, laws) for fields in steps]
-        iron = _Iron(laws, np.asarray(np.mean(parts, axis=0)))
-    strands = slot_strands(design, mapped.model, section.rotor_period)
     top = design.duty.maximum_speed_rpm / RPM
     speeds = np.append(np.linspace(0.0, top, SPEEDS)[1:], rated)
-    losses = _losses(mapped, steps, current, iron, strands, speeds)
+    own = _solved(mapped, current, gamma, speeds)
+    steps, laws, iron, strands, losses = own.steps, own.laws, own.iron, own.strands, own.losses
     figures: list[DataclassInstance] = [
         PointFigures(current=current, gamma=gamma, speed=rated),
         CopperFigures(
@@ -107,14 +116,9 @@ def loss_chapter(mapped: Mapped, stage: Path) -> Chapter:
             ends=float(losses.columns[1][2][-1]),  # type: ignore[index]
         ),
     ]
-    ac: AcCopperFigures | None = None
-    if strands is not None:
-        ac = _ac_figures(strands, losses, omega_e)
-        figures.append(ac)
-    of_iron: IronFigures | None = None
+    ac, of_iron = _of_fields(own, omega_e)
+    figures += [group for group in (ac, of_iron) if group is not None]
     if iron is not None:
-        of_iron = iron_figures(iron.coefficients, iron.laws, omega_e)
-        figures.append(of_iron)
         write_text(
             stage / "iron_loss_orders.csv", orders_csv(iron.coefficients, iron.laws, omega_e)
         )
@@ -139,7 +143,59 @@ def loss_chapter(mapped: Mapped, stage: Path) -> Chapter:
         )
     if isinstance(laws, str) and not isinstance(mapped.losses, str):
         not_given.append(laws)  # else the map tells it
-    return Chapter(tuple(figures), loss_cautions(of_iron, ac, POSITIONS), tuple(not_given))
+    bounds: dict[str, Columns] = {name: {"all columns": OF_COARSER} for name in LOSS_TABLES}
+    errors = scaled_by_key(figures[0], {"gamma": mapped.angle_error})
+    if mapped.coarser is not None:
+        other = _solved(replace(mapped, model=mapped.coarser), current, gamma, speeds)
+        errors |= differences(
+            [group for group in (ac, of_iron) if group is not None],
+            [group for group in _of_fields(other, omega_e) if group is not None],
+        )
+        bounds["losses.csv"] = _columns(losses, other.losses)
+    return Chapter(
+        tuple(figures),
+        loss_cautions(of_iron, ac, POSITIONS),
+        tuple(not_given),
+        errors=errors,
+        table_errors={name: own for name, own in bounds.items() if (stage / name).exists()},
+    )
+
+
+def _solved(mapped: Mapped, current: float, gamma: float, speeds: FloatArray) -> _Solved:
+    """The fields at rated current and all losses at the speeds in rad/s."""
+    design, section = mapped.machine.design, mapped.section
+    steps = rated_fields(mapped, current, gamma)
+    laws = laws_of(mapped.machine, section, mapped.model)
+    iron: _Iron | None = None
+    if not isinstance(laws, str):
+        parts = [loss_coefficients(mapped.model, fields, laws) for fields in steps]
+        iron = _Iron(laws, np.asarray(np.mean(parts, axis=0)))
+    strands = slot_strands(design, mapped.model, section.rotor_period)
+    losses = _losses(mapped, steps, current, iron, strands, speeds)
+    return _Solved(steps, laws, iron, strands, losses)
+
+
+def _of_fields(
+    solved: _Solved, omega_e: float
+) -> tuple[AcCopperFigures | None, IronFigures | None]:
+    """The figures that rest on the fields; the last speed is the rated one."""
+    ac = None if solved.strands is None else _ac_figures(solved.strands, solved.losses, omega_e)
+    iron = solved.iron
+    return ac, None if iron is None else iron_figures(iron.coefficients, iron.laws, omega_e)
+
+
+def _columns(losses: _Losses, coarser: _Losses) -> Columns:
+    """Errors of the columns of `losses.csv`: the most that any row differs by on a coarser mesh."""
+    columns: Columns = {"speed_rpm": PLACE}
+    for (key, _, own), (_, _, other) in zip(losses.columns, coarser.columns, strict=True):
+        if own is None or other is None:
+            continue
+        off = float(np.abs(own - other).max())
+        if off > 0.0:
+            columns[key + SUFFIX] = off
+        else:
+            columns[key] = FORMULA
+    return columns
 
 
 def best_angle(mapped: Mapped, current: float) -> float:

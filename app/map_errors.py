@@ -34,6 +34,8 @@ class MapErrors:
     mesh: FieldErrors  # of these
     linkage: float  # greatest by interpolation at the probes, of the map's greatest linkage
     torque: float  # likewise, of its greatest mean torque
+    share_d: float  # greatest error of psi_d by both causes, over psi_d at rated current
+    share_q: float  # of psi_q, over the larger of those at rated and at no current
 
 
 def map_errors(
@@ -80,7 +82,25 @@ def map_errors(
         for at, place in enumerate(sampled)
     }
     linkage, off = _interpolation(flux_map, mapped.surface, places, means)
-    return MapErrors(tuple(means[0]), errors_of(means[0], changed, pole_pairs), linkage, off)
+    mesh = errors_of(means[0], changed, pole_pairs)
+    between = linkage * max(float(np.abs(psi).max()) for psi in mean_linkages(flux_map))
+    psi_d, psi_q = (float(psi) for psi in linkages(mapped.surface, *map(np.asarray, rated)))
+    bare = _bare_psi_q(mapped.surface)
+    return MapErrors(
+        rated=tuple(means[0]),
+        mesh=mesh,
+        linkage=linkage,
+        torque=off,
+        share_d=(mesh.psi_d + between) / abs(psi_d),
+        share_q=(mesh.psi_q + between) / max(abs(psi_q), bare),
+    )
+
+
+def _bare_psi_q(surface: CoenergySurface) -> float:
+    """Amount of psi_q in V s without current, of magnets."""
+    ends = (surface.i_d_range, surface.i_q_range)
+    still = (np.asarray(np.clip(0.0, low, high)) for low, high in ends)
+    return abs(float(linkages(surface, *still)[1]))
 
 
 def _interpolation(

@@ -32,6 +32,10 @@ class Mapped:
     watch: Stopwatch
     eccentricity: float | None = None  # m, of the rotor's axis beside the stator's; if asked for
     control: ControlWishes = field(default_factory=ControlWishes)
+    # What errors are told by: the surface with each linkage off, and a mesh half as fine.
+    shifted: tuple[CoenergySurface, ...] = ()
+    coarser: MagneticModel | None = None
+    angle_error: float = 0.0  # rad, of the current angle of most torque at rated current
 
 
 # The machine and the hidden folder whose files move to the results when all chapters are done.

@@ -8,7 +8,7 @@ and solved by one of them while the others go through the positions.
 import cmath
 import math
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 from itertools import chain
 
@@ -160,6 +160,43 @@ def ripple_work(
         turned=turned_torque(turns, torques),
         pull=eccentric_pull(forces, complex(offset), section.gap, smooth),
         record=record,
+    )
+
+
+def coarser_work(
+    section: CrossSection,
+    model: MagneticModel,
+    crew: Crew[Desk],
+    currents: tuple[float, float],
+    work: RippleWork,
+) -> RippleWork:
+    """The work with waveform, waves and cogging from another model; the rest as it is.
+
+    Args:
+        section: the machine's sector.
+        model: half as fine; every desk gets it.
+        crew: who solves.
+        currents: i_d and i_q in A.
+        work: what the model of the map says.
+    """
+    crew.everywhere(Desk.take_model, model)
+    reader = circle_reader(model)
+    positions = waveform_positions(section.pole_pairs, work.waveform.torque.size)
+    tasks = _tasks(complex(*currents), positions, reader)
+    per_turn = cogging_per_turn(section.slots, section.poles, section.rotor_period)
+    still = cogging_positions(per_turn)
+    if work.record is not None:
+        tasks += _tasks(0j, still, None)
+    done = crew.share(tasks, lambda count: None)
+    rated, bare = list(chain(*done[:CHAINS])), list(chain(*done[CHAINS:]))
+    circles = [read.circle for read in rated if read.circle is not None]
+    return replace(
+        work,
+        waveform=torque_waveform(
+            [r.figures for r in rated if r.figures is not None], section.pole_pairs
+        ),
+        waves=gap_waves(reader, circles, section),
+        record=cogging(per_turn, still.tolist(), [r.torque for r in bare]) if bare else None,
     )
 
 

@@ -7,6 +7,7 @@ slots, 25 keys: 5 s.
 """
 
 import math
+from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
 
@@ -17,10 +18,12 @@ from lamwright.geometry.design_file import Machine
 from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.remedies import value_of
 from lamwright.geometry.section import CrossSection
+from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.whole_file import write_text
 from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.figures_slopes import write_slopes
 from lamwright.postprocess.files import json_text, prepared_folder, staged
+from lamwright.postprocess.skew import step_point, turned_back
 from lamwright.postprocess.slopes import (
     SHAPE_FIGURES,
     KeySlope,
@@ -33,7 +36,13 @@ from lamwright.postprocess.slopes import (
 )
 from lamwright.postprocess.torque import waveform_positions
 from lamwright.postprocess.verdict import RPM
-from lamwright.solver.adjoint_field import OutlineSlope, linkage_slopes, mean_of, on_outline
+from lamwright.solver.adjoint_field import (
+    OutlineSlope,
+    linkage_slopes,
+    mean_of,
+    on_outline,
+    turned_forth,
+)
 from lamwright.solver.adjoint_stress import PeakSlope, peak_slope, spinning_pole
 from lamwright.solver.chains import OperatingPoint, solve_chain
 from lamwright.solver.design_motion import (
@@ -94,15 +103,12 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
     design = machine.design
     if machine.magnet is not None:
         raise LamwrightError("slopes: a machine with magnets has none yet; remove [magnet]")
-    if design.rotor.skew_steps > 1:
-        raise LamwrightError("slopes: a skewed rotor has none yet; remove skew_steps")
     sector = mesh_section(section)
     model = model_of(machine, section, sector)
-    fields = loaded_fields(model, design)
-    i_d, i_q = fields[0].i_d, fields[0].i_q
+    (i_d, i_q), fields = loaded_fields(model, design)
     rotor = part_motion(sector.rotor, design, draw_rotor)
     stator = part_motion(sector.stator, design, draw_stator)
-    linkages = _linkages(model, section, design, fields, (rotor, stator))
+    linkages = mean_slopes(model, section, design, fields, (rotor, stator))
     lamination, peak, peak_on_outline = _peak(machine, section)
     at = shape_figures(
         design.pole_pairs,
@@ -131,25 +137,55 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
     return SlopeTable(design.name, i_d, i_q, at, peak.bias, ranked(rows), tuple(left_out))
 
 
-def loaded_fields(model: MagneticModel, design: MachineDesign) -> tuple[FieldSolution, ...]:
-    """Fields at the currents of most torque, at all positions that slopes are the means of."""
+def loaded_fields(
+    model: MagneticModel, design: MachineDesign
+) -> tuple[tuple[float, float], tuple[tuple[FieldSolution, ...], ...]]:
+    """Currents of most torque, and the fields of each step of the rotor at all positions.
+
+    Slopes are means over the positions and, of a skewed rotor, over its steps.
+    """
     found = most_torque(model, design, lambda share: None)
     tight = replace(model.settings, newton=NewtonSettings(tolerance=TOLERANCE))
     positions = waveform_positions(design.pole_pairs, POSITIONS)
     points = [OperatingPoint(found.i_d, found.i_q, float(position)) for position in positions]
-    return solve_chain(replace(model, settings=tight), points, start=found.last[0][0])
+    fields = tuple(
+        solve_chain(
+            replace(model, settings=tight),
+            [step_point(point, offset, design.pole_pairs) for point in points],
+            start=last[0],
+        )
+        for offset, last in zip(skew_offsets(design), found.last, strict=True)
+    )
+    return (found.i_d, found.i_q), fields
 
 
-def _linkages(
+def mean_of_fields(
+    design: MachineDesign, fields: Sequence[Sequence[FieldSolution]]
+) -> tuple[float, float]:
+    """Mean psi_d and psi_q in V s over steps and positions of `loaded_fields`."""
+    pairs = [
+        turned_back(field.psi_d, field.psi_q, -design.pole_pairs * offset)
+        for offset, step in zip(skew_offsets(design), fields, strict=True)
+        for field in step
+    ]
+    d, q = zip(*pairs, strict=True)
+    return sum(d) / len(d), sum(q) / len(q)
+
+
+def mean_slopes(
     model: MagneticModel,
     section: CrossSection,
     design: MachineDesign,
-    fields: tuple[FieldSolution, ...],
+    fields: Sequence[Sequence[FieldSolution]],
     parts: tuple[PartMotion, PartMotion],
 ) -> tuple[OutlineSlope, OutlineSlope]:
-    """Slopes of the mean psi_d and psi_q over the positions of the fields."""
+    """Slopes of the mean psi_d and psi_q over steps and positions of the fields."""
     winding = winding_table(design)
-    both = [linkage_slopes(model, section, winding, field) for field in fields]
+    both = [
+        turned_forth(linkage_slopes(model, section, winding, field), design.pole_pairs * offset)
+        for offset, step in zip(skew_offsets(design), fields, strict=True)
+        for field in step
+    ]
     d, q = (on_outline(mean_of([pair[axis] for pair in both]), *parts) for axis in (0, 1))
     return d, q
 

@@ -16,10 +16,9 @@ from lamwright.geometry.remedies import value_of
 from lamwright.geometry.restated import restated
 from lamwright.geometry.rib_groups import RibGroup
 from lamwright.geometry.whole_file import write_text
-from lamwright.geometry.winding import winding_table
 from lamwright.postprocess.operating import mean_linkage_torque
 from lamwright.postprocess.thin_ribs import ThinFigures, ThinRib, ThinTorque, thin_csv, thin_rows
-from lamwright.solver.adjoint_field import OutlineSlope, linkage_slopes, mean_of, on_outline
+from lamwright.solver.adjoint_field import OutlineSlope
 from lamwright.solver.design_motion import draw_rotor, draw_stator, part_motion, size_motion
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
@@ -28,7 +27,7 @@ from lamwright.solver.tolerance import ToleranceName, tolerance_settings
 from .lamination import section_of
 from .point import model_of
 from .ribbed import Ribbed, RibChapter
-from .slopes import loaded_fields
+from .slopes import loaded_fields, mean_of_fields, mean_slopes
 from .thin_screen import THIN_TABLE
 from .thin_search import Thinned, thinnest
 
@@ -73,19 +72,12 @@ def thin_chapter(
     machine = ribbed.machine
     found = replace(machine, design=thinned.after.design)
     mesh, _, _ = tolerance_settings(tolerance)
-    prices: dict[str, float] = {}
-    torques: tuple[ThinTorque, ...] = ()
-    not_given: tuple[str, ...] = ()
-    if machine.design.rotor.skew_steps > 1:
-        not_given = ("torque and prices of the thinnest ribs: a skewed rotor has no slopes yet",)
-    else:
-        before, _ = priced(machine, (), mesh)
-        after, prices = priced(found, thinned.groups, mesh)
-        torques = (ThinTorque(torque_before=before, torque=after),)
-        lost = [group.label for group in thinned.groups if group.label not in prices]
-        not_given = tuple(
-            f"price of {label}: the outline is another one on both sides of it" for label in lost
-        )
+    before, _ = priced(machine, (), mesh)
+    after, prices = priced(found, thinned.groups, mesh)
+    lost = [group.label for group in thinned.groups if group.label not in prices]
+    not_given = tuple(
+        f"price of {label}: the outline is another one on both sides of it" for label in lost
+    )
     ribs = thin_table(thinned, prices)
     write_text(stage / CSV_FILE, thin_csv(ribs))
     write_text(stage / DESIGN_FILE, thinned_text(machine, thinned, stage.parent))
@@ -96,7 +88,7 @@ def thin_chapter(
         write_thin_figure(stage, machine.design.name, ribs, asked)
     figures = ThinFigures(steps=thinned.steps, yield_margin=min(rib.margin for rib in ribs))
     return RibChapter(
-        (figures, *torques),
+        (figures, ThinTorque(torque_before=before, torque=after)),
         cautions_of(machine.design),
         not_given,
         tables={THIN_TABLE: tuple(thin_rows(ribs))},
@@ -138,17 +130,15 @@ def priced(
     design, section = machine.design, section_of(machine)
     sector = mesh_section(section, mesh)
     model = model_of(machine, section, sector)
-    fields = loaded_fields(model, design)
-    pole_pairs, i_d, i_q = design.pole_pairs, fields[0].i_d, fields[0].i_q
-    psi_d, psi_q = ([getattr(field, name) for field in fields] for name in ("psi_d", "psi_q"))
-    torque = mean_linkage_torque(pole_pairs, i_d, i_q, psi_d, psi_q)
+    (i_d, i_q), fields = loaded_fields(model, design)
+    pole_pairs = design.pole_pairs
+    psi_d, psi_q = mean_of_fields(design, fields)
+    torque = mean_linkage_torque(pole_pairs, i_d, i_q, [psi_d], [psi_q])
     if not groups:
         return torque, {}
     rotor = part_motion(sector.rotor, design, draw_rotor)
     stator = part_motion(sector.stator, design, draw_stator)
-    winding = winding_table(design)
-    both = [linkage_slopes(model, section, winding, field) for field in fields]
-    axes = [on_outline(mean_of([pair[k] for pair in both]), rotor, stator) for k in (0, 1)]
+    axes = mean_slopes(model, section, design, fields, (rotor, stator))
 
     def slope_by(key: str, axis: OutlineSlope) -> float:
         moves = [part.velocity(design, key) for part in (rotor, stator)]

@@ -8,6 +8,7 @@ solved. The design's own figures come from the map's surface.
 import math
 from functools import partial
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -24,7 +25,8 @@ from lamwright.postprocess.induction_machine import (
     torque_at_loss,
 )
 from lamwright.postprocess.operating import copper_loss, saliency_ratio, search_positions
-from lamwright.postprocess.quantities import RPM
+from lamwright.postprocess.quantities import RPM, figures_of
+from lamwright.postprocess.shifted_surface import shift_errors
 from lamwright.postprocess.yardsticks import (
     DesignFigures,
     IdealFigures,
@@ -41,7 +43,11 @@ from .ideal_rotor import IdealRotor, ideal_rotor, round_model
 from .mapped import Mapped
 from .pool import Crew
 
+if TYPE_CHECKING:
+    from _typeshed import DataclassInstance
+
 CSV_FILE = "yardsticks.csv"
+YARDSTICK = "not estimated: a yardstick, whose assumptions err by far more than its mesh"
 ANGLES = 1801  # tried on the surface: 0.05 degrees, 1e-6 of the torque
 # Of rated current, as magnetising current round a solid rotor; the curve between is a line.
 MAGNETISING = (0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.75, 1.0)
@@ -73,7 +79,23 @@ def yardstick_chapter(mapped: Mapped, stage: Path) -> Chapter:
     ] * len(ideal)
     if induction:
         cautions.append(f"the induction machine is an estimate; assumed: {'; '.join(ASSUMPTIONS)}")
-    return Chapter((own, *ideal, *induction), tuple(cautions), tuple(not_given))
+    errors = shift_errors((own,), [(design_figures(design, s),) for s in mapped.shifted])
+    share = errors.get("yardstick_design_torque_nm", 0.0) / own.current
+    errors |= {
+        key: share
+        for key in ("yardstick_design_torque_per_ampere_nm_per_a",)
+        if induction and errors
+    }
+    others: tuple[DataclassInstance, ...] = (*ideal, *induction)
+    why = {item.key: YARDSTICK for group in others for item in figures_of(group)}
+    return Chapter(
+        (own, *ideal, *induction),
+        tuple(cautions),
+        tuple(not_given),
+        errors=errors,
+        without_error=why,
+        table_errors={CSV_FILE: {"value": "each as the figure of its key"}},
+    )
 
 
 def design_figures(design: MachineDesign, surface: CoenergySurface) -> DesignFigures:

@@ -6,10 +6,13 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from .control import Control
+from .control_curves import most_per_ampere
 from .control_files import DEGREE, LINE_RMS
 from .control_points import control_points
 from .control_tables import point_values
+from .pull_out import pull_out_curve
 from .quantities import CHECK, STATED, shown_as, shown_estimate
+from .terminals import Terminals
 from .torque_limit import torque_limit
 from .torque_lines import torque_lines
 
@@ -85,25 +88,25 @@ class ReadingFigures:
     )
 
 
-def curve_figures(control: Control) -> CurveFigures:
-    """Figures of the curve's last point."""
-    curve, side = control.per_ampere, control.drive.side
+def curve_figures(drive: Terminals) -> CurveFigures:
+    """Figures of most torque per ampere at the current limit."""
+    curve, side = most_per_ampere(drive, np.array([drive.current_limit])), drive.side
     gamma = math.atan2(float(curve.i_q[-1]), side * float(curve.i_d[-1])) * side
     return CurveFigures(
-        current=control.drive.current_limit,
+        current=drive.current_limit,
         torque=float(curve.torque[-1]),
         gamma=gamma if side > 0 else math.pi + gamma,
     )
 
 
-def pull_out_figures(control: Control, omega_e: float) -> PullOutFigures | None:
+def pull_out_figures(drive: Terminals, omega_e: float) -> PullOutFigures | None:
     """Figures at the most torque of a speed in electrical rad/s; None if there is none."""
-    lines, speed = torque_lines(control.drive), np.array([omega_e])
-    limit = torque_limit(control.drive, speed).torque
+    lines, speed = torque_lines(drive), np.array([omega_e])
+    limit = torque_limit(drive, speed).torque
     if not limit[0] > 0.0:
         return None
     points = control_points(lines, limit, speed, limit)
-    values = point_values(lines, control.pull_out, points)
+    values = point_values(lines, pull_out_curve(lines), points)
     return PullOutFigures(
         torque=float(limit[0]),
         load_angle=float(values.load_angle[0]),

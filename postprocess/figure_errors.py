@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 
 SUFFIX = "_error"
 NOT_ESTIMATED = "not estimated"
-NO_COARSER = "not estimated: the coarser mesh does not have it"
+NO_COARSER = "not estimated: the coarser mesh, or the map with its linkages off, has it not"
 
 
 def error_values(figures: Iterable[Figure], errors: Mapping[str, float]) -> dict[str, float]:

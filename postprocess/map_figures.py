@@ -11,6 +11,7 @@ from .operating import DEGREE, dq_currents
 from .quantities import CHECK, COUNT, STATED, shown_as
 
 ANGLES = 9001  # tried for most torque in half a turn: 0.02 degrees apart
+ANGLE_STEP = math.pi / (ANGLES - 1)  # rad, between them
 SAME = 1e-9  # of a torque, rounding
 
 

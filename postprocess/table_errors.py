@@ -8,6 +8,7 @@ from collections.abc import Mapping
 from lamwright.solver.estimate import FieldErrors, NoLoadErrors
 
 from .magnet_figures import MagnetFigures
+from .quantities import COUNT
 from .torque import TorqueSpectrum, TorqueWaveform
 
 Columns = dict[str, float | str]  # `<column>_error` or, of one without, `<column>`: why
@@ -45,6 +46,32 @@ def order_columns(orders: TorqueSpectrum, mean: float, errors: FieldErrors) -> C
         "order_el": PLACE,
         "amplitude_nm_error": errors.order,
         "percent_of_mean_error": percent,
+    }
+
+
+def map_columns() -> dict[str, Columns]:
+    """Of `map.csv` and `map_means.csv`, by file."""
+    at = {"i_d_a": PLACE, "i_q_a": PLACE}
+    rated = "not estimated off rated current, where errors stand in map.json"
+    means = (
+        "psi_d_mean_vs",
+        "psi_q_mean_vs",
+        "torque_mean_nm",
+        "coenergy_mean_j",
+        "torque_swing_nm",
+    )
+    return {
+        "map.csv": {
+            **at,
+            "angle_mech_deg": PLACE,
+            "pole_pairs": COUNT,
+            **{key: rated for key in ("psi_d_vs", "psi_q_vs", "torque_nm", "coenergy_j")},
+        },
+        "map_means.csv": {
+            **at,
+            **{key: rated for key in means},
+            **{key: rated for key in ("ripple_1", "l_d_h", "l_q_h", "l_dd_h", "l_dq_h", "l_qq_h")},
+        },
     }
 
 

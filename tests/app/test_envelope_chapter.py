@@ -18,6 +18,7 @@ from lamwright.app import envelope_chapter as module
 from lamwright.app.envelope_chapter import envelope_chapter
 from lamwright.postprocess.coenergy_surface import coenergy_surface
 from lamwright.postprocess.quantities import figures_of
+from lamwright.postprocess.shifted_surface import shifted
 
 NAME, COARSE = "demo_24s4p_arc", 2.0
 NO_CARD = "iron loss: the steel card has no table loss: invented"
@@ -38,12 +39,15 @@ def mapped(i_d, i_q, *, psi_m=0.0, l_q=0.02, **duty):
     one = shipped(NAME, COARSE)
     design = one.machine.design
     changed = design.model_copy(update={"duty": design.duty.model_copy(update=duty)})
+    surface = coenergy_surface(linear_map(2, 5.0 * l_q, l_q, i_d, i_q, psi_m=psi_m))
     return SimpleNamespace(
         machine=SimpleNamespace(design=changed),
         section=one.section,
         model=shipped_model(NAME, COARSE),
-        surface=coenergy_surface(linear_map(2, 5.0 * l_q, l_q, i_d, i_q, psi_m=psi_m)),
+        surface=surface,
         losses=NO_CARD,
+        shifted=(shifted(surface, 0.01, 0.0), shifted(surface, 0.0, 0.01)),
+        angle_error=1e-3,
     )
 
 

@@ -19,6 +19,7 @@ from lamwright.app.map_run import map_design
 from lamwright.app.map_store import STORE_FILE
 from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.coenergy_surface import coenergy_surface, incremental
+from lamwright.postprocess.figure_errors import NOT_ESTIMATED
 from lamwright.postprocess.flux_map import linkage_torque, mean_torque
 from lamwright.postprocess.map_files import read_flux_map
 
@@ -76,6 +77,11 @@ def test_folder_holds_whole_files_and_the_store(mapped):
     assert record["rated_torque_nm"] == figure(report, "rated_torque_nm")
     assert record["rated_torque_nm_error"] > 0.0
     assert record["winding_temperature_c"] == 100.0
+    # Every figure has an error or a reason: nothing is left to the last resort.
+    keys = {f.key for f in report.figures}
+    given = {key for key in keys if f"{key}_error" in record}
+    assert given | set(record["errors_not_given"]) == keys
+    assert NOT_ESTIMATED not in record["errors_not_given"].values()
 
 
 def test_progress_tells_the_share_done(mapped):
