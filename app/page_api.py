@@ -13,7 +13,7 @@ from lamwright.geometry.errors import LamwrightError
 
 from .page_drawing import Record
 from .page_folder import Folder
-from .page_outline import key_records, range_record, timed_outline
+from .page_outline import key_records, timed_outline
 from .study import Value
 from .version import version
 
@@ -90,12 +90,6 @@ def outline(page: Page, body: Mapping[str, object]) -> Record:
     if flag_of(body, "keep"):
         page.folder.keep(path, str(record["text"]), maybe_text_of(body, "sha256"))
     return record
-
-
-def ranges(page: Page, body: Mapping[str, object]) -> Record:
-    """How far a key may move."""
-    path, text, key = (text_of(body, name) for name in ("path", "text", "key"))
-    return range_record(page.folder, path, text, key)
 
 
 def keep_draft(page: Page, body: Mapping[str, object]) -> Record:

@@ -118,7 +118,7 @@ def range_record(folder: Folder, path: str, text: str, key: str) -> Record:
     if one.machine is None or one.section is None:
         raise LamwrightError(one.found[0].text if one.found else f"{path}: has faults")
     design = one.machine.design
-    if key not in _movable(design, one.section):
+    if not _is_movable(design, one.section, key):
         raise LamwrightError(f"{key[:80]}: no key that can be moved on the drawing")
     found = key_range(design, key)
     return {
@@ -142,10 +142,12 @@ def key_records(text: str) -> list[Record]:
     ]
 
 
-def _movable(design: MachineDesign, section: CrossSection) -> set[str]:
+def _is_movable(design: MachineDesign, section: CrossSection, key: str) -> bool:
+    if any(handle.key == key for handle in handles(design, section)):
+        return True
     from lamwright.solver.design_motion import shape_keys
 
-    return {handle.key for handle in handles(design, section)} | set(shape_keys(design))
+    return key in shape_keys(design)
 
 
 def _drawn(design: MachineDesign, section: CrossSection) -> Record:

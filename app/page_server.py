@@ -25,6 +25,7 @@ from .page_drawing import Record
 from .page_folder import ChangedOnDisk, Outside
 from .page_guard import Door, Guard, TooLarge
 from .page_jobs import Jobs
+from .page_ranges import Ranges, range_answer
 from .page_result import shown_files
 from .page_socket import Sockets, effort_of
 from .page_tasks import Tasks, ledger_record, pick, release, sweep
@@ -37,7 +38,7 @@ STATUS = ((ChangedOnDisk, 409), (Outside, 403), (LamwrightError, 422), (OSError,
 Handler = Callable[[Request], Awaitable[Response]]
 
 
-def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks) -> Guard:
+def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks, ranges: Ranges) -> Guard:
     """The whole server, to be run by uvicorn or a test's client."""
     sockets = Sockets(jobs, door)
     routes = [
@@ -48,12 +49,12 @@ def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks) -> Guard:
             Route(f"/api/{name}", _posting(page, call), methods=["POST"])
             for name, call in (
                 ("outline", page_api.outline),
-                ("ranges", page_api.ranges),
                 ("draft", page_api.keep_draft),
                 ("discard", page_api.discard_draft),
                 ("save", page_api.save),
             )
         ),
+        Route("/api/ranges", partial(range_answer, ranges), methods=["POST"]),
         Route("/api/jobs", _asking(jobs), methods=["POST"]),
         Route("/api/jobs/{job}", _job(jobs)),
         Route("/api/jobs/{job}/field", _job_file(jobs, FIELD_FILE)),
@@ -203,9 +204,10 @@ def listening(port: int) -> socket.socket:
 
 def serve(page: Page, door: Door, own: socket.socket) -> None:
     """Serve until the interrupt key; what is under way then ends."""
-    with Jobs(page.folder) as jobs, Tasks() as tasks:
+    with Jobs(page.folder) as jobs, Tasks() as tasks, Ranges(page.folder) as ranges:
         jobs.warm()
-        _run(page_app(page, door, jobs, tasks), own)
+        ranges.warm()
+        _run(page_app(page, door, jobs, tasks, ranges), own)
 
 
 def _run(app: Guard, own: socket.socket) -> None:

@@ -8,6 +8,7 @@ from starlette.testclient import TestClient
 from lamwright.app.page_api import Page, opened_page
 from lamwright.app.page_guard import Door
 from lamwright.app.page_jobs import Jobs
+from lamwright.app.page_ranges import Ranges
 from lamwright.app.page_server import page_app
 from lamwright.app.page_tasks import Tasks
 
@@ -26,7 +27,13 @@ def demo_folder(folder: Path) -> Page:
     return opened_page(folder / DEMO, None)
 
 
-def client_of(page: Page, jobs: Jobs | None = None, tasks: Tasks | None = None) -> TestClient:
-    """A client with token and origin; who asks for jobs or tasks gives and ends them."""
-    app = page_app(page, DOOR, jobs or Jobs(page.folder), tasks or Tasks())
+def client_of(
+    page: Page,
+    jobs: Jobs | None = None,
+    tasks: Tasks | None = None,
+    ranges: Ranges | None = None,
+) -> TestClient:
+    """A client with token and origin; who asks for jobs, tasks or ranges gives and ends them."""
+    own = Ranges(page.folder) if ranges is None else ranges
+    app = page_app(page, DOOR, jobs or Jobs(page.folder), tasks or Tasks(), own)
     return TestClient(app, base_url=ORIGIN, headers=HEADERS)

@@ -16,8 +16,9 @@ export async function get(path, query = {}) {
   return (await ask(`${path}?${new URLSearchParams(query)}`)).json();
 }
 
-export async function post(path, body) {
-  return (await ask(path, { method: "POST", headers: { "Content-Type": "application/json" }, body: JSON.stringify(body) })).json();
+// `signal` gives the question up.
+export async function post(path, body, signal = null) {
+  return (await ask(path, { method: "POST", headers: { "Content-Type": "application/json" }, body: JSON.stringify(body), signal })).json();
 }
 
 export async function getBytes(path) {
@@ -39,6 +40,7 @@ async function ask(path, options = {}) {
   try {
     answer = await fetch(path, { ...options, headers: { ...options.headers, "X-Page-Token": currentToken() } });
   } catch {
+    if (options.signal?.aborted) throw new Gone("given up");
     onGone();
     throw new Gone("the server does not answer");
   }

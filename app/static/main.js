@@ -51,6 +51,7 @@ const editor = new Editor((text) => design.edit(text));
 const findings = new Findings(goTo);
 const ranges = new Map(); // limits of keys, for the text that they were asked of
 let rangesText = null;
+let rangesEnd = new AbortController(); // gives up what is asked for an earlier text
 let chosen = null;
 
 const handles = new Handles(picture, viewport, {
@@ -85,8 +86,7 @@ async function commit(handle, value) {
   await design.commit({ [handle.key]: value }, `barrier ${handle.barrier}, ${handle.kind} ${plain(value)}`);
   if (!own) return;
   // How far a key may move depends on the others alone: its own limits outlive its change.
-  if (rangesText !== design.text) ranges.clear();
-  rangesText = design.text;
+  rangesOf(design.text);
   ranges.set(handle.key, own);
   handles.limitsCame();
   if (chosen?.key === handle.key && !handles.isMoving) readout.show(chosen, chosen.value, own);
@@ -94,21 +94,26 @@ async function commit(handle, value) {
 
 async function askLimits(key) {
   const text = design.text;
-  if (rangesText !== text) {
-    ranges.clear();
-    rangesText = text;
-  }
+  rangesOf(text);
   if (ranges.has(key) || !design.outline?.ok) return;
   ranges.set(key, undefined);
   try {
-    const found = await post("/api/ranges", { path: design.path, text, key });
+    const found = await post("/api/ranges", { path: design.path, text, key }, rangesEnd.signal);
     if (rangesText !== text) return;
     ranges.set(key, found);
     handles.limitsCame();
     if (chosen?.key === key && !handles.isMoving) readout.show(chosen, chosen.value, found);
   } catch {
-    ranges.delete(key); // asked again with the next change; no limits are shown till then
+    if (rangesText === text) ranges.delete(key); // asked again with the next change; no limits are shown till then
   }
+}
+
+function rangesOf(text) {
+  if (rangesText === text) return;
+  rangesEnd.abort();
+  rangesEnd = new AbortController();
+  ranges.clear();
+  rangesText = text;
 }
 
 function goTo({ key, line: row }) {

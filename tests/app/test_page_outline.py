@@ -2,6 +2,7 @@
 
 import math
 import re
+from concurrent.futures import Future
 from pathlib import Path
 
 import pytest
@@ -11,6 +12,7 @@ from lamwright.app.page_drawing import drawing_record
 from lamwright.app.page_folder import Folder
 from lamwright.app.page_handles import handle_records, handles
 from lamwright.app.page_outline import outlined
+from lamwright.app.page_ranges import Ranges
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_keys import replaced
 from lamwright.geometry.errors import GeometryError
@@ -160,19 +162,41 @@ def test_changes_keep_comments_and_reach_the_drawing(tmp_path: Path):
 
 def test_a_range_ends_where_the_check_says(tmp_path: Path):
     """Inside the outline holds, a hundredth beyond it does not."""
-    client = client_of(demo_folder(tmp_path))
-    text = client.get("/api/design", params={"path": DEMO}).json()["text"]
-    key = "rotor.barrier[1].end_angle_deg"
-    body = {"path": DEMO, "text": text, "key": key}
-    found = client.post("/api/ranges", json=body).json()
+    page = demo_folder(tmp_path)
+    with Ranges(page.folder) as ranges:
+        client = client_of(page, ranges=ranges)
+        text = client.get("/api/design", params={"path": DEMO}).json()["text"]
+        key = "rotor.barrier[1].end_angle_deg"
+        body = {"path": DEMO, "text": text, "key": key}
+        found = client.post("/api/ranges", json=body).json()
+        wrong = client.post("/api/ranges", json={"path": DEMO, "text": text, "key": "duty.x"})
+        assert wrong.status_code == 422
     for end, beyond in (("least", -0.01), ("most", 0.01)):
         value = found[end]["value"]
         for changed, fits in ((value, True), (value + beyond, False)):
             body = {"path": DEMO, "text": text, "changes": {key: changed}}
             assert client.post("/api/outline", json=body).json()["ok"] is fits
         assert found[end]["why"]
-    wrong = client.post("/api/ranges", json={"path": DEMO, "text": text, "key": "duty.x"})
-    assert wrong.status_code == 422
+
+
+def test_the_newest_limits_come_first_and_stale_ones_not_at_all(monkeypatch: pytest.MonkeyPatch):
+    """One search at a time; what was given up while it waited is never begun."""
+    begun: list[tuple[str, Future[dict[str, object]]]] = []
+
+    class StandIn:
+        def submit(self, method, folder, path, text, key):
+            begun.append((key, Future()))
+            return begun[-1][1]
+
+    monkeypatch.setattr(Ranges, "_ready_worker", lambda self: StandIn())
+    ranges = Ranges(FOLDER)
+    first, stale, older, newest = (ranges.ask(DEMO, "", key) for key in "abcd")
+    ranges.forget(stale)
+    for k in range(3):
+        begun[k][1].set_result({"key": begun[k][0]})
+    assert [key for key, _ in begun] == ["a", "d", "c"]
+    assert [one.result()["key"] for one in (first, newest, older)] == ["a", "d", "c"]
+    assert stale.cancelled()
 
 
 def test_drafts_and_saving(tmp_path: Path):
