@@ -60,7 +60,8 @@ def assess(
 
     Ends with 0 when every limit of the design holds, with 1 when one is missed. With --outline, as
     in `lamwright assess rotor.toml --outline back.dxf --out back`, the rotor in that drawing is
-    measured and analysed instead, and 1 also tells of a rib out of its tolerance.
+    measured and analysed instead, and 1 also tells of a rib out of its tolerance, or of a shape
+    that the design lacks, which is NOT ANALYSED AS DRAWN.
     """
     if outline is not None:
         if with_ribs:

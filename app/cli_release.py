@@ -76,6 +76,10 @@ _OUT = click.option(
 @click.option("--outer-fit", default="", help="ISO 286 class of the outer diameter.")
 @click.option("--key-fit", default="JS9", show_default=True, help="ISO 286 class of keyways.")
 @click.option(
+    "--stator-bore-fit", default="H8", show_default=True, help="ISO 286 class of the stator's bore."
+)
+@click.option("--stator-outer-fit", default="", help="ISO 286 class of its outer diameter.")
+@click.option(
     "--general-tolerance", default="m", show_default=True, help="ISO 2768-1 class, or a text."
 )
 @click.option("--rib-tolerance", "rib_tolerance_mm", type=float, help="Of rib widths, +- mm.")

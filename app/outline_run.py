@@ -64,9 +64,16 @@ class OutlineVerdict:
         return ribs_out(self.found, self.tolerance)
 
     @property
+    def faults(self) -> tuple[str, ...]:
+        """What fails whatever the limits say: a shape not analysed, ribs out of tolerance."""
+        from .report_assess import supplied_faults
+
+        return supplied_faults(len(self.found.strays), self.ribs_out)
+
+    @property
     def passes(self) -> bool:
-        """Whether every limit of the design holds and every rib is within its tolerance."""
-        return self.verdict.passes and not self.ribs_out
+        """Whether all was analysed as drawn, every limit holds and every rib its tolerance."""
+        return self.verdict.passes and not self.faults
 
 
 def assess_outline(
@@ -118,7 +125,8 @@ def assess_outline(
 
             write_deviation(stage, machine.design.name, found)
         source = found.source
-        supplied = Supplied(wishes.file.name, source.sha256, ribs_out(found, limit), cautions)
+        out_of = ribs_out(found, limit)
+        supplied = Supplied(wishes.file.name, source.sha256, out_of, cautions, len(found.strays))
         work = Assessment(
             machine,
             found.section,
@@ -143,6 +151,9 @@ def assess_outline(
         write_text(stage / PROMISE_FILE, promise_csv(differences))
         # The verdict says whose outline it is of.
         verdict = replace(verdict, cautions=(*cautions, *verdict.cautions))
+        # First of all what no figure below tells.
+        record = {"analysed_as_drawn": not found.strays, **record}
+        record["passes"] = verdict.passes and not supplied.faults
         record["analysed_outline"] = wishes.file.name
         record["analysed_outline_sha256"] = found.source.sha256
         record["cautions"] = list(verdict.cautions)

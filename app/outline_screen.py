@@ -21,6 +21,8 @@ LIMITED = ("torque_nm", "torque_ripple_percent", "saliency_ratio", "yield_margin
 def print_outline_verdict(result: OutlineVerdict, folder: str) -> None:
     """Alignment, worst places, ribs, promise beside outline, then the verdict itself."""
     console, found = Console(highlight=False), result.found
+    if found.strays:  # before all figures, which are not of what was drawn
+        console.print(Text(result.cautions[0], "bold red"))
     console.print(Text(f"outline {found.source.file}: {angle_text(found.alignment)}"))
     console.print(
         Text(
@@ -42,10 +44,10 @@ def print_outline_verdict(result: OutlineVerdict, folder: str) -> None:
     if more > 0:
         console.print(f"[dim]{more} more ribs in outline_ribs.csv[/dim]")
     console.print(promise_table(result.differences, "promised", "outline"))
-    print_verdict(result.verdict, folder)
     if result.ribs_out:
         limit = f"{UM * result.tolerance:.0f} um"
         console.print(Text(f"{result.ribs_out} ribs are off by more than {limit}", "bold red"))
+    print_verdict(result.verdict, folder, result.faults)
 
 
 def _ribs(result: OutlineVerdict) -> Table:

@@ -18,7 +18,7 @@ from .lamination import section_of
 from .release_manifest import NOT_PASSED, Promise
 from .release_parts import Part
 
-DRAWING_FILES = ("rotor.pdf", "rotor.svg")
+DRAWING_FILES = ("rotor.pdf", "rotor.svg", "stator.pdf", "stator.svg")
 # The drawing measures by the layers of `geometry.contours`.
 ON_SHEET = {"MAGNET_POCKETS": "BARRIERS", "KEYWAY": "BORE"}
 MM = 1e3  # mm per m
@@ -60,21 +60,18 @@ def _not_passed(promise: Promise) -> str:
 def write_drawing(
     machine: Machine, parts: Sequence[Part], promise: Promise, wishes: SheetOptions, folder: Path
 ) -> None:
-    """Write the rotor's drawing as PDF and SVG; of a design that fails it says so."""
+    """Write each part's drawing as PDF and SVG; of a design that fails they say so."""
     options = wishes
     if not promise.passes:
         warning = f"{_not_passed(promise)}. NOT FOR RUNNING ROTORS."
         options = replace(wishes, status=NOT_PASSED, warning=warning)
-    (rotor,) = (part for part in parts if part.name == "rotor")
-    job = SheetJob(
-        design=machine.design,
-        section=section_of(machine),
-        contours=tuple(replace(c, layer=ON_SHEET.get(c.layer, c.layer)) for c in rotor.sheet),
-        steel=machine.rotor_steel,
-        design_hash=design_hash(machine.design, machine.cards),
-        options=options,
-    )
-    drawing_sheet(job, *(folder / name for name in DRAWING_FILES))
+    section, digest = section_of(machine), design_hash(machine.design, machine.cards)
+    for part in parts:
+        contours = part.sheet
+        if part.name == "rotor":
+            contours = tuple(replace(c, layer=ON_SHEET.get(c.layer, c.layer)) for c in contours)
+        job = SheetJob(machine.design, section, contours, part.steel, digest, options, part.name)
+        drawing_sheet(job, folder / f"{part.name}.pdf", folder / f"{part.name}.svg")
 
 
 def drawing_notes(

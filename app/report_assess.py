@@ -105,6 +105,20 @@ class Supplied:
     sha256: str
     ribs_out: int  # of their tolerance
     cautions: tuple[str, ...]
+    strays: int = 0  # contours of a shape that was not analysed
+
+    @property
+    def faults(self) -> tuple[str, ...]:
+        """What fails whatever the limits say."""
+        return supplied_faults(self.strays, self.ribs_out)
+
+
+def supplied_faults(strays: int, ribs_out: int) -> tuple[str, ...]:
+    """What of a supplier's outline fails whatever the limits say."""
+    return (
+        *((f"NOT ANALYSED AS DRAWN ({strays} of its contours)",) if strays else ()),
+        *((f"{ribs_out} ribs out of tolerance",) if ribs_out else ()),
+    )
 
 
 def assess_report(
@@ -128,8 +142,8 @@ def assess_report(
         supplied: the outline that was analysed, where it is not the design's own.
     """
     missed = [o.figure.label for o in verdict.outcomes if not o.holds]
-    if supplied is not None and supplied.ribs_out:
-        missed.append(f"{supplied.ribs_out} ribs out of tolerance")
+    if supplied is not None:
+        missed = [*supplied.faults, *missed]
     passes = not missed and (ribs is None or ribs.passes)
     if missed or passes:
         outcome = f"FAILS: {', '.join(missed)}" if missed else "PASSES: every limit holds"

@@ -1,6 +1,7 @@
 """What `assess` shows on the terminal at its end: the verdict as a table."""
 
 import textwrap
+from collections.abc import Sequence
 
 from rich.console import Console
 from rich.markup import escape
@@ -13,11 +14,14 @@ from lamwright.postprocess.verdict import Verdict
 STYLES = {"holds": "green", "missed": "bold red", "over supply": "yellow", "": ""}
 
 
-def print_verdict(verdict: Verdict, folder: str) -> None:
-    """The verdict as a table, then cautions, times and where the files are."""
+def print_verdict(verdict: Verdict, folder: str, also: Sequence[str] = ()) -> None:
+    """The verdict as a table, then cautions, times and where the files are.
+
+    What fails besides the limits comes as `also`.
+    """
     console = Console(highlight=False)
     console.print(_verdict_table(verdict))
-    console.print(_verdict_line(verdict))
+    console.print(_verdict_line(verdict, also))
     for caution in verdict.cautions:
         _print_wrapped(console, f"- {caution}")
     _print_wrapped(console, _times(verdict))
@@ -42,8 +46,9 @@ def _verdict_table(verdict: Verdict) -> Table:
     return table
 
 
-def _verdict_line(verdict: Verdict) -> Text:
-    return Text(verdict_line(verdict), "bold green" if verdict.passes else "bold red")
+def _verdict_line(verdict: Verdict, also: Sequence[str]) -> Text:
+    passes = verdict.passes and not also
+    return Text(verdict_line(verdict, also), "bold green" if passes else "bold red")
 
 
 def _times(verdict: Verdict) -> str:

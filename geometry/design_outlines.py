@@ -167,7 +167,8 @@ def _rotor(table: object, stator: object, folder: Path) -> _Part:
         from .drawn_rotor import recognised_rotor
 
         assert isinstance(poles, int)
-        drawing = recognised_rotor(pieces.edges, UM * keys.heal_um, poles, told)
+        axis = pieces.datum if told is None else told
+        drawing = recognised_rotor(pieces.edges, UM * keys.heal_um, poles, axis)
         return RotorOutline(drawing, source_of(str(keys.outline_dxf), pieces))
 
     try:

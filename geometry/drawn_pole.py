@@ -5,7 +5,8 @@ own mirror image within the tolerance it is made so to the last bit, and points 
 neighbouring poles are made to lie on each other.
 Barriers are told by u + iv = ((x + iy) / rim)^p: a barrier is one band of u (from the q axis to
 the rim), its cavities follow each other in v. Holes, no barriers, are full circles, what lies
-across a d axis, and what is farther from the rim than it is long: a barrier runs from rib to rib.
+across a d axis, a notch of the rim on the q axis, and what is farther from the rim than it is long:
+a barrier runs from rib to rib.
 """
 
 import cmath
@@ -28,6 +29,7 @@ WELD_TOL = 1e-7  # m, within one pole: far below a drawing's digits, far above r
 # them share some of v, up to 0.08 in the gallery.
 OVERLAP = 0.5
 LETTERS = "abcdefghij"
+MOUTHS = 3  # pieces of the rim's circle at one mouth, with those cut at the q axis
 
 
 @dataclass(frozen=True, slots=True)
@@ -254,12 +256,23 @@ def _barriers(air: Sequence[PolePart], frame: _Pole) -> tuple[list[PolePart], li
 
 def _is_hole(part: PolePart, frame: _Pole) -> bool:
     edges = part.outer.edges
-    if any(_side(p, frame) for e in edges for p in (e.start,)):
+    if any(_side(p, frame) for e in edges for p in (e.start,)) or _is_notch(part, frame):
         return True
     centre = edges[0].centre if not edges[0].is_line else None
     return centre is not None and all(
         not e.is_line and abs(e.centre - centre) < 10.0 * frame.tolerance for e in edges
     )
+
+
+def _is_notch(part: PolePart, frame: _Pole) -> bool:
+    """Whether it is open to the gap across the q axis: a barrier ends at the rim on either side."""
+    mouths = [
+        e
+        for e in part.outer.edges
+        if all(abs(abs(p) - frame.rim) < WELD_TOL for p in (e.start, e.point(0.5), e.end))
+    ]
+    ends = [p.imag for e in mouths for p in (e.start, e.end)]
+    return bool(ends) and min(ends) < -WELD_TOL and max(ends) > WELD_TOL and len(mouths) < MOUTHS
 
 
 def _is_off_rim(group: Sequence[PolePart], frame: _Pole) -> bool:

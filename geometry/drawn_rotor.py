@@ -110,6 +110,7 @@ def _rim_radius(lamination: Lamination, tolerance: float) -> float:
     near = [e for e in about if abs(abs(e.start) - rim) < 2.0 * tolerance]
     rim = sum(e.length * abs(e.start) for e in near) / sum(e.length for e in near)
     rim = round(rim, 9) if abs(rim - round(rim, 9)) < 1e-10 else rim
+    _raise_if_not_round(lamination, rim, tolerance)
     for piece in lamination.pieces:
         for share in (0.0, 0.5, 1.0):
             if abs(piece.point(share)) > rim + 2.0 * tolerance:
@@ -117,6 +118,20 @@ def _rim_radius(lamination: Lamination, tolerance: float) -> float:
                 text = f"something is drawn outside the rim at {place_text(place)}"
                 raise OutlineError(text + "; name the rotor's layers by outline_layers", place)
     return rim
+
+
+def _raise_if_not_round(lamination: Lamination, circle: float, tolerance: float) -> None:
+    """Whether the largest circle about the axis is the bore, so that the rim is none."""
+    points = [e.point(share) for e in lamination.pieces for share in (0.0, 0.5, 1.0)]
+    far = max(points, key=abs)
+    if min(map(abs, points)) > circle - 2.0 * tolerance and abs(far) > circle + 2.0 * tolerance:
+        raise OutlineError(
+            f"the rim is no circle about the shaft axis at {place_text(lamination.axis)}: no arc of"
+            f" it is about that, {abs(far) / MM:.4f} mm from it at "
+            f"{place_text(lamination.place(far))}; accepted a round rim, or the rotor's own keys"
+            " with assess --outline",
+            lamination.place(far),
+        )
 
 
 def _kinds(

@@ -6,6 +6,7 @@ lines (by their line type), layers that are off or frozen, pieces of no length.
 ezdxf takes 0.35 s to import and is imported inside the functions.
 """
 
+import cmath
 import hashlib
 import re
 from collections import Counter
@@ -32,6 +33,8 @@ MOST_RECORDS = 60_000  # entities, vertices of old polylines, table entries
 RECORD = re.compile(rb"\n[ \t]*0[ \t]*\r?\n[ \t]*[A-Z]")
 BINARY = b"AutoCAD Binary DXF"
 MOST_EDGES = 120_000  # bounds time and memory; 14 contours traced by 2 000 points have 28 000
+MOST_DATUM = 12  # centre lines on a layer DATUM among which the axis is looked for
+SAME_POINT = 1e-6  # m, of those lines
 LEAST_LENGTH = 1e-9  # m, a piece shorter than this is none
 # $INSUNITS: mm per unit. Codes by the DXF reference (0: none stated).
 UNITS_MM = {1: 25.4, 2: 304.8, 4: 1.0, 5: 10.0, 6: 1000.0, 9: 0.0254, 13: 0.001, 14: 100.0}
@@ -61,6 +64,7 @@ class DrawnPieces:
     kinds: tuple[tuple[str, int], ...]  # entities read, by kind
     left_out: tuple[tuple[str, int], ...]  # entities left out, by reason
     sha256: str
+    datum: float | None = None  # rad, of the axis that a released lamination's layer DATUM shows
 
 
 def read_pieces(
@@ -84,7 +88,7 @@ def read_pieces(
     _raise_if_endless(data)
     document = _document(data)
     unit, source = _unit(document, unit_mm, assumed_mm)
-    taken, left_out = _chosen(document, layers)
+    taken, left_out, centres = _chosen(document, layers)
     edges: list[Edge] = []
     edge_layers: list[str] = []
     kinds: Counter[str] = Counter()
@@ -114,7 +118,20 @@ def read_pieces(
         tuple(sorted(kinds.items())),
         tuple(sorted(left_out.items())),
         hashlib.sha256(data).hexdigest(),
+        _datum([edge for one in centres for edge in _edges(one, 1e-3 * unit) or ()]),
     )
+
+
+def _datum(lines: Sequence[Edge]) -> float | None:
+    """Direction in rad of the one line that starts where all others have their middle."""
+    if not 3 <= len(lines) <= MOST_DATUM:
+        return None
+    found = [
+        line
+        for line in lines
+        if all(abs(other.point(0.5) - line.start) < SAME_POINT for other in lines if other != line)
+    ]
+    return cmath.phase(found[0].end - found[0].start) if len(found) == 1 else None
 
 
 def drawing_bytes(path: FilePath) -> bytes:
@@ -206,8 +223,12 @@ def _unit(document: "Drawing", stated: float | None, assumed: float | None) -> t
     )
 
 
-def _chosen(document: "Drawing", layers: Sequence[str]) -> "tuple[list[DXFGraphic], Counter[str]]":
+def _chosen(
+    document: "Drawing", layers: Sequence[str]
+) -> "tuple[list[DXFGraphic], Counter[str], list[DXFGraphic]]":
+    """Entities of the outline, the others counted, and centre lines on the layer DATUM."""
     left_out: Counter[str] = Counter()
+    centres: list[DXFGraphic] = []
     known = {layer.dxf.name.casefold(): layer for layer in document.layers}
     wanted = {name.casefold() for name in layers}
     taken = []
@@ -229,15 +250,18 @@ def _chosen(document: "Drawing", layers: Sequence[str]) -> "tuple[list[DXFGraphi
         line_type = _attribute(entity, "linetype", "BYLAYER").upper()
         if line_type == "BYLAYER" and layer is not None:
             line_type = str(layer.dxf.get("linetype", "")).upper()
+        is_centre = any(part in line_type for part in CENTRE_TYPES)
+        if is_centre and name == "datum" and entity.dxftype() == "LINE":
+            centres.append(entity)
         if wanted and name not in wanted:
             left_out["other layer"] += 1
         elif name == "defpoints" or (layer and (layer.is_off() or layer.is_frozen())):
             left_out["layer not shown"] += 1
-        elif any(part in line_type for part in CENTRE_TYPES):
+        elif is_centre:
             left_out["centre line"] += 1
         else:
             taken.append(entity)
-    return taken, left_out
+    return taken, left_out, centres
 
 
 def _layer_of(entity: "DXFGraphic") -> str:

@@ -61,7 +61,7 @@ def write_release(
         path: file to write; its folder must exist.
         form: version of the format.
         texts: lines written below the lamination, on layer TEXT.
-        axis: angle in rad of a third centre line, as the q axis of the first pole.
+        axis: angle in rad of a third centre line, from the shaft axis, as the first pole's q axis.
 
     Raises:
         DesignError: for a contour on another layer, or a drawing in which the library's audit
@@ -186,7 +186,7 @@ def _add_datum(model: "Modelspace", reach: float, axis: float | None) -> None:
     attributes = {"layer": "DATUM"}
     model.add_line((-side, 0.0), (side, 0.0), dxfattribs=attributes)
     model.add_line((0.0, -side), (0.0, side), dxfattribs=attributes)
-    if axis is not None and abs(math.sin(2.0 * axis)) > 1e-9:
+    if axis is not None:  # over another one too: by its start at the axis it is told when read
         end = (side * math.cos(axis), side * math.sin(axis))
         model.add_line((0.0, 0.0), end, dxfattribs=attributes)
 

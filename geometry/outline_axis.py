@@ -22,6 +22,7 @@ WHOLE_GAP = 1e-3  # m, a gap in the outermost circle up to this is no sector's
 MOST_COPIES = 144
 MOST_PIECES = 20_000  # copies counted: bounds the time to seconds
 FULL_TURN = 2.0 * math.pi
+RIM_SHARE = 0.25  # of what is drawn all round, that arcs of a rim cover
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,9 +94,12 @@ def shaft_axis(edges: Sequence[Edge], tolerance: float) -> Point:
     if not trials:
         raise OutlineError("no arc in the drawing that a shaft axis could be told by")
     trials.sort(key=lambda trial: -trial[0])
-    # Barriers may share a centre of their own, but nothing lies beyond the rim.
+    # Barriers may share a centre of their own, but nothing lies beyond the rim. Of a rim that is no
+    # circle an arc may hold all too, with a short part of it: then the bore tells the axis.
     farthest = [sharing for _, sharing in trials if _holds_all(sharing, edges, tolerance)]
-    best = farthest[0] if farthest else trials[0][1]
+    rims = [sharing for sharing in farthest if _goes_round(sharing, edges, tolerance)]
+    circles = [sharing for _, sharing in trials if _is_circle(sharing, tolerance)]
+    best = (rims or circles or farthest or [trials[0][1]])[0]
     centre = _common_centre(best)
     # A drawing made about its own origin stays as it is, to the last bit.
     return 0j if abs(centre) < tolerance else centre
@@ -107,6 +111,23 @@ def _holds_all(arcs: Sequence[Edge], edges: Sequence[Edge], tolerance: float) ->
     reach = max(abs(e.start - centre) for e in arcs)
     # A short arc tells its centre badly: ten times the tolerance will do to tell it apart.
     return all(abs(e.point(0.5) - centre) < reach + 10.0 * tolerance for e in edges)
+
+
+def _is_circle(arcs: Sequence[Edge], tolerance: float) -> bool:
+    """Whether arcs of one radius go more than half round."""
+    return any(
+        sum(abs(e.sweep) for e in arcs if abs(e.radius - one.radius) < tolerance) > math.pi
+        for one in arcs
+    )
+
+
+def _goes_round(arcs: Sequence[Edge], edges: Sequence[Edge], tolerance: float) -> bool:
+    """Whether arcs about one centre are a rim's: of what is seen from it they cover enough."""
+    centre = _common_centre(arcs)
+    low, high = _covered(
+        [Edge(e.start - centre, e.end - centre, e.bulge) for e in edges], tolerance
+    )
+    return sum(abs(e.sweep) for e in arcs) > RIM_SHARE * (high - low)
 
 
 def is_about(edge: Edge, centre: Point, tolerance: float) -> bool:

@@ -1,5 +1,6 @@
 """A verdict at a glance: its limits and main figures as rows of text, for terminal and notebook."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -76,10 +77,12 @@ def glance_rows(verdict: Verdict) -> tuple[GlanceRow, ...]:
     return tuple(rows)
 
 
-def verdict_line(verdict: Verdict) -> str:
-    """Whether it passes, and which limits are missed."""
+def verdict_line(verdict: Verdict, also: Sequence[str] = ()) -> str:
+    """Whether it passes, and which limits are missed; `also` is what fails besides, named first."""
     missed = [outcome.figure.label for outcome in verdict.outcomes if not outcome.holds]
-    return f"fails: {', '.join(missed)}" if missed else "passes: every limit holds"
+    return (
+        f"fails: {', '.join((*also, *missed))}" if also or missed else "passes: every limit holds"
+    )
 
 
 def _bar(verdict: Verdict, key: str) -> str:

@@ -91,8 +91,13 @@ def drawing_sheet(job: SheetJob, path_pdf: Path, path_svg: Path) -> Sheet:
         LamwrightError: the outline does not fit on the largest paper allowed, or an option is not
             known.
     """
-    sheet = composed(job)
-    title = f"{job.options.part_number} {job.options.title or 'Rotor lamination'}".strip()
+    if job.part == "stator":
+        from .sheet_stator import composed_stator  # which builds on this module
+
+        sheet = composed_stator(job)
+    else:
+        sheet = composed(job)
+    title = f"{job.options.part_number} {job.title}".strip()
     write_pdf(sheet.picture, sheet.paper.size, path_pdf, f"{title}: {job.design.name}")
     write_svg(sheet.picture, sheet.paper.size, path_svg)
     return sheet
@@ -132,14 +137,14 @@ def composed(job: SheetJob) -> Sheet:
                 except NoRoomError:
                     continue
                 blocks = Blocks(views, details, tables)
-                picture = _on_paper(job, blocks, paper, scales[1])
+                picture = on_paper(job, blocks, paper, scales[1])
                 if picture is not None:
                     return Sheet(paper, picture, scales[1], scales[0])
     names = " or ".join(paper.name for paper in sizes)
     raise LamwrightError(f"drawing: not all views fit on {names}; ask for a larger paper")
 
 
-def _on_paper(job: SheetJob, blocks: Blocks, paper: Paper, scale: float) -> Picture | None:
+def on_paper(job: SheetJob, blocks: Blocks, paper: Paper, scale: float) -> Picture | None:
     """All blocks on a paper with its frame and title block, None where one finds no room."""
     corner = complex(paper.high.real - BLOCK_WIDTH, paper.low.imag)
     title = Area(corner, corner + complex(BLOCK_WIDTH, BLOCK_HEIGHT))

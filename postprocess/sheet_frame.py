@@ -181,7 +181,7 @@ def _fields(job: SheetJob, scales: Sequence[str], paper: Paper) -> list[Field]:
         Field(135, 0, 15, 10, "Format", paper.name),
         Field(150, 0, 15, 10, "Lang.", "en"),
         Field(165, 0, 15, 10, "Sheet", "1/1"),
-        Field(58, 10, 77, 23, "", asked.title or "Rotor lamination", TITLE),
+        Field(58, 10, 77, 23, "", job.title, TITLE),
         Field(58, 10, 77, 13, "", job.design.name),
     ]
 

@@ -1,6 +1,7 @@
 """What a drawing for the lamination supplier is made of: design, outline as cut, and wishes."""
 
 from dataclasses import dataclass, field
+from typing import Literal
 
 from lamwright.geometry.contours import Contour
 from lamwright.geometry.design import MachineDesign, SteelCard
@@ -26,6 +27,8 @@ class SheetOptions:
         bore_fit: ISO 286 tolerance class of the bore, as `H7`.
         outer_fit: ISO 286 class of the outer diameter, as `h8`; empty: general tolerance.
         key_fit: ISO 286 class of a keyway's width, as `JS9`.
+        stator_bore_fit: ISO 286 class of the stator's bore, which makes the air gap.
+        stator_outer_fit: ISO 286 class of the stator's outer diameter; empty: general tolerance.
         general_tolerance: class `f`, `m`, `c` or `v` of ISO 2768-1, or any text as given, which is
             then printed as it stands.
         rib_tolerance_mm: limit to both sides of rib widths and barrier thicknesses; default twice
@@ -49,6 +52,8 @@ class SheetOptions:
     bore_fit: str = "H7"
     outer_fit: str = ""
     key_fit: str = "JS9"
+    stator_bore_fit: str = "H8"
+    stator_outer_fit: str = ""
     general_tolerance: str = "m"
     rib_tolerance_mm: float | None = None
     burr_side: str = ""
@@ -66,10 +71,12 @@ class SheetJob:
     Attributes:
         design: for the stack, sheet thickness, tolerances and note.
         section: names and places of ribs and barriers; any sector.
-        contours: of the whole rotor lamination as cut, in m, layers as in `geometry.contours`.
-        steel: the rotor's steel card, for the material's name and the mass.
+        contours: of the whole lamination as cut, in m, layers as in `geometry.contours`, of a
+            stator as in `geometry.punch_layers`.
+        steel: the part's steel card, for the material's name and the mass.
         design_hash: SHA-256 in hex.
         options: what the design does not say.
+        part: which lamination is drawn.
     """
 
     design: MachineDesign
@@ -78,9 +85,18 @@ class SheetJob:
     steel: SteelCard
     design_hash: str
     options: SheetOptions = field(default_factory=SheetOptions)
+    part: Literal["rotor", "stator"] = "rotor"
+
+    @property
+    def title(self) -> str:
+        """Of the drawing."""
+        wished = self.options.title
+        if self.part == "rotor":
+            return wished or "Rotor lamination"
+        return f"{wished}, stator" if wished else "Stator lamination"
 
     @property
     def width_limit(self) -> float:
-        """Limit to both sides of rib widths and barrier thicknesses, in mm."""
-        stated = self.options.rib_tolerance_mm
+        """Limit to both sides of widths between two cuts (ribs, barriers, teeth, slots), in mm."""
+        stated = self.options.rib_tolerance_mm if self.part == "rotor" else None
         return EDGES_OF_A_WIDTH * self.design.tolerance.cut_mm if stated is None else stated

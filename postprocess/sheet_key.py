@@ -94,12 +94,13 @@ def _width(
     ends = [groove.edges[0].start, groove.edges[-1].end]
     ends.sort(key=lambda p: (p * factor).real)
     first, last = (p * factor + shift for p in ends)
-    board.put(_widths(first, last, out, text, shown), text)
+    board.put(outside_widths(first, last, out, text, shown), text)
 
 
-def _widths(
-    first: complex, last: complex, out: complex, text: str, limits: Limits | None
+def outside_widths(
+    first: complex, last: complex, out: complex, text: str, limits: Limits | None = None
 ) -> list[list[Ink]]:
+    """Candidates of a mouth's width, its dimension line against `out` of it."""
     return [
         [
             extension(first, first - level * out),

@@ -103,7 +103,7 @@ def rim_measure(contours: Sequence[Contour], pole_angle: float) -> RimMeasure:
     if is_round:
         return RimMeasure(radius, True, _grooves(path, radius), on_q, ())
     arcs = [edge.radius for edge in path.edges if not edge.is_line]
-    return RimMeasure(radius, False, (), on_q, _each_once(arcs))
+    return RimMeasure(radius, False, (), on_q, each_once(arcs))
 
 
 def notch_groups(rim: RimMeasure, pole_angle: float) -> tuple[NotchGroup, ...]:
@@ -182,7 +182,7 @@ def _groove(run: Sequence[Edge], radius: float) -> Groove:
         abs(edges[0].start.imag - edges[-1].end.imag),
         max(p.imag for p in points) - min(p.imag for p in points),
         abs(far - radius),
-        _each_once([edge.radius for edge in edges if not edge.is_line]),
+        each_once([edge.radius for edge in edges if not edge.is_line]),
     )
 
 
@@ -198,7 +198,8 @@ def _reach(path: Path, way: complex) -> float:
     return max(heights_at(upright, 0.0))
 
 
-def _each_once(values: Sequence[float]) -> tuple[float, ...]:
+def each_once(values: Sequence[float]) -> tuple[float, ...]:
+    """Rising, those that differ by no more than `SAME` once."""
     kept: list[float] = []
     for value in sorted(values):
         if not kept or value - kept[-1] > SAME:

@@ -45,7 +45,7 @@ def stack_picture(job: SheetJob, table: Picture, radius: float) -> Picture:
 
 def _parts(job: SheetJob, low: complex, high: complex, radius: float) -> list[Ink]:
     """Borders of the skew's parts, and where the first q axis meets the surface of each."""
-    offsets = skew_offsets(job.design)
+    offsets = skew_offsets(job.design) if job.part == "rotor" else (0.0,)
     if len(offsets) == 1:
         return []
     step = (high.real - low.real) / len(offsets)

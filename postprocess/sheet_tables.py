@@ -9,7 +9,7 @@ from .sheet_details import RibKind, detail_scale, scale_text
 from .sheet_dimensions import number, with_limit
 from .sheet_font import width_of
 from .sheet_ink import NARROW, RULE, TEXT, Ink, Picture, Word, rectangle, segment
-from .sheet_job import MM, SheetJob
+from .sheet_job import MM, SheetJob, SheetOptions
 from .sheet_measures import PoleMeasure
 
 ROW = 4.6  # mm
@@ -141,7 +141,11 @@ def stack_table(job: SheetJob) -> Picture:
         ("Sheet thickness, mm", number(rotor.sheet_thickness_mm)),
         ("Stacking factor", number(rotor.stacking_factor)),
         ("Sheets, about", str(sheets)),
-        ("Skew", _skew(rotor.skew_steps, rotor.skew_angle_deg)),
+        *(
+            ()
+            if job.part == "stator"
+            else (("Skew", _skew(rotor.skew_steps, rotor.skew_angle_deg)),)
+        ),
         ("Area of a sheet, mm\u00b2", number(sheet / MM**2, 1)),
         ("Mass of a sheet, g", f"{GRAMS * sheet * rotor.sheet_thickness_mm * MM * density:.3g}"),
         ("Steel of the stack, kg", f"{sheet * steel * density:.4g}"),
@@ -155,10 +159,15 @@ def _skew(steps: int, angle: float) -> str:
     return f"{steps} equal parts, {number(angle / steps)}\u00b0 from each to the next"
 
 
-def notes(job: SheetJob, width: float, extra: Sequence[str] = ()) -> Picture:
+def notes(job: SheetJob, width: float) -> Picture:
+    """The rotor's notes and the order's remarks, numbered."""
+    return numbered((*_notes(job), *job.options.remarks), width)
+
+
+def numbered(texts: Sequence[str], width: float) -> Picture:
     """Numbered notes, wrapped to `width` mm, their lower left corner at 0."""
     lines: list[tuple[str, str]] = []
-    for k, text in enumerate((*_notes(job), *extra, *job.options.remarks), start=1):
+    for k, text in enumerate(texts, start=1):
         for j, line in enumerate(wrapped(text, width - NOTE_INDENT, TEXT)):
             lines.append((f"{k}" if j == 0 else "", line))
     height = LINE * len(lines)
@@ -184,10 +193,7 @@ def _notes(job: SheetJob) -> Iterator[str]:
         ' the middle of an end along the rim. "Off q axis": measured at this distance from the'
         " q axis, where a rib stands on it."
     )
-    side = {"near": "the side seen", "far": "the side not seen"}.get(asked.burr_side, "not given")
-    burr = f"{number(asked.burr_mm)} mm at most" if asked.burr_mm is not None else "not given"
-    yield f"Burr side: {side}, all sheets the same way round. Burr height: {burr}."
-    yield f"Rolling direction: {asked.rolling_direction or 'not given; agree before tooling'}."
+    yield from sheet_notes(asked)
     poles = job.section.poles
     yield (
         f"{poles} poles, q axes {number(360.0 / poles)}\u00b0 apart. The DXF of the same design"
@@ -195,9 +201,17 @@ def _notes(job: SheetJob) -> Iterator[str]:
     )
 
 
-def caution(job: SheetJob, width: float) -> Picture:
+def sheet_notes(asked: SheetOptions) -> Iterator[str]:
+    """On burr and rolling direction, of any sheet."""
+    side = {"near": "the side seen", "far": "the side not seen"}.get(asked.burr_side, "not given")
+    burr = f"{number(asked.burr_mm)} mm at most" if asked.burr_mm is not None else "not given"
+    yield f"Burr side: {side}, all sheets the same way round. Burr height: {burr}."
+    yield f"Rolling direction: {asked.rolling_direction or 'not given; agree before tooling'}."
+
+
+def caution(job: SheetJob, width: float, first: str = CAUTION) -> Picture:
     """The cautions in a frame, their lower left corner at 0."""
-    texts = [CAUTION]
+    texts = [first]
     if "invented" in job.design.note.lower():
         texts.insert(0, INVENTED)
     if job.options.warning:

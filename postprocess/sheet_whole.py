@@ -57,7 +57,7 @@ def whole_view(job: SheetJob, shown: Whole, scale: float, name: str) -> Picture:
     if not shown.rim.is_round:
         board.add([ring(0j, radius, PHANTOM)])
     board.add([Word("q1", 1j * (reach + 1.2), align="middle")])
-    _outer(board, job, shown.rim, radius)
+    outer_size(board, 2.0 * shown.rim.radius / MM, job.options.outer_fit, radius)
     if shown.key_mark is not None:
         circles(board, [shown.key_mark], factor)
         letters(board, [shown.key_mark], factor)
@@ -68,8 +68,8 @@ def whole_view(job: SheetJob, shown: Whole, scale: float, name: str) -> Picture:
     return board.picture
 
 
-def _outer(board: Board, job: SheetJob, rim: RimMeasure, radius: float) -> None:
-    size, fit = 2.0 * rim.radius / MM, job.options.outer_fit
+def outer_size(board: Board, size: float, fit: str, radius: float) -> None:
+    """The outer diameter in mm below a view whose rim has `radius` mm of paper."""
     limits = limits_of(size, fit) if fit else None
     text = f"\u2300{number(size)}{f' {fit}' if fit else ''}"
     left, right = complex(-radius, -radius - LEVEL), complex(radius, -radius - LEVEL)
@@ -90,7 +90,7 @@ def _bore(board: Board, job: SheetJob, bore: BoreMeasure, scale: float, rim: flo
     pitch = job.section.pole_angle
     ways = [_off_centre_line(math.pi / 2.0 + (k + 0.5) * pitch) for k in (-1, -2, 0, 1, -3, 2)]
     candidates = [
-        _datum_leader(cmath.rect(radius, way), cmath.rect(rim + far, way), text, limits)
+        datum_leader(cmath.rect(radius, way), cmath.rect(rim + far, way), text, limits)
         for far in (8.0, 12.0, 16.0, 22.0, 30.0)
         for way in ways
     ]
@@ -103,7 +103,8 @@ def _off_centre_line(way: float) -> float:
     return way + LEAST_OFF if abs(off) < LEAST_OFF else way
 
 
-def _datum_leader(tip: Point, knee: Point, text: str, limits: Limits) -> list[Ink]:
+def datum_leader(tip: Point, knee: Point, text: str, limits: Limits) -> list[Ink]:
+    """A diameter's leader with datum A on its shelf."""
     inks = leader(tip, knee, [text], limits)
     side = 1.0 if knee.real >= tip.real else -1.0
     # The datum's triangle stands on the shelf, its box below.

@@ -2,11 +2,13 @@
 
 import functools
 import tempfile
+from dataclasses import replace
 from pathlib import Path
 
 from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import design_hash, read_machine
+from lamwright.geometry.punch_layers import stator_lamination
 from lamwright.postprocess.sheet import Sheet, composed, drawing_sheet
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
 
@@ -24,6 +26,16 @@ def job_of(name: str, **options: object) -> SheetJob:
     contours = lamination_contours(section)
     wishes = SheetOptions(part_number="4711", **options)  # type: ignore[arg-type]
     return SheetJob(machine.design, section, contours, machine.rotor_steel, digest, wishes)
+
+
+@functools.cache
+def stator_job_of(name: str, **options: object) -> SheetJob:
+    """The stator of a shipped design as it is drawn."""
+    rotor = job_of(name, **options)
+    path = DESIGNS / f"{name}.toml"
+    machine = read_machine(path if path.exists() else DESIGNS / "gallery" / path.name)
+    contours = stator_lamination(rotor.section)
+    return replace(rotor, contours=contours, steel=machine.stator_steel, part="stator")
 
 
 @functools.cache

@@ -3,13 +3,14 @@
 import csv
 import json
 from pathlib import Path
+from types import SimpleNamespace
 
 import pytest
 from click.testing import CliRunner
 from supplier_forms import FORMS, write_traced
 
 from lamwright.app.cli import main
-from lamwright.app.outline_run import OutlineWishes, assess_outline, promised_record
+from lamwright.app.outline_run import OutlineVerdict, OutlineWishes, assess_outline, promised_record
 from lamwright.app.point import read_machine
 from lamwright.app.release_parts import parts_of
 from lamwright.geometry.cross_section import cross_section
@@ -20,6 +21,10 @@ from lamwright.geometry.supplier_outline import supplier_outline
 
 DESIGNS = Path(__file__).parent.parent.parent / "designs"
 DEMO = DESIGNS / "demo_24s4p_arc.toml"
+SHIPPED = sorted(
+    path.relative_to(DESIGNS).with_suffix("").as_posix()
+    for path in (*DESIGNS.glob("*.toml"), *DESIGNS.glob("gallery/*.toml"))
+)
 
 
 def run(*words):
@@ -101,17 +106,64 @@ def test_a_thin_rib_is_told_and_stressed(tmp_path):
     assert "NOT ANALYSED AS DRAWN" in page
 
 
-@pytest.mark.parametrize("form", ["R2000", "R2018"])
-def test_what_was_released_comes_back(form, tmp_path):
-    """Centre lines and texts of a released DXF are no outline; ribs exact to 1 nm (rounding)."""
-    machine = read_machine(DEMO)
+@pytest.mark.slow
+def test_a_shape_that_the_design_lacks_fails(tmp_path):
+    """All limits and ribs hold, but a relief of 0.12 mm was not analysed: exit 1, said first."""
+    from supplier_forms import contours_mm, drawing_of, with_relief
+
+    section = cross_section(read_machine(DEMO).design)
+    edges = []
+    for number, drawn in enumerate(contours_mm(section)):
+        edges += with_relief(drawn, 0, 0.12) if number == 2 else drawn
+    drawing_of(edges).saveas(tmp_path / "back.dxf")
+    words = ("--out", tmp_path, "--tolerance", "coarse", "--no-pictures")
+    told = run(DEMO, "--outline", tmp_path / "back.dxf", *words)
+    assert told.exit_code == 1
+    assert told.stdout.lstrip().startswith("NOT ANALYSED AS DRAWN: 1 contour")
+    assert "fails: NOT ANALYSED AS DRAWN (1 of its contours)" in told.output
+    assert "passes" not in told.output
+    verdict = json.loads((tmp_path / "verdict.json").read_text())
+    assert next(iter(verdict.items())) == ("analysed_as_drawn", False)
+    assert verdict["passes"] is False
+    page = (tmp_path / "report.html").read_text()
+    assert "FAILS: NOT ANALYSED AS DRAWN (1 of its contours)<" in page
+
+
+def test_what_fails_whatever_the_limits_say():
+    """A shape not analysed, then ribs; without either the limits alone tell."""
+    kinds = SimpleNamespace(difference=1e-4, error=0.0), SimpleNamespace(difference=0.0, error=0.0)
+    for strays in ((), ("relief",)):
+        for ribs in (kinds, kinds[1:]):
+            found = SimpleNamespace(strays=strays, ribs=ribs)
+            result = OutlineVerdict(SimpleNamespace(passes=True), found, 4e-5, (), ())
+            assert result.passes == (not strays and len(ribs) == 1)
+            assert len(result.faults) == bool(strays) + len(ribs) - 1
+            if strays:
+                assert result.faults[0].startswith("NOT ANALYSED AS DRAWN")
+
+
+# The others are among the slow tests: 22 designs take 48 s of processor time.
+@pytest.mark.parametrize(
+    ("name", "form"),
+    [
+        ("demo_24s4p_arc", "R2000"),
+        ("gallery/compressor_24s4p", "R2018"),
+        *(pytest.param(name, "R2018", marks=pytest.mark.slow) for name in SHIPPED),
+    ],
+)
+def test_what_was_released_comes_back(name, form, tmp_path):
+    """Recognised without hints; centre lines and texts are no outline; ribs to 1 nm (rounding)."""
+    machine = read_machine(DESIGNS / f"{name}.toml")
     section = cross_section(machine.design)
     parts = parts_of(machine, section, PunchOptions())
     rotor = next(part for part in parts if part.name == "rotor")
     path = tmp_path / "rotor.dxf"
     write_release(rotor.tool, path, form, ["a note"], rotor.axis)
     found = supplier_outline(section, path)
+    assert len(found.ribs) == len(section.ribs) * section.poles // section.sector_poles
     assert max(abs(rib.difference) for rib in found.ribs) < 1e-9
+    assert max(abs(found.deviation)) < 1e-9
+    assert not found.strays
     assert found.group == 0
 
 

@@ -62,6 +62,7 @@ def test_a_package_is_whole_and_verifies(package):
     names = {name for name in hashes(package)}
     assert names == {
         *("manifest.json", "verdict.json", "rotor.pdf", "rotor.svg"),
+        *("stator.pdf", "stator.svg"),
         *(f"{part}_{form}.dxf" for part in ("rotor", "stator") for form in ("r2000", "r2018")),
         *(
             f"{part}_{what}.step"

@@ -2,18 +2,22 @@
 
 from pathlib import Path
 
+import ezdxf
 import pytest
 
 from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.curves import Edge, area, circle
+from lamwright.geometry.design import NotchDesign
 from lamwright.geometry.design_file import read_design, read_machine
 from lamwright.geometry.drawn_rotor import recognised_rotor
 from lamwright.geometry.drawn_rotor_regions import drawn_rotor_regions
 from lamwright.geometry.dxf import write_contours
 from lamwright.geometry.dxf_reader import read_pieces
+from lamwright.geometry.dxf_release import write_release
 from lamwright.geometry.errors import OutlineError
 from lamwright.geometry.outline_edges import SAME_CURVE, made_symmetric, turned_edges
+from lamwright.geometry.punch_layers import rotor_lamination
 from lamwright.geometry.section import Region, base_name, pole_of
 
 GALLERY = Path(__file__).parents[2] / "designs" / "gallery"
@@ -88,11 +92,61 @@ def test_a_design_of_two_poles_may_name_its_drawing(tmp_path):
 
 
 def test_a_rim_that_is_no_circle_is_refused(tmp_path):
-    """Where no arc of the rim runs about the shaft axis the poles do not fit each other."""
+    """The axis is the bore's, and the line names what is not round about it."""
     section = cross_section(read_design(GALLERY / f"{REFUSED}.toml"))
     write_contours(lamination_contours(section), tmp_path / "rotor.dxf")
-    with pytest.raises(OutlineError, match="the 4 poles are alike neither"):
+    with pytest.raises(
+        OutlineError,
+        match=r"the rim is no circle about the shaft axis at \(0.000, 0.000\) mm: no arc",
+    ):
         recognised_rotor(read_pieces(tmp_path / "rotor.dxf").edges, HEAL, 4)
+
+
+@pytest.mark.parametrize(
+    "name",
+    [
+        "lift_27s6p",
+        "spindle_24s2p",
+        *(pytest.param(n, marks=pytest.mark.slow) for n in NAMES),
+    ],
+)
+def test_a_released_rotor_tells_its_own_q_axis(name, tmp_path):
+    """By its layer DATUM, without a hint, wherever the lamination was moved and turned to.
+
+    Ribs to 1 um, as asked: turned points are rounded to the file's digits.
+    """
+    section = cross_section(read_design(GALLERY / f"{name}.toml"))
+    axis = 0.5 * section.pole_angle
+    write_release(rotor_lamination(section), tmp_path / "rotor.dxf", "R2018", ["note"], axis)
+    document = ezdxf.readfile(tmp_path / "rotor.dxf")
+    for entity in document.modelspace():
+        entity.transform(ezdxf.math.Matrix44.z_rotate(0.3) @ ezdxf.math.Matrix44.translate(7, 3, 0))
+    document.saveas(tmp_path / "moved.dxf")
+    for file, turned in (("rotor.dxf", 0.0), ("moved.dxf", 0.3)):
+        pieces = read_pieces(tmp_path / file)
+        assert pieces.datum == pytest.approx(axis + turned, abs=1e-9)
+        drawing = recognised_rotor(pieces.edges, HEAL, section.poles, pieces.datum)
+        _, ribs = drawn_rotor_regions(drawing, section.circle_radius, section.pole_pairs)[0]
+        widths = sorted(rib.width for rib in section.ribs if pole_of(rib.name) == 1)
+        assert sorted(rib.width for rib in ribs) == pytest.approx(widths, abs=1e-6)
+
+
+@pytest.mark.parametrize("bottom", ["round", "flat"])
+def test_a_notch_on_the_q_axis_is_no_barrier(bottom):
+    """The barriers keep their numbers and ribs; the notch is one more hole."""
+    design = read_design(GALLERY / "fan_12s4p.toml")
+    notch = NotchDesign(angle_deg=0.0, width_mm=2.0, depth_mm=0.6, bottom=bottom)
+    rotor = design.rotor.model_copy(update={"notch": (notch,)})
+    found = []
+    for one in (design, design.model_copy(update={"rotor": rotor})):
+        contours = lamination_contours(cross_section(one))
+        edges = [edge for contour in contours for edge in contour.path.edges]
+        found.append(recognised_rotor(edges, HEAL, 4).poles[0])
+    plain, notched = found
+    names = [part.name for part in plain.air if part.name.startswith("barrier")]
+    assert [part.name for part in notched.air if part.name.startswith("barrier")] == names
+    assert len(notched.air) == len(plain.air) + 1
+    assert [rib.width for rib in notched.ribs] == pytest.approx([rib.width for rib in plain.ribs])
 
 
 @pytest.mark.parametrize("is_round", [True, False])
