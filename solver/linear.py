@@ -11,7 +11,8 @@ CHOLMOD's order of elimination (minimum degree, Amestoy, Davis & Duff 1996) is f
 triangles' corners alone, a quarter of the unknowns; a mid-side unknown goes before the first of its
 two ends. Analysis 8 instead of 19 ms, factors as good (15 k unknowns, measured). Tried without
 gain there: circle last, which would serve all rotor positions with one analysis (factors 19 instead
-of 13 ms); linear regions condensed beforehand (19 instead of 16 ms).
+of 13 ms); linear regions condensed beforehand (19 instead of 16 ms). More such trials stand in
+tests/benchmarks/README.md.
 """
 
 from typing import Literal, Protocol
