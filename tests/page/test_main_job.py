@@ -27,10 +27,12 @@ def test_the_main_job_by_mouse(opened: Opened, served: Served):
     before = served.text()
     region = window.page.locator(".regions path").nth(3)
     path = region.get_attribute("d")
+    stage = window.by_id("stage").bounding_box()
     window.drag(END, -12, -4)
     window.is_draft()
     window.until(lambda: region.get_attribute("d") != path)
     window.page.wait_for_selector("#findings-head[data-passes=true]")
+    assert window.by_id("stage").bounding_box() == stage  # what is told of a mark moves nothing
     moved = window.shown_text()
     assert value_of(moved, "end_angle_deg", 3) < value_of(before, "end_angle_deg", 3)
     assert served.text() == before  # a draft is no file yet
