@@ -5,10 +5,12 @@ import random
 import time
 from collections.abc import Sequence
 
-from study_deeds import misbehaving
+from study_deeds import misbehaving, slept
 
 from lamwright.app.evaluation import Evaluation
 from lamwright.app.study_task import Task
+
+STAND_IN_S = 0.05  # of `timed`
 
 
 def evaluated(task: Task) -> Evaluation:
@@ -17,6 +19,24 @@ def evaluated(task: Task) -> Evaluation:
     x, y = (float(value) for value in task.values.values())
     figures = {"torque_nm": x * y, "torque_ripple_percent": abs(x - y)}
     return Evaluation("done", figures=figures, passes=x * y > 4.0, seconds=0.0)
+
+
+def ready(seconds: float) -> int:
+    """The number of a process that has what `timed` needs, after a sleep."""
+    return slept(seconds)
+
+
+def timed(task: Task) -> Evaluation:
+    """As many figures as a quick evaluation has, after 50 ms of sleep or of computing."""
+    if task.design_text.startswith("sleep"):
+        time.sleep(STAND_IN_S)
+    else:
+        ends = time.process_time() + STAND_IN_S
+        while time.process_time() < ends:
+            sum(range(2000))
+    chance = random.Random(task.hash)
+    figures = {f"figure_{k}_mm": chance.random() for k in range(35)}
+    return Evaluation("done", "", "quick", figures, {}, True, STAND_IN_S)
 
 
 def stand_in_tasks(wishes: Sequence[str]) -> list[Task]:

@@ -10,7 +10,14 @@ from .timing import SILENT, growth_exponent
 from .workload import TINY
 
 NEED_PEER = ("newton_step_ratio", "operating_point_ratio")
-SLOW = (*NEED_PEER, "core_efficiency", "design_seconds", "map_seconds")
+SLOW = (
+    *NEED_PEER,
+    "cluster_rate",
+    "core_efficiency",
+    "design_seconds",
+    "map_seconds",
+    "sweep_efficiency",
+)
 CASES = [pytest.param(n, marks=pytest.mark.slow) if n in SLOW else n for n in BENCHMARKS]
 
 

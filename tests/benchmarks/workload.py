@@ -20,6 +20,11 @@ class Workload:
     core_rounds: int
     memory_scale: float
     design_rounds: int
+    cluster_workers: tuple[int, ...]
+    cluster_deeds: tuple[str, ...]  # sleep, compute
+    cluster_designs: int  # at most
+    sweep_designs: int  # of each of two processes
+    sweep_rounds: int
 
 
 FULL = Workload(
@@ -36,6 +41,11 @@ FULL = Workload(
     core_rounds=5,
     memory_scale=0.19,
     design_rounds=3,
+    cluster_workers=(1, 2, 4, 8, 16, 32, 64),
+    cluster_deeds=("sleep", "compute"),
+    cluster_designs=600,
+    sweep_designs=40,
+    sweep_rounds=3,
 )
 
 TINY = Workload(
@@ -52,4 +62,9 @@ TINY = Workload(
     core_rounds=1,
     memory_scale=4.0,
     design_rounds=1,
+    cluster_workers=(1,),
+    cluster_deeds=("sleep",),
+    cluster_designs=5,
+    sweep_designs=1,
+    sweep_rounds=1,
 )
