@@ -73,7 +73,7 @@ def search(
         from .study_pictures import draw_study
 
         again = (
-            f"lamwright search {study.name} --out FOLDER --budget {budget} --population "
-            f"{population} --seed {seed} --stall {stall} --gain {gain_percent:g} --polish {polish}"
+            f"--out FOLDER --budget {budget} --population {population} --seed {seed} "
+            f"--stall {stall} --gain {gain_percent:g} --polish {polish}"
         )
-        draw_study(out, report.study, again)
+        draw_study(out, report.study, "search", again)

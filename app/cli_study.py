@@ -68,4 +68,4 @@ def sweep(study: Path, out: Path, is_retrying: bool, pictures: bool, **options: 
     if pictures:
         from .study_pictures import draw_study
 
-        draw_study(out, report.study, f"lamwright sweep {study.name} --out FOLDER")
+        draw_study(out, report.study, "sweep", "--out FOLDER")

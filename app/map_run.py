@@ -17,13 +17,12 @@ from .pool import Crew, spare_cores
 from .progress import Progress, Stopwatch, silent
 
 if TYPE_CHECKING:
-    from lamwright.geometry.design_file import Machine
     from lamwright.geometry.section import CrossSection
     from lamwright.solver.tolerance import ToleranceName
 
     from .control_wishes import ControlWishes
     from .desk import Desk
-    from .map_grid import GridWishes, MapGrid
+    from .map_grid import GridWishes
     from .mapping import MapReport
 
 MOST_WORKERS = 64
@@ -85,7 +84,8 @@ def map_design(
     from .report_files import write_report
     from .report_map import map_report
 
-    grid = map_grid(machine, section, wishes or GridWishes())
+    wished = wishes or GridWishes()
+    grid = map_grid(machine, section, wished)
     watch = Stopwatch(progress, {**SHARES, **{name: CHAPTER_SHARE for name, _ in CHAPTERS}})
     with PointStore(folder, run_of(machine, grid, tolerance)) as store:
         with watch.phase("start"):
@@ -100,20 +100,28 @@ def map_design(
                 )
                 with staged(folder, MAP_FILE) as stage:
                     report = write_results(mapped, solved, grid, stage, tolerance, CHAPTERS)
-                    command = _again(machine, grid, tolerance)
-                    write_report(map_report(report, machine, stage, tolerance, command), stage)
+                    options = _again(wished, mapped.control, tolerance, eccentricity_mm)
+                    write_report(map_report(report, machine, stage, tolerance, options), stage)
                     return report
         except KeyboardInterrupt:
             raise KeyboardInterrupt(INTERRUPTED) from None
 
 
-def _again(machine: "Machine", grid: "MapGrid", tolerance: str) -> str:
-    """The command that computes the same map."""
-    i_d, i_q = (",".join(f"{current:.10g}" for current in axis) for axis in (grid.i_d, grid.i_q))
-    return (
-        f"lamwright map {machine.path.name} --out FOLDER --tolerance {tolerance} --i-d={i_d} "
-        f"--i-q={i_q} --positions {grid.position.size}"
-    )
+def _again(
+    wishes: "GridWishes", control: "ControlWishes", tolerance: str, offset_mm: float | None
+) -> str:
+    """Options of the command that computes the same: what was chosen is chosen again."""
+    words = [f"--out FOLDER --tolerance {tolerance}"]
+    if wishes.points is not None:
+        words.append("--points {}x{}".format(*wishes.points))
+    for name, axis in (("i-d", wishes.i_d), ("i-q", wishes.i_q)):
+        words += [f"--{name}={','.join(map(repr, axis))}"] if axis else []
+    if wishes.positions is not None:
+        words.append(f"--positions {wishes.positions}")
+    if offset_mm is not None:
+        words.append(f"--eccentricity-mm {offset_mm!r}")
+    words.append("--table-size {}x{}".format(*control.table_size))
+    return " ".join([*words, f"--c-format {control.number_format.text}"])
 
 
 def _eccentricity(wish_mm: float | None, section: "CrossSection") -> float | None:

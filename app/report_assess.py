@@ -1,5 +1,6 @@
 """The report of `assess`."""
 
+import shlex
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -9,7 +10,6 @@ from lamwright.geometry.design_file import Machine
 from lamwright.postprocess.quantities import figures_of
 from lamwright.postprocess.report import (
     Block,
-    Cell,
     Grid,
     Paragraph,
     Report,
@@ -19,31 +19,25 @@ from lamwright.postprocess.report import (
     words,
 )
 from lamwright.postprocess.torque import TorqueSpectrum
-from lamwright.postprocess.verdict import Outcome, Verdict
+from lamwright.postprocess.verdict import Verdict
 from lamwright.solver.tolerance import tolerance_settings
 
-from .lines import number, valued
+from .lines import number
 from .report_parts import (
     CAUTION,
-    error_text,
     figure_grid,
+    limits_grid,
     lines_section,
     picture_blocks,
-    repeat_section,
     ribs_grid,
     times_grid,
 )
+from .report_repeat import repeat_section
 from .report_ribs import RIB_COLUMNS, rib_sections
 
 if TYPE_CHECKING:
     from .rib_work import RibsReport
 
-LIMITS = {
-    "least_torque_nm": "least torque, mean",
-    "most_ripple_percent": "most torque ripple",
-    "least_saliency_ratio": "least saliency ratio",
-    "least_yield_margin": "least yield margin at overspeed",
-}
 # What is done, and whose it is; (m) marks what is cited from memory.
 METHOD = (
     (
@@ -87,6 +81,7 @@ METHOD = (
         "derived",
     ),
 )
+MESHES = "+- is the error of the meshes, not that of the model, the steel or the making."
 ELSEWHERE = (
     "flux map, current angles over load, envelope, efficiency and losses: the command map",
     "iron, friction and AC copper loss: in no figure here; the command map estimates them",
@@ -146,11 +141,13 @@ def assess_report(
         missed = [*supplied.faults, *missed]
     passes = not missed and (ribs is None or ribs.passes)
     if missed or passes:
-        outcome = f"FAILS: {', '.join(missed)}" if missed else "PASSES: every limit holds"
+        outcome = f"FAILS: {'; '.join(missed)}" if missed else "PASSES: every limit holds"
     else:
         outcome = "FAILS: yield margin with fit, heat and magnets"
     sections = [
-        Section("Verdict", (_limits(verdict), *_remarks(machine))),
+        Section(
+            "Verdict", (limits_grid(verdict.outcomes, verdict.errors, MESHES), *_remarks(machine))
+        ),
         *_supplied(supplied, folder),
         Section("The machine", picture_blocks(folder, ["section"])),
         Section(
@@ -191,12 +188,13 @@ def assess_report(
             "Cautions", (*(supplied.cautions if supplied else ()), *verdict.cautions), "none"
         ),
         repeat_section(
-            f"lamwright assess {machine.path.name} --out FOLDER --tolerance {verdict.tolerance}"
+            "assess",
+            f"--out FOLDER --tolerance {verdict.tolerance}"
             + (" --ribs" if ribs else "")
-            + (f" --outline {supplied.file}" if supplied else ""),
+            + (f" --outline {shlex.quote(supplied.file)}" if supplied else ""),
             machine,
             verdict.design_hash,
-            machine.path.read_text(encoding="utf-8"),
+            {supplied.file: supplied.sha256} if supplied else {},
         ),
     ]
     return Report(
@@ -225,24 +223,7 @@ def _supplied(supplied: Supplied | None, folder: Path) -> tuple[Section, ...]:
 
 
 def _limits(verdict: Verdict) -> Grid:
-    def row(outcome: Outcome) -> tuple[Cell, ...]:
-        figure = outcome.figure
-        sign = ">=" if outcome.is_least else "<="
-        limit = f"{sign} {number(outcome.limit)} {figure.unit}".rstrip()
-        mark = words("holds", "good") if outcome.holds else words("MISSED", "bad")
-        return (
-            words(LIMITS[outcome.key]),
-            numeral(limit),
-            numeral(valued(figure), figure.key),
-            numeral(error_text(verdict.errors, figure.key)),
-            mark,
-        )
-
-    return Grid(
-        ("limit", "asked", "found", "+-", "outcome"),
-        tuple(row(outcome) for outcome in verdict.outcomes),
-        "+- is the error of the meshes, not that of the model, the steel or the making.",
-    )
+    return limits_grid(verdict.outcomes, verdict.errors, MESHES)
 
 
 def _remarks(machine: Machine) -> tuple[Block, ...]:

@@ -5,21 +5,24 @@ from pathlib import Path
 from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.postprocess.report import Grid as Table
 from lamwright.postprocess.report import Report, Section, word_rows
+from lamwright.postprocess.verdict import Outcome
 
 from .mapping import MapReport
 from .report_parts import (
     CAUTION,
+    LIMITS,
     figure_grid,
+    limits_grid,
     lines_section,
     picture_blocks,
-    repeat_section,
     times_grid,
 )
+from .report_repeat import repeat_section
 from .version import version
 
 PICTURES = {
     "map": ("map",),
-    "control": ("control",),
+    "control": ("control_plane",),
     "envelope and efficiency": ("envelope", "efficiency"),
     "ripple and forces": ("ripple", "forces"),
     "losses": ("losses", "loss_density"),
@@ -50,10 +53,11 @@ METHOD = (
     ),
     ("friction in the gap", "torque of coaxial cylinders", "Bilgen & Boulos 1973 (m)"),
 )
+OTHERS = "At rated current. The other limits of the design are judged by the command assess."
 
 
 def map_report(
-    report: MapReport, machine: Machine, folder: Path, tolerance: str, command: str
+    report: MapReport, machine: Machine, folder: Path, tolerance: str, options: str
 ) -> Report:
     """The report of the command `map`.
 
@@ -62,7 +66,7 @@ def map_report(
         machine: the design with its cards.
         folder: with the pictures that have been drawn.
         tolerance: that was asked for.
-        command: that computes it again.
+        options: of the command that computes it again.
     """
     digest = design_hash(machine.design, machine.cards)
     chapters = [
@@ -75,14 +79,18 @@ def map_report(
         )
         for name, figures in report.sections
     ]
+    outcomes = _judged(report, machine)
+    missed = "; ".join(LIMITS[one.key] for one in outcomes if not one.holds)
     missing = len(report.not_given)
-    outcome = f"{missing} results not given for want of data" if missing else "all results given"
+    given = f"{missing} result{'s'[: missing > 1]} not given for want of data"
+    outcome = f"MISSED: {missed}" if missed else given if missing else "all results given"
     return Report(
         title=f"Flux map of {report.design_name}",
         subtitle=f"lamwright {version()}, tolerance {tolerance}, design {digest[:16]}",
         outcome=outcome,
-        mark="wary" if missing else "good",
+        mark="bad" if missed else "wary" if missing else "good",
         sections=(
+            Section("Limits", (limits_grid(outcomes, report.errors, OTHERS),)),
             *(chapter for chapter in chapters if chapter.blocks),
             Section(
                 "How it was computed",
@@ -93,7 +101,20 @@ def map_report(
             ),
             lines_section("What was not computed", report.not_given, "nothing was left out"),
             lines_section("Cautions", report.cautions, "none"),
-            repeat_section(command, machine, digest, machine.path.read_text(encoding="utf-8")),
+            repeat_section("map", options, machine, digest),
         ),
         closing=CAUTION,
     )
+
+
+def _judged(report: MapReport, machine: Machine) -> list[Outcome]:
+    """The limits of the design on figures that the map has."""
+    limits = machine.design.limits
+    asked = (
+        ("least_torque_nm", "rated_torque_nm", limits.least_torque_nm),
+        ("least_saliency_ratio", "yardstick_design_saliency_ratio", limits.least_saliency_ratio),
+    )
+    found = {figure.key: figure for figure in report.figures}
+    return [
+        Outcome(key, found[figure], limit, True) for key, figure, limit in asked if figure in found
+    ]

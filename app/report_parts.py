@@ -6,20 +6,18 @@ from importlib.metadata import PackageNotFoundError
 from importlib.metadata import version as installed_version
 from pathlib import Path
 
-from lamwright.geometry.design_file import Machine
 from lamwright.postprocess.quantities import Figure
 from lamwright.postprocess.report import (
-    Block,
     Cell,
     Grid,
     Lines,
-    Listing,
     Paragraph,
     Picture,
     Section,
     numeral,
     words,
 )
+from lamwright.postprocess.verdict import Outcome
 
 from .lines import number, valued
 from .version import version
@@ -30,6 +28,12 @@ CAUTION = (
     "material certificate, an overspeed test in containment, and local codes and standards. "
     "Rotors burst."
 )
+LIMITS = {
+    "least_torque_nm": "least torque, mean",
+    "most_ripple_percent": "most torque ripple",
+    "least_saliency_ratio": "least saliency ratio",
+    "least_yield_margin": "least yield margin at overspeed",
+}
 # What a picture shows, by its file's name; others are named by their file.
 CAPTIONS = {
     "section": "The pole that is computed: regions, ribs and winding.",
@@ -43,7 +47,7 @@ CAPTIONS = {
     "modes": "The lowest modes of rotor and stator, and the speeds at which orders meet them.",
     "thin": "What the thinnest ribs cost and bring.",
     "map": "Flux linkages, saliency and torque over the plane of currents.",
-    "control": "Most torque per ampere, per volt and within both limits over the currents.",
+    "control_plane": "Most torque per ampere, per volt and within both limits over the currents.",
     "envelope": "Most torque and power over speed within current and voltage.",
     "efficiency": "Efficiency over torque and speed.",
     "ripple": "Where the ripple comes from.",
@@ -56,18 +60,45 @@ CAPTIONS = {
 
 def figure_grid(figures: Iterable[Figure], errors: Mapping[str, float], note: str = "") -> Grid:
     """A table of figures with their error bars."""
-    return Grid(
-        ("what", "value", "+-"),
-        tuple(
-            (
-                words(figure.label),
-                numeral(figure_text(figure), figure.key),
-                numeral(error_text(errors, figure.key)),
-            )
-            for figure in figures
-        ),
-        note,
+    rows = tuple(
+        (
+            words(figure.label),
+            numeral(figure_text(figure), figure.key),
+            numeral(error_text(errors, figure.key)),
+        )
+        for figure in figures
     )
+    return without_empty(Grid(("what", "value", "+-"), rows, note))
+
+
+def without_empty(grid: Grid) -> Grid:
+    """The table without the columns of error bars that have none."""
+    kept = [
+        k
+        for k, column in enumerate(grid.columns)
+        if column != "+-" or any(row[k].text for row in grid.rows)
+    ]
+    rows = tuple(tuple(row[k] for k in kept) for row in grid.rows)
+    return Grid(tuple(grid.columns[k] for k in kept), rows, grid.note)
+
+
+def limits_grid(outcomes: Iterable[Outcome], errors: Mapping[str, float], note: str) -> Grid:
+    """A row for each limit with what was found."""
+
+    def row(outcome: Outcome) -> tuple[Cell, ...]:
+        figure = outcome.figure
+        sign = ">=" if outcome.is_least else "<="
+        limit = f"{sign} {number(outcome.limit)} {figure.unit}".rstrip()
+        return (
+            words(LIMITS[outcome.key]),
+            numeral(limit),
+            numeral(valued(figure), figure.key),
+            numeral(error_text(errors, figure.key)),
+            words("holds", "good") if outcome.holds else words("MISSED", "bad"),
+        )
+
+    heads = ("limit", "asked", "found", "+-", "outcome")
+    return without_empty(Grid(heads, tuple(row(outcome) for outcome in outcomes), note))
 
 
 def figure_text(figure: Figure) -> str:
@@ -77,7 +108,12 @@ def figure_text(figure: Figure) -> str:
 
 def error_text(errors: Mapping[str, float], key: str) -> str:
     """The figure's error, two digits, in its unit; empty where there is none."""
-    return f"{errors[key]:.2g}" if key in errors else ""
+    return _two_digits(errors[key]) if key in errors else ""
+
+
+def _two_digits(value: float) -> str:
+    text = f"{value:.2g}"
+    return f"{float(text):.0f}" if "e+" in text else text  # 190, not 1.9e+02
 
 
 def picture_blocks(folder: Path, names: Sequence[str]) -> tuple[Picture, ...]:
@@ -92,13 +128,13 @@ def picture_blocks(folder: Path, names: Sequence[str]) -> tuple[Picture, ...]:
 def ribs_grid(records: Sequence[Mapping[str, object]], keys: Sequence[tuple[str, str]]) -> Grid:
     """A row for each rib, a column for each (key, head) of its record."""
 
-    def shown(value: object) -> Cell:
+    def shown(key: str, value: object) -> Cell:
         if isinstance(value, float):
-            return numeral(number(value))
+            return numeral(_two_digits(value) if key.endswith("_error") else number(value))
         return numeral("-") if value is None else words(str(value))
 
     columns = [(key, head) for key, head in keys if any(key in record for record in records)]
-    rows = tuple(tuple(shown(record.get(key)) for key, _ in columns) for record in records)
+    rows = tuple(tuple(shown(key, record.get(key)) for key, _ in columns) for record in records)
     return Grid(tuple(head for _, head in columns), rows)
 
 
@@ -111,27 +147,6 @@ def times_grid(seconds: Mapping[str, float]) -> Grid:
     """Wall time by phase."""
     rows = tuple((words(phase), numeral(f"{spent:.2f}")) for phase, spent in seconds.items())
     return Grid(("phase", "s"), rows)
-
-
-def repeat_section(command: str, machine: Machine, design_hash: str, text: str) -> Section:
-    """All that a second person needs to compute the same."""
-    design = machine.design
-    cards = dict.fromkeys((design.steel.rotor_card, design.steel.stator_card))
-    if design.magnet is not None:
-        cards[design.magnet.card] = None
-    listings = [Listing(f"Design file {machine.path.name}", text)]
-    for card in cards:
-        path = machine.path.parent / card
-        listings.append(Listing(f"Card {card}", path.read_text(encoding="utf-8")))
-    blocks: list[Block] = [
-        Paragraph(
-            f"Save the files listed below and run: {command}. The design and its cards have the "
-            f"SHA-256 {design_hash}; the same versions give the same figures."
-        ),
-        made_by(),
-        *listings,
-    ]
-    return Section("To repeat it", tuple(blocks))
 
 
 def made_by() -> Grid:

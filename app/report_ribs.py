@@ -12,10 +12,10 @@ from .report_parts import (
     figure_grid,
     lines_section,
     picture_blocks,
-    repeat_section,
     ribs_grid,
     times_grid,
 )
+from .report_repeat import repeat_section
 from .rib_work import RibsReport
 from .version import version
 
@@ -25,7 +25,7 @@ RIB_COLUMNS = (
     ("tension_mean_mpa", "mean tension, MPa"),
     ("bending_mpa", "bending, MPa"),
     ("peak_mpa", "peak, MPa"),
-    ("peak_mpa_error", "+-"),
+    ("peak_mpa_error", "peak +-, MPa"),
     ("yield_margin", "yield margin"),
     ("speed_first_yield_rpm", "first yield, 1/min"),
 )
@@ -46,14 +46,14 @@ PICTURES = {
 }
 
 
-def ribs_report(report: RibsReport, machine: Machine, folder: Path, command: str) -> Report:
+def ribs_report(report: RibsReport, machine: Machine, folder: Path, options: str) -> Report:
     """The report of the command `ribs`.
 
     Args:
         report: what it has found.
         machine: the design with its cards.
         folder: with the pictures that have been drawn.
-        command: that computes it again.
+        options: of the command that computes it again.
     """
     margin, asked = number(report.margin), number(report.least_margin)
     holds = report.passes
@@ -80,7 +80,7 @@ def ribs_report(report: RibsReport, machine: Machine, folder: Path, command: str
             lines_section("What was not computed", report.not_given, "nothing was left out"),
             lines_section("Cautions", report.cautions, "none"),
             Section("Where the time went", (times_grid(report.seconds),)),
-            repeat_section(command, machine, digest, machine.path.read_text(encoding="utf-8")),
+            repeat_section("ribs", options, machine, digest),
         ),
         closing=CAUTION,
     )

@@ -8,7 +8,6 @@ from lamwright.postprocess.report import (
     Block,
     Cell,
     Grid,
-    Listing,
     Paragraph,
     Picture,
     Report,
@@ -21,7 +20,8 @@ from .ledger import Ledger
 from .ledger_rows import Row
 from .ledger_tables import best_of, missed_limits, ranked, told_reasons
 from .lines import number
-from .report_parts import CAUTION, error_text, lines_section, made_by
+from .report_parts import CAUTION, error_text, lines_section, without_empty
+from .report_repeat import study_section
 from .study_figures import known_figures
 from .version import version
 
@@ -41,14 +41,17 @@ QUICK = (
 )
 
 
-def study_report(study: "Study", ledger: Ledger, pictures: Sequence[Path], command: str) -> Report:
+def study_report(
+    study: "Study", ledger: Ledger, pictures: Sequence[Path], command: str, options: str
+) -> Report:
     """The report of a study.
 
     Args:
         study: as read from its file.
         ledger: its designs.
         pictures: that were drawn of it, in the folder of the report.
-        command: that goes on with it, or computes it again.
+        command: that goes on with it, or computes it again, as `sweep`.
+        options: of that command, as they are typed.
     """
     rows = ledger.rows()
     holding = [row for row in rows if row.passes]
@@ -74,7 +77,7 @@ def study_report(study: "Study", ledger: Ledger, pictures: Sequence[Path], comma
             lines_section(
                 "Cautions", ("a study compares designs; none of them is signed off by it",), ""
             ),
-            _repeat(study, command),
+            study_section(study, command, options),
         ),
         closing=CAUTION,
     )
@@ -108,7 +111,8 @@ def _best(ledger: Ledger) -> Grid:
         lines.append(
             (goal, *_value(best.row, best.figure), numeral(str(best.row.number)), keys, mark)
         )
-    return Grid(("goal", "value", "+-", "design", "keys", "limits"), tuple(lines))
+    heads = ("goal", "value", "+-", "design", "keys", "limits")
+    return without_empty(Grid(heads, tuple(lines)))
 
 
 def _keys(row: Row) -> str:
@@ -146,7 +150,7 @@ def _designs(study: "Study", rows: Sequence[Row], holding: bool) -> tuple[Block,
     )
     of = "that hold every limit" if holding else "of which none holds every limit"
     told = f"The first {len(lines)} of {len(listed)} designs {of}, {order}."
-    return Paragraph(told), Grid(tuple(heads), lines)
+    return Paragraph(told), without_empty(Grid(tuple(heads), lines))
 
 
 def _asked(study: "Study", counts: str) -> Section:
@@ -181,23 +185,3 @@ def _refused(ledger: Ledger) -> Section:
     )
     table: Block = Grid(("outcome", "reason", "designs"), lines)
     return Section("Designs without figures", (table if lines else Paragraph("none"),))
-
-
-def _repeat(study: "Study", command: str) -> Section:
-    """All files that a second person needs."""
-    text = study.path.read_text(encoding="utf-8")
-    drawings = ", ".join(study.drawings)
-    return Section(
-        "To repeat it",
-        (
-            Paragraph(
-                f"Save the files listed below and run: {command}. lamwright ledger FOLDER --show "
-                "NUMBER writes a design back, ready for assess."
-                + (f" The drawings {drawings} belong to it." if drawings else "")
-            ),
-            made_by(),
-            Listing(f"Study file {study.path.name}", text),
-            Listing(f"Base design {study.base_name}", study.base_text),
-            *(Listing(f"Card {name}", card) for name, card in study.cards.items()),
-        ),
-    )

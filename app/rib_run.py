@@ -93,10 +93,10 @@ def ribs_design(
             from .report_ribs import ribs_report
 
             thin = "" if rib_factor is None else f" --thin --rib-factor {rib_factor:g}"
-            command = f"lamwright ribs {machine.path.name} --out FOLDER --tolerance {tolerance}"
+            options = f"--out FOLDER --tolerance {tolerance}"
             if overspeed_share:
-                command += f" --overspeed-share {overspeed_share:g}"
+                options += f" --overspeed-share {overspeed_share:g}"
             if teeth_mass_factor is not None:
-                command += f" --teeth-mass-factor {teeth_mass_factor:g}"
-            write_report(ribs_report(report, machine, stage, command + thin), stage)
+                options += f" --teeth-mass-factor {teeth_mass_factor:g}"
+            write_report(ribs_report(report, machine, stage, options + thin), stage)
         return report

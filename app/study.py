@@ -112,15 +112,16 @@ class Study:
         """SHA-256 in hex of what makes it this study: another size of sample is still the same."""
         stated = (
             *(self.base_text, sorted(self.cards.items())),
-            sorted((name, _sha256(data)) for name, data in self.drawings.items()),
+            sorted((name, sha256_of(data)) for name, data in self.drawings.items()),
             [(key.key, key.choices, key.low, key.high, key.step) for key in self.keys],
             [(key.distribution, key.mean, key.deviation) for key in self.keys],
             (self.effort, self.tolerance, self.sampling.kind, self.sampling.seed),
             [(limit.figure, limit.least, limit.most) for limit in self.limits],
             [(goal.figure, goal.sense) for goal in self.goals],
         )
-        return _sha256(json.dumps(stated).encode())
+        return sha256_of(json.dumps(stated).encode())
 
 
-def _sha256(data: bytes) -> str:
+def sha256_of(data: bytes) -> str:
+    """SHA-256 in hex."""
     return hashlib.sha256(data).hexdigest()

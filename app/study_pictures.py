@@ -66,13 +66,14 @@ def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
     return write_study_figures(folder, studied, sections)
 
 
-def draw_study(folder: Path, study: "Study", command: str) -> None:
+def draw_study(folder: Path, study: "Study", command: str, options: str) -> None:
     """Write pictures and report of a study beside its ledger and say where, or why there are none.
 
     Args:
         folder: of the ledger.
         study: as read from its file.
-        command: that computes it again, for the report.
+        command: that computes it again, for the report, as `sweep`.
+        options: of that command, as they are typed.
 
     Raises:
         KeyboardInterrupt: with a line for the user; the designs are kept whatever happens.
@@ -83,7 +84,7 @@ def draw_study(folder: Path, study: "Study", command: str) -> None:
             from .report_files import HTML_FILE, PDF_FILE, write_report
             from .report_study import study_report
 
-            write_report(study_report(study, ledger, written, command), folder)
+            write_report(study_report(study, ledger, written, command, options), folder)
     except KeyboardInterrupt:
         told = f"no pictures, all designs are kept; lamwright ledger {folder} --pictures draws them"
         raise KeyboardInterrupt(f"interrupted: {told}") from None

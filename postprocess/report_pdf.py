@@ -181,6 +181,8 @@ def _table(grid: Grid, width: float) -> "Flowable":
         colWidths=_fitted(widths, width),
         repeatRows=1,
         hAlign="LEFT",
+        spaceBefore=6,  # from a table above, which would look like the same one
+        spaceAfter=2,
         style=[
             ("BACKGROUND", (0, 0), (-1, 0), "#f1f4f6"),
             ("LINEBELOW", (0, 0), (-1, -1), 0.4, "#b9c1c8"),

@@ -23,7 +23,7 @@ def told(tmp_path):
     with Ledger.open(tmp_path, study) as ledger:
         for k in range(DESIGNS):
             ledger.record(plain_task(k, study), plain_evaluation(k), "sweep", 1)
-        report = study_report(study, ledger, [], "lamwright sweep study.toml --out FOLDER")
+        report = study_report(study, ledger, [], "sweep", "--out FOLDER")
         rows = ledger.rows()
     return report_html(report, tmp_path), rows
 
