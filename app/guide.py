@@ -2,7 +2,9 @@
 
 import re
 
-from lamwright.geometry.errors import DesignError, LamwrightError
+from lamwright.geometry.errors import CardError, DesignError, LamwrightError, MagnetCardError
+
+from .study import StudyError
 
 _DESIGN, _STUDY = "designs/README.md", "designs/studies/README.md"
 _BARRIERS = "geometry/README.md"
@@ -28,26 +30,41 @@ SECTIONS: dict[str, tuple[str, str]] = {
     "hot": (_DESIGN, "Losses and heat"),
     "tolerance": (_DESIGN, "Tolerances"),
     "limits": (_DESIGN, "Limits"),
-    "magnetisation": (_DESIGN, "Cards"),
-    "hardening": (_DESIGN, "Cards"),
-    "fatigue": (_DESIGN, "Cards"),
-    "loss": (_DESIGN, "Cards"),
-    "vary": (_STUDY, "Keys that vary"),
-    "limit": (_STUDY, "The study file"),
-    "goal": (_STUDY, "The study file"),
-    "sample": (_STUDY, "The study file"),
+    "name": (_DESIGN, "From your motor to a design file"),
+    "note": (_DESIGN, "From your motor to a design file"),
 }
+# Cards and studies have words that a design has too, such as `hot` and `tolerance`.
+CARD_SECTIONS: dict[str, tuple[str, str]] = {
+    "fatigue": (_DESIGN, "Life in starts: a table of the steel card"),
+    "": (_DESIGN, "Steel cards"),
+}
+MAGNET_SECTIONS: dict[str, tuple[str, str]] = {"": (_DESIGN, "Magnet cards")}
+STUDY_SECTIONS: dict[str, tuple[str, str]] = {
+    "vary": (_STUDY, "Keys that vary"),
+    "": (_STUDY, "The study file"),
+}
+# A later kind, which is one of an earlier, decides.
+_BY_KIND = (
+    (StudyError, STUDY_SECTIONS),
+    (CardError, CARD_SECTIONS),
+    (MagnetCardError, MAGNET_SECTIONS),
+)
 # The key of `demo.toml:14: rotor.gap_mm = -0.4: too small`; the first fault speaks for all.
-_KEY = re.compile(r":\d+: ([a-z_]+(?:\[\d+\])?(?:\.[a-z_]+(?:\[\d+\])?)*)(?: =|:)")
+_KEY = re.compile(r":\d+: (\w+(?:\[\d+\])?(?:\.\w+(?:\[\d+\])?)*)(?: =|:)")
 
 
 def pointer(error: LamwrightError) -> tuple[str, ...]:
     """The line that names file and section of the guide, none where nothing fits."""
-    found = _KEY.search(str(error)) if isinstance(error, DesignError) else None
+    if not isinstance(error, DesignError):
+        return ()
+    table = SECTIONS
+    for kind, its in _BY_KIND:
+        table = its if isinstance(error, kind) else table
+    found = _KEY.search(str(error))
     if found is None:
         return ()
     key = re.sub(r"\[\d+\]", "", found[1])
-    for start, (file, section) in SECTIONS.items():
-        if key == start or key.startswith(f"{start}."):
+    for start, (file, section) in table.items():
+        if start in ("", key) or key.startswith(f"{start}."):
             return (f'more: {file}, section "{section}"',)
     return ()

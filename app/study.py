@@ -11,6 +11,8 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
+from lamwright.geometry.errors import DesignError
+
 if TYPE_CHECKING:
     from lamwright.solver.tolerance import ToleranceName
 
@@ -76,6 +78,10 @@ class StudyGoal:
 
     figure: str
     sense: Sense
+
+
+class StudyError(DesignError):
+    """A study file that cannot be used."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,7 @@ A fault is as of a design file: `ends.toml:7: vary[1].key = "rotor.gap": no such
 
 import difflib
 import os
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -14,9 +14,10 @@ from lamwright.geometry.design_faults import shown
 from lamwright.geometry.design_file import Machine, faults_at, read_machine, read_tables
 from lamwright.geometry.design_keys import stated
 from lamwright.geometry.errors import DesignError
+from lamwright.geometry.key_lines import KeyPath
 from lamwright.geometry.restated import restated
 
-from .study import Sampling, Study, StudyGoal, StudyKey, StudyLimit
+from .study import Sampling, Study, StudyError, StudyGoal, StudyKey, StudyLimit
 from .study_faults import Faults, grid_faults, table_faults
 from .study_keys import KeyKind, key_kind
 from .study_tables import StudyTables, VaryTable
@@ -36,13 +37,16 @@ def read_study(path: Path, *, is_searched: bool = False) -> Study:
     Raises:
         DesignError: the study, its base or a card cannot be read or used; one line a fault.
     """
-    tables, text = read_tables(path, StudyTables)
+    try:
+        tables, text = read_tables(path, StudyTables)
+    except DesignError as error:
+        raise StudyError(str(error)) from None
     if found := [*_base_faults(path, tables)]:
-        raise faults_at(path, text, found)
+        raise _faults(path, text, found)
     base_path = path.parent / tables.base
     machine = read_machine(base_path)
     if found := [*table_faults(tables, machine)]:
-        raise faults_at(path, text, found)
+        raise _faults(path, text, found)
     keys = tuple(_study_key(vary, key_kind(machine.design, vary.key)) for vary in tables.vary)
     named = _files_named(machine, keys)
     base_text = base_path.read_text(encoding="utf-8-sig").replace("\r\n", "\n")
@@ -65,8 +69,12 @@ def read_study(path: Path, *, is_searched: bool = False) -> Study:
         or (QUICK_SECONDS if tables.effort == "quick" else FULL_SECONDS),
     )
     if not is_searched and (found := [*grid_faults(study)]):
-        raise faults_at(path, text, found)
+        raise _faults(path, text, found)
     return study
+
+
+def _faults(path: Path, text: str, found: Sequence[tuple[KeyPath, str]]) -> StudyError:
+    return StudyError(str(faults_at(path, text, found)))
 
 
 def _base_faults(path: Path, tables: StudyTables) -> Faults:

@@ -21,7 +21,7 @@ from pydantic import BaseModel, ValidationError
 from .design import MachineDesign, MagnetCard, SteelCard
 from .design_faults import faults, key_text, shown
 from .design_outlines import with_outlines
-from .errors import DesignError, DrawingError, Finding
+from .errors import CardError, DesignError, DrawingError, Finding, MagnetCardError
 from .hot_steel import hot_findings
 from .key_lines import KeyPath, key_lines, line_of
 from .magnet_card import magnet_card_findings, temperature_findings
@@ -118,23 +118,25 @@ def read_machine(path: Path, text: str | None = None) -> Machine:
     text = _text(path) if text is None else text
     design = _design(path, text)
     cards: list[SteelCard] = []
-    problems: dict[str, None] = {}  # as an ordered set: both keys may name the same broken card
+    # An ordered set, with the kind of each: both keys may name the same broken card.
+    problems: dict[str, type[DesignError]] = {}
     for key in ("rotor_card", "stator_card"):
         name = getattr(design.steel, key)
         try:
             _raise_if_absent(path, text, ("steel", key), name)
             cards.append(read_steel_card(path.parent / name))
         except DesignError as error:
-            problems[str(error)] = None
+            problems[str(error)] = type(error)
     magnet: MagnetCard | None = None
     try:
         magnet = _magnet_card(path, text, design)
     except DesignError as error:
-        problems[str(error)] = None
+        problems[str(error)] = type(error)
     if not problems and (found := hot_findings(design, cards[0])):
-        problems[_placed_text(found, path, text)] = None
+        problems[_placed_text(found, path, text)] = DesignError
     if problems:
-        raise DesignError("\n".join(problems))
+        first = next(iter(problems.values()))
+        raise first("\n".join(problems))
     return Machine(design, cards[0], cards[1], path, magnet)
 
 
@@ -218,7 +220,12 @@ def _design_of(path: Path, text: str, data: dict[str, object]) -> MachineDesign:
 def _checked_card(
     path: Path, model: type[_Model], check: Callable[[_Model], tuple[Finding, ...]]
 ) -> _Model:
-    card: _Model = _card_of(path, _text(path), model, check)
+    try:
+        card: _Model = _card_of(path, _text(path), model, check)
+    except DesignError as error:
+        # Told apart for the guide: a card has words that a design has too.
+        kind = MagnetCardError if model is MagnetCard else CardError
+        raise kind(str(error)) from None
     return card
 
 

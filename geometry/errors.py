@@ -18,6 +18,14 @@ class DesignError(LamwrightError, ValueError):
     """A design or steel file that cannot be used; its text has one line per fault."""
 
 
+class CardError(DesignError):
+    """A steel card, or a magnet's, that cannot be used."""
+
+
+class MagnetCardError(CardError):
+    """A magnet card that cannot be used."""
+
+
 class DrawingError(DesignError):
     """A drawing named by a design that cannot be used; where it fails, as far as it is known."""
 

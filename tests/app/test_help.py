@@ -17,7 +17,16 @@ from click.testing import CliRunner
 
 from lamwright.app.cli import main
 from lamwright.app.examples import EXAMPLES
-from lamwright.app.guide import SECTIONS, pointer
+from lamwright.app.guide import (
+    CARD_SECTIONS,
+    MAGNET_SECTIONS,
+    SECTIONS,
+    STUDY_SECTIONS,
+    pointer,
+)
+from lamwright.app.lamination import section_of
+from lamwright.app.study_file import read_study
+from lamwright.geometry.design_file import read_machine
 from lamwright.geometry.errors import DesignError, LamwrightError
 
 ROOT = Path(__file__).parents[2]
@@ -149,34 +158,118 @@ def test_a_shells_script_is_printed(shell: str):
 GUIDE = (ROOT / "app" / "README.md").read_text(encoding="utf-8")
 
 
-@pytest.mark.parametrize("start", SECTIONS)
-def test_each_section_that_an_error_names_is_in_its_guide(start: str):
-    """A heading of that text, and the key or its table somewhere in the file."""
-    file, section = SECTIONS[start]
-    text = (ROOT / file).read_text(encoding="utf-8")
-    assert re.search(rf"^#+ {re.escape(section)}$", text, re.MULTILINE)
-    assert start.split(".")[-1] in text
+TABLES = (SECTIONS, CARD_SECTIONS, MAGNET_SECTIONS, STUDY_SECTIONS)
 
 
 @pytest.mark.parametrize(
-    ("fault", "told"),
+    ("start", "where"), [(start, where) for table in TABLES for start, where in table.items()]
+)
+def test_each_section_that_an_error_names_is_in_its_guide(start: str, where: tuple[str, str]):
+    """A heading of that text, and below it, before the next, the key or its table."""
+    file, section = where
+    text = (ROOT / file).read_text(encoding="utf-8")
+    below = re.split(rf"^#+ {re.escape(section)}$", text, maxsplit=1, flags=re.MULTILINE)
+    assert len(below) == 2
+    if start not in ("name", "note"):  # told at the head of the guide
+        assert start.split(".")[-1] in re.split(r"^#", below[1], maxsplit=1, flags=re.MULTILINE)[0]
+
+
+def _pointed(path: Path, read) -> str:
+    with pytest.raises(DesignError) as error:
+        read(path)
+    return "".join(pointer(error.value))
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "section"),
     [
-        ("a.toml:9: rotor.gap_mm = -1: too small", 'designs/README.md, section "Rotor"'),
-        ("a.toml:9: rotor.barrier[2].thicknes_mm: unknown key; did", '"Barriers"'),
-        ("a.toml:9: rotor.barrier[2].shape = 'x': not known", '"What its sides are"'),
-        ("a.toml:9: rotor.barrier[1].magnet.width_mm = 0: too small", '"Magnets in barriers"'),
-        ("ends.toml:5: vary[1].key = 'x': no such key", 'studies/README.md, section "Keys that'),
-        ("a.toml:1: limits: missing; accepted one table [limits]", '"Limits"'),
-        ("a.toml:1: the file is empty; accepted a TOML file", ""),
-        ("a.toml: no such file; accepted a TOML file", ""),
-        ("a.toml:3: column 4 of x: not TOML, rotor: a", ""),
+        ("gap_mm = 0.4", "gap_mm = -0.4", "Rotor"),
+        ("poles = 4", "poles = 5", "Rotor"),
+        ("slots = 24", "slots = 1", "Stator"),
+        ("slots = 24", "slots = 25", "Stator"),
+        ("tooth_width_mm = 5.4", "tooth_widht_mm = 5.4", "Stator"),
+        ("turns_per_coil = 34", "turns_per_coil = 0", "Winding"),
+        ("conductor_area_mm2 = 1.4", "conductor_area_mm2 = 0", "Winding"),
+        ("in_hand = 2", "in_hand = 0", "Winding"),
+        ("end_angle_deg = 16.3", "end_angle_deg = 0", "Barriers"),
+        ("depth_mm = 3.6", "depth = 3.6", "Barriers"),
+        ('shape = "arc"', 'shape = "ark"', "What its sides are"),
+        ("depth_mm = 3.6", 'depth_mm = 3.6\nend_shape = "x"', "How it ends"),
+        ("depth_mm = 3.6", "depth_mm = 3.6\nmagnet = { width_mm = 0 }", "Magnets in barriers"),
+        ("[steel]", "[[rotor.notch]]\nangle_deg = 1.0\n[steel]", "Notches, holes, keyways and rim"),
+        ("[steel]", "[rotor.fit]\nshaft_density = 1.0\n[steel]", "Shaft fit"),
+        ("steel/demo_050.toml", "steel/demo_055.toml", "Steel and magnets"),
+        ("supply_voltage_v = 400.0", "supply_voltage_v = 0", "Duty"),
+        ("[limits]", "[losses]\nair_temperature_c = 999.0\n[limits]", "Losses and heat"),
+        ("[limits]", "[hot]\nrotor_temperatur_c = 80.0\n[limits]", "Losses and heat"),
+        ("[limits]", "[tolerance]\ncut_mm = -1.0\n[limits]", "Tolerances"),
+        ("least_torque_nm = 9.0", "least_torque_nm = -9.0", "Limits"),
+        ('name = "demo', 'title = "demo', "From your motor to a design file"),
     ],
 )
-def test_a_fault_points_to_its_section(fault: str, told: str):
-    """By the key that the line names, as geometry's errors write it."""
-    assert told in "".join(pointer(DesignError(fault)))
-    assert bool(told) == bool(pointer(DesignError(fault)))
-    assert pointer(LamwrightError(fault)) == ()
+def test_faults_of_a_design_point_to_what_helps(old, new, section, tmp_path):
+    """From the file through its reader: the section where the key of the first fault is told."""
+    text = (ROOT / "designs" / "demo_24s4p_arc.toml").read_text()
+    assert old in text
+    (tmp_path / "a.toml").write_text(text.replace(old, new, 1))
+    shutil.copytree(ROOT / "designs" / "steel", tmp_path / "steel")
+    assert f'section "{section}"' in _pointed(
+        tmp_path / "a.toml", lambda path: section_of(read_machine(path))
+    )
+
+
+@pytest.mark.parametrize(
+    ("card", "old", "new", "section"),
+    [
+        (
+            "steel/demo_050.toml",
+            "yield_strength_mpa = [400.0",
+            "yield_strength_mpa = [-1",
+            "Steel c",
+        ),
+        ("steel/demo_050.toml", "[hot]", "[heat]", "Steel cards"),
+        ("steel/demo_050.toml", "sheet_thickness_mm = 0.5", "", "Steel cards"),
+        ("steel/demo_050.toml", 'method = "smith', 'method = "smyth', "Life in starts"),
+        ("magnet/demo_ferrite.toml", "value = 4900.0", "value = -1", "Magnet cards"),
+        ("magnet/demo_ferrite.toml", "[remanence_t]", "[remanence]", "Magnet cards"),
+    ],
+)
+def test_faults_of_a_card_point_to_cards(card, old, new, section, tmp_path):
+    """Cards have words that a design has too: `hot` of a card is no `hot` of a design."""
+    for folder in ("steel", "magnet"):
+        shutil.copytree(ROOT / "designs" / folder, tmp_path / folder)
+    shutil.copy(ROOT / "designs" / "demo_36s4p_magnet.toml", tmp_path)
+    text = (tmp_path / card).read_text()
+    assert old in text
+    for path in (tmp_path / card).parent.iterdir():
+        path.write_text(text.replace(old, new, 1))
+    assert f'section "{section}' in _pointed(tmp_path / "demo_36s4p_magnet.toml", read_machine)
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "section"),
+    [
+        ("layout.barriers", "layout.barrier", "Keys that vary"),
+        ('effort = "quick"', 'tolerance = "rough"', "The study file"),
+        ('figure = "torque_nm"', 'figure = "torque"', "The study file"),
+    ],
+)
+def test_faults_of_a_study_point_to_its_guide(old, new, section, tmp_path):
+    """`tolerance` of a study is no table of a design."""
+    text = (ROOT / "designs" / "studies" / "barriers_by_end_angle.toml").read_text()
+    assert old in text
+    base = (ROOT / "designs" / "demo_24s4p_arc.toml").as_posix()
+    text = text.replace(old, new, 1).replace("../demo_24s4p_arc.toml", base)
+    (tmp_path / "a.toml").write_text(text)
+    told = _pointed(tmp_path / "a.toml", read_study)
+    assert told == f'more: designs/studies/README.md, section "{section}"'
+
+
+def test_a_fault_without_a_key_points_nowhere():
+    """A file that is none, and faults of other kinds."""
+    for text in ("a.toml: no such file; accepted a TOML file", "a.toml:3: not TOML, rotor: a"):
+        assert pointer(DesignError(text)) == ()
+    assert pointer(LamwrightError("a.toml:9: rotor.gap_mm = -1: too small")) == ()
 
 
 def test_bad_input_ends_with_one_pointer_however_many_faults(tmp_path):

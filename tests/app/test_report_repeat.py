@@ -78,6 +78,14 @@ def test_drawings_are_named_with_their_hashes():
     assert "measured/stator.dxf" in told
 
 
+def test_a_study_is_the_same_again(tmp_path):
+    """Base and cards lie above the study's folder; the hash is that of the original."""
+    study = read_study(DESIGNS / "studies" / "barriers_by_end_angle.toml")
+    words = saved(page_of(study_section(study, "sweep", "--out FOLDER")), tmp_path)
+    assert words[:2] == ["lamwright", "sweep"]
+    assert read_study(tmp_path / words[2]).hash == study.hash
+
+
 @pytest.mark.parametrize(
     ("names", "expected"),
     [
