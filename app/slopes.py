@@ -15,7 +15,6 @@ import click
 
 from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.design_file import Machine
-from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.remedies import value_of
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
@@ -50,6 +49,7 @@ from lamwright.solver.design_motion import (
     draw_lamination,
     draw_rotor,
     draw_stator,
+    magnet_turns,
     part_motion,
     shape_keys,
     size_motion,
@@ -65,6 +65,7 @@ from .lamination import section_of
 from .point import model_of, read_machine
 
 JSON_FILE, CSV_FILE = "slopes.json", "slopes.csv"
+MAGNETS_LOAD = "the magnets' load is not in the rib stress: of the spin alone, as in the verdict"
 # Of the fields that are differentiated: an adjoint sees the residual that is left.
 TOLERANCE = 1e-8
 # Over 60 electrical degrees, every second one of the verdict's. A barrier's end shifts the slot
@@ -97,18 +98,20 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
     """The table of a machine whose pole is drawn.
 
     Raises:
-        LamwrightError: the machine has magnets.
         NotConverged: an iteration did not end; with its history.
     """
     design = machine.design
-    if machine.magnet is not None:
-        raise LamwrightError("slopes: a machine with magnets has none yet; remove [magnet]")
     sector = mesh_section(section)
     model = model_of(machine, section, sector)
     (i_d, i_q), fields = loaded_fields(model, design)
     rotor = part_motion(sector.rotor, design, draw_rotor)
     stator = part_motion(sector.stator, design, draw_stator)
     linkages = mean_slopes(model, section, design, fields, (rotor, stator))
+    bare: OutlineSlope | None = None
+    if machine.magnet is not None:
+        still = _still_fields(model, design)
+        bare = mean_slopes(model, section, design, still, (rotor, stator))[1]
+    bare_psi_q = 0.0 if bare is None else bare.value
     lamination, peak, peak_on_outline = _peak(machine, section)
     at = shape_figures(
         design.pole_pairs,
@@ -117,9 +120,10 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
         psi_d=linkages[0].value,
         psi_q=linkages[1].value,
         rib_peak=peak.peak,
+        bare_psi_q=bare_psi_q,
     )
     rows: list[KeySlope] = []
-    left_out: list[str] = []
+    left_out: list[str] = [] if bare is None else [MAGNETS_LOAD]
     for key in shape_keys(design):
         try:
             moves = [part.velocity(design, key) for part in (rotor, stator, lamination)]
@@ -127,13 +131,16 @@ def slopes_of(machine: Machine, section: CrossSection) -> SlopeTable:
             left_out.append(str(reason))
             continue
         sizes = size_motion(design, key)
+        turns = None if bare is None else magnet_turns(design, key)
         by_key = {
-            "psi_d": linkages[0].by_key(moves[0], moves[1], sizes),
-            "psi_q": linkages[1].by_key(moves[0], moves[1], sizes),
+            "psi_d": linkages[0].by_key(moves[0], moves[1], sizes, turns),
+            "psi_q": linkages[1].by_key(moves[0], moves[1], sizes, turns),
             "rib_peak": float((peak_on_outline * moves[2]).sum()),
         }
+        if bare is not None:
+            by_key["bare_psi_q"] = bare.by_key(moves[0], moves[1], sizes, turns)
         value = value_of(design, key)
-        rows.append(key_slope(key, value, design.pole_pairs, (i_d, i_q), at, by_key))
+        rows.append(key_slope(key, value, design.pole_pairs, (i_d, i_q), at, by_key, bare_psi_q))
     return SlopeTable(design.name, i_d, i_q, at, peak.bias, ranked(rows), tuple(left_out))
 
 
@@ -145,18 +152,35 @@ def loaded_fields(
     Slopes are means over the positions and, of a skewed rotor, over its steps.
     """
     found = most_torque(model, design, lambda share: None)
+    starts = [last[0] for last in found.last]
+    return (found.i_d, found.i_q), _fields(model, design, (found.i_d, found.i_q), starts)
+
+
+def _still_fields(
+    model: MagneticModel, design: MachineDesign
+) -> tuple[tuple[FieldSolution, ...], ...]:
+    """The same without current, of a machine with magnets."""
+    return _fields(model, design, (0.0, 0.0), [None] * len(skew_offsets(design)))
+
+
+def _fields(
+    model: MagneticModel,
+    design: MachineDesign,
+    currents: tuple[float, float],
+    starts: Sequence[FieldSolution | None],
+) -> tuple[tuple[FieldSolution, ...], ...]:
+    """Fields of each step of the rotor at all positions, solved tightly."""
     tight = replace(model.settings, newton=NewtonSettings(tolerance=TOLERANCE))
     positions = waveform_positions(design.pole_pairs, POSITIONS)
-    points = [OperatingPoint(found.i_d, found.i_q, float(position)) for position in positions]
-    fields = tuple(
+    points = [OperatingPoint(*currents, float(position)) for position in positions]
+    return tuple(
         solve_chain(
             replace(model, settings=tight),
             [step_point(point, offset, design.pole_pairs) for point in points],
-            start=last[0],
+            start=start,
         )
-        for offset, last in zip(skew_offsets(design), found.last, strict=True)
+        for offset, start in zip(skew_offsets(design), starts, strict=True)
     )
-    return (found.i_d, found.i_q), fields
 
 
 def mean_of_fields(

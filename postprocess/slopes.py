@@ -6,7 +6,9 @@ at the rated current and at the angle of most torque, where the angle's own chan
 nothing (dT/d gamma = 0). Saliency psi_d i_q / (psi_q i_d) is stated at that same angle
 and changes with it; here the angle stays. The rib stress is the largest of all ribs, smoothed
 (`solver.adjoint_stress`) and scaled by the bias of the smoothing.
-Slopes are those of straight lines: 0.1 mm of a thin rib is far.
+Slopes are those of straight lines: 0.1 mm of a thin rib is far. With magnets psi_q less its
+no-load value stands in the saliency, as in the verdict, and the rib stress is that of the spin
+alone, without their load.
 """
 
 from collections.abc import Mapping
@@ -75,12 +77,19 @@ def step_of(key: str) -> tuple[float, str]:
 
 
 def shape_figures(
-    pole_pairs: int, i_d: float, i_q: float, *, psi_d: float, psi_q: float, rib_peak: float
+    pole_pairs: int,
+    i_d: float,
+    i_q: float,
+    *,
+    psi_d: float,
+    psi_q: float,
+    rib_peak: float,
+    bare_psi_q: float = 0.0,
 ) -> ShapeFigures:
-    """The figures from mean linkages in V s and the ribs' peak in Pa."""
+    """The figures from mean linkages in V s, at no load too, and the ribs' peak in Pa."""
     return ShapeFigures(
         torque=mean_linkage_torque(pole_pairs, i_d, i_q, [psi_d], [psi_q]),
-        saliency=saliency_ratio(i_d, i_q, psi_d, psi_q),
+        saliency=saliency_ratio(i_d, i_q, psi_d, psi_q - bare_psi_q),
         rib_peak=rib_peak,
         psi_d=psi_d,
         psi_q=psi_q,
@@ -94,6 +103,7 @@ def key_slope(
     currents: tuple[float, float],
     at: ShapeFigures,
     by_key: Mapping[str, float],
+    bare_psi_q: float = 0.0,
 ) -> KeySlope:
     """A row from the slopes of linkages and rib peak.
 
@@ -103,14 +113,17 @@ def key_slope(
         pole_pairs: of the machine.
         currents: i_d and i_q in A, held.
         at: the figures as they stand.
-        by_key: slopes of `psi_d`, `psi_q`, `rib_peak` in SI per mm or degree.
+        by_key: slopes of `psi_d`, `psi_q`, `rib_peak` in SI per mm or degree, and of `bare_psi_q`
+            where there are magnets.
+        bare_psi_q: at no load in V s.
     """
     step, unit = step_of(key)
     psi_d, psi_q, rib_peak = (step * by_key[name] for name in ("psi_d", "psi_q", "rib_peak"))
+    bare = step * by_key.get("bare_psi_q", 0.0)
     change = ShapeFigures(
         torque=mean_linkage_torque(pole_pairs, *currents, [psi_d], [psi_q]),  # linear in both
         # d(psi_d / psi_q) = psi_d / psi_q (d psi_d / psi_d - d psi_q / psi_q)
-        saliency=at.saliency * (psi_d / at.psi_d - psi_q / at.psi_q),
+        saliency=at.saliency * (psi_d / at.psi_d - (psi_q - bare) / (at.psi_q - bare_psi_q)),
         rib_peak=rib_peak,
         psi_d=psi_d,
         psi_q=psi_q,

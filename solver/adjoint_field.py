@@ -1,9 +1,10 @@
 """Slopes of the flux linkages by the places of all nodes: the adjoint of the discrete field.
 
-The field solves R(a, x) = r(a, x) - L(x)^T i = 0, the linkage of an axis is psi = t . L(x) a with
-the weights t of the phases. With K = dR/da at the solution and K lambda = L^T t,
+The field solves R(a, x) = r(a, x) - L(x)^T i - m(x) = 0, m being the magnets' load; the linkage of
+an axis is psi = t . L(x) a with the weights t of the phases. With K = dR/da at the solution and
+K lambda = L^T t,
 
-    d psi / dx = t . dL/dx a + i . dL/dx lambda - lambda . dr/dx,
+    d psi / dx = t . dL/dx a + i . dL/dx lambda + lambda . dm/dx - lambda . dr/dx,
 
 so each figure takes one linear solution with the factor of the last tangent, and none a key.
 Everything is the derivative of the sums that `model` and `field` compute: the same quadrature
@@ -13,7 +14,7 @@ Axes: n_node nodes of rotor and stator one after the other, 2 directions, 3 phas
 """
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -23,7 +24,7 @@ from lamwright.geometry.winding import WindingTable
 
 from .design_motion import PartMotion, SizeMotion
 from .field import MagneticModel, PointEnergy, at_position
-from .form_slope import form_slope, mean_slope, summed_slope
+from .form_slope import flow_slope, form_slope, mean_slope, summed_slope
 from .gap import rotor_place, sheared
 from .integrals import phase_currents
 from .model import region_reluctivity
@@ -31,7 +32,11 @@ from .pattern import node_values
 from .steel import NU_0
 from .types import FieldSolution, FloatArray, IntArray, ReluctivityLaw
 
-LINEAR_POINTS, GAP_POINTS = 3, 6  # quadrature of `model.magnetic_model` and `field`
+LINEAR_POINTS, MAGNET_POINTS, GAP_POINTS = (
+    3,
+    3,
+    6,
+)  # quadrature of `model.magnetic_model` and `field`
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -44,6 +49,8 @@ class FieldSlope:
     rim_radius: float
     bore_radius: float
     stack_length: float
+    # By each magnet's direction, x + iy of its unit vector; nothing where there are none.
+    directions: Mapping[str, complex]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -56,11 +63,29 @@ class OutlineSlope:
     rim_radius: float
     bore_radius: float
     stack_length: float
+    directions: Mapping[str, complex]
 
-    def by_key(self, rotor: FloatArray, stator: FloatArray, sizes: SizeMotion) -> float:
-        """Slope by a key from the motion that it causes, all in m per unit of the key."""
+    def by_key(
+        self,
+        rotor: FloatArray,
+        stator: FloatArray,
+        sizes: SizeMotion,
+        turns: Mapping[str, complex] | None = None,
+    ) -> float:
+        """Slope by a key from the motion that it causes, all in m per unit of the key.
+
+        Args:
+            rotor: (n_on of rotor, 2).
+            stator: (n_on of stator, 2).
+            sizes: of radii and stack.
+            turns: change of each magnet's direction per unit of the key, from `magnet_turns`.
+        """
+        turned = sum(
+            (self.directions[name] * turn.conjugate()).real for name, turn in (turns or {}).items()
+        )
         return (
-            float(np.sum(self.rotor * rotor) + np.sum(self.stator * stator))
+            turned
+            + float(np.sum(self.rotor * rotor) + np.sum(self.stator * stator))
             + self.rim_radius * sizes.rim_radius
             + self.bore_radius * sizes.bore_radius
             + self.stack_length * sizes.stack_length
@@ -76,6 +101,7 @@ def on_outline(slope: FieldSlope, rotor: PartMotion, stator: PartMotion) -> Outl
         rim_radius=slope.rim_radius,
         bore_radius=slope.bore_radius,
         stack_length=slope.stack_length,
+        directions=slope.directions,
     )
 
 
@@ -88,6 +114,10 @@ def mean_of(slopes: list[FieldSlope]) -> FieldSlope:
         rim_radius=float(np.mean([s.rim_radius for s in slopes])),
         bore_radius=float(np.mean([s.bore_radius for s in slopes])),
         stack_length=float(np.mean([s.stack_length for s in slopes])),
+        directions={
+            name: complex(np.mean([s.directions[name] for s in slopes]))
+            for name in slopes[0].directions
+        },
     )
 
 
@@ -119,6 +149,10 @@ def _combined(
         rim_radius=float(mixed("rim_radius")),
         bore_radius=float(mixed("bore_radius")),
         stack_length=float(mixed("stack_length")),
+        directions={
+            name: by_first * own + by_second * second.directions[name]
+            for name, own in first.directions.items()
+        },
     )
 
 
@@ -143,17 +177,12 @@ def linkage_slopes(
         section: the pole it was made of, for its materials.
         winding: its winding.
         solution: converged field of the model.
-
-    Raises:
-        ValueError: for a machine with magnets, whose load's slope is not there.
     """
-    if model.magnet.still_energy > 0.0:
-        raise ValueError("slopes of a machine with magnets are not there")
     theta_e = model.sector.pole_pairs * solution.position
     currents = phase_currents(solution.i_d, solution.i_q, theta_e)
     place = at_position(model, solution.position)
     a_node = np.concatenate([solution.a_rotor, solution.a_stator])
-    energy = PointEnergy(model, place, currents @ model.linkage)
+    energy = PointEnergy(model, place, currents @ model.linkage + model.magnet.load)
     _, state = energy.residual(a_node[model.representative])
     # psi_d = 2/3 sum psi_k cos(theta_k): the weights of an axis are its unit current's, times 2/3.
     weights = [2.0 / 3.0 * phase_currents(*axis, theta_e) for axis in ((1.0, 0.0), (0.0, 1.0))]
@@ -199,6 +228,12 @@ def _slope(
             elements = side + n_rotor
             slope = mean_slope(_nodes(model), elements, node[elements])
             total += float(conductors @ weight) * summed_slope(n_node, elements, slope)
+    directions: dict[str, complex] = {}
+    for name, elements, strength, along in _magnets(model, section):
+        c = strength * np.array([-along.imag, along.real])  # B_r . curl lambda
+        slope, by_c = flow_slope(_nodes(model), elements, MAGNET_POINTS, dual.node[elements], c)
+        total += summed_slope(n_node, elements, slope)
+        directions[name] = strength * complex(by_c[1], -by_c[0])
     at_rest, rim, circle = _unsheared(model, rest, gap[:n_rotor])
     total[:n_rotor] += at_rest
     per_machine = sector.sectors * model.stack_length
@@ -210,7 +245,20 @@ def _slope(
         rim_radius=per_machine * (rim + 0.5 * circle),
         bore_radius=per_machine * 0.5 * circle,
         stack_length=dual.value / model.stack_length,
+        directions={name: per_machine * value for name, value in directions.items()},
     )
+
+
+def _magnets(
+    model: MagneticModel, section: CrossSection
+) -> Iterator[tuple[str, IntArray, float, complex]]:
+    """Name, elements, nu B_r in A/m and direction of each magnet."""
+    rotor, law = model.sector.rotor, model.settings.magnet
+    for region in section.rotor:
+        if region.material == "magnet":
+            assert law is not None  # the model was made with one
+            elements = rotor.elements[rotor.elements_of(region.name)]
+            yield region.name, elements, law.reluctivity * law.remanence, region.magnetisation
 
 
 def _nodes(model: MagneticModel) -> FloatArray:

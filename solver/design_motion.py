@@ -190,6 +190,31 @@ def _is_used(barrier: BarrierDesign, name: str) -> bool:
     return name == "arm_angle_deg" and barrier.shape == "straight"
 
 
+def magnet_turns(design: MachineDesign, key: str) -> dict[str, complex]:
+    """Change of each magnet's direction, x + iy of its unit vector, per mm or degree of the key.
+
+    Where the key can be changed to one side alone, by that side.
+    """
+    value = value_of(design, key)
+    here = _directions(design)
+    sides = []
+    for step in (KEY_STEP, -KEY_STEP):
+        try:
+            there = _directions(with_value(design, key, value + step))
+        except (ValueError, GeometryError):
+            continue
+        if there.keys() == here.keys():
+            sides.append({name: (there[name] - own) / step for name, own in here.items()})
+    if not sides:
+        return {}
+    return {name: sum(side[name] for side in sides) / len(sides) for name in here}
+
+
+def _directions(design: MachineDesign) -> dict[str, complex]:
+    regions = draw_rotor(design)
+    return {region.name: region.magnetisation for region in regions if region.material == "magnet"}
+
+
 def moved_mesh(mesh: PlanarMesh, motion: FloatArray, amount: float) -> PlanarMesh:
     """The mesh with its nodes moved by `amount` of a key at `motion` (n_node, 2) in m per unit."""
     nodes: FloatArray = mesh.nodes + amount * motion

@@ -53,6 +53,31 @@ def form_slope(
     return np.asarray(np.einsum("qe,qdke,qdie->eik", weight, pull, grad, optimize=True))
 
 
+def flow_slope(
+    nodes: FloatArray, elements: IntArray, n_qp: int, values: FloatArray, along: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Of int c . grad lambda dS with a constant c: its slope by nodes, and by c.
+
+    By node i it is sum_q w [ (c . grad lambda) grad N_i - (c . grad N_i) grad lambda ], from the
+    same rules; by c it is int grad lambda dS.
+
+    Args:
+        nodes: (n_node, 2) in m.
+        elements: (n_elem, 6).
+        n_qp: points an element.
+        values: nodal lambda, (n_elem, 6).
+        along: c, (2,).
+
+    Returns:
+        (n_elem, 6, 2) and (2,).
+    """
+    quad = quadrature(nodes, elements, n_qp)
+    grad = np.einsum("eqdi,ei->eqd", quad.grad, values)
+    spread = np.einsum("eq,eqk,k,eqdi->eid", quad.weight, grad, along, quad.grad, optimize=True)
+    turned = np.einsum("eq,eqd,k,eqki->eid", quad.weight, grad, along, quad.grad, optimize=True)
+    return np.asarray(spread - turned), np.asarray(np.einsum("eq,eqd->d", quad.weight, grad))
+
+
 def mean_slope(nodes: FloatArray, elements: IntArray, values: FloatArray) -> FloatArray:
     """Slope (n_elem, 6, 2) in 1/m of the mean of a field over elements by their nodes' places.
 

@@ -13,6 +13,7 @@ from lamwright.app.search_slopes import KNOWN_FIGURES, axis_motions, design_slop
 from lamwright.app.search_space import search_space
 from lamwright.app.study_file import read_study
 from lamwright.app.study_task import task_of
+from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.slopes import KeySlope, ShapeFigures, SlopeTable
 from lamwright.postprocess.summary import terminal_figures
 
@@ -101,13 +102,15 @@ def test_a_layout_moves_all_barriers_and_other_keys_are_held():
     assert max(value for key, value in ribs.items() if key.endswith("tangential_rib_mm")) > 0.3
 
 
-def test_a_machine_with_magnets_has_no_slopes_and_says_so(tmp_path):
+def test_a_machine_without_slopes_says_why(tmp_path, monkeypatch):
     """The reason of `slopes`, on one line, and no error."""
-    path = study_file(tmp_path)
-    text = path.read_text(encoding="utf-8").replace("demo_24s4p_arc", "demo_36s4p_magnet")
-    path.write_text(text, encoding="utf-8")
-    study = read_study(path, is_searched=True)
-    task = task_of(study, search_space(study).values((8_000, 3_000)))
-    told = design_slopes(task)
-    assert told.refusal == "slopes: a machine with magnets has none yet; remove [magnet]"
+    why = "no outline\nto follow"
+
+    def refused(*_: object) -> None:
+        raise LamwrightError(why)
+
+    monkeypatch.setattr("lamwright.app.slopes.slopes_of", refused)
+    study = read_study(study_file(tmp_path), is_searched=True)
+    told = design_slopes(task_of(study, search_space(study).values((8_000, 3_000))))
+    assert told.refusal == "no outline to follow"
     assert told.by_figure == {}

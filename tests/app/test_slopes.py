@@ -1,6 +1,7 @@
 """The command `slopes`: what lands in the folder, and that it tells the truth of the design."""
 
 import json
+import re
 from pathlib import Path
 
 import pytest
@@ -75,9 +76,25 @@ def test_a_broken_design_ends_with_2(tmp_path):
     assert not (tmp_path / "out").exists()
 
 
-def test_magnets_have_no_slopes_yet(tmp_path):
-    """Refused in one line: the slope of the remanence's load is not there."""
-    design = DEMO.parent / "demo_36s4p_magnet.toml"
-    result = CliRunner().invoke(main, ["slopes", str(design), "--out", str(tmp_path / "out")])
-    assert result.exit_code == 2
-    assert "slopes: a machine with magnets has none yet" in result.stderr
+@pytest.mark.slow
+def test_magnets_and_skew_have_slopes_too(tmp_path):
+    """Both at once: saliency without the no-load psi_q, a line about the stress, torque by gap.
+
+    More gap takes flux of both kinds: less torque.
+    """
+    source = DEMO.parent / "demo_36s4p_magnet.toml"
+    text = source.read_text().replace(
+        "[rotor]\n", "[rotor]\nskew_steps = 2\nskew_angle_deg = 5.0\n"
+    )
+    text = re.sub(r'"((?:steel|magnet)/)', rf'"{DEMO.parent}/\1', text)
+    design = tmp_path / "skewed.toml"
+    design.write_text(text)
+    out = tmp_path / "out"
+    result = CliRunner().invoke(main, ["slopes", str(design), "--out", str(out)])
+    assert result.exit_code == 0, result.output
+    record = json.loads((out / "slopes.json").read_text())
+    plain = record["psi_d_vs"] * record["i_q_a"] / (record["psi_q_vs"] * record["i_d_a"])
+    assert record["saliency_ratio"] < 0.95 * plain  # psi_q at no load is negative
+    assert any("magnets' load" in line for line in record["left_out"])
+    (gap,) = (row for row in record["keys"] if row["key"] == "rotor.gap_mm")
+    assert gap["change_torque_nm"] < 0.0

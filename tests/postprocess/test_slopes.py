@@ -44,6 +44,19 @@ def table():
     return SlopeTable("invented", *CURRENTS, AT, 0.01, rows, ("stator.x_mm = 0: none",))
 
 
+def test_saliency_of_magnets_changes_without_their_linkage():
+    """psi_q less its no-load value, both of which a key moves: first order, 1e-5."""
+    bare, by_key = -0.05, {"psi_d": -0.3, "psi_q": 0.02, "rib_peak": 0.0, "bare_psi_q": 0.03}
+    at = shape_figures(POLE_PAIRS, *CURRENTS, **PSI, rib_peak=PEAK, bare_psi_q=bare)
+    change = key_slope("rotor.gap_mm", 0.4, POLE_PAIRS, CURRENTS, at, by_key, bare).change
+    small = 1e-6 * step_of("rotor.gap_mm")[0]
+    moved = {name: PSI[name] + small * by_key[name] for name in PSI}
+    after = shape_figures(
+        POLE_PAIRS, *CURRENTS, **moved, rib_peak=PEAK, bare_psi_q=bare + small * 0.03
+    )
+    assert change.saliency == pytest.approx((after.saliency - at.saliency) / 1e-6, rel=1e-5)
+
+
 @pytest.mark.parametrize("key", SLOPES)
 def test_changes_are_those_of_the_figures_themselves(key):
     """A small share of the step put through the figures' own formulas: first order, 1e-5."""

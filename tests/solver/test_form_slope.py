@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from lamwright.solver.form_slope import form_slope, mean_slope
+from lamwright.solver.form_slope import flow_slope, form_slope, mean_slope
 from lamwright.solver.kernel import element_residual, flux_state, quadrature, shape_integrals
 
 STEP = 1e-6  # of elements of size 1: central differences err by 1e-12 times third derivatives
@@ -63,3 +63,16 @@ def test_mean_slope_is_the_derivative_of_the_mean():
 
     slope = mean_slope(NODES, ELEMENTS, values)
     assert slope == pytest.approx(by_difference(mean), abs=1e-8 * np.abs(slope).max())
+
+
+def test_flow_slope_is_the_derivative_of_a_magnet_s_load():
+    """The load c . grad lambda as `magnet` sums it: by the nodes, and linear in c."""
+    dual, along = np.random.default_rng(7).normal(size=(2, 6)), np.array([0.7, -1.9])
+
+    def value(nodes):
+        quad = quadrature(nodes, ELEMENTS)
+        return float(np.einsum("eq,eqdi,ei,d->", quad.weight, quad.grad, dual, along))
+
+    slope, by_c = flow_slope(NODES, ELEMENTS, 3, dual, along)
+    assert slope == pytest.approx(by_difference(value), abs=1e-8 * np.abs(slope).max())
+    assert by_c @ along == pytest.approx(value(NODES), rel=1e-12)
