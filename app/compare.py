@@ -80,6 +80,7 @@ def compare(first: Path, second: Path) -> CompareReport:
         design, drawing = (a, b) if a.kind == "design" else (b, a)
         found = _held(design, drawing)
         pairs = [(f"p{rib.pole} {rib.name}", rib.designed, rib.width) for rib in found.ribs]
+        changes = _drawn_twice(drawing)
         ribs = tuple(
             Pair(name, *((was, now) if a is design else (now, was))) for name, was, now in pairs
         )
@@ -94,7 +95,7 @@ def compare(first: Path, second: Path) -> CompareReport:
         a,
         b,
         _keys(a, b),
-        _pairs(sizes(a), sizes(b)),
+        _sizes(a, b),
         ribs,
         changes,
         gaps,
@@ -114,6 +115,32 @@ def _held(design: Side, drawing: Side) -> "SupplierOutline":
         return supplier_outline(design.section, drawing.path)
     except OutlineError as error:
         raise LamwrightError(f"{drawing.path}: {error}") from None
+
+
+def _drawn_twice(drawing: Side) -> tuple[str, ...]:
+    """One line where lines or arcs stand on each other: a machine would cut them twice."""
+    known: set[tuple[frozenset[complex], complex]] = set()
+    twice = []
+    for edge in drawing.edges:
+        ends = frozenset(_rounded(p) for p in (edge.start, edge.end))
+        key = ends, _rounded(edge.point(0.5))
+        if key in known:
+            twice.append(edge)
+        known.add(key)
+    if not twice:
+        return ()
+    first = place_text(twice[0].start)
+    return (f"{len(twice)} lines and arcs of the drawing stand twice, the first at {first}",)
+
+
+def _rounded(point: complex) -> complex:
+    return complex(round(point.real, 8), round(point.imag, 8))
+
+
+def _sizes(a: Side, b: Side) -> tuple[Pair, ...]:
+    """Sizes that both have: loose lines of a drawing tell neither area nor length."""
+    pairs = _pairs(sizes(a), sizes(b))
+    return tuple(p for p in pairs if p.first is not None and p.second is not None)
 
 
 def _pairs(first: Mapping[str, float], second: Mapping[str, float]) -> tuple[Pair, ...]:

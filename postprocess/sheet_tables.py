@@ -193,6 +193,11 @@ def _notes(job: SheetJob) -> Iterator[str]:
         ' the middle of an end along the rim. "Off q axis": measured at this distance from the'
         " q axis, where a rib stands on it."
     )
+    if not asked.outer_fit:
+        yield (
+            "Fit of the outer diameter: not given; agree before tooling, as it makes the air gap of"
+            f" {number(job.design.rotor.gap_mm)} mm."
+        )
     yield from sheet_notes(asked)
     poles = job.section.poles
     yield (

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 from click.testing import CliRunner
-from supplier_forms import FORMS
+from supplier_forms import FORMS, drawing_of, edges_mm
 
 from lamwright.app.cli import main
 from lamwright.app.compare import compare
@@ -68,6 +68,17 @@ def test_a_design_and_a_drawing_are_laid_on_each_other(tmp_path):
     told = run(DESIGNS / "demo_36s6p_arc.toml", back)
     assert told.exit_code == 2
     assert told.output.count("\n") == 1
+
+
+def test_a_contour_drawn_twice_is_named(tmp_path):
+    """Though the shape is the design's: a machine would cut it twice."""
+    edges = edges_mm(cross_section(read_design(DEMO)))
+    drawing_of([*edges, *edges[:3]]).saveas(tmp_path / "twice.dxf")
+    report = compare(DEMO, tmp_path / "twice.dxf")
+    assert not report.is_same
+    assert report.changes[0].startswith("3 lines and arcs of the drawing stand twice, the first at")
+    drawing_of(edges).saveas(tmp_path / "once.dxf")
+    assert compare(DEMO, tmp_path / "once.dxf").is_same
 
 
 def test_two_drawings_are_compared_about_their_axes(tmp_path):

@@ -85,7 +85,7 @@ def test_the_hash_follows_the_drawing(tmp_path, monkeypatch):
         write_form(name, sheet(read_design(DEMO)), tmp_path)
         hashes.add(design_hash(read_design(design_with(tmp_path, STATOR)), ()))
     assert len(hashes) == 2
-    monkeypatch.setattr("lamwright.geometry.design_outlines.read_pieces", None)
+    monkeypatch.setattr("lamwright.geometry.dxf_reader.read_pieces", None)
     assert design_hash(read_design(design_with(tmp_path, STATOR)), ()) in hashes
 
 
