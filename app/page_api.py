@@ -59,15 +59,22 @@ def page_record(page: Page) -> Record:
         "version": version(),
         "folder": page.folder.root.name,
         "start": page.start,
-        "designs": [{"path": o.path, "name": o.name} for o in listed if o.kind == "design"],
+        "designs": [
+            *({"path": o.path, "name": o.name} for o in listed if o.kind == "design"),
+            *({"path": name, "name": "not saved"} for name in page.folder.unsaved()),
+        ],
         "studies": [{"path": o.path, "name": o.name} for o in listed if o.kind == "study"],
     }
 
 
 def design_record(page: Page, path: str) -> Record:
-    """A design file's text, and its draft where that says something else."""
-    text, sha256 = page.folder.text(path)
+    """A design file's text, and its draft where that says something else.
+
+    One that is a draft only, as a study's design before it is saved, has no text and no SHA-256.
+    """
     draft = page.folder.draft(path)
+    is_new = draft is not None and not page.folder.design_file(path).exists()
+    text, sha256 = ("", None) if is_new else page.folder.text(path)
     kept: Record | None = None
     if draft is not None and draft.text != text:
         kept = {"text": draft.text, "sha256": draft.sha256, "is_stale": draft.sha256 != sha256}

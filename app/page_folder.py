@@ -296,6 +296,17 @@ class Folder:
         except (OSError, ValueError, KeyError, TypeError):
             return None
 
+    def unsaved(self) -> list[str]:
+        """Names of drafts that were never a file."""
+        found = []
+        for path in sorted((self.cache / DRAFTS).glob("*.json")):
+            with contextlib.suppress(OSError, ValueError, KeyError, TypeError, AttributeError):
+                record = json.loads(path.read_text(encoding="utf-8"))
+                name, is_new = str(record["name"]), record["sha256"] is None
+                if is_new and self._draft(name) == path and not self.design_file(name).exists():
+                    found.append(name)
+        return found[:MOST_LISTED]
+
     def discard(self, name: str) -> None:
         """Drop the draft of a design file."""
         self._draft(name).unlink(missing_ok=True)

@@ -42,7 +42,7 @@ export class Design extends Teller {
     this.#take(record);
     this.#history.push(this.text, "open");
     this.tell("opened");
-    if (this.isChanged) await this.#drawFile();
+    if (this.savedText && this.isChanged) await this.#drawFile();
     await this.check();
   }
 
@@ -72,13 +72,7 @@ export class Design extends Teller {
     }
     await this.#settled;
     const [path, before] = [this.path, this.text];
-    let record;
-    try {
-      record = await get("/api/design", { path });
-    } catch (error) {
-      if (!(error instanceof Gone) && this.sha256 === null) return; // not saved yet: no file
-      throw error;
-    }
+    const record = await get("/api/design", { path });
     if (path !== this.path || before !== this.text) return;
     this.#take(record);
     if (this.text !== before) {
@@ -210,15 +204,17 @@ export class Design extends Teller {
     tellChanged(path);
   }
 
-  // Drop the draft for what is in the file; one step back undoes it.
+  // Drop the draft for what is in the file; one step back undoes it. False where there is no file.
   async discard() {
     await this.#settled;
     await post("/api/discard", { path: this.path });
+    if (!this.sha256) return false;
     const record = await get("/api/design", { path: this.path });
     this.#take(record);
     this.#history.push(this.text, "back to the file");
     tellChanged(this.path);
     await this.check();
+    return true;
   }
 
   #queue(work) {

@@ -137,7 +137,7 @@ export class Field {
     if (value === null) return;
     const { x, y } = this.#viewport.toStage(at.x, at.y);
     Object.assign(this.#hint.style, { left: `${x + 16}px`, top: `${y + 18}px` });
-    this.#hint.classList.toggle("is-left", x > this.#viewport.size.width - 190);
+    this.#hint.classList.toggle("is-left", x > this.#viewport.size.width - 230);
     this.#hint.classList.toggle("is-above", y > this.#viewport.size.height - 44);
   }
 }

@@ -48,7 +48,7 @@ export class Files {
     setText(state, isChanged ? (sha256 ? "draft, not saved" : "new, not saved") : "saved");
     set(state, { "data-changed": String(isChanged) });
     byId("save").disabled = !isChanged;
-    byId("discard").disabled = !isChanged || !sha256;
+    byId("discard").disabled = !isChanged;
     document.title = `${isChanged ? "\u2022 " : ""}${path ?? ""} \u2013 Lamwright`;
     if (isStale) {
       this.#line.set("stale", "The file has changed on the disk since this draft began.", [
@@ -92,10 +92,20 @@ export class Files {
   }
 
   async discard() {
-    if (!this.#design.isChanged || !this.#design.sha256) return;
+    const { isChanged, sha256, path } = this.#design;
+    if (!isChanged) return;
+    if (!sha256) {
+      const answer = await ask("Drop this design?", { lines: [`${path} was never saved: nothing of it is left then.`], buttons: [{ value: "drop", text: "Drop it" }] });
+      if (!answer) return;
+    }
     try {
-      await this.#design.discard();
-      this.#say("back to the file; undo brings the draft again");
+      if (await this.#design.discard()) {
+        this.#say("back to the file; undo brings the draft again");
+      } else {
+        [...this.#choice.options].find((one) => one.value === path)?.remove();
+        if (this.#choice.options.length) await this.#open(this.#choice.options[0].value);
+        this.#say(`${path} dropped`);
+      }
     } catch (error) {
       this.#fault(error);
     }

@@ -32,6 +32,17 @@ def chromium() -> Iterator[Any]:
 
 
 @pytest.fixture(scope="session")
+def without_webgl(chromium: Any) -> Iterator[Any]:
+    """The same browser on a machine that has no WebGL."""
+    browser = chromium.browser_type.launch(
+        executable_path=next(found for name in BROWSERS if (found := shutil.which(name))),
+        args=[*ARGUMENTS, "--disable-3d-apis"],
+    )
+    yield browser
+    browser.close()
+
+
+@pytest.fixture(scope="session")
 def served_folder(tmp_path_factory: pytest.TempPathFactory) -> Path:
     folder = tmp_path_factory.mktemp("page") / "designs"
     folder.mkdir()
@@ -66,10 +77,14 @@ def opened(chromium: Any, served: Served) -> Iterator[Any]:
     contexts: dict[str, Any] = {}
 
     def opened(
-        session: str = "one", size: tuple[int, int] = WIDE, scheme: str = "light", **options: Any
+        session: str = "one",
+        size: tuple[int, int] = WIDE,
+        scheme: str = "light",
+        browser: Any = chromium,
+        **options: Any,
     ) -> Watched:
         if session not in contexts:
-            contexts[session] = chromium.new_context(
+            contexts[session] = browser.new_context(
                 viewport={"width": size[0], "height": size[1]}, color_scheme=scheme, **options
             )
         page = contexts[session].new_page()

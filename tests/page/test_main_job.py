@@ -135,37 +135,3 @@ def test_names_are_text(opened: Opened, served: Served):
     assert name in window.by_id("title-block").inner_text()
     assert window.page.locator("img").count() == 0
     assert window.faults == []
-
-
-@pytest.mark.slow
-def test_a_verdict_comes_and_fields_are_drawn(opened: Opened):
-    """Figures with limits, pictures with many colours, a value under the pointer."""
-    window = opened()
-    window.has_verdict()
-    assert window.page.locator("#limits tbody tr").count() == 4
-    assert window.page.locator("#torque .curve").count() == 1
-    for picture in ("b", "a", "stress"):
-        window.page.locator(f"input[name=picture][value={picture}]").check()
-        window.page.wait_for_selector("#field:not([hidden])")
-        colours: Any = window.page.evaluate(COLOURS)
-        assert colours > 40, picture
-    box = window.by_id("stage").bounding_box()
-    window.page.mouse.move(box["x"] + box["width"] * 0.5, box["y"] + box["height"] * 0.7)
-    window.until(lambda: "MPa" in window.by_id("field-hint").inner_text())
-    assert window.faults == []
-
-
-# How many colours a picture of the field has, read back in the frame that draws it.
-COLOURS = """() => new Promise(done => {
-  document.getElementById('zoom-in').click(); document.getElementById('zoom-fit').click();
-  requestAnimationFrame(() => requestAnimationFrame(() => {
-    const field = document.getElementById('field');
-    document.getElementById('zoom-fit').click();
-    requestAnimationFrame(() => {
-      const copy = new OffscreenCanvas(200, 200).getContext('2d');
-      copy.drawImage(field, 0, 0, 200, 200);
-      const bytes = new Uint32Array(copy.getImageData(0, 0, 200, 200).data.buffer);
-      done(new Set(bytes).size);
-    });
-  }));
-})"""
