@@ -19,6 +19,7 @@ from .version import version
 
 LONGEST_KEY = 200
 MOST_CHANGES = 200
+LARGEST_CHANGE = 1e300  # JSON's 1e400 reads as infinite
 
 
 class BadRequest(LamwrightError, ValueError):
@@ -132,6 +133,12 @@ def json_object(data: bytes | str) -> dict[str, object]:
         raise BadRequest("not JSON; accepted an object") from None
     if not isinstance(body, dict):
         raise BadRequest("not a JSON object")
+    escape = "\\u"  # which halves of characters need
+    if escape.encode() in data if isinstance(data, bytes) else escape in data:
+        try:
+            json.dumps(body, ensure_ascii=False).encode()
+        except ValueError:
+            raise BadRequest("a text holds half a character; accepted Unicode") from None
     return body
 
 
@@ -182,6 +189,7 @@ def _changes(body: Mapping[str, object]) -> dict[str, Value]:
         raise BadRequest("changes: accepted up to 200 values by their keys")
     for key, value in changes.items():
         is_value = isinstance(value, str | int | float) and not isinstance(value, bool)
+        is_value = is_value and (isinstance(value, str) or abs(value) < LARGEST_CHANGE)
         if len(key) > LONGEST_KEY or not is_value:
             raise BadRequest("changes: accepted numbers and file names by the design's keys")
     return changes

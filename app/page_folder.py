@@ -81,8 +81,9 @@ class Folder:
     def cache(self) -> Path:
         """Where drafts and results are kept; made where it is missing."""
         cache = self.root / CACHE
-        if cache.is_symlink():
-            raise Outside(f"{CACHE}: is a link; remove it")
+        for place in (cache, *(cache / one for one in (DRAFTS, "coarse", "full"))):
+            if place.is_symlink():
+                raise Outside(f"{place.relative_to(self.root)}: is a link; remove it")
         try:
             cache.mkdir(exist_ok=True)
         except OSError as error:
@@ -181,7 +182,9 @@ class Folder:
             if not isinstance(file, str):
                 continue
             with contextlib.suppress(OSError, ValueError, RuntimeError):
-                if (path.parent / file).resolve().is_relative_to(self.root):
+                # With its links followed, and as `mirrored` copies it, by its parts.
+                places = (path.parent / file).resolve(), Path(os.path.normpath(path.parent / file))
+                if all(place.is_relative_to(self.root) for place in places):
                     continue
             raise Outside(
                 f"{table}.{key} = {shown(file)}: outside the page's folder; start the page with "

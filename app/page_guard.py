@@ -14,6 +14,7 @@ read, else when one byte too many has come. Neither keeps more than the limit.
 import asyncio
 import hmac
 import json
+import re
 import secrets
 from collections.abc import Awaitable, Callable, MutableMapping
 from dataclasses import dataclass
@@ -124,7 +125,7 @@ class Guard:
             if len(tokens) != 1 or not self._door.opens(tokens[0]):
                 return 403, "refused: not the token of this start; open the address that it printed"
         stated = _values(headers, b"content-length")
-        if any(not one.isdigit() or int(one) > LARGEST_BODY for one in stated):
+        if any(not re.fullmatch(r"[0-9]{1,12}", one) or int(one) > LARGEST_BODY for one in stated):
             return 413, f"refused: accepted bodies up to {LARGEST_BODY} bytes"
         return None
 

@@ -227,7 +227,7 @@ class Jobs:
                 self._begin_coarse(job)
             else:
                 self._begin_full(job)
-        except (OSError, LamwrightError) as error:
+        except (OSError, ValueError, LamwrightError) as error:
             self._end(job, "failed", str(error))
             return
         timer = threading.Timer(LIMIT_S[effort], self._over_time, (job.id,))

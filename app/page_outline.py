@@ -4,6 +4,7 @@ Measured on demo_24s4p_arc, one core: see app/README.md, "The page". What takes 
 what would fit in place of a value that does not, is only made where it is asked for.
 """
 
+import math
 import re
 import time
 import tomllib
@@ -131,14 +132,19 @@ def range_record(folder: Folder, path: str, text: str, key: str) -> Record:
 
 
 def key_records(text: str) -> list[Record]:
-    """Every number that a text states, with its key, unit and line; none if it is not TOML."""
+    """Every number that a text states, with its key, unit and line; none if it is not TOML.
+
+    Neither infinite ones nor those that are none: JSON cannot say them.
+    """
     try:
-        data, lines = tomllib.loads(text), key_lines(text)
+        lines = key_lines(text)
+        numbers = list(_numbers("", tomllib.loads(text)))
     except (ValueError, RecursionError):
         return []
     return [
         {"key": key, "value": value, "unit": unit_of(key), "line": line_of(lines, key_steps(key))}
-        for key, value in _numbers("", data)
+        for key, value in numbers
+        if abs(value) < math.inf
     ]
 
 

@@ -213,9 +213,11 @@ def serve(page: Page, door: Door, own: socket.socket) -> None:
 def _run(app: Guard, own: socket.socket) -> None:
     import uvicorn
 
+    from .page_patience import patient_protocol
+
     config = uvicorn.Config(
         app,
-        http="h11",
+        http=patient_protocol(),
         ws="websockets-sansio",
         ws_max_size=1 << 20,
         ws_max_queue=8,

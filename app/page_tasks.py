@@ -195,7 +195,7 @@ def ledger_record(page: Page, query: Mapping[str, str]) -> Record:
     since = query.get("since", "0")
     if not (since.isascii() and since.isdigit()) or len(since) > 12:
         raise BadRequest("since: accepted a whole number from 0")
-    folder = page.folder.file(query["folder"])
+    folder = _ledger_folder(page.folder, query["folder"])
     none: Record = {"study": None, "rows": [], "total": 0, "planned": None, "is_written": False}
     if not (folder / LEDGER_FILE).is_file():
         return none
@@ -244,13 +244,20 @@ def pick(page: Page, body: Mapping[str, object]) -> Record:
     from .ledger import Ledger
 
     folder, number = text_of(body, "folder"), whole_of(body, "row")
-    with Ledger.read(page.folder.file(folder)) as ledger:
+    with Ledger.read(_ledger_folder(page.folder, folder)) as ledger:
         row, design = ledger.row(number), ledger.design(number)
         name = ledger.study.name
     study = maybe_text_of(body, "study")
     path = None if study is None else _free_name(page.folder, study, number)
     values = dict(row.values)
     return {"text": design.text, "values": values, "study": name, "row": number, "path": path}
+
+
+def _ledger_folder(folder: Folder, name: str) -> Path:
+    """The folder of a ledger whose file is no link that leads outside."""
+    from .ledger_file import LEDGER_FILE
+
+    return folder.file(f"{folder.name_of(folder.file(name))}/{LEDGER_FILE}").parent
 
 
 def _free_name(folder: Folder, study: str, number: int) -> str:

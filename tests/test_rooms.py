@@ -40,7 +40,7 @@ OWNERS = {
     "pymoo": ("app/search*.py",),
     "moocore": ("app/search*.py",),
     "starlette": ("app/page_*.py",),
-    "uvicorn": ("app/page_server.py",),
+    "uvicorn": ("app/page_server.py", "app/page_patience.py"),
     "click": ("app/*.py",),
     "rich": ("app/*.py",),
     "pydantic": ("geometry/design*.py", "app/study_tables.py"),

@@ -30,7 +30,7 @@ export class Keys {
       if (!part) continue;
       const own = keys.filter((key) => key.startsWith("Ctrl") || byId("single-keys").checked);
       const named = own.map((key) => upper(key).replace("Ctrl", "Control").replace(/^\+$/, "Plus"));
-      set(document.querySelector(part), { "aria-keyshortcuts": named.join(" ") || null });
+      for (const node of document.querySelectorAll(part)) set(node, { "aria-keyshortcuts": named.join(" ") || null });
     }
   }
 

@@ -239,7 +239,7 @@ const act = {
   releases: () => (byId("tab-release").hidden ? say("nothing was released since the page was started") : tabs.choose("release", true)),
   study: () => { tabs.choose("study"); byId("study").focus(); },
   points: () => { tabs.choose("study"); studies.focusPoints(); },
-  axes: () => { tabs.choose("study"); byId("scatter-x").focus(); },
+  axis: (id) => { tabs.choose("study"); byId(id).focus(); },
   load: () => { tabs.choose("study"); studies.load(); },
   keep,
   drop: () => kept.drop(),

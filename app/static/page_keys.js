@@ -35,7 +35,7 @@ export function pageKeys(keys, act, host) {
   const verdict = "Verdict and releases";
   keys.add(verdict, "v", "verdict", () => act.tab("verdict"), "#tab-verdict");
   keys.add(verdict, "Ctrl+Enter", "full verdict", act.full, "#full-begin");
-  keys.add(verdict, "x", "stop what the shown tab tells of: full verdict, sweep or release", act.stop, "#full-stop");
+  keys.add(verdict, "x", "stop what the shown tab tells of: full verdict, sweep or release", act.stop, "#full-stop, #sweep-stop");
   keys.add(verdict, "m", "go to the files of the full verdict", act.files, "#files");
   keys.add(verdict, "t", "design file's text", () => act.tab("text"), "#tab-text");
   keys.add(verdict, "e", "releases", act.releases, "#tab-release");
@@ -44,7 +44,8 @@ export function pageKeys(keys, act, host) {
   keys.add(study, "j", "choose another study", act.study, "#study");
   keys.add(study, "w", "sweep the chosen study", act.sweep, "#sweep-begin");
   keys.add(study, "y", "go to its designs; arrow keys go along the front", act.points, "#scatter");
-  keys.add(study, "h", "choose what is drawn across; Tab to what is drawn up", act.axes, "#scatter-x");
+  keys.add(study, "h", "choose what is drawn across", () => act.axis("scatter-x"), "#scatter-x");
+  keys.add(study, "i", "choose what is drawn up", () => act.axis("scatter-y"), "#scatter-y");
   keys.add(study, "u", "load the chosen design", act.load, "#row-load");
   keys.add("Page", "?", "these keys", act.help, "#help-open");
   keys.list(host);

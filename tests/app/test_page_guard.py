@@ -170,6 +170,63 @@ def test_malformed_bodies_are_told_in_one_line(client: TestClient, body: bytes):
     assert "\n" not in answer.json()["error"]
 
 
+HALF = chr(92) + "ud800"  # half a character, as JSON can escape it
+
+
+@pytest.mark.parametrize("name", ["outline", "save", "draft", "ranges", "jobs"])
+def test_half_a_character_is_no_text(client: TestClient, name: str):
+    """JSON can escape what UTF-8 cannot hold: refused, no traceback, nothing kept."""
+    body = '{"path": "x.toml", "text": "HALF", "want": "coarse", "key": "k", "sha256": null}'
+    answer = client.post(f"/api/{name}", content=body.replace("HALF", HALF).encode())
+    assert (answer.status_code, "half a character" in answer.json()["error"]) == (422, True)
+    assert client.get("/api/page").json()["designs"] == [{"path": DEMO, "name": "demo 24/4 arc"}]
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "gap_mm = inf",
+        "gap_mm = nan",
+        "gap_mm = " + "9" * 4000,
+        "a = " + "[" * 50000,
+        ".".join("a" * 3000) + " = 1",
+    ],
+    ids=["inf", "nan", "digits", "brackets", "dots"],
+)
+def test_odd_texts_have_findings(client: TestClient, text: str):
+    """What TOML can say and JSON cannot, and what is nested beyond all use, is a finding."""
+    design = client.get("/api/design", params={"path": DEMO}).json()["text"]
+    odd = design.replace("gap_mm = 0.4", text) if text.startswith("gap") else text
+    answer = client.post("/api/outline", json={"path": DEMO, "text": odd})
+    assert (answer.status_code, answer.json()["ok"]) == (200, False)
+    assert answer.json()["findings"]
+    body = '{"path": "x.toml", "text": "a = 1", "changes": {"a": 1e400}}'
+    assert client.post("/api/outline", content=body.encode()).status_code == 422
+
+
+def test_links_in_a_received_folder_lead_nowhere(tmp_path: Path):
+    """Of the page's own folders, of a ledger, and of a card's way by a link and back."""
+    (tmp_path / "inner" / "a" / "b").mkdir(parents=True)
+    inner = tmp_path / "inner"
+    client = client_of(demo_folder(inner))
+    text = client.get("/api/design", params={"path": DEMO}).json()["text"]
+    (inner / "way").symlink_to(inner / "a" / "b")
+    roundabout = text.replace("steel/demo_050.toml", "way/../../steel/demo_050.toml")
+    answer = client.post("/api/jobs", json={"want": "full", "path": DEMO, "text": roundabout})
+    assert answer.status_code == 403
+    (inner / "swept").mkdir()
+    (tmp_path / "ledger.sqlite").write_bytes(b"secret")
+    (inner / "swept" / "ledger.sqlite").symlink_to(tmp_path / "ledger.sqlite")
+    assert client.get("/api/ledger?folder=swept").status_code == 403
+    assert client.post("/api/pick", json={"folder": "swept", "row": 1}).status_code == 403
+    (tmp_path / "elsewhere").mkdir()
+    (inner / ".lamwright-page").mkdir(exist_ok=True)
+    (inner / ".lamwright-page" / "drafts").symlink_to(tmp_path / "elsewhere")
+    body = {"path": DEMO, "text": text, "sha256": None}
+    assert client.post("/api/draft", json=body).status_code == 403
+    assert list((tmp_path / "elsewhere").iterdir()) == []
+
+
 def test_names_are_data(tmp_path: Path):
     """A script in a design's name, a note or a file's name comes back as JSON text alone."""
     script = "<script>alert(1)</script>"
@@ -197,6 +254,7 @@ def test_every_answer_has_the_policy(client: TestClient):
         assert "frame-ancestors 'none'" in policy
         assert answer.headers["x-content-type-options"] == "nosniff"
         assert answer.headers["referrer-policy"] == "no-referrer"
+        assert answer.headers["cache-control"] == "no-store"
 
 
 def test_the_token_is_new_at_every_start():

@@ -248,6 +248,38 @@ def test_the_socket_tells_a_verdict(coarse):
         assert socket.receive_json()["result"] == result
 
 
+def test_a_look_begins_nothing(coarse):
+    """The state of a full verdict that nobody has asked for is none; of no design at all too."""
+    page, _, result, _ = coarse
+    jobs = Jobs(page.folder)
+    client = client_of(page, jobs)
+    with client.websocket_connect(SOCKET) as socket:
+        socket.send_json({"token": client.headers["x-page-token"]})
+        socket.receive_json()
+        for due in (result["design_hash"], "../../x"):
+            socket.send_json({"look": due, "ticket": 3})
+            told = socket.receive_json()
+            assert (told["kind"], told["ticket"], told["effort"]) == ("job", 3, "full")
+            assert told["state"] == "none"
+    assert jobs._hired is None
+
+
+def test_an_unswept_study_has_an_empty_ledger(page: Page):
+    """No error: the page asks before it is swept. A picked row's name is free, beside the base."""
+    from lamwright.app.page_tasks import _free_name
+
+    client = client_of(page)
+    answer = client.get("/api/ledger", params={"folder": "study-sweep"})
+    assert answer.status_code == 200
+    assert answer.json()["study"] is None
+    assert (answer.json()["rows"], answer.json()["total"]) == ([], 0)
+    (page.folder.root / "studies").mkdir()
+    (page.folder.root / "studies" / "one.toml").write_text(f'base = "../{DEMO}"')
+    assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7.toml"
+    (page.folder.root / "demo_24s4p_arc-row7.toml").write_text("")
+    assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7-2.toml"
+
+
 FRAMES = [
     "",
     "{",
@@ -261,6 +293,8 @@ FRAMES = [
     '{"want": "coarse", "ticket": true, "path": "a.toml", "text": ""}',
     '{"want": "coarse", "ticket": 1, "path": 5, "text": ""}',
     '{"watch": "../../x"}',
+    '{"look": 5, "ticket": 1}',
+    '{"look": "x"}',
     '{"nothing": 1}',
     " " * ((1 << 20) + 1),
     b"\x00\x01",

@@ -121,6 +121,73 @@ def test_a_frame_beyond_the_bound_closes_the_socket(live):
     assert page.own_memory() - before < 20_000
 
 
+FRAMES = {
+    "not masked": b"\x81\x02hi",
+    "reserved opcode": b"\x83\x80\0\0\0\0",
+    "reserved bits": b"\xf1\x80\0\0\0\0",
+    "2^63 bytes": b"\x81\xff\x80\0\0\0\0\0\0\0\0\0\0\0",
+    "fragmented ping": b"\x09\x80\0\0\0\0",
+    "long ping": b"\x89\xfe\x01\x00\0\0\0\0" + b"x" * 256,
+    "no continuation": b"\x80\x80\0\0\0\0",
+    "not UTF-8": b"\x81\x82\0\0\0\0\xff\xfe",
+    "end code of one byte": b"\x88\x81\0\0\0\0\x03",
+    "noise": bytes(range(128, 256)) * 40,
+}
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", FRAMES)
+def test_malformed_frames_end_the_line(live, name: str):
+    """What RFC 6455 forbids on the wire: that socket ends, the server goes on."""
+    page, _ = live
+    key = "Connection: Upgrade\nUpgrade: websocket\nSec-WebSocket-Version: 13\n"
+    key += "Sec-WebSocket-Key: dGhlIHNhbXBsZSBub25jZQ==\n"
+    host = f"Host: {page.host}\nOrigin: http://{page.host}\n"
+    with _raw(page, f"GET /api/work HTTP/1.1\n{host}{key}\n") as line:
+        assert line.recv(4096).startswith(b"HTTP/1.1 101")
+        line.sendall(FRAMES[name])
+        line.settimeout(4.0)  # before the 5 s that a token may take
+        with contextlib.suppress(ConnectionError):
+            while line.recv(4096):
+                pass
+    assert page.ask("/api/page")["start"] == DEMO
+
+
+@pytest.mark.slow
+def test_who_is_slow_holds_no_place(live):
+    """A body that trickles is answered by 408; a head that does not end, and silence, are cut."""
+    page, _ = live
+    slow = _raw(page, HEAD.format(host=page.host, token=page.token) + "Content-Length: 999\n\n{")
+    half = _raw(page, f"GET /api/page HTTP/1.1\nHost: {page.host}\n")
+    silent = socket.create_connection(("127.0.0.1", page.port))
+    lines = (slow, half, silent)
+    until = time.monotonic() + 60.0
+    while time.monotonic() < until:
+        with contextlib.suppress(OSError):
+            slow.sendall(b" ")
+            half.sendall(b"X-More: 1\r\n")
+        for line in lines:
+            line.setblocking(False)
+        ends = []
+        for line in lines:
+            try:
+                ends.append(line.recv(4096, socket.MSG_PEEK) is not None)
+            except BlockingIOError:
+                ends.append(False)
+            except OSError:
+                ends.append(True)
+        if all(ends):
+            break
+        time.sleep(0.5)
+    assert ends == [True, True, True]
+    slow.setblocking(True)
+    with contextlib.suppress(ConnectionError):
+        assert b"408" in slow.recv(4096).split(b"\r\n")[0]
+    for line in lines:
+        line.close()
+    assert page.ask("/api/page")["start"] == DEMO
+
+
 @pytest.mark.slow
 def test_a_killed_server_loses_nothing(tmp_path: Path):
     """Killed during a full verdict: nothing of it runs on, the draft is there, the job is not.

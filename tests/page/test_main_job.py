@@ -2,7 +2,6 @@
 
 import tomllib
 from collections.abc import Callable
-from typing import Any
 
 import pytest
 from page_windows import DEMO, Served, Watched

@@ -32,7 +32,11 @@ def faults_of(window: Watched, axe: str) -> list[str]:
 @pytest.mark.slow
 @pytest.mark.parametrize("scheme", ["light", "dark"])
 def test_axe_finds_nothing_serious(opened: Opened, served: Served, axe: str, scheme: str):
-    """In each part of the page: verdict with a comparison, text, a broken outline, study, keys."""
+    """In each part of the page, dialogs and failures too.
+
+    Verdict with a comparison, field, text, a broken outline, study, keys, saving, a failing design,
+    its full verdict, its release and how that was refused.
+    """
     window = opened(scheme, scheme=scheme)
     keys = window.page.keyboard
     window.has_verdict()
@@ -54,6 +58,33 @@ def test_axe_finds_nothing_serious(opened: Opened, served: Served, axe: str, sch
     assert faults_of(window, axe) == []
     keys.press("?")
     assert faults_of(window, axe) == []
+    keys.press("Escape")
+    keys.press("Control+z")
+    window.page.wait_for_selector("#findings-head[data-passes=true]")
+    keys.press("Control+Shift+S")
+    window.page.wait_for_selector("dialog[open]")
+    assert faults_of(window, axe) == []
+    keys.press("Escape")
+    keys.press("t")
+    failing = window.shown_text().replace("least_torque_nm = ", "least_torque_nm = 9")
+    window.by_id("text").fill(failing)
+    keys.press("Escape")
+    keys.press("v")
+    window.page.wait_for_selector("#limits:not(.is-old) tr.missed", timeout=120_000)
+    assert faults_of(window, axe) == []
+    keys.press("Control+Enter")
+    window.until(
+        lambda: window.by_id("verdict-line").inner_text().startswith("Full verdict in"), 240
+    )
+    assert faults_of(window, axe) == []
+    keys.press("Control+s")
+    window.is_saved()
+    keys.press("r")
+    window.page.wait_for_selector("dialog[open]")
+    assert faults_of(window, axe) == []
+    keys.press("Enter")
+    window.until(lambda: "was not released" in window.by_id("releases").inner_text(), 240)
+    assert faults_of(window, axe) == []
 
 
 @pytest.mark.slow
@@ -70,31 +101,28 @@ def test_nothing_is_cut_off(opened: Opened, size: tuple[int, int]):
 
 
 @pytest.mark.slow
-def test_every_button_has_a_key(opened: Opened):
-    """Each action on the page stands in the list of keys too, or is reached from one that does."""
+def test_every_action_has_a_key(opened: Opened):
+    """Whatever can be pressed or chosen names its key, each key is one action's and is listed.
+
+    Left out: what a list holds many of (points, rows, files, findings), which a key leads to.
+    """
     window = opened()
-    listed = window.by_id("help-keys").locator("dd").all_text_contents()
-    for part in (
-        "undo",
-        "redo",
-        "save the",
-        "save under",
-        "back to",
-        "release",
-        "keep this",
-        "end the comparison",
-        "the rotor alone",
-        "whole drawing",
-        "larger",
-        "smaller",
-        "full verdict",
-        "stop the full",
-        "these keys",
-        "light, dark",
-        "sweep",
-        "marks",
-    ):
-        assert any(part in line for line in listed), part
+    keys = window.page.evaluate(
+        "[...document.querySelectorAll('body > :not(dialog) :is(button, select, input, [role=tab])"
+        ":not(.row, .file, .finding, #text, .readout-value)')]"
+        ".map(one => [one.id || one.value, one.getAttribute('aria-keyshortcuts')])"
+    )
+    assert len(keys) > 25
+    assert [name for name, key in keys if not key] == []
+    # X stops what the shown tab tells of.
+    named = [key for name, own in keys if name != "sweep-stop" for key in own.split(" ")]
+    assert len(set(named)) == len(named)
+    listed = window.page.locator("#help-keys dt").all_text_contents()
+    for own in (key for _, key in keys if key):
+        first = own.split(" ")[0].replace("Control", "Ctrl").replace("Plus", "+")
+        assert "".join(first.split("+") if first != "+" else "+") in listed, own
+    for part in ("#findings-list", "#files", "#scatter", "#stage", ".probe", "#readout"):
+        assert window.page.locator(part).get_attribute("aria-keyshortcuts"), part
 
 
 @pytest.mark.slow

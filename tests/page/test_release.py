@@ -1,0 +1,90 @@
+"""A release from the page, as its user makes it: where it goes, and why one is refused."""
+
+import json
+import shutil
+from collections.abc import Callable
+
+import pytest
+from page_windows import DEMO, Served, Watched
+
+Opened = Callable[..., Watched]
+pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+PACKAGE = DEMO.replace(".toml", "-release")
+
+
+def release(window: Watched, out: str | None = None, *, despite: bool = False) -> str:
+    """Release by the dialog and wait for its end; what the page says of it."""
+    window.page.keyboard.press("r")
+    window.page.wait_for_selector("dialog[open]")
+    if out is not None:
+        window.by_id("q-out").fill(out)
+    if despite:
+        window.by_id("q-despite").check()
+    window.page.locator("#question button.main").click()
+    window.page.wait_for_selector("#panel-release:not([hidden])")
+    first = window.page.locator("#releases > li").first
+    window.until(lambda: "released" in first.inner_text(), 240)
+    said: str = first.inner_text()
+    return said
+
+
+def test_a_release_says_where_it_went(opened: Opened, served: Served):
+    """Its folder and number; the same design again replaces it by the same package.
+
+    A folder's name that is a file's is refused in one line, one that leads outside at once, and
+    what stands there stays.
+    """
+    shutil.rmtree(served.folder / PACKAGE, ignore_errors=True)
+    window = opened()
+    said = release(window)
+    package = served.folder / PACKAGE
+    manifest = json.loads((package / "manifest.json").read_text(encoding="utf-8"))
+    assert str(package) in said
+    assert f"{len(manifest['files']) + 1} files" in said
+    number = said.split("as package ")[1].split("\n")[0].strip()
+    assert len(number.replace(" ", "")) == 16
+    again = release(window)
+    assert f"as package {number}" in again
+    assert window.page.locator("#releases > li").count() == 2
+    (served.folder / "taken").write_text("mine", encoding="utf-8")
+    said = release(window, "taken")
+    assert "was not released" in said
+    assert "taken: is a file; accepted a folder, new or existing" in said
+    assert (served.folder / "taken").read_text(encoding="utf-8") == "mine"
+    assert window.faults == []
+    window.page.keyboard.press("r")
+    window.by_id("q-out").fill("../outside")
+    window.page.keyboard.press("Enter")
+    window.page.wait_for_selector("#state-line[data-state=fault]")
+    assert "outside the page's folder" in window.by_id("state-line").inner_text()
+    assert not (served.folder.parent / "outside").exists()
+    window.page.reload()
+    window.page.wait_for_selector(".handle")
+    window.page.keyboard.press("e")
+    assert window.page.locator("#releases > li").count() == 3
+
+
+def test_a_design_that_misses_limits_is_released_by_wish_only(opened: Opened, served: Served):
+    """The changed design is saved first; what was refused says how it could be had all the same."""
+    window = opened()
+    window.page.keyboard.press("t")
+    window.by_id("text").fill(served.text().replace("least_torque_nm = ", "least_torque_nm = 9"))
+    window.is_draft()
+    window.page.keyboard.press("Escape")
+    window.page.keyboard.press("r")
+    window.page.wait_for_selector("dialog[open]")
+    assert "not saved" in window.by_id("question").inner_text()
+    window.page.keyboard.press("Enter")
+    window.until(lambda: window.by_id("q-out").count() == 1)
+    window.is_saved()
+    window.page.keyboard.press("Escape")
+    said = release(window, "failing")
+    assert "limits.least_torque_nm" in said
+    assert '"even if limits are missed"' in said
+    assert "--" not in said
+    assert list((served.folder / "failing").iterdir()) == []
+    said = release(window, "failing", despite=True)
+    assert "as package" in said
+    assert "NOT PASSED" in said
+    manifest = json.loads((served.folder / "failing" / "manifest.json").read_text(encoding="utf-8"))
+    assert "NOT PASSED" in json.dumps(manifest) or manifest["passes"] is False
