@@ -14,6 +14,7 @@ PACKAGE = DEMO.replace(".toml", "-release")
 
 def release(window: Watched, out: str | None = None, *, despite: bool = False) -> str:
     """Release by the dialog and wait for its end; what the page says of it."""
+    before = window.page.locator("#releases > li").count()
     window.page.keyboard.press("r")
     window.page.wait_for_selector("dialog[open]")
     if out is not None:
@@ -22,9 +23,9 @@ def release(window: Watched, out: str | None = None, *, despite: bool = False) -
         window.by_id("q-despite").check()
     window.page.locator("#question button.main").click()
     window.page.wait_for_selector("#panel-release:not([hidden])")
-    first = window.page.locator("#releases > li").first
-    window.until(lambda: "released" in first.inner_text(), 240)
-    said: str = first.inner_text()
+    told = window.page.locator("#releases > li")
+    window.until(lambda: told.count() > before and "released" in told.first.inner_text(), 240)
+    said: str = told.first.inner_text()
     return said
 
 
