@@ -1,6 +1,7 @@
 """README says what is: its Python runs, guides list keys and commands, no link leads nowhere."""
 
 import re
+import shlex
 import subprocess
 import sys
 from pathlib import Path
@@ -124,3 +125,29 @@ def test_links_of_guides_lead_somewhere(guide):
     text = guide.read_text(encoding="utf-8")
     for target in re.findall(r"\]\(([^)#]+)(?:#[^)]*)?\)", text):
         assert target.startswith("http") or (guide.parent / target).exists(), target
+
+
+GUIDES = sorted(
+    path
+    for path in ROOT.glob("**/*.md")
+    if not {".venv", "tests"} & {*path.relative_to(ROOT).parts}
+)
+
+
+@pytest.mark.parametrize("guide", GUIDES, ids=lambda path: str(path.relative_to(ROOT)))
+def test_commands_of_guides_can_be_typed(guide):
+    """Each goes through the command's own parser; designs that it names are there."""
+    import click
+
+    from lamwright.app.cli import main
+
+    text = guide.read_text(encoding="utf-8").replace("\\\n", " ")
+    lines = re.findall(r"^ *(?:bash app/ready.sh )?(lamwright [a-z]+ .*)$", text, re.MULTILINE)
+    lines += [" ".join(code.split()) for code in re.findall(r"`(lamwright [a-z]+ [^`]*)`", text)]
+    for line in lines:
+        name, *words = shlex.split(re.sub(r"\[[^]]*\]", "", line), comments=True)[1:]
+        assert all((ROOT / word).exists() for word in words if word.startswith("designs/"))
+        try:
+            main.commands[name].make_context(name, words)
+        except click.MissingParameter:
+            continue  # named in running text without its folder
