@@ -50,13 +50,13 @@ class CutSteelLaw(SteelLaw):
         return np.asarray(self.share * SteelLaw.flux_density(self, h))
 
     def energy_density(self, b2: FloatArray) -> FloatArray:
-        """Energy density in J/m^3 for |B|^2 of shape (n_elem, n_qp), elements first."""
-        s = self.share[:, None]
+        """Energy density in J/m^3 for |B|^2 of shape (n_qp, n_elem)."""
+        s = self.share
         return np.asarray(s * SteelLaw.energy_density(self, b2 / s**2))
 
     def coenergy_density(self, b2: FloatArray) -> FloatArray:
-        """Coenergy density in J/m^3 for |B|^2 of shape (n_elem, n_qp), elements first."""
-        s = self.share[:, None]
+        """Coenergy density in J/m^3 for |B|^2 of shape (n_qp, n_elem)."""
+        s = self.share
         return np.asarray(s * SteelLaw.coenergy_density(self, b2 / s**2))
 
 

@@ -161,8 +161,8 @@ def test_spoilt_steel_is_the_card_with_less_flux_density(demo):
     step = 1e-5
     slope = (law(b**2 + step)[0] - law(b**2 - step)[0]) / (2.0 * step)
     assert dnu == pytest.approx(slope, rel=2e-3, abs=0.02 * float(np.abs(dnu).max()))
-    energy = law.energy_density((b + step).T ** 2) - law.energy_density((b - step).T ** 2)
-    assert energy.T / (2.0 * step) == pytest.approx(nu * b, rel=1e-4)
+    energy = law.energy_density((b + step) ** 2) - law.energy_density((b - step) ** 2)
+    assert energy / (2.0 * step) == pytest.approx(nu * b, rel=1e-4)
     assert law.flux_density(law.field_strength(b)) == pytest.approx(b, rel=1e-3)
 
 
