@@ -18,10 +18,17 @@ _IDLE_PART = "f2py"  # of numpy
 @contextlib.contextmanager
 def quick_imports() -> Iterator[None]:
     """Import all that is needed, and as little else as possible, inside this block."""
+    with collector_at_rest():
+        _put_off(_IDLE_PART)
+        yield
+
+
+@contextlib.contextmanager
+def collector_at_rest() -> Iterator[None]:
+    """Make many objects inside this block, none of which is garbage to be looked for."""
     was_collecting = gc.isenabled()
     gc.disable()
     try:
-        _put_off(_IDLE_PART)
         yield
     finally:
         if was_collecting:

@@ -33,9 +33,6 @@ GONE = 499  # the status of an answer that nobody reads
 class RangeDesk:
     """What a worker has imported; nothing of a design stays in it but its drawings and cards."""
 
-    def warm(self) -> None:
-        """Answer once all is imported."""
-
     def limits(self, folder: Folder, path: str, text: str, key: str) -> Record:
         """How far a key may move, as of `range_record`."""
         return range_record(folder, path, text, key)

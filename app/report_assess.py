@@ -222,10 +222,6 @@ def _supplied(supplied: Supplied | None, folder: Path) -> tuple[Section, ...]:
     return (Section("The outline as supplied", (Paragraph(told), *pictures)),)
 
 
-def _limits(verdict: Verdict) -> Grid:
-    return limits_grid(verdict.outcomes, verdict.errors, MESHES)
-
-
 def _remarks(machine: Machine) -> tuple[Block, ...]:
     note = machine.design.note
     return (Paragraph(f"Note of the design file: {note}"),) if note else ()

@@ -80,12 +80,9 @@ def yardstick_chapter(mapped: Mapped, stage: Path) -> Chapter:
     if induction:
         cautions.append(f"the induction machine is an estimate; assumed: {'; '.join(ASSUMPTIONS)}")
     errors = shift_errors((own,), [(design_figures(design, s),) for s in mapped.shifted])
-    share = errors.get("yardstick_design_torque_nm", 0.0) / own.current
-    errors |= {
-        key: share
-        for key in ("yardstick_design_torque_per_ampere_nm_per_a",)
-        if induction and errors
-    }
+    if induction and errors:
+        share = errors["yardstick_design_torque_nm"] / own.current
+        errors["yardstick_design_torque_per_ampere_nm_per_a"] = share
     others: tuple[DataclassInstance, ...] = (*ideal, *induction)
     why = {item.key: YARDSTICK for group in others for item in figures_of(group)}
     return Chapter(

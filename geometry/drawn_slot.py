@@ -6,7 +6,6 @@ lines across: the mouth ends where the slot grows wider than at the bore, the co
 it no longer widens faster than its own flanks (rules of our own).
 """
 
-import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from itertools import pairwise
@@ -337,8 +336,3 @@ def wall_path(slot: DrawnSlot) -> Path:
 def slot_reach(slot: DrawnSlot) -> float:
     """Largest distance of the slot from the shaft axis, m."""
     return max(abs(e.point(s)) for e in slot.wall for s in (0.0, 0.25, 0.5, 0.75))
-
-
-def slot_angle(slot: DrawnSlot) -> float:
-    """Half the angle that the slot spans about the shaft axis, rad."""
-    return max(abs(math.atan2(e.start.imag, e.start.real)) for e in slot.wall)

@@ -63,11 +63,6 @@ class EvenEnds:
         return tuple((self.first_place + k) * spacing for k in range(self.barriers))
 
 
-def even_spread(barriers: int) -> Spread:
-    """Ends that share the half pole out evenly, whatever the slots: 90 / n degrees apart."""
-    return Spread(barriers, 4 * barriers, is_half=True)
-
-
 def spreads(barriers: Iterable[int]) -> tuple[Spread, ...]:
     """All spreads of so many barriers a pole, whatever the slots."""
     found = [

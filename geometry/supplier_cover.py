@@ -13,7 +13,6 @@ from .supplier_samples import Samples
 LEAST_GAP = 6e-4  # m, or
 LEAST_STEPS = 2.5  # between points: a longer piece without one is missing
 ON_SIDE = 3e-5  # m, of the straight sides of a drawn sector
-WHOLE = 0.999  # of the outline's length
 PART = 0.9  # of one period's length, when all poles are laid on each other
 
 

@@ -14,7 +14,6 @@ from itertools import pairwise
 from pathlib import Path
 
 from lamwright.geometry.curves import Edge, turned_edge
-from lamwright.geometry.errors import LamwrightError
 
 from .sheet_clip import turn_of
 from .sheet_details import (
@@ -26,12 +25,12 @@ from .sheet_details import (
     rib_kinds,
     scale_text,
 )
-from .sheet_frame import BLOCK_HEIGHT, BLOCK_WIDTH, Paper, frame, papers, title_block
+from .sheet_fitting import SCALES, Scales, Sheet, fitted, shorter_side, whole_scales
+from .sheet_frame import BLOCK_WIDTH, Paper
 from .sheet_ink import Picture
 from .sheet_job import MM, SheetJob
 from .sheet_key import key_detail, key_mark
-from .sheet_labels import NoRoomError
-from .sheet_layout import GAP, Area, Blocks, arranged
+from .sheet_layout import GAP
 from .sheet_measures import PoleMeasure, pole_measures
 from .sheet_pdf import write_pdf
 from .sheet_pole import Pole, pole_view
@@ -46,15 +45,13 @@ from .sheet_rims import (
     rim_measure,
 )
 from .sheet_stack import stack_picture
+from .sheet_stator import composed_stator
 from .sheet_svg import write_svg
 from .sheet_tables import barrier_table, caution, notes, radial_table, rib_table, stack_table
 from .sheet_whole import Whole, whole_view
 
-SCALES = (20.0, 10.0, 5.0, 2.0, 1.0, 0.5, 0.2, 0.1)  # ISO 5455
 LEAST_CHORD = 80.0  # mm of paper that a pole's view should be wide at least
 LEAST_BARRIER = 3.0  # mm of paper that the thinnest barrier should be
-LEAST_WHOLE = 65.0  # mm of paper, of the whole lamination's diameter
-MOST_WHOLE = 200.0  # mm of paper, beyond which a larger view shows no more
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,16 +66,6 @@ class Measured:
     notches: tuple[NotchGroup, ...]
 
 
-@dataclass(frozen=True, slots=True)
-class Sheet:
-    """A composed drawing."""
-
-    paper: Paper
-    picture: Picture
-    whole_scale: float
-    pole_scale: float
-
-
 def drawing_sheet(job: SheetJob, path_pdf: Path, path_svg: Path) -> Sheet:
     """Write the drawing as PDF and SVG; each file appears whole or not at all.
 
@@ -91,12 +78,7 @@ def drawing_sheet(job: SheetJob, path_pdf: Path, path_svg: Path) -> Sheet:
         LamwrightError: the outline does not fit on the largest paper allowed, or an option is not
             known.
     """
-    if job.part == "stator":
-        from .sheet_stator import composed_stator  # which builds on this module
-
-        sheet = composed_stator(job)
-    else:
-        sheet = composed(job)
+    sheet = composed_stator(job) if job.part == "stator" else composed(job)
     title = f"{job.options.part_number} {job.title}".strip()
     write_pdf(sheet.picture, sheet.paper.size, path_pdf, f"{title}: {job.design.name}")
     write_svg(sheet.picture, sheet.paper.size, path_svg)
@@ -124,57 +106,27 @@ def composed(job: SheetJob) -> Sheet:
         LamwrightError: none has.
     """
     measured = measure(job)
-    sizes = papers(job.options.paper)
-    details, tables = _details(job, measured), _tables(job, measured)
     poles = functools.cache(lambda scale: _pole_views(job, measured, scale))
     whole = functools.cache(lambda scale: (_whole_view(job, measured, scale),))
-    for is_last in (False, True):
-        # With views smaller than wished for, at least on the largest paper.
-        for paper in reversed(sizes) if is_last else sizes:
-            for scales in _scales(job, measured, paper, is_last):
-                try:
-                    views = (*poles(scales[0]), *whole(scales[1]))
-                except NoRoomError:
-                    continue
-                blocks = Blocks(views, details, tables)
-                picture = on_paper(job, blocks, paper, scales[1])
-                if picture is not None:
-                    return Sheet(paper, picture, scales[1], scales[0])
-    names = " or ".join(paper.name for paper in sizes)
-    raise LamwrightError(f"drawing: not all views fit on {names}; ask for a larger paper")
+    return fitted(
+        job,
+        "drawing",
+        lambda paper, is_last: _scales(job, measured, paper, is_last),
+        lambda scales: (*poles(scales[0]), *whole(scales[1])),
+        (_details(job, measured), _tables(job, measured)),
+    )
 
 
-def on_paper(job: SheetJob, blocks: Blocks, paper: Paper, scale: float) -> Picture | None:
-    """All blocks on a paper with its frame and title block, None where one finds no room."""
-    corner = complex(paper.high.real - BLOCK_WIDTH, paper.low.imag)
-    title = Area(corner, corner + complex(BLOCK_WIDTH, BLOCK_HEIGHT))
-    found = arranged(blocks, Area(paper.low, paper.high), title)
-    if found is None:
-        return None
-    picture = frame(paper) + title_block(job, [scale_text(scale)], paper).moved(corner)
-    for one in found:
-        picture = picture + one
-    return picture
-
-
-def _scales(
-    job: SheetJob, measured: Measured, paper: Paper, is_last: bool
-) -> Iterator[tuple[float, float]]:
+def _scales(job: SheetJob, measured: Measured, paper: Paper, is_last: bool) -> Iterator[Scales]:
     """Scales of pole and whole lamination, the largest first; all the small ones if need be."""
     size = 2.0 * measured.rim.radius / MM
     chord = measured.rim.radius / MM * abs(1.0 - cmath.exp(1j * job.section.pole_angle))
     thin = min((cut.thickness for pole in measured.poles for cut in pole.cuts), default=MM) / MM
-    room = min((paper.high - paper.low).real, (paper.high - paper.low).imag)
     for pole_scale in SCALES:
         is_small = pole_scale * chord < LEAST_CHORD or pole_scale * thin < LEAST_BARRIER
-        if pole_scale * chord > 1.2 * room or (is_small and not is_last):
+        if pole_scale * chord > 1.2 * shorter_side(paper) or (is_small and not is_last):
             continue
-        for whole_scale in SCALES:
-            on_paper = whole_scale * size
-            if whole_scale > pole_scale or on_paper > min(room, MOST_WHOLE):
-                continue
-            if on_paper < LEAST_WHOLE and not is_last:
-                continue
+        for whole_scale in whole_scales(size, pole_scale, paper, is_last):
             yield pole_scale, whole_scale
 
 

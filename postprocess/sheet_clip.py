@@ -1,7 +1,6 @@
 """Parts of outlines that a view shows, and where a line crosses them: exact on lines and arcs."""
 
 import cmath
-import math
 from collections.abc import Sequence
 from itertools import pairwise
 
@@ -104,8 +103,3 @@ def runs(edges: Sequence[Edge], chosen: Sequence[bool]) -> list[tuple[Edge, ...]
 def turn_of(angle: float) -> complex:
     """The unit factor that turns the direction `angle` (rad) up."""
     return 1j * cmath.exp(-1j * angle)
-
-
-def degrees_off(point: Point) -> float:
-    """Angle in degrees of an upright view's point from the upright axis, positive to the right."""
-    return math.degrees(math.pi / 2.0 - cmath.phase(point))

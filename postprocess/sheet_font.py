@@ -39,11 +39,6 @@ def ink_box(text: str, height: float, is_bold: bool = False) -> tuple[complex, c
     return complex(0.0, size * low), complex(width_of(text, height, is_bold), size * high)
 
 
-def has_glyph(char: str, is_bold: bool = False) -> bool:
-    """Whether the font has a letter."""
-    return ord(char) in _font(is_bold)[1]
-
-
 def font_path(is_bold: bool = False) -> str:
     """The font's file."""
     from matplotlib import get_data_path

@@ -14,7 +14,7 @@ from lamwright.geometry.curves import Edge, Path, Point, mirrored_edge, turned_e
 from lamwright.geometry.section import CrossSection, Rib, base_name, pole_of, rotor_cell
 
 from .sheet_clip import heights_at, in_circle, nearest_edge, nearest_gap, shortest, turn_of
-from .sheet_job import MM, SheetJob
+from .sheet_job import SheetJob
 
 ALIKE = 1e-7  # m, poles and ribs that differ less are one kind
 ABOUT_AXIS = 1e-6  # m, an arc whose centre is nearer lies about the shaft axis
@@ -283,8 +283,3 @@ def _axis_cut(barrier: int, cavities: Sequence[Cavity]) -> AxisCut | None:
 def _cut_at(barrier: int, edges: Sequence[Edge], x: float) -> AxisCut | None:
     heights = [height for height in heights_at(edges, x) if height > 0.0]
     return AxisCut(barrier, abs(x), heights[1], heights[0]) if len(heights) == 2 else None
-
-
-def rounded_mm(length: float, digits: int = 3) -> float:
-    """A length in mm as it is printed."""
-    return round(length / MM, digits)

@@ -6,15 +6,12 @@ Composed like the rotor's (see `sheet`): everything printed is measured on the c
 import functools
 from collections.abc import Iterator
 
-from lamwright.geometry.errors import LamwrightError
-
-from .sheet import LEAST_WHOLE, MOST_WHOLE, SCALES, Sheet, on_paper
 from .sheet_dimensions import number, with_limit
-from .sheet_frame import BLOCK_WIDTH, Paper, papers
+from .sheet_fitting import SCALES, Scales, Sheet, fitted, whole_scales
+from .sheet_frame import BLOCK_WIDTH, Paper
 from .sheet_ink import Picture
 from .sheet_job import MM, SheetJob
-from .sheet_labels import NoRoomError
-from .sheet_layout import GAP, Blocks
+from .sheet_layout import GAP
 from .sheet_slot import mouth_detail, slot_reach, slot_view, stator_view
 from .sheet_slots import StatorMeasure, stator_measure
 from .sheet_stack import stack_picture
@@ -37,7 +34,6 @@ def composed_stator(job: SheetJob) -> Sheet:
         LamwrightError: none has, or a fit is not known.
     """
     measured = stator_measure(job.contours)
-    sizes = papers(job.options.paper)
     width = BLOCK_WIDTH - 2.0 * GAP
     mouth = mouth_detail(job, measured)
     details = () if mouth is None else (mouth,)
@@ -49,35 +45,24 @@ def composed_stator(job: SheetJob) -> Sheet:
     ]
     slot = functools.cache(lambda scale: slot_view(job, measured, scale))
     whole = functools.cache(lambda scale: stator_view(job, measured, scale))
-    for is_last in (False, True):
-        for paper in reversed(sizes) if is_last else sizes:
-            for scales in _scales(measured, paper, is_last):
-                try:
-                    views = (slot(scales[0]), whole(scales[1]))
-                except NoRoomError:
-                    continue
-                picture = on_paper(job, Blocks(views, details, tables), paper, scales[1])
-                if picture is not None:
-                    return Sheet(paper, picture, scales[1], scales[0])
-    names = " or ".join(paper.name for paper in sizes)
-    raise LamwrightError(f"stator drawing: not all views fit on {names}; ask for a larger paper")
+    return fitted(
+        job,
+        "stator drawing",
+        lambda paper, is_last: _scales(measured, paper, is_last),
+        lambda scales: (slot(scales[0]), whole(scales[1])),
+        (details, tables),
+    )
 
 
-def _scales(measured: StatorMeasure, paper: Paper, is_last: bool) -> Iterator[tuple[float, float]]:
+def _scales(measured: StatorMeasure, paper: Paper, is_last: bool) -> Iterator[Scales]:
     """Scales of one slot and of the whole lamination, the largest first."""
-    room = min((paper.high - paper.low).real, (paper.high - paper.low).imag)
     size = 2.0 * measured.outer / MM
     view = slot_reach(measured) / MM
     for slot_scale in SCALES:
         is_small = slot_scale * measured.slot.width / MM < LEAST_SLOT
         if slot_scale * view > MOST_SLOT * paper.width or (is_small and not is_last):
             continue
-        for whole_scale in SCALES:
-            on_sheet = whole_scale * size
-            if whole_scale > slot_scale or on_sheet > min(room, MOST_WHOLE):
-                continue
-            if on_sheet < LEAST_WHOLE and not is_last:
-                continue
+        for whole_scale in whole_scales(size, slot_scale, paper, is_last):
             yield slot_scale, whole_scale
 
 

@@ -32,11 +32,8 @@ from .pattern import node_values
 from .steel import NU_0
 from .types import FieldSolution, FloatArray, IntArray, ReluctivityLaw
 
-LINEAR_POINTS, MAGNET_POINTS, GAP_POINTS = (
-    3,
-    3,
-    6,
-)  # quadrature of `model.magnetic_model` and `field`
+LINEAR_POINTS = MAGNET_POINTS = 3  # quadrature of `model.magnetic_model`
+GAP_POINTS = 6  # and of `field`
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -26,8 +26,6 @@ from .types import FloatArray, IntArray, PlanarMesh
 FULL_TOL = 1e-9  # rad, far above rounding and far below any wedge
 LEFT_STEP = 1e-7  # m, to the left of an edge: far above WELD_TOL, far below any feature
 
-Piece = tuple[tuple[int, ...], int]  # signed edges of all loops, region number
-
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Fan:

@@ -31,16 +31,6 @@ class Outline:
     ends: IntArray  # (n_edge, 2), point numbers
     loops: tuple[tuple[tuple[int, ...], ...], ...]
 
-    def regions_of_edge(self) -> list[list[int]]:
-        """The one or two regions beside each edge."""
-        beside: list[list[int]] = [[] for _ in self.edges]
-        for region, loops in enumerate(self.loops):
-            for loop in loops:
-                for signed in loop:
-                    if region not in beside[abs(signed) - 1]:
-                        beside[abs(signed) - 1].append(region)
-        return beside
-
 
 def weld(points: ComplexArray) -> tuple[ComplexArray, IntArray]:
     """Points closer than WELD_TOL made one: the kept points and each point's number."""

@@ -9,7 +9,8 @@ from lamwright.geometry.contours import lamination_contours
 from lamwright.geometry.cross_section import cross_section
 from lamwright.geometry.design_file import design_hash, read_machine
 from lamwright.geometry.punch_layers import stator_lamination
-from lamwright.postprocess.sheet import Sheet, composed, drawing_sheet
+from lamwright.postprocess.sheet import composed, drawing_sheet
+from lamwright.postprocess.sheet_fitting import Sheet
 from lamwright.postprocess.sheet_job import SheetJob, SheetOptions
 
 DESIGNS = Path(__file__).parents[1] / "designs"
