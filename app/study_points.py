@@ -10,7 +10,6 @@ from collections.abc import Iterator, Sequence
 from itertools import product
 from statistics import NormalDist
 
-from .sobol import sobol_set
 from .study import Study, StudyKey, Value, Values
 
 DIGITS = 9  # significant, of a value of a range without steps: as many as a design file gets
@@ -63,15 +62,13 @@ def _grid(keys: Sequence[StudyKey]) -> Iterator[Values]:
 
 
 def _set(study: Study) -> Iterator[Values]:
-    sampling = study.sampling
-    # A power of two at a time, as Sobol's set wants; of a longer set it is the beginning.
-    power = math.ceil(math.log2(max(sampling.designs, 2)))
-    if sampling.kind == "sobol":
-        shares = sobol_set(len(study.keys), power, sampling.seed)
-    else:
-        from scipy.stats import qmc
+    from scipy.stats import qmc
 
-        shares = qmc.Halton(len(study.keys), seed=sampling.seed).random(2**power)
+    sampling = study.sampling
+    kind = {"sobol": qmc.Sobol, "halton": qmc.Halton}[sampling.kind]
+    engine = kind(d=len(study.keys), scramble=True, seed=sampling.seed)
+    # A power of two at a time, as Sobol's set wants; of a longer set it is the beginning.
+    shares = engine.random(2 ** math.ceil(math.log2(max(sampling.designs, 2))))
     for row in shares[: sampling.designs].tolist():
         values = (value_at(key, share) for key, share in zip(study.keys, row, strict=True))
         yield dict(zip((key.key for key in study.keys), values, strict=True))

@@ -6,9 +6,7 @@ from statistics import NormalDist
 
 import numpy as np
 import pytest
-from scipy.stats import qmc
 
-from lamwright.app.sobol import sobol_set
 from lamwright.app.study import Sampling, Study, StudyKey
 from lamwright.app.study_points import counted, points_of, value_at
 
@@ -66,14 +64,6 @@ def test_a_set_begins_every_longer_one_and_fills_the_range(kind: str) -> None:
     for key, choices in (("layout.barriers", (2, 3, 5)), (SHAPE.key, ("arc", "vee"))):
         shares = [sum(point[key] == choice for point in long) / 64 for choice in choices]
         assert np.allclose(shares, 1 / len(choices), atol=0.05)
-
-
-@pytest.mark.parametrize("dimensions", [1, 3, 40, 41])
-def test_sobol_sets_are_those_of_scipy_to_the_last_bit(dimensions: int) -> None:
-    """Studies that were begun with scipy's points go on with them."""
-    for seed in (0, 1, 20):
-        theirs = qmc.Sobol(dimensions, scramble=True, seed=seed).random_base2(7)
-        assert np.array_equal(sobol_set(dimensions, 7, seed), theirs)
 
 
 def test_a_normal_distribution_is_cut_off_at_its_limits() -> None:
