@@ -1,6 +1,10 @@
-"""Connections that begin no request, or do not end its head, are cut: others need their places."""
+"""What strangers on the line must not do: hold places for ever, fill the terminal.
+
+Connections that begin no request, or do not end its head, are cut: others need their places.
+"""
 
 import asyncio
+import logging
 from typing import Any
 
 from .page_guard import PATIENCE_S
@@ -44,3 +48,11 @@ def patient_protocol() -> type[asyncio.Protocol]:
             self._later()
 
     return PatientProtocol
+
+
+def is_worth_telling(record: logging.LogRecord) -> bool:
+    """Whether a line of the server's log is of use: a frame that is no text is its sender's fault.
+
+    The socket is closed for it; the library would print a traceback too.
+    """
+    return not record.getMessage().startswith("Invalid UTF-8 sequence received")

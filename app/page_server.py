@@ -1,6 +1,7 @@
 """The page's server: addresses, answers, and its life from the first to the last request."""
 
 import contextlib
+import logging
 import socket
 from collections.abc import Awaitable, Callable, Mapping
 from functools import partial
@@ -213,7 +214,7 @@ def serve(page: Page, door: Door, own: socket.socket) -> None:
 def _run(app: Guard, own: socket.socket) -> None:
     import uvicorn
 
-    from .page_patience import patient_protocol
+    from .page_patience import is_worth_telling, patient_protocol
 
     config = uvicorn.Config(
         app,
@@ -229,6 +230,7 @@ def _run(app: Guard, own: socket.socket) -> None:
         h11_max_incomplete_event_size=32768,
         timeout_graceful_shutdown=2,
     )
+    logging.getLogger("uvicorn.error").addFilter(is_worth_telling)
     with contextlib.closing(own):
         uvicorn.Server(config).run(sockets=[own])
 
