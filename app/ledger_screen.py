@@ -8,7 +8,7 @@ from typing import Any, cast
 
 import click
 
-from lamwright.postprocess.quantities import DIGITS, PLAIN_BELOW, PLAIN_FROM, number
+from lamwright.postprocess.quantities import DIGITS, PLAIN_BELOW, PLAIN_FROM, error_number, number
 
 from .imports import collector_at_rest
 from .ledger import Ledger
@@ -179,7 +179,7 @@ def _compared(row: Row, name: str) -> str:
 def _measured(value: object, error: float | None) -> str:
     if value is None:
         return ""
-    return _plain(value) if error is None else f"{_plain(value)} +- {error:.2g}"
+    return _plain(value) if error is None else f"{_plain(value)} +- {error_number(error)}"
 
 
 def _change(first: object, second: object) -> str:

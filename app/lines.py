@@ -4,6 +4,7 @@ from typing import TYPE_CHECKING
 
 import click
 
+from lamwright.postprocess.quantities import error_number as error_number
 from lamwright.postprocess.quantities import figures_of
 from lamwright.postprocess.quantities import number as number
 from lamwright.postprocess.quantities import valued as valued

@@ -10,7 +10,7 @@ from rich.table import Table
 
 from lamwright.geometry.errors import LamwrightError
 
-from .lines import valued
+from .lines import error_number, valued
 from .map_grid import GridWishes
 from .mapping import MapReport
 from .report_screen import print_ending
@@ -63,7 +63,7 @@ def print_map(report: MapReport, folder: str) -> None:
         for figure in figures:
             bar = report.errors.get(figure.key, math.nan)
             if figure.key not in counts:
-                shown = "" if math.isnan(bar) else f"{bar:.2g}"
+                shown = "" if math.isnan(bar) else error_number(bar)
                 table.add_row(figure.label, valued(figure), shown)
     console.print(table)
     if counts:

@@ -9,7 +9,7 @@ from lamwright.postprocess.differences import FigureDifference
 from lamwright.postprocess.glance import GLANCE, MAGNET_GLANCE
 from lamwright.postprocess.supplier_tables import holds
 
-from .lines import number
+from .lines import error_number, number
 from .outline_run import OutlineVerdict
 from .screen import print_verdict
 
@@ -92,6 +92,6 @@ def cells(one: FigureDifference) -> tuple[str, ...]:
     a, b = ("" if v is None else number(v) for v in (one.first, one.second))
     if one.change is None:
         return a, b, "", "", ""
-    bar = "" if one.bar is None else f"{one.bar:.2g}"
+    bar = "" if one.bar is None else error_number(one.bar)
     word = {True: "beyond", False: "within", None: ""}[one.is_beyond]
     return a, b, f"{one.change:+.3g}" if one.differs else "0", bar, word

@@ -4,7 +4,7 @@ from collections.abc import Mapping
 
 import click
 
-from .lines import number
+from .lines import error_number, number
 from .release import ReleaseReport
 from .verify import VerifyReport
 
@@ -49,7 +49,7 @@ def _promised(manifest: Mapping[str, object]) -> list[tuple[str, str]]:
     for key in SHOWN:
         figure = figures[key]
         error = figure["error"]
-        bar = "" if error is None else f" +- {error:.2g}"
+        bar = "" if error is None else f" +- {error_number(error)}"
         rows.append((key, f"{number(figure['value'])}{bar} {figure['unit']}".rstrip()))
     return rows
 

@@ -15,25 +15,26 @@ from lamwright.postprocess.report import (
     Report,
     Section,
     numeral,
-    word_rows,
-    words,
 )
+from lamwright.postprocess.tables import harmonic_records, magnet_records
 from lamwright.postprocess.torque import TorqueSpectrum
 from lamwright.postprocess.verdict import Verdict
 from lamwright.solver.tolerance import tolerance_settings
 
-from .lines import number
+from .lines import error_number, number
 from .report_parts import (
     CAUTION,
     figure_grid,
     limits_grid,
     lines_section,
+    method_grid,
     picture_blocks,
-    ribs_grid,
+    records_grid,
     times_grid,
 )
 from .report_repeat import repeat_section
-from .report_ribs import RIB_COLUMNS, rib_sections
+from .report_ribs import METHOD as RIBS_METHOD
+from .report_ribs import PRESSED, RIB_COLUMNS, margin_grid, rib_sections
 
 if TYPE_CHECKING:
     from .rib_work import RibsReport
@@ -80,6 +81,16 @@ METHOD = (
         "what a mesh four times as fine changes of each figure, continued to the limit",
         "derived",
     ),
+)
+MAGNET_COLUMNS = (
+    ("magnet", "magnet"),
+    ("area_mm2", "area, mm2"),
+    ("below_knee_percent", "below the knee, %"),
+    ("below_knee_percent_error", "+-, %"),
+    ("flux_density_low_t", "least B, T"),
+    ("flux_density_low_t_error", "+-, T"),
+    ("flux_density_mean_t", "mean B, T"),
+    ("flux_density_mean_t_error", "+-, T"),
 )
 MESHES = "+- is the error of the meshes, not that of the model, the steel or the making."
 ELSEWHERE = (
@@ -146,7 +157,12 @@ def assess_report(
         outcome = "FAILS: yield margin with fit, heat and magnets"
     sections = [
         Section(
-            "Verdict", (limits_grid(verdict.outcomes, verdict.errors, MESHES), *_remarks(machine))
+            "Verdict",
+            (
+                limits_grid(verdict.outcomes, verdict.errors, MESHES),
+                *((margin_grid(ribs),) if ribs is not None and PRESSED in ribs.figures else ()),
+                *_remarks(machine),
+            ),
         ),
         *_supplied(supplied, folder),
         Section("The machine", picture_blocks(folder, ["section"])),
@@ -155,23 +171,23 @@ def assess_report(
             (
                 figure_grid(figures_of(verdict.magnetic), verdict.errors),
                 *picture_blocks(folder, ["flux", "torque"]),
-                _orders(orders, verdict.magnetic.torque),
+                _orders(orders, verdict),
             ),
         ),
         Section(
             "At the terminals",
             (figure_grid(figures_of(verdict.terminal), verdict.errors, "~ estimate by formula"),),
         ),
-        *_magnets(verdict, folder),
+        *_magnets(verdict),
         Section(
             "Ribs and stress at overspeed",
             (
                 figure_grid(figures_of(verdict.stress), verdict.errors),
                 *picture_blocks(folder, ["stress"]),
-                ribs_grid(rib_records, RIB_COLUMNS),
+                records_grid(rib_records, RIB_COLUMNS, "ribs"),
             ),
         ),
-        *(rib_sections(ribs, folder, shown=["stress"]) if ribs is not None else ()),
+        *(rib_sections(ribs, folder, beside=True) if ribs is not None else ()),
         Section(
             "Punch outline",
             (
@@ -182,10 +198,22 @@ def assess_report(
                 figure_grid(figures_of(verdict.outline), {}),
             ),
         ),
-        _method(verdict),
-        lines_section("What was not computed", (*(() if ribs else RIBS_ELSEWHERE), *ELSEWHERE), ""),
+        _method(verdict, ribs is not None),
         lines_section(
-            "Cautions", (*(supplied.cautions if supplied else ()), *verdict.cautions), "none"
+            "What was not computed", (*(ribs.not_given if ribs else RIBS_ELSEWHERE), *ELSEWHERE), ""
+        ),
+        lines_section(
+            "Cautions",
+            tuple(
+                dict.fromkeys(
+                    (
+                        *(supplied.cautions if supplied else ()),
+                        *verdict.cautions,
+                        *(ribs.cautions if ribs else ()),
+                    )
+                )
+            ),
+            "none",
         ),
         repeat_section(
             "assess",
@@ -227,43 +255,35 @@ def _remarks(machine: Machine) -> tuple[Block, ...]:
     return (Paragraph(f"Note of the design file: {note}"),) if note else ()
 
 
-def _orders(orders: TorqueSpectrum, mean: float) -> Grid:
-    rows = tuple(
-        (
-            numeral(str(int(order))),
-            numeral(number(float(amplitude))),
-            numeral(number(100.0 * float(amplitude) / mean)),
-        )
-        for order, amplitude in zip(orders.order, orders.amplitude, strict=True)
+def _orders(orders: TorqueSpectrum, verdict: Verdict) -> Grid:
+    records = harmonic_records(orders)
+    heads = (("order_el", "electrical order"), ("amplitude_nm", "amplitude, N m"))
+    grid = records_grid(records, heads, "torque_harmonics")
+    shares = (100.0 * record["amplitude_nm"] / verdict.magnetic.torque for record in records)
+    bar = verdict.table_errors.get("torque_orders.csv", {}).get("amplitude_nm_error")
+    return Grid(
+        (*grid.columns, "of the mean, %"),
+        tuple((*row, numeral(number(share))) for row, share in zip(grid.rows, shares, strict=True)),
+        f"+- {error_number(bar)} N m at most." if isinstance(bar, float) else "",
     )
-    return Grid(("electrical order", "amplitude, N m", "of the mean, %"), rows)
 
 
-def _magnets(verdict: Verdict, folder: Path) -> tuple[Section, ...]:
+def _magnets(verdict: Verdict) -> tuple[Section, ...]:
     if not verdict.magnets:
         return ()
-    states = tuple(
-        (
-            words(state.name),
-            numeral(number(1e6 * state.area)),
-            numeral(number(100.0 * state.share_below)),
-            numeral(number(state.flux_low)),
-            numeral(number(state.flux_mean)),
-        )
-        for state in verdict.magnet_states
-    )
-    head = ("magnet", "area, mm2", "below the knee, %", "least B, T", "mean B, T")
     tables = [figure_grid(figures_of(group), verdict.errors) for group in verdict.magnets]
-    drawn = picture_blocks(folder, ["no_load"])
-    return (Section("Magnets", (*tables, *drawn, Grid(head, states))),)
+    states = records_grid(
+        magnet_records(verdict), MAGNET_COLUMNS, "magnets", "At the demagnetising current."
+    )
+    return (Section("Magnets", (*tables, states)),)
 
 
-def _method(verdict: Verdict) -> Section:
+def _method(verdict: Verdict, with_ribs: bool) -> Section:
     _, _, promises = tolerance_settings(verdict.tolerance)
     return Section(
         "How it was computed",
         (
-            Grid(("what", "how", "source"), word_rows(METHOD), "(m): cited from memory"),
+            method_grid((*METHOD, *(RIBS_METHOD if with_ribs else ()))),
             Paragraph(
                 f"Tolerance {verdict.tolerance} promises errors of the mesh of at most "
                 f"{promises.torque:g} % of the mean torque, {promises.linkage:g} % of a linkage "

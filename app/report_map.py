@@ -3,8 +3,7 @@
 from pathlib import Path
 
 from lamwright.geometry.design_file import Machine, design_hash
-from lamwright.postprocess.report import Grid as Table
-from lamwright.postprocess.report import Report, Section, word_rows
+from lamwright.postprocess.report import Report, Section
 from lamwright.postprocess.verdict import Outcome
 
 from .mapping import MapReport
@@ -14,6 +13,7 @@ from .report_parts import (
     figure_grid,
     limits_grid,
     lines_section,
+    method_grid,
     picture_blocks,
     times_grid,
 )
@@ -81,13 +81,13 @@ def map_report(
     ]
     outcomes = _judged(report, machine)
     missed = "; ".join(LIMITS[one.key] for one in outcomes if not one.holds)
+    judged = f"MISSED: {missed}" if missed else "limits judged here hold" if outcomes else ""
     missing = len(report.not_given)
-    given = f"{missing} result{'s'[: missing > 1]} not given for want of data"
-    outcome = f"MISSED: {missed}" if missed else given if missing else "all results given"
+    given = f"{missing} result{'s'[: missing > 1]} not given" if missing else "all results given"
     return Report(
         title=f"Flux map of {report.design_name}",
         subtitle=f"lamwright {version()}, tolerance {tolerance}, design {digest[:16]}",
-        outcome=outcome,
+        outcome="; ".join(text for text in (judged, given) if text),
         mark="bad" if missed else "wary" if missing else "good",
         sections=(
             Section("Limits", (limits_grid(outcomes, report.errors, OTHERS),)),
@@ -95,7 +95,7 @@ def map_report(
             Section(
                 "How it was computed",
                 (
-                    Table(("what", "how", "source"), word_rows(METHOD), "(m): cited from memory"),
+                    method_grid(METHOD),
                     times_grid(report.seconds),
                 ),
             ),

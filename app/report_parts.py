@@ -15,11 +15,12 @@ from lamwright.postprocess.report import (
     Picture,
     Section,
     numeral,
+    word_rows,
     words,
 )
 from lamwright.postprocess.verdict import Outcome
 
-from .lines import number, valued
+from .lines import error_number, number, valued
 from .version import version
 
 LIBRARIES = ("numpy", "scipy", "gmsh", "cvxopt", "scikit-fem", "ezdxf")
@@ -46,7 +47,7 @@ CAPTIONS = {
     "fit_pressure": "Pressure of the shaft's fit over speed.",
     "modes": "The lowest modes of rotor and stator, and the speeds at which orders meet them.",
     "thin": "What the thinnest ribs cost and bring.",
-    "map": "Flux linkages, saliency and torque over the plane of currents.",
+    "map": "Flux linkages over the currents; mean torque and ripple over their plane.",
     "control_plane": "Most torque per ampere, per volt and within both limits over the currents.",
     "envelope": "Most torque and power over speed within current and voltage.",
     "efficiency": "Efficiency over torque and speed.",
@@ -64,7 +65,7 @@ def figure_grid(figures: Iterable[Figure], errors: Mapping[str, float], note: st
         (
             words(figure.label),
             numeral(figure_text(figure), figure.key),
-            numeral(error_text(errors, figure.key)),
+            error_cell(errors, figure.key),
         )
         for figure in figures
     )
@@ -91,9 +92,9 @@ def limits_grid(outcomes: Iterable[Outcome], errors: Mapping[str, float], note: 
         limit = f"{sign} {number(outcome.limit)} {figure.unit}".rstrip()
         return (
             words(LIMITS[outcome.key]),
-            numeral(limit),
+            numeral(limit, f"limits/{outcome.key}"),
             numeral(valued(figure), figure.key),
-            numeral(error_text(errors, figure.key)),
+            error_cell(errors, figure.key),
             words("holds", "good") if outcome.holds else words("MISSED", "bad"),
         )
 
@@ -106,14 +107,17 @@ def figure_text(figure: Figure) -> str:
     return str(figure.value) if isinstance(figure.value, int) else valued(figure)
 
 
-def error_text(errors: Mapping[str, float], key: str) -> str:
-    """The figure's error, two digits, in its unit; empty where there is none."""
-    return _two_digits(errors[key]) if key in errors else ""
+def error_cell(errors: Mapping[str, float], key: str, place: str = "") -> Cell:
+    """The figure's error, in its unit; empty where there is none.
 
-
-def _two_digits(value: float) -> str:
-    text = f"{value:.2g}"
-    return f"{float(text):.0f}" if "e+" in text else text  # 190, not 1.9e+02
+    Args:
+        errors: by key.
+        key: of the figure.
+        place: of the figure in the JSON file, where it is not the key alone.
+    """
+    if key not in errors:
+        return numeral("")
+    return numeral(error_number(errors[key]), f"{place or key}_error")
 
 
 def picture_blocks(folder: Path, names: Sequence[str]) -> tuple[Picture, ...]:
@@ -125,17 +129,40 @@ def picture_blocks(folder: Path, names: Sequence[str]) -> tuple[Picture, ...]:
     )
 
 
-def ribs_grid(records: Sequence[Mapping[str, object]], keys: Sequence[tuple[str, str]]) -> Grid:
-    """A row for each rib, a column for each (key, head) of its record."""
+def records_grid(
+    records: Sequence[Mapping[str, object]],
+    heads: Sequence[tuple[str, str]],
+    place: str,
+    note: str = "",
+) -> Grid:
+    """A row for each record, a column for each (key, head) of it; one "+-" where it has an error.
 
-    def shown(key: str, value: object) -> Cell:
+    Args:
+        records: as in the JSON file.
+        heads: keys and heads of the columns; a key that no record has is left out.
+        place: of the records in the JSON file, as `ribs`.
+        note: that stands below.
+    """
+
+    def shown(k: int, key: str, value: object) -> Cell:
+        if isinstance(value, int):
+            return numeral(str(value), f"{place}/{k}/{key}")
         if isinstance(value, float):
-            return numeral(_two_digits(value) if key.endswith("_error") else number(value))
+            told = error_number(value) if key.endswith("_error") else number(value)
+            return numeral(told, f"{place}/{k}/{key}")
         return numeral("-") if value is None else words(str(value))
 
-    columns = [(key, head) for key, head in keys if any(key in record for record in records)]
-    rows = tuple(tuple(shown(key, record.get(key)) for key, _ in columns) for record in records)
-    return Grid(tuple(head for _, head in columns), rows)
+    columns = [(key, head) for key, head in heads if any(key in record for record in records)]
+    rows = tuple(
+        tuple(shown(k, key, record.get(key)) for key, _ in columns)
+        for k, record in enumerate(records)
+    )
+    return Grid(tuple(head for _, head in columns), rows, note)
+
+
+def method_grid(lines: Sequence[tuple[str, str, str]]) -> Grid:
+    """What was done, how, and whose it is."""
+    return Grid(("what", "how", "source"), word_rows(lines), "(m): cited from memory")
 
 
 def lines_section(title: str, items: Sequence[str], otherwise: str) -> Section:
@@ -145,7 +172,10 @@ def lines_section(title: str, items: Sequence[str], otherwise: str) -> Section:
 
 def times_grid(seconds: Mapping[str, float]) -> Grid:
     """Wall time by phase."""
-    rows = tuple((words(phase), numeral(f"{spent:.2f}")) for phase, spent in seconds.items())
+    rows = tuple(
+        (words(phase), numeral(f"{spent:.2f}", f"seconds/{phase}"))
+        for phase, spent in seconds.items()
+    )
     return Grid(("phase", "s"), rows)
 
 

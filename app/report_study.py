@@ -20,7 +20,7 @@ from .ledger import Ledger
 from .ledger_rows import Row
 from .ledger_tables import best_of, missed_limits, ranked, told_reasons
 from .lines import number
-from .report_parts import CAUTION, error_text, lines_section, without_empty
+from .report_parts import CAUTION, error_cell, lines_section, method_grid, without_empty
 from .report_repeat import study_section
 from .study_figures import known_figures
 from .version import version
@@ -69,6 +69,7 @@ def study_report(
             Section("Designs", _designs(study, holding or rows, bool(holding))),
             _asked(study, counts),
             _refused(ledger),
+            Section("How it was computed", (method_grid(_method(command)),)),
             lines_section(
                 "What was not computed",
                 (QUICK,) if study.effort == "quick" else (),
@@ -83,6 +84,32 @@ def study_report(
     )
 
 
+def _method(command: str) -> tuple[tuple[str, str, str], ...]:
+    searched = (
+        (
+            "search",
+            "generations by crossing and change of the best; designs without figures graded by "
+            "the stage they reached",
+            "NSGA-II: Deb, Pratap, Agarwal & Meyarivan 2002 (m)",
+        ),
+        (
+            "progress",
+            "hypervolume of the front, reference at 1.1 of its worst",
+            "Zitzler & Thiele 1999 (m); Ishibuchi et al. 2018 (m)",
+        ),
+    )
+    return (
+        ("figures", "each design on its own meshes as in assess, by effort", "see that report"),
+        (
+            "screening",
+            "stages, the cheapest first: values, design file, geometry, ribs in closed form, "
+            "figures; where a design ends its reason is kept",
+            "common practice, no source",
+        ),
+        *(searched if command == "search" else ()),
+    )
+
+
 def _note(study: "Study") -> tuple[Block, ...]:
     return (Paragraph(f"Note of the study file: {study.note}"),) if study.note else ()
 
@@ -94,8 +121,9 @@ def _label(name: str) -> str:
 
 def _value(row: Row, name: str) -> tuple[Cell, Cell]:
     value = row.figures.get(name)
-    shown = numeral("" if value is None else number(value), name)
-    return shown, numeral(error_text(row.errors, name))
+    place = f"{row.number}/{name}"
+    shown = numeral("") if value is None else numeral(number(value), place)
+    return shown, error_cell(row.errors, name, place)
 
 
 def _best(ledger: Ledger) -> Grid:
@@ -143,7 +171,7 @@ def _designs(study: "Study", rows: Sequence[Row], holding: bool) -> tuple[Block,
     lines = tuple(
         (
             numeral(str(row.number)),
-            *(numeral(_stated(row.values.get(key, ""))) for key in keys),
+            *(numeral(_stated(row.values.get(key, "")), f"{row.number}/{key}") for key in keys),
             *(cell for name in names for cell in _value(row, name)),
         )
         for row in listed[:MOST_LISTED]

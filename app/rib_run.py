@@ -98,5 +98,5 @@ def ribs_design(
                 options += f" --overspeed-share {overspeed_share:g}"
             if teeth_mass_factor is not None:
                 options += f" --teeth-mass-factor {teeth_mass_factor:g}"
-            write_report(ribs_report(report, machine, stage, options + thin), stage)
+            write_report(ribs_report(report, machine, stage, tolerance, options + thin), stage)
         return report

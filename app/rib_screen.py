@@ -12,7 +12,7 @@ from rich.text import Text
 
 from lamwright.postprocess.rib_tables import shown_ribs
 
-from .lines import number, valued
+from .lines import error_number, number, valued
 from .report_screen import print_ending
 from .rib_work import RibsReport
 from .thin_screen import THIN_TABLE, thin_screen
@@ -84,7 +84,7 @@ def _figures_table(report: RibsReport) -> Table:
         table.add_row(f"[bold]{escape(name)}[/bold]")
         for figure in figures:
             bar = report.errors.get(figure.key, math.nan)
-            shown = "" if math.isnan(bar) else f"{bar:.2g}"
+            shown = "" if math.isnan(bar) else error_number(bar)
             value = str(figure.value) if isinstance(figure.value, int) else valued(figure)
             table.add_row(figure.label, value, shown)
     return table

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
-from .quantities import number, valued
+from .quantities import error_number, number, valued
 from .verdict import Outcome, Verdict, all_figures
 
 # Figures without a limit that a designer reads at a glance, in order.
@@ -86,7 +86,7 @@ def verdict_line(verdict: Verdict, also: Sequence[str] = ()) -> str:
 
 
 def _bar(verdict: Verdict, key: str) -> str:
-    return f"{verdict.errors[key]:.2g}" if key in verdict.errors else ""
+    return error_number(verdict.errors[key]) if key in verdict.errors else ""
 
 
 def _limit(outcome: Outcome) -> str:

@@ -17,6 +17,7 @@ RPM = 30.0 / math.pi  # 1/min per rad/s
 DIGITS = 4  # significant, where people read; files hold all of them
 # Between these a number of so many digits has no exponent, and digits behind the point.
 PLAIN_FROM, PLAIN_BELOW = 1e-4, 999.5
+ERROR_DIGITS, ERROR_PLAIN_BELOW = 2, 1e5  # of error bars, likewise
 
 # Why a figure has no numerical error.
 STATED = "stated by the design file"
@@ -89,6 +90,12 @@ def number(value: float) -> str:
         return f"{value:.{DIGITS}g}"
     decimals = DIGITS - 1 - math.floor(math.log10(abs(value)))
     return f"{value:.{max(0, decimals)}f}"
+
+
+def error_number(value: float) -> str:
+    """An error with two significant digits, plain where that can be read: 190, not 1.9e+02."""
+    text = f"{value:.{ERROR_DIGITS}g}"
+    return f"{float(text):.0f}" if 0.0 < abs(value) < ERROR_PLAIN_BELOW and "e+" in text else text
 
 
 def valued(figure: Figure) -> str:

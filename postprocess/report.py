@@ -16,7 +16,7 @@ class Cell:
 
     text: str
     mark: Mark = ""
-    key: str = ""  # of the figure in the JSON file, where the cell shows one
+    key: str = ""  # where the number stands in the JSON file, as `ribs/0/peak_mpa`
     is_number: bool = False  # set to the right
 
 

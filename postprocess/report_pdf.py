@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 
 MARGIN_MM = (14.0, 16.0)  # at the sides; above and below
 MOST_PICTURE_MM = 215.0  # height that leaves room for the caption on a page
+MOST_KEPT_ROWS = 24  # of a table that is kept on one page, as in `report.html.j2`
 COLOURS: dict[Mark, str] = {"": "#17212b", "good": "#0b6b3a", "bad": "#b3261e", "wary": "#8a5300"}
 LONGEST_LINE = 100  # characters of a listing that fit the width
 
@@ -59,9 +60,11 @@ def report_pdf(report: Report, folder: Path) -> bytes:
         before: list[Flowable] = [Text(escape(section.title), style["heading"])]
         for block in section.blocks:
             parts = _set(block, folder, document.width)
-            # A heading stays with what follows it, a picture with its caption.
-            is_picture = isinstance(block, Picture)
-            flow += [KeepTogether([*before, *parts])] if is_picture else [*before, *parts]
+            # A heading stays with what follows it, a picture with its caption, a table with its
+            # note.
+            is_short = isinstance(block, Grid) and len(block.rows) <= MOST_KEPT_ROWS
+            is_whole = is_short or isinstance(block, Picture)
+            flow += [KeepTogether([*before, *parts])] if is_whole else [*before, *parts]
             before = []
     page = _footed(report.closing)
     document.build(flow, onFirstPage=page, onLaterPages=page)

@@ -25,8 +25,8 @@ def verdict_record(verdict: Verdict, spectrum: TorqueSpectrum) -> dict[str, obje
         **error_values(figures.values(), verdict.errors),
         "limits": {outcome.key: outcome.limit for outcome in verdict.outcomes},
         "outcomes": {outcome.key: _outcome_record(outcome) for outcome in verdict.outcomes},
-        "torque_harmonics": _spectrum_record(spectrum),
-        **_magnet_records(verdict),
+        "torque_harmonics": harmonic_records(spectrum),
+        **({"magnets": magnets} if (magnets := magnet_records(verdict)) else {}),
         "table_errors": {name: dict(columns) for name, columns in verdict.table_errors.items()},
         "errors_not_given": without_error(figures.values(), verdict.errors),
         "estimates": [key for key, figure in figures.items() if figure.is_estimate],
@@ -48,18 +48,23 @@ def _outcome_record(outcome: Outcome) -> dict[str, object]:
     }
 
 
-def _spectrum_record(spectrum: TorqueSpectrum) -> list[dict[str, float]]:
+def harmonic_records(spectrum: TorqueSpectrum) -> list[dict[str, float]]:
+    """The orders of the torque as they stand in JSON."""
     return [
-        {"order_el": order, "amplitude_nm": float(amplitude), "phase_deg": float(phase / DEGREE)}
+        {
+            "order_el": int(order),
+            "amplitude_nm": float(amplitude),
+            "phase_deg": float(phase / DEGREE),
+        }
         for order, amplitude, phase in zip(
             spectrum.order, spectrum.amplitude, spectrum.phase, strict=True
         )
     ]
 
 
-def _magnet_records(verdict: Verdict) -> dict[str, object]:
-    """What each magnet has at the demagnetising current; nothing where there is no magnet."""
-    states = [
+def magnet_records(verdict: Verdict) -> list[dict[str, str | float]]:
+    """What each magnet has at the demagnetising current, as it stands in JSON."""
+    return [
         {
             "magnet": state.name,
             "area_mm2": state.area * MM**2,
@@ -70,7 +75,6 @@ def _magnet_records(verdict: Verdict) -> dict[str, object]:
         }
         for state, finer in zip(verdict.magnet_states, verdict.finer_states, strict=True)
     ]
-    return {"magnets": states} if states else {}
 
 
 def no_load_csv(record: NoLoad) -> str:

@@ -4,10 +4,10 @@ import dataclasses
 import re
 
 import pytest
+from report_reading import check_numbers
 from study_rows import ANGLE, BASE, plain_evaluation, plain_study, plain_task
 
 from lamwright.app.ledger import Ledger
-from lamwright.app.lines import number
 from lamwright.app.report_study import MOST_LISTED, study_report
 from lamwright.postprocess.report_html import report_html
 
@@ -29,11 +29,21 @@ def told(tmp_path):
 
 
 def test_every_number_is_a_row_s(told):
-    """Figures in the tables are those of the ledger, the best designs first."""
+    """Keys, figures and error bars in the tables are the ledger's, the best designs first."""
     page, rows = told
-    shown = re.findall(r'data-key="torque_nm">([\d.]+)<', page)
-    holding = sorted((r.figures["torque_nm"] for r in rows if r.passes), reverse=True)
-    assert shown == [number(holding[0]), *(number(value) for value in holding[:MOST_LISTED])]
+    stored = {
+        str(row.number): {
+            **row.values,
+            **row.figures,
+            **{f"{key}_error": bar for key, bar in row.errors.items()},
+        }
+        for row in rows
+    }
+    seen = check_numbers(page, stored, spare=("version", "asked"), whole=("design", "designs"))
+    listed = list(dict.fromkeys(re.findall(r'data-key="(\d+)/torque_nm"', page)))
+    holding = sorted((r for r in rows if r.passes), key=lambda r: -r.figures["torque_nm"])
+    assert listed == [str(row.number) for row in holding[:MOST_LISTED]]
+    assert {f"{listed[0]}/torque_nm", f"{listed[3]}/{ANGLE}"} <= seen
     assert f"{len(holding)} of {DESIGNS} designs hold every limit" in page
     assert ANGLE in page
 
