@@ -89,6 +89,21 @@ def design_record(page: Page, path: str) -> Record:
     }
 
 
+def name_record(page: Page, query: Mapping[str, str]) -> Record:
+    """What is wrong with a name that something is to be written to, in the words of the refusal.
+
+    Asked before it is tried, an answer like any other: what a user mistyped is no failed request.
+    """
+    name, use = query["path"], query["use"]
+    try:
+        if use == "design":
+            page.folder.design_file(name)
+        path = page.folder.new_file(name) if use == "design" else page.folder.new_folder(name)
+    except LamwrightError as error:
+        return {"fault": str(error), "exists": False}
+    return {"fault": None, "exists": path.exists()}
+
+
 def outline(page: Page, body: Mapping[str, object]) -> Record:
     """The outline of a text with some values changed; kept as a draft where that is asked for."""
     path, text = text_of(body, "path"), text_of(body, "text")

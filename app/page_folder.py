@@ -6,14 +6,17 @@ program's own and has no name here.
 """
 
 import contextlib
+import errno
 import hashlib
 import json
 import os
+import re
+import stat
 import tomllib
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
-from typing import Literal
+from typing import IO, Any, Literal
 
 from lamwright.geometry.design_faults import shown
 from lamwright.geometry.design_file import LARGEST_FILE, Machine, read_machine
@@ -25,6 +28,11 @@ DRAFTS = "drafts"
 DEEPEST = 4  # folders below the given one that are searched for designs
 MOST_LISTED = 400  # files; a larger folder is listed in part
 LONGEST_NAME = 400  # characters of a name
+LONGEST_PART = 240  # bytes of one file's or folder's: with a temporary file's ending below 255
+# Of new names: a folder that is taken to another system must hold there what it held here.
+NOT_PORTABLE = re.compile(
+    r'[<>:"|?*]|[ .]$|^(con|prn|aux|nul|com[0-9]|lpt[0-9])(\.|$)', re.IGNORECASE
+)
 # Tables and keys of a design that name other files.
 NAMING = (
     ("steel", "rotor_card"),
@@ -102,12 +110,53 @@ class Folder:
         is_name = 0 < len(name) <= LONGEST_NAME and name.isprintable() and "\\" not in name
         if not is_name or not parts or any(part.startswith((".", "/")) for part in parts):
             raise fault
+        if any(len(part.encode()) > LONGEST_PART for part in parts):
+            raise Outside(f"{shown(name)}: too long; accepted names up to {LONGEST_PART} bytes")
         try:
             path = self.root.joinpath(*parts).resolve()
         except (OSError, ValueError, RuntimeError):
             raise fault from None
         if not path.is_relative_to(self.root):
             raise fault
+        return path
+
+    def new_file(self, name: str) -> Path:
+        """The file of a name that is to be written: one that is there, or could be anywhere.
+
+        Raises:
+            Outside: as of `file`.
+            LamwrightError: there is something else than a file, or no folder for it, or the name
+                is none on another system.
+        """
+        path = self._new(name)
+        if not path.parent.is_dir():
+            raise LamwrightError(f"{shown(name)}: no such folder; accepted one that is there")
+        if path.exists() and not path.is_file():
+            raise LamwrightError(f"{shown(name)}: is no file; accepted a file, new or existing")
+        return path
+
+    def new_folder(self, name: str) -> Path:
+        """The folder of a name that results are to be written to: there, or to be made.
+
+        Raises:
+            Outside: as of `file`.
+            LamwrightError: there is a file, also on its way, or the name is none elsewhere.
+        """
+        path = self._new(name)
+        there = next(place for place in (path, *path.parents) if place.exists())
+        if not there.is_dir():
+            where = there.relative_to(self.root).as_posix()
+            raise LamwrightError(f"{where}: is a file; accepted a folder, new or existing")
+        return path
+
+    def _new(self, name: str) -> Path:
+        path = self.file(name)
+        parts = PurePosixPath(name).parts
+        if not path.exists() and (odd := next(filter(NOT_PORTABLE.search, parts), None)):
+            raise LamwrightError(
+                f'{shown(odd)}: a name that other systems refuse; accepted none with < > : " | ? '
+                "*, with a dot or space at its end, or of a device"
+            )
         return path
 
     def name_of(self, path: Path) -> str:
@@ -139,7 +188,7 @@ class Folder:
         """
         path = self.design_file(name)
         try:
-            with path.open("rb") as file:
+            with _opened(path) as file:
                 data = file.read(LARGEST_FILE + 1)
             if len(data) > LARGEST_FILE:
                 raise LamwrightError(f"{name}: too large; accepted {LARGEST_FILE // 1000} kB")
@@ -237,8 +286,9 @@ class Folder:
                     count += 1
                     if count > MOST_LISTED:
                         return
-                    if path.resolve().is_relative_to(self.root):
-                        yield path
+                    with contextlib.suppress(Outside):  # as one with a backslash
+                        if self.file(path.relative_to(self.root).as_posix()) == path.resolve():
+                            yield path
 
     def _kind(self, path: Path) -> Listed | None:
         data = tomllib.loads(path.read_text(encoding="utf-8-sig"))
@@ -266,7 +316,8 @@ class Folder:
             ChangedOnDisk: the file is another now.
             LamwrightError: it cannot be written, or leads out of the folder.
         """
-        path = self.design_file(name)
+        self.design_file(name)
+        path = self.new_file(name)
         now = path.read_bytes() if path.is_file() else None
         if not replace and sha256 != (None if now is None else hashlib.sha256(now).hexdigest()):
             raise ChangedOnDisk(
@@ -294,7 +345,7 @@ class Folder:
     def draft(self, name: str) -> Draft | None:
         """The draft of a design file, None where there is none that can be read."""
         try:
-            record = json.loads(self._draft(name).read_text(encoding="utf-8"))
+            record = _record(self._draft(name))
             return Draft(str(record["text"]), record["sha256"])
         except (OSError, ValueError, KeyError, TypeError):
             return None
@@ -304,7 +355,7 @@ class Folder:
         found = []
         for path in sorted((self.cache / DRAFTS).glob("*.json")):
             with contextlib.suppress(OSError, ValueError, KeyError, TypeError, AttributeError):
-                record = json.loads(path.read_text(encoding="utf-8"))
+                record = _record(path)
                 name, is_new = str(record["name"]), record["sha256"] is None
                 if is_new and self._draft(name) == path and not self.design_file(name).exists():
                     found.append(name)
@@ -316,3 +367,19 @@ class Folder:
 
     def _draft(self, name: str) -> Path:
         return self.cache / DRAFTS / f"{hashlib.sha256(name.encode()).hexdigest()[:32]}.json"
+
+
+def _opened(path: Path) -> IO[bytes]:
+    """A file to read; a pipe or device, which might never answer, is refused as a folder is."""
+    mode = path.stat().st_mode
+    if not stat.S_ISREG(mode) and not stat.S_ISDIR(mode):
+        raise OSError(errno.EINVAL, "not a regular file")
+    return path.open("rb")
+
+
+def _record(path: Path) -> dict[str, Any]:
+    with _opened(path) as file:
+        record = json.loads(file.read().decode())
+    if not isinstance(record, dict):
+        raise ValueError("no draft")
+    return record

@@ -46,6 +46,7 @@ def page_app(page: Page, door: Door, jobs: Jobs, tasks: Tasks, ranges: Ranges) -
         Route("/", _index),
         Route("/api/page", _getting(lambda query: page_api.page_record(page))),
         Route("/api/design", _getting(lambda query: page_api.design_record(page, query["path"]))),
+        Route("/api/name", _getting(lambda query: page_api.name_record(page, query))),
         *(
             Route(f"/api/{name}", _posting(page, call), methods=["POST"])
             for name, call in (

@@ -52,15 +52,14 @@ class Sockets:
                 async with asyncio.timeout(PATIENCE_S):
                     first = json_object(await _frame(socket))
             except TimeoutError:
-                await socket.close(POLICY, "no token came")
+                await _close(socket, POLICY, "no token came")
                 return
             if not self._door.opens(first.get("token")):
-                await socket.close(WRONG_TOKEN, "not the token of this start")
+                await _close(socket, WRONG_TOKEN, "not the token of this start")
                 return
             await _Talk(socket, self._jobs).held()
         except BadRequest as error:
-            with contextlib.suppress(RuntimeError, WebSocketDisconnect):
-                await socket.close(MALFORMED, str(error)[:100])
+            await _close(socket, MALFORMED, str(error)[:100])
         except WebSocketDisconnect:
             pass
         finally:
@@ -82,7 +81,7 @@ class _Talk:
         end = self._jobs.listen(self._heard)
         teller = asyncio.create_task(self._tell())
         try:
-            await self._socket.send_json({"kind": "ready", "version": version()})
+            await self._say({"kind": "ready", "version": version()})
             while True:
                 await self._answer(json_object(await _frame(self._socket)))
         finally:
@@ -177,7 +176,10 @@ class _Talk:
         return {"kind": kind, "ticket": ticket, **job.record, **known}
 
     async def _say(self, message: Record) -> None:
-        await self._socket.send_json(message)
+        try:
+            await self._socket.send_json(message)
+        except RuntimeError:  # the library's word for a window that was closed meanwhile
+            raise WebSocketDisconnect from None
 
 
 def effort_of(asked: Mapping[str, object]) -> Effort:
@@ -192,6 +194,11 @@ def effort_of(asked: Mapping[str, object]) -> Effort:
     if wanted == "full":
         return "full"
     raise BadRequest("want: accepted coarse or full")
+
+
+async def _close(socket: WebSocket, code: int, why: str) -> None:
+    with contextlib.suppress(RuntimeError, WebSocketDisconnect):  # it has gone already
+        await socket.close(code, why)
 
 
 async def _frame(socket: WebSocket) -> str:

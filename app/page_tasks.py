@@ -171,7 +171,7 @@ def sweep(tasks: Tasks, page: Page, body: Mapping[str, object]) -> Record:
     path = text_of(body, "path")
     out = _out(page.folder, body, f"{Path(path).stem}-sweep", path)
     study = page.folder.design_file(path)
-    base = _base_of(study)
+    base = _base_of(page.folder, path)
     if base is not None:
         page.folder.name_of(study.parent / base)
         page.folder.keep_inside(*_named(page.folder, study.parent / base))
@@ -263,7 +263,7 @@ def _ledger_folder(folder: Folder, name: str) -> Path:
 def _free_name(folder: Folder, study: str, number: int) -> str:
     """Of a row's design; that of the study's base, then the row's number."""
     path = folder.design_file(study)
-    base = _base_of(path)
+    base = _base_of(folder, study)
     if base is None:
         raise LamwrightError(f"{study}: names no base; accepted the study's file")
     named = folder.name_of(path.parent / base)
@@ -276,16 +276,16 @@ def _out(folder: Folder, body: Mapping[str, object], usual: str, path: str) -> s
     """Name of the folder for the results, beside the file that they are of."""
     stated = maybe_text_of(body, "out")
     name = stated or (Path(path).parent / usual).as_posix()
-    folder.file(name)
+    folder.new_folder(name)
     return name
 
 
-def _base_of(study: Path) -> str | None:
+def _base_of(folder: Folder, study: str) -> str | None:
     import tomllib
 
     try:
-        base = tomllib.loads(study.read_text(encoding="utf-8-sig")).get("base")
-    except (OSError, ValueError, RecursionError):
+        base = tomllib.loads(folder.text(study)[0]).get("base")
+    except (ValueError, RecursionError):
         return None  # its reader says what is wrong
     return base if isinstance(base, str) else None
 

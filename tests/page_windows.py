@@ -1,6 +1,7 @@
 """A page's server as a user starts it, and its windows, for the tests of the page."""
 
 import re
+import shutil
 import subprocess
 import sys
 import time
@@ -11,7 +12,13 @@ from typing import Any
 
 ROOT = Path(__file__).parents[1]
 DEMO = "demo_24s4p_arc.toml"
+BROWSERS = ("chromium", "chromium-browser", "google-chrome")
 WIDE, TABLET = (1280, 800), (820, 1180)
+
+
+def browser_path() -> str | None:
+    """The distribution's Chromium."""
+    return next((found for name in BROWSERS if (found := shutil.which(name))), None)
 
 
 @dataclass
@@ -23,12 +30,18 @@ class Served:
     address: str = ""
     process: subprocess.Popen[str] | None = None
 
+    @property
+    def said(self) -> Path:
+        """What its last start has said of errors."""
+        return self.folder.parent / "said.txt"
+
     def start(self) -> None:
         """Start it, on the same port each time; its address has a new token each time."""
         command = [sys.executable, "-m", "lamwright.app", "page", str(self.folder / DEMO)]
-        self.process = subprocess.Popen(
-            [*command, "--port", str(self.port)], stdout=subprocess.PIPE, text=True
-        )
+        with self.said.open("w", encoding="utf-8") as said:
+            self.process = subprocess.Popen(
+                [*command, "--port", str(self.port)], stdout=subprocess.PIPE, stderr=said, text=True
+            )
         assert self.process.stdout is not None
         line = self.process.stdout.readline()
         found = re.search(r"http://\S+", line)
@@ -76,6 +89,12 @@ class Watched:
         while not what():
             assert time.monotonic() < end, "did not come"
             self.page.wait_for_timeout(25)
+
+    def leave(self) -> None:
+        """Leave a dialog by Escape and wait until it has gone: the browser closes it later."""
+        self.page.keyboard.press("Escape")
+        self.until(lambda: self.page.locator("dialog[open]").count() == 0)
+        self.page.wait_for_timeout(100)
 
     def is_saved(self) -> None:
         """Wait until the page says that the file holds what it shows."""

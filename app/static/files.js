@@ -1,6 +1,7 @@
 // Design files: which one is open, saving, going back, releasing, and the dialogs that go with it.
 
 import { byId, el, set, setText } from "./dom.js";
+import { get } from "./api.js";
 import { ask } from "./dialogs.js";
 import { isOpen } from "./tasks.js";
 import { giveToken } from "./token.js";
@@ -67,28 +68,53 @@ export class Files {
     else await this.saveAs();
   }
 
+  // What the server would refuse is asked before it is tried, and told in the dialog.
   async saveAs() {
     const { path, sha256 } = this.#design;
+    let [named, there] = [path, null];
     const answer = await ask("Save under a name", {
       fields: [{ name: "path", label: "File, in the page's folder", value: sha256 ? path.replace(/(-\d+)?\.toml$/, "-2.toml") : path }],
       buttons: [{ value: "save", text: "Save" }],
+      attempt: async (given) => {
+        named = given.path.endsWith(".toml") ? given.path : `${given.path}.toml`;
+        const { fault, exists } = await get("/api/name", { path: named, use: "design" });
+        there = exists && (named !== path || !sha256) ? `${named} is there already.` : null;
+        if (fault || there) return fault;
+        there = await this.#tried(named, false);
+        return null;
+      },
     });
-    if (answer) await this.#save(answer.path.endsWith(".toml") ? answer.path : `${answer.path}.toml`, false);
+    if (answer && there) await this.#overwrite(named, there);
   }
 
   async #save(path, isReplacing) {
     try {
-      await this.#design.save(path, isReplacing);
-      this.#line.clear("fault");
-      this.#say(`saved as ${path}`);
+      const there = await this.#tried(path, isReplacing);
+      if (there) await this.#overwrite(path, there);
     } catch (error) {
-      if (error.status !== 409) return this.#fault(error);
-      const answer = await ask("Another file is there", {
-        lines: [error.message], buttons: [{ value: "as", text: "Save as \u2026", isMain: true }, { value: "replace", text: "Replace it" }],
-      });
-      if (answer?.button === "replace") await this.#save(path, true);
-      if (answer?.button === "as") await this.saveAs();
+      this.#fault(error);
     }
+  }
+
+  // Null once it is saved, else what is said of another file that is there.
+  async #tried(path, isReplacing) {
+    try {
+      await this.#design.save(path, isReplacing);
+    } catch (error) {
+      if (error.status === 409) return error.message;
+      throw error;
+    }
+    this.#line.clear("fault");
+    this.#say(`saved as ${path}`);
+    return null;
+  }
+
+  async #overwrite(path, there) {
+    const answer = await ask("Another file is there", {
+      lines: [there], buttons: [{ value: "as", text: "Save as \u2026", isMain: true }, { value: "replace", text: "Replace it" }],
+    });
+    if (answer?.button === "replace") await this.#save(path, true);
+    if (answer?.button === "as") await this.saveAs();
   }
 
   async discard() {
@@ -119,19 +145,19 @@ export class Files {
       await this.save();
       if (this.#design.isChanged) return;
     }
-    const answer = await ask("Release for manufacture", {
+    await ask("Release for manufacture", {
       lines: ["Computes the full verdict, unless it is known, and writes drawings, outlines and solids of the saved design into a folder; an earlier package there is replaced.", "Rotors can burst: have a competent person check it before anything is built."],
       fields: [{ name: "out", label: "Folder for it, in the page's folder", value: this.#design.path.replace(/\.toml$/, "-release") },
         { name: "despite", label: "even if limits are missed", type: "checkbox" }],
       buttons: [{ value: "release", text: "Release" }],
+      attempt: async ({ out, despite }) => {
+        const { fault } = await get("/api/name", { path: out, use: "folder" });
+        if (fault) return fault;
+        await this.#tasks.begin("release", { path: this.#design.path, out, despite_limits: despite });
+        this.#tabs.choose("release");
+        return null;
+      },
     });
-    if (!answer) return;
-    try {
-      await this.#tasks.begin("release", { path: this.#design.path, out: answer.out, despite_limits: answer.despite });
-      this.#tabs.choose("release");
-    } catch (error) {
-      this.#fault(error);
-    }
   }
 
   // A design of a study: it becomes a new file when it is saved.
@@ -142,8 +168,12 @@ export class Files {
 
   askForAddress(open) {
     this.#line.set("strange", "The server was started anew, with another address. Open the address that it printed, or paste it here.", [{ text: "Paste the address", call: async () => {
-      const answer = await ask("The address that the server printed", { fields: [{ name: "address", label: "http://127.0.0.1:\u2026/#token=\u2026" }], buttons: [{ value: "go", text: "Connect" }] });
-      if (answer && giveToken(answer.address)) open();
+      const answer = await ask("The address that the server printed", {
+        fields: [{ name: "address", label: "http://127.0.0.1:\u2026/#token=\u2026" }],
+        buttons: [{ value: "go", text: "Connect" }],
+        attempt: ({ address }) => giveToken(address),
+      });
+      if (answer) open();
     } }]);
   }
 

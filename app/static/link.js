@@ -5,7 +5,7 @@
 // A lost socket is tried again after 0.3 s, then ever later up to 3 s, for as long as the page is open.
 
 import { Teller } from "./dom.js";
-import { currentToken } from "./token.js";
+import { currentToken, tokenIsTaken, tryAnother } from "./token.js";
 
 const LONGEST_WAIT_MS = 3000;
 
@@ -25,6 +25,11 @@ export class Link extends Teller {
     socket.addEventListener("close", () => this.#closed(socket));
   }
 
+  // Another token has come; one that the server takes is kept.
+  offered() {
+    if (this.state === "strange" && tryAnother()) this.open();
+  }
+
   // False if it cannot be sent now; who wants it asks again when the state is "on".
   send(message) {
     if (this.state !== "on") return false;
@@ -40,6 +45,7 @@ export class Link extends Teller {
   #received(message) {
     if (message.kind === "ready") {
       this.#wait = 300;
+      tokenIsTaken();
       this.#become("on");
     } else {
       this.tell("message", message);
@@ -55,6 +61,10 @@ export class Link extends Teller {
       state = answer.status === 403 ? "strange" : "apart";
     } catch { /* nobody there */ }
     if (this.#socket !== null) return;
+    if (state === "strange" && tryAnother()) {
+      this.open();
+      return;
+    }
     this.#become(state);
     this.#timer = setTimeout(() => this.open(), this.#wait);
     this.#wait = Math.min(LONGEST_WAIT_MS, this.#wait * 1.6);

@@ -187,7 +187,7 @@ kept.on("changed", () => {
 link.on("state", async (state) => {
   if (state === "gone") line.set("gone", "The server does not answer. What you change is kept in this window; it is tried again all the time.");
   else line.clear("gone");
-  if (state === "strange") files.askForAddress(() => link.open());
+  if (state === "strange") files.askForAddress(() => link.offered());
   else line.clear("strange");
   if (state === "apart") line.set("apart", "No verdicts for the moment: the server has no place for this window's socket. It is tried again.");
   else line.clear("apart");
@@ -277,7 +277,7 @@ stage.addEventListener("keydown", (event) => {
 
 pageKeys(new Keys(), act, byId("help-keys"));
 kept.tell("changed");
-takeToken(() => link.open());
+takeToken(() => link.offered());
 onChangedElsewhere((path) => {
   if (path === design.path && !handles.isMoving) design.refresh().catch(() => {});
 });

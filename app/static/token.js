@@ -1,29 +1,53 @@
 // The token of this start: from the address's fragment, kept for this tab, told to the other tabs.
 //
 // A server that starts anew has another token. Who opens its new address in any tab frees the
-// others: the new token comes to them through a channel of this origin alone.
+// others: the new token comes to them through a channel of this origin alone. A token is kept and
+// told once the server has taken it; till then it is one to try, so that an address with a wrong
+// one, wherever it was found, takes the right one from no tab.
 
 const KEY = "lamwright-token";
+const MOST_TRIED = 4;
 const channel = new BroadcastChannel("lamwright");
 let token = null;
+let others = []; // to be tried when the server does not take `token`, the newest first
 
+// `call`: there is another token to try.
 export function takeToken(call) {
-  const found = tokenOf(location.hash);
-  if (found) {
-    history.replaceState(null, "", location.pathname);
-    keep(found);
-    channel.postMessage({ kind: "token", token: found });
-  } else {
-    token = sessionStorage.getItem(KEY);
-  }
+  token = fromAddress() ?? sessionStorage.getItem(KEY);
+  offer(sessionStorage.getItem(KEY));
+  window.addEventListener("hashchange", () => offer(fromAddress()) && call());
   channel.addEventListener("message", ({ data }) => {
-    if (data.kind === "token" && data.token !== token) {
-      keep(data.token);
-      call();
-    }
+    if (data.kind === "token" && offer(data.token)) call();
     if (data.kind === "changed") listeners.forEach((listener) => listener(data.path));
     if (data.kind === "begun") onBegun();
   });
+}
+
+// The server has taken it.
+export function tokenIsTaken() {
+  others = [];
+  if (sessionStorage.getItem(KEY) === token) return;
+  sessionStorage.setItem(KEY, token);
+  channel.postMessage({ kind: "token", token });
+}
+
+// The server does not take it: whether there is another one, which is the current one now.
+export function tryAnother() {
+  if (!others.length) return false;
+  token = others.shift();
+  return true;
+}
+
+function fromAddress() {
+  const found = tokenOf(location.hash);
+  if (found) history.replaceState(null, "", location.pathname);
+  return found;
+}
+
+function offer(found) {
+  if (!found || found === token) return false;
+  others = [found, ...others.filter((one) => one !== found)].slice(0, MOST_TRIED);
+  return true;
 }
 
 const listeners = [];
@@ -52,21 +76,20 @@ export function currentToken() {
   return token ?? "";
 }
 
-// From an address as the server prints it, or the token alone; null if it is neither.
-export function giveToken(address) {
-  const found = tokenOf(address) ?? (/^[\w-]{20,}$/.test(address.trim()) ? address.trim() : null);
-  if (found) {
-    keep(found);
-    channel.postMessage({ kind: "token", token: found });
+// Take a typed address, as the server prints it, or the token alone: null, or a line that says why not.
+export async function giveToken(address) {
+  const found = tokenOf(address) ?? (/^[\w-]{20,}$/.test(address) ? address : null);
+  if (!found) return "no address of a page; accepted http://127.0.0.1:\u2026/#token=\u2026";
+  try {
+    const answer = await fetch("/api/page", { headers: { "X-Page-Token": found } });
+    if (!answer.ok) return (await answer.json()).error;
+  } catch {
+    return "the server does not answer";
   }
-  return found;
+  offer(found);
+  return null;
 }
 
 function tokenOf(text) {
   return /#token=([\w-]+)/.exec(text)?.[1] ?? null;
-}
-
-function keep(found) {
-  token = found;
-  sessionStorage.setItem(KEY, found);
 }

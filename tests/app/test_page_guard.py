@@ -109,6 +109,58 @@ def test_no_name_leads_outside(tmp_path: Path, name: str):
     assert listed == [DEMO]
 
 
+NEW_NAMES = ["../x", "link", "C:x", "nul", "what?", "x" * 300, "no/x", "pipe", ".x", "\0"]
+
+
+def test_a_name_is_refused_in_the_same_words_before_and_after(tmp_path: Path):
+    """What the page asks before it tries is what the server would say, of files and of folders.
+
+    A name that may be used says whether there is something; nothing is made or written by asking.
+    """
+    client = client_of(demo_folder(tmp_path))
+    (tmp_path / "link.toml").symlink_to(tmp_path.parent / "elsewhere.toml")
+    (tmp_path / "link").symlink_to(tmp_path.parent)
+    for name in ("pipe.toml", "pipe"):
+        os.mkfifo(tmp_path / name)
+    before = sorted(tmp_path.rglob("*"))
+
+    def asked(name: str, use: str) -> dict[str, object]:
+        found: dict[str, object] = client.get("/api/name", params={"path": name, "use": use}).json()
+        return found
+
+    for name in NEW_NAMES:
+        body = {"path": f"{name}.toml", "text": "", "sha256": None, "replace": True}
+        refused = client.post("/api/save", json=body)
+        assert refused.status_code in (403, 422), name
+        assert asked(f"{name}.toml", "design")["fault"] == refused.json()["error"]
+        if name != "no/x":  # folders are made with what is above them
+            refused = client.post("/api/release", json={"path": DEMO, "out": name})
+            assert refused.status_code in (403, 422), name
+            assert asked(name, "folder")["fault"] == refused.json()["error"]
+    assert asked(DEMO, "design") == {"fault": None, "exists": True}
+    assert asked("new.toml", "design") == {"fault": None, "exists": False}
+    assert asked("new/folder", "folder") == {"fault": None, "exists": False}
+    assert "is a file" in str(asked(f"{DEMO}/below", "folder")["fault"])
+    assert [
+        path for path in sorted(tmp_path.rglob("*")) if ".lamwright-page" not in str(path)
+    ] == before
+
+
+def test_a_pipe_is_no_design(tmp_path: Path):
+    """Opening one would wait for ever; as a study, a study's base, a card or a draft neither."""
+    page = demo_folder(tmp_path)
+    client = client_of(page)
+    os.mkfifo(tmp_path / "pipe.toml")
+    answer = client.get("/api/design", params={"path": "pipe.toml"})
+    assert (answer.status_code, "not a regular file" in answer.text) == (422, True)
+    (tmp_path / "study.toml").write_text('base = "pipe.toml"')
+    for study in ("pipe.toml", "study.toml"):
+        assert client.post("/api/sweep", json={"path": study}).status_code == 422
+    (page.folder.cache / "drafts").mkdir(exist_ok=True)
+    os.mkfifo(page.folder.cache / "drafts" / f"{'0' * 32}.json")
+    assert [one["path"] for one in client.get("/api/page").json()["designs"]] == [DEMO]
+
+
 @pytest.mark.parametrize(
     "name",
     ["%2e%2e/secret.toml", "..%2fsecret.toml", "%2e%2e%2fsecret.toml"],

@@ -154,6 +154,29 @@ def test_malformed_frames_end_the_line(live, name: str):
 
 
 @pytest.mark.slow
+def test_windows_that_close_at_any_moment_are_no_fault(live):
+    """With wishes under way: no traceback (the end of `live` looks), and the server goes on."""
+    from websockets.sync.client import connect
+
+    page, folder = live
+    text, rng = (folder / DEMO).read_text(), random.Random(1)
+    for k in range(24):
+        at = f"ws://{page.host}/api/work"
+        with (
+            contextlib.suppress(Exception),  # the ends of sockets that were closed
+            connect(at, origin=f"http://{page.host}", close_timeout=1) as line,  # type: ignore[arg-type]
+        ):
+            line.send(json.dumps({"token": page.token if k % 10 else "another"}))
+            for ticket in range(rng.randrange(8)):
+                want = text.replace("gap_mm = 0.4", f"gap_mm = 0.{400 + rng.randrange(9)}")
+                asked = {"want": "coarse", "path": DEMO, "text": want, "ticket": ticket}
+                line.send(json.dumps(asked))
+            time.sleep(rng.random() * 0.1)
+            line.socket.close()
+    assert page.ask("/api/page")["start"] == DEMO
+
+
+@pytest.mark.slow
 def test_who_is_slow_holds_no_place(live):
     """A body that trickles is answered by 408; a head that does not end, and silence, are cut."""
     page, _ = live

@@ -10,9 +10,8 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from page_windows import DEMO, ROOT, WIDE, Served, Watched
+from page_windows import DEMO, ROOT, WIDE, Served, Watched, browser_path
 
-BROWSERS = ("chromium", "chromium-browser", "google-chrome")
 ARGUMENTS = (
     *("--no-sandbox", "--disable-gpu", "--disable-quic", "--no-first-run", "--disable-sync"),
     *("--disable-background-networking", "--disable-component-update"),
@@ -21,7 +20,7 @@ ARGUMENTS = (
 
 @pytest.fixture(scope="session")
 def chromium() -> Iterator[Any]:
-    path = next((found for name in BROWSERS if (found := shutil.which(name))), None)
+    path = browser_path()
     if path is None:
         pytest.skip("no Chromium here: apt-get install chromium")
     sync_api = pytest.importorskip("playwright.sync_api", reason="no Playwright here")
@@ -35,7 +34,7 @@ def chromium() -> Iterator[Any]:
 def without_webgl(chromium: Any) -> Iterator[Any]:
     """The same browser on a machine that has no WebGL."""
     browser = chromium.browser_type.launch(
-        executable_path=next(found for name in BROWSERS if (found := shutil.which(name))),
+        executable_path=browser_path(),
         args=[*ARGUMENTS, "--disable-3d-apis"],
     )
     yield browser
