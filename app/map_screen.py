@@ -13,7 +13,7 @@ from lamwright.geometry.errors import LamwrightError
 from .lines import error_number, valued
 from .map_grid import GridWishes
 from .mapping import MapReport
-from .report_screen import print_ending
+from .report_screen import print_ending, print_table
 
 MOST_LISTED = 10_000  # characters of a list of currents
 
@@ -65,7 +65,7 @@ def print_map(report: MapReport, folder: str) -> None:
             if figure.key not in counts:
                 shown = "" if math.isnan(bar) else error_number(bar)
                 table.add_row(figure.label, valued(figure), shown)
-    console.print(table)
+    print_table(console, table)
     if counts:
         told = ", ".join(f"{figure.label} {figure.value}" for figure in counts.values())
         console.print(f"[dim]{told}[/dim]", soft_wrap=True)

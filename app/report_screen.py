@@ -1,9 +1,24 @@
-"""How the reports of `map` and `ribs` end on the terminal."""
+"""Tables on the terminal, and how the reports of `map` and `ribs` end there."""
 
 from collections.abc import Mapping, Sequence
 
+from rich import box
 from rich.console import Console
 from rich.markup import escape
+from rich.table import Table
+
+
+def print_table(console: Console, table: Table) -> None:
+    """A table, without lines between its columns where it would be too wide with them.
+
+    So that no label takes two lines on the 80 columns of a plain terminal.
+    """
+    wanted = table.__rich_measure__(console, console.options.update(width=10 * console.width))
+    if wanted.maximum > console.width:
+        table.box = box.HORIZONTALS
+        table.show_edge = table.pad_edge = False
+        table.collapse_padding = True
+    console.print(table)
 
 
 def print_ending(

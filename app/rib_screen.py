@@ -13,7 +13,7 @@ from rich.text import Text
 from lamwright.postprocess.rib_tables import shown_ribs
 
 from .lines import error_number, number, valued
-from .report_screen import print_ending
+from .report_screen import print_ending, print_table
 from .rib_work import RibsReport
 from .thin_screen import THIN_TABLE, thin_screen
 
@@ -34,13 +34,13 @@ LIFE = "life_2_3_percent_cycles"
 def print_ribs(report: RibsReport, folder: str) -> None:
     """The ribs, most stressed first, then the figures, what is missing, cautions and files."""
     console = Console(highlight=False)
-    console.print(_ribs_table(report))
+    print_table(console, _ribs_table(report))
     more = len(shown_ribs(report.ribs)) - MOST_SHOWN
     if more > 0:
         console.print(f"[dim]{more} more ribs in ribs.csv[/dim]")
     if THIN_TABLE in report.tables:
-        console.print(thin_screen(report.tables[THIN_TABLE]))
-    console.print(_figures_table(report))
+        print_table(console, thin_screen(report.tables[THIN_TABLE]))
+    print_table(console, _figures_table(report))
     for key, fact in report.facts.items():
         told = fact if isinstance(fact, str) else ("yes" if fact else "no")
         console.print(f"{key.replace('_', ' ')}: {escape(told)}", soft_wrap=True)

@@ -11,7 +11,9 @@ from rich.text import Text
 from lamwright.postprocess.glance import glance_rows, limit_rows, verdict_line
 from lamwright.postprocess.verdict import Verdict
 
-STYLES = {"holds": "green", "missed": "bold red", "over supply": "yellow", "": ""}
+from .report_screen import print_table
+
+STYLES = {"holds": "green", "missed": "bold red", "exceeded": "yellow", "": ""}
 
 
 def print_verdict(verdict: Verdict, folder: str, also: Sequence[str] = ()) -> None:
@@ -20,7 +22,7 @@ def print_verdict(verdict: Verdict, folder: str, also: Sequence[str] = ()) -> No
     What fails besides the limits comes as `also`.
     """
     console = Console(highlight=False)
-    console.print(_verdict_table(verdict))
+    print_table(console, _verdict_table(verdict))
     console.print(_verdict_line(verdict, also))
     for caution in verdict.cautions:
         _print_wrapped(console, f"- {caution}")

@@ -130,9 +130,7 @@ class MagnetLoad:
         metadata=shown_as("magnet_load_n_per_mm", "load of a magnet on its wall", "N/mm", 1e-3)
     )
     grip: float = field(
-        metadata=shown_as(
-            "magnet_grip", "friction or glue it needs, of the pressure on its wall", ""
-        )
+        metadata=shown_as("magnet_grip", "friction or glue it needs over the wall's pressure", "")
     )
 
 

@@ -33,7 +33,7 @@ MAGNET_GLANCE = (
 )
 
 
-Word = Literal["", "holds", "missed", "over supply"]
+Word = Literal["", "holds", "missed", "exceeded"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,7 +69,7 @@ def glance_rows(verdict: Verdict) -> tuple[GlanceRow, ...]:
     for key in (*GLANCE, *(key for key in MAGNET_GLANCE if key in figures)):
         figure, bar = figures[key], _bar(verdict, key)
         if key == "terminal_voltage_v":
-            word: Word = "over supply" if figure.value > supply else ""
+            word: Word = "exceeded" if figure.value > supply else ""
             limit = f"<= {number(supply)} V"
             rows.append(GlanceRow(figure.label, valued(figure), bar, limit, word))
         else:

@@ -20,9 +20,7 @@ class MagnetFigures:
         metadata=shown_as("no_load_linkage_peak_vs", "no-load linkage, peak of a phase", "V s")
     )
     linkage: float = field(
-        metadata=shown_as(
-            "no_load_linkage_fundamental_vs", "no-load linkage psi_m, fundamental", "V s"
-        )
+        metadata=shown_as("no_load_linkage_fundamental_vs", "no-load linkage, fundamental", "V s")
     )
     psi_q: float = field(
         metadata=shown_as("no_load_psi_q_vs", "q-axis flux linkage at no load", "V s")
@@ -36,7 +34,7 @@ class MagnetFigures:
         )
     )
     line_emf: float = field(
-        metadata=shown_as("back_emf_v", "back-emf between lines at rated speed, rms", "V")
+        metadata=shown_as("back_emf_v", "back-emf, lines, rated speed, rms", "V")
     )
     line_emf_fundamental: float = field(
         metadata=shown_as("back_emf_fundamental_v", "back-emf between lines, fundamental, rms", "V")

@@ -7,6 +7,9 @@ import pytest
 
 from lamwright.app.lines import number
 from lamwright.app.screen import print_verdict
+from lamwright.postprocess.glance import glance_rows, limit_rows
+from lamwright.postprocess.magnet_figures import MagnetFigures
+from lamwright.postprocess.verdict import all_figures
 
 
 @pytest.mark.parametrize(
@@ -50,4 +53,21 @@ def test_voltage_over_the_supply_is_seen(capsys):
     """No limit of the design file, but a rated point that the supply cannot drive."""
     terminal = dataclasses.replace(invented.TERMINAL, line_voltage=431.0)
     print_verdict(invented.verdict(terminal=terminal), "out")
-    assert "over supply" in capsys.readouterr().out
+    assert "exceeded" in capsys.readouterr().out
+
+
+def test_no_label_takes_two_lines_on_a_plain_terminal(capsys, monkeypatch):
+    """80 columns, the longest labels (magnets), every figure with an error bar."""
+    monkeypatch.setenv("COLUMNS", "80")
+    magnets = MagnetFigures(**{item.name: 0.0123456 for item in dataclasses.fields(MagnetFigures)})
+    terminal = dataclasses.replace(invented.TERMINAL, line_voltage=431.0)
+    verdict = invented.verdict(terminal=terminal, magnets=(magnets,))
+    shown = {figure.label for figure in all_figures(verdict).values()}
+    verdict = dataclasses.replace(verdict, errors=dict.fromkeys(all_figures(verdict), 0.000123))
+    print_verdict(verdict, "out")
+    lines = capsys.readouterr().out.splitlines()
+    assert max(len(line) for line in lines) <= 80
+    table = lines[3 : lines.index(next(line for line in lines if line.startswith("passes")))]
+    rows = [line.split("  ")[0] for line in table if not line.startswith("\u2500")]
+    assert len(rows) == len(limit_rows(verdict)) + len(glance_rows(verdict))
+    assert set(rows) <= shown

@@ -51,7 +51,7 @@ def test_a_verdict_tells_a_voltage_over_the_supply():
         "~ 500.0 V",
         "",
         "<= 400.0 V",
-        "over supply",
+        "exceeded",
     ] in rows
 
 
