@@ -1,12 +1,13 @@
 """The front door: all jobs of the command line, from Python.
 
-A job takes a file and a folder, writes into the folder what its command writes, and returns what it
-found; it prints nothing and asks nothing. `progress` arguments are called with a phase and a share.
+A job takes a file and a folder, each as text or `Path`, writes into the folder what its command
+writes, and returns what it found; it prints nothing and asks nothing. `progress` arguments are
+called with a phase and a share.
 
 | job | function |
 |---|---|
 | a first design for a stator | `start_design(StartChoices(...))` |
-| the design and its cards; one field solution | `read_machine`, `solve` |
+| the design and its cards (a notebook shows it); one field solution | `read_machine`, `solve` |
 | geometry and DXF; the verdict of one design | `outline`, `assess` |
 | the same of a rotor as supplied | `assess_outline(..., OutlineWishes(file))` |
 | flux map, ribs, tolerances, slopes | `map_design`, `ribs_design`, `spread_design`, `slope_table` |
@@ -45,11 +46,12 @@ if TYPE_CHECKING:
     from .start import StartChoices as StartChoices
     from .start import start as _start
     from .study_hire import PoolWishes as PoolWishes
-    from .study_pictures import draw_study as draw_study
+    from .study_pictures import write_pictures as _write_pictures
     from .sweep import sweep as _sweep
     from .verify import verify as _verify
 
     compare_designs = _compare
+    draw_study = _write_pictures
     release_design = _release
     search_study = _search
     slope_table = _slopes
@@ -74,7 +76,7 @@ _HOME_OF = {
     "assess": ("run", "assess"),
     "assess_outline": ("outline_run", "assess_outline"),
     "compare_designs": ("compare", "compare"),
-    "draw_study": ("study_pictures", "draw_study"),
+    "draw_study": ("study_pictures", "write_pictures"),
     "map_design": ("map_run", "map_design"),
     "outline": ("lamination", "outline"),
     "read_machine": ("point", "read_machine"),
@@ -97,3 +99,8 @@ def __getattr__(name: str) -> object:
         raise AttributeError(f"{__name__} has no {name}")
     module, own = _HOME_OF[name]
     return getattr(import_module(f".{module}", __name__), own)
+
+
+def __dir__() -> list[str]:
+    """The names that are to be used, so that a notebook completes them."""
+    return __all__

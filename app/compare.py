@@ -66,13 +66,13 @@ class CompareReport:
         )
 
 
-def compare(first: Path, second: Path) -> CompareReport:
+def compare(first: str | Path, second: str | Path) -> CompareReport:
     """Compare what two paths hold.
 
     Raises:
         LamwrightError: one of them cannot be compared, or they have nothing in common; one line.
     """
-    a, b = read_side(first), read_side(second)
+    a, b = read_side(Path(first)), read_side(Path(second))
     found, ribs = None, _pairs(a.ribs, b.ribs)
     changes: tuple[str, ...] = ()
     gaps = None

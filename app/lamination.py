@@ -36,13 +36,14 @@ class OutlineReport:
     recognised: tuple[Recognised, ...] = ()  # of each part that is a drawing
 
 
-def outline(path: Path, out: Path) -> OutlineReport:
+def outline(path: str | Path, out: str | Path) -> OutlineReport:
     """Write the punch outline of the design in `path` to the folder `out`.
 
     Raises:
         DesignError: the design cannot be read or drawn; one line for each fault.
         LamwrightError: the folder cannot be written.
     """
+    path, out = Path(path), Path(out)
     machine = read_marked(path, out)
     section = section_of(machine)
     folder = prepared_folder(out)

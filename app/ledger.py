@@ -53,12 +53,13 @@ class Ledger:
         self._version = version()
 
     @classmethod
-    def open(cls, folder: Path, study: "Study") -> "Ledger":
+    def open(cls, folder: str | Path, study: "Study") -> "Ledger":
         """The ledger of a study for writing, made where there is none.
 
         Raises:
             LamwrightError: it is of another study, in use, damaged, or cannot be written.
         """
+        folder = Path(folder)
         path = folder / LEDGER_FILE
         with told(path):
             lock = locked(folder)
@@ -71,13 +72,13 @@ class Ledger:
         return ledger
 
     @classmethod
-    def read(cls, folder: Path) -> "Ledger":
+    def read(cls, folder: str | Path) -> "Ledger":
         """The ledger in a folder for reading, also while another process writes.
 
         Raises:
             LamwrightError: there is none, or it cannot be read.
         """
-        path = folder / LEDGER_FILE
+        path = Path(folder) / LEDGER_FILE
         if not path.is_file():
             raise LamwrightError(f"{folder}: holds no {LEDGER_FILE}; give the --out of a study")
         with told(path):

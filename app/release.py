@@ -64,7 +64,10 @@ class ReleaseReport:
 
 
 def release(
-    path: Path, out: Path, wishes: ReleaseWishes | None = None, progress: Progress = silent
+    path: str | Path,
+    out: str | Path,
+    wishes: ReleaseWishes | None = None,
+    progress: Progress = silent,
 ) -> ReleaseReport:
     """Write the package of the design in `path` to the folder `out`.
 
@@ -74,7 +77,7 @@ def release(
             or the folder holds something else.
         NotConverged: the verdict's iterations did not end.
     """
-    wishes = wishes or ReleaseWishes()
+    path, out, wishes = Path(path), Path(out), wishes or ReleaseWishes()
     progress("outline", 0.0)
     machine = read_machine(path)
     section = section_of(machine)

@@ -45,7 +45,7 @@ _UNITS = {
 }
 
 
-def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
+def write_pictures(ledger: Ledger, folder: str | Path) -> tuple[Path, ...]:
     """Write the pictures of a study beside its ledger, as PNG and SVG.
 
     Raises:
@@ -63,7 +63,7 @@ def write_pictures(ledger: Ledger, folder: Path) -> tuple[Path, ...]:
         section = _section(ledger, rows[k])
         if section is not None:
             sections[k] = section
-    return write_study_figures(folder, studied, sections)
+    return write_study_figures(Path(folder), studied, sections)
 
 
 def draw_study(folder: Path, study: "Study", command: str, options: str) -> None:

@@ -58,7 +58,7 @@ class VerifyReport:
         return not self.changes
 
 
-def verify(folder: Path, solve: bool = False, progress: Progress = silent) -> VerifyReport:
+def verify(folder: str | Path, solve: bool = False, progress: Progress = silent) -> VerifyReport:
     """Compare a package with its manifest and with the design in it.
 
     Args:
@@ -70,6 +70,7 @@ def verify(folder: Path, solve: bool = False, progress: Progress = silent) -> Ve
     Raises:
         LamwrightError: there is no manifest that can be read.
     """
+    folder = Path(folder)
     path = folder / MANIFEST_FILE
     manifest = read_record(path, A_PACKAGE)
     if manifest.get("form") != FORM:

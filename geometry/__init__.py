@@ -3,6 +3,7 @@
 In: the path of a design file and its steel cards (`read_machine`). Out: `CrossSection`
 (`draw_section`), named regions of one pole bounded by lines and circular arcs, which every other
 room reads; `draw_pole`, its picture as SVG; the winding table; the DXF of the whole lamination.
+`Machine` and `MachineDesign` show themselves in a notebook; every error is a `LamwrightError`.
 Names load when they are first used.
 """
 
@@ -77,3 +78,8 @@ def __getattr__(name: str) -> object:
         raise AttributeError(f"{__name__} has no {name}")
     module, own = _HOME_OF[name]
     return getattr(import_module(f".{module}", __name__), own)
+
+
+def __dir__() -> list[str]:
+    """The names that are to be used, so that a notebook completes them."""
+    return __all__

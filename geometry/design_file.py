@@ -56,12 +56,13 @@ class Machine:
         return machine_html(self)
 
 
-def read_design(path: Path) -> MachineDesign:
+def read_design(path: str | Path) -> MachineDesign:
     """The validated design in the TOML file `path`.
 
     Raises:
         DesignError: the file cannot be read or used; one line for each fault.
     """
+    path = Path(path)
     return _design(path, _text(path))
 
 
@@ -105,7 +106,7 @@ def read_magnet_card(path: Path) -> MagnetCard:
     return _checked_card(path, MagnetCard, magnet_card_findings)
 
 
-def read_machine(path: Path, text: str | None = None) -> Machine:
+def read_machine(path: str | Path, text: str | None = None) -> Machine:
     """The design in `path` and the cards it names; names count from the design's folder.
 
     Args:
@@ -115,6 +116,7 @@ def read_machine(path: Path, text: str | None = None) -> Machine:
     Raises:
         DesignError: the design or a card cannot be read or used; one line for each fault.
     """
+    path = Path(path)
     text = _text(path) if text is None else text
     design = _design(path, text)
     cards: list[SteelCard] = []

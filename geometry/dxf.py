@@ -52,14 +52,14 @@ def load() -> None:
     from ezdxf.audit import Auditor  # noqa: F401
 
 
-def write_lamination(section: CrossSection, path: FilePath) -> None:
+def write_lamination(section: CrossSection, path: str | FilePath) -> None:
     """Write the whole rotor lamination, all poles, as DXF; the file appears complete or not at all.
 
     Args:
         section: one pole in SI units.
         path: file to write; its folder must exist.
     """
-    write_contours(lamination_contours(section), path)
+    write_contours(lamination_contours(section), FilePath(path))
 
 
 def write_contours(contours: Sequence[Contour], path: FilePath) -> None:
@@ -67,13 +67,14 @@ def write_contours(contours: Sequence[Contour], path: FilePath) -> None:
     write_text(path, fixed_text(_document(contours), _remarks(contours)))
 
 
-def read_contours(path: FilePath) -> tuple[Contour, ...]:
+def read_contours(path: str | FilePath) -> tuple[Contour, ...]:
     """The closed contours of a DXF file in mm, in the file's order, in m.
 
     Raises:
         DesignError: if the file cannot be read, is not in millimetres, holds anything but closed
             and finite polylines in its model space, or nothing at all.
     """
+    path = FilePath(path)
     document = readable_document(path)
     contours = []
     for entity in document.modelspace():

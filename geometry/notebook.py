@@ -35,7 +35,8 @@ def design_html(design: "MachineDesign") -> str:
         section = cross_section(design)
     except LamwrightError as error:
         lines = "<br>".join(escape(line) for line in str(error).splitlines())
-        picture = f'<p style="color:{ACCENT}">cannot be drawn:<br>{lines}</p>'
+        edge = f"border-left:4px solid {ACCENT};padding-left:8px"
+        picture = f'<p style="{edge}">cannot be drawn:<br>{lines}</p>'
     else:
         shown = "one pole" if section.sector_poles == 1 else f"{section.sector_poles} poles"
         label = f"{design.name}: {shown} in section, ribs marked where they are thinnest"
@@ -78,9 +79,14 @@ def html_table(
     return f'<table style="border-collapse:collapse">{top}<tbody>{body}</tbody></table>'
 
 
+def shield(text: str, colour: str) -> str:
+    """White words on a colour: to be read on a light page and on a dark one."""
+    return f'<b style="background:{colour};color:#fff;padding:0 5px">{escape(text)}</b>'
+
+
 def _set(text: str | Loud) -> str:
     if isinstance(text, Loud):
-        return f'<b style="color:{ACCENT}">{escape(text.text)}</b>'
+        return shield(text.text, ACCENT)
     return escape(text)
 
 

@@ -3,7 +3,8 @@
 In: `FieldSolution` at the positions of a waveform and `StressSolution` at overspeed. Out:
 `TorqueWaveform`, `RibReport`, `Verdict` (`all_figures` gives every figure with its unit), the files
 of the output folder. `read_flux_map` gives back the `FluxMap` of a `map.nc`, `surface_of_map`
-what lies between its nodes. Names load when they are first used.
+what lies between its nodes. `Verdict` and `FluxMap` show themselves in a notebook. Names load when
+they are first used.
 """
 
 from importlib import import_module
@@ -66,3 +67,8 @@ def __getattr__(name: str) -> object:
         raise AttributeError(f"{__name__} has no {name}")
     module, own = _HOME_OF[name]
     return getattr(import_module(f".{module}", __name__), own)
+
+
+def __dir__() -> list[str]:
+    """The names that are to be used, so that a notebook completes them."""
+    return __all__

@@ -74,7 +74,7 @@ class Pictured:
 
 
 def write_figures(
-    folder: Path,
+    folder: str | Path,
     results: Pictured,
     style: Style | None = None,
     names: Iterable[str] | None = None,
@@ -92,7 +92,7 @@ def write_figures(
     """
     written: list[Path] = []
     for name in FIGURES if names is None else names:
-        written += write_figure(folder, name, partial(FIGURES[name], results), style)
+        written += write_figure(Path(folder), name, partial(FIGURES[name], results), style)
     return tuple(written)
 
 

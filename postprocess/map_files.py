@@ -124,12 +124,13 @@ def means_csv(variables: tuple[Variable, ...]) -> str:
     )
 
 
-def read_flux_map(path: Path) -> FluxMap:
+def read_flux_map(path: str | Path) -> FluxMap:
     """The map in `map.nc` or `map.csv`.
 
     Raises:
         LamwrightError: it cannot be read, or is no flux map.
     """
+    path = Path(path)
     return _from_csv(path) if path.suffix == ".csv" else _from_netcdf(path)
 
 

@@ -5,7 +5,7 @@ from html import escape
 
 import numpy as np
 
-from lamwright.geometry.notebook import Loud, html_table
+from lamwright.geometry.notebook import Loud, html_table, shield
 from lamwright.geometry.palette import ACCENT
 
 from .flux_map import FluxMap, linkage_torque, mean_linkages, mean_torque
@@ -27,8 +27,8 @@ def verdict_html(verdict: Verdict) -> str:
     cautions = "".join(f"<li>{escape(caution)}</li>" for caution in verdict.cautions)
     how = f"tolerance {verdict.tolerance}, version {verdict.version}; ~ estimate by formula"
     return (
-        f'<div><p><b>{escape(verdict.design_name)}</b> <b style="color:{colour}">'
-        f"{escape(verdict_line(verdict))}</b></p>{table}<p>{escape(how)}</p>"
+        f"<div><p><b>{escape(verdict.design_name)}</b> "
+        f"{shield(verdict_line(verdict), colour)}</p>{table}<p>{escape(how)}</p>"
         f"<details open><summary>cautions</summary><ul>{cautions}</ul></details></div>"
     )
 

@@ -29,7 +29,7 @@ _BLOCKS = {
 }
 
 
-def report_html(report: Report, folder: Path) -> str:
+def report_html(report: Report, folder: str | Path) -> str:
     """The report as HTML.
 
     Args:
@@ -37,7 +37,7 @@ def report_html(report: Report, folder: Path) -> str:
         folder: with the pictures it names, as SVG or else PNG.
     """
     pictures = {
-        block.name: _picture(folder, block)
+        block.name: _picture(Path(folder), block)
         for section in report.sections
         for block in section.blocks
         if isinstance(block, Picture)

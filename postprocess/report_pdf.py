@@ -24,7 +24,7 @@ COLOURS: dict[Mark, str] = {"": "#17212b", "good": "#0b6b3a", "bad": "#b3261e", 
 LONGEST_LINE = 100  # characters of a listing that fit the width
 
 
-def report_pdf(report: Report, folder: Path) -> bytes:
+def report_pdf(report: Report, folder: str | Path) -> bytes:
     """The report as PDF.
 
     Args:
@@ -59,7 +59,7 @@ def report_pdf(report: Report, folder: Path) -> bytes:
     for section in report.sections:
         before: list[Flowable] = [Text(escape(section.title), style["heading"])]
         for block in section.blocks:
-            parts = _set(block, folder, document.width)
+            parts = _set(block, Path(folder), document.width)
             # A heading stays with what follows it, a picture with its caption, a table with its
             # note.
             is_short = isinstance(block, Grid) and len(block.rows) <= MOST_KEPT_ROWS

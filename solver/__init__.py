@@ -59,3 +59,8 @@ def __getattr__(name: str) -> object:
         raise AttributeError(f"{__name__} has no {name}")
     module, own = _HOME_OF[name]
     return getattr(import_module(f".{module}", __name__), own)
+
+
+def __dir__() -> list[str]:
+    """The names that are to be used, so that a notebook completes them."""
+    return __all__

@@ -2,6 +2,7 @@
 
 import ast
 import importlib
+import inspect
 import subprocess
 import sys
 from pathlib import Path
@@ -45,6 +46,31 @@ def test_a_type_checker_sees_the_same_names(room: str):
             seen |= {ast.unparse(target) for target in node.targets}
     door = importlib.import_module(f"lamwright.{room}")
     assert {name for name in seen if not name.startswith("_")} == set(door.__all__)
+
+
+@pytest.mark.parametrize("room", ROOMS)
+def test_a_notebook_completes_the_names_alone(room: str):
+    """Completion asks `dir`, which would list imports of the door's own and no lazy name."""
+    door = importlib.import_module(f"lamwright.{room}")
+    assert dir(door) == sorted(door.__all__)
+
+
+@pytest.mark.parametrize("room", ROOMS)
+def test_a_place_may_be_a_text(room: str):
+    """Who types a call types a string: functions and constructors of the door take both."""
+    door = importlib.import_module(f"lamwright.{room}")
+    values = [getattr(door, name) for name in door.__all__]
+    called = [value for value in values if inspect.isfunction(value)]
+    called += [
+        made
+        for _, made in inspect.getmembers(getattr(door, "Ledger", None))
+        if inspect.ismethod(made)
+    ]
+    for function in called:
+        for key, parameter in inspect.signature(function).parameters.items():
+            kind = str(parameter.annotation)
+            if "athlib.Path" in kind and "Callable" not in kind:
+                assert kind.startswith("str | "), f"{function.__name__}({key}: {kind})"
 
 
 @pytest.mark.parametrize("room", ROOMS)
