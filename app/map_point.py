@@ -6,10 +6,10 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from lamwright.postprocess.skew import mean_solution, step_point
+from lamwright.solver.cache import Cache
 from lamwright.solver.chains import OperatingPoint
 from lamwright.solver.field import MagneticModel, solve_foreseen, solve_point, unknowns
 from lamwright.solver.foreseen import NEEDED, Node, foreseen
-from lamwright.solver.model import Cache
 from lamwright.solver.types import FieldSolution, FloatArray
 
 from .map_grid import MapGrid

@@ -23,7 +23,7 @@ from lamwright.geometry.section import CrossSection, Region, base_name
 from lamwright.geometry.winding import WindingTable
 
 from .design_motion import PartMotion, SizeMotion
-from .field import MagneticModel, PointEnergy, at_position
+from .field import MagneticModel, at_position, whole_energy
 from .form_slope import flow_slope, form_slope, mean_slope, summed_slope
 from .gap import rotor_place, sheared
 from .integrals import phase_currents
@@ -179,13 +179,13 @@ def linkage_slopes(
     currents = phase_currents(solution.i_d, solution.i_q, theta_e)
     place = at_position(model, solution.position)
     a_node = np.concatenate([solution.a_rotor, solution.a_stator])
-    energy = PointEnergy(model, place, currents @ model.linkage + model.magnet.load)
+    energy = whole_energy(model, place, currents @ model.linkage + model.magnet.load)
     _, state = energy.residual(a_node[model.representative])
     # psi_d = 2/3 sum psi_k cos(theta_k): the weights of an axis are its unit current's, times 2/3.
     weights = [2.0 / 3.0 * phase_currents(*axis, theta_e) for axis in ((1.0, 0.0), (0.0, 1.0))]
     loads = [weight @ model.linkage for weight in weights]
     # The second solution reuses the factor that the first has made.
-    duals = [energy.solve_tangent(state, loads[0]), place.solver.solve(loads[1])]
+    duals = [energy.solve_tangent(state, loads[0]), place.linear.solver.solve(loads[1])]
     values = (solution.psi_d, solution.psi_q)
     first, second = (
         _slope(model, section, winding, solution, _Dual(value, weight, currents, dual_node))

@@ -120,7 +120,7 @@ class _LaminatedEnergy:
         iron = self.laminated.model.iron
         state = tensor_state(self.laminated, iron.sign * np.append(a, 0.0)[iron.dof])
         r = summed(iron.residual_scatter, weighted(iron.quad, state.h).T)
-        r += self.position.times(a)
+        r += self.position.linear.times(a)
         r -= self.load
         return r, state
 
@@ -129,9 +129,9 @@ class _LaminatedEnergy:
         iron, weight = self.laminated.model.iron, self.laminated.model.iron.quad.weight.T
         tensor = (weight * entry for entry in (state.d_xx, state.d_xy, state.d_yy))
         values = summed(iron.scatter, packed_products(iron.quad, *tensor))
-        values += self.position.values
-        self.position.solver.factorise(values)
-        return self.position.solver.solve(rhs)
+        values += self.position.linear.values
+        self.position.linear.solver.factorise(values)
+        return self.position.linear.solver.solve(rhs)
 
 
 def tensor_state(laminated: LaminatedModel, a_elem: FloatArray) -> TensorState:

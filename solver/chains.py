@@ -9,7 +9,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .field import MagneticModel, PointEnergy, at_position, solve_point
+from .field import MagneticModel, at_position, solve_point, whole_energy
 from .integrals import dq_values, phase_currents
 from .types import FieldSolution
 
@@ -67,7 +67,7 @@ def linkage_slope(
     theta_e = model.sector.pole_pairs * solution.position
     currents = phase_currents(solution.i_d, solution.i_q, theta_e)
     place = at_position(model, solution.position)
-    energy = PointEnergy(model, place, currents @ model.linkage + model.magnet.load)
+    energy = whole_energy(model, place, currents @ model.linkage + model.magnet.load)
     nodal = np.concatenate([solution.a_rotor, solution.a_stator])
     _, state = energy.residual(nodal[model.representative])
     change = energy.solve_tangent(state, phase_currents(di_d, di_q, theta_e) @ model.linkage)

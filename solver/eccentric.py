@@ -14,10 +14,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from .cache import Cache
 from .field import MagneticModel, solve_point
 from .gap_circle import CircleReader, circle_field, circle_torque, reader_of
 from .kernel import quadrature, quadrature_places
-from .model import Cache, StatorGap, linear_tangent
+from .model import StatorGap, linear_tangent
 from .pattern import packed_entries, scatter, summed
 from .steel import NU_0
 from .types import FieldSolution, FloatArray
@@ -69,6 +70,7 @@ def eccentric_model(model: MagneticModel, offset: complex) -> EccentricModel:
         ),
         factors=Cache(1),
         positions=Cache(1),
+        condensed=Cache(1),  # what has gone lies in this half of the gap too
         coarse=None,  # its gap is the centred one; a centred field is the better guess
     )
     return EccentricModel(moved, reader_of(model, elements, quad.grad, quad.weight), offset)

@@ -22,8 +22,9 @@ from scipy.sparse import block_diag, csr_matrix
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.winding import WindingTable
 
+from .cache import Cache
 from .estimate_mesh import SparseRows, quartered_sector
-from .field import PointEnergy, at_position
+from .field import at_position, whole_energy
 from .gap import rotor_place, sheared
 from .integrals import dq_values, gap_torque, phase_currents
 from .kernel import (
@@ -38,7 +39,6 @@ from .kernel import (
 )
 from .magnet import magnet_source
 from .model import (
-    Cache,
     MagneticModel,
     joined_parts,
     linear_reluctivity,
@@ -285,7 +285,7 @@ def _coarse_solver(level: FineLevel, solution: FieldSolution) -> Callable[[Float
     model = level.model
     place = at_position(model, solution.position)
     n_coarse = model.numbering.n_dof
-    coarse = PointEnergy(model, place, np.zeros(n_coarse))
+    coarse = whole_energy(model, place, np.zeros(n_coarse))
     a_coarse = np.concatenate([solution.a_rotor, solution.a_stator])[model.representative]
     state = coarse.residual(a_coarse)[1]
     coarse.solve_tangent(state, np.zeros(n_coarse))
@@ -293,7 +293,7 @@ def _coarse_solver(level: FineLevel, solution: FieldSolution) -> Callable[[Float
     def solved(r: FloatArray) -> FloatArray:
         gathered = np.asarray(level.carry.T @ r)
         own = _binned(place.dof, place.sign * gathered, n_coarse)
-        nodal = node_values(place.dof, place.sign, place.solver.solve(own))
+        nodal = node_values(place.dof, place.sign, place.linear.solver.solve(own))
         return np.asarray(level.carry @ nodal)
 
     return solved

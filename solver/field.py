@@ -10,34 +10,40 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.sparse import csc_matrix, csr_matrix
 
+from .condensed import Condensed, CondensedSolver, condensed, whole_places
 from .gap import RotorPlace, rotor_place, sheared
 from .integrals import dq_values, gap_torque, phase_currents, steel_energies
 from .kernel import quadrature, quadrature_places
 from .linear import SparseSolver, analyse
 from .model import FieldSettings, MagneticModel, linear_tangent, magnetic_model
-from .newton import minimise
-from .pattern import node_values, summed, turn_gap, turned_ends, turned_numbering
-from .steel import NU_0
-from .steel_kernel import (
-    SteelState,
-    looked_ahead,
-    steel_residual,
-    steel_state,
-    steel_tangent,
+from .newton import NewtonSettings, minimise
+from .pattern import (
+    Numbering,
+    Pattern,
+    node_values,
+    summed,
+    turn_gap,
+    turned_ends,
+    turned_numbering,
+    turned_pattern,
 )
-from .types import FieldSolution, FloatArray, IntArray, Quadrature
+from .point_energy import LinearPart, PointEnergy, linear_part
+from .steel import NU_0
+from .steel_kernel import SteelState
+from .types import FieldSolution, FloatArray, IntArray, NewtonReport, Quadrature
 
 __all__ = [
     "FieldSettings",
     "MagneticModel",
     "Position",
     "at_position",
+    "kept_energy",
     "magnetic_model",
     "solve_foreseen",
     "solve_point",
     "unknowns",
+    "whole_energy",
 ]
 
 
@@ -47,61 +53,25 @@ class Position:
 
     dof: IntArray  # (n_node,)
     sign: FloatArray  # (n_node,)
-    values: FloatArray  # (n_slot,), all linear elements
-    lower: csc_matrix  # the same as a matrix
-    upper: csr_matrix  # its transpose, on the same values
-    diagonal: FloatArray  # (n_dof,)
-    solver: SparseSolver
+    linear: LinearPart  # of all linear elements
+    condensed: Condensed | None  # what Newton's iteration leaves out, ...
+    kept: LinearPart  # ... and the linear part of what it keeps
     gap_elements: IntArray  # both halves of the gap
     gap_quad: Quadrature
     gap_places: FloatArray
 
-    def times(self, a: FloatArray) -> FloatArray:
-        """Linear part of the residual, (n_dof,) in A."""
-        product: FloatArray = self.lower @ a
-        product += self.upper @ a
-        product -= self.diagonal * a
-        return product
+
+def whole_energy(model: MagneticModel, place: Position, load: FloatArray) -> PointEnergy:
+    """Energy by all unknowns under a load (n_dof,) in A."""
+    return PointEnergy(model.iron, whole_places(model.iron), place.linear, load)
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class PointEnergy:
-    """Energy of the field less that of the currents, by its derivatives."""
-
-    model: MagneticModel
-    position: Position
-    load: FloatArray  # (n_dof,), A
-
-    def residual(self, a: FloatArray) -> tuple[FloatArray, SteelState]:
-        """Residual (n_dof,) in A and the state of the steel."""
-        iron = self.model.iron
-        a_elem = np.append(a, 0.0).take(iron.dof.T)
-        a_elem *= iron.sign.T
-        state = steel_state(iron.metric, a_elem, iron.law)
-        r = summed(iron.residual_scatter, steel_residual(iron.metric, state))
-        r += self.position.times(a)
-        r -= self.load
-        return r, state
-
-    def look_ahead(
-        self, linear: SteelState, state: SteelState, residual: FloatArray
-    ) -> tuple[SteelState, FloatArray]:
-        """Where to linearise the steel next, see `steel_kernel.looked_ahead`."""
-        iron = self.model.iron
-        ahead, change = looked_ahead(iron.metric, linear, state, iron.law, iron.inverse)
-        return ahead, residual + summed(iron.residual_scatter, change)
-
-    def solve_tangent(self, state: SteelState, rhs: FloatArray) -> FloatArray:
-        """Solution of the tangent system for a right side (n_dof,)."""
-        iron, position = self.model.iron, self.position
-        values = summed(iron.scatter, steel_tangent(iron.metric, state))
-        values += position.values
-        position.solver.factorise(values)
-        return position.solver.solve(rhs)
-
-    def solve_held(self, rhs: FloatArray) -> FloatArray:
-        """Solution (n_dof,) of the tangent system factorised last."""
-        return self.position.solver.solve(rhs)
+def kept_energy(model: MagneticModel, place: Position, load: FloatArray) -> PointEnergy:
+    """Energy by the unknowns that Newton's iteration keeps under a load (n_dof,) of all in A."""
+    if place.condensed is None:
+        return whole_energy(model, place, load)
+    steel = place.condensed.steel
+    return PointEnergy(model.iron, steel, place.kept, place.condensed.reduced(load))
 
 
 def solve_point(
@@ -156,7 +126,7 @@ def solve_foreseen(
     load = currents @ model.linkage + model.magnet.load
     best = guesses[0] if load.any() else np.zeros(load.size)
     if load.any() and len(guesses) > 1:
-        energy = PointEnergy(model, at_position(model, position), load)
+        energy = whole_energy(model, at_position(model, position), load)
         best = min(guesses, key=lambda a: float(np.linalg.norm(energy.residual(a)[0])))
     return _solution(model, i_d, i_q, position, load, _Guess(best))
 
@@ -177,9 +147,7 @@ def _solution(
     """The field with a load (n_dof,) in A from a first guess."""
     theta_e = model.sector.pole_pairs * position
     place = at_position(model, position)
-    energy = PointEnergy(model, place, load)
-    scale = float(np.linalg.norm(load)) or 1.0
-    a, state, report = minimise(energy, guess.a, scale, model.settings.newton, energy)
+    a, state, report = _minimum(model, place, load, guess.a, model.settings.newton, True)
 
     per_machine = model.sector.sectors * model.stack_length
     psi_abc = per_machine * (model.linkage @ a)
@@ -187,7 +155,7 @@ def _solution(
     a_node = node_values(place.dof, place.sign, a)
     a_node.flags.writeable = psi_abc.flags.writeable = False
     stored, costored = _energies(model, state)
-    linear = 0.5 * float(a @ place.times(a))
+    linear = 0.5 * float(a @ place.linear.times(a))
     still = model.magnet.still_energy
     released = float(a @ model.magnet.load)  # see `magnet`; both are 0 without magnets
     n_rotor = model.sector.rotor.nodes.shape[0]
@@ -214,6 +182,22 @@ def _solution(
     )
 
 
+def _minimum(
+    model: MagneticModel,
+    place: Position,
+    load: FloatArray,
+    first: FloatArray,
+    settings: NewtonSettings,
+    with_shortcuts: bool,
+) -> tuple[FloatArray, SteelState, NewtonReport]:
+    """All unknowns (n_dof,) under a load, by those that the iteration keeps."""
+    energy, left = kept_energy(model, place, load), place.condensed
+    scale = float(np.linalg.norm(load)) or 1.0
+    start = first if left is None else first[left.kept]
+    a, state, report = minimise(energy, start, scale, settings, energy if with_shortcuts else None)
+    return a if left is None else left.recovered(a, load), state, report
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class _Guess:
     a: FloatArray  # (n_dof,)
@@ -232,15 +216,13 @@ def _first_guess(
     coarse, lift = model.coarse.model, model.coarse.lift
     place = at_position(coarse, position)
     load = currents @ coarse.linkage + coarse.magnet.load
-    energy = PointEnergy(coarse, place, load)
     first = np.zeros(load.size) if known is None else known[coarse.representative]
-    scale = float(np.linalg.norm(load))
-    if scale == 0.0:  # the load may sit on middles alone
+    if not load.any():  # the load may sit on middles alone
         return _Guess(nodal[model.representative])
     settings = coarse.settings.newton
     if known is None:  # what is left of a guess from zero would spoil the next points' too
         settings = replace(settings, tolerance=0.1 * settings.tolerance)
-    a, _, report = minimise(energy, first, scale, settings)
+    a, _, report = _minimum(coarse, place, load, first, settings, False)
     corner_a = node_values(place.dof, place.sign, a)
     nodal = nodal + lift(corner_a if known is None else corner_a - known)
     return _Guess(nodal[model.representative], corner_a, report.steps)
@@ -275,29 +257,40 @@ def _make_position(model: MagneticModel, place: RotorPlace) -> Position:
     packed = linear_tangent(quad, np.full(gap.elements.shape[0], NU_0))
     values = model.fixed_values.copy()
     values[turned.slot] += turned.sign * summed(gap.scatter, packed)
-    pattern = turned.pattern
-    n_dof, entries = numbering.n_dof, (values, pattern.indices, pattern.indptr)
+    left = model.condensed.get("", lambda: condensed(model))
+    if left is None:
+        solver = _solver(model, numbering, turned.pattern, model.ends, place.shift)
+        linear = kept = linear_part(turned.pattern, values, solver)
+    else:
+        pattern = turned_pattern(left.pattern, left.numbering, place.shift)
+        solver = _solver(model, left.numbering, pattern, left.ends, place.shift)
+        kept = linear_part(pattern, left.values(values), solver)
+        linear = linear_part(turned.pattern, values, CondensedSolver(left, solver))
+    return Position(
+        dof=dof,
+        sign=sign,
+        linear=linear,
+        condensed=left,
+        kept=kept,
+        gap_elements=np.concatenate([gap.node[gap.elements], still.elements]),
+        gap_quad=_joined(quad, still.quad),
+        gap_places=np.concatenate([quadrature_places(nodes, gap.elements, 6), still.places]),
+    )
+
+
+def _solver(
+    model: MagneticModel, numbering: Numbering, pattern: Pattern, ends: IntArray, shift: int
+) -> SparseSolver:
+    """Solver for the turned pattern of the unknowns of a numbering."""
     # Turning by a whole sector changes signs but no partner.
-    solver = model.factors.get(
-        place.shift % model.sector.n_circle,
+    return model.factors.get(
+        shift % model.sector.n_circle,
         lambda: analyse(
             pattern.indptr,
             pattern.indices,
             model.settings.solver,
-            turned_ends(numbering, model.ends, place.shift),
+            turned_ends(numbering, ends, shift),
         ),
-    )
-    return Position(
-        dof=dof,
-        sign=sign,
-        values=values,
-        lower=csc_matrix(entries, shape=(n_dof, n_dof)),
-        upper=csr_matrix(entries, shape=(n_dof, n_dof)),
-        diagonal=values[pattern.indptr[:-1]],
-        solver=solver,
-        gap_elements=np.concatenate([gap.node[gap.elements], still.elements]),
-        gap_quad=_joined(quad, still.quad),
-        gap_places=np.concatenate([quadrature_places(nodes, gap.elements, 6), still.places]),
     )
 
 

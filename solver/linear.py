@@ -11,8 +11,8 @@ CHOLMOD's order of elimination (minimum degree, Amestoy, Davis & Duff 1996) is f
 triangles' corners alone, a quarter of the unknowns; a mid-side unknown goes before the first of its
 two ends. Analysis 8 instead of 19 ms, factors as good (15 k unknowns, measured). Tried without
 gain there: circle last, which would serve all rotor positions with one analysis (factors 19 instead
-of 13 ms); linear regions condensed beforehand (19 instead of 16 ms). More such trials stand in
-tests/benchmarks/README.md.
+of 13 ms); all linear regions condensed (19 instead of 16 ms; `condensed` takes what elimination
+begins with). More such trials stand in tests/benchmarks/README.md.
 """
 
 from typing import Literal, Protocol
@@ -121,8 +121,16 @@ class CholmodSolver:
         return self._side_view.take(self._turn)
 
 
-def _order_by_corners(columns: IntArray, rows: IntArray, ends: IntArray) -> IntArray:
-    """Elimination order (n,): minimum degree on the corners, middles before their first end."""
+def corner_turns(columns: IntArray, rows: IntArray, ends: IntArray) -> IntArray:
+    """When each corner is eliminated by minimum degree on the corners alone, (n + 1,).
+
+    Middles, and what is held, never are: n.
+
+    Args:
+        columns: (n_entry,), of the lower triangle.
+        rows: likewise.
+        ends: (n, 2), as in `analyse`.
+    """
     from cvxopt import amd, matrix, spmatrix
 
     n = ends.shape[0]
@@ -133,9 +141,15 @@ def _order_by_corners(columns: IntArray, rows: IntArray, ends: IntArray) -> IntA
     graph = spmatrix(
         1.0, matrix(number[rows[kept]]), matrix(number[columns[kept]]), (corner.size, corner.size)
     )
-    turn = np.full(n + 1, n, dtype=np.int64)  # when a corner is eliminated; held ones never
+    turn = np.full(n + 1, n, dtype=np.int64)
     turn[corner[np.array(amd.order(graph, uplo="L")).ravel()]] = np.arange(corner.size)
-    key = 2 * turn[ends].min(axis=1) + is_corner
+    return turn
+
+
+def _order_by_corners(columns: IntArray, rows: IntArray, ends: IntArray) -> IntArray:
+    """Elimination order (n,): minimum degree on the corners, middles before their first end."""
+    is_corner = ends[:, 0] == np.arange(ends.shape[0])
+    key = 2 * corner_turns(columns, rows, ends)[ends].min(axis=1) + is_corner
     return np.argsort(key, kind="stable").astype(np.int64)
 
 

@@ -6,10 +6,8 @@ and its partners on the circle change with the position) and all others (linear,
 Axes: n_node nodes, n_dof unknowns, n_slot matrix entries, n_elem elements of a group.
 """
 
-from collections import OrderedDict
-from collections.abc import Callable
 from dataclasses import dataclass, field, replace
-from typing import Literal, TypeVar
+from typing import Literal
 
 import numpy as np
 import numpy.typing as npt
@@ -18,6 +16,7 @@ from lamwright.geometry.section import CrossSection, Region
 from lamwright.geometry.sectors import repeats
 from lamwright.geometry.winding import WindingTable
 
+from .cache import Cache
 from .first_order import Lift, first_order
 from .kernel import FluxState, packed_tangent, quadrature, quadrature_places, shape_integrals
 from .linear import Method
@@ -45,8 +44,6 @@ from .types import FloatArray, IntArray, PlanarMesh, Quadrature, SectorMesh
 COARSE_TOLERANCE = 1e-1
 CACHED_UNKNOWNS = 400_000  # of all factors kept; 20 factors of 20 k unknowns hold 150 MB
 
-Kept = TypeVar("Kept")
-
 
 @dataclass(frozen=True, slots=True)
 class FieldSettings:
@@ -58,29 +55,6 @@ class FieldSettings:
     magnet: MagnetLaw | None = None  # of every magnet region; needed where there is one
     newton: NewtonSettings = field(default_factory=NewtonSettings)
     solver: Method = "auto"
-
-
-class Cache:
-    """The most recently used results by key; empty again after pickling."""
-
-    def __init__(self, capacity: int) -> None:
-        """Hold at most `capacity` results."""
-        self._capacity = capacity
-        self._kept: OrderedDict[object, object] = OrderedDict()
-
-    def get(self, key: object, make: Callable[[], Kept]) -> Kept:
-        """The result kept for `key`, made if there is none."""
-        if key in self._kept:
-            self._kept.move_to_end(key)
-        else:
-            self._kept[key] = make()
-            if len(self._kept) > self._capacity:
-                self._kept.popitem(last=False)
-        return self._kept[key]  # type: ignore[return-value]  # one maker per cache
-
-    def __reduce__(self) -> "tuple[type[Cache], tuple[int]]":
-        """Pickle without the contents: factors cannot cross a process border."""
-        return Cache, (self._capacity,)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -171,6 +145,7 @@ class MagneticModel:
     representative: IntArray  # (n_dof,), a node with sign + for every unknown
     factors: Cache = field(repr=False)
     positions: Cache = field(repr=False)
+    condensed: Cache = field(repr=False)  # one `Condensed`, made when it is first asked for
     coarse: FirstOrder | None = None  # none on first-order elements themselves
 
 
@@ -265,6 +240,7 @@ def _model(
         representative=representatives(numbering, sector),
         factors=Cache(kept),
         positions=Cache(2 * kept),
+        condensed=Cache(1),
     )
 
 

@@ -183,7 +183,7 @@ def packed_entries(dof: IntArray, sign: FloatArray, elements: IntArray, n_dof: i
 
 def lower_pattern(n_dof: int, groups: tuple[Entries, ...]) -> Pattern:
     """Pattern that holds the entries of all groups."""
-    keys = np.unique(np.concatenate([_keys(g.row, g.column, n_dof) for g in groups]))
+    keys = np.unique(np.concatenate([keys_of(g.row, g.column, n_dof) for g in groups]))
     keys = keys[keys % (n_dof + 1) < n_dof]
     columns, rows = np.divmod(keys, n_dof + 1)
     indptr = np.searchsorted(columns, np.arange(n_dof + 1))
@@ -193,8 +193,14 @@ def lower_pattern(n_dof: int, groups: tuple[Entries, ...]) -> Pattern:
 def slots_of(pattern: Pattern, row: IntArray, column: IntArray) -> IntArray:
     """Slots of entries that the pattern holds."""
     n_dof = pattern.indptr.size - 1
-    keys = _keys(pattern.indices, pattern.columns, n_dof)
-    return np.searchsorted(keys, _keys(row, column, n_dof)).astype(np.int64)
+    keys = keys_of(pattern.indices, pattern.columns, n_dof)
+    return np.searchsorted(keys, keys_of(row, column, n_dof)).astype(np.int64)
+
+
+def keys_of(row: IntArray, column: IntArray, n_dof: int) -> IntArray:
+    """Numbers that order entries by column, then row; held nodes, n_dof, sort to the end."""
+    keys: IntArray = column * (n_dof + 1) + row
+    return keys
 
 
 def scatter(pattern: Pattern, entries: Entries) -> SparseRows:
@@ -226,7 +232,7 @@ def gap_slots(entries: Entries, n_dof: int) -> tuple[IntArray, IntArray, SparseR
         row, column (n_gap_slot,) and the matrix (n_gap_slot, 21 n_elem).
     """
     kept = np.flatnonzero(entries.row < n_dof)
-    keys = _keys(entries.row[kept], entries.column[kept], n_dof)
+    keys = keys_of(entries.row[kept], entries.column[kept], n_dof)
     unique, place = np.unique(keys, return_inverse=True)
     column, row = np.divmod(unique, n_dof + 1)
     shape = (unique.size, entries.row.size)
@@ -246,18 +252,23 @@ def turn_gap(
         column: likewise.
         shift: whole edges.
     """
-    first = numbering.first_ring
     row_turned, row_sign = _turn_unknowns(row, numbering, shift)
     column_turned, column_sign = _turn_unknowns(column, numbering, shift)
-    # Couplings rotor - circle: the tails of the rotor's columns, sorted again.
-    tail = np.flatnonzero((pattern.indices >= first) & (pattern.columns < numbering.n_rotor))
-    tail_rows, _ = _turn_unknowns(pattern.indices[tail], numbering, shift)
-    order = np.lexsort((tail_rows, pattern.columns[tail]))
-    indices = pattern.indices.copy()
-    indices[tail] = tail_rows[order]
-    moved = Pattern(pattern.indptr, indices)
+    moved = turned_pattern(pattern, numbering, shift)
     low, high = np.minimum(row_turned, column_turned), np.maximum(row_turned, column_turned)
     return TurnedGap(moved, slots_of(moved, high, low), row_sign * column_sign)
+
+
+def turned_pattern(pattern: Pattern, numbering: Numbering, shift: int) -> Pattern:
+    """The pattern for a rotor `shift` edges ahead; arguments as in `turn_gap`."""
+    # Couplings rotor - circle: the tails of the rotor's columns, sorted again.
+    columns = pattern.columns
+    tail = np.flatnonzero((pattern.indices >= numbering.first_ring) & (columns < numbering.n_rotor))
+    tail_rows, _ = _turn_unknowns(pattern.indices[tail], numbering, shift)
+    order = np.lexsort((tail_rows, columns[tail]))
+    indices = pattern.indices.copy()
+    indices[tail] = tail_rows[order]
+    return Pattern(pattern.indptr, indices)
 
 
 def _number_part(
@@ -311,9 +322,3 @@ def _turn_unknowns(
         np.where(on_ring, numbering.first_ring + number, unknown),
         np.where(on_ring, sign, 1.0),
     )
-
-
-def _keys(row: IntArray, column: IntArray, n_dof: int) -> IntArray:
-    """Numbers that order entries by column, then row; held nodes sort to the end."""
-    keys: IntArray = column * (n_dof + 1) + row
-    return keys

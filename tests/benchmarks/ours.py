@@ -11,19 +11,24 @@ from functools import lru_cache, partial
 from pathlib import Path
 from typing import Generic
 
-import numpy as np
-
 from lamwright.app.lamination import section_of
 from lamwright.app.point import model_of, read_machine
 from lamwright.geometry.design_file import Machine
 from lamwright.geometry.section import CrossSection
-from lamwright.solver.field import MagneticModel, PointEnergy, at_position, solve_point
+from lamwright.solver.field import (
+    MagneticModel,
+    at_position,
+    kept_energy,
+    solve_point,
+    unknowns,
+)
 from lamwright.solver.integrals import phase_currents
 from lamwright.solver.linear import CholmodSolver
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import Energy, State
 from lamwright.solver.pattern import summed
+from lamwright.solver.point_energy import PointEnergy
 from lamwright.solver.steel_kernel import SteelState, steel_tangent
 from lamwright.solver.types import FieldSolution, FloatArray
 
@@ -103,22 +108,24 @@ def newton_step(energy: Energy[State], a: FloatArray) -> NewtonStep[State]:
 def point_energy(case: Case, gamma: float) -> PointEnergy:
     """The energy that `solve_point` minimises, at rated current."""
     load = phase_currents_of(case, gamma) @ case.model.linkage
-    return PointEnergy(case.model, at_position(case.model, POSITION), load)
+    return kept_energy(case.model, at_position(case.model, POSITION), load)
 
 
 def unknowns_before(case: Case, gamma: float) -> FloatArray:
-    """Unknowns (n_dof,) of the field at somewhat less current: where a step begins."""
+    """What the iteration keeps of the field at somewhat less current: where a step begins."""
     field = solve_point(case.model, *case.currents(gamma, BEFORE), POSITION)
-    return np.concatenate([field.a_rotor, field.a_stator])[case.model.representative]
+    a = unknowns(case.model, field)
+    condensed = at_position(case.model, POSITION).condensed
+    return a if condensed is None else a[condensed.kept]
 
 
 def factorisation(energy: PointEnergy, state: SteelState) -> Callable[[], None]:
     """CHOLMOD's numeric factorisation of a step's matrix in our order, and nothing else."""
     from cvxopt import cholmod
 
-    iron, place = energy.model.iron, energy.position
-    solver = place.solver
+    linear, tangent = energy.linear, steel_tangent(energy.iron.metric, state)
+    solver = linear.solver
     assert isinstance(solver, CholmodSolver)
-    solver.factorise(place.values + summed(iron.scatter, steel_tangent(iron.metric, state)))
+    solver.factorise(linear.values + summed(energy.places.scatter, tangent))
     # Not `factorise`: that copies the values in too.
     return partial(cholmod.numeric, solver._matrix, solver._factor)

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from lamwright.solver.estimate_step import FineLevel, _equations, _gap_at, changes, fine_level
-from lamwright.solver.field import PointEnergy, at_position, magnetic_model, solve_point
+from lamwright.solver.field import at_position, magnetic_model, solve_point, whole_energy
 from lamwright.solver.gap import rotor_place
 from lamwright.solver.model import MagneticModel
 from lamwright.solver.pattern import turned_numbering
@@ -59,10 +59,10 @@ def test_equations_are_the_assembled_ones(
     a, load, v = 1e-3 * rng.normal(size=(3, level.numbering.n_dof))
     equations = _equations(level, _gap_at(level, place.rest), dof, sign, load)
     own, state = equations.residual(a)
-    other, other_state = PointEnergy(assembled, at_position(assembled, position), load).residual(a)
+    other, other_state = whole_energy(assembled, at_position(assembled, position), load).residual(a)
     assert np.abs(own - other).max() < 1e-9 * np.abs(other).max()
     tangent = equations.tangent(state)
-    energy = PointEnergy(assembled, at_position(assembled, position), load)
+    energy = whole_energy(assembled, at_position(assembled, position), load)
     back = energy.solve_tangent(other_state, tangent.times(v))
     assert np.abs(back - v).max() < 1e-6 * np.abs(v).max()  # rounding times the condition number
 

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from shipped import NAMES, shipped, shipped_model
 
-from lamwright.solver.field import PointEnergy, at_position, solve_point
+from lamwright.solver.field import at_position, solve_point, whole_energy
 from lamwright.solver.first_order import first_order
 from lamwright.solver.integrals import phase_currents
 from lamwright.solver.model import joined_parts
@@ -52,7 +52,7 @@ def test_the_shortcuts_lead_to_the_same_field_in_fewer_steps(name, share):
     currents = phase_currents(i_d, i_q, model.sector.pole_pairs * position)
     load = currents @ model.linkage + model.magnet.load
     plain, _, report = minimise(
-        PointEnergy(model, place, load),
+        whole_energy(model, place, load),
         np.zeros(load.size),
         float(np.linalg.norm(load)),
         NewtonSettings(tolerance=1e-5),

@@ -63,8 +63,8 @@ def test_pattern_holds_the_constrained_matrix(model: MagneticModel, edges: float
     place = at_position(model, edges * EDGE)
     iron = model.iron
     packed = linear_tangent(iron.quad, np.full(iron.dof.shape[0], NU_0))
-    values = place.values + iron.scatter @ packed.ravel()
-    lower = place.lower.copy()
+    values = place.linear.values + iron.scatter @ packed.ravel()
+    lower = place.linear.lower.copy()
     lower.data = values
     lower_dense = lower.toarray()
     whole = lower_dense + np.tril(lower_dense, -1).T
@@ -75,7 +75,7 @@ def test_pattern_holds_the_constrained_matrix(model: MagneticModel, edges: float
 def test_rows_rise_with_the_diagonal_first(model: MagneticModel) -> None:
     """What the solvers rely on, for every shift."""
     for shift in range(10):
-        lower = at_position(model, shift * EDGE).lower
+        lower = at_position(model, shift * EDGE).linear.lower
         for k in range(lower.shape[0]):
             rows = lower.indices[lower.indptr[k] : lower.indptr[k + 1]]
             assert rows[0] == k
@@ -86,7 +86,7 @@ def test_rows_rise_with_the_diagonal_first(model: MagneticModel) -> None:
 def test_middles_know_their_corners(model: MagneticModel, shift: int) -> None:
     """A mid-side unknown is coupled to both its ends, wherever the rotor stands."""
     ends = turned_ends(model.numbering, model.ends, shift)
-    lower = at_position(model, shift * EDGE).lower.copy()
+    lower = at_position(model, shift * EDGE).linear.lower.copy()
     lower.data = np.ones(lower.nnz)  # the pattern alone: steel's entries come with its state
     coupled = (lower + lower.T).tocsr()
     n_dof = model.numbering.n_dof
