@@ -31,10 +31,8 @@ class Cluster:
 
     def add_worker(self, *options: str) -> None:
         """One more."""
-        name = f"w{len(self.workers)}"
-        where = ("--scheduler-file", str(self.file), "--local-directory", str(self._folder / name))
-        one = ("--nworkers", "1", "--nthreads", "1", "--no-nanny", "--name", name)
-        self.workers.append(self._started("worker", *where, *one, *options))
+        own = worker_options(self.file, f"w{len(self.workers)}")
+        self.workers.append(self._started("worker", *own, *options))
 
     def stop(self) -> None:
         """Kill them all."""
@@ -43,8 +41,6 @@ class Cluster:
             process.wait()
 
     def _started(self, what: str, *options: str) -> subprocess.Popen[bytes]:
-        tests = str(Path(study_stand_ins.__file__).parent)
-        paths = [tests, *(path for path in sys.path if path and path != tests)]
         command = [sys.executable, "-m", "distributed.cli.dask_" + what, "--no-dashboard"]
         log = (self._folder / f"{what}{len(self.workers)}.log").open("wb")
         with log:
@@ -52,8 +48,21 @@ class Cluster:
                 [*command, *options, *self._options],
                 stdout=log,
                 stderr=log,
-                env={**os.environ, "PYTHONPATH": os.pathsep.join(paths)},
+                env={**os.environ, "PYTHONPATH": searched()},
             )
+
+
+def worker_options(scheduler_file: Path, name: str) -> tuple[str, ...]:
+    """Of `dask worker` with one thread; its folder is beside the scheduler's file."""
+    where = ("--scheduler-file", str(scheduler_file))
+    where += ("--local-directory", str(scheduler_file.parent / name))
+    return (*where, "--nworkers", "1", "--nthreads", "1", "--no-nanny", "--name", name)
+
+
+def searched() -> str:
+    """Where a process looks for modules: the stand-ins first."""
+    tests = str(Path(study_stand_ins.__file__).parent)
+    return os.pathsep.join([tests, *(path for path in sys.path if path and path != tests)])
 
 
 @contextmanager
