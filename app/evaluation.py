@@ -83,11 +83,11 @@ def _evaluated(task: Task, stages: list[str]) -> Evaluation:
     stages.append("quick")
     if task.effort == "full":
         if task.limits:
-            screen_figures(_quick(machine, section), task.limits)
+            screen_figures(_quick(machine, section)[0], task.limits)
         stages.append("full")
         figures, errors = _full(task, machine, section)
     else:
-        figures, errors = _quick(machine, section), {}
+        figures, errors = _quick(machine, section, errors=task.errors)
     return Evaluation(
         "done", figures=_kept(figures), errors=_kept(errors), passes=passing(limits, figures)
     )
@@ -114,10 +114,19 @@ def passing(limits: tuple[StudyLimit, ...], figures: Mapping[str, float]) -> boo
     return True if len(known) == len(limits) else None
 
 
-def _quick(machine: "Machine", section: "CrossSection") -> dict[str, float]:
-    from .study_quick import quick_figures_of
+def _quick(
+    machine: "Machine", section: "CrossSection", *, errors: bool = False
+) -> tuple[dict[str, float], dict[str, float]]:
+    from .study_quick import quick_figures, quick_work
 
-    return quick_figures_of(machine, section)
+    work = quick_work(machine, section)
+    figures = quick_figures(section, work)
+    if not errors:
+        return figures, {}
+    from .study_quick_errors import quick_errors_of
+
+    bars = quick_errors_of(machine, section, work)
+    return figures, {key: bar for key, bar in bars.items() if key in figures}
 
 
 def _full(

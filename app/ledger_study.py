@@ -57,7 +57,7 @@ def stated(study: "Study") -> dict[str, str]:
             name: hashlib.sha256(data).hexdigest() for name, data in study.drawings.items()
         },
         "keys": [asdict(key) for key in study.keys],
-        "effort": study.effort,
+        "effort": study.effort_told,
         "tolerance": study.tolerance,
         "limits": [asdict(limit) for limit in study.limits],
         "goals": [asdict(goal) for goal in study.goals],

@@ -112,6 +112,7 @@ class Study:
     sampling: Sampling
     most_designs: int  # that a grid may have
     seconds: float  # that one design may take
+    errors: bool = False  # whether quick figures get error bars
 
     @property
     def hash(self) -> str:
@@ -121,11 +122,16 @@ class Study:
             sorted((name, sha256_of(data)) for name, data in self.drawings.items()),
             [(key.key, key.choices, key.low, key.high, key.step) for key in self.keys],
             [(key.distribution, key.mean, key.deviation) for key in self.keys],
-            (self.effort, self.tolerance, self.sampling.kind, self.sampling.seed),
+            (self.effort_told, self.tolerance, self.sampling.kind, self.sampling.seed),
             [(limit.figure, limit.least, limit.most) for limit in self.limits],
             [(goal.figure, goal.sense) for goal in self.goals],
         )
         return sha256_of(json.dumps(stated).encode())
+
+    @property
+    def effort_told(self) -> str:
+        """The effort in words, with whether there are error bars where that is a question."""
+        return f"{self.effort}, with errors" if self.errors else self.effort
 
 
 def sha256_of(data: bytes) -> str:

@@ -67,6 +67,7 @@ def read_study(path: Path, *, is_searched: bool = False) -> Study:
         most_designs=tables.most_designs,
         seconds=tables.most_seconds
         or (QUICK_SECONDS if tables.effort == "quick" else FULL_SECONDS),
+        errors=tables.errors and tables.effort == "quick",
     )
     if not is_searched and (found := [*grid_faults(study)]):
         raise _faults(path, text, found)

@@ -60,7 +60,13 @@ class QuickField:
     found: AngleFound
     waveform: TorqueWaveform
     magnet_psi_q: float  # at no load, V s
-    last: FieldSolution  # one of the waveform's, of the first step of the rotor
+    by_step: tuple[tuple[FieldSolution, ...], ...]  # the waveform's, of each step of the rotor
+    means: tuple[FieldSolution, ...]  # the waveform's, of the whole machine
+
+    @property
+    def last(self) -> FieldSolution:
+        """One of the waveform's, of the first step of the rotor."""
+        return self.by_step[0][-1]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -76,16 +82,8 @@ class QuickWork:
     masses: MassFigures
 
 
-def quick_figures_of(machine: Machine, section: CrossSection) -> dict[str, float]:
-    """Figures by their keys, in their units.
-
-    Raises:
-        GeometryError: the lamination has a corner without a finite stress.
-        MeshError: it cannot be meshed.
-        NotConverged: an iteration did not end.
-        LamwrightError: the rotor makes no torque.
-    """
-    work = quick_work(machine, section)
+def quick_figures(section: CrossSection, work: QuickWork) -> dict[str, float]:
+    """Figures of what was computed by their keys, in their units."""
     groups = (work.magnetic, work.terminal, work.stress, work.masses)
     found = {one.key: float(one.value) for group in groups for one in figures_of(group)}
     contours = lamination_contours(section)
@@ -95,7 +93,14 @@ def quick_figures_of(machine: Machine, section: CrossSection) -> dict[str, float
 
 
 def quick_work(machine: Machine, section: CrossSection) -> QuickWork:
-    """The computation behind the figures; raises what `quick_figures_of` does."""
+    """The computation behind the figures.
+
+    Raises:
+        GeometryError: the lamination has a corner without a finite stress.
+        MeshError: it cannot be meshed.
+        NotConverged: an iteration did not end.
+        LamwrightError: the rotor makes no torque.
+    """
     field = quick_field(machine, section)
     magnetic = magnetic_figures(field.waveform, field.magnet_psi_q)
     solution, ribs = quick_stress(machine, section)
@@ -126,22 +131,22 @@ def quick_field(machine: Machine, section: CrossSection) -> QuickField:
     count = positions_of(pole_pairs, section.slots)
     places = waveform_positions(pole_pairs, count).tolist()
     points = [OperatingPoint(found.i_d, found.i_q, place) for place in places]
-    by_step = [
+    by_step = tuple(
         _chained(model, [step_point(point, offset, pole_pairs) for point in points], found, k)
         for k, offset in enumerate(offsets)
-    ]
+    )
     together = zip(zip(*by_step, strict=True), points, strict=True)
-    fields = [mean_solution(steps, offsets, point, pole_pairs) for steps, point in together]
+    means = tuple(mean_solution(steps, offsets, point, pole_pairs) for steps, point in together)
     bare = 0.0
     if machine.magnet is not None:
         bare = solve_point(model, 0.0, 0.0, places[0]).psi_q
-    waveform = torque_waveform(fields, pole_pairs)
-    return QuickField(model, found, waveform, bare, by_step[0][-1])
+    waveform = torque_waveform(means, pole_pairs)
+    return QuickField(model, found, waveform, bare, by_step, means)
 
 
 def _chained(
     model: MagneticModel, points: list[OperatingPoint], found: AngleFound, step: int
-) -> list[FieldSolution]:
+) -> tuple[FieldSolution, ...]:
     """Fields of one step of the rotor, in chains away from those of the angle search."""
     near = found.last[step]
     at: dict[int, FieldSolution] = {}
@@ -152,7 +157,7 @@ def _chained(
                 point = points[k]
                 at[k] = solve_point(model, point.i_d, point.i_q, point.position, field)
             field = at[k]
-    return [at[k] for k in range(len(points))]
+    return tuple(at[k] for k in range(len(points)))
 
 
 def quick_stress(machine: Machine, section: CrossSection) -> tuple[StressSolution, RibReport]:

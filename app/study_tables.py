@@ -53,6 +53,7 @@ class StudyTables(Table):
     base: Text  # design file, counted from the study's folder
     effort: Literal["quick", "full"] = "quick"
     tolerance: Literal["coarse", "normal", "fine"] = "coarse"  # of a full computation
+    errors: bool = False  # error bars of quick figures; a full computation has them anyway
     most_designs: Annotated[int, Field(ge=1, le=1_000_000)] = 2000  # that a grid may have
     most_seconds: Positive | None = None  # that a design may take; default 60 quick, 1800 full
     vary: Annotated[tuple[VaryTable, ...], Field(min_length=1, max_length=40)]

@@ -43,6 +43,7 @@ class Task:
     effort: Effort = "quick"
     tolerance: "ToleranceName" = "coarse"
     limits: tuple[StudyLimit, ...] = ()
+    errors: bool = False  # whether quick figures get error bars
     fault: str = ""  # why the values give no design at all; the text is then the base's
 
 
@@ -61,6 +62,7 @@ def task_of(study: Study, values: Values) -> Task:
         effort=study.effort,
         tolerance=study.tolerance,
         limits=study.limits,
+        errors=study.errors,
     )
     try:
         task = replace(task, design_text=_text(study, values))
@@ -127,6 +129,8 @@ def _hash(task: Task) -> str:
     stated = [_canonical(design), cards, drawings, task.effort, version()]
     if task.effort == "full":
         stated.append(task.tolerance)
+    elif task.errors:
+        stated.append("errors")
     if task.fault:
         stated.append([task.fault, sorted(task.values.items())])
     return hashlib.sha256(json.dumps(stated, sort_keys=True).encode()).hexdigest()

@@ -35,8 +35,8 @@ def task(study: Study, values: Values) -> Task:
 
 @pytest.fixture(scope="module")
 def demo(study: Study) -> Evaluation:
-    """The demo, quick."""
-    return evaluate(task(study, {"rotor.gap_mm": 0.4}))
+    """The demo, quick, with error bars."""
+    return evaluate(task(replace(study, errors=True), {"rotor.gap_mm": 0.4}))
 
 
 def test_a_quick_evaluation_has_all_figures_it_promises(demo: Evaluation) -> None:
@@ -63,12 +63,29 @@ def test_quick_figures_of_the_demo(demo: Evaluation) -> None:
     assert figures["active_mass_kg"] == pytest.approx(sum(figures[key] for key in parts))
 
 
+def test_quick_figures_have_error_bars_where_the_study_asks(study: Study, demo: Evaluation) -> None:
+    """The full figures of README are within twice the bars, and these are of use: a few percent.
+
+    A row with them is another than one without: else a ledger would serve the bare one.
+    """
+    full = {"torque_nm": 11.61, "saliency_ratio": 5.916, "rib_stress_peak_mpa": 171.7}
+    for key, value in full.items():
+        bar = demo.errors[key]
+        assert abs(demo.figures[key] - value) < 2.0 * bar < 0.1 * value, key
+    assert set(demo.errors) <= set(demo.figures)
+    assert not {"copper_mass_kg", "copper_loss_w"} & set(demo.errors)  # exact
+    values = {"rotor.gap_mm": 0.4}
+    assert task(replace(study, errors=True), values).hash != task(study, values).hash
+    assert replace(study, errors=True).hash != study.hash
+
+
 def test_the_same_figures_whatever_was_computed_before(study: Study, demo: Evaluation) -> None:
     """To the last bit, after another design in the same process."""
     other = evaluate(task(study, {"layout.barriers": 2, "layout.end_angle_deg": 36.0}))
     assert other.outcome == "done"
     again = evaluate(task(study, {"rotor.gap_mm": 0.4}))
     assert again.figures == demo.figures
+    assert not again.errors
     assert other.figures["torque_nm"] != demo.figures["torque_nm"]
 
 

@@ -4,9 +4,11 @@ Two cores share their memory, so that two processes are not twice as quick as on
 have nothing to do with each other. One process alone, two of them, and the sweep take turns.
 """
 
+import os
 import subprocess
 import sys
 import tempfile
+from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
@@ -16,6 +18,8 @@ from .timing import WALL, Notes, seconds
 from .workload import Workload
 
 CORES = 2
+_MACHINE = Path("/proc/stat")  # Linux
+_AT_WORK = (0, 1, 2, 5, 6, 7)  # of its first line: all but idle and waiting, with the host's part
 # Reads a study, makes each CORES-th of its tasks and evaluates them; the first one twice, as the
 # first time is that of imports.
 _BARE = """
@@ -70,15 +74,26 @@ def sweep_efficiency(work: Workload, notes: Notes) -> dict[str, float]:
     """
     count = work.sweep_designs
     alone, beside, swept = [], [], []
+    others: list[float] = []
+
+    def watched(deed: Callable[[], float]) -> float:
+        """Its result; whoever else is at work lengthens what two processes do, and it alone."""
+        before, began = _taken(), WALL()
+        result = deed()
+        others.append((_taken() - before) / (WALL() - began))
+        return result
+
     with tempfile.TemporaryDirectory() as folder:
         study = study_file(Path(folder), CORES * count)
         for k in range(work.sweep_rounds):
-            before = bare(study, 1, count)
-            swept.append(sweep_seconds(study, Path(folder) / f"out{k}") / count)
-            beside.append(bare(study, CORES, count))
-            alone.append(0.5 * (before + bare(study, 1, count)))
+            out = Path(folder) / f"out{k}"
+            before = watched(lambda: bare(study, 1, count))
+            swept.append(watched(lambda out=out: sweep_seconds(study, out) / count))
+            beside.append(watched(lambda: bare(study, CORES, count)))
+            alone.append(0.5 * (before + watched(lambda: bare(study, 1, count))))
     for name, values in (("alone", alone), ("beside", beside), ("swept", swept)):
         notes.tell(f"{name}, of a core a design", values, "s")
+    notes.tell("taken by others and by the host", others, "cores")
     one, two, own = (np.array(values) for values in (alone, beside, swept))
     return {
         "sweep_efficiency": float(np.median(one / own)),
@@ -124,3 +139,13 @@ def sweep_seconds(study: Path, out: Path) -> float:
     command = [sys.executable, "-P", "-m", "lamwright.app", "sweep", str(study), "--out", str(out)]
     command += ["--workers", str(CORES), "--no-pictures"]
     return seconds(lambda: subprocess.run(command, check=True, capture_output=True), WALL)
+
+
+def _taken() -> float:
+    """Processor time in s that others than this process and its children have taken so far."""
+    if not _MACHINE.exists():
+        return 0.0
+    fields = _MACHINE.read_text().split("\n", 1)[0].split()[1:]
+    busy = sum(int(fields[k]) for k in _AT_WORK) / os.sysconf("SC_CLK_TCK")
+    own = os.times()
+    return busy - own.user - own.system - own.children_user - own.children_system
