@@ -22,29 +22,35 @@ from .types import FloatArray
 class LinearPart:
     """The linear elements' matrix at one position, and how the whole tangent is solved."""
 
+    pattern: Pattern  # that of steel included
     values: FloatArray  # (n_slot,)
-    lower: csc_matrix  # the same as a matrix
-    upper: csr_matrix  # its transpose, on the same values
     diagonal: FloatArray  # (n_dof,)
+    below: csc_matrix  # what is below the diagonal and not 0: half of the pattern is steel's alone
+    above: csr_matrix  # its transpose, on the same values
     solver: SparseSolver
 
     def times(self, a: FloatArray) -> FloatArray:
         """Linear part of the residual, (n_dof,) in A."""
-        product: FloatArray = self.lower @ a
-        product += self.upper @ a
-        product -= self.diagonal * a
+        product: FloatArray = self.diagonal * a
+        product += self.below @ a
+        product += self.above @ a
         return product
 
 
 def linear_part(pattern: Pattern, values: FloatArray, solver: SparseSolver) -> LinearPart:
     """The linear part from the entries (n_slot,) of its lower triangle by columns."""
-    n_dof = pattern.indptr.size - 1
-    entries = values, pattern.indices, pattern.indptr
+    starts = pattern.indptr
+    is_filled = values != 0.0
+    is_filled[starts[:-1]] = False  # the diagonal comes first in its column
+    filled = np.flatnonzero(is_filled)
+    entries = values[filled], pattern.indices[filled], np.searchsorted(filled, starts)
+    shape = (starts.size - 1, starts.size - 1)
     return LinearPart(
+        pattern=pattern,
         values=values,
-        lower=csc_matrix(entries, shape=(n_dof, n_dof)),
-        upper=csr_matrix(entries, shape=(n_dof, n_dof)),
-        diagonal=values[pattern.indptr[:-1]],
+        diagonal=values[starts[:-1]],
+        below=csc_matrix(entries, shape=shape),
+        above=csr_matrix(entries, shape=shape),
         solver=solver,
     )
 

@@ -28,7 +28,7 @@ from lamwright.solver.linear import CholmodSolver, analyse
 from lamwright.solver.mesh import mesh_section
 from lamwright.solver.mesh_plan import MeshSettings
 from lamwright.solver.newton import NewtonSettings
-from lamwright.solver.pattern import Pattern, summed
+from lamwright.solver.pattern import summed
 from lamwright.solver.point_energy import PointEnergy
 from lamwright.solver.steel_kernel import steel_tangent
 from lamwright.solver.types import FieldSolution, FloatArray
@@ -62,19 +62,17 @@ def load_at(model: MagneticModel, i_d: float, i_q: float, position: float) -> Fl
 def uncondensed(model: MagneticModel, position: float, load: FloatArray) -> PointEnergy:
     """The energy whose tangent is factorised with all its unknowns."""
     energy = whole_energy(model, at_position(model, position), load)
-    lower = energy.linear.lower
-    pattern = Pattern(lower.indptr.astype(np.int64), lower.indices.astype(np.int64))
-    solver = analyse(pattern.indptr, pattern.indices)
+    solver = analyse(energy.linear.pattern.indptr, energy.linear.pattern.indices)
     return replace(energy, linear=replace(energy.linear, solver=solver))
 
 
 def tangent(energy: PointEnergy, a: FloatArray) -> csc_matrix:
     """The whole tangent matrix at `a`."""
     _, state = energy.residual(a)
-    lower = energy.linear.lower.copy()
-    lower.data = lower.data + summed(
-        energy.places.scatter, steel_tangent(energy.iron.metric, state)
-    )
+    linear = energy.linear
+    values = linear.values + summed(energy.places.scatter, steel_tangent(energy.iron.metric, state))
+    entries = values, linear.pattern.indices, linear.pattern.indptr
+    lower = csc_matrix(entries, shape=(a.size, a.size))
     diagonal = csc_matrix((lower.diagonal(), (range(a.size), range(a.size))), shape=lower.shape)
     return csc_matrix(lower + lower.T - diagonal)
 
