@@ -60,6 +60,7 @@ class Jobs:
         self._listeners: list[OnChange] = []
         self._worker: Worker[CoarseDesk] | None = None
         self._hired: Hired | None = None
+        self._run: object = None  # of the hired process
         self._timers: dict[str, threading.Timer] = {}
         self._is_stopped = False
 
@@ -230,12 +231,16 @@ class Jobs:
         except (OSError, ValueError, LamwrightError) as error:
             self._end(job, "failed", str(error))
             return
+        if self._known.get(job.id, job).state != "running":
+            return  # ended already, as by a worker that was lost at once
         timer = threading.Timer(LIMIT_S[effort], self._over_time, (job.id,))
         timer.daemon = True
         self._timers[job.id] = timer
         timer.start()
 
     def _ready_worker(self) -> Worker[CoarseDesk]:
+        if self._worker is not None and self._worker.is_lost:  # while idle: out of memory?
+            self._dismiss()
         if self._worker is None:
             self._worker = Worker(coarse_desk)
         return self._worker
@@ -253,13 +258,19 @@ class Jobs:
 
         error = done.exception()
         with self._lock:
-            if isinstance(error, WorkerLost) and self._worker is worker:
-                self._worker = None  # the next one gets a new process
             job = self._known.get(job_id)
-            if job is None or job.state != "running":
-                return
+            if self._worker is not worker or job is None or job.state != "running":
+                return  # over its time; the same may run again, by another worker
+            if isinstance(error, WorkerLost):
+                self._dismiss()
             self._end(job, "failed" if error else "done", _said(error))
             self._begin("coarse")
+
+    def _dismiss(self) -> None:
+        """Let a lost worker go, the next job gets a new process; not in this thread, maybe its."""
+        if self._worker is not None:
+            threading.Thread(target=self._worker.stop, daemon=True).start()
+            self._worker = None
 
     def _begin_full(self, job: Job) -> None:
         place = self.place(job.id)
@@ -269,13 +280,14 @@ class Jobs:
         copy = self._folder.mirrored(job.path, job.text, root)
         order = {"kind": "full", "root": str(root), "design": str(copy), "out": str(place)}
         order["tolerance"] = TOLERANCE
-        self._hired = Hired(order, lambda said: self._full_told(job.id, said))
+        self._run = run = object()
+        self._hired = Hired(order, lambda said: self._full_told(job.id, run, said))
 
-    def _full_told(self, job_id: str, said: Mapping[str, Any]) -> None:
+    def _full_told(self, job_id: str, run: object, said: Mapping[str, Any]) -> None:
         with self._lock:
             job = self._known.get(job_id)
-            if job is None or job.state != "running":
-                return
+            if self._run is not run or job is None or job.state != "running":
+                return  # given up; the same may run again, in another process
             if "phase" in said:
                 job = replace(job, phase=str(said["phase"]), share=float(said["share"]))
                 self._known[job_id] = job

@@ -50,7 +50,9 @@ class Worker(Generic[Desk]):
         self._open: deque[Future[object]] = deque()
         self._last: Future[object] | None = None
         self._lost = False
-        self._lock = threading.RLock()  # a failed future's callbacks may submit again
+        # Held for the list of open calls alone, never while a future's callbacks run: they take
+        # their owner's lock, which another thread may hold that waits to submit here.
+        self._lock = threading.Lock()
         self._outbox: queue.SimpleQueue[bytes | None] = queue.SimpleQueue()
         self._outbox.put(pickle.dumps(make_desk, pickle.HIGHEST_PROTOCOL))
         self._threads = [
@@ -69,9 +71,15 @@ class Worker(Generic[Desk]):
             self._last = cast("Future[object]", future)  # Future is invariant
             self._open.append(self._last)
             self._outbox.put(call)
-            if self._lost:
-                self._fail_open()
+            is_lost = self._lost
+        if is_lost:
+            self._fail_open()
         return future
+
+    @property
+    def is_lost(self) -> bool:
+        """Whether its process is known to have ended."""
+        return self._lost
 
     @property
     def waiting(self) -> int:
@@ -125,12 +133,15 @@ class Worker(Generic[Desk]):
         except Exception:  # the end of the process, or bytes that are no answer: nobody may wait
             with self._lock:
                 self._lost = True
-                self._fail_open()
+            self._fail_open()
 
     def _fail_open(self) -> None:
-        while self._open:
+        with self._lock:
+            failed = list(self._open)
+            self._open.clear()
+        for future in failed:
             lost = WorkerLost("a worker process ended without an answer; out of memory?")
-            self._open.popleft().set_exception(lost)
+            future.set_exception(lost)
 
 
 def serve_anew() -> NoReturn:

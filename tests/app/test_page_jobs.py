@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 from page_client import DEMO, SOCKET, client_of, demo_folder
+from page_stand_ins import text_with, with_stand_in
 
 from lamwright.app.evaluation import evaluate
 from lamwright.app.page_api import Page
@@ -28,65 +29,33 @@ def _finished(jobs: Jobs, job_id: str) -> Job:
     return job
 
 
-def _text(page: Page, gap: float = 0.4) -> str:
-    return page.folder.text(DEMO)[0].replace("gap_mm = 0.4", f"gap_mm = {gap}")
-
-
-class StandIn:
-    """A worker whose calls end when the test says so."""
-
-    def __init__(self) -> None:
-        """No call yet."""
-        self.calls: list[tuple[object, ...]] = []
-        self.futures: list[object] = []
-        self.is_stopped = False
-
-    def submit(self, method: object, *args: object) -> object:
-        """Note a call."""
-        from concurrent.futures import Future
-
-        self.calls.append(args)
-        self.futures.append(Future())
-        return self.futures[-1]
-
-    def stop(self) -> None:
-        """Note the end."""
-        self.is_stopped = True
-
-
 @pytest.fixture
 def page(tmp_path: Path) -> Page:
     return demo_folder(tmp_path)
 
 
-def _with_stand_in(page: Page) -> tuple[Jobs, StandIn]:
-    jobs, worker = Jobs(page.folder), StandIn()
-    jobs._worker = worker  # type: ignore[assignment]
-    return jobs, worker
-
-
 def test_the_newest_coarse_one_drops_those_that_wait(page: Page):
     """Of one owner: the first is under way, the second is dropped, the third comes next."""
-    jobs, worker = _with_stand_in(page)
+    jobs, worker = with_stand_in(page)
     told: list[tuple[str, str]] = []
     jobs.listen(lambda job: told.append((job.id, job.state)))
-    ids = [jobs.want("coarse", DEMO, _text(page, gap), "tab").id for gap in (0.41, 0.42, 0.43)]
+    ids = [jobs.want("coarse", DEMO, text_with(page, gap), "tab").id for gap in (0.41, 0.42, 0.43)]
     assert [jobs.state(one).state for one in ids] == ["running", "none", "waiting"]
     assert (ids[1], "superseded") in told
     worker.futures[0].set_result(None)  # type: ignore[attr-defined]
     assert [jobs.state(one).state for one in ids][2] == "running"
-    assert [call[2] for call in worker.calls] == [_text(page, gap) for gap in (0.41, 0.43)]
+    assert [call[2] for call in worker.calls] == [text_with(page, gap) for gap in (0.41, 0.43)]
     jobs.stop()
     assert worker.is_stopped
 
 
 def test_what_another_tab_waits_for_goes_on(page: Page):
     """Two owners of one job: the first one's next wish leaves it to the second."""
-    jobs, _ = _with_stand_in(page)
-    jobs.want("coarse", DEMO, _text(page, 0.41), "a")
-    shared = jobs.want("coarse", DEMO, _text(page, 0.42), "a")
-    assert jobs.want("coarse", DEMO, _text(page, 0.42), "b").id == shared.id
-    jobs.want("coarse", DEMO, _text(page, 0.43), "a")
+    jobs, _ = with_stand_in(page)
+    jobs.want("coarse", DEMO, text_with(page, 0.41), "a")
+    shared = jobs.want("coarse", DEMO, text_with(page, 0.42), "a")
+    assert jobs.want("coarse", DEMO, text_with(page, 0.42), "b").id == shared.id
+    jobs.want("coarse", DEMO, text_with(page, 0.43), "a")
     assert jobs.state(shared.id).state == "waiting"
     jobs.leave("b")
     assert jobs.state(shared.id).state == "none"
@@ -95,14 +64,14 @@ def test_what_another_tab_waits_for_goes_on(page: Page):
 
 def test_a_job_is_its_content(page: Page):
     """Another layout is the same job, another value is another one, a card's too."""
-    jobs, _ = _with_stand_in(page)
-    text = _text(page)
+    jobs, _ = with_stand_in(page)
+    text = text_with(page)
     first = jobs.want("coarse", DEMO, text, "a").id
     laid_out = text.replace("gap_mm = 0.4", "gap_mm   =  0.40  # a comment")
     assert jobs.want("coarse", DEMO, laid_out, "b").id == first
-    assert jobs.want("coarse", DEMO, _text(page, 0.41), "b").id != first
+    assert jobs.want("coarse", DEMO, text_with(page, 0.41), "b").id != first
     card = page.folder.root / "steel" / "demo_050.toml"
-    card.write_text(card.read_text().replace("value = 380.0", "value = 381.0"))
+    card.writetext_with(card.readtext_with().replace("value = 380.0", "value = 381.0"))
     assert jobs.want("coarse", DEMO, text, "b").id != first
     jobs.stop()
 
@@ -111,17 +80,17 @@ def test_a_fault_of_the_worker_fails_its_job_alone(page: Page):
     """The next one goes to a new process; the failed one can be asked for again."""
     from lamwright.app.pool import WorkerLost
 
-    jobs, worker = _with_stand_in(page)
-    first = jobs.want("coarse", DEMO, _text(page, 0.41), "a").id
+    jobs, worker = with_stand_in(page)
+    first = jobs.want("coarse", DEMO, text_with(page, 0.41), "a").id
     worker.futures[0].set_exception(LamwrightError("no torque"))  # type: ignore[attr-defined]
     assert (jobs.state(first).state, jobs.state(first).error) == ("failed", "no torque")
-    assert jobs.want("coarse", DEMO, _text(page, 0.41), "a").state == "running"
+    assert jobs.want("coarse", DEMO, text_with(page, 0.41), "a").state == "running"
     worker.futures[1].set_exception(WorkerLost("gone"))  # type: ignore[attr-defined]
     assert jobs._worker is None
     assert jobs.state(first).error == "gone"
     with pytest.raises(Refused, match="run into each other"):
         jobs.want(
-            "coarse", DEMO, _text(page).replace("thickness_mm = 2.6", "thickness_mm = 9.6"), ""
+            "coarse", DEMO, text_with(page).replace("thickness_mm = 2.6", "thickness_mm = 9.6"), ""
         )
     jobs.stop()
 
@@ -141,7 +110,7 @@ def coarse(tmp_path_factory: pytest.TempPathFactory):
     page = demo_folder(tmp_path_factory.mktemp("page"))
     with Jobs(page.folder) as jobs:
         client = client_of(page, jobs)
-        body = {"want": "coarse", "path": DEMO, "text": _text(page)}
+        body = {"want": "coarse", "path": DEMO, "text": text_with(page)}
         job = _finished(jobs, client.post("/api/jobs", json=body).json()["job"])
         assert job.state == "done", job.error
         answer = client.get(f"/api/jobs/{job.id}").json()
@@ -152,8 +121,8 @@ def coarse(tmp_path_factory: pytest.TempPathFactory):
 def test_coarse_figures_are_those_of_a_quick_evaluation(coarse):
     """The same numbers as a study's, to the nine digits that those keep; outcomes by the limits."""
     page, _, result, _ = coarse
-    cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").read_text()}
-    quick = evaluate(Task("", {}, DEMO, _text(page), cards))
+    cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").readtext_with()}
+    quick = evaluate(Task("", {}, DEMO, text_with(page), cards))
     figures = {one["key"]: one["value"] for one in result["figures"]}
     assert len(figures) > 20
     for key, value in figures.items():
@@ -223,7 +192,7 @@ def test_a_restarted_server_finds_what_is_finished(coarse):
     """New jobs on the same folder: done at once, nothing is started."""
     page, job, result, _ = coarse
     jobs = Jobs(page.folder)
-    again = jobs.want("coarse", DEMO, _text(page), "new")
+    again = jobs.want("coarse", DEMO, text_with(page), "new")
     assert (again.id, again.state, jobs._worker) == (job.id, "done", None)
     assert jobs.result(job.id) == result
 
@@ -235,7 +204,7 @@ def test_the_socket_tells_a_verdict(coarse):
     with client.websocket_connect(SOCKET) as socket:
         socket.send_json({"token": client.headers["x-page-token"]})
         assert socket.receive_json()["kind"] == "ready"
-        socket.send_json({"want": "coarse", "path": DEMO, "text": _text(page), "ticket": 7})
+        socket.send_json({"want": "coarse", "path": DEMO, "text": text_with(page), "ticket": 7})
         first, second = socket.receive_json(), socket.receive_json()
         assert (first["kind"], first["ticket"], first["job"]) == ("job", 7, job.id)
         assert (second["kind"], second["ticket"], second["result"]) == ("done", 7, result)
@@ -274,9 +243,9 @@ def test_an_unswept_study_has_an_empty_ledger(page: Page):
     assert answer.json()["study"] is None
     assert (answer.json()["rows"], answer.json()["total"]) == ([], 0)
     (page.folder.root / "studies").mkdir()
-    (page.folder.root / "studies" / "one.toml").write_text(f'base = "../{DEMO}"')
+    (page.folder.root / "studies" / "one.toml").writetext_with(f'base = "../{DEMO}"')
     assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7.toml"
-    (page.folder.root / "demo_24s4p_arc-row7.toml").write_text("")
+    (page.folder.root / "demo_24s4p_arc-row7.toml").writetext_with("")
     assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7-2.toml"
 
 

@@ -5,6 +5,7 @@ import os
 import signal
 import subprocess
 import sys
+import threading
 import time
 from functools import partial
 from pathlib import Path
@@ -87,6 +88,35 @@ def test_death_of_a_worker_fails_what_is_open_and_what_follows(hired):
         worker.submit(os._exit).result(TIMEOUT)
     with pytest.raises(WorkerLost, match="ended without an answer"):
         worker.submit(int.__bool__).result(TIMEOUT)
+
+
+def test_a_lost_worker_calls_back_without_its_lock(hired):
+    """A callback waits for its owner's lock, the owner, who holds it, for the worker's: never both.
+
+    The owner holds its lock all the time; the callback of the lost call waits for it; a call that
+    the owner makes meanwhile must come back, as failed.
+    """
+    owners, waits = threading.Lock(), threading.Event()
+    worker = hired(partial(float, 60.0))  # s of sleep
+
+    def called_back(_: object) -> None:
+        waits.set()
+        with owners:
+            pass
+
+    with owners:
+        lost = worker.submit(time.sleep)
+        lost.add_done_callback(called_back)
+        os.kill(worker.pid, signal.SIGKILL)
+        assert waits.wait(TIMEOUT)
+        answers = []
+        thread = threading.Thread(
+            target=lambda: answers.append(worker.submit(time.sleep)), daemon=True
+        )
+        thread.start()
+        thread.join(TIMEOUT)
+        assert answers, "the call waits for the callback, the callback for the caller"
+    assert isinstance(answers[0].exception(TIMEOUT), WorkerLost)
 
 
 def test_death_of_a_worker_does_not_end_this_process():
