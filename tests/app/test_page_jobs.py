@@ -71,7 +71,7 @@ def test_a_job_is_its_content(page: Page):
     assert jobs.want("coarse", DEMO, laid_out, "b").id == first
     assert jobs.want("coarse", DEMO, text_with(page, 0.41), "b").id != first
     card = page.folder.root / "steel" / "demo_050.toml"
-    card.writetext_with(card.readtext_with().replace("value = 380.0", "value = 381.0"))
+    card.write_text(card.read_text().replace("value = 380.0", "value = 381.0"))
     assert jobs.want("coarse", DEMO, text, "b").id != first
     jobs.stop()
 
@@ -121,7 +121,7 @@ def coarse(tmp_path_factory: pytest.TempPathFactory):
 def test_coarse_figures_are_those_of_a_quick_evaluation(coarse):
     """The same numbers as a study's, to the nine digits that those keep; outcomes by the limits."""
     page, _, result, _ = coarse
-    cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").readtext_with()}
+    cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").read_text()}
     quick = evaluate(Task("", {}, DEMO, text_with(page), cards))
     figures = {one["key"]: one["value"] for one in result["figures"]}
     assert len(figures) > 20
@@ -243,9 +243,9 @@ def test_an_unswept_study_has_an_empty_ledger(page: Page):
     assert answer.json()["study"] is None
     assert (answer.json()["rows"], answer.json()["total"]) == ([], 0)
     (page.folder.root / "studies").mkdir()
-    (page.folder.root / "studies" / "one.toml").writetext_with(f'base = "../{DEMO}"')
+    (page.folder.root / "studies" / "one.toml").write_text(f'base = "../{DEMO}"')
     assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7.toml"
-    (page.folder.root / "demo_24s4p_arc-row7.toml").writetext_with("")
+    (page.folder.root / "demo_24s4p_arc-row7.toml").write_text("")
     assert _free_name(page.folder, "studies/one.toml", 7) == "demo_24s4p_arc-row7-2.toml"
 
 
