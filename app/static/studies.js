@@ -111,7 +111,7 @@ export class Studies {
       for (const row of answer.rows) this.#rows.set(row.number, row);
       isMore = answer.rows.length > 0 && this.#rows.size < answer.total;
       if (answer.rows.length || !answer.total) this.#draw();
-      setText(byId("ledger-line"), answer.total ? `${this.#rows.size}${answer.planned > this.#rows.size ? ` of ${answer.planned}` : ""} designs` : "not swept yet");
+      setText(byId("ledger-line"), answer.total ? `${this.#rows.size}${answer.planned > this.#rows.size ? ` of ${answer.planned}` : ""} designs` : "not swept yet: Sweep computes its designs");
       isWritten = answer.is_written;
     } catch (error) {
       if (!(error instanceof Gone) && look === this.#looks) setText(byId("ledger-line"), error.message);
@@ -152,6 +152,7 @@ export class Studies {
     if (byId("scatter-x").value === byId("scatter-y").value && figures.size > 1) byId("scatter-y").selectedIndex = byId("scatter-x").selectedIndex ? 0 : 1;
     const [x, y] = ["scatter-x", "scatter-y"].map((id) => figures.get(byId(id).value));
     byId("scatter-part").hidden = !(rows.length && x && y);
+    for (const part of [byId("row-line").parentElement, byId("ledger").parentElement]) part.hidden = !rows.length;
     if (x && y) this.#scatter.show(rows, x, y, this.#chosen);
     this.#table(rows, x, y);
   }
