@@ -153,7 +153,7 @@ design.on("outline", (began) => {
     handles.show(design.drawing.handles ?? [], new Map(outline.keys.map(({ key, value }) => [key, value])));
     chosen = handles.current;
     if (!chosen) readout.rest(handles.count > 0);
-    else if (!handles.isMoving) readout.show(chosen, chosen.value, limits(chosen.key));
+    else if (!handles.isMoving) readout.show(chosen, chosen.value, limits(chosen.key), outline.ok);
   }
   findings.show(outline);
   editor.mark(outline.findings);

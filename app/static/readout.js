@@ -37,7 +37,8 @@ export class Readout {
     this.#input.select();
   }
 
-  show(handle, value, limits) {
+  // `canHave`: limits come; none are told of an outline that cannot be built.
+  show(handle, value, limits, canHave = true) {
     if (!handle) return;
     if (!this.#handle) {
       this.#host.replaceChildren(
@@ -51,12 +52,12 @@ export class Readout {
     const text = plain(value);
     if (this.#input.value !== text) this.#input.value = text;
     setText(this.#unit, unitOf(handle.unit));
-    this.#range(value, limits);
+    this.#range(value, limits, canHave);
   }
 
-  #range(value, limits) {
+  #range(value, limits, canHave) {
     this.#track.hidden = !limits;
-    setText(this.#least, limits ? written(limits.least.value, 4) : "limits \u2026");
+    setText(this.#least, limits ? written(limits.least.value, 4) : canHave ? "limits \u2026" : "no limits of an outline that cannot be built");
     setText(this.#most, limits ? written(limits.most.value, 4) : "");
     set(this.#input, { min: limits?.least.value ?? null, max: limits?.most.value ?? null });
     if (!limits) {

@@ -34,8 +34,8 @@ def faults_of(window: Watched, axe: str) -> list[str]:
 def test_axe_finds_nothing_serious(opened: Opened, served: Served, axe: str, scheme: str):
     """In each part of the page, dialogs and failures too.
 
-    Verdict with a comparison, field, text, a broken outline, study, keys, saving, a failing design,
-    its full verdict, its release and how that was refused.
+    Verdict with a comparison, field, text, a broken outline, study, keys, saving, a refused name, a
+    failing design, its full verdict, its release and how that was refused.
     """
     window = opened(scheme, scheme=scheme)
     keys = window.page.keyboard
@@ -64,7 +64,11 @@ def test_axe_finds_nothing_serious(opened: Opened, served: Served, axe: str, sch
     keys.press("Control+Shift+S")
     window.page.wait_for_selector("dialog[open]")
     assert faults_of(window, axe) == []
-    keys.press("Escape")
+    window.by_id("q-path").fill("../elsewhere")
+    keys.press("Enter")
+    window.until(lambda: "outside" in window.by_id("q-fault").inner_text())
+    assert faults_of(window, axe) == []
+    window.leave()
     keys.press("t")
     failing = window.shown_text().replace("least_torque_nm = ", "least_torque_nm = 9")
     window.by_id("text").fill(failing)
