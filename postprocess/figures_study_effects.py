@@ -18,7 +18,7 @@ FEW = 60  # designs, whose points lie above the curve; more would hide it
 POINT = "#8d979f"
 BAR_TOLD = (
     "line: mean of the designs at this value, or in this eighth of many; bar: one standard "
-    "deviation of them, by the other keys; grey: the designs"
+    "deviation of them, by the other keys; grey: the designs, with their error bars where known"
 )
 
 
@@ -32,9 +32,11 @@ def draw_effect(
 ) -> None:
     """Draw the designs as points, their means with bars, and the figure's limits; y over `span`."""
     is_few = key.values.size <= FEW
-    ax.plot(
+    ax.errorbar(
         key.values,
         figure.values,
+        yerr=None if figure.errors is None or not is_few else np.nan_to_num(figure.errors),
+        elinewidth=1.0,
         linestyle="none",
         marker="o",
         markersize=2.6 if is_few else 1.8,
