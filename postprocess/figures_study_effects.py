@@ -33,18 +33,6 @@ def draw_effect(
     """Draw the designs as points, their means with bars, and the figure's limits; y over `span`."""
     is_few = key.values.size <= FEW
     ax.errorbar(
-        key.values,
-        figure.values,
-        yerr=None if figure.errors is None or not is_few else np.nan_to_num(figure.errors),
-        elinewidth=1.0,
-        linestyle="none",
-        marker="o",
-        markersize=2.6 if is_few else 1.8,
-        color=POINT,
-        markeredgewidth=0.0,
-        zorder=4 if is_few else 2,
-    )
-    ax.errorbar(
         effect.at,
         effect.mean,
         yerr=effect.deviation,
@@ -55,6 +43,18 @@ def draw_effect(
         elinewidth=1.0,
         capsize=2.5,
         zorder=3,
+    )
+    ax.errorbar(
+        key.values,
+        figure.values,
+        yerr=None if figure.errors is None or not is_few else np.nan_to_num(figure.errors),
+        elinewidth=1.0,
+        linestyle="none",
+        marker="o",
+        markersize=2.6 if is_few else 1.8,
+        color=POINT,
+        markeredgewidth=0.0,
+        zorder=4 if is_few else 2,
     )
     ax.margins(x=0.08)
     low, high = span
