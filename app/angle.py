@@ -9,6 +9,7 @@ from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.skew import skew_offsets
 from lamwright.postprocess.magnet_angle import best_magnet_angle, motoring_base
 from lamwright.postprocess.operating import (
+    AngleSettings,
     TurnedLinkage,
     best_angle,
     dq_currents,
@@ -36,7 +37,10 @@ class AngleFound:
 
 
 def most_torque(
-    model: MagneticModel, design: MachineDesign, on_done: Callable[[float], None]
+    model: MagneticModel,
+    design: MachineDesign,
+    on_done: Callable[[float], None],
+    close: float = AngleSettings().close,
 ) -> AngleFound:
     """Currents of most torque at rated current, by the linkages' mean over a few positions.
 
@@ -44,6 +48,7 @@ def most_torque(
         model: of the design.
         design: its poles, slots and rated current count.
         on_done: called with the share done, 0 to 1, after each field.
+        close: rad, `AngleSettings.close`: the wider, the less well the torques are known.
     """
     pole_pairs, current = design.pole_pairs, design.duty.rated_current_a
     offsets = skew_offsets(design)
@@ -77,9 +82,9 @@ def most_torque(
 
     if model.magnet.still_energy > 0.0:
         bare = solve_point(model, 0.0, 0.0, places[0][0])
-        gamma = best_magnet_angle(torque_of, motoring_base(bare.psi_q)).gamma
+        gamma = best_magnet_angle(torque_of, motoring_base(bare.psi_q), close).gamma
     else:
-        gamma = best_angle(torque_of).gamma
+        gamma = best_angle(torque_of, AngleSettings(close=close)).gamma
     i_d, i_q = dq_currents(current, gamma)
     last, count = fields[-len(places) :], len(places) // len(offsets)
     by_step = tuple(tuple(last[at : at + count]) for at in range(0, len(last), count))

@@ -38,19 +38,23 @@ def motoring_base(no_load_psi_q: float) -> float:
 
 
 def best_magnet_angle(
-    torque_of: Callable[[float], tuple[float, float]], base: float
+    torque_of: Callable[[float], tuple[float, float]],
+    base: float,
+    close: float = MAGNET_ANGLES.close,
 ) -> AngleSearch:
     """The current angle of most torque at constant current.
 
     Args:
         torque_of: current angle in rad -> mean torque in N m and its slope in N m/rad.
         base: of `motoring_base`.
+        close: rad, `AngleSettings.close`.
 
     Raises:
         NotConverged: the prediction still moves after `most_angles` angles, or rests at a bound.
         LamwrightError: no motoring torque.
     """
-    found = best_angle(lambda gamma: torque_of(base + gamma), MAGNET_ANGLES, predicted_angle)
+    use = replace(MAGNET_ANGLES, close=close)
+    found = best_angle(lambda gamma: torque_of(base + gamma), use, predicted_angle)
     return replace(
         found, gamma=base + found.gamma, tried=tuple(base + gamma for gamma in found.tried)
     )

@@ -21,7 +21,7 @@ from .workload import Workload
 
 LIMIT_S = 60.0
 START_S = 0.3  # a task that long goes to another worker while one has it
-AT_ONCE = 8  # workers that start side by side
+AT_ONCE = 16  # workers that start side by side
 TICKS = os.sysconf("SC_CLK_TCK") if hasattr(os, "sysconf") else 100
 
 

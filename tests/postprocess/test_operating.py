@@ -1,10 +1,12 @@
 """Operating points against the closed forms of the linear machine (checks A7)."""
 
+import itertools
 import math
 from collections.abc import Callable
 
 import numpy as np
 import pytest
+from scipy.interpolate import CubicHermiteSpline
 
 from lamwright.geometry.errors import LamwrightError, NotConverged
 from lamwright.postprocess.operating import (
@@ -121,6 +123,26 @@ def test_best_angle_of_a_hyperbola_takes_two_angles(knee):
     # The grids of scan and search are 0.01 degree each.
     assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.021)
     assert len(search.tried) <= (2 if exact < 64.0 else 3)  # reaches out by 8 degrees at once
+
+
+def test_torques_of_a_loose_iteration_do_not_send_the_search_away():
+    """The cubic of a random machine's torques and slopes at 53.575 and 56 degrees, solved tightly.
+
+    Its second torque is short of 4.2e-4, as it was in a quick design: the search then went 8
+    degrees away. `close` leaves it to the slopes; 2 (0.3 deg)^2 is 5e-5 of the torque.
+    """
+    low, high = math.radians(53.575), math.radians(56.0)
+    torque = CubicHermiteSpline([low, high], [14.50054, 14.44800], [-0.2758, -2.2346])
+    calls = itertools.count()
+
+    def loosely(gamma: float) -> tuple[float, float]:
+        short = 4.2e-4 * (next(calls) == 1)
+        return float(torque(gamma)) * (1.0 - short), float(torque(gamma, 1))
+
+    search = best_angle(loosely, AngleSettings(close=math.radians(4.0)))
+    scan = np.radians(np.arange(50.0, 56.0, 0.01))
+    exact = math.degrees(scan[np.argmax(torque(scan))])
+    assert math.degrees(search.gamma) == pytest.approx(exact, abs=0.3)
 
 
 def test_best_angle_far_from_the_first_angles():
