@@ -20,9 +20,9 @@ class Cache:
         if key in self._kept:
             self._kept.move_to_end(key)
         else:
-            self._kept[key] = make()
-            if len(self._kept) > self._capacity:
+            if len(self._kept) >= self._capacity:  # before, as two large factors may be too many
                 self._kept.popitem(last=False)
+            self._kept[key] = make()
         return self._kept[key]  # type: ignore[return-value]  # one maker per cache
 
     def __reduce__(self) -> "tuple[type[Cache], tuple[int]]":
