@@ -1,23 +1,31 @@
 """The coarse verdict of a design, made in a worker process that stays warm."""
 
-import ctypes
 import json
-import os
 import time
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-from lamwright.geometry.design_file import design_hash
+from lamwright.geometry.design_file import Machine, design_hash
 from lamwright.geometry.errors import LamwrightError
+from lamwright.geometry.section import CrossSection
 from lamwright.geometry.whole_file import whole_file, write_text
 
 from .page_folder import Folder
 from .page_outline import outlined
+from .pool import Crew, WorkerLost, spare_cores
+
+if TYPE_CHECKING:
+    from .coarse_work import CoarseWork, Hand
 
 RESULT_FILE, FIELD_FILE = "result.json", "field.bin"
 
 
 class CoarseDesk:
-    """What a worker has imported; nothing of a design stays in it."""
+    """What a worker has imported, and its second process; nothing of a design stays in it."""
+
+    def __init__(self) -> None:
+        """Start the second process, where there is a core for it."""
+        self._crew = _hired_crew()
 
     def warm(self) -> None:
         """Answer once all is imported."""
@@ -33,11 +41,11 @@ class CoarseDesk:
             out: made here; the result's file comes last.
 
         Raises:
-            LamwrightError: as of `study_quick`, or a card has changed.
+            LamwrightError: as of `coarse_work`, or a card has changed.
         """
-        from .page_field import drawn_field, drawn_stress, field_as_drawn, field_file
+        from .coarse_work import give_back
+        from .page_field import drawn_field, drawn_stress, field_file
         from .page_result import coarse_record
-        from .study_quick import quick_work
 
         began = time.perf_counter()
         one = outlined(Folder(root), path, text)
@@ -45,33 +53,43 @@ class CoarseDesk:
             raise LamwrightError(one.found[0].text)
         if design_hash(one.machine.design, one.machine.cards) != due:
             raise LamwrightError(f"{path}: a card was changed meanwhile; ask again")
-        work = quick_work(one.machine, one.section)
-        design, section = one.machine.design, one.section
-        solution, sign = field_as_drawn(design, section, work.field)
-        field = drawn_field(section, work.field, solution, sign)
-        data = field_file(section, field, drawn_stress(section, work.solution))
+        work = self._work(one.machine, one.section)
+        quick = work.quick
+        field = drawn_field(one.section, quick.field, work.drawn, work.sign)
+        data = field_file(one.section, field, drawn_stress(one.section, quick.solution))
         out.mkdir(parents=True, exist_ok=True)
         with whole_file(out / FIELD_FILE) as temporary:
             temporary.write_bytes(data)
-        record = coarse_record(one.machine, work, time.perf_counter() - began)
+        record = coarse_record(one.machine, quick, time.perf_counter() - began)
         write_text(out / RESULT_FILE, json.dumps(record, allow_nan=False))
-        del work, field, solution, data
-        _give_back()
+        del work, quick, field, data
+        give_back()
+
+    def _work(self, machine: Machine, section: CrossSection) -> "CoarseWork":
+        from .coarse_work import Hand, coarse_work
+
+        try:
+            return coarse_work(machine, section, self._crew)
+        except WorkerLost:  # memory ran out there, perhaps; this process does it all, once
+            self._crew.__exit__()
+            work = coarse_work(machine, section, Crew(Hand, 0))
+            self._crew = _hired_crew()
+            return work
 
 
 def coarse_desk() -> CoarseDesk:
     """A desk with everything imported that the first verdict would else wait for."""
-    from . import page_field, page_result, study_quick  # noqa: F401
+    from . import page_field, page_result  # noqa: F401
 
     return CoarseDesk()
 
 
-def _give_back() -> None:
-    """Give freed memory back to the system, where the C library has a way (glibc).
+def make_hand() -> "Hand":
+    """An empty hand, in a process that has imported what it needs."""
+    from .coarse_work import Hand
 
-    It keeps it else, in pieces: 170 verdicts of different designs took the process from 166 to
-    196 MB, with this from 115 to 118 MB (measured).
-    """
-    trim = getattr(ctypes.CDLL(None), "malloc_trim", None) if os.name == "posix" else None
-    if trim is not None:
-        trim(0)
+    return Hand()
+
+
+def _hired_crew() -> "Crew[Hand]":
+    return Crew(make_hand, min(1, spare_cores()))

@@ -1,9 +1,9 @@
 """The fields of a quick evaluation as arrays for the page's own drawing, in its SVG coordinates.
 
-The magnetic field is solved once more with the rotor exactly where the page draws it, so that
-field and outline lie on each other and flux lines pass the gap unbroken. Elements of second order
-are drawn as four flat triangles. Flux density jumps from element to element, so each has vertices
-of its own; stress is that recovered at the nodes.
+The magnetic field is that with the rotor exactly where the page draws it, so that field and outline
+lie on each other and flux lines pass the gap unbroken. Elements of second order are drawn as four
+flat triangles. Flux density jumps from element to element, so each has vertices of its own; stress
+is that recovered at the nodes.
 
 File: length of the head as a little-endian 32-bit number, the head as JSON padded to a multiple of
 4 bytes, then the arrays one after the other, each at the offset from the head's end that it states.
@@ -17,10 +17,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from lamwright.geometry.design import MachineDesign
 from lamwright.geometry.section import CrossSection
-from lamwright.geometry.winding import winding_table
-from lamwright.solver.field import solve_point
 from lamwright.solver.isoparametric import NODE_PLACES, gradients_at
 from lamwright.solver.types import FieldSolution, FloatArray, IntArray, PlanarMesh, StressSolution
 
@@ -38,21 +35,6 @@ class DrawnField:
     positions: FloatArray  # (n, 2), mm, y downward
     triangles: IntArray  # (m, 3)
     values: Mapping[str, FloatArray]  # (n,) each
-
-
-def field_as_drawn(
-    design: MachineDesign, section: CrossSection, work: QuickField
-) -> tuple[FieldSolution, float]:
-    """The field with the rotor where the page draws it, and the sign of its potential there.
-
-    The rotor stands a whole number of sectors from that place, as few as bring it near to where
-    its field is known.
-    """
-    pitch, axis = section.sector_angle, winding_table(design).axis_a
-    sectors = round((work.last.position + axis) / pitch)
-    at = sectors * pitch - axis
-    solution = solve_point(work.model, work.found.i_d, work.found.i_q, at, work.last)
-    return solution, work.model.sector.side_sign**sectors
 
 
 def drawn_field(

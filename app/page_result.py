@@ -15,6 +15,7 @@ from lamwright.postprocess.quantities import Figure, figures_of
 from lamwright.postprocess.torque import TorqueWaveform
 from lamwright.postprocess.verdict import Outcome, judged
 
+from .coarse_bars import coarse_bars
 from .page_drawing import MM, Record
 from .study_figures import NOT_QUICK, known_figures
 from .study_quick import QuickWork
@@ -23,8 +24,8 @@ DEGREE = 57.29577951308232  # per rad
 MPA = 1e-6
 SHOWN_SUFFIXES = (".png", ".svg", ".csv", ".json", ".html", ".pdf", ".dxf")
 COARSE_CAUTIONS = (
-    "coarse: a mesh half as fine and fewer rotor positions than assess, no error bars; how far off "
-    "that is has been measured in designs/studies/README.md; the full verdict follows",
+    "coarse: a mesh half as fine and fewer rotor positions than assess; its error bars are from "
+    "other designs that both were computed of; the full verdict computes its own",
 )
 
 
@@ -36,20 +37,22 @@ def coarse_record(machine: Machine, work: QuickWork, seconds: float) -> Record:
         ("stress", work.stress),
         ("masses", work.masses),
     )
-    figures = [
-        _figure_record(group, figure, None)
-        for group, values in groups
-        for figure in figures_of(values)
+    known = [
+        (group, figure)
+        for group, own in groups
+        for figure in figures_of(own)
         if figure.key not in NOT_QUICK
     ]
+    values = {figure.key: float(figure.value) for _, figure in known}
+    bars = coarse_bars(values, machine.design.pole_pairs)
     outcomes = judged(machine.design.limits, work.magnetic, work.stress)
     return {
         "design_name": machine.design.name,
         "design_hash": design_hash(machine.design, machine.cards),
         "effort": "coarse",
         "seconds": round(seconds, 3),
-        "figures": figures,
-        "outcomes": [_outcome_record(one, None) for one in outcomes],
+        "figures": [_figure_record(group, one, bars.get(one.key)) for group, one in known],
+        "outcomes": [_outcome_record(one, bars.get(one.figure.key)) for one in outcomes],
         "passes": all(one.holds for one in outcomes),
         "torque": _torque_record(work.field.waveform),
         "ribs": [

@@ -40,21 +40,20 @@ def motoring_base(no_load_psi_q: float) -> float:
 def best_magnet_angle(
     torque_of: Callable[[float], tuple[float, float]],
     base: float,
-    close: float = MAGNET_ANGLES.close,
+    settings: AngleSettings = MAGNET_ANGLES,
 ) -> AngleSearch:
     """The current angle of most torque at constant current.
 
     Args:
         torque_of: current angle in rad -> mean torque in N m and its slope in N m/rad.
         base: of `motoring_base`.
-        close: rad, `AngleSettings.close`.
+        settings: angles counted from the base.
 
     Raises:
         NotConverged: the prediction still moves after `most_angles` angles, or rests at a bound.
         LamwrightError: no motoring torque.
     """
-    use = replace(MAGNET_ANGLES, close=close)
-    found = best_angle(lambda gamma: torque_of(base + gamma), use, predicted_angle)
+    found = best_angle(lambda gamma: torque_of(base + gamma), settings, predicted_angle)
     return replace(
         found, gamma=base + found.gamma, tried=tuple(base + gamma for gamma in found.tried)
     )

@@ -47,6 +47,7 @@ class AngleSettings:
     # Of a mean over `search_positions` against one over 30 positions: 0.13, 0.23 and 0.28 degree
     # on the shipped designs; 0.3 costs 2 (0.3 deg)^2 = 5.5e-5 of the torque.
     tolerance: float = 0.3 * DEGREE
+    least_angles: int = 2  # 1 where `first` is known to be near
     most_angles: int = 10
 
 
@@ -167,7 +168,7 @@ def best_angle(
             tell = f"torque {torque:.3g} N m at {predicted / DEGREE:.0f} el deg"
             raise LamwrightError(f"the rotor has no saliency along its d axis: {tell}")
         predicted = forecast(tried, values, use)
-        if len(tried) > 1 and abs(predicted - tried[-1]) < use.settled:
+        if len(tried) >= use.least_angles and abs(predicted - tried[-1]) < use.settled:
             if use.least + use.tolerance < predicted < use.most - use.tolerance:
                 torques, slopes = zip(*values, strict=True)
                 return AngleSearch(predicted, tuple(tried), torques, slopes)

@@ -16,10 +16,11 @@ import numpy as np
 from lamwright.geometry.curves import Edge
 
 from .mesh_outline import ComplexArray, Outline
-from .types import FloatArray, IntArray
+from .types import FloatArray
 
 MAX_SAMPLES = 400  # per edge; finer would only cost time
-SOURCE_BLOCK = 512  # sources compared at once, which bounds the memory
+SOURCE_BLOCK = 256  # sources that are compared with smaller ones at once
+BLOCK_PAIRS = 1 << 16  # of points and sources, half a megabyte: stays in the cache
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -77,11 +78,42 @@ def points_at(edge: Edge, shares: FloatArray) -> ComplexArray:
 
 def size_at(points: ComplexArray, sources: SizeSources, growth: float) -> FloatArray:
     """Size at each point: least of h_k + growth |x - x_k|."""
+    return _least(points, _leading(sources, growth), growth)
+
+
+def _leading(sources: SizeSources, growth: float) -> SizeSources:
+    """The sources that others do not undercut where they stand: no other one decides anywhere.
+
+    From the smallest on, block by block. Of 8 300 sources of a 9-rib lamination 1 200 are left, and
+    the sizes at all samples take 0.04 instead of 1.1 s (measured).
+    """
+    order = np.argsort(sources.sizes, kind="stable")
+    kept = NO_SOURCES
+    for at in range(0, order.size, SOURCE_BLOCK):
+        block = order[at : at + SOURCE_BLOCK]
+        own = SizeSources(sources.points[block], sources.sizes[block])
+        leads = own.sizes < _least(own.points, kept, growth)
+        kept = joined(kept, SizeSources(own.points[leads], own.sizes[leads]))
+    return kept
+
+
+def _least(points: ComplexArray, sources: SizeSources, growth: float) -> FloatArray:
+    """Least of h_k + growth |x - x_k| at each point, infinite without sources."""
     best = np.full(points.size, np.inf)
-    for at in range(0, sources.points.size, SOURCE_BLOCK):
-        block = slice(at, at + SOURCE_BLOCK)
-        away = np.abs(points[:, None] - sources.points[None, block])
-        best = np.minimum(best, np.min(sources.sizes[None, block] + growth * away, axis=1))
+    if not sources.sizes.size:
+        return best
+    x, y = sources.points.real, sources.points.imag
+    rows = max(1, BLOCK_PAIRS // sources.sizes.size)
+    for at in range(0, points.size, rows):
+        block = points[at : at + rows, None]
+        dx, dy = block.real - x, block.imag - y
+        dx *= dx
+        dy *= dy
+        dx += dy
+        away = np.sqrt(dx, out=dx)  # a third of hypot's time
+        away *= growth
+        away += sources.sizes
+        best[at : at + rows] = away.min(axis=1)
     return best
 
 
@@ -161,13 +193,29 @@ def _narrow_in(
     """Samples of one region's edges with their distance to the others over `across`."""
     edges = sorted({abs(s) - 1 for loop in outline.loops[region] for s in loop})
     points = np.concatenate([places[e] for e in edges])
-    edge_of: IntArray = np.repeat(np.arange(len(edges)), [places[e].size for e in edges])
     ends = outline.ends[edges]
     touching = np.any(ends[:, None, :, None] == ends[None, :, None, :], axis=(2, 3))
     mirror = np.where(np.isin(edges, doubled), 2.0, 1.0)
-    away = np.abs(points[:, None] - points[None, :]) * mirror[edge_of][None, :]
-    away[touching[edge_of][:, edge_of]] = np.inf
-    width = away.min(axis=1)
+    counts = np.array([places[e].size for e in edges])
+    starts = np.cumsum(counts) - counts
+    width = np.full(points.size, np.inf)
+    # Edge by edge in real numbers: each block stays in the cache, and hypot of all pairs took ten
+    # times as long (a 9-rib lamination of 4 600 samples: 1.2 s, measured).
+    for k in range(len(edges)):
+        others = np.flatnonzero(~touching[k])
+        if others.size == 0:
+            continue
+        chosen = np.concatenate([np.arange(starts[j], starts[j] + counts[j]) for j in others])
+        factor = np.repeat(mirror[others], counts[others])
+        x, y = points.real[chosen], points.imag[chosen]
+        rows = slice(starts[k], starts[k] + counts[k])
+        dx, dy = points.real[rows, None] - x, points.imag[rows, None] - y
+        dx *= dx
+        dy *= dy
+        dx += dy
+        dx *= factor**2
+        nearest = dx.argmin(axis=1)
+        width[rows] = np.abs(points[rows] - points[chosen[nearest]]) * factor[nearest]
     points, width = points[np.isfinite(width)], width[np.isfinite(width)]
     count = np.full(width.size, across.wide)
     if across.ribs.sizes.size:

@@ -118,22 +118,31 @@ def coarse(tmp_path_factory: pytest.TempPathFactory):
     return page, job, answer["result"], data
 
 
-def test_coarse_figures_are_those_of_a_quick_evaluation(coarse):
-    """The same numbers as a study's, to the nine digits that those keep; outcomes by the limits."""
+def test_coarse_figures_hold_their_error_bars_against_a_quick_evaluation(coarse):
+    """Its angle is searched by other elements at other positions, its waveform has as many.
+
+    Quick figures are known to 1.2 % of the torque and less of others (designs/studies/README.md),
+    the bars are wider; what both compute alike has none and is the same to nine digits. Outcomes go
+    by the limits.
+    """
     page, _, result, _ = coarse
     cards = {"steel/demo_050.toml": (page.folder.root / "steel/demo_050.toml").read_text()}
     quick = evaluate(Task("", {}, DEMO, text_with(page), cards))
     figures = {one["key"]: one["value"] for one in result["figures"]}
+    bars = {one["key"]: one["error"] for one in result["figures"]}
     assert len(figures) > 20
     for key, value in figures.items():
-        assert value == pytest.approx(quick.figures[key], rel=1e-8), key
-    assert result["passes"] is quick.passes
+        if bars[key] is None:
+            assert value == pytest.approx(quick.figures[key], rel=1e-8), key
+        else:
+            assert abs(value - quick.figures[key]) < bars[key], key
+    assert bars["torque_nm"] < 0.02 * figures["torque_nm"]
     for one in result["outcomes"]:
         least = one["sense"] == "least"
         holds = one["value"] >= one["limit"] if least else one["value"] <= one["limit"]
         assert one["passes"] is holds
         assert figures[one["figure"]] == one["value"]
-    assert all(one["error"] is None for one in result["figures"])
+        assert one["error"] == bars[one["figure"]]
     mean = np.mean(result["torque"]["torque_nm"])
     assert mean == pytest.approx(figures["torque_nm"], rel=1e-12)
 
