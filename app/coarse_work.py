@@ -28,14 +28,15 @@ from lamwright.postprocess.skew import mean_solution, step_point
 from lamwright.postprocess.summary import magnetic_figures, stress_figures, terminal_figures
 from lamwright.postprocess.torque import torque_waveform, waveform_positions
 from lamwright.solver.chains import OperatingPoint, fanned, solve_chain
-from lamwright.solver.field import MagneticModel
+from lamwright.solver.field import MagneticModel, solve_point
 from lamwright.solver.mesh import mesh_section
+from lamwright.solver.newton import NewtonSettings
 from lamwright.solver.types import FieldSolution, StressSolution
 
 from .angle import AngleFound, Slopes, most_torque, solved_with_slopes
 from .point import model_of
 from .pool import Crew
-from .study_quick import FIELD_MESH, NEWTON, QuickField, QuickWork, quick_stress
+from .study_quick import CLOSE, FIELD_MESH, NEWTON, QuickField, QuickWork, quick_stress
 
 # A mean over positions lets a multiple of the first slot harmonic through, see `search_positions`:
 # the least one of the search, whose angle hangs little on it, and of the waveform.
@@ -141,11 +142,12 @@ def coarse_angle(model: MagneticModel, design: MachineDesign, crew: Crew[Hand]) 
     positions = waveform_positions(design.pole_pairs, count)
     try:
         solve = partial(_shared_angles, crew, "first")
-        near = most_torque(_rough(model), design, _untold, positions, solve=solve).gamma
+        rough = most_torque(_rough(model), design, _untold, CLOSE, positions, solve=solve)
+        near: float | None = rough.gamma
     except LamwrightError:  # whether there is none, the model itself decides
         near = None
     solve = partial(_shared_angles, crew, "second")
-    return most_torque(model, design, _untold, positions, near, solve)
+    return most_torque(model, design, _untold, CLOSE, positions, near, solve)
 
 
 def _rough(model: MagneticModel) -> MagneticModel:
@@ -198,13 +200,15 @@ def _fields(
         for (step, chain, _, _), fields in zip(chains, done, strict=True)
         for k, field in zip(chain, fields, strict=True)
     }
-    means = [
-        mean_solution([at[step, k] for step in range(len(offsets))], offsets, point, pole_pairs)
-        for k, point in enumerate(points)
-    ]
-    bare = 0.0 if found.bare is None else found.bare.psi_q
+    by_step = tuple(tuple(at[step, k] for k in range(count)) for step in range(len(offsets)))
+    together = zip(zip(*by_step, strict=True), points, strict=True)
+    means = tuple(mean_solution(steps, offsets, point, pole_pairs) for steps, point in together)
+    bare = 0.0
+    if found.bare is not None:  # of which a small difference is taken: solved to the end
+        exact = replace(model, settings=replace(model.settings, newton=NewtonSettings()))
+        bare = solve_point(exact, 0.0, 0.0, found.bare.position, found.bare).psi_q
     waveform = torque_waveform(means, pole_pairs)
-    return QuickField(model, found, waveform, bare, at[0, count - 1]), drawn, sign
+    return QuickField(model, found, waveform, bare, by_step, means), drawn, sign
 
 
 def drawn_point(
