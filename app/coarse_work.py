@@ -21,11 +21,9 @@ from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.section import CrossSection
 from lamwright.geometry.skew import skew_offsets
 from lamwright.geometry.winding import winding_table
-from lamwright.postprocess.masses import mass_figures
 from lamwright.postprocess.operating import slot_order
 from lamwright.postprocess.ribs import RibReport
 from lamwright.postprocess.skew import mean_solution, step_point
-from lamwright.postprocess.summary import magnetic_figures, stress_figures, terminal_figures
 from lamwright.postprocess.torque import torque_waveform, waveform_positions
 from lamwright.solver.chains import OperatingPoint, fanned, solve_chain
 from lamwright.solver.field import MagneticModel, solve_point
@@ -36,7 +34,7 @@ from lamwright.solver.types import FieldSolution, StressSolution
 from .angle import AngleFound, Slopes, most_torque, solved_with_slopes
 from .point import model_of
 from .pool import Crew
-from .study_quick import CLOSE, FIELD_MESH, NEWTON, QuickField, QuickWork, quick_stress
+from .study_quick import CLOSE, FIELD_MESH, NEWTON, QuickField, QuickWork, quick_stress, work_of
 
 # A mean over positions lets a multiple of the first slot harmonic through, see `search_positions`:
 # the least one of the search, whose angle hangs little on it, and of the waveform.
@@ -107,16 +105,7 @@ def coarse_work(machine: Machine, section: CrossSection, crew: Crew[Hand]) -> Co
         solution, ribs = stress_to_come.result()
     finally:
         crew.everywhere(Hand.take_model, None)
-    magnetic = magnetic_figures(field.waveform, field.magnet_psi_q)
-    quick = QuickWork(
-        field=field,
-        solution=solution,
-        ribs=ribs,
-        magnetic=magnetic,
-        terminal=terminal_figures(machine.design, magnetic),
-        stress=stress_figures(ribs),
-        masses=mass_figures(machine, section),
-    )
+    quick = work_of(machine, section, field, solution, ribs)
     return CoarseWork(quick, drawn, sign)
 
 

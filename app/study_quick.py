@@ -106,8 +106,18 @@ def quick_work(machine: Machine, section: CrossSection) -> QuickWork:
         LamwrightError: the rotor makes no torque.
     """
     field = quick_field(machine, section)
+    return work_of(machine, section, field, *quick_stress(machine, section))
+
+
+def work_of(
+    machine: Machine,
+    section: CrossSection,
+    field: QuickField,
+    solution: StressSolution,
+    ribs: RibReport,
+) -> QuickWork:
+    """All figures from the field and the stress."""
     magnetic = magnetic_figures(field.waveform, field.magnet_psi_q)
-    solution, ribs = quick_stress(machine, section)
     return QuickWork(
         field=field,
         solution=solution,
