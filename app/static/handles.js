@@ -23,6 +23,7 @@ export class Handles {
   #nodes = new Map();
   #hovered = { key: null, timer: null };
   #move = null; // what is being moved: {handle, from, value, pointer, press, limits, timer}
+  #accepted = null; // {key, value} that was let go and that the text does not say yet
 
   constructor(picture, viewport, desk) {
     this.#viewport = viewport;
@@ -155,7 +156,8 @@ export class Handles {
   }
 
   #begin(handle) {
-    this.#move = { handle, from: handle.value, value: handle.value };
+    const value = this.#accepted?.key === handle.key ? this.#accepted.value : handle.value;
+    this.#move = { handle, from: value, value };
     this.#nodes.get(handle.id).classList.add("is-moving");
     this.#desk.choose(handle);
   }
@@ -170,8 +172,15 @@ export class Handles {
 
   #accept() {
     const { handle, from, value } = this.#end();
-    if (value !== from) this.#desk.commit(handle, value);
-    else this.#desk.revert();
+    if (value === from) {
+      this.#desk.revert();
+      return;
+    }
+    const accepted = { key: handle.key, value };
+    this.#accepted = accepted;
+    this.#desk.commit(handle, value).finally(() => {
+      if (this.#accepted === accepted) this.#accepted = null;
+    });
   }
 
   #to(value, step, began) {

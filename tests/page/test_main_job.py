@@ -1,5 +1,6 @@
 """The page's main job by mouse and by keyboard, as its users do it."""
 
+import time
 import tomllib
 from collections.abc import Callable
 
@@ -82,6 +83,21 @@ def test_the_main_job_by_keyboard(opened: Opened, served: Served):
     keys.press("Control+s")
     window.is_saved()
     assert value_of(served.text(), "depth_mm", 1) == stepped
+    assert window.faults == []
+
+
+@pytest.mark.slow
+def test_steps_add_up_while_earlier_ones_are_on_their_way(opened: Opened, served: Served):
+    """Each Enter ends a change; the next begins from its value, whatever the text says by then."""
+    window = opened()
+    keys = window.page.keyboard
+    before = value_of(served.text(), "depth_mm", 1)
+    window.page.route("**/api/outline", lambda route: (time.sleep(0.4), route.continue_()))
+    keys.press("d")
+    for _ in range(3):
+        keys.press("ArrowUp")
+        keys.press("Enter")
+    window.has_text(f"depth_mm = {round(before + 3 * 0.05, 6)}")
     assert window.faults == []
 
 
