@@ -6,6 +6,7 @@
 // one, wherever it was found, takes the right one from no tab.
 
 const KEY = "lamwright-token";
+const TO_TRY = "lamwright-tokens-to-try"; // outlive a reload: the address that brought them is clean by then
 const MOST_TRIED = 4;
 const channel = new BroadcastChannel("lamwright");
 let token = null;
@@ -15,6 +16,8 @@ let others = []; // to be tried when the server does not take `token`, the newes
 export function takeToken(call) {
   token = fromAddress() ?? sessionStorage.getItem(KEY);
   offer(sessionStorage.getItem(KEY));
+  for (const one of JSON.parse(sessionStorage.getItem(TO_TRY) ?? "[]").reverse()) offer(one);
+  if (token) remember();
   window.addEventListener("hashchange", () => offer(fromAddress()) && call());
   channel.addEventListener("message", ({ data }) => {
     if (data.kind === "token" && offer(data.token)) call();
@@ -26,6 +29,7 @@ export function takeToken(call) {
 // The server has taken it.
 export function tokenIsTaken() {
   others = [];
+  sessionStorage.removeItem(TO_TRY);
   if (sessionStorage.getItem(KEY) === token) return;
   sessionStorage.setItem(KEY, token);
   channel.postMessage({ kind: "token", token });
@@ -47,7 +51,12 @@ function fromAddress() {
 function offer(found) {
   if (!found || found === token) return false;
   others = [found, ...others.filter((one) => one !== found)].slice(0, MOST_TRIED);
+  remember();
   return true;
+}
+
+function remember() {
+  sessionStorage.setItem(TO_TRY, JSON.stringify([...others, token].filter(Boolean)));
 }
 
 const listeners = [];

@@ -263,7 +263,7 @@ def _ended(page: LivePage, task: str) -> dict:
 
 @pytest.mark.slow
 def test_a_sweep_fills_its_ledger_and_a_row_is_picked(live):
-    """Rows come one by one; a row's design gives the figures of its row."""
+    """Rows come one by one; a row's design gives its figures, within error bars."""
     page, folder = live
     task = page.ask("/api/sweep", {"path": "study.toml", "out": "swept"})["task"]
     assert (
@@ -287,9 +287,10 @@ def test_a_sweep_fills_its_ledger_and_a_row_is_picked(live):
     assert picked["values"] == row["values"]
     body = {"path": "picked.toml", "text": picked["text"], "want": "coarse"}
     done = page.finished(page.ask("/api/jobs", body)["job"])
-    figures = {one["key"]: one["value"] for one in done["result"]["figures"]}
-    for key in ("torque_nm", "saliency_ratio", "yield_margin"):
-        assert figures[key] == pytest.approx(row["figures"][key], rel=1e-8)
+    figures = {one["key"]: one for one in done["result"]["figures"]}
+    for key in ("torque_nm", "saliency_ratio", "yield_margin"):  # of fewer positions on the page
+        off = abs(figures[key]["value"] - row["figures"][key])
+        assert off <= figures[key]["error"]
     page.ask("/api/ledger?folder=../x&since=0", status=403)
     page.ask("/api/pick", {"folder": "swept", "row": 10**6}, status=422)
 
