@@ -22,7 +22,6 @@ from tests import invented_verdict as invented
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_36s4p_magnet.toml"
 I_D, I_Q = 13.0, 27.0  # A
-pytestmark = pytest.mark.xdist_group("magnet work")  # the fixture is worth half a minute
 
 
 @pytest.fixture(scope="module")

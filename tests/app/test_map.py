@@ -27,7 +27,6 @@ DESIGNS = Path(__file__).parents[2] / "designs"
 DEMO = DESIGNS / "demo_24s4p_arc.toml"
 SMALL = GridWishes(points=(4, 4), positions=7)
 NEWTON = 1e-5  # of the greatest linkage: ten times what Newton's tolerance leaves
-pytestmark = pytest.mark.xdist_group("map")  # the fixture is worth several seconds
 
 
 @pytest.fixture(scope="module")

@@ -36,8 +36,6 @@ from lamwright.geometry.errors import LamwrightError
 from lamwright.geometry.punch_options import PunchOptions
 from lamwright.postprocess.verdict import judged
 
-pytestmark = pytest.mark.xdist_group("release")  # the package is worth several seconds
-
 
 @pytest.fixture(scope="module")
 def verdict():

@@ -19,7 +19,6 @@ from lamwright.postprocess.quantities import figures_of
 
 DESIGNS = Path(__file__).parents[2] / "designs"
 DEMO = DESIGNS / "demo_24s4p_arc.toml"
-pytestmark = pytest.mark.xdist_group("ribs")
 
 
 def spun(rpm: float) -> Ribbed:

@@ -13,7 +13,6 @@ from lamwright.geometry.errors import LamwrightError
 from lamwright.postprocess.figure_errors import NOT_ESTIMATED
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
-pytestmark = pytest.mark.xdist_group("ribs")  # the fixture is worth several seconds
 # Issue point 8, by a word of each.
 CAUTIONS = ("burst", "containment", "certificate", "licensed", "local codes")
 

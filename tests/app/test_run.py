@@ -18,7 +18,6 @@ from lamwright.geometry.errors import DesignError
 
 DEMO = Path(__file__).parents[2] / "designs" / "demo_24s4p_arc.toml"
 DESIGN = read_design(DEMO)
-pytestmark = pytest.mark.xdist_group("assess")  # the fixture is worth several seconds
 
 
 @pytest.fixture(scope="module")

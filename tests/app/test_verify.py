@@ -20,8 +20,6 @@ from lamwright.geometry.dxf_cut import read_cut
 from lamwright.geometry.punch_layers import CUT_LAYERS
 from lamwright.postprocess.files import json_text
 
-pytestmark = pytest.mark.xdist_group("release")  # the package is worth several seconds
-
 
 @pytest.fixture(scope="module")
 def package():

@@ -15,7 +15,7 @@ import pytest
 from page_windows import DEMO, Served, Watched, browser_path
 
 Opened = Callable[..., Watched]
-pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+pytestmark = pytest.mark.slow
 
 
 @dataclass

@@ -9,7 +9,7 @@ from page_windows import Served, Watched
 from lamwright.app.study_figures import known_figures
 
 Opened = Callable[..., Watched]
-pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+pytestmark = pytest.mark.slow
 
 
 def is_rounded(shown: str, value: float) -> bool:

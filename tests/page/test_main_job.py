@@ -9,7 +9,6 @@ from page_windows import DEMO, Served, Watched
 
 Opened = Callable[..., Watched]
 END = "rotor.barrier[3].end_angle_deg right"
-pytestmark = pytest.mark.xdist_group("page")
 
 
 def value_of(text: str, key: str, barrier: int) -> float:

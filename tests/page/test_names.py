@@ -16,7 +16,7 @@ from lamwright.app.ledger import Ledger
 from lamwright.app.study import StudyKey
 
 Opened = Callable[..., Watched]
-pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+pytestmark = pytest.mark.slow
 
 # Run by a parser of HTML or SVG, as an attribute or a link, each sets a flag; a dialog shows too.
 SCRIPT = (

@@ -8,7 +8,6 @@ import pytest
 from page_windows import TABLET, WIDE, Served, Watched
 
 Opened = Callable[..., Watched]
-pytestmark = pytest.mark.xdist_group("page")
 
 
 @pytest.fixture(scope="session")

@@ -8,7 +8,7 @@ import pytest
 from page_windows import Watched
 
 Opened = Callable[..., Watched]
-pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+pytestmark = pytest.mark.slow
 DEPTH = "rotor.barrier[3].depth_mm middle"
 MOVES = 60
 

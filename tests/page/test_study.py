@@ -6,7 +6,7 @@ import pytest
 from page_windows import DEMO, Served, Watched
 
 Opened = Callable[..., Watched]
-pytestmark = [pytest.mark.xdist_group("page"), pytest.mark.slow]
+pytestmark = pytest.mark.slow
 STUDY = f"""\
 name = "three depths"
 base = "../{DEMO}"

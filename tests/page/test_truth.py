@@ -7,7 +7,6 @@ from page_windows import Served, Watched
 
 Opened = Callable[..., Watched]
 DEPTH = "rotor.barrier[1].depth_mm middle"
-pytestmark = pytest.mark.xdist_group("page")
 
 
 def step(window: Watched, presses: int = 1) -> None:
