@@ -48,9 +48,7 @@ class Nursery:
 
     def close(self) -> None:
         """End the parent and all workers."""
-        assert self._parent.stdin is not None
-        self._parent.stdin.close()
-        self._parent.wait()
+        self._parent.communicate()  # closes both its pipes and waits
 
 
 def main() -> None:
