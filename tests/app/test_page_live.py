@@ -263,7 +263,7 @@ def _ended(page: LivePage, task: str) -> dict:
 
 @pytest.mark.slow
 def test_a_sweep_fills_its_ledger_and_a_row_is_picked(live):
-    """Rows come one by one; a row's design gives its figures, within error bars."""
+    """Rows come one by one; a row's design gives its margin, and its torque within error bars."""
     page, folder = live
     task = page.ask("/api/sweep", {"path": "study.toml", "out": "swept"})["task"]
     assert (
@@ -288,7 +288,9 @@ def test_a_sweep_fills_its_ledger_and_a_row_is_picked(live):
     body = {"path": "picked.toml", "text": picked["text"], "want": "coarse"}
     done = page.finished(page.ask("/api/jobs", body)["job"])
     figures = {one["key"]: one for one in done["result"]["figures"]}
-    for key in ("torque_nm", "saliency_ratio", "yield_margin"):  # of fewer positions on the page
+    margin = figures["yield_margin"]["value"]
+    assert margin == pytest.approx(row["figures"]["yield_margin"], rel=1e-8)
+    for key in ("torque_nm", "saliency_ratio"):  # of fewer positions on the page
         off = abs(figures[key]["value"] - row["figures"][key])
         assert off <= figures[key]["error"]
     page.ask("/api/ledger?folder=../x&since=0", status=403)
