@@ -48,8 +48,9 @@ export class Editor {
   }
 
   mark(findings) {
-    this.#marked = new Set(findings.map((finding) => finding.line).filter(Boolean));
-    this.#count = 0;
+    const lines = new Set(findings.map((finding) => finding.line).filter(Boolean));
+    if (lines.size !== this.#marked.size || [...lines].some((line) => !this.#marked.has(line))) this.#count = 0;
+    this.#marked = lines;
     this.#number();
   }
 

@@ -12,5 +12,8 @@ export function titleBlock(host, design, kept = undefined) {
     rows.push(["drawn", `${shown} of ${drawing.poles}`]);
   }
   if (host.kept) rows.push(["kept", host.kept.name]);
+  const said = JSON.stringify(rows);
+  if (host.dataset.says === said) return;
+  host.dataset.says = said;
   host.replaceChildren(...rows.map(([name, value]) => el("div", { class: name === "kept" ? "kept-row" : null }, el("dt", {}, name), el("dd", { title: value }, value))));
 }

@@ -16,9 +16,12 @@ export class TorqueChart {
     new ResizeObserver(() => this.#draw()).observe(host);
   }
 
+  // Only drawn where it is another one: to ask for the host's width lays the whole page out.
   show(torque, kept) {
-    this.#torque = torque?.torque_nm?.length ? torque : null;
-    this.#kept = kept?.torque_nm?.length ? kept : null;
+    const [own, other] = [torque, kept].map((one) => (one?.torque_nm?.length ? one : null));
+    if (own === this.#torque && other === this.#kept) return;
+    this.#torque = own;
+    this.#kept = other;
     this.#draw();
   }
 
