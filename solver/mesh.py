@@ -26,6 +26,7 @@ from lamwright.geometry.section import CrossSection, Region, rotor_cell, rotor_i
 from .mesh_checks import least_jacobian_share
 from .mesh_fold import fold, folded_points, unfold
 from .mesh_gap import Rings, fill_rings
+from .mesh_mend import mended
 from .mesh_outline import ComplexArray, Outline, outline_of
 from .mesh_plan import (
     MeshSettings,
@@ -204,6 +205,11 @@ def _mesh(
             middles = np.concatenate([middles, rings.middles])
         mesh = second_order(nodes, corners, (sides, middles), region, names)
         bad = least_jacobian_share(mesh.nodes[mesh.elements]) < LEAST_JACOBIAN
+        if np.any(bad):
+            curved = (sides, middles)
+            corners = mended(nodes, corners, region, curved, bad, LEAST_JACOBIAN)
+            mesh = second_order(nodes, corners, (sides, middles), region, names)
+            bad = least_jacobian_share(mesh.nodes[mesh.elements]) < LEAST_JACOBIAN
         if not np.any(bad):
             return mesh
         # Corner numbers before unused nodes were dropped are those of `corners`.

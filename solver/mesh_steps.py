@@ -78,7 +78,7 @@ def second_order(
         region: (n_elem,) region numbers.
         names: of the regions.
     """
-    corners = _counter_clockwise(nodes, corners)
+    corners = counter_clockwise(nodes, corners)
     curved, middle_of_curved = sides
     triples = np.sort(corners[:, [[0, 1], [1, 2], [0, 2]]].reshape(-1, 2), axis=1)
     code, back = np.unique(triples[:, 0] * nodes.size + triples[:, 1], return_inverse=True)
@@ -93,7 +93,8 @@ def second_order(
     return PlanarMesh(np.column_stack([every.real, every.imag]), elements, region, names)
 
 
-def _counter_clockwise(nodes: ComplexArray, corners: IntArray) -> IntArray:
+def counter_clockwise(nodes: ComplexArray, corners: IntArray) -> IntArray:
+    """Triangles (n_elem, 3) of either sense, all counter-clockwise."""
     a, b, c = (nodes[corners[:, k]] for k in range(3))
     turned = ((b - a).conj() * (c - a)).imag < 0.0
     return np.where(turned[:, None], corners[:, [0, 2, 1]], corners)
