@@ -45,6 +45,7 @@ FIELD_MESH = MeshSettings(
     corner=0.5,
     growth=1.0,
     step_angle=math.pi / 4.0,
+    mends=True,
 )
 # At 1e-2 torque and linkages are those of 1e-4 within 1e-4 (measured, three demos).
 NEWTON = NewtonSettings(tolerance=1e-2)

@@ -7,7 +7,8 @@ between them with triangles. The second-order nodes are added here too, on the t
 2. Cut each edge into steps (mesh_sizes, mesh_steps); gmsh gets each step as a line with two nodes.
 3. Triangulate, sizes inside extended from the boundary; the air gap is filled by rings (mesh_gap).
 4. Add mid-side nodes, on the arcs where a side is part of one. An element that this turns over
-   (a coarse arc beside a thin sliver) has its edges cut finer, and all is done again.
+   (a coarse arc beside a thin sliver) is cut another way together with its neighbours, where that
+   is asked for (mesh_mend); else it has its edges cut finer, and all is done again.
 5. Unfold.
 """
 
@@ -146,7 +147,7 @@ def _mesh_part(
     sizing = section_sizing(section, fan, outline, n_circle, settings)
     names = tuple(region.name for region in regions)
     piece_names = tuple(region.name for region in fan.regions)
-    mesh = _mesh(outline, sizing, piece_names, NO_SOURCES, gaps_of(fan))
+    mesh = _mesh(outline, sizing, piece_names, NO_SOURCES, gaps_of(fan), settings.mends)
     return read_only(unfold(fan, mesh, names))
 
 
@@ -186,8 +187,9 @@ def _mesh(
     names: tuple[str, ...],
     inside: SizeSources,
     gaps: Sequence[int] = (),
+    mends: bool = False,
 ) -> PlanarMesh:
-    """Mesh of an outline; regions number `gaps` are filled by rings."""
+    """Mesh of an outline; regions number `gaps` are filled by rings; `MeshSettings.mends`."""
     for _ in range(MAX_ROUNDS):
         shares = node_shares(outline.edges, sizing)
         steps = steps_of(outline, shares)
@@ -205,7 +207,7 @@ def _mesh(
             middles = np.concatenate([middles, rings.middles])
         mesh = second_order(nodes, corners, (sides, middles), region, names)
         bad = least_jacobian_share(mesh.nodes[mesh.elements]) < LEAST_JACOBIAN
-        if np.any(bad):
+        if mends and np.any(bad):
             curved = (sides, middles)
             corners = mended(nodes, corners, region, curved, bad, LEAST_JACOBIAN)
             mesh = second_order(nodes, corners, (sides, middles), region, names)

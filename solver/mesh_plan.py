@@ -48,6 +48,9 @@ class MeshSettings:
     corner: float = 0.25  # side at the corners of slot mouths over the air gap; 0.5: 0.20 %
     growth: float = 0.7  # change of side per distance; 0.35: same error within 0.01 %
     step_angle: float = math.pi / 6.0  # most that one step may turn along an arc
+    # Whether an element that an arc turns over is first cut another way, `mesh_mend`: up to a third
+    # fewer nodes of a mesh as coarse as its arcs allow. Finer ones hardly ever have such elements.
+    mends: bool = False
     # Stress in the lamination (scale and across_rib hold too): where its adaptive loop begins.
     lamination_across: float = 4.0
     lamination_coarsest: float = 0.04

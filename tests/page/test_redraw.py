@@ -17,7 +17,7 @@ def test_the_drawing_follows_the_hand(opened: Opened, record_property: Callable[
     """Most moves show in a frame of their own, and the last one always does.
 
     From the pointer's event to the frame after the changed outline; on two idle cores the median
-    was 38 ms and 95 % were below 61 ms (app/README.md).
+    was 26 to 41 ms and 95 % were below 32 to 74 ms (app/README.md).
     """
     window = opened()
     window.has_verdict()
