@@ -54,16 +54,23 @@ def mended(
             continue  # a neighbour's new cut has mended it
         for way in sorted(mesh.ways([element], []), key=lambda one: len(one[1])):
             found = _turned(way[1], {at: mesh.at(at) for at in way[0]})
-            if all(mesh.share(triangle) >= least for triangle in found.values()):
+            if found and all(mesh.share(triangle) >= least for triangle in found.values()):
                 mesh.corners[list(found)] = list(found.values())
                 break
     return mesh.corners
 
 
 def _turned(sides: list[Side], triangles: dict[int, Triangle]) -> dict[int, Triangle]:
-    """Triangles with the other two corners of two joined instead of their common side."""
+    """Triangles with the other two corners of two joined instead of their common side.
+
+    Empty where a way about a node leads onto itself: two triangles then have all corners in common,
+    or more than two share a side.
+    """
     for side in reversed(sides):
-        one, other = (at for at, triangle in triangles.items() if side <= set(triangle))
+        sharing = [at for at, triangle in triangles.items() if side <= set(triangle)]
+        if len(sharing) != 2 or set(triangles[sharing[0]]) == set(triangles[sharing[1]]):
+            return {}
+        one, other = sharing
         k = next(k for k in range(3) if triangles[one][k] not in side)
         b, a, c = (triangles[one][(k + j) % 3] for j in range(3))
         (d,) = set(triangles[other]) - side
@@ -114,8 +121,6 @@ class _Triangles:
 
     def share(self, triangle: Triangle) -> float:
         """The least share of the Jacobian of the curved element."""
-        if len(set(triangle)) < 3:
-            return 0.0  # two sides of one triangle were turned onto each other
         at = [complex(self._nodes[k]) for k in triangle]
         middles = [
             self._middle.get(frozenset((triangle[j], triangle[k])), 0.5 * (at[j] + at[k]))

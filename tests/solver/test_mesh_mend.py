@@ -63,6 +63,26 @@ def test_what_has_no_other_cut_stays():
     assert np.array_equal(np.sort(after, axis=1), np.sort(ear, axis=1))
 
 
+def test_a_way_round_a_node_is_left_where_it_meets_itself():
+    """Found among random meshes: three triangles about an inner node, beside an ear of two steps.
+
+    Sides turned on the way round that node leave one with more than two triangles (that ended the
+    whole mesh). No other way mends the ear either: it stays for finer steps.
+    """
+    arc, (ends, middles) = _on_arc(164.75704782343738, 2)
+    nodes = np.array([*arc[:3], -1 + 0.8j, -1 - 0.8j, -0.008 - 0.094j, 0.774 - 0.235j])
+    straight = np.array([[2, 3], [3, 4], [4, 0]])
+    sides = (np.vstack([ends, straight]), np.append(middles, nodes[straight].mean(axis=1)))
+    around = [[3, 5, 6], [6, 2, 3], [6, 0, 1], [6, 1, 2], [6, 5, 0], [0, 3, 4], [0, 5, 3]]
+    triangles = np.array(around)
+    region = np.zeros(len(triangles), dtype=np.int64)
+    before = second_order(nodes, triangles, sides, region, ("one",))
+    bad = least_jacobian_share(before.nodes[before.elements]) < LEAST
+    assert bad.any()
+    after = mended(nodes, triangles, region, sides, bad, LEAST)
+    assert [set(one) for one in after.tolist()] == [set(one) for one in around]
+
+
 @pytest.mark.parametrize("name", ["demo_24s4p_arc", "gallery/mill_48s4p", "gallery/pump_36s4p"])
 def test_slots_of_a_coarse_mesh_need_no_finer_steps(name: str, monkeypatch: pytest.MonkeyPatch):
     """Each half is meshed once; finer steps at the slots' corners took up to twice the nodes."""
